@@ -1,0 +1,1 @@
+"""The catalogue of margins: one small file per check."""

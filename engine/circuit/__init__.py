@@ -1,0 +1,1 @@
+"""From a design document to primitives, lane tables and event segments."""

@@ -1,0 +1,1 @@
+"""The numerical kernel: device laws, elimination, time stepping and observation of lanes."""

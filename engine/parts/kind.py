@@ -1,0 +1,38 @@
+"""What every part kind declares: pins, the fields and data it reads, its columns, and the primitives it becomes."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from ..circuit.builder import Builder
+    from ..design.document import Part
+
+
+@dataclass(frozen=True)
+class Entry:
+    """One field or datum that a kind reads: its unit, whether it must be there, and what it is for."""
+
+    unit: str
+    needed: bool = False
+    about: str = ""
+
+
+@dataclass(frozen=True)
+class Kind:
+    """A part kind. ``pins`` lists the accepted pin sets; ``paths`` the pin pairs that conduct direct current.
+
+    ``fields`` are the keys of the part itself (value, tolerance, rating ...), ``data`` the keys of its ``data``
+    object, ``law`` the keys of its ``law`` object. ``expand`` adds the part's primitives to a builder.
+    """
+
+    name: str
+    letters: tuple[str, ...]
+    pins: tuple[tuple[str, ...], ...]
+    paths: tuple[tuple[str, str], ...]
+    expand: Callable[[Part, Builder], None]
+    fields: Mapping[str, Entry] = field(default_factory=dict)
+    data: Mapping[str, Entry] = field(default_factory=dict)
+    law: Mapping[str, Entry] = field(default_factory=dict)

@@ -1,0 +1,118 @@
+"""What a study returns: margins with their corner, verdict and words. Plain frozen values, JSON in and out."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import asdict, dataclass, fields
+from enum import StrEnum
+from typing import Any
+
+
+class Verdict(StrEnum):
+    """What a margin says about a requirement."""
+
+    PASS = "PASS"
+    THIN = "THIN"
+    FAIL = "FAIL"
+    UNKNOWN = "UNKNOWN"
+
+
+class Depth(StrEnum):
+    """How far a study has come: the nominal lane, the worst corners, the random spread."""
+
+    NOMINAL = "nominal"
+    CORNERS = "corners"
+    SPREAD = "spread"
+
+
+@dataclass(frozen=True, slots=True)
+class Spread:
+    """Distribution of one margin over random part values: quantiles, share of lanes at or above the requirement."""
+
+    p05: float | None
+    p50: float | None
+    p95: float | None
+    passing: float
+    interval: tuple[float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class CheckResult:
+    """One margin of one design in SI units (temperature in deg C); margins are fractions of the capability.
+
+    D/C checks fill ``demand`` and ``capability``; window checks fill ``limits``, ``low`` and ``high``.
+    ``margin`` is None when the verdict is UNKNOWN. ``formula`` says in words how the number is made.
+    """
+
+    id: str
+    number: int
+    title: str
+    stage: str
+    part: str
+    sequence: str
+    demand: float | None
+    capability: float | None
+    unit: str
+    limits: tuple[float, float] | None
+    low: float | None
+    high: float | None
+    margin: float | None
+    required: float
+    verdict: Verdict
+    outcome: str | None
+    reason: str | None
+    corner: str
+    conditions: Mapping[str, float | str]
+    nominal: float | None
+    hand: float | None
+    spread: Spread | None
+    formula: str = ""
+
+    @property
+    def slack(self) -> float:
+        """Margin less the requirement; an unknown margin ranks below every known one."""
+        return -2.0 if self.margin is None else self.margin - self.required
+
+
+@dataclass(frozen=True, slots=True)
+class MarginSheet:
+    """All margins of one document at one depth of study. ``content`` is the hash of the document."""
+
+    design: str
+    content: str
+    engine: str
+    seed: int
+    lanes: int
+    seconds: float
+    depth: Depth
+    checks: tuple[CheckResult, ...]
+
+    def as_json(self) -> dict[str, Any]:
+        """The sheet as plain JSON values, keys as in the headless command."""
+        return asdict(self)
+
+    @classmethod
+    def from_json(cls, data: Mapping[str, Any]) -> MarginSheet:
+        """The sheet that :meth:`as_json` wrote; unknown keys of a later version are ignored."""
+        checks = tuple(_check(entry) for entry in data["checks"])
+        known = {f.name for f in fields(cls)} - {"checks", "depth"}
+        return cls(**{k: data[k] for k in known}, depth=Depth(data["depth"]), checks=checks)
+
+    @property
+    def worst(self) -> CheckResult | None:
+        """The check with the least slack, None on an empty sheet."""
+        return min(self.checks, key=lambda check: check.slack, default=None)
+
+
+def _check(entry: Mapping[str, Any]) -> CheckResult:
+    known = {f.name for f in fields(CheckResult)}
+    values = {k: v for k, v in entry.items() if k in known}
+    values["verdict"] = Verdict(values["verdict"])
+    if values.get("limits") is not None:
+        low, high = values["limits"]
+        values["limits"] = (low, high)
+    if values.get("spread") is not None:
+        spread = dict(values["spread"])
+        low, high = spread["interval"]
+        values["spread"] = Spread(**{**spread, "interval": (low, high)})
+    return CheckResult(**values)

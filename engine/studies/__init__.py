@@ -1,0 +1,1 @@
+"""Questions answered by batches of lanes: nominal, corners, spread, trials, causes, waves."""

@@ -1,0 +1,1 @@
+"""Designs, drafts, revisions, margins and notes in SQLite. Knows no screen."""

@@ -1,0 +1,1 @@
+"""Headless commands: one file each."""

@@ -1,0 +1,1 @@
+"""Demo designs and how their histories are made."""

@@ -1,0 +1,1 @@
+"""Full screens and modal questions."""
