@@ -1,1 +1,1 @@
-"""Pure calculation: design document to circuit, lanes, observations and margins. No files, clock, database or screen."""
+"""Pure calculation: design document to circuit, lanes, observations, margins. No files, clock, database or screen."""
