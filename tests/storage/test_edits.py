@@ -70,7 +70,9 @@ def test_an_edit_after_undo_loses_nothing(flood: Store, design: Callable, sheet:
     assert flood.redo("flood").design == design("22k")
 
 
-def test_unsaved_edits_come_back_after_a_look_at_another_revision(flood: Store, design: Callable, sheet: Callable) -> None:
+def test_unsaved_edits_come_back_after_a_look_at_another_revision(
+    flood: Store, design: Callable, sheet: Callable
+) -> None:
     flood.save("flood", Note("r1"), sheet(design()))
     flood.edit("flood", "a", design("22k"))
     flood.save("flood", Note("r2"), sheet(design("22k")))
@@ -172,7 +174,9 @@ ACTIONS = st.lists(
 
 @settings(max_examples=40, deadline=None)
 @given(actions=ACTIONS)
-def test_the_tree_is_that_of_plain_lists_across_sittings(actions: list[str | int], design: Callable, sheet: Callable) -> None:
+def test_the_tree_is_that_of_plain_lists_across_sittings(
+    actions: list[str | int], design: Callable, sheet: Callable
+) -> None:
     model = Model()
     with TemporaryDirectory() as folder:
         path = Path(folder) / "s.sqlite3"

@@ -13,7 +13,11 @@ from hypothesis import strategies as st
 from stagebook.storage.patch import difference, patched
 
 DOCUMENTS = st.recursive(
-    st.none() | st.booleans() | st.integers(-2, 2) | st.sampled_from([0.0, -0.0, 1.0, 0.5]) | st.text("a~/01", max_size=3),
+    st.none()
+    | st.booleans()
+    | st.integers(-2, 2)
+    | st.sampled_from([0.0, -0.0, 1.0, 0.5])
+    | st.text("a~/01", max_size=3),
     lambda inner: st.lists(inner, max_size=5) | st.dictionaries(st.text("ab~/01", max_size=2), inner, max_size=4),
     max_leaves=20,
 )
@@ -45,7 +49,11 @@ def test_no_difference_is_no_operation(document: Any) -> None:
         ({"foo": ["bar", "baz"]}, [{"op": "add", "path": "/foo/1", "value": "qux"}], {"foo": ["bar", "qux", "baz"]}),
         ({"baz": "qux", "foo": "bar"}, [{"op": "remove", "path": "/baz"}], {"foo": "bar"}),
         ({"foo": ["bar", "qux", "baz"]}, [{"op": "remove", "path": "/foo/1"}], {"foo": ["bar", "baz"]}),
-        ({"baz": "qux", "foo": "bar"}, [{"op": "replace", "path": "/baz", "value": "boo"}], {"baz": "boo", "foo": "bar"}),
+        (
+            {"baz": "qux", "foo": "bar"},
+            [{"op": "replace", "path": "/baz", "value": "boo"}],
+            {"baz": "boo", "foo": "bar"},
+        ),
         ({"foo": "bar"}, [{"op": "add", "path": "/child", "value": {"g": {}}}], {"foo": "bar", "child": {"g": {}}}),
         ({"/": 9, "~1": 10}, [{"op": "replace", "path": "/~01", "value": 11}], {"/": 9, "~1": 11}),
         # RFC 6901, section 5: "" is the whole document, "/" the member with an empty name

@@ -27,7 +27,9 @@ def test_a_new_design_is_a_draft_without_revision(store: Store, design: Callable
     assert store.designs() == [DesignRow("flood", 0, None, None, 0)]
 
 
-def test_the_shelf_shows_the_newest_revision_and_its_worst_margin(store: Store, design: Callable, sheet: Callable) -> None:
+def test_the_shelf_shows_the_newest_revision_and_its_worst_margin(
+    store: Store, design: Callable, sheet: Callable
+) -> None:
     for name in ("tilt", "Flood", "frost"):
         store.create(name, design())
     store.save("frost", Note("first"), sheet(design(), driver=-0.3))
