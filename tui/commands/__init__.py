@@ -1,1 +1,27 @@
-"""Headless commands: one file each."""
+"""Headless commands: one file each, with ``arguments(parser)`` and ``run(asked)``, which returns the exit status."""
+
+from __future__ import annotations
+
+from argparse import ArgumentParser, Namespace
+from importlib import import_module
+from typing import Protocol, cast
+
+COMMANDS = {
+    "schema": ("schema", "the JSON Schema of the design document"),
+}
+"""Every command, in the order of the help, with the file that holds it and its help line."""
+
+
+class Command(Protocol):
+    """What the file of a command holds."""
+
+    def arguments(self, parser: ArgumentParser) -> None:
+        """Declare what the command line may say."""
+
+    def run(self, asked: Namespace) -> int:
+        """Do it. Returns the exit status; refusals are raised in one line."""
+
+
+def command(name: str) -> Command:
+    """The command of this name. Only the one that is used is loaded, which keeps start-up quick."""
+    return cast(Command, import_module(f".{COMMANDS[name][0]}", __name__))

@@ -1,0 +1,79 @@
+"""The command line as a whole: version, help, and refusals in one line. The rules are the project's own."""
+
+from __future__ import annotations
+
+import json
+import subprocess
+import sys
+
+import pytest
+
+from stagebook.tui import app
+from stagebook.tui.commands import COMMANDS, command
+
+
+def test_every_command_is_there_and_in_the_help(capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(SystemExit) as leaving:
+        app.main(["--help"])
+    assert leaving.value.code == 0
+    said = capsys.readouterr().out
+    for name in COMMANDS:
+        assert f"    {name} " in said
+        assert callable(command(name).run)
+
+
+@pytest.mark.parametrize("name", COMMANDS)
+def test_every_command_has_help_for_eighty_columns(
+    name: str, capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setenv("COLUMNS", "80")
+    with pytest.raises(SystemExit) as leaving:
+        app.main([name, "--help"])
+    assert leaving.value.code == 0
+    assert max(map(len, capsys.readouterr().out.splitlines())) <= 80
+
+
+@pytest.mark.parametrize("written", [["brew"], ["--nonsense"], ["schema", "too", "much"], ["schema\n"], ["--store"]])
+def test_a_wrong_command_line_is_one_line(written: list[str], capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(SystemExit) as leaving:
+        app.main(written)
+    assert leaving.value.code == 2
+    captured = capsys.readouterr()
+    assert captured.out == ""
+    assert len(captured.err.splitlines()) == 1
+    assert "--help" in captured.err
+
+
+def test_the_schema_is_the_documents(capsys: pytest.CaptureFixture[str]) -> None:
+    assert app.main(["schema"]) == 0
+    schema = json.loads(capsys.readouterr().out)
+    assert schema["type"] == "object"
+    assert {"stagebook", "name", "stages", "conditions", "sequences", "requirements"} <= set(schema["properties"])
+
+
+def test_a_fault_of_the_program_is_one_line_too(
+    capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.delenv("STAGEBOOK_TRACE", raising=False)
+    monkeypatch.setattr(command("schema"), "run", lambda asked: 1 // 0)
+    assert app.main(["schema"]) == app.OWN_FAULT
+    assert "fault of the program itself (ZeroDivisionError" in capsys.readouterr().err
+
+
+def test_output_that_nobody_reads_to_the_end_is_no_fault() -> None:
+    code = "import sys; from stagebook.tui.app import main; sys.exit(main(['schema']))"
+    with subprocess.Popen([sys.executable, "-c", code], stdout=subprocess.PIPE, stderr=subprocess.PIPE) as program:
+        assert program.stdout is not None
+        assert program.stderr is not None
+        program.stdout.close()
+        assert program.stderr.read() == b""
+        assert program.wait(timeout=60) == 0
+
+
+def test_the_schema_needs_no_solver_screen_or_database() -> None:
+    code = (
+        "import sys; from stagebook.tui.app import main; main(['schema'])\n"
+        "print([name for name in ('numba', 'textual', 'sqlmodel', 'numpy') if name in sys.modules], file=sys.stderr)"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert done.stderr.strip() == "[]"

@@ -1,0 +1,85 @@
+"""The program: reads the command line, runs one headless command or opens the shelf, and turns refusals into a line."""
+
+from __future__ import annotations
+
+import os
+import sys
+from argparse import ArgumentParser, Namespace
+from collections.abc import Sequence
+from importlib.metadata import PackageNotFoundError, version
+from typing import NoReturn
+
+from ..engine.errors import EngineError
+from .commands import COMMANDS, command
+from .commands.refusal import CommandRefused
+
+DONE, WRONG_INPUT, OWN_FAULT, STOPPED = 0, 2, 3, 130
+"""Exit statuses; 1 is left to ``--strict``."""
+
+
+class _Parser(ArgumentParser):
+    """Answers a wrong command line in one line."""
+
+    def error(self, message: str) -> NoReturn:
+        self.exit(WRONG_INPUT, f"{self.prog}: {_one_line(message)}; {self.prog} --help says what can be written\n")
+
+
+def main(arguments: Sequence[str] | None = None) -> int:
+    """Run the program with these arguments (default: those of the command line) and return its exit status."""
+    written = list(sys.argv[1:] if arguments is None else arguments)
+    asked = _parser(written).parse_args(written)
+    try:
+        status = command(asked.command).run(asked)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        # Whoever read the output has seen enough; what is still buffered goes nowhere instead of into a traceback.
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return DONE
+    except KeyboardInterrupt:
+        return STOPPED
+    except (EngineError, CommandRefused) as refusal:
+        return _refuse(asked, str(refusal))
+    except Exception as fault:
+        if os.environ.get("STAGEBOOK_TRACE"):
+            raise
+        _refuse(
+            asked, f"a fault of the program itself ({type(fault).__name__}: {fault}); STAGEBOOK_TRACE=1 shows where"
+        )
+        return OWN_FAULT
+    return status
+
+
+def _parser(written: Sequence[str]) -> ArgumentParser:
+    parser = _Parser(
+        prog="stagebook",
+        description="Design small discrete-transistor alarm and timer units.",
+    )
+    parser.add_argument("--version", action="version", version=f"stagebook {_version()}")
+    parsers = parser.add_subparsers(dest="command", metavar="COMMAND", required=True, parser_class=_Parser)
+    for name, (_, line) in COMMANDS.items():
+        one = parsers.add_parser(name, help=line, description=f"{line[0].upper()}{line[1:]}.")
+        if name in written:
+            command(name).arguments(one)
+    return parser
+
+
+def _version() -> str:
+    try:
+        return version("stagebook")
+    except PackageNotFoundError:
+        return "not installed"
+
+
+def _refuse(asked: Namespace, words: str) -> int:
+    name = f"stagebook {asked.command}" if asked.command else "stagebook"
+    print(f"{name}: {_one_line(words)}", file=sys.stderr)
+    return WRONG_INPUT
+
+
+def _one_line(words: str) -> str:
+    """The words without anything that could break the line or steer the terminal."""
+    return "".join(c if c.isprintable() else " " if c.isspace() else "?" for c in words)
+
+
+if __name__ == "__main__":
+    sys.exit(main())

@@ -1,0 +1,46 @@
+"""How commands print: one JSON object, or plain tables for eighty columns."""
+
+from __future__ import annotations
+
+import json
+from argparse import ArgumentParser
+from collections.abc import Mapping, Sequence
+from textwrap import wrap
+from typing import Any
+
+WIDTH = 80
+
+
+def json_argument(parser: ArgumentParser) -> None:
+    """Declare ``--json``."""
+    parser.add_argument("--json", action="store_true", help="one JSON object instead of a table")
+
+
+def print_json(value: Mapping[str, Any]) -> None:
+    """One JSON object on standard output; numbers are finite, texts are UTF-8."""
+    print(json.dumps(value, indent=2, ensure_ascii=False, allow_nan=False))
+
+
+def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: frozenset[int] = frozenset()) -> None:
+    """Rows in columns; the last column takes what is left of the line and goes on below where it is longer.
+
+    ``right`` are the columns of figures, which end in line. The last column may hold line breaks of its own.
+    """
+    widths = [max(map(len, column)) for column in zip(heads, *rows, strict=True)][:-1]
+    indent = sum(widths) + 2 * len(widths)
+    for row in (heads, *rows):
+        cells = [
+            text.rjust(width) if column in right else text.ljust(width)
+            for column, (text, width) in enumerate(zip(row, widths, strict=False))
+        ]
+        room = max(WIDTH - indent, 16)
+        first, *more = [line for part in row[-1].split("\n") for line in wrap(part, room)] or [""]
+        print("  ".join((*cells, first)).rstrip())
+        for line in more:
+            print(" " * indent + line)
+
+
+def print_words(words: str, indent: int = 0) -> None:
+    """A sentence, broken into lines."""
+    for line in wrap(words, WIDTH, initial_indent=" " * indent, subsequent_indent=" " * indent):
+        print(line)
