@@ -1,1 +1,58 @@
 """Designs, drafts, revisions, margins and notes in SQLite. Knows no screen."""
+
+from __future__ import annotations
+
+from .errors import (
+    DesignMissing,
+    MarginsRefused,
+    NameRefused,
+    NameTaken,
+    NoteRefused,
+    NothingToRedo,
+    NothingToUndo,
+    RevisionMissing,
+    StorageError,
+    StoreBusy,
+    StoreFull,
+    StoreReadOnly,
+    StoreTooNew,
+    StoreUnreadable,
+    TakenOver,
+)
+from .inspection import Inspection, inspect, verify
+from .names import checked_name
+from .place import default_path
+from .store import Store
+from .values import ADDABLE, DesignRow, Draft, Note, NoteEntry, Revision, Sitting, Worst
+
+__all__ = [
+    "ADDABLE",
+    "DesignMissing",
+    "DesignRow",
+    "Draft",
+    "Inspection",
+    "MarginsRefused",
+    "NameRefused",
+    "NameTaken",
+    "Note",
+    "NoteEntry",
+    "NoteRefused",
+    "NothingToRedo",
+    "NothingToUndo",
+    "Revision",
+    "RevisionMissing",
+    "Sitting",
+    "StorageError",
+    "Store",
+    "StoreBusy",
+    "StoreFull",
+    "StoreReadOnly",
+    "StoreTooNew",
+    "StoreUnreadable",
+    "TakenOver",
+    "Worst",
+    "checked_name",
+    "default_path",
+    "inspect",
+    "verify",
+]

@@ -1,0 +1,69 @@
+"""A consistent copy of a store while it is in use, made whole or not at all."""
+
+from __future__ import annotations
+
+import os
+import sqlite3
+from contextlib import closing
+from pathlib import Path
+from tempfile import mkstemp
+
+from sqlmodel import Session
+
+from .errors import StorageError
+from .place import beside, sync_folder
+from .tables import APPLICATION
+
+
+def back_up(session: Session, store: Path, target: Path) -> None:
+    """Copy the store that ``session`` reads to ``target``, over an earlier copy but over nothing else.
+
+    Raises:
+        StorageError: ``target`` cannot be written, is the store itself, or is a file of another kind.
+    """
+    if target.exists():
+        if target.is_file() and target.samefile(store):
+            raise StorageError(f"{target} is the store itself: name another place for the copy.")
+        if not target.is_file() or not _is_store(target):
+            raise StorageError(f"{target} is there and is no copy of a store: name another place for the copy.")
+    connection = session.connection().connection.driver_connection
+    if not isinstance(connection, sqlite3.Connection):
+        raise TypeError("the store is not on SQLite's own driver")
+    copy_database(connection, target)
+
+
+def _is_store(file: Path) -> bool:
+    """Whether the header of a database (SQLite file format, section 1.3) has the ``application_id`` of a store."""
+    with file.open("rb") as data:
+        return data.read(72)[68:] == APPLICATION.to_bytes(4, "big")
+
+
+def copy_database(source: sqlite3.Connection, target: Path) -> None:
+    """Copy the database of ``source`` to ``target`` (mode 0600): temporary name, fsync, rename.
+
+    Raises:
+        StorageError: ``target`` cannot be written; what was there before stands.
+    """
+    temporary: Path | None = None
+    try:
+        handle, name = mkstemp(prefix=f".{target.name}-", dir=target.parent)
+        os.close(handle)
+        temporary = Path(name)
+        with closing(sqlite3.connect(temporary, isolation_level=None)) as copy:
+            source.backup(copy)
+            # One file that can be read from a medium without write permission: no log beside it.
+            copy.execute("PRAGMA journal_mode = DELETE").fetchall()
+        handle = os.open(temporary, os.O_RDWR)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)
+        os.replace(temporary, target)
+        sync_folder(target.parent)
+    except (OSError, ValueError, sqlite3.OperationalError) as error:
+        reason = getattr(error, "strerror", None) or str(error)
+        raise StorageError(f"The copy {target} cannot be written ({reason}): name another place for it.") from error
+    finally:
+        if temporary is not None:
+            for ending in ("", "-wal", "-shm", "-journal"):
+                beside(temporary, ending).unlink(missing_ok=True)

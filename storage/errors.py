@@ -1,0 +1,63 @@
+"""The exception family of the store. Each message is one line: what is wrong, where, and what to do instead."""
+
+from __future__ import annotations
+
+
+class StorageError(Exception):
+    """Any refusal of the store, in one line that can be shown as it is."""
+
+
+class StoreUnreadable(StorageError):
+    """The file is not a store, is damaged, or cannot be reached."""
+
+
+class StoreTooNew(StoreUnreadable):
+    """A later Stagebook wrote the store; nothing in it was touched."""
+
+
+class StoreReadOnly(StorageError):
+    """The store can be looked at and not written."""
+
+
+class StoreBusy(StorageError):
+    """Another program keeps the store locked."""
+
+
+class StoreFull(StorageError):
+    """The disk has no room for the write; what was saved before stands."""
+
+
+class NameRefused(StorageError):
+    """A text cannot be the name of a design."""
+
+
+class NameTaken(StorageError):
+    """The shelf already has a design of this name."""
+
+
+class DesignMissing(StorageError):
+    """The shelf has no design of this name."""
+
+
+class RevisionMissing(StorageError):
+    """The design has no revision of this number."""
+
+
+class NothingToUndo(StorageError):
+    """The draft stands at its first state."""
+
+
+class NothingToRedo(StorageError):
+    """No edit follows the draft's present state."""
+
+
+class NoteRefused(StorageError):
+    """A note cannot be kept as written."""
+
+
+class MarginsRefused(StorageError):
+    """The margins handed in are not those of the draft."""
+
+
+class TakenOver(StorageError):
+    """Another sitting edits the design now; nothing was written."""

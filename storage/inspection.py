@@ -1,0 +1,166 @@
+"""Whether a store is what was saved in it: file, rows, triggers, hash chain; and what there is to know about it."""
+
+from __future__ import annotations
+
+import json
+import os
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+from hashlib import sha256
+from pathlib import Path
+
+from sqlalchemy import text
+from sqlmodel import Session, col, func, select
+
+from ..engine.design.document import Design
+from ..engine.errors import EngineError
+from ..engine.results import MarginSheet
+from . import revisions
+from .edits import moved
+from .errors import StorageError
+from .place import beside
+from .seal import entry_hash
+from .store import Store
+from .tables import SCHEMA, StoredDesign, StoredDraft, StoredEdit, StoredMargin, StoredRevision, triggers
+
+_DERIVED = {"slack"}
+"""Columns that an engine of another version may compute otherwise."""
+
+
+@dataclass(frozen=True, slots=True)
+class Inspection:
+    """What is to know about a store; sizes in bytes. ``problems`` is empty when all is as it was saved."""
+
+    path: Path
+    schema: int
+    size: int
+    log_size: int
+    designs: int
+    revisions: int
+    edits: int
+    problems: tuple[str, ...]
+    advice: tuple[str, ...]
+
+
+def inspect(store: Store) -> Inspection:
+    """Verify the store and tell its sizes, with advice."""
+    log = beside(store.path, "-wal")
+    with store.reading() as session:
+        designs, saved, edits = (
+            session.exec(select(func.count()).select_from(table)).one()
+            for table in (StoredDesign, StoredRevision, StoredEdit)
+        )
+    return Inspection(
+        path=store.path,
+        schema=SCHEMA,
+        size=store.path.stat().st_size,
+        log_size=log.stat().st_size if log.exists() else 0,
+        designs=designs,
+        revisions=saved,
+        edits=edits,
+        problems=tuple(verify(store)),
+        advice=tuple(_advice(store)),
+    )
+
+
+def verify(store: Store) -> list[str]:
+    """What is not as it was saved, one line each; an empty list when all is well."""
+    problems: list[str] = []
+    try:
+        with store.reading() as session:
+            for problem in _problems(session):
+                problems.append(problem)
+    except StorageError as error:
+        problems.append(str(error))
+    return problems
+
+
+def _problems(session: Session) -> Iterator[str]:
+    connection = session.connection()
+    for (line,) in connection.execute(text("PRAGMA integrity_check")):
+        if line != "ok":
+            yield f"The file is damaged: {line}."
+    for table, row, owner, _ in connection.execute(text("PRAGMA foreign_key_check")):
+        yield f"Row {row} of {table} belongs to a row of {owner} that is gone."
+    found = connection.execute(text("SELECT name, sql FROM sqlite_schema WHERE type = 'trigger'"))
+    there = {row.name: row.sql for row in found}
+    for name, sql in triggers().items():
+        if there.get(name) != sql:
+            yield f"The trigger {name}, which keeps saved rows from being changed, is missing or altered."
+    for design in session.exec(select(StoredDesign).order_by(col(StoredDesign.name))):
+        yield from _of_design(session, design)
+
+
+def _of_design(session: Session, design: StoredDesign) -> Iterator[str]:
+    rows = revisions.all_of(session, design)
+    by_id = {row.id: row for row in rows}
+    for number, row in enumerate(rows, start=1):
+        if row.number != number:
+            yield f'"{design.name}": r{number} is missing before r{row.number}.'
+            break
+    for row in rows:
+        where = f'"{design.name}" r{row.number}'
+        if sha256(row.document.encode()).hexdigest() != row.content:
+            yield f"{where}: the document is not the one that was saved."
+        if row.parent_id is not None and row.parent_id not in by_id:
+            yield f"{where}: its parent is gone."
+        elif revisions.hash_of(row, by_id.get(row.parent_id or 0)) != row.hash:
+            yield f"{where}: the hash does not fit its parent, number, time, document, note and margins."
+        yield from _of_margins(session, row, where)
+        yield from _of_entries(session, row, where)
+    yield from _of_draft(session, design, rows)
+
+
+def _of_margins(session: Session, row: StoredRevision, where: str) -> Iterator[str]:
+    stored = session.exec(
+        select(StoredMargin).where(StoredMargin.revision_id == row.id).order_by(col(StoredMargin.position))
+    ).all()
+    try:
+        sheet = MarginSheet.from_json(json.loads(row.margins))
+    except (ValueError, LookupError, TypeError):
+        yield f"{where}: the margins cannot be read."
+        return
+    made = revisions.margin_rows(row.id, sheet)
+    if [row.model_dump(exclude=_DERIVED) for row in stored] != [row.model_dump(exclude=_DERIVED) for row in made]:
+        yield f"{where}: the rows of margins are not those of its sheet."
+
+
+def _of_entries(session: Session, row: StoredRevision, where: str) -> Iterator[str]:
+    before = row.hash
+    for entry in revisions.entries(session, [row.id]):
+        if entry_hash(before, entry.field, entry.text, entry.added) != entry.hash:
+            yield f"{where}: the addition to the note's {entry.field} of {entry.added} is not the one that was made."
+        before = entry.hash
+
+
+def _of_draft(session: Session, design: StoredDesign, rows: Sequence[StoredRevision]) -> Iterator[str]:
+    """Undo all edits of the draft in memory: at every revision on the way the document must be the saved one."""
+    draft = session.get(StoredDraft, design.id)
+    if draft is None:
+        yield f'"{design.name}": the draft is gone.'
+        return
+    saved: dict[int | None, list[StoredRevision]] = {}
+    for row in rows:
+        saved.setdefault(row.edit_id, []).append(row)
+    document, at = draft.document, draft.head_id
+    try:
+        Design.load(document)
+        while True:
+            for row in saved.get(at, []):
+                if json.loads(document) != json.loads(row.document):
+                    yield f'"{design.name}": the edits of the draft do not lead to r{row.number}.'
+            edit = None if at is None else session.get(StoredEdit, at)
+            if edit is None:
+                break
+            document, at = moved(document, edit.inverse, design.name), edit.parent_id
+    except (EngineError, StorageError, ValueError) as error:
+        yield f'"{design.name}": the draft cannot be read: {error}'
+
+
+def _advice(store: Store) -> Iterator[str]:
+    if os.name == "posix" and store.path.stat().st_mode & 0o077:
+        yield f"Other users can read {store.path}: `chmod 600` keeps it to you."
+    if store.read_only:
+        yield f"{store.path} can be looked at and not written: give yourself write permission on it and its folder."
+    for copy in sorted(store.path.parent.glob(f"{store.path.name}-version-*")):
+        yield f"{copy} is a copy from before a change of version: delete it when all is well."

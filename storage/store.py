@@ -1,0 +1,273 @@
+"""The store: designs with their drafts and revisions in one SQLite file. Used from one thread."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager, suppress
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from difflib import get_close_matches
+from pathlib import Path
+from types import TracebackType
+from typing import Self
+from unicodedata import normalize
+
+from sqlmodel import Session, select
+
+from ..engine.design.document import Design
+from ..engine.results import MarginSheet
+from . import edits, revisions, shelf, sittings
+from .backup import back_up
+from .connection import Opened, open_database, plain_errors
+from .errors import DesignMissing, NameTaken, StorageError, StoreReadOnly
+from .names import checked_name
+from .place import default_path
+from .tables import StoredDesign, StoredDraft, StoredSitting
+from .values import DesignRow, Draft, Note, Revision, Sitting
+
+Clock = Callable[[], datetime]
+
+
+def utc_now() -> datetime:
+    """The time of the machine's clock."""
+    return datetime.now(UTC)
+
+
+@dataclass(slots=True)
+class _Place:
+    """A design inside a transaction: its row and its draft's."""
+
+    design: StoredDesign
+    draft: StoredDraft
+
+
+class Store:
+    """The shelf of one user. Every method that changes something has it on the disk before it returns.
+
+    All methods raise :class:`StorageError` with one plain line when they cannot do what they are asked; nothing is
+    written then. A method that takes the name of a design raises :class:`DesignMissing` for a name not on the shelf,
+    and one that writes raises :class:`TakenOver` when another sitting edits that design now.
+    """
+
+    def __init__(self, path: Path, opened: Opened, clock: Clock) -> None:
+        """Use :meth:`open`."""
+        self.path = path
+        self.read_only = opened.read_only
+        self._opened = opened
+        self._clock = clock
+        self._seat = sittings.Seat()
+
+    @classmethod
+    def open(cls, path: Path | str | None = None, *, clock: Clock = utc_now) -> Self:
+        """Open the store at ``path`` or at the default place; one is made where there is none.
+
+        Raises:
+            StoreUnreadable: The file is damaged, no store, of a later version, or cannot be reached.
+        """
+        place = Path(path).expanduser() if path is not None else default_path()
+        return cls(place, open_database(place), clock)
+
+    def close(self) -> None:
+        """Give the designs back that this store edits, and the file."""
+        # All that was acknowledged is on the disk; a sitting that stays marked is no more than after a crash.
+        with suppress(StorageError):
+            if self._seat.tokens:
+                with self._writing() as session:
+                    sittings.release(session, self._seat.tokens)
+        self._seat = sittings.Seat()
+        self._opened.close()
+
+    def __enter__(self) -> Self:
+        return self
+
+    def __exit__(self, kind: type[BaseException] | None, error: BaseException | None, at: TracebackType | None) -> None:
+        self.close()
+
+    def designs(self) -> list[DesignRow]:
+        """The shelf, by name."""
+        with self.reading() as session:
+            return shelf.rows(session)
+
+    def create(self, name: str, design: Design) -> Draft:
+        """Put a new design on the shelf, without a revision.
+
+        Raises:
+            NameRefused: ``name`` may not be a name.
+            NameTaken: The shelf has a design of this name.
+        """
+        name = checked_name(name)
+        with self._writing() as session:
+            if session.exec(select(StoredDesign).where(StoredDesign.name == name)).first():
+                raise NameTaken(f'There is a design "{name}" on the shelf already: choose another name.')
+            row = StoredDesign(name=name, created=self._now())
+            session.add(row)
+            session.flush()
+            draft = StoredDraft(design_id=row.id, document=design.canonical().decode())
+            session.add(draft)
+            token = sittings.claim(session, row, self._now())
+            shown = self._shown(session, _Place(row, draft), design)
+        self._seat.tokens[row.id] = token
+        return shown
+
+    def draft(self, name: str) -> Draft:
+        """The working copy of a design, as it stands on the disk."""
+        with self.reading() as session:
+            place = self._find(session, name)
+            shown = self._shown(session, place)
+        self._seat.seen[place.design.id] = place.draft.head_id
+        return shown
+
+    def edit(self, name: str, label: str, design_after: Design) -> Draft:
+        """Change the draft to ``design_after``; a document that says the same makes no edit."""
+        with self._editing(name) as (session, place):
+            edits.append(session, place.draft, label, design_after.canonical().decode(), self._now())
+            return self._shown(session, place, design_after)
+
+    def undo(self, name: str) -> Draft:
+        """Take the last edit back, also one of an earlier sitting.
+
+        Raises:
+            NothingToUndo: The draft stands where the design began.
+        """
+        with self._editing(name) as (session, place):
+            edits.undo(session, place.draft, place.design.name)
+            return self._shown(session, place)
+
+    def redo(self, name: str) -> Draft:
+        """Bring the most recently used edit that follows the draft's state again.
+
+        Raises:
+            NothingToRedo: No edit follows.
+        """
+        with self._editing(name) as (session, place):
+            edits.redo(session, place.draft, place.design.name)
+            return self._shown(session, place)
+
+    def save(self, name: str, note: Note, sheet: MarginSheet) -> Revision:
+        """Make the draft's present state the next revision, with the margins of just this state.
+
+        Raises:
+            NoteRefused: The note has no line, or a text that cannot be kept.
+            MarginsRefused: ``sheet`` belongs to another document than the draft's.
+        """
+        with self._editing(name) as (session, place):
+            row = revisions.save(session, place.design, place.draft, note, sheet, self._now())
+            return revisions.shown(session, [row])[0]
+
+    def revisions(self, name: str) -> list[Revision]:
+        """All revisions of a design, oldest first."""
+        with self.reading() as session:
+            return revisions.shown(session, revisions.all_of(session, self._find(session, name).design))
+
+    def revision(self, name: str, number: int | None = None) -> Revision:
+        """One revision of a design, the newest without a number.
+
+        Raises:
+            RevisionMissing: There is none of this number, or none at all.
+        """
+        with self.reading() as session:
+            row = revisions.find(session, self._find(session, name).design, number)
+            return revisions.shown(session, [row])[0]
+
+    def branch(self, name: str, number: int) -> Draft:
+        """Move the draft to a revision, which the next save then has as its parent.
+
+        Edits that were not saved stay in the tree: going back to the revision they follow and redo bring them again.
+
+        Raises:
+            RevisionMissing: There is no revision of this number.
+        """
+        with self._editing(name) as (session, place):
+            row = revisions.find(session, place.design, number)
+            edits.jump(session, place.draft, row.edit_id, row.document)
+            place.draft.base_id = row.id
+            return self._shown(session, place)
+
+    def add_note(self, name: str, revision: int, field: str, text: str) -> Revision:
+        """Add ``text`` to a place of a revision's note, below what stands there.
+
+        Raises:
+            NoteRefused: ``field`` is not a place of a note that can be added to, or ``text`` cannot be kept.
+            RevisionMissing: There is no revision of this number.
+        """
+        with self._editing(name) as (session, place):
+            row = revisions.find(session, place.design, revision)
+            revisions.add_entry(session, row, field, text, self._now())
+            session.flush()
+            return revisions.shown(session, [row])[0]
+
+    def sitting(self, name: str) -> Sitting | None:
+        """Who edits the design, None when it was given back. A crash leaves a sitting behind."""
+        with self.reading() as session:
+            design = self._find(session, name).design
+            row = session.get(StoredSitting, design.id)
+            if row is None or row.closed:
+                return None
+            return Sitting(since=row.since, here=self._seat.tokens.get(design.id) == row.token)
+
+    def take_over(self, name: str) -> Draft:
+        """Take a design from the sitting that edits it, whose next write is refused; the draft is read anew."""
+        with self._writing() as session:
+            place = self._find(session, name)
+            token = sittings.claim(session, place.design, self._now())
+            shown = self._shown(session, place)
+        self._seat.tokens[place.design.id] = token
+        return shown
+
+    def backup(self, target: Path | str) -> None:
+        """Write a consistent copy of the store to ``target``, also while it is in use.
+
+        Raises:
+            StorageError: ``target`` cannot be written, is the store itself, or is a file of another kind.
+        """
+        with self.reading() as session:
+            back_up(session, self.path, Path(target).expanduser())
+
+    @contextmanager
+    def reading(self) -> Iterator[Session]:
+        """A session on one consistent state of the store, for functions of this folder that only read."""
+        with plain_errors(self.path), Session(self._opened.reading, expire_on_commit=False) as session:
+            yield session
+
+    @contextmanager
+    def _writing(self) -> Iterator[Session]:
+        if self.read_only:
+            raise StoreReadOnly(
+                f"{self.path} can be looked at and not written: give yourself write permission on it and its folder."
+            )
+        with plain_errors(self.path), Session(self._opened.writing, expire_on_commit=False) as session:
+            yield session
+            session.commit()
+
+    @contextmanager
+    def _editing(self, name: str) -> Iterator[tuple[Session, _Place]]:
+        with self._writing() as session:
+            place = self._find(session, name)
+            token = self._seat.checked(session, place.design, place.draft, self._now())
+            yield session, place
+        self._seat.tokens[place.design.id] = token
+
+    def _find(self, session: Session, name: str) -> _Place:
+        rows = select(StoredDesign, StoredDraft).where(StoredDraft.design_id == StoredDesign.id)
+        found = session.exec(rows.where(StoredDesign.name == normalize("NFC", name))).first()
+        if found is not None:
+            return _Place(*found)
+        names = session.exec(select(StoredDesign.name)).all()
+        near = get_close_matches(name, names, n=1)
+        advice = f'did you mean "{near[0]}"?' if near else "see the names with `stagebook list`."
+        raise DesignMissing(f"There is no design {name!r} on the shelf: {advice}")
+
+    def _shown(self, session: Session, place: _Place, design: Design | None = None) -> Draft:
+        number, saved_at = shelf.base(session, place.draft)
+        before, after = edits.last(session, place.draft), edits.following(session, place.draft)
+        return Draft(
+            name=place.design.name,
+            design=design or Design.load(place.draft.document),
+            base_revision=number,
+            edits=edits.distance(session, place.draft.head_id, saved_at),
+            undo_label=None if before is None else before.label,
+            redo_label=None if after is None else after.label,
+        )
+
+    def _now(self) -> str:
+        return self._clock().astimezone(UTC).isoformat(timespec="seconds")
