@@ -1,0 +1,110 @@
+"""The one registry of actions: keys, footer, help and palette are made from it, and nowhere else."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from textual.binding import Binding, BindingType
+
+
+@dataclass(frozen=True, slots=True)
+class Action:
+    """Something a key does. ``where`` is the screen or widget; ``keys`` are Textual key names, comma separated.
+
+    ``shown`` is how the keys are written for people. ``footer`` orders the key line: lower numbers are kept
+    longest when the screen is narrow, 0 keeps the action out of the line.
+    """
+
+    where: str
+    name: str
+    keys: str
+    shown: str
+    label: str
+    help: str
+    footer: int = 0
+
+    @property
+    def id(self) -> str:
+        """The name under which a user may bind other keys."""
+        return f"{self.where}.{self.name}"
+
+
+ACTIONS: tuple[Action, ...] = (
+    Action("app", "help", "question_mark,f1", "?", "help", "the keys of this screen and what the marks mean", 1),
+    Action("app", "command_palette", "ctrl+p", "Ctrl+P", "find", "find an action of this screen by its name"),
+    Action("app", "quit", "ctrl+q", "Ctrl+Q", "leave", "leave from any screen; every edit is kept already"),
+    # rows: any list
+    Action("rows", "up", "up", "up", "up", "one row up"),
+    Action("rows", "down", "down", "down", "down", "one row down"),
+    Action("rows", "page_up", "pageup", "PgUp", "page up", "a screenful up"),
+    Action("rows", "page_down", "pagedown", "PgDn", "page down", "a screenful down"),
+    Action("rows", "first", "home", "Home", "first", "to the first row"),
+    Action("rows", "last", "end", "End", "last", "to the last row"),
+    # shelf
+    Action("shelf", "open", "enter", "Enter", "open", "open the design on the bench", 2),
+    Action("shelf", "new", "n", "n", "new", "a new design, empty or a copy of this one", 3),
+    Action("shelf", "import_file", "i", "i", "import", "put a design document (.json) on the shelf", 4),
+    Action("shelf", "quit", "q", "q", "leave", "leave; every edit is kept already", 5),
+    # bench
+    Action("bench", "change", "enter", "Enter", "change", "write another value; typing a digit begins at once", 2),
+    Action("bench", "step_down", "comma", ",", "lower", "next lower preferred value", 3),
+    Action("bench", "step_up", "full_stop", ".", "higher", "next higher preferred value", 3),
+    Action("bench", "undo", "u", "u", "undo", "take the last edit back, also across sittings", 4),
+    Action("bench", "redo", "U,r", "r", "redo", "do the undone edit again (U does the same)"),
+    Action("bench", "save", "s", "s", "save", "keep this state as a revision, with a note", 5),
+    Action("bench", "origin", "w", "w", "where from", "where the chosen margin comes from, with its quantities", 6),
+    Action("bench", "compare", "c", "c", "compare", "this draft beside the revision it began from", 7),
+    Action("bench", "history", "h", "h", "history", "the revisions of this design", 8),
+    Action("bench", "edit", "e", "e", "edit", "another field of the part: tolerance, rating, data ...", 9),
+    Action("bench", "all_stages", "m", "m", "all margins", "margins of all stages, or of the chosen one", 10),
+    Action("bench", "freeze", "f", "f", "freeze", "hold the figures back, to write a prediction first", 11),
+    Action("bench", "add_part", "a", "a", "add", "add a part to the chosen stage", 12),
+    Action("bench", "remove_part", "x", "x", "remove", "remove the part under the hand (asks first)", 13),
+    Action("bench", "previous_stage", "left", "left", "stage left", "the stage before"),
+    Action("bench", "next_stage", "right", "right", "stage right", "the stage after"),
+    Action("bench", "other_side", "tab,shift+tab", "Tab", "other side", "between the parts and the margins", 14),
+    Action("bench", "back", "escape,b", "b", "back", "back to the shelf (Esc does the same)", 15),
+    # origin of a margin, one revision, help
+    Action("revision", "origin", "w,enter", "w", "where from", "where the margin under the hand comes from", 2),
+    Action("revision", "back", "escape,b", "b", "back", "back (Esc does the same)", 3),
+    Action("page", "back", "escape,b,enter", "b", "back", "back (Esc and Enter do the same)", 2),
+    # history
+    Action("history", "look", "enter", "Enter", "look", "the note and the margins of this revision", 2),
+    Action("history", "mark", "space", "space", "mark", "mark or unmark a revision for comparing", 3),
+    Action("history", "compare", "c", "c", "compare", "the marked revisions side by side, else with its parent", 4),
+    Action("history", "branch", "o", "o", "go on from here", "let the draft continue from this revision (asks)", 5),
+    Action("history", "add_result", "t", "t", "add result", "write what came of it under this revision's note", 7),
+    Action("history", "trend_left", "left", "left", "trend", "the trend of the margin before"),
+    Action("history", "trend_right", "right", "left right", "trend", "the trend of the next margin", 6),
+    Action("history", "back", "escape,b", "b", "back", "back (Esc does the same)", 8),
+    # compare
+    Action("compare", "column_left", "left", "left", "column", "the causes of the revision before"),
+    Action("compare", "column_right", "right", "left right", "column", "the causes of the next revision", 3),
+    Action("compare", "origin", "w,enter", "w", "where from", "where the margin of this row comes from", 2),
+    Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 4),
+    # questions
+    Action("question", "yes", "y", "y", "yes", "do it", 2),
+    Action("question", "no", "n,escape", "n", "no", "leave it as it is (Esc does the same)", 3),
+    Action("form", "done", "enter", "Enter", "done", "take what is written", 2),
+    Action("form", "up", "up,shift+tab", "up", "up", "the field above"),
+    Action("form", "down", "down,tab", "down", "down", "the field below", 3),
+    Action("form", "cancel", "escape,ctrl+g", "Esc", "cancel", "leave everything as it is (Ctrl+G does the same)", 4),
+    Action("pick", "choose", "enter", "Enter", "choose", "take this one", 2),
+    Action("pick", "cancel", "escape,b", "b", "cancel", "leave everything as it is (Esc does the same)", 3),
+    Action("waiting", "now", "i", "i", "save incomplete", "save now, stamped incomplete: without worst corners", 2),
+    Action("waiting", "cancel", "escape,b", "b", "cancel", "do not save (Esc does the same)", 3),
+    Action("entry", "commit", "enter", "Enter", "take it", "put this value in", 2),
+    Action("entry", "cancel", "escape,ctrl+g", "Esc", "cancel", "leave the old value (Ctrl+G does the same)", 3),
+)
+
+
+def of(where: str) -> tuple[Action, ...]:
+    """The actions of one screen or widget, in the order of the registry."""
+    return tuple(action for action in ACTIONS if action.where == where)
+
+
+def bindings(where: str) -> list[BindingType]:
+    """The key bindings of one screen or widget; their ids let users bind other keys."""
+    return [
+        Binding(action.keys, action.name, action.label, id=action.id, show=action.footer > 0) for action in of(where)
+    ]

@@ -1,0 +1,139 @@
+"""Which figures of a draft are on the screen, how old each is, and what they are compared with. Pure values."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, replace
+
+from ..engine.results import CheckResult, Depth, MarginSheet, Verdict
+
+_RANK = {Verdict.FAIL: 0, Verdict.UNKNOWN: 1, Verdict.THIN: 2, Verdict.PASS: 3}
+
+
+@dataclass(frozen=True, slots=True)
+class FigureRow:
+    """One check: newest figures, whether each is still of the edited document, and the figure it had before.
+
+    ``check`` describes the check; its margin is a worst one only if ``worst_known``: a nominal figure never
+    stands where a worst one is read.
+    """
+
+    check: CheckResult
+    worst_known: bool
+    nominal: float | None
+    nominal_old: bool
+    worst_old: bool
+    before: CheckResult | None
+
+    @property
+    def difference(self) -> float | None:
+        """Worst margin now less the one before; None where either is missing."""
+        if not self.worst_known or self.before is None:
+            return None
+        if self.before.margin is None or self.check.margin is None:
+            return None
+        return self.check.margin - self.before.margin
+
+    @property
+    def worse(self) -> bool:
+        """Whether the verdict fell, or the margin by more than half a percent."""
+        if not self.worst_known or self.before is None:
+            return False
+        fell = _RANK[self.check.verdict] < _RANK[self.before.verdict]
+        return fell or (self.difference is not None and self.difference < -0.005)
+
+
+@dataclass(frozen=True, slots=True)
+class Figures:
+    """The sheets a bench shows. ``edited`` makes them old, ``arrived`` replaces them; nothing is ever blanked.
+
+    ``worst`` is the newest sheet of corners; ``nominal`` the newest sheet of any depth; ``before`` the sheet of
+    the revision compared with. ``held`` collects what arrives while frozen.
+    """
+
+    nominal: MarginSheet | None = None
+    worst: MarginSheet | None = None
+    before: MarginSheet | None = None
+    nominal_old: bool = True
+    worst_old: bool = True
+    spread_old: bool = True
+    frozen: bool = False
+    held: tuple[MarginSheet, ...] = ()
+
+    def edited(self) -> Figures:
+        """After an edit of the draft: every figure is old, whatever was held belongs to the past."""
+        return replace(self, nominal_old=True, worst_old=True, spread_old=True, held=())
+
+    def arrived(self, sheet: MarginSheet) -> Figures:
+        """With a fresh sheet shown, or held back while frozen."""
+        if self.frozen:
+            return replace(self, held=(*self.held, sheet))
+        if sheet.depth is Depth.NOMINAL:
+            return replace(self, nominal=sheet, nominal_old=False)
+        spread_old = sheet.depth is not Depth.SPREAD
+        return replace(self, nominal=sheet, nominal_old=False, worst=sheet, worst_old=False, spread_old=spread_old)
+
+    def compared_with(self, before: MarginSheet | None) -> Figures:
+        """Beside the figures of another revision."""
+        return replace(self, before=before)
+
+    def freeze(self) -> Figures:
+        """From now on what arrives is held back."""
+        return replace(self, frozen=True)
+
+    def thaw(self) -> Figures:
+        """Shows again, beginning with what was held back."""
+        shown = replace(self, frozen=False, held=())
+        for sheet in self.held:
+            shown = shown.arrived(sheet)
+        return shown
+
+    @property
+    def newest(self) -> MarginSheet | None:
+        """The deepest sheet that belongs to the document as it stands, held or shown; None while there is none."""
+        if self.held:
+            return self.held[-1]
+        if not self.worst_old:
+            return self.worst
+        return None if self.nominal_old else self.nominal
+
+    def rows(self, stage: str | None = None) -> tuple[FigureRow, ...]:
+        """The checks of one stage (None: of all), what got worse first, then by least slack."""
+        nominal = _by_id(self.nominal)
+        worst = _by_id(self.worst)
+        before = _by_id(self.before)
+        names = dict.fromkeys((*worst, *nominal)) if worst else dict.fromkeys(nominal)
+        rows = []
+        for name in names:
+            if self.nominal is not None and not self.nominal_old and name not in nominal:
+                continue
+            check = worst.get(name) or nominal[name]
+            if stage is not None and check.stage != stage:
+                continue
+            fresh = nominal.get(name)
+            rows.append(
+                FigureRow(
+                    check=check,
+                    worst_known=name in worst,
+                    nominal=(fresh or check).nominal,
+                    nominal_old=self.nominal_old or fresh is None,
+                    worst_old=self.worst_old or name not in worst,
+                    before=before.get(name),
+                )
+            )
+        return tuple(sorted(rows, key=_order))
+
+    def weakest(self, stage: str) -> FigureRow | None:
+        """The check of a stage with the least slack in its worst corner; None while no worst one is known."""
+        return min((row for row in self.rows(stage) if row.worst_known), key=lambda row: row.check.slack, default=None)
+
+
+def _by_id(sheet: MarginSheet | None) -> Mapping[str, CheckResult]:
+    return {} if sheet is None else {check.id: check for check in sheet.checks}
+
+
+def _order(row: FigureRow) -> tuple[int, float, float]:
+    if not row.worse:
+        return (2, row.check.slack if row.worst_known else -3.0, 0.0)
+    flipped = row.before is not None and row.check.verdict is not row.before.verdict
+    return (0 if flipped else 1, row.difference or -2.0, row.check.slack)

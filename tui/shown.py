@@ -1,0 +1,120 @@
+"""How figures, verdicts and foreign text are written on a screen: pure functions, no widgets."""
+
+from __future__ import annotations
+
+import unicodedata
+from collections.abc import Sequence
+from dataclasses import dataclass
+from math import floor
+
+from rich.cells import cell_len, set_cell_size
+
+from ..engine.results import CheckResult, Verdict
+
+MARKS = {Verdict.FAIL: "X", Verdict.THIN: "!", Verdict.PASS: "=", Verdict.UNKNOWN: "?"}
+WORDS = {Verdict.FAIL: "FAIL", Verdict.THIN: "thin", Verdict.PASS: "pass", Verdict.UNKNOWN: "unknown"}
+TONES = {Verdict.FAIL: "fail", Verdict.THIN: "thin", Verdict.PASS: "pass", Verdict.UNKNOWN: "unknown"}
+
+
+@dataclass(frozen=True, slots=True)
+class Span:
+    """A run of text in one tone. Tones are styled in the style sheet (``tone--NAME``); "" is plain text."""
+
+    text: str
+    tone: str = ""
+
+
+Line = tuple[Span, ...]
+
+
+def line(*pieces: str | Span) -> Line:
+    """A line from plain texts and spans."""
+    return tuple(Span(piece) if isinstance(piece, str) else piece for piece in pieces)
+
+
+def toned(spans: Line, tone: str) -> Line:
+    """The same text, all of it in one tone."""
+    return tuple(Span(span.text, tone) for span in spans)
+
+
+def plain(spans: Line) -> str:
+    """The text of a line without its tones."""
+    return "".join(span.text for span in spans)
+
+
+def visible(text: str) -> str:
+    """The text with every character that moves the cursor or hides itself written out.
+
+    Control characters become their Unicode pictures, format characters (direction overrides, zero widths),
+    line separators and lone surrogates become ``<U+202E>``, so that stored text can never steer the terminal.
+    """
+    if text.isprintable() and text.isascii():
+        return text
+    return "".join(map(_visible_character, text))
+
+
+def _visible_character(character: str) -> str:
+    code = ord(character)
+    if code < 0x20:
+        return chr(0x2400 + code)
+    if code == 0x7F:
+        return "\u2421"
+    if unicodedata.category(character) in {"Cc", "Cf", "Cs", "Cn", "Co", "Zl", "Zp"}:
+        return f"<U+{code:04X}>"
+    return character
+
+
+def fit(text: str, width: int) -> str:
+    """The visible text in exactly ``width`` cells: padded with spaces, or cut and closed with a full stop."""
+    if width <= 0:
+        return ""
+    shown = visible(text)
+    if cell_len(shown) <= width:
+        return shown + " " * (width - cell_len(shown))
+    return set_cell_size(shown, width - 1) + "." if width > 1 else set_cell_size(shown, 1)
+
+
+def fit_right(text: str, width: int) -> str:
+    """As :func:`fit`, but short texts stand at the right end."""
+    shown = visible(text)
+    return " " * (width - cell_len(shown)) + shown if cell_len(shown) < width else fit(text, width)
+
+
+def percent(margin: float | None) -> str:
+    """A margin in whole percent with its sign; a question mark when there is none.
+
+    Rounds towards minus infinity, so that a figure on screen is never better than the margin behind it.
+    """
+    if margin is None:
+        return "?"
+    return f"{floor(margin * 100 + 1e-9):+d}"
+
+
+def words_in(text: str, width: int) -> str:
+    """As many whole words of the text as fit into ``width`` cells, at least the cut first one."""
+    taken = ""
+    for word in visible(text).split():
+        longer = f"{taken} {word}".strip()
+        if cell_len(longer) > width:
+            break
+        taken = longer
+    return taken or set_cell_size(visible(text), width).rstrip()
+
+
+def figure(margin: float | None, outcome: str | None, width: int) -> str:
+    """A margin for a narrow column: the outcome in words where there is one, percent otherwise."""
+    return words_in(outcome, width) if outcome else percent(margin)
+
+
+def verdict_words(check: CheckResult) -> str:
+    """Mark, figure and word of one check: ``X -36 FAIL``."""
+    shown = check.outcome if check.outcome else percent(check.margin)
+    return f"{MARKS[check.verdict]} {visible(shown)} {WORDS[check.verdict]}"
+
+
+def columns(widths: Sequence[int], texts: Sequence[str], *, right: frozenset[int] = frozenset()) -> str:
+    """Texts side by side in columns of these widths, one space between them."""
+    return " ".join(
+        fit_right(text, width) if index in right else fit(text, width)
+        for index, (width, text) in enumerate(zip(widths, texts, strict=True))
+    )

@@ -1,0 +1,90 @@
+"""What the screens ask of the engine, as values handed in, so that a test can hand in something quicker."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from typing import Any, Protocol
+
+from ..engine.design.document import Design
+from ..engine.results import MarginSheet
+
+Cancelled = Callable[[], bool]
+Progress = Callable[[int, int], None]
+
+
+class Study(Protocol):
+    """All margins of a design; reports a sheet for every depth it comes to."""
+
+    def __call__(
+        self,
+        design: Design,
+        *,
+        lanes: int,
+        report: Callable[[MarginSheet], None],
+        progress: Progress,
+        cancelled: Cancelled,
+    ) -> MarginSheet:
+        """The deepest sheet. Raises EngineError with one line, Cancelled when asked to stop."""
+
+
+@dataclass(frozen=True, slots=True)
+class Share:
+    """What one check's margin changed by, and how much of it each changed part accounts for."""
+
+    before: float
+    after: float
+    shares: Mapping[str, float]
+    interaction: float
+
+
+Shares = Mapping[str, Share]
+
+
+class Causes(Protocol):
+    """The shares of every check's change between two designs, by the check's id."""
+
+    def __call__(self, old: Design, new: Design, *, progress: Progress, cancelled: Cancelled) -> Shares:
+        """The shares. Raises EngineError with one line, Cancelled when asked to stop."""
+
+
+class Preparation(Protocol):
+    """A child process that compiles the solver once for this machine."""
+
+    def poll(self) -> int | None:
+        """Its exit status, None while it runs."""
+
+
+@dataclass(frozen=True)
+class Solver:
+    """The engine's studies, the number of lanes of a spread, and how the compiled solver is prepared."""
+
+    study: Study
+    causes: Causes
+    ready: Callable[[], bool]
+    prepare: Callable[[], Preparation]
+    lanes: int = 1000
+
+
+def _study(design: Design, **how: Any) -> MarginSheet:
+    # Imported here, in the background thread and after the first paint: it loads the compiler.
+    from ..engine.studies.margins import study
+
+    return study(design, **how)
+
+
+def _causes(old: Design, new: Design, *, progress: Progress, cancelled: Cancelled) -> Shares:
+    from ..engine.studies.causes import causes
+
+    sheet = causes(old, new, progress=progress, cancelled=cancelled)
+    return {
+        check["id"]: Share(check["before"], check["after"], check["shares"], check["interaction"])
+        for check in sheet.as_json()["checks"]
+    }
+
+
+def own_solver() -> Solver:
+    """The program's own solver, whose compiled code lies in the user's cache folder."""
+    from .solver_cache import prepare, ready
+
+    return Solver(study=_study, causes=_causes, ready=ready, prepare=prepare)

@@ -1,0 +1,70 @@
+"""Plain lines in named tones: the one way text reaches the screen, never read as markup."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import ClassVar
+
+from rich.segment import Segment
+from rich.style import Style
+from textual.geometry import Region
+from textual.strip import Strip
+from textual.widget import Widget
+
+from ..shown import Line, Span, visible
+
+TONE_NAMES = frozenset({"dim", "strong", "fail", "thin", "pass", "unknown", "here"})
+
+
+class TonedWidget(Widget):
+    """A widget that draws lines of spans. The style sheet styles its ``tone--NAME`` component classes."""
+
+    COMPONENT_CLASSES: ClassVar[set[str]] = {f"tone--{name}" for name in TONE_NAMES}
+    DEFAULT_CSS = """
+    TonedWidget .tone--dim { text-style: dim; }
+    TonedWidget .tone--strong { text-style: bold; }
+    TonedWidget .tone--fail { color: ansi_red; text-style: bold; }
+    TonedWidget .tone--thin { color: ansi_yellow; }
+    TonedWidget .tone--pass { color: ansi_green; }
+    TonedWidget .tone--unknown { color: ansi_magenta; }
+    TonedWidget .tone--here { text-style: reverse; }
+    """
+
+    def strip(self, spans: Line, *, reverse: bool = False) -> Strip:
+        """One line of the widget's width. Control characters are written out; tones outside the set are plain."""
+        base = self.rich_style + Style(reverse=True) if reverse else self.rich_style
+        segments = [Segment(visible(span.text), self._style(span, base)) for span in spans if span.text]
+        return Strip(segments).adjust_cell_length(self.size.width, base)
+
+    def _style(self, span: Span, base: Style) -> Style:
+        if span.tone not in TONE_NAMES:
+            return base
+        return base + self.get_component_rich_style(f"tone--{span.tone}", partial=True)
+
+
+class Lines(TonedWidget):
+    """Lines to read. :meth:`show` repaints only those that changed."""
+
+    def __init__(self, *lines: Line, id: str | None = None, classes: str | None = None) -> None:
+        super().__init__(id=id, classes=classes)
+        self._lines: tuple[Line, ...] = lines
+
+    @property
+    def lines(self) -> tuple[Line, ...]:
+        """What is shown."""
+        return self._lines
+
+    def show(self, *lines: Line) -> None:
+        """Shows these lines from the top; the rest of the widget is empty."""
+        old, self._lines = self._lines, lines
+        for y in range(max(len(old), len(lines))):
+            if _at(old, y) != _at(lines, y):
+                self.refresh(Region(0, y, self.size.width, 1))
+
+    def render_line(self, y: int) -> Strip:
+        """One line, as Textual's compositor asks for it."""
+        return self.strip(_at(self._lines, y))
+
+
+def _at(lines: Sequence[Line], y: int) -> Line:
+    return lines[y] if y < len(lines) else ()

@@ -1,0 +1,73 @@
+"""The two lowest lines of every screen: the newest notice, and the keys."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+from rich.cells import cell_len
+
+from ..actions import Action, of
+from ..shown import Line, Span, line
+from .lines import Lines
+
+
+class Notice(Lines):
+    """The newest notice, one line. It stays until something newer is said."""
+
+    def say(self, text: str) -> None:
+        """Something to know."""
+        self.show(line(" " + text))
+
+    def refuse(self, text: str) -> None:
+        """Something that was not done, with its reason."""
+        self.show(line(Span(" X ", "fail"), text))
+
+    @property
+    def text(self) -> str:
+        """What is said."""
+        return "".join(span.text for shown in self.lines for span in shown).strip()
+
+
+class KeyLine(Lines):
+    """The keys of a screen, as many as fit, from the registry of actions."""
+
+    def __init__(self, where: str, id: str | None = None) -> None:
+        super().__init__(id=id)
+        self._where = where
+
+    def of(self, where: str) -> None:
+        """Shows the keys of another place."""
+        self._where = where
+        self._draw()
+
+    def on_resize(self) -> None:
+        """Another width shows more or fewer keys."""
+        self._draw()
+
+    def _draw(self) -> None:
+        if self.size.width:
+            self.show(key_line((*of(self._where), *of("app")), self.size.width))
+
+
+def key_line(actions: Sequence[Action], width: int) -> Line:
+    """The keys in the order of the footer; those that do not fit give way from the end, the help key never."""
+    ranked = sorted((action for action in actions if action.footer), key=lambda action: action.footer)
+    last = [action for action in ranked if action.where == "app"]
+    used = sum(_cells(action) for action in last)
+    spans: list[Span] = []
+    for action in (action for action in ranked if action.where != "app"):
+        if used + _cells(action) > width:
+            break
+        used += _cells(action)
+        spans += _spans(action)
+    for action in last:
+        spans += _spans(action)
+    return tuple(spans)
+
+
+def _spans(action: Action) -> tuple[Span, Span]:
+    return Span(f" {action.shown}", "strong"), Span(f" {action.label} ")
+
+
+def _cells(action: Action) -> int:
+    return sum(cell_len(span.text) for span in _spans(action))

@@ -1,0 +1,66 @@
+"""The line in which a value for the part under the hand is written."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import BindingType
+from textual.containers import Horizontal
+from textual.message import Message
+from textual.widgets import Input
+
+from ..actions import bindings
+from ..shown import Span, line, visible
+from .lines import Lines
+
+
+class TextLine(Input):
+    """A line of text to write in, whose cursor does not blink."""
+
+    def __init__(self, value: str = "", placeholder: str = "", id: str | None = None) -> None:
+        super().__init__(visible(value), placeholder=placeholder, id=id, compact=True)
+        self.cursor_blink = False
+
+
+class ValueEntry(Horizontal):
+    """A label and a line to write in. The owner shows it, and is told what was written or that it was left."""
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("entry")
+
+    @dataclass
+    class Committed(Message):
+        """Enter was pressed: this was written."""
+
+        text: str
+
+    class Left(Message):
+        """Nothing is to change."""
+
+    def compose(self) -> ComposeResult:
+        """Label and line."""
+        yield Lines(classes="label")
+        yield TextLine()
+
+    def begin(self, label: str, text: str, *, typed: bool) -> None:
+        """Takes the keyboard. ``typed`` texts are continued; others are replaced by the first key."""
+        self.query_one(Lines).show(line(Span(f" {label} ", "strong")))
+        entry = self.query_one(TextLine)
+        entry.select_on_focus = not typed
+        entry.value = visible(text)
+        entry.cursor_position = len(entry.value)
+        entry.focus()
+
+    def on_input_submitted(self, event: Input.Submitted) -> None:
+        """Enter."""
+        event.stop()
+        self.post_message(self.Committed(event.value))
+
+    def action_commit(self) -> None:
+        """Takes what is written."""
+        self.post_message(self.Committed(self.query_one(TextLine).value))
+
+    def action_cancel(self) -> None:
+        """Leaves the old value."""
+        self.post_message(self.Left())
