@@ -144,15 +144,16 @@ def _of_draft(session: Session, design: StoredDesign, rows: Sequence[StoredRevis
         saved.setdefault(row.edit_id, []).append(row)
     document, at = draft.document, draft.head_id
     try:
-        Design.load(document)
+        here = Design.load(document)
         while True:
             for row in saved.get(at, []):
-                if json.loads(document) != json.loads(row.document):
+                if Design.load(row.document) != here:
                     yield f'"{design.name}": the edits of the draft do not lead to r{row.number}.'
             edit = None if at is None else session.get(StoredEdit, at)
             if edit is None:
                 break
             document, at = moved(document, edit.inverse, design.name), edit.parent_id
+            here = Design.load(document)
     except (EngineError, StorageError, ValueError) as error:
         yield f'"{design.name}": the draft cannot be read: {error}'
 
