@@ -19,7 +19,7 @@ from . import revisions
 from .edits import moved
 from .errors import StorageError
 from .place import beside
-from .seal import entry_hash
+from .seal import canonical, entry_hash
 from .store import Store
 from .tables import SCHEMA, StoredDesign, StoredDraft, StoredEdit, StoredMargin, StoredRevision, triggers
 
@@ -134,28 +134,46 @@ def _of_entries(session: Session, row: StoredRevision, where: str) -> Iterator[s
 
 
 def _of_draft(session: Session, design: StoredDesign, rows: Sequence[StoredRevision]) -> Iterator[str]:
-    """Undo all edits of the draft in memory: at every revision on the way the document must be the saved one."""
     draft = session.get(StoredDraft, design.id)
     if draft is None:
         yield f'"{design.name}": the draft is gone.'
         return
+    try:
+        Design.load(draft.document)
+        yield from _of_edits(session, design, draft, rows)
+    except (EngineError, StorageError, ValueError) as error:
+        yield f'"{design.name}": the draft cannot be read: {error}'
+
+
+def _of_edits(
+    session: Session, design: StoredDesign, draft: StoredDraft, rows: Sequence[StoredRevision]
+) -> Iterator[str]:
+    """Undo all edits of the draft in memory, then do every edit of the tree, and compare at each saved state."""
+    edits = session.exec(select(StoredEdit).where(StoredEdit.design_id == design.id)).all()
+    by_id = {edit.id: edit for edit in edits}
+    after: dict[int | None, list[StoredEdit]] = {}
+    for edit in edits:
+        after.setdefault(edit.parent_id, []).append(edit)
     saved: dict[int | None, list[StoredRevision]] = {}
     for row in rows:
         saved.setdefault(row.edit_id, []).append(row)
-    document, at = draft.document, draft.head_id
-    try:
-        here = Design.load(document)
-        while True:
-            for row in saved.get(at, []):
-                if Design.load(row.document) != here:
-                    yield f'"{design.name}": the edits of the draft do not lead to r{row.number}.'
-            edit = None if at is None else session.get(StoredEdit, at)
-            if edit is None:
-                break
-            document, at = moved(document, edit.inverse, design.name), edit.parent_id
-            here = Design.load(document)
-    except (EngineError, StorageError, ValueError) as error:
-        yield f'"{design.name}": the draft cannot be read: {error}'
+
+    head = canonical(json.loads(draft.document))
+    document, at = head, draft.head_id
+    while at is not None and at in by_id:
+        document, at = moved(document, by_id[at].inverse, design.name), by_id[at].parent_id
+    states: list[tuple[int | None, str]] = [(None, document)]
+    while states:
+        at, document = states.pop()
+        if at == draft.head_id and document != head:
+            yield f'"{design.name}": the edits do not lead to the draft.'
+        for row in saved.get(at, []):
+            if Design.load(row.document) != Design.load(document):
+                yield f'"{design.name}": the edits do not lead to r{row.number}.'
+        for edit in after.get(at, []):
+            states.append((edit.id, moved(document, edit.forward, design.name)))
+            if moved(states[-1][1], edit.inverse, design.name) != document:
+                yield f'"{design.name}": the edit "{edit.label}" of {edit.made} is not the one that was made.'
 
 
 def _advice(store: Store) -> Iterator[str]:

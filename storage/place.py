@@ -9,6 +9,9 @@ from platformdirs import user_data_path
 
 from .errors import StoreUnreadable
 
+HEADER = 100
+"""Bytes at the head of every database (SQLite file format, section 1.3)."""
+
 
 def default_path() -> Path:
     """The database file that STAGEBOOK_STORE names, otherwise the one in the user's data folder."""
@@ -38,6 +41,8 @@ def prepare(path: Path) -> None:
             raise StoreUnreadable(
                 f"{log} is there without its database: put {path.name} back beside it, or move {log.name} away."
             )
+        if 0 < size < HEADER:  # SQLite takes a file of one byte for a new database
+            raise StoreUnreadable(f"{path} is not a Stagebook store: name another file with --store.")
         os.close(os.open(path, os.O_CREAT | os.O_RDONLY, 0o600))
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
