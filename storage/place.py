@@ -21,7 +21,7 @@ def default_path() -> Path:
 
 def beside(path: Path, ending: str) -> Path:
     """The file next to ``path`` whose name has ``ending`` added, as SQLite names its log."""
-    return path.with_name(path.name + ending)
+    return path.parent / f"{path.name}{ending}"
 
 
 def prepare(path: Path) -> None:

@@ -53,11 +53,13 @@ def test_names_with_characters_of_addresses_are_no_trouble(tmp_path: Path) -> No
     assert path.stat().st_size > 0
 
 
-@pytest.mark.parametrize("kind", ["folder", "below a file", "no character", "lost database"])
+@pytest.mark.parametrize("kind", ["folder", "root", "below a file", "no character", "lost database"])
 def test_a_place_that_cannot_be_used_is_told_in_one_line(tmp_path: Path, kind: str, plain: Plain) -> None:
     path = tmp_path / "s.sqlite3"
     if kind == "folder":
         path.mkdir()
+    elif kind == "root":
+        path = Path("/")
     elif kind == "below a file":
         path.write_text("x")
         path = path / "s.sqlite3"
