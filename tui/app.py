@@ -53,8 +53,11 @@ def _parser(written: Sequence[str]) -> ArgumentParser:
     parser = _Parser(
         prog="stagebook",
         description="Design small discrete-transistor alarm and timer units.",
+        epilog="WHAT is a design on the shelf, or a file if it ends in .json or has a / in it.",
     )
     parser.add_argument("--version", action="version", version=f"stagebook {_version()}")
+    shelf_help = "the database file (otherwise STAGEBOOK_STORE, or the user's own)"
+    parser.add_argument("--store", metavar="PATH", help=shelf_help)
     parsers = parser.add_subparsers(dest="command", metavar="COMMAND", required=True, parser_class=_Parser)
     for name, (_, line) in COMMANDS.items():
         one = parsers.add_parser(name, help=line, description=f"{line[0].upper()}{line[1:]}.")

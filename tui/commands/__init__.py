@@ -7,6 +7,9 @@ from importlib import import_module
 from typing import Protocol, cast
 
 COMMANDS = {
+    "list": ("shelf", "the designs on the shelf"),
+    "import": ("take_in", "put a design document on the shelf"),
+    "export": ("hand_out", "write a design document to a file"),
     "schema": ("schema", "the JSON Schema of the design document"),
 }
 """Every command, in the order of the help, with the file that holds it and its help line."""

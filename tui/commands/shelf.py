@@ -1,0 +1,46 @@
+"""``stagebook list``: the designs on the shelf."""
+
+from __future__ import annotations
+
+from argparse import ArgumentParser, Namespace
+from typing import TYPE_CHECKING, Any
+
+from ..shown import percent, visible
+from .printing import json_argument, print_json, print_table, print_words
+from .what import open_store, shelf_arguments
+
+if TYPE_CHECKING:
+    from ...storage import DesignRow
+
+
+def arguments(parser: ArgumentParser) -> None:
+    """Declare ``--json`` and ``--store``."""
+    json_argument(parser)
+    shelf_arguments(parser)
+
+
+def run(asked: Namespace) -> int:
+    """Print the shelf, each design with its newest revision's worst margin."""
+    with open_store(asked) as store:
+        rows = store.designs()
+    if asked.json:
+        print_json({"designs": [_entry(row) for row in rows]})
+    elif rows:
+        heads = ("design", "revisions", "edits", "saved", "worst %", "verdict", "check")
+        print_table(heads, [_cells(row) for row in rows], right=frozenset({1, 2, 4}))
+    else:
+        print_words(
+            "The shelf is empty. `stagebook import FILE` puts a design on it, `stagebook demo` the demo designs."
+        )
+    return 0
+
+
+def _entry(row: DesignRow) -> dict[str, Any]:
+    worst = row.worst and {"id": row.worst.id, "margin": row.worst.margin, "verdict": row.worst.verdict}
+    return {"name": row.name, "revisions": row.revisions, "saved": row.saved, "worst": worst}
+
+
+def _cells(row: DesignRow) -> tuple[str, ...]:
+    saved = row.saved[:16].replace("T", " ") if row.saved else "never"
+    worst = (percent(row.worst.margin), str(row.worst.verdict), visible(row.worst.id)) if row.worst else ("", "", "")
+    return (visible(row.name), str(row.revisions), str(row.edits_pending), saved, *worst)

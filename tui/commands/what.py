@@ -1,0 +1,125 @@
+"""Which design a command is about: one on the shelf, in a revision or as the draft stands, or a file."""
+
+from __future__ import annotations
+
+import os
+from argparse import SUPPRESS, ArgumentParser, ArgumentTypeError, Namespace
+from collections.abc import Iterator
+from contextlib import contextmanager
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from ...engine.design.document import Design
+from ...engine.design.intake import MOST_BYTES
+from ...engine.errors import DesignError
+from .refusal import CommandRefused
+
+if TYPE_CHECKING:
+    from ...storage import Store
+
+
+@dataclass(frozen=True, slots=True)
+class Subject:
+    """The design that a command is about. ``revision`` is None for a file and for a draft."""
+
+    name: str
+    design: Design
+    revision: int | None
+
+    @property
+    def title(self) -> str:
+        """The name with the revision, as headings show it."""
+        return self.name if self.revision is None else f"{self.name} r{self.revision}"
+
+
+def shelf_arguments(parser: ArgumentParser) -> None:
+    """Declare ``--store``, which may stand before or behind the command."""
+    parser.add_argument("--store", metavar="PATH", default=SUPPRESS, help="the database file")
+
+
+def subject_arguments(parser: ArgumentParser) -> None:
+    """Declare WHAT, ``--revision``, ``--draft`` and ``--store``."""
+    parser.add_argument(
+        "what", metavar="WHAT", help="a design on the shelf, or a file (ends in .json or has a / in it)"
+    )
+    which = parser.add_mutually_exclusive_group()
+    which.add_argument("--revision", metavar="N", type=revision_number, help="a revision (default: the newest one)")
+    which.add_argument("--draft", action="store_true", help="the draft instead of a revision")
+    shelf_arguments(parser)
+
+
+def revision_number(text: str) -> int:
+    """A revision number as the command line writes it: ``3`` or ``r3``."""
+    digits = text.removeprefix("r")
+    if not (digits.isascii() and digits.isdecimal() and len(digits) < 10 and int(digits) > 0):
+        raise ArgumentTypeError(f"{text!r} is not a revision; write its number, such as 3")
+    return int(digits)
+
+
+def is_file(what: str) -> bool:
+    """Whether WHAT names a file and not a design on the shelf."""
+    return what.endswith(".json") or "/" in what
+
+
+def find(asked: Namespace) -> Subject:
+    """The design that the arguments of :func:`subject_arguments` name. A design never saved yet stands as its draft."""
+    if is_file(asked.what):
+        if asked.draft or asked.revision is not None:
+            raise CommandRefused(f"{asked.what} is a file, which has no revisions; leave out --revision and --draft")
+        design = load_file(asked.what)
+        return Subject(design.name, design, None)
+    with open_store(asked) as store:
+        draft = store.draft(asked.what)
+        if asked.draft or (asked.revision is None and draft.base_revision is None):
+            return Subject(draft.name, draft.design, None)
+        revision = store.revision(asked.what, asked.revision)
+        return Subject(draft.name, revision.design, revision.number)
+
+
+def load_file(path: str) -> Design:
+    """The design document in a file. Refusals name the file."""
+    try:
+        with open(path, "rb") as file:
+            document = file.read(MOST_BYTES + 1)
+    except (OSError, ValueError) as error:
+        raise CommandRefused(f"{path} cannot be read ({_reason(error)}); name a design document") from error
+    try:
+        return Design.load(document)
+    except DesignError as refusal:
+        raise CommandRefused(f"{path}: {refusal}") from refusal
+
+
+def write_file(path: str, content: bytes) -> None:
+    """Put ``content`` into a file, whole or not at all. Refusals name the file."""
+    target = Path(path)
+    half = target.with_name(f".{target.name}.{os.getpid()}")
+    try:
+        if target.exists() and not target.is_file():
+            # A device or a pipe cannot be replaced by a renamed file.
+            target.write_bytes(content)
+            return
+        half.write_bytes(content)
+        half.replace(target)
+    except (OSError, ValueError) as error:
+        half.unlink(missing_ok=True)
+        raise CommandRefused(
+            f"{path} cannot be written ({_reason(error)}); name a file in a folder of yours"
+        ) from error
+
+
+@contextmanager
+def open_store(asked: Namespace) -> Iterator[Store]:
+    """The shelf that ``--store`` or the environment names. What the store refuses is refused by the command."""
+    # Imported here: the database machinery takes longer to load than a command on a file needs altogether.
+    from ...storage import StorageError, Store, default_path
+
+    try:
+        with Store.open(default_path() if asked.store is None else Path(asked.store)) as store:
+            yield store
+    except StorageError as refusal:
+        raise CommandRefused(str(refusal)) from refusal
+
+
+def _reason(error: Exception) -> str:
+    return getattr(error, "strerror", None) or str(error)
