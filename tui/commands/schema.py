@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from argparse import ArgumentParser, Namespace
 
-from ...engine.design.document import Design
+from ...engine.design.schema import schema
 from .printing import print_json
 
 
@@ -14,6 +14,5 @@ def arguments(parser: ArgumentParser) -> None:
 
 def run(asked: Namespace) -> int:
     """Print the schema."""
-    schema = {"$schema": "https://json-schema.org/draft/2020-12/schema", **Design.model_json_schema()}
-    print_json(schema)
+    print_json(schema())
     return 0
