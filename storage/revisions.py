@@ -15,6 +15,9 @@ from .seal import canonical, entry_hash, revision_hash
 from .tables import StoredDesign, StoredDraft, StoredEntry, StoredMargin, StoredRevision
 from .values import ADDABLE, Note, NoteEntry, Revision
 
+_BEYOND = 2**31
+"""A number that no revision has; larger ones do not go into the database's integers."""
+
 
 def save(
     session: Session, design: StoredDesign, draft: StoredDraft, note: Note, sheet: MarginSheet, now: str
@@ -92,7 +95,7 @@ def find(session: Session, design: StoredDesign, number: int | None) -> StoredRe
     """The revision of this number, the newest for None."""
     rows = select(StoredRevision).where(StoredRevision.design_id == design.id)
     if number is not None:
-        rows = rows.where(StoredRevision.number == number)
+        rows = rows.where(StoredRevision.number == max(0, min(number, _BEYOND)))
     row = session.exec(rows.order_by(col(StoredRevision.number).desc()).limit(1)).first()
     if row is not None:
         return row

@@ -249,13 +249,15 @@ class Store:
 
     def _find(self, session: Session, name: str) -> _Place:
         rows = select(StoredDesign, StoredDraft).where(StoredDraft.design_id == StoredDesign.id)
-        found = session.exec(rows.where(StoredDesign.name == normalize("NFC", name))).first()
+        # What cannot be written as UTF-8 is in no name; a ? stands for it here, which is in no name either.
+        wanted = normalize("NFC", name).encode(errors="replace").decode()
+        found = session.exec(rows.where(StoredDesign.name == wanted)).first()
         if found is not None:
             return _Place(*found)
         names = session.exec(select(StoredDesign.name)).all()
         near = get_close_matches(name, names, n=1)
         advice = f'did you mean "{near[0]}"?' if near else "see the names with `stagebook list`."
-        raise DesignMissing(f"There is no design {name!r} on the shelf: {advice}")
+        raise DesignMissing(f"There is no design {name[:70]!r} on the shelf: {advice}")
 
     def _shown(self, session: Session, place: _Place, design: Design | None = None) -> Draft:
         number, saved_at = shelf.base(session, place.draft)

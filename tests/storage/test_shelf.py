@@ -86,9 +86,10 @@ def test_a_missing_design_is_named_with_its_nearest_neighbour(flood: Store, desi
         assert 'did you mean "flood"?' in str(refusal.value)
     with pytest.raises(DesignMissing, match="stagebook list"):
         flood.draft("something else")
-    with pytest.raises(DesignMissing) as refusal:
-        flood.draft("a\nb")
-    assert plain(refusal.value)
+    for name in ("a\nb", "\udcff", "x" * 100_000, ""):
+        with pytest.raises(DesignMissing) as refusal:
+            flood.draft(name)
+        assert plain(refusal.value).isprintable()
 
 
 def test_all_is_there_in_the_next_sitting(path: Path, design: Callable, sheet: Callable) -> None:
