@@ -123,10 +123,6 @@ class Figures:
             )
         return tuple(sorted(rows, key=_order))
 
-    def weakest(self, stage: str) -> FigureRow | None:
-        """The check of a stage with the least slack in its worst corner; None while no worst one is known."""
-        return min((row for row in self.rows(stage) if row.worst_known), key=lambda row: row.check.slack, default=None)
-
 
 def _by_id(sheet: MarginSheet | None) -> Mapping[str, CheckResult]:
     return {} if sheet is None else {check.id: check for check in sheet.checks}

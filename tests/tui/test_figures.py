@@ -28,7 +28,6 @@ def test_a_nominal_figure_never_stands_where_a_worst_one_is_read() -> None:
     assert (row.check.margin, row.worst_old) == (0.4, True)
     first = Figures().arrived(nominal(AFTER))
     assert all(not row.worst_known for row in first.rows())
-    assert first.weakest("timer") is None
 
 
 def test_what_got_worse_comes_first() -> None:

@@ -58,7 +58,7 @@ class Lines(TonedWidget):
         """Shows these lines from the top; the rest of the widget is empty."""
         old, self._lines = self._lines, lines
         for y in range(max(len(old), len(lines))):
-            if _at(old, y) != _at(lines, y):
+            if self.is_attached and _at(old, y) != _at(lines, y):
                 self.refresh(Region(0, y, self.size.width, 1))
 
     def render_line(self, y: int) -> Strip:

@@ -1,0 +1,226 @@
+"""A store with one design, a solver that answers at once or when it is let, and ways to wait for screens."""
+
+from __future__ import annotations
+
+import asyncio
+import threading
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass, field, replace
+from pathlib import Path
+from typing import Any
+
+import pytest
+from textual.pilot import Pilot
+
+from stagebook.engine.design.differences import differences
+from stagebook.engine.design.document import Design
+from stagebook.engine.errors import Cancelled, CircuitError
+from stagebook.engine.quantity import read
+from stagebook.engine.results import CheckResult, Depth, MarginSheet, Spread
+from stagebook.storage import Note, Store
+from stagebook.tui.solver import Share, Solver
+from stagebook.tui.stagebook_app import StagebookApp
+
+from .sheets import check, verdict_of
+
+STAGES = ("probe", "amplifier", "latch", "timer", "driver", "piezo", "lamp")
+
+
+def document(name: str = "flood", stages: tuple[str, ...] = STAGES, **values: str) -> dict[str, Any]:
+    """A chain of stages, each with two resistors and a capacitor; ``values`` replaces values by reference."""
+    made = []
+    for at, stage in enumerate(stages, start=1):
+        parts = [
+            {"ref": f"R{2 * at - 1}", "kind": "resistor", "value": "470k", "tolerance": "5 %"},
+            {"ref": f"R{2 * at}", "kind": "resistor", "value": "1k", "tolerance": "5 %"},
+            {"ref": f"C{at}", "kind": "capacitor", "value": "220u", "tolerance": "20 %"},
+        ]
+        pins = {"a": "supply", "b": "0V"}
+        made.append(
+            {
+                "name": stage,
+                "kind": "free",
+                "roles": {"timing_resistor": f"R{2 * at - 1}"},
+                "parts": [{**part, "pins": pins, "value": values.get(part["ref"], part["value"])} for part in parts],
+            }
+        )
+    return {
+        "stagebook": 1,
+        "name": name,
+        "conditions": {
+            "supply": {"min": "4 V", "nominal": "6 V", "max": "6.4 V"},
+            "ambient": {"min": "0 C", "nominal": "25 C", "max": "50 C"},
+        },
+        "stages": made,
+        "sequences": {"alarm": {"events": [{"at": "0 s", "event": "connect supply"}], "ends": "5 s"}},
+    }
+
+
+def flood(**values: str) -> Design:
+    return Design.load(document(**values))
+
+
+def _margins(design: Design) -> dict[str, tuple[str, float]]:
+    """Made up for these tests: a resistor's margin is 1 - 330k/R for the first of a stage, 1 - R/3k for the second."""
+    found = {}
+    for stage in design.stages:
+        for part in stage.parts:
+            if part.kind == "resistor" and part.value is not None:
+                value = read(part.value, "ohm")
+                margin = 1 - 330e3 / value if value > 50e3 else 1 - value / 3e3
+                found[f"{'arrival' if value > 50e3 else 'overdrive'}:{stage.name}:{part.ref}"] = (stage.name, margin)
+    return found
+
+
+@dataclass
+class Gates:
+    """Lets the depths of the study below through; all stand open at first."""
+
+    nominal: threading.Event = field(default_factory=threading.Event)
+    corners: threading.Event = field(default_factory=threading.Event)
+    spread: threading.Event = field(default_factory=threading.Event)
+    causes: threading.Event = field(default_factory=threading.Event)
+    refusal: str = ""
+    studied: list[str] = field(default_factory=list)
+    cancelled: list[str] = field(default_factory=list)
+
+    def open(self) -> None:
+        for gate in (self.nominal, self.corners, self.spread, self.causes):
+            gate.set()
+
+    def shut(self, *names: str) -> None:
+        for name in names:
+            getattr(self, name).clear()
+
+    def study(
+        self,
+        design: Design,
+        *,
+        lanes: int,
+        report: Callable[[MarginSheet], None],
+        progress: Callable[[int, int], None],
+        cancelled: Callable[[], bool],
+    ) -> MarginSheet:
+        self.studied.append(design.content)
+        if self.refusal:
+            raise CircuitError(self.refusal)
+        worst = [
+            check(name, margin, stage=stage, outcome="never times out" if margin < -1 else None)
+            for name, (stage, margin) in _margins(design).items()
+        ]
+        sheet = MarginSheet(design.name, design.content, "1", 1, 0, 0.1, Depth.CORNERS, tuple(worst))
+        self._wait(self.nominal, cancelled, design)
+        report(replace(sheet, depth=Depth.NOMINAL, checks=tuple(map(_nominal, worst))))
+        self._wait(self.corners, cancelled, design)
+        report(sheet)
+        self._wait(self.spread, cancelled, design)
+        progress(lanes, lanes)
+        done = replace(sheet, depth=Depth.SPREAD, lanes=lanes, checks=tuple(map(_spread, worst)))
+        report(done)
+        return done
+
+    def causes_of(
+        self,
+        old: Design,
+        new: Design,
+        *,
+        progress: Callable[[int, int], None],
+        cancelled: Callable[[], bool],
+    ) -> Mapping[str, Share]:
+        self._wait(self.causes, cancelled, new)
+        before, after = _margins(old), _margins(new)
+        changed = [change.what for change in differences(old, new)]
+        return {
+            name: Share(
+                before[name][1],
+                after[name][1],
+                {what: (after[name][1] - before[name][1]) * (what in name) for what in changed},
+                0.0,
+            )
+            for name in after
+            if name in before
+        }
+
+    def _wait(self, gate: threading.Event, cancelled: Callable[[], bool], design: Design) -> None:
+        while not gate.wait(0.005):
+            if cancelled():
+                self.cancelled.append(design.content)
+                raise Cancelled("stopped")
+
+
+def _nominal(worst: CheckResult) -> CheckResult:
+    return replace(worst, margin=worst.nominal, verdict=verdict_of(worst.nominal), corner="nominal", outcome=None)
+
+
+def _spread(worst: CheckResult) -> CheckResult:
+    return replace(worst, spread=Spread(0.1, 0.2, 0.3, 0.98, (0.97, 0.99)))
+
+
+@pytest.fixture
+def gates() -> Gates:
+    made = Gates()
+    made.open()
+    return made
+
+
+@pytest.fixture
+def solver(gates: Gates) -> Solver:
+    return Solver(study=gates.study, causes=gates.causes_of, ready=lambda: True, prepare=_nothing, lanes=40)
+
+
+def _nothing() -> Any:
+    raise AssertionError("a solver that is ready needs no preparing")
+
+
+@pytest.fixture
+def store(tmp_path: Path) -> Iterator[Store]:
+    with Store.open(tmp_path / "shelf.sqlite3") as opened:
+        yield opened
+
+
+def corners(gates: Gates, design: Design) -> MarginSheet:
+    """The sheet of corners that the solver above gives for a design."""
+    found: list[MarginSheet] = []
+    gates.study(design, lanes=0, report=found.append, progress=lambda done, total: None, cancelled=lambda: False)
+    return next(sheet for sheet in found if sheet.depth is Depth.CORNERS)
+
+
+@pytest.fixture
+def shelf(store: Store, gates: Gates) -> Store:
+    """One design with two revisions; the second made the timer's resistor smaller."""
+    store.create("flood", flood())
+    store.save("flood", Note("first try"), corners(gates, flood()))
+    store.edit("flood", "R7 390k", flood(R7="390k"))
+    store.save("flood", Note("a quicker timer", prediction="shorter"), corners(gates, flood(R7="390k")))
+    return store
+
+
+@pytest.fixture
+def app(shelf: Store, solver: Solver) -> StagebookApp:
+    return StagebookApp(shelf, solver)
+
+
+async def until(pilot: Pilot[None], holds: Callable[[], bool]) -> None:
+    """Waits until something holds on the screen; fails after ten seconds."""
+    async with asyncio.timeout(10):
+        while not holds():
+            await pilot.pause(0.005)
+    await pilot.pause()
+
+
+async def settled(pilot: Pilot[None]) -> None:
+    """Waits until nothing is computed any more and every message about it has been handled."""
+    app = pilot.app
+    assert isinstance(app, StagebookApp)
+    await pilot.pause()
+    await until(pilot, lambda: app.computing.idle)
+
+
+def shown(pilot: Pilot[None]) -> list[str]:
+    """The lines of the screen in front as they are drawn."""
+    return [strip.text for strip in pilot.app.screen._compositor.render_strips()]
+
+
+def seen(pilot: Pilot[None]) -> str:
+    """The screen in front as one text."""
+    return "\n".join(shown(pilot))

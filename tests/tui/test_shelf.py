@@ -1,0 +1,81 @@
+"""The shelf: what it lists, and how designs come onto it."""
+
+from __future__ import annotations
+
+import json
+from pathlib import Path
+
+import pytest
+
+from stagebook.storage import Store
+from stagebook.tui.screens.bench import BenchScreen
+from stagebook.tui.screens.shelf import ShelfScreen
+from stagebook.tui.solver import Solver
+from stagebook.tui.stagebook_app import StagebookApp
+from stagebook.tui.widgets.status import Notice
+
+from .conftest import document, seen, settled, until
+
+SIZE = (80, 24)
+
+
+async def test_the_shelf_lists_revision_time_and_worst_margin(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        row = next(text for text in seen(pilot).splitlines() if "flood" in text)
+        assert "r2" in row
+        assert "= +15 pass" in row
+
+
+async def test_a_copy_of_a_design_opens_on_the_bench(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("n", "down", "enter", *"flood 2", "enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
+        assert shelf.draft("flood 2").design.part("R7").value == "390k"
+        assert shelf.draft("flood 2").design.name == "flood 2"
+
+
+async def test_an_empty_design_can_be_begun(store: Store, solver: Solver) -> None:
+    app = StagebookApp(store, solver)
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        assert "the shelf is empty" in seen(pilot)
+        await pilot.press("n", *"first", "enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
+        assert [stage.name for stage in store.draft("first").design.stages] == ["entry"]
+        assert "no parts yet" in seen(pilot)
+
+
+async def test_a_name_that_is_taken_keeps_the_form_open(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("n", "enter", *"flood", "enter")
+        assert "flood" in pilot.app.screen.query_one(Notice).text
+        assert len(shelf.designs()) == 1
+
+
+async def test_a_document_is_imported_by_its_path(app: StagebookApp, shelf: Store, tmp_path: Path) -> None:
+    file = tmp_path / "tilt.json"
+    file.write_text(json.dumps(document("tilt")))
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("i", *str(file), "enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, ShelfScreen))
+        assert [row.name for row in shelf.designs()] == ["flood", "tilt"]
+        assert "tilt" in seen(pilot)
+
+
+@pytest.mark.parametrize(("path", "words"), [("nowhere.json", "nowhere.json cannot be read"), ("", "write the path")])
+async def test_a_file_that_cannot_be_read_is_said_in_one_line(app: StagebookApp, path: str, words: str) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("i", *path, "enter")
+        assert words in pilot.app.screen.query_one(Notice).text
+
+
+async def test_q_leaves(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("q")
+    assert app.return_code == 0

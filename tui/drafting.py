@@ -1,0 +1,158 @@
+"""The draft under the hand: every edit is a pure function of the design, kept in the store before anything else."""
+
+from __future__ import annotations
+
+from ..engine.design import edit
+from ..engine.design.differences import Change, differences
+from ..engine.design.document import Design
+from ..engine.errors import EngineError
+from ..engine.results import Depth, MarginSheet
+from ..storage.store import Store
+from ..storage.values import Draft, Note, Revision
+
+
+class Drafting:
+    """One design's draft and the revision it began from.
+
+    Every method that changes something raises EngineError or StorageError with one line and then has changed
+    nothing; after it returns, the edit is committed.
+    """
+
+    def __init__(self, store: Store, name: str) -> None:
+        self._store = store
+        self.draft: Draft = store.draft(name)
+        self.base: Revision | None = self._base()
+        self._changes: tuple[Change, ...] = ()
+        self._changes_of: tuple[str, str] | None = None
+
+    @property
+    def name(self) -> str:
+        """The design's name on the shelf."""
+        return self.draft.name
+
+    @property
+    def design(self) -> Design:
+        """The design as it stands."""
+        return self.draft.design
+
+    def take_over(self) -> None:
+        """Takes the design from another sitting and reads the draft as that one left it."""
+        self.draft = self._store.take_over(self.name)
+        self.base = self._base()
+
+    def branch(self, number: int) -> None:
+        """Lets the draft go on from a revision, which the next one then has as its parent."""
+        self.draft = self._store.branch(self.name, number)
+        self.base = self._base()
+
+    def revisions(self) -> list[Revision]:
+        """All revisions, oldest first."""
+        return self._store.revisions(self.name)
+
+    def add_result(self, number: int, text: str) -> None:
+        """Writes what came of it under a revision's note."""
+        self._store.add_note(self.name, number, "result", text)
+
+    def set_field(self, ref: str, field: str, text: str) -> None:
+        """Writes one field of a part; an empty text takes the field out."""
+        self._keep(f"{ref} {field} {text or '-'}", edit.with_field(self.design, ref, field, text or None))
+
+    def set_value(self, ref: str, text: str) -> None:
+        """Writes the value of a part."""
+        self._keep(f"{ref} {text}", edit.with_value(self.design, ref, text))
+
+    def step(self, ref: str, direction: int) -> None:
+        """Puts in the next preferred value above (+1) or below (-1)."""
+        after = edit.stepped_value(self.design, ref, direction)
+        self._keep(f"{ref} {after.part(ref).value}", after)
+
+    def remove(self, ref: str) -> None:
+        """Takes a part out."""
+        self._keep(f"without {ref}", edit.without_part(self.design, ref))
+
+    def put(self, label: str, after: Design) -> None:
+        """Keeps a design that another pure edit made."""
+        self._keep(label, after)
+
+    def undo(self) -> str:
+        """Takes the last edit back; returns what it was."""
+        label = self.draft.undo_label or ""
+        self.draft = self._store.undo(self.name)
+        return label
+
+    def redo(self) -> str:
+        """Brings the undone edit again; returns what it is."""
+        label = self.draft.redo_label or ""
+        self.draft = self._store.redo(self.name)
+        return label
+
+    def save(self, note: Note, sheet: MarginSheet | None) -> Revision:
+        """Keeps the draft as a revision. Without a sheet of corners it is stamped incomplete by its depth."""
+        revision = self._store.save(self.name, note, sheet or self._no_margins())
+        self.draft = self._store.draft(self.name)
+        self.base = revision
+        return revision
+
+    def changes(self) -> tuple[Change, ...]:
+        """What differs from the revision the draft began from."""
+        if self.base is None:
+            return ()
+        now = (self.base.hash, self.design.content)
+        if self._changes_of != now:
+            self._changes_of, self._changes = now, differences(self.base.design, self.design)
+        return self._changes
+
+    def neighbours(self, ref: str) -> tuple[str | None, str | None]:
+        """The next lower and next higher preferred value of a part; None where there is none."""
+        return self._stepped(ref, -1), self._stepped(ref, 1)
+
+    def was(self, ref: str) -> str | None:
+        """The value the part had in the revision the draft began from; None if it was not there."""
+        if self.base is None or ref not in {part.ref for part in self.base.design.parts}:
+            return None
+        return self.base.design.part(ref).value
+
+    def _keep(self, label: str, after: Design) -> None:
+        if after != self.design:
+            self.draft = self._store.edit(self.name, label, after)
+
+    def _stepped(self, ref: str, direction: int) -> str | None:
+        try:
+            return edit.stepped_value(self.design, ref, direction).part(ref).value
+        except EngineError:
+            return None
+
+    def _base(self) -> Revision | None:
+        number = self.draft.base_revision
+        return None if number is None else self._store.revision(self.name, number)
+
+    def _no_margins(self) -> MarginSheet:
+        return MarginSheet(
+            design=self.name,
+            content=self.design.content,
+            engine="",
+            seed=0,
+            lanes=0,
+            seconds=0.0,
+            depth=Depth.NOMINAL,
+            checks=(),
+        )
+
+
+def incomplete(sheet: MarginSheet) -> bool:
+    """Whether a revision was saved before its worst corners were known."""
+    return sheet.depth is Depth.NOMINAL
+
+
+def changes_words(changes: tuple[Change, ...]) -> str:
+    """All differences in one line."""
+    return ", ".join(change_words(change) for change in changes)
+
+
+def change_words(change: Change) -> str:
+    """One difference in words: ``R8 330k > 470k``, ``+R9 1k``, ``-D2``."""
+    if change.before is None:
+        return f"+{change.what} {change.after or ''}".strip()
+    if change.after is None:
+        return f"-{change.what}"
+    return f"{change.what} {change.before} > {change.after}"

@@ -1,0 +1,147 @@
+"""Questions over a screen: yes or no, one of a list, or a form of a few lines."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import BindingType
+from textual.containers import Horizontal, Vertical, VerticalScroll
+from textual.screen import ModalScreen
+from textual.widgets import Input
+
+from ..actions import bindings
+from ..shown import Line, Span, line
+from ..widgets.lines import Lines
+from ..widgets.row_list import Row, RowList
+from ..widgets.rule import Rule
+from ..widgets.status import KeyLine, Notice
+from ..widgets.value_entry import TextLine
+
+
+class Ask(ModalScreen[bool]):
+    """A yes or no question. Anything but yes leaves everything as it is."""
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("question")
+
+    def __init__(self, question: str, *details: str) -> None:
+        super().__init__()
+        self._text = (line(Span(f" {question}", "strong")), *(line(f" {detail}") for detail in details))
+
+    def compose(self) -> ComposeResult:
+        """The question at the foot of the screen."""
+        with Vertical(classes="dialog"):
+            yield Rule()
+            asked = Lines(*self._text)
+            asked.styles.height = len(self._text)
+            yield asked
+            yield KeyLine("question")
+
+    def action_yes(self) -> None:
+        """Do it."""
+        self.dismiss(True)
+
+    def action_no(self) -> None:
+        """Leave it."""
+        self.dismiss(False)
+
+
+class Pick(ModalScreen[str | None]):
+    """One of a list, or None."""
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("pick")
+
+    def __init__(self, title: str, rows: Sequence[tuple[str, str]], empty: str = "nothing to choose from") -> None:
+        super().__init__()
+        self._title = title
+        self._choices = [Row(key, line(text)) for key, text in rows]
+        self._empty = empty
+
+    def compose(self) -> ComposeResult:
+        """The list at the foot of the screen."""
+        with Vertical(classes="dialog"):
+            yield Rule()
+            rows = RowList(empty=self._empty, id="choices")
+            rows.styles.height = max(2, len(self._choices) + 1)
+            yield rows
+            yield KeyLine("pick")
+
+    def on_mount(self) -> None:
+        """Shows the choices."""
+        self.query_one(RowList).show(self._choices, heading=line(Span(self._title, "strong")))
+
+    def action_choose(self) -> None:
+        """This one."""
+        self.dismiss(self.query_one(RowList).key)
+
+    def action_cancel(self) -> None:
+        """None of them."""
+        self.dismiss(None)
+
+
+@dataclass(frozen=True, slots=True)
+class Field:
+    """One line of a form: its name, what stands before it, what it begins with, and a grey example."""
+
+    name: str
+    label: str
+    value: str = ""
+    example: str = ""
+
+
+Answers = Mapping[str, str]
+
+
+class Form(ModalScreen[Answers | None]):
+    """A few lines to fill in; None when cancelled. ``check`` returns a refusal, which keeps the form open."""
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("form")
+
+    def __init__(
+        self, title: str, fields: Sequence[Field], check: Callable[[Answers], str | None] | None = None
+    ) -> None:
+        super().__init__()
+        self._title: Line = line(Span(f" {title}", "strong"))
+        self._fields = tuple(fields)
+        self._check = check
+
+    def compose(self) -> ComposeResult:
+        """The lines at the foot of the screen."""
+        with Vertical(classes="dialog"):
+            yield Rule()
+            yield Lines(self._title, classes="one")
+            with VerticalScroll(can_focus=False, id="fields"):
+                for field in self._fields:
+                    with Horizontal(classes="field"):
+                        yield Lines(line(f" {field.label}"), classes="label")
+                        yield TextLine(field.value, field.example, id=f"field-{field.name}")
+            yield Notice()
+            yield KeyLine("form")
+
+    def on_input_submitted(self, event: Input.Submitted) -> None:
+        """Enter in any line takes the whole form."""
+        event.stop()
+        self.action_done()
+
+    def action_done(self) -> None:
+        """Takes the form, unless the check refuses it."""
+        answers = {field.name: self.query_one(f"#field-{field.name}", TextLine).value for field in self._fields}
+        refusal = self._check(answers) if self._check else None
+        if refusal:
+            self.query_one(Notice).refuse(refusal)
+        else:
+            self.dismiss(answers)
+
+    def action_up(self) -> None:
+        """To the line above."""
+        self.focus_previous()
+
+    def action_down(self) -> None:
+        """To the line below."""
+        self.focus_next()
+
+    def action_cancel(self) -> None:
+        """Leaves everything as it is."""
+        self.dismiss(None)

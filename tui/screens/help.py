@@ -1,0 +1,65 @@
+"""The keys of a screen and what its marks mean."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import BindingType
+from textual.containers import Vertical
+from textual.screen import ModalScreen
+
+from ..actions import bindings, of
+from ..shown import Span, line
+from ..widgets.row_list import Row, RowList
+from ..widgets.rule import Rule
+from ..widgets.status import KeyLine
+
+_MARKS = (
+    ("X", "FAIL: the worst corner is below zero, or what should happen does not"),
+    ("!", "thin: above zero, below the margin that is required"),
+    ("=", "pass: the required margin holds in the worst corner"),
+    ("?", "unknown: a datum is missing; never counted as a pass"),
+    ("~", "being computed: the figure is of the design before the edit"),
+    ("<", "the margin got worse than in the revision the draft began from"),
+    ("*", "the part differs from the revision the draft began from"),
+    (">", "the row under the hand"),
+)
+_SIGNS = (
+    "A margin is 1 - demand/capability in percent: 0 is the limit, + is unused, - is overrun.",
+    "Worst is the least over all corners; nominal is one case and never stands for the worst.",
+)
+
+
+class HelpScreen(ModalScreen[None]):
+    """All actions of one place, from the registry."""
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("page")
+
+    def __init__(self, where: str) -> None:
+        super().__init__()
+        self._where = where
+
+    def compose(self) -> ComposeResult:
+        """Rows over the whole screen."""
+        with Vertical(classes="dialog full"):
+            yield Rule()
+            yield RowList(id="help")
+            yield KeyLine("page")
+
+    def on_mount(self) -> None:
+        """Lists keys and marks."""
+        rows = [
+            Row(action.id, line(Span(f"{action.shown:<11}", "strong"), Span(f"{action.label:<16}"), action.help))
+            for action in (*of(self._where), *of("rows"), *of("app"))
+        ]
+        rows.append(Row("gap", ()))
+        rows += [Row(f"mark {mark}", line(Span(f"{mark:<11}", "strong"), words)) for mark, words in _MARKS]
+        rows += [Row(f"sign {at}", line(words)) for at, words in enumerate(_SIGNS)]
+        shown = self.query_one(RowList)
+        shown.show(rows, heading=line(Span(f"keys: {self._where}", "strong")))
+        shown.focus()
+
+    def action_back(self) -> None:
+        """Back to the screen below."""
+        self.dismiss(None)

@@ -1,0 +1,52 @@
+"""What every full screen has: a body, the newest notice, and the line of keys."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import ClassVar, Generic, TypeVar
+
+from textual.app import ComposeResult
+from textual.screen import Screen
+
+from ...engine.errors import EngineError
+from ...storage.errors import StorageError
+from ..widgets.status import KeyLine, Notice
+
+Result = TypeVar("Result")
+
+
+class Page(Screen[Result], Generic[Result]):
+    """A full screen. ``WHERE`` names its actions in the registry; subclasses give the body."""
+
+    WHERE: ClassVar[str] = "page"
+
+    def compose(self) -> ComposeResult:
+        """Body above, notice and keys below."""
+        yield from self.compose_body()
+        yield Notice(id="notice")
+        yield KeyLine(self.WHERE, id="keys")
+
+    def compose_body(self) -> ComposeResult:
+        """The widgets above the notice."""
+        yield from ()
+
+    def say(self, text: str) -> None:
+        """Puts something to know on the notice line."""
+        self.query_one(Notice).say(text)
+
+    def refuse(self, text: str) -> None:
+        """Puts a refusal with its reason on the notice line."""
+        self.query_one(Notice).refuse(text)
+
+    def attempt(self, deed: Callable[[], object]) -> bool:
+        """Does something that the engine or the store may refuse; a refusal goes to the notice line."""
+        try:
+            deed()
+        except (EngineError, StorageError) as refusal:
+            self.refuse(str(refusal))
+            return False
+        return True
+
+    def action_back(self) -> None:
+        """To the screen before."""
+        self.dismiss()

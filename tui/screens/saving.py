@@ -1,0 +1,142 @@
+"""Saving: the note is asked for, the worst corners are waited for, and the revision is kept or stamped incomplete."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import BindingType
+from textual.containers import Vertical
+from textual.screen import ModalScreen
+
+from ...engine.results import Depth, MarginSheet
+from ...storage.values import Note, Revision
+from ..actions import bindings
+from ..drafting import Drafting, changes_words
+from ..shown import Span, line
+from ..widgets.lines import Lines
+from ..widgets.rule import Rule
+from ..widgets.status import KeyLine
+from .dialog import Answers, Field, Form
+from .page import Page
+
+_PLACES = (
+    ("line", "why", "one line is enough"),
+    ("symptom", "symptom", "what was seen (may stay empty)"),
+    ("hypothesis", "hypothesis", "what is thought to be behind it (may stay empty)"),
+    ("change", "change", "what was changed"),
+    ("prediction", "prediction", "what the change should do (may stay empty)"),
+    ("next", "next", "what comes after (may stay empty)"),
+)
+
+
+class Waiting(ModalScreen[str]):
+    """The note is written, the corners are not known yet: wait, save incomplete, or leave it.
+
+    Ends with ``ready``, ``now`` or ``cancel``.
+    """
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("waiting")
+
+    def __init__(self, no_corners: str = "") -> None:
+        super().__init__()
+        self._words = Lines(line(Span(" waiting for the worst corners, then it is saved", "strong")), classes="one")
+        if no_corners:
+            self.explain(no_corners)
+
+    def compose(self) -> ComposeResult:
+        """Two lines at the foot of the screen."""
+        with Vertical(classes="dialog"):
+            yield Rule()
+            yield self._words
+            yield KeyLine("waiting")
+
+    def explain(self, reason: str) -> None:
+        """There will be no corners, for this reason."""
+        self._words.show(line(Span(" no corners: ", "fail"), reason))
+
+    def action_now(self) -> None:
+        """Without corners."""
+        self.dismiss("now")
+
+    def action_cancel(self) -> None:
+        """Not at all."""
+        self.dismiss("cancel")
+
+
+class Saving:
+    """The questions between ``s`` and a revision. What was written is kept until a revision has it.
+
+    Args:
+        page: Where the questions appear.
+        drafting: The draft to save.
+        newest: The deepest sheet of the draft as it stands.
+        saved: Told the revision.
+    """
+
+    def __init__(
+        self,
+        page: Page[None],
+        drafting: Drafting,
+        newest: Callable[[], MarginSheet | None],
+        saved: Callable[[Revision], None],
+    ) -> None:
+        self.prediction = ""
+        self._page = page
+        self._drafting = drafting
+        self._newest = newest
+        self._saved = saved
+        self._written: dict[str, str] = {}
+        self._waiting: Waiting | None = None
+        self._no_corners = ""
+
+    def ask(self) -> None:
+        """Asks for the note."""
+        known = {"change": changes_words(self._drafting.changes()), "prediction": self.prediction, **self._written}
+        fields = [Field(name, label, known.get(name, ""), example) for name, label, example in _PLACES]
+        self._page.app.push_screen(Form("Why does this revision exist?", fields, _refusal), self._noted)
+
+    def begun(self) -> None:
+        """A new study runs: corners are to be expected again."""
+        self._no_corners = ""
+
+    def arrived(self, sheet: MarginSheet) -> None:
+        """A sheet of the draft has come; it may be what was waited for."""
+        if self._waiting is not None and sheet.depth is not Depth.NOMINAL:
+            waiting, self._waiting = self._waiting, None
+            waiting.dismiss("ready")
+
+    def refused(self, reason: str) -> None:
+        """The draft cannot be studied as it stands."""
+        self._no_corners = reason
+        if self._waiting is not None:
+            self._waiting.explain(reason)
+
+    def _noted(self, answers: Answers | None) -> None:
+        if answers is None:
+            return
+        self._written = {name: text.strip() for name, text in answers.items()}
+        sheet = self._newest()
+        if sheet is not None and sheet.depth is not Depth.NOMINAL:
+            self._waited("ready")
+            return
+        self._waiting = Waiting(self._no_corners)
+        self._page.app.push_screen(self._waiting, self._waited)
+
+    def _waited(self, how: str | None) -> None:
+        self._waiting = None
+        if how not in {"ready", "now"}:
+            self._page.say("not saved; s asks again and still knows the note")
+            return
+        kept: list[Revision] = []
+        if self._page.attempt(lambda: kept.append(self._drafting.save(Note(**self._written), self._newest()))):
+            self._written = {}
+            self.prediction = ""
+            self._saved(kept[0])
+
+
+def _refusal(answers: Answers) -> str | None:
+    if answers["line"].strip():
+        return None
+    return "write one line first: why does this revision exist?"

@@ -1,0 +1,186 @@
+"""The shelf: every design of the store in one line."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import BindingType
+
+from ...engine.design.document import Design
+from ...engine.errors import DesignError, EngineError
+from ...storage.errors import StorageError
+from ...storage.store import Store
+from ...storage.values import DesignRow
+from ..actions import bindings
+from ..computing import Computing
+from ..drafting import Drafting
+from ..messages import SolverPreparing
+from ..shown import MARKS, TONES, WORDS, Span, columns, line, percent
+from ..widgets.lines import Lines
+from ..widgets.row_list import Row, RowList
+from ..widgets.rule import Rule
+from .bench import BenchScreen
+from .dialog import Answers, Field, Form, Pick
+from .page import Page
+
+_WIDTHS = (18, 8, 16, 9)
+_LARGEST_DOCUMENT = 16_000_000
+
+
+class ShelfScreen(Page[None]):
+    """The designs, by name."""
+
+    WHERE = "shelf"
+    BINDINGS: ClassVar[list[BindingType]] = bindings("shelf")
+
+    def __init__(self, store: Store, computing: Computing) -> None:
+        super().__init__()
+        self._store = store
+        self._computing = computing
+
+    def compose_body(self) -> ComposeResult:
+        """Title and rows."""
+        yield Lines(line(Span(" Stagebook: the shelf", "strong")), id="title")
+        yield Rule()
+        yield RowList(id="designs", empty="the shelf is empty: n begins a design, i imports one")
+
+    def on_mount(self) -> None:
+        """The solver is prepared while the shelf is looked at."""
+        self._computing.prepare(self.post_message)
+
+    def on_screen_resume(self) -> None:
+        """Reads the shelf, at first and after every bench."""
+        self.attempt(self._show)
+
+    def on_solver_preparing(self, event: SolverPreparing) -> None:
+        """The first start on this machine."""
+        busy = "preparing the solver, once on this machine; designs can be opened and changed meanwhile"
+        self.say(busy if event.busy else event.trouble or "the solver is ready")
+
+    def _show(self, name: str | None = None) -> None:
+        heading = line(Span(columns(_WIDTHS, ("design", "newest", "saved", "draft")) + " worst margin", "strong"))
+        rows = [Row(row.name, shelf_line(row)) for row in self._store.designs()]
+        self.query_one(RowList).show(rows, heading, name)
+
+    def action_open(self) -> None:
+        """Opens the bench of the design under the hand."""
+        name = self.query_one(RowList).key
+        if name is not None:
+            self.attempt(lambda: self.app.push_screen(BenchScreen(Drafting(self._store, name), self._computing)))
+
+    def action_quit(self) -> None:
+        """Leaves; every edit is kept already."""
+        self.app.exit()
+
+    def action_new(self) -> None:
+        """A new design: empty, or a copy of one."""
+        names = [row.key for row in self.query_one(RowList).rows]
+        if not names:
+            self._ask_name(None)
+            return
+        here = self.query_one(RowList).key
+        rows = [
+            ("", "an empty design"),
+            *((f"copy {n}", f"a copy of {n}") for n in sorted(names, key=lambda n: n != here)),
+        ]
+
+        def chosen(key: str | None) -> None:
+            if key is not None:
+                self._ask_name(key.removeprefix("copy ") or None)
+
+        self.app.push_screen(Pick("A new design", rows), chosen)
+
+    def _ask_name(self, source: str | None) -> None:
+        fields = [Field("name", "name", "", "a name of your own")]
+        if source is None:
+            fields += [
+                Field("purpose", "purpose", "", "one sentence (may stay empty)"),
+                Field("supply", "supply", "9 V"),
+                Field("stage", "first stage", "entry"),
+            ]
+
+        def make(answers: Answers) -> str | None:
+            try:
+                name = answers["name"].strip()
+                design = copied(self._store.draft(source).design, name) if source else empty_design(answers)
+                self._store.create(name, design)
+            except (EngineError, StorageError) as refusal:
+                return str(refusal)
+            return None
+
+        def done(answers: Answers | None) -> None:
+            if answers is not None:
+                self._show(answers["name"].strip())
+                self.action_open()
+
+        self.app.push_screen(Form("A new design" if source is None else f"A copy of {source}", fields, make), done)
+
+    def action_import_file(self) -> None:
+        """Puts a design document on the shelf."""
+        fields = [Field("path", "file", "", "path/to/design.json"), Field("name", "name", "", "the document's own")]
+        taken: list[str] = []
+
+        def take(answers: Answers) -> str | None:
+            try:
+                design = read_document(answers["path"].strip())
+                name = answers["name"].strip() or design.name
+                self._store.create(name, design if name == design.name else copied(design, name))
+                taken.append(name)
+            except (EngineError, StorageError) as refusal:
+                return str(refusal)
+            return None
+
+        def done(answers: Answers | None) -> None:
+            if answers is not None:
+                self._show(taken[-1])
+                self.say(f"{taken[-1]} is on the shelf; Enter opens it")
+
+        self.app.push_screen(Form("Import a design document", fields, take), done)
+
+
+def shelf_line(row: DesignRow) -> tuple[Span, ...]:
+    """One design: name, newest revision, when saved, edits since, worst margin with its verdict."""
+    newest = f"r{row.revisions}" if row.revisions else "-"
+    saved = row.saved.replace("T", " ")[:16] if row.saved else "not saved yet"
+    pending = f"{row.edits_pending} edit{'s' * (row.edits_pending != 1)}" if row.edits_pending else ""
+    left = Span(columns(_WIDTHS, (row.name, newest, saved, pending)) + " ")
+    if row.worst is None:
+        return line(left, Span("no margins yet", "dim"))
+    worst = row.worst
+    words = f"{MARKS[worst.verdict]} {percent(worst.margin)} {WORDS[worst.verdict]}"
+    return line(left, Span(f"{words:<15}", TONES[worst.verdict]), worst.id)
+
+
+def empty_design(answers: Answers) -> Design:
+    """A design of one free stage without parts. Raises DesignError."""
+    document = {
+        "stagebook": 1,
+        "name": answers["name"].strip(),
+        "purpose": answers["purpose"].strip(),
+        "conditions": {"supply": answers["supply"].strip(), "ambient": "25 C"},
+        "stages": [{"name": answers["stage"].strip(), "kind": "free", "parts": []}],
+        "sequences": {"alarm": {"events": [{"at": "0 s", "event": "connect supply", "rise": "1 us"}], "ends": "5 s"}},
+    }
+    return Design.load(document)
+
+
+def copied(design: Design, name: str) -> Design:
+    """The same design under another name. Raises DesignError."""
+    return Design.load({**design.dump(), "name": name})
+
+
+def read_document(path: str) -> Design:
+    """The design in a file. Raises DesignError, one line naming the file."""
+    if not path:
+        raise DesignError("write the path of a design document, such as designs/flood.json")
+    place = Path(path).expanduser()
+    try:
+        with place.open("rb") as file:
+            content = file.read(_LARGEST_DOCUMENT + 1)
+    except (OSError, ValueError) as error:
+        raise DesignError(f"{path} cannot be read ({getattr(error, 'strerror', None) or error})") from error
+    if len(content) > _LARGEST_DOCUMENT:
+        raise DesignError(f"{path} is larger than {_LARGEST_DOCUMENT // 1_000_000} MB: that is no design document")
+    return Design.load(content)

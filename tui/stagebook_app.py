@@ -1,0 +1,80 @@
+"""The application: wires the store, the solver and the screens together."""
+
+from __future__ import annotations
+
+import asyncio
+import signal
+from contextlib import suppress
+from typing import ClassVar
+
+from textual import events
+from textual.app import App
+from textual.binding import BindingType
+from textual.screen import Screen
+from textual.widgets import Input
+
+from ..storage.store import Store
+from .actions import bindings
+from .computing import Computing
+from .palette import ActionFinder
+from .screens.help import HelpScreen
+from .screens.page import Page
+from .screens.shelf import ShelfScreen
+from .solver import Solver
+
+
+class StagebookApp(App[None]):
+    """The screens over one open store.
+
+    Args:
+        store: Used on the event loop only; whoever opened it closes it.
+        solver: The studies, run in background threads.
+    """
+
+    TITLE = "Stagebook"
+    CSS_PATH = "stagebook.tcss"
+    BINDINGS: ClassVar[list[BindingType]] = bindings("app")
+    COMMANDS: ClassVar = {ActionFinder}
+
+    def __init__(self, store: Store, solver: Solver) -> None:
+        # The terminal's own colours: 16 of them at most, none of them under NO_COLOR, light or dark as it is.
+        super().__init__(ansi_color=True)
+        self.theme = "ansi-dark"
+        self.animation_level = "none"
+        self.HORIZONTAL_BREAKPOINTS = [(0, "-narrow"), (60, "-wide"), (100, "-broad")]
+        self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high")]
+        self.computing = Computing(solver)
+        self._store = store
+
+    def get_default_screen(self) -> Screen[None]:
+        """The shelf."""
+        return ShelfScreen(self._store, self.computing)
+
+    def on_mount(self) -> None:
+        """A dropped line or a polite kill leaves by the front door, so that the terminal is restored."""
+        loop = asyncio.get_running_loop()
+        for name in ("SIGTERM", "SIGHUP"):
+            number = getattr(signal, name, None)
+            if number is not None:
+                # Not every event loop takes signals (Windows; a loop outside of the main thread).
+                with suppress(NotImplementedError, RuntimeError, ValueError):
+                    loop.add_signal_handler(number, self.exit)
+
+    def on_unmount(self) -> None:
+        """Stops what is being computed, without waiting for it."""
+        self.computing.close()
+
+    def on_descendant_focus(self, event: events.DescendantFocus) -> None:
+        """No cursor blinks: an idle screen sends nothing."""
+        if isinstance(event.widget, Input):
+            event.widget.cursor_blink = False
+
+    def action_help(self) -> None:
+        """The keys of the screen in front."""
+        if isinstance(self.screen, Page):
+            self.push_screen(HelpScreen(self.screen.WHERE))
+
+    def action_help_quit(self) -> None:
+        """Ctrl+C does not leave: it is pressed by habit."""
+        if isinstance(self.screen, Page):
+            self.screen.say("Ctrl+Q leaves; every edit is kept already")
