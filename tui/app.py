@@ -29,7 +29,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
     written = list(sys.argv[1:] if arguments is None else arguments)
     asked = _parser(written).parse_args(written)
     try:
-        status = command(asked.command).run(asked)
+        status = _open_shelf(asked) if asked.command is None else command(asked.command).run(asked)
         sys.stdout.flush()
     except BrokenPipeError:
         # Whoever read the output has seen enough; what is still buffered goes nowhere instead of into a traceback.
@@ -52,13 +52,13 @@ def main(arguments: Sequence[str] | None = None) -> int:
 def _parser(written: Sequence[str]) -> ArgumentParser:
     parser = _Parser(
         prog="stagebook",
-        description="Design small discrete-transistor alarm and timer units.",
+        description="Design small discrete-transistor alarm and timer units. Without a command the shelf is opened.",
         epilog="WHAT is a design on the shelf, or a file if it ends in .json or has a / in it.",
     )
     parser.add_argument("--version", action="version", version=f"stagebook {_version()}")
     shelf_help = "the database file (otherwise STAGEBOOK_STORE, or the user's own)"
     parser.add_argument("--store", metavar="PATH", help=shelf_help)
-    parsers = parser.add_subparsers(dest="command", metavar="COMMAND", required=True, parser_class=_Parser)
+    parsers = parser.add_subparsers(dest="command", metavar="COMMAND", parser_class=_Parser)
     for name, (_, line) in COMMANDS.items():
         one = parsers.add_parser(name, help=line, description=f"{line[0].upper()}{line[1:]}.")
         if name in written:
@@ -71,6 +71,12 @@ def _version() -> str:
         return version("stagebook")
     except PackageNotFoundError:
         return "not installed"
+
+
+def _open_shelf(asked: Namespace) -> int:
+    from .opening import open_shelf
+
+    return open_shelf(asked)
 
 
 def _refuse(asked: Namespace, words: str) -> int:

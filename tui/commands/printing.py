@@ -8,6 +8,8 @@ from collections.abc import Mapping, Sequence
 from textwrap import wrap
 from typing import Any
 
+from ..shown import visible
+
 WIDTH = 80
 
 
@@ -24,8 +26,10 @@ def print_json(value: Mapping[str, Any]) -> None:
 def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: frozenset[int] = frozenset()) -> None:
     """Rows in columns; the last column takes what is left of the line and goes on below where it is longer.
 
-    ``right`` are the columns of figures, which end in line. The last column may hold line breaks of its own.
+    ``right`` are the columns of figures, which end in line. The last column may hold line breaks of its own. Text of
+    the user's cannot steer the terminal.
     """
+    rows = [(*map(visible, row[:-1]), row[-1]) for row in rows]
     widths = [max(map(len, column)) for column in zip(heads, *rows, strict=True)][:-1]
     indent = sum(widths) + 2 * len(widths)
     for row in (heads, *rows):
@@ -34,7 +38,7 @@ def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: f
             for column, (text, width) in enumerate(zip(row, widths, strict=False))
         ]
         room = max(WIDTH - indent, 16)
-        first, *more = [line for part in row[-1].split("\n") for line in wrap(part, room)] or [""]
+        first, *more = [line for part in row[-1].split("\n") for line in wrap(visible(part), room)] or [""]
         print("  ".join((*cells, first)).rstrip())
         for line in more:
             print(" " * indent + line)
@@ -42,5 +46,5 @@ def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: f
 
 def print_words(words: str, indent: int = 0) -> None:
     """A sentence, broken into lines."""
-    for line in wrap(words, WIDTH, initial_indent=" " * indent, subsequent_indent=" " * indent):
+    for line in wrap(visible(words), WIDTH, initial_indent=" " * indent, subsequent_indent=" " * indent):
         print(line)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from typing import TYPE_CHECKING, Any
 
-from ..shown import percent, visible
+from ..shown import percent
 from .printing import json_argument, print_json, print_table, print_words
 from .what import open_store, shelf_arguments
 
@@ -42,5 +42,5 @@ def _entry(row: DesignRow) -> dict[str, Any]:
 
 def _cells(row: DesignRow) -> tuple[str, ...]:
     saved = row.saved[:16].replace("T", " ") if row.saved else "never"
-    worst = (percent(row.worst.margin), str(row.worst.verdict), visible(row.worst.id)) if row.worst else ("", "", "")
-    return (visible(row.name), str(row.revisions), str(row.edits_pending), saved, *worst)
+    worst = (percent(row.worst.margin), str(row.worst.verdict), row.worst.id) if row.worst else ("", "", "")
+    return (row.name, str(row.revisions), str(row.edits_pending), saved, *worst)

@@ -145,7 +145,7 @@ def test_the_store_can_be_named_before_and_behind_the_command(stagebook: Run, wr
         (b"[]", "not an object"),
         (b'{"stagebook": 2, "name": "x", "sequences": {}}', "stagebook"),
         (b'{"stagebook": 1, "name": "x", "sequences": {"alarm": {"events": [], "ends": "nan"}}}', "ends"),
-        (b"[" * 5000, "nested too deep"),
+        (b'{"a":' * 5000 + b"1" + b"}" * 5000, "nested too deep"),
         (b" " * 1_000_001, "bytes"),
     ],
 )

@@ -1,0 +1,29 @@
+"""Opening the shelf on the screen."""
+
+from __future__ import annotations
+
+import os
+import sys
+from argparse import Namespace
+
+from .commands.refusal import CommandRefused
+from .commands.what import open_store
+from .terminal import refusal
+
+
+def open_shelf(asked: Namespace) -> int:
+    """Run the interface on the shelf that the command line names until it is left. Returns the exit status.
+
+    Raises CommandRefused where this terminal cannot show it or the store cannot be opened.
+    """
+    words = refusal(os.environ, sys.stdin.isatty() and sys.stdout.isatty())
+    if words:
+        raise CommandRefused(words)
+    with open_store(asked) as store:
+        # Imported here: no headless command waits for the screens to load.
+        from .solver import own_solver
+        from .stagebook_app import StagebookApp
+
+        app = StagebookApp(store, own_solver())
+        app.run()
+        return app.return_code or 0
