@@ -7,7 +7,7 @@ from typing import Annotated, Any, Literal
 from pydantic import Discriminator, Field, Tag, model_validator
 
 from ..errors import DesignError, QuantityError
-from .clause import Clause, Key, Name, NetName, Number, Ref, Scalar, Seconds, StageName, Text
+from .clause import Clause, Key, Name, NetName, Ref, Scalar, Seconds, StageName, Text
 from .datum import Datum, Entry, Limits, Single, as_datum
 
 
@@ -167,6 +167,3 @@ class Stage(Clause):
     settings: dict[Key, Scalar] = Field(default={}, max_length=60)
     ports: dict[Name, NetName] = Field(default={}, max_length=40)
     parts: tuple[Part, ...] = Field(default=(), max_length=200)
-
-
-__all__ = ["Bounce", "Leakage", "Number", "Part", "Sine", "Stage", "Waveform"]
