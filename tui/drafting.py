@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from ..engine.design import edit
+from ..engine import edit
 from ..engine.design.differences import Change, differences
 from ..engine.design.document import Design
 from ..engine.errors import EngineError

@@ -1,1 +1,60 @@
 """The numerical kernel: device laws, elimination, time stepping and observation of lanes."""
+
+from __future__ import annotations
+
+
+def compile_all() -> None:
+    """Compile the whole kernel, or load it from the cache, by running a smallest circuit: one conductance."""
+    import numpy as np
+
+    from . import layout
+    from .elimination import Pattern
+    from .march import march
+
+    plan = Pattern(1)
+    plan.couple((0,))
+    lists = plan.plan()
+    row = [0, 1, 0, 0, 0, lists.slot(0, 0), 1, 1, 1, *[0] * 5]
+    march(
+        layout.Topology(
+            layout.ints([1, 1, 2, 1]),
+            layout.ints([row], 1, layout.ELEMENT_WIDTH),
+            layout.ints([0, 1, 1, 1, 1, 1]),
+            **lists.lists(),
+        ),
+        np.ones((1, 1)),
+        np.zeros((1, 2)),
+        layout.Program(
+            np.full((1, 1), 1e-6),
+            layout.ints([1]),
+            np.zeros((1, 1, 1, 2)),
+            np.zeros((1, 1, 3)),
+            layout.ints([]),
+            np.zeros((1, 1, 0, 2)),
+        ),
+        layout.Rows(
+            layout.ints([], 0, 2),
+            np.zeros(0),
+            layout.ints([0]),
+            layout.ints([], 0, 6),
+            np.zeros(0),
+            np.zeros((0, 2)),
+            layout.ints([-1]),
+        ),
+        layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200])),
+        layout.Results(
+            np.zeros((1, 0)),
+            np.zeros((1, 0)),
+            np.zeros((1, 0), dtype=np.int64),
+            np.zeros((1, 2), dtype=np.int64),
+            np.zeros(1),
+            np.zeros((1, 4), dtype=np.int64),
+            np.zeros((1, 2)),
+            np.zeros(0),
+            np.zeros((0, 2)),
+            layout.ints([0]),
+        ),
+        0,
+        1,
+        np.zeros(1, dtype=np.uint8),
+    )

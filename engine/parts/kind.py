@@ -7,8 +7,13 @@ from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 if TYPE_CHECKING:
-    from ..circuit.builder import Builder
     from ..design.document import Part
+    from ..primitives.builder import Builder
+
+FLAG = "flag"
+"""The unit of an entry that is yes or no."""
+TEXT = "text"
+"""The unit of an entry that is no quantity: a name, a choice, a list of points."""
 
 
 @dataclass(frozen=True)

@@ -9,15 +9,11 @@ from typing import TYPE_CHECKING, Any
 from ..design.datum import Datum, number
 from ..errors import QuantityError
 from ..units import unit_named
-from .kind import Entry, Kind
+from .kind import FLAG, TEXT, Entry, Kind
 
 if TYPE_CHECKING:
     from ..design.part import Part
 
-FLAG = "flag"
-"""The unit of an entry that is yes or no."""
-TEXT = "text"
-"""The unit of an entry that is no quantity: a name, a choice, a list of points."""
 _STRUCTURE = {"ref", "kind", "pins", "class_", "data", "law"}
 _NOT_READ = {"operated_by", "form", "follows", "waveform", "bounce", "class"}
 _LIMITS = ("min", "typical", "max")
@@ -97,7 +93,7 @@ def _readings(field: str, given: Any, entry: Entry) -> Iterator[tuple[str, str]]
 
 def _missing(part: Part, kind: Kind) -> Iterator[tuple[str, str]]:
     """What the kind needs and the part does not give; a class stands for all data, and a law for its own needs."""
-    needed = [name for name, entry in kind.fields.items() if entry.needed and part.entry(name) is None]
+    needed = [name for name, entry in kind.fields.items() if entry.needed and _is_absent(part, name)]
     if part.class_ is None and not part.law:
         needed += [f"data.{key}" for key, entry in kind.data.items() if entry.needed and part.entry(key) is None]
     if part.law:
@@ -106,6 +102,10 @@ def _missing(part: Part, kind: Kind) -> Iterator[tuple[str, str]]:
     for field in needed:
         key = field.rpartition(".")[2]
         yield field, f'\'{key}\' is missing; write "{key}": "{_example(entries[key])}"'
+
+
+def _is_absent(part: Part, name: str) -> bool:
+    return part.entry(name) is None and getattr(part, name, None) is None
 
 
 def _a(kind: Kind) -> str:

@@ -7,7 +7,7 @@ from collections.abc import Callable
 
 from textual.app import App
 
-from ...engine.design import edit
+from ...engine import edit
 from ...engine.design.document import Design
 from ...engine.design.part import Part, Stage
 from ...engine.errors import EngineError

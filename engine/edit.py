@@ -8,14 +8,14 @@ from __future__ import annotations
 from collections.abc import Callable, Mapping
 from typing import Any
 
-from ..errors import DesignError, QuantityError
-from ..parts import kinds
-from ..parts.suitability import unreadable
-from ..preferred import next_down, next_up, series_for
-from ..quantity import read, write
-from .anchor import read_anchor
-from .document import Design
-from .part import Part
+from .design.anchor import read_anchor
+from .design.document import Design
+from .design.part import Part
+from .errors import DesignError, QuantityError
+from .parts import kinds
+from .parts.suitability import unreadable
+from .preferred import next_down, next_up, series_for
+from .quantity import read, write
 
 _USUAL_TOLERANCE = {"ohm": 0.05, "F": 0.1}
 """Which series steps a value whose tolerance is not given (common practice, no source)."""

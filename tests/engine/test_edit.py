@@ -13,7 +13,7 @@ from typing import Any
 
 import pytest
 
-from stagebook.engine.design import edit
+from stagebook.engine import edit
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import DesignError
 from stagebook.engine.parts.kind import Entry, Kind

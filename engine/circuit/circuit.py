@@ -1,0 +1,190 @@
+"""From a design document to a circuit: nets and unknowns, elimination order, and the tables of lanes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from ..errors import CircuitError
+from ..kernel import layout
+from ..kernel.elimination import Pattern
+from ..kernel.layout import Floats, Topology, ints
+from ..parts import kinds
+from ..primitives.builder import RETURN, SUPPLY_NET, Bench, Builder, constant, junction_array, transport_array
+from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
+from ..quantity import read
+from .inspection import inspect
+
+if TYPE_CHECKING:
+    from ..design.document import Design
+
+SUPPLY_SOURCE = "supply source"
+SUPPLY_SWITCH = "supply"
+LEAST_SOURCE_RESISTANCE = 1e-3  # ohm, where a source resistance of 0R is only one end of its range
+
+
+@dataclass(frozen=True)
+class Circuit:
+    """A design made ready to run. Net names are those of the document; ``source_names`` order the sources."""
+
+    design: Design
+    columns: tuple[Column, ...]
+    topology: Topology
+    nets: dict[str, int]
+    source_names: tuple[str, ...]
+    benches: dict[str, Bench]
+    builder: Builder
+
+    def index(self, net: str) -> int:
+        """Place of a net in the vector of unknowns. Raises CircuitError for a name that the design does not have."""
+        try:
+            return self.nets[self.builder.net(net)]
+        except KeyError:
+            known = ", ".join(sorted(n for n in self.nets if n != SUPPLY_SOURCE))
+            raise CircuitError(f"net '{net}' is not in the design; write one of {known}") from None
+
+    def nominal(self, count: int = 1) -> Lanes:
+        """Lanes of the nominal design."""
+        return Lanes.nominal(self.columns, count)
+
+    def unknown_name(self, index: int) -> str:
+        """The net (or branch) that an index of the vector of unknowns stands for."""
+        names = {place: name for name, place in self.nets.items()}
+        return names.get(index, "a branch current")
+
+    def element(self, family: int, index: int) -> int:
+        """Place of a primitive in ``topology.element``."""
+        return int(self.topology.group[family]) + index
+
+    def parameter(self, family: int, index: int) -> int:
+        """Place of a primitive's first parameter in a row of the lane table."""
+        return int(self.topology.element[self.element(family, index), layout.E_PARAMETER])
+
+    def table(self, lanes: Lanes) -> Floats:
+        """Law parameters of all primitives, (lanes, parameters)."""
+        made = self.builder
+        columns: list[Floats | float] = [law(lanes) for *_, law in (*made.conductances, *made.capacitances)]
+        for *_, inductance, resistance, _ in made.branches:
+            columns += [inductance(lanes), resistance(lanes)]
+        linear = layout.zeros(lanes.count, len(columns))
+        for k, column in enumerate(columns):
+            linear[:, k] = column
+        junctions = [junction_array(laws, lanes) for *_, laws in made.junctions]
+        transports = [transport_array(laws, lanes) for *_, laws in made.transports]
+        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports], axis=1))
+
+
+def build(design: Design) -> Circuit:
+    """Make the circuit of a design. Raises CircuitError, in words, where it cannot be computed as it is drawn."""
+    inspect(design)
+    levels = design.conditions.levels("supply")
+    builder = Builder(0.0 if levels is None else levels.nominal, _joined(design))
+    _add_conditions(design, builder)
+    catalogue = kinds()
+    for part in design.parts:
+        catalogue[part.kind].expand(part, builder)
+    for stray in design.strays:
+        builder.capacitance(*stray.between, constant(read(stray.value, "F")))
+    driven = [source for source in builder.generators.values() if source in builder.nets]
+    known = [*([SUPPLY_SOURCE] if SUPPLY_SOURCE in builder.nets else []), *driven, RETURN]
+    if len(set(known)) < len(known):
+        raise CircuitError("two ideal sources drive one net; put a resistor between them")
+    if SUPPLY_SOURCE not in builder.nets and levels is not None and SUPPLY_NET in builder.nets:
+        known.insert(0, SUPPLY_NET)
+    free = [net for net in builder.nets if net not in known]
+    nets = {name: n for n, name in enumerate(free)}
+    n_free = len(free) + len(builder.branches)
+    nets.update({name: n_free + n for n, name in enumerate(known)})
+    sources = (*known, *(source for *_, source in builder.branches if source is not None))
+    topology = _topology(builder, nets, len(free), n_free, n_free + len(known), sources)
+    return Circuit(design, tuple(builder.columns), topology, nets, sources, builder.benches, builder)
+
+
+def _joined(design: Design) -> dict[str, str]:
+    """Nets joined by resistors of 0R, as a map from a net to the one that stands for it."""
+    alias: dict[str, str] = {}
+
+    def root(net: str) -> str:
+        while net in alias:
+            net = alias[net]
+        return net
+
+    for part in design.parts:
+        if part.kind == "resistor" and part.value is not None:
+            found = part.limits("value", "ohm")
+            if found is not None and found.typical == 0.0:
+                a, b = (root(net) for net in part.pins.values())
+                if a != b:
+                    keep, drop = (b, a) if b in (RETURN, SUPPLY_NET) else (a, b)
+                    alias[drop] = keep
+    return alias
+
+
+def _add_conditions(design: Design, builder: Builder) -> None:
+    conditions = design.conditions
+    ambient = conditions.levels("ambient")
+    low, nominal, high = (25.0, 25.0, 25.0) if ambient is None else (ambient.min, ambient.nominal, ambient.max)
+    builder.column(*AMBIENT, nominal, low, high, Group.CONDITION)
+    states = [0.0 if state == "conditioned" else 1.0 for state in conditions.leakage_states]
+    builder.column(*LEAKAGE_STATE, min(states), min(states), max(states), Group.LEAKAGE)
+    supply = conditions.levels("supply")
+    if supply is None:
+        return
+    builder.column(*SUPPLY, supply.nominal, supply.min, supply.max, Group.CONDITION)
+    source = conditions.levels("source_resistance")
+    builder.net(SUPPLY_NET)
+    if source is None or source.max == 0.0:
+        return
+    key = builder.column(*SOURCE_RESISTANCE, source.nominal, source.min, source.max, Group.CONDITION)
+    builder.switch(
+        SUPPLY_SWITCH,
+        SUPPLY_SOURCE,
+        SUPPLY_NET,
+        lambda lanes: 1.0 / np.maximum(lanes[key], LEAST_SOURCE_RESISTANCE),
+        lambda state: lambda lanes: 1e-12 if state == "open" else 1.0 / np.maximum(lanes[key], LEAST_SOURCE_RESISTANCE),
+    )
+
+
+def _topology(
+    builder: Builder, nets: dict[str, int], n_nets: int, n_free: int, n_all: int, sources: tuple[str, ...]
+) -> Topology:
+    conductances: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.conductances]
+    capacitances: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.capacitances]
+    branches: list[tuple[int, ...]] = [(nets[a], nets[b], n_nets + k) for k, (a, b, *_) in enumerate(builder.branches)]
+    junctions: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.junctions]
+    transports: list[tuple[int, ...]] = [(nets[c], nets[b], nets[e]) for c, b, e, *_ in builder.transports]
+    pattern = Pattern(n_free)
+    for nets_of_one in (*conductances, *capacitances, *junctions, *transports):
+        pattern.couple(nets_of_one)
+    for a, b, row in branches:
+        pattern.couple((a, row))
+        pattern.couple((b, row))
+    plan = pattern.plan([(row, (a, b)) for a, b, row in branches])
+    slot = plan.slot
+    extra = [-1 if source is None else sources.index(source) for *_, source in builder.branches]
+    polarity = [sign for *_, sign, _ in builder.transports]
+
+    rows: list[list[int]] = []
+    group = [0]
+    parameter = 0
+    families: tuple[list[tuple[int, ...]], ...] = (conductances, capacitances, branches, junctions, transports)
+    own = {layout.BRANCH: extra, layout.TRANSPORT: polarity}
+    for family, members in enumerate(families):
+        for k, at in enumerate(members):
+            if family == layout.BRANCH:
+                a, b, row = at
+                slots = [slot(row, a), slot(row, b), slot(row, row), slot(a, row), slot(b, row)]
+            else:
+                slots = [slot(i, j) for i in at for j in at]
+            head = [*at, *[0] * (3 - len(at)), own[family][k] if family in own else 0, parameter]
+            rows.append([*head, *slots, *[0] * (layout.ELEMENT_WIDTH - len(head) - len(slots))])
+            parameter += layout.PARAMETERS[family]
+        group.append(len(rows))
+    return Topology(
+        size=ints([n_nets, n_free, n_all, plan.entries]),
+        element=ints(rows, len(rows), layout.ELEMENT_WIDTH),
+        group=ints(group),
+        **plan.lists(),
+    )

@@ -1,0 +1,106 @@
+"""Device laws at one operating point: currents, conductances, charges and capacitances of junctions.
+
+Diode law with ideality (Shockley, Bell Syst. Tech. J. 28 (1949) 435); depletion charge with grading coefficient and a
+linear capacitance beyond half the built-in potential (textbook form); reverse breakdown as a mirrored exponential.
+The exponential continues as its tangent above 38 slopes so that no iterate can overflow. ``p[at:]`` are the parameters
+of the junction.
+"""
+
+from __future__ import annotations
+
+import math
+
+from .compiled import leaf
+from .layout import (
+    J_BREAKDOWN,
+    J_BREAKDOWN_CURRENT,
+    J_BREAKDOWN_KNEE,
+    J_BREAKDOWN_SLOPE,
+    J_CAPACITANCE,
+    J_GRADING,
+    J_KNEE,
+    J_LEAKAGE,
+    J_POTENTIAL,
+    J_SLOPE,
+    Floats,
+)
+
+TOP = 38.0
+EXP_TOP = math.exp(TOP)
+FLOOR = -40.0
+LEAKAGE_KNEE = 0.1  # V; generation and surface leakage is nearly constant beyond a few tenths of a volt
+
+
+@leaf
+def exponential(y: float) -> tuple[float, float]:
+    """Return exp(y) - 1 and its derivative, continued as a straight line above ``TOP``."""
+    if y > TOP:
+        return EXP_TOP * (1.0 + y - TOP) - 1.0, EXP_TOP
+    if y < FLOOR:
+        return -1.0, 0.0
+    e = math.exp(y)
+    return e - 1.0, e
+
+
+@leaf
+def limited(v: float, old: float, p: Floats, at: int) -> float:
+    """Return the voltage at which to linearise a junction: logarithmic steps into conduction and into breakdown.
+
+    A full Newton step on an exponential overshoots by orders of magnitude; stepping by the logarithm of the asked
+    step keeps the linearised current at the point where the exponential would carry the asked current.
+    """
+    if v > p[at + J_KNEE]:
+        slope = p[at + J_SLOPE]
+        base = max(old, p[at + J_KNEE])
+        if v > base + 2.0 * slope:
+            v = base + slope * math.log(1.0 + (v - base) / slope)
+    elif p[at + J_BREAKDOWN] > 0.0 and -v - p[at + J_BREAKDOWN] > p[at + J_BREAKDOWN_KNEE]:
+        slope = p[at + J_BREAKDOWN_SLOPE]
+        beyond = -v - p[at + J_BREAKDOWN]
+        base = max(-old - p[at + J_BREAKDOWN], p[at + J_BREAKDOWN_KNEE])
+        if beyond > base + 2.0 * slope:
+            v = -(base + slope * math.log(1.0 + (beyond - base) / slope)) - p[at + J_BREAKDOWN]
+    return v
+
+
+@leaf
+def side_currents(v: float, p: Floats, at: int) -> tuple[float, float]:
+    """Return the current and conductance of leakage and breakdown, the parts that carry no stored charge."""
+    i = 0.0
+    g = 0.0
+    leakage = p[at + J_LEAKAGE]
+    if leakage > 0.0:
+        root = math.sqrt(v * v + LEAKAGE_KNEE * LEAKAGE_KNEE)
+        i = leakage * v / root
+        g = leakage * LEAKAGE_KNEE * LEAKAGE_KNEE / (root * root * root)
+    if p[at + J_BREAKDOWN] > 0.0:
+        y = -(v + p[at + J_BREAKDOWN]) / p[at + J_BREAKDOWN_SLOPE]
+        if y > FLOOR:
+            e, d = exponential(y)
+            i -= p[at + J_BREAKDOWN_CURRENT] * (e + 1.0)
+            g += p[at + J_BREAKDOWN_CURRENT] * d / p[at + J_BREAKDOWN_SLOPE]
+    return i, g
+
+
+@leaf
+def depletion(v: float, p: Floats, at: int) -> tuple[float, float]:
+    """Return charge and capacitance of the depletion layer at junction voltage v."""
+    c0 = p[at + J_CAPACITANCE]
+    if c0 == 0.0:
+        return 0.0, 0.0
+    potential = p[at + J_POTENTIAL]
+    m = p[at + J_GRADING]
+    if m == 0.0:
+        return c0 * v, c0
+    half = 0.5 * potential
+    u = min(v, half)
+    s = 1.0 - u / potential
+    power = 1.0 / math.sqrt(s) if m == 0.5 else s ** (-m)
+    c = c0 * power
+    q = c0 * potential / (1.0 - m) * (1.0 - s * power)
+    if v > half:
+        rise = c * m / half
+        d = v - half
+        q += d * (c + 0.5 * rise * d)
+        c += rise * d
+    return q, c

@@ -1,0 +1,129 @@
+"""The arrays that the kernel works on. Everything is a C-contiguous int64 or float64 array, one row per lane.
+
+Unknowns come first in the vector x: free nets 0 .. n_nets-1, then branch currents up to n_free-1; known nets follow
+(n_free .. n_all-1), the last of them being the return 0V. A matrix slot equal to the number of stored entries is a
+dump: rows and columns of known nets are added there and never read. Arrays are passed to the inner functions one by
+one: a tuple of arrays costs more to hand over than the arithmetic of a small circuit.
+"""
+
+from __future__ import annotations
+
+from typing import Any, NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+Ints = NDArray[np.int64]
+Floats = NDArray[np.float64]
+Bytes = NDArray[np.uint8]
+
+# Families of primitives, in the order in which they stand in ``Topology.element``.
+CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT = 0, 1, 2, 3, 4
+FAMILIES = 5
+
+# Columns of ``Topology.element``.
+E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; of a branch a, b and its own row
+E_EXTRA = 3  # polarity of a transistor, source of a branch (-1 = none)
+E_PARAMETER = 4  # first of its parameters in a lane's row
+E_SLOT = 5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; transistor: 3 by 3
+ELEMENT_WIDTH = 14
+
+# A junction's parameters.
+J_SATURATION, J_SLOPE, J_CAPACITANCE, J_POTENTIAL, J_GRADING, J_TRANSIT = 0, 1, 2, 3, 4, 5
+J_BREAKDOWN, J_BREAKDOWN_SLOPE, J_BREAKDOWN_CURRENT, J_LEAKAGE = 6, 7, 8, 9
+J_KNEE, J_BREAKDOWN_KNEE = 10, 11  # where a Newton step into conduction, into breakdown begins to be limited
+JUNCTION_WIDTH = 12
+
+# A transistor's parameters: its own, then the emitter and the collector junction laid out as above.
+T_GAIN_FORWARD, T_GAIN_REVERSE, T_EARLY, T_COLLECTOR = 0, 1, 2, 3
+T_EMITTER_JUNCTION = 4
+T_COLLECTOR_JUNCTION = 4 + JUNCTION_WIDTH
+TRANSPORT_WIDTH = 4 + 2 * JUNCTION_WIDTH
+
+PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH)
+"""How many parameters a primitive of each family has; a branch has henry and ohm."""
+
+# Kinds of signal terms; the index is that of an unknown, or of an element.
+S_UNKNOWN, S_CONDUCTANCE_CURRENT, S_CONDUCTANCE_POWER = 0, 1, 2
+S_COLLECTOR_CURRENT, S_BASE_CURRENT, S_TRANSPORT_POWER = 3, 4, 5
+S_JUNCTION_CURRENT, S_JUNCTION_POWER = 6, 7
+
+# Kinds of observation rows.
+R_CROSSING, R_LEVEL, R_MAXIMUM, R_MINIMUM, R_INTEGRAL, R_SLEW = 0, 1, 2, 3, 4, 5
+
+# Columns of ``Rows.row``.
+ROW_KIND, ROW_SIGNAL, ROW_DIRECTION, ROW_NTH, ROW_FROM, ROW_TO = 0, 1, 2, 3, 4, 5
+
+# Status of an observation row.
+NOT_YET, SEEN, OPEN = 0, 1, 2
+
+# How a lane ended.
+DONE, UNSOLVED, OVERWORKED, TRACE_FULL, STOPPED = 0, 1, 2, 3, 4
+
+
+class Topology(NamedTuple):
+    """What is connected to what; the same for every lane."""
+
+    size: Ints  # n_nets, n_free, n_all, stored matrix entries
+    element: Ints  # (elements, ELEMENT_WIDTH), family after family
+    group: Ints  # (FAMILIES + 1,) where each family begins
+    pivot: Ints  # (n_free + 1, 3) unknown, slot of its diagonal, first of its entries
+    entry: Ints  # (entries + 1, 4) later unknown, slot below the diagonal, slot right of it, first of its updates
+    update: Ints  # (updates, 2) slot to change, slot right of the pivot
+
+
+class Program(NamedTuple):
+    """The sequence as segments between events. Within a segment every source is linear (plus its sine)."""
+
+    length: Floats  # (lanes, segments) s
+    restart: Ints  # (segments,) 1 where a segment begins with a jump
+    source: Floats  # (lanes, segments, sources, 2) value at the start, slope per second
+    sine: Floats  # (lanes, sources, 3) amplitude, frequency, phase
+    switched: Ints  # (n,) parameters (of conductances) that events set
+    switch: Floats  # (lanes, segments, n, 2) siemens at the start, slope per second
+
+
+class Rows(NamedTuple):
+    """Signals and the observation rows made of them."""
+
+    term: Ints  # (terms, 2) kind, index
+    factor: Floats  # (terms,)
+    signal: Ints  # (signals + 1,) range of terms
+    row: Ints  # (rows, 6) kind, signal, direction, n-th, from-row (-1 = start), to-row (-1 = end)
+    level: Floats  # (rows,)
+    offset: Floats  # (rows, 2) s added to from, to
+    stop_row: Ints  # (1,) end the lane once this row is seen, -1 = never
+
+
+class Control(NamedTuple):
+    """Tolerances and bounds."""
+
+    relative: Floats  # (n_free,)
+    absolute: Floats  # (n_free,)
+    bounds: Ints  # most steps of a lane, most Newton iterations of a stage, and of a jump
+
+
+class Results(NamedTuple):
+    """What a run fills in."""
+
+    value: Floats  # (lanes, rows)
+    time: Floats  # (lanes, rows)
+    status: Ints  # (lanes, rows)
+    ended: Ints  # (lanes, 2) how, unknown with the largest residual
+    ended_at: Floats  # (lanes,) s
+    work: Ints  # (lanes, 4) steps, rejected steps, Newton iterations, Newton failures
+    final: Floats  # (lanes, n_all)
+    trace_time: Floats  # (points,) one lane only
+    trace_value: Floats  # (points, n_all)
+    trace_used: Ints  # (1,)
+
+
+def zeros(*shape: int) -> Floats:
+    """A C-contiguous float64 array of zeros."""
+    return np.zeros(shape, dtype=np.float64)
+
+
+def ints(values: Any, *shape: int) -> Ints:
+    """A C-contiguous int64 array, reshaped when a shape is given (also for empty lists)."""
+    array = np.ascontiguousarray(np.asarray(values, dtype=np.int64))
+    return np.ascontiguousarray(array.reshape(shape)) if shape else array

@@ -1,0 +1,45 @@
+"""Resistor: one conductance, with a temperature coefficient when it is given."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from .figures import typical, valued
+from .kind import TEXT, Entry, Kind
+
+if TYPE_CHECKING:
+    from ..design.document import Part
+    from ..primitives.builder import Builder
+
+TOLERANCE = 0.05  # customary where none is written, from memory
+
+
+def expand(part: Part, build: Builder) -> None:
+    """Add the resistor; a value of 0R was joined into one net before and adds nothing."""
+    value = valued(part, "ohm", TOLERANCE)
+    if value.typical == 0.0:
+        return
+    key = build.column(part.ref, "value", *value.limits)
+    drift = typical(part, "tempco", "1/K", 0.0)
+    handle = build.conductance(
+        part.pins["a"], part.pins["b"], lambda lanes: 1.0 / (lanes[key] * (1.0 + drift * (lanes.ambient - 25.0)))
+    )
+    bench = build.bench(part.ref)
+    bench.currents["a"] = handle.current
+    bench.power = handle.power
+
+
+KIND = Kind(
+    name="resistor",
+    letters=("R",),
+    pins=(("a", "b"),),
+    paths=(("a", "b"),),
+    expand=expand,
+    fields={
+        "value": Entry("ohm", needed=True, about="resistance"),
+        "tolerance": Entry("%", about="largest deviation of the value; 5 % where none is written"),
+        "rating": Entry("W", about="power up to 70 C"),
+        "tempco": Entry("1/K", about="temperature coefficient"),
+        "class": Entry(TEXT, about="generic class"),
+    },
+)

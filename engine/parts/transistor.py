@@ -1,0 +1,250 @@
+"""Bipolar transistors: from datasheet figures or a given transport law to one transport element.
+
+Transport law after Ebers, Moll, Proc. IRE 42 (1954) 1761, with the Early effect (Early, Proc. IRE 40 (1952) 1401).
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from ..errors import CircuitError
+from ..primitives.builder import constant
+from ..primitives.columns import Group
+from .figures import figure, needed, typical
+from .kind import FLAG, TEXT, Entry, Kind
+from .physics import REFERENCE, doubling, gain_factor, saturation_factor, thermal_voltage
+
+if TYPE_CHECKING:
+    from ..design.document import Part
+    from ..kernel.layout import Floats
+    from ..primitives.builder import Builder, Handle, Laws
+
+BUILT_IN = 0.75  # V, from memory
+EMITTER_GRADING, COLLECTOR_GRADING = 0.5, 0.33  # abrupt and graded junction, textbook values
+REVERSE_TRANSIT = 20.0  # times the forward transit time, from memory
+BREAKDOWN_SLOPE = 0.05  # V per e-fold of the emitter junction's breakdown, from memory
+BREAKDOWN_CURRENT = 10e-6  # A at the breakdown voltage
+
+
+def reverse_gain_from(drop: float, forced: float, forward: float) -> float:
+    """Reverse gain from one saturation point: V_CE = V_T ln[(1 + (b + 1)/B_R) / (1 - b/B_F)] (Ebers, Moll 1954).
+
+    ``drop`` in V at forced gain ``forced``; the resistive part of the drop is taken as none.
+    """
+    if forced >= forward:
+        raise ValueError("the forced gain must be below the forward gain")
+    inner = math.exp(min(drop / float(thermal_voltage(REFERENCE)), 60.0)) * (1.0 - forced / forward)
+    return (forced + 1.0) / max(inner - 1.0, 1e-6)
+
+
+def at_zero_bias(capacitance: float, reverse: float, grading: float) -> float:
+    """Zero-bias depletion capacitance from its value at a reverse voltage."""
+    return capacitance * float((1.0 + reverse / BUILT_IN) ** grading)
+
+
+def _own_law(part: Part, build: Builder, ref: str) -> Laws:
+    """The law that the document gives directly: nothing is added to it."""
+
+    def given(key: str, unit: str, default: float | None = None) -> tuple[float, float, float] | None:
+        found = part.law_limits(key, unit)
+        if found is None:
+            return None if default is None else (default, default, default)
+        middle = next(v for v in (found.typical, found.min, found.max) if v is not None)
+        return middle, middle if found.min is None else found.min, middle if found.max is None else found.max
+
+    saturation = given("saturation_current", "A")
+    gain = given("forward_gain", "")
+    if saturation is None or gain is None:
+        missing, example = ("saturation_current", "10 fA") if saturation is None else ("forward_gain", "100")
+        raise CircuitError(f'part {part.ref}, law {missing}: missing; write it like "{missing}": "{example}"')
+    saturation_key = build.column(ref, "saturation_current", *saturation)
+    gain_key = build.column(ref, "gain", *gain, group=Group.GAIN, logarithmic=True)
+    ideality = (given("ideality", "", 1.0) or (1.0,))[0]
+    reverse = (given("reverse_gain", "", 1.0) or (1.0,))[0]
+    early = given("early_voltage", "V")
+    fixed = given("thermal_voltage", "V")
+    one_sided = part.law.get("collector_junction") is False
+
+    def slope(celsius: Floats) -> Floats:
+        return np.full_like(celsius, fixed[0]) if fixed is not None else ideality * thermal_voltage(celsius)
+
+    def moved(celsius: Floats) -> Floats:
+        return np.ones_like(celsius) if fixed is not None else saturation_factor(celsius, ideality)
+
+    def amplification(celsius: Floats) -> Floats:
+        return np.ones_like(celsius) if fixed is not None else gain_factor(celsius)
+
+    laws: Laws = {
+        "per_forward_gain": lambda lanes: 1.0 / (lanes[gain_key] * amplification(lanes.ambient)),
+        "per_reverse_gain": lambda lanes: 1.0 / reverse,
+        "per_early_voltage": lambda lanes: 0.0 if early is None else 1.0 / early[0],
+        "collector_junction": lambda lanes: 0.0 if one_sided else 1.0,
+    }
+    for side, capacitance, transit, grading in (
+        ("emitter", "base_emitter_capacitance", "forward_transit_time", EMITTER_GRADING),
+        ("collector", "base_collector_capacitance", "reverse_transit_time", COLLECTOR_GRADING),
+    ):
+        farads = (given(capacitance, "F", 0.0) or (0.0,))[0]
+        seconds = (given(transit, "s", 0.0) or (0.0,))[0]
+        laws |= {
+            f"{side}_saturation": lambda lanes: lanes[saturation_key] * moved(lanes.ambient),
+            f"{side}_slope": lambda lanes: slope(lanes.ambient),
+            f"{side}_capacitance": constant(farads),
+            f"{side}_transit": constant(seconds),
+            f"{side}_grading": constant(grading),
+        }
+    breakdown = given("base_emitter_breakdown", "V")
+    if breakdown is not None:
+        laws |= _breakdown(breakdown[0])
+    return laws
+
+
+def _breakdown(volts: float) -> Laws:
+    return {
+        "emitter_breakdown": lambda lanes: volts,
+        "emitter_breakdown_slope": lambda lanes: BREAKDOWN_SLOPE,
+        "emitter_breakdown_current": lambda lanes: BREAKDOWN_CURRENT,
+    }
+
+
+def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
+    """The law made of datasheet or class figures; ``share`` is the exponent of the gain (0.5 in a pair)."""
+    gain = needed(part, "gain", "", "200")
+    gain_key = build.column(
+        ref, "gain", gain.typical**share, gain.low**share, gain.high**share, group=Group.GAIN, logarithmic=True
+    )
+    drop = needed(part, "v_be", "V", "0.64 V")
+    drop_key = build.column(ref, "v_be", *drop.limits)
+    drop_current = typical(part, "v_be_current", "A", 2e-3)
+    forward = gain.typical**share
+    forced = min(typical(part, "forced_gain", "", 20.0), 0.5 * forward)
+    reverse = reverse_gain_from(typical(part, "v_ce_sat", "V", 0.1), forced, forward)
+    early = typical(part, "early_voltage", "V", 80.0)
+    ob = figure(part, "c_ob", "F")
+    ib = figure(part, "c_ib", "F")
+    collector_c = (
+        0.0 if ob is None else at_zero_bias(ob.typical, typical(part, "c_ob_bias", "V", 10.0), COLLECTOR_GRADING)
+    )
+    emitter_c = 0.0 if ib is None else at_zero_bias(ib.typical, typical(part, "c_ib_bias", "V", 0.5), EMITTER_GRADING)
+    c_scale = build.column(
+        ref,
+        "c_ob",
+        1.0,
+        1.0 if ob is None else ob.low / ob.typical,
+        1.0 if ob is None else ob.high / ob.typical,
+    )
+    transition = typical(part, "f_t", "Hz", 0.0)
+    forward_transit = 0.0
+    if transition > 0.0:
+        total = 1.0 / (2.0 * math.pi * transition)
+        at = typical(part, "f_t_current", "A", 10e-3)
+        forward_transit = max(0.2 * total, total - (emitter_c + collector_c) * float(thermal_voltage(REFERENCE)) / at)
+    leak = figure(part, "i_cbo", "A")
+    laws: Laws = {
+        "per_forward_gain": lambda lanes: 1.0 / (lanes[gain_key] * gain_factor(lanes.ambient)),
+        "per_reverse_gain": lambda lanes: 1.0 / reverse,
+        "per_early_voltage": lambda lanes: 1.0 / early,
+        "collector_junction": lambda lanes: 1.0,
+    }
+    for side in ("emitter", "collector"):
+        laws[f"{side}_saturation"] = lambda lanes: (
+            drop_current / np.expm1(lanes[drop_key] / thermal_voltage(REFERENCE)) * saturation_factor(lanes.ambient)
+        )
+        laws[f"{side}_slope"] = lambda lanes: thermal_voltage(lanes.ambient)
+        laws[f"{side}_potential"] = lambda lanes: BUILT_IN
+    laws |= {
+        "emitter_capacitance": lambda lanes: emitter_c,
+        "emitter_grading": lambda lanes: EMITTER_GRADING,
+        "emitter_transit": lambda lanes: forward_transit,
+        "collector_capacitance": lambda lanes: collector_c * lanes[c_scale],
+        "collector_grading": lambda lanes: COLLECTOR_GRADING,
+        "collector_transit": lambda lanes: REVERSE_TRANSIT * forward_transit,
+    }
+    if leak is not None:
+        leak_key = build.column(ref, "i_cbo", *leak.limits, logarithmic=True)
+        step = typical(part, "i_cbo_doubling", "K", 10.0)
+        laws["collector_leakage"] = lambda lanes: lanes[leak_key] * doubling(lanes.ambient, step)
+    breakdown = figure(part, "base_emitter_breakdown", "V")
+    if breakdown is not None:
+        laws |= _breakdown(breakdown.typical)
+    return laws
+
+
+def add_transistor(
+    part: Part, build: Builder, ref: str, collector: str, base: str, emitter: str, polarity: int, share: float = 1.0
+) -> Handle:
+    """Add one transistor of a part; ``ref`` names its columns (a pair has two)."""
+    laws = _own_law(part, build, ref) if part.law else _from_figures(part, build, ref, share)
+    return build.transport(collector, base, emitter, polarity, laws)
+
+
+def _expand(polarity: int) -> Callable[[Part, Builder], None]:
+    def expand(part: Part, build: Builder) -> None:
+        handle = add_transistor(
+            part, build, part.ref, part.pins["collector"], part.pins["base"], part.pins["emitter"], polarity
+        )
+        bench = build.bench(part.ref)
+        bench.currents["collector"] = handle.current
+        bench.currents["base"] = handle.base_current
+        bench.currents["emitter"] = (handle.current + handle.base_current).scaled(-1.0)
+        bench.power = handle.power
+
+    return expand
+
+
+FIELDS = {"class": Entry(TEXT, about="generic class")}
+DATA = {
+    "gain": Entry("", about="current gain: min at the working current, typical, max"),
+    "v_be": Entry("V", about="base-emitter voltage at v_be_current"),
+    "v_be_current": Entry("A", about="collector current of the v_be figure"),
+    "v_ce_sat": Entry("V", about="saturation voltage at forced_gain"),
+    "saturation_current_at": Entry("A", about="collector current of the v_ce_sat figure"),
+    "forced_gain": Entry("", about="collector over base current of the v_ce_sat figure"),
+    "v_ceo": Entry("V", about="rated collector-emitter voltage"),
+    "v_ebo": Entry("V", about="rated reverse base-emitter voltage"),
+    "i_c_max": Entry("A", about="rated collector current"),
+    "c_ob": Entry("F", about="collector-base capacitance at c_ob_bias"),
+    "c_ob_bias": Entry("V", about="reverse voltage of the c_ob figure"),
+    "c_ib": Entry("F", about="base-emitter capacitance at c_ib_bias"),
+    "c_ib_bias": Entry("V", about="reverse voltage of the c_ib figure"),
+    "f_t": Entry("Hz", about="transition frequency at f_t_current"),
+    "f_t_current": Entry("A", about="collector current of the f_t figure"),
+    "i_cbo": Entry("A", about="collector-base leakage at 25 C"),
+    "i_cbo_doubling": Entry("K", about="kelvin per doubling of the leakage"),
+    "thermal_resistance": Entry("K/W", about="junction to ambient"),
+    "power": Entry("W", about="rated power"),
+    "base_emitter_breakdown": Entry("V", about="typical breakdown, not the rating"),
+    "early_voltage": Entry("V", about="Early voltage"),
+}
+LAW = {
+    "saturation_current": Entry("A", needed=True),
+    "forward_gain": Entry("", needed=True),
+    "reverse_gain": Entry(""),
+    "ideality": Entry(""),
+    "early_voltage": Entry("V"),
+    "base_emitter_capacitance": Entry("F", about="at zero bias"),
+    "base_collector_capacitance": Entry("F", about="at zero bias"),
+    "forward_transit_time": Entry("s"),
+    "reverse_transit_time": Entry("s"),
+    "base_emitter_breakdown": Entry("V", about="typical breakdown, not the rating"),
+    "collector_junction": Entry(FLAG, about="false: a one-sided law without a collector junction"),
+    "thermal_voltage": Entry("V", about="instead of kT/q"),
+}
+PINS = ("collector", "base", "emitter")
+KINDS = tuple(
+    Kind(
+        name=name,
+        letters=("Q",),
+        pins=(PINS,),
+        paths=(("collector", "emitter"), ("base", "emitter")),
+        expand=_expand(polarity),
+        fields=FIELDS,
+        data=DATA,
+        law=LAW,
+    )
+    for name, polarity in (("npn", 1), ("pnp", -1))
+)

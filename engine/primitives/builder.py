@@ -1,0 +1,204 @@
+"""Collects the primitives that parts become, with the laws that turn lanes into their parameters."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+import numpy as np
+
+from ..errors import CircuitError
+from ..kernel import layout
+from ..kernel.layout import Floats
+from .columns import Column, Group, Lanes
+from .signals import Signal
+
+Law = Callable[[Lanes], "Floats | float"]
+Laws = dict[str, Law]
+
+RETURN = "0V"
+SUPPLY_NET = "supply"
+
+JUNCTION_DEFAULTS = {"potential": 0.75, "grading": 0.5, "breakdown_slope": 0.05, "breakdown_current": 1e-3}
+_JUNCTION_PLACES = {
+    "saturation": layout.J_SATURATION,
+    "slope": layout.J_SLOPE,
+    "capacitance": layout.J_CAPACITANCE,
+    "potential": layout.J_POTENTIAL,
+    "grading": layout.J_GRADING,
+    "transit": layout.J_TRANSIT,
+    "breakdown": layout.J_BREAKDOWN,
+    "breakdown_slope": layout.J_BREAKDOWN_SLOPE,
+    "breakdown_current": layout.J_BREAKDOWN_CURRENT,
+    "leakage": layout.J_LEAKAGE,
+}
+_TRANSPORT_PLACES = {
+    "per_forward_gain": layout.T_GAIN_FORWARD,
+    "per_reverse_gain": layout.T_GAIN_REVERSE,
+    "per_early_voltage": layout.T_EARLY,
+    "collector_junction": layout.T_COLLECTOR,
+}
+
+
+def constant(value: float) -> Law:
+    """A law that gives the same value in every lane."""
+    return lambda lanes: value
+
+
+def inverse(key: tuple[str, str]) -> Law:
+    """The conductance of a resistance that is a column."""
+    return lambda lanes: 1.0 / lanes[key]
+
+
+@dataclass(frozen=True, slots=True)
+class Handle:
+    """A primitive that was added: its family and its place in it."""
+
+    family: str
+    index: int
+    nets: tuple[str, ...]
+
+    @property
+    def current(self) -> Signal:
+        """Current from the first net to the second; collector current of a transistor."""
+        kinds = {
+            "conductance": layout.S_CONDUCTANCE_CURRENT,
+            "junction": layout.S_JUNCTION_CURRENT,
+            "transport": layout.S_COLLECTOR_CURRENT,
+        }
+        return Signal(((kinds[self.family], self.index, 1.0),))
+
+    @property
+    def base_current(self) -> Signal:
+        """Current into the base of a transistor."""
+        return Signal(((layout.S_BASE_CURRENT, self.index, 1.0),))
+
+    @property
+    def power(self) -> Signal:
+        """Power turned into heat."""
+        kinds = {
+            "conductance": layout.S_CONDUCTANCE_POWER,
+            "junction": layout.S_JUNCTION_POWER,
+            "transport": layout.S_TRANSPORT_POWER,
+        }
+        return Signal(((kinds[self.family], self.index, 1.0),))
+
+
+@dataclass
+class Bench:
+    """What can be observed at a part: currents by pin name, power, and the level at which a load counts as on."""
+
+    currents: dict[str, Signal] = field(default_factory=dict)
+    power: Signal | None = None
+    on: tuple[str, str, float] | None = None
+
+
+class Builder:
+    """Filled by the ``expand`` functions of part kinds; :mod:`.circuit` makes arrays of it."""
+
+    def __init__(self, supply_nominal: float = 0.0, alias: dict[str, str] | None = None) -> None:
+        self.supply_nominal = supply_nominal
+        self.nets: dict[str, None] = {RETURN: None}
+        self.columns: list[Column] = []
+        self.conductances: list[tuple[str, str, Law]] = []
+        self.capacitances: list[tuple[str, str, Law]] = []
+        self.branches: list[tuple[str, str, Law, Law, str | None]] = []
+        self.junctions: list[tuple[str, str, Laws]] = []
+        self.transports: list[tuple[str, str, str, int, Laws]] = []
+        self.switches: dict[str, tuple[int, Callable[[str], Law]]] = {}
+        self.generators: dict[str, str] = {}
+        self.benches: dict[str, Bench] = {}
+        self._alias = alias or {}
+
+    def net(self, name: str) -> str:
+        """The net that a name stands for (nets joined by 0R parts share one), noted as used."""
+        seen = name
+        while seen in self._alias:
+            seen = self._alias[seen]
+        self.nets.setdefault(seen)
+        return seen
+
+    def column(
+        self,
+        ref: str,
+        datum: str,
+        nominal: float,
+        low: float | None = None,
+        high: float | None = None,
+        group: Group = Group.TOLERANCE,
+        logarithmic: bool = False,
+    ) -> tuple[str, str]:
+        """Add a number that lanes may vary; return its key."""
+        low = nominal if low is None else low
+        high = nominal if high is None else high
+        if not low <= nominal <= high:
+            raise CircuitError(
+                f"part {ref}, {datum}: typical {nominal:g} lies outside of its limits {low:g} .. {high:g}; "
+                "write min, typical and max in rising order"
+            )
+        self.columns.append(Column(ref, datum, nominal, low, high, group, logarithmic))
+        return ref, datum
+
+    def conductance(self, a: str, b: str, law: Law) -> Handle:
+        """A linear conductance in siemens between two nets."""
+        pair = self.net(a), self.net(b)
+        self.conductances.append((*pair, law))
+        return Handle("conductance", len(self.conductances) - 1, pair)
+
+    def capacitance(self, a: str, b: str, law: Law) -> None:
+        """A linear capacitance in farad between two nets."""
+        self.capacitances.append((self.net(a), self.net(b), law))
+
+    def branch(self, a: str, b: str, inductance: Law, resistance: Law, source: str | None = None) -> None:
+        """A branch with its current as an unknown: v(a) - v(b) = L di/dt + R i + source."""
+        self.branches.append((self.net(a), self.net(b), inductance, resistance, source))
+
+    def junction(self, anode: str, cathode: str, laws: Laws) -> Handle:
+        """A two-terminal junction; ``laws`` by the names of ``_JUNCTION_PLACES``."""
+        pair = self.net(anode), self.net(cathode)
+        self.junctions.append((*pair, laws))
+        return Handle("junction", len(self.junctions) - 1, pair)
+
+    def transport(self, collector: str, base: str, emitter: str, polarity: int, laws: Laws) -> Handle:
+        """A bipolar transistor; polarity +1 npn, -1 pnp. Junction laws are prefixed ``emitter_`` / ``collector_``."""
+        nets = self.net(collector), self.net(base), self.net(emitter)
+        self.transports.append((*nets, polarity, laws))
+        return Handle("transport", len(self.transports) - 1, nets)
+
+    def switch(self, ref: str, a: str, b: str, start: Law, reading: Callable[[str], Law]) -> Handle:
+        """A conductance that events set; ``reading`` turns the text of an event (``closed``, ``open`` or a value)
+        into a law in siemens."""
+        handle = self.conductance(a, b, start)
+        self.switches[ref] = (handle.index, reading)
+        return handle
+
+    def bench(self, ref: str) -> Bench:
+        """Where a kind notes what can be observed at its part."""
+        return self.benches.setdefault(ref, Bench())
+
+
+def junction_array(laws: Laws, lanes: Lanes, prefix: str = "") -> Floats:
+    """Parameters of one junction, (lanes, JUNCTION_WIDTH)."""
+    array = layout.zeros(lanes.count, layout.JUNCTION_WIDTH)
+    for name, place in _JUNCTION_PLACES.items():
+        law = laws.get(prefix + name)
+        array[:, place] = JUNCTION_DEFAULTS.get(name, 0.0) if law is None else law(lanes)
+    # The voltage at which the exponential bends away: where its conductance equals its slope over 1.4 ohm.
+    knee = np.log(array[:, layout.J_SLOPE] / (math.sqrt(2.0) * np.maximum(array[:, layout.J_SATURATION], 1e-300)))
+    array[:, layout.J_KNEE] = np.maximum(0.0, array[:, layout.J_SLOPE] * knee)
+    over = array[:, layout.J_BREAKDOWN_SLOPE] / (math.sqrt(2.0) * array[:, layout.J_BREAKDOWN_CURRENT])
+    array[:, layout.J_BREAKDOWN_KNEE] = array[:, layout.J_BREAKDOWN_SLOPE] * np.log(over)
+    return array
+
+
+def transport_array(laws: Laws, lanes: Lanes) -> Floats:
+    """Parameters of one bipolar transistor, (lanes, TRANSPORT_WIDTH)."""
+    array = layout.zeros(lanes.count, layout.TRANSPORT_WIDTH)
+    for name, place in _TRANSPORT_PLACES.items():
+        law = laws.get(name)
+        array[:, place] = 0.0 if law is None else law(lanes)
+    collector = layout.T_COLLECTOR_JUNCTION
+    array[:, layout.T_EMITTER_JUNCTION : collector] = junction_array(laws, lanes, "emitter_")
+    array[:, collector:] = junction_array(laws, lanes, "collector_")
+    return np.ascontiguousarray(array)

@@ -1,0 +1,235 @@
+"""The one way to compute: run K variants of one circuit through a sequence and note what was asked for.
+
+Blocks of lanes are handed to one thread per core; progress and cancelling fall between blocks. A lane in a block gives
+the same bits as the lane alone, whatever the number of threads.
+"""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable, Sequence
+from concurrent.futures import FIRST_COMPLETED, ThreadPoolExecutor, wait
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from .circuit.circuit import Circuit
+from .errors import Cancelled
+from .kernel import layout
+from .kernel.layout import Control, Floats, Program, Results, Rows, ints
+from .kernel.march import march
+from .primitives.columns import Lanes
+from .primitives.signals import Anchor, Row, Signal
+
+RELATIVE = 1e-3
+ABSOLUTE = 1e-4  # V
+ABSOLUTE_CURRENT = 1e-6  # A
+TIGHT = 0.1  # factor on nets that carry timing capacitors
+BLOCK = 16
+MOST_STEPS = 200_000
+MOST_ITERATIONS = 12
+MOST_AT_JUMP = 200
+
+FAMILY = {
+    layout.S_CONDUCTANCE_CURRENT: layout.CONDUCTANCE,
+    layout.S_CONDUCTANCE_POWER: layout.CONDUCTANCE,
+    layout.S_JUNCTION_CURRENT: layout.JUNCTION,
+    layout.S_JUNCTION_POWER: layout.JUNCTION,
+    layout.S_COLLECTOR_CURRENT: layout.TRANSPORT,
+    layout.S_BASE_CURRENT: layout.TRANSPORT,
+    layout.S_TRANSPORT_POWER: layout.TRANSPORT,
+}
+ENDED = {
+    layout.UNSOLVED: "could not be solved",
+    layout.OVERWORKED: "took too many steps",
+    layout.TRACE_FULL: "kept too many points",
+}
+
+
+def never() -> bool:
+    """A run that nobody cancels."""
+    return False
+
+
+def silent(done: int, total: int) -> None:
+    """Progress that nobody watches."""
+
+
+@dataclass(frozen=True)
+class Observed:
+    """What a run noted. Arrays have one entry per lane; NaN where an observation has no value."""
+
+    circuit: Circuit
+    rows: dict[Row, int]
+    results: Results
+
+    def value(self, row: Row) -> Floats:
+        """Value of an observation: the time of a crossing, a level, an extreme, an integral."""
+        k = self.rows[row]
+        return np.where(self.results.status[:, k] == layout.SEEN, self.results.value[:, k], np.nan)
+
+    def time(self, row: Row) -> Floats:
+        """When it was observed, in s from the start of the sequence."""
+        k = self.rows[row]
+        return np.where(self.results.status[:, k] == layout.SEEN, self.results.time[:, k], np.nan)
+
+    def seen(self, row: Row) -> NDArray[np.bool_]:
+        """Whether it was observed at all."""
+        found: NDArray[np.bool_] = self.results.status[:, self.rows[row]] == layout.SEEN
+        return found
+
+    @property
+    def failed(self) -> NDArray[np.bool_]:
+        """Lanes that ended before their time: nothing they say may be believed."""
+        how = self.results.ended[:, 0]
+        bad: NDArray[np.bool_] = (how != layout.DONE) & (how != layout.STOPPED)
+        return bad
+
+    def failure(self, lane: int) -> str | None:
+        """Why a lane ended early, in words with time and net; None for a lane that was solved."""
+        how = int(self.results.ended[lane, 0])
+        if how not in ENDED:
+            return None
+        net = self.circuit.unknown_name(int(self.results.ended[lane, 1]))
+        return f"{ENDED[how]} at {self.results.ended_at[lane]:.6g} s near net {net}"
+
+    @property
+    def final(self) -> Floats:
+        """The state at the end, (lanes, n_all): the ``start`` of a run that goes on from here."""
+        return self.results.final
+
+
+class _RowTable:
+    """Turns rows into arrays, each row once and after the rows it waits for."""
+
+    def __init__(self, circuit: Circuit) -> None:
+        self.circuit = circuit
+        self.places: dict[Row, int] = {}
+        self.signals: dict[Signal, int] = {}
+
+    def add(self, row: Row) -> int:
+        if row in self.places:
+            return self.places[row]
+        for anchor in (row.start, row.end):
+            if anchor is not None and anchor.row is not None:
+                self.add(anchor.row)
+        self.signals.setdefault(row.signal, len(self.signals))
+        return self.places.setdefault(row, len(self.places))
+
+    def arrays(self, stop: Row | None) -> Rows:
+        terms: list[tuple[int, int]] = []
+        scales: list[float] = []
+        bounds = [0]
+        for signal in self.signals:
+            for kind, index, scale in signal.terms:
+                place = (
+                    self.circuit.index(index) if isinstance(index, str) else self.circuit.element(FAMILY[kind], index)
+                )
+                terms.append((kind, place))
+                scales.append(scale)
+            bounds.append(len(terms))
+        rows: list[tuple[int, ...]] = []
+        offsets: list[tuple[float, float]] = []
+        for row in self.places:
+            start, after = self._window(row.start)
+            end, until = self._window(row.end)
+            rows.append((row.kind, self.signals[row.signal], 1 if row.rising else -1, row.nth, start, end))
+            offsets.append((after, until))
+        return Rows(
+            term=ints(terms, len(terms), 2),
+            factor=np.array(scales, dtype=float),
+            signal=ints(bounds),
+            row=ints(rows, len(rows), 6),
+            level=np.array([row.level for row in self.places], dtype=float),
+            offset=np.ascontiguousarray(np.array(offsets, dtype=float).reshape(len(rows), 2)),
+            stop_row=ints([-1 if stop is None else self.places[stop]]),
+        )
+
+    def _window(self, anchor: Anchor | None) -> tuple[int, float]:
+        if anchor is None:
+            return -1, np.inf
+        return (-1 if anchor.row is None else self.places[anchor.row]), anchor.by
+
+
+def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
+    """Tolerances of every unknown, ten times tighter on nets that carry timing capacitors."""
+    nets, free = int(circuit.topology.size[0]), int(circuit.topology.size[1])
+    scale = relative / RELATIVE
+    rtol = np.full(free, relative)
+    atol = np.full(free, ABSOLUTE * scale)
+    atol[nets:] = ABSOLUTE_CURRENT * scale
+    for stage in circuit.design.stages:
+        for role, ref in stage.roles.items():
+            if role.startswith("timing_capacitor"):
+                for net in circuit.design.part(ref).pins.values():
+                    place = circuit.index(net)
+                    if place < nets:
+                        rtol[place] = relative * TIGHT
+                        atol[place] = ABSOLUTE * scale * TIGHT
+    return Control(rtol, atol, ints([MOST_STEPS, MOST_ITERATIONS, MOST_AT_JUMP]))
+
+
+def run(
+    circuit: Circuit,
+    lanes: Lanes,
+    program: Program,
+    rows: Sequence[Row],
+    *,
+    start: Floats | None = None,
+    stop: Row | None = None,
+    relative: float = RELATIVE,
+    trace: int = 0,
+    threads: int | None = None,
+    progress: Callable[[int, int], None] = silent,
+    cancelled: Callable[[], bool] = never,
+) -> Observed:
+    """Run all lanes through a program.
+
+    ``start`` (lanes, n_all) are the voltages before t = 0, all zero by default; ``stop`` ends a lane once it is seen;
+    ``trace`` keeps so many points of the only lane; ``relative`` scales all tolerances. Raises Cancelled.
+    """
+    table = _RowTable(circuit)
+    for row in (*rows, *(() if stop is None else (stop,))):
+        table.add(row)
+    made = table.arrays(stop)
+    count, n_all = lanes.count, int(circuit.topology.size[2])
+    results = Results(
+        value=layout.zeros(count, len(table.places)),
+        time=layout.zeros(count, len(table.places)),
+        status=np.zeros((count, len(table.places)), dtype=np.int64),
+        ended=np.zeros((count, 2), dtype=np.int64),
+        ended_at=layout.zeros(count),
+        work=np.zeros((count, 4), dtype=np.int64),
+        final=layout.zeros(count, n_all),
+        trace_time=layout.zeros(trace),
+        trace_value=layout.zeros(trace, n_all),
+        trace_used=ints([0]),
+    )
+    starts = layout.zeros(count, n_all) if start is None else np.ascontiguousarray(start)
+    arguments = (circuit.topology, circuit.table(lanes), starts, program, made, control(circuit, relative), results)
+    cancel = np.zeros(1, dtype=np.uint8)
+    workers = threads or os.cpu_count() or 1
+    if count <= BLOCK or workers == 1:
+        for low in range(0, count, BLOCK):
+            if cancelled():
+                raise Cancelled("stopped")
+            march(*arguments, low, min(low + BLOCK, count), cancel)
+            progress(min(low + BLOCK, count), count)
+        return Observed(circuit, table.places, results)
+    with ThreadPoolExecutor(workers) as pool:
+        waiting = {
+            pool.submit(march, *arguments, low, min(low + BLOCK, count), cancel) for low in range(0, count, BLOCK)
+        }
+        blocks = len(waiting)
+        while waiting:
+            done, waiting = wait(waiting, timeout=0.05, return_when=FIRST_COMPLETED)
+            for future in done:
+                future.result()
+            progress(min(count, (blocks - len(waiting)) * BLOCK), count)
+            if cancelled():
+                cancel[0] = 1
+                for future in waiting:
+                    future.cancel()
+                raise Cancelled("stopped")
+    return Observed(circuit, table.places, results)
