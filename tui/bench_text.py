@@ -9,7 +9,7 @@ from rich.cells import cell_len
 
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
-from ..engine.results import CheckResult
+from ..engine.results import CheckResult, Depth, MarginSheet
 from ..storage.values import Draft
 from .chain_picture import Link
 from .figures import FigureRow, Figures
@@ -180,6 +180,15 @@ def check_lines(row: FigureRow) -> tuple[Line, Line]:
         first = f" {where}: worst corner not known yet, required {percent(check.required)}"
     spread = "" if check.spread is None else f"spread: {check.spread.passing * 100:.1f} % hold   "
     return line(first), line(f" {spread}{check.reason or ''}   sequence {check.sequence}")
+
+
+def spread_words(sheet: MarginSheet, lanes: int) -> str:
+    """What stands in the heading when a sheet of this depth is known, of a study that goes on to ``lanes`` lanes."""
+    if sheet.depth is Depth.SPREAD:
+        return f"spread of {sheet.lanes} lanes"
+    if sheet.depth is Depth.CORNERS and not lanes:
+        return "corners, no spread"
+    return f"computing: {sheet.depth} known"
 
 
 def worse_words(figures: Figures, base: int | None) -> tuple[str, str]:

@@ -43,6 +43,11 @@ class Computing:
         self._is_prepared = False
 
     @property
+    def lanes(self) -> int:
+        """Number of lanes of a spread."""
+        return self._solver.lanes
+
+    @property
     def idle(self) -> bool:
         """Whether nothing is computed and nothing waits."""
         return self._margins.idle.is_set() and self._causes.idle.is_set()

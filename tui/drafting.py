@@ -53,10 +53,6 @@ class Drafting:
         """Writes what came of it under a revision's note."""
         self._store.add_note(self.name, number, "result", text)
 
-    def set_field(self, ref: str, field: str, text: str) -> None:
-        """Writes one field of a part; an empty text takes the field out."""
-        self._keep(f"{ref} {field} {text or '-'}", edit.with_field(self.design, ref, field, text or None))
-
     def set_value(self, ref: str, text: str) -> None:
         """Writes the value of a part."""
         self._keep(f"{ref} {text}", edit.with_value(self.design, ref, text))
@@ -65,10 +61,6 @@ class Drafting:
         """Puts in the next preferred value above (+1) or below (-1)."""
         after = edit.stepped_value(self.design, ref, direction)
         self._keep(f"{ref} {after.part(ref).value}", after)
-
-    def remove(self, ref: str) -> None:
-        """Takes a part out."""
-        self._keep(f"without {ref}", edit.without_part(self.design, ref))
 
     def put(self, label: str, after: Design) -> None:
         """Keeps a design that another pure edit made."""

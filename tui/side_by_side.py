@@ -82,7 +82,8 @@ _OTHER = 17
 
 def compare_heading(columns: Sequence[Column], sight: Sequence[int], chosen: int, title: int) -> Line:
     """The column heads; the chosen column stands in brackets."""
-    spans = [Span(fit("", title + 1))]
+    hidden = len(columns) - len(sight)
+    spans = [Span(fit(f"({hidden} more columns)" if hidden else "", title + 1), "dim")]
     for at in sight:
         label = f"[{columns[at].label}]" if at == chosen else columns[at].label
         if incomplete(columns[at].sheet):
@@ -90,8 +91,7 @@ def compare_heading(columns: Sequence[Column], sight: Sequence[int], chosen: int
         spans.append(Span(fit_right(label, _FIRST if at == 0 else _FIRST - 1), "strong"))
         if at:
             spans.append(Span(fit_right("diff", _OTHER - _FIRST + 1), "strong"))
-    hidden = len(columns) - len(sight)
-    return (*spans, Span(f"  {hidden} more" if hidden else "", "dim"))
+    return tuple(spans)
 
 
 def compare_rows(columns: Sequence[Column], sight: Sequence[int], chosen: int, title: int) -> list[Row]:

@@ -10,12 +10,14 @@ from typing import ClassVar
 from textual import events
 from textual.app import App
 from textual.binding import BindingType
+from textual.message_pump import MessagePump
 from textual.screen import Screen
 from textual.widgets import Input
 
 from ..storage.store import Store
 from .actions import bindings
 from .computing import Computing
+from .key_order import KeyOrder
 from .palette import ActionFinder
 from .screens.help import HelpScreen
 from .screens.page import Page
@@ -45,6 +47,17 @@ class StagebookApp(App[None]):
         self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high")]
         self.computing = Computing(solver)
         self._store = store
+        self._keys = KeyOrder(super().on_event, self._pumps)
+
+    async def on_event(self, event: events.Event) -> None:
+        """Keys go one at a time; everything else as in Textual."""
+        if isinstance(event, events.Key) and not event.is_forwarded:
+            await self._keys.take(event)
+        else:
+            await super().on_event(event)
+
+    def _pumps(self) -> list[MessagePump]:
+        return [self, *self.screen.walk_children(with_self=True)]
 
     def get_default_screen(self) -> Screen[None]:
         """The shelf."""

@@ -1,252 +1,43 @@
-"""The bench: the chain of stages, the parts of one, its margins now and before, and the part under the hand."""
+"""The bench: what is done to a draft. Every edit is kept in the store first, then studied in the background."""
 
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import ClassVar
 
 from textual import events
-from textual.app import ComposeResult
-from textual.binding import BindingType
-from textual.containers import Horizontal
 
+from ...engine import edit
 from ...engine.design.document import Design
-from ...engine.design.part import Stage
 from ...engine.errors import EngineError
-from ...engine.results import Depth
+from ...engine.results import Depth, MarginSheet
 from ...storage.errors import StorageError, TakenOver
 from ...storage.values import Revision
-from ..actions import bindings
-from ..bench_text import (
-    check_lines,
-    heading,
-    links,
-    margin_heading,
-    margin_rows,
-    part_heading,
-    part_lines,
-    part_rows,
-    worse_words,
-)
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
-from ..figures import FigureRow, Figures
-from ..messages import SheetArrived, SolverPreparing, StudyProgress, StudyRefused
-from ..shown import line
 from ..side_by_side import Column
-from ..widgets.chain import Chain
-from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
-from ..widgets.rule import Divider, Rule
 from ..widgets.status import KeyLine
 from ..widgets.value_entry import ValueEntry
+from .bench_view import BenchView
 from .compare import CompareScreen
+from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_stage
 from .dialog import Answers, Ask, Field, Form
 from .history import HistoryScreen
 from .origin import OriginPage
-from .page import Page
-from .part_questions import ask_field, ask_new_part
 from .saving import Saving
 
 
-class BenchScreen(Page[None]):
-    """One design's draft. State: the draft, the figures, the chosen stage, and the hand in each stage."""
-
-    WHERE = "bench"
-    BINDINGS: ClassVar[list[BindingType]] = bindings("bench")
+class BenchScreen(BenchView):
+    """Editing, freezing and saving the draft that :class:`BenchView` shows, and the ways to other screens."""
 
     def __init__(self, drafting: Drafting, computing: Computing) -> None:
-        super().__init__()
-        self.drafting = drafting
-        self.figures = Figures()
-        self._computing = computing
-        self._request = 0
-        self._progress = ""
-        self._stage = 0
-        self._hands: dict[str, str] = {}
+        super().__init__(drafting, computing)
         self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved)
-
-    # -- what is seen
-
-    def compose_body(self) -> ComposeResult:
-        """Heading, chain, parts beside margins, the hand."""
-        yield Lines(id="heading")
-        yield Chain(id="chain")
-        yield Rule()
-        with Horizontal(id="bench-body"):
-            yield RowList(id="parts", empty="no parts yet: a adds one")
-            yield Divider(id="divider")
-            yield RowList(id="margins", empty="no margins here yet")
-        yield Rule(id="worse")
-        yield Lines(id="hand")
-        yield ValueEntry(id="entry")
-
-    def on_mount(self) -> None:
-        """Shows what is known and begins the study."""
-        self.begin()
-        self.query_one("#parts").focus()
-
-    def begin(self) -> None:
-        """Takes the draft as it stands in the store: at first, and after it went on from another revision."""
-        base = self.drafting.base
-        known = None if base is None or incomplete(base.sheet) else base.sheet
-        self.figures = Figures(nominal=known, worst=known, before=known)
-        self._study()
-
-    def on_unmount(self) -> None:
-        """Nobody looks any more."""
-        self._computing.cancel_study()
-
-    def on_resize(self) -> None:
-        """Another width: other columns."""
-        self.call_after_refresh(self._show)
-
-    @property
-    def design(self) -> Design:
-        """The draft's design."""
-        return self.drafting.design
-
-    @property
-    def stage(self) -> Stage | None:
-        """The chosen stage."""
-        return self.design.stages[self._stage] if self.design.stages else None
-
-    @property
-    def ref(self) -> str | None:
-        """The part under the hand."""
-        return self.query_one("#parts", RowList).key
-
-    @property
-    def chosen(self) -> FigureRow | None:
-        """The margin under the hand."""
-        key = self.query_one("#margins", RowList).key
-        return next((row for row in self.figures.rows() if row.check.id == key), None)
-
-    def _show(self, ref: str | None = None) -> None:
-        """Shows everything; the hand goes to the part ``ref``, or stays."""
-        stage = self.stage
-        everywhere = self.has_class("-all")
-        self._show_heading()
-        self.query_one(Chain).show_chain(links(self.design, self.figures), self._stage)
-        changed = {change.what for change in self.drafting.changes()}
-        parts = self.query_one("#parts", RowList)
-        rows = part_rows(stage, changed) if stage else []
-        parts.show(rows, part_heading(stage), ref)
-        margins = self.query_one("#margins", RowList)
-        width = margins.size.width
-        found = self.figures.rows(None if everywhere or stage is None else stage.name)
-        base = self.drafting.draft.base_revision
-        margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base))
-        worse, tone = worse_words(self.figures, base)
-        self.query_one("#worse", Rule).say(worse, tone)
-        self._show_hand()
-
-    def _show_heading(self) -> None:
-        shown = self.query_one("#heading", Lines)
-        shown.show(heading(self.drafting.draft, self.figures, self._progress, shown.size.width))
-
-    def _show_hand(self) -> None:
-        hand = self.query_one("#hand", Lines)
-        if self.query_one("#margins").has_focus and self.chosen is not None:
-            hand.show(*check_lines(self.chosen))
-        elif self.ref is not None:
-            role = next((name for name, ref in self.design.stage_of(self.ref).roles.items() if ref == self.ref), "")
-            part, was = self.design.part(self.ref), self.drafting.was(self.ref)
-            hand.show(*part_lines(part, role.replace("_", " "), was, *self.drafting.neighbours(self.ref)))
-        else:
-            hand.show(line(" a adds a part to this stage"))
-
-    def on_row_list_moved(self, event: RowList.Moved) -> None:
-        """The hand stands on another part or margin."""
-        if event.rows.id == "margins" and self.has_class("-all") and self.chosen is not None:
-            names = [stage.name for stage in self.design.stages]
-            if self.chosen.check.stage in names:
-                self._go_to(names.index(self.chosen.check.stage))
-        self._show_hand()
-
-    def on_descendant_focus(self) -> None:
-        """Parts or margins: the words about the hand follow."""
-        self._show_hand()
-
-    # -- studies
-
-    def _study(self) -> None:
-        self.figures = self.figures.edited()
-        self._progress = "computing"
-        self._saving.begun()
-        self._request = self._computing.study(self.design, self.post_message)
-        self._show()
-
-    def on_sheet_arrived(self, event: SheetArrived) -> None:
-        """Figures of another depth."""
-        if event.request != self._request:
-            return
-        self.figures = self.figures.arrived(event.sheet)
-        done = event.sheet.depth is Depth.SPREAD or (event.sheet.depth is Depth.CORNERS and not event.sheet.lanes)
-        self._progress = spread_words(event.sheet.lanes) if done else f"computing: {event.sheet.depth} known"
-        self._show()
-        self._saving.arrived(event.sheet)
-
-    def on_study_progress(self, event: StudyProgress) -> None:
-        """Lanes of the spread."""
-        if event.request == self._request:
-            self._progress = f"spread {event.done}/{event.total}"
-            self._show_heading()
-
-    def on_study_refused(self, event: StudyRefused) -> None:
-        """The circuit cannot be computed as it stands; the figures stay, marked old."""
-        if event.request == self._request:
-            self._progress = "not computed"
-            self._show_heading()
-            self.refuse(event.reason)
-            self._saving.refused(event.reason)
-
-    def on_solver_preparing(self, event: SolverPreparing) -> None:
-        """The first start on this machine."""
-        self._progress = "preparing the solver" if event.busy else "computing"
-        self._show_heading()
-        if event.trouble:
-            self.say(event.trouble)
-
-    # -- walking
-
-    def action_previous_stage(self) -> None:
-        """One stage to the left."""
-        self._walk(-1)
-
-    def action_next_stage(self) -> None:
-        """One stage to the right."""
-        self._walk(1)
-
-    def _walk(self, step: int) -> None:
-        there = max(0, min(self._stage + step, len(self.design.stages) - 1))
-        if there != self._stage:
-            self._go_to(there)
-
-    def _go_to(self, there: int) -> None:
-        """To another stage, where the hand lies on the part it left there."""
-        if self.stage is not None and self.ref is not None:
-            self._hands[self.stage.name] = self.ref
-        self._stage = there
-        stage = self.design.stages[there]
-        first = stage.parts[0].ref if stage.parts else None
-        self._show(self._hands.get(stage.name, first))
-
-    def action_other_side(self) -> None:
-        """Between parts and margins."""
-        parts, margins = self.query_one("#parts"), self.query_one("#margins")
-        (parts if margins.has_focus and parts.display else margins).focus()
-
-    def action_all_stages(self) -> None:
-        """Margins of all stages over the whole width, or of the chosen stage."""
-        self.toggle_class("-all")
-        (self.query_one("#margins") if self.has_class("-all") else self.query_one("#parts")).focus()
-        self.call_after_refresh(self._show)
 
     # -- editing
 
     def _edit(self, deed: Callable[[], object]) -> bool:
-        """An edit of the draft: kept, then studied."""
+        """An edit of the draft: kept, then studied. False when it was refused, with the reason on the notice line."""
         before = self.design
         try:
             deed()
@@ -256,10 +47,19 @@ class BenchScreen(Page[None]):
         except (EngineError, StorageError) as refusal:
             self.refuse(str(refusal))
             return False
-        self._stage = max(0, min(self._stage, len(self.design.stages) - 1))
         if self.design != before:
-            self._study()
+            self.study()
         return True
+
+    def study(self) -> None:
+        """The draft changed: corners are to be expected again."""
+        self._saving.begun()
+        super().study()
+
+    def _put(self, words: str, after: Design) -> None:
+        """A design that an answered question made."""
+        if self._edit(lambda: self.drafting.put(words, after)):
+            self.say(words)
 
     def _ask_to_take_over(self, reason: str) -> None:
         def answered(yes: bool | None) -> None:
@@ -278,7 +78,7 @@ class BenchScreen(Page[None]):
 
     def action_change(self) -> None:
         """Another value for the part; on the margins, where the margin comes from."""
-        if self.query_one("#margins").has_focus:
+        if self.margins.has_focus:
             self.action_origin()
         elif self.ref is not None:
             self._begin_entry(self.design.part(self.ref).value or "", typed=False)
@@ -287,7 +87,7 @@ class BenchScreen(Page[None]):
         if self.ref is None:
             self.refuse("there is no part under the hand; a adds one")
             return
-        self.add_class("-entering")
+        self.query_one("#foot").add_class("-entering")
         self.query_one(ValueEntry).begin(f"{self.ref}, value:", text, typed=typed)
         self.query_one(KeyLine).of("entry")
 
@@ -303,8 +103,8 @@ class BenchScreen(Page[None]):
         self._end_entry()
 
     def _end_entry(self) -> None:
-        self.remove_class("-entering")
-        (self.query_one("#margins") if self.has_class("-all") else self.query_one("#parts")).focus()
+        self.query_one("#foot").remove_class("-entering")
+        self.focus_list()
         self.query_one(KeyLine).of("bench")
 
     def action_step_down(self) -> None:
@@ -329,26 +129,32 @@ class BenchScreen(Page[None]):
         self._edit(lambda: self.say(f"done again: {self.drafting.redo()}"))
 
     def action_edit(self) -> None:
-        """Another field of the part."""
-        if self.ref is None:
-            return
-        ref = self.ref
-        ask_field(
-            self.app,
-            self.design.part(ref),
-            lambda field, text: self._edit(lambda: self.drafting.set_field(ref, field, text)),
-        )
+        """Another field of the part; on the margins, the required margin."""
+        if self.margins.has_focus and self.chosen is not None:
+            ask_required(self.app, self.design, self.chosen.check, self._put)
+        elif self.ref is not None:
+            ask_field(self.app, self.design, self.ref, self._put)
+
+    def action_conditions(self) -> None:
+        """Supply, ambient, source resistance."""
+        ask_condition(self.app, self.design, self._put)
 
     def action_add_part(self) -> None:
         """Another part in the chosen stage."""
         if self.stage is None:
-            self.refuse("the design has no stage yet; import a design document with one")
+            self.refuse("the design has no stage yet; A adds one")
             return
-        ask_new_part(self.app, self.design, self.stage, self._put)
+        known = {part.ref for part in self.design.parts}
 
-    def _put(self, ref: str, after: Design) -> None:
-        if self._edit(lambda: self.drafting.put(f"with {ref}", after)):
-            self._show(ref)
+        def put(words: str, after: Design) -> None:
+            self._put(words, after)
+            self.show(next((part.ref for part in self.design.parts if part.ref not in known), None))
+
+        ask_new_part(self.app, self.design, self.stage, put)
+
+    def action_add_stage(self) -> None:
+        """A free stage at the end of the chain."""
+        ask_stage(self.app, self.design, self._put)
 
     def action_remove_part(self) -> None:
         """Takes the part out, after asking."""
@@ -357,19 +163,19 @@ class BenchScreen(Page[None]):
             return
 
         def answered(yes: bool | None) -> None:
-            if yes and self._edit(lambda: self.drafting.remove(ref)):
-                self.say(f"{ref} is out; u brings it back")
+            if yes:
+                self._edit(lambda: self.drafting.put(f"without {ref}", edit.without_part(self.design, ref)))
 
         self.app.push_screen(Ask(f"Take {ref} out of the design?", "u brings it back."), answered)
 
-    # -- freezing
+    # -- freezing and saving
 
     def action_freeze(self) -> None:
         """Holds figures back; the second time asks for the prediction and shows them."""
         if not self.figures.frozen:
             self.figures = self.figures.freeze()
             self.say("figures are held back; f asks for a prediction and shows them")
-            self._show()
+            self.show_heading()
             return
 
         def predicted(answers: Answers | None) -> None:
@@ -378,26 +184,32 @@ class BenchScreen(Page[None]):
             self._saving.prediction = answers["prediction"].strip()
             self.figures = self.figures.thaw()
             self.say("the note of the next revision begins with it" if self._saving.prediction else "shown again")
-            self._show()
+            self.show()
 
-        field = Field(
-            "prediction", "prediction", self._saving.prediction, "duration stays above 60 s; empty is allowed"
-        )
+        example = "duration stays above 60 s (may stay empty)"
+        field = Field("prediction", "prediction", self._saving.prediction, example)
         self.app.push_screen(Form("What will the figures say?", [field]), predicted)
-
-    # -- saving and looking elsewhere
 
     def action_save(self) -> None:
         """Asks for the note, then keeps the revision as soon as its corners are known."""
         self._saving.ask()
 
+    def sheet_known(self, sheet: MarginSheet) -> None:
+        """A revision may wait for it."""
+        self._saving.arrived(sheet)
+
+    def no_sheet(self, reason: str) -> None:
+        """A revision may wait for what will not come."""
+        self._saving.refused(reason)
+
     def _saved(self, revision: Revision) -> None:
-        if self.figures.frozen:
-            self.figures = self.figures.thaw()
-        self.figures = self.figures.compared_with(None if incomplete(revision.sheet) else revision.sheet)
-        stamp = ", incomplete: its worst corners were not known" if incomplete(revision.sheet) else ""
+        known = None if incomplete(revision.sheet) else revision.sheet
+        self.figures = self.figures.thaw().compared_with(known)
+        stamp = "" if known else ", incomplete: its worst corners were not known"
         self.say(f"saved as r{revision.number}{stamp}")
-        self._show()
+        self.show()
+
+    # -- looking elsewhere
 
     def action_origin(self) -> None:
         """Where the chosen margin comes from."""
@@ -411,27 +223,21 @@ class BenchScreen(Page[None]):
         base, sheet = self.drafting.base, self.figures.newest
         if base is None:
             self.refuse("nothing to compare with yet; s saves the first revision")
+        elif self.figures.frozen:
+            self.refuse("figures are frozen; f shows them first")
         elif sheet is None or sheet.depth is Depth.NOMINAL:
             self.refuse("the draft's corners are still being computed; c again when they are known")
         else:
-            columns = [
-                Column(f"r{base.number}", base.sheet, base.design),
-                Column("draft", sheet, self.design),
-            ]
-            self.app.push_screen(CompareScreen(self.drafting.name, columns, self._computing))
+            columns = [Column(f"r{base.number}", base.sheet, base.design), Column("draft", sheet, self.design)]
+            self.app.push_screen(CompareScreen(self.drafting.name, columns, self.computing))
 
     def action_history(self) -> None:
         """The revisions of this design."""
-        chosen = self.chosen.check.id if self.chosen else None
-        screen = HistoryScreen(self.drafting, self._computing, chosen)
-        self.app.push_screen(screen, self._back_from_history)
 
-    def _back_from_history(self, moved: bool | None) -> None:
-        if moved:
-            self.begin()
-            self.say(f"the draft goes on from r{self.drafting.draft.base_revision}")
+        def looked(moved: bool | None) -> None:
+            if moved:
+                self.begin()
+                self.say(f"the draft goes on from r{self.drafting.draft.base_revision}")
 
-
-def spread_words(lanes: int) -> str:
-    """What stands in the heading when everything is computed."""
-    return f"spread of {lanes} lanes" if lanes else "corners, no spread"
+        trend = self.chosen.check.id if self.chosen else None
+        self.app.push_screen(HistoryScreen(self.drafting, self.computing, trend), looked)

@@ -6,7 +6,9 @@ from collections.abc import Callable
 from typing import ClassVar, Generic, TypeVar
 
 from textual.app import ComposeResult
+from textual.reactive import Reactive
 from textual.screen import Screen
+from textual.widget import Widget
 
 from ...engine.errors import EngineError
 from ...storage.errors import StorageError
@@ -19,6 +21,9 @@ class Page(Screen[Result], Generic[Result]):
     """A full screen. ``WHERE`` names its actions in the registry; subclasses give the body."""
 
     WHERE: ClassVar[str] = "page"
+
+    focused: Reactive[Widget | None] = Reactive(None, repaint=False)
+    """As in Textual, without repainting the whole screen: widgets show for themselves whether they have the focus."""
 
     def compose(self) -> ComposeResult:
         """Body above, notice and keys below."""

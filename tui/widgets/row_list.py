@@ -92,13 +92,21 @@ class RowList(TonedWidget, can_focus=True):
         """One line, as Textual's compositor asks for it."""
         return self._strip(self._line(y))
 
-    def on_focus(self) -> None:
-        """The selected row turns reversed."""
+    def on_focus(self, event: events.Focus) -> None:
+        """The selected row turns reversed. Instead of Textual's handler, which repaints the whole widget."""
+        event.prevent_default()
+        self.has_focus = True
         self._refresh_hand()
+        if self.parent is not None:
+            self.parent.post_message(events.DescendantFocus(self))
 
-    def on_blur(self) -> None:
+    def on_blur(self, event: events.Blur) -> None:
         """The selected row keeps its mark only."""
+        event.prevent_default()
+        self.has_focus = False
         self._refresh_hand()
+        if self.parent is not None:
+            self.parent.post_message(events.DescendantBlur(self))
 
     def on_resize(self) -> None:
         """Another height: the hand stays in sight."""

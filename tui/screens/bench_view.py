@@ -1,0 +1,249 @@
+"""What the bench shows and how it is walked: chain, parts, margins now and before, and the words about the hand."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import BindingType
+from textual.containers import Horizontal, Vertical
+
+from ...engine.design.document import Design
+from ...engine.design.part import Stage
+from ...engine.results import MarginSheet
+from ..actions import bindings
+from ..bench_text import (
+    check_lines,
+    heading,
+    links,
+    margin_heading,
+    margin_rows,
+    part_heading,
+    part_lines,
+    part_rows,
+    spread_words,
+    worse_words,
+)
+from ..computing import Computing
+from ..drafting import Drafting, incomplete
+from ..figures import FigureRow, Figures
+from ..messages import SheetArrived, SolverPreparing, StudyProgress, StudyRefused
+from ..shown import line
+from ..widgets.chain import Chain
+from ..widgets.lines import Lines
+from ..widgets.row_list import RowList
+from ..widgets.rule import Divider, Rule
+from ..widgets.value_entry import ValueEntry
+from .page import Page
+
+
+class BenchView(Page[None]):
+    """One design's draft. State: the draft, the figures, the chosen stage, and the hand in each stage."""
+
+    WHERE = "bench"
+    BINDINGS: ClassVar[list[BindingType]] = bindings("bench")
+
+    def __init__(self, drafting: Drafting, computing: Computing) -> None:
+        super().__init__()
+        self.drafting = drafting
+        self.computing = computing
+        self.figures = Figures()
+        self._request = 0
+        self._progress = ""
+        self._stage = 0
+        self._hands: dict[str, str] = {}
+
+    def compose_body(self) -> ComposeResult:
+        """Heading, chain, parts beside margins, the hand."""
+        yield Lines(id="heading")
+        yield Chain(id="chain")
+        yield Rule()
+        with Horizontal(id="bench-body"):
+            yield RowList(id="parts", empty="no parts yet: a adds one")
+            yield Divider(id="divider")
+            yield RowList(id="margins", empty="no margins here yet")
+        yield Rule(id="worse")
+        with Vertical(id="foot"):
+            yield Lines(id="hand")
+            yield ValueEntry(id="entry")
+
+    def on_mount(self) -> None:
+        """Shows what is known and begins the study."""
+        self.begin()
+        self.parts.focus()
+
+    def begin(self) -> None:
+        """Takes the draft as it stands in the store: at first, and after it went on from another revision."""
+        base = self.drafting.base
+        known = None if base is None or incomplete(base.sheet) else base.sheet
+        self.figures = Figures(nominal=known, worst=known, before=known)
+        self.study()
+
+    def on_unmount(self) -> None:
+        """Nobody looks any more."""
+        self.computing.cancel_study()
+
+    def on_resize(self) -> None:
+        """Another width: other columns."""
+        self.call_after_refresh(self.show)
+
+    # -- what is under the hand
+
+    @property
+    def design(self) -> Design:
+        """The draft's design."""
+        return self.drafting.design
+
+    @property
+    def stage(self) -> Stage | None:
+        """The chosen stage."""
+        return self.design.stages[self._stage] if self.design.stages else None
+
+    @property
+    def parts(self) -> RowList:
+        """The list of parts."""
+        return self.query_one("#parts", RowList)
+
+    @property
+    def margins(self) -> RowList:
+        """The list of margins."""
+        return self.query_one("#margins", RowList)
+
+    @property
+    def ref(self) -> str | None:
+        """The part under the hand."""
+        return self.parts.key
+
+    @property
+    def chosen(self) -> FigureRow | None:
+        """The margin under the hand."""
+        key = self.margins.key
+        return next((row for row in self.figures.rows() if row.check.id == key), None)
+
+    # -- showing
+
+    def show(self, ref: str | None = None) -> None:
+        """Shows everything; the hand goes to the part ``ref``, or stays."""
+        self._stage = max(0, min(self._stage, len(self.design.stages) - 1))
+        stage, base = self.stage, self.drafting.draft.base_revision
+        everywhere = self.has_class("-all")
+        self.show_heading()
+        self.query_one(Chain).show_chain(links(self.design, self.figures), self._stage)
+        changed = {change.what for change in self.drafting.changes()}
+        self.parts.show(part_rows(stage, changed) if stage else [], part_heading(stage), ref)
+        width = self.margins.size.width
+        found = self.figures.rows(None if everywhere or stage is None else stage.name)
+        self.margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base))
+        self.query_one("#worse", Rule).say(*worse_words(self.figures, base))
+        self._show_hand()
+
+    def show_heading(self) -> None:
+        """Shows name, base, conditions and how far the study is."""
+        shown = self.query_one("#heading", Lines)
+        shown.show(heading(self.drafting.draft, self.figures, self._progress, shown.size.width))
+
+    def _show_hand(self) -> None:
+        hand = self.query_one("#hand", Lines)
+        if self.margins.has_focus and self.chosen is not None:
+            hand.show(*check_lines(self.chosen))
+        elif self.ref is not None:
+            roles = self.design.stage_of(self.ref).roles
+            role = next((name.replace("_", " ") for name, ref in roles.items() if ref == self.ref), "")
+            part, was = self.design.part(self.ref), self.drafting.was(self.ref)
+            hand.show(*part_lines(part, role, was, *self.drafting.neighbours(self.ref)))
+        else:
+            hand.show(line(" a adds a part to this stage"))
+
+    def on_row_list_moved(self, event: RowList.Moved) -> None:
+        """The hand stands on another part or margin."""
+        if event.rows is self.margins and self.has_class("-all") and self.chosen is not None:
+            names = [stage.name for stage in self.design.stages]
+            if self.chosen.check.stage in names:
+                self._go_to(names.index(self.chosen.check.stage))
+        self._show_hand()
+
+    def on_descendant_focus(self) -> None:
+        """Parts or margins: the words about the hand follow."""
+        self._show_hand()
+
+    # -- studies
+
+    def study(self) -> None:
+        """The draft changed: its figures are old and a new study begins."""
+        self.figures = self.figures.edited()
+        self._progress = "computing"
+        self._request = self.computing.study(self.design, self.post_message)
+        self.show()
+
+    def on_sheet_arrived(self, event: SheetArrived) -> None:
+        """Figures of another depth."""
+        if event.request == self._request:
+            self.figures = self.figures.arrived(event.sheet)
+            self._progress = spread_words(event.sheet, self.computing.lanes)
+            self.show()
+            self.sheet_known(event.sheet)
+
+    def sheet_known(self, sheet: MarginSheet) -> None:
+        """For whoever waits for a depth of the draft's study."""
+
+    def on_study_progress(self, event: StudyProgress) -> None:
+        """Lanes of the spread."""
+        if event.request == self._request and event.done < event.total:
+            self._progress = f"spread {event.done}/{event.total}"
+            self.show_heading()
+
+    def on_study_refused(self, event: StudyRefused) -> None:
+        """The circuit cannot be computed as it stands; the figures stay, marked old."""
+        if event.request == self._request:
+            self._progress = "not computed"
+            self.show_heading()
+            self.refuse(event.reason)
+            self.no_sheet(event.reason)
+
+    def no_sheet(self, reason: str) -> None:
+        """For whoever waits for a sheet that will not come."""
+
+    def on_solver_preparing(self, event: SolverPreparing) -> None:
+        """The first start on this machine."""
+        self._progress = "preparing the solver" if event.busy else "computing"
+        self.show_heading()
+        if event.trouble:
+            self.say(event.trouble)
+
+    # -- walking
+
+    def action_previous_stage(self) -> None:
+        """One stage to the left."""
+        self._walk(-1)
+
+    def action_next_stage(self) -> None:
+        """One stage to the right."""
+        self._walk(1)
+
+    def _walk(self, step: int) -> None:
+        there = max(0, min(self._stage + step, len(self.design.stages) - 1))
+        if there != self._stage:
+            self._go_to(there)
+
+    def _go_to(self, there: int) -> None:
+        """To another stage, where the hand lies on the part it left there."""
+        if self.stage is not None and self.ref is not None:
+            self._hands[self.stage.name] = self.ref
+        self._stage = there
+        stage = self.design.stages[there]
+        first = stage.parts[0].ref if stage.parts else None
+        self.show(self._hands.get(stage.name, first))
+
+    def action_other_side(self) -> None:
+        """Between parts and margins."""
+        (self.parts if self.margins.has_focus and self.parts.display else self.margins).focus()
+
+    def action_all_stages(self) -> None:
+        """Margins of all stages over the whole width, or of the chosen stage."""
+        self.toggle_class("-all")
+        self.focus_list()
+        self.call_after_refresh(self.show)
+
+    def focus_list(self) -> None:
+        """Gives the keyboard to the list that can be seen."""
+        (self.margins if self.has_class("-all") else self.parts).focus()

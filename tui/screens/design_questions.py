@@ -1,0 +1,195 @@
+"""Questions whose answers make another design. A refused answer stays on the screen to be corrected."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Callable, Sequence
+from typing import Any
+
+from textual.app import App
+
+from ...engine import edit
+from ...engine.design.conditions import UNITS
+from ...engine.design.document import Design
+from ...engine.design.part import Part, Stage
+from ...engine.errors import DesignError, EngineError
+from ...engine.parts import kinds
+from ...engine.parts.kind import Kind
+from ...engine.results import CheckResult
+from ..shown import fit, percent
+from .dialog import Answers, Field, Form, Pick
+
+Put = Callable[[str, Design], None]
+"""Told what was done, in words, and the design that came of it."""
+
+_ENDS = ("min", "nominal", "max")
+
+
+def ask_design(
+    app: App[Any], title: str, fields: Sequence[Field], make: Callable[[Answers], tuple[str, Design]], put: Put
+) -> None:
+    """A form whose answers ``make`` turns into words and a design; its refusals keep the form open."""
+    made: list[tuple[str, Design]] = []
+
+    def refusal(answers: Answers) -> str | None:
+        try:
+            made.append(make({name: text.strip() for name, text in answers.items()}))
+        except EngineError as error:
+            return str(error)
+        return None
+
+    def done(answers: Answers | None) -> None:
+        if answers is not None:
+            put(*made[-1])
+
+    app.push_screen(Form(title, fields, refusal), done)
+
+
+def ask_new_part(app: App[Any], design: Design, stage: Stage, put: Put) -> None:
+    """A part: first its kind, then reference, value and nets."""
+
+    choices = {f"{name} {' '.join(pins)}": (kind, pins) for name, kind in sorted(kinds().items()) for pins in kind.pins}
+
+    def chosen(key: str | None) -> None:
+        if key is not None:
+            _ask_part(app, design, stage, *choices[key], put)
+
+    rows = [(key, f"{fit(kind.name.replace('_', ' '), 18)} {' '.join(pins)}") for key, (kind, pins) in choices.items()]
+    app.push_screen(Pick(f"a part for {stage.name}: which kind?", rows), chosen)
+
+
+def _ask_part(app: App[Any], design: Design, stage: Stage, kind: Kind, pins: Sequence[str], put: Put) -> None:
+    nets = ", ".join(design.nets) or "supply, 0V"
+    asked = [name for name, entry in kind.fields.items() if entry.needed or name in {"value", "tolerance", "class"}]
+    fields = [Field("ref", "reference", free_reference(design, kind))]
+    fields += [Field(name, name, "", kind.fields[name].about) for name in asked]
+    fields += [Field(f"pin-{pin}", f"pin {pin} on", "", f"a net: {nets}") for pin in pins]
+
+    def make(answers: Answers) -> tuple[str, Design]:
+        ref = answers["ref"]
+        if design.has_part(ref):
+            raise DesignError(f"there is a part {ref} already; write another reference, or change that part with e")
+        part = {"ref": ref, "kind": kind.name, "pins": {pin: answers[f"pin-{pin}"] for pin in pins}}
+        given = {name: written(answers[name]) for name in asked if answers[name]}
+        return f"with {ref}", edit.with_part(design, stage.name, {**part, **given})
+
+    ask_design(app, f"{kind.name.replace('_', ' ')} for {stage.name}", fields, make, put)
+
+
+def free_reference(design: Design, kind: Kind) -> str:
+    """The first letter code of the kind with the lowest number that no part has."""
+    number = 1
+    while design.has_part(f"{kind.letters[0]}{number}"):
+        number += 1
+    return f"{kind.letters[0]}{number}"
+
+
+def ask_field(app: App[Any], design: Design, ref: str, put: Put) -> None:
+    """Another field or datum of a part; an empty text takes it out."""
+    texts = field_texts(design.part(ref))
+
+    def chosen(name: str | None) -> None:
+        if name is None:
+            return
+
+        def make(answers: Answers) -> tuple[str, Design]:
+            text = answers["text"]
+            return f"{ref} {name} {text or '-'}", edit.with_field(design, ref, name, written(text))
+
+        ask_design(app, f"{ref}, {name}", [Field("text", name, texts[name], "empty takes it out")], make, put)
+
+    app.push_screen(Pick(f"{ref}: which field?", _rows(texts)), chosen)
+
+
+def field_texts(part: Part) -> dict[str, str]:
+    """Every field and datum that the part has or its kind reads, with its text as typed; '' where it is not given."""
+    dumped = part.model_dump(mode="json", by_alias=True, exclude_unset=True)
+    found: dict[str, str] = {}
+    for name, entry in dumped.items():
+        if name in {"data", "law"}:
+            for key, inner in entry.items():
+                found.update(_texts(f"{name}.{key}", inner))
+        elif name not in {"ref", "kind"}:
+            found.update(_texts(name, entry))
+    kind = kinds().get(part.kind)
+    known = [] if kind is None else [*kind.fields, *(f"data.{key}" for key in kind.data if key not in kind.fields)]
+    for name in known:
+        if not any(each == name or each.startswith(f"{name}.") for each in found):
+            found[name] = ""
+    return found
+
+
+def written(text: str) -> object:
+    """What a text in a form stands for: a list or an object where it is written as one, None where it is empty."""
+    if text[:1] in {"[", "{"} or text in {"true", "false"}:
+        try:
+            return json.loads(text)
+        except ValueError as error:
+            raise DesignError(f"{text!r} is not closed or quoted as JSON ({error}); write it like [1, 2]") from error
+    return text or None
+
+
+def _texts(name: str, entry: object) -> dict[str, str]:
+    """A field as one line of text, or one line for each text inside of it."""
+    if isinstance(entry, dict):
+        return {key: text for inner in entry for key, text in _texts(f"{name}.{inner}", entry[inner]).items()}
+    return {name: entry if isinstance(entry, str) else json.dumps(entry)}
+
+
+def ask_condition(app: App[Any], design: Design, put: Put) -> None:
+    """One end of a condition."""
+    texts = condition_texts(design)
+
+    def chosen(name: str | None) -> None:
+        if name is None:
+            return
+
+        def make(answers: Answers) -> tuple[str, Design]:
+            text = answers["text"]
+            return f"{name} {text or '-'}", edit.with_condition(design, name, text or None)
+
+        ask_design(app, name, [Field("text", name, texts[name], "empty takes it out")], make, put)
+
+    app.push_screen(Pick("conditions that the design is judged in: which one?", _rows(texts)), chosen)
+
+
+def condition_texts(design: Design) -> dict[str, str]:
+    """Every end of every condition with its text as typed; '' where it is not given."""
+    given = design.dump().get("conditions", {})
+    found = {}
+    for name in UNITS:
+        condition = given.get(name, {})
+        ends = {"nominal": condition} if isinstance(condition, str) else condition
+        found.update({f"{name}.{end}": ends.get(end, "") for end in _ENDS})
+    return found
+
+
+def ask_required(app: App[Any], design: Design, check: CheckResult, put: Put) -> None:
+    """The margin that this design requires of a kind of check; empty returns to the customary one."""
+    slug = check.id.split(":")[0]
+    now = f"{percent(check.required).lstrip('+')} %"
+
+    def make(answers: Answers) -> tuple[str, Design]:
+        text = answers["text"]
+        return f"required {slug} {text or '-'}", edit.with_required(design, slug, text or None)
+
+    field = Field("text", "required margin", now, "empty returns to the customary one")
+    ask_design(app, f"{check.title}: the margin that this design requires", [field], make, put)
+
+
+def ask_stage(app: App[Any], design: Design, put: Put) -> None:
+    """A free stage at the end of the chain."""
+
+    def make(answers: Answers) -> tuple[str, Design]:
+        name = answers["name"]
+        if name in {stage.name for stage in design.stages}:
+            raise DesignError(f"there is a stage {name} already; write another name")
+        return f"with stage {name}", edit.with_stage(design, {"name": name, "kind": "free"})
+
+    ask_design(
+        app, "A free stage at the end of the chain", [Field("name", "name", "", "latch, timer, driver")], make, put
+    )
+
+
+def _rows(texts: dict[str, str]) -> list[tuple[str, str]]:
+    return [(name, f"{fit(name, 28)} {text}") for name, text in texts.items()]
