@@ -47,12 +47,12 @@ ACTIONS: tuple[Action, ...] = (
     Action("shelf", "quit", "q", "q", "leave", "leave; every edit is kept already", 5),
     # bench
     Action("bench", "change", "enter", "Enter", "change", "write another value; typing a digit begins at once", 2),
-    Action("bench", "step_down", "comma", ",", "lower", "next lower preferred value", 3),
-    Action("bench", "step_up", "full_stop", ".", "higher", "next higher preferred value", 3),
+    Action("bench", "step_down", "comma", ",", "lower", "next lower preferred value"),
+    Action("bench", "step_up", "full_stop", ", .", "step", "next higher preferred value; the comma steps down", 3),
     Action("bench", "undo", "u", "u", "undo", "take the last edit back, also across sittings", 4),
     Action("bench", "redo", "U,r", "r", "redo", "do the undone edit again (U does the same)"),
     Action("bench", "save", "s", "s", "save", "keep this state as a revision, with a note", 5),
-    Action("bench", "origin", "w", "w", "where from", "where the chosen margin comes from, with its quantities", 6),
+    Action("bench", "origin", "w", "w", "origin", "where the chosen margin comes from, with its quantities", 6),
     Action("bench", "compare", "c", "c", "compare", "this draft beside the revision it began from", 7),
     Action("bench", "history", "h", "h", "history", "the revisions of this design", 8),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
@@ -67,7 +67,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("bench", "other_side", "tab,shift+tab", "Tab", "other side", "between the parts and the margins", 14),
     Action("bench", "back", "escape,b", "b", "back", "back to the shelf (Esc does the same)", 15),
     # origin of a margin, one revision, help
-    Action("revision", "origin", "w,enter", "w", "where from", "where the margin under the hand comes from", 2),
+    Action("revision", "origin", "w,enter", "w", "origin", "where the margin under the hand comes from", 2),
     Action("revision", "back", "escape,b", "b", "back", "back (Esc does the same)", 3),
     Action("page", "back", "escape,b,enter", "b", "back", "back (Esc and Enter do the same)", 2),
     # history
@@ -82,14 +82,14 @@ ACTIONS: tuple[Action, ...] = (
     # compare
     Action("compare", "column_left", "left", "left", "column", "the causes of the revision before"),
     Action("compare", "column_right", "right", "left right", "column", "the causes of the next revision", 3),
-    Action("compare", "origin", "w,enter", "w", "where from", "where the margin of this row comes from", 2),
+    Action("compare", "origin", "w,enter", "w", "origin", "where the margin of this row comes from", 2),
     Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 4),
     # questions
     Action("question", "yes", "y", "y", "yes", "do it", 2),
     Action("question", "no", "n,escape", "n", "no", "leave it as it is (Esc does the same)", 3),
     Action("form", "done", "enter", "Enter", "done", "take what is written", 2),
-    Action("form", "up", "up,shift+tab", "up", "up", "the field above"),
-    Action("form", "down", "down,tab", "down", "down", "the field below", 3),
+    Action("form", "up", "up,shift+tab", "up", "field before", "the field above"),
+    Action("form", "down", "down,tab", "down", "next field", "the field below", 3),
     Action("form", "cancel", "escape,ctrl+g", "Esc", "cancel", "leave everything as it is (Ctrl+G does the same)", 4),
     Action("pick", "choose", "enter", "Enter", "choose", "take this one", 2),
     Action("pick", "cancel", "escape,b", "b", "cancel", "leave everything as it is (Esc does the same)", 3),

@@ -16,6 +16,7 @@ from .figures import FigureRow, Figures
 from .shown import MARKS, TONES, WORDS, Line, Span, columns, figure, fit, fit_right, line, percent, visible
 from .widgets.row_list import Row
 
+_ROOMY = 60
 PARTS_WIDTHS = (4, 6, 5)
 
 
@@ -24,7 +25,7 @@ def heading(draft: Draft, figures: Figures, progress: str, width: int) -> Line:
     base = "not saved yet" if draft.base_revision is None else f"draft on r{draft.base_revision}"
     edits = "no edits" if draft.edits == 0 else f"{draft.edits} edit{'s' * (draft.edits != 1)}"
     left = f" {draft.name}   {base}, {edits}   {conditions_words(draft.design)}"
-    right = "FROZEN: f shows the figures " if figures.frozen else f"{progress} "
+    right = "FROZEN: f shows the figures " if figures.frozen else f"{progress} " if width >= _ROOMY else ""
     room = max(0, width - len(right))
     return line(Span(fit(left, room), "strong"), Span(right, "thin" if figures.frozen else ""))
 

@@ -8,9 +8,7 @@ from textual import events
 
 from ...engine import edit
 from ...engine.design.document import Design
-from ...engine.errors import EngineError
 from ...engine.results import Depth, MarginSheet
-from ...storage.errors import StorageError, TakenOver
 from ...storage.values import Revision
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
@@ -39,13 +37,7 @@ class BenchScreen(BenchView):
     def _edit(self, deed: Callable[[], object]) -> bool:
         """An edit of the draft: kept, then studied. False when it was refused, with the reason on the notice line."""
         before = self.design
-        try:
-            deed()
-        except TakenOver as refusal:
-            self._ask_to_take_over(str(refusal))
-            return False
-        except (EngineError, StorageError) as refusal:
-            self.refuse(str(refusal))
+        if not self.attempt(deed):
             return False
         if self.design != before:
             self.study()
@@ -61,7 +53,9 @@ class BenchScreen(BenchView):
         if self._edit(lambda: self.drafting.put(words, after)):
             self.say(words)
 
-    def _ask_to_take_over(self, reason: str) -> None:
+    def taken_over(self, reason: str) -> None:
+        """Another sitting edited the design: it is taken over only when asked for."""
+
         def answered(yes: bool | None) -> None:
             if yes and self.attempt(self.drafting.take_over):
                 self.begin()

@@ -14,6 +14,7 @@ from ...engine.design.document import Design
 from ...engine.design.part import Part, Stage
 from ...engine.errors import DesignError, EngineError
 from ...engine.parts import kinds
+from ...engine.parts.classes import CLASSES
 from ...engine.parts.kind import Kind
 from ...engine.results import CheckResult
 from ..shown import fit, percent
@@ -62,7 +63,8 @@ def _ask_part(app: App[Any], design: Design, stage: Stage, kind: Kind, pins: Seq
     nets = ", ".join(design.nets) or "supply, 0V"
     asked = [name for name, entry in kind.fields.items() if entry.needed or name in {"value", "tolerance", "class"}]
     fields = [Field("ref", "reference", free_reference(design, kind))]
-    fields += [Field(name, name, "", kind.fields[name].about) for name in asked]
+    classes = ", ".join(CLASSES.get(kind.name, ()))
+    fields += [Field(name, name, "", classes if name == "class" else kind.fields[name].about) for name in asked]
     fields += [Field(f"pin-{pin}", f"pin {pin} on", "", f"a net: {nets}") for pin in pins]
 
     def make(answers: Answers) -> tuple[str, Design]:

@@ -11,7 +11,7 @@ from textual.screen import Screen
 from textual.widget import Widget
 
 from ...engine.errors import EngineError
-from ...storage.errors import StorageError
+from ...storage.errors import StorageError, TakenOver
 from ..widgets.status import KeyLine, Notice
 
 Result = TypeVar("Result")
@@ -47,10 +47,17 @@ class Page(Screen[Result], Generic[Result]):
         """Does something that the engine or the store may refuse; a refusal goes to the notice line."""
         try:
             deed()
+        except TakenOver as refusal:
+            self.taken_over(str(refusal))
+            return False
         except (EngineError, StorageError) as refusal:
             self.refuse(str(refusal))
             return False
         return True
+
+    def taken_over(self, reason: str) -> None:
+        """Another sitting edits the design: nothing was done."""
+        self.refuse(reason)
 
     def action_back(self) -> None:
         """To the screen before."""
