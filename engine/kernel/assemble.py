@@ -5,7 +5,7 @@ from __future__ import annotations
 
 from .compiled import leaf
 from .elimination import copy
-from .laws import depletion, exponential, limited, side_currents
+from .laws import depletion, exponential, limited, move, side_currents
 from .layout import (
     BRANCH,
     CAPACITANCE,
@@ -95,9 +95,9 @@ def junctions(
     a: Floats,
     seen: Floats,
     flow: Floats,
-) -> bool:
-    """Add all two-terminal junctions; return whether any was linearised away from its own voltage."""
-    far = False
+) -> float:
+    """Add all two-terminal junctions; return the largest :func:`move`, infinite where one was linearised elsewhere."""
+    moved = 0.0
     first = group[JUNCTION]
     for k in range(first, group[TRANSPORT]):
         at = element[k, E_PARAMETER]
@@ -105,7 +105,7 @@ def junctions(
         nb = element[k, E_B]
         v = x[na] - x[nb]
         u = limited(v, seen[k - first], p, at)
-        far = far or u != v
+        moved = max(moved, move(u, seen[k - first], v, p, at))
         seen[k - first] = u
         e, d = exponential(u / p[at + J_SLOPE])
         current = p[at + J_SATURATION] * e
@@ -128,7 +128,7 @@ def junctions(
         a[element[k, E_SLOT + 1]] -= m
         a[element[k, E_SLOT + 2]] -= m
         a[element[k, E_SLOT + 3]] += m
-    return far
+    return moved
 
 
 @leaf
@@ -143,10 +143,10 @@ def transports(
     a: Floats,
     seen: Floats,
     flow: Floats,
-) -> bool:
+) -> float:
     """Add all bipolar transistors in transport form (Ebers, Moll, Proc. IRE 42 (1954) 1761, as rewritten by Gummel
     and Poon, Bell Syst. Tech. J. 49 (1970) 827, with the Early effect as a factor 1 - v_BC / V_A)."""
-    far = False
+    moved = 0.0
     first = group[TRANSPORT]
     junctions_before = first - group[JUNCTION]
     for k in range(first, group[FAMILIES]):
@@ -161,7 +161,7 @@ def transports(
 
         vbe = sign * (x[nb] - x[ne])
         ve = limited(vbe, seen[own], p, pe)
-        far = far or ve != vbe
+        moved = max(moved, move(ve, seen[own], vbe, p, pe))
         seen[own] = ve
         saturation = p[pe + J_SATURATION]
         ee, de = exponential(ve / p[pe + J_SLOPE])
@@ -184,7 +184,7 @@ def transports(
         gbc = 0.0
         if p[at + T_COLLECTOR] != 0.0:
             vc = limited(vbc, seen[own + 1], p, pc)
-            far = far or vc != vbc
+            moved = max(moved, move(vc, seen[own + 1], vbc, p, pc))
             ec, dc = exponential(vc / p[pc + J_SLOPE])
             reverse = saturation * ec
             gr = saturation * dc / p[pc + J_SLOPE]
@@ -233,7 +233,7 @@ def transports(
         a[element[k, E_SLOT + 6]] += tc
         a[element[k, E_SLOT + 7]] -= te + tc + me
         a[element[k, E_SLOT + 8]] += te + me
-    return far
+    return moved
 
 
 @leaf
@@ -250,12 +250,12 @@ def evaluate(
     a: Floats,
     seen: Floats,
     flow: Floats,
-) -> bool:
-    """Set i, q and the matrix a at x; return whether the laws were linearised away from x.
+) -> float:
+    """Set i, q and the matrix a at x; return how far junctions moved, infinite where linearised away from x.
 
     ``seen`` are the junction voltages of the iterate before and become those of this one; ``flow`` the device currents.
     """
     linear_flows(element, group, p, source, x, i, q)
     copy(linear, a)
-    far = junctions(element, group, p, ah, x, i, q, a, seen, flow)
-    return transports(element, group, p, ah, x, i, q, a, seen, flow) or far
+    moved = junctions(element, group, p, ah, x, i, q, a, seen, flow)
+    return max(moved, transports(element, group, p, ah, x, i, q, a, seen, flow))

@@ -28,6 +28,7 @@ from .layout import (
 TOP = 38.0
 EXP_TOP = math.exp(TOP)
 FLOOR = -40.0
+CONDUCTING = 14.0  # slopes below its knee a junction conducts half a microsiemens
 LEAKAGE_KNEE = 0.1  # V; generation and surface leakage is nearly constant beyond a few tenths of a volt
 
 
@@ -61,6 +62,25 @@ def limited(v: float, old: float, p: Floats, at: int) -> float:
         if beyond > base + 2.0 * slope:
             v = -(base + slope * math.log(1.0 + (beyond - base) / slope)) - p[at + J_BREAKDOWN]
     return v
+
+
+@leaf
+def move(u: float, old: float, asked: float, p: Floats, at: int) -> float:
+    """Return how many slopes a junction moved from ``old`` to ``u``: its conductance changed by so many powers of e.
+
+    Infinite where it was linearised away from the voltage asked for, 0 where it conducts next to nothing.
+    """
+    if u != asked:
+        return math.inf
+    moved = 0.0
+    slope = p[at + J_SLOPE]
+    if max(u, old) > p[at + J_KNEE] - CONDUCTING * slope:
+        moved = abs(u - old) / slope
+    elif p[at + J_BREAKDOWN] > 0.0:
+        slope = p[at + J_BREAKDOWN_SLOPE]
+        if -min(u, old) - p[at + J_BREAKDOWN] > p[at + J_BREAKDOWN_KNEE] - CONDUCTING * slope:
+            moved = abs(u - old) / slope
+    return moved
 
 
 @leaf
