@@ -60,10 +60,12 @@ def part_rows(stage: Stage, changed: Collection[str]) -> list[Row]:
     rows = []
     for part in stage.parts:
         star = Span("*", "strong") if part.ref in changed else Span(" ")
-        what = roles.get(part.ref) or kind_words(part)
+        role = roles.get(part.ref, "")
         if part.value is None and part.tolerance is None:
-            text = f"{fit(part.ref, PARTS_WIDTHS[0])} {part.class_ or what}"
+            what = ", ".join(filter(None, (part.class_ or kind_words(part), role)))
+            text = f"{fit(part.ref, PARTS_WIDTHS[0])} {what}"
         else:
+            what = role or kind_words(part)
             text = columns((*PARTS_WIDTHS, 24), (part.ref, part.value or "-", part.tolerance or "", what))
         rows.append(Row(part.ref, (star, Span(text))))
     return rows

@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 
+from ..engine.design.differences import differences
 from ..engine.results import CheckResult
 from ..storage.values import Revision
-from .drafting import incomplete
+from .drafting import change_words, incomplete
 from .shown import MARKS, TONES, Line, Span, figure, fit, fit_right, line, percent
 from .widgets.row_list import Row
 
@@ -145,13 +146,17 @@ def revision_lines(revision: Revision) -> tuple[Line, Line]:
     return line(first), line(" " + "   ".join(later))
 
 
-def revision_rows(revision: Revision) -> list[tuple[str, Line]]:
-    """Everything about one revision: its note in full, then its margins from the worst."""
+def revision_rows(revision: Revision, parent: Revision | None) -> list[tuple[str, Line]]:
+    """Everything about one revision: its note in full, what differs from its parent, its margins from the worst."""
     rows: list[tuple[str, Line]] = []
     for name in ("line", "symptom", "hypothesis", "change", "prediction", "result", "next"):
         for at, text in enumerate(getattr(revision.note, name).splitlines()):
             label = {"line": "why"}.get(name, name) if at == 0 else ""
             rows.append((f"note {name} {at}", line(Span(f"{label:<12}", "strong"), text)))
+    if parent is not None:
+        for at, change in enumerate(differences(parent.design, revision.design)):
+            label = f"since r{parent.number}" if at == 0 else ""
+            rows.append((f"change {at}", line(Span(f"{label:<12}", "strong"), change_words(change))))
     rows.append(("gap", line(Span("margins as they were when it was saved", "dim"))))
     for check in sorted(revision.sheet.checks, key=lambda check: check.slack):
         shown = figure(check.margin, check.outcome, 10)

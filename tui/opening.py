@@ -16,7 +16,7 @@ def open_shelf(asked: Namespace) -> int:
 
     Raises CommandRefused where this terminal cannot show it or the store cannot be opened.
     """
-    words = refusal(os.environ, sys.stdin.isatty() and sys.stdout.isatty())
+    words = refusal(os.environ, all(stream.isatty() for stream in (sys.stdin, sys.stdout, sys.stderr)))
     if words:
         raise CommandRefused(words)
     with open_store(asked) as store:

@@ -12,11 +12,11 @@ def refusal(environment: Mapping[str, str], interactive: bool) -> str | None:
 
     Args:
         environment: The environment variables (``TERM`` is read).
-        interactive: Whether standard input and output are both a terminal.
+        interactive: Whether standard input, output and error are all a terminal.
     """
     terminal = environment.get("TERM", "")
     if not interactive:
-        return f"the screens need a terminal on standard input and output; {_HEADLESS}"
+        return f"the screens need a terminal on standard input, output and error; {_HEADLESS}"
     if terminal in {"dumb", "unknown"} or not terminal:
         named = f"TERM={terminal}" if terminal else "TERM is not set: such a terminal"
         return f"{named} cannot show the screens; {_HEADLESS}"

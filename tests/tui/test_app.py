@@ -94,6 +94,7 @@ def test_a_store_that_cannot_be_opened_is_told_before_the_screen_is_taken(
     monkeypatch.setenv("TERM", "xterm")
     monkeypatch.setattr(sys.stdin, "isatty", lambda: True)
     monkeypatch.setattr(sys.stdout, "isatty", lambda: True)
+    monkeypatch.setattr(sys.stderr, "isatty", lambda: True)
     assert app.main(["--store", str(tmp_path)]) == 2
     captured = capsys.readouterr()
     assert captured.out == ""

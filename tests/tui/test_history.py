@@ -66,6 +66,7 @@ async def test_a_revision_is_looked_at_in_full(app: StagebookApp) -> None:
         await pilot.press("enter")
         assert isinstance(pilot.app.screen, RevisionPage)
         assert "prediction  shorter" in seen(pilot)
+        assert "since r1    R7 470k > 390k" in seen(pilot)
         await pilot.press("end", "w")
         assert "demand" in seen(pilot)
 

@@ -38,7 +38,7 @@ class CompareScreen(Page[None]):
 
     def __init__(self, design: str, columns: Sequence[Column], computing: Computing) -> None:
         super().__init__()
-        self._name = design
+        self._design = design
         self._columns = tuple(columns)
         self._chosen = len(columns) - 1
         self._computing = computing
@@ -77,7 +77,7 @@ class CompareScreen(Page[None]):
 
     def _show(self) -> None:
         first, chosen = self._columns[0], self._columns[self._chosen]
-        title = f" {self._name}: {' | '.join(column.label for column in self._columns)}"
+        title = f" {self._design}: {' | '.join(column.label for column in self._columns)}"
         note = f"   {first.label} > {chosen.label}"
         if incomplete(first.sheet) or incomplete(chosen.sheet):
             note += "   ~ saved before its worst corners were known"
@@ -156,6 +156,6 @@ class CompareScreen(Page[None]):
         column = self._columns[self._chosen]
         for check in column.sheet.checks:
             if check.id == name:
-                self.app.push_screen(OriginPage(check, not incomplete(column.sheet), f"{self._name} {column.label}"))
+                self.app.push_screen(OriginPage(check, not incomplete(column.sheet), f"{self._design} {column.label}"))
                 return
         self.refuse(f"{column.label} does not have this check")

@@ -96,7 +96,8 @@ class HistoryScreen(Page[bool]):
     def action_look(self) -> None:
         """One revision in full."""
         if self.chosen is not None:
-            self.app.push_screen(RevisionPage(self._drafting.name, self.chosen))
+            parent = self._revisions.get(self.chosen.parent or 0)
+            self.app.push_screen(RevisionPage(self._drafting.name, self.chosen, parent))
 
     def action_mark(self) -> None:
         """Marks for comparing, up to six."""
@@ -181,8 +182,9 @@ class RevisionPage(Page[None]):
     BINDINGS: ClassVar[list[BindingType]] = bindings("revision")
     WHERE = "revision"
 
-    def __init__(self, design: str, revision: Revision) -> None:
+    def __init__(self, design: str, revision: Revision, parent: Revision | None) -> None:
         super().__init__()
+        self._before = parent
         self._design = design
         self._revision = revision
 
@@ -198,7 +200,7 @@ class RevisionPage(Page[None]):
         parent = "first revision" if revision.parent is None else f"from r{revision.parent}"
         title = f" {self._design} r{revision.number}, {parent}, saved {revision.saved}"
         self.query_one("#title", Lines).show(line(Span(title, "strong")))
-        self.query_one(RowList).show([Row(key, spans) for key, spans in revision_rows(revision)])
+        self.query_one(RowList).show([Row(key, spans) for key, spans in revision_rows(revision, self._before)])
 
     def action_origin(self) -> None:
         """Where the margin under the hand comes from."""

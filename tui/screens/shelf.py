@@ -56,7 +56,7 @@ class ShelfScreen(Page[None]):
 
     def on_solver_preparing(self, event: SolverPreparing) -> None:
         """The first start on this machine."""
-        busy = "preparing the solver, once on this machine; designs can be opened and changed meanwhile"
+        busy = "preparing the solver, once on this machine; go on meanwhile"
         self.say(busy if event.busy else event.trouble or "the solver is ready")
 
     def _show(self, name: str | None = None) -> None:
