@@ -101,6 +101,19 @@ class Timeline:
                 wave.ramp(t0, t1 - t0, v1)
             self.sources[source] = wave
 
+    @classmethod
+    def resumed(cls, before: Timeline, at: Floats) -> Timeline:
+        """A timeline that goes on, from its own t = 0, where another one stood at ``at`` (one instant per lane)."""
+        line = cls(before.circuit, before.lanes)
+        middles = np.asarray(at, dtype=float)[:, None]
+        for wave, old in (
+            (line.supply, before.supply),
+            *((line.switches[ref], old) for ref, old in before.switches.items()),
+        ):
+            value, _ = old.pieces(middles, middles)
+            wave.values[0] = np.broadcast_to(value[:, 0], (line.lanes.count,)).copy()
+        return line
+
     def supply_stands(self) -> None:
         """The supply has its value from t = 0 on."""
         self.supply.values[0] = self._level

@@ -75,13 +75,18 @@ def expand(part: Part, build: Builder) -> None:
     if leakage is not None:
         specified, conditioned, rated = leakage
         state = ("conditions", "leakage")
+        # Always 1, but checks may set it to nothing to read what the capacitor would do without its leakage.
+        share = build.column(part.ref, "leakage_share", 1.0)
 
         def leak(lanes: Lanes) -> Floats:
             current = conditioned * (specified / conditioned) ** lanes[state]
-            return np.asarray(current / rated * 2.0 ** ((lanes.ambient - LEAKAGE_REFERENCE) / LEAKAGE_DOUBLING))
+            warm = 2.0 ** ((lanes.ambient - LEAKAGE_REFERENCE) / LEAKAGE_DOUBLING)
+            return np.asarray(lanes[share] * current / rated * warm)
 
         handle = build.conductance(inner, minus, leak)
-        build.bench(part.ref).currents["leakage"] = handle.current
+        bench = build.bench(part.ref)
+        bench.currents["leakage"] = handle.current
+        bench.leak_conductance = leak
 
 
 KIND = Kind(

@@ -5,14 +5,40 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import TYPE_CHECKING
 
-from ..primitives.builder import inverse
+import numpy as np
+
+from ..primitives.builder import Bench, inverse
 from .figures import figure
 from .kind import Entry, Kind
-from .transistor import DATA, FIELDS, LAW, PINS, add_transistor
+from .transistor import DATA, FIELDS, LAW, PINS, add_transistor, note_laws
 
 if TYPE_CHECKING:
     from ..design.document import Part
-    from ..primitives.builder import Builder
+    from ..kernel.layout import Floats
+    from ..primitives.builder import Builder, Laws
+    from ..primitives.columns import Lanes
+
+
+def _note_laws(bench: Bench, first: Laws, second: Laws) -> None:
+    """The pair's gain b1 + b2 + b1 b2 and its base-emitter voltage, the sum of both."""
+    pair = Bench(), Bench()
+    for own, laws in zip(pair, (first, second), strict=True):
+        note_laws(own, laws)
+    one, two = pair
+
+    def gain(lanes: Lanes) -> Floats:
+        assert one.gain is not None
+        assert two.gain is not None
+        b1, b2 = np.asarray(one.gain(lanes)), np.asarray(two.gain(lanes))
+        return np.asarray(b1 + b2 + b1 * b2)
+
+    def base_voltage(lanes: Lanes, current: float) -> Floats:
+        assert one.base_voltage is not None
+        assert two.base_voltage is not None
+        assert two.gain is not None
+        return two.base_voltage(lanes, current) + one.base_voltage(lanes, current / float(np.mean(two.gain(lanes))))
+
+    bench.gain, bench.base_voltage, bench.leakage = gain, base_voltage, one.leakage
 
 
 def _expand(polarity: int) -> Callable[[Part, Builder], None]:
@@ -36,6 +62,7 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
         bench.currents["base"] = leak
         bench.currents["emitter"] = (first.current + second.current + leak).scaled(-1.0)
         bench.power = power
+        _note_laws(bench, build.transports[first.index][-1], build.transports[second.index][-1])
 
     return expand
 

@@ -30,6 +30,7 @@ def expand(part: Part, build: Builder) -> None:
     bench = build.bench(part.ref)
     bench.currents["plus"] = handle.current
     bench.power = handle.power
+    bench.draw = lambda lanes, across: lanes[key] / volts * across
     least = figure(part, "operating_minimum", "V")
     if least is not None:
         bench.on = (plus, minus, least.typical)

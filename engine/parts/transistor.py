@@ -21,7 +21,7 @@ from .physics import REFERENCE, doubling, gain_factor, saturation_factor, therma
 if TYPE_CHECKING:
     from ..design.document import Part
     from ..kernel.layout import Floats
-    from ..primitives.builder import Builder, Handle, Laws
+    from ..primitives.builder import Bench, Builder, Handle, Laws
 
 BUILT_IN = 0.75  # V, from memory
 EMITTER_GRADING, COLLECTOR_GRADING = 0.5, 0.33  # abrupt and graded junction, textbook values
@@ -182,6 +182,16 @@ def add_transistor(
     return build.transport(collector, base, emitter, polarity, laws)
 
 
+def note_laws(bench: Bench, laws: Laws) -> None:
+    """Keep gain, base-emitter voltage and leakage of a transistor for the hand formulas of checks."""
+    per_gain, saturation, slope = laws["per_forward_gain"], laws["emitter_saturation"], laws["emitter_slope"]
+    bench.gain = lambda lanes: 1.0 / np.asarray(per_gain(lanes))
+    bench.base_voltage = lambda lanes, current: (
+        np.asarray(slope(lanes)) * np.log1p(current / np.asarray(saturation(lanes)))
+    )
+    bench.leakage = laws.get("collector_leakage")
+
+
 def _expand(polarity: int) -> Callable[[Part, Builder], None]:
     def expand(part: Part, build: Builder) -> None:
         handle = add_transistor(
@@ -192,6 +202,7 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
         bench.currents["base"] = handle.base_current
         bench.currents["emitter"] = (handle.current + handle.base_current).scaled(-1.0)
         bench.power = handle.power
+        note_laws(bench, build.transports[handle.index][-1])
 
     return expand
 

@@ -87,11 +87,21 @@ class Handle:
 
 @dataclass
 class Bench:
-    """What can be observed at a part: currents by pin name, power, and the level at which a load counts as on."""
+    """What can be observed at a part, and the laws that hand formulas need.
+
+    ``currents`` by pin name; ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of
+    a load at a voltage; of a transistor ``gain``, ``base_voltage`` at a collector current in A, and ``leakage`` in A;
+    of a capacitor ``leak_conductance`` in S.
+    """
 
     currents: dict[str, Signal] = field(default_factory=dict)
     power: Signal | None = None
     on: tuple[str, str, float] | None = None
+    draw: Callable[[Lanes, Floats], Floats] | None = None
+    gain: Law | None = None
+    base_voltage: Callable[[Lanes, float], Floats] | None = None
+    leakage: Law | None = None
+    leak_conductance: Law | None = None
 
 
 class Builder:

@@ -8,7 +8,7 @@ from enum import Enum
 
 import numpy as np
 
-from ..kernel.layout import Floats
+from ..kernel.layout import Floats, Ints
 
 
 class Group(Enum):
@@ -76,7 +76,7 @@ class Lanes:
         """Row of a column in ``values``."""
         return self._place[key]
 
-    def take(self, index: Sequence[int] | Floats) -> Lanes:
+    def take(self, index: Sequence[int] | Ints) -> Lanes:
         """The lanes with these numbers, in this order."""
         return Lanes(self.columns, np.ascontiguousarray(self.values[:, np.asarray(index, dtype=np.int64)]))
 

@@ -1,0 +1,74 @@
+"""Check 12: does the timing capacitor get to its threshold at all, its leakage against its resistor?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..primitives.signals import Anchor, maximum, voltage
+from .check import Ask, Check, Judged, ratio
+from .seen import Seen
+from .view import View
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every timing resistor with its capacitor."""
+    for stage in view.design.stages:
+        if {"timing_resistor", "timing_capacitor"} <= stage.roles.keys():
+            yield _ask(
+                check, view, stage, *(view.design.part(stage.roles[f"timing_{p}"]) for p in ("resistor", "capacitor"))
+            )
+
+
+def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part) -> Ask:
+    requirement = view.requirement(check.slug, resistor.ref, capacitor.ref, stage.name)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    leakage = view.bench(capacitor.ref).leak_conductance
+    net = next((n for n in resistor.pins.values() if n in capacitor.pins.values()), None)
+    far = next((n for n in resistor.pins.values() if n != net), None)
+    if net is None or far is None:
+        return Ask(
+            check, stage.name, capacitor.ref, (sequence,), required, _never,
+            missing=f"a net shared by {resistor.ref} and {capacitor.ref}",
+        )  # fmt: skip
+    load = next((part for _, _, part in view.with_role("load") if view.bench(part.ref).on), None)
+    start = Anchor() if load is None else Anchor(0.0, view.event(f"{load.ref} on"))
+    end = None if load is None else Anchor(0.0, view.event(f"{load.ref} off"))
+    reached = maximum(voltage(net), start, end)
+    rail = maximum(voltage(far), start)
+
+    def judge(seen: Seen) -> Judged:
+        threshold = seen.value(reached, sequence)
+        late = ~np.isfinite(threshold)
+        if leakage is not None and late.any():
+            # Where the timer never ran out, its threshold is read from the same lanes with a capacitor without leakage.
+            again = seen.rerun(sequence, (reached,), {(capacitor.ref, "leakage_share"): 0.0}, late)
+            threshold = np.where(late, again[reached], threshold)
+        leak = 0.0 if leakage is None else np.asarray(leakage(seen.lanes))
+        final = seen.value(rail, sequence) / (1.0 + seen.lanes[resistor.ref, "value"] * leak)
+        started = np.isfinite(seen.value(rail, sequence))
+        return ratio(threshold, final, [(~started, check.words["never"])], hand=1.0 - threshold / final)
+
+    rows = (reached, rail)
+    return Ask(check, stage.name, capacitor.ref, (sequence,), required, judge, rows)
+
+
+def _never(seen: Seen) -> Judged:
+    return Judged(np.full(seen.lanes.count, np.nan))
+
+
+CHECKS = (
+    Check(
+        number=12,
+        slug="arrival",
+        title="arrival at the threshold",
+        unit="V",
+        required=0.3,
+        formula="D = voltage at which the timer runs out, C = rail / (1 + R G_leak), the threshold part unloaded",
+        asks=asks,
+        words={"never": "the timer was never started"},
+    ),
+)

@@ -1,0 +1,73 @@
+"""Check 1: does a switching transistor get more base current than its load needs?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..primitives.signals import Anchor, level, voltage
+from .check import Ask, Check, Judged, ratio
+from .seen import Seen
+from .view import View
+
+SATURATED = 0.2  # V across a transistor that is fully on, from memory
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every driver with a load."""
+    for stage, role, part in view.with_role("driver"):
+        load = view.role(stage, "load" if role == "driver" else role.replace("driver", "load"))
+        if load is None or view.bench(load.ref).on is None or view.bench(part.ref).gain is None:
+            continue
+        yield _ask(check, view, stage, part, load)
+
+
+def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    sequence = view.sequence(requirement)
+    bench, driven = view.bench(part.ref), view.bench(load.ref)
+    on = view.event(f"{load.ref} on")
+    at = view.moment(sequence, "sounding", "on") or Anchor(1e-2, on)
+    plus, minus, _ = driven.on or ("", "", 0.0)
+    base = level(bench.currents["base"], at)
+    across = level(voltage(plus, minus), at)
+    drop = level(voltage(part.pins["collector"], part.pins["emitter"]), at)
+    resistor = view.role(stage, "base_resistor")
+    leak = view.base_emitter_resistor(stage, "driver")
+    rail = level(voltage(plus), at)
+
+    def judge(seen: Seen) -> Judged:
+        gain = np.asarray(bench.gain(seen.lanes)) if bench.gain is not None else np.ones(seen.lanes.count)
+        fallen = np.abs(seen.value(drop, sequence))
+        volts = seen.value(across, sequence) + np.maximum(0.0, fallen - SATURATED)
+        assert driven.draw is not None
+        wanted = driven.draw(seen.lanes, volts)
+        never = ~seen.seen(base, sequence)
+        hand = None
+        if resistor is not None and bench.base_voltage is not None:
+            v_be = bench.base_voltage(seen.lanes, 1e-3)
+            i_b = (seen.value(rail, sequence) - v_be) / seen.lanes[resistor.ref, "value"]
+            if leak is not None:
+                i_b = i_b - v_be / seen.lanes[leak.ref, "value"]
+            hand = 1.0 - wanted / gain / np.where(i_b > 0.0, i_b, np.nan)
+        supplied = np.abs(seen.value(base, sequence))
+        return ratio(wanted / gain, supplied, [(never, check.words["never"].format(load=load.ref))], hand)
+
+    required = view.required(check.slug, check.required, requirement)
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=(base, across, drop, rail))
+
+
+CHECKS = (
+    Check(
+        number=1,
+        slug="base_overdrive",
+        title="base overdrive",
+        unit="A",
+        required=0.5,
+        formula="D = load current / h_FE of the lane, C = base current of the driver while the load is on",
+        asks=asks,
+        words={"never": "{load} never came on"},
+    ),
+)

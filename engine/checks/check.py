@@ -1,0 +1,114 @@
+"""What a check is: which margins it asks for in a design, and how each is judged from what the lanes showed."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from ..kernel.layout import Floats
+from ..primitives.signals import Row
+from .seen import Seen
+from .trial import Trial
+from .view import View
+
+Mask = NDArray[np.bool_]
+
+
+@dataclass(frozen=True)
+class Judged:
+    """Demand, capability and margin per lane; window checks give ``value`` with its limits instead of D and C.
+
+    ``outcomes`` are words for lanes where something else happened than the number says; the first that fits counts.
+    """
+
+    margin: Floats
+    demand: Floats | None = None
+    capability: Floats | None = None
+    value: Floats | None = None
+    limits: tuple[float, float] | None = None
+    outcomes: tuple[tuple[Mask, str], ...] = ()
+    hand: Floats | None = None
+
+    def outcome(self, lane: int) -> str | None:
+        """The words for one lane."""
+        return next((words for mask, words in self.outcomes if mask[lane]), None)
+
+
+def ratio(
+    demand: Floats, capability: Floats, outcomes: Sequence[tuple[Mask, str]] = (), hand: Floats | None = None
+) -> Judged:
+    """Margin 1 - D/C; a capability that is not above zero, and every outcome, counts as -1."""
+    safe = np.where(capability > 0.0, capability, 1.0)
+    margin = np.where(capability > 0.0, 1.0 - demand / safe, -1.0)
+    for mask, _ in outcomes:
+        margin = np.where(mask, -1.0, margin)
+    return Judged(margin, demand, capability, outcomes=tuple(outcomes), hand=hand)
+
+
+def window(
+    value: Floats,
+    low: float,
+    high: float,
+    outcomes: Sequence[tuple[Mask, str]] = (),
+    hand: Floats | None = None,
+) -> Judged:
+    """Margin min(U - x, x - L) / ((U - L)/2); an outcome counts as -1. ``hand`` is a value, judged the same way."""
+    half = 0.5 * (high - low)
+    margin = np.minimum(high - value, value - low) / half
+    for mask, _ in outcomes:
+        margin = np.where(mask, -1.0, margin)
+    by_hand = None if hand is None else np.minimum(high - hand, hand - low) / half
+    return Judged(margin, value=value, limits=(low, high), outcomes=tuple(outcomes), hand=by_hand)
+
+
+@dataclass(frozen=True)
+class Ask:
+    """One margin of one design. ``rows`` are observed in each of ``sequences``; ``judge`` turns them into a margin.
+
+    ``screen`` is the knob value of the trial at which the circuit must still hold for the required margin: what random
+    lanes are tried with. ``hint`` falls where the margin falls: it tells which end of a part's tolerance
+    hurts where the trial itself cannot, because the circuit never gives in. ``missing`` names the datum without which the check is UNKNOWN; nothing is computed for it then.
+    """
+
+    check: Check
+    stage: str
+    part: str
+    sequences: tuple[str, ...]
+    required: float
+    judge: Callable[[Seen], Judged]
+    rows: tuple[Row, ...] = ()
+    trial: Trial | None = None
+    screen: float | None = None
+    hint: Callable[[Seen], Floats] | None = None
+    missing: str | None = None
+
+    @property
+    def id(self) -> str:
+        """``slug:stage:part``, the name of the margin in every revision."""
+        return f"{self.check.slug}:{self.stage}:{self.part}"
+
+
+@dataclass(frozen=True)
+class Check:
+    """One entry of the catalogue. ``asks`` finds the margins of this kind in a design."""
+
+    number: int
+    slug: str
+    title: str
+    unit: str
+    required: float
+    formula: str
+    asks: Callable[[Check, View], Iterator[Ask]]
+    words: dict[str, str] = field(default_factory=dict)
+
+
+def unknown(check: Check, stage: str, part: str, sequence: str, required: float, missing: str) -> Ask:
+    """An ask that cannot be judged until a datum is given."""
+
+    def judge(seen: Seen) -> Judged:
+        return Judged(np.full(seen.lanes.count, np.nan))
+
+    return Ask(check, stage, part, (sequence,), required, judge, missing=missing)

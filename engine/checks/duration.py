@@ -1,0 +1,108 @@
+"""Check 11: does a timed interval stay within its window?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Stage
+from ..design.requirement import Requirement
+from ..errors import CircuitError
+from ..kernel.layout import Floats
+from ..primitives.signals import Anchor, Row, maximum, voltage
+from ..quantity import read
+from .check import Ask, Check, Judged, window
+from .seen import Seen
+from .view import View
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every requirement of a duration."""
+    for requirement in view.design.requirements:
+        if requirement.check == check.slug:
+            yield _ask(check, view, requirement)
+
+
+def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
+    subject = requirement.of
+    if subject is None or requirement.min is None or requirement.max is None:
+        raise CircuitError('requirement duration: write "of", "min" and "max", for example "LS1", "60 s" and "120 s"')
+    low, high = read(requirement.min, "s"), read(requirement.max, "s")
+    if not low < high:
+        raise CircuitError(
+            f"requirement duration of {subject}: min {requirement.min} is not below max {requirement.max}"
+        )
+    sequence = view.sequence(requirement)
+    stage = view.design.stage_of(subject) if view.design.has_part(subject) else view.design.stages[0]
+    first_text, last_text = requirement.from_ or f"{subject} on", requirement.to or f"{subject} off"
+    first = view.anchor(first_text, sequence)
+    last = view.anchor(last_text, sequence, first)
+    timing = _Timing.find(view, first, last)
+
+    def judge(seen: Seen) -> Judged:
+        begin, end = (_instant(seen, anchor, sequence) for anchor in (first, last))
+        started = np.isfinite(begin)
+        outcomes = [
+            (~started, check.words["never"].format(what=first_text)),
+            (started & ~np.isfinite(end), check.words["endless"].format(what=last_text)),
+        ]
+        hand = None if timing is None else timing.by_hand(seen, sequence)
+        return window(end - begin, low, high, outcomes, hand)
+
+    rows = tuple(anchor.row for anchor in (first, last) if anchor.row is not None)
+    if timing is not None:
+        rows += timing.rows
+    required = view.required(check.slug, check.required, requirement)
+    return Ask(check, stage.name, subject, (sequence,), required, judge, rows)
+
+
+def _instant(seen: Seen, anchor: Anchor, sequence: str) -> Floats:
+    if anchor.row is None:
+        return np.full(seen.lanes.count, anchor.by)
+    return seen.time(anchor.row, sequence) + anchor.by
+
+
+class _Timing:
+    """The timing resistor and capacitor of the design, for t = tau ln(V_inf / (V_inf - V_th)) with leakage."""
+
+    def __init__(self, view: View, stage: Stage, first: Anchor, last: Anchor) -> None:
+        resistor, capacitor = (view.design.part(stage.roles[r]) for r in ("timing_resistor", "timing_capacitor"))
+        self.resistor, self.capacitor = resistor.ref, capacitor.ref
+        self.leakage = view.bench(capacitor.ref).leak_conductance
+        shared = set(resistor.pins.values()) & set(capacitor.pins.values())
+        self.net = shared.pop() if len(shared) == 1 else next(iter(capacitor.pins.values()))
+        rail = next((net for net in resistor.pins.values() if net != self.net), self.net)
+        self.threshold = maximum(voltage(self.net), first, last)
+        self.rail = maximum(voltage(rail), first, last)
+        self.rows: tuple[Row, ...] = (self.threshold, self.rail)
+
+    @classmethod
+    def find(cls, view: View, first: Anchor, last: Anchor) -> _Timing | None:
+        """The design's timing pair; None where the roles are not filled or there is more than one pair."""
+        pairs = [s for s in view.design.stages if {"timing_resistor", "timing_capacitor"} <= s.roles.keys()]
+        return cls(view, pairs[0], first, last) if len(pairs) == 1 else None
+
+    def by_hand(self, seen: Seen, sequence: str) -> Floats:
+        """The interval by the closed form, with the rail and threshold that the simulation shows."""
+        resistance = seen.lanes[self.resistor, "value"]
+        leak = 0.0 if self.leakage is None else np.asarray(self.leakage(seen.lanes))
+        share = 1.0 / (1.0 + resistance * leak)
+        final = seen.value(self.rail, sequence) * share
+        threshold = seen.value(self.threshold, sequence)
+        reached = np.where(final > threshold, threshold / np.where(final > 0.0, final, 1.0), np.nan)
+        return np.asarray(-resistance * share * seen.lanes[self.capacitor, "value"] * np.log1p(-reached))
+
+
+CHECKS = (
+    Check(
+        number=11,
+        slug="duration",
+        title="duration window",
+        unit="s",
+        required=0.1,
+        formula="x = time from one event to the other, m = min(U - x, x - L) / ((U - L)/2)",
+        asks=asks,
+        words={"never": "'{what}' never came", "endless": "'{what}' never came: it runs on"},
+    ),
+)

@@ -1,0 +1,177 @@
+"""Check 5: does a latch hold in the weakest conditions, and does it let go when it is reset?
+
+The holding current is found by a trial: from the latched state the supply is lowered until the latch lets go.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..circuit.timeline import Timeline
+from ..design.part import Part, Stage
+from ..kernel.layout import Floats
+from ..primitives.columns import SUPPLY
+from ..primitives.signals import Anchor, Signal, level, minimum, voltage
+from ..run import Observed
+from .check import Ask, Check, Judged, Mask, ratio
+from .seen import Seen
+from .trial import Trial
+from .view import View
+
+LOWERING = 1e-3  # s in which the trial lowers the supply
+SETTLE = 0.5  # s until the trial looks whether the latch still holds, where the requirement gives none
+LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
+
+
+def _pair(view: View) -> Iterator[tuple[Stage, Part, Part]]:
+    for stage in view.design.stages:
+        if "latch_npn" in stage.roles and "latch_pnp" in stage.roles:
+            yield stage, view.design.part(stage.roles["latch_npn"]), view.design.part(stage.roles["latch_pnp"])
+
+
+def _latch_current(view: View, pnp: Part) -> Signal:
+    """Current into the latch: the emitter current of its pnp."""
+    bench = view.bench(pnp.ref)
+    return (bench.currents["collector"] + bench.currents["base"]).scaled(-1.0)
+
+
+def _hold_trial(view: View, stage: Stage, npn: Part, pnp: Part, sequence: str, settle: float) -> Trial:
+    start = view.moment(sequence, "latched", "sounding", "on")
+    if start is None:
+        load = next((part for _, _, part in view.with_role("load") if view.bench(part.ref).on), None)
+        start = Anchor(0.5 * view.ends(sequence)) if load is None else Anchor(1e-2, view.event(f"{load.ref} on"))
+    ends = LOWERING + settle
+    across = level(voltage(pnp.pins["emitter"], pnp.pins["collector"]), Anchor(ends))
+    rail = level(voltage(pnp.pins["emitter"], npn.pins["emitter"]), Anchor(ends))
+    current = level(_latch_current(view, pnp), Anchor(ends))
+
+    def drive(line: Timeline, knob: Floats) -> None:
+        line.move_supply(0.0, line.lanes[SUPPLY] / knob, LOWERING)
+
+    def gives_in(observed: Observed) -> Mask:
+        return np.asarray(observed.value(across) > 0.5 * observed.value(rail))
+
+    return Trial(
+        key=f"latch hold {stage.name}",
+        sequence=sequence,
+        start=start,
+        drive=drive,
+        ends=ends,
+        safe=1.0,
+        severe=1.0 / LEAST_SUPPLY,
+        rows=(current, across, rail),
+        gives_in=gives_in,
+    )
+
+
+def hold_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every complementary latch."""
+    for stage, npn, pnp in _pair(view):
+        yield _hold_ask(check, view, stage, npn, pnp)
+
+
+def _hold_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
+    requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    trial = _hold_trial(view, stage, npn, pnp, sequence, view.extra(requirement, "settle", "s") or SETTLE)
+    assert trial.start is not None
+    current = level(_latch_current(view, pnp), trial.start)
+
+    def judge(seen: Seen) -> Judged:
+        edge = seen.edges.get(trial.key)
+        carried = seen.value(current, sequence)
+        if edge is None:
+            return Judged(np.full(seen.lanes.count, np.nan), capability=carried)
+        return ratio(
+            edge.values[trial.rows[0]],
+            carried,
+            [(edge.missing, check.words["missing"]), (edge.always, check.words["always"])],
+            _hand_hold(view, stage, npn, pnp, seen, carried),
+        )
+
+    return Ask(
+        check, stage.name, pnp.ref, (sequence,), required, judge, (current,), trial,
+        screen=1.0 / (1.0 - required) if required < 1.0 else None,
+    )  # fmt: skip
+
+
+def _hand_hold(view: View, stage: Stage, npn: Part, pnp: Part, seen: Seen, carried: Floats) -> Floats | None:
+    total = np.zeros(seen.lanes.count)
+    for role, part in (("latch_npn", npn), ("latch_pnp", pnp)):
+        resistor = view.base_emitter_resistor(stage, role)
+        base_voltage = view.bench(part.ref).base_voltage
+        if resistor is None or base_voltage is None:
+            return None
+        total = total + base_voltage(seen.lanes, 1e-4) / seen.lanes[resistor.ref, "value"]
+    return np.asarray(1.0 - total / np.where(carried > 0.0, carried, np.nan))
+
+
+def reset_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every complementary latch that the sequence resets (it has a moment ``silent`` or ``reset``)."""
+    for stage, npn, pnp in _pair(view):
+        requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
+        sequence = view.sequence(requirement)
+        at = view.moment(sequence, "silent", "reset")
+        if at is not None:
+            yield _reset_ask(check, view, stage, npn, pnp, sequence, at)
+
+
+def _reset_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part, sequence: str, at: Anchor) -> Ask:
+    requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    hold = view.requirement("latch_hold", npn.ref, pnp.ref, stage.name)
+    trial = _hold_trial(view, stage, npn, pnp, view.sequence(hold), view.extra(hold, "settle", "s") or SETTLE)
+    residual = minimum(_latch_current(view, pnp), at, Anchor(at.by + 1e-3, at.row))
+
+    def judge(seen: Seen) -> Judged:
+        edge = seen.edges.get(trial.key)
+        left = np.maximum(0.0, seen.value(residual, sequence))
+        if edge is None:
+            return Judged(np.full(seen.lanes.count, np.nan), demand=left)
+        held = edge.values[trial.rows[0]]
+        never = ~seen.seen(residual, sequence)
+        return ratio(
+            left,
+            held,
+            [
+                (edge.missing, check.words["missing"]),
+                (never, check.words["never"]),
+                (left > held, check.words["holds"]),
+            ],
+        )
+
+    return Ask(check, stage.name, pnp.ref, (sequence,), required, judge, (residual,), trial)
+
+
+CHECKS = (
+    Check(
+        number=5,
+        slug="latch_hold",
+        title="latch hold",
+        unit="A",
+        required=0.5,
+        formula="D = latch current at which it lets go when the supply is lowered, C = latch current while it holds",
+        asks=hold_asks,
+        words={
+            "missing": "the latch was never set",
+            "always": "the latch lets go by itself",
+        },
+    ),
+    Check(
+        number=5,
+        slug="latch_reset",
+        title="latch reset",
+        unit="A",
+        required=0.5,
+        formula="D = latch current left after the reset, C = latch current below which it lets go",
+        asks=reset_asks,
+        words={
+            "missing": "the latch was never set",
+            "never": "the instant of the reset never came",
+            "holds": "did not let go",
+        },
+    ),
+)

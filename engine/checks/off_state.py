@@ -1,0 +1,59 @@
+"""Check 3: does leakage through the base-emitter resistor stay below what begins to turn a transistor on?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..primitives.signals import Anchor, level
+from .check import Ask, Check, Judged, ratio
+from .seen import Seen
+from .view import View, forward_base_voltage
+
+ROLES = ("trip_device", "latch_npn", "latch_pnp", "threshold_device", "reset_device", "driver")
+PERMITTED = 1e-6  # A, collector current that counts as off where the requirement gives none
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every transistor in a switching role."""
+    found: set[str] = set()
+    for stage, role, part in view.with_role(*ROLES):
+        if view.bench(part.ref).base_voltage is not None and part.ref not in found:
+            found.add(part.ref)
+            yield _ask(check, view, stage, role, part)
+
+
+def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    sequence = view.sequence(requirement)
+    at = view.moment(sequence, "standby") or Anchor(0.5 * view.ends(sequence))
+    across = level(forward_base_voltage(part), at)
+    permitted = view.extra(requirement, "off_current", "A") or PERMITTED
+    bench = view.bench(part.ref)
+    resistor = view.base_emitter_resistor(stage, role)
+
+    def judge(seen: Seen) -> Judged:
+        assert bench.base_voltage is not None
+        allowed = bench.base_voltage(seen.lanes, permitted)
+        hand = None
+        if resistor is not None and bench.leakage is not None:
+            hand = 1.0 - np.asarray(bench.leakage(seen.lanes)) * seen.lanes[resistor.ref, "value"] / allowed
+        return ratio(np.maximum(0.0, seen.value(across, sequence)), allowed, hand=hand)
+
+    required = view.required(check.slug, check.required, requirement)
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=(across,))
+
+
+CHECKS = (
+    Check(
+        number=3,
+        slug="hot_off_state",
+        title="hot off-state",
+        unit="V",
+        required=0.5,
+        formula="D = base-emitter voltage in stand-by, C = the base-emitter voltage at the permitted off-current",
+        asks=asks,
+    ),
+)

@@ -1,0 +1,50 @@
+"""Check 8: does the collector-emitter voltage stay below its rating?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..primitives.signals import maximum, voltage
+from .check import Ask, Check, Judged, ratio, unknown
+from .reverse_base_emitter import BIPOLAR
+from .seen import Seen
+from .view import View, polarity
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every bipolar transistor, over all sequences."""
+    for stage, part in view.parts_of(*BIPOLAR):
+        yield _ask(check, view, stage, part)
+
+
+def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequences = tuple(view.design.sequences)
+    rating = view.datum(part, "v_ceo", "V")
+    if rating is None:
+        return unknown(check, stage.name, part.ref, sequences[0], required, f"v_ceo of {part.ref}")
+    allowed = view.derating("v_ceo", 0.8, requirement) * rating.low
+    across = maximum(voltage(part.pins["collector"], part.pins["emitter"]).scaled(polarity(part)))
+
+    def judge(seen: Seen) -> Judged:
+        peaks = np.max([seen.value(across, sequence) for sequence in sequences], axis=0)
+        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed))
+
+    return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(across,))
+
+
+CHECKS = (
+    Check(
+        number=8,
+        slug="peak_collector_emitter",
+        title="peak collector-emitter",
+        unit="V",
+        required=0.0,
+        formula="D = largest collector-emitter voltage of all sequences, C = derating x V_CEO",
+        asks=asks,
+    ),
+)

@@ -1,0 +1,70 @@
+"""Check 30: does a resistor stay below its derated power?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..kernel.layout import Floats
+from ..primitives.signals import Anchor, integral, level
+from .check import Ask, Check, Judged, ratio, unknown
+from .seen import Seen
+from .view import View
+
+FULL_UNTIL, ZERO_AT = 70.0, 155.0  # deg C, metal film, from memory
+
+
+def permitted(rating: float, celsius: Floats) -> Floats:
+    """Rated power at an ambient temperature: full to 70 C, falling to nothing at 155 C."""
+    return rating * np.clip((ZERO_AT - celsius) / (ZERO_AT - FULL_UNTIL), 0.0, 1.0)
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every resistor that is not a 0R link."""
+    for stage, part in view.parts_of("resistor"):
+        if view.bench(part.ref).power is not None:
+            yield _ask(check, view, stage, part)
+
+
+def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequence = view.sequence(requirement)
+    rating = view.datum(part, "rating", "W")
+    if rating is None:
+        return unknown(check, stage.name, part.ref, sequence, required, f"rating of {part.ref}")
+    factor = view.derating("resistor_power", 0.6, requirement)
+    power = view.bench(part.ref).power
+    assert power is not None
+    moments = [view.anchor(name, sequence) for name in view.design.sequences[sequence].moments]
+    steady = tuple(level(power, at) for at in moments or [Anchor(0.5 * view.ends(sequence))])
+    load = next((p for _, _, p in view.with_role("load") if view.bench(p.ref).on), None)
+    whole = None
+    if load is not None:
+        on, off = view.event(f"{load.ref} on"), view.event(f"{load.ref} off")
+        whole = integral(power, Anchor(0.0, on), Anchor(0.0, off))
+
+    def judge(seen: Seen) -> Judged:
+        powers = [np.nan_to_num(seen.value(row, sequence)) for row in steady]
+        if whole is not None:
+            lasted = seen.value(off, sequence) - seen.value(on, sequence)
+            powers.append(np.nan_to_num(seen.value(whole, sequence) / np.where(lasted > 0.0, lasted, np.nan)))
+        return ratio(np.max(powers, axis=0), factor * permitted(rating.low, seen.lanes.ambient))
+
+    rows = (*steady, *((whole, on, off) if whole is not None else ()))
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
+
+
+CHECKS = (
+    Check(
+        number=30,
+        slug="resistor_power",
+        title="resistor power",
+        unit="W",
+        required=0.0,
+        formula="D = largest power at the moments of the sequence and averaged over the alarm, C = derating x rating(T)",
+        asks=asks,
+    ),
+)

@@ -1,0 +1,75 @@
+"""Check 27: do the cells last through the stand-by time and the alarm?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.requirement import Requirement
+from ..primitives.signals import Anchor, level
+from .check import Ask, Check, Judged, ratio, unknown
+from .seen import Seen
+from .view import View
+
+HOUR = 3600.0
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every requirement of stand-by energy."""
+    for requirement in view.design.requirements:
+        if requirement.check == check.slug:
+            yield _ask(check, view, requirement)
+
+
+def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
+    subject = requirement.of or "supply"
+    stage = view.design.stage_of(subject).name if view.design.has_part(subject) else view.design.stages[0].name
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    capacity = view.extra(requirement, "capacity", "Ah")
+    standby_time = view.extra(requirement, "standby_time", "s")
+    current = view.supply_current
+    for missing, value in (
+        ("capacity of the cells (requirement field capacity)", capacity),
+        ("stand-by time (requirement field standby_time)", standby_time),
+        ("source_resistance in the conditions, through which the current is seen", current),
+    ):
+        if value is None:
+            return unknown(check, stage, subject, sequence, required, missing)
+    assert capacity is not None
+    assert standby_time is not None
+    assert current is not None
+    alarm_time = view.extra(requirement, "alarm_time", "s") or 0.0
+    age = view.extra(requirement, "age", "%")
+    cold = view.extra(requirement, "cold", "%")
+    lost = view.extra(requirement, "self_discharge", "%") or 0.0
+    usable = capacity * (1.0 if age is None else age) * (1.0 if cold is None else cold) * (1.0 - lost)
+    standby = level(current, view.moment(sequence, "standby") or Anchor(0.5 * view.ends(sequence)))
+    sounding_at = view.moment(sequence, "sounding")
+    sounding = None if sounding_at is None else level(current, sounding_at)
+
+    def judge(seen: Seen) -> Judged:
+        charge = seen.value(standby, sequence) * standby_time
+        outcomes = []
+        if sounding is not None and alarm_time > 0.0:
+            charge = charge + seen.value(sounding, sequence) * alarm_time
+            outcomes.append((~seen.seen(sounding, sequence), check.words["never"]))
+        return ratio(charge, np.full(seen.lanes.count, usable), outcomes, 1.0 - charge / usable)
+
+    rows = (standby,) if sounding is None else (standby, sounding)
+    return Ask(check, stage, subject, (sequence,), required, judge, rows)
+
+
+CHECKS = (
+    Check(
+        number=27,
+        slug="standby_energy",
+        title="stand-by energy",
+        unit="Ah",
+        required=0.0,
+        formula="D = stand-by current x time + alarm current x time, C = capacity x age x cold x (1 - self-discharge)",
+        asks=asks,
+        words={"never": "the alarm never sounded"},
+    ),
+)

@@ -1,0 +1,169 @@
+"""What a check sees of a design: its roles, anchors, requirements and what can be observed at its parts."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from functools import cached_property
+
+from ..circuit.circuit import SUPPLY_SWITCH, Circuit
+from ..design.anchor import read_anchor
+from ..design.datum import number
+from ..design.document import Design
+from ..design.part import Part, Stage
+from ..design.requirement import Requirement
+from ..design.sequence import RelativeMoment
+from ..errors import CircuitError, QuantityError
+from ..parts.figures import Figure, figure
+from ..primitives.builder import Bench, Handle
+from ..primitives.signals import Anchor, Row, Signal, crossing, voltage
+from ..quantity import read
+
+MAIN = "alarm"
+
+
+@dataclass(frozen=True)
+class View:
+    """A design and its circuit, with the questions that checks ask of them."""
+
+    design: Design
+    circuit: Circuit
+
+    def bench(self, ref: str) -> Bench:
+        """What can be observed at a part."""
+        return self.circuit.benches.get(ref, Bench())
+
+    def with_role(self, *roles: str) -> Iterator[tuple[Stage, str, Part]]:
+        """Stage, role and part for every filled role of these names (``driver`` also finds ``driver_2``)."""
+        for stage in self.design.stages:
+            for role, ref in stage.roles.items():
+                if any(role == name or role.startswith(f"{name}_") for name in roles):
+                    yield stage, role, self.design.part(ref)
+
+    def role(self, stage: Stage, name: str) -> Part | None:
+        """The part that fills a role: in the stage itself, else in the first stage that fills it."""
+        for place in (stage, *self.design.stages):
+            if name in place.roles:
+                return self.design.part(place.roles[name])
+        return None
+
+    def base_emitter_resistor(self, stage: Stage, role: str) -> Part | None:
+        """The resistor across the base-emitter junction of the transistor in this role, where its role is filled."""
+        for name in (f"base_emitter_resistor_{role.removeprefix('latch_')}", "base_emitter_resistor"):
+            if name in stage.roles:
+                return self.design.part(stage.roles[name])
+        return None
+
+    def parts_of(self, *kinds: str) -> Iterator[tuple[Stage, Part]]:
+        """All parts of these kinds with their stages."""
+        for stage in self.design.stages:
+            for part in stage.parts:
+                if part.kind in kinds:
+                    yield stage, part
+
+    def requirement(self, slug: str, *subjects: str) -> Requirement | None:
+        """The requirement of a check about one of these parts, nets or stages; one that names nothing fits all."""
+        fitting = [r for r in self.design.requirements if r.check == slug]
+        for wanted in fitting:
+            if wanted.of in subjects or (wanted.of is None and wanted.stage in (None, *subjects)):
+                return wanted
+        return None
+
+    def required(self, slug: str, customary: float, requirement: Requirement | None = None) -> float:
+        """The required margin: of the requirement, of the design's table, or the customary one."""
+        if requirement is not None and requirement.required is not None:
+            return _share(requirement.required)
+        text = self.design.required.get(slug)
+        return customary if text is None else _share(text)
+
+    def derating(self, name: str, customary: float, requirement: Requirement | None = None) -> float:
+        """The factor on a rating: of the requirement, of the design's table, or the customary one."""
+        text = requirement.derating if requirement is not None and requirement.derating is not None else None
+        text = text or self.design.derating.get(name)
+        return customary if text is None else _share(text)
+
+    def extra(self, requirement: Requirement | None, key: str, unit: str) -> float | None:
+        """A field that only one check reads. Raises CircuitError that names it when it cannot be read."""
+        if requirement is None or key not in requirement.extras:
+            return None
+        try:
+            return number(requirement.extras[key], unit)
+        except QuantityError as refusal:
+            raise CircuitError(f"requirement {requirement.check}, field {key}: {refusal}") from refusal
+
+    def datum(self, part: Part, key: str, unit: str) -> Figure | None:
+        """A datum of a part or its class."""
+        return figure(part, key, unit)
+
+    def sequence(self, requirement: Requirement | None, *names: str) -> str:
+        """The sequence to judge in: that of the requirement, the first of these names that exists, or the main one."""
+        if requirement is not None and requirement.sequence is not None:
+            if requirement.sequence not in self.design.sequences:
+                known = ", ".join(self.design.sequences)
+                raise CircuitError(
+                    f"requirement {requirement.check}, field sequence: there is no '{requirement.sequence}';"
+                    f" write one of {known}"
+                )
+            return requirement.sequence
+        return next((name for name in names if name in self.design.sequences), MAIN)
+
+    def ends(self, sequence: str) -> float:
+        """How long a sequence lasts, s."""
+        return read(self.design.sequences[sequence].ends, "s")
+
+    def anchor(self, text: str, sequence: str, after: Anchor | None = None) -> Anchor:
+        """The instant that a requirement or moment names: a time, a named moment or an observed event."""
+        moments = self.design.sequences[sequence].moments
+        if text in moments:
+            moment = moments[text]
+            if isinstance(moment, RelativeMoment):
+                found = self.anchor(moment.after, sequence)
+                return Anchor(found.by + read(moment.by, "s"), found.row)
+            return Anchor(read(moment, "s"))
+        try:
+            return Anchor(read(text, "s"))
+        except QuantityError:
+            return Anchor(0.0, self.event(text, after))
+
+    def moment(self, sequence: str, *names: str) -> Anchor | None:
+        """The first of these moments that the sequence has."""
+        moments = self.design.sequences[sequence].moments
+        return next((self.anchor(name, sequence) for name in names if name in moments), None)
+
+    def event(self, text: str, after: Anchor | None = None) -> Row:
+        """The row that finds an observed event such as ``LS1 on`` or ``timing above 2 V``, the first one ``after``."""
+        anchor = read_anchor(text)
+        start = after or Anchor()
+        if anchor.level is not None:
+            return crossing(voltage(anchor.subject), anchor.level, anchor.change == "above", start)
+        on = self.bench(anchor.subject).on
+        if on is None:
+            raise CircuitError(
+                f"'{text}': part {anchor.subject} has no level at which it counts as on; write its operating_minimum"
+            )
+        plus, minus, level = on
+        if anchor.change in ("on", "in"):
+            return crossing(voltage(plus, minus), level, True, start)
+        # A load goes off after it came on: after the instant asked for, else after it first did.
+        came = after or Anchor(0.0, crossing(voltage(plus, minus), level, True))
+        return crossing(voltage(plus, minus), level, False, came)
+
+    @cached_property
+    def supply_current(self) -> Signal | None:
+        """Current drawn from the supply; None where the supply has no source resistance to see it through."""
+        switch = self.circuit.builder.switches.get(SUPPLY_SWITCH)
+        return None if switch is None else Handle("conductance", switch[0], ()).current
+
+
+def _share(text: str) -> float:
+    return read(text, "%") if "%" in text else read(text, "")
+
+
+def polarity(part: Part) -> float:
+    """+1 for an npn kind, -1 for a pnp kind."""
+    return -1.0 if part.kind.endswith("pnp") else 1.0
+
+
+def forward_base_voltage(part: Part) -> Signal:
+    """The base-emitter voltage, positive when the junction conducts."""
+    return voltage(part.pins["base"], part.pins["emitter"]).scaled(polarity(part))

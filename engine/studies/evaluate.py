@@ -1,0 +1,108 @@
+"""Runs a set of lanes through all sequences and trials that the asks of a design need, and judges every ask."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping, Sequence
+
+import numpy as np
+
+from ..checks import catalogue
+from ..checks.check import Ask, Judged
+from ..checks.seen import Seen
+from ..checks.trial import Edge
+from ..checks.view import View
+from ..circuit.circuit import Circuit
+from ..primitives.columns import Lanes
+from ..primitives.signals import Row
+from ..run import Observed, never, run, silent
+from .sequences import program_of, starts_of
+from .trials import TrialRun
+
+Progress = Callable[[int, int], None]
+
+
+def asks_of(circuit: Circuit) -> tuple[Ask, ...]:
+    """Everything that the catalogue asks of a design, in the order of the catalogue."""
+    view = View(circuit.design, circuit)
+    found: dict[str, Ask] = {}
+    for check in catalogue().values():
+        for ask in check.asks(check, view):
+            found.setdefault(ask.id, ask)
+    return tuple(found.values())
+
+
+def _rows(asks: Sequence[Ask]) -> dict[str, list[Row]]:
+    wanted: dict[str, dict[Row, None]] = {}
+    for ask in asks:
+        if ask.missing is None:
+            for sequence in ask.sequences:
+                wanted.setdefault(sequence, {}).update(dict.fromkeys(ask.rows))
+    return {sequence: list(rows) for sequence, rows in wanted.items()}
+
+
+def observe(
+    circuit: Circuit,
+    lanes: Lanes,
+    sequence: str,
+    rows: Sequence[Row],
+    progress: Progress = silent,
+    cancelled: Callable[[], bool] = never,
+) -> Observed:
+    """Run one sequence of the document in all lanes."""
+    _, program = program_of(circuit, lanes, sequence)
+    starts = starts_of(circuit, sequence, program)
+    return run(circuit, lanes, program, rows, start=starts, progress=progress, cancelled=cancelled)
+
+
+def look(
+    circuit: Circuit,
+    asks: Sequence[Ask],
+    lanes: Lanes,
+    *,
+    trials: Mapping[str, Sequence[int]] | None = None,
+    resolution: float | None = None,
+    progress: Progress = silent,
+    cancelled: Callable[[], bool] = never,
+) -> Seen:
+    """Observe all sequences, and bisect every trial in the lanes that ``trials`` gives for its key (None: in none)."""
+    wanted = _rows(asks)
+    observed: dict[str, Observed] = {}
+    for k, (sequence, rows) in enumerate(wanted.items()):
+
+        def portion(done: int, total: int, k: int = k) -> None:
+            progress(k * total + done, len(wanted) * total)
+
+        observed[sequence] = observe(circuit, lanes, sequence, rows, portion, cancelled)
+    edges: dict[str, Edge] = {}
+    for ask in asks:
+        if ask.trial is not None and ask.trial.key not in edges and trials is not None:
+            index = sorted(set(trials.get(ask.trial.key, ())))
+            if index:
+                found = TrialRun(circuit, ask.trial, lanes.take(index), cancelled).edge(resolution)
+                edges[ask.trial.key] = found.scattered(index, lanes.count)
+
+    def again(sequence: str, rows: tuple[Row, ...], altered: Lanes) -> Observed:
+        return observe(circuit, altered, sequence, rows, cancelled=cancelled)
+
+    return Seen(circuit, lanes, observed, edges, again)
+
+
+def judge(ask: Ask, seen: Seen) -> tuple[Judged, dict[int, str]]:
+    """Judge one ask in all lanes; lanes that could not be solved come with the reason and have no margin.
+
+    Lanes in which the trial of an ask was not run count as infinitely good: they cannot be the worst.
+    """
+    judged = ask.judge(seen)
+    if ask.trial is not None and ask.missing is None:
+        edge = seen.edges.get(ask.trial.key)
+        untried = np.ones(seen.lanes.count, dtype=bool) if edge is None else ~edge.tried
+        judged.margin[untried] = np.inf
+    broken: dict[int, str] = {}
+    if ask.missing is None:
+        for sequence in ask.sequences:
+            observed = seen.observed[sequence]
+            for failed in np.flatnonzero(observed.failed):
+                broken.setdefault(int(failed), f"{sequence}: {observed.failure(int(failed))}")
+    for lane in broken:
+        judged.margin[lane] = np.nan
+    return judged, broken

@@ -1,0 +1,101 @@
+"""The one bisection behind every trial: several knob values a lane and round, all lanes in one run."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+
+import numpy as np
+
+from ..checks.trial import Edge, Mask, Trial
+from ..circuit.circuit import Circuit
+from ..circuit.timeline import Timeline
+from ..kernel import layout
+from ..kernel.layout import Floats, Ints
+from ..primitives.columns import Lanes
+from ..primitives.signals import level, voltage
+from ..run import Observed, never, run
+from .sequences import program_of, starts_of
+
+AT_ONCE, MOST_POINTS = 64, 8  # lanes of a round that is worth its while, and knob values of one lane in it
+SCANNED = 10  # knob values that are tried along the whole range
+NEAR = 1.6  # half the width, as a ratio, of a search around a known edge
+
+
+def _state(circuit: Circuit, trial: Trial, lanes: Lanes, cancelled: Callable[[], bool]) -> Observed:
+    """The sequence run until the instant at which the trial begins."""
+    assert trial.start is not None
+    begin = level(voltage("0V"), trial.start)
+    _, program = program_of(circuit, lanes, trial.sequence)
+    starts = starts_of(circuit, trial.sequence, program)
+    return run(circuit, lanes, program, [begin], start=starts, stop=begin, cancelled=cancelled)
+
+
+class TrialRun:
+    """A trial made ready in the given lanes: the state it starts from is computed once."""
+
+    def __init__(self, circuit: Circuit, trial: Trial, lanes: Lanes, cancelled: Callable[[], bool] = never) -> None:
+        self.circuit, self.trial, self.lanes, self.cancelled = circuit, trial, lanes, cancelled
+        self.missing = np.zeros(lanes.count, dtype=bool)
+        self._state: Floats | None = None
+        self._at = np.zeros(lanes.count)
+        if trial.start is not None:
+            observed = _state(circuit, trial, lanes, cancelled)
+            self._state = observed.final
+            self._at = observed.results.ended_at
+            self.missing = observed.results.ended[:, 0] != layout.STOPPED
+
+    def tried(self, index: Sequence[int] | Ints, knob: Floats) -> Observed:
+        """Run lanes ``index`` (with repeats) with one knob value each."""
+        chosen = np.asarray(index, dtype=np.int64)
+        lanes = self.lanes.take(chosen)
+        start = None
+        if self._state is None:
+            line = Timeline(self.circuit, lanes)
+        else:
+            before, _ = program_of(self.circuit, lanes, self.trial.sequence)
+            line = Timeline.resumed(before, self._at[chosen])
+            start = np.ascontiguousarray(self._state[chosen])
+        self.trial.drive(line, knob)
+        program = line.program(self.trial.ends)
+        return run(self.circuit, lanes, program, self.trial.rows, start=start, cancelled=self.cancelled)
+
+    def holds(self, index: Sequence[int] | Ints, knob: Floats) -> Mask:
+        """Whether each lane holds at its knob value; a lane that could not be solved does not."""
+        observed = self.tried(index, knob)
+        return np.asarray(~(self.trial.gives_in(observed) | observed.failed))
+
+    def edge(self, resolution: float | None = None, around: float | None = None) -> Edge:
+        """Bisect all lanes at once, to the trial's own resolution or a coarser one; ``around`` narrows the search to
+        knob values near this one, and what lies outside counts as ``never`` or ``always``."""
+        enough = np.log(self.trial.resolution if resolution is None else resolution)
+        count = self.lanes.count
+        everyone = np.arange(count)
+        ends = (self.trial.safe, self.trial.severe) if around is None else (around / NEAR, around * NEAR)
+        # A circuit may give in at a middle value and hold at a severer one: look along the whole range first.
+        knobs = np.geomspace(*ends, SCANNED if around is None else 2)
+        held = self.holds(np.repeat(everyone, knobs.size), np.tile(knobs, count)).reshape(count, -1)
+        never_gives_in = held.all(axis=1)
+        always = ~held[:, 0]
+        first = np.where(never_gives_in, knobs.size - 1, np.maximum(1, np.argmin(held, axis=1)))
+        low, high = np.log(knobs[first - 1]), np.log(knobs[first])
+        open_lanes = ~(always | never_gives_in | self.missing)
+        while True:
+            wide = open_lanes & (np.abs(high - low) > enough)
+            chosen = np.flatnonzero(wide)
+            if chosen.size == 0:
+                break
+            points = int(np.clip(AT_ONCE // chosen.size, 1, MOST_POINTS))
+            shares = np.arange(1, points + 1) / (points + 1)
+            grid = low[chosen, None] + (high - low)[chosen, None] * shares
+            held = self.holds(np.repeat(chosen, points), np.exp(grid).ravel()).reshape(-1, points)
+            # The first knob value that does not hold bounds the edge, whatever lies beyond it.
+            first = np.where(held.all(axis=1), points, np.argmin(held, axis=1))
+            padded = np.concatenate([low[chosen, None], grid, high[chosen, None]], axis=1)
+            rows = np.arange(chosen.size)
+            low[chosen], high[chosen] = padded[rows, first], padded[rows, first + 1]
+        knob = np.where(never_gives_in, ends[1], np.exp(low))
+        knob = np.where(always, ends[0], knob)
+        final = self.tried(everyone, knob)
+        values = {row: final.value(row) for row in self.trial.rows}
+        tried = np.ones(count, dtype=bool)
+        return Edge(knob, values, never_gives_in & ~self.missing, always & ~self.missing, self.missing, tried)
