@@ -142,7 +142,7 @@ CHECKS = (
         title="supply slew without a false trip",
         unit="V/s",
         required=0.5,
-        formula="D = slew of the latch's supply node when the supply is connected, C = largest slew that does not trip it",
+        formula="D = slew of the latch's supply node as the supply is connected, C = largest slew that does not trip it",
         asks=asks,
         words={
             "always": "trips however slowly the supply is connected",

@@ -20,10 +20,10 @@ Mask = NDArray[np.bool_]
 class Trial:
     """A question with one knob, from ``safe`` (the circuit holds) to ``severe`` (it may give in), in ratio steps.
 
-    ``start`` is the instant of ``sequence`` from whose state the trial goes on, None from the empty circuit.
-    ``drive`` adds to a timeline what happens for one knob value per lane, until ``ends``; ``gives_in`` reads it off. ``resolution`` is the
-    ratio of neighbouring knob values at which the search may stop. ``key`` names the trial: checks that share it share
-    its result.
+    ``start`` is the instant of ``sequence`` from whose state the trial goes on, None from the empty circuit. ``drive``
+    adds to a timeline what happens for one knob value per lane, until ``ends``; ``gives_in`` reads it off.
+    ``resolution`` is the ratio of neighbouring knob values at which the search may stop. ``key`` names the trial:
+    checks that share it share its result.
     """
 
     key: str

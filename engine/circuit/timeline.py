@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -73,7 +74,7 @@ class Timeline:
                 self.sources[name] = self.supply
         if SUPPLY_SWITCH in self.switches:
             self.switches[SUPPLY_SWITCH] = Wave(self._set(SUPPLY_SWITCH, "open"))
-        self._level: Number = lanes[SUPPLY] if SUPPLY in lanes else 0.0
+        self._level: Number = lanes[SUPPLY] if SUPPLY in lanes else 0.0  # noqa: SIM401
         self._generators()
 
     def _set(self, ref: str, state: str | None) -> Number:
@@ -97,7 +98,7 @@ class Timeline:
                 continue
             points = [(number(t, "s"), number(v, "V")) for t, v in waveform.steps or ()]
             wave = Wave(points[0][1])
-            for (t0, _), (t1, v1) in zip(points, points[1:], strict=False):
+            for (t0, _), (t1, v1) in pairwise(points):
                 wave.ramp(t0, t1 - t0, v1)
             self.sources[source] = wave
 
