@@ -13,6 +13,7 @@ from collections.abc import Awaitable, Callable
 from textual import events
 from textual.message_pump import MessagePump
 
+_ROUNDS = 200
 _PATIENCE = 0.25
 """Seconds after which a key no longer waits: a handler that takes longer than this waits for something else."""
 
@@ -53,7 +54,9 @@ class KeyOrder:
         """Returns when no message waits anywhere, seen twice because a message may be in someone's hands."""
         loop = asyncio.get_running_loop()
         end = loop.time() + _PATIENCE
-        quiet = 0
-        while quiet < 2 and loop.time() < end:
+        quiet = rounds = 0
+        # Rounds too, because a handler that waits for the disk lets the time pass without letting anything happen.
+        while quiet < 2 and (loop.time() < end or rounds < _ROUNDS):
             await asyncio.sleep(0)
+            rounds += 1
             quiet = 0 if any(pump.message_queue_size for pump in self._pumps()) else quiet + 1
