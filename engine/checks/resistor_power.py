@@ -64,7 +64,7 @@ CHECKS = (
         title="resistor power",
         unit="W",
         required=0.0,
-        formula="D = largest power at the moments of the sequence and averaged over the alarm, C = derating x rating(T)",
+        formula="D = largest power at the moments of the sequence and averaged over the alarm, C = derating x P(T)",
         asks=asks,
     ),
 )

@@ -109,7 +109,7 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
 
 def _hand(view: View, stage: Stage, npn: Part, seen: Seen, demand: Floats) -> Floats | None:
     """1 - D/s with s from v = s R C_c (1 - exp(-V/(s R C))), the base voltage at the end of a rise to V through the
-    coupling C_c of strays and collector, C being all that hangs on the base; 1 where no slew can reach the trip voltage.
+    coupling C_c of strays and collector, C being all that hangs on the base; 1 where no slew can reach the trip level.
     """
     resistor = view.base_emitter_resistor(stage, "latch_npn")
     base_voltage = view.bench(npn.ref).base_voltage
@@ -142,7 +142,7 @@ CHECKS = (
         title="supply slew without a false trip",
         unit="V/s",
         required=0.5,
-        formula="D = slew of the latch's supply node as the supply is connected, C = largest slew that does not trip it",
+        formula="D = slew of the latch's supply node as the supply comes, C = largest slew that does not trip it",
         asks=asks,
         words={
             "always": "trips however slowly the supply is connected",

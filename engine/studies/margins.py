@@ -87,6 +87,11 @@ def study(
     return made
 
 
+def worst_corners(circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool] = never) -> dict[str, Corner]:
+    """The worst corner of every ask, by its id."""
+    return _corners(circuit, asks, _nominal(circuit, asks, cancelled), silent, cancelled)
+
+
 def _pairs(asks: tuple[Ask, ...], corners: dict[str, Corner]) -> list[tuple[Ask, Corner]]:
     return [(ask, corners[ask.id]) for ask in asks]
 
