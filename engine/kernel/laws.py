@@ -2,8 +2,8 @@
 
 Diode law with ideality (Shockley, Bell Syst. Tech. J. 28 (1949) 435); depletion charge with grading coefficient and a
 linear capacitance beyond half the built-in potential (textbook form); reverse breakdown as a mirrored exponential.
-The exponential continues as its tangent above 38 slopes so that no iterate can overflow. ``p[at:]`` are the parameters
-of the junction.
+The exponential continues as its tangent above 80 slopes so that no iterate can overflow; a working junction in the cold
+comes to more than 40. ``p[at:]`` are the parameters of the junction.
 """
 
 from __future__ import annotations
@@ -25,7 +25,7 @@ from .layout import (
     Floats,
 )
 
-TOP = 38.0
+TOP = 80.0
 EXP_TOP = math.exp(TOP)
 FLOOR = -40.0
 CONDUCTING = 14.0  # slopes below its knee a junction conducts half a microsiemens

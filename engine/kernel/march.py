@@ -42,6 +42,7 @@ ERROR_END = 2.0 * A / 3.0
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
 FIRST = 1e-10  # s, the first step after it
 SMALLEST = 1e-16  # s
+GLANCES = 12  # looks at the start until junctions, limited in each, have their charges at any sensible voltage
 
 
 @leaf
@@ -188,7 +189,9 @@ def march_lane(
             if fresh:
                 # What the signals are before anything happens.
                 set_switches(program.switched, switch, 0.0, p)
-                evaluate(element, group, p, source, linear, 0.0, x0, i0, q0, a, seen, flow)
+                for _ in range(GLANCES):
+                    if evaluate(element, group, p, source, linear, 0.0, x0, i0, q0, a, seen, flow) < math.inf:
+                        break
                 read_signals(element, group, rows.term, rows.factor, rows.signal, p, x0, flow, s0)
                 if tracing:
                     copy(x0, results.trace_value[0])
@@ -292,12 +295,11 @@ def march_lane(
                 # The first step after a jump is not judged: what a step of 1 ps leaves in the last digits of a large
                 # charge counts as a current there, and shorter steps would only make it larger.
                 factor_h = max(factor_h, 1.0)
-            elif error > 1.0:
+            elif error > 1.0 and h > JUMP:
+                # Nothing here is quicker than a picosecond but a junction that has lost its last charge.
                 counts[1] += 1
                 copy(seen0, seen)
-                h *= max(0.1, factor_h)
-                if h < SMALLEST:
-                    return UNSOLVED, worst, base + t
+                h = max(h * max(0.1, factor_h), JUMP)
                 continue
 
             read_signals(element, group, rows.term, rows.factor, rows.signal, p, x1, flow, s1)
@@ -320,7 +322,8 @@ def march_lane(
             if stop_row >= 0 and status[stop_row] == SEEN:
                 close_rows(row, status)
                 return STOPPED, 0, base + t
-            h = max(h * min(3.0, factor_h), min(asked, 3.0 * h)) if h < asked else h * min(3.0, factor_h)
+            wanted = h * min(3.0, factor_h)
+            h = max(wanted, JUMP) if h == asked else max(wanted, min(asked, 3.0 * h), JUMP)
         base += span
     close_rows(row, status)
     return DONE, 0, base
