@@ -1,0 +1,86 @@
+"""A run that goes on from the end of another, as every trial does: nothing may move that did not move before."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+
+from stagebook.engine.circuit.timeline import Timeline
+from stagebook.engine.primitives.signals import Anchor, crossing, level, maximum, minimum, voltage
+from stagebook.engine.run import run
+
+from .circuits import Setup, capacitor, resistor, setup, transistor, two
+
+LAW = {
+    "saturation_current": "1e-14 A",
+    "forward_gain": 100,
+    "forward_transit_time": "1 us",
+    "base_emitter_capacitance": "50 pF",
+    "base_collector_capacitance": "20 pF",
+}
+
+
+@pytest.mark.parametrize("ohms", ["10k", "50R", "0R5"])
+def test_a_circuit_at_rest_stays_at_rest(ohms: str) -> None:
+    # Also with tens of amperes, where junctions are limited before they come to their own voltage.
+    circuit = setup(
+        resistor("R1", "supply", "b", ohms),
+        resistor("R2", "supply", "c", ohms),
+        resistor("R3", "supply", "d", ohms),
+        transistor("Q1", "c", "b", "0V", law=LAW),
+        two("diode", "D1", "d", "0V", law={"saturation_current": "1e-14 A", "transit_time": "1 us"}),
+        capacitor("C1", "b", "0V", "1 uF"),
+        supply="9 V",
+        ends=2e-3,
+    )
+    settled = circuit.run()
+    lanes = circuit.lanes()
+    line = Timeline(circuit.circuit, lanes)
+    line.supply_stands()
+    rows = {net: (minimum(voltage(net)), maximum(voltage(net))) for net in ("b", "c", "d")}
+    after = run(
+        circuit.circuit, lanes, line.program(1e-3), [r for pair in rows.values() for r in pair], start=settled.final
+    )
+    for net, (lowest, highest) in rows.items():
+        before = settled.final[0, circuit.circuit.index(net)]
+        assert after.value(lowest)[0] == pytest.approx(before, rel=1e-5, abs=1e-5)
+        assert after.value(highest)[0] == pytest.approx(before, rel=1e-5, abs=1e-5)
+
+
+def test_two_halves_are_the_whole() -> None:
+    def timer(ends: float) -> Setup:
+        return setup(
+            resistor("R1", "supply", "t", "1M"),
+            capacitor("C1", "t", "0V", "1 uF"),
+            resistor("R2", "t", "b", "470k"),
+            transistor("Q1", "c", "b", "0V", law=LAW),
+            resistor("R3", "supply", "c", "10k"),
+            supply="9 V",
+            ends=ends,
+            roles={"timing_capacitor": "C1"},
+        )
+
+    falls = crossing(voltage("c"), 4.5, rising=False)
+    whole = timer(2.0)
+    exact = whole.run(falls, relative=1e-5)
+    assert exact.seen(falls)[0]
+    half = 0.5 * float(exact.value(falls)[0])
+    first = timer(half).run(relative=1e-5)
+    lanes = whole.lanes()
+    line = Timeline(whole.circuit, lanes)
+    line.supply_stands()
+    second = run(whole.circuit, lanes, line.program(2.0 - half), [falls], start=first.final, relative=1e-5)
+    assert half + second.value(falls)[0] == pytest.approx(exact.value(falls)[0], rel=1e-4)
+    assert second.final == pytest.approx(exact.final, abs=1e-3)
+
+
+def test_the_first_level_is_that_of_the_start() -> None:
+    circuit = setup(
+        resistor("R1", "supply", "t", "1k"),
+        capacitor("C1", "t", "0V", "1 uF"),
+        supply="9 V",
+        starts={"t": "2 V"},
+        ends=1e-2,
+    )
+    at_once = level(voltage("t"), Anchor(0.0))
+    assert circuit.run(at_once).value(at_once) == pytest.approx(np.array([2.0]), abs=1e-12)
