@@ -100,9 +100,17 @@ ACTIONS: tuple[Action, ...] = (
 )
 
 
+_DIALOGS = {"question", "form", "pick", "waiting", "entry"}
+
+
 def of(where: str) -> tuple[Action, ...]:
     """The actions of one screen or widget, in the order of the registry."""
     return tuple(action for action in ACTIONS if action.where == where)
+
+
+def with_help(where: str) -> tuple[Action, ...]:
+    """The same, and on a full screen those that every full screen has."""
+    return of(where) if where in _DIALOGS else (*of(where), *of("app"))
 
 
 def bindings(where: str) -> list[BindingType]:

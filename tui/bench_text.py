@@ -99,7 +99,7 @@ class MarginColumns:
         return cls(max(6, rest - corner), difference, corner)
 
 
-_NOMINAL, _WORST, _WAS = 7, 7, 6
+_NOMINAL, _WORST, _WAS = 7, 7, 5
 
 
 def margin_heading(width: int, all_stages: bool, base: int | None) -> Line:

@@ -143,3 +143,13 @@ async def test_progress_comes_at_most_ten_times_a_second(shelf: Store, gates: Ga
         app.computing.study(shelf.draft("flood").design, posted.append)
         await settled(pilot)
     assert 1 <= len([message for message in posted if not isinstance(message, SolverPreparing)]) <= 20
+
+
+async def test_a_long_refusal_is_shown_to_its_end(app: StagebookApp, shelf: Store, gates: Gates) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("enter")
+        gates.refusal = "stage timer, part R7, field value: " + "nothing fits here " * 6 + "write it like 4k7"
+        await pilot.press("full_stop")
+        await settled(pilot)
+        assert "write it like 4k7" in seen(pilot)

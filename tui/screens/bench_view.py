@@ -52,6 +52,7 @@ class BenchView(Page[None]):
         self._progress = ""
         self._stage = 0
         self._hands: dict[str, str] = {}
+        self._watched: str | None = None
 
     def compose_body(self) -> ComposeResult:
         """Heading, chain, parts beside margins, the hand."""
@@ -133,7 +134,10 @@ class BenchView(Page[None]):
         self.parts.show(part_rows(stage, changed) if stage else [], part_heading(stage), ref)
         width = self.margins.size.width
         found = self.figures.rows(None if everywhere or stage is None else stage.name)
-        self.margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base))
+        # The hand stays on a margin that was chosen; else it lies on the first, where what got worse stands.
+        names = [row.check.id for row in found]
+        watched = self._watched if self._watched in names else next(iter(names), None)
+        self.margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base), watched)
         self.query_one("#worse", Rule).say(*worse_words(self.figures, base))
         self._show_hand()
 
@@ -156,9 +160,10 @@ class BenchView(Page[None]):
 
     def on_row_list_moved(self, event: RowList.Moved) -> None:
         """The hand stands on another part or margin."""
-        if event.rows is self.margins and self.has_class("-all") and self.chosen is not None:
+        if event.rows is self.margins:
+            self._watched = event.key
             names = [stage.name for stage in self.design.stages]
-            if self.chosen.check.stage in names:
+            if self.has_class("-all") and self.chosen is not None and self.chosen.check.stage in names:
                 self._go_to(names.index(self.chosen.check.stage))
         self._show_hand()
 

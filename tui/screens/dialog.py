@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
+from textwrap import wrap
 from typing import ClassVar
 
 from textual.app import ComposeResult
@@ -13,7 +14,7 @@ from textual.screen import ModalScreen
 from textual.widgets import Input
 
 from ..actions import bindings
-from ..shown import Line, Span, line
+from ..shown import Line, Span, line, visible
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
@@ -28,14 +29,17 @@ class Ask(ModalScreen[bool]):
 
     def __init__(self, question: str, *details: str) -> None:
         super().__init__()
-        self._text = (line(Span(f" {question}", "strong")), *(line(f" {detail}") for detail in details))
+        self._question = line(Span(f" {question}", "strong"))
+        self._details = details
 
     def compose(self) -> ComposeResult:
         """The question at the foot of the screen."""
+        width = max(10, self.app.size.width - 2)
+        details = [line(f" {piece}") for detail in self._details for piece in wrap(visible(detail), width)]
         with Vertical(classes="dialog"):
             yield Rule()
-            asked = Lines(*self._text)
-            asked.styles.height = len(self._text)
+            asked = Lines(self._question, *details)
+            asked.styles.height = 1 + len(details)
             yield asked
             yield KeyLine("question")
 

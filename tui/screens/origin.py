@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+from textwrap import wrap
 from typing import ClassVar
 
 from textual.app import ComposeResult
@@ -11,7 +13,8 @@ from ...engine.errors import QuantityError
 from ...engine.quantity import write
 from ...engine.results import CheckResult
 from ..actions import bindings
-from ..shown import TONES, Span, line, percent, verdict_words
+from ..bench_text import check_name
+from ..shown import TONES, Span, fit, line, percent, verdict_words, visible
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
@@ -35,16 +38,26 @@ class OriginPage(Page[None]):
         yield Rule()
         yield RowList(id="quantities")
 
-    def on_mount(self) -> None:
-        """Shows them."""
+    def on_resize(self) -> None:
+        """Shows them, wrapped to the width there is."""
         check = self._check
-        title = f" {check.title} {check.part}, stage {check.stage}, in {self._source}"
+        title = f" {check_name(check)}, stage {check.stage}, in {self._source}"
         self.query_one("#title", Lines).show(line(Span(title, "strong")))
-        rows = [
-            Row(str(at), line(Span(f"{name:<14}", "strong"), Span(text, tone)))
-            for at, (name, text, tone) in enumerate(origin_rows(check, self._worst_known))
-        ]
-        self.query_one(RowList).show(rows)
+        shown = self.query_one(RowList)
+        shown.show(wrapped(origin_rows(check, self._worst_known), self.size.width - 2))
+
+
+_LABEL = 20
+
+
+def wrapped(rows: Sequence[tuple[str, str, str]], width: int) -> list[Row]:
+    """Name and text side by side; what is longer than the width goes on below."""
+    found: list[Row] = []
+    for name, text, tone in rows:
+        for at, piece in enumerate(wrap(visible(text), max(10, width - _LABEL)) or [""]):
+            label = Span(fit(name if at == 0 else "", _LABEL), "strong")
+            found.append(Row(str(len(found)), line(label, Span(piece, tone))))
+    return found
 
 
 def origin_rows(check: CheckResult, worst_known: bool) -> list[tuple[str, str, str]]:

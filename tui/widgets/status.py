@@ -3,29 +3,52 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from textwrap import wrap
 
 from rich.cells import cell_len
 
-from ..actions import Action, of
-from ..shown import Line, Span, line
+from ..actions import Action, with_help
+from ..shown import Line, Span, visible
 from .lines import Lines
+
+_MOST_LINES = 4
 
 
 class Notice(Lines):
-    """The newest notice, one line. It stays until something newer is said."""
+    """The newest notice, one line, or as many as a long one needs. It stays until something newer is said."""
+
+    def __init__(self, id: str | None = None) -> None:
+        super().__init__(id=id)
+        self._said = ""
+        self._mark = Span("")
 
     def say(self, text: str) -> None:
         """Something to know."""
-        self.show(line(" " + text))
+        self._tell(text, Span(" "))
 
     def refuse(self, text: str) -> None:
         """Something that was not done, with its reason."""
-        self.show(line(Span(" X ", "fail"), text))
+        self._tell(text, Span(" X ", "fail"))
 
     @property
     def text(self) -> str:
-        """What is said."""
-        return "".join(span.text for shown in self.lines for span in shown).strip()
+        """What is said, with its mark."""
+        return f"{self._mark.text}{self._said}".strip()
+
+    def on_resize(self) -> None:
+        """Another width: other lines."""
+        self._draw()
+
+    def _tell(self, text: str, mark: Span) -> None:
+        self._said, self._mark = text, mark
+        self._draw()
+
+    def _draw(self) -> None:
+        width = max(10, self.screen.size.width - cell_len(self._mark.text) - 1)
+        pieces = wrap(visible(self._said), width)[:_MOST_LINES] or [""]
+        indent = Span(" " * cell_len(self._mark.text))
+        self.styles.height = len(pieces)
+        self.show(*((self._mark if at == 0 else indent, Span(piece)) for at, piece in enumerate(pieces)))
 
 
 class KeyLine(Lines):
@@ -46,7 +69,7 @@ class KeyLine(Lines):
 
     def _draw(self) -> None:
         if self.size.width:
-            self.show(key_line((*of(self._where), *of("app")), self.size.width))
+            self.show(key_line(with_help(self._where), self.size.width))
 
 
 def key_line(actions: Sequence[Action], width: int) -> Line:
