@@ -13,7 +13,7 @@ from ..engine.results import CheckResult, Depth, MarginSheet
 from ..storage.values import Draft
 from .chain_picture import Link
 from .figures import FigureRow, Figures
-from .shown import MARKS, TONES, WORDS, Line, Span, columns, figure, fit, fit_right, line, percent, visible
+from .shown import MARKS, TONES, WORDS, Line, Span, columns, figure, fit, fit_right, line, percent, points, visible
 from .widgets.row_list import Row
 
 _ROOMY = 60
@@ -123,19 +123,19 @@ def _margin_row(row: FigureRow, cells: MarginColumns, all_stages: bool) -> Line:
     check = row.check
     old = "dim" if row.worst_old else ""
     tone = old or TONES[check.verdict]
-    mark = (MARKS[check.verdict] if row.worst_known else " ") + ("<" if row.worse else " ")
+    mark = (MARKS[check.verdict] if row.worst_known else " ") + ("<" if row.against.worse else " ")
     worst = figure(check.margin, check.outcome, _WORST - 1) if row.worst_known else ""
     before = "-" if row.before is None else figure(row.before.margin, row.before.outcome, _WAS)
     spans = [
-        Span(mark, old or ("fail" if row.worse else tone)),
+        Span(mark, old or ("fail" if row.against.worse else tone)),
         Span(name_cell(check, cells.title, all_stages) + " "),
         Span(fit_right(percent(row.nominal) + _age(row.nominal_old), _NOMINAL) + " ", "dim" if row.nominal_old else ""),
         Span(fit_right(worst + _age(row.worst_old), _WORST) + " ", tone),
         Span(fit_right(before, _WAS) + " "),
     ]
     if cells.difference:
-        change = "" if row.difference is None else percent(row.difference)
-        spans.append(Span(fit_right(change, cells.difference) + " ", old or ("fail" if row.worse else "")))
+        change = "" if row.against.change is None else points(row.against.change)
+        spans.append(Span(fit_right(change, cells.difference) + " ", old or ("fail" if row.against.worse else "")))
     return (*spans, Span(fit(check.corner if row.worst_known else "", cells.corner), old))
 
 
@@ -200,11 +200,11 @@ def worse_words(figures: Figures, base: int | None) -> tuple[str, str]:
         return "", ""
     if figures.worst is None or figures.worst_old:
         return "~", "dim"
-    worse = [row for row in figures.rows() if row.worse]
+    worse = [row for row in figures.rows() if row.against.worse]
     if not worse:
         return f"nothing is worse than in r{base}", ""
     row = worse[0]
     name = check_name(row.check)
-    change = "" if row.difference is None else f" {percent(row.difference)}"
+    change = "" if row.against.change is None else f" {points(row.against.change)}"
     more = f", {len(worse) - 1} more" if len(worse) > 1 else ""
     return f"worse than r{base}: {name}{change} ({row.check.stage}){more}", "fail"

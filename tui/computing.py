@@ -11,6 +11,7 @@ from textual.message import Message
 from ..engine.design.document import Design
 from ..engine.errors import Cancelled, EngineError
 from ..engine.results import MarginSheet
+from ..engine.studies.comparison import Side
 from .background import LatestOnly
 from .messages import (
     CausesArrived,
@@ -89,8 +90,8 @@ class Computing:
         self._margins.submit(job)
         return request
 
-    def causes(self, old: Design, new: Design, post: Post) -> int:
-        """Begins computing what caused the changes between two designs; an older such question stops."""
+    def causes(self, old: Side, new: Side, post: Post) -> int:
+        """Begins computing what caused the changes between two sides; an older such question stops."""
         self._requests += 1
         request = self._requests
 
@@ -98,8 +99,10 @@ class Computing:
             progress = self._throttled(lambda done, total: CausesProgress(request, done, total), stale, post)
             try:
                 if self._prepared(stale, post):
-                    shares = self._solver.causes(old, new, progress=progress, cancelled=stale)
-                    post(CausesArrived(request, shares))
+                    found = self._solver.causes(
+                        old.design, new.design, stored=old.sheet, progress=progress, cancelled=stale
+                    )
+                    post(CausesArrived(request, found))
             except Cancelled:
                 return
             except Exception as error:

@@ -5,9 +5,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
-from ..engine.results import CheckResult, Depth, MarginSheet, Verdict
-
-_RANK = {Verdict.FAIL: 0, Verdict.UNKNOWN: 1, Verdict.THIN: 2, Verdict.PASS: 3}
+from ..engine.results import CheckResult, Depth, MarginSheet
+from ..engine.studies.comparison import Against
 
 
 @dataclass(frozen=True, slots=True)
@@ -26,21 +25,14 @@ class FigureRow:
     before: CheckResult | None
 
     @property
-    def difference(self) -> float | None:
-        """Worst margin now less the one before; None where either is missing."""
-        if not self.worst_known or self.before is None:
-            return None
-        if self.before.margin is None or self.check.margin is None:
-            return None
-        return self.check.margin - self.before.margin
+    def against(self) -> Against:
+        """The worst margin beside the one before."""
+        return Against(self.before, self.check if self.worst_known else None)
 
     @property
-    def worse(self) -> bool:
-        """Whether the verdict fell, or the margin by more than half a percent."""
-        if not self.worst_known or self.before is None:
-            return False
-        fell = _RANK[self.check.verdict] < _RANK[self.before.verdict]
-        return fell or (self.difference is not None and self.difference < -0.005)
+    def order(self) -> tuple[int, float]:
+        """What got worse first, then by least slack; a margin whose worst corner is not known stands above."""
+        return self.against.order if self.worst_known else (2, -3.0)
 
 
 @dataclass(frozen=True, slots=True)
@@ -121,15 +113,8 @@ class Figures:
                     before=before.get(name),
                 )
             )
-        return tuple(sorted(rows, key=_order))
+        return tuple(sorted(rows, key=lambda row: row.order))
 
 
 def _by_id(sheet: MarginSheet | None) -> Mapping[str, CheckResult]:
     return {} if sheet is None else {check.id: check for check in sheet.checks}
-
-
-def _order(row: FigureRow) -> tuple[int, float, float]:
-    if not row.worse:
-        return (2, row.check.slack if row.worst_known else -3.0, 0.0)
-    flipped = row.before is not None and row.check.verdict is not row.before.verdict
-    return (0 if flipped else 1, row.difference or -2.0, row.check.slack)

@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 from textual.message import Message
 
 from ..engine.results import MarginSheet
-from .solver import Shares
+
+if TYPE_CHECKING:
+    from ..engine.studies.causes import CausesSheet
 
 
 @dataclass
@@ -54,10 +57,10 @@ class CausesProgress(Message):
 
 @dataclass
 class CausesArrived(Message):
-    """The shares of every margin's change, by the check's id."""
+    """What caused every change of margin."""
 
     request: int
-    shares: Shares
+    causes: CausesSheet
 
 
 @dataclass

@@ -90,6 +90,11 @@ def percent(margin: float | None) -> str:
     return f"{floor(margin * 100 + 1e-9):+d}"
 
 
+def points(change: float) -> str:
+    """A difference of margins in whole percent with its sign."""
+    return f"{round(change * 100):+d}"
+
+
 def words_in(text: str, width: int) -> str:
     """As many whole words of the text as fit into ``width`` cells, at least the cut first one."""
     taken = ""

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Any, Protocol
+from typing import TYPE_CHECKING, Any, Protocol
 
 from ..engine.design.document import Design
 from ..engine.results import MarginSheet
+
+if TYPE_CHECKING:
+    from ..engine.studies.causes import CausesSheet
 
 Cancelled = Callable[[], bool]
 Progress = Callable[[int, int], None]
@@ -28,24 +31,13 @@ class Study(Protocol):
         """The deepest sheet. Raises EngineError with one line, Cancelled when asked to stop."""
 
 
-@dataclass(frozen=True, slots=True)
-class Share:
-    """What one check's margin changed by, and how much of it each changed part accounts for."""
-
-    before: float
-    after: float
-    shares: Mapping[str, float]
-    interaction: float
-
-
-Shares = Mapping[str, Share]
-
-
 class Causes(Protocol):
-    """The shares of every check's change between two designs, by the check's id."""
+    """What caused every change of margin between two designs."""
 
-    def __call__(self, old: Design, new: Design, *, progress: Progress, cancelled: Cancelled) -> Shares:
-        """The shares. Raises EngineError with one line, Cancelled when asked to stop."""
+    def __call__(
+        self, old: Design, new: Design, *, stored: MarginSheet, progress: Progress, cancelled: Cancelled
+    ) -> CausesSheet:
+        """The shares; ``stored`` are the margins kept with the old design. Raises EngineError or Cancelled."""
 
 
 class Preparation(Protocol):
@@ -73,14 +65,10 @@ def _study(design: Design, **how: Any) -> MarginSheet:
     return study(design, **how)
 
 
-def _causes(old: Design, new: Design, *, progress: Progress, cancelled: Cancelled) -> Shares:
+def _causes(old: Design, new: Design, **how: Any) -> CausesSheet:
     from ..engine.studies.causes import causes
 
-    sheet = causes(old, new, progress=progress, cancelled=cancelled)
-    return {
-        check["id"]: Share(check["before"], check["after"], check["shares"], check["interaction"])
-        for check in sheet.as_json()["checks"]
-    }
+    return causes(old, new, **how)
 
 
 def own_solver() -> Solver:

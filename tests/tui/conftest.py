@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import asyncio
 import threading
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
@@ -17,8 +17,9 @@ from stagebook.engine.design.document import Design
 from stagebook.engine.errors import Cancelled, CircuitError
 from stagebook.engine.quantity import read
 from stagebook.engine.results import CheckResult, Depth, MarginSheet, Spread
+from stagebook.engine.studies.causes import Cause, CausesSheet
 from stagebook.storage import Note, Store
-from stagebook.tui.solver import Share, Solver
+from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 
 from .sheets import check, verdict_of
@@ -124,22 +125,21 @@ class Gates:
         old: Design,
         new: Design,
         *,
+        stored: MarginSheet,
         progress: Callable[[int, int], None],
         cancelled: Callable[[], bool],
-    ) -> Mapping[str, Share]:
+    ) -> CausesSheet:
         self._wait(self.causes, cancelled, new)
         before, after = _margins(old), _margins(new)
         changed = [change.what for change in differences(old, new)]
-        return {
-            name: Share(
-                before[name][1],
-                after[name][1],
-                {what: (after[name][1] - before[name][1]) * (what in name) for what in changed},
-                0.0,
-            )
-            for name in after
-            if name in before
-        }
+        found = []
+        for name in (name for name in after if name in before):
+            was, now = before[name][1], after[name][1]
+            shares = {what: (now - was) * name.endswith(f":{what}") for what in changed}
+            found.append(Cause(name, was, now, shares, 0.0, {}, {}, None, None))
+        gone = tuple(name for name in before if name not in after)
+        come = tuple(name for name in after if name not in before)
+        return CausesSheet(new.name, tuple(changed), tuple(found), come, gone, ())
 
     def _wait(self, gate: threading.Event, cancelled: Callable[[], bool], design: Design) -> None:
         while not gate.wait(0.005):

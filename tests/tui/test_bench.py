@@ -136,7 +136,7 @@ async def test_figures_being_computed_are_marked_and_stay(app: StagebookApp, gat
         gates.open()
         await settled(pilot)
         first = bench.figures.rows("timer")[0]
-        assert (first.check.part, first.worse, first.worst_old) == ("R7", True, False)
+        assert (first.check.part, first.against.worse, first.worst_old) == ("R7", True, False)
         assert "worse than r2: arrival R7" in seen(pilot)
         assert "X never" in seen(pilot)
 

@@ -34,9 +34,9 @@ def test_what_got_worse_comes_first() -> None:
     figures = known().edited().arrived(AFTER)
     first, second = figures.rows("timer")
     assert first.check.id == "arrival:timer:C4"
-    assert first.worse
-    assert first.difference == -1.3
-    assert not second.worse
+    assert first.against.worse
+    assert first.against.change == -1.3
+    assert not second.against.worse
 
 
 def test_frozen_figures_arrive_when_they_are_thawed() -> None:

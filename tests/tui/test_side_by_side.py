@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 from stagebook.engine.design.document import Design
+from stagebook.engine.studies.causes import Cause, CausesSheet
+from stagebook.engine.studies.comparison import Side, compare
 from stagebook.tui.shown import plain
-from stagebook.tui.side_by_side import Column, causes_line, columns_in_sight, order, verdict_lines
-from stagebook.tui.solver import Share
+from stagebook.tui.side_by_side import causes_line, columns_in_sight, compare_rows, side_lines
 
 from .conftest import document
 from .sheets import check, sheet
@@ -13,25 +14,40 @@ from .sheets import check, sheet
 DESIGN = Design.load(document())
 OLD = {"a:s:R1": 0.5, "b:s:R2": 0.5, "c:s:R3": 0.2, "d:s:R4": 0.3}
 NEW = {"a:s:R1": 0.3, "b:s:R2": 0.6, "c:s:R3": 0.05, "e:s:R5": 0.4}
-BEFORE = Column("r1", sheet(*(check(name, margin) for name, margin in OLD.items())), DESIGN)
-AFTER = Column("r2", sheet(*(check(name, margin) for name, margin in NEW.items())), DESIGN)
+BEFORE = Side("r1", sheet(*(check(name, margin) for name, margin in OLD.items())), DESIGN)
+AFTER = Side("r2", sheet(*(check(name, margin) for name, margin in NEW.items())), DESIGN)
 
 
-def test_fallen_verdicts_come_before_losses_before_the_rest_by_slack() -> None:
-    # c falls from pass to thin, a loses most, d and e stand on one side only, b gained.
-    assert order([BEFORE, AFTER], 1) == ["c:s:R3", "a:s:R1", "d:s:R4", "e:s:R5", "b:s:R2"]
+def test_rows_keep_the_order_of_the_comparison_and_show_the_difference() -> None:
+    rows = compare_rows(compare([BEFORE, AFTER], 1), [BEFORE, AFTER], [0, 1], 20)
+    assert [row.key for row in rows[:2]] == ["c:s:R3", "a:s:R1"]
+    assert plain(rows[0].spans).split() == ["c", "R3", "(timer)", "=", "+20", "!", "+5", "-15"]
 
 
 def test_a_check_on_one_side_only_is_said_so() -> None:
-    first, second = verdict_lines([BEFORE, AFTER], 1, "e:s:R5")
+    first, second = side_lines(compare([BEFORE, AFTER], 1), 1, "e:s:R5")
     assert "does not have this check" in plain(first)
     assert "+40 pass" in plain(second)
 
 
+def causes(**more: object) -> CausesSheet:
+    known = {"shares": {"C4": -0.05, "R8": -0.32}, "interaction": -0.02, "error": None, "formula": None, **more}
+    cause = Cause("a:s:R1", 0.4, 0.03, alone={}, reverted={}, **known)  # type: ignore[arg-type]
+    return CausesSheet("flood", ("C4", "R8"), (cause,), ("new:s:R9",), (), ("dark:s:R3",))
+
+
 def test_causes_are_listed_from_the_largest_with_what_they_do_together() -> None:
-    share = Share(before=0.4, after=0.03, shares={"C4": -0.05, "R8": -0.32}, interaction=-0.02)
-    assert plain(causes_line(share)) == " causes: R8 -32   C4 -5   together -2"
-    assert "one side only" in plain(causes_line(None))
+    assert plain(causes_line(causes(), "a:s:R1")) == " causes: R8 -32   C4 -5   (together -2)"
+
+
+def test_sampled_causes_carry_their_error_and_newer_formulas_stand_apart() -> None:
+    said = plain(causes_line(causes(error={"C4": 0.01, "R8": 0.02}, formula=0.03), "a:s:R1"))
+    assert said == " causes: R8 -32 (+/-2)   C4 -5 (+/-1)   newer formulas +3   (together -2)"
+
+
+def test_a_check_without_causes_says_why() -> None:
+    assert "one side only" in plain(causes_line(causes(), "new:s:R9"))
+    assert "unknown" in plain(causes_line(causes(), "dark:s:R3"))
 
 
 def test_the_first_column_stays_in_sight_beside_the_chosen_one() -> None:

@@ -9,10 +9,10 @@ from textual import events
 from ...engine import edit
 from ...engine.design.document import Design
 from ...engine.results import Depth, MarginSheet
+from ...engine.studies.comparison import Side
 from ...storage.values import Revision
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
-from ..side_by_side import Column
 from ..widgets.row_list import RowList
 from ..widgets.status import KeyLine
 from ..widgets.value_entry import ValueEntry
@@ -222,8 +222,8 @@ class BenchScreen(BenchView):
         elif sheet is None or sheet.depth is Depth.NOMINAL:
             self.refuse("the draft's corners are still being computed; c again when they are known")
         else:
-            columns = [Column(f"r{base.number}", base.sheet, base.design), Column("draft", sheet, self.design)]
-            self.app.push_screen(CompareScreen(self.drafting.name, columns, self.computing))
+            sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
+            self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
 
     def action_history(self) -> None:
         """The revisions of this design."""

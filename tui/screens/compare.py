@@ -3,31 +3,26 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
 from textual.binding import BindingType
 
-from ...engine.design.differences import differences
+from ...engine.studies.comparison import Comparison, Side, compare
 from ..actions import bindings
 from ..computing import Computing
 from ..drafting import changes_words, incomplete
 from ..messages import CausesArrived, CausesProgress, CausesRefused, SolverPreparing
 from ..shown import Line, Span, line
-from ..side_by_side import (
-    Column,
-    causes_line,
-    columns_in_sight,
-    compare_heading,
-    compare_rows,
-    verdict_lines,
-)
-from ..solver import Shares
+from ..side_by_side import causes_line, columns_in_sight, compare_heading, compare_rows, side_lines
 from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
 from ..widgets.rule import Rule
 from .origin import OriginPage
 from .page import Page
+
+if TYPE_CHECKING:
+    from ...engine.studies.causes import CausesSheet
 
 
 class CompareScreen(Page[None]):
@@ -36,13 +31,14 @@ class CompareScreen(Page[None]):
     WHERE = "compare"
     BINDINGS: ClassVar[list[BindingType]] = bindings("compare")
 
-    def __init__(self, design: str, columns: Sequence[Column], computing: Computing) -> None:
+    def __init__(self, design: str, sides: Sequence[Side], computing: Computing) -> None:
         super().__init__()
         self._design = design
-        self._columns = tuple(columns)
-        self._chosen = len(columns) - 1
+        self._sides = tuple(sides)
+        self._chosen = len(sides) - 1
         self._computing = computing
-        self._shares: dict[int, Shares] = {}
+        self._compared: Comparison = compare(self._sides, self._chosen)
+        self._causes: dict[int, CausesSheet] = {}
         self._refusals: dict[int, str] = {}
         self._request = 0
         self._progress = ""
@@ -69,28 +65,28 @@ class CompareScreen(Page[None]):
         self._computing.cancel_causes()
 
     def _ask(self) -> None:
-        if self._chosen not in self._shares and self._chosen not in self._refusals:
-            first, chosen = self._columns[0].design, self._columns[self._chosen].design
+        if self._chosen not in self._causes and self._chosen not in self._refusals:
+            first, chosen = self._sides[0], self._sides[self._chosen]
             self._progress = "being computed"
             self._request = self._computing.causes(first, chosen, self.post_message)
         self._show()
 
     def _show(self) -> None:
-        first, chosen = self._columns[0], self._columns[self._chosen]
-        title = f" {self._design}: {' | '.join(column.label for column in self._columns)}"
+        first, chosen = self._sides[0], self._sides[self._chosen]
+        title = f" {self._design}: {' | '.join(column.label for column in self._sides)}"
         note = f"   {first.label} > {chosen.label}"
         if incomplete(first.sheet) or incomplete(chosen.sheet):
             note += "   ~ saved before its worst corners were known"
         self.query_one("#title", Lines).show(line(Span(title, "strong"), note))
-        changed = changes_words(tuple(differences(first.design, chosen.design)))
+        changed = changes_words(self._compared.changed[self._chosen])
         self.query_one("#changed", Lines).show(line(f" {changed or 'no part differs'}"))
         rows = self.query_one(RowList)
         width = rows.size.width
-        title_width = max(10, min(34, width - 2 - 11 - 17 * min(2, len(self._columns) - 1)))
-        sight = columns_in_sight(len(self._columns), self._chosen, width, title_width)
+        title_width = max(10, min(34, width - 2 - 11 - 17 * min(2, len(self._sides) - 1)))
+        sight = columns_in_sight(len(self._sides), self._chosen, width, title_width)
         rows.show(
-            compare_rows(self._columns, sight, self._chosen, title_width),
-            compare_heading(self._columns, sight, self._chosen, title_width),
+            compare_rows(self._compared, self._sides, sight, title_width),
+            compare_heading(self._sides, sight, self._chosen, title_width),
         )
         self._show_hand()
 
@@ -100,13 +96,13 @@ class CompareScreen(Page[None]):
         if name is None:
             hand.show()
             return
-        hand.show(*verdict_lines(self._columns, self._chosen, name), self._causes(name))
+        hand.show(*side_lines(self._compared, self._chosen, name), self._causes_line(name))
 
-    def _causes(self, name: str) -> Line:
+    def _causes_line(self, name: str) -> Line:
         if self._chosen in self._refusals:
             return line(Span(" causes: ", "strong"), self._refusals[self._chosen])
-        if self._chosen in self._shares:
-            return causes_line(self._shares[self._chosen].get(name))
+        if self._chosen in self._causes:
+            return causes_line(self._causes[self._chosen], name)
         return line(Span(f" causes: ~ {self._progress}", "dim"))
 
     def on_row_list_moved(self) -> None:
@@ -122,7 +118,7 @@ class CompareScreen(Page[None]):
     def on_causes_arrived(self, event: CausesArrived) -> None:
         """Shares of every check."""
         if event.request == self._request:
-            self._shares[self._chosen] = event.shares
+            self._causes[self._chosen] = event.causes
             self._show_hand()
 
     def on_causes_refused(self, event: CausesRefused) -> None:
@@ -145,15 +141,16 @@ class CompareScreen(Page[None]):
         self._turn(1)
 
     def _turn(self, step: int) -> None:
-        there = max(1, min(self._chosen + step, len(self._columns) - 1))
+        there = max(1, min(self._chosen + step, len(self._sides) - 1))
         if there != self._chosen:
             self._chosen = there
+            self._compared = compare(self._sides, there)
             self._ask()
 
     def action_origin(self) -> None:
         """Where the chosen column's margin of this row comes from."""
         name = self.query_one(RowList).key
-        column = self._columns[self._chosen]
+        column = self._sides[self._chosen]
         for check in column.sheet.checks:
             if check.id == name:
                 self.app.push_screen(OriginPage(check, not incomplete(column.sheet), f"{self._design} {column.label}"))

@@ -7,13 +7,13 @@ from typing import ClassVar
 from textual.app import ComposeResult
 from textual.binding import BindingType
 
+from ...engine.studies.comparison import Side
 from ...storage.values import Revision
 from ..actions import bindings
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..history_text import check_names, history_heading, history_rows, revision_lines, revision_rows, tree
 from ..shown import Span, line
-from ..side_by_side import Column
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
@@ -122,10 +122,10 @@ class HistoryScreen(Page[bool]):
         if len(numbers) < 2:
             self.refuse("mark two revisions with space first; the first revision has no parent")
             return
-        columns = [
-            Column(f"r{number}", self._revisions[number].sheet, self._revisions[number].design) for number in numbers
+        sides = [
+            Side(f"r{number}", self._revisions[number].sheet, self._revisions[number].design) for number in numbers
         ]
-        self.app.push_screen(CompareScreen(self._drafting.name, columns, self._computing))
+        self.app.push_screen(CompareScreen(self._drafting.name, sides, self._computing))
 
     def action_branch(self) -> None:
         """Lets the draft go on from the chosen revision, after asking."""
