@@ -161,7 +161,7 @@ def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher
     pins = "  ".join(f"{pin} {net}" for pin, net in part.pins.items())
     data = [part.value, part.tolerance, part.rating if isinstance(part.rating, str) else None, part.class_]
     facts = "  ".join(text for text in data if text)
-    first = f" {part.ref}  {kind_words(part)}  {facts}   {role}   {pins}"
+    first = " " + "   ".join(filter(None, (part.ref, f"{kind_words(part)}  {facts}".strip(), role, pins)))
     known = []
     if was is not None and was != part.value:
         known.append(f"last was {was}")

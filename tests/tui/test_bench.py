@@ -353,3 +353,11 @@ async def test_every_screen_stands_any_size(app: StagebookApp, size: tuple[int, 
             await pilot.pause()
             assert len(shown(pilot)) == size[1]
             assert {len(text) for text in shown(pilot)} == {size[0]}
+
+
+async def test_comparing_an_unchanged_draft_asks_for_no_causes(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("c")
+        await settled(pilot)
+        assert "nothing was changed" in seen(pilot)

@@ -65,7 +65,8 @@ class CompareScreen(Page[None]):
         self._computing.cancel_causes()
 
     def _ask(self) -> None:
-        if self._chosen not in self._causes and self._chosen not in self._refusals:
+        known = self._chosen in self._causes or self._chosen in self._refusals
+        if not known and self._compared.changed[self._chosen]:
             first, chosen = self._sides[0], self._sides[self._chosen]
             self._progress = "being computed"
             self._request = self._computing.causes(first, chosen, self.post_message)
@@ -99,6 +100,8 @@ class CompareScreen(Page[None]):
         hand.show(*side_lines(self._compared, self._chosen, name), self._causes_line(name))
 
     def _causes_line(self, name: str) -> Line:
+        if not self._compared.changed[self._chosen]:
+            return line(Span(" causes: ", "strong"), "nothing was changed")
         if self._chosen in self._refusals:
             return line(Span(" causes: ", "strong"), self._refusals[self._chosen])
         if self._chosen in self._causes:
