@@ -115,7 +115,7 @@ def depletion(v: float, p: Floats, at: int) -> tuple[float, float]:
     half = 0.5 * potential
     u = min(v, half)
     s = 1.0 - u / potential
-    power = 1.0 / math.sqrt(s) if m == 0.5 else s ** (-m)
+    power = 1.0 / math.sqrt(s) if m == 0.5 else math.exp(-m * math.log(s))
     c = c0 * power
     q = c0 * potential / (1.0 - m) * (1.0 - s * power)
     if v > half:

@@ -30,7 +30,7 @@ from .layout import (
     Topology,
 )
 from .newton import ROUND_OFF, solve
-from .rows import GAMMA, close_rows, open_rows, read_signals, watch
+from .rows import GAMMA, close_rows, keep_signals, open_rows, watch
 
 A = 1.0 - 0.5 * math.sqrt(2.0)
 TO_STAGE = 1.0 / (GAMMA * (2.0 - GAMMA))
@@ -155,10 +155,12 @@ def march_lane(
     first, second, constant, tolerance, rhs = vectors[0], vectors[1], vectors[2], vectors[3], vectors[4]
     matrices = np.zeros((3, entries + 1))
     a, factors, linear = matrices[0], matrices[1], matrices[2]
-    devices = np.zeros((3, group[4] - group[3] + 2 * (group[5] - group[4])))
-    seen, seen0, flow = devices[0], devices[1], devices[2]
+    devices = np.zeros((5, group[4] - group[3] + 2 * (group[5] - group[4])))
+    seen, seen0, flow0, flow_g, flow = devices[0], devices[1], devices[2], devices[3], devices[4]
     signals = np.zeros((3, rows.signal.size - 1))
     s0, sg, s1 = signals[0], signals[1], signals[2]
+    read_at = np.zeros(rows.signal.size - 1, dtype=np.int64)
+    now = 1
     source = np.zeros(program.source.shape[2])
     window = np.zeros((row.shape[0], 2))
     diagonal = np.zeros(free, dtype=np.int64)
@@ -192,11 +194,12 @@ def march_lane(
                 for _ in range(GLANCES):
                     if evaluate(element, group, p, source, linear, 0.0, x0, i0, q0, a, seen, flow) < math.inf:
                         break
-                read_signals(element, group, rows.term, rows.factor, rows.signal, p, x0, flow, s0)
+                copy(flow, flow0)
                 if tracing:
                     copy(x0, results.trace_value[0])
                     results.trace_used[0] = 1
                 fresh = False
+            keep_signals(element, group, rows.term, rows.factor, rows.signal, p, x0, flow0, now, s1, read_at)
             set_switches(program.switched, switch, 0.0, p)
             linear_matrix(element, group, p, JUMP, linear)
             # The charges at the start are those of its voltages, whatever the sources did meanwhile.
@@ -215,8 +218,11 @@ def march_lane(
             counts[0] += 1
             counts[2] += used
             t = min(JUMP, 0.5 * span)
-            read_signals(element, group, rows.term, rows.factor, rows.signal, p, x1, flow, s1)
-            watch(row, rows.level, rows.offset, window, base, t, 0.0, s0, s1, s1, value, time, status)
+            now += 1
+            watch(
+                element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
+                x0, x1, x1, flow0, flow, flow, base, t, 0.0, now, s0, sg, s1, read_at, value, time, status,
+            )  # fmt: skip
             first[:] = 0.0
             second[:] = 0.0
             h = FIRST
@@ -224,7 +230,7 @@ def march_lane(
             copy(x1, x0)
             copy(i1, i0)
             copy(q1, q0)
-            copy(s1, s0)
+            copy(flow, flow0)
             copy(seen, seen0)
             if tracing:
                 n = results.trace_used[0]
@@ -262,7 +268,7 @@ def march_lane(
             )  # fmt: skip
             again = -1
             if used >= 0:
-                read_signals(element, group, rows.term, rows.factor, rows.signal, p, xg, flow, sg)
+                copy(flow, flow_g)
                 # End by the second backward difference, from the cubic through the parabola and the stage.
                 if moving:
                     set_switches(program.switched, switch, t + h, p)
@@ -302,13 +308,16 @@ def march_lane(
                 h = max(h * max(0.1, factor_h), JUMP)
                 continue
 
-            read_signals(element, group, rows.term, rows.factor, rows.signal, p, x1, flow, s1)
-            watch(row, rows.level, rows.offset, window, base + t, h, GAMMA, s0, sg, s1, value, time, status)
+            now += 1
+            watch(
+                element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
+                x0, xg, x1, flow0, flow_g, flow, base + t, h, GAMMA, now, s0, sg, s1, read_at, value, time, status,
+            )  # fmt: skip
             keep_parabola(x0, xg, x1, h, first, second)
             copy(x1, x0)
             copy(i1, i0)
             copy(q1, q0)
-            copy(s1, s0)
+            copy(flow, flow0)
             copy(seen, seen0)
             last = h
             t = span if h == left else t + h

@@ -44,7 +44,51 @@ GAMMA = 2.0 - math.sqrt(2.0)
 
 
 @leaf
-def read_signals(
+def read_signal(
+    element: Ints,
+    group: Ints,
+    term: Ints,
+    factor: Floats,
+    first: int,
+    last: int,
+    p: Floats,
+    x: Floats,
+    flow: Floats,
+) -> float:
+    """Return the sum of terms first .. last-1 at x, ``flow`` being the currents of junctions and transistors there."""
+    total = 0.0
+    for t in range(first, last):
+        kind = term[t, 0]
+        k = term[t, 1]
+        v = 0.0
+        if kind == S_UNKNOWN:
+            v = x[k]
+        elif kind == S_CONDUCTANCE_CURRENT or kind == S_CONDUCTANCE_POWER:
+            across = x[element[k, E_A]] - x[element[k, E_B]]
+            v = p[element[k, E_PARAMETER]] * across
+            if kind == S_CONDUCTANCE_POWER:
+                v *= across
+        elif kind == S_JUNCTION_CURRENT or kind == S_JUNCTION_POWER:
+            v = flow[k - group[JUNCTION]]
+            if kind == S_JUNCTION_POWER:
+                v *= x[element[k, E_A]] - x[element[k, E_B]]
+        else:
+            own = group[TRANSPORT] - group[JUNCTION] + 2 * (k - group[TRANSPORT])
+            ic = flow[own]
+            ib = flow[own + 1]
+            if kind == S_COLLECTOR_CURRENT:
+                v = ic
+            elif kind == S_BASE_CURRENT:
+                v = ib
+            else:
+                ve = x[element[k, E_C]]
+                v = ic * (x[element[k, E_A]] - ve) + ib * (x[element[k, E_B]] - ve)
+        total += factor[t] * v
+    return total
+
+
+@leaf
+def keep_signals(
     element: Ints,
     group: Ints,
     term: Ints,
@@ -53,39 +97,14 @@ def read_signals(
     p: Floats,
     x: Floats,
     flow: Floats,
-    out: Floats,
+    now: int,
+    end: Floats,
+    read_at: Ints,
 ) -> None:
-    """Set out to every signal at x, ``flow`` being the currents of junctions and transistors there."""
-    for s in range(signal.size - 1):
-        total = 0.0
-        for t in range(signal[s], signal[s + 1]):
-            kind = term[t, 0]
-            k = term[t, 1]
-            v = 0.0
-            if kind == S_UNKNOWN:
-                v = x[k]
-            elif kind == S_CONDUCTANCE_CURRENT or kind == S_CONDUCTANCE_POWER:
-                across = x[element[k, E_A]] - x[element[k, E_B]]
-                v = p[element[k, E_PARAMETER]] * across
-                if kind == S_CONDUCTANCE_POWER:
-                    v *= across
-            elif kind == S_JUNCTION_CURRENT or kind == S_JUNCTION_POWER:
-                v = flow[k - group[JUNCTION]]
-                if kind == S_JUNCTION_POWER:
-                    v *= x[element[k, E_A]] - x[element[k, E_B]]
-            else:
-                own = group[TRANSPORT] - group[JUNCTION] + 2 * (k - group[TRANSPORT])
-                ic = flow[own]
-                ib = flow[own + 1]
-                if kind == S_COLLECTOR_CURRENT:
-                    v = ic
-                elif kind == S_BASE_CURRENT:
-                    v = ib
-                else:
-                    ve = x[element[k, E_C]]
-                    v = ic * (x[element[k, E_A]] - ve) + ib * (x[element[k, E_B]] - ve)
-            total += factor[t] * v
-        out[s] = total
+    """Read all signals at the end of step ``now``, before an event changes what they are made of."""
+    for s in range(end.size):
+        end[s] = read_signal(element, group, term, factor, signal[s], signal[s + 1], p, x, flow)
+        read_at[s] = now
 
 
 @leaf
@@ -142,23 +161,37 @@ def open_rows(row: Ints, offset: Floats, window: Floats, value: Floats, time: Fl
 
 @leaf
 def watch(
+    element: Ints,
+    group: Ints,
+    term: Ints,
+    factor: Floats,
+    signal: Ints,
     row: Ints,
     level: Floats,
     offset: Floats,
     window: Floats,
+    p: Floats,
+    x0: Floats,
+    xg: Floats,
+    x1: Floats,
+    flow0: Floats,
+    flow_g: Floats,
+    flow1: Floats,
     begin: float,
     h: float,
     gamma: float,
+    now: int,
     start: Floats,
     stage: Floats,
     end: Floats,
+    read_at: Ints,
     value: Floats,
     time: Floats,
     status: Ints,
 ) -> None:
-    """Update every row of a lane with the step from ``begin`` to ``begin + h``; ``gamma`` 0 is a step without a stage.
+    """Update every row of a lane with step number ``now``, from ``begin`` to ``begin + h``; ``gamma`` 0: no stage.
 
-    ``start``, ``stage`` and ``end`` are the signals at the three points of the step.
+    A signal is read only where a row wants it: ``start``, ``stage`` and ``end`` keep it, ``read_at`` tells the step.
     """
     finish = begin + h
     for r in range(row.shape[0]):
@@ -169,16 +202,26 @@ def watch(
             if status[after] != SEEN:
                 continue
             window[r, 0] = time[after] + offset[r, 0]
+        if finish < window[r, 0]:
+            continue
         until = row[r, ROW_TO]
         if until >= 0 and window[r, 1] == math.inf and status[until] == SEEN:
             window[r, 1] = time[until] + offset[r, 1]
-        if finish < window[r, 0]:
-            continue
         if begin > window[r, 1]:
             if status[r] == OPEN:
                 status[r] = SEEN
             continue
         s = row[r, ROW_SIGNAL]
+        if read_at[s] != now:
+            first = signal[s]
+            last = signal[s + 1]
+            if read_at[s] == now - 1:
+                start[s] = end[s]
+            else:
+                start[s] = read_signal(element, group, term, factor, first, last, p, x0, flow0)
+            stage[s] = read_signal(element, group, term, factor, first, last, p, xg, flow_g)
+            end[s] = read_signal(element, group, term, factor, first, last, p, x1, flow1)
+            read_at[s] = now
         y0 = start[s]
         yg = stage[s]
         y1 = end[s]
