@@ -69,9 +69,7 @@ class Ask:
     """One margin of one design. ``rows`` are observed in each of ``sequences``; ``judge`` turns them into a margin.
 
     ``screen`` is the knob value of the trial at which the circuit must still hold for the required margin: what random
-    lanes are tried with. ``hint`` falls where the margin falls: it tells which end of a part's tolerance hurts where
-    the trial itself cannot, because the circuit never gives in. ``missing`` names the datum without which the check is
-    UNKNOWN; nothing is computed for it then.
+    lanes are tried with. ``missing`` names the datum without which the check is UNKNOWN; nothing is computed then.
     """
 
     check: Check
@@ -83,7 +81,6 @@ class Ask:
     rows: tuple[Row, ...] = ()
     trial: Trial | None = None
     screen: float | None = None
-    hint: Callable[[Seen], Floats] | None = None
     missing: str | None = None
 
     @property

@@ -14,7 +14,7 @@ from ..circuit.timeline import DEFAULT_RISE, Timeline
 from ..design.part import Part, Stage
 from ..design.sequence import ConnectSupply
 from ..kernel.layout import Floats
-from ..primitives.columns import SUPPLY
+from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, level, maximum, slew, voltage
 from ..quantity import read
 from ..run import Observed
@@ -61,6 +61,18 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
     def drive(line: Timeline, knob: Floats) -> None:
         line.connect_supply(SLOWEST - 1.0 / knob, 1.0 / knob)
 
+    lifts = tuple(maximum(forward_base_voltage(part)) for part in (npn, pnp))
+    turn_on = tuple(view.bench(part.ref).base_voltage for part in (npn, pnp))
+
+    def spare(lanes: Lanes, observed: Observed) -> Floats:
+        """How far the one that is lifted less stays below what turns it on: a latch trips when both conduct."""
+        left = [
+            law(lanes, TRIP_CURRENT) - observed.value(lift)
+            for lift, law in zip(lifts, turn_on, strict=True)
+            if law is not None
+        ]
+        return np.max(left, axis=0) if left else np.zeros(lanes.count)
+
     def gives_in(observed: Observed) -> Mask:
         return np.asarray(observed.value(probe) < 0.5 * observed.value(rail))
 
@@ -72,8 +84,9 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
         ends=SLOWEST + SETTLE,
         safe=1.0 / SLOWEST,
         severe=1.0 / FASTEST,
-        rows=(fastest, probe, rail),
+        rows=(fastest, probe, rail, *lifts),
         gives_in=gives_in,
+        spare=spare,
     )
 
     def judge(seen: Seen) -> Judged:
@@ -92,19 +105,7 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
         return Judged(margin, demand, judged.capability, outcomes=outcomes, hand=judged.hand)
 
     screen = 1.0 / (rise * (1.0 - required)) if required < 1.0 else None
-    lifts = tuple(maximum(forward_base_voltage(part), Anchor(at), Anchor(at + rise + SETTLE)) for part in (npn, pnp))
-    turn_on = tuple(view.bench(part.ref).base_voltage for part in (npn, pnp))
-
-    def hint(seen: Seen) -> Floats:
-        """How far the base-emitter junctions stay below what turns them on while the supply rises."""
-        spare = [
-            law(seen.lanes, TRIP_CURRENT) - seen.value(lift, sequence)
-            for lift, law in zip(lifts, turn_on, strict=True)
-            if law is not None
-        ]
-        return np.min(spare, axis=0) if spare else np.zeros(seen.lanes.count)
-
-    return Ask(check, stage.name, npn.ref, (sequence,), required, judge, (steepest, *lifts), trial, screen, hint)
+    return Ask(check, stage.name, npn.ref, (sequence,), required, judge, (steepest,), trial, screen)
 
 
 def _hand(view: View, stage: Stage, npn: Part, seen: Seen, demand: Floats) -> Floats | None:

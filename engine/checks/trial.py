@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from ..circuit.timeline import Timeline
 from ..kernel.layout import Floats
+from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row
 from ..run import Observed
 
@@ -23,7 +24,7 @@ class Trial:
     ``start`` is the instant of ``sequence`` from whose state the trial goes on, None from the empty circuit. ``drive``
     adds to a timeline what happens for one knob value per lane, until ``ends``; ``gives_in`` reads it off.
     ``resolution`` is the ratio of neighbouring knob values at which the search may stop. ``key`` names the trial:
-    checks that share it share its result.
+    checks that share it share its result. ``spare`` says how far from giving in a lane stayed that never did.
     """
 
     key: str
@@ -36,6 +37,7 @@ class Trial:
     rows: tuple[Row, ...]
     gives_in: Callable[[Observed], Mask]
     resolution: float = 1.03
+    spare: Callable[[Lanes, Observed], Floats] | None = None
 
 
 @dataclass(frozen=True)
@@ -43,7 +45,8 @@ class Edge:
     """Where the circuit gives in, per lane: the last knob value at which it held, and what the rows showed there.
 
     ``never``: it held at the severest value; ``always``: it gave in at the safest. ``missing``: the state to start
-    from never came. ``tried``: the lanes that were tried at all; the others hold NaN. ``values`` by ``Trial.rows``.
+    from never came. ``tried``: the lanes that were tried at all; the others hold NaN. ``spare``: the least of
+    ``Trial.spare`` over the knob values that were looked at. ``values`` by ``Trial.rows``.
     """
 
     knob: Floats
@@ -52,6 +55,7 @@ class Edge:
     always: Mask
     missing: Mask
     tried: Mask
+    spare: Floats
 
     def scattered(self, index: Sequence[int], count: int) -> Edge:
         """The same among ``count`` lanes of which only those in ``index`` were tried."""
@@ -68,5 +72,12 @@ class Edge:
             return found
 
         values = {row: spread(v) for row, v in self.values.items()}
-        masks = (marked(m) for m in (self.never, self.always, self.missing, np.ones(at.size, dtype=bool)))
-        return Edge(spread(self.knob), values, *masks)
+        return Edge(
+            spread(self.knob),
+            values,
+            marked(self.never),
+            marked(self.always),
+            marked(self.missing),
+            marked(self.tried),
+            spread(self.spare),
+        )

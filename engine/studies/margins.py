@@ -29,7 +29,7 @@ from .trials import TrialRun
 
 ENGINE = "1"
 """Version of laws and formulas, stored with every margin: it moves when the same document gives other numbers."""
-WORST_CONDITIONS = 2  # corners of the conditions that are tried with part tolerances
+WORST_CONDITIONS, WORST_OF_TRIAL = 2, 6  # corners of the conditions that are tried with part tolerances
 COARSE = 1.3  # resolution of the trials that only find the worst conditions
 MATTERS, SHARE = 0.002, 0.05  # a corner names what moves the margin by so much, and by so much of the largest move
 
@@ -127,13 +127,14 @@ def _corners(
         progress=progress, cancelled=cancelled,
     )  # fmt: skip
     judged = {ask.id: judge(ask, first) for ask in asks}
-    knobs = _single_knobs(circuit, asks, nominal, lanes_of(columns, single), cancelled)
-    slopes = {ask.id: _slopes(ask, judged[ask.id][0], first, knobs, len(conditions)) for ask in asks}
+    edges = _single_edges(circuit, asks, nominal, lanes_of(columns, single), cancelled)
+    slopes = {ask.id: _slopes(ask, judged[ask.id][0], first, edges, len(conditions)) for ask in asks}
     vertices: dict[Setting, int] = {}
     wanted: dict[str, list[int]] = {}
     for ask in asks:
+        most = WORST_CONDITIONS if ask.trial is None else WORST_OF_TRIAL
         for metric, slope in zip(_metrics(ask, judged[ask.id][0], first), slopes[ask.id], strict=True):
-            for vertex in _vertices(metric[: len(conditions)], slope, conditions, single):
+            for vertex in _vertices(metric[: len(conditions)], slope, conditions, single, most):
                 lane = vertices.setdefault(vertex, len(vertices))
                 if ask.trial is not None:
                     wanted.setdefault(ask.trial.key, []).append(lane)
@@ -150,7 +151,9 @@ def _corners(
         if second is not None:
             candidates.append(_worst(judge(ask, second), second.lanes, order))
         lowest = min(candidates, key=_rank)
-        effects = _effects(judged[ask.id][0].margin, slopes[ask.id][0], conditions, single)
+        effects = _effects(
+            _measure(ask, judged[ask.id][0], first, len(conditions)), slopes[ask.id][0], conditions, single
+        )
         found[ask.id] = replace(lowest, words=lowest.setting.words(_that_matter(effects)))
     return found
 
@@ -160,23 +163,24 @@ def _rank(corner: Corner) -> float:
     return -np.inf if np.isnan(margin) else margin
 
 
-def _single_knobs(
+def _single_edges(
     circuit: Circuit,
     asks: tuple[Ask, ...],
     nominal: dict[str, Corner],
     single: Lanes,
     cancelled: Callable[[], bool],
 ) -> dict[str, Floats]:
-    """Edges of the trials with one part at an end, searched near the nominal edge where there is one."""
-    knobs: dict[str, Floats] = {}
+    """What falls when a trial's circuit gets weaker, with one part at an end: the logarithm of the knob at the edge,
+    searched near the nominal one, or, where the nominal circuit never gives in, how far it stayed from it."""
+    found: dict[str, Floats] = {}
     for ask in asks:
         edge = nominal[ask.id].edge
-        if ask.trial is None or ask.trial.key in knobs or edge is None:
+        if ask.trial is None or ask.trial.key in found or edge is None or edge.always[0] or edge.missing[0]:
             continue
-        if not (edge.never[0] or edge.always[0] or edge.missing[0]):
-            found = TrialRun(circuit, ask.trial, single, cancelled).edge(around=float(edge.knob[0]))
-            knobs[ask.trial.key] = np.log(found.knob)
-    return knobs
+        near = None if edge.never[0] else float(edge.knob[0])
+        own = TrialRun(circuit, ask.trial, single, cancelled).edge(around=near)
+        found[ask.trial.key] = own.spare if edge.never[0] else np.log(own.knob)
+    return found
 
 
 def _metrics(ask: Ask, judged: Judged, seen: Seen) -> list[Floats]:
@@ -184,26 +188,25 @@ def _metrics(ask: Ask, judged: Judged, seen: Seen) -> list[Floats]:
     if judged.value is not None:
         value = np.where(np.isfinite(judged.value), judged.value, np.nan)
         return [value, -value]
-    if ask.hint is not None:
-        # Conditions in which the circuit never gives in are ranked by the hint, behind all others.
-        return [judged.margin + 1e-6 * ask.hint(seen)]
+    if ask.trial is not None and ask.trial.key in seen.edges:
+        # Conditions in which the circuit never gives in are ranked by how far it stayed from it, behind all others.
+        spare = np.nan_to_num(seen.edges[ask.trial.key].spare)
+        return [judged.margin + 1e-6 * spare]
     return [judged.margin]
 
 
-def _slopes(ask: Ask, judged: Judged, seen: Seen, knobs: dict[str, Floats], conditions: int) -> list[Floats]:
+def _slopes(ask: Ask, judged: Judged, seen: Seen, edges: dict[str, Floats], conditions: int) -> list[Floats]:
     """The same with one part at an end: what says which end of its tolerance hurts."""
     if ask.trial is not None:
-        if ask.trial.key in knobs:
-            return [knobs[ask.trial.key]]
-        if ask.hint is not None:
-            return [ask.hint(seen)[conditions:]]
-        return [np.zeros(seen.lanes.count - conditions)]
+        return [edges.get(ask.trial.key, np.zeros(seen.lanes.count - conditions))]
     return [metric[conditions:] for metric in _metrics(ask, judged, seen)]
 
 
-def _vertices(metric: Floats, slope: Floats, conditions: list[Setting], single: list[Setting]) -> list[Setting]:
+def _vertices(
+    metric: Floats, slope: Floats, conditions: list[Setting], single: list[Setting], most: int
+) -> list[Setting]:
     """The worst corners of the conditions with every part at the end that hurts."""
-    order = np.argsort(np.nan_to_num(metric, nan=-np.inf), kind="stable")[:WORST_CONDITIONS]
+    order = np.argsort(np.nan_to_num(metric, nan=-np.inf), kind="stable")[:most]
     sides: list[tuple[tuple[str, str], int]] = []
     for k in range(0, len(single), 2):
         low, high = slope[k], slope[k + 1]
@@ -227,6 +230,14 @@ def _that_matter(effects: dict[tuple[str, str], float]) -> list[tuple[str, str]]
     """The keys that a corner names: those with a share of the largest effect."""
     least = max(MATTERS, SHARE * max(effects.values(), default=0.0))
     return [key for key, effect in effects.items() if effect >= least]
+
+
+def _measure(ask: Ask, judged: Judged, seen: Seen, conditions: int) -> Floats:
+    """What says which conditions matter: the margin, or, where a trial never gives in, how far it stayed from it."""
+    margin = judged.margin[:conditions]
+    if ask.trial is not None and ask.trial.key in seen.edges and np.ptp(np.nan_to_num(margin, nan=-1.0)) < MATTERS:
+        return seen.edges[ask.trial.key].spare[:conditions]
+    return margin
 
 
 def _effects(

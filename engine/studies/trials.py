@@ -61,7 +61,9 @@ class TrialRun:
 
     def holds(self, index: Sequence[int] | Ints, knob: Floats) -> Mask:
         """Whether each lane holds at its knob value; a lane that could not be solved does not."""
-        observed = self.tried(index, knob)
+        return self._held(self.tried(index, knob))
+
+    def _held(self, observed: Observed) -> Mask:
         return np.asarray(~(self.trial.gives_in(observed) | observed.failed))
 
     def edge(self, resolution: float | None = None, around: float | None = None) -> Edge:
@@ -73,7 +75,12 @@ class TrialRun:
         ends = (self.trial.safe, self.trial.severe) if around is None else (around / NEAR, around * NEAR)
         # A circuit may give in at a middle value and hold at a severer one: look along the whole range first.
         knobs = np.geomspace(*ends, SCANNED if around is None else 2)
-        held = self.holds(np.repeat(everyone, knobs.size), np.tile(knobs, count)).reshape(count, -1)
+        index = np.repeat(everyone, knobs.size)
+        looked = self.tried(index, np.tile(knobs, count))
+        held = self._held(looked).reshape(count, -1)
+        spare = np.zeros(count)
+        if self.trial.spare is not None:
+            spare = self.trial.spare(self.lanes.take(index), looked).reshape(count, -1).min(axis=1)
         never_gives_in = held.all(axis=1)
         always = ~held[:, 0]
         first = np.where(never_gives_in, knobs.size - 1, np.maximum(1, np.argmin(held, axis=1)))
@@ -98,4 +105,4 @@ class TrialRun:
         final = self.tried(everyone, knob)
         values = {row: final.value(row) for row in self.trial.rows}
         tried = np.ones(count, dtype=bool)
-        return Edge(knob, values, never_gives_in & ~self.missing, always & ~self.missing, self.missing, tried)
+        return Edge(knob, values, never_gives_in & ~self.missing, always & ~self.missing, self.missing, tried, spare)
