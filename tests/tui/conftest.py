@@ -165,10 +165,10 @@ def gates() -> Gates:
 
 @pytest.fixture
 def solver(gates: Gates) -> Solver:
-    return Solver(study=gates.study, causes=gates.causes_of, ready=lambda: True, prepare=_nothing, lanes=40)
+    return Solver(study=gates.study, causes=gates.causes_of, ready=lambda: True, prepare=nothing, lanes=40)
 
 
-def _nothing() -> Any:
+def nothing() -> Any:
     raise AssertionError("a solver that is ready needs no preparing")
 
 

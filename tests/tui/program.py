@@ -10,7 +10,7 @@ sys.path.append(str(Path(__file__).parents[2]))
 from stagebook.storage import Note, Store
 from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
-from tests.tui.conftest import Gates, corners, flood
+from tests.tui.conftest import Gates, corners, flood, nothing
 
 if __name__ == "__main__":
     gates = Gates()
@@ -18,6 +18,6 @@ if __name__ == "__main__":
     with Store.open(sys.argv[1]) as store:
         store.create("flood", flood())
         store.save("flood", Note("first try"), corners(gates, flood()))
-        app = StagebookApp(store, Solver(gates.study, gates.causes_of, lambda: True, NotImplemented, lanes=40))
+        app = StagebookApp(store, Solver(gates.study, gates.causes_of, lambda: True, nothing, lanes=40))
         app.run()
     sys.exit(app.return_code)
