@@ -1,0 +1,89 @@
+"""The demo ``flood``: a pump-room water alarm whose latch trips when its cells are snapped on."""
+
+from __future__ import annotations
+
+from ...engine import edit
+from ...engine.design.document import Design
+from ...storage import Note
+from .history import Demo, Edit, Step
+
+
+def _set(ref: str, value: str) -> tuple[str, Edit]:
+    return f"{ref} {value}", lambda design: edit.with_value(design, ref, value)
+
+
+def _add_npn_capacitor(design: Design) -> Design:
+    part = {"ref": "C3", "kind": "capacitor", "pins": {"a": "nb", "b": "0V"}, "value": "1n", "tolerance": "10 %"}
+    return edit.with_role(edit.with_part(design, "latch", part), "latch", "base_capacitor", "C3")
+
+
+def _add_pnp_capacitor(design: Design) -> Design:
+    part = {"ref": "C4", "kind": "capacitor", "pins": {"a": "supply", "b": "pb"}, "value": "1n", "tolerance": "10 %"}
+    return edit.with_part(design, "latch", part)
+
+
+FLOOD = Demo(
+    "flood",
+    (
+        Step(
+            Note(
+                "first unit: works on the bench supply, sounds when the cells are snapped on",
+                symptom="Four cells clipped in: the piezo sounds at once, dry probe. From the bench supply it stays silent.",
+                hypothesis="The bench supply rises in milliseconds, cells in less than a microsecond. About 10 pF from the"
+                " supply rail to the base of Q5 carry a current that R11 at 1M cannot drain.",
+                prediction="Slew that the latch bears is far below the 10 V/us of the cells; nothing else is in trouble.",
+                result="So it is: it trips from about 0.1 V/us on, a hundredth of what the cells do.",
+                next="Make R11 smaller.",
+            ),
+        ),
+        Step(
+            Note(
+                "R11 1M > 100k: drain the base of Q5 ten times better",
+                hypothesis="A tenth of the resistance bears ten times the slew.",
+                change="R11 1M > 100k",
+                prediction="Supply slew about ten times better, still too little; hold margin a little worse.",
+                result="Barely twice as good. With 30 pF on the base, R11 hardly matters within half a microsecond.",
+                next="Even smaller, or a capacitor that divides the step.",
+            ),
+            (_set("R11", "100k"),),
+            parent=1,
+        ),
+        Step(
+            Note(
+                "R11 100k > 22k: given up, it starves the latch",
+                hypothesis="Brute force: 22k should drain what 100k does not.",
+                change="R11 100k > 22k",
+                prediction="Slew better again. R10 gives 33 uA at 4 V in the cold and R11 takes 32 uA: hold must suffer.",
+                result="Still trips, and the latch hardly holds at low supply in the cold. Given up.",
+                next="Back to 100k and a capacitor.",
+            ),
+            (_set("R11", "22k"),),
+            parent=2,
+        ),
+        Step(
+            Note(
+                "C3 1n at the base of Q5, from r2: good at nominal, a hot corner still trips",
+                hypothesis="10 pF against 1 nF divide 6.4 V to 64 mV, whatever the slew.",
+                change="C3 1n added from the base of Q5 to 0V",
+                prediction="Immune at any slew.",
+                result="At nominal yes. Hot, with low V_BE, Q4 is turned on through its own capacitances and feeds Q5"
+                " through R10.",
+                next="The same for Q4.",
+            ),
+            (("add C3 1n at the base of Q5", _add_npn_capacitor),),
+            parent=2,
+        ),
+        Step(
+            Note(
+                "C4 1n across R13: both bases held, immune at any slew in every corner",
+                hypothesis="Q4 needs the same division as Q5.",
+                change="C4 1n added from the supply to the base of Q4",
+                prediction="Immune in every corner; duration and hold do not move.",
+                result="Immune in every corner; every required margin holds.",
+                next="Build three units, measure the duration cold and hot.",
+            ),
+            (("add C4 1n across R13", _add_pnp_capacitor),),
+            parent=4,
+        ),
+    ),
+)

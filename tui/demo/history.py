@@ -1,0 +1,66 @@
+"""A demo's history as steps, and how it is put on the shelf: every edit and save through the store's own functions."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Callable, Iterator, Sequence
+from dataclasses import dataclass
+from importlib.resources import files
+
+from ...engine.design.document import Design
+from ...engine.results import MarginSheet
+from ...storage import Note, Store
+
+Edit = Callable[[Design], Design]
+
+
+@dataclass(frozen=True)
+class Step:
+    """One revision: the revision it goes on from (None for the first), its edits with their labels, and its note."""
+
+    note: Note
+    edits: tuple[tuple[str, Edit], ...] = ()
+    parent: int | None = None
+
+
+@dataclass(frozen=True)
+class Demo:
+    """A demo design: its name, which is also that of its first document, and the steps that led to the last revision."""
+
+    name: str
+    steps: Sequence[Step]
+
+    def first(self) -> Design:
+        """The document of the first revision."""
+        return Design.load(_text(f"{self.name}.json"))
+
+    def designs(self) -> Iterator[Design]:
+        """The document of every revision in order."""
+        made: list[Design] = []
+        for step in self.steps:
+            design = self.first() if step.parent is None else made[step.parent - 1]
+            for _, edit in step.edits:
+                design = edit(design)
+            made.append(design)
+            yield design
+
+    def sheets(self) -> list[MarginSheet]:
+        """The margins of every revision, computed once by ``recompute`` and shipped, so that opening needs no solver."""
+        return [MarginSheet.from_json(sheet) for sheet in json.loads(_text(f"{self.name}_margins.json"))]
+
+    def put_on(self, store: Store) -> bool:
+        """Make the history in the store; False, with nothing done, when the shelf has a design of that name."""
+        if any(row.name == self.name for row in store.designs()):
+            return False
+        store.create(self.name, self.first())
+        for number, (step, sheet) in enumerate(zip(self.steps, self.sheets(), strict=True), 1):
+            if step.parent is not None and step.parent != number - 1:
+                store.branch(self.name, step.parent)
+            for label, edit in step.edits:
+                store.edit(self.name, label, edit(store.draft(self.name).design))
+            store.save(self.name, step.note, sheet)
+        return True
+
+
+def _text(name: str) -> str:
+    return (files(__package__) / name).read_text("utf-8")
