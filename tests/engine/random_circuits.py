@@ -1,4 +1,7 @@
-"""Random small circuits for property tests: every net has a resistor towards the supply or the return."""
+"""Random small circuits for property tests: every net has a resistor towards the supply or the return.
+
+Junctions hang on nets behind resistors: two of them straight across the supply would carry millions of amperes.
+"""
 
 from __future__ import annotations
 
@@ -49,10 +52,9 @@ def parts_of_a_circuit(draw: st.DrawFn) -> list[Json]:
         elif kind == "capacitor":
             parts.append(capacitor(f"C{k}", a, b, draw(decades(-11, -5))))
         elif kind == "diode":
-            # A diode straight across the supply would be asked for more current than the universe has.
-            if {a, b} != {"supply", "0V"}:
+            if "supply" not in (a, b):
                 parts.append(two("diode", f"D{k}", a, b, law=draw(st.sampled_from(DIODES))))
-        elif not {"supply", "0V"} <= {a, b, c}:
+        elif "supply" not in (a, b, c):
             parts.append(transistor(f"Q{k}", a, b, c, kind, law=draw(st.sampled_from(LAWS))))
     return parts + [resistor(f"R{k + 50}", net, "0V", "10M") for k, net in enumerate(free)]
 
