@@ -205,7 +205,7 @@ def march_lane(
             # The charges at the start are those of its voltages, whatever the sources did meanwhile.
             evaluate(element, group, p, source, linear, JUMP, x0, i0, q0, a, seen, flow)
             copy(x0, x1)
-            set_sources(sources, sine, base, 0.0, free, source, x1)
+            set_sources(sources, sine, base, JUMP, free, source, x1)
             for k in range(free):
                 constant[k] = -q0[k]
                 tolerance[k] = relative[k] * abs(x0[k]) + absolute[k]
@@ -329,12 +329,12 @@ def march_lane(
                 copy(x0, results.trace_value[n])
                 results.trace_used[0] = n + 1
             if stop_row >= 0 and status[stop_row] == SEEN:
-                close_rows(row, status)
+                close_rows(row, window, base + t, status)
                 return STOPPED, 0, base + t
             wanted = h * min(3.0, factor_h)
             h = max(wanted, JUMP) if h == asked else max(wanted, min(asked, 3.0 * h), JUMP)
         base += span
-    close_rows(row, status)
+    close_rows(row, window, base, status)
     return DONE, 0, base
 
 

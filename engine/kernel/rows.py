@@ -269,8 +269,8 @@ def watch(
 
 
 @leaf
-def close_rows(row: Ints, status: Ints) -> None:
-    """End of a lane: extremes and integrals whose window reaches the end are complete."""
+def close_rows(row: Ints, window: Floats, finish: float, status: Ints) -> None:
+    """End of a lane at ``finish``: extremes and integrals are complete whose window reaches the end or closed by it."""
     for r in range(row.shape[0]):
-        if status[r] == OPEN and row[r, ROW_TO] < 0:
+        if status[r] == OPEN and (row[r, ROW_TO] < 0 or window[r, 1] <= finish):
             status[r] = SEEN
