@@ -1,0 +1,109 @@
+"""Without a compiler the same functions run as plain Python, and give the same numbers."""
+
+from __future__ import annotations
+
+import json
+import os
+import subprocess
+import sys
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from .circuits import Setup, capacitor, resistor, setup, sine, steps, transistor, two
+from .run_documents import results
+
+SCRIPT = Path(__file__).with_name("run_documents.py")
+
+# Each family of primitives at least once, small and short: plain Python is some hundred times slower.
+CASES: dict[str, Setup] = {
+    "conductance and capacitance": setup(
+        resistor("R1", "supply", "n", "1k"), capacitor("C1", "n", "0V", "1 uF"), supply="5 V", ends=3e-3
+    ),
+    "branch": setup(
+        sine("G1", "a", "b", 2.0, 100.0),
+        resistor("R1", "a", "0V", "1k"),
+        resistor("R2", "b", "0V", "1k"),
+        capacitor("C1", "b", "0V", "100 nF"),
+        supply=None,
+        ends=12e-3,
+    ),
+    "junction": setup(
+        steps("G1", "in", "0V", (0.0, 0.0), (1e-6, 5.0), (1e-3, 5.0), (1.001e-3, -12.0)),
+        resistor("R1", "in", "d", "1k"),
+        two(
+            "diode",
+            "D1",
+            "d",
+            "0V",
+            law={
+                "saturation_current": "2e-9 A",
+                "ideality": 1.8,
+                "capacitance": "10 pF",
+                "transit_time": "1 us",
+                "breakdown_voltage": "9 V",
+            },
+        ),
+        supply=None,
+        ends=2e-3,
+    ),
+    "zener with leakage": setup(
+        resistor("R1", "supply", "z", "1k"),
+        two("zener", "D1", "0V", "z", "3.3 V", **{"class": "zener 0.5 W"}),
+        supply="5 V",
+        ends=1e-3,
+    ),
+    "transport": setup(
+        steps("G1", "in", "0V", (0.0, 0.0), (1e-6, 3.0), (100e-6, 3.0), (101e-6, 0.0)),
+        resistor("R1", "in", "b", "10k"),
+        transistor("Q1", "c", "b", "0V", **{"class": "small npn"}),
+        resistor("R2", "supply", "c", "1k"),
+        transistor("Q2", "d", "c", "supply", "pnp", **{"class": "small pnp"}),
+        resistor("R3", "d", "0V", "1k"),
+        supply="5 V",
+        ends=200e-6,
+    ),
+    "switch": setup(
+        resistor("R1", "supply", "n", "10k"),
+        two("contact", "S1", "n", "0V"),
+        capacitor("C1", "n", "0V", "10 nF"),
+        supply="5 V",
+        source="1R",
+        events=[
+            {"at": "0 s", "event": "connect supply", "rise": "1 us"},
+            {"at": "1 ms", "event": "close", "part": "S1", "bounce": {"for": "1 ms", "times": 2}},
+        ],
+        ends=3e-3,
+    ),
+}
+
+
+@pytest.fixture(scope="module")
+def uncompiled() -> dict[str, Any]:
+    documents = [case.design.dump() for case in CASES.values()]
+    child = subprocess.run(
+        [sys.executable, str(SCRIPT)],
+        input=json.dumps(documents),
+        capture_output=True,
+        text=True,
+        env={**os.environ, "STAGEBOOK_UNCOMPILED": "1"},
+        timeout=120,
+        check=False,
+    )
+    assert child.returncode == 0, child.stderr
+    answer = json.loads(child.stdout)
+    assert answer["compiled"] is False
+    return dict(zip(CASES, answer["results"], strict=True))
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_the_uncompiled_kernel_gives_the_same_numbers(uncompiled: dict[str, Any], name: str) -> None:
+    here, there = results(CASES[name].design.dump()), uncompiled[name]
+    assert here["failure"] is None
+    assert there["failure"] is None
+    assert there["work"] == here["work"]
+    assert there["status"] == here["status"]
+    numbers, others = ([float.fromhex(text) for text in side["numbers"]] for side in (here, there))
+    # To the last bits: a compiler may fuse or order mathematics-library calls otherwise.
+    assert others == pytest.approx(numbers, rel=1e-12, abs=1e-15)
