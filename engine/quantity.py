@@ -142,7 +142,7 @@ def write(value: float, unit: str, digits: int = 3) -> str:
     of = unit_named(unit)
     rounded = Decimal(f"{value:.{digits - 1}e}")
     suffix, size = _step(of, abs(rounded))
-    number = _digits(rounded / size, digits)
+    number = _digits(Decimal(value) / size, digits)
     if of.name in ("ohm", "F") and suffix != "F":
         whole, _, part = number.partition(".")
         return whole + suffix + part

@@ -41,9 +41,7 @@ def results(document: dict[str, Any]) -> dict[str, Any]:
         "failure": seen.failure(0),
         "work": seen.results.work[0].tolist(),
         "status": seen.results.status[0].tolist(),
-        "numbers": [
-            float(v).hex() for v in np.concatenate([seen.final[0], seen.results.value[0], seen.results.time[0]])
-        ],
+        "numbers": [float(v).hex() for v in numbers],
     }
 
 
