@@ -63,6 +63,7 @@ class Observed:
     circuit: Circuit
     rows: dict[Row, int]
     results: Results
+    keep: tuple[Row, ...] = ()
 
     def value(self, row: Row) -> Floats:
         """Value of an observation: the time of a crossing, a level, an extreme, an integral."""
@@ -94,6 +95,11 @@ class Observed:
         net = self.circuit.unknown_name(int(self.results.ended[lane, 1]))
         return f"{ENDED[how]} at {self.results.ended_at[lane]:.6g} s near net {net}"
 
+    def state(self, row: Row) -> tuple[Floats, Floats]:
+        """State (lanes, n_all) just after a kept row was seen, and when: -1 in lanes where it never was."""
+        k = self.keep.index(row)
+        return np.ascontiguousarray(self.results.kept[:, k]), self.results.kept_at[:, k]
+
     @property
     def final(self) -> Floats:
         """The state at the end, (lanes, n_all): the ``start`` of a run that goes on from here."""
@@ -117,7 +123,7 @@ class _RowTable:
         self.signals.setdefault(row.signal, len(self.signals))
         return self.places.setdefault(row, len(self.places))
 
-    def arrays(self, stop: Row | None) -> Rows:
+    def arrays(self, stop: Row | None, keep: Sequence[Row]) -> Rows:
         terms: list[tuple[int, int]] = []
         scales: list[float] = []
         bounds = [0]
@@ -144,6 +150,7 @@ class _RowTable:
             level=np.array([row.level for row in self.places], dtype=float),
             offset=np.ascontiguousarray(np.array(offsets, dtype=float).reshape(len(rows), 2)),
             stop_row=ints([-1 if stop is None else self.places[stop]]),
+            keep_row=ints([self.places[row] for row in keep]),
         )
 
     def _window(self, anchor: Anchor | None) -> tuple[int, float]:
@@ -178,6 +185,7 @@ def run(
     *,
     start: Floats | None = None,
     stop: Row | None = None,
+    keep: Sequence[Row] = (),
     relative: float = RELATIVE,
     trace: int = 0,
     threads: int | None = None,
@@ -187,12 +195,13 @@ def run(
     """Run all lanes through a program.
 
     ``start`` (lanes, n_all) are the voltages before t = 0, all zero by default; ``stop`` ends a lane once it is seen;
+    ``keep`` are rows at which the state is kept;
     ``trace`` keeps so many points of the only lane; ``relative`` scales all tolerances. Raises Cancelled.
     """
     table = _RowTable(circuit)
-    for row in (*rows, *(() if stop is None else (stop,))):
+    for row in (*rows, *keep, *(() if stop is None else (stop,))):
         table.add(row)
-    made = table.arrays(stop)
+    made = table.arrays(stop, keep)
     count, n_all = lanes.count, int(circuit.topology.size[2])
     results = Results(
         value=layout.zeros(count, len(table.places)),
@@ -202,6 +211,8 @@ def run(
         ended_at=layout.zeros(count),
         work=np.zeros((count, 4), dtype=np.int64),
         final=layout.zeros(count, n_all),
+        kept=layout.zeros(count, len(keep), n_all),
+        kept_at=np.full((count, len(keep)), -1.0),
         trace_time=layout.zeros(trace),
         trace_value=layout.zeros(trace, n_all),
         trace_used=ints([0]),
@@ -216,7 +227,7 @@ def run(
                 raise Cancelled("stopped")
             march(*arguments, low, min(low + BLOCK, count), cancel)
             progress(min(low + BLOCK, count), count)
-        return Observed(circuit, table.places, results)
+        return Observed(circuit, table.places, results, tuple(keep))
     with ThreadPoolExecutor(workers) as pool:
         waiting = {
             pool.submit(march, *arguments, low, min(low + BLOCK, count), cancel) for low in range(0, count, BLOCK)
@@ -232,4 +243,4 @@ def run(
                 for future in waiting:
                     future.cancel()
                 raise Cancelled("stopped")
-    return Observed(circuit, table.places, results)
+    return Observed(circuit, table.places, results, tuple(keep))

@@ -40,6 +40,7 @@ def compile_all() -> None:
             np.zeros(0),
             np.zeros((0, 2)),
             layout.ints([-1]),
+            layout.ints([]),
         ),
         layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200])),
         layout.Results(
@@ -50,6 +51,8 @@ def compile_all() -> None:
             np.zeros(1),
             np.zeros((1, 4), dtype=np.int64),
             np.zeros((1, 2)),
+            np.zeros((1, 0, 2)),
+            np.zeros((1, 0)),
             np.zeros(0),
             np.zeros((0, 2)),
             layout.ints([0]),

@@ -17,8 +17,8 @@ from .layout import (
     E_PARAMETER,
     E_SLOT,
     FAMILIES,
+    J_PER_SLOPE,
     J_SATURATION,
-    J_SLOPE,
     J_TRANSIT,
     JUNCTION,
     T_COLLECTOR,
@@ -107,9 +107,9 @@ def junctions(
         u = limited(v, seen[k - first], p, at)
         moved = max(moved, move(u, seen[k - first], v, p, at))
         seen[k - first] = u
-        e, d = exponential(u / p[at + J_SLOPE])
+        e, d = exponential(u * p[at + J_PER_SLOPE])
         current = p[at + J_SATURATION] * e
-        g = p[at + J_SATURATION] * d / p[at + J_SLOPE]
+        g = p[at + J_SATURATION] * d * p[at + J_PER_SLOPE]
         charge, c = depletion(u, p, at)
         charge += p[at + J_TRANSIT] * current
         c += p[at + J_TRANSIT] * g
@@ -164,9 +164,9 @@ def transports(
         moved = max(moved, move(ve, seen[own], vbe, p, pe))
         seen[own] = ve
         saturation = p[pe + J_SATURATION]
-        ee, de = exponential(ve / p[pe + J_SLOPE])
+        ee, de = exponential(ve * p[pe + J_PER_SLOPE])
         forward = saturation * ee
-        gf = saturation * de / p[pe + J_SLOPE]
+        gf = saturation * de * p[pe + J_PER_SLOPE]
         qe, ce = depletion(ve, p, pe)
         qe += p[pe + J_TRANSIT] * forward
         ce += p[pe + J_TRANSIT] * gf
@@ -185,9 +185,9 @@ def transports(
         if p[at + T_COLLECTOR] != 0.0:
             vc = limited(vbc, seen[own + 1], p, pc)
             moved = max(moved, move(vc, seen[own + 1], vbc, p, pc))
-            ec, dc = exponential(vc / p[pc + J_SLOPE])
+            ec, dc = exponential(vc * p[pc + J_PER_SLOPE])
             reverse = saturation * ec
-            gr = saturation * dc / p[pc + J_SLOPE]
+            gr = saturation * dc * p[pc + J_PER_SLOPE]
             qc, cc = depletion(vc, p, pc)
             qc += p[pc + J_TRANSIT] * reverse
             cc += p[pc + J_TRANSIT] * gr

@@ -20,14 +20,18 @@ from .layout import (
     J_GRADING,
     J_KNEE,
     J_LEAKAGE,
+    J_PER_BREAKDOWN_SLOPE,
+    J_PER_POTENTIAL,
+    J_PER_SLOPE,
     J_POTENTIAL,
     J_SLOPE,
+    J_STORED,
     Floats,
 )
 
 TOP = 80.0
 EXP_TOP = math.exp(TOP)
-FLOOR = -40.0
+FLOOR = -30.0
 CONDUCTING = 14.0  # slopes below its knee a junction conducts half a microsiemens
 LEAKAGE_KNEE = 0.1  # V; generation and surface leakage is nearly constant beyond a few tenths of a volt
 
@@ -75,7 +79,7 @@ def move(u: float, old: float, asked: float, p: Floats, at: int) -> float:
     moved = 0.0
     slope = p[at + J_SLOPE]
     if max(u, old) > p[at + J_KNEE] - CONDUCTING * slope:
-        moved = abs(u - old) / slope
+        moved = abs(u - old) * p[at + J_PER_SLOPE]
     elif p[at + J_BREAKDOWN] > 0.0:
         slope = p[at + J_BREAKDOWN_SLOPE]
         if -min(u, old) - p[at + J_BREAKDOWN] > p[at + J_BREAKDOWN_KNEE] - CONDUCTING * slope:
@@ -90,15 +94,15 @@ def side_currents(v: float, p: Floats, at: int) -> tuple[float, float]:
     g = 0.0
     leakage = p[at + J_LEAKAGE]
     if leakage > 0.0:
-        root = math.sqrt(v * v + LEAKAGE_KNEE * LEAKAGE_KNEE)
-        i = leakage * v / root
-        g = leakage * LEAKAGE_KNEE * LEAKAGE_KNEE / (root * root * root)
+        share = 1.0 / (abs(v) + LEAKAGE_KNEE)
+        i = leakage * v * share
+        g = leakage * LEAKAGE_KNEE * share * share
     if p[at + J_BREAKDOWN] > 0.0:
-        y = -(v + p[at + J_BREAKDOWN]) / p[at + J_BREAKDOWN_SLOPE]
+        y = -(v + p[at + J_BREAKDOWN]) * p[at + J_PER_BREAKDOWN_SLOPE]
         if y > FLOOR:
             e, d = exponential(y)
             i -= p[at + J_BREAKDOWN_CURRENT] * (e + 1.0)
-            g += p[at + J_BREAKDOWN_CURRENT] * d / p[at + J_BREAKDOWN_SLOPE]
+            g += p[at + J_BREAKDOWN_CURRENT] * d * p[at + J_PER_BREAKDOWN_SLOPE]
     return i, g
 
 
@@ -108,16 +112,14 @@ def depletion(v: float, p: Floats, at: int) -> tuple[float, float]:
     c0 = p[at + J_CAPACITANCE]
     if c0 == 0.0:
         return 0.0, 0.0
-    potential = p[at + J_POTENTIAL]
     m = p[at + J_GRADING]
     if m == 0.0:
         return c0 * v, c0
-    half = 0.5 * potential
-    u = min(v, half)
-    s = 1.0 - u / potential
+    half = 0.5 * p[at + J_POTENTIAL]
+    s = 1.0 - min(v, half) * p[at + J_PER_POTENTIAL]
     power = 1.0 / math.sqrt(s) if m == 0.5 else math.exp(-m * math.log(s))
     c = c0 * power
-    q = c0 * potential / (1.0 - m) * (1.0 - s * power)
+    q = p[at + J_STORED] * (1.0 - s * power)
     if v > half:
         rise = c * m / half
         d = v - half

@@ -32,7 +32,8 @@ ELEMENT_WIDTH = 14
 J_SATURATION, J_SLOPE, J_CAPACITANCE, J_POTENTIAL, J_GRADING, J_TRANSIT = 0, 1, 2, 3, 4, 5
 J_BREAKDOWN, J_BREAKDOWN_SLOPE, J_BREAKDOWN_CURRENT, J_LEAKAGE = 6, 7, 8, 9
 J_KNEE, J_BREAKDOWN_KNEE = 10, 11  # where a Newton step into conduction, into breakdown begins to be limited
-JUNCTION_WIDTH = 12
+J_PER_SLOPE, J_PER_BREAKDOWN_SLOPE, J_PER_POTENTIAL, J_STORED = 12, 13, 14, 15  # what the laws would else divide out
+JUNCTION_WIDTH = 16
 
 # A transistor's parameters: its own, then the emitter and the collector junction laid out as above.
 T_GAIN_FORWARD, T_GAIN_REVERSE, T_EARLY, T_COLLECTOR = 0, 1, 2, 3
@@ -93,6 +94,7 @@ class Rows(NamedTuple):
     level: Floats  # (rows,)
     offset: Floats  # (rows, 2) s added to from, to
     stop_row: Ints  # (1,) end the lane once this row is seen, -1 = never
+    keep_row: Ints  # (kept,) keep the state once such a row is seen
 
 
 class Control(NamedTuple):
@@ -113,6 +115,8 @@ class Results(NamedTuple):
     ended_at: Floats  # (lanes,) s
     work: Ints  # (lanes, 4) steps, rejected steps, Newton iterations, Newton failures
     final: Floats  # (lanes, n_all)
+    kept: Floats  # (lanes, kept, n_all) states that were asked for
+    kept_at: Floats  # (lanes, kept) s, -1 where the state never came
     trace_time: Floats  # (points,) one lane only
     trace_value: Floats  # (points, n_all)
     trace_used: Ints  # (1,)

@@ -101,6 +101,16 @@ def error_of(
 
 
 @leaf
+def keep_states(keep_row: Ints, status: Ints, x: Floats, at: float, kept: Floats, kept_at: Floats) -> None:
+    """Keep the state at the end of the step in which a row was seen for which that was asked."""
+    for k in range(keep_row.size):
+        if kept_at[k] < 0.0 and status[keep_row[k]] == SEEN:
+            kept_at[k] = at
+            for n in range(x.size):
+                kept[k, n] = x[n]
+
+
+@leaf
 def keep_parabola(x0: Floats, xg: Floats, x1: Floats, h: float, first: Floats, second: Floats) -> None:
     """Keep the parabola of an accepted step, about its end, for the predictor of the next."""
     for k in range(first.size):
@@ -141,6 +151,8 @@ def march_lane(
     status = results.status[lane]
     counts = results.work[lane]
     x0 = results.final[lane]
+    kept = results.kept[lane]
+    kept_at = results.kept_at[lane]
     row = rows.row
     stop_row = rows.stop_row[0]
     tracing = results.trace_time.size > 0
@@ -223,6 +235,7 @@ def march_lane(
                 element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
                 x0, x1, x1, flow0, flow, flow, base, t, 0.0, now, s0, sg, s1, read_at, value, time, status,
             )  # fmt: skip
+            keep_states(rows.keep_row, status, x1, base + t, kept, kept_at)
             first[:] = 0.0
             second[:] = 0.0
             h = FIRST
@@ -313,6 +326,7 @@ def march_lane(
                 element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
                 x0, xg, x1, flow0, flow_g, flow, base + t, h, GAMMA, now, s0, sg, s1, read_at, value, time, status,
             )  # fmt: skip
+            keep_states(rows.keep_row, status, x1, base + t + h, kept, kept_at)
             keep_parabola(x0, xg, x1, h, first, second)
             copy(x1, x0)
             copy(i1, i0)

@@ -24,7 +24,7 @@ if TYPE_CHECKING:
     from ..primitives.builder import Bench, Builder, Handle, Laws
 
 BUILT_IN = 0.75  # V, from memory
-EMITTER_GRADING, COLLECTOR_GRADING = 0.5, 0.33  # abrupt and graded junction, textbook values
+EMITTER_GRADING, COLLECTOR_GRADING = 0.5, 0.5  # abrupt junctions, textbook value
 REVERSE_TRANSIT = 20.0  # times the forward transit time, from memory
 BREAKDOWN_SLOPE = 0.05  # V per e-fold of the emitter junction's breakdown, from memory
 BREAKDOWN_CURRENT = 10e-6  # A at the breakdown voltage

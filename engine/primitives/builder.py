@@ -194,6 +194,12 @@ def junction_array(laws: Laws, lanes: Lanes, prefix: str = "") -> Floats:
     for name, place in _JUNCTION_PLACES.items():
         law = laws.get(prefix + name)
         array[:, place] = JUNCTION_DEFAULTS.get(name, 0.0) if law is None else law(lanes)
+    array[:, layout.J_PER_SLOPE] = 1.0 / array[:, layout.J_SLOPE]
+    array[:, layout.J_PER_BREAKDOWN_SLOPE] = 1.0 / array[:, layout.J_BREAKDOWN_SLOPE]
+    array[:, layout.J_PER_POTENTIAL] = 1.0 / array[:, layout.J_POTENTIAL]
+    array[:, layout.J_STORED] = (
+        array[:, layout.J_CAPACITANCE] * array[:, layout.J_POTENTIAL] / (1.0 - array[:, layout.J_GRADING])
+    )
     # The voltage at which the exponential bends away: where its conductance equals its slope over 1.4 ohm.
     knee = np.log(array[:, layout.J_SLOPE] / (math.sqrt(2.0) * np.maximum(array[:, layout.J_SATURATION], 1e-300)))
     array[:, layout.J_KNEE] = np.maximum(0.0, array[:, layout.J_SLOPE] * knee)

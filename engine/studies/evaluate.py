@@ -9,14 +9,15 @@ import numpy as np
 from ..checks import catalogue
 from ..checks.check import Ask, Judged
 from ..checks.seen import Seen
-from ..checks.trial import Edge
+from ..checks.trial import Edge, Trial
 from ..checks.view import View
 from ..circuit.circuit import Circuit
+from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Row
 from ..run import Observed, never, run, silent
 from .sequences import program_of, starts_of
-from .trials import TrialRun
+from .trials import TrialRun, begin_of
 
 Progress = Callable[[int, int], None]
 
@@ -47,11 +48,12 @@ def observe(
     rows: Sequence[Row],
     progress: Progress = silent,
     cancelled: Callable[[], bool] = never,
+    keep: Sequence[Row] = (),
 ) -> Observed:
     """Run one sequence of the document in all lanes."""
     _, program = program_of(circuit, lanes, sequence)
     starts = starts_of(circuit, sequence, program)
-    return run(circuit, lanes, program, rows, start=starts, progress=progress, cancelled=cancelled)
+    return run(circuit, lanes, program, rows, start=starts, keep=keep, progress=progress, cancelled=cancelled)
 
 
 def look(
@@ -66,25 +68,40 @@ def look(
 ) -> Seen:
     """Observe all sequences, and bisect every trial in the lanes that ``trials`` gives for its key (None: in none)."""
     wanted = _rows(asks)
+    begins: dict[str, list[Row]] = {}
+    for ask in asks:
+        begin = None if ask.trial is None else begin_of(ask.trial)
+        if ask.trial is not None and begin is not None and begin not in begins.setdefault(ask.trial.sequence, []):
+            begins[ask.trial.sequence].append(begin)
     observed: dict[str, Observed] = {}
     for k, (sequence, rows) in enumerate(wanted.items()):
 
         def portion(done: int, total: int, k: int = k) -> None:
             progress(k * total + done, len(wanted) * total)
 
-        observed[sequence] = observe(circuit, lanes, sequence, rows, portion, cancelled)
+        observed[sequence] = observe(circuit, lanes, sequence, rows, portion, cancelled, begins.get(sequence, ()))
     edges: dict[str, Edge] = {}
     for ask in asks:
         if ask.trial is not None and ask.trial.key not in edges and trials is not None:
             index = sorted(set(trials.get(ask.trial.key, ())))
             if index:
-                found = TrialRun(circuit, ask.trial, lanes.take(index), cancelled).edge(resolution)
+                kept = kept_state(observed, ask.trial, index)
+                found = TrialRun(circuit, ask.trial, lanes.take(index), cancelled, kept).edge(resolution)
                 edges[ask.trial.key] = found.scattered(index, lanes.count)
 
     def again(sequence: str, rows: tuple[Row, ...], altered: Lanes) -> Observed:
         return observe(circuit, altered, sequence, rows, cancelled=cancelled)
 
     return Seen(circuit, lanes, observed, edges, again)
+
+
+def kept_state(observed: Mapping[str, Observed], trial: Trial, index: Sequence[int]) -> tuple[Floats, Floats] | None:
+    """States and times from which a trial goes on in lanes ``index``, as a run of its sequence has kept them."""
+    begin = begin_of(trial)
+    if begin is None or trial.sequence not in observed or begin not in observed[trial.sequence].keep:
+        return None
+    states, times = observed[trial.sequence].state(begin)
+    return np.ascontiguousarray(states[index]), times[index]
 
 
 def judge(ask: Ask, seen: Seen) -> tuple[Judged, dict[int, str]]:

@@ -10,7 +10,7 @@ from ..checks.check import Ask
 from ..circuit.circuit import Circuit
 from ..primitives.columns import Lanes
 from ..results import Spread
-from .evaluate import Progress, judge, look
+from .evaluate import Progress, judge, kept_state, look
 from .trials import TrialRun
 
 Z = 1.959963984540054  # 97.5 % quantile of the normal distribution
@@ -46,8 +46,11 @@ def spread_of(
                 continue
             key = ask.trial.key, ask.screen
             if key not in screened:
-                trial = trials.setdefault(ask.trial.key, TrialRun(circuit, ask.trial, lanes, cancelled))
                 everyone = list(range(lanes.count))
+                if ask.trial.key not in trials:
+                    kept = kept_state(seen.observed, ask.trial, everyone)
+                    trials[ask.trial.key] = TrialRun(circuit, ask.trial, lanes, cancelled, kept)
+                trial = trials[ask.trial.key]
                 screened[key] = trial.holds(everyone, np.full(lanes.count, ask.screen)) & ~trial.missing
             passed = int(screened[key].sum())
             found[ask.id] = Spread(None, None, None, passed / lanes.count, wilson(passed, lanes.count))

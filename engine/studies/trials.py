@@ -9,10 +9,9 @@ import numpy as np
 from ..checks.trial import Edge, Mask, Trial
 from ..circuit.circuit import Circuit
 from ..circuit.timeline import Timeline
-from ..kernel import layout
 from ..kernel.layout import Floats, Ints
 from ..primitives.columns import Lanes
-from ..primitives.signals import level, voltage
+from ..primitives.signals import Row, level, voltage
 from ..run import Observed, never, run
 from .sequences import program_of, starts_of
 
@@ -21,28 +20,36 @@ SCANNED = 10  # knob values that are tried along the whole range
 NEAR = 1.6  # half the width, as a ratio, of a search around a known edge
 
 
-def _state(circuit: Circuit, trial: Trial, lanes: Lanes, cancelled: Callable[[], bool]) -> Observed:
-    """The sequence run until the instant at which the trial begins."""
-    assert trial.start is not None
-    begin = level(voltage("0V"), trial.start)
-    _, program = program_of(circuit, lanes, trial.sequence)
-    starts = starts_of(circuit, trial.sequence, program)
-    return run(circuit, lanes, program, [begin], start=starts, stop=begin, cancelled=cancelled)
+def begin_of(trial: Trial) -> Row | None:
+    """The row at which the state is kept that a trial goes on from; None when it begins with the empty circuit."""
+    return None if trial.start is None else level(voltage("0V"), trial.start)
 
 
 class TrialRun:
     """A trial made ready in the given lanes: the state it starts from is computed once."""
 
-    def __init__(self, circuit: Circuit, trial: Trial, lanes: Lanes, cancelled: Callable[[], bool] = never) -> None:
+    def __init__(
+        self,
+        circuit: Circuit,
+        trial: Trial,
+        lanes: Lanes,
+        cancelled: Callable[[], bool] = never,
+        kept: tuple[Floats, Floats] | None = None,
+    ) -> None:
+        """``kept`` are states and times of ``begin_of(trial)`` in these lanes, where a run has kept them already."""
         self.circuit, self.trial, self.lanes, self.cancelled = circuit, trial, lanes, cancelled
         self.missing = np.zeros(lanes.count, dtype=bool)
         self._state: Floats | None = None
         self._at = np.zeros(lanes.count)
-        if trial.start is not None:
-            observed = _state(circuit, trial, lanes, cancelled)
-            self._state = observed.final
-            self._at = observed.results.ended_at
-            self.missing = observed.results.ended[:, 0] != layout.STOPPED
+        begin = begin_of(trial)
+        if begin is not None:
+            if kept is None:
+                _, program = program_of(circuit, lanes, trial.sequence)
+                starts = starts_of(circuit, trial.sequence, program)
+                run_up = run(circuit, lanes, program, [], start=starts, stop=begin, keep=[begin], cancelled=cancelled)
+                kept = run_up.state(begin)
+            self._state, self._at = kept
+            self.missing = self._at < 0.0
 
     def tried(self, index: Sequence[int] | Ints, knob: Floats) -> Observed:
         """Run lanes ``index`` (with repeats) with one knob value each."""
