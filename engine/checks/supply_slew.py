@@ -53,13 +53,13 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
     node = voltage(pnp.pins["emitter"], npn.pins["emitter"])
     steepest = slew(node, Anchor(at), Anchor(at + rise + WATCHED))
 
-    # Every lane of the trial has its supply up at the same instant, however long the rise before it took.
+    # Every lane of the trial is looked at when the slowest supply is up and has settled.
     probe = level(voltage(pnp.pins["emitter"], pnp.pins["collector"]), Anchor(SLOWEST + SETTLE))
     rail = level(node, Anchor(SLOWEST + SETTLE))
     fastest = slew(node)
 
     def drive(line: Timeline, knob: Floats) -> None:
-        line.connect_supply(SLOWEST - 1.0 / knob, 1.0 / knob)
+        line.connect_supply(0.0, 1.0 / knob)
 
     lifts = tuple(maximum(forward_base_voltage(part)) for part in (npn, pnp))
     turn_on = tuple(view.bench(part.ref).base_voltage for part in (npn, pnp))

@@ -87,6 +87,11 @@ def study(
     return made
 
 
+def _extremes(conditions: list[Setting]) -> list[int]:
+    """The corners without a middle value: what trials are tried in, which cost more than an observation."""
+    return [k for k, setting in enumerate(conditions) if all(side for _, side in setting.axes)]
+
+
 def worst_corners(circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool] = never) -> dict[str, Corner]:
     """The worst corner of every ask, by its id."""
     return _corners(circuit, asks, _nominal(circuit, asks, cancelled), silent, cancelled)
@@ -123,7 +128,7 @@ def _corners(
     single = [Setting((), ((column.key, side),)) for column in tolerances(columns) for side in (-1, 1)]
     tried = [*conditions, *single]
     first = look(
-        circuit, asks, lanes_of(columns, tried), trials=_everywhere(asks, range(len(conditions))), resolution=COARSE,
+        circuit, asks, lanes_of(columns, tried), trials=_everywhere(asks, _extremes(conditions)), resolution=COARSE,
         progress=progress, cancelled=cancelled,
     )  # fmt: skip
     judged = {ask.id: judge(ask, first) for ask in asks}
@@ -235,23 +240,26 @@ def _that_matter(effects: dict[tuple[str, str], float]) -> list[tuple[str, str]]
 def _measure(ask: Ask, judged: Judged, seen: Seen, conditions: int) -> Floats:
     """What says which conditions matter: the margin, or, where a trial never gives in, how far it stayed from it."""
     margin = judged.margin[:conditions]
-    if ask.trial is not None and ask.trial.key in seen.edges and np.ptp(np.nan_to_num(margin, nan=-1.0)) < MATTERS:
-        return seen.edges[ask.trial.key].spare[:conditions]
-    return margin
+    if ask.trial is None or ask.trial.key not in seen.edges:
+        return margin
+    edge = seen.edges[ask.trial.key]
+    spare = edge.spare[:conditions]
+    measure = spare if np.ptp(np.nan_to_num(margin[edge.tried[:conditions]], nan=-1.0)) < MATTERS else margin
+    return np.where(edge.tried[:conditions], measure, np.nan)
 
 
 def _effects(
-    margin: Floats, slope: Floats, conditions: list[Setting], single: list[Setting]
+    measure: Floats, slope: Floats, conditions: list[Setting], single: list[Setting]
 ) -> dict[tuple[str, str], float]:
     """How much each axis moves the margin and each part what is made small, so that a corner names what matters."""
-    measure, slope = np.nan_to_num(margin, nan=-1.0), np.nan_to_num(slope, nan=-1.0)
+    slope = np.nan_to_num(slope, nan=-1.0)
     effects: dict[tuple[str, str], float] = {}
     table = {setting.axes: float(measure[k]) for k, setting in enumerate(conditions)}
     for axes, value in table.items():
         for n, (key, side) in enumerate(axes):
             for other in (-1, 0, 1):
                 moved = (*axes[:n], (key, other), *axes[n + 1 :])
-                if other != side and moved in table:
+                if other != side and np.isfinite(value) and np.isfinite(table.get(moved, np.nan)):
                     effects[key] = max(effects.get(key, 0.0), abs(value - table[moved]))
     parts = {single[k].parts[0][0]: abs(float(slope[k + 1] - slope[k])) for k in range(0, len(single), 2)}
     # Parts are weighed among themselves: what is made small need not have the scale of the margin.

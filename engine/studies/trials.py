@@ -16,7 +16,7 @@ from ..run import Observed, never, run
 from .sequences import program_of, starts_of
 
 AT_ONCE, MOST_POINTS = 64, 8  # lanes of a round that is worth its while, and knob values of one lane in it
-SCANNED = 10  # knob values that are tried along the whole range
+SCANNED = 8  # knob values that are tried along the whole range
 NEAR = 1.6  # half the width, as a ratio, of a search around a known edge
 
 
