@@ -33,7 +33,7 @@ TOP = 80.0
 EXP_TOP = math.exp(TOP)
 FLOOR = -30.0
 CONDUCTING = 14.0  # slopes below its knee a junction conducts half a microsiemens
-LEAKAGE_KNEE = 0.1  # V; generation and surface leakage is nearly constant beyond a few tenths of a volt
+LEAKAGE_KNEE = 0.01  # V; generation and surface leakage is nearly constant beyond a tenth of a volt
 
 
 @leaf
