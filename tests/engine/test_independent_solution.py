@@ -121,7 +121,7 @@ def switch_rates(t: float, v: np.ndarray) -> np.ndarray:
     into_collector = forward - backward - backward / REVERSE
     into_base = forward / FORWARD + backward / REVERSE
     be = depletion(base, C_EMITTER, 0.5) + TAU_FORWARD * SATURATION * ef / VT
-    bc = depletion(reversed_, C_COLLECTOR, 0.33) + TAU_REVERSE * SATURATION * er / VT
+    bc = depletion(reversed_, C_COLLECTOR, 0.5) + TAU_REVERSE * SATURATION * er / VT
     matrix = np.array([[4.7e-9, 0.0, 0.0], [0.0, be + bc, -bc], [0.0, -bc, bc + 220e-12]])
     return np.linalg.solve(
         matrix,
