@@ -42,6 +42,16 @@ class Wave:
         self.times += [at, np.add(at, during)]
         self.values += [self.values[-1], value]
 
+    def later(self, at: Floats) -> Wave:
+        """The same course with ``at`` (one instant per lane) as its t = 0."""
+        middles = np.asarray(at, dtype=float)[:, None]
+        now = self.pieces(middles, middles)[0][:, 0]
+        wave = Wave(now)
+        for time, value in zip(self.times, self.values, strict=True):
+            wave.times.append(np.maximum(np.subtract(time, at), 0.0))
+            wave.values.append(np.where(np.greater(time, at), value, now))
+        return wave
+
     def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
         """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
         rows = max(1, *(np.size(v) for v in (*self.times, *self.values)))
@@ -113,6 +123,11 @@ class Timeline:
         ):
             value, _ = old.pieces(middles, middles)
             wave.values[0] = np.broadcast_to(value[:, 0], (line.lanes.count,)).copy()
+        for name, old in before.sources.items():
+            if old is not before.supply:
+                line.sources[name] = old.later(at)
+        line.sines = before.sines.copy()
+        line.sines[:, :, 2] += 2.0 * np.pi * before.sines[:, :, 1] * middles
         return line
 
     def supply_stands(self) -> None:

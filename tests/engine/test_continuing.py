@@ -9,7 +9,7 @@ from stagebook.engine.circuit.timeline import Timeline
 from stagebook.engine.primitives.signals import Anchor, crossing, level, maximum, minimum, voltage
 from stagebook.engine.run import run
 
-from .circuits import Setup, capacitor, resistor, setup, transistor, two
+from .circuits import Setup, capacitor, resistor, setup, sine, steps, transistor, two
 
 LAW = {
     "saturation_current": "1e-14 A",
@@ -84,3 +84,23 @@ def test_the_first_level_is_that_of_the_start() -> None:
     )
     at_once = level(voltage("t"), Anchor(0.0))
     assert circuit.run(at_once).value(at_once) == pytest.approx(np.array([2.0]), abs=1e-12)
+
+
+@pytest.mark.parametrize("share", [0.2, 0.5, 0.9])
+def test_generators_go_on_where_they_stood(share: float) -> None:
+    circuit = setup(
+        steps("G1", "a", "0V", (0.0, 0.0), (1e-3, 5.0), (6e-3, 5.0), (9e-3, -2.0)),
+        sine("G2", "b", "0V", 1.0, 130.0, 0.5),
+        resistor("R1", "a", "t", "1k"),
+        resistor("R2", "b", "t", "1k"),
+        capacitor("C1", "t", "0V", "1 uF"),
+        supply=None,
+        ends=12e-3,
+    )
+    lanes = circuit.lanes()
+    at = share * circuit.ends
+    line = circuit.timeline(lanes)
+    first = run(circuit.circuit, lanes, line.program(at), [], relative=1e-5)
+    later = Timeline.resumed(line, np.array([at]))
+    second = run(circuit.circuit, lanes, later.program(circuit.ends - at), [], start=first.final, relative=1e-5)
+    assert second.final == pytest.approx(circuit.run(relative=1e-5).final, abs=1e-4)
