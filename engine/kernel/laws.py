@@ -31,7 +31,7 @@ from .layout import (
 
 TOP = 80.0
 EXP_TOP = math.exp(TOP)
-FLOOR = -30.0
+FLOOR = -40.0
 CONDUCTING = 14.0  # slopes below its knee a junction conducts half a microsiemens
 LEAKAGE_KNEE = 0.01  # V; generation and surface leakage is nearly constant beyond a tenth of a volt
 

@@ -193,4 +193,4 @@ def test_every_array_of_a_run_is_contiguous(circuit: Setup, rows: list[Row], lan
     table = circuit.circuit.table(lanes)
     assert table.flags.c_contiguous
     assert table.flags.writeable
-    assert [f.name for f in fields(seen)] == ["circuit", "rows", "results"]
+    assert [f.name for f in fields(seen)] == ["circuit", "rows", "results", "keep"]

@@ -28,10 +28,10 @@ FLOOD = Demo(
         Step(
             Note(
                 "first unit: works on the bench supply, sounds when the cells are snapped on",
-                symptom="Four cells clipped in: the piezo sounds at once, dry probe. From the bench supply it stays silent.",
-                hypothesis="The bench supply rises in milliseconds, cells in less than a microsecond. About 10 pF from the"
-                " supply rail to the base of Q5 carry a current that R11 at 1M cannot drain.",
-                prediction="Slew that the latch bears is far below the 10 V/us of the cells; nothing else is in trouble.",
+                symptom="Four cells clipped in: it sounds at once, probe dry. From the bench supply it stays silent.",
+                hypothesis="The bench supply rises in milliseconds, cells in less than a microsecond. About 10 pF from"
+                " the supply rail to the base of Q5 carry a current that R11 at 1M cannot drain.",
+                prediction="The slew that the latch bears is far below the 10 V/us of the cells; nothing else in trouble.",
                 result="So it is: it trips from about 0.1 V/us on, a hundredth of what the cells do.",
                 next="Make R11 smaller.",
             ),
@@ -53,7 +53,7 @@ FLOOD = Demo(
                 "R11 100k > 22k: given up, it starves the latch",
                 hypothesis="Brute force: 22k should drain what 100k does not.",
                 change="R11 100k > 22k",
-                prediction="Slew better again. R10 gives 33 uA at 4 V in the cold and R11 takes 32 uA: hold must suffer.",
+                prediction="Slew better again. At 4 V, cold, R10 gives 33 uA and R11 takes 32 uA: hold must suffer.",
                 result="Still trips, and the latch hardly holds at low supply in the cold. Given up.",
                 next="Back to 100k and a capacitor.",
             ),

@@ -25,7 +25,7 @@ class Step:
 
 @dataclass(frozen=True)
 class Demo:
-    """A demo design: its name, which is also that of its first document, and the steps that led to the last revision."""
+    """A demo design: its name, also that of its first document, and the steps that led to the last revision."""
 
     name: str
     steps: Sequence[Step]
@@ -45,7 +45,7 @@ class Demo:
             yield design
 
     def sheets(self) -> list[MarginSheet]:
-        """The margins of every revision, computed once by ``recompute`` and shipped, so that opening needs no solver."""
+        """The margins of every revision, computed by ``recompute`` and shipped, so that opening needs no solver."""
         return [MarginSheet.from_json(sheet) for sheet in json.loads(_text(f"{self.name}_margins.json"))]
 
     def put_on(self, store: Store) -> bool:
