@@ -233,14 +233,17 @@ def run(
             pool.submit(march, *arguments, low, min(low + BLOCK, count), cancel) for low in range(0, count, BLOCK)
         }
         blocks = len(waiting)
-        while waiting:
-            done, waiting = wait(waiting, timeout=0.05, return_when=FIRST_COMPLETED)
-            for future in done:
-                future.result()
-            progress(min(count, (blocks - len(waiting)) * BLOCK), count)
-            if cancelled():
-                cancel[0] = 1
-                for future in waiting:
-                    future.cancel()
-                raise Cancelled("stopped")
+        try:
+            while waiting:
+                done, waiting = wait(waiting, timeout=0.05, return_when=FIRST_COMPLETED)
+                for future in done:
+                    future.result()
+                progress(min(count, (blocks - len(waiting)) * BLOCK), count)
+                if cancelled():
+                    raise Cancelled("stopped")
+        finally:
+            # Whatever ends the waiting, an interrupt too, ends the work.
+            cancel[0] = 1
+            for future in waiting:
+                future.cancel()
     return Observed(circuit, table.places, results, tuple(keep))

@@ -8,11 +8,13 @@ import numpy as np
 
 from ..checks.check import Ask
 from ..circuit.circuit import Circuit
+from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..results import Spread
 from .evaluate import Progress, judge, kept_state, look
 from .trials import TrialRun
 
+PORTION = 4096  # lanes in memory at a time
 Z = 1.959963984540054  # 97.5 % quantile of the normal distribution
 
 
@@ -33,31 +35,43 @@ def spread_of(
     """Spread of every ask over random lanes, by id.
 
     A trial is one lane at the knob value that the required margin asks for: it says how many lanes pass, no quantiles.
+    Lanes are run in portions, so that memory is bounded however many there are.
     """
-    seen = look(circuit, asks, lanes, progress=progress, cancelled=cancelled)
-    screened: dict[tuple[str, float], np.ndarray[tuple[int], np.dtype[np.bool_]]] = {}
-    trials: dict[str, TrialRun] = {}
-    found: dict[str, Spread] = {}
-    for ask in asks:
-        if ask.missing is not None:
-            continue
-        if ask.trial is not None:
-            if ask.screen is None:
-                continue
-            key = ask.trial.key, ask.screen
-            if key not in screened:
-                everyone = list(range(lanes.count))
-                if ask.trial.key not in trials:
-                    kept = kept_state(seen.observed, ask.trial, everyone)
-                    trials[ask.trial.key] = TrialRun(circuit, ask.trial, lanes, cancelled, kept)
-                trial = trials[ask.trial.key]
-                screened[key] = trial.holds(everyone, np.full(lanes.count, ask.screen)) & ~trial.missing
-            passed = int(screened[key].sum())
-            found[ask.id] = Spread(None, None, None, passed / lanes.count, wilson(passed, lanes.count))
-            continue
-        judged, _ = judge(ask, seen)
-        margin = np.where(np.isnan(judged.margin), -1.0, judged.margin)
-        p05, p50, p95 = (float(q) for q in np.quantile(margin, (0.05, 0.5, 0.95)))
-        passed = int((margin >= ask.required).sum())
-        found[ask.id] = Spread(p05, p50, p95, passed / lanes.count, wilson(passed, lanes.count))
-    return found
+    judged = [ask for ask in asks if ask.missing is None and (ask.trial is None or ask.screen is not None)]
+    margins: dict[str, list[Floats]] = {ask.id: [] for ask in judged if ask.trial is None}
+    passed: dict[str, int] = dict.fromkeys((ask.id for ask in judged), 0)
+    for low in range(0, lanes.count, PORTION):
+        portion = lanes.take(range(low, min(low + PORTION, lanes.count)))
+
+        def of_all(done: int, total: int, low: int = low, count: int = portion.count) -> None:
+            runs = total // count
+            progress(low * runs + done, lanes.count * runs)
+
+        seen = look(circuit, asks, portion, progress=of_all, cancelled=cancelled)
+        screened: dict[tuple[str, float], int] = {}
+        trials: dict[str, TrialRun] = {}
+        for ask in judged:
+            if ask.trial is None:
+                found = judge(ask, seen)[0].margin
+                margin = np.where(np.isnan(found), -1.0, found)
+                margins[ask.id].append(margin)
+                passed[ask.id] += int((margin >= ask.required).sum())
+            elif ask.screen is not None:
+                key = ask.trial.key, ask.screen
+                if key not in screened:
+                    everyone = range(portion.count)
+                    if ask.trial.key not in trials:
+                        kept = kept_state(seen.observed, ask.trial, everyone)
+                        trials[ask.trial.key] = TrialRun(circuit, ask.trial, portion, cancelled, kept)
+                    trial = trials[ask.trial.key]
+                    held = trial.holds(everyone, np.full(portion.count, ask.screen))
+                    screened[key] = int((held & ~trial.missing).sum())
+                passed[ask.id] += screened[key]
+    return {name: _spread(margins.get(name), count, lanes.count) for name, count in passed.items()}
+
+
+def _spread(margins: list[Floats] | None, passed: int, total: int) -> Spread:
+    if margins is None:
+        return Spread(None, None, None, passed / total, wilson(passed, total))
+    p05, p50, p95 = (float(q) for q in np.quantile(np.concatenate(margins), (0.05, 0.5, 0.95)))
+    return Spread(p05, p50, p95, passed / total, wilson(passed, total))
