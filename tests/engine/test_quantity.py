@@ -215,6 +215,10 @@ def test_rounding_up_takes_the_next_prefix() -> None:
     assert write(9.996e-6, "F", digits=2) == "10u"
 
 
+def test_a_value_is_rounded_once() -> None:
+    assert write(363335162426.75, "s", digits=12) == "100926434.007 h"  # 100926434.00743 h
+
+
 @pytest.mark.parametrize("value", [math.nan, math.inf, -math.inf])
 def test_what_is_not_finite_is_not_written(value: float) -> None:
     with pytest.raises(QuantityError, match="cannot be written"):
