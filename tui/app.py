@@ -7,7 +7,8 @@ import sys
 from argparse import ArgumentParser, Namespace
 from collections.abc import Sequence
 from importlib.metadata import PackageNotFoundError, version
-from typing import NoReturn
+from io import TextIOWrapper
+from typing import Any, NoReturn
 
 from ..engine.errors import EngineError
 from .commands import COMMANDS, command
@@ -15,10 +16,15 @@ from .commands.refusal import CommandRefused
 
 DONE, WRONG_INPUT, OWN_FAULT, STOPPED = 0, 2, 3, 130
 """Exit statuses; 1 is left to ``--strict``."""
+LONGEST_LINE = 800
+"""Characters of a refusal: what was typed is repeated in it and has no bounds."""
 
 
 class _Parser(ArgumentParser):
     """Answers a wrong command line in one line."""
+
+    def __init__(self, **how: Any) -> None:
+        super().__init__(allow_abbrev=False, **how)
 
     def error(self, message: str) -> NoReturn:
         self.exit(WRONG_INPUT, f"{self.prog}: {_one_line(message)}; {self.prog} --help says what can be written\n")
@@ -26,26 +32,28 @@ class _Parser(ArgumentParser):
 
 def main(arguments: Sequence[str] | None = None) -> int:
     """Run the program with these arguments (default: those of the command line) and return its exit status."""
+    if isinstance(sys.stdout, TextIOWrapper):
+        sys.stdout.reconfigure(errors="replace")
     written = list(sys.argv[1:] if arguments is None else arguments)
     asked = _parser(written).parse_args(written)
     try:
         status = _open_shelf(asked) if asked.command is None else command(asked.command).run(asked)
-        sys.stdout.flush()
+        print(end="", flush=True)
     except BrokenPipeError:
-        # Whoever read the output has seen enough; what is still buffered goes nowhere instead of into a traceback.
-        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        # Whoever read the output has seen enough.
+        _drop_output()
         return DONE
+    except OSError as error:
+        if error.filename is not None:
+            return _own_fault(asked, error)
+        _drop_output()
+        return _refuse(asked, f"the output cannot be written ({error.strerror}); send it elsewhere")
     except KeyboardInterrupt:
         return STOPPED
     except (EngineError, CommandRefused) as refusal:
         return _refuse(asked, str(refusal))
     except Exception as fault:
-        if os.environ.get("STAGEBOOK_TRACE"):
-            raise
-        _refuse(
-            asked, f"a fault of the program itself ({type(fault).__name__}: {fault}); STAGEBOOK_TRACE=1 shows where"
-        )
-        return OWN_FAULT
+        return _own_fault(asked, fault)
     return status
 
 
@@ -79,6 +87,18 @@ def _open_shelf(asked: Namespace) -> int:
     return open_shelf(asked)
 
 
+def _own_fault(asked: Namespace, fault: Exception) -> int:
+    if os.environ.get("STAGEBOOK_TRACE"):
+        raise fault
+    _refuse(asked, f"a fault of the program itself ({type(fault).__name__}: {fault}); STAGEBOOK_TRACE=1 shows where")
+    return OWN_FAULT
+
+
+def _drop_output() -> None:
+    """What is still buffered goes nowhere instead of into a traceback when the program ends."""
+    os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+
+
 def _refuse(asked: Namespace, words: str) -> int:
     name = f"stagebook {asked.command}" if asked.command else "stagebook"
     print(f"{name}: {_one_line(words)}", file=sys.stderr)
@@ -86,7 +106,9 @@ def _refuse(asked: Namespace, words: str) -> int:
 
 
 def _one_line(words: str) -> str:
-    """The words without anything that could break the line or steer the terminal."""
+    """The words without anything that could break the line or steer the terminal, and cut where they go on and on."""
+    if len(words) > LONGEST_LINE:
+        words = f"{words[: LONGEST_LINE // 2]} ... {words[-LONGEST_LINE // 2 :]}"
     return "".join(c if c.isprintable() else " " if c.isspace() else "?" for c in words)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 import subprocess
 import sys
 from pathlib import Path
@@ -69,6 +70,48 @@ def test_output_that_nobody_reads_to_the_end_is_no_fault() -> None:
         program.stdout.close()
         assert program.stderr.read() == b""
         assert program.wait(timeout=60) == 0
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="a device that is always full, of Linux")
+def test_output_that_cannot_be_written_is_one_line() -> None:
+    code = "import sys; from stagebook.tui.app import main; sys.exit(main(['schema']))"
+    with open("/dev/full", "w") as full:
+        done = subprocess.run([sys.executable, "-c", code], stdout=full, stderr=subprocess.PIPE, text=True, check=False)
+    assert done.returncode == 2
+    assert done.stderr.splitlines() == [
+        "stagebook schema: the output cannot be written (No space left on device); send it elsewhere"
+    ]
+
+
+def test_output_in_another_encoding_is_still_json(tmp_path: Path) -> None:
+    document = {"stagebook": 1, "name": "\u03a9", "sequences": {"alarm": {"ends": "1 s"}}}
+    (tmp_path / "ohm.json").write_text(json.dumps(document))
+    code = (
+        "import sys; from stagebook.tui.app import main\n"
+        "main(['import', 'ohm.json', '--store', 's']); main(['list', '--json', '--store', 's'])"
+    )
+    done = subprocess.run(
+        [sys.executable, "-c", code],
+        env={**os.environ, "PYTHONIOENCODING": "ascii"},
+        cwd=tmp_path,
+        capture_output=True,
+        text=True,
+        check=True,
+    )
+    first, listed = done.stdout.split("\n", 1)
+    assert first.startswith("? is on the shelf")
+    assert json.loads(listed)["designs"][0]["name"] == "\u03a9"
+
+
+def test_what_was_typed_is_not_repeated_without_end(capsys: pytest.CaptureFixture[str]) -> None:
+    assert app.main(["export", "x" * 100_000 + ".json", "out.json"]) == 2
+    assert len(capsys.readouterr().err) < 1000
+
+
+def test_words_of_options_are_written_out(capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(SystemExit):
+        app.main(["list", "--js"])
+    assert "--js" in capsys.readouterr().err
 
 
 def test_the_schema_needs_no_solver_screen_or_database() -> None:
