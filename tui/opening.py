@@ -16,9 +16,7 @@ def open_shelf(asked: Namespace) -> int:
 
     Raises CommandRefused where this terminal cannot show it or the store cannot be opened.
     """
-    words = refusal(os.environ, all(stream.isatty() for stream in (sys.stdin, sys.stdout, sys.stderr)))
-    if words:
-        raise CommandRefused(words)
+    check_terminal()
     with open_store(asked) as store:
         # Imported here: no headless command waits for the screens to load.
         from .solver import own_solver
@@ -27,3 +25,11 @@ def open_shelf(asked: Namespace) -> int:
         app = StagebookApp(store, own_solver())
         app.run()
         return app.return_code or 0
+
+
+def check_terminal() -> None:
+    """Raise CommandRefused where this terminal cannot show the interface."""
+    streams = (sys.stdin, sys.stdout, sys.stderr)
+    words = refusal(os.environ, all(stream is not None and stream.isatty() for stream in streams))
+    if words:
+        raise CommandRefused(words)

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from ..circuit.circuit import SUPPLY_SOURCE, build
+from ..circuit.circuit import SUPPLY_SOURCE, Circuit, build
 from ..design.document import Design
 from ..errors import CircuitError
 from ..kernel import layout
@@ -41,15 +41,11 @@ def waves(
     ``relative`` scales all tolerances. Raises CircuitError for an unknown sequence or net, a time outside of the
     sequence, and a run that could not be solved.
     """
-    if sequence not in design.sequences:
-        raise CircuitError(f"there is no sequence '{sequence}'; write one of {', '.join(design.sequences)}")
     circuit = build(design)
     wanted = tuple(nets) if nets else tuple(n for n in circuit.nets if n not in (SUPPLY_SOURCE, "0V"))
+    check_question(circuit, sequence, wanted, at)
     places = [circuit.index(net) for net in wanted]
-    ends = read(design.sequences[sequence].ends, "s")
     stops = None if at is None else np.array(sorted(set(at)), dtype=float)
-    if stops is not None and (stops.size == 0 or stops[0] < 0.0 or stops[-1] > ends):
-        raise CircuitError(f"times must lie between 0 s and {ends:g} s, the end of the sequence '{sequence}'")
     lanes = circuit.nominal()
     _, program = program_of(circuit, lanes, sequence, stops)
     starts = starts_of(circuit, sequence, program)
@@ -73,3 +69,18 @@ def waves(
         order = [index[int(np.searchsorted(stops, t))] for t in at or ()]
         time, values = np.array(at, dtype=float), values[order]
     return Waves(time.copy(), wanted, np.ascontiguousarray(values))
+
+
+def check_question(circuit: Circuit, sequence: str, nets: Sequence[str], at: Sequence[float] | None) -> None:
+    """Refuse what :func:`waves` cannot answer, before anything is computed.
+
+    Raises CircuitError for an unknown sequence or net and for times outside of the sequence.
+    """
+    known = circuit.design.sequences
+    if sequence not in known:
+        raise CircuitError(f"there is no sequence '{sequence}'; write one of {', '.join(known)}")
+    for net in nets:
+        circuit.index(net)
+    ends = read(known[sequence].ends, "s")
+    if at is not None and not (at and min(at) >= 0.0 and max(at) <= ends):
+        raise CircuitError(f"times must lie between 0 s and {ends:g} s, the end of the sequence '{sequence}'")

@@ -7,7 +7,12 @@ from importlib import import_module
 from typing import Protocol, cast
 
 COMMANDS = {
+    "demo": ("demo", "put the demo designs on the shelf and open it"),
     "list": ("shelf", "the designs on the shelf"),
+    "margins": ("margins", "recompute every margin of a design"),
+    "waves": ("waves", "voltages of the nominal run over time, to a CSV file"),
+    "compare": ("compare", "the stored margins of several revisions, what got worse first"),
+    "causes": ("causes", "what each changed part did to each margin"),
     "import": ("take_in", "put a design document on the shelf"),
     "export": ("hand_out", "write a design document to a file"),
     "schema": ("schema", "the JSON Schema of the design document"),

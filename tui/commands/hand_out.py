@@ -5,7 +5,8 @@ from __future__ import annotations
 import json
 from argparse import ArgumentParser, Namespace
 
-from .what import find, subject_arguments, write_file
+from .out_file import write_file
+from .what import find, subject_arguments
 
 
 def arguments(parser: ArgumentParser) -> None:
@@ -18,5 +19,5 @@ def run(asked: Namespace) -> int:
     """Write the document with its texts as typed."""
     subject = find(asked)
     document = json.dumps(subject.design.dump(), indent=2, ensure_ascii=False) + "\n"
-    write_file(asked.file, document.encode())
+    write_file(asked.file, document.encode(), subject.file)
     return 0

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import codecs
 import json
+import sys
 from argparse import ArgumentParser
 from collections.abc import Mapping, Sequence
 from textwrap import wrap
@@ -19,8 +21,9 @@ def json_argument(parser: ArgumentParser) -> None:
 
 
 def print_json(value: Mapping[str, Any]) -> None:
-    """One JSON object on standard output; numbers are finite, texts are UTF-8."""
-    print(json.dumps(value, indent=2, ensure_ascii=False, allow_nan=False))
+    """One JSON object on standard output. Numbers are finite; texts are escaped where the output is not UTF-8."""
+    plain = codecs.lookup(sys.stdout.encoding or "ascii").name != "utf-8"
+    print(json.dumps(value, indent=2, ensure_ascii=plain, allow_nan=False))
 
 
 def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: frozenset[int] = frozenset()) -> None:
@@ -44,7 +47,7 @@ def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: f
             print(" " * indent + line)
 
 
-def print_words(words: str, indent: int = 0) -> None:
-    """A sentence, broken into lines."""
-    for line in wrap(visible(words), WIDTH, initial_indent=" " * indent, subsequent_indent=" " * indent):
+def print_words(words: str, hanging: int = 0) -> None:
+    """A sentence, broken into lines; all but the first are indented by ``hanging``."""
+    for line in wrap(visible(words), WIDTH, subsequent_indent=" " * hanging):
         print(line)

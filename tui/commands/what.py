@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 from argparse import SUPPRESS, ArgumentParser, ArgumentTypeError, Namespace
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -21,11 +20,12 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class Subject:
-    """The design that a command is about. ``revision`` is None for a file and for a draft."""
+    """The design that a command is about. ``revision`` is None for a file and for a draft, ``file`` on the shelf."""
 
     name: str
     design: Design
     revision: int | None
+    file: str | None = None
 
     @property
     def title(self) -> str:
@@ -68,7 +68,7 @@ def find(asked: Namespace) -> Subject:
         if asked.draft or asked.revision is not None:
             raise CommandRefused(f"{asked.what} is a file, which has no revisions; leave out --revision and --draft")
         design = load_file(asked.what)
-        return Subject(design.name, design, None)
+        return Subject(design.name, design, None, asked.what)
     with open_store(asked) as store:
         draft = store.draft(asked.what)
         if asked.draft or (asked.revision is None and draft.base_revision is None):
@@ -88,24 +88,6 @@ def load_file(path: str) -> Design:
         return Design.load(document)
     except DesignError as refusal:
         raise CommandRefused(f"{path}: {refusal}") from refusal
-
-
-def write_file(path: str, content: bytes) -> None:
-    """Put ``content`` into a file, whole or not at all. Refusals name the file."""
-    target = Path(path)
-    half = target.with_name(f".{target.name}.{os.getpid()}")
-    try:
-        if target.exists() and not target.is_file():
-            # A device or a pipe cannot be replaced by a renamed file.
-            target.write_bytes(content)
-            return
-        half.write_bytes(content)
-        half.replace(target)
-    except (OSError, ValueError) as error:
-        half.unlink(missing_ok=True)
-        raise CommandRefused(
-            f"{path} cannot be written ({_reason(error)}); name a file in a folder of yours"
-        ) from error
 
 
 @contextmanager

@@ -9,9 +9,19 @@ from typing import Any
 
 import pytest
 
+from stagebook.engine.design.document import Design
+from stagebook.engine.studies.margins import study
+from stagebook.storage import Note, Store
 from stagebook.tui import app
+from stagebook.tui.solver_cache import prepare_here
 
 Said = tuple[int, str, str]
+
+
+@pytest.fixture(scope="session", autouse=True)
+def _solver_is_ready() -> None:
+    """No test waits for the compiler in the middle, and no command has to say that it does."""
+    prepare_here()
 
 
 @pytest.fixture
@@ -133,3 +143,50 @@ def written(document: dict[str, Any], tmp_path: Path) -> Path:
     file = tmp_path / "buzzer.json"
     file.write_text(json.dumps(document), encoding="utf-8")
     return file
+
+
+@pytest.fixture
+def bell(tmp_path: Path) -> Path:
+    """A latch with a timer and a sounder as a file."""
+    file = tmp_path / "bell.json"
+    file.write_bytes(Path(__file__).with_name("bell.json").read_bytes())
+    return file
+
+
+def part_of(document: dict[str, Any], ref: str) -> dict[str, Any]:
+    """The part of a document with this reference."""
+    return next(part for stage in document["stages"] for part in stage["parts"] if part["ref"] == ref)
+
+
+@pytest.fixture
+def shelve(document: dict[str, Any], tmp_path: Path) -> Callable[..., None]:
+    """Puts the small design on the shelf: one revision with its computed margins for every set of values."""
+
+    def put(*revisions: dict[str, str]) -> None:
+        with Store.open(tmp_path / "shelf.sqlite3") as store:
+            for place, values in enumerate(revisions):
+                for ref, value in values.items():
+                    part_of(document, ref)["value"] = value
+                design = Design.load(document)
+                if place:
+                    store.edit("buzzer", "values", design)
+                else:
+                    store.create("buzzer", design)
+                store.save("buzzer", Note(f"try {place + 1}"), study(design))
+
+    return put
+
+
+@pytest.fixture
+def untouched(tmp_path: Path) -> Callable[[], bool]:
+    """Whether the folder of the test holds just what it held at first."""
+
+    def state() -> dict[str, bytes | None]:
+        return {
+            str(file.relative_to(tmp_path)): file.read_bytes() if file.is_file() else None
+            for file in tmp_path.rglob("*")
+            if not file.name.startswith("shelf.sqlite3")
+        }
+
+    before = state()
+    return lambda: state() == before
