@@ -225,8 +225,8 @@ def watch(
         y0 = start[s]
         yg = stage[s]
         y1 = end[s]
-        u0 = max(0.0, (window[r, 0] - begin) / h)
-        u1 = min(1.0, (window[r, 1] - begin) / h)
+        u0 = (window[r, 0] - begin) / h if window[r, 0] > begin else 0.0
+        u1 = (window[r, 1] - begin) / h if window[r, 1] < finish else 1.0
         kind = row[r, ROW_KIND]
         if kind == R_LEVEL:
             value[r] = parabola(y0, yg, y1, min(u0, 1.0), gamma)
@@ -255,6 +255,13 @@ def watch(
                 status[r] = OPEN
         else:
             sign = 1.0 if kind == R_MAXIMUM else -1.0
+            if (
+                u0 == 0.0
+                and u1 == 1.0
+                and status[r] == OPEN
+                and sign * value[r] >= max(sign * y0, sign * yg, sign * y1)
+            ):
+                continue
             for n in range(3):
                 u = u0
                 if n == 1:
