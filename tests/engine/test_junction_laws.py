@@ -16,8 +16,8 @@ from stagebook.engine.kernel.layout import (
     J_BREAKDOWN,
     J_BREAKDOWN_KNEE,
     J_BREAKDOWN_SLOPE,
-    J_LEAKAGE,
     J_KNEE,
+    J_LEAKAGE,
     J_SLOPE,
     Floats,
 )

@@ -31,7 +31,7 @@ FLOOD = Demo(
                 symptom="Four cells clipped in: it sounds at once, probe dry. From the bench supply it stays silent.",
                 hypothesis="The bench supply rises in milliseconds, cells in less than a microsecond. About 10 pF from"
                 " the supply rail to the base of Q5 carry a current that R11 at 1M cannot drain.",
-                prediction="The slew that the latch bears is far below the 10 V/us of the cells; nothing else in trouble.",
+                prediction="The slew that the latch bears is far below the cells' 10 V/us; nothing else in trouble.",
                 result="So it is: it trips from about 0.1 V/us on, a hundredth of what the cells do.",
                 next="Make R11 smaller.",
             ),
