@@ -10,7 +10,7 @@ from ..design.part import Stage
 from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..kernel.layout import Floats
-from ..primitives.signals import Anchor, Row, maximum, voltage
+from ..primitives.signals import Anchor, Row, crossing, level, maximum, voltage
 from ..quantity import read
 from .check import Ask, Check, Judged, window
 from .seen import Seen
@@ -39,9 +39,14 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     first = view.anchor(first_text, sequence)
     last = view.anchor(last_text, sequence, first)
     timing = _Timing.find(view, first, last)
+    brief = _within_chatter(first, last)
 
     def judge(seen: Seen) -> Judged:
         begin, end = (_instant(seen, anchor, sequence) for anchor in (first, last))
+        if brief is not None:
+            back, settled = brief
+            over = seen.value(settled, sequence) - back.level
+            end = np.where(over > 0.0 if back.rising else over < 0.0, seen.time(back, sequence), end)
         started = np.isfinite(begin)
         outcomes = [
             (~started, check.words["never"].format(what=first_text)),
@@ -51,10 +56,20 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
         return window(end - begin, low, high, outcomes, hand)
 
     rows = tuple(anchor.row for anchor in (first, last) if anchor.row is not None)
+    rows += brief or ()
     if timing is not None:
         rows += timing.rows
     required = view.required(check.slug, check.required, requirement)
     return Ask(check, stage.name, subject, (sequence,), required, judge, rows)
+
+
+def _within_chatter(first: Anchor, last: Anchor) -> tuple[Row, Row] | None:
+    """Rows for an end that comes before the chatter is over: the end, and what the signal settled to by then. None
+    where the end is looked for from ``first`` on, without waiting for a chatter to be over."""
+    if last.row is None or last.row.start.row is None or last.row.start.row != first.row or last.row.start == first:
+        return None
+    end = last.row
+    return crossing(end.signal, end.level, end.rising, first), level(end.signal, end.start)
 
 
 def _instant(seen: Seen, anchor: Anchor, sequence: str) -> Floats:

@@ -12,7 +12,7 @@ from ..design.datum import number
 from ..design.document import Design
 from ..design.part import Part, Stage
 from ..design.requirement import Requirement
-from ..design.sequence import RelativeMoment
+from ..design.sequence import ContactEvent, RelativeMoment
 from ..errors import CircuitError, QuantityError
 from ..parts.figures import Figure, figure
 from ..primitives.builder import Bench, Handle
@@ -20,6 +20,7 @@ from ..primitives.signals import Anchor, Row, Signal, crossing, voltage
 from ..quantity import read
 
 MAIN = "alarm"
+CHATTER = 2.0  # times the longest bounce of a contact: how long what it switches may go to and fro
 
 
 @dataclass(frozen=True)
@@ -133,20 +134,30 @@ class View:
     def event(self, text: str, after: Anchor | None = None) -> Row:
         """The row that finds an observed event such as ``LS1 on`` or ``timing above 2 V``, the first one ``after``."""
         anchor = read_anchor(text)
-        start = after or Anchor()
         if anchor.level is not None:
-            return crossing(voltage(anchor.subject), anchor.level, anchor.change == "above", start)
-        on = self.bench(anchor.subject).on
-        if on is None:
-            raise CircuitError(
-                f"'{text}': part {anchor.subject} has no level at which it counts as on; write its operating_minimum"
-            )
-        plus, minus, level = on
-        if anchor.change in ("on", "in"):
-            return crossing(voltage(plus, minus), level, True, start)
-        # A load goes off after it came on: after the instant asked for, else after it first did.
-        came = after or Anchor(0.0, crossing(voltage(plus, minus), level, True))
-        return crossing(voltage(plus, minus), level, False, came)
+            signal, level, rising = voltage(anchor.subject), anchor.level, anchor.change == "above"
+            first = after or Anchor()
+        else:
+            on = self.bench(anchor.subject).on
+            if on is None:
+                raise CircuitError(
+                    f"'{text}': part {anchor.subject} has no level at which it counts as on;"
+                    " write its operating_minimum"
+                )
+            plus, minus, level = on
+            signal, rising = voltage(plus, minus), anchor.change in ("on", "in")
+            # A load goes off after it came on: after the instant asked for, else after it first did.
+            first = after or (Anchor() if rising else Anchor(0.0, crossing(signal, level, True)))
+        if first.row is not None and first.row.signal == signal and first.row.rising != rising:
+            first = Anchor(max(first.by, self.chatter), first.row)
+        return crossing(signal, level, rising, first)
+
+    @cached_property
+    def chatter(self) -> float:
+        """How long a load goes on and off with a bouncing contact, s: on counts from the first time, off after it."""
+        events = (event for sequence in self.design.sequences.values() for event in sequence.events)
+        bounces = (event.bounce for event in events if isinstance(event, ContactEvent))
+        return CHATTER * max((read(bounce.for_, "s") for bounce in bounces if bounce is not None), default=0.0)
 
     @cached_property
     def supply_current(self) -> Signal | None:
