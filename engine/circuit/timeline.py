@@ -34,13 +34,24 @@ class Wave:
 
     def step(self, at: Number, value: Number) -> None:
         """Jump to a value."""
+        self.cut(at)
         self.times += [at, at]
         self.values += [self.values[-1], value]
 
     def ramp(self, at: Number, during: Number, value: Number) -> None:
         """Move evenly to a value."""
+        self.cut(at)
         self.times += [at, np.add(at, during)]
         self.values += [self.values[-1], value]
+
+    def cut(self, at: Number) -> None:
+        """Forget what was to happen after ``at``: the next event overrides a bounce or a ramp that is not over."""
+        if not any(np.any(np.greater(time, at)) for time in self.times):
+            return
+        middles = np.reshape(np.asarray(at, dtype=float), (-1, 1))
+        now = self.pieces(middles, middles)[0][:, 0]
+        self.values = [np.where(np.greater(t, at), now, v) for t, v in zip(self.times, self.values, strict=True)]
+        self.times = [np.minimum(t, at) for t in self.times]
 
     def later(self, at: Floats) -> Wave:
         """The same course with ``at`` (one instant per lane) as its t = 0."""
@@ -170,6 +181,7 @@ class Timeline:
     def ramp_part(self, ref: str, at: float, during: float, state: str) -> None:
         """A resistance moves evenly to a value."""
         wave = self.switches[ref]
+        wave.cut(at)
         begin, end = 1.0 / np.asarray(wave.values[-1]), 1.0 / np.asarray(self._set(ref, state))
         for k in range(RAMP_PIECES):
             share = (k + 1) / RAMP_PIECES
