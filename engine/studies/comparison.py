@@ -50,17 +50,24 @@ class Against:
         return self.fell or (self.change is not None and self.change < -LOSS)
 
     @property
+    def rose(self) -> bool:
+        """Whether the verdict is a higher one."""
+        if self.before is None or self.after is None:
+            return False
+        return RANK[self.after.verdict] > RANK[self.before.verdict]
+
+    @property
     def corner_moved(self) -> bool:
         """Whether another corner has become the worst one."""
         return self.before is not None and self.after is not None and self.before.corner != self.after.corner
 
     @property
     def order(self) -> tuple[int, float]:
-        """What got worse first: fallen verdicts, then losses by size; all others by least slack."""
+        """What got worse first: fallen verdicts, then losses by size; then risen verdicts, all others by least slack."""
         if self.worse:
             return (0 if self.fell else 1, self.change if self.change is not None else -2.0)
         known = self.after or self.before
-        return (2, known.slack if known else 0.0)
+        return (2 if self.rose else 3, known.slack if known else 0.0)
 
 
 @dataclass(frozen=True, slots=True)
@@ -121,6 +128,6 @@ def compare(sides: Sequence[Side], chosen: int | None = None) -> Comparison:
     names = dict.fromkeys(name for table in reversed(tables) for name in table)
     rows = [Row(name, tuple(table.get(name) for table in tables)) for name in names]
     columns = range(1, len(sides)) if chosen is None else (chosen,)
-    rows.sort(key=lambda row: min((row.against(n).order for n in columns), default=(2, 0.0)))
+    rows.sort(key=lambda row: min((row.against(n).order for n in columns), default=(3, 0.0)))
     changed = tuple(differences(sides[0].design, side.design) for side in sides)
     return Comparison(tuple(side.label for side in sides), tuple(rows), changed)
