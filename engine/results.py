@@ -41,7 +41,8 @@ class CheckResult:
     """One margin of one design in SI units (temperature in deg C); margins are fractions of the capability.
 
     D/C checks fill ``demand`` and ``capability``; window checks fill ``limits``, ``low`` and ``high``.
-    ``margin`` is None when the verdict is UNKNOWN. ``formula`` says in words how the number is made.
+    ``margin`` is None when the verdict is UNKNOWN. ``formula`` says in words how the number is made. ``setting`` is the
+    corner itself: (reference, datum, side) with side -1 low, +1 high, for everything that is not nominal there.
     """
 
     id: str
@@ -67,6 +68,7 @@ class CheckResult:
     hand: float | None
     spread: Spread | None
     formula: str = ""
+    setting: tuple[tuple[str, str, int], ...] = ()
 
     @property
     def slack(self) -> float:
@@ -111,6 +113,7 @@ def _check(entry: Mapping[str, Any]) -> CheckResult:
     if values.get("limits") is not None:
         low, high = values["limits"]
         values["limits"] = (low, high)
+    values["setting"] = tuple((str(ref), str(datum), int(side)) for ref, datum, side in values.get("setting", ()))
     if values.get("spread") is not None:
         spread = dict(values["spread"])
         low, high = spread["interval"]

@@ -100,7 +100,12 @@ class Computing:
             try:
                 if self._prepared(stale, post):
                     found = self._solver.causes(
-                        old.design, new.design, stored=old.sheet, progress=progress, cancelled=stale
+                        old.design,
+                        new.design,
+                        stored=old.sheet,
+                        stored_new=new.sheet,
+                        progress=progress,
+                        cancelled=stale,
                     )
                     post(CausesArrived(request, found))
             except Cancelled:

@@ -35,9 +35,16 @@ class Causes(Protocol):
     """What caused every change of margin between two designs."""
 
     def __call__(
-        self, old: Design, new: Design, *, stored: MarginSheet, progress: Progress, cancelled: Cancelled
+        self,
+        old: Design,
+        new: Design,
+        *,
+        stored: MarginSheet,
+        stored_new: MarginSheet,
+        progress: Progress,
+        cancelled: Cancelled,
     ) -> CausesSheet:
-        """The shares; ``stored`` are the margins kept with the old design. Raises EngineError or Cancelled."""
+        """The shares; ``stored`` and ``stored_new`` are the margins kept. Raises EngineError or Cancelled."""
 
 
 class Preparation(Protocol):

@@ -18,7 +18,7 @@ from ..design.differences import Change, apply, differences
 from ..design.document import Design
 from ..errors import EngineError
 from ..kernel.layout import Floats
-from ..results import MarginSheet
+from ..results import Depth, MarginSheet
 from ..run import never, silent
 from .evaluate import Progress, asks_of, judge, look
 from .lanes import Setting, lanes_of
@@ -89,16 +89,17 @@ def causes(
     new: Design,
     *,
     stored: MarginSheet | None = None,
+    stored_new: MarginSheet | None = None,
     seed: int = 1,
     progress: Progress = silent,
     cancelled: Callable[[], bool] = never,
 ) -> CausesSheet:
     """Causes of every change of margin from ``old`` to ``new``. Raises EngineError or Cancelled.
 
-    ``stored`` are the margins kept with the old design: where another engine made them, the change of formula is told
-    apart.
+    ``stored`` and ``stored_new`` are the margins kept with the designs: their worst corners need not be searched again;
+    where another engine made the old ones, the change of formula is told apart.
     """
-    before, after = _Side(old, cancelled), _Side(new, cancelled)
+    before, after = _Side(old, stored, cancelled), _Side(new, stored_new, cancelled)
     common = [name for name in before.asks if name in after.asks]
     corners = {name: list(dict.fromkeys((before.corners[name], after.corners[name]))) for name in common}
     players = _players(differences(old, new))
@@ -125,12 +126,17 @@ class _Player:
 
 
 class _Side:
-    """One design with its margins' worst corners."""
+    """One design with its margins' worst corners, searched where no sheet of this engine holds them."""
 
-    def __init__(self, design: Design, cancelled: Callable[[], bool]) -> None:
+    def __init__(self, design: Design, sheet: MarginSheet | None, cancelled: Callable[[], bool]) -> None:
         circuit = build(design)
         asks = asks_of(circuit)
         self.asks = {ask.id: ask for ask in asks}
+        if sheet is not None and sheet.content == design.content and sheet.engine == ENGINE:
+            kept = {check.id: Setting.from_kept(check.setting) for check in sheet.checks}
+            if sheet.depth is not Depth.NOMINAL and self.asks.keys() <= kept.keys():
+                self.corners = kept
+                return
         self.corners = {name: corner.setting for name, corner in worst_corners(circuit, asks, cancelled).items()}
 
 

@@ -63,7 +63,7 @@ class Against:
 
     @property
     def order(self) -> tuple[int, float]:
-        """What got worse first: fallen verdicts, then losses by size; then risen verdicts, all others by least slack."""
+        """What got worse first: fallen verdicts, then losses by size; then risen verdicts, then the least slack."""
         if self.worse:
             return (0 if self.fell else 1, self.change if self.change is not None else -2.0)
         known = self.after or self.before

@@ -10,9 +10,9 @@ from itertools import product
 import numpy as np
 
 from ..kernel.layout import Floats
-from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
+from ..primitives.columns import AMBIENT, CONDITIONS, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
 
-GAIN = ("conditions", "gain")
+GAIN = (CONDITIONS, "gain")
 """The corner axis that moves the gain of all transistors together."""
 
 _WORDS = {
@@ -42,6 +42,17 @@ class Setting:
                 datum = "" if key[1] == "value" else f" {key[1]}"
                 said.append(f"{key[0]}{datum} {'high' if side > 0 else 'low'}")
         return ", ".join(said) or "nominal"
+
+    def kept(self) -> tuple[tuple[str, str, int], ...]:
+        """The setting as it is stored: everything that is not nominal."""
+        return tuple((*key, side) for key, side in (*self.axes, *self.parts) if side)
+
+    @classmethod
+    def from_kept(cls, kept: Sequence[tuple[str, str, int]]) -> Setting:
+        """The setting that :meth:`kept` stored."""
+        pairs = [((ref, datum), side) for ref, datum, side in kept]
+        axes = tuple(pair for pair in pairs if pair[0][0] == CONDITIONS)
+        return cls(axes, tuple(pair for pair in pairs if pair[0][0] != CONDITIONS))
 
 
 NOMINAL = Setting(())

@@ -319,6 +319,7 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         hand=_number(judged.hand, lane),
         spread=None,
         formula=ask.check.formula,
+        setting=corner.setting.kept(),
     )
 
 

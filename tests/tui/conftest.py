@@ -126,6 +126,7 @@ class Gates:
         new: Design,
         *,
         stored: MarginSheet,
+        stored_new: MarginSheet,
         progress: Callable[[int, int], None],
         cancelled: Callable[[], bool],
     ) -> CausesSheet:

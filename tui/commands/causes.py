@@ -28,7 +28,7 @@ def run(asked: Namespace) -> int:
     from ...engine.studies.causes import causes
 
     with progress("causes: combination") as show:
-        sheet = causes(old.design, new.design, stored=old.sheet, progress=show)
+        sheet = causes(old.design, new.design, stored=old.sheet, stored_new=new.sheet, progress=show)
     found = {"design": name, "from": old.number, "to": new.number, **_without(sheet.as_json(), "design")}
     if asked.json:
         print_json(found)
