@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import asdict, dataclass, fields
 from enum import StrEnum
@@ -73,7 +74,7 @@ class CheckResult:
     @property
     def slack(self) -> float:
         """Margin less the requirement; an unknown margin ranks below every known one."""
-        return -2.0 if self.margin is None else self.margin - self.required
+        return -math.inf if self.margin is None else self.margin - self.required
 
 
 @dataclass(frozen=True, slots=True)

@@ -21,7 +21,7 @@ from .trial import Trial
 from .view import View
 
 LOWERING = 1e-3  # s in which the trial lowers the supply
-SETTLE = 0.5  # s until the trial looks whether the latch still holds, where the requirement gives none
+SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the requirement gives none
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
 
 

@@ -49,12 +49,24 @@ class Demo:
         return [MarginSheet.from_json(sheet) for sheet in json.loads(_text(f"{self.name}_margins.json"))]
 
     def put_on(self, store: Store) -> bool:
-        """Make the history in the store; False, with nothing done, when the shelf has a design of that name."""
+        """Make the history in the store; False, with nothing done, when the shelf has a design of that name.
+
+        A history of which only the beginning is there, because its making was cut off, is carried on.
+        """
+        made = 0
         if any(row.name == self.name for row in store.designs()):
-            return False
-        store.create(self.name, self.first())
+            kept = [revision.content for revision in store.revisions(self.name)]
+            made = len(kept)
+            ours = [design.content for design in self.designs()]
+            cut_off = made < len(ours) and kept == ours[:made]
+            if not cut_off or (made == 0 and store.draft(self.name).design.content != ours[0]):
+                return False
+        else:
+            store.create(self.name, self.first())
         for number, (step, sheet) in enumerate(zip(self.steps, self.sheets(), strict=True), 1):
-            if step.parent is not None and step.parent != number - 1:
+            if number <= made:
+                continue
+            if step.parent is not None and (step.parent != number - 1 or number == made + 1):
                 store.branch(self.name, step.parent)
             for label, edit in step.edits:
                 store.edit(self.name, label, edit(store.draft(self.name).design))

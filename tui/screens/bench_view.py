@@ -10,7 +10,7 @@ from textual.containers import Horizontal, Vertical
 
 from ...engine.design.document import Design
 from ...engine.design.part import Stage
-from ...engine.results import MarginSheet
+from ...engine.results import Depth, MarginSheet
 from ..actions import bindings
 from ..bench_text import (
     check_lines,
@@ -50,6 +50,7 @@ class BenchView(Page[None]):
         self.figures = Figures()
         self._request = 0
         self._progress = ""
+        self._lanes_of = "corners"
         self._stage = 0
         self._hands: dict[str, str] = {}
         self._watched: str | None = None
@@ -185,6 +186,7 @@ class BenchView(Page[None]):
         if event.request == self._request:
             self.figures = self.figures.arrived(event.sheet)
             self._progress = spread_words(event.sheet, self.computing.lanes)
+            self._lanes_of = "corners" if event.sheet.depth is Depth.NOMINAL else "spread"
             self.show()
             self.sheet_known(event.sheet)
 
@@ -192,9 +194,9 @@ class BenchView(Page[None]):
         """For whoever waits for a depth of the draft's study."""
 
     def on_study_progress(self, event: StudyProgress) -> None:
-        """Lanes of the spread."""
+        """Lanes of the corners, then of the spread."""
         if event.request == self._request and event.done < event.total:
-            self._progress = f"spread {event.done}/{event.total}"
+            self._progress = f"{self._lanes_of} {event.done}/{event.total}"
             self.show_heading()
 
     def on_study_refused(self, event: StudyRefused) -> None:

@@ -9,6 +9,8 @@ from pathlib import Path
 
 import pytest
 
+from stagebook.engine.results import MarginSheet
+from stagebook.storage import Note, Revision, Store
 from stagebook.tui.demo import DEMOS
 
 Run = Callable[..., tuple[int, str, str]]
@@ -57,3 +59,27 @@ def test_wrong_input_is_one_line(refused: Refused, written: Path, arguments: tup
     before = written.read_bytes()
     assert says in refused("demo", *arguments)
     assert written.read_bytes() == before
+
+
+@pytest.mark.parametrize("saved", [0, 1, 3])
+def test_a_history_that_was_cut_off_is_carried_on(tmp_path: Path, saved: int) -> None:
+    demo = DEMOS[0]
+
+    class CutOff(Exception):
+        pass
+
+    class Interrupted(Store):
+        def save(self, name: str, note: Note, sheet: MarginSheet) -> Revision:
+            if len(self.revisions(name)) == saved:
+                raise CutOff
+            return super().save(name, note, sheet)
+
+    with Interrupted.open(tmp_path / "store.sqlite3") as store, pytest.raises(CutOff):
+        demo.put_on(store)
+    with Store.open(tmp_path / "store.sqlite3") as store:
+        assert len(store.revisions(demo.name)) == saved
+        assert demo.put_on(store)
+        kept = store.revisions(demo.name)
+        assert [revision.content for revision in kept] == [design.content for design in demo.designs()]
+        assert [revision.parent for revision in kept] == [step.parent for step in demo.steps]
+        assert not demo.put_on(store)
