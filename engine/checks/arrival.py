@@ -8,7 +8,7 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..primitives.signals import Anchor, maximum, voltage
-from .check import Ask, Check, Judged, ratio
+from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .view import View
 
@@ -30,13 +30,13 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
     net = next((n for n in resistor.pins.values() if n in capacitor.pins.values()), None)
     far = next((n for n in resistor.pins.values() if n != net), None)
     if net is None or far is None:
-        return Ask(
-            check, stage.name, capacitor.ref, (sequence,), required, _never,
-            missing=f"a net shared by {resistor.ref} and {capacitor.ref}",
-        )  # fmt: skip
+        missing = f"a net shared by {resistor.ref} and {capacitor.ref}"
+        return unknown(check, stage.name, capacitor.ref, sequence, required, missing)
     load = next((part for _, _, part in view.with_role("load") if view.bench(part.ref).on), None)
-    start = Anchor() if load is None else Anchor(0.0, view.event(f"{load.ref} on"))
-    end = None if load is None else Anchor(0.0, view.event(f"{load.ref} off"))
+    if load is None:
+        missing = "operating_minimum of the part in the role load, whose going off tells when the timer has run out"
+        return unknown(check, stage.name, capacitor.ref, sequence, required, missing)
+    start, end = (Anchor(0.0, view.event(f"{load.ref} {change}")) for change in ("on", "off"))
     reached = maximum(voltage(net), start, end)
     rail = maximum(voltage(far), start)
 
@@ -50,14 +50,11 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
         leak = 0.0 if leakage is None else np.asarray(leakage(seen.lanes))
         final = seen.value(rail, sequence) / (1.0 + seen.lanes[resistor.ref, "value"] * leak)
         started = np.isfinite(seen.value(rail, sequence))
-        return ratio(threshold, final, [(~started, check.words["never"])], hand=1.0 - threshold / final)
+        outcomes = [(~started, check.words["never"]), (~np.isfinite(threshold), check.words["late"])]
+        return ratio(threshold, final, outcomes, hand=1.0 - threshold / final)
 
     rows = (reached, rail)
     return Ask(check, stage.name, capacitor.ref, (sequence,), required, judge, rows)
-
-
-def _never(seen: Seen) -> Judged:
-    return Judged(np.full(seen.lanes.count, np.nan))
 
 
 CHECKS = (
@@ -69,6 +66,9 @@ CHECKS = (
         required=0.3,
         formula="D = voltage at which the timer runs out, C = rail / (1 + R G_leak), the threshold part unloaded",
         asks=asks,
-        words={"never": "the timer was never started"},
+        words={
+            "never": "the timer was never started",
+            "late": "does not run out within the sequence, even without leakage",
+        },
     ),
 )
