@@ -7,10 +7,10 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
-from ..primitives.signals import Anchor, level, voltage
-from .check import Ask, Check, Judged, ratio
+from ..primitives.signals import Anchor, Row, level, voltage
+from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
-from .view import View
+from .view import View, polarity
 
 SATURATED = 0.2  # V across a transistor that is fully on, from memory
 
@@ -19,9 +19,15 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every driver with a load."""
     for stage, role, part in view.with_role("driver"):
         load = view.role(stage, "load" if role == "driver" else role.replace("driver", "load"))
-        if load is None or view.bench(load.ref).on is None or view.bench(part.ref).gain is None:
+        if load is None or view.bench(part.ref).gain is None:
             continue
-        yield _ask(check, view, stage, part, load)
+        if view.bench(load.ref).on is None:
+            requirement = view.requirement(check.slug, part.ref, stage.name)
+            required = view.required(check.slug, check.required, requirement)
+            missing = f"operating_minimum of {load.ref}"
+            yield unknown(check, stage.name, part.ref, view.sequence(requirement), required, missing)
+        else:
+            yield _ask(check, view, stage, part, load)
 
 
 def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
@@ -36,7 +42,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
     drop = level(voltage(part.pins["collector"], part.pins["emitter"]), at)
     resistor = view.role(stage, "base_resistor")
     leak = view.base_emitter_resistor(stage, "driver")
-    rail = level(voltage(plus), at)
+    drive = _drive(part, resistor, at)
 
     def judge(seen: Seen) -> Judged:
         gain = np.asarray(bench.gain(seen.lanes)) if bench.gain is not None else np.ones(seen.lanes.count)
@@ -46,9 +52,9 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         wanted = driven.draw(seen.lanes, volts)
         never = ~seen.seen(base, sequence)
         hand = None
-        if resistor is not None and bench.base_voltage is not None:
-            v_be = bench.base_voltage(seen.lanes, 1e-3)
-            i_b = (seen.value(rail, sequence) - v_be) / seen.lanes[resistor.ref, "value"]
+        if resistor is not None and drive is not None and bench.base_voltage is not None:
+            v_be = bench.base_voltage(seen.lanes, wanted)
+            i_b = (seen.value(drive, sequence) - v_be) / seen.lanes[resistor.ref, "value"]
             if leak is not None:
                 i_b = i_b - v_be / seen.lanes[leak.ref, "value"]
             hand = 1.0 - wanted / gain / np.where(i_b > 0.0, i_b, np.nan)
@@ -56,7 +62,16 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         return ratio(wanted / gain, supplied, [(never, check.words["never"].format(load=load.ref))], hand)
 
     required = view.required(check.slug, check.required, requirement)
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=(base, across, drop, rail))
+    rows = (base, across, drop, *(() if drive is None else (drive,)))
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
+
+
+def _drive(part: Part, resistor: Part | None, at: Anchor) -> Row | None:
+    """What drives the base through its resistor, against the emitter; None where the resistor is not at the base."""
+    if resistor is None or part.pins["base"] not in resistor.pins.values():
+        return None
+    far = next((net for net in resistor.pins.values() if net != part.pins["base"]), part.pins["base"])
+    return level(voltage(far, part.pins["emitter"]).scaled(polarity(part)), at)
 
 
 CHECKS = (

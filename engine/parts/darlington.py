@@ -32,7 +32,7 @@ def _note_laws(bench: Bench, first: Laws, second: Laws) -> None:
         b1, b2 = np.asarray(one.gain(lanes)), np.asarray(two.gain(lanes))
         return np.asarray(b1 + b2 + b1 * b2)
 
-    def base_voltage(lanes: Lanes, current: float) -> Floats:
+    def base_voltage(lanes: Lanes, current: Floats | float) -> Floats:
         assert one.base_voltage is not None
         assert two.base_voltage is not None
         assert two.gain is not None

@@ -99,7 +99,7 @@ class Bench:
     on: tuple[str, str, float] | None = None
     draw: Callable[[Lanes, Floats], Floats] | None = None
     gain: Law | None = None
-    base_voltage: Callable[[Lanes, float], Floats] | None = None
+    base_voltage: Callable[[Lanes, Floats | float], Floats] | None = None
     leakage: Law | None = None
     leak_conductance: Law | None = None
 
