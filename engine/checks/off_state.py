@@ -8,7 +8,7 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..primitives.signals import Anchor, level
-from .check import Ask, Check, Judged, ratio
+from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .view import View, forward_base_voltage
 
@@ -31,7 +31,10 @@ def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
     at = view.moment(sequence, "standby") or Anchor(0.5 * view.ends(sequence))
     across = level(forward_base_voltage(part), at)
     permitted = view.extra(requirement, "off_current", "A") or PERMITTED
+    required = view.required(check.slug, check.required, requirement)
     bench = view.bench(part.ref)
+    if bench.leakage is None:
+        return unknown(check, stage.name, part.ref, sequence, required, f"i_cbo of {part.ref}")
     resistor = view.base_emitter_resistor(stage, role)
 
     def judge(seen: Seen) -> Judged:
@@ -42,7 +45,6 @@ def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
             hand = 1.0 - np.asarray(bench.leakage(seen.lanes)) * seen.lanes[resistor.ref, "value"] / allowed
         return ratio(np.maximum(0.0, seen.value(across, sequence)), allowed, hand=hand)
 
-    required = view.required(check.slug, check.required, requirement)
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=(across,))
 
 
