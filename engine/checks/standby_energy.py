@@ -30,23 +30,27 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     capacity = view.extra(requirement, "capacity", "Ah")
     standby_time = view.extra(requirement, "standby_time", "s")
     current = view.supply_current
-    for missing, value in (
-        ("capacity of the cells (requirement field capacity)", capacity),
-        ("stand-by time (requirement field standby_time)", standby_time),
-        ("source_resistance in the conditions, through which the current is seen", current),
-    ):
+    alarm_time = view.extra(requirement, "alarm_time", "s") or 0.0
+    sounding_at = view.moment(sequence, "sounding")
+    needs: dict[str, object] = {
+        "capacity of the cells (requirement field capacity)": capacity,
+        "stand-by time (requirement field standby_time)": standby_time,
+        "source_resistance in the conditions, through which the current is seen": current,
+        f"moment sounding of the sequence {sequence}, at which the alarm current is read": sounding_at
+        if alarm_time
+        else 0.0,
+    }
+    for missing, value in needs.items():
         if value is None:
             return unknown(check, stage, subject, sequence, required, missing)
     assert capacity is not None
     assert standby_time is not None
     assert current is not None
-    alarm_time = view.extra(requirement, "alarm_time", "s") or 0.0
     age = view.extra(requirement, "age", "%")
     cold = view.extra(requirement, "cold", "%")
     lost = view.extra(requirement, "self_discharge", "%") or 0.0
     usable = capacity * (1.0 if age is None else age) * (1.0 if cold is None else cold) * (1.0 - lost)
     standby = level(current, view.moment(sequence, "standby") or Anchor(0.5 * view.ends(sequence)))
-    sounding_at = view.moment(sequence, "sounding")
     sounding = None if sounding_at is None else level(current, sounding_at)
 
     def judge(seen: Seen) -> Judged:
