@@ -47,11 +47,14 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         whole = integral(power, Anchor(0.0, on), Anchor(0.0, off))
 
     def judge(seen: Seen) -> Judged:
-        powers = [np.nan_to_num(seen.value(row, sequence)) for row in steady]
+        powers = [seen.value(row, sequence) for row in steady]
         if whole is not None:
             lasted = seen.value(off, sequence) - seen.value(on, sequence)
-            powers.append(np.nan_to_num(seen.value(whole, sequence) / np.where(lasted > 0.0, lasted, np.nan)))
-        return ratio(np.max(powers, axis=0), factor * permitted(rating.low, seen.lanes.ambient))
+            powers.append(seen.value(whole, sequence) / np.where(lasted > 0.0, lasted, np.nan))
+        never = np.isnan(powers).all(axis=0)
+        largest = np.max(np.nan_to_num(powers), axis=0)
+        allowed = factor * permitted(rating.low, seen.lanes.ambient)
+        return ratio(largest, allowed, [(never, check.words["never"])])
 
     rows = (*steady, *((whole, on, off) if whole is not None else ()))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
@@ -66,5 +69,6 @@ CHECKS = (
         required=0.0,
         formula="D = largest power at the moments of the sequence and averaged over the alarm, C = derating x P(T)",
         asks=asks,
+        words={"never": "none of the moments at which its power is read ever came"},
     ),
 )
