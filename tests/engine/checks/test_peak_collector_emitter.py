@@ -1,0 +1,66 @@
+"""Check 8, peak collector-emitter: the largest voltage of all sequences against 0.8 V_CEO (factor from memory)."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import pytest
+
+from stagebook.engine.design.document import Design
+from stagebook.engine.results import Verdict
+
+from ..circuits import Json, resistor, transistor, two
+from .sheets import CONNECT, design, exact, margin
+
+DATA: Json = {"gain": "200", "v_be": "0.64 V", "v_ceo": "45 V"}
+
+
+def switch(supply: str, data: Json = DATA, kind: str = "npn", **more: Any) -> Design:
+    """A transistor that is off, its collector pulled to the other rail."""
+    rail, common = ("supply", "0V") if kind == "npn" else ("0V", "supply")
+    return design(
+        exact(resistor("R1", "base", common, "10k")),
+        exact(resistor("R2", rail, "out", "10k")),
+        transistor("Q1", "out", "base", common, kind, data=data),
+        supply=supply,
+        ambient="25 C",
+        **more,
+    )
+
+
+@pytest.mark.parametrize("kind", ["npn", "pnp"])
+@pytest.mark.parametrize(
+    ("supply", "expected", "verdict"),
+    [("24 V", 1.0 - 24.0 / 36.0, Verdict.PASS), ("40 V", 1.0 - 40.0 / 36.0, Verdict.FAIL)],
+)
+def test_the_supply_against_the_derated_rating(kind: str, supply: str, expected: float, verdict: Verdict) -> None:
+    found = margin(switch(supply, kind=kind), "peak_collector_emitter", "Q1")
+    assert found.margin == pytest.approx(expected, abs=1e-3)
+    assert (found.capability, found.verdict) == (pytest.approx(36.0), verdict)
+
+
+def test_a_transient_counts_and_not_only_what_stands() -> None:
+    # A generator that gives 30 V for 1 ms between moments: 1 - 30/36.
+    pulse = two(
+        "generator",
+        "G1",
+        "out",
+        "0V",
+        waveform={"steps": [["0 s", "5 V"], ["0.5 s", "5 V"], ["0.5001 s", "30 V"], ["0.501 s", "30 V"],
+                            ["0.5011 s", "5 V"]]},
+    )  # fmt: skip
+    parts = [exact(resistor("R1", "base", "0V", "10k")), pulse, transistor("Q1", "out", "base", "0V", data=DATA)]
+    feed = exact(resistor("R3", "supply", "0V", "10k"))
+    found = margin(design(*parts, feed, events=[CONNECT]), "peak_collector_emitter", "Q1")
+    assert found.margin == pytest.approx(1.0 - 30.0 / 36.0, abs=1e-3)
+
+
+def test_derating_of_the_design() -> None:
+    found = margin(switch("40 V", derating={"v_ceo": "100 %"}), "peak_collector_emitter", "Q1")
+    assert found.margin == pytest.approx(1.0 - 40.0 / 45.0, abs=1e-3)
+
+
+def test_without_the_rating_it_is_unknown() -> None:
+    data = {key: text for key, text in DATA.items() if key != "v_ceo"}
+    found = margin(switch("24 V", data), "peak_collector_emitter", "Q1")
+    assert (found.margin, found.verdict, found.reason) == (None, Verdict.UNKNOWN, "missing: v_ceo of Q1")
