@@ -22,7 +22,7 @@ from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..results import CheckResult, Depth, MarginSheet, Verdict
 from ..run import never, silent
-from .evaluate import Progress, asks_of, judge, look
+from .evaluate import Progress, asks_of, judge, kept_state, look
 from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, settings, tolerances
 from .spread import spread_of
 from .trials import TrialRun
@@ -30,7 +30,7 @@ from .trials import TrialRun
 ENGINE = "1"
 """Version of laws and formulas, stored with every margin: it moves when the same document gives other numbers."""
 WORST_CONDITIONS, WORST_OF_TRIAL = 2, 6  # corners of the conditions that are tried with part tolerances
-COARSE = 1.3  # resolution of the trials that only find the worst conditions
+COARSE, SIDES = 1.3, 1.06  # resolution of the trials that only find the worst conditions, the side that hurts
 MATTERS, SHARE = 0.002, 0.05  # a corner names what moves the margin by so much, and by so much of the largest move
 
 
@@ -132,7 +132,7 @@ def _corners(
         progress=progress, cancelled=cancelled,
     )  # fmt: skip
     judged = {ask.id: judge(ask, first) for ask in asks}
-    edges = _single_edges(circuit, asks, nominal, lanes_of(columns, single), cancelled)
+    edges = _single_edges(circuit, asks, nominal, first, range(len(conditions), len(tried)), cancelled)
     slopes = {ask.id: _slopes(ask, judged[ask.id][0], first, edges, len(conditions)) for ask in asks}
     vertices: dict[Setting, int] = {}
     wanted: dict[str, list[int]] = {}
@@ -172,18 +172,21 @@ def _single_edges(
     circuit: Circuit,
     asks: tuple[Ask, ...],
     nominal: dict[str, Corner],
-    single: Lanes,
+    seen: Seen,
+    single: Sequence[int],
     cancelled: Callable[[], bool],
 ) -> dict[str, Floats]:
     """What falls when a trial's circuit gets weaker, with one part at an end: the logarithm of the knob at the edge,
-    searched near the nominal one, or, where the nominal circuit never gives in, how far it stayed from it."""
+    searched near the nominal one, or, where the nominal circuit never gives in, how far it stayed from it. ``single``
+    are the lanes of ``seen`` in which one part is at an end."""
     found: dict[str, Floats] = {}
     for ask in asks:
         edge = nominal[ask.id].edge
         if ask.trial is None or ask.trial.key in found or edge is None or edge.always[0] or edge.missing[0]:
             continue
         near = None if edge.never[0] else float(edge.knob[0])
-        own = TrialRun(circuit, ask.trial, single, cancelled).edge(around=near)
+        kept = kept_state(seen.observed, ask.trial, single)
+        own = TrialRun(circuit, ask.trial, seen.lanes.take(single), cancelled, kept).edge(around=near, resolution=SIDES)
         found[ask.trial.key] = own.spare if edge.never[0] else np.log(own.knob)
     return found
 
