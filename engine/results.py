@@ -8,6 +8,9 @@ from dataclasses import asdict, dataclass, fields
 from enum import StrEnum
 from typing import Any
 
+ENGINE = "1"
+"""Version of laws and formulas, stored with every margin: it moves when the same document gives other numbers."""
+
 
 class Verdict(StrEnum):
     """What a margin says about a requirement."""

@@ -6,7 +6,7 @@ from ..engine import edit
 from ..engine.design.differences import Change, differences
 from ..engine.design.document import Design
 from ..engine.errors import EngineError
-from ..engine.results import Depth, MarginSheet
+from ..engine.results import ENGINE, Depth, MarginSheet
 from ..storage.store import Store
 from ..storage.values import Draft, Note, Revision
 
@@ -34,6 +34,13 @@ class Drafting:
     def design(self) -> Design:
         """The design as it stands."""
         return self.draft.design
+
+    def stored_figures(self) -> MarginSheet | None:
+        """The revision's own margins where the draft is just that revision and this engine made them in full."""
+        sheet = None if self.base is None else self.base.sheet
+        if sheet is None or sheet.content != self.design.content or sheet.engine != ENGINE:
+            return None
+        return sheet if sheet.depth is Depth.SPREAD else None
 
     def take_over(self) -> None:
         """Takes the design from another sitting and reads the draft as that one left it."""

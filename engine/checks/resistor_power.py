@@ -51,7 +51,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         if whole is not None:
             lasted = seen.value(off, sequence) - seen.value(on, sequence)
             powers.append(seen.value(whole, sequence) / np.where(lasted > 0.0, lasted, np.nan))
-        never = np.isnan(powers).all(axis=0)
+        never = np.asarray(np.isnan(powers).all(axis=0))
         largest = np.max(np.nan_to_num(powers), axis=0)
         allowed = factor * permitted(rating.low, seen.lanes.ambient)
         return ratio(largest, allowed, [(never, check.words["never"])])

@@ -18,11 +18,11 @@ from ..design.differences import Change, apply, differences
 from ..design.document import Design
 from ..errors import EngineError
 from ..kernel.layout import Floats
-from ..results import Depth, MarginSheet
+from ..results import ENGINE, Depth, MarginSheet
 from ..run import never, silent
 from .evaluate import Progress, asks_of, judge, look
 from .lanes import Setting, lanes_of
-from .margins import ENGINE, worst_corners
+from .margins import worst_corners
 from .shapley import EXACT_UP_TO, Chosen, shares
 
 STRUCTURE = ("added", "removed", "net")

@@ -20,15 +20,13 @@ from ..circuit.circuit import Circuit, build
 from ..design.document import Design
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
-from ..results import CheckResult, Depth, MarginSheet, Verdict
+from ..results import ENGINE, CheckResult, Depth, MarginSheet, Verdict
 from ..run import never, silent
 from .evaluate import Progress, asks_of, judge, kept_state, look
 from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, settings, tolerances
 from .spread import spread_of
 from .trials import TrialRun
 
-ENGINE = "1"
-"""Version of laws and formulas, stored with every margin: it moves when the same document gives other numbers."""
 WORST_CONDITIONS, WORST_OF_TRIAL = 2, 6  # corners of the conditions that are tried with part tolerances
 COARSE, SIDES = 1.3, 1.06  # resolution of the trials that only find the worst conditions, the side that hurts
 MATTERS, SHARE = 0.002, 0.05  # a corner names what moves the margin by so much, and by so much of the largest move

@@ -361,3 +361,21 @@ async def test_comparing_an_unchanged_draft_asks_for_no_causes(app: StagebookApp
         await pilot.press("c")
         await settled(pilot)
         assert "nothing was changed" in seen(pilot)
+
+
+async def test_figures_that_a_revision_holds_are_not_computed_again(app: StagebookApp, gates: Gates) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        bench = await to_timer(pilot)
+        await pilot.press("full_stop")
+        await settled(pilot)
+        await pilot.press("s", *"why", "enter")
+        await until(pilot, lambda: "saved as r3" in notice(pilot))
+        studied = list(gates.studied)
+        await pilot.press("full_stop")
+        await settled(pilot)
+        assert len(gates.studied) == len(studied) + 1
+        await pilot.press("u")
+        await settled(pilot)
+        assert len(gates.studied) == len(studied) + 1
+        assert not bench.figures.worst_old
+        assert not bench.figures.spread_old

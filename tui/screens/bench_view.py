@@ -36,6 +36,9 @@ from ..widgets.rule import Divider, Rule
 from ..widgets.value_entry import ValueEntry
 from .page import Page
 
+NO_REQUEST = -1
+"""What no message of a study answers."""
+
 
 class BenchView(Page[None]):
     """One design's draft. State: the draft, the figures, the chosen stage, and the hand in each stage."""
@@ -175,8 +178,17 @@ class BenchView(Page[None]):
     # -- studies
 
     def study(self) -> None:
-        """The draft changed: its figures are old and a new study begins."""
+        """The draft changed: its figures are old and a new study begins, unless a revision holds its figures."""
         self.figures = self.figures.edited()
+        stored = self.drafting.stored_figures()
+        if stored is not None and stored.lanes >= self.computing.lanes:
+            self.computing.cancel_study()
+            self._request = NO_REQUEST
+            self.figures = self.figures.arrived(stored)
+            self._progress = spread_words(stored, self.computing.lanes)
+            self.show()
+            self.sheet_known(stored)
+            return
         self._progress = "computing"
         self._request = self.computing.study(self.design, self.post_message)
         self.show()
