@@ -21,6 +21,7 @@ if TYPE_CHECKING:
     from ..design.sequence import Event, Sequence
 
 DEFAULT_RISE = 100e-9  # s, a supply that no event connects
+HALF_JUMP = 0.5e-12  # s, half of the step with which the kernel takes in what an event does
 RAMP_PIECES = 16  # a resistance that moves evenly is not a conductance that does: straight pieces
 Number = Floats | float
 
@@ -127,7 +128,9 @@ class Timeline:
     def resumed(cls, before: Timeline, at: Floats) -> Timeline:
         """A timeline that goes on, from its own t = 0, where another one stood at ``at`` (one instant per lane)."""
         line = cls(before.circuit, before.lanes)
-        middles = np.asarray(at, dtype=float)[:, None]
+        # A state is kept at the end of a step. Where an event ends the step, what it does has not happened yet.
+        at = np.maximum(0.0, at - np.maximum(HALF_JUMP, 8.0 * np.spacing(np.abs(at))))
+        middles = at[:, None]
         for wave, old in (
             (line.supply, before.supply),
             *((line.switches[ref], old) for ref, old in before.switches.items()),

@@ -104,3 +104,47 @@ def test_generators_go_on_where_they_stood(share: float) -> None:
     later = Timeline.resumed(line, np.array([at]))
     second = run(circuit.circuit, lanes, later.program(circuit.ends - at), [], start=first.final, relative=1e-5)
     assert second.final == pytest.approx(circuit.run(relative=1e-5).final, abs=1e-4)
+
+
+def test_a_state_kept_at_an_event_goes_on_before_it() -> None:
+    # The last step before an event ends at it: what was kept there knows nothing of the event, nor may what follows.
+    circuit = setup(
+        two("contact", "S1", "supply", "t"),
+        resistor("R1", "t", "0V", "1k"),
+        steps("G1", "a", "0V", (0.0, 1.0), (20e-3, 1.0), (20e-3, 5.0)),
+        resistor("R2", "a", "0V", "1k"),
+        events=[
+            {"at": "0 s", "event": "connect supply", "rise": "1 us"},
+            {"at": "20 ms", "event": "close", "part": "S1"},
+        ],
+        ends=50e-3,
+    )
+    begin = level(voltage("0V"), Anchor(19e-3))
+    seen = circuit.run(keep=[begin])
+    state, at = seen.state(begin)
+    assert at == pytest.approx(np.array([20e-3]), rel=1e-9)
+    line = Timeline.resumed(circuit.timeline(circuit.lanes()), at)
+    lanes = circuit.lanes()
+    closed, stepped = (level(voltage(net), Anchor(5e-3)) for net in ("t", "a"))
+    later = run(circuit.circuit, lanes, line.program(10e-3), [closed, stepped], start=state)
+    assert later.value(closed) == pytest.approx(np.array([0.0]), abs=1e-3)
+    assert later.value(stepped) == pytest.approx(np.array([5.0]), abs=1e-3)
+
+
+def test_a_state_kept_after_an_event_goes_on_after_it() -> None:
+    circuit = setup(
+        two("contact", "S1", "supply", "t"),
+        resistor("R1", "t", "0V", "1k"),
+        events=[
+            {"at": "0 s", "event": "connect supply", "rise": "1 us"},
+            {"at": "20 ms", "event": "close", "part": "S1"},
+        ],
+        ends=50e-3,
+    )
+    rises = crossing(voltage("t"), 1.0, rising=True)
+    state, at = circuit.run(keep=[rises]).state(rises)
+    lanes = circuit.lanes()
+    line = Timeline.resumed(circuit.timeline(lanes), at)
+    later = level(voltage("t"), Anchor(5e-3))
+    seen = run(circuit.circuit, lanes, line.program(10e-3), [later], start=state)
+    assert seen.value(later) == pytest.approx(np.array([6.0]), abs=1e-2)
