@@ -178,7 +178,7 @@ def _single_edges(
     searched near the nominal one, or, where the nominal circuit never gives in, how far it stayed from it. ``single``
     are the lanes of ``seen`` in which one part is at an end."""
     found: dict[str, Floats] = {}
-    for ask in asks:
+    for ask in asks if single else ():
         edge = nominal[ask.id].edge
         if ask.trial is None or ask.trial.key in found or edge is None or edge.always[0] or edge.missing[0]:
             continue
