@@ -31,10 +31,16 @@ def _pair(view: View) -> Iterator[tuple[Stage, Part, Part]]:
             yield stage, view.design.part(stage.roles["latch_npn"]), view.design.part(stage.roles["latch_pnp"])
 
 
-def _latch_current(view: View, pnp: Part) -> Signal:
-    """Current into the latch: the emitter current of its pnp."""
-    bench = view.bench(pnp.ref)
-    return (bench.currents["collector"] + bench.currents["base"]).scaled(-1.0)
+def _latch_current(view: View, stage: Stage, pnp: Part) -> Signal:
+    """Current into the latch: the emitter current of its pnp, and what the resistor across its junction takes."""
+    current = view.bench(pnp.ref).currents["emitter"]
+    emitter, base = pnp.pins["emitter"], pnp.pins["base"]
+    resistor = view.base_emitter_resistor(stage, "latch_pnp")
+    if resistor is not None and set(resistor.pins.values()) == {emitter, base}:
+        through = view.bench(resistor.ref).currents.get("a")
+        if through is not None:
+            current += through.scaled(1.0 if resistor.pins["a"] == emitter else -1.0)
+    return current
 
 
 def _hold_trial(view: View, stage: Stage, npn: Part, pnp: Part, sequence: str, settle: float) -> Trial:
@@ -45,7 +51,7 @@ def _hold_trial(view: View, stage: Stage, npn: Part, pnp: Part, sequence: str, s
     ends = LOWERING + settle
     across = level(voltage(pnp.pins["emitter"], pnp.pins["collector"]), Anchor(ends))
     rail = level(voltage(pnp.pins["emitter"], npn.pins["emitter"]), Anchor(ends))
-    current = level(_latch_current(view, pnp), Anchor(ends))
+    current = level(_latch_current(view, stage, pnp), Anchor(ends))
 
     def drive(line: Timeline, knob: Floats) -> None:
         line.move_supply(0.0, line.lanes[SUPPLY] / knob, LOWERING)
@@ -78,7 +84,7 @@ def _hold_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> A
     required = view.required(check.slug, check.required, requirement)
     trial = _hold_trial(view, stage, npn, pnp, sequence, view.extra(requirement, "settle", "s") or SETTLE)
     assert trial.start is not None
-    current = level(_latch_current(view, pnp), trial.start)
+    current = level(_latch_current(view, stage, pnp), trial.start)
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)
@@ -124,7 +130,7 @@ def _reset_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part, seq
     required = view.required(check.slug, check.required, requirement)
     hold = view.requirement("latch_hold", npn.ref, pnp.ref, stage.name)
     trial = _hold_trial(view, stage, npn, pnp, view.sequence(hold), view.extra(hold, "settle", "s") or SETTLE)
-    residual = minimum(_latch_current(view, pnp), at, Anchor(at.by + 1e-3, at.row))
+    residual = minimum(_latch_current(view, stage, pnp), at, Anchor(at.by + 1e-3, at.row))
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)
