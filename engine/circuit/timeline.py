@@ -66,19 +66,30 @@ class Wave:
 
     def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
         """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
-        rows = max(1, *(np.size(v) for v in (*self.times, *self.values)))
-        times = np.stack([np.broadcast_to(np.asarray(t, dtype=float), (rows,)) for t in self.times], axis=1)
-        values = np.stack([np.broadcast_to(np.asarray(v, dtype=float), (rows,)) for v in self.values], axis=1)
-        rows = max(rows, middles.shape[0])
+        times, values = _stacked(self.times), _stacked(self.values)
+        # Times are mostly the same in all lanes: then one search serves them all.
+        rows = max(times.shape[0], middles.shape[0])
+        searched = zip(
+            np.broadcast_to(times, (rows, times.shape[1])),
+            np.broadcast_to(middles, (rows, middles.shape[1])),
+            strict=True,
+        )
+        place = np.stack([np.searchsorted(t, m, side="right") - 1 for t, m in searched])
+        rows = max(rows, values.shape[0])
+        place = np.broadcast_to(place, (rows, place.shape[1]))
         times, values = (np.broadcast_to(a, (rows, a.shape[1])) for a in (times, values))
-        middles = np.broadcast_to(middles, (rows, middles.shape[1]))
-        place = np.stack([np.searchsorted(t, m, side="right") - 1 for t, m in zip(times, middles, strict=True)])
         after = np.minimum(place + 1, times.shape[1] - 1)
         t0, t1 = np.take_along_axis(times, place, 1), np.take_along_axis(times, after, 1)
         v0, v1 = np.take_along_axis(values, place, 1), np.take_along_axis(values, after, 1)
         span = np.where(t1 > t0, t1 - t0, 1.0)
         slope = np.where(t1 > t0, (v1 - v0) / span, 0.0)
         return v0 + slope * (np.broadcast_to(starts, place.shape) - t0), slope
+
+
+def _stacked(points: list[Number]) -> Floats:
+    """Points as (lanes or 1, points)."""
+    rows = max(1, *(np.size(v) for v in points))
+    return np.stack([np.broadcast_to(np.asarray(v, dtype=float), (rows,)) for v in points], axis=1)
 
 
 class Timeline:
