@@ -3,14 +3,15 @@
 from __future__ import annotations
 
 import importlib
+import subprocess
 import tomllib
+import zipfile
 from pathlib import Path
 from typing import Any
 
 import pytest
 
-TREE = Path(__file__).parents[1]
-FOLDERS = ("engine", "storage", "tui")
+from .conftest import FOLDERS, TREE
 
 
 @pytest.fixture(scope="module")
@@ -54,3 +55,20 @@ def test_the_program_can_be_called(project: dict[str, Any]) -> None:
 def test_nothing_is_put_into_the_top_level_of_site_packages(project: dict[str, Any]) -> None:
     assert all(name.startswith("stagebook.") for name in project["tool"]["setuptools"]["packages"])
     assert set(project["tool"]["setuptools"]["package-dir"]) == {f"stagebook.{folder}" for folder in FOLDERS}
+
+
+def test_the_wheel_holds_every_file_of_the_tree_and_no_other(wheel: Path) -> None:
+    with zipfile.ZipFile(wheel) as packed:
+        found = {name for name in packed.namelist() if ".dist-info/" not in name}
+    tree = {
+        f"stagebook/{file.relative_to(TREE).as_posix()}"
+        for folder in FOLDERS
+        for file in (TREE / folder).rglob("*")
+        if file.is_file() and "__pycache__" not in file.parts
+    }
+    assert found == tree
+
+
+def test_the_installed_program_knows_its_version(installed: Path, project: dict[str, Any]) -> None:
+    done = subprocess.run([installed, "--version"], cwd="/", env={}, capture_output=True, text=True, check=True)
+    assert done.stdout == f"stagebook {project['project']['version']}\n"
