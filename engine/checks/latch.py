@@ -10,12 +10,12 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..circuit.timeline import Timeline
-from ..design.part import Part, Stage
 from ..kernel.layout import Floats
-from ..primitives.columns import SUPPLY
-from ..primitives.signals import Anchor, Signal, level, minimum, voltage
+from ..primitives.columns import SUPPLY, Lanes
+from ..primitives.signals import Anchor, level, minimum
 from ..run import Observed
 from .check import Ask, Check, Judged, Mask, ratio
+from .complementary_latch import Latch, latches
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -25,66 +25,49 @@ SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
 
 
-def _pair(view: View) -> Iterator[tuple[Stage, Part, Part]]:
-    for stage in view.design.stages:
-        if "latch_npn" in stage.roles and "latch_pnp" in stage.roles:
-            yield stage, view.design.part(stage.roles["latch_npn"]), view.design.part(stage.roles["latch_pnp"])
-
-
-def _latch_current(view: View, stage: Stage, pnp: Part) -> Signal:
-    """Current into the latch: the emitter current of its pnp, and what the resistor across its junction takes."""
-    current = view.bench(pnp.ref).currents["emitter"]
-    emitter, base = pnp.pins["emitter"], pnp.pins["base"]
-    resistor = view.base_emitter_resistor(stage, "latch_pnp")
-    if resistor is not None and set(resistor.pins.values()) == {emitter, base}:
-        through = view.bench(resistor.ref).currents.get("a")
-        if through is not None:
-            current += through.scaled(1.0 if resistor.pins["a"] == emitter else -1.0)
-    return current
-
-
-def _hold_trial(view: View, stage: Stage, npn: Part, pnp: Part, sequence: str, settle: float) -> Trial:
+def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
+    view = latch.view
     start = view.moment(sequence, "latched", "sounding", "on")
     if start is None:
         load = next((part for _, _, part in view.with_role("load") if view.bench(part.ref).on), None)
         start = Anchor(0.5 * view.ends(sequence)) if load is None else Anchor(1e-2, view.event(f"{load.ref} on"))
     ends = LOWERING + settle
-    across = level(voltage(pnp.pins["emitter"], pnp.pins["collector"]), Anchor(ends))
-    rail = level(voltage(pnp.pins["emitter"], npn.pins["emitter"]), Anchor(ends))
-    current = level(_latch_current(view, stage, pnp), Anchor(ends))
+    current = level(latch.current, Anchor(ends))
+    probes = latch.probes(Anchor(ends))
 
     def drive(line: Timeline, knob: Floats) -> None:
         line.move_supply(0.0, line.lanes[SUPPLY] / knob, LOWERING)
 
-    def gives_in(observed: Observed) -> Mask:
-        return np.asarray(observed.value(across) > 0.5 * observed.value(rail))
+    def gives_in(lanes: Lanes, observed: Observed) -> Mask:
+        return ~latch.conducts(lanes, observed, probes)
 
     return Trial(
-        key=f"latch hold {stage.name}",
+        key=f"latch hold {latch.stage.name}",
         sequence=sequence,
         start=start,
         drive=drive,
         ends=ends,
         safe=1.0,
         severe=1.0 / LEAST_SUPPLY,
-        rows=(current, across, rail),
+        rows=(current, *probes),
         gives_in=gives_in,
     )
 
 
 def hold_asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every complementary latch."""
-    for stage, npn, pnp in _pair(view):
-        yield _hold_ask(check, view, stage, npn, pnp)
+    for latch in latches(view):
+        yield _hold_ask(check, latch)
 
 
-def _hold_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
+def _hold_ask(check: Check, latch: Latch) -> Ask:
+    view, stage, npn, pnp = latch.view, latch.stage, latch.npn, latch.pnp
     requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
     sequence = view.sequence(requirement)
     required = view.required(check.slug, check.required, requirement)
-    trial = _hold_trial(view, stage, npn, pnp, sequence, view.extra(requirement, "settle", "s") or SETTLE)
+    trial = _hold_trial(latch, sequence, view.extra(requirement, "settle", "s") or SETTLE)
     assert trial.start is not None
-    current = level(_latch_current(view, stage, pnp), trial.start)
+    current = level(latch.current, trial.start)
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)
@@ -95,7 +78,7 @@ def _hold_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> A
             edge.values[trial.rows[0]],
             carried,
             [(edge.missing, check.words["missing"]), (edge.always, check.words["always"])],
-            _hand_hold(view, stage, npn, pnp, seen, carried),
+            _hand_hold(latch, seen, carried),
         )
 
     return Ask(
@@ -104,11 +87,11 @@ def _hold_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> A
     )  # fmt: skip
 
 
-def _hand_hold(view: View, stage: Stage, npn: Part, pnp: Part, seen: Seen, carried: Floats) -> Floats | None:
+def _hand_hold(latch: Latch, seen: Seen, carried: Floats) -> Floats | None:
     total = np.zeros(seen.lanes.count)
-    for role, part in (("latch_npn", npn), ("latch_pnp", pnp)):
-        resistor = view.base_emitter_resistor(stage, role)
-        base_voltage = view.bench(part.ref).base_voltage
+    for role, part in (("latch_npn", latch.npn), ("latch_pnp", latch.pnp)):
+        resistor = latch.view.base_emitter_resistor(latch.stage, role)
+        base_voltage = latch.view.bench(part.ref).base_voltage
         if resistor is None or base_voltage is None:
             return None
         total = total + base_voltage(seen.lanes, 1e-4) / seen.lanes[resistor.ref, "value"]
@@ -117,20 +100,21 @@ def _hand_hold(view: View, stage: Stage, npn: Part, pnp: Part, seen: Seen, carri
 
 def reset_asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every complementary latch that the sequence resets (it has a moment ``silent`` or ``reset``)."""
-    for stage, npn, pnp in _pair(view):
-        requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
+    for latch in latches(view):
+        requirement = view.requirement(check.slug, latch.npn.ref, latch.pnp.ref, latch.stage.name)
         sequence = view.sequence(requirement)
         at = view.moment(sequence, "silent", "reset")
         if at is not None:
-            yield _reset_ask(check, view, stage, npn, pnp, sequence, at)
+            yield _reset_ask(check, latch, sequence, at)
 
 
-def _reset_ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part, sequence: str, at: Anchor) -> Ask:
+def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
+    view, stage, npn, pnp = latch.view, latch.stage, latch.npn, latch.pnp
     requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
     required = view.required(check.slug, check.required, requirement)
     hold = view.requirement("latch_hold", npn.ref, pnp.ref, stage.name)
-    trial = _hold_trial(view, stage, npn, pnp, view.sequence(hold), view.extra(hold, "settle", "s") or SETTLE)
-    residual = minimum(_latch_current(view, stage, pnp), at, Anchor(at.by + 1e-3, at.row))
+    trial = _hold_trial(latch, view.sequence(hold), view.extra(hold, "settle", "s") or SETTLE)
+    residual = minimum(latch.current, at, Anchor(at.by + 1e-3, at.row))
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)

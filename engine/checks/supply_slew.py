@@ -11,30 +11,28 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..circuit.timeline import DEFAULT_RISE, Timeline
-from ..design.part import Part, Stage
+from ..design.part import Part
 from ..design.sequence import ConnectSupply
 from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY, Lanes
-from ..primitives.signals import Anchor, level, maximum, slew, voltage
+from ..primitives.signals import Anchor, maximum, slew
 from ..quantity import read
 from ..run import Observed
-from .check import Ask, Check, Judged, Mask, ratio
+from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .complementary_latch import TRIP_CURRENT, Latch, latches
 from .seen import Seen
 from .trial import Trial
-from .view import View, forward_base_voltage
+from .view import View
 
 SLOWEST, FASTEST = 10.0, 1e-8  # s, rise times of the trial
-SETTLE = 0.1  # s after the rise until the trial looks at the latch
+SETTLED = (0.01, 0.1)  # s after the rise at which the trial looks at the latch: a timed one may let go again
 WATCHED = 1e-3  # s after the rise during which the node's slew is watched
-TRIP_CURRENT = 10e-6  # A, collector current that begins to trip a latch, in the hand formula
 
 
 def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every complementary latch."""
-    for stage in view.design.stages:
-        if "latch_npn" in stage.roles and "latch_pnp" in stage.roles:
-            npn, pnp = (view.design.part(stage.roles[role]) for role in ("latch_npn", "latch_pnp"))
-            yield _ask(check, view, stage, npn, pnp)
+    for latch in latches(view):
+        yield _ask(check, latch)
 
 
 def _connection(view: View, sequence: str) -> tuple[float, float]:
@@ -45,46 +43,42 @@ def _connection(view: View, sequence: str) -> tuple[float, float]:
     return 0.0, DEFAULT_RISE
 
 
-def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
+def _ask(check: Check, latch: Latch) -> Ask:
+    view, stage, npn, pnp = latch.view, latch.stage, latch.npn, latch.pnp
     requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
     sequence = view.sequence(requirement, "snap")
     required = view.required(check.slug, check.required, requirement)
+    missing = _missing_capacitance(view, npn) or _missing_capacitance(view, pnp)
+    if missing is not None:
+        return unknown(check, stage.name, npn.ref, sequence, required, missing)
     at, rise = _connection(view, sequence)
-    node = voltage(pnp.pins["emitter"], npn.pins["emitter"])
-    steepest = slew(node, Anchor(at), Anchor(at + rise + WATCHED))
+    steepest = slew(latch.rail, Anchor(at), Anchor(at + rise + WATCHED))
 
-    # Every lane of the trial is looked at when the slowest supply is up and has settled.
-    probe = level(voltage(pnp.pins["emitter"], pnp.pins["collector"]), Anchor(SLOWEST + SETTLE))
-    rail = level(node, Anchor(SLOWEST + SETTLE))
-    fastest = slew(node)
+    # The supply is up at the same instant in every lane of the trial, so that all are looked at soon after it.
+    looks = [latch.probes(Anchor(SLOWEST + settled)) for settled in SETTLED]
+    fastest = slew(latch.rail)
+    lifts = tuple(maximum(lift) for lift in latch.lifts)
 
     def drive(line: Timeline, knob: Floats) -> None:
-        line.connect_supply(0.0, 1.0 / knob)
-
-    lifts = tuple(maximum(forward_base_voltage(part)) for part in (npn, pnp))
-    turn_on = tuple(view.bench(part.ref).base_voltage for part in (npn, pnp))
+        line.connect_supply(SLOWEST - 1.0 / knob, 1.0 / knob)
 
     def spare(lanes: Lanes, observed: Observed) -> Floats:
         """How far the one that is lifted less stays below what turns it on: a latch trips when both conduct."""
-        left = [
-            law(lanes, TRIP_CURRENT) - observed.value(lift)
-            for lift, law in zip(lifts, turn_on, strict=True)
-            if law is not None
-        ]
-        return np.max(left, axis=0) if left else np.zeros(lanes.count)
+        left = [on - observed.value(lift) for lift, on in zip(lifts, latch.turn_on(lanes), strict=True)]
+        return np.asarray(np.max(left, axis=0))
 
-    def gives_in(observed: Observed) -> Mask:
-        return np.asarray(observed.value(probe) < 0.5 * observed.value(rail))
+    def gives_in(lanes: Lanes, observed: Observed) -> Mask:
+        return np.asarray(np.any([latch.conducts(lanes, observed, probes) for probes in looks], axis=0))
 
     trial = Trial(
         key=f"supply slew {stage.name}",
         sequence=sequence,
         start=None,
         drive=drive,
-        ends=SLOWEST + SETTLE,
+        ends=SLOWEST + SETTLED[-1],
         safe=1.0 / SLOWEST,
         severe=1.0 / FASTEST,
-        rows=(fastest, probe, rail, *lifts),
+        rows=(fastest, *lifts, *(row for probes in looks for row in probes)),
         gives_in=gives_in,
         spare=spare,
     )
@@ -98,7 +92,7 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
             demand,
             edge.values[fastest],
             [(edge.always, check.words["always"])],
-            _hand(view, stage, npn, seen, demand),
+            _hand(latch, seen, demand),
         )
         margin = np.where(edge.never, 1.0, judged.margin)
         outcomes = (*judged.outcomes, (edge.never, check.words["immune"]))
@@ -108,10 +102,19 @@ def _ask(check: Check, view: View, stage: Stage, npn: Part, pnp: Part) -> Ask:
     return Ask(check, stage.name, npn.ref, (sequence,), required, judge, (steepest,), trial, screen)
 
 
-def _hand(view: View, stage: Stage, npn: Part, seen: Seen, demand: Floats) -> Floats | None:
+def _missing_capacitance(view: View, part: Part) -> str | None:
+    """What is missing to know how the collector couples into the base: nothing would couple without it."""
+    if part.law:
+        key = "base_collector_capacitance"
+        return None if part.law_limits(key, "F") is not None else f"{key} in the law of {part.ref}"
+    return None if view.datum(part, "c_ob", "F") is not None else f"c_ob of {part.ref}"
+
+
+def _hand(latch: Latch, seen: Seen, demand: Floats) -> Floats | None:
     """1 - D/s with s from v = s R C_c (1 - exp(-V/(s R C))), the base voltage at the end of a rise to V through the
     coupling C_c of strays and collector, C being all that hangs on the base; 1 where no slew can reach the trip level.
     """
+    view, stage, npn = latch.view, latch.stage, latch.npn
     resistor = view.base_emitter_resistor(stage, "latch_npn")
     base_voltage = view.bench(npn.ref).base_voltage
     if resistor is None or base_voltage is None:

@@ -35,7 +35,7 @@ class Trial:
     safe: float
     severe: float
     rows: tuple[Row, ...]
-    gives_in: Callable[[Observed], Mask]
+    gives_in: Callable[[Lanes, Observed], Mask]
     resolution: float = 1.03
     spare: Callable[[Lanes, Observed], Floats] | None = None
 

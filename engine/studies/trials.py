@@ -68,10 +68,10 @@ class TrialRun:
 
     def holds(self, index: Sequence[int] | Ints, knob: Floats) -> Mask:
         """Whether each lane holds at its knob value; a lane that could not be solved does not."""
-        return self._held(self.tried(index, knob))
+        return self._held(index, self.tried(index, knob))
 
-    def _held(self, observed: Observed) -> Mask:
-        return np.asarray(~(self.trial.gives_in(observed) | observed.failed))
+    def _held(self, index: Sequence[int] | Ints, observed: Observed) -> Mask:
+        return np.asarray(~(self.trial.gives_in(self.lanes.take(index), observed) | observed.failed))
 
     def edge(self, resolution: float | None = None, around: float | None = None) -> Edge:
         """Bisect all lanes at once, to the trial's own resolution or a coarser one; ``around`` narrows the search to
@@ -84,7 +84,7 @@ class TrialRun:
         knobs = np.geomspace(*ends, SCANNED if around is None else 2)
         index = np.repeat(everyone, knobs.size)
         looked = self.tried(index, np.tile(knobs, count))
-        held = self._held(looked).reshape(count, -1)
+        held = self._held(index, looked).reshape(count, -1)
         spare = np.zeros(count)
         if self.trial.spare is not None:
             spare = self.trial.spare(self.lanes.take(index), looked).reshape(count, -1).min(axis=1)
