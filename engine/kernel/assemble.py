@@ -95,6 +95,7 @@ def junctions(
     a: Floats,
     seen: Floats,
     flow: Floats,
+    build: bool,
 ) -> float:
     """Add all two-terminal junctions; return the largest :func:`move`, infinite where one was linearised elsewhere."""
     moved = 0.0
@@ -123,11 +124,12 @@ def junctions(
         i[nb] -= current
         q[na] += charge
         q[nb] -= charge
-        m = c + ah * g
-        a[element[k, E_SLOT]] += m
-        a[element[k, E_SLOT + 1]] -= m
-        a[element[k, E_SLOT + 2]] -= m
-        a[element[k, E_SLOT + 3]] += m
+        if build:
+            m = c + ah * g
+            a[element[k, E_SLOT]] += m
+            a[element[k, E_SLOT + 1]] -= m
+            a[element[k, E_SLOT + 2]] -= m
+            a[element[k, E_SLOT + 3]] += m
     return moved
 
 
@@ -143,6 +145,7 @@ def transports(
     a: Floats,
     seen: Floats,
     flow: Floats,
+    build: bool,
 ) -> float:
     """Add all bipolar transistors in transport form (Ebers, Moll, Proc. IRE 42 (1954) 1761, as rewritten by Gummel
     and Poon, Bell Syst. Tech. J. 49 (1970) 827, with the Early effect as a factor 1 - v_BC / V_A)."""
@@ -220,19 +223,20 @@ def transports(
         q[nb] += sign * (qe + qc)
         q[ne] -= sign * qe
 
-        me = ce + ah * gbe
-        mc = cc + ah * gbc
-        te = ah * over_e
-        tc = ah * over_c
-        a[element[k, E_SLOT]] += mc - tc
-        a[element[k, E_SLOT + 1]] += te + tc - mc
-        a[element[k, E_SLOT + 2]] -= te
-        a[element[k, E_SLOT + 3]] -= mc
-        a[element[k, E_SLOT + 4]] += me + mc
-        a[element[k, E_SLOT + 5]] -= me
-        a[element[k, E_SLOT + 6]] += tc
-        a[element[k, E_SLOT + 7]] -= te + tc + me
-        a[element[k, E_SLOT + 8]] += te + me
+        if build:
+            me = ce + ah * gbe
+            mc = cc + ah * gbc
+            te = ah * over_e
+            tc = ah * over_c
+            a[element[k, E_SLOT]] += mc - tc
+            a[element[k, E_SLOT + 1]] += te + tc - mc
+            a[element[k, E_SLOT + 2]] -= te
+            a[element[k, E_SLOT + 3]] -= mc
+            a[element[k, E_SLOT + 4]] += me + mc
+            a[element[k, E_SLOT + 5]] -= me
+            a[element[k, E_SLOT + 6]] += tc
+            a[element[k, E_SLOT + 7]] -= te + tc + me
+            a[element[k, E_SLOT + 8]] += te + me
     return moved
 
 
@@ -250,12 +254,15 @@ def evaluate(
     a: Floats,
     seen: Floats,
     flow: Floats,
+    build: bool,
 ) -> float:
     """Set i, q and the matrix a at x; return how far junctions moved, infinite where linearised away from x.
 
     ``seen`` are the junction voltages of the iterate before and become those of this one; ``flow`` the device currents.
+    Without ``build`` the matrix stays that of an earlier iterate.
     """
     linear_flows(element, group, p, source, x, i, q)
-    copy(linear, a)
-    moved = junctions(element, group, p, ah, x, i, q, a, seen, flow)
-    return max(moved, transports(element, group, p, ah, x, i, q, a, seen, flow))
+    if build:
+        copy(linear, a)
+    moved = junctions(element, group, p, ah, x, i, q, a, seen, flow, build)
+    return max(moved, transports(element, group, p, ah, x, i, q, a, seen, flow, build))

@@ -204,7 +204,7 @@ def march_lane(
                 # What the signals are before anything happens.
                 set_switches(program.switched, switch, 0.0, p)
                 for _ in range(GLANCES):
-                    if evaluate(element, group, p, source, linear, 0.0, x0, i0, q0, a, seen, flow) < math.inf:
+                    if evaluate(element, group, p, source, linear, 0.0, x0, i0, q0, a, seen, flow, True) < math.inf:
                         break
                 copy(flow, flow0)
                 if tracing:
@@ -215,7 +215,7 @@ def march_lane(
             set_switches(program.switched, switch, 0.0, p)
             linear_matrix(element, group, p, JUMP, linear)
             # The charges at the start are those of its voltages, whatever the sources did meanwhile.
-            evaluate(element, group, p, source, linear, JUMP, x0, i0, q0, a, seen, flow)
+            evaluate(element, group, p, source, linear, JUMP, x0, i0, q0, a, seen, flow, True)
             copy(x0, x1)
             set_sources(sources, sine, base, JUMP, free, source, x1)
             for k in range(free):

@@ -12,6 +12,7 @@ from .layout import Floats, Ints
 
 REMAINDER = 0.3  # accepted Kirchhoff residual in parts of the tolerance
 ROUND_OFF = 2.2e-16  # of the charges that cancel in a residual
+SETTLED = 0.3  # slopes that a junction may move in an iteration that is followed by one without a matrix
 BRANCH_VOLTS = 1e-4  # V, accepted residual of a branch's own equation
 
 
@@ -45,8 +46,11 @@ def solve(
     Accepted once the Kirchhoff residual, judged in volts through the diagonal, is well inside the tolerance.
     """
     worst = 0
+    moved = math.inf
     for iteration in range(most + 1):
-        moved = evaluate(element, group, p, source, linear, ah, x, i, q, a, seen, flow)
+        # Where the junctions hardly moved, this iterate is mostly the last: its matrix would not be used.
+        build = moved > SETTLED
+        moved = evaluate(element, group, p, source, linear, ah, x, i, q, a, seen, flow, build)
         largest = 0.0
         finite = True
         for k in range(rhs.size):
@@ -78,6 +82,8 @@ def solve(
                 return iteration, worst
             for k in range(rhs.size):
                 rhs[k] = -(q[k] + ah * i[k] + constant[k])
+        if not build:
+            moved = evaluate(element, group, p, source, linear, ah, x, i, q, a, seen, flow, True)
         copy(a, factors)
         factor(factors, pivot, entry, update)
         substitute(factors, rhs, pivot, entry)

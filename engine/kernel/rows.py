@@ -160,6 +160,69 @@ def open_rows(row: Ints, offset: Floats, window: Floats, value: Floats, time: Fl
 
 
 @leaf
+def note(
+    kind: int,
+    rising: float,
+    nth: int,
+    level: float,
+    y0: float,
+    yg: float,
+    y1: float,
+    begin: float,
+    h: float,
+    gamma: float,
+    window: Floats,
+    r: int,
+    value: Floats,
+    time: Floats,
+    status: Ints,
+) -> None:
+    """Update row r with a signal that is y0, yg, y1 at start, stage and end of the step, within the row's window."""
+    u0 = (window[r, 0] - begin) / h if window[r, 0] > begin else 0.0
+    u1 = (window[r, 1] - begin) / h if window[r, 1] < begin + h else 1.0
+    if kind == R_LEVEL:
+        value[r] = parabola(y0, yg, y1, min(u0, 1.0), gamma)
+        time[r] = window[r, 0]
+        status[r] = SEEN
+    elif kind == R_CROSSING:
+        u = crossing(y0, yg, y1, level, rising, u0, gamma)
+        if 0.0 <= u <= u1:
+            # Crossings before the wanted one are counted in the value.
+            value[r] += 1.0
+            if value[r] >= nth:
+                value[r] = begin + u * h
+                time[r] = begin + u * h
+                status[r] = SEEN
+    elif kind == R_INTEGRAL:
+        value[r] += h * area(y0, yg, y1, u0, u1, gamma)
+        time[r] = begin + h
+        status[r] = OPEN
+    elif kind == R_SLEW:
+        steepest = abs(y1 - y0) / h
+        if gamma > 0.0:
+            steepest = max(abs(yg - y0) / (gamma * h), abs(y1 - yg) / ((1.0 - gamma) * h))
+        if status[r] == NOT_YET or steepest > value[r]:
+            value[r] = steepest
+            time[r] = begin + h
+            status[r] = OPEN
+    else:
+        sign = 1.0 if kind == R_MAXIMUM else -1.0
+        if u0 == 0.0 and u1 == 1.0 and status[r] == OPEN and sign * value[r] >= max(sign * y0, sign * yg, sign * y1):
+            return
+        for n in range(3):
+            u = u0
+            if n == 1:
+                u = min(max(gamma, u0), u1)
+            elif n == 2:
+                u = u1
+            y = parabola(y0, yg, y1, u, gamma)
+            if status[r] == NOT_YET or sign * y > sign * value[r]:
+                value[r] = y
+                time[r] = begin + u * h
+                status[r] = OPEN
+
+
+@leaf
 def watch(
     element: Ints,
     group: Ints,
@@ -192,87 +255,51 @@ def watch(
     """Update every row of a lane with step number ``now``, from ``begin`` to ``begin + h``; ``gamma`` 0: no stage.
 
     A signal is read only where a row wants it: ``start``, ``stage`` and ``end`` keep it, ``read_at`` tells the step.
+    Rows that wait for another one are looked at only in a step in which some row was seen.
     """
     finish = begin + h
-    for r in range(row.shape[0]):
-        if status[r] == SEEN:
-            continue
-        after = row[r, ROW_FROM]
-        if after >= 0 and window[r, 0] == math.inf:
-            if status[after] != SEEN:
-                continue
-            window[r, 0] = time[after] + offset[r, 0]
-        if finish < window[r, 0]:
-            continue
-        until = row[r, ROW_TO]
-        if until >= 0 and window[r, 1] == math.inf and status[until] == SEEN:
-            window[r, 1] = time[until] + offset[r, 1]
-        if begin > window[r, 1]:
-            if status[r] == OPEN:
-                status[r] = SEEN
-            continue
-        s = row[r, ROW_SIGNAL]
-        if read_at[s] != now:
-            first = signal[s]
-            last = signal[s + 1]
-            if read_at[s] == now - 1:
-                start[s] = end[s]
+    for turn in range(2):
+        news = False
+        for r in range(row.shape[0]):
+            if turn == 0:
+                if window[r, 0] > finish:
+                    continue
             else:
-                start[s] = read_signal(element, group, term, factor, first, last, p, x0, flow0)
-            stage[s] = read_signal(element, group, term, factor, first, last, p, xg, flow_g)
-            end[s] = read_signal(element, group, term, factor, first, last, p, x1, flow1)
-            read_at[s] = now
-        y0 = start[s]
-        yg = stage[s]
-        y1 = end[s]
-        u0 = (window[r, 0] - begin) / h if window[r, 0] > begin else 0.0
-        u1 = (window[r, 1] - begin) / h if window[r, 1] < finish else 1.0
-        kind = row[r, ROW_KIND]
-        if kind == R_LEVEL:
-            value[r] = parabola(y0, yg, y1, min(u0, 1.0), gamma)
-            time[r] = window[r, 0]
-            status[r] = SEEN
-        elif kind == R_CROSSING:
-            u = crossing(y0, yg, y1, level[r], float(row[r, ROW_DIRECTION]), u0, gamma)
-            if 0.0 <= u <= u1:
-                # Crossings before the wanted one are counted in the value.
-                value[r] += 1.0
-                if value[r] >= row[r, ROW_NTH]:
-                    value[r] = begin + u * h
-                    time[r] = begin + u * h
+                after = row[r, ROW_FROM]
+                if after < 0 or window[r, 0] < math.inf or status[r] == SEEN or status[after] != SEEN:
+                    continue
+                window[r, 0] = time[after] + offset[r, 0]
+                if window[r, 0] > finish:
+                    continue
+            until = row[r, ROW_TO]
+            if until >= 0 and window[r, 1] == math.inf and status[until] == SEEN:
+                window[r, 1] = time[until] + offset[r, 1]
+            if begin > window[r, 1]:
+                if status[r] == OPEN:
                     status[r] = SEEN
-        elif kind == R_INTEGRAL:
-            value[r] += h * area(y0, yg, y1, u0, u1, gamma)
-            time[r] = finish
-            status[r] = OPEN
-        elif kind == R_SLEW:
-            steepest = abs(y1 - y0) / h
-            if gamma > 0.0:
-                steepest = max(abs(yg - y0) / (gamma * h), abs(y1 - yg) / ((1.0 - gamma) * h))
-            if status[r] == NOT_YET or steepest > value[r]:
-                value[r] = steepest
-                time[r] = finish
-                status[r] = OPEN
-        else:
-            sign = 1.0 if kind == R_MAXIMUM else -1.0
-            if (
-                u0 == 0.0
-                and u1 == 1.0
-                and status[r] == OPEN
-                and sign * value[r] >= max(sign * y0, sign * yg, sign * y1)
-            ):
+                news = news or status[r] == SEEN
+                window[r, 0] = math.inf
                 continue
-            for n in range(3):
-                u = u0
-                if n == 1:
-                    u = min(max(gamma, u0), u1)
-                elif n == 2:
-                    u = u1
-                y = parabola(y0, yg, y1, u, gamma)
-                if status[r] == NOT_YET or sign * y > sign * value[r]:
-                    value[r] = y
-                    time[r] = begin + u * h
-                    status[r] = OPEN
+            s = row[r, ROW_SIGNAL]
+            if read_at[s] != now:
+                first = signal[s]
+                last = signal[s + 1]
+                if read_at[s] == now - 1:
+                    start[s] = end[s]
+                else:
+                    start[s] = read_signal(element, group, term, factor, first, last, p, x0, flow0)
+                stage[s] = read_signal(element, group, term, factor, first, last, p, xg, flow_g)
+                end[s] = read_signal(element, group, term, factor, first, last, p, x1, flow1)
+                read_at[s] = now
+            note(
+                row[r, ROW_KIND], float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], start[s], stage[s], end[s],
+                begin, h, gamma, window, r, value, time, status,
+            )  # fmt: skip
+            if status[r] == SEEN:
+                news = True
+                window[r, 0] = math.inf
+        if not news:
+            return
 
 
 @leaf
