@@ -46,7 +46,7 @@ class Edge:
 
     ``never``: it held at the severest value; ``always``: it gave in at the safest. ``missing``: the state to start
     from never came. ``tried``: the lanes that were tried at all; the others hold NaN. ``spare``: the least of
-    ``Trial.spare`` over the knob values that were looked at. ``values`` by ``Trial.rows``.
+    ``Trial.spare`` over the knob values that were looked at, found at ``spare_at``. ``values`` by ``Trial.rows``.
     """
 
     knob: Floats
@@ -56,6 +56,7 @@ class Edge:
     missing: Mask
     tried: Mask
     spare: Floats
+    spare_at: Floats
 
     def scattered(self, index: Sequence[int], count: int) -> Edge:
         """The same among ``count`` lanes of which only those in ``index`` were tried."""
@@ -80,4 +81,5 @@ class Edge:
             marked(self.missing),
             marked(self.tried),
             spread(self.spare),
+            spread(self.spare_at),
         )

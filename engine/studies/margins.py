@@ -182,10 +182,12 @@ def _single_edges(
         edge = nominal[ask.id].edge
         if ask.trial is None or ask.trial.key in found or edge is None or edge.always[0] or edge.missing[0]:
             continue
-        near = None if edge.never[0] else float(edge.knob[0])
         kept = kept_state(seen.observed, ask.trial, single)
-        own = TrialRun(circuit, ask.trial, seen.lanes.take(single), cancelled, kept).edge(around=near, resolution=SIDES)
-        found[ask.trial.key] = own.spare if edge.never[0] else np.log(own.knob)
+        made = TrialRun(circuit, ask.trial, seen.lanes.take(single), cancelled, kept)
+        if edge.never[0]:
+            found[ask.trial.key] = made.spare(float(edge.spare_at[0]))
+        else:
+            found[ask.trial.key] = np.log(made.edge(around=float(edge.knob[0]), resolution=SIDES).knob)
     return found
 
 

@@ -73,6 +73,16 @@ class TrialRun:
     def _held(self, index: Sequence[int] | Ints, observed: Observed) -> Mask:
         return np.asarray(~(self.trial.gives_in(self.lanes.take(index), observed) | observed.failed))
 
+    def spare(self, knob: float) -> Floats:
+        """How far from giving in every lane stays at one knob value."""
+        everyone = np.arange(self.lanes.count)
+        return self._spare(everyone, self.tried(everyone, np.full(self.lanes.count, knob)))
+
+    def _spare(self, index: Sequence[int] | Ints, observed: Observed) -> Floats:
+        if self.trial.spare is None:
+            return np.zeros(len(index))
+        return self.trial.spare(self.lanes.take(index), observed)
+
     def edge(self, resolution: float | None = None, around: float | None = None) -> Edge:
         """Bisect all lanes at once, to the trial's own resolution or a coarser one; ``around`` narrows the search to
         knob values near this one, and what lies outside counts as ``never`` or ``always``."""
@@ -85,9 +95,8 @@ class TrialRun:
         index = np.repeat(everyone, knobs.size)
         looked = self.tried(index, np.tile(knobs, count))
         held = self._held(index, looked).reshape(count, -1)
-        spare = np.zeros(count)
-        if self.trial.spare is not None:
-            spare = self.trial.spare(self.lanes.take(index), looked).reshape(count, -1).min(axis=1)
+        spare = self._spare(index, looked).reshape(count, -1)
+        least = np.argmin(np.nan_to_num(spare, nan=np.inf), axis=1)
         never_gives_in = held.all(axis=1)
         always = ~held[:, 0]
         first = np.where(never_gives_in, knobs.size - 1, np.maximum(1, np.argmin(held, axis=1)))
@@ -112,4 +121,5 @@ class TrialRun:
         final = self.tried(everyone, knob)
         values = {row: final.value(row) for row in self.trial.rows}
         tried = np.ones(count, dtype=bool)
-        return Edge(knob, values, never_gives_in & ~self.missing, always & ~self.missing, self.missing, tried, spare)
+        weakest = spare[everyone, least], knobs[least]
+        return Edge(knob, values, never_gives_in & ~self.missing, always & ~self.missing, self.missing, tried, *weakest)
