@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..primitives.columns import SUPPLY
 from ..primitives.signals import maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
 from .reverse_base_emitter import BIPOLAR
@@ -32,7 +33,9 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
 
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(across, sequence) for sequence in sequences], axis=0)
-        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed))
+        # By hand an off transistor without a coil stands at the supply.
+        hand = 1.0 - seen.lanes[SUPPLY] / allowed if SUPPLY in seen.lanes else None
+        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed), hand=hand)
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(across,))
 

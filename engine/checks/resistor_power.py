@@ -8,7 +8,7 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
-from ..primitives.signals import Anchor, integral, level
+from ..primitives.signals import Anchor, integral, level, voltage
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .view import View
@@ -39,7 +39,9 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     power = view.bench(part.ref).power
     assert power is not None
     moments = [view.anchor(name, sequence) for name in view.design.sequences[sequence].moments]
-    steady = tuple(level(power, at) for at in moments or [Anchor(0.5 * view.ends(sequence))])
+    instants = moments or [Anchor(0.5 * view.ends(sequence))]
+    steady = tuple(level(power, at) for at in instants)
+    volts = tuple(level(voltage(part.pins["a"], part.pins["b"]), at) for at in instants)
     load = next((p for _, _, p in view.with_role("load") if view.bench(p.ref).on), None)
     whole = None
     if load is not None:
@@ -54,9 +56,12 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         never = np.asarray(np.isnan(powers).all(axis=0))
         largest = np.max(np.nan_to_num(powers), axis=0)
         allowed = factor * permitted(rating.low, seen.lanes.ambient)
-        return ratio(largest, allowed, [(never, check.words["never"])])
+        standing = np.max(np.nan_to_num([seen.value(row, sequence) ** 2 for row in volts]), axis=0)
+        by_hand = standing / seen.lanes[part.ref, "value"]
+        hand = 1.0 - by_hand / np.where(allowed > 0.0, allowed, np.nan)
+        return ratio(largest, allowed, [(never, check.words["never"])], hand)
 
-    rows = (*steady, *((whole, on, off) if whole is not None else ()))
+    rows = (*steady, *volts, *((whole, on, off) if whole is not None else ()))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 

@@ -41,7 +41,10 @@ class Flows:
         linear_matrix(top.element, top.group, parameters, ah, linear)
         source = np.zeros(len(circuit.source_names))
         for _ in range(200):
-            if evaluate(top.element, top.group, parameters, source, linear, ah, x, i, q, a, seen, flow, True) < math.inf:
+            if (
+                evaluate(top.element, top.group, parameters, source, linear, ah, x, i, q, a, seen, flow, True)
+                < math.inf
+            ):
                 break
         free = int(top.size[1])
         plan = _slots(circuit)

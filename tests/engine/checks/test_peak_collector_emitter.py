@@ -37,6 +37,7 @@ def test_the_supply_against_the_derated_rating(kind: str, supply: str, expected:
     found = margin(switch(supply, kind=kind), "peak_collector_emitter", "Q1")
     assert found.margin == pytest.approx(expected, abs=1e-3)
     assert (found.capability, found.verdict) == (pytest.approx(36.0), verdict)
+    assert found.hand == pytest.approx(expected, abs=1e-6)
 
 
 def test_a_transient_counts_and_not_only_what_stands() -> None:

@@ -44,6 +44,7 @@ def test_standing_power_by_hand(ambient: str, expected: float, verdict: Verdict)
     found = margin(loaded(ambient), "resistor_power", "R1")
     assert found.margin == pytest.approx(expected, abs=1e-6)
     assert (found.demand, found.verdict) == (pytest.approx(81e-3), verdict)
+    assert found.hand == pytest.approx(expected, abs=1e-6)
 
 
 def test_nothing_is_permitted_at_155_degrees() -> None:
