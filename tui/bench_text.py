@@ -25,7 +25,7 @@ def heading(draft: Draft, figures: Figures, progress: str, width: int) -> Line:
     base = "not saved yet" if draft.base_revision is None else f"draft on r{draft.base_revision}"
     edits = "no edits" if draft.edits == 0 else f"{draft.edits} edit{'s' * (draft.edits != 1)}"
     left = f" {draft.name}   {base}, {edits}   {conditions_words(draft.design)}"
-    right = "FROZEN: f shows the figures " if figures.frozen else f"{progress} " if width >= _ROOMY else ""
+    right = " FROZEN: f shows the figures " if figures.frozen else f" {progress} " if width >= _ROOMY else ""
     room = max(0, width - len(right))
     return line(Span(fit(left, room), "strong"), Span(right, "thin" if figures.frozen else ""))
 

@@ -15,6 +15,8 @@ MARKS = {Verdict.FAIL: "X", Verdict.THIN: "!", Verdict.PASS: "=", Verdict.UNKNOW
 WORDS = {Verdict.FAIL: "FAIL", Verdict.THIN: "thin", Verdict.PASS: "pass", Verdict.UNKNOWN: "unknown"}
 TONES = {Verdict.FAIL: "fail", Verdict.THIN: "thin", Verdict.PASS: "pass", Verdict.UNKNOWN: "unknown"}
 
+_LEAST_WORDS = 5  # cells
+
 
 @dataclass(frozen=True, slots=True)
 class Span:
@@ -81,34 +83,41 @@ def fit_right(text: str, width: int) -> str:
 
 
 def percent(margin: float | None) -> str:
-    """A margin in whole percent with its sign; a question mark when there is none.
+    """A margin in whole percent with its sign, a power of ten beyond 9999; a question mark when there is none.
 
     Rounds towards minus infinity, so that a figure on screen is never better than the margin behind it.
     """
-    if margin is None:
-        return "?"
-    return f"{floor(margin * 100 + 1e-9):+d}"
+    return "?" if margin is None else _signed(floor(margin * 100 + 1e-9))
 
 
 def points(change: float) -> str:
-    """A difference of margins in whole percent with its sign."""
-    return f"{round(change * 100):+d}"
+    """A difference of margins in whole percent with its sign, a power of ten beyond 9999."""
+    return _signed(round(change * 100))
 
 
-def words_in(text: str, width: int) -> str:
-    """As many whole words of the text as fit into ``width`` cells, at least the cut first one."""
+def _signed(whole: int) -> str:
+    if abs(whole) < 10_000:
+        return f"{whole:+d}"
+    # The part that is asked for a million times what it can do does not need its digits, the columns need their room.
+    power = len(str(abs(whole))) - 1
+    digit = whole // 10**power
+    return f"{digit:+d}e{power}" if digit > -10 else f"-1e{power + 1}"
+
+
+def figure(margin: float | None, outcome: str | None, width: int) -> str:
+    """A margin for a narrow column: as many first words of the outcome as fit, ``fails`` or percent where they say
+    nothing (``the``, ``did``)."""
+    if not outcome:
+        return percent(margin)
     taken = ""
-    for word in visible(text).split():
+    for word in visible(outcome).split():
         longer = f"{taken} {word}".strip()
         if cell_len(longer) > width:
             break
         taken = longer
-    return taken or set_cell_size(visible(text), width).rstrip()
-
-
-def figure(margin: float | None, outcome: str | None, width: int) -> str:
-    """A margin for a narrow column: the outcome in words where there is one, percent otherwise."""
-    return words_in(outcome, width) if outcome else percent(margin)
+    if cell_len(taken) >= _LEAST_WORDS:
+        return taken
+    return percent(margin) if margin is not None and margin > 0.0 else "fails"
 
 
 def verdict_words(check: CheckResult) -> str:

@@ -7,7 +7,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 from rich.cells import cell_len
 
-from stagebook.tui.shown import figure, fit, percent, visible, words_in
+from stagebook.tui.shown import figure, fit, percent, points, visible
 
 
 @given(st.text(alphabet=st.characters(codec=None), max_size=60))
@@ -33,8 +33,19 @@ def test_percent_is_never_better_than_the_margin(margin: float | None, shown: st
     assert percent(margin) == shown
 
 
+@pytest.mark.parametrize(
+    ("margin", "shown"),
+    [(-99.99, "-9999"), (-100.0, "-1e4"), (-100.01, "-2e4"), (-999.0, "-1e5"), (-1135287.89, "-2e8"), (150.0, "+1e4")],
+)
+def test_a_margin_of_many_digits_keeps_its_place(margin: float, shown: str) -> None:
+    assert percent(margin) == points(margin) == shown
+
+
 def test_an_outcome_stands_in_words_where_a_number_would_mislead() -> None:
     assert figure(-1.0, "never fired", 7) == "never"
     assert figure(-1.0, "did not let go", 7) == "did not"
+    assert figure(-1.0, "the latch lets go by itself", 8) == "fails"
+    assert figure(-1.0, "oscillates", 7) == "fails"
+    assert figure(1.0, "immune at any slew", 7) == "immune"
+    assert figure(1.0, "immune at any slew", 5) == "+100"
     assert figure(-1.0, None, 7) == "-100"
-    assert words_in("oscillates", 5) == "oscil"

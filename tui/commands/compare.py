@@ -13,7 +13,6 @@ from .printing import json_argument, print_json, print_table, print_words
 from .revisions import revision_arguments, stored
 
 MOST = 6
-LOWEST = -99.99  # lower margins need no more digits
 
 
 def arguments(parser: ArgumentParser) -> None:
@@ -80,5 +79,4 @@ def _cells(row: Row, labels: Sequence[str]) -> tuple[str, ...]:
 def _cell(check: CheckResult | None) -> str:
     if check is None:
         return "-"
-    shown = percent(check.margin) if check.margin is None or check.margin > LOWEST else f"<{percent(LOWEST)}"
-    return f"{MARKS[check.verdict]} {shown}"
+    return f"{MARKS[check.verdict]} {percent(check.margin)}"

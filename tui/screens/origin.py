@@ -88,11 +88,11 @@ def origin_rows(check: CheckResult, worst_known: bool) -> list[tuple[str, str, s
     if check.spread is not None:
         spread = check.spread
         least, most = spread.interval
-        words = " / ".join(f"{percent(value)} %" for value in (spread.p05, spread.p50, spread.p95))
-        rows.append(("spread", f"{words} at 5 / 50 / 95 % of lanes", ""))
-        rows.append(
-            ("", f"{spread.passing * 100:.1f} % hold (95 % interval {least * 100:.1f} .. {most * 100:.1f} %)", "")
-        )
+        held = f"{spread.passing * 100:.1f} % hold (95 % interval {least * 100:.1f} .. {most * 100:.1f} %)"
+        rows.append(("spread", held, ""))
+        if spread.p50 is not None:
+            words = " / ".join(f"{percent(value)} %" for value in (spread.p05, spread.p50, spread.p95))
+            rows.append(("", f"{words} at 5 / 50 / 95 % of lanes", ""))
     rows.append(("check", f"{check.id}, number {check.number} of the catalogue", ""))
     return rows
 
