@@ -69,7 +69,8 @@ class Ask:
     """One margin of one design. ``rows`` are observed in each of ``sequences``; ``judge`` turns them into a margin.
 
     ``screen`` is the knob value of the trial at which the circuit must still hold for the required margin: what random
-    lanes are tried with. ``missing`` names the datum without which the check is UNKNOWN; nothing is computed then.
+    lanes are tried with. ``follows_knob``: the margin falls with the knob at which the circuit gives in, and is not
+    decided by something else. ``missing`` names the datum without which the check is UNKNOWN; nothing is computed then.
     """
 
     check: Check
@@ -81,6 +82,7 @@ class Ask:
     rows: tuple[Row, ...] = ()
     trial: Trial | None = None
     screen: float | None = None
+    follows_knob: bool = True
     missing: str | None = None
 
     @property

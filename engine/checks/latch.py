@@ -51,6 +51,7 @@ def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
         severe=1.0 / LEAST_SUPPLY,
         rows=(current, *probes),
         gives_in=gives_in,
+        resolution=1.01,
     )
 
 
@@ -133,7 +134,8 @@ def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
             ],
         )
 
-    return Ask(check, stage.name, pnp.ref, (sequence,), required, judge, (residual,), trial)
+    # An easier hold makes a reset harder, and what leaks through it is nothing that the trial moves.
+    return Ask(check, stage.name, pnp.ref, (sequence,), required, judge, (residual,), trial, follows_knob=False)
 
 
 CHECKS = (

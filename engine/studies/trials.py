@@ -85,41 +85,47 @@ class TrialRun:
 
     def edge(self, resolution: float | None = None, around: float | None = None) -> Edge:
         """Bisect all lanes at once, to the trial's own resolution or a coarser one; ``around`` narrows the search to
-        knob values near this one, and what lies outside counts as ``never`` or ``always``."""
+        knob values near this one, and what lies outside counts as ``never`` or ``always``.
+
+        All knob values are those of one grid, so that a lane ends at the same one whatever lanes are beside it.
+        """
         enough = np.log(self.trial.resolution if resolution is None else resolution)
         count = self.lanes.count
         everyone = np.arange(count)
         ends = (self.trial.safe, self.trial.severe) if around is None else (around / NEAR, around * NEAR)
         # A circuit may give in at a middle value and hold at a severer one: look along the whole range first.
-        knobs = np.geomspace(*ends, SCANNED if around is None else 2)
-        index = np.repeat(everyone, knobs.size)
-        looked = self.tried(index, np.tile(knobs, count))
+        spans = SCANNED - 1 if around is None else 1
+        per_span = max(1, int(np.ceil(np.log(ends[1] / ends[0]) / (spans * enough))))
+        grid = np.geomspace(*ends, spans * per_span + 1)
+        scanned = np.arange(spans + 1) * per_span
+        index = np.repeat(everyone, scanned.size)
+        looked = self.tried(index, np.tile(grid[scanned], count))
         held = self._held(index, looked).reshape(count, -1)
         spare = self._spare(index, looked).reshape(count, -1)
         least = np.argmin(np.nan_to_num(spare, nan=np.inf), axis=1)
         never_gives_in = held.all(axis=1)
         always = ~held[:, 0]
-        first = np.where(never_gives_in, knobs.size - 1, np.maximum(1, np.argmin(held, axis=1)))
-        low, high = np.log(knobs[first - 1]), np.log(knobs[first])
+        first = np.where(never_gives_in, spans, np.maximum(1, np.argmin(held, axis=1)))
+        low, high = scanned[first - 1], scanned[first]
         open_lanes = ~(always | never_gives_in | self.missing)
         while True:
-            wide = open_lanes & (np.abs(high - low) > enough)
-            chosen = np.flatnonzero(wide)
+            chosen = np.flatnonzero(open_lanes & (high - low > 1))
             if chosen.size == 0:
                 break
             points = int(np.clip(AT_ONCE // chosen.size, 1, MOST_POINTS))
             shares = np.arange(1, points + 1) / (points + 1)
-            grid = low[chosen, None] + (high - low)[chosen, None] * shares
-            held = self.holds(np.repeat(chosen, points), np.exp(grid).ravel()).reshape(-1, points)
+            below, above = low[chosen, None], high[chosen, None]
+            places = np.clip(np.rint(below + (above - below) * shares).astype(np.int64), below + 1, above - 1)
+            held = self.holds(np.repeat(chosen, points), grid[places].ravel()).reshape(-1, points)
             # The first knob value that does not hold bounds the edge, whatever lies beyond it.
             first = np.where(held.all(axis=1), points, np.argmin(held, axis=1))
-            padded = np.concatenate([low[chosen, None], grid, high[chosen, None]], axis=1)
+            padded = np.concatenate([below, places, above], axis=1)
             rows = np.arange(chosen.size)
             low[chosen], high[chosen] = padded[rows, first], padded[rows, first + 1]
-        knob = np.where(never_gives_in, ends[1], np.exp(low))
+        knob = np.where(never_gives_in, ends[1], grid[low])
         knob = np.where(always, ends[0], knob)
         final = self.tried(everyone, knob)
         values = {row: final.value(row) for row in self.trial.rows}
         tried = np.ones(count, dtype=bool)
-        weakest = spare[everyone, least], knobs[least]
+        weakest = spare[everyone, least], grid[scanned][least]
         return Edge(knob, values, never_gives_in & ~self.missing, always & ~self.missing, self.missing, tried, *weakest)
