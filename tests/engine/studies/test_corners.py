@@ -117,9 +117,9 @@ def words(sheet: dict[str, CheckResult], name: str) -> set[str]:
 
 
 def test_a_corner_names_what_matters(sheet: dict[str, CheckResult]) -> None:
-    # Base current: gain, load, base resistor, and the supply less V_BE. The timer has no part.
+    # Base current: gain, load and base resistor. Load and base current both follow the supply; the timer has no part.
     overdrive = words(sheet, "base_overdrive:driver:Q3")
-    assert {"cold", "low supply", "weak h_FE", "R7 high", "LS1 current high"} <= overdrive
+    assert {"cold", "weak h_FE", "R7 high", "LS1 current high"} <= overdrive
     assert not any(word.startswith(("R1 ", "C1 ", "LS2 ")) for word in overdrive)
     # The time constant and nothing of the driver; LS2 has come off 3 V below whatever the supply is: low is late.
     duration = words(sheet, "duration:timer:LS2")
