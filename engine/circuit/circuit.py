@@ -10,7 +10,7 @@ import numpy as np
 from ..errors import CircuitError
 from ..kernel import layout
 from ..kernel.elimination import Pattern
-from ..kernel.layout import Floats, Topology, ints
+from ..kernel.layout import Floats, Topology, ints, places
 from ..parts import kinds
 from ..primitives.builder import RETURN, SUPPLY_NET, Bench, Builder, constant, junction_array, transport_array
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
@@ -163,8 +163,8 @@ def _topology(
         pattern.couple((b, row))
     plan = pattern.plan([(row, (a, b)) for a, b, row in branches])
     slot = plan.slot
-    extra = [-1 if source is None else sources.index(source) for *_, source in builder.branches]
-    polarity = [sign for *_, sign, _ in builder.transports]
+    extra = [0 if source is None else sources.index(source) + 1 for *_, source in builder.branches]
+    polarity = [int(sign > 0) for *_, sign, _ in builder.transports]
 
     rows: list[list[int]] = []
     group = [0]
@@ -184,7 +184,7 @@ def _topology(
         group.append(len(rows))
     return Topology(
         size=ints([n_nets, n_free, n_all, plan.entries]),
-        element=ints(rows, len(rows), layout.ELEMENT_WIDTH),
-        group=ints(group),
+        element=places(rows, len(rows), layout.ELEMENT_WIDTH),
+        group=places(group),
         **plan.lists(),
     )

@@ -18,8 +18,8 @@ def compile_all() -> None:
     march(
         layout.Topology(
             layout.ints([1, 1, 2, 1]),
-            layout.ints([row], 1, layout.ELEMENT_WIDTH),
-            layout.ints([0, 1, 1, 1, 1, 1]),
+            layout.places([row], 1, layout.ELEMENT_WIDTH),
+            layout.places([0, 1, 1, 1, 1, 1]),
             **lists.lists(),
         ),
         np.ones((1, 1)),

@@ -21,6 +21,7 @@ from .layout import (
     J_SATURATION,
     J_TRANSIT,
     JUNCTION,
+    ONE,
     T_COLLECTOR,
     T_COLLECTOR_JUNCTION,
     T_EARLY,
@@ -29,12 +30,12 @@ from .layout import (
     T_GAIN_REVERSE,
     TRANSPORT,
     Floats,
-    Ints,
+    Places,
 )
 
 
 @leaf
-def linear_matrix(element: Ints, group: Ints, p: Floats, ah: float, a: Floats) -> None:
+def linear_matrix(element: Places, group: Places, p: Floats, ah: float, a: Floats) -> None:
     """Set a to the part of C + a h G that no iterate changes."""
     a[:] = 0.0
     for k in range(group[CONDUCTANCE], group[BRANCH]):
@@ -49,13 +50,13 @@ def linear_matrix(element: Ints, group: Ints, p: Floats, ah: float, a: Floats) -
         at = element[k, E_PARAMETER]
         a[element[k, E_SLOT]] -= ah
         a[element[k, E_SLOT + 1]] += ah
-        a[element[k, E_SLOT + 2]] += p[at] + ah * p[at + 1]
+        a[element[k, E_SLOT + 2]] += p[at] + ah * p[at + ONE]
         a[element[k, E_SLOT + 3]] += ah
         a[element[k, E_SLOT + 4]] -= ah
 
 
 @leaf
-def linear_flows(element: Ints, group: Ints, p: Floats, source: Floats, x: Floats, i: Floats, q: Floats) -> None:
+def linear_flows(element: Places, group: Places, p: Floats, source: Floats, x: Floats, i: Floats, q: Floats) -> None:
     """Set i and q to currents and charges of the linear primitives at x."""
     i[:] = 0.0
     q[:] = 0.0
@@ -76,17 +77,18 @@ def linear_flows(element: Ints, group: Ints, p: Floats, source: Floats, x: Float
         b = element[k, E_B]
         row = element[k, E_C]
         at = element[k, E_PARAMETER]
-        drive = source[element[k, E_EXTRA]] if element[k, E_EXTRA] >= 0 else 0.0
+        own = element[k, E_EXTRA]
+        drive = source[own - ONE] if own > 0 else 0.0
         i[a] += x[row]
         i[b] -= x[row]
-        i[row] += p[at + 1] * x[row] - (x[a] - x[b]) + drive
+        i[row] += p[at + ONE] * x[row] - (x[a] - x[b]) + drive
         q[row] += p[at] * x[row]
 
 
 @leaf
 def junctions(
-    element: Ints,
-    group: Ints,
+    element: Places,
+    group: Places,
     p: Floats,
     ah: float,
     x: Floats,
@@ -135,8 +137,8 @@ def junctions(
 
 @leaf
 def transports(
-    element: Ints,
-    group: Ints,
+    element: Places,
+    group: Places,
     p: Floats,
     ah: float,
     x: Floats,
@@ -159,8 +161,8 @@ def transports(
         nc = element[k, E_A]
         nb = element[k, E_B]
         ne = element[k, E_C]
-        sign = float(element[k, E_EXTRA])
-        own = junctions_before + 2 * (k - first)
+        sign = 1.0 if element[k, E_EXTRA] == 1 else -1.0
+        own = junctions_before + (k - first) + (k - first)
 
         vbe = sign * (x[nb] - x[ne])
         ve = limited(vbe, seen[own], p, pe)
@@ -186,8 +188,8 @@ def transports(
         ibc = 0.0
         gbc = 0.0
         if p[at + T_COLLECTOR] != 0.0:
-            vc = limited(vbc, seen[own + 1], p, pc)
-            moved = max(moved, move(vc, seen[own + 1], vbc, p, pc))
+            vc = limited(vbc, seen[own + ONE], p, pc)
+            moved = max(moved, move(vc, seen[own + ONE], vbc, p, pc))
             ec, dc = exponential(vc * p[pc + J_PER_SLOPE])
             reverse = saturation * ec
             gr = saturation * dc * p[pc + J_PER_SLOPE]
@@ -197,7 +199,7 @@ def transports(
             side, side_g = side_currents(vc, p, pc)
             ibc = reverse * p[at + T_GAIN_REVERSE] + side
             gbc = gr * p[at + T_GAIN_REVERSE] + side_g
-        seen[own + 1] = vc
+        seen[own + ONE] = vc
 
         early = 1.0 - vc * p[at + T_EARLY]
         over = (forward - reverse) * early
@@ -205,7 +207,7 @@ def transports(
         over_c = -gr * early - (forward - reverse) * p[at + T_EARLY]
 
         flow[own] = sign * (over - ibc)
-        flow[own + 1] = sign * (ibe + ibc)
+        flow[own + ONE] = sign * (ibe + ibc)
 
         # Companion offsets: the laws were evaluated at ve, vc and are continued linearly to the iterate.
         off_e = vbe - ve
@@ -242,8 +244,8 @@ def transports(
 
 @leaf
 def evaluate(
-    element: Ints,
-    group: Ints,
+    element: Places,
+    group: Places,
     p: Floats,
     source: Floats,
     linear: Floats,

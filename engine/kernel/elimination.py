@@ -8,7 +8,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 
 from .compiled import leaf
-from .layout import Floats, Ints, ints
+from .layout import Floats, Places, places
 
 
 class Pattern:
@@ -63,7 +63,7 @@ class Plan:
         """Where entry (row, column) is stored; the dump slot when either is a known net."""
         return self.slots.get((row, column), self.entries)
 
-    def lists(self) -> dict[str, Ints]:
+    def lists(self) -> dict[str, Places]:
         """Index lists by the field names of :class:`.layout.Topology`."""
         place = {k: n for n, k in enumerate(self.order)}
         later: dict[int, list[int]] = {k: [] for k in self.order}
@@ -82,9 +82,9 @@ class Plan:
         pivots.append((0, 0, len(entries)))
         entries.append((0, 0, 0, len(updates)))
         return {
-            "pivot": ints(pivots, len(pivots), 3),
-            "entry": ints(entries, len(entries), 4),
-            "update": ints(updates, len(updates), 2),
+            "pivot": places(pivots, len(pivots), 3),
+            "entry": places(entries, len(entries), 4),
+            "update": places(updates, len(updates), 2),
         }
 
 
@@ -96,7 +96,7 @@ def copy(source: Floats, target: Floats) -> None:
 
 
 @leaf
-def factor(a: Floats, pivot: Ints, entry: Ints, update: Ints) -> None:
+def factor(a: Floats, pivot: Places, entry: Places, update: Places) -> None:
     """Factor the stored matrix in place; the pivots are stored as their reciprocals."""
     for n in range(pivot.shape[0] - 1):
         slot = pivot[n, 1]
@@ -115,7 +115,7 @@ def factor(a: Floats, pivot: Ints, entry: Ints, update: Ints) -> None:
 
 
 @leaf
-def substitute(a: Floats, b: Floats, pivot: Ints, entry: Ints) -> None:
+def substitute(a: Floats, b: Floats, pivot: Places, entry: Places) -> None:
     """Solve with the factored matrix; b holds the right-hand side and then the solution."""
     count = pivot.shape[0] - 1
     for n in range(count):

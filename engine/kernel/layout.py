@@ -3,7 +3,8 @@
 Unknowns come first in the vector x: free nets 0 .. n_nets-1, then branch currents up to n_free-1; known nets follow
 (n_free .. n_all-1), the last of them being the return 0V. A matrix slot equal to the number of stored entries is a
 dump: rows and columns of known nets are added there and never read. Arrays are passed to the inner functions one by
-one: a tuple of arrays costs more to hand over than the arithmetic of a small circuit.
+one: a tuple of arrays costs more to hand over than the arithmetic of a small circuit. What is used as an index is
+unsigned (``Places``): a signed one is tested for counting from the end at every access.
 """
 
 from __future__ import annotations
@@ -16,6 +17,7 @@ from numpy.typing import NDArray
 Ints = NDArray[np.int64]
 Floats = NDArray[np.float64]
 Bytes = NDArray[np.uint8]
+Places = NDArray[np.uint32]
 
 # Families of primitives, in the order in which they stand in ``Topology.element``.
 CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT = 0, 1, 2, 3, 4
@@ -23,22 +25,32 @@ FAMILIES = 5
 
 # Columns of ``Topology.element``.
 E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; of a branch a, b and its own row
-E_EXTRA = 3  # polarity of a transistor, source of a branch (-1 = none)
+E_EXTRA = 3  # of a transistor 1 npn, 0 pnp; of a branch its source counted from 1, 0 = none
 E_PARAMETER = 4  # first of its parameters in a lane's row
 E_SLOT = 5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; transistor: 3 by 3
 ELEMENT_WIDTH = 14
 
-# A junction's parameters.
-J_SATURATION, J_SLOPE, J_CAPACITANCE, J_POTENTIAL, J_GRADING, J_TRANSIT = 0, 1, 2, 3, 4, 5
-J_BREAKDOWN, J_BREAKDOWN_SLOPE, J_BREAKDOWN_CURRENT, J_LEAKAGE = 6, 7, 8, 9
-J_KNEE, J_BREAKDOWN_KNEE = 10, 11  # where a Newton step into conduction, into breakdown begins to be limited
-J_PER_SLOPE, J_PER_BREAKDOWN_SLOPE, J_PER_POTENTIAL, J_STORED = 12, 13, 14, 15  # what the laws would else divide out
+ONE = np.uint32(1)
+
+# A junction's parameters. Offsets are unsigned like the places they are added to: mixed signs would add up to a float.
+J_SATURATION, J_SLOPE, J_CAPACITANCE = np.uint32(0), np.uint32(1), np.uint32(2)
+J_POTENTIAL, J_GRADING, J_TRANSIT = np.uint32(3), np.uint32(4), np.uint32(5)
+J_BREAKDOWN, J_BREAKDOWN_SLOPE, J_BREAKDOWN_CURRENT = np.uint32(6), np.uint32(7), np.uint32(8)
+J_LEAKAGE = np.uint32(9)
+J_KNEE, J_BREAKDOWN_KNEE = (
+    np.uint32(10),
+    np.uint32(11),
+)  # where a Newton step into conduction, into breakdown begins to be limited
+# What the laws would else divide out.
+J_PER_SLOPE, J_PER_BREAKDOWN_SLOPE, J_PER_POTENTIAL = np.uint32(12), np.uint32(13), np.uint32(14)
+J_STORED = np.uint32(15)
 JUNCTION_WIDTH = 16
 
 # A transistor's parameters: its own, then the emitter and the collector junction laid out as above.
-T_GAIN_FORWARD, T_GAIN_REVERSE, T_EARLY, T_COLLECTOR = 0, 1, 2, 3
-T_EMITTER_JUNCTION = 4
-T_COLLECTOR_JUNCTION = 4 + JUNCTION_WIDTH
+T_GAIN_FORWARD, T_GAIN_REVERSE = np.uint32(0), np.uint32(1)
+T_EARLY, T_COLLECTOR = np.uint32(2), np.uint32(3)
+T_EMITTER_JUNCTION = np.uint32(4)
+T_COLLECTOR_JUNCTION = np.uint32(4 + JUNCTION_WIDTH)
 TRANSPORT_WIDTH = 4 + 2 * JUNCTION_WIDTH
 
 PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH)
@@ -66,11 +78,11 @@ class Topology(NamedTuple):
     """What is connected to what; the same for every lane."""
 
     size: Ints  # n_nets, n_free, n_all, stored matrix entries
-    element: Ints  # (elements, ELEMENT_WIDTH), family after family
-    group: Ints  # (FAMILIES + 1,) where each family begins
-    pivot: Ints  # (n_free + 1, 3) unknown, slot of its diagonal, first of its entries
-    entry: Ints  # (entries + 1, 4) later unknown, slot below the diagonal, slot right of it, first of its updates
-    update: Ints  # (updates, 2) slot to change, slot right of the pivot
+    element: Places  # (elements, ELEMENT_WIDTH), family after family
+    group: Places  # (FAMILIES + 1,) where each family begins
+    pivot: Places  # (n_free + 1, 3) unknown, slot of its diagonal, first of its entries
+    entry: Places  # (entries + 1, 4) later unknown, slot below the diagonal, slot right of it, first of its updates
+    update: Places  # (updates, 2) slot to change, slot right of the pivot
 
 
 class Program(NamedTuple):
@@ -131,3 +143,8 @@ def ints(values: Any, *shape: int) -> Ints:
     """A C-contiguous int64 array, reshaped when a shape is given (also for empty lists)."""
     array = np.ascontiguousarray(np.asarray(values, dtype=np.int64))
     return np.ascontiguousarray(array.reshape(shape)) if shape else array
+
+
+def places(values: Any, *shape: int) -> Places:
+    """As :func:`ints`, for what is used as an index."""
+    return ints(values, *shape).astype(np.uint32)

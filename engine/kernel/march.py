@@ -24,6 +24,7 @@ from .layout import (
     Control,
     Floats,
     Ints,
+    Places,
     Program,
     Results,
     Rows,
@@ -72,8 +73,8 @@ def set_switches(switched: Ints, switch: Floats, t: float, p: Floats) -> bool:
 def error_of(
     relative: Floats,
     absolute: Floats,
-    pivot: Ints,
-    entry: Ints,
+    pivot: Places,
+    entry: Places,
     factors: Floats,
     rhs: Floats,
     x0: Floats,
@@ -83,7 +84,7 @@ def error_of(
     i1: Floats,
     q1: Floats,
     a: Floats,
-    diagonal: Ints,
+    diagonal: Places,
     h: float,
 ) -> float:
     """Return the largest filtered error of the step in parts of the tolerance (1 = just allowed)."""
@@ -167,7 +168,7 @@ def march_lane(
     first, second, constant, tolerance, rhs = vectors[0], vectors[1], vectors[2], vectors[3], vectors[4]
     matrices = np.zeros((3, entries + 1))
     a, factors, linear = matrices[0], matrices[1], matrices[2]
-    devices = np.zeros((5, group[4] - group[3] + 2 * (group[5] - group[4])))
+    devices = np.zeros((5, np.int64(group[4]) - np.int64(group[3]) + 2 * (np.int64(group[5]) - np.int64(group[4]))))
     seen, seen0, flow0, flow_g, flow = devices[0], devices[1], devices[2], devices[3], devices[4]
     signals = np.zeros((3, rows.signal.size - 1))
     s0, sg, s1 = signals[0], signals[1], signals[2]
@@ -175,7 +176,7 @@ def march_lane(
     now = 1
     source = np.zeros(program.source.shape[2])
     window = np.zeros((row.shape[0], 2))
-    diagonal = np.zeros(free, dtype=np.int64)
+    diagonal = np.zeros(free, dtype=np.uint32)
     for n in range(free):
         diagonal[pivot[n, 0]] = pivot[n, 1]
 

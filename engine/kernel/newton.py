@@ -8,7 +8,7 @@ from .assemble import evaluate
 from .compiled import leaf
 from .elimination import copy, factor, substitute
 from .laws import TOP
-from .layout import Floats, Ints
+from .layout import Floats, Places
 
 REMAINDER = 0.3  # accepted Kirchhoff residual in parts of the tolerance
 ROUND_OFF = 2.2e-16  # of the charges that cancel in a residual
@@ -18,18 +18,18 @@ BRANCH_VOLTS = 1e-4  # V, accepted residual of a branch's own equation
 
 @leaf
 def solve(
-    element: Ints,
-    group: Ints,
-    pivot: Ints,
-    entry: Ints,
-    update: Ints,
+    element: Places,
+    group: Places,
+    pivot: Places,
+    entry: Places,
+    update: Places,
     nets: int,
     p: Floats,
     source: Floats,
     linear: Floats,
     constant: Floats,
     tolerance: Floats,
-    diagonal: Ints,
+    diagonal: Places,
     x: Floats,
     i: Floats,
     q: Floats,

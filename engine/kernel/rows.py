@@ -38,6 +38,7 @@ from .layout import (
     TRANSPORT,
     Floats,
     Ints,
+    Places,
 )
 
 GAMMA = 2.0 - math.sqrt(2.0)
@@ -45,8 +46,8 @@ GAMMA = 2.0 - math.sqrt(2.0)
 
 @leaf
 def read_signal(
-    element: Ints,
-    group: Ints,
+    element: Places,
+    group: Places,
     term: Ints,
     factor: Floats,
     first: int,
@@ -73,7 +74,7 @@ def read_signal(
             if kind == S_JUNCTION_POWER:
                 v *= x[element[k, E_A]] - x[element[k, E_B]]
         else:
-            own = group[TRANSPORT] - group[JUNCTION] + 2 * (k - group[TRANSPORT])
+            own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
             ic = flow[own]
             ib = flow[own + 1]
             if kind == S_COLLECTOR_CURRENT:
@@ -89,8 +90,8 @@ def read_signal(
 
 @leaf
 def keep_signals(
-    element: Ints,
-    group: Ints,
+    element: Places,
+    group: Places,
     term: Ints,
     factor: Floats,
     signal: Ints,
@@ -224,8 +225,8 @@ def note(
 
 @leaf
 def watch(
-    element: Ints,
-    group: Ints,
+    element: Places,
+    group: Places,
     term: Ints,
     factor: Floats,
     signal: Ints,
