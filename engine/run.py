@@ -20,7 +20,7 @@ from .kernel import layout
 from .kernel.layout import Control, Floats, Program, Results, Rows, ints
 from .kernel.march import march
 from .primitives.columns import Lanes
-from .primitives.signals import Anchor, Row, Signal
+from .primitives.signals import BRANCH_CURRENT, Anchor, Row, Signal
 
 RELATIVE = 1e-3
 ABSOLUTE = 1e-4  # V
@@ -129,10 +129,7 @@ class _RowTable:
         bounds = [0]
         for signal in self.signals:
             for kind, index, scale in signal.terms:
-                place = (
-                    self.circuit.index(index) if isinstance(index, str) else self.circuit.element(FAMILY[kind], index)
-                )
-                terms.append((kind, place))
+                terms.append(self._term(kind, index))
                 scales.append(scale)
             bounds.append(len(terms))
         rows: list[tuple[int, ...]] = []
@@ -152,6 +149,15 @@ class _RowTable:
             stop_row=ints([-1 if stop is None else self.places[stop]]),
             keep_row=ints([self.places[row] for row in keep]),
         )
+
+    def _term(self, kind: int, index: int | str) -> tuple[int, int]:
+        """Kind and place of a term as the kernel knows them."""
+        if isinstance(index, str):
+            return kind, self.circuit.index(index)
+        if kind == BRANCH_CURRENT:
+            branch = self.circuit.element(layout.BRANCH, index)
+            return layout.S_UNKNOWN, int(self.circuit.topology.element[branch, layout.E_C])
+        return kind, self.circuit.element(FAMILY[kind], index)
 
     def _window(self, anchor: Anchor | None) -> tuple[int, float]:
         if anchor is None:

@@ -12,7 +12,7 @@ from ..kernel import layout
 from ..kernel.elimination import Pattern
 from ..kernel.layout import Floats, Topology, ints, places
 from ..parts import kinds
-from ..primitives.builder import RETURN, SUPPLY_NET, Bench, Builder, constant, junction_array, transport_array
+from ..primitives.builder import RETURN, SUPPLY_NET, Bench, Builder, Law, constant, junction_array, transport_array
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
 from ..quantity import read
 from .inspection import inspect
@@ -22,7 +22,15 @@ if TYPE_CHECKING:
 
 SUPPLY_SOURCE = "supply source"
 SUPPLY_SWITCH = "supply"
+SUPPLY_RISE = "supply rise"
+RISE_NET = "supply/rise"
 LEAST_SOURCE_RESISTANCE = 1e-3  # ohm, where a source resistance of 0R is only one end of its range
+# The junction through which a charged rail is met again: as steep as the tolerance of the voltage before it allows,
+# some 0.1 V at 6 V and 0.1 A until the rise is over.
+RISE_SATURATION = 1e-10  # A
+RISE_SLOPE = 8e-4  # of the supply voltage, an e-fold
+LEAST_RISING = 1.0  # V
+RISE_LEAKAGE = 1e-7  # S, ties the net behind it where it blocks
 
 
 @dataclass(frozen=True)
@@ -138,13 +146,37 @@ def _add_conditions(design: Design, builder: Builder) -> None:
     if source is None or source.max == 0.0:
         return
     key = builder.column(*SOURCE_RESISTANCE, source.nominal, source.min, source.max, Group.CONDITION)
-    builder.switch(
-        SUPPLY_SWITCH,
-        SUPPLY_SOURCE,
-        SUPPLY_NET,
-        lambda lanes: 1.0 / np.maximum(lanes[key], LEAST_SOURCE_RESISTANCE),
-        lambda state: lambda lanes: 1e-12 if state == "open" else 1.0 / np.maximum(lanes[key], LEAST_SOURCE_RESISTANCE),
-    )
+
+    def closed(lanes: Lanes) -> Floats:
+        return np.asarray(1.0 / np.maximum(lanes[key], LEAST_SOURCE_RESISTANCE))
+
+    def reading(state: str) -> Law:
+        return constant(1e-12) if state == "open" else closed
+
+    builder.switch(SUPPLY_SWITCH, SUPPLY_SOURCE, SUPPLY_NET, closed, reading)
+    if _meets_charge(design):
+        # A supply that rises onto a charged rail must not drain it: a steep junction lets current flow one way.
+        builder.junction(
+            SUPPLY_SOURCE,
+            RISE_NET,
+            {
+                "saturation": lambda lanes: RISE_SATURATION,
+                "slope": lambda lanes: RISE_SLOPE * np.maximum(lanes[SUPPLY], LEAST_RISING),
+            },
+        )
+        builder.conductance(SUPPLY_SOURCE, RISE_NET, constant(RISE_LEAKAGE))
+        builder.switch(SUPPLY_RISE, RISE_NET, SUPPLY_NET, constant(1e-12), reading)
+
+
+def _meets_charge(design: Design) -> bool:
+    """Whether some sequence connects the supply when the rail may hold a charge: again, or where starts are given."""
+    for name, sequence in design.sequences.items():
+        connections = sum(event.event == "connect supply" for event in sequence.events)
+        if connections > (1 if design.starts_of(name) is None else 0):
+            return True
+        if connections and any(event.event == "reverse supply" for event in sequence.events):
+            return True
+    return False
 
 
 def _topology(

@@ -25,6 +25,8 @@ from .net_inspection import RETURN, SUPPLY
 
 _LEVELS = {"probe": "ohm", "lead": "ohm", "preset": "", "generator": "V", "light_resistor": "lx", "thermistor": "degC"}
 """What ``set`` and ``ramp`` write for a part of this kind."""
+_SENSORS = ("light_resistor", "thermistor")
+AMBIENT = "ambient"
 _EQUAL = 1e-9
 """Times that differ by less than this share are the same: they are sums of what was typed."""
 
@@ -101,12 +103,25 @@ def _level_faults(design: Design, event: SetLevel | RampLevel, refs: Mapping[str
     quantities = {part.follows for part in design.parts if part.follows is not None}
     if event.part not in refs and event.part not in quantities:
         yield f"field part: {_absent('part or followed quantity', event.part, {*refs, *quantities})}"
+    elif event.part in refs and refs[event.part] not in _LEVELS:
+        settable = [ref for ref, kind in refs.items() if kind in _LEVELS]
+        why = "a contact, which close and open move" if refs[event.part] == "contact" else f"a {refs[event.part]}"
+        yield f"field part: {event.part} is {why}, and has no level; write {_one_of(settable, 'probe or a preset')}"
+    elif event.part == AMBIENT:
+        yield "field part: the ambient is a condition; let the sensor follow a quantity with a name of its own"
     elif isinstance(event.to, str):
-        unit = _LEVELS.get(refs.get(event.part, ""))
+        unit = _LEVELS.get(_kind_set(design, event.part))
         try:
             read(event.to, unit)
         except QuantityError as refusal:
             yield f"field to: {refusal}"
+
+
+def _kind_set(design: Design, name: str) -> str:
+    """The kind of the part, or of the sensor that follows the quantity, that an event sets."""
+    return next((part.kind for part in design.parts if part.ref == name), "") or next(
+        (part.kind for part in design.parts if part.follows == name and part.kind in _SENSORS), ""
+    )
 
 
 def _start_faults(where: str, starts: Mapping[str, str], nets: Collection[str]) -> Iterator[str]:

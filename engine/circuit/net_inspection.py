@@ -83,7 +83,7 @@ def _fighting_sources(design: Design) -> Iterator[str]:
     if SUPPLY in design.nets and (inside is None or inside.min == 0):
         sources.append(("the supply", (RETURN, SUPPLY)))
     for part in design.parts:
-        if part.kind in _SOURCES and part.class_ is None and (part.entry("resistance") is None or _is_zero(part)):
+        if part.kind in _SOURCES and part.class_ is None and part.entry("loads") is None and _is_ideal(part):
             sources.append((f"part {part.ref}", (part.pins["plus"], part.pins["minus"])))
     before: list[str] = []
     for name, (one, other) in sources:
@@ -92,6 +92,10 @@ def _fighting_sources(design: Design) -> Iterator[str]:
             yield f"{name} is an ideal source{against}; write a resistor between them, or a resistance of the source"
         islands.join(one, other)
         before.append(name)
+
+
+def _is_ideal(part: Part) -> bool:
+    return part.entry("resistance") is None or _is_zero(part)
 
 
 def _is_zero(part: Part, key: str = "resistance") -> bool:

@@ -8,88 +8,31 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from ..design.datum import number
-from ..design.sequence import ConnectSupply, ContactEvent, DisconnectSupply, RampLevel, SetLevel
+from ..design.sequence import (
+    ConnectSupply,
+    ContactEvent,
+    Dip,
+    DisconnectSupply,
+    RampLevel,
+    ReverseSupply,
+    SetLevel,
+    Surge,
+)
 from ..errors import CircuitError
 from ..kernel import layout
 from ..kernel.layout import Floats, Program, ints
-from ..primitives.builder import SUPPLY_NET, Law
+from ..primitives.builder import SUPPLY_NET, Law, Settable
 from ..primitives.columns import SUPPLY, Lanes
 from ..quantity import read
-from .circuit import SUPPLY_SOURCE, SUPPLY_SWITCH, Circuit
+from .circuit import SUPPLY_RISE, SUPPLY_SOURCE, SUPPLY_SWITCH, Circuit
+from .wave import Number, Wave, ramp_shares
 
 if TYPE_CHECKING:
     from ..design.sequence import Event, Sequence
 
 DEFAULT_RISE = 100e-9  # s, a supply that no event connects
 HALF_JUMP = 0.5e-12  # s, half of the step with which the kernel takes in what an event does
-RAMP_PIECES = 16  # a resistance that moves evenly is not a conductance that does: straight pieces
-Number = Floats | float
-
-
-class Wave:
-    """A piecewise linear course: points of time and value, each one number for all lanes or one per lane."""
-
-    def __init__(self, value: Number) -> None:
-        self.times: list[Number] = [0.0]
-        self.values: list[Number] = [value]
-
-    def step(self, at: Number, value: Number) -> None:
-        """Jump to a value."""
-        self.cut(at)
-        self.times += [at, at]
-        self.values += [self.values[-1], value]
-
-    def ramp(self, at: Number, during: Number, value: Number) -> None:
-        """Move evenly to a value."""
-        self.cut(at)
-        self.times += [at, np.add(at, during)]
-        self.values += [self.values[-1], value]
-
-    def cut(self, at: Number) -> None:
-        """Forget what was to happen after ``at``: the next event overrides a bounce or a ramp that is not over."""
-        if not any(np.any(np.greater(time, at)) for time in self.times):
-            return
-        middles = np.reshape(np.asarray(at, dtype=float), (-1, 1))
-        now = self.pieces(middles, middles)[0][:, 0]
-        self.values = [np.where(np.greater(t, at), now, v) for t, v in zip(self.times, self.values, strict=True)]
-        self.times = [np.minimum(t, at) for t in self.times]
-
-    def later(self, at: Floats) -> Wave:
-        """The same course with ``at`` (one instant per lane) as its t = 0."""
-        middles = np.asarray(at, dtype=float)[:, None]
-        now = self.pieces(middles, middles)[0][:, 0]
-        wave = Wave(now)
-        for time, value in zip(self.times, self.values, strict=True):
-            wave.times.append(np.maximum(np.subtract(time, at), 0.0))
-            wave.values.append(np.where(np.greater(time, at), value, now))
-        return wave
-
-    def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
-        """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
-        times, values = _stacked(self.times), _stacked(self.values)
-        # Times are mostly the same in all lanes: then one search serves them all.
-        rows = max(times.shape[0], middles.shape[0])
-        searched = zip(
-            np.broadcast_to(times, (rows, times.shape[1])),
-            np.broadcast_to(middles, (rows, middles.shape[1])),
-            strict=True,
-        )
-        place = np.stack([np.searchsorted(t, m, side="right") - 1 for t, m in searched])
-        rows = max(rows, values.shape[0])
-        place = np.broadcast_to(place, (rows, place.shape[1]))
-        times, values = (np.broadcast_to(a, (rows, a.shape[1])) for a in (times, values))
-        after = np.minimum(place + 1, times.shape[1] - 1)
-        t0, t1 = np.take_along_axis(times, place, 1), np.take_along_axis(times, after, 1)
-        v0, v1 = np.take_along_axis(values, place, 1), np.take_along_axis(values, after, 1)
-        span = np.where(t1 > t0, t1 - t0, 1.0)
-        slope = np.where(t1 > t0, (v1 - v0) / span, 0.0)
-        return v0 + slope * (np.broadcast_to(starts, place.shape) - t0), slope
-
-
-def _stacked(points: list[Number]) -> Floats:
-    """Points as (lanes or 1, points)."""
-    rows = max(1, *(np.size(v) for v in points))
-    return np.stack([np.broadcast_to(np.asarray(v, dtype=float), (rows,)) for v in points], axis=1)
+DEFAULT_EDGE = 1e-6  # s, of a dip or a surge
 
 
 class Timeline:
@@ -101,6 +44,10 @@ class Timeline:
         self.supply = Wave(0.0)
         self.sources = {name: Wave(0.0) for name in circuit.source_names}
         self.switches = {ref: Wave(self._set(ref, None)) for ref in circuit.builder.switches}
+        self.quantities: dict[str, Wave] = {}
+        for ref, settable in circuit.builder.settables.items():
+            self.quantities[ref] = Wave(settable.start(lanes))
+            self.switches[ref] = Wave(settable.siemens(lanes, self.quantities[ref].values[0]))
         self.sines = layout.zeros(lanes.count, len(circuit.source_names), 3)
         for name in (SUPPLY_SOURCE, SUPPLY_NET):
             if name in self.sources:
@@ -108,13 +55,23 @@ class Timeline:
         if SUPPLY_SWITCH in self.switches:
             self.switches[SUPPLY_SWITCH] = Wave(self._set(SUPPLY_SWITCH, "open"))
         self._level: Number = lanes[SUPPLY] if SUPPLY in lanes else 0.0  # noqa: SIM401
+        # What the supply stands at between its events, None while it is away; whether the rail may hold a charge.
+        self._standing: Number | None = None
+        self._charged = False
         self._generators()
+        for source, volts in circuit.builder.batteries.items():
+            self.sources[source].ramp(0.0, DEFAULT_RISE, volts(lanes))
 
     def _set(self, ref: str, state: str | None) -> Number:
         index, reading = self.circuit.builder.switches[ref]
         law: Law = self.circuit.builder.conductances[index][2] if state is None else reading(state)
         value = law(self.lanes)
         return value if np.ndim(value) else float(value)
+
+    def _conductance(self, ref: str) -> int:
+        """The number of the conductance that a switch or a settable part is."""
+        settable = self.circuit.builder.settables.get(ref)
+        return self.circuit.builder.switches[ref][0] if settable is None else settable.index
 
     def _generators(self) -> None:
         for ref, source in self.circuit.builder.generators.items():
@@ -145,9 +102,11 @@ class Timeline:
         for wave, old in (
             (line.supply, before.supply),
             *((line.switches[ref], old) for ref, old in before.switches.items()),
+            *((line.quantities[ref], old) for ref, old in before.quantities.items()),
         ):
             value, _ = old.pieces(middles, middles)
             wave.values[0] = np.broadcast_to(value[:, 0], (line.lanes.count,)).copy()
+        line._standing, line._charged = line.supply.values[0], True
         for name, old in before.sources.items():
             if old is not before.supply:
                 line.sources[name] = old.later(at)
@@ -156,16 +115,32 @@ class Timeline:
         return line
 
     def supply_stands(self) -> None:
-        """The supply has its value from t = 0 on."""
-        self.supply.values[0] = self._level
+        """The supply and batteries have their values from t = 0 on."""
+        self.supply.values[0] = self._standing = self._level
         if SUPPLY_SWITCH in self.switches:
             self.switches[SUPPLY_SWITCH].values[0] = self._set(SUPPLY_SWITCH, "closed")
+        self.batteries_stand()
+
+    def batteries_stand(self) -> None:
+        """Batteries have their voltage from t = 0 on, and nets that start with a charge may keep it on the rail."""
+        self._charged = True
+        for source, volts in self.circuit.builder.batteries.items():
+            self.sources[source] = Wave(volts(self.lanes))
 
     def connect_supply(self, at: Number, rise: Number) -> None:
-        """The supply is connected at ``at`` and rises evenly within ``rise``."""
+        """The supply is connected at ``at`` and rises evenly within ``rise``.
+
+        A rail that was charged before keeps its charge: until the rise is over current flows only into it.
+        """
+        joined = at
+        if SUPPLY_RISE in self.switches and self._charged and self._standing is None:
+            joined = np.add(at, rise)
+            self.switches[SUPPLY_RISE].step(at, self._set(SUPPLY_RISE, "closed"))
+            self.switches[SUPPLY_RISE].step(joined, self._set(SUPPLY_RISE, "open"))
         if SUPPLY_SWITCH in self.switches:
-            self.switches[SUPPLY_SWITCH].step(at, self._set(SUPPLY_SWITCH, "closed"))
+            self.switches[SUPPLY_SWITCH].step(joined, self._set(SUPPLY_SWITCH, "closed"))
         self.supply.ramp(at, rise, self._level)
+        self._standing, self._charged = self._level, True
 
     def disconnect_supply(self, at: Number) -> None:
         """The supply is taken away; its voltage no longer matters."""
@@ -173,15 +148,53 @@ class Timeline:
             raise CircuitError(
                 "conditions, source_resistance: a supply of 0R cannot be disconnected; write a resistance such as 0R1"
             )
-        self.switches[SUPPLY_SWITCH].step(at, self._set(SUPPLY_SWITCH, "open"))
+        for name in (SUPPLY_SWITCH, SUPPLY_RISE):
+            if name in self.switches:
+                self.switches[name].step(at, self._set(name, "open"))
         self.supply.step(at, 0.0)
+        self._standing = None
+
+    def reverse_supply(self, at: Number) -> None:
+        """The supply is connected the wrong way round at ``at``, at once; what charge the rail holds it takes."""
+        if SUPPLY_RISE in self.switches:
+            self.switches[SUPPLY_RISE].step(at, self._set(SUPPLY_RISE, "open"))
+        if SUPPLY_SWITCH in self.switches:
+            self.switches[SUPPLY_SWITCH].step(at, self._set(SUPPLY_SWITCH, "closed"))
+        self._standing, self._charged = np.negative(self._level), True
+        self.supply.ramp(at, DEFAULT_RISE, self._standing)
 
     def move_supply(self, at: Number, to: Number, edge: Number) -> None:
         """The supply moves to another voltage within ``edge``."""
         self.supply.ramp(at, edge, to)
 
+    def excursion(
+        self, at: Number, to: Number, during: Number, edge: Number = DEFAULT_EDGE, impedance: Number | None = None
+    ) -> None:
+        """A dip or a surge: the supply goes to ``to`` within ``edge`` and begins to come back ``during`` after ``at``.
+
+        All the while it stands behind ``impedance`` instead of its source resistance, where one is given.
+        """
+        if self._standing is None:
+            raise CircuitError("the supply is not connected then; write 'connect supply' at an earlier time")
+        if np.any(np.greater(edge, during)):
+            raise CircuitError(
+                f"the edge of {np.max(edge):g} s is longer than the {np.min(during):g} s it lasts; "
+                "write a shorter 'edge' or a longer 'for'"
+            )
+        over = np.add(at, during)
+        self.supply.ramp(at, edge, to)
+        self.supply.ramp(over, edge, self._standing)
+        if impedance is None:
+            return
+        if SUPPLY_SWITCH not in self.switches:
+            raise CircuitError(
+                "a supply of 0R takes no impedance; write a source_resistance such as 0R1 under 'conditions'"
+            )
+        self.switches[SUPPLY_SWITCH].step(at, np.divide(1.0, impedance))
+        self.switches[SUPPLY_SWITCH].step(np.add(over, edge), self._set(SUPPLY_SWITCH, "closed"))
+
     def set_part(self, ref: str, at: Number, state: str) -> None:
-        """An event sets a contact or a resistance at once."""
+        """An event opens or closes a contact at once."""
         self.switches[ref].step(at, self._set(ref, state))
 
     def bounce(self, ref: str, at: float, state: str, during: float, times: int) -> None:
@@ -192,14 +205,50 @@ class Timeline:
             self.set_part(ref, at + during * (k + 0.5) / times, other)
         self.set_part(ref, at + during, state)
 
-    def ramp_part(self, ref: str, at: float, during: float, state: str) -> None:
-        """A resistance moves evenly to a value."""
-        wave = self.switches[ref]
-        wave.cut(at)
-        begin, end = 1.0 / np.asarray(wave.values[-1]), 1.0 / np.asarray(self._set(ref, state))
-        for k in range(RAMP_PIECES):
-            share = (k + 1) / RAMP_PIECES
-            wave.ramp(at + during * k / RAMP_PIECES, during / RAMP_PIECES, 1.0 / (begin + (end - begin) * share))
+    def set_level(self, name: str, at: float, to: str | float) -> None:
+        """A part, or every part that follows ``name``, is set at once in its own quantity; a generator in volts.
+
+        A sine keeps swinging, about the new level.
+        """
+        if name in self.circuit.builder.generators:
+            self.sources[self.circuit.builder.generators[name]].step(at, number(to, "V"))
+            return
+        for ref, settable in self._named(name):
+            value = settable.reading(to)
+            self.quantities[ref].step(at, value)
+            self.switches[ref].step(at, settable.siemens(self.lanes, value))
+
+    def ramp_level(self, name: str, at: float, during: float, to: str | float) -> None:
+        """As :meth:`set_level`, reached evenly within ``during``."""
+        if name in self.circuit.builder.generators:
+            self.sources[self.circuit.builder.generators[name]].ramp(at, during, number(to, "V"))
+            return
+        for ref, settable in self._named(name):
+            quantity, wave = self.quantities[ref], self.switches[ref]
+            quantity.ramp(at, during, settable.reading(to))
+            begin, end = quantity.values[-2:]
+            wave.cut(at)
+
+            def siemens(
+                share: float, settable: Settable = settable, begin: Number = begin, end: Number = end
+            ) -> Number:
+                return settable.siemens(self.lanes, np.asarray(begin + (np.asarray(end) - begin) * share))
+
+            past = 0.0
+            for share in ramp_shares(siemens):
+                wave.ramp(at + during * past, during * (share - past), siemens(share))
+                past = float(share)
+
+    def _named(self, name: str) -> list[tuple[str, Settable]]:
+        """The parts that an event of this name sets."""
+        known = self.circuit.builder.settables
+        found = [(ref, settable) for ref, settable in known.items() if name in (ref, settable.follows)]
+        if not found:
+            offered = ", ".join(dict.fromkeys([*known, *self.circuit.builder.generators]))
+            raise CircuitError(
+                f"part {name} has no level that events set; write {'one of ' + offered if offered else 'another part'}"
+            )
+        return found
 
     def program(self, ends: Number, stops: Floats | None = None) -> Program:
         """The segments between all events up to ``ends``; ``stops`` are times that a step must hit without a jump."""
@@ -234,10 +283,7 @@ class Timeline:
             source=source,
             sine=self.sines,
             switched=ints(
-                [
-                    self.circuit.parameter(layout.CONDUCTANCE, self.circuit.builder.switches[ref][0])
-                    for ref in self.switches
-                ]
+                [self.circuit.parameter(layout.CONDUCTANCE, self._conductance(ref)) for ref in self.switches]
             ),
             switch=switch,
         )
@@ -246,6 +292,8 @@ class Timeline:
 def timeline(circuit: Circuit, lanes: Lanes, sequence: Sequence, starts: bool = False) -> Timeline:
     """The timeline of a document's sequence. ``starts``: initial voltages are given, the supply stands from t = 0."""
     line = Timeline(circuit, lanes)
+    if starts:
+        line.batteries_stand()
     events = sorted(sequence.events, key=lambda event: read(event.at, "s"))
     if not any(event.event == "connect supply" for event in events):
         if starts:
@@ -271,10 +319,27 @@ def _apply(line: Timeline, event: Event) -> None:
             else:
                 line.set_part(event.part, at, state)
         case SetLevel():
-            line.set_part(event.part, at, str(event.to))
+            line.set_level(event.part, at, event.to)
         case RampLevel():
-            line.ramp_part(event.part, at, read(event.for_, "s"), str(event.to))
+            line.ramp_level(event.part, at, read(event.for_, "s"), event.to)
+        case Dip() | Surge():
+            edge = DEFAULT_EDGE if event.edge is None else read(event.edge, "s")
+            impedance = _impedance(event)
+            try:
+                line.excursion(at, read(event.to, "V"), read(event.for_, "s"), edge, impedance)
+            except CircuitError as refusal:
+                raise CircuitError(f"event {event.event} at {event.at}: {refusal}") from refusal
+        case ReverseSupply():
+            line.reverse_supply(at)
         case _:
-            raise CircuitError(
-                f"event '{event.event}' cannot be computed yet; write connect supply, close, open, set or ramp"
-            )
+            raise CircuitError(f"event '{event.event}' cannot be computed yet; write another event in its place")
+
+
+def _impedance(event: Dip | Surge) -> float | None:
+    """What a surge comes through in ohm, None where it comes through the source resistance."""
+    if isinstance(event, Dip) or event.impedance is None:
+        return None
+    ohms = read(event.impedance, "ohm")
+    if ohms <= 0.0:
+        raise CircuitError(f"event surge at {event.at}, impedance: {event.impedance} cannot be; write it like '0R5'")
+    return ohms

@@ -4,10 +4,10 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from ..errors import CircuitError, QuantityError
-from ..quantity import read
+from ..errors import CircuitError
 from .figures import typical, valued
 from .kind import TEXT, Entry, Kind
+from .levels import ohmic, reading_above_zero
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -36,16 +36,15 @@ def expand_probe(part: Part, build: Builder) -> None:
     """Add a probe: a resistance that events set or ramp."""
     key = build.column(part.ref, "value", *valued(part, "ohm", 0.0).limits)
 
-    def reading(text: str) -> Law:
-        try:
-            ohms = read(text, "ohm")
-        except QuantityError as refusal:
-            raise CircuitError(f"part {part.ref}: {refusal}") from refusal
-        if ohms <= 0.0:
-            raise CircuitError(f"part {part.ref}: a probe of {text} cannot be; write a resistance such as 200k")
-        return lambda lanes: 1.0 / ohms
-
-    handle = build.switch(part.ref, part.pins["a"], part.pins["b"], lambda lanes: 1.0 / lanes[key], reading)
+    handle = build.settable(
+        part.ref,
+        part.pins["a"],
+        part.pins["b"],
+        lambda lanes: lanes[key],
+        ohmic,
+        reading_above_zero(part, "ohm", "200k"),
+        part.follows,
+    )
     bench = build.bench(part.ref)
     bench.currents["a"] = handle.current
     bench.power = handle.power
@@ -70,6 +69,7 @@ KINDS = (
         {
             "value": Entry("ohm", needed=True, about="resistance before any event"),
             "tolerance": Entry("%", about="of that resistance"),
+            "follows": Entry(TEXT, about="a name by which events set all probes that follow it"),
         },
     ),
 )

@@ -12,7 +12,7 @@ from ..errors import CircuitError
 from ..kernel import layout
 from ..kernel.layout import Floats
 from .columns import Column, Group, Lanes
-from .signals import Signal
+from .signals import BRANCH_CURRENT, Signal
 
 Law = Callable[[Lanes], "Floats | float"]
 Laws = dict[str, Law]
@@ -64,6 +64,7 @@ class Handle:
         """Current from the first net to the second; collector current of a transistor."""
         kinds = {
             "conductance": layout.S_CONDUCTANCE_CURRENT,
+            "branch": BRANCH_CURRENT,
             "junction": layout.S_JUNCTION_CURRENT,
             "transport": layout.S_COLLECTOR_CURRENT,
         }
@@ -83,6 +84,21 @@ class Handle:
             "transport": layout.S_TRANSPORT_POWER,
         }
         return Signal(((kinds[self.family], self.index, 1.0),))
+
+
+@dataclass(frozen=True)
+class Settable:
+    """A conductance that events set in a quantity of the part's own: ohm, lux, deg C, a share of its travel.
+
+    ``start`` is that quantity before any event, ``reading`` turns what an event writes into a number, ``siemens`` gives
+    the conductance at a quantity. ``follows`` names what the part follows, when events may set it by that name too.
+    """
+
+    index: int
+    start: Law
+    reading: Callable[[str | float], float]
+    siemens: Callable[[Lanes, Floats | float], Floats | float]
+    follows: str | None = None
 
 
 @dataclass
@@ -117,7 +133,9 @@ class Builder:
         self.junctions: list[tuple[str, str, Laws]] = []
         self.transports: list[tuple[str, str, str, int, Laws]] = []
         self.switches: dict[str, tuple[int, Callable[[str], Law]]] = {}
+        self.settables: dict[str, Settable] = {}
         self.generators: dict[str, str] = {}
+        self.batteries: dict[str, Law] = {}
         self.benches: dict[str, Bench] = {}
         self._alias = alias or {}
 
@@ -160,9 +178,11 @@ class Builder:
         """A linear capacitance in farad between two nets."""
         self.capacitances.append((self.net(a), self.net(b), law))
 
-    def branch(self, a: str, b: str, inductance: Law, resistance: Law, source: str | None = None) -> None:
+    def branch(self, a: str, b: str, inductance: Law, resistance: Law, source: str | None = None) -> Handle:
         """A branch with its current as an unknown: v(a) - v(b) = L di/dt + R i + source."""
-        self.branches.append((self.net(a), self.net(b), inductance, resistance, source))
+        pair = self.net(a), self.net(b)
+        self.branches.append((*pair, inductance, resistance, source))
+        return Handle("branch", len(self.branches) - 1, pair)
 
     def junction(self, anode: str, cathode: str, laws: Laws) -> Handle:
         """A two-terminal junction; ``laws`` by the names of ``_JUNCTION_PLACES``."""
@@ -181,6 +201,21 @@ class Builder:
         into a law in siemens."""
         handle = self.conductance(a, b, start)
         self.switches[ref] = (handle.index, reading)
+        return handle
+
+    def settable(
+        self,
+        ref: str,
+        a: str,
+        b: str,
+        start: Law,
+        siemens: Callable[[Lanes, Floats | float], Floats | float],
+        reading: Callable[[str | float], float],
+        follows: str | None = None,
+    ) -> Handle:
+        """A conductance that events set in a quantity of the part's own, see :class:`Settable`."""
+        handle = self.conductance(a, b, lambda lanes: siemens(lanes, start(lanes)))
+        self.settables[ref] = Settable(handle.index, start, reading, siemens, follows)
         return handle
 
     def bench(self, ref: str) -> Bench:

@@ -6,11 +6,14 @@ from dataclasses import dataclass
 
 from ..kernel import layout
 
+BRANCH_CURRENT = -1
+"""Kind of a term that is the current of a branch: an unknown of the kernel, whose place is known only late."""
+
 
 @dataclass(frozen=True, slots=True)
 class Signal:
-    """A sum of terms (kind, index, factor); kinds are those of :mod:`..kernel.layout`. Net indices are resolved late:
-    a term of kind ``S_UNKNOWN`` holds a net's name."""
+    """A sum of terms (kind, index, factor); kinds are those of :mod:`..kernel.layout`. Unknowns are resolved late:
+    a term of kind ``S_UNKNOWN`` holds a net's name, one of kind ``BRANCH_CURRENT`` the number of the branch."""
 
     terms: tuple[tuple[int, int | str, float], ...]
 

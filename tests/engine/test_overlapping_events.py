@@ -8,7 +8,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from stagebook.engine.circuit.timeline import Wave
+from stagebook.engine.circuit.wave import Wave
 from stagebook.engine.primitives.signals import Anchor, level, voltage
 
 from .circuits import Json, resistor, setup, two

@@ -1,0 +1,98 @@
+"""Piecewise linear courses over time, one for all lanes or one per lane, and where to break a ramp into pieces."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from itertools import pairwise
+
+import numpy as np
+
+from ..kernel.layout import Floats
+
+Number = Floats | float
+
+LEAST_PIECES, MOST_PIECES = 16, 128
+PIECE = 0.14  # a conductance that grows e-fold by this much within a straight piece is 0.25 % off in its middle
+
+
+class Wave:
+    """A piecewise linear course: points of time and value, each one number for all lanes or one per lane."""
+
+    def __init__(self, value: Number) -> None:
+        self.times: list[Number] = [0.0]
+        self.values: list[Number] = [value]
+
+    def step(self, at: Number, value: Number) -> None:
+        """Jump to a value."""
+        self.cut(at)
+        self.times += [at, at]
+        self.values += [self.values[-1], value]
+
+    def ramp(self, at: Number, during: Number, value: Number) -> None:
+        """Move evenly to a value."""
+        self.cut(at)
+        self.times += [at, np.add(at, during)]
+        self.values += [self.values[-1], value]
+
+    def cut(self, at: Number) -> None:
+        """Forget what was to happen after ``at``: the next event overrides a bounce or a ramp that is not over."""
+        if not any(np.any(np.greater(time, at)) for time in self.times):
+            return
+        middles = np.reshape(np.asarray(at, dtype=float), (-1, 1))
+        now = self.pieces(middles, middles)[0][:, 0]
+        self.values = [np.where(np.greater(t, at), now, v) for t, v in zip(self.times, self.values, strict=True)]
+        self.times = [np.minimum(t, at) for t in self.times]
+
+    def later(self, at: Floats) -> Wave:
+        """The same course with ``at`` (one instant per lane) as its t = 0."""
+        middles = np.asarray(at, dtype=float)[:, None]
+        now = self.pieces(middles, middles)[0][:, 0]
+        wave = Wave(now)
+        for time, value in zip(self.times, self.values, strict=True):
+            wave.times.append(np.maximum(np.subtract(time, at), 0.0))
+            wave.values.append(np.where(np.greater(time, at), value, now))
+        return wave
+
+    def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
+        """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
+        times, values = _stacked(self.times), _stacked(self.values)
+        # Times are mostly the same in all lanes: then one search serves them all.
+        rows = max(times.shape[0], middles.shape[0])
+        searched = zip(
+            np.broadcast_to(times, (rows, times.shape[1])),
+            np.broadcast_to(middles, (rows, middles.shape[1])),
+            strict=True,
+        )
+        place = np.stack([np.searchsorted(t, m, side="right") - 1 for t, m in searched])
+        rows = max(rows, values.shape[0])
+        place = np.broadcast_to(place, (rows, place.shape[1]))
+        times, values = (np.broadcast_to(a, (rows, a.shape[1])) for a in (times, values))
+        after = np.minimum(place + 1, times.shape[1] - 1)
+        t0, t1 = np.take_along_axis(times, place, 1), np.take_along_axis(times, after, 1)
+        v0, v1 = np.take_along_axis(values, place, 1), np.take_along_axis(values, after, 1)
+        span = np.where(t1 > t0, t1 - t0, 1.0)
+        slope = np.where(t1 > t0, (v1 - v0) / span, 0.0)
+        return v0 + slope * (np.broadcast_to(starts, place.shape) - t0), slope
+
+
+def _stacked(points: list[Number]) -> Floats:
+    """Points as (lanes or 1, points)."""
+    rows = max(1, *(np.size(v) for v in points))
+    return np.stack([np.broadcast_to(np.asarray(v, dtype=float), (rows,)) for v in points], axis=1)
+
+
+def ramp_shares(conductance: Callable[[float], Number]) -> Floats:
+    """The shares of a ramp at which to break it into straight pieces of conductance, the last of them 1.
+
+    ``conductance`` gives siemens at a share of the ramp. What moves evenly in its own quantity (1 M to 100 ohm, say)
+    does most of its change of conductance in an instant: there the pieces are short.
+    """
+    near = np.geomspace(1e-6, 0.5, 80)
+    shares = np.concatenate([[0.0], near, 1.0 - near[-2::-1], [1.0]])
+    course = [np.atleast_1d(np.log(conductance(float(share)))) for share in shares]
+    steps = np.array([float(np.max(np.abs(b - a))) for a, b in pairwise(course)])
+    covered = np.concatenate([[0.0], np.cumsum(steps + np.diff(shares))])
+    count = int(np.clip(np.ceil(covered[-1] / PIECE), LEAST_PIECES, MOST_PIECES))
+    found = np.interp(covered[-1] * np.arange(1, count + 1) / count, covered, shares)
+    found[-1] = 1.0
+    return np.asarray(found)
