@@ -56,6 +56,13 @@ _DARLINGTON: Figures = {
     "thermal_resistance": "62 K/W",
     "power": "2 W",
 }
+_CLAMP: Figures = {
+    "standoff_current": "5 uA",
+    "pulse_power": "600 W",
+    "forward_low": "0.7 V",
+    "forward_low_current": "10 mA",
+    "capacitance": "3 nF",
+}
 _SIGNAL_DIODE: Figures = {
     "forward_low": "0.60 V",
     "forward_low_current": "1 mA",
@@ -98,6 +105,61 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "power": "0.5 W",
         }
     },
+    "schottky": {
+        "1 A Schottky": {
+            "forward_low": "0.26 V",
+            "forward_low_current": "10 mA",
+            "forward_high": "0.50 V",
+            "forward_high_current": "1 A",
+            "series_resistance": "110 mohm",
+            "reverse_current": ("20 uA", "100 uA", "0.5 mA"),
+            "reverse_doubling": "15 K",
+            "capacitance": "200 pF",
+            "v_rrm": "40 V",
+            "i_f_max": "1 A",
+        }
+    },
+    "led": {
+        "red": {
+            "forward_low": "1.80 V",
+            "forward_low_current": "1 mA",
+            "forward_high": "2.0 V",
+            "forward_high_current": "10 mA",
+            "series_resistance": "9 ohm",
+            "reverse_current": "10 nA",
+            "capacitance": "20 pF",
+            "band_gap": "2.15 V",
+            "v_rrm": "5 V",
+            "i_f_max": "30 mA",
+        }
+    },
+    "clamp": {"15 V surge clamp": {**_CLAMP, "value": "15 V"}, "24 V surge clamp": {**_CLAMP, "value": "24 V"}},
+    "battery": {
+        "9 V block": {
+            "capacity": "500 mAh",
+            "resistance": "2 ohm",
+            "aged_resistance": "10 ohm",
+            "cold_resistance": "6 ohm",
+            "age": ("0 %", "0 %", "100 %"),
+        },
+        "AA cell": {
+            "capacity": "2.5 Ah",
+            "resistance": "0.15 ohm",
+            "aged_resistance": "0.6 ohm",
+            "cold_resistance": "0.5 ohm",
+            "age": ("0 %", "0 %", "100 %"),
+        },
+        "lead-acid 7 Ah": {
+            "capacity": "7 Ah",
+            "resistance": "30 mohm",
+            "aged_resistance": "90 mohm",
+            "cold_resistance": "60 mohm",
+            "age": ("0 %", "0 %", "100 %"),
+        },
+    },
+    "thermistor": {"ntc": {"beta": "3950 K"}},
+    "light_resistor": {"ldr": {"gamma": "0.7"}},
+    "inductor": {"choke": {"inductance": "1 mH", "resistance": "1.5 ohm", "i_max": "0.5 A"}},
     "capacitor": {
         "electrolytic": {"leakage_per_cv": "0.01", "leakage_least": "3 uA", "tolerance": "20 %"},
         "timing capacitor, low drift": {

@@ -1,13 +1,20 @@
-"""Diodes and zener diodes: one junction, from two forward points or a given law, with leakage and breakdown."""
+"""Diodes: one junction, from two forward points or a given law, with leakage, series resistance and breakdown.
+
+A light-emitting diode has the band gap of its material; a Schottky diode the barrier of its metal contact and the
+temperature law of Richardson, I ~ T^2 exp(-barrier/kT). A surge clamp breaks down along the exponential through its
+stand-off point and its clamping point.
+"""
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 from ..errors import CircuitError
 from .figures import figure, needed, typical, valued
 from .kind import TEXT, Entry, Kind
-from .physics import doubling, ideality_from, saturation_factor, saturation_from, thermal_voltage
+from .physics import BAND_GAP, SATURATION_EXPONENT, doubling, saturation_factor, saturation_from, thermal_voltage
+from .points import forward_law
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -15,6 +22,12 @@ if TYPE_CHECKING:
 
 ZENER_TOLERANCE = 0.05
 TEST_CURRENT = 5e-3
+BARRIER = 0.70  # V of a Schottky contact, from memory
+RICHARDSON = 2.0  # power of the absolute temperature in the saturation current of a metal contact
+EMITTING_GAP = 2.15  # V extrapolated to 0 K, red, from memory
+CLAMPING = 1.6  # times the stand-off voltage at the pulse current, common practice, from memory
+STANDOFF_CURRENT = 5e-6  # A at the stand-off voltage, from memory
+PULSE_POWER = 600.0  # W within 1 ms, from memory
 
 
 def _law(part: Part, key: str, unit: str) -> float | None:
@@ -24,7 +37,13 @@ def _law(part: Part, key: str, unit: str) -> float | None:
     return next(v for v in (found.typical, found.min, found.max) if v is not None)
 
 
-def _forward(part: Part, build: Builder) -> Laws:
+def _series(part: Part) -> float:
+    if part.law:
+        return _law(part, "series_resistance", "ohm") or 0.0
+    return typical(part, "series_resistance", "ohm", 0.0)
+
+
+def _forward(part: Part, build: Builder, gap: float = BAND_GAP, power: float = SATURATION_EXPONENT) -> Laws:
     if part.law:
         saturation = _law(part, "saturation_current", "A")
         if saturation is None:
@@ -41,14 +60,20 @@ def _forward(part: Part, build: Builder) -> Laws:
         )
         high = figure(part, "forward_high", "V")
         ideality = 1.0
+        series = _series(part)
+        saturation = saturation_from(low[0] - low[1] * series, low[1])
         if high is not None:
-            ideality = ideality_from(low, (high.typical, needed(part, "forward_high_current", "A", "10 mA").typical))
-        saturation = saturation_from(*low, ideality)
+            upper = high.typical, needed(part, "forward_high_current", "A", "10 mA").typical
+            try:
+                law = forward_law(low, upper, series=series)
+            except CircuitError as refusal:
+                raise CircuitError(f"part {part.ref}, forward_high: {refusal}") from refusal
+            saturation, ideality = law.saturation, law.ideality
         capacitance = typical(part, "capacitance", "F", 0.0)
         transit = typical(part, "transit_time", "s", 0.0)
     current = build.column(part.ref, "saturation_current", saturation)
     return {
-        "saturation": lambda lanes: lanes[current] * saturation_factor(lanes.ambient, ideality),
+        "saturation": lambda lanes: lanes[current] * saturation_factor(lanes.ambient, ideality, gap, power),
         "slope": lambda lanes: ideality * thermal_voltage(lanes.ambient),
         "capacitance": lambda lanes: capacitance,
         "transit": lambda lanes: transit,
@@ -66,7 +91,7 @@ def _leakage(part: Part, build: Builder) -> Laws:
 
 def _finish(part: Part, build: Builder, laws: Laws) -> None:
     anode, cathode = part.pins["anode"], part.pins["cathode"]
-    series = _law(part, "series_resistance", "ohm") if part.law else typical(part, "series_resistance", "ohm", 0.0)
+    series = _series(part)
     inner = anode
     bench = build.bench(part.ref)
     if series:
@@ -78,12 +103,53 @@ def _finish(part: Part, build: Builder, laws: Laws) -> None:
     bench.power = handle.power if bench.power is None else bench.power + handle.power
 
 
-def expand_diode(part: Part, build: Builder) -> None:
-    """Add a diode."""
-    laws = _forward(part, build) | _leakage(part, build)
+def _with_breakdown(part: Part, build: Builder, laws: Laws) -> None:
+    laws |= _leakage(part, build)
     volts = _law(part, "breakdown_voltage", "V")
     if volts is not None:
         laws["breakdown"] = lambda lanes: volts
+    _finish(part, build, laws)
+
+
+def expand_diode(part: Part, build: Builder) -> None:
+    """Add a diode."""
+    _with_breakdown(part, build, _forward(part, build))
+
+
+def expand_led(part: Part, build: Builder) -> None:
+    """Add a light-emitting diode."""
+    _with_breakdown(part, build, _forward(part, build, typical(part, "band_gap", "V", EMITTING_GAP)))
+
+
+def expand_schottky(part: Part, build: Builder) -> None:
+    """Add a Schottky diode."""
+    _with_breakdown(part, build, _forward(part, build, typical(part, "barrier", "V", BARRIER), RICHARDSON))
+
+
+def expand_clamp(part: Part, build: Builder) -> None:
+    """Add a surge clamp: i = I_R exp((v - V_R)/slope), the slope from stand-off and clamping point."""
+    laws = _forward(part, build)
+    standoff = figure(part, "value", "V")
+    if standoff is None or standoff.typical <= 0.0:
+        raise CircuitError(f'part {part.ref}, value: missing; write the stand-off voltage like "value": "15 V"')
+    leak = typical(part, "standoff_current", "A", STANDOFF_CURRENT)
+    clamping = figure(part, "clamping_voltage", "V")
+    usual = CLAMPING * standoff.typical
+    limits = (usual, usual, usual) if clamping is None else clamping.limits
+    pulse = typical(part, "pulse_current", "A", typical(part, "pulse_power", "W", PULSE_POWER) / limits[0])
+    if limits[1] <= standoff.typical:
+        raise CircuitError(
+            f"part {part.ref}, clamping_voltage: it must lie above the stand-off voltage; write it higher"
+        )
+    if pulse <= leak:
+        raise CircuitError(f"part {part.ref}, pulse_current: it must lie above the stand-off current; write it higher")
+    volts = build.column(part.ref, "clamping_voltage", *limits)
+    folds = math.log(pulse / leak)
+    laws |= {
+        "breakdown": lambda lanes: standoff.typical,
+        "breakdown_slope": lambda lanes: (lanes[volts] - standoff.typical) / folds,
+        "breakdown_current": lambda lanes: leak,
+    }
     _finish(part, build, laws)
 
 
@@ -123,13 +189,50 @@ LAW = {
     "breakdown_voltage": Entry("V"),
 }
 FIELDS = {"class": Entry(TEXT, about="generic class")}
+PINS = (("anode", "cathode"),)
 KINDS = (
-    Kind("diode", ("D",), (("anode", "cathode"),), (("anode", "cathode"),), expand_diode, FIELDS, DATA, LAW),
+    Kind("diode", ("D",), PINS, PINS, expand_diode, FIELDS, DATA, LAW),
+    Kind(
+        "led",
+        ("D", "H", "LED"),
+        PINS,
+        PINS,
+        expand_led,
+        FIELDS,
+        {**DATA, "band_gap": Entry("V", about="of its material, extrapolated to 0 K")},
+        LAW,
+    ),
+    Kind(
+        "schottky",
+        ("D",),
+        PINS,
+        PINS,
+        expand_schottky,
+        FIELDS,
+        {**DATA, "barrier": Entry("V", about="of the metal contact")},
+        LAW,
+    ),
+    Kind(
+        "clamp",
+        ("D", "RV"),
+        PINS,
+        PINS,
+        expand_clamp,
+        {**FIELDS, "value": Entry("V", about="stand-off voltage")},
+        {
+            **DATA,
+            "standoff_current": Entry("A", about="leakage at the stand-off voltage"),
+            "clamping_voltage": Entry("V", about="at the pulse current; 1.6 times stand-off where none is written"),
+            "pulse_current": Entry("A", about="pulse power over clamping voltage where none is written"),
+            "pulse_power": Entry("W", about="within 1 ms"),
+        },
+        LAW,
+    ),
     Kind(
         "zener",
         ("D",),
-        (("anode", "cathode"),),
-        (("anode", "cathode"),),
+        PINS,
+        PINS,
         expand_zener,
         {
             **FIELDS,

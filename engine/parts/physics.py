@@ -13,6 +13,7 @@ REFERENCE = 25.0  # deg C at which laws and class data are given
 BAND_GAP = 1.206  # V, silicon extrapolated to 0 K (Tsividis, IEEE J. Solid-State Circuits 15 (1980) 1076)
 SATURATION_EXPONENT = 3.0  # eta in the same paper
 GAIN_PER_KELVIN = 0.005  # common practice, from memory
+COPPER = 234.5  # K above the temperature at which annealed copper would have no resistance, extrapolated
 LEAKAGE_DOUBLING = 10.0  # K, common practice where no second point is given
 
 
@@ -21,16 +22,22 @@ def thermal_voltage(celsius: Floats | float) -> Floats:
     return np.asarray(BOLTZMANN / ELEMENTARY_CHARGE * (np.asarray(celsius) + ZERO_CELSIUS))
 
 
-def saturation_factor(celsius: Floats | float, ideality: Floats | float = 1.0) -> Floats:
+def saturation_factor(
+    celsius: Floats | float,
+    ideality: Floats | float = 1.0,
+    gap: float = BAND_GAP,
+    power: float = SATURATION_EXPONENT,
+) -> Floats:
     """How far the saturation current has moved from its value at the reference temperature.
 
-    (T/T0)^(eta/n) exp(V_G0/(n kT0/q) (1 - T0/T)); with n = 1 it is what V_BE(T) of Tsividis (1980) implies.
+    (T/T0)^(eta/n) exp(V_G0/(n kT0/q) (1 - T0/T)); with n = 1 it is what V_BE(T) of Tsividis (1980) implies. ``gap`` is
+    V_G0 in V, or the barrier of a metal contact, whose eta, ``power``, is 2 (Richardson's law).
     """
     warm = np.asarray(celsius) + ZERO_CELSIUS
     reference = REFERENCE + ZERO_CELSIUS
     ratio = warm / reference
-    exponent = BAND_GAP / (ideality * thermal_voltage(REFERENCE)) * (1.0 - 1.0 / ratio)
-    return np.asarray(ratio ** (SATURATION_EXPONENT / ideality) * np.exp(exponent))
+    exponent = gap / (ideality * thermal_voltage(REFERENCE)) * (1.0 - 1.0 / ratio)
+    return np.asarray(ratio ** (power / ideality) * np.exp(exponent))
 
 
 def gain_factor(celsius: Floats | float) -> Floats:
@@ -56,3 +63,8 @@ def saturation_from(voltage: float, current: float, ideality: float = 1.0) -> fl
 def ideality_from(low: tuple[float, float], high: tuple[float, float]) -> float:
     """Ideality from two forward points (voltage, current) well above the saturation current."""
     return (high[0] - low[0]) / (float(thermal_voltage(REFERENCE)) * float(np.log(high[1] / low[1])))
+
+
+def copper_factor(celsius: Floats | float) -> Floats:
+    """How far the resistance of a copper winding has moved from its value at 20 C: (234.5 + T)/254.5 (common form)."""
+    return np.asarray((COPPER + np.asarray(celsius)) / (COPPER + 20.0))

@@ -24,9 +24,10 @@ Json = dict[str, Any]
 def two(kind: str, ref: str, a: str, b: str, value: object = None, **fields: object) -> Json:
     """A part with two pins, named as its kind names them."""
     pins = {
-        "diode": ("anode", "cathode"),
-        "zener": ("anode", "cathode"),
+        **dict.fromkeys(("diode", "zener", "led", "schottky", "clamp"), ("anode", "cathode")),
         "generator": ("plus", "minus"),
+        "battery": ("plus", "minus"),
+        "lead": ("from", "to"),
         "sounder": ("plus", "minus"),
     }.get(kind, ("a", "b"))
     text = {} if value is None else {"value": value if isinstance(value, str) else repr(value)}
