@@ -45,9 +45,9 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
     def expand(part: Part, build: Builder) -> None:
         collector, base, emitter = (part.pins[pin] for pin in PINS)
         inner = f"{part.ref}/inner"
-        first = add_transistor(part, build, f"{part.ref}/1", collector, base, inner, polarity, 0.5)
-        second = add_transistor(part, build, f"{part.ref}/2", collector, inner, emitter, polarity, 0.5)
-        power = first.power + second.power
+        first, first_power = add_transistor(part, build, f"{part.ref}/1", collector, base, inner, polarity, 0.5)
+        second, second_power = add_transistor(part, build, f"{part.ref}/2", collector, inner, emitter, polarity, 0.5)
+        power = first_power + second_power
         leak = first.base_current
         for key, net, end in (("first_base_resistor", base, inner), ("second_base_resistor", inner, emitter)):
             found = figure(part, key, "ohm")

@@ -17,11 +17,13 @@ from ..primitives.columns import Group
 from .figures import figure, needed, typical
 from .kind import FLAG, TEXT, Entry, Kind
 from .physics import REFERENCE, doubling, gain_factor, saturation_factor, thermal_voltage
+from .points import forward_law, saturation_law
 
 if TYPE_CHECKING:
     from ..design.document import Part
     from ..kernel.layout import Floats
     from ..primitives.builder import Bench, Builder, Handle, Laws
+    from ..primitives.signals import Signal
 
 BUILT_IN = 0.75  # V, from memory
 EMITTER_GRADING, COLLECTOR_GRADING = 0.5, 0.5  # abrupt junctions, textbook value
@@ -117,12 +119,19 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
     gain_key = build.column(
         ref, "gain", gain.typical**share, gain.low**share, gain.high**share, group=Group.GAIN, logarithmic=True
     )
+    forward = gain.typical**share
     drop = needed(part, "v_be", "V", "0.64 V")
     drop_key = build.column(ref, "v_be", *drop.limits)
     drop_current = typical(part, "v_be_current", "A", 2e-3)
-    forward = gain.typical**share
+    # What of the figure drops on the way to the junction, in the base resistance.
+    before = drop_current / forward * _resistances(part, share).get("base_resistance", 0.0)
+    if before >= drop.low:
+        raise CircuitError(f"part {part.ref}, base_resistance: it alone drops more than v_be; write a smaller one")
     forced = min(typical(part, "forced_gain", "", 20.0), 0.5 * forward)
-    reverse = reverse_gain_from(typical(part, "v_ce_sat", "V", 0.1), forced, forward)
+    saturated = _saturation(part, share)
+    reverse = (
+        reverse_gain_from(typical(part, "v_ce_sat", "V", 0.1), forced, forward) if saturated is None else saturated[0]
+    )
     early = typical(part, "early_voltage", "V", 80.0)
     ob = figure(part, "c_ob", "F")
     ib = figure(part, "c_ib", "F")
@@ -152,7 +161,9 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
     }
     for side in ("emitter", "collector"):
         laws[f"{side}_saturation"] = lambda lanes: (
-            drop_current / np.expm1(lanes[drop_key] / thermal_voltage(REFERENCE)) * saturation_factor(lanes.ambient)
+            drop_current
+            / np.expm1((lanes[drop_key] - before) / thermal_voltage(REFERENCE))
+            * saturation_factor(lanes.ambient)
         )
         laws[f"{side}_slope"] = lambda lanes: thermal_voltage(lanes.ambient)
         laws[f"{side}_potential"] = lambda lanes: BUILT_IN
@@ -174,34 +185,98 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
     return laws
 
 
+def _own_resistances(part: Part) -> dict[str, float]:
+    """Base and collector resistance in ohm that the law gives; nothing where it gives none."""
+    found = {}
+    for key in ("base_resistance", "collector_resistance"):
+        limits = part.law_limits(key, "ohm")
+        if limits is not None:
+            found[key] = next(v for v in (limits.typical, limits.min, limits.max) if v is not None)
+    return found
+
+
+def _resistances(part: Part, share: float) -> dict[str, float]:
+    """Base and collector resistance in ohm: as written, else from a second base-emitter or saturation point."""
+    found = {}
+    second = figure(part, "v_be_high", "V")
+    if part.entry("base_resistance") is not None:
+        found["base_resistance"] = typical(part, "base_resistance", "ohm", 0.0)
+    elif second is not None:
+        low = needed(part, "v_be", "V", "0.64 V").typical, typical(part, "v_be_current", "A", 2e-3)
+        high = second.typical, needed(part, "v_be_high_current", "A", "100 mA").typical
+        try:
+            series = forward_law(low, high).series
+        except CircuitError as refusal:
+            raise CircuitError(f"part {part.ref}, v_be_high: {refusal}") from refusal
+        # The points are given at collector currents; what drops on the way to the junction is the base current.
+        found["base_resistance"] = series * float(needed(part, "gain", "", "200").typical ** share)
+    saturated = _saturation(part, share)
+    if saturated is not None and saturated[1] > 0.0:
+        found["collector_resistance"] = saturated[1]
+    return found
+
+
+def _saturation(part: Part, share: float) -> tuple[float, float] | None:
+    """Reverse gain and collector resistance where the part gives two saturation points."""
+    second = figure(part, "v_ce_sat_high", "V")
+    if second is None:
+        return None
+    forced = typical(part, "forced_gain", "", 20.0)
+    low = typical(part, "v_ce_sat", "V", 0.1), typical(part, "saturation_current_at", "A", 10e-3), forced
+    current = needed(part, "saturation_current_high", "A", "100 mA").typical
+    try:
+        return saturation_law(
+            low,
+            (second.typical, current, typical(part, "forced_gain_high", "", forced)),
+            needed(part, "gain", "", "200").typical ** share,
+        )
+    except CircuitError as refusal:
+        raise CircuitError(f"part {part.ref}, v_ce_sat_high: {refusal}") from refusal
+
+
 def add_transistor(
     part: Part, build: Builder, ref: str, collector: str, base: str, emitter: str, polarity: int, share: float = 1.0
-) -> Handle:
-    """Add one transistor of a part; ``ref`` names its columns (a pair has two)."""
+) -> tuple[Handle, Signal]:
+    """Add one transistor of a part; ``ref`` names its columns (a pair has two). Returns it and all it turns to heat."""
     laws = _own_law(part, build, ref) if part.law else _from_figures(part, build, ref, share)
-    return build.transport(collector, base, emitter, polarity, laws)
+    ohms = _own_resistances(part) if part.law else _resistances(part, share)
+    inner = {"collector": collector, "base": base}
+    powers = []
+    for pin, net in inner.items():
+        if ohms.get(f"{pin}_resistance", 0.0) > 0.0:
+            inner[pin] = f"{ref}/{pin}"
+            handle = build.conductance(net, inner[pin], constant(1.0 / ohms[f"{pin}_resistance"]))
+            powers.append(handle.power)
+    laws["base_resistance"] = constant(ohms.get("base_resistance", 0.0))
+    handle = build.transport(inner["collector"], inner["base"], emitter, polarity, laws)
+    power = handle.power
+    for each in powers:
+        power += each
+    return handle, power
 
 
 def note_laws(bench: Bench, laws: Laws) -> None:
     """Keep gain, base-emitter voltage and leakage of a transistor for the hand formulas of checks."""
     per_gain, saturation, slope = laws["per_forward_gain"], laws["emitter_saturation"], laws["emitter_slope"]
+    series = laws["base_resistance"]
     bench.gain = lambda lanes: 1.0 / np.asarray(per_gain(lanes))
     bench.base_voltage = lambda lanes, current: (
         np.asarray(slope(lanes)) * np.log1p(current / np.asarray(saturation(lanes)))
+        + current * np.asarray(per_gain(lanes)) * series(lanes)
     )
     bench.leakage = laws.get("collector_leakage")
 
 
 def _expand(polarity: int) -> Callable[[Part, Builder], None]:
     def expand(part: Part, build: Builder) -> None:
-        handle = add_transistor(
+        handle, power = add_transistor(
             part, build, part.ref, part.pins["collector"], part.pins["base"], part.pins["emitter"], polarity
         )
         bench = build.bench(part.ref)
         bench.currents["collector"] = handle.current
         bench.currents["base"] = handle.base_current
         bench.currents["emitter"] = (handle.current + handle.base_current).scaled(-1.0)
-        bench.power = handle.power
+        bench.power = power
         note_laws(bench, build.transports[handle.index][-1])
 
     return expand
@@ -212,9 +287,15 @@ DATA = {
     "gain": Entry("", about="current gain: min at the working current, typical, max"),
     "v_be": Entry("V", about="base-emitter voltage at v_be_current"),
     "v_be_current": Entry("A", about="collector current of the v_be figure"),
+    "v_be_high": Entry("V", about="a second point, at v_be_high_current: gives the base resistance"),
+    "v_be_high_current": Entry("A", about="collector current of the v_be_high figure"),
+    "base_resistance": Entry("ohm", about="instead of a second base-emitter point"),
     "v_ce_sat": Entry("V", about="saturation voltage at forced_gain"),
     "saturation_current_at": Entry("A", about="collector current of the v_ce_sat figure"),
     "forced_gain": Entry("", about="collector over base current of the v_ce_sat figure"),
+    "v_ce_sat_high": Entry("V", about="a second point, at saturation_current_high: gives the collector resistance"),
+    "saturation_current_high": Entry("A", about="collector current of the v_ce_sat_high figure"),
+    "forced_gain_high": Entry("", about="of the v_ce_sat_high figure; that of the first where none is written"),
     "v_ceo": Entry("V", about="rated collector-emitter voltage"),
     "v_ebo": Entry("V", about="rated reverse base-emitter voltage"),
     "i_c_max": Entry("A", about="rated collector current"),
@@ -242,6 +323,8 @@ LAW = {
     "forward_transit_time": Entry("s"),
     "reverse_transit_time": Entry("s"),
     "base_emitter_breakdown": Entry("V", about="typical breakdown, not the rating"),
+    "base_resistance": Entry("ohm"),
+    "collector_resistance": Entry("ohm"),
     "collector_junction": Entry(FLAG, about="false: a one-sided law without a collector junction"),
     "thermal_voltage": Entry("V", about="instead of kT/q"),
 }
