@@ -22,7 +22,7 @@ from .trials import TrialRun
 from .vertices import lowest, sides
 
 WORST = 6  # corners that are tried at the trial's own resolution
-COARSE, SIDES = 1.3, 1.06  # resolution of the trials that only find the worst conditions, the side that hurts
+COARSE, SIDES = 1.08, 1.06  # resolution of the trials that only find the worst conditions, the side that hurts
 FLAT = 1e-4  # margins that differ by less say nothing about which conditions matter
 
 

@@ -16,7 +16,7 @@ from ..run import Observed, never, run
 from .sequences import program_of, starts_of
 
 AT_ONCE, MOST_POINTS = 64, 8  # lanes of a round that is worth its while, and knob values of one lane in it
-SCANNED = 8  # knob values that are tried along the whole range
+LOOK = 4.0  # ratio of the knob values at which the whole range is looked at first
 NEAR = 1.6  # half the width, as a ratio, of a search around a known edge
 
 
@@ -94,8 +94,9 @@ class TrialRun:
         everyone = np.arange(count)
         ends = (self.trial.safe, self.trial.severe) if around is None else (around / NEAR, around * NEAR)
         # A circuit may give in at a middle value and hold at a severer one: look along the whole range first.
-        spans = SCANNED - 1 if around is None else 1
-        per_span = max(1, int(np.ceil(np.log(ends[1] / ends[0]) / (spans * enough))))
+        width = np.log(ends[1] / ends[0])
+        spans = int(np.ceil(width / np.log(LOOK))) if around is None else 1
+        per_span = max(1, int(np.ceil(width / (spans * enough))))
         grid = np.geomspace(*ends, spans * per_span + 1)
         scanned = np.arange(spans + 1) * per_span
         index = np.repeat(everyone, scanned.size)
