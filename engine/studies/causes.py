@@ -97,8 +97,10 @@ def causes(
     """Causes of every change of margin from ``old`` to ``new``. Raises EngineError or Cancelled.
 
     ``stored`` and ``stored_new`` are the margins kept with the designs: their worst corners need not be searched again;
-    where another engine made the old ones, the change of formula is told apart.
+    where another engine made the old ones, the change of formula is told apart. Nothing changed gives an empty sheet.
     """
+    if old.content == new.content and (stored is None or stored.engine == ENGINE):
+        return CausesSheet(new.name, (), (), (), (), ())
     before, after = _Side(old, stored, cancelled), _Side(new, stored_new, cancelled)
     common = [name for name in before.asks if name in after.asks]
     corners = {name: list(dict.fromkeys((before.corners[name], after.corners[name]))) for name in common}
@@ -189,7 +191,7 @@ class _Table:
     def shares(self, seed: int) -> tuple[Floats, Floats]:
         """Shares and their standard errors, (players, checks)."""
         found = shares(len(self.players), lambda chosen: np.nan_to_num(self.value(chosen), nan=-1.0), seed)
-        return found.values.reshape(len(self.players), -1), found.error.reshape(len(self.players), -1)
+        return found.values, found.error
 
     def _evaluated(self, chosen: Chosen) -> Floats:
         everyone = len(self.players)

@@ -39,7 +39,7 @@ def exact(players: int, value: Callable[[Chosen], Floats]) -> Shares:
             weight = factorial(len(chosen)) * factorial(players - len(chosen) - 1) / factorial(players)
             total = total + weight * (value(chosen | {player}) - value(chosen))
         shares.append(total)
-    values = np.array(shares)
+    values = np.array(shares) if players else np.zeros((0, value(frozenset()).size))
     return Shares(values, np.zeros_like(values))
 
 
