@@ -32,7 +32,7 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
     if net is None or far is None:
         missing = f"a net shared by {resistor.ref} and {capacitor.ref}"
         return unknown(check, stage.name, capacitor.ref, sequence, required, missing)
-    load = next((part for _, _, part in view.with_role("load") if view.bench(part.ref).on), None)
+    load = view.load(stage)
     if load is None:
         missing = "operating_minimum of the part in the role load, whose going off tells when the timer has run out"
         return unknown(check, stage.name, capacitor.ref, sequence, required, missing)

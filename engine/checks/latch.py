@@ -29,7 +29,7 @@ def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
     view = latch.view
     start = view.moment(sequence, "latched", "sounding", "on")
     if start is None:
-        load = next((part for _, _, part in view.with_role("load") if view.bench(part.ref).on), None)
+        load = view.load(latch.stage)
         start = Anchor(0.5 * view.ends(sequence)) if load is None else Anchor(1e-2, view.event(f"{load.ref} on"))
     ends = LOWERING + settle
     current = level(latch.current, Anchor(ends))

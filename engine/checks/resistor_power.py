@@ -42,7 +42,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     instants = moments or [Anchor(0.5 * view.ends(sequence))]
     steady = tuple(level(power, at) for at in instants)
     volts = tuple(level(voltage(part.pins["a"], part.pins["b"]), at) for at in instants)
-    load = next((p for _, _, p in view.with_role("load") if view.bench(p.ref).on), None)
+    load = view.load(stage)
     whole = None
     if load is not None:
         on, off = view.event(f"{load.ref} on"), view.event(f"{load.ref} off")

@@ -48,6 +48,13 @@ class View:
                 return self.design.part(place.roles[name])
         return None
 
+    def load(self, stage: Stage) -> Part | None:
+        """The load that tells when there is an alarm: of the stage itself, else the first of the design, among those
+        that have a level at which they count as on."""
+        loads = [(place, part) for place, _, part in self.with_role("load") if self.bench(part.ref).on is not None]
+        loads.sort(key=lambda found: found[0] is not stage)
+        return loads[0][1] if loads else None
+
     def base_emitter_resistor(self, stage: Stage, role: str) -> Part | None:
         """The resistor across the base-emitter junction of the transistor in this role, where its role is filled."""
         for name in (f"base_emitter_resistor_{role.removeprefix('latch_')}", "base_emitter_resistor"):

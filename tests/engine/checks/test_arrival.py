@@ -85,3 +85,12 @@ def test_without_a_load_the_threshold_is_not_known() -> None:
     assert found.verdict is Verdict.UNKNOWN
     assert found.reason is not None
     assert found.reason.startswith("missing: operating_minimum of the part in the role load")
+
+
+def test_the_load_of_the_timers_own_stage_tells_when_it_runs_out() -> None:
+    # Another stage, which comes first, has a load that is on for ever.
+    document = timer(None).dump()
+    other = {"name": "lamp", "parts": [sounder("LS9", "supply", "0V", "10 mA", "3 V")], "roles": {"load": "LS9"}}
+    of = type(timer(None)).load({**document, "stages": [other, *document["stages"]]})
+    found = margin(of, "arrival", "C1")
+    assert (found.margin, found.outcome) == (pytest.approx(1.0 / 3.0, abs=1e-3), None)
