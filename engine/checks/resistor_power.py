@@ -8,7 +8,8 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
-from ..primitives.signals import Anchor, integral, level, voltage
+from ..primitives.columns import SUPPLY
+from ..primitives.signals import Anchor, integral, level
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .view import View
@@ -41,7 +42,6 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     moments = [view.anchor(name, sequence) for name in view.design.sequences[sequence].moments]
     instants = moments or [Anchor(0.5 * view.ends(sequence))]
     steady = tuple(level(power, at) for at in instants)
-    volts = tuple(level(voltage(part.pins["a"], part.pins["b"]), at) for at in instants)
     load = view.load(stage)
     whole = None
     if load is not None:
@@ -56,12 +56,14 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         never = np.asarray(np.isnan(powers).all(axis=0))
         largest = np.max(np.nan_to_num(powers), axis=0)
         allowed = factor * permitted(rating.low, seen.lanes.ambient)
-        standing = np.max(np.nan_to_num([seen.value(row, sequence) ** 2 for row in volts]), axis=0)
-        by_hand = standing / seen.lanes[part.ref, "value"]
-        hand = 1.0 - by_hand / np.where(allowed > 0.0, allowed, np.nan)
+        hand = None
+        if SUPPLY in seen.lanes:
+            # By hand the whole supply stands across it: V^2/R, never less than what it dissipates without a coil.
+            most = seen.lanes[SUPPLY] ** 2 / seen.lanes[part.ref, "value"]
+            hand = 1.0 - most / np.where(allowed > 0.0, allowed, np.nan)
         return ratio(largest, allowed, [(never, check.words["never"])], hand)
 
-    rows = (*steady, *volts, *((whole, on, off) if whole is not None else ()))
+    rows = (*steady, *((whole, on, off) if whole is not None else ()))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 
