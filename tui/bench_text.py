@@ -24,14 +24,14 @@ def heading(draft: Draft, figures: Figures, progress: str, width: int) -> Line:
     """Name, what the draft is based on, conditions, and how far the study is."""
     base = "not saved yet" if draft.base_revision is None else f"draft on r{draft.base_revision}"
     edits = "no edits" if draft.edits == 0 else f"{draft.edits} edit{'s' * (draft.edits != 1)}"
-    left = f" {draft.name}   {base}, {edits}   {conditions_words(draft.design)}"
+    left = f" {draft.name}  {base}, {edits}  {conditions_words(draft.design)}"
     right = " FROZEN: f shows the figures " if figures.frozen else f" {progress} " if width >= _ROOMY else ""
     room = max(0, width - len(right))
     return line(Span(fit(left, room), "strong"), Span(right, "thin" if figures.frozen else ""))
 
 
 def conditions_words(design: Design) -> str:
-    """Supply and ambient as the document writes them: ``4 V .. 6.4 V   0 C .. 50 C``."""
+    """Supply and ambient as the document writes them: ``4 V .. 6.4 V  0 C .. 50 C``."""
     found = []
     for name in ("supply", "ambient"):
         condition = getattr(design.conditions, name)
@@ -39,7 +39,7 @@ def conditions_words(design: Design) -> str:
             found.append(condition)
         elif condition is not None:
             found.append(f"{condition.min or condition.nominal} .. {condition.max or condition.nominal}")
-    return "   ".join(found)
+    return "  ".join(found)
 
 
 def links(design: Design, figures: Figures) -> tuple[Link, ...]:
