@@ -15,6 +15,8 @@ COMMANDS = {
     "causes": ("causes", "what each changed part did to each margin"),
     "import": ("take_in", "put a design document on the shelf"),
     "export": ("hand_out", "write a design document to a file"),
+    "backup": ("backup", "write a consistent copy of the store, also while it is in use"),
+    "inspect": ("inspection", "check that the store is what was saved in it"),
     "schema": ("schema", "the JSON Schema of the design document"),
 }
 """Every command, in the order of the help, with the file that holds it and its help line."""

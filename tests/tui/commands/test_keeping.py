@@ -1,0 +1,48 @@
+"""``backup`` and ``inspect`` as the contract of the commands has them: copies, and status 1 for what is wrong."""
+
+from __future__ import annotations
+
+import json
+import sqlite3
+from collections.abc import Callable
+from contextlib import closing
+from pathlib import Path
+
+from stagebook.storage import Store
+
+Said = tuple[int, str, str]
+
+
+def test_a_copy_is_a_store_that_can_be_inspected(stagebook: Callable[..., Said], tmp_path: Path) -> None:
+    stagebook("demo", "--only-store")
+    assert stagebook("backup", "copy.sqlite3")[0] == 0
+    with Store.open(tmp_path / "copy.sqlite3") as copy:
+        assert [row.revisions for row in copy.designs()] == [5]
+    status, out, err = stagebook("inspect", "--store", "copy.sqlite3")
+    assert (status, err) == (0, "")
+    assert "designs: 1, revisions: 5" in out
+    assert "every hash" in out
+
+
+def test_inspection_names_what_does_not_match(stagebook: Callable[..., Said], tmp_path: Path) -> None:
+    stagebook("demo", "--only-store")
+    with closing(sqlite3.connect(tmp_path / "shelf.sqlite3")) as raw:
+        raw.execute("DROP TRIGGER revision_no_update")
+        raw.execute("UPDATE revision SET note = replace(note, 'e', 'i') WHERE number = 3")
+        raw.commit()
+    status, out, err = stagebook("inspect")
+    assert (status, err) == (1, "")
+    assert 'X "flood" r3: the hash does not fit' in out
+    assert "revision_no_update" in out
+    status, out, err = stagebook("inspect", "--json")
+    found = json.loads(out)
+    assert (status, err, found["revisions"]) == (1, "", 5)
+    assert [problem.startswith('"flood" r3') for problem in found["problems"]] == [False, True]
+
+
+def test_a_copy_goes_over_no_foreign_file(
+    stagebook: Callable[..., Said], refused: Callable[..., str], tmp_path: Path
+) -> None:
+    (tmp_path / "letter").write_text("dear reader")
+    assert "name another place" in refused("backup", "letter")
+    assert (tmp_path / "letter").read_text() == "dear reader"

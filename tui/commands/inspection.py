@@ -1,0 +1,47 @@
+"""``stagebook inspect``: whether the store is what was saved in it, and what there is to know about it."""
+
+from __future__ import annotations
+
+from argparse import ArgumentParser, Namespace
+
+from .printing import json_argument, print_json, print_words
+from .what import open_store, shelf_arguments
+
+
+def arguments(parser: ArgumentParser) -> None:
+    """Declare ``--json`` and ``--store``."""
+    json_argument(parser)
+    shelf_arguments(parser)
+
+
+def run(asked: Namespace) -> int:
+    """Check file, rows, triggers and every hash; status 1 if something does not match."""
+    with open_store(asked) as store:
+        # Imported here: no other command needs it.
+        from ...storage import inspect
+
+        found = inspect(store)
+    if asked.json:
+        print_json(
+            {
+                "store": str(found.path),
+                "schema": found.schema,
+                "size": found.size,
+                "log": found.log_size,
+                "designs": found.designs,
+                "revisions": found.revisions,
+                "edits": found.edits,
+                "problems": list(found.problems),
+                "advice": list(found.advice),
+            }
+        )
+        return 1 if found.problems else 0
+    print_words(f"{found.path}: tables of version {found.schema}, {found.size} bytes, log of {found.log_size} bytes")
+    print_words(f"designs: {found.designs}, revisions: {found.revisions}, edits: {found.edits}")
+    for problem in found.problems:
+        print_words(f"X {problem}", hanging=2)
+    for line in found.advice:
+        print_words(f"- {line}", hanging=2)
+    if not found.problems:
+        print_words("Everything is as it was saved: file, rows, triggers and every hash.")
+    return 1 if found.problems else 0
