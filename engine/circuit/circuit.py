@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -15,6 +16,7 @@ from ..parts import kinds
 from ..primitives.builder import RETURN, SUPPLY_NET, Bench, Builder, Law, constant, junction_array, transport_array
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
 from ..quantity import read
+from .injection import add_injectors, injected
 from .inspection import inspect
 
 if TYPE_CHECKING:
@@ -50,7 +52,8 @@ class Circuit:
         try:
             return self.nets[self.builder.net(net)]
         except KeyError:
-            known = ", ".join(sorted(n for n in self.nets if n != SUPPLY_SOURCE))
+            hidden = {SUPPLY_SOURCE, *self.builder.injectors}
+            known = ", ".join(sorted(n for n in self.nets if n not in hidden))
             raise CircuitError(f"net '{net}' is not in the design; write one of {known}") from None
 
     def nominal(self, count: int = 1) -> Lanes:
@@ -84,8 +87,11 @@ class Circuit:
         return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports], axis=1))
 
 
-def build(design: Design) -> Circuit:
-    """Make the circuit of a design. Raises CircuitError, in words, where it cannot be computed as it is drawn."""
+def build(design: Design, inject: Sequence[str] = ()) -> Circuit:
+    """Make the circuit of a design. Raises CircuitError, in words, where it cannot be computed as it is drawn.
+
+    ``inject`` are nets that charge can be put into, beside those for which the design asks that itself.
+    """
     inspect(design)
     levels = design.conditions.levels("supply")
     builder = Builder(0.0 if levels is None else levels.nominal, _joined(design))
@@ -96,6 +102,7 @@ def build(design: Design) -> Circuit:
     for stray in design.strays:
         builder.capacitance(*stray.between, constant(read(stray.value, "F")))
     driven = [source for source in builder.generators.values() if source in builder.nets]
+    driven += add_injectors(builder, (*injected(design), *inject))
     known = [*([SUPPLY_SOURCE] if SUPPLY_SOURCE in builder.nets else []), *driven, RETURN]
     if len(set(known)) < len(known):
         raise CircuitError("two ideal sources drive one net; put a resistor between them")

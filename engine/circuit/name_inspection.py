@@ -80,6 +80,8 @@ def _event_faults(
     over = read(event.at, "s")
     if isinstance(event, Dip | Surge | RampLevel):
         over += read(event.for_, "s")
+    if isinstance(event, Inject):
+        over += read(event.width, "s")
     if over > ends * (1 + _EQUAL):
         yield f"field at: it is over {over - ends:.3g} s after the end; write an earlier time or a later 'ends'"
     if isinstance(event, ContactEvent):
@@ -95,6 +97,8 @@ def _event_faults(
     elif isinstance(event, Inject):
         if event.net not in nets:
             yield f"field net: {_absent('net', event.net, nets)}"
+        if read(event.width, "s") <= 0.0:
+            yield f"field width: a pulse of {event.width} cannot be; write it like '100 ns'"
     elif SUPPLY not in design.nets:
         yield f"no pin is on '{SUPPLY}', so nothing would feel it; write '{SUPPLY}' as a net or leave the event out"
 

@@ -13,6 +13,7 @@ from ..design.sequence import (
     ContactEvent,
     Dip,
     DisconnectSupply,
+    Inject,
     RampLevel,
     ReverseSupply,
     SetLevel,
@@ -25,6 +26,7 @@ from ..primitives.builder import SUPPLY_NET, Law, Settable
 from ..primitives.columns import SUPPLY, Lanes
 from ..quantity import read
 from .circuit import SUPPLY_RISE, SUPPLY_SOURCE, SUPPLY_SWITCH, Circuit
+from .injection import SIEMENS, injector
 from .wave import Number, Wave, ramp_shares
 
 if TYPE_CHECKING:
@@ -193,6 +195,15 @@ class Timeline:
         self.switches[SUPPLY_SWITCH].step(at, np.divide(1.0, impedance))
         self.switches[SUPPLY_SWITCH].step(np.add(over, edge), self._set(SUPPLY_SWITCH, "closed"))
 
+    def inject(self, at: Number, net: str, charge: Number, width: Number) -> None:
+        """A current of ``charge`` / ``width`` flows into a net for ``width``; it replaces one that is not over yet."""
+        place = self.circuit.builder.net(net)
+        if injector(place) not in self.sources:
+            return  # a net that is a source itself takes any charge
+        wave = self.sources[injector(place)]
+        wave.step(at, np.divide(charge, np.multiply(width, SIEMENS)))
+        wave.step(np.add(at, width), 0.0)
+
     def set_part(self, ref: str, at: Number, state: str) -> None:
         """An event opens or closes a contact at once."""
         self.switches[ref].step(at, self._set(ref, state))
@@ -329,10 +340,10 @@ def _apply(line: Timeline, event: Event) -> None:
                 line.excursion(at, read(event.to, "V"), read(event.for_, "s"), edge, impedance)
             except CircuitError as refusal:
                 raise CircuitError(f"event {event.event} at {event.at}: {refusal}") from refusal
+        case Inject():
+            line.inject(at, event.net, read(event.charge, "C"), read(event.width, "s"))
         case ReverseSupply():
             line.reverse_supply(at)
-        case _:
-            raise CircuitError(f"event '{event.event}' cannot be computed yet; write another event in its place")
 
 
 def _impedance(event: Dip | Surge) -> float | None:

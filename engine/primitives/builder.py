@@ -135,6 +135,7 @@ class Builder:
         self.switches: dict[str, tuple[int, Callable[[str], Law]]] = {}
         self.settables: dict[str, Settable] = {}
         self.generators: dict[str, str] = {}
+        self.injectors: list[str] = []
         self.batteries: dict[str, Law] = {}
         self.benches: dict[str, Bench] = {}
         self._alias = alias or {}

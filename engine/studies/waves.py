@@ -42,7 +42,8 @@ def waves(
     sequence, and a run that could not be solved.
     """
     circuit = build(design)
-    wanted = tuple(nets) if nets else tuple(n for n in circuit.nets if n not in (SUPPLY_SOURCE, "0V"))
+    hidden = {SUPPLY_SOURCE, "0V", *circuit.builder.injectors}
+    wanted = tuple(nets) if nets else tuple(n for n in circuit.nets if n not in hidden)
     check_question(circuit, sequence, wanted, at)
     places = [circuit.index(net) for net in wanted]
     stops = None if at is None else np.array(sorted(set(at)), dtype=float)
