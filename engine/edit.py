@@ -146,14 +146,23 @@ def without_requirement(design: Design, index: int) -> Design:
     return _edited(design, lambda document: document["requirements"].pop(index))
 
 
-def with_required(design: Design, check: str, text: str | None) -> Design:
-    """The required margin of a check in this design; None returns to the customary one."""
-    return _edited(design, lambda document: _put(document, ["required", check], text))
+def with_required(design: Design, check: str, text: str | None, reason: str | None = None) -> Design:
+    """The required margin of a check in this design, and why it differs; None returns to the customary one."""
+    return _tabled(design, "required", check, text, reason)
 
 
-def with_derating(design: Design, name: str, text: str | None) -> Design:
-    """A derating factor of this design; None returns to the customary one."""
-    return _edited(design, lambda document: _put(document, ["derating", name], text))
+def with_derating(design: Design, name: str, text: str | None, reason: str | None = None) -> Design:
+    """A derating factor of this design, and why it differs; None returns to the customary one."""
+    return _tabled(design, "derating", name, text, reason)
+
+
+def _tabled(design: Design, table: str, name: str, text: str | None, reason: str | None) -> Design:
+    def change(document: dict[str, Any]) -> None:
+        _put(document, [table, name], text)
+        stands = any(name in document.get(each, {}) for each in ("required", "derating"))
+        _put(document, ["reasons", name], reason if stands else None)
+
+    return _edited(design, change)
 
 
 def with_sequence(design: Design, name: str, sequence: Mapping[str, Any] | None) -> Design:

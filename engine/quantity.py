@@ -149,6 +149,14 @@ def write(value: float, unit: str, digits: int = 3) -> str:
     return f"{number} {suffix}".rstrip()
 
 
+def write_plain(value: float, unit: str, digits: int = 4) -> str:
+    """As :func:`write`; plain digits with the unit where the trade has no way of writing it."""
+    try:
+        return write(value, unit, digits)
+    except QuantityError:
+        return f"{value:.{digits}g} {unit}".rstrip()
+
+
 def _step(unit: Unit, size: Decimal) -> tuple[str, Decimal]:
     """The largest step not above ``size``; tenths of an ohm stay in ohms, and seconds are used up to two hours."""
     if not size:

@@ -47,6 +47,7 @@ class CheckResult:
     D/C checks fill ``demand`` and ``capability``; window checks fill ``limits``, ``low`` and ``high``.
     ``margin`` is None when the verdict is UNKNOWN. ``formula`` says in words how the number is made. ``setting`` is the
     corner itself: (reference, datum, side) with side -1 low, +1 high, for everything that is not nominal there.
+    ``by_hand`` is the hand formula in words and ``accuracy`` how far it can be trusted, see :attr:`disagrees`.
     """
 
     id: str
@@ -73,6 +74,15 @@ class CheckResult:
     spread: Spread | None
     formula: str = ""
     setting: tuple[tuple[str, str, int], ...] = ()
+    by_hand: str = ""
+    accuracy: float | None = None
+
+    @property
+    def disagrees(self) -> bool:
+        """Whether the hand formula is further off than it says of itself: a share of the larger of D and C."""
+        if self.hand is None or self.margin is None or self.accuracy is None or self.outcome is not None:
+            return False
+        return abs(self.hand - self.margin) > self.accuracy * max(1.0, 1.0 - self.margin)
 
     @property
     def slack(self) -> float:

@@ -66,6 +66,9 @@ CHECKS = (
         required=0.3,
         formula="D = voltage at which the timer runs out, C = rail / (1 + R G_leak), the threshold part unloaded",
         asks=asks,
+        worst="hot, low supply, leaky capacitors",
+        by_hand="V_th (1 + R G_leak) / rail",
+        accuracy=0.02,
         words={
             "never": "the timer was never started",
             "late": "does not run out within the sequence, even without leakage",

@@ -83,6 +83,9 @@ CHECKS = (
         required=0.5,
         formula="D = load current / h_FE of the lane, C = base current of the driver while the load is on",
         asks=asks,
+        worst="cold, low supply, weak h_FE",
+        by_hand="(I_L / h_FE) / ((V_drive - V_BE) / R_B - V_BE / R_BE)",
+        accuracy=0.05,
         words={"never": "{load} never came on"},
     ),
 )

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from ..kernel.layout import Floats
 from ..primitives.signals import Row
+from .factors import COMMON_PRACTICE
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -68,6 +69,7 @@ def window(
 class Ask:
     """One margin of one design. ``rows`` are observed in each of ``sequences``; ``judge`` turns them into a margin.
 
+    ``unit`` is that of the quantity where it depends on the part, else the check's own.
     ``screen`` is the knob value of the trial at which the circuit must still hold for the required margin: what random
     lanes are tried with. ``follows_knob``: the margin falls with the knob at which the circuit gives in, and is not
     decided by something else. ``missing`` names the datum without which the check is UNKNOWN; nothing is computed then.
@@ -84,6 +86,7 @@ class Ask:
     screen: float | None = None
     follows_knob: bool = True
     missing: str | None = None
+    unit: str | None = None
 
     @property
     def id(self) -> str:
@@ -93,7 +96,12 @@ class Ask:
 
 @dataclass(frozen=True)
 class Check:
-    """One entry of the catalogue. ``asks`` finds the margins of this kind in a design."""
+    """One entry of the catalogue. ``asks`` finds the margins of this kind in a design.
+
+    ``source`` says where the customary required margin comes from, ``worst`` the usual worst conditions. ``by_hand`` is
+    the hand formula in words; it agrees with the simulation within ``accuracy`` of the larger of demand and capability.
+    Where no accuracy is given it is a bound and not a cross-check.
+    """
 
     number: int
     slug: str
@@ -103,6 +111,10 @@ class Check:
     formula: str
     asks: Callable[[Check, View], Iterator[Ask]]
     words: dict[str, str] = field(default_factory=dict)
+    source: str = COMMON_PRACTICE
+    worst: str = ""
+    by_hand: str = ""
+    accuracy: float | None = None
 
 
 def unknown(check: Check, stage: str, part: str, sequence: str, required: float, missing: str) -> Ask:

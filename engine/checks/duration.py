@@ -118,6 +118,9 @@ CHECKS = (
         required=0.1,
         formula="x = time from one event to the other, m = min(U - x, x - L) / ((U - L)/2)",
         asks=asks,
+        worst="hot, leaky capacitors; cold, conditioned capacitors",
+        by_hand="R C ln(V_inf / (V_inf - V_th)) with the rail and threshold seen, the threshold part unloaded",
+        accuracy=0.2,
         words={"never": "'{what}' never came", "endless": "'{what}' never came: it runs on"},
     ),
 )

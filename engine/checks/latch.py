@@ -147,6 +147,9 @@ CHECKS = (
         required=0.5,
         formula="D = latch current at which it lets go when the supply is lowered, C = latch current while it holds",
         asks=hold_asks,
+        worst="cold, low supply, weak h_FE",
+        by_hand="(V_BE,N / R_N + V_BE,P / R_P) / latch current, V_BE at 0.1 mA",
+        accuracy=0.2,
         words={
             "missing": "the latch was never set",
             "always": "the latch lets go by itself",
@@ -160,6 +163,7 @@ CHECKS = (
         required=0.5,
         formula="D = latch current left after the reset, C = latch current below which it lets go",
         asks=reset_asks,
+        worst="hot, strong h_FE",
         words={
             "missing": "the latch was never set",
             "never": "the instant of the reset never came",

@@ -57,5 +57,8 @@ CHECKS = (
         required=0.5,
         formula="D = base-emitter voltage in stand-by, C = the base-emitter voltage at the permitted off-current",
         asks=asks,
+        worst="hot",
+        by_hand="I_CBO R_BE / V_BE at the permitted current: one transistor alone, without what feeds its base",
+        accuracy=0.2,
     ),
 )

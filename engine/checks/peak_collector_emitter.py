@@ -28,7 +28,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     rating = view.datum(part, "v_ceo", "V")
     if rating is None:
         return unknown(check, stage.name, part.ref, sequences[0], required, f"v_ceo of {part.ref}")
-    allowed = view.derating("v_ceo", 0.8, requirement) * rating.low
+    allowed = view.derating("v_ceo", requirement) * rating.low
     across = maximum(voltage(part.pins["collector"], part.pins["emitter"]).scaled(polarity(part)))
 
     def judge(seen: Seen) -> Judged:
@@ -49,5 +49,7 @@ CHECKS = (
         required=0.0,
         formula="D = largest collector-emitter voltage of all sequences, C = derating x V_CEO",
         asks=asks,
+        worst="high supply",
+        by_hand="the supply across it: a transistor that is off, without a coil",
     ),
 )

@@ -36,7 +36,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     rating = view.datum(part, "rating", "W")
     if rating is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"rating of {part.ref}")
-    factor = view.derating("resistor_power", 0.6, requirement)
+    factor = view.derating("resistor_power", requirement)
     power = view.bench(part.ref).power
     assert power is not None
     moments = [view.anchor(name, sequence) for name in view.design.sequences[sequence].moments]
@@ -76,6 +76,8 @@ CHECKS = (
         required=0.0,
         formula="D = largest power at the moments of the sequence and averaged over the alarm, C = derating x P(T)",
         asks=asks,
+        worst="hot, high supply",
+        by_hand="V^2/R with the whole supply across it: never less than what it takes without a coil",
         words={"never": "none of the moments at which its power is read ever came"},
     ),
 )

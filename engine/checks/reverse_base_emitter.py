@@ -28,7 +28,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     rating = view.datum(part, "v_ebo", "V")
     if rating is None:
         return unknown(check, stage.name, part.ref, sequences[0], required, f"v_ebo of {part.ref}")
-    allowed = view.derating("v_ebo", 0.8, requirement) * rating.low
+    allowed = view.derating("v_ebo", requirement) * rating.low
     reverse = maximum(forward_base_voltage(part).scaled(-1.0))
 
     def judge(seen: Seen) -> Judged:
@@ -47,5 +47,6 @@ CHECKS = (
         required=0.0,
         formula="D = largest reverse base-emitter voltage of all sequences, C = derating x V_EBO",
         asks=asks,
+        worst="high supply",
     ),
 )

@@ -74,6 +74,9 @@ CHECKS = (
         required=0.0,
         formula="D = stand-by current x time + alarm current x time, C = capacity x age x cold x (1 - self-discharge)",
         asks=asks,
+        worst="hot, high supply",
+        by_hand="the same sum",
+        accuracy=0.01,
         words={"never": "the alarm never sounded"},
     ),
 )

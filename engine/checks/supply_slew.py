@@ -148,6 +148,9 @@ CHECKS = (
         required=0.5,
         formula="D = slew of the latch's supply node as the supply comes, C = largest slew that does not trip it",
         asks=asks,
+        worst="hot, high supply",
+        by_hand="s of V_BE = s R C_c (1 - exp(-V/(s R C))): one base alone, to a factor of four",
+        accuracy=3.0,
         words={
             "always": "trips however slowly the supply is connected",
             "immune": "immune at any slew",

@@ -18,6 +18,8 @@ from ..parts.figures import Figure, figure
 from ..primitives.builder import Bench, Handle
 from ..primitives.signals import Anchor, Row, Signal, crossing, voltage
 from ..quantity import read
+from .factors import FACTORS
+from .ledger import Ledger
 
 MAIN = "alarm"
 CHATTER = 2.0  # times the longest bounce of a contact: how long what it switches may go to and fro
@@ -25,10 +27,11 @@ CHATTER = 2.0  # times the longest bounce of a contact: how long what it switche
 
 @dataclass(frozen=True)
 class View:
-    """A design and its circuit, with the questions that checks ask of them."""
+    """A design and its circuit, with the questions that checks ask of them; ``ledger`` notes what was answered."""
 
     design: Design
     circuit: Circuit
+    ledger: Ledger | None = None
 
     def bench(self, ref: str) -> Bench:
         """What can be observed at a part."""
@@ -79,29 +82,48 @@ class View:
 
     def required(self, slug: str, customary: float, requirement: Requirement | None = None) -> float:
         """The required margin: of the requirement, of the design's table, or the customary one."""
-        if requirement is not None and requirement.required is not None:
-            return _share(requirement.required)
-        text = self.design.required.get(slug)
-        return customary if text is None else _share(text)
+        own = None if requirement is None else requirement.required
+        text = own or self.design.required.get(slug)
+        found = customary if text is None else _share(text)
+        if self.ledger is not None:
+            self.ledger.required(found, self._said_by(slug, own, text, requirement))
+        return found
 
-    def derating(self, name: str, customary: float, requirement: Requirement | None = None) -> float:
-        """The factor on a rating: of the requirement, of the design's table, or the customary one."""
-        text = requirement.derating if requirement is not None and requirement.derating is not None else None
-        text = text or self.design.derating.get(name)
-        return customary if text is None else _share(text)
+    def derating(self, name: str, requirement: Requirement | None = None) -> float:
+        """The factor on a rating: of the requirement, of the design's table, or the customary one of ``FACTORS``."""
+        own = None if requirement is None else requirement.derating
+        text = own or self.design.derating.get(name)
+        found = FACTORS[name].customary if text is None else _share(text)
+        if self.ledger is not None:
+            source = self._said_by(name, own, text, requirement) or f"customary: {FACTORS[name].source}"
+            self.ledger.factor(name, found, FACTORS[name].about, source)
+        return found
+
+    def _said_by(self, name: str, own: str | None, text: str | None, requirement: Requirement | None) -> str:
+        """Who says a required margin or a factor, with the reason that is given; '' where it is the customary one."""
+        if own is not None and requirement is not None:
+            return "the requirement" + (f": {requirement.reason}" if requirement.reason else ", without a reason")
+        reason = self.design.reasons.get(name)
+        return "" if text is None else "the design's table" + (f": {reason}" if reason else ", without a reason")
 
     def extra(self, requirement: Requirement | None, key: str, unit: str) -> float | None:
         """A field that only one check reads. Raises CircuitError that names it when it cannot be read."""
         if requirement is None or key not in requirement.extras:
             return None
         try:
-            return number(requirement.extras[key], unit)
+            found = number(requirement.extras[key], unit)
         except QuantityError as refusal:
             raise CircuitError(f"requirement {requirement.check}, field {key}: {refusal}") from refusal
+        if self.ledger is not None:
+            self.ledger.field(key, found, unit)
+        return found
 
     def datum(self, part: Part, key: str, unit: str) -> Figure | None:
         """A datum of a part or its class."""
-        return figure(part, key, unit)
+        found = figure(part, key, unit)
+        if self.ledger is not None and found is not None:
+            self.ledger.datum(part, key, unit, found)
+        return found
 
     def sequence(self, requirement: Requirement | None, *names: str) -> str:
         """The sequence to judge in: that of the requirement, the first of these names that exists, or the main one."""

@@ -14,6 +14,7 @@ Atom = tuple[str, ...]
 
 Pieces = dict[Atom, Any]
 _TABLES = ("conditions", "sequences", "required", "derating")
+_REASONED = ("required", "derating")
 _PLAIN = ("stagebook", "name", "purpose", "starts")
 
 
@@ -26,6 +27,9 @@ def taken_apart(design: Design) -> Pieces:
     pieces: Pieces = {(name,): document[name] for name in _PLAIN if name in document}
     for table in _TABLES:
         pieces.update({(table, key): entry for key, entry in document.get(table, {}).items()})
+    for key, reason in document.get("reasons", {}).items():
+        for atom in ((table, key) for table in _REASONED if (table, key) in pieces):
+            pieces[atom] = {"is": pieces[atom], "because": reason}
     stages = document.get("stages", [])
     for stage in stages:
         name = stage["name"]
@@ -51,6 +55,12 @@ def put_together(pieces: Pieces, orders: Mapping[Atom, Sequence[str]]) -> dict[s
     document: dict[str, Any] = {name: pieces[(name,)] for name in _PLAIN if (name,) in pieces}
     for table in _TABLES:
         document[table] = {atom[1]: piece for atom, piece in pieces.items() if atom[0] == table}
+    document["reasons"] = {}
+    for table in _REASONED:
+        for key, piece in document[table].items():
+            if isinstance(piece, dict):
+                document[table][key] = piece["is"]
+                document["reasons"][key] = piece["because"]
     parts: dict[str, dict[str, Any]] = {}
     for atom, piece in pieces.items():
         if atom[0] == "part" and atom[2] == "datum":

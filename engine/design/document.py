@@ -12,7 +12,7 @@ from typing import Annotated, Any, Literal
 from pydantic import Field, ValidationError, model_validator
 
 from ..errors import DesignError
-from .clause import Clause, DesignName, Name, NetName, Sentence, Share, Slug, Volts
+from .clause import Clause, DesignName, Name, NetName, Sentence, Share, Slug, Text, Volts
 from .complaint import complaint
 from .conditions import Conditions, Levels, Range
 from .datum import Datum, Entry, Limits
@@ -23,7 +23,10 @@ from .sequence import Event, Moment, RelativeMoment, Sequence
 
 
 class Design(Clause):
-    """A design document. It never changes: an edit makes a new one (``edit.py``). Texts stay as they were typed."""
+    """A design document. It never changes: an edit makes a new one (``edit.py``). Texts stay as they were typed.
+
+    ``required`` and ``derating`` hold what differs from the customary margins and factors, ``reasons`` why it does.
+    """
 
     stagebook: Literal[1] = Field(examples=[1])
     name: DesignName = Field(examples=["flood"])
@@ -38,6 +41,7 @@ class Design(Clause):
     requirements: Requirements = ()
     required: dict[Slug, Share] = Field(default={}, max_length=100)
     derating: dict[Slug, Share] = Field(default={}, max_length=100)
+    reasons: dict[Slug, Text] = Field(default={}, max_length=200)
 
     @model_validator(mode="after")
     def _names_are_single(self) -> Design:
@@ -57,6 +61,8 @@ class Design(Clause):
                         f"stage {stage.name}, part {part.ref}, field ref: {refs[part.ref]} parts have it"
                         f" (in {', '.join(others)}); give each a designator of its own"
                     )
+        for name in sorted(self.reasons.keys() - self.required.keys() - self.derating.keys()):
+            raise ValueError(f"field reasons: {name} stands neither under required nor under derating; leave it out")
         pairs = Counter(frozenset(stray.between) for stray in self.strays)
         for stray in self.strays:
             if pairs[frozenset(stray.between)] > 1:

@@ -3,15 +3,19 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
+from difflib import get_close_matches
 
 import numpy as np
 
 from ..checks import catalogue
 from ..checks.check import Ask, Judged
+from ..checks.factors import FACTORS
 from ..checks.seen import Seen
 from ..checks.trial import Edge, Trial
 from ..checks.view import View
 from ..circuit.circuit import Circuit
+from ..design.document import Design
+from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Row
@@ -23,13 +27,24 @@ Progress = Callable[[int, int], None]
 
 
 def asks_of(circuit: Circuit) -> tuple[Ask, ...]:
-    """Everything that the catalogue asks of a design, in the order of the catalogue."""
+    """Everything that the catalogue asks of a design, in the order of the catalogue. Raises CircuitError where the
+    design sets a margin or a factor that there is not."""
+    _inspect_tables(circuit.design)
     view = View(circuit.design, circuit)
     found: dict[str, Ask] = {}
     for check in catalogue().values():
         for ask in check.asks(check, view):
             found.setdefault(ask.id, ask)
     return tuple(found.values())
+
+
+def _inspect_tables(design: Design) -> None:
+    for table, names, known in (("required", design.required, catalogue()), ("derating", design.derating, FACTORS)):
+        for name in names:
+            if name not in known:
+                near = get_close_matches(name, known, 1, 0.5)
+                meant = f"'{near[0]}'" if near else f"one of {', '.join(sorted(known))}"
+                raise CircuitError(f"field {table}: there is no '{name}'; write {meant}")
 
 
 def _rows(asks: Sequence[Ask]) -> dict[str, list[Row]]:

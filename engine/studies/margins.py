@@ -37,17 +37,19 @@ def study(
     *,
     lanes: int = 0,
     seed: int = 1,
+    only: str | None = None,
     report: Callable[[MarginSheet], None] | None = None,
     progress: Progress = silent,
     cancelled: Callable[[], bool] = never,
 ) -> MarginSheet:
     """All margins of a design; ``report`` gets a sheet after each depth. Raises CircuitError or Cancelled.
 
-    ``lanes`` random lanes are drawn with ``seed`` for the spread, none when 0.
+    ``lanes`` random lanes are drawn with ``seed`` for the spread, none when 0. ``only`` the margin of this id, all
+    where None.
     """
     began = time.perf_counter()
     circuit = build(design)
-    asks = asks_of(circuit)
+    asks = tuple(ask for ask in asks_of(circuit) if only in (None, ask.id))
 
     def sheet(depth: Depth, checks: list[CheckResult]) -> MarginSheet:
         taken = time.perf_counter() - began
@@ -205,7 +207,7 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         sequence=ask.sequences[0],
         demand=_number(judged.demand, lane),
         capability=_number(judged.capability, lane),
-        unit=ask.check.unit,
+        unit=ask.check.unit if ask.unit is None else ask.unit,
         limits=judged.limits,
         low=corner.reach[0],
         high=corner.reach[1],
@@ -221,6 +223,8 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         spread=None,
         formula=ask.check.formula,
         setting=corner.setting.kept(),
+        by_hand=ask.check.by_hand,
+        accuracy=ask.check.accuracy,
     )
 
 
