@@ -55,6 +55,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("bench", "origin", "w", "w", "origin", "where the chosen margin comes from, with its quantities", 6),
     Action("bench", "compare", "c", "c", "compare", "this draft beside the revision it began from", 7),
     Action("bench", "history", "h", "h", "history", "the revisions of this design", 8),
+    Action("bench", "faults", "F", "F", "faults", "what the unit does with each part failed, silent failures first"),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
     Action("bench", "conditions", "d", "d", "conditions", "supply, ambient and source resistance of the design"),
     Action("bench", "add_stage", "A", "A", "add stage", "a free stage at the end of the chain"),
@@ -84,6 +85,9 @@ ACTIONS: tuple[Action, ...] = (
     Action("compare", "column_right", "right", "left right", "column", "the causes of the next revision", 3),
     Action("compare", "origin", "w,enter", "w", "origin", "where the margin of this row comes from", 2),
     Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 4),
+    # faults
+    Action("faults", "next_outcome", "n", "n", "next outcome", "to the first fault of the next outcome", 2),
+    Action("faults", "back", "escape,b", "b", "back", "back; what is not computed yet is given up (Esc as well)", 3),
     # questions
     Action("question", "yes", "y", "y", "yes", "do it", 2),
     Action("question", "no", "n,escape", "n", "no", "leave it as it is (Esc does the same)", 3),

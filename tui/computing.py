@@ -1,4 +1,7 @@
-"""Studies in the background: one thread for margins, one for causes. Everything they find is posted as a message."""
+"""Studies in the background: one thread for margins, one for causes, one for what a screen of its own asks.
+
+Everything they find is posted as a message.
+"""
 
 from __future__ import annotations
 
@@ -14,6 +17,9 @@ from ..engine.results import MarginSheet
 from ..engine.studies.comparison import Side
 from .background import LatestOnly
 from .messages import (
+    Answered,
+    AnswerProgress,
+    AnswerRefused,
     CausesArrived,
     CausesProgress,
     CausesRefused,
@@ -22,9 +28,12 @@ from .messages import (
     StudyProgress,
     StudyRefused,
 )
-from .solver import Preparation, Solver
+from .solver import Cancelled as CancelledYet
+from .solver import Preparation, Progress, Solver
 
 Post = Callable[[Message], object]
+Question = Callable[[Callable[[object], None], Progress, CancelledYet], object]
+"""Gets where to report what is known so far, where to tell progress, and whether it is stale; returns the answer."""
 
 _MESSAGES_A_SECOND = 10
 _LOOK_EVERY = 0.05
@@ -38,6 +47,7 @@ class Computing:
         self._solver = solver
         self._margins = LatestOnly("margins")
         self._causes = LatestOnly("causes")
+        self._aside = LatestOnly("aside")
         self._requests = 0
         self._preparing = threading.Lock()
         self._preparation: Preparation | None = None
@@ -51,7 +61,7 @@ class Computing:
     @property
     def idle(self) -> bool:
         """Whether nothing is computed and nothing waits."""
-        return self._margins.idle.is_set() and self._causes.idle.is_set()
+        return all(each.idle.is_set() for each in (self._margins, self._causes, self._aside))
 
     def prepare(self, post: Post) -> None:
         """Begins preparing the solver, if this machine has not done so yet."""
@@ -117,6 +127,43 @@ class Computing:
         self._causes.submit(job)
         return request
 
+    def faults(self, design: Design, post: Post) -> int:
+        """Begins computing what each single fault does; the sheet so far is an answer that is not whole."""
+
+        def question(report: Callable[[object], None], progress: Progress, stale: CancelledYet) -> object:
+            return self._solver.faults(design, report=report, progress=progress, cancelled=stale)
+
+        return self._ask(question, post)
+
+    def _ask(self, question: Question, post: Post) -> int:
+        """Asks one thing aside of margins and causes; an older such question stops."""
+        self._requests += 1
+        request = self._requests
+
+        def job(stale: Callable[[], bool]) -> None:
+            def report(found: object) -> None:
+                if not stale():
+                    post(Answered(request, found, False))
+
+            progress = self._throttled(lambda done, total: AnswerProgress(request, done, total), stale, post)
+            try:
+                if self._prepared(stale, post):
+                    found = question(report, progress, stale)
+                    if not stale():
+                        post(Answered(request, found, True))
+            except Cancelled:
+                return
+            except Exception as error:
+                if not stale():
+                    post(AnswerRefused(request, _reason(error)))
+
+        self._aside.submit(job)
+        return request
+
+    def cancel_aside(self) -> None:
+        """Nobody looks at that answer any more."""
+        self._aside.cancel()
+
     def cancel_causes(self) -> None:
         """Nobody looks at the causes any more."""
         self._causes.cancel()
@@ -129,6 +176,7 @@ class Computing:
         """Stops everything, without waiting for it."""
         self._margins.close()
         self._causes.close()
+        self._aside.close()
 
     def _prepared(self, stale: Callable[[], bool], post: Post) -> bool:
         """Waits until the compiled solver lies ready; False when the question became stale meanwhile."""

@@ -69,3 +69,29 @@ class CausesRefused(Message):
 
     request: int
     reason: str
+
+
+@dataclass
+class Answered(Message):
+    """What was asked aside of the margins: the whole answer, or as much as is known so far."""
+
+    request: int
+    found: object
+    whole: bool
+
+
+@dataclass
+class AnswerProgress(Message):
+    """How much of an answer is done."""
+
+    request: int
+    done: int
+    total: int
+
+
+@dataclass
+class AnswerRefused(Message):
+    """There is no answer: one line saying why and what to write instead."""
+
+    request: int
+    reason: str

@@ -11,6 +11,7 @@ from ..engine.results import MarginSheet
 
 if TYPE_CHECKING:
     from ..engine.studies.causes import CausesSheet
+    from ..engine.studies.fault_outcomes import FaultSheet
 
 Cancelled = Callable[[], bool]
 Progress = Callable[[int, int], None]
@@ -47,22 +48,20 @@ class Causes(Protocol):
         """The shares; ``stored`` and ``stored_new`` are the margins kept. Raises EngineError or Cancelled."""
 
 
+class Faults(Protocol):
+    """What a design does with each single fault; reports the sheet so far."""
+
+    def __call__(
+        self, design: Design, *, report: Callable[[FaultSheet], None], progress: Progress, cancelled: Cancelled
+    ) -> FaultSheet:
+        """The whole sheet. Raises EngineError with one line, Cancelled when asked to stop."""
+
+
 class Preparation(Protocol):
     """A child process that compiles the solver once for this machine."""
 
     def poll(self) -> int | None:
         """Its exit status, None while it runs."""
-
-
-@dataclass(frozen=True)
-class Solver:
-    """The engine's studies, the number of lanes of a spread, and how the compiled solver is prepared."""
-
-    study: Study
-    causes: Causes
-    ready: Callable[[], bool]
-    prepare: Callable[[], Preparation]
-    lanes: int = 1000
 
 
 def _study(design: Design, **how: Any) -> MarginSheet:
@@ -76,6 +75,24 @@ def _causes(old: Design, new: Design, **how: Any) -> CausesSheet:
     from ..engine.studies.causes import causes
 
     return causes(old, new, **how)
+
+
+def _faults(design: Design, **how: Any) -> FaultSheet:
+    from ..engine.studies.faults import study
+
+    return study(design, **how)
+
+
+@dataclass(frozen=True)
+class Solver:
+    """The engine's studies, the number of lanes of a spread, and how the compiled solver is prepared."""
+
+    study: Study
+    causes: Causes
+    ready: Callable[[], bool]
+    prepare: Callable[[], Preparation]
+    lanes: int = 1000
+    faults: Faults = _faults
 
 
 def own_solver() -> Solver:

@@ -20,6 +20,7 @@ from .bench_view import BenchView
 from .compare import CompareScreen
 from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_stage
 from .dialog import Answers, Ask, Field, Form
+from .faults import FaultsScreen
 from .history import HistoryScreen
 from .origin import OriginPage
 from .saving import Saving
@@ -224,6 +225,10 @@ class BenchScreen(BenchView):
         else:
             sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
             self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
+
+    def action_faults(self) -> None:
+        """What the draft does with each single fault."""
+        self.app.push_screen(FaultsScreen(self.drafting.name, self.design, self.computing))
 
     def action_history(self) -> None:
         """The revisions of this design."""

@@ -1,0 +1,199 @@
+"""The lanes of one faulted circuit, run through every sequence and judged against the sound unit in the first lane."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..checks.view import MAIN, View
+from ..kernel.layout import Floats
+from ..primitives.signals import START, Anchor, Row, crossing, level, maximum, voltage
+from ..quantity import write
+from ..run import Observed
+from .evaluate import observe
+from .fault_heat import Heat
+from .fault_outcomes import WORDS, FaultResult, Outcome
+from .faulted import Faulted
+from .healthy import Behaviour
+
+CLICK = 0.02  # s: shorter than that is no alarm (common practice, no source) ...
+CLICK_SHARE = 0.02  # ... nor what is a smaller share of the sound unit's alarm
+TAIL = 0.2  # share of the time after the sound unit's alarm, at its end, in which none may be on
+OTHERWISE = 0.1  # share by which a time differs that is worth a word
+DRAINS, LEAST_DRAIN = 2.0, 1e-5  # times the stand-by current of the sound unit; A
+
+
+@dataclass(frozen=True)
+class _LoadRows:
+    """What is watched at one load in one sequence."""
+
+    healthy: Behaviour
+    early: Row
+    early_over: Row
+    on: Row
+    off: Row
+    largest: Row
+    tail: Row | None
+
+    @property
+    def rows(self) -> tuple[Row, ...]:
+        """All of them."""
+        rows = (self.early, self.early_over, self.on, self.off, self.largest)
+        return rows if self.tail is None else (*rows, self.tail)
+
+    @classmethod
+    def of(cls, healthy: Behaviour, view: View) -> _LoadRows:
+        """The rows at the load's own pins, which a gap may part from its nets."""
+        on = view.bench(healthy.load).on
+        assert on is not None
+        across = voltage(on[0], on[1])
+        after = Anchor(0.0 if healthy.cause is None else healthy.cause)
+        early = crossing(across, healthy.level, True, START, Anchor(healthy.ends) if healthy.cause is None else after)
+        rises = crossing(across, healthy.level, True, after)
+        tail = None
+        if healthy.over is not None:
+            tail = maximum(across, Anchor(healthy.ends - TAIL * (healthy.ends - healthy.over)))
+        return cls(
+            healthy,
+            early,
+            crossing(across, healthy.level, False, Anchor(view.chatter, early)),
+            rises,
+            crossing(across, healthy.level, False, Anchor(view.chatter, rises)),
+            maximum(across, after),
+            tail,
+        )
+
+
+class FaultLanes:
+    """A faulted circuit that was run. ``progress`` counts faults while it is."""
+
+    def __init__(
+        self,
+        made: Faulted,
+        healthy: Sequence[Behaviour],
+        progress: Callable[[int], None],
+        cancelled: Callable[[], bool],
+    ) -> None:
+        """Runs all lanes through every sequence. Raises Cancelled."""
+        self._made = made
+        view = View(made.circuit.design, made.circuit)
+        self._loads = [_LoadRows.of(each, view) for each in healthy]
+        self._observed: dict[str, Observed] = {}
+        current, moment = view.supply_current, view.moment(MAIN, "standby")
+        self._draw = None if current is None or moment is None else level(current, moment)
+        heat = Heat(view)
+        sequences = list(dict.fromkeys(each.sequence for each in healthy))
+        for k, sequence in enumerate(sequences):
+            loads = [load for load in self._loads if load.healthy.sequence == sequence]
+            instants = [t for load in loads for t in (load.healthy.on, load.healthy.over) if t is not None]
+            rows = [row for load in loads for row in load.rows] + heat.rows(sequence, instants)
+            if sequence == MAIN and self._draw is not None:
+                rows.append(self._draw)
+
+            def portion(done: int, total: int, k: int = k) -> None:
+                progress(int((k * total + done) * len(made.faults) / (total * len(sequences))))
+
+            self._observed[sequence] = observe(made.circuit, made.lanes, sequence, rows, portion, cancelled)
+        self._heat = heat.shares(self._observed, float(made.lanes.ambient[0]))
+
+    def standby(self, lane: int = 0) -> float | None:
+        """Supply current at the moment ``standby`` in A; None where it cannot be seen."""
+        return None if self._draw is None else _number(self._observed[MAIN].value(self._draw), lane)
+
+    def results(self) -> list[FaultResult]:
+        """What comes of each fault."""
+        return [self._result(lane) for lane in range(1, self._made.lanes.count)]
+
+    def _result(self, lane: int) -> FaultResult:
+        fault = self._made.faults[lane - 1]
+        seen = [(*self._of_load(load, lane), load) for load in self._loads]
+        outcome, words, load = min(seen, key=lambda each: each[0])
+        ranked = sorted(self._heat, key=lambda ref: -self._heat[ref][lane])
+        hot = tuple(ref for ref in ranked if self._heat[ref][lane] > 1.0 >= self._heat[ref][0])
+        said = [words]
+        if len({each.healthy.load for each in self._loads}) > 1 and outcome is not Outcome.STILL_ALARMS:
+            said = [f"{words} ({load.healthy.load})"]
+        if outcome is Outcome.STILL_ALARMS and hot:
+            outcome, said = Outcome.OVERHEATS, []
+        if hot:
+            said.append(f"overheats {', '.join(hot)}")
+        others = {its for each, its, _ in seen if each in (Outcome.RUNS_ON, Outcome.FALSE_ALARM)}
+        said += sorted(other for other in others if other not in words)
+        detail = [self._otherwise(load, lane)] if outcome in (Outcome.STILL_ALARMS, Outcome.OVERHEATS) else []
+        detail += [f"{ref} at {self._heat[ref][lane]:.1f} times its power" for ref in hot[:2]]
+        standby, usual = self.standby(lane), self.standby()
+        drains = standby is not None and usual is not None and standby > max(DRAINS * usual, LEAST_DRAIN)
+        if drains and standby is not None and usual is not None:
+            detail.append(f"draws {_amperes(standby)} in stand-by instead of {_amperes(usual)}")
+        watched = self._observed[load.healthy.sequence]
+        return FaultResult(
+            stage=fault.stage,
+            part=fault.part,
+            fault=fault.words,
+            outcome=outcome,
+            words="; ".join(said),
+            detail=", ".join(filter(None, detail)),
+            load=load.healthy.load,
+            sequence=load.healthy.sequence,
+            overheats=hot,
+            on=_number(watched.time(load.on), lane),
+            off=_number(watched.time(load.off), lane),
+            standby=standby,
+            drains=drains,
+        )
+
+    def _of_load(self, load: _LoadRows, lane: int) -> tuple[Outcome, str]:
+        healthy, watched = load.healthy, self._observed[load.healthy.sequence]
+        failure = watched.failure(lane)
+        if failure is not None:
+            return Outcome.UNKNOWN, f"{WORDS[Outcome.UNKNOWN]}: {failure}"
+        click = min(CLICK, CLICK_SHARE * healthy.lasts) if healthy.alarms else CLICK
+        early = self._sounds(load.early, load.early_over, load, lane) > click
+        # What has been on since before its cause counts as an alarm, though it does not come on again.
+        held = early and float(watched.value(load.largest)[lane]) > healthy.level
+        alarms = held or self._sounds(load.on, load.off, load, lane) > click
+        if healthy.alarms and not alarms:
+            return Outcome.SILENT, WORDS[Outcome.SILENT] + (", after a false alarm" if early else "")
+        where = "" if healthy.sequence == MAIN else f" in {healthy.sequence}"
+        if healthy.alarms and load.tail is not None and float(watched.value(load.tail)[lane]) > healthy.level:
+            also = f"; {WORDS[Outcome.FALSE_ALARM]}" if early else ""
+            return Outcome.RUNS_ON, WORDS[Outcome.RUNS_ON] + where + also
+        if early:
+            return Outcome.FALSE_ALARM, WORDS[Outcome.FALSE_ALARM] + where
+        return Outcome.STILL_ALARMS, WORDS[Outcome.STILL_ALARMS]
+
+    def _sounds(self, on: Row, off: Row, load: _LoadRows, lane: int) -> float:
+        """How long a load is on from a crossing to the next; 0 where it does not come on."""
+        watched = self._observed[load.healthy.sequence]
+        begin, end = (float(watched.time(row)[lane]) for row in (on, off))
+        if not np.isfinite(begin):
+            return 0.0
+        return (end if np.isfinite(end) else load.healthy.ends) - begin
+
+    def _otherwise(self, load: _LoadRows, lane: int) -> str:
+        """What differs of an alarm that still comes: how late, how long."""
+        healthy, watched = load.healthy, self._observed[load.healthy.sequence]
+        if healthy.cause is None:
+            return ""
+        said = []
+        now, usual = (float(watched.time(load.on)[n]) - healthy.cause for n in (lane, 0))
+        if np.isfinite(now) and abs(now - usual) > max(OTHERWISE * abs(usual), CLICK):
+            said.append(f"{_seconds(now)} after its cause instead of {_seconds(usual)}")
+        lasts, usually = (self._sounds(load.on, load.off, load, n) for n in (lane, 0))
+        if np.isfinite(now) and abs(lasts - usually) > OTHERWISE * usually:
+            said.append(f"for {_seconds(lasts)} instead of {_seconds(usually)}")
+        return ", ".join(said)
+
+
+def _number(values: Floats, lane: int) -> float | None:
+    return float(values[lane]) if np.isfinite(values[lane]) else None
+
+
+def _seconds(value: float) -> str:
+    return write(float(f"{value:.3g}"), "s") if value > 0.0 else "0 s"
+
+
+def _amperes(value: float) -> str:
+    return write(float(f"{max(value, 0.0):.2g}"), "A")
