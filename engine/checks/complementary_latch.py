@@ -9,6 +9,7 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
+from ..primitives.builder import SUPPLY_NET
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, Signal, level, voltage
 from ..run import Observed
@@ -32,6 +33,12 @@ class Latch:
     def rail(self) -> Signal:
         """What the latch is fed with: from the pnp's emitter to the npn's."""
         return voltage(self.pnp.pins["emitter"], self.npn.pins["emitter"])
+
+    @property
+    def rails(self) -> tuple[Signal, ...]:
+        """What feeds it, at the latch and at the supply: a latch fed through a resistor keeps little for itself."""
+        supply = (voltage(SUPPLY_NET),) if SUPPLY_NET in self.view.circuit.nets else ()
+        return (self.rail, *supply)
 
     @property
     def current(self) -> Signal:

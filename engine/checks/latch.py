@@ -25,6 +25,14 @@ SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
 
 
+def hold_trial_of(latch: Latch) -> Trial:
+    """The trial behind every check that must know when a latch lets go: ``rows`` begin with the latch current and end
+    with the voltages at the latch and of the supply, all at the last supply at which it holds."""
+    view = latch.view
+    requirement = view.requirement("latch_hold", latch.npn.ref, latch.pnp.ref, latch.stage.name)
+    return _hold_trial(latch, view.sequence(requirement), view.extra(requirement, "settle", "s") or SETTLE)
+
+
 def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
     view = latch.view
     start = view.moment(sequence, "latched", "sounding", "on")
@@ -49,7 +57,7 @@ def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
         ends=ends,
         safe=1.0,
         severe=1.0 / LEAST_SUPPLY,
-        rows=(current, *probes),
+        rows=(current, *probes, *(level(rail, Anchor(ends)) for rail in latch.rails)),
         gives_in=gives_in,
         resolution=1.01,
     )
@@ -66,7 +74,7 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
     requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
     sequence = view.sequence(requirement)
     required = view.required(check.slug, check.required, requirement)
-    trial = _hold_trial(latch, sequence, view.extra(requirement, "settle", "s") or SETTLE)
+    trial = hold_trial_of(latch)
     assert trial.start is not None
     current = level(latch.current, trial.start)
 
@@ -113,8 +121,7 @@ def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
     view, stage, npn, pnp = latch.view, latch.stage, latch.npn, latch.pnp
     requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
     required = view.required(check.slug, check.required, requirement)
-    hold = view.requirement("latch_hold", npn.ref, pnp.ref, stage.name)
-    trial = _hold_trial(latch, view.sequence(hold), view.extra(hold, "settle", "s") or SETTLE)
+    trial = hold_trial_of(latch)
     residual = minimum(latch.current, at, Anchor(at.by + 1e-3, at.row))
 
     def judge(seen: Seen) -> Judged:

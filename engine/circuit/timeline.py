@@ -95,8 +95,11 @@ class Timeline:
             self.sources[source] = wave
 
     @classmethod
-    def resumed(cls, before: Timeline, at: Floats) -> Timeline:
-        """A timeline that goes on, from its own t = 0, where another one stood at ``at`` (one instant per lane)."""
+    def resumed(cls, before: Timeline, at: Floats, onward: bool = False) -> Timeline:
+        """A timeline that goes on, from its own t = 0, where another one stood at ``at`` (one instant per lane).
+
+        Nothing happens on it any more but what generators do; ``onward``: what was still to come does come.
+        """
         line = cls(before.circuit, before.lanes)
         # A state is kept at the end of a step. Where an event ends the step, what it does has not happened yet.
         at = np.maximum(0.0, at - np.maximum(HALF_JUMP, 8.0 * np.spacing(np.abs(at))))
@@ -106,6 +109,10 @@ class Timeline:
             *((line.switches[ref], old) for ref, old in before.switches.items()),
             *((line.quantities[ref], old) for ref, old in before.quantities.items()),
         ):
+            if onward:
+                rest = old.later(at)
+                wave.times, wave.values = rest.times, rest.values
+                continue
             value, _ = old.pieces(middles, middles)
             wave.values[0] = np.broadcast_to(value[:, 0], (line.lanes.count,)).copy()
         line._standing, line._charged = line.supply.values[0], True
@@ -208,7 +215,7 @@ class Timeline:
         """An event opens or closes a contact at once."""
         self.switches[ref].step(at, self._set(ref, state))
 
-    def bounce(self, ref: str, at: float, state: str, during: float, times: int) -> None:
+    def bounce(self, ref: str, at: Number, state: str, during: Number, times: int) -> None:
         """A contact goes to its new state with ``times`` interruptions spread evenly over ``during``."""
         other = "open" if state == "closed" else "closed"
         for k in range(times):
@@ -216,7 +223,7 @@ class Timeline:
             self.set_part(ref, at + during * (k + 0.5) / times, other)
         self.set_part(ref, at + during, state)
 
-    def set_level(self, name: str, at: float, to: str | float) -> None:
+    def set_level(self, name: str, at: Number, to: str | float) -> None:
         """A part, or every part that follows ``name``, is set at once in its own quantity; a generator in volts.
 
         A sine keeps swinging, about the new level.
@@ -229,7 +236,7 @@ class Timeline:
             self.quantities[ref].step(at, value)
             self.switches[ref].step(at, settable.siemens(self.lanes, value))
 
-    def ramp_level(self, name: str, at: float, during: float, to: str | float) -> None:
+    def ramp_level(self, name: str, at: Number, during: float, to: str | float) -> None:
         """As :meth:`set_level`, reached evenly within ``during``."""
         if name in self.circuit.builder.generators:
             self.sources[self.circuit.builder.generators[name]].ramp(at, during, number(to, "V"))
@@ -312,12 +319,13 @@ def timeline(circuit: Circuit, lanes: Lanes, sequence: Sequence, starts: bool = 
         else:
             line.connect_supply(0.0, DEFAULT_RISE)
     for event in events:
-        _apply(line, event)
+        apply(line, event)
     return line
 
 
-def _apply(line: Timeline, event: Event) -> None:
-    at = read(event.at, "s")
+def apply(line: Timeline, event: Event, later: Number = 0.0) -> None:
+    """An event of a document happens on a timeline, ``later`` by so many seconds than it says (one for each lane)."""
+    at = np.add(read(event.at, "s"), later)
     match event:
         case ConnectSupply():
             line.connect_supply(at, DEFAULT_RISE if event.rise is None else read(event.rise, "s"))

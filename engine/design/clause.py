@@ -100,4 +100,5 @@ Ohms = Annotated[Text, AfterValidator(_readable("ohm", 0.0)), Field(examples=["0
 Farads = Annotated[Text, AfterValidator(_readable("F", 0.0)), Field(examples=["5 pF"])]
 Seconds = Annotated[Text, AfterValidator(_readable("s", 0.0)), Field(examples=["1 s"])]
 Delay = Annotated[Text, AfterValidator(_readable("s")), Field(examples=["0.5 s"])]
+Slew = Annotated[Text, AfterValidator(_readable("V/s", 0.0)), Field(examples=["10 V/us"])]
 Share = Annotated[Text, AfterValidator(_readable("")), Field(examples=["10 %"])]

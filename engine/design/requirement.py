@@ -7,7 +7,7 @@ from typing import Annotated
 
 from pydantic import Field, field_validator, model_validator
 
-from .clause import Clause, Farads, Name, NetName, Scalar, Share, Slug, StageName, Text
+from .clause import Clause, Farads, Name, NetName, Scalar, Share, Slew, Slug, StageName, Text
 
 
 class Requirement(Clause, extra="allow"):
@@ -53,7 +53,7 @@ class Stray(Clause):
 
     between: tuple[NetName, NetName] = Field(examples=[["supply", "base"]])
     value: Farads
-    slew: Text | None = Field(None, examples=["10 V/us"])
+    slew: Slew | None = None
 
     @field_validator("between")
     @classmethod

@@ -55,12 +55,14 @@ class TrialRun:
         """Run lanes ``index`` (with repeats) with one knob value each."""
         chosen = np.asarray(index, dtype=np.int64)
         lanes = self.lanes.take(chosen)
+        if self.trial.vary is not None:
+            lanes = self.trial.vary(lanes, knob)
         start = None
         if self._state is None:
             line = Timeline(self.circuit, lanes)
         else:
             before, _ = program_of(self.circuit, lanes, self.trial.sequence)
-            line = Timeline.resumed(before, self._at[chosen])
+            line = Timeline.resumed(before, self._at[chosen], self.trial.onward)
             start = np.ascontiguousarray(self._state[chosen])
         self.trial.drive(line, knob)
         program = line.program(self.trial.ends)
