@@ -16,7 +16,8 @@ from .lanes import Setting
 class Corner:
     """One ask at its worst: the setting, what was judged there, and in which lane.
 
-    ``reach`` are the extremes of a window's value in all corners that were tried.
+    ``reach`` are the extremes of a window's value in all corners that were tried; ``remark`` is said beside
+    the verdict.
     """
 
     setting: Setting
@@ -27,6 +28,7 @@ class Corner:
     broken: str | None
     edge: Edge | None = None
     reach: tuple[float | None, float | None] = (None, None)
+    remark: str | None = None
 
     @property
     def margin(self) -> float:

@@ -27,6 +27,7 @@ from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, sett
 from .spread import spread_of
 from .trial_corners import TrialCorners, part_ends
 from .vertices import lowest, sides
+from .watch import watch
 
 WORST_CONDITIONS = 2  # corners of the conditions that are tried with part tolerances
 SAME = 1e-5  # a corner whose margin is less below the nominal one is not worse
@@ -60,10 +61,10 @@ def study(
             report(made)
         return made
 
-    nominal = _nominal(circuit, asks, cancelled)
+    nominal = watch(circuit, asks, _nominal(circuit, asks, cancelled), cancelled)
     checks = [_result(ask, corner, nominal[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, nominal)]
     made = sheet(Depth.NOMINAL, checks)
-    worst = _corners(circuit, asks, nominal, progress, cancelled)
+    worst = watch(circuit, asks, _corners(circuit, asks, nominal, progress, cancelled), cancelled)
     checks = [_result(ask, corner, nominal[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, worst)]
     made = sheet(Depth.CORNERS, checks)
     if lanes > 0:
@@ -198,6 +199,8 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         reason = outcome or _overrun(ask, judged, lane)
     else:
         verdict = Verdict.PASS if margin >= ask.required else Verdict.THIN
+    if corner.remark is not None:
+        reason = corner.remark if reason is None else f"{reason}; {corner.remark}"
     return CheckResult(
         id=ask.id,
         number=ask.check.number,

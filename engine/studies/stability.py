@@ -1,0 +1,250 @@
+"""Watch for a loss of stability that long steps walk past.
+
+An L-stable method damps what grows within a step, so a state that has become unstable may be followed as if it were
+not, and no tolerance tells. At the states that long steps reached the circuit is linearised; where a growing mode was
+skipped, the run is repeated with steps that resolve it, from where the growth begins until it must have shown.
+Growing modes: eigenvalues of the linearised circuit (Lyapunov's first method); that an implicit method is stable
+where the equation is not: Hairer, Wanner, Solving Ordinary Differential Equations II (1996), IV.3. Both from memory.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from itertools import pairwise
+
+import numpy as np
+
+from ..circuit.circuit import Circuit
+from ..circuit.linearised import Mode, growing, matrices, parameters_at
+from ..kernel import layout
+from ..kernel.layout import Floats, Program
+from ..primitives.columns import Lanes
+from ..primitives.signals import Row
+from ..quantity import write
+from ..run import Observed, never, run
+from .sequences import program_of, starts_of
+
+SKIPPED = 0.6  # |s| h from which a step does not resolve a mode: about ten steps a period
+SHOWS = 7.0  # e-folds that take a disturbance of a millivolt to volts
+CERTAIN = 30.0  # e-folds that take round-off to volts
+SHORTEST = 1e-6  # s; a step that skips a growing mode is soon followed by longer ones
+ALIKE = 0.3  # largest change of an entry of C or G, beside its diagonals, between states that share their modes
+FINE = 0.01  # the same once a growing mode was found, to see where it begins
+PER_PERIOD = 24  # steps in a period of the mode, once it is resolved
+AFTER = 30  # periods that are still resolved after it must have shown
+TOO_SLOW = 0.01  # growth in parts of |s| that steps of that length still damp out
+PIECES = 32  # of the step in which the growth began, to find where
+ROUNDS = 8  # repeated runs of one lane
+MOST_STOPS = 30_000  # the work bound: steps that a repetition may be asked to take
+FIRST_POINTS, MOST_POINTS = 4096, 250_000
+VISIBLE = 0.02  # V, swing that counts as an oscillation
+CYCLES = 2  # whole ones, of that swing at least
+
+
+@dataclass(frozen=True)
+class Skipped:
+    """A growing mode that the steps of a run did not resolve.
+
+    ``time`` and ``growth`` (1/s) of the states from the last good one to the last bad one, ``speed`` the largest |s|,
+    ``mode`` the first one, ``net`` where it is largest.
+    """
+
+    time: Floats
+    growth: Floats
+    speed: Floats
+    mode: Mode
+    net: str
+
+
+@dataclass(frozen=True)
+class Watched:
+    """A lane after the watch: ``observed`` is the run to believe, ``words`` what must be said of it.
+
+    ``unknown``: the repetition was beyond the work bound, and nothing that the run says after ``words`` is certain.
+    """
+
+    observed: Observed
+    words: str | None = None
+    unknown: bool = False
+
+
+def traced(
+    circuit: Circuit,
+    lane: Lanes,
+    sequence: str,
+    rows: Sequence[Row],
+    keep: Sequence[Row] = (),
+    stops: Floats | None = None,
+    cancelled: Callable[[], bool] = never,
+) -> tuple[Observed, Program]:
+    """One lane with all its steps kept."""
+    _, program = program_of(circuit, lane, sequence, stops)
+    starts = starts_of(circuit, sequence, program)
+    points = FIRST_POINTS + (0 if stops is None else 2 * len(stops))
+    while True:
+        observed = run(circuit, lane, program, rows, start=starts, keep=keep, trace=points, cancelled=cancelled)
+        if int(observed.results.ended[0, 0]) != layout.TRACE_FULL or points >= MOST_POINTS:
+            return observed, program
+        points = min(8 * points, MOST_POINTS)
+
+
+def skipped(
+    circuit: Circuit, lane: Lanes, program: Program, observed: Observed, alike: float = ALIKE
+) -> Skipped | None:
+    """The first growing mode that the steps of a traced run did not resolve and that would have shown."""
+    used = int(observed.results.trace_used[0])
+    time, states = observed.results.trace_time[:used], observed.results.trace_value[:used]
+    step = np.diff(time, prepend=0.0)
+    looked = np.flatnonzero(step > SHORTEST)
+    if not looked.size:
+        return None
+    parameters = parameters_at(circuit, circuit.table(lane), program, 0, time[looked])
+    conductance, capacitance = matrices(circuit, parameters, states[looked])
+    # States whose matrices are alike, entry by entry beside the diagonals, share their modes.
+    both = np.stack([conductance, capacitance], axis=1)
+    scale = 1.0 / np.sqrt(np.maximum(np.abs(both.diagonal(axis1=2, axis2=3)), 1e-18))
+    weight = scale[:, :, :, None] * scale[:, :, None, :]
+    own = [0]
+    of = np.zeros(looked.size, dtype=np.int64)
+    for k in range(1, looked.size):
+        if np.max(np.abs((both[k] - both[own[-1]]) * weight[own[-1]])) > alike:
+            own.append(k)
+        of[k] = len(own) - 1
+    modes = growing(conductance[own], capacitance[own])
+    run_of: list[tuple[float, float, float]] = []  # time, growth, |s|
+    first: Mode | None = None
+    total = 0.0
+    for k, n in enumerate(looked):
+        bad = [mode for mode in modes[of[k]] if abs(mode.s) * step[n] > SKIPPED]
+        if not bad:
+            if total > SHOWS:
+                break
+            run_of, first, total = [], None, 0.0
+            continue
+        fastest = max(bad, key=lambda mode: mode.s.real)
+        if first is None:
+            first, run_of = fastest, [(float(time[n] - step[n]), 0.0, abs(fastest.s))]
+        run_of.append((float(time[n]), fastest.s.real, max(abs(mode.s) for mode in bad)))
+        total += fastest.s.real * float(step[n])
+    if first is None or total <= SHOWS:
+        return None
+    place = int(np.argmax(np.abs(first.shape[: int(circuit.topology.size[0])])))
+    table = np.array(run_of)
+    return Skipped(table[:, 0], table[:, 1], table[:, 2], first, circuit.unknown_name(place))
+
+
+def _resolving(found: Skipped) -> Floats | None:
+    """Instants that steps must hit to resolve the mode until it has shown; None beyond the work bound."""
+    widths = np.diff(found.time)
+    folds = np.concatenate([[0.0], np.cumsum(0.5 * (found.growth[1:] + found.growth[:-1]) * widths)])
+    visible = found.growth > TOO_SLOW * found.speed
+    for begin in (0, int(np.argmax(visible)) if visible.any() else 0):
+        shown = int(np.searchsorted(folds, folds[begin] + CERTAIN))
+        speed = float(found.speed[begin : shown + 2].max())
+        if shown < folds.size:
+            # Within the step in which it shows, growth is taken to go straight from one state to the next.
+            share = np.linspace(0.0, 1.0, 1001)
+            g0, g1 = found.growth[shown - 1], found.growth[shown]
+            within = folds[shown - 1] + (g0 * share + 0.5 * (g1 - g0) * share**2) * widths[shown - 1]
+            k = min(int(np.searchsorted(within, folds[begin] + CERTAIN)), 1000)
+            end = float(found.time[shown - 1] + share[k] * widths[shown - 1])
+        else:
+            end = float(found.time[-1])
+        period = 2.0 * math.pi / speed
+        end = max(end, float(found.time[begin])) + AFTER * period
+        if (end - found.time[begin]) / period * PER_PERIOD <= MOST_STOPS:
+            return np.arange(float(found.time[begin]), end, period / PER_PERIOD)
+    return None
+
+
+def _swings(observed: Observed, place: int, begin: float) -> tuple[float, float, float] | None:
+    """Frequency, size and beginning of an oscillation of one unknown after ``begin``; None where there is none."""
+    used = int(observed.results.trace_used[0])
+    time, value = observed.results.trace_time[:used], observed.results.trace_value[:used, place]
+    after = time >= begin
+    turns: list[tuple[float, float]] = []
+    for t, v in zip(time[after], value[after], strict=True):
+        if not turns:
+            turns.append((t, v))
+            continue
+        rising = len(turns) > 1 and turns[-1][1] > turns[-2][1]
+        if len(turns) > 1 and (v > turns[-1][1]) == rising and v != turns[-1][1]:
+            turns[-1] = (t, v)
+        elif abs(v - turns[-1][1]) > VISIBLE:
+            turns.append((t, v))
+    # The first and the last turn are where the window begins and what the circuit came to rest at.
+    inner = turns[1:-1]
+    if len(inner) < 2 * CYCLES + 1:
+        return None
+    cycles = inner[: 2 * (len(inner) // 2) + 1]
+    gaps = np.diff([t for t, _ in cycles])
+    usual = float(np.median(gaps))
+    size = max(abs(b[1] - a[1]) for a, b in pairwise(inner))
+    return 0.5 / usual, size, inner[0][0]
+
+
+def watched(
+    circuit: Circuit,
+    lane: Lanes,
+    sequence: str,
+    rows: Sequence[Row],
+    keep: Sequence[Row] = (),
+    cancelled: Callable[[], bool] = never,
+) -> Watched:
+    """Run one lane and, where a growing mode was skipped, repeat it with steps that resolve it."""
+    observed, program = traced(circuit, lane, sequence, rows, keep, cancelled=cancelled)
+    plain, stops, said = observed, np.zeros(0), None
+    for turn in range(ROUNDS):
+        found = None if observed.failed[0] else skipped(circuit, lane, program, observed, ALIKE if turn == 0 else FINE)
+        if found is None:
+            break
+        if said is None:
+            said = found
+        widths = np.diff(found.time)
+        if found.growth[1] * widths[0] > CERTAIN and turn < ROUNDS // 2:
+            more = np.linspace(found.time[0], found.time[1], PIECES + 1)[1:-1]
+        else:
+            resolving = _resolving(found)
+            if resolving is None or turn == ROUNDS - 1:
+                return Watched(plain, f"{_where(found)}: {_BEYOND}", True)
+            said, more = found, resolving
+        stops = np.unique(np.concatenate([stops, more]))
+        stops = stops[(stops > 0.0) & (stops < program.length[0].sum())]
+        if stops.size > MOST_STOPS:
+            return Watched(plain, f"{_where(found)}: {_BEYOND}", True)
+        observed, program = traced(circuit, lane, sequence, rows, keep, stops, cancelled)
+    if said is None:
+        return Watched(observed)
+    swings = _swings(observed, circuit.index(said.net), float(said.time[0]))
+    if observed.failed[0]:
+        return Watched(plain, f"{_where(said, swings)}: {_BEYOND}", True)
+    if swings is None and not _departs(plain, observed, float(said.time[0])):
+        return Watched(observed)
+    return Watched(observed, f"{_where(said, swings)} (followed with short steps)")
+
+
+def _departs(plain: Observed, observed: Observed, begin: float) -> bool:
+    """Whether a repeated run goes another way than the plain one did."""
+    (t0, x0), (t1, x1) = (
+        (r.results.trace_time[: int(r.results.trace_used[0])], r.results.trace_value[: int(r.results.trace_used[0])])
+        for r in (plain, observed)
+    )
+    after = t1 >= begin
+    return any(
+        np.max(np.abs(x1[after, k] - np.interp(t1[after], t0, x0[:, k])), initial=0.0) > VISIBLE
+        for k in range(int(plain.circuit.topology.size[0]))
+    )
+
+
+_BEYOND = "to follow it takes more steps than are allowed, what comes later is not known"
+
+
+def _where(found: Skipped, swings: tuple[float, float, float] | None = None) -> str:
+    """Where, when and how fast, in words."""
+    at = float(found.time[0]) if swings is None else swings[2]
+    if swings is None and found.mode.s.imag == 0.0:
+        return f"leaves an unstable balance near net {found.net} after {write(at, 's', 4)}"
+    frequency = found.mode.s.imag / (2.0 * math.pi) if swings is None else swings[0]
+    return f"oscillates near net {found.net} from {write(at, 's', 4)} on, at about {write(frequency, 'Hz')}"

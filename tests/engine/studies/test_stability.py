@@ -1,0 +1,212 @@
+"""The watch for a loss of stability: natural modes against closed forms, runs against brute force with small steps."""
+
+from __future__ import annotations
+
+from functools import cache
+
+import numpy as np
+import pytest
+
+from stagebook.engine.circuit.linearised import growing, matrices, parameters_at
+from stagebook.engine.primitives.signals import Anchor, crossing, voltage
+from stagebook.engine.results import Verdict
+from stagebook.engine.studies.margins import study
+from stagebook.engine.studies.stability import Watched, skipped, traced, watched
+
+from ..circuits import Setup, capacitor, resistor, setup, steps, transistor, two
+
+VT = 0.025692579121493725  # kT/q at 25 C
+
+
+def at_the_end(circuit: Setup) -> tuple[np.ndarray, np.ndarray]:
+    """G and C of the free unknowns at the end of the sequence."""
+    lanes = circuit.lanes()
+    program = circuit.program(lanes)
+    table = circuit.circuit.table(lanes)
+    parameters = parameters_at(circuit.circuit, table, program, 0, np.array([circuit.ends]))
+    conductance, capacitance = matrices(circuit.circuit, parameters, circuit.run().final)
+    return conductance[0], capacitance[0]
+
+
+def test_matrices_of_a_resonant_circuit_have_its_modes() -> None:
+    # 1 mH with 10 ohm in series and 1 uF: s^2 + (R/L) s + 1/(L C) = 0.
+    circuit = setup(
+        two("inductor", "L1", "supply", "n", inductance="1 mH", resistance="10 ohm"),
+        capacitor("C1", "n", "0V", "1 uF"),
+        supply="5 V",
+        ends=20e-3,
+    )
+    conductance, capacitance = at_the_end(circuit)
+    modes = np.linalg.eigvals(-np.linalg.solve(capacitance, conductance))
+    by_hand = np.roots([1.0, 10.0 / 1e-3, 1.0 / (1e-3 * 1e-6)])
+    # The core and the capacitance of the coil shift them a little.
+    assert np.sort_complex(modes) == pytest.approx(np.sort_complex(by_hand), rel=5e-3)
+
+
+def test_matrices_of_a_transistor_hold_its_transconductance() -> None:
+    # d I_C / d V_BE = I_C / V_T in the active region.
+    circuit = setup(
+        resistor("R1", "supply", "b", "1M"),
+        resistor("R2", "supply", "c", "1k"),
+        transistor("Q1", "c", "b", "0V", law={"saturation_current": "1e-14 A", "forward_gain": 100, "reverse_gain": 1}),
+        supply="5 V",
+        ends=1e-3,
+    )
+    conductance, _ = at_the_end(circuit)
+    b, c = (circuit.circuit.index(net) for net in ("b", "c"))
+    current = (5.0 - circuit.final("c")) / 1e3
+    assert conductance[c, b] == pytest.approx(current / VT, rel=1e-3)
+    assert conductance[b, c] == pytest.approx(0.0, abs=1e-9)
+
+
+def test_a_contact_stands_in_the_matrix_where_it_stands_at_that_instant() -> None:
+    circuit = setup(
+        resistor("R1", "supply", "n", "1k"),
+        two("contact", "S1", "n", "0V", data={"resistance": "1 ohm"}),
+        events=[{"at": "1 ms", "event": "close", "part": "S1"}],
+        ends=2e-3,
+    )
+    lanes = circuit.lanes()
+    program, table = circuit.program(lanes), circuit.circuit.table(lanes)
+    parameters = parameters_at(circuit.circuit, table, program, 0, np.array([0.9e-3, 1.0e-3, 1.1e-3]))
+    conductance, _ = matrices(circuit.circuit, parameters, np.repeat(circuit.run().final, 3, axis=0))
+    n = circuit.circuit.index("n")
+    # At the instant of the event itself the contact is still open.
+    assert conductance[:, n, n] == pytest.approx([1e-3, 1e-3, 1.001], rel=1e-3)
+
+
+@pytest.mark.parametrize(("negative", "grows"), [(0.9e-3, False), (1.1e-3, True), (40e-3, True)])
+def test_growing_modes_of_a_negative_conductance_beside_a_resonant_circuit(negative: float, grows: bool) -> None:
+    # C dv/dt + i - g v = 0, L di/dt + R i - v = 0: L C s^2 + (R C - g L) s + 1 - g R = 0; grows for
+    # g > R C/L.
+    # An added unknown without capacitance, as a net of resistors makes it, changes nothing.
+    farads, henry, ohms = 1e-9, 1e-3, 1e3
+    conductance = np.array([[1e-6 - negative, 1.0, -1e-6], [-1.0, ohms, 0.0], [-1e-6, 0.0, 1e-6]])
+    capacitance = np.diag([farads, henry, 0.0])
+    roots = np.roots([henry * farads, ohms * farads - negative * henry, 1.0 - negative * ohms])
+    wanted = [complex(s) for s in roots if s.real > 0.0 and s.imag >= 0.0]
+    found = [mode.s for mode in growing(conductance[None], capacitance[None])[0]]
+    assert bool(found) is grows
+    assert sorted(found, key=abs) == pytest.approx(sorted(wanted, key=abs), rel=1e-6)
+
+
+LET_GO = crossing(voltage("top"), 1.5, rising=True, start=Anchor(20e-3))
+
+
+def latch(filter_capacitor: str, fall: float = 0.1) -> Setup:
+    """A complementary latch behind 10k with 10 nF across it; its feed falls from 12 V to 0 V from 20 ms on."""
+    return setup(
+        steps("G1", "feed", "0V", (0.0, 0.0), (1e-3, 12.0), (20e-3, 12.0), (20e-3 + fall, 0.0)),
+        resistor("R1", "feed", "top", "10k"),
+        capacitor("C1", "top", "0V", "10n"),
+        transistor("Q1", "gate", "mid", "top", "pnp", **{"class": "small pnp"}),
+        transistor("Q2", "mid", "gate", "0V", **{"class": "small npn"}),
+        resistor("R2", "gate", "0V", "10k"),
+        resistor("R3", "top", "mid", "10k"),
+        capacitor("C2", "gate", "0V", filter_capacitor),
+        two("contact", "S1", "feed", "kick", data={"insulation": "1000G"}),
+        resistor("R4", "kick", "gate", "47k"),
+        events=[{"at": "10 ms", "event": "close", "part": "S1"}, {"at": "15 ms", "event": "open", "part": "S1"}],
+        supply=None,
+        ends=20e-3 + fall,
+    )
+
+
+def lets_go(observed: Watched) -> float:
+    return float(observed.observed.value(LET_GO)[0])
+
+
+@cache
+def by_brute_force(filter_capacitor: str) -> float:
+    """When it lets go, with steps of at most half a microsecond since long before."""
+    circuit = latch(filter_capacitor)
+    stops = np.arange(99e-3, 106e-3, 0.5e-6)
+    observed, program = traced(circuit.circuit, circuit.lanes(), "alarm", [LET_GO], stops=stops)
+    assert observed.failure(0) is None
+    assert skipped(circuit.circuit, circuit.lanes(), program, observed) is None
+    return float(observed.value(LET_GO)[0])
+
+
+@pytest.mark.parametrize(("farads", "hertz"), [("1n", 164e3), ("10n", 43e3)])
+def test_a_slow_turn_off_that_oscillates_lets_go_when_brute_force_says(farads: str, hertz: float) -> None:
+    circuit = latch(farads)
+    plain, _ = traced(circuit.circuit, circuit.lanes(), "alarm", [LET_GO])
+    found = watched(circuit.circuit, circuit.lanes(), "alarm", [LET_GO])
+    exact = by_brute_force(farads)
+    # Long steps follow the state that has become unstable, and no tolerance tells.
+    late = float(plain.value(LET_GO)[0]) - exact
+    assert late > 0.4e-3
+    assert abs(lets_go(found) - exact) < 0.25 * late
+    assert found.words is not None
+    assert "oscillates near net mid" in found.words
+    assert not found.unknown
+    frequency = float(found.words.split("about ")[1].split(" kHz")[0]) * 1e3
+    assert frequency == pytest.approx(hertz, rel=0.1)
+
+
+def test_tighter_tolerances_do_not_show_it() -> None:
+    circuit = latch("1n")
+    tight = float(circuit.run(LET_GO, relative=1e-5).value(LET_GO)[0])
+    assert tight > by_brute_force("1n") + 1e-3
+
+
+def test_the_words_say_where_when_and_how_fast() -> None:
+    circuit = latch("10n")
+    words = watched(circuit.circuit, circuit.lanes(), "alarm", [LET_GO]).words
+    assert words == "oscillates near net mid from 103.2 ms on, at about 42.6 kHz (followed with short steps)"
+
+
+def test_a_large_filter_capacitor_keeps_the_slow_turn_off_quiet() -> None:
+    circuit = latch("100n")
+    found = watched(circuit.circuit, circuit.lanes(), "alarm", [LET_GO])
+    assert found.words is None
+    assert lets_go(found) == pytest.approx(by_brute_force("100n"), abs=5e-6)
+
+
+def phase_shift(ends: float) -> Setup:
+    """A phase-shift oscillator whose supply rises slowly: it begins at some 100 kHz and never stops."""
+    return setup(
+        steps("G1", "feed", "0V", (0.0, 0.0), (ends, 24.0)),
+        resistor("R1", "feed", "c", "4k7"),
+        transistor("Q1", "c", "b", "0V", **{"class": "small npn"}),
+        capacitor("C1", "c", "x", "220p"),
+        resistor("R2", "x", "0V", "4k7"),
+        capacitor("C2", "x", "y", "220p"),
+        resistor("R3", "y", "0V", "4k7"),
+        capacitor("C3", "y", "b", "220p"),
+        resistor("R4", "c", "b", "470k"),
+        supply=None,
+        ends=ends,
+    )
+
+
+def test_an_oscillation_that_never_ends_is_unknown_past_the_work_bound() -> None:
+    circuit = phase_shift(10.0)
+    plain, _ = traced(circuit.circuit, circuit.lanes(), "alarm", ())
+    assert plain.failure(0) is None
+    found = watched(circuit.circuit, circuit.lanes(), "alarm", ())
+    assert found.unknown
+    assert found.words is not None
+    assert found.words.startswith("oscillates near net ")
+    assert found.words.endswith("what comes later is not known")
+
+
+def test_a_study_says_so_beside_the_verdict() -> None:
+    checks = {check.id: check for check in study(latch("10n").design).checks}
+    reason = checks["peak_collector_emitter:all:Q1"].reason
+    assert reason is not None
+    assert reason.startswith("alarm: oscillates near net mid from 103")
+    assert checks["peak_collector_emitter:all:Q1"].verdict is Verdict.PASS
+
+
+def test_a_study_is_quiet_where_nothing_oscillates() -> None:
+    checks = {check.id: check for check in study(latch("100n").design).checks}
+    assert checks["peak_collector_emitter:all:Q1"].reason is None
+
+
+def test_a_study_knows_no_margin_beyond_the_work_bound() -> None:
+    checks = {check.id: check for check in study(phase_shift(10.0).design).checks}
+    found = checks["peak_collector_emitter:all:Q1"]
+    assert (found.verdict, found.margin) == (Verdict.UNKNOWN, None)
+    assert "oscillates near net c" in str(found.reason)
+    assert "what comes later is not known" in str(found.reason)
