@@ -13,6 +13,7 @@ from .design.document import Design
 from .design.part import Part
 from .errors import DesignError, QuantityError
 from .parts import kinds
+from .parts.made import OF_THE_PLACE, resolved
 from .parts.suitability import unreadable
 from .preferred import next_down, next_up, series_for
 from .quantity import read, write
@@ -75,6 +76,27 @@ def with_part(design: Design, stage: str, part: Mapping[str, Any]) -> Design:
 
     def change(document: dict[str, Any]) -> None:
         _put_entry(_stage_in(document, stage).setdefault("parts", []), dict(part), ("ref",))
+
+    return _edited(design, change)
+
+
+def with_made_part(design: Design, ref: str, made: Mapping[str, Any], name: str) -> Design:
+    """A part with the data of a made part, copied in full with their sources; ``name`` says which one it was.
+
+    Designator, nets and what the place asks for stay, and so do value and tolerance where the made part has none.
+    """
+    part = design.part(ref)
+    if made.get("kind") != part.kind:
+        raise DesignError(
+            f"{_where(design, ref)}, field kind: it is a {part.kind} and no {made.get('kind')}; add a part"
+        )
+    before = part.model_dump(mode="json", by_alias=True, exclude_unset=True)
+    stays = {key: value for key, value in before.items() if key in (*OF_THE_PLACE, "value", "tolerance")}
+    after = {**stays, **resolved(made), "drawer": name}
+
+    def change(document: dict[str, Any]) -> None:
+        stage = _stage_in(document, design.stage_of(ref).name)
+        stage["parts"] = [after if each["ref"] == ref else each for each in stage["parts"]]
 
     return _edited(design, change)
 

@@ -70,13 +70,15 @@ BounceEntry = Annotated[
 class Part(Clause):
     """One component. Which fields a part may have depends on its kind; the fields of every kind are known here.
 
-    A datum may stand as a field of the part or under ``data``; :meth:`datum` finds it in either place.
+    A datum may stand as a field of the part or under ``data``; :meth:`datum` finds it in either place. ``drawer`` says
+    which made part its data were copied from, and is read by nothing.
     """
 
     ref: Ref = Field(examples=["R7"])
     kind: Key = Field(examples=["resistor"])
     pins: dict[Key, NetName] = Field(min_length=1, max_length=12, examples=[{"a": "supply", "b": "0V"}])
     class_: Text | None = Field(None, alias="class")
+    drawer: Text | None = Field(None, examples=["low-leak npn, version 2"])
     value: Text | None = Field(None, examples=["4k7"])
     tolerance: Text | None = Field(None, examples=["5 %"])
     rating: Entry | None = Field(None, examples=["0.25 W"])
@@ -151,7 +153,7 @@ class Part(Clause):
             raise DesignError(f"part {self.ref}, field {name}: {refusal}") from refusal
 
 
-_STRUCTURE = {"ref", "kind", "pins", "data", "law", "waveform", "bounce"}
+_STRUCTURE = {"ref", "kind", "pins", "drawer", "data", "law", "waveform", "bounce"}
 _ENTRIES = {field.alias or name for name, field in Part.model_fields.items()} - _STRUCTURE
 
 

@@ -1,54 +1,71 @@
-"""Generic classes of parts. All figures are common practice written down from memory: (min, typical, max) or one text.
+"""Generic classes of parts. All figures are common practice written down from memory.
 
-They stand in until the user replaces them by figures of the part at hand; whatever is made of them says ``class``.
+A figure is one text, (min, typical, max), or these with the test condition. They stand in until the user replaces them
+by figures of the part at hand; whatever is made of them says ``memory`` on the screen until then.
 """
 
 from __future__ import annotations
 
 from collections.abc import Mapping
 
-Figures = Mapping[str, str | tuple[str, str, str]]
+ClassFigure = str | tuple[str, str, str] | tuple[str, str, str, str]
+Figures = Mapping[str, ClassFigure]
+SOURCE = "memory"
+"""Who says the figures of every class."""
 
 _SMALL_TRANSISTOR: Figures = {
-    "gain": ("200", "300", "450"),
-    "v_be": ("0.58 V", "0.64 V", "0.70 V"),
+    "gain": ("200", "300", "450", "2 mA"),
+    "v_be": ("0.58 V", "0.64 V", "0.70 V", "2 mA"),
     "v_be_current": "2 mA",
-    "v_ce_sat": ("0.1 V", "0.1 V", "0.25 V"),
+    "v_ce_sat": ("0.1 V", "0.1 V", "0.25 V", "10 mA / 0.5 mA"),
     "saturation_current_at": "10 mA",
     "forced_gain": "20",
     "v_ceo": "45 V",
     "v_ebo": "5 V",
     "i_c_max": "100 mA",
-    "c_ob": ("3 pF", "3.5 pF", "4.5 pF"),
+    "c_ob": ("3 pF", "3.5 pF", "4.5 pF", "10 V"),
     "c_ob_bias": "10 V",
-    "c_ib": ("8 pF", "10 pF", "12 pF"),
+    "c_ib": ("8 pF", "10 pF", "12 pF", "0.5 V"),
     "c_ib_bias": "0.5 V",
-    "f_t": "200 MHz",
+    "f_t": ("150 MHz", "200 MHz", "300 MHz", "10 mA"),
     "f_t_current": "10 mA",
-    "i_cbo": ("0.2 nA", "1 nA", "15 nA"),
-    "i_cbo_doubling": "14.9 K",
-    "thermal_resistance": "200 K/W",
-    "power": "0.5 W",
+    "i_cbo": ("0.2 nA", "1 nA", "15 nA", "25 C"),
+    "i_cbo_doubling": ("14.9 K", "14.9 K", "14.9 K", "15 nA at 25 C to 5 uA at 150 C"),
+    "thermal_resistance": ("200 K/W", "200 K/W", "200 K/W", "junction to ambient"),
+    "power": ("0.5 W", "0.5 W", "0.5 W", "25 C"),
     "base_emitter_breakdown": "8 V",
     "early_voltage": "80 V",
 }
 _DRIVER_TRANSISTOR: Figures = {
     **_SMALL_TRANSISTOR,
-    "gain": ("60", "160", "400"),
-    "v_be": ("0.60 V", "0.66 V", "0.72 V"),
+    "gain": ("60", "160", "400", "100 mA .. 300 mA"),
+    "v_be": ("0.60 V", "0.66 V", "0.72 V", "10 mA"),
     "v_be_current": "10 mA",
-    "v_ce_sat": ("0.3 V", "0.3 V", "0.7 V"),
+    "v_ce_sat": ("0.3 V", "0.3 V", "0.7 V", "500 mA / 50 mA"),
     "saturation_current_at": "500 mA",
     "forced_gain": "10",
     "i_c_max": "500 mA",
-    "c_ob": ("10 pF", "12 pF", "15 pF"),
-    "c_ib": ("40 pF", "50 pF", "60 pF"),
-    "f_t": "150 MHz",
-    "i_cbo": ("1 nA", "5 nA", "100 nA"),
+    "c_ob": ("10 pF", "12 pF", "15 pF", "10 V"),
+    "c_ib": ("40 pF", "50 pF", "60 pF", "0.5 V"),
+    "f_t": ("100 MHz", "150 MHz", "200 MHz", "10 mA"),
+    "i_cbo": ("1 nA", "5 nA", "100 nA", "25 C"),
+}
+_TWO_AMPERE_TRANSISTOR: Figures = {
+    **_DRIVER_TRANSISTOR,
+    "gain": ("40", "100", "250", "1 A"),
+    "v_ce_sat": ("0.2 V", "0.2 V", "0.5 V", "1 A / 0.1 A"),
+    "saturation_current_at": "1 A",
+    "v_ceo": "60 V",
+    "i_c_max": "2 A",
+    "c_ob": ("20 pF", "30 pF", "40 pF", "10 V"),
+    "f_t": ("50 MHz", "100 MHz", "150 MHz", "50 mA"),
+    "f_t_current": "50 mA",
+    "thermal_resistance": ("125 K/W", "125 K/W", "125 K/W", "junction to ambient"),
+    "power": ("1 W", "1 W", "1 W", "25 C"),
 }
 _DARLINGTON: Figures = {
     **_DRIVER_TRANSISTOR,
-    "gain": ("750", "2000", "10000"),
+    "gain": ("750", "2000", "10000", "3 A"),
     "v_ceo": "80 V",
     "i_c_max": "8 A",
     "first_base_resistor": "8 kohm",
@@ -68,7 +85,7 @@ _SIGNAL_DIODE: Figures = {
     "forward_low_current": "1 mA",
     "forward_high": "0.72 V",
     "forward_high_current": "10 mA",
-    "reverse_current": ("1 nA", "5 nA", "25 nA"),
+    "reverse_current": ("1 nA", "5 nA", "25 nA", "20 V, 25 C"),
     "reverse_doubling": "10 K",
     "capacitance": "4 pF",
     "transit_time": "6 ns",
@@ -78,7 +95,11 @@ _SIGNAL_DIODE: Figures = {
 
 CLASSES: Mapping[str, Mapping[str, Figures]] = {
     "npn": {"small npn": _SMALL_TRANSISTOR, "0.5 A driver npn": _DRIVER_TRANSISTOR},
-    "pnp": {"small pnp": _SMALL_TRANSISTOR, "0.5 A driver pnp": _DRIVER_TRANSISTOR},
+    "pnp": {
+        "small pnp": _SMALL_TRANSISTOR,
+        "0.5 A driver pnp": _DRIVER_TRANSISTOR,
+        "2 A pnp": _TWO_AMPERE_TRANSISTOR,
+    },
     "darlington_npn": {"power Darlington": _DARLINGTON},
     "darlington_pnp": {"power Darlington": _DARLINGTON},
     "diode": {
@@ -89,7 +110,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "forward_low_current": "10 mA",
             "forward_high": "0.95 V",
             "forward_high_current": "1 A",
-            "reverse_current": ("10 nA", "50 nA", "5 uA"),
+            "reverse_current": ("10 nA", "50 nA", "5 uA", "rated voltage, 25 C"),
             "capacitance": "15 pF",
             "transit_time": "3 us",
             "v_rrm": "100 V",
@@ -100,7 +121,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
         "zener 0.5 W": {
             **_SIGNAL_DIODE,
             "test_current": "5 mA",
-            "slope_resistance": ("5 ohm", "10 ohm", "20 ohm"),
+            "slope_resistance": ("5 ohm", "10 ohm", "20 ohm", "5 mA"),
             "capacitance": "100 pF",
             "power": "0.5 W",
         }
@@ -112,7 +133,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "forward_high": "0.50 V",
             "forward_high_current": "1 A",
             "series_resistance": "110 mohm",
-            "reverse_current": ("20 uA", "100 uA", "0.5 mA"),
+            "reverse_current": ("20 uA", "100 uA", "0.5 mA", "40 V, 25 C"),
             "reverse_doubling": "15 K",
             "capacitance": "200 pF",
             "v_rrm": "40 V",
@@ -165,7 +186,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
         "timing capacitor, low drift": {
             "leakage_per_cv": "0.002",
             "leakage_least": "1 uA",
-            "drift": ("-5 %", "0 %", "5 %"),
+            "drift": ("-5 %", "0 %", "5 %", "over temperature"),
         },
         "film": {},
         "ceramic": {},

@@ -2,13 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from ..errors import CircuitError
 from ..quantity import read
-from .classes import CLASSES
+from .classes import CLASSES, Figures
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -29,7 +28,7 @@ class Figure:
         return self.typical, self.low, self.high
 
 
-def class_figures(part: Part) -> Mapping[str, str | tuple[str, str, str]]:
+def class_figures(part: Part) -> Figures:
     """The generic class a part names. Raises CircuitError when the name is not known for its kind."""
     name = part.entry("class")
     if name is None:
@@ -56,7 +55,7 @@ def figure(part: Part, key: str, unit: str) -> Figure | None:
     given_by_class = class_figures(part).get(key)
     if given_by_class is None:
         return None
-    texts = (given_by_class,) * 3 if isinstance(given_by_class, str) else given_by_class
+    texts = (given_by_class,) * 3 if isinstance(given_by_class, str) else given_by_class[:3]
     low, typical, high = (read(text, unit) for text in texts)
     return Figure(low, typical, high, "class")
 

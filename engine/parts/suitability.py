@@ -14,7 +14,7 @@ from .kind import FLAG, TEXT, Entry, Kind
 if TYPE_CHECKING:
     from ..design.part import Part
 
-_STRUCTURE = {"ref", "kind", "pins", "class_", "data", "law"}
+_STRUCTURE = {"ref", "kind", "pins", "class_", "drawer", "data", "law"}
 _NOT_READ = {"operated_by", "form", "follows", "waveform", "bounce", "class"}
 _LIMITS = ("min", "typical", "max")
 

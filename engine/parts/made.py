@@ -1,0 +1,106 @@
+"""Parts that the user makes of datasheet points, to be used in any design: what is kept, tried and copied.
+
+A made part is a part of a document without its designator and its nets. What it does not say for itself it has from a
+generic class; using it copies both into the design, each figure with its source, so that no later change of the class
+or of the made part moves an old revision.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from ..design.document import Design
+from ..design.part import Part
+from ..errors import CircuitError, DesignError
+from ..primitives.builder import Builder
+from . import kinds
+from .classes import SOURCE, ClassFigure
+from .figures import class_figures
+from .kind import TEXT, Kind
+from .suitability import unsuitable
+
+OF_THE_PLACE = ("ref", "pins", "drawer", "operated_by", "follows", "setting", "waveform")
+"""What a part has from its place in a design, not from its making."""
+_PLAIN = ("value", "tolerance")
+_STAND_IN = {"ohm": "1k", "F": "1u", "V": "6 V", "H": "1 mH"}
+
+
+def kept(part: Part) -> dict[str, Any]:
+    """A part of a design as a made part."""
+    document = part.model_dump(mode="json", by_alias=True, exclude_unset=True)
+    return {key: value for key, value in document.items() if key not in OF_THE_PLACE}
+
+
+def tried(document: Mapping[str, Any]) -> Part:
+    """The made part as a part, after its law was made once. Raises DesignError or CircuitError in one line."""
+    name = document.get("kind")
+    kind = kinds().get(str(name))
+    if kind is None:
+        raise DesignError(f"there is no part kind '{name}'; write one of {', '.join(sorted(kinds()))}")
+    part = _as_part(document, kind)
+    for field, words in unsuitable(part, kind):
+        raise DesignError(f"field {field}: {words}")
+    kind.expand(part, Builder(12.0))
+    return part
+
+
+def _as_part(document: Mapping[str, Any], kind: Kind) -> Part:
+    pins = {pin: f"n{at}" for at, pin in enumerate(kind.pins[-1] if _polarised(document) else kind.pins[0])}
+    whole = {**document, "ref": f"{kind.letters[0]}1", "pins": pins}
+    value = kind.fields.get("value")
+    if value is not None and value.needed and "value" not in whole:
+        whole["value"] = _STAND_IN.get(value.unit, "1")
+    stage = {"name": "drawer", "parts": [whole]}
+    # Loaded as a design: that is where wrong documents are refused in words.
+    design = Design.load({"stagebook": 1, "name": "drawer", "stages": [stage], "sequences": {"alarm": {"ends": "1 s"}}})
+    return design.parts[0]
+
+
+def _polarised(document: Mapping[str, Any]) -> bool:
+    return document.get("class") == "electrolytic"
+
+
+def resolved(document: Mapping[str, Any]) -> dict[str, Any]:
+    """The made part with all figures of its class written out, each as from memory with its test condition.
+
+    Raises CircuitError for a class that the kind does not have.
+    """
+    kind = kinds()[document["kind"]]
+    part = _as_part(document, kind)
+    known = {**kind.fields, **kind.data}
+    fields = {key: value for key, value in document.items() if key != "data"}
+    data = dict(document.get("data", {}))
+    for key, given in class_figures(part).items():
+        if key not in known or known[key].unit == TEXT or part.entry(key) is not None:
+            continue
+        if key in _PLAIN:
+            fields[key] = given if isinstance(given, str) else given[1]
+        else:
+            data[key] = _datum(given, str(document["class"]))
+    return fields | ({"data": data} if data else {})
+
+
+def _datum(given: ClassFigure, name: str) -> dict[str, Any]:
+    limits = {"typical": given} if isinstance(given, str) else dict(zip(("min", "typical", "max"), given, strict=False))
+    at = f", at {given[3]}" if not isinstance(given, str) and len(given) == 4 else ""
+    return {**limits, "source": SOURCE, "condition": f"class {name}{at}"}
+
+
+def from_memory(part: Part) -> tuple[str, ...]:
+    """The keys of a part's figures that come from memory: of its class, or written out as such."""
+    kind = kinds().get(part.kind)
+    if kind is None:
+        return ()
+    try:
+        given = class_figures(part)
+    except CircuitError:
+        given = {}
+    found = []
+    for key, entry in {**kind.fields, **kind.data}.items():
+        if entry.unit == TEXT:
+            continue
+        datum = part.datum(key)
+        if (datum is None and part.entry(key) is None and key in given) or (datum and datum.source == SOURCE):
+            found.append(key)
+    return tuple(found)
