@@ -19,6 +19,7 @@ from ..primitives.columns import SUPPLY
 from ..primitives.signals import maximum, minimum, voltage
 from ..quantity import read
 from .alarm_state import TOLD_BY, AlarmState, alarm_states, standby
+from .base_capacitance import held_by
 from .charge_trial import SETTLE, Put, charge_trial
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
@@ -135,13 +136,7 @@ def _hand(view: View, state: AlarmState, net: str, seen: Seen, demand: Floats) -
     latch = state.latch
     if latch is None or net != latch.npn.pins["base"] or SUPPLY not in seen.lanes:
         return None
-    figures = [view.datum(latch.npn, key, "F") for key in ("c_ob", "c_ib")]
-    total = sum((f.typical for f in figures if f is not None), 0.0)
-    total += sum(read(s.value, "F") for s in view.design.strays if net in s.between)
-    held = np.full(seen.lanes.count, total)
-    for _, part in view.parts_of("capacitor"):
-        if net in part.pins.values() and set(part.pins.values()) & {RETURN, "supply"}:
-            held = held + seen.lanes[part.ref, "value"]
+    held = held_by(view, seen.lanes, net)
     return np.asarray(1.0 - demand / (held * latch.turn_on(seen.lanes)[0]))
 
 

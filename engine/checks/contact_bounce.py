@@ -1,0 +1,218 @@
+"""Check 17: is a bouncing contact ignored, and is a true event of a contact accepted?
+
+Two trials in stand-by. A burst of bounces that ends where it began is made ever longer until there is an alarm; an
+event that begins with the contact's bounce is made ever shorter until there is none.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+
+import numpy as np
+
+from ..circuit.timeline import Timeline
+from ..design.part import Part
+from ..design.requirement import Requirement
+from ..design.sequence import ContactEvent
+from ..errors import CircuitError
+from ..kernel.layout import Floats
+from ..primitives.columns import Lanes
+from ..quantity import read
+from ..run import Observed
+from .alarm_state import TOLD_BY, alarm_states, standby
+from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .seen import Seen
+from .trial import Trial
+from .view import View
+
+SETTLE = 0.2  # s after the event at which the last look is taken, where the requirement gives none
+TIMES = 4  # interruptions of a burst, where the requirement gives none
+BURSTS = 3e-3, 100.0  # of the trial, in lengths of the longest bounce
+EVENTS = 30.0, 3e-3  # of the trial, in lengths of the shortest true event
+
+
+def bounce_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every contact whose bounce a requirement wants to be ignored."""
+    for requirement, part in _contacts(check, view):
+        yield _bounce_ask(check, view, requirement, part)
+
+
+def acceptance_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every contact whose events a requirement wants to be accepted."""
+    for requirement, part in _contacts(check, view):
+        yield _acceptance_ask(check, view, requirement, part)
+
+
+def _contacts(check: Check, view: View) -> Iterator[tuple[Requirement, Part]]:
+    for requirement in view.design.requirements:
+        if requirement.check == check.slug:
+            if requirement.of is None or not view.design.has_part(requirement.of):
+                raise CircuitError(f'requirement {check.slug}: write "of", the contact it is about, such as "S1"')
+            part = view.design.part(requirement.of)
+            if part.kind != "contact" or part.operated_by is not None:
+                raise CircuitError(
+                    f"requirement {check.slug} of {part.ref}: it is no contact that events move; name one"
+                )
+            yield requirement, part
+
+
+def _longest_bounce(view: View, requirement: Requirement | None, part: Part) -> float | None:
+    """Of the requirement, of the contact's data, or of an event of the contact in any sequence."""
+    if requirement is not None and requirement.max is not None:
+        return read(requirement.max, "s")
+    datum = view.datum(part, "bounce", "s")
+    if datum is not None:
+        return datum.high
+    events = [e for s in view.design.sequences.values() for e in s.events if isinstance(e, ContactEvent)]
+    lasting = [read(e.bounce.for_, "s") for e in events if e.part == part.ref and e.bounce is not None]
+    return max(lasting, default=None)
+
+
+def _active(view: View, sequence: str, part: Part) -> str:
+    """The state of a contact in its event: what the sequence first does with it, else what it is not at rest."""
+    for event in view.design.sequences[sequence].events:
+        if isinstance(event, ContactEvent) and event.part == part.ref:
+            return "closed" if event.event == "close" else "open"
+    return "open" if part.form == "break" else "closed"
+
+
+def _trial(
+    view: View,
+    requirement: Requirement,
+    sequence: str,
+    key: str,
+    drive: Callable[[Timeline, Floats, float], None],
+    longest: float,
+    knobs: tuple[float, float],
+    accepts: bool,
+) -> Trial:
+    """``drive(line, knob, over)`` moves the contact so that its event is over at the same instant in every lane."""
+    states = alarm_states(view)
+    settle = view.extra(requirement, "settle", "s") or SETTLE
+    over = 1e-3 * longest + longest
+
+    def gives_in(lanes: Lanes, observed: Observed) -> Mask:
+        came = np.any([state.tripped(lanes, observed, over, settle) for state in states], axis=0)
+        return np.asarray(came != accepts)
+
+    return Trial(
+        key=key,
+        sequence=sequence,
+        start=standby(view, sequence),
+        drive=lambda line, knob: drive(line, knob, over),
+        ends=over + settle,
+        safe=knobs[0],
+        severe=knobs[1],
+        rows=tuple(row for state in states for row in state.watch(over, settle)),
+        gives_in=gives_in,
+    )
+
+
+def _bounce_ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
+    stage = view.design.stage_of(part.ref)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    longest = _longest_bounce(view, requirement, part)
+    if longest is None or longest <= 0.0:
+        missing = f"bounce of {part.ref}, or max in the requirement contact_bounce"
+        return unknown(check, stage.name, part.ref, sequence, required, missing)
+    if not alarm_states(view, stage):
+        return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
+    times = int(view.extra(requirement, "times", "") or TIMES)
+    active = _active(view, sequence, part)
+    rest = "open" if active == "closed" else "closed"
+
+    def drive(line: Timeline, knob: Floats, over: float) -> None:
+        line.bounce(part.ref, over - knob, active, knob, times)
+        line.set_part(part.ref, over, rest)
+
+    knobs = BURSTS[0] * longest, BURSTS[1] * longest
+    trial = _trial(view, requirement, sequence, f"bounce {part.ref}", drive, knobs[1], knobs, accepts=False)
+
+    def judge(seen: Seen) -> Judged:
+        demand = np.full(seen.lanes.count, longest)
+        edge = seen.edges.get(trial.key)
+        if edge is None:
+            return Judged(np.full(seen.lanes.count, np.nan), demand=demand)
+        words = check.words
+        judged = ratio(demand, edge.knob, [(edge.missing, words["missing"]), (edge.always, words["always"])])
+        margin = np.where(edge.never, 1.0, judged.margin)
+        return Judged(margin, demand, edge.knob, outcomes=(*judged.outcomes, (edge.never, words["immune"])))
+
+    screen = min(longest / (1.0 - required), knobs[1]) if required < 1.0 else None
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, trial=trial, screen=screen)
+
+
+def _acceptance_ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
+    stage = view.design.stage_of(part.ref)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    if requirement.min is None:
+        missing = f"min, the shortest true event, in the requirement acceptance of {part.ref}"
+        return unknown(check, stage.name, part.ref, sequence, required, missing)
+    if not alarm_states(view, stage):
+        return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
+    shortest = read(requirement.min, "s")
+    if shortest <= 0.0:
+        raise CircuitError(f"requirement acceptance of {part.ref}, min: {requirement.min} cannot be; write a time")
+    bounce = _longest_bounce(view, requirement, part) or 0.0
+    times = int(view.extra(requirement, "times", "") or TIMES)
+    active = _active(view, sequence, part)
+    rest = "open" if active == "closed" else "closed"
+
+    def drive(line: Timeline, knob: Floats, over: float) -> None:
+        begin = over - 1.0 / knob
+        if bounce > 0.0:
+            line.bounce(part.ref, begin, active, np.minimum(bounce, 1.0 / knob), times)
+        else:
+            line.set_part(part.ref, begin, active)
+        line.set_part(part.ref, over, rest)
+
+    knobs = 1.0 / (EVENTS[0] * shortest), 1.0 / (EVENTS[1] * shortest)
+    trial = _trial(
+        view, requirement, sequence, f"acceptance {part.ref}", drive, EVENTS[0] * shortest, knobs, accepts=True
+    )
+
+    def judge(seen: Seen) -> Judged:
+        capability = np.full(seen.lanes.count, shortest)
+        edge = seen.edges.get(trial.key)
+        if edge is None:
+            return Judged(np.full(seen.lanes.count, np.nan), capability=capability)
+        words = check.words
+        return ratio(1.0 / edge.knob, capability, [(edge.missing, words["missing"]), (edge.always, words["always"])])
+
+    screen = 1.0 / (shortest * (1.0 - required)) if required < 1.0 else None
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, trial=trial, screen=screen)
+
+
+CHECKS = (
+    Check(
+        number=17,
+        slug="contact_bounce",
+        title="contact bounce",
+        unit="s",
+        required=0.3,
+        formula="D = longest bounce of the contact, C = longest burst of bounces that raises no alarm",
+        asks=bounce_asks,
+        words={
+            "missing": "stand-by never came",
+            "always": "there is an alarm with the shortest burst, or by itself",
+            "immune": "no burst raises an alarm, however long",
+        },
+        worst="small capacitor, low threshold",
+    ),
+    Check(
+        number=17,
+        slug="acceptance",
+        title="acceptance",
+        unit="s",
+        required=0.3,
+        formula="D = shortest event of the contact that raises the alarm, C = shortest true event",
+        asks=acceptance_asks,
+        words={
+            "missing": "stand-by never came",
+            "always": "never fired: not by an event of thirty times that length either",
+        },
+        worst="large capacitor, high threshold, low supply",
+    ),
+)

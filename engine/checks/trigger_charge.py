@@ -1,0 +1,183 @@
+"""Check 4: does the trigger's capacitor bring enough charge to fire the latch?
+
+The trial makes the capacitor smaller until what the sequence does to fire the latch no longer fires it. Demand is the
+charge of the smallest one that does, capability that of the one in the design, at the same swing of its driven side.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..circuit.timeline import Timeline
+from ..design.part import Part, Stage
+from ..design.sequence import ConnectSupply, ContactEvent, DisconnectSupply, RampLevel
+from ..kernel.layout import Floats
+from ..primitives.columns import SUPPLY, Lanes
+from ..primitives.signals import Anchor, crossing, maximum, minimum, voltage
+from ..quantity import read
+from ..run import Observed
+from .alarm_state import AlarmState
+from .base_capacitance import held_by
+from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .complementary_latch import TRIP_CURRENT, Latch, latches
+from .seen import Seen
+from .trial import Trial
+from .view import View
+
+LARGEST, SMALLEST = 30.0, 0.01  # capacitors of the trial, in that of the design
+BEFORE = 1e-3  # s before the event that fires the latch
+SETTLE = 0.1  # s after it at which the last look is taken, where the requirement gives none
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every trigger capacitor."""
+    found = list(latches(view))
+    for stage, _, part in view.with_role("trigger_capacitor"):
+        own = [latch for latch in found if latch.stage is stage] or found
+        yield _ask(check, view, stage, part, own[0] if own else None)
+
+
+def _fires(view: View, sequence: str, from_: str | None) -> tuple[float, float] | None:
+    """When the event happens that fires the latch, and how long it takes: the first that is none of the supply."""
+    if from_ is not None:
+        anchor = view.anchor(from_, sequence)
+        return None if anchor.row is not None else (anchor.by, 0.0)
+    for event in sorted(view.design.sequences[sequence].events, key=lambda e: read(e.at, "s")):
+        if not isinstance(event, ConnectSupply | DisconnectSupply):
+            lasts = 0.0
+            if isinstance(event, RampLevel):
+                lasts = read(event.for_, "s")
+            elif isinstance(event, ContactEvent) and event.bounce is not None:
+                lasts = read(event.bounce.for_, "s")
+            return read(event.at, "s"), lasts
+    return None
+
+
+def _ask(check: Check, view: View, stage: Stage, part: Part, latch: Latch | None) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    if latch is None:
+        missing = "the roles latch_npn and latch_pnp of the latch that it fires"
+        return unknown(check, stage.name, part.ref, sequence, required, missing)
+    fires = _fires(view, sequence, None if requirement is None else requirement.from_)
+    if fires is None:
+        missing = f"an event in sequence {sequence} that fires the latch, or its time as from in the requirement"
+        return unknown(check, stage.name, part.ref, sequence, required, missing)
+    at, lasts = fires
+    before = min(BEFORE, 0.5 * at)
+    settle = view.extra(requirement, "settle", "s") or SETTLE
+    over = before + lasts
+    state = AlarmState(f"{latch.stage.name} {latch.npn.ref}", latch, None)
+    begin, end = Anchor(at - before), Anchor(at + lasts + settle)
+    driven = _driven(latch, part)
+    top, bottom = maximum(voltage(driven), begin, end), minimum(voltage(driven), begin, end)
+    lifted = [
+        crossing(lift, _turn_on(view, who), True, begin)
+        for lift, who in zip(latch.lifts, (latch.npn, latch.pnp), strict=True)
+    ]
+    key = part.ref, "value"
+
+    def drive(line: Timeline, knob: Floats) -> None:
+        """What the sequence does is all that happens."""
+
+    def gives_in(lanes: Lanes, observed: Observed) -> Mask:
+        return ~state.tripped(lanes, observed, over, settle)
+
+    trial = Trial(
+        key=f"trigger charge {part.ref}",
+        sequence=sequence,
+        start=begin,
+        drive=drive,
+        ends=over + settle,
+        safe=1.0 / LARGEST,
+        severe=1.0 / SMALLEST,
+        rows=state.watch(over, settle),
+        gives_in=gives_in,
+        onward=True,
+        vary=lambda lanes, knob: lanes.replaced({key: lanes[key] / knob}),
+    )
+
+    def judge(seen: Seen) -> Judged:
+        swing = seen.value(top, sequence) - seen.value(bottom, sequence)
+        brought = seen.lanes[key] * swing
+        edge = seen.edges.get(trial.key)
+        if edge is None:
+            return Judged(np.full(seen.lanes.count, np.nan), capability=brought)
+        between = np.abs(seen.time(lifted[0], sequence) - seen.time(lifted[1], sequence))
+        outcomes = [
+            (edge.missing, check.words["missing"]),
+            (edge.always, check.words["always"]),
+        ]
+        hand = _hand(latch, part, seen, swing, between)
+        return ratio(brought / edge.knob, brought, outcomes, hand)
+
+    screen = 1.0 / (1.0 - required) if required < 1.0 else None
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, (top, bottom, *lifted), trial, screen)
+
+
+def _turn_on(view: View, part: Part) -> float:
+    base_voltage = view.bench(part.ref).base_voltage
+    assert base_voltage is not None
+    return float(base_voltage(view.circuit.nominal(), TRIP_CURRENT)[0])
+
+
+def _driven(latch: Latch, part: Part) -> str:
+    """The side of the trigger capacitor that is further from the latch: not on a net of its transistors or of a diode
+    that leads to one."""
+    near = {*latch.npn.pins.values(), *latch.pnp.pins.values()}
+    near |= {net for diode in _diodes(latch) for net in diode.pins.values()}
+    pins = list(part.pins.values())
+    return next((net for net in pins if net not in near), pins[0])
+
+
+def _diodes(latch: Latch) -> list[Part]:
+    """The diodes that lead to a base of the latch."""
+    bases = {latch.npn.pins["base"], latch.pnp.pins["base"]}
+    return [part for _, part in latch.view.parts_of("diode", "schottky") if bases & set(part.pins.values())]
+
+
+def _hand(latch: Latch, part: Part, seen: Seen, swing: Floats, between: Floats) -> Floats | None:
+    """1 - D/C with D = C_node V_BE + (V_BE/R_BE + I_C/h_FE) t_regeneration and C = C_t (dV - V_BE - V_D).
+
+    I_C turns the pnp on through its resistor; t_regeneration is read from the sequence: from one transistor's turning
+    on to the other's.
+    """
+    view, npn = latch.view, latch.npn
+    resistors = [view.base_emitter_resistor(latch.stage, role) for role in ("latch_npn", "latch_pnp")]
+    gain = view.bench(npn.ref).gain
+    if gain is None or resistors[0] is None or SUPPLY not in seen.lanes:
+        return None
+    npn_on, pnp_on = latch.turn_on(seen.lanes)
+    base = npn.pins["base"]
+    held = held_by(view, seen.lanes, base, part.ref)
+    collector = 0.0 if resistors[1] is None else pnp_on / seen.lanes[resistors[1].ref, "value"]
+    drained = npn_on / seen.lanes[resistors[0].ref, "value"] + collector / np.asarray(gain(seen.lanes))
+    series = [d for d in _diodes(latch) if base in d.pins.values() and set(d.pins.values()) & set(part.pins.values())]
+    drops = [view.datum(diode, "forward_low", "V") for diode in series]
+    drop = sum((figure.typical for figure in drops if figure is not None), 0.0)
+    demand = held * npn_on + drained * between
+    capability = seen.lanes[part.ref, "value"] * (swing - npn_on - drop)
+    safe = np.where(capability > 0.0, capability, 1.0)
+    return np.where(capability > 0.0, 1.0 - demand / safe, -1.0)
+
+
+CHECKS = (
+    Check(
+        number=4,
+        slug="trigger_charge",
+        title="trigger charge",
+        unit="C",
+        required=0.5,
+        formula="D = charge of the smallest trigger capacitor that fires the latch, C = charge of the one there is",
+        asks=asks,
+        words={
+            "missing": "the event that fires the latch never came",
+            "always": "never fired: not with thirty times the capacitor either",
+        },
+        worst="cold, low supply, small trigger capacitor",
+        by_hand="1 - (C_node V_BE + (V_BE/R_BE + I_C/h_FE) t_regeneration) / (C_t (dV - V_BE - V_D))",
+    ),
+)
