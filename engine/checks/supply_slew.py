@@ -35,7 +35,7 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
         yield _ask(check, latch)
 
 
-def _connection(view: View, sequence: str) -> tuple[float, float]:
+def connection(view: View, sequence: str) -> tuple[float, float]:
     """When the sequence connects the supply, and how fast."""
     for event in view.design.sequences[sequence].events:
         if isinstance(event, ConnectSupply):
@@ -51,7 +51,7 @@ def _ask(check: Check, latch: Latch) -> Ask:
     missing = _missing_capacitance(view, npn) or _missing_capacitance(view, pnp)
     if missing is not None:
         return unknown(check, stage.name, npn.ref, sequence, required, missing)
-    at, rise = _connection(view, sequence)
+    at, rise = connection(view, sequence)
     steepest = slew(latch.rail, Anchor(at), Anchor(at + rise + WATCHED))
 
     # The supply is up at the same instant in every lane of the trial, so that all are looked at soon after it.

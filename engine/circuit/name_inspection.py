@@ -149,13 +149,21 @@ def _requirement_faults(
         return
     moments = design.sequences[requirement.sequence or "alarm"].moments
     for field, text in (("from", requirement.from_), ("to", requirement.to)):
-        if text is None or text in moments:
+        if text is None or text in moments or _is_time(text):
             continue
         try:
             faults = list(_anchor_faults(read_anchor(text), refs, nets))
         except QuantityError as refusal:
             faults = [f"{refusal}" + (f", or a moment ({', '.join(moments)})" if moments else "")]
         yield from (f"field {field}: {words}" for words in faults)
+
+
+def _is_time(text: str) -> bool:
+    try:
+        read(text, "s")
+    except QuantityError:
+        return False
+    return True
 
 
 def _anchor_faults(anchor: Anchor, refs: Mapping[str, str], nets: Collection[str]) -> Iterator[str]:
