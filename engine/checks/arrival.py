@@ -33,10 +33,16 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
         missing = f"a net shared by {resistor.ref} and {capacitor.ref}"
         return unknown(check, stage.name, capacitor.ref, sequence, required, missing)
     load = view.load(stage)
-    if load is None:
+    asked = requirement is not None and requirement.from_ is not None and requirement.to is not None
+    if load is None and not asked:
         missing = "operating_minimum of the part in the role load, whose going off tells when the timer has run out"
         return unknown(check, stage.name, capacitor.ref, sequence, required, missing)
-    start, end = (Anchor(0.0, view.event(f"{load.ref} {change}")) for change in ("on", "off"))
+    if requirement is not None and requirement.from_ is not None and requirement.to is not None:
+        start = view.anchor(requirement.from_, sequence)
+        end = view.anchor(requirement.to, sequence, start)
+    else:
+        assert load is not None
+        start, end = (Anchor(0.0, view.event(f"{load.ref} {change}")) for change in ("on", "off"))
     reached = maximum(voltage(net), start, end)
     rail = maximum(voltage(far), start)
 

@@ -94,3 +94,12 @@ def test_the_load_of_the_timers_own_stage_tells_when_it_runs_out() -> None:
     of = type(timer(None)).load({**document, "stages": [other, *document["stages"]]})
     found = margin(of, "arrival", "C1")
     assert (found.margin, found.outcome) == (pytest.approx(1.0 / 3.0, abs=1e-3), None)
+
+
+def test_its_window_may_be_given_where_no_load_tells_it() -> None:
+    # As above, watched from and to levels of the capacitor itself: D = 6 V, C = 9 V without leakage.
+    window = {"check": "arrival", "of": "C1", "from": "tc above 0.1 V", "to": "tc above 6 V"}
+    found = margin(timer(None, requirements=[window], below_supply="1 V"), "arrival", "C1")
+    assert found.margin == pytest.approx(1.0 - 6.0 / 9.0, abs=2e-3)
+    # Without it the load tells, which goes off at 8 V.
+    assert margin(timer(None, below_supply="1 V"), "arrival", "C1").margin == pytest.approx(1.0 / 9.0, abs=2e-3)

@@ -1,0 +1,72 @@
+"""Battery backup: a battery behind a diode that takes over when the supply goes, kept charged by a trickle."""
+
+from __future__ import annotations
+
+from ..parts.battery import CURVES
+from .kind import RETURN_PORT, WORD, Made, Place, Port, Setting, StageKind, Wire
+from .plan import RETURN, Plan
+
+CELLS = {"lead-acid 12 V": ("lead-acid 7 Ah", 1, 13.6), "lead-acid 24 V": ("lead-acid 7 Ah", 2, 27.2)}
+"""Class, batteries in series and float voltage in V (2.27 V a cell, from memory)."""
+V_SUPPLY_DIODE, V_BATTERY_DIODE, V_TRICKLE_DIODE = 0.85, 0.45, 0.65
+
+
+def _make(plan: Plan) -> Made:
+    generic, count, full = CELLS[plan.text("battery")]
+    feed, rail, plus, charge = plan.port("feed"), plan.port("rail"), plan.net("plus"), plan.net("charge")
+    trickle = plan.above_zero("trickle")
+    room = plan.supply.nominal - V_TRICKLE_DIODE - full
+    if room <= 0.2:
+        raise plan.refused(
+            "battery", f"{plan.supply.nominal:.3g} V cannot charge it to {full:g} V; write a smaller battery"
+        )
+    plan.diode(feed, rail, "reverse_diode", name="1 A rectifier")
+    plan.diode(plus, rail, "battery_diode", kind="schottky", name="1 A Schottky")
+    plan.resistor(room / trickle, feed, charge, "trickle_resistor", snap="up")
+    plan.diode(charge, plus, "trickle_diode")
+    below = RETURN
+    for number in range(count, 0, -1):
+        above = plus if number == 1 else plan.net(f"cell_{number}")
+        plan.part(
+            "BT",
+            "battery",
+            {"plus": above, "minus": below},
+            "battery" if number == 1 else f"battery_{number}",
+            **{"class": generic},
+        )
+        below = above
+    low = min(plan.supply.min - V_SUPPLY_DIODE, count * CURVES[generic][1][1] - V_BATTERY_DIODE)
+    lost = {
+        "events": [
+            {"at": "0 s", "event": "connect supply", "rise": "20 ms"},
+            {"at": "2 s", "event": "disconnect supply"},
+        ],
+        "ends": "4 s",
+        "moments": {"standby": "1.9 s", "on_battery": "3.5 s"},
+    }
+    return Made(rail_drop=max(V_SUPPLY_DIODE, plan.supply.min - low), sequences={"supply_lost": lost})
+
+
+KIND = StageKind(
+    name="battery_backup",
+    title="battery backup",
+    place=Place.FEED,
+    help=(
+        "Supply and battery feed one rail through a diode each, so that the higher one does; a resistor and a diode"
+        " keep the battery charged. R = (V_supply - V_D - V_float)/I_trickle, next higher value; the trickle must"
+        " outweigh self-discharge (lead-acid 3 % a month: 0.3 mA of 7 Ah) and stay below what the battery bears for"
+        " ever (C/100). Hours come from stand-by and alarm current, age and cold. Source: common practice, from"
+        " memory."
+    ),
+    ports=(
+        Port("feed", Wire.RAIL, "the supply as it arrives"),
+        Port("rail", Wire.NEW_RAIL, "the rail that goes on when the supply is gone"),
+        RETURN_PORT,
+    ),
+    settings=(
+        Setting("battery", WORD, "lead-acid 12 V", "what stands by", tuple(CELLS)),
+        Setting("trickle", "A", "5 mA", "charging current when the battery is full"),
+    ),
+    make=_make,
+    takes=(),
+)

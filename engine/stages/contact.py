@@ -1,0 +1,91 @@
+"""Contacts that start an alarm: normally open or normally closed, at the end of a lead."""
+
+from __future__ import annotations
+
+from functools import partial
+
+from ..quantity import write
+from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Json, Made, Place, Sense, Setting, StageKind
+from .plan import RETURN, Plan
+
+LEAD_INSULATION = "20M"  # of the whole lead against 0V, wet, from memory
+PER_METRE = {"resistance": "0.08 ohm/m", "inductance": "0.6 uH/m", "capacitance": "100 pF/m"}
+"""A pair of 0.22 mm2, there and back: from memory."""
+_SETTINGS = (
+    Setting("wetting", "A", "1 mA", "least current through the closed contact: 1 mA silver, 10 uA gold"),
+    Setting("bounce", "s", "2 ms", "how long it bounces"),
+    Setting("held", "s", "1 s", "how long the event lasts"),
+    Setting("lead", "m", "0 m", "length of the lead to it; 0 for none"),
+)
+
+
+def _make(plan: Plan, normally_open: bool) -> Made:
+    rail, out = plan.port("rail"), plan.port("out")
+    ohms = plan.rail.min / plan.above_zero("wetting")
+    far = _lead(plan, out)
+    if normally_open:
+        contact = plan.part("S", "contact", {"a": rail, "b": far}, "contact", form="make")
+        value = plan.resistor(ohms, out, RETURN, "pull_resistor", snap="down")
+        drive = Drive(Sense.LEVEL)
+    else:
+        contact = plan.part("S", "contact", {"a": far, "b": RETURN}, "contact", form="break")
+        value = plan.resistor(ohms, rail, out, "pull_resistor", snap="down")
+        drive = Drive(Sense.LEVEL, ohms=value)
+    begins, ends = ("close", "open") if normally_open else ("open", "close")
+    bounce = plan.number("bounce")
+    settles: Json = {"bounce": {"for": write(bounce, "s"), "times": 3}} if bounce > 0.0 else {}
+    acts = (
+        (0.0, {"event": begins, "part": contact, **settles}),
+        (plan.above_zero("held"), {"event": ends, "part": contact}),
+    )
+    return Made(output=drive, acts=acts, lasts=plan.above_zero("held"))
+
+
+def _lead(plan: Plan, net: str) -> str:
+    """The far end of the lead to the contact; ``net`` itself where there is none."""
+    metres = plan.number("lead")
+    if metres <= 0.0:
+        return net
+    far = plan.net("far")
+    plan.part(
+        "W",
+        "lead",
+        {"from": net, "to": far},
+        "lead",
+        length=write(metres, "m"),
+        insulation=LEAD_INSULATION,
+        **PER_METRE,
+    )
+    return far
+
+
+KINDS = (
+    StageKind(
+        name="contact_no",
+        title="contact, normally open",
+        place=Place.SENSE,
+        help=(
+            "A contact that closes to the rail, with a resistor that pulls its net to 0V while it is open. R = V_min /"
+            " wetting current, next lower preferred value: an oxide film wants 1 mA on silver, 10 uA on gold; a low R"
+            " also outweighs the leakage of a wet lead. Source: common practice, from memory."
+        ),
+        ports=(QUIET_PORT, OUT_PORT, RETURN_PORT),
+        settings=_SETTINGS,
+        make=partial(_make, normally_open=True),
+        takes=(),
+    ),
+    StageKind(
+        name="contact_nc",
+        title="contact, normally closed",
+        place=Place.SENSE,
+        help=(
+            "A contact that holds its net at 0V until it opens, or its lead is cut, and a resistor pulls the net up."
+            " R = V_min / wetting current, next lower preferred value; it is the source of whatever follows, so the"
+            " next stage counts it into its own base resistor. Source: common practice, from memory."
+        ),
+        ports=(QUIET_PORT, OUT_PORT, RETURN_PORT),
+        settings=_SETTINGS,
+        make=partial(_make, normally_open=False),
+        takes=(),
+    ),
+)

@@ -1,0 +1,35 @@
+"""Loads that a driver brings along or that stand as a stage of their own: sounder and piezo element."""
+
+from __future__ import annotations
+
+from ..quantity import write
+from .kind import WORD, Setting
+from .plan import Plan
+
+NONE = "none"
+LOAD_SETTINGS = (
+    Setting("load", WORD, "sounder", "what it switches; none: the next stage of the row", ("sounder", "piezo", NONE)),
+    Setting("current", "A", "150 mA", "largest current of the load at the nominal supply"),
+    Setting("works_from", "V", "", "the load counts as on above it; empty: half of the nominal supply"),
+    Setting("sound_level", "dB", "95 dB", "of a sounder at 1 m"),
+)
+TYPICAL = 0.8  # of the largest current, from memory
+
+
+def works_from(plan: Plan) -> float:
+    """The voltage above which the load counts as on."""
+    return plan.above_zero("works_from") if plan.text("works_from") else 0.5 * plan.rail.nominal
+
+
+def add_load(plan: Plan, kind: str, plus: str, minus: str) -> str:
+    """The load between two nets, in the role ``load``; returns its designator."""
+    current = plan.above_zero("current")
+    data: dict[str, object] = {
+        "current": {"typical": write(TYPICAL * current, "A"), "max": write(current, "A"), "source": "memory"},
+        "rated_voltage": write(plan.supply.nominal, "V"),
+        "operating_minimum": write(works_from(plan), "V"),
+        "sound_level": {"typical": plan.text("sound_level"), "source": "memory"},
+    }
+    if kind == "piezo":
+        data["capacitance"] = "20 nF"
+    return plan.part("LS", kind, {"plus": plus, "minus": minus}, "load", data=data)

@@ -1,0 +1,80 @@
+"""Low-side drivers: a saturated npn transistor, or a Darlington where little base current is at hand."""
+
+from __future__ import annotations
+
+from functools import partial
+
+from ..quantity import write
+from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
+from .loads import LOAD_SETTINGS, NONE, add_load
+from .plan import RETURN, V_BE, Plan
+
+BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
+LEAST_BLEED, MOST_BLEED = 1e3, 47e3  # ohm
+
+
+def _base(plan: Plan, kind: str, junctions: int) -> tuple[float, float]:
+    """Base current in A, and the base-emitter resistor in ohm that takes little of it."""
+    load = plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
+    base = plan.above_zero("overdrive") * load / plan.gain(kind, load)
+    return base, min(max(junctions * V_BE / (BLEED * base), LEAST_BLEED), MOST_BLEED)
+
+
+def _intake(plan: Plan, kind: str, junctions: int) -> Intake:
+    base, bleed = _base(plan, kind, junctions)
+    return Intake(base + junctions * V_BE / bleed)
+
+
+def _make(plan: Plan, kind: str, junctions: int) -> Made:
+    base, bleed = _base(plan, kind, junctions)
+    node, low = plan.net("base"), plan.port("low")
+    drop = junctions * V_BE
+    ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
+    if ohms < 1.0:
+        raise plan.refused(
+            "current",
+            f"its base current of {write(base, 'A')} does not come through the stage before; write a smaller current"
+            + ("" if kind.startswith("darlington") else ", or take a Darlington driver"),
+        )
+    plan.resistor(ohms, plan.port("in"), node, "base_resistor", snap="down")
+    plan.resistor(bleed, node, RETURN, "base_emitter_resistor")
+    current = plan.above_zero("current")
+    plan.transistor(low, node, RETURN, "driver", kind=kind, current=current)
+    if plan.text("load") != NONE:
+        add_load(plan, plan.text("load"), plan.port("rail"), low)
+    return Made(output=Drive(Sense.LOW_SIDE, drop=0.3 * junctions))
+
+
+_PORTS = (IN_PORT, RAIL_PORT, Port("low", Wire.OUT, "the switched end of the load"), RETURN_PORT)
+KINDS = (
+    StageKind(
+        name="low_side_driver",
+        title="low-side driver",
+        place=Place.SWITCH,
+        help=(
+            "An npn transistor that pulls the load to 0V. I_B = overdrive x I_load / h_FE,min of the coldest ambient;"
+            " R_B = (V_drive,min - V_BE) / (I_B + V_BE/R_BE), less the resistance of the stage before, next lower"
+            " preferred value; R_BE takes about a tenth of the base current and drains leakage when hot. Source: common"
+            " practice (forced gain 10, overdrive 2 to 5)."
+        ),
+        ports=_PORTS,
+        settings=(*LOAD_SETTINGS, Setting("overdrive", "", "3", "times the least base current")),
+        make=partial(_make, kind="npn", junctions=1),
+        intake=partial(_intake, kind="npn", junctions=1),
+    ),
+    StageKind(
+        name="darlington_driver",
+        title="Darlington driver",
+        place=Place.SWITCH,
+        help=(
+            "As the low-side driver, with a Darlington transistor for loads of amperes or a weak stage before it."
+            " Its h_FE,min is the product of both gains and its V_BE counts twice, V_CE(sat) is 0.8 to 2 V, so that the"
+            " load loses that much of a low supply. I_B = overdrive x I_load / h_FE,min; R_B = (V_drive,min - 2 V_BE) /"
+            " (I_B + 2 V_BE/R_BE). Source: common practice; the class is from memory."
+        ),
+        ports=_PORTS,
+        settings=(*LOAD_SETTINGS, Setting("overdrive", "", "3", "times the least base current")),
+        make=partial(_make, kind="darlington_npn", junctions=2),
+        intake=partial(_intake, kind="darlington_npn", junctions=2),
+    ),
+)

@@ -1,0 +1,192 @@
+"""A new design of stages in a row, and a stage of the catalogue added to a design."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
+
+from ..design.conditions import Conditions
+from ..design.document import Design
+from ..design.part import Stage
+from ..errors import DesignError
+from ..quantity import read, write
+from . import stage_kinds
+from .kind import Drive, Intake, Json, Sense, Wire
+from .modified import AS_MADE
+from .row import Choice, MadeStage, Place, advance, kind_named, make_row, make_stage
+
+RISE = "20 ms"  # in which the supply comes where a sequence does not ask for another
+FIRST = 1.0  # s before the alarm begins, at least
+AFTER = 2.0  # s after all that stages bring
+BEGINS = "begins"
+"""The moment at which the alarm begins: what starts it does so, or the supply comes."""
+READ = 0.5  # s after the load came on at which levels are read, at most
+
+
+def new_design(name: str, purpose: str, conditions: Json, choices: Sequence[Choice]) -> Design:
+    """A design of catalogue stages from left to right, with sequences and requirements that follow from them.
+
+    ``conditions`` are those of the document. Raises DesignError naming the stage and setting that does not fit.
+    """
+    if not choices:
+        raise DesignError("the row has no stage; put one in first")
+    _single_names([choice.title() for choice in choices])
+    empty = Design.load(_document(name, purpose, conditions, [], {"alarm": {"events": [], "ends": "1 s"}}, []))
+    row = make_row(empty.conditions, choices)
+    stages = [made.stage for made in row]
+    facts = _facts(row)
+    sequences: dict[str, Json] = {"alarm": _alarm(row, facts)}
+    for made in row:
+        sequences.update(_filled(dict(made.made.sequences), facts))
+    requirements = [each for made in row for each in _required(made, facts)]
+    return Design.load(_document(name, purpose, conditions, stages, sequences, requirements))
+
+
+def _document(
+    name: str, purpose: str, conditions: Json, stages: Sequence[Json], sequences: Json, requirements: Sequence[Json]
+) -> Json:
+    return {
+        "stagebook": 1,
+        "name": name,
+        "purpose": purpose,
+        "conditions": conditions,
+        "stages": list(stages),
+        "sequences": sequences,
+        **({"requirements": list(requirements)} if requirements else {}),
+    }
+
+
+def _single_names(names: Sequence[str]) -> None:
+    for name in names:
+        if names.count(name) > 1:
+            raise DesignError(f"two stages are called {name}; give each a name of its own")
+
+
+def _facts(row: Sequence[MadeStage]) -> dict[str, str]:
+    """The load of the design, which texts of its stages name."""
+    load = next((made.stage["roles"]["load"] for made in row if "load" in made.stage["roles"]), None)
+    return {} if load is None else {"load": load}
+
+
+def _start(row: Sequence[MadeStage]) -> float:
+    acts = any(made.made.acts for made in row)
+    return max(FIRST, 1.5 * sum(made.made.settles for made in row)) if acts else 0.0
+
+
+def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
+    """The sequence that fires the alarm: the supply comes, all settles, and what starts it starts it."""
+    start = _start(row)
+    events: list[Json] = [{"at": "0 s", "event": "connect supply", "rise": RISE}]
+    acts = sorted(
+        ((max(0.0, start + at), event) for made in row for at, event in made.made.acts), key=lambda act: act[0]
+    )
+    events += [{"at": write(at, "s", digits=6), **event} for at, event in acts]
+    over = max([start + sum(made.made.lasts for made in row), *(at for at, _ in acts)])
+    moments: Json = {BEGINS: write(start, "s", digits=6)}
+    rests = [made.made.standby for made in row if made.made.standby is not None]
+    if start > 0.0:
+        moments["standby"] = write(0.9 * start, "s", digits=6)
+    elif rests:
+        moments["standby"] = write(min(rests), "s", digits=6)
+    active = [made.made.active for made in row if made.made.active is not None]
+    if "load" in facts:
+        by = write(min([READ, *(0.2 * each for each in active)]), "s")
+        moments["sounding"] = {"after": f"{facts['load']} on", "by": by}
+        if active:
+            moments["silent"] = {"after": f"{facts['load']} off", "by": by}
+    for made in row:
+        moments.update(_moments(made, facts))
+    return {"events": events, "ends": write(over + AFTER, "s", digits=6), "moments": moments}
+
+
+def _moments(made: MadeStage, facts: Mapping[str, str]) -> Json:
+    """The moments that a stage knows of; those after a load only where the design has one."""
+    known = {k: v for k, v in made.made.moments.items() if "load" in facts or "{load}" not in json.dumps(v)}
+    return _filled(known, facts)
+
+
+def _required(made: MadeStage, facts: Mapping[str, str]) -> list[Json]:
+    """The requirements that a stage brings; those about a load only where the design has one."""
+    return [
+        _filled(each, facts) for each in made.made.requirements if "load" in facts or "{load}" not in json.dumps(each)
+    ]
+
+
+def _filled(entry: Json, facts: Mapping[str, str]) -> Json:
+    """The texts of an entry with the names that it leaves open."""
+    text = json.dumps(entry)
+    for name, value in facts.items():
+        text = text.replace(f"{{{name}}}", value)
+    found: Json = json.loads(text)
+    return found
+
+
+# -- a stage added to a design
+
+
+def place_after(design: Design) -> Place:
+    """Where a stage stands that is put at the end of a design: behind the rails and signals of its catalogue stages."""
+    place = Place()
+    for stage in design.stages:
+        kind = stage_kinds().get(stage.kind)
+        if kind is not None:
+            made = _made_again(design.conditions, stage, place)
+            place = advance(place, kind, stage.ports, made.made)
+    return place
+
+
+def _made_again(conditions: Conditions, stage: Stage, place: Place) -> MadeStage:
+    """What the catalogue makes of a stage's settings: what it gives to the next one is read from that."""
+    settings = {name: str(text) for name, text in stage.settings.items() if name != AS_MADE}
+    return make_stage(conditions, Choice(stage.kind, stage.name, settings), place, Intake(), frozenset())[0]
+
+
+def with_catalogue_stage(design: Design, choice: Choice, ports: Mapping[str, str] | None = None) -> Design:
+    """A catalogue stage at the end of a design, connected to what stands before it, or by ``ports`` to other nets.
+
+    It brings its parts and roles, the requirements that the design can answer, and its own sequences; what starts it
+    is added to the sequence ``alarm``. Raises DesignError.
+    """
+    _single_names([*(stage.name for stage in design.stages), choice.title()])
+    place = place_after(design)
+    kind = kind_named(choice.kind)
+    wanted = {port.wire: net for port in kind.ports if (net := (ports or {}).get(port.name))}
+    if Wire.IN in wanted and wanted[Wire.IN] != place.signal:
+        place = replace(place, signal=wanted[Wire.IN], drive=Drive((kind.takes or (Sense.LEVEL,))[0]))
+    place = replace(
+        place,
+        rail=wanted.get(Wire.RAIL, place.rail),
+        quiet=wanted.get(Wire.QUIET, place.quiet),
+        base=wanted.get(Wire.BASE, place.base),
+    )
+    taken = frozenset(part.ref for part in design.parts)
+    (made,) = make_row(design.conditions, [choice], place, taken)
+    return _added(design, made)
+
+
+def _added(design: Design, made: MadeStage) -> Design:
+    document = design.dump()
+    document.setdefault("stages", []).append(made.stage)
+    roles = [stage.roles for stage in design.stages] + [made.stage["roles"]]
+    load = next((each["load"] for each in roles if "load" in each), None)
+    alarm = document["sequences"]["alarm"]
+    events = alarm.setdefault("events", [])
+    begun = [read(event["at"], "s") for event in events if event["event"] in ("close", "open", "set", "ramp")]
+    start = begun[0] if begun else FIRST * bool(made.made.acts)
+    facts = {} if load is None else {"load": load}
+    alarm.setdefault("moments", {}).setdefault(BEGINS, write(start, "s", digits=6))
+    events += [{"at": write(max(0.0, start + at), "s", digits=6), **event} for at, event in made.made.acts]
+    ends = max(read(alarm["ends"], "s") + made.made.lasts, *(start + at + AFTER for at, _ in made.made.acts), 0.0)
+    alarm["ends"] = write(ends, "s", digits=6)
+    moments = _moments(made, facts)
+    if load is not None:
+        moments.setdefault("sounding", {"after": f"{load} on", "by": write(READ, "s")})
+    for name, moment in moments.items():
+        alarm["moments"].setdefault(name, moment)
+    for name, sequence in _filled(dict(made.made.sequences), facts).items():
+        document["sequences"].setdefault(name, sequence)
+    required = _required(made, facts)
+    if required:
+        document.setdefault("requirements", []).extend(required)
+    return Design.load(document)

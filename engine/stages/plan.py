@@ -1,0 +1,236 @@
+"""A stage in the making: where it stands, what was asked of it, and the parts written so far."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field
+
+from ..design.conditions import Levels
+from ..errors import DesignError, QuantityError
+from ..parts.classes import CLASSES
+from ..parts.physics import gain_factor
+from ..preferred import nearest, next_down, next_up, series_for
+from ..quantity import read, write
+from .kind import WORD, Drive, Intake, Json, StageKind, Wire
+
+RETURN = "0V"
+NOTHING = Intake()
+V_BE = 0.65  # V, silicon at some milliampere, for sizing; from memory
+V_SATURATED = 0.15  # V across a small transistor that is fully on, for sizing; from memory
+V_DIODE = 0.65  # V, for sizing; from memory
+V_REVERSE = 3.5  # V, more than that in reverse across a base-emitter junction is kept away by a diode (V_EBO 5 V x 0.8)
+OVERDRIVE = 3.0  # times the least base current (common practice: 2 to 5)
+SMALL_CURRENT = 50e-3  # A, above it a driver transistor is taken
+_VOLTAGES = (10.0, 16.0, 25.0, 35.0, 50.0, 63.0, 100.0)
+_POWERS = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0)
+_LEAST, _MOST = 1.0, 10e6  # ohm, what is put in where a formula asks for less or more
+LARGEST_FILM = 2.2e-6  # F; above it capacitors are polarised (common practice)
+
+
+@dataclass
+class Plan:
+    """Settings, surroundings and the growing list of parts of one stage.
+
+    ``ports`` are the nets of its ports; ``rail`` are the volts of the small stages' rail; ``drive`` is what comes in
+    from the stage before, None where the rail itself starts it; ``next`` is what the following stage takes.
+    """
+
+    kind: StageKind
+    stage: str
+    given: Mapping[str, str]
+    ports: dict[str, str]
+    supply: Levels
+    rail: Levels
+    ambient: Levels
+    drive: Drive | None = None
+    next: Intake = NOTHING
+    taken: frozenset[str] = frozenset()
+    parts: list[Json] = field(default_factory=list)
+    roles: dict[str, str] = field(default_factory=dict)
+
+    # -- what was asked
+
+    def text(self, name: str) -> str:
+        """A setting as written, or what is usual."""
+        setting = self.kind.setting(name)
+        assert setting is not None, name
+        text = str(self.given.get(name, setting.usual)).strip() or setting.usual
+        if setting.choices and text not in setting.choices:
+            raise DesignError(f"{self._where(name)}: {text!r} is none of them; write {' or '.join(setting.choices)}")
+        return text
+
+    def number(self, name: str) -> float:
+        """A setting in SI. Raises DesignError naming stage and setting."""
+        setting = self.kind.setting(name)
+        assert setting is not None, name
+        try:
+            return read(self.text(name), setting.unit)
+        except QuantityError as refusal:
+            raise DesignError(f"{self._where(name)}: {refusal}") from refusal
+
+    def above_zero(self, name: str) -> float:
+        """As :meth:`number`; it must be above zero."""
+        value = self.number(name)
+        if value <= 0.0:
+            setting = self.kind.setting(name)
+            assert setting is not None
+            raise DesignError(
+                f"{self._where(name)}: {self.text(name)} is not above zero; write it like {setting.usual}"
+            )
+        return value
+
+    def share(self, name: str) -> float:
+        """A setting between 0 and 1, both left out."""
+        value = self.number(name)
+        if not 0.0 < value < 1.0:
+            raise DesignError(f"{self._where(name)}: {self.text(name)} is not between 0 and 1; write it like 0.5")
+        return value
+
+    def refused(self, name: str, words: str) -> DesignError:
+        """What is wrong with a setting, in one line."""
+        return DesignError(f"{self._where(name)}: {words}")
+
+    def check(self) -> None:
+        """Refuse settings that the kind does not have or that cannot be read."""
+        for name in self.given:
+            if self.kind.setting(name) is None:
+                known = ", ".join(each.name for each in self.kind.settings) or "none"
+                raise DesignError(f"{self._where(name)}: a {self.kind.title} has no such setting; write one of {known}")
+        for setting in self.kind.settings:
+            if setting.unit == WORD:
+                self.text(setting.name)
+            elif self.text(setting.name):
+                self.number(setting.name)
+
+    def _where(self, name: str) -> str:
+        return f"stage {self.stage}, setting {name}"
+
+    # -- nets
+
+    def net(self, name: str) -> str:
+        """An inner net, which no other stage has."""
+        return f"{self.stage}/{name}"
+
+    def port(self, name: str) -> str:
+        """The net of a port."""
+        return self.ports[name]
+
+    # -- figures for sizing
+
+    def gain(self, kind: str = "npn", current: float = 0.0) -> float:
+        """The least current gain of the generic class that :meth:`transistor` takes, at the coldest ambient."""
+        figures = CLASSES[kind][self.transistor_class(kind, current)]["gain"]
+        least = figures if isinstance(figures, str) else figures[0]
+        return read(least, "") * float(gain_factor(self.ambient.min))
+
+    def transistor_class(self, kind: str, current: float) -> str:
+        """The generic class for a collector current."""
+        if kind.startswith("darlington"):
+            return "power Darlington"
+        return f"0.5 A driver {kind}" if current > SMALL_CURRENT else f"small {kind}"
+
+    @property
+    def has_latch(self) -> bool:
+        """Whether a latch stands before it, whose base it may reach."""
+        return f"{self.stage}.{Wire.BASE}" not in self.ports.values()
+
+    @property
+    def arriving(self) -> float:
+        """The least volts at the port ``in`` while it is active, before its own resistance."""
+        return self.rail.min - (0.0 if self.drive is None else self.drive.drop)
+
+    @property
+    def arriving_ohms(self) -> float:
+        """The resistance behind the port ``in``."""
+        return 0.0 if self.drive is None else self.drive.ohms
+
+    # -- parts
+
+    def part(self, letter: str, kind: str, pins: Mapping[str, str], role: str | None = None, **fields: object) -> str:
+        """A part with the next free designator of its letter; returns it."""
+        ref = next(ref for ref in _designators(letter) if ref not in self.taken and ref not in self._own())
+        self.parts.append({"ref": ref, "kind": kind, "pins": dict(pins), **fields})
+        if role is not None:
+            self.roles[role] = ref
+        return ref
+
+    def _own(self) -> set[str]:
+        return {part["ref"] for part in self.parts}
+
+    def resistor(
+        self, ohms: float, a: str, b: str, role: str | None = None, *, snap: str = "nearest", tolerance: str = "5 %"
+    ) -> float:
+        """A resistor of the preferred value ``nearest``, ``down`` or ``up``; returns that value in ohm.
+
+        Its power rating is the least usual one that bears the whole rail across it at the customary 0.6.
+        """
+        value = snapped(min(max(ohms, _LEAST), _MOST), series_for(read(tolerance, "%")), snap)
+        self.part(
+            "R",
+            "resistor",
+            {"a": a, "b": b},
+            role,
+            value=write(value, "ohm"),
+            tolerance=tolerance,
+            rating=f"{_at_least(self.rail.max**2 / value / 0.6, _POWERS):g} W",
+        )
+        return value
+
+    def capacitor(
+        self, farads: float, a: str, b: str, role: str | None = None, *, snap: str = "nearest", low_drift: bool = False
+    ) -> float:
+        """A capacitor of a preferred value, ``a`` the more positive net; returns that value in farad.
+
+        Film up to 2.2 uF, above it polarised with a rated voltage that bears the rail at the customary 0.8.
+        """
+        if farads <= LARGEST_FILM:
+            value = snapped(farads, "E6", snap)
+            rated = _at_least(self.rail.max / 0.6, _VOLTAGES[4:])
+            fields = {"tolerance": "10 %", "class": "film", "voltage": f"{rated:g} V"}
+            self.part("C", "capacitor", {"a": a, "b": b}, role, value=write(value, "F"), **fields)
+            return value
+        value = snapped(farads, "E6", snap)
+        rated = _at_least(self.rail.max / 0.8, _VOLTAGES)
+        name, tolerance = ("timing capacitor, low drift", "10 %") if low_drift else ("electrolytic", "20 %")
+        fields = {"tolerance": tolerance, "class": name, "voltage": f"{rated:g} V"}
+        self.part("C", "capacitor", {"plus": a, "minus": b}, role, value=write(value, "F"), **fields)
+        return value
+
+    def transistor(
+        self,
+        collector: str,
+        base: str,
+        emitter: str,
+        role: str | None = None,
+        *,
+        kind: str = "npn",
+        current: float = 0.0,
+    ) -> str:
+        """A transistor of the generic class for a collector current."""
+        pins = {"collector": collector, "base": base, "emitter": emitter}
+        return self.part("Q", kind, pins, role, **{"class": self.transistor_class(kind, current)})
+
+    def diode(
+        self, anode: str, cathode: str, role: str | None = None, *, kind: str = "diode", name: str = "signal diode"
+    ) -> str:
+        """A diode of a generic class."""
+        return self.part("D", kind, {"anode": anode, "cathode": cathode}, role, **{"class": name})
+
+
+def snapped(value: float, series: str, snap: str) -> float:
+    """The preferred value ``nearest`` to a value, or the next ``down`` or ``up`` unless it is one itself."""
+    near = nearest(value, series)
+    if snap == "nearest" or abs(near - value) <= 1e-3 * value:
+        return near
+    return next_down(value, series) if snap == "down" else next_up(value, series)
+
+
+def _designators(letter: str) -> Iterator[str]:
+    number = 0
+    while True:
+        number += 1
+        yield f"{letter}{number}"
+
+
+def _at_least(wanted: float, offered: tuple[float, ...]) -> float:
+    return next((each for each in offered if each >= wanted), offered[-1])

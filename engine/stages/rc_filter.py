@@ -1,0 +1,42 @@
+"""RC filter: a quiet rail for the small stages that follow."""
+
+from __future__ import annotations
+
+from .kind import RETURN_PORT, Made, Place, Port, Setting, StageKind, Wire
+from .plan import RETURN, Plan
+
+
+def _make(plan: Plan) -> Made:
+    current, drop = plan.above_zero("small_current"), plan.above_zero("drop")
+    ohms = plan.resistor(drop / current, plan.port("feed"), plan.port("quiet"), "filter_resistor", snap="down")
+    bridged = current * plan.above_zero("bridge") / (plan.share("sag") * plan.rail.min)
+    slewed = plan.supply.max / (ohms * plan.above_zero("slew"))
+    farads = plan.capacitor(max(bridged, slewed), plan.port("quiet"), RETURN, "filter_capacitor", snap="up")
+    return Made(quiet_drop=ohms * current, settles=5.0 * ohms * farads)
+
+
+KIND = StageKind(
+    name="rc_filter",
+    title="RC filter",
+    place=Place.FEED,
+    help=(
+        "A resistor and a capacitor between the rail and the small stages. R = drop / I. C is the larger of two:"
+        " V_max / (R x slew), so that a supply that is snapped on rises no faster behind it, and I t / dV, so that it"
+        " bridges a dip of length t. It does so only for stages behind it, and only where nothing drains it backwards:"
+        " a diode before it (supply entry) keeps the charge. Source: RC step response; capacitor charge."
+    ),
+    ports=(
+        Port("feed", Wire.QUIET, "the rail before it"),
+        Port("quiet", Wire.NEW_QUIET, "the rail of small stages, behind it"),
+        RETURN_PORT,
+    ),
+    settings=(
+        Setting("small_current", "A", "3 mA", "what all small stages draw together"),
+        Setting("drop", "V", "0.3 V", "what the filter may lose at that current"),
+        Setting("slew", "V/s", "5 V/ms", "how fast the filtered rail may rise when the supply is snapped on"),
+        Setting("bridge", "s", "10 ms", "longest dip that it should bridge"),
+        Setting("sag", "", "0.2", "share of the rail that it may lose meanwhile"),
+    ),
+    make=_make,
+    takes=(),
+)

@@ -1,0 +1,169 @@
+"""Stages in a row: each is connected to the ones before it, and sized by what the one after it takes."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+from ..design.conditions import Conditions, Levels
+from ..errors import DesignError
+from . import stage_kinds
+from .kind import Drive, Intake, Json, Made, StageKind, Wire
+from .modified import AS_MADE, digest
+from .plan import RETURN, Plan
+
+SUPPLY = "supply"
+_NEW = {Wire.OUT, Wire.NEW_RAIL, Wire.NEW_QUIET, Wire.NEW_BASE}
+_ROOM = Levels(25.0, 25.0, 25.0)
+
+
+@dataclass(frozen=True)
+class Choice:
+    """A stage to be made: its kind, its name (that of the kind where none is given), and what is asked of it."""
+
+    kind: str
+    name: str = ""
+    settings: Mapping[str, str] = field(default_factory=dict)
+
+    def title(self) -> str:
+        """The stage's name."""
+        return self.name or self.kind.replace("_", "-")
+
+
+@dataclass(frozen=True)
+class Place:
+    """Where a row has got to: the nets that the next stage is connected to, and what they carry."""
+
+    rail: str = SUPPLY
+    quiet: str = SUPPLY
+    signal: str | None = None
+    drive: Drive | None = None
+    base: str | None = None
+    rail_drop: float = 0.0
+    quiet_drop: float = 0.0
+
+
+@dataclass(frozen=True)
+class MadeStage:
+    """A stage as the document holds it, and what else it brings."""
+
+    stage: Json
+    made: Made
+    kind: StageKind
+
+
+def kind_named(name: str) -> StageKind:
+    """The stage kind of this name. Raises DesignError."""
+    found = stage_kinds().get(name)
+    if found is None:
+        raise DesignError(f"there is no stage kind {name!r}; write one of {', '.join(stage_kinds())}")
+    return found
+
+
+def make_row(
+    conditions: Conditions, choices: Sequence[Choice], place: Place = Place(), taken: frozenset[str] = frozenset()
+) -> tuple[MadeStage, ...]:
+    """All stages of a row, connected and sized. Raises DesignError naming stage and setting."""
+    places = _places(conditions, choices, place)
+    takes = Intake()
+    following: list[Intake] = []
+    for choice, at in zip(reversed(choices), reversed(places), strict=True):
+        following.insert(0, takes)
+        plan = _plan(conditions, choice, at, takes, taken)
+        plan.check()
+        own = plan.kind.intake(plan)
+        takes = Intake(own.current + takes.current, own.threshold or takes.threshold) if own.passes else own
+    made: list[MadeStage] = []
+    for choice, after in zip(choices, following, strict=True):
+        stage, place = make_stage(conditions, choice, place, after, taken)
+        taken |= {part["ref"] for part in stage.stage["parts"]}
+        made.append(stage)
+    return tuple(made)
+
+
+def _places(conditions: Conditions, choices: Sequence[Choice], place: Place) -> list[Place]:
+    """Where every stage stands as far as its rails go: they do not depend on what follows."""
+    found = []
+    for choice in choices:
+        found.append(place)
+        if kind_named(choice.kind).port(Wire.NEW_QUIET) or kind_named(choice.kind).port(Wire.NEW_RAIL):
+            _, place = make_stage(conditions, choice, place, Intake(), frozenset())
+    return found
+
+
+def make_stage(
+    conditions: Conditions, choice: Choice, place: Place, after: Intake, taken: frozenset[str]
+) -> tuple[MadeStage, Place]:
+    """One stage at its place, and the place of the next one."""
+    plan = _plan(conditions, choice, place, after, taken)
+    plan.check()
+    kind = plan.kind
+    if place.drive is not None and kind.port(Wire.IN) and place.drive.sense not in kind.takes:
+        raise DesignError(
+            f"stage {plan.stage}: a {kind.title} does not take a {place.drive.sense} signal, which the stage before it"
+            f" gives; put one before it that gives a {' or '.join(kind.takes)}"
+        )
+    if place.drive is None and kind.port(Wire.IN) and not kind.supply_starts:
+        raise DesignError(f"stage {plan.stage}: a {kind.title} needs a signal; put a contact or a sensor before it")
+    made = kind.make(plan)
+    used = {net for part in plan.parts for net in part["pins"].values()}
+    ports = {name: net for name, net in plan.ports.items() if net in used}
+    stage: Json = {
+        "name": plan.stage,
+        "kind": kind.name,
+        "roles": plan.roles,
+        "settings": {each.name: plan.text(each.name) for each in kind.settings if plan.text(each.name)},
+        "ports": ports,
+        "parts": plan.parts,
+    }
+    stage["settings"][AS_MADE] = digest(plan.parts, ports)
+    return MadeStage(stage, made, kind), advance(place, kind, ports, made)
+
+
+def advance(place: Place, kind: StageKind, ports: Mapping[str, str], made: Made) -> Place:
+    """The place behind a stage."""
+
+    def net(wire: Wire) -> str | None:
+        port = kind.port(wire)
+        return None if port is None else ports.get(port.name)
+
+    rail = net(Wire.NEW_RAIL)
+    quiet = net(Wire.NEW_QUIET)
+    signal = net(Wire.OUT) if made.output is not None else None
+    return Place(
+        rail=rail or place.rail,
+        quiet=quiet or rail or place.quiet,
+        signal=signal or place.signal,
+        drive=made.output if signal is not None else place.drive,
+        base=net(Wire.NEW_BASE) or place.base,
+        rail_drop=place.rail_drop + (made.rail_drop if rail else 0.0),
+        quiet_drop=place.quiet_drop + made.quiet_drop
+        if quiet
+        else place.quiet_drop + (made.rail_drop if rail else 0.0),
+    )
+
+
+def _plan(conditions: Conditions, choice: Choice, place: Place, after: Intake, taken: frozenset[str]) -> Plan:
+    kind = kind_named(choice.kind)
+    supply = conditions.levels("supply")
+    if supply is None or supply.min <= 0.0:
+        raise DesignError(
+            'the catalogue sizes stages by the supply; write "supply": {"min": ..., "nominal": ..., "max": ...}'
+        )
+    name = choice.title()
+    nets = {
+        Wire.RAIL: place.rail,
+        Wire.QUIET: place.quiet,
+        Wire.RETURN: RETURN,
+        Wire.IN: place.signal or place.quiet,
+        Wire.BASE: place.base or f"{name}.{Wire.BASE}",
+    }
+    ports = {port.name: f"{name}.{port.name}" if port.wire in _NEW else nets[port.wire] for port in kind.ports}
+    drop = place.quiet_drop
+    rail = Levels(supply.min - drop, supply.nominal - drop, supply.max - 0.5 * drop)
+    if rail.min <= 0.5:
+        raise DesignError(
+            f"stage {name}: the stages before it leave {rail.min:.2g} V of the lowest supply; feed it more"
+        )
+    ambient = conditions.levels("ambient") or _ROOM
+    return Plan(kind, name, choice.settings, ports, supply, rail, ambient, place.drive, after, taken)

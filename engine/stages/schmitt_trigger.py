@@ -1,0 +1,82 @@
+"""Schmitt trigger: two npn transistors on one emitter resistor, with two thresholds that are shares of the rail."""
+
+from __future__ import annotations
+
+from .kind import IN_PORT, OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Intake, Made, Place, Sense, Setting, StageKind
+from .output import sized
+from .plan import RETURN, V_BE, V_REVERSE, V_SATURATED, Plan
+
+LEAST_CURRENT = 0.3e-3  # A in the emitter resistor, so that base currents do not count
+IDLE = 0.25  # V across the output's base-emitter resistor at rest: off, also when hot
+DIVIDER_SHARE = 20.0  # times its base current that flows in the divider
+V_EARLY = 0.1  # V before both bases are equal it goes over: the one that takes over needs a part of the current only
+V_DIODE_LEAST = 0.35  # V of the diode before the base at some microampere (class)
+BLEED = 220e3  # ohm, keeps the base at the emitter while its diode blocks
+
+
+def _current(plan: Plan) -> float:
+    """Current in the emitter resistor, A."""
+    return max(3.0 * sized(plan).current, LEAST_CURRENT)
+
+
+def _make(plan: Plan) -> Made:
+    rail, signal = plan.port("rail"), plan.port("in")
+    left, emitter, tap = plan.net("left"), plan.net("emitter"), plan.net("tap")
+    volts = plan.rail.nominal
+    upper, hysteresis = plan.share("threshold"), plan.share("hysteresis")
+    # With its input at 0 V the emitter stands at the upper threshold less V_BE above the base, in reverse.
+    guarded = upper * plan.rail.max - V_BE > V_REVERSE
+    at_base = upper * volts + V_EARLY - (V_DIODE_LEAST if guarded else 0.0)
+    lower = at_base - hysteresis * volts - 2.0 * V_EARLY
+    if lower <= V_BE + 0.2:
+        raise plan.refused("hysteresis", f"{hysteresis:.3g} of {volts:.3g} V leaves no lower threshold; write less")
+    current = _current(plan)
+    emitter_ohms = plan.resistor((at_base - V_BE) / current, emitter, RETURN, "emitter_resistor", tolerance="1 %")
+    divider = DIVIDER_SHARE * current / plan.gain()
+    output = sized(plan)
+    bleed = min(IDLE / divider, output.bleed)
+    # Lower threshold: V_L = k (V - V_BE,out - I_1 R_b), with the ratio k that gives the upper one.
+    ratio = at_base / (volts - divider * bleed)
+    drawn = (lower - V_BE) / emitter_ohms
+    ohms = (volts - V_BE - lower / ratio) / drawn
+    if ohms < 0.0:
+        least = (at_base - 2.0 * V_EARLY - (volts - V_BE) * ratio) / volts
+        raise plan.refused("hysteresis", f"the output alone makes {least:.2g} of the rail; write more than that")
+    base = plan.net("drive")
+    plan.resistor(bleed, rail, base, "base_emitter_resistor_output_device")
+    plan.resistor(ohms, base, left, "collector_resistor", tolerance="1 %")
+    plan.transistor(plan.port("out"), base, rail, "output_device", kind="pnp", current=plan.next.current)
+    lower_ohms = at_base / divider
+    plan.resistor((volts - at_base) / divider - bleed - ohms, left, tap, "divider_upper_resistor", tolerance="1 %")
+    plan.resistor(lower_ohms, tap, RETURN, "divider_lower_resistor", tolerance="1 %")
+    if guarded:
+        node = plan.net("base")
+        plan.diode(signal, node, "base_diode")
+        plan.resistor(BLEED, node, emitter, "base_emitter_resistor_trip_device")
+        signal = node
+    plan.transistor(left, signal, emitter, "trip_device")
+    plan.transistor(rail, tap, emitter, "second_device")
+    return Made(output=Drive(Sense.LEVEL, drop=V_SATURATED))
+
+
+KIND = StageKind(
+    name="schmitt_trigger",
+    title="Schmitt trigger",
+    place=Place.SHAPE,
+    help=(
+        "Two npn transistors share an emitter resistor. Upper threshold: V_U = V R2/(R_a + R_b + R1 + R2), what the"
+        " divider gives the second transistor; R_E = (V_U - V_BE)/I. Lower: V_L = k (V - V_BE,out - I_1 R_b) with I_1"
+        " = (V_L - V_BE)/R_E, which gives R_b. The divider carries 20 times its base current. Hysteresis must be"
+        " larger than the ripple of what comes in. Where the emitter stands more than 3.5 V above an input at 0 V, a"
+        " diode keeps the reverse from the base. Source: emitter-coupled trigger as in Millman, Taub (1965), from"
+        " memory."
+    ),
+    ports=(QUIET_PORT, IN_PORT, OUT_PORT, RETURN_PORT),
+    settings=(
+        Setting("threshold", "", "0.4", "share of the rail at which it trips"),
+        Setting("hysteresis", "", "0.12", "share of the rail that the input must fall back by"),
+    ),
+    make=_make,
+    intake=lambda plan: Intake(_current(plan) / plan.gain(), threshold=plan.share("threshold")),
+    supply_starts=False,
+)

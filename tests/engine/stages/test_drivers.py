@@ -1,0 +1,64 @@
+"""Drivers and loads: base resistors by overdrive, and that the load gets its voltage (common practice, no source)."""
+
+from __future__ import annotations
+
+import pytest
+
+from stagebook.engine.errors import DesignError
+
+from .made import at, begins, choice, made, run, value
+
+CALL = choice("contact_no", "call", held="2 s")
+
+
+def test_the_base_resistor_gives_three_times_the_least_base_current() -> None:
+    # Small npn at 40 mA: h_FE,min 200 x 0.875 at 0 C = 175; I_B = 3 x 40 mA/175 = 0.69 mA; R_BE = 0.65/0.069 mA = 9k5.
+    # R_B = (11 - 0.65) V / (0.69 + 0.07) mA = 13.7k, next lower of E24: 13k.
+    design = made(CALL, choice("low_side_driver", "driver", current="40 mA"))
+    assert value(design, "driver", "base_resistor") == 13e3
+    assert value(design, "driver", "base_emitter_resistor") == pytest.approx(9.5e3, rel=0.05)
+
+
+def test_the_resistance_of_the_stage_before_counts() -> None:
+    # As above, but through the 11k pull-up of a normally closed contact: 13.7k - 11k = 2.7k.
+    design = made(choice("contact_nc", "call"), choice("low_side_driver", "driver", current="40 mA"))
+    assert value(design, "driver", "base_resistor") == pytest.approx(2.7e3, rel=0.05)
+
+
+@pytest.mark.parametrize(
+    ("kind", "current", "pin", "drop"),
+    [
+        ("low_side_driver", "150 mA", "driver.low", 0.4),
+        ("darlington_driver", "1 A", "driver.low", 1.3),
+        ("high_side_driver", "300 mA", "driver.high", 0.6),
+    ],
+)
+def test_the_load_gets_the_rail_less_the_driver(kind: str, current: str, pin: str, drop: float) -> None:
+    design = made(CALL, choice(kind, "driver", current=current))
+    on, off = at(pin, begins(design) + 1.0), at(pin, 0.9)
+    feed = at("supply", begins(design) + 1.0)
+    seen = run(design, on, off, feed)
+    rail, rests = (float(seen.value(row)[0]) for row in (feed, off))
+    active = float(seen.value(on)[0])
+    across = rail - active if pin == "driver.low" else active
+    assert rail - drop < across < rail
+    assert rests == pytest.approx(12.0 if pin == "driver.low" else 0.0, abs=0.05)
+
+
+def test_a_driver_takes_the_load_of_the_stage_behind_it() -> None:
+    design = made(CALL, choice("low_side_driver", "driver", load="none"), choice("piezo", current="12 mA"))
+    assert design.part("LS1").pins == {"plus": "supply", "minus": "driver.low"}
+    # Sized for 12 mA, not for the 150 mA that it would take alone: 10.35 V / 0.226 mA = 45.7k.
+    assert value(design, "driver", "base_resistor") == 43e3
+
+
+def test_a_load_on_the_high_side_lies_to_0v() -> None:
+    design = made(CALL, choice("high_side_driver", "driver", load="none"), choice("sounder"))
+    assert design.part("LS1").pins == {"plus": "driver.high", "minus": "0V"}
+
+
+def test_a_base_that_would_starve_is_refused() -> None:
+    with pytest.raises(
+        DesignError, match=r"stage driver, setting current: its base current of .* take a Darlington driver"
+    ):
+        made(choice("contact_nc", "call"), choice("low_side_driver", "driver", current="400 mA"))

@@ -1,0 +1,97 @@
+"""Supply entry, RC filter and battery backup: sizing by the trade's formulas, and what the made rail does.
+
+Sizing formulas are common practice, no source; what a rail does follows from the RC step response.
+"""
+
+from __future__ import annotations
+
+import math
+
+import pytest
+
+from stagebook.engine.design.document import Design
+from stagebook.engine.errors import DesignError
+from stagebook.engine.primitives.signals import maximum, slew, voltage
+
+from ..circuits import Setup
+from .made import PIEZO, at, begins, choice, made, run, value
+
+CALL = choice("contact_no", "call")
+
+
+def test_the_entry_is_sized_by_drop_and_slew() -> None:
+    # R = 0.3 V / 3 mA = 100R; C = 14 V / (100R x 5 V/ms) = 28 uF, next higher of E6: 33 uF.
+    design = made(choice("entry", drop="0.3 V", small_current="3 mA", slew="5 V/ms"), CALL, PIEZO)
+    assert value(design, "entry", "filter_resistor") == 100.0
+    assert value(design, "entry", "filter_capacitor", "F") == pytest.approx(33e-6)
+
+
+def test_the_filtered_rail_rises_no_faster_than_asked_for() -> None:
+    design = made(choice("entry", slew="5 V/ms"), CALL, PIEZO).dump()
+    design["sequences"]["alarm"]["events"][0]["rise"] = "1 us"
+    setup = Setup(Design.load(design))
+    steepest, least = slew(voltage("entry.quiet")), slew(voltage("entry.rail"))
+    seen = setup.run(steepest, least)
+    # V/(RC) with what the diode leaves of 12 V: 11.4 V / (100R x 33 uF) = 3.4 V/ms.
+    assert seen.value(steepest)[0] == pytest.approx(3.4e3, rel=0.1)
+    assert seen.value(steepest)[0] < 5e3 < seen.value(least)[0]
+
+
+def test_loads_hang_on_the_rail_behind_the_diode_and_small_stages_on_the_filtered_one() -> None:
+    design = made(choice("entry"), CALL, PIEZO)
+    assert design.part("LS1").pins["plus"] == "entry.rail"
+    assert design.part("S1").pins["a"] == "entry.quiet"
+
+
+def test_the_entry_may_do_without_a_diode() -> None:
+    design = made(choice("entry", diode="none"), CALL, PIEZO)
+    assert design.part("LS1").pins["plus"] == "supply"
+    assert "reverse_diode" not in design.stage("entry").roles
+
+
+def test_a_reversed_supply_stays_away_from_what_follows() -> None:
+    design = made(choice("entry"), CALL, PIEZO).dump()
+    design["sequences"]["alarm"]["events"] = [{"at": "0 s", "event": "reverse supply"}]
+    highest = maximum(voltage("entry.rail").scaled(-1.0))
+    seen = Setup(Design.load(design)).run(highest)
+    assert seen.value(highest)[0] < 0.5
+
+
+def test_the_filter_bridges_a_dip_behind_a_diode() -> None:
+    # C = I t / dV = 3 mA x 40 ms / (0.2 x 11 V) = 54.5 uF, next higher of E6: 68 uF.
+    design = made(choice("rc_filter", bridge="40 ms", sag="0.2", slew="100 V/ms"), CALL, PIEZO)
+    assert value(design, "rc-filter", "filter_capacitor", "F") == pytest.approx(68e-6)
+
+
+BACKUP = choice("battery_backup", "backup", trickle="5 mA")
+SUPPLY = ("15 V", "15.5 V", "16 V")
+
+
+def test_the_trickle_resistor_leaves_the_trickle_at_full_charge() -> None:
+    # (15.5 V - 0.65 V - 13.6 V) / 5 mA = 250R, next higher of E24: 270R (float 2.27 V a cell: from memory).
+    assert value(made(BACKUP, CALL, PIEZO, supply=SUPPLY), "backup", "trickle_resistor") == 270.0
+
+
+def test_the_battery_takes_over_when_the_supply_is_lost() -> None:
+    design = made(BACKUP, CALL, PIEZO, supply=SUPPLY).dump()
+    design["sequences"]["alarm"] = design["sequences"]["supply_lost"]
+    design["requirements"] = []
+    before, after = at("backup.rail", 1.9), at("backup.rail", 3.5)
+    seen = Setup(Design.load(design)).run(before, after)
+    assert seen.value(before)[0] == pytest.approx(15.5 - 0.6, abs=0.4)
+    # A full lead-acid battery of 12.8 V (class, from memory) less a Schottky diode.
+    assert seen.value(after)[0] == pytest.approx(12.8 - 0.2, abs=0.25)
+
+
+def test_a_supply_that_cannot_charge_is_refused() -> None:
+    with pytest.raises(DesignError, match=r"stage backup, setting battery: 12 V cannot charge it to 13\.6 V"):
+        made(BACKUP, CALL, PIEZO)
+
+
+def test_settling_takes_five_time_constants() -> None:
+    # 99 % after 5 tau of an RC: common practice. The alarm waits for it.
+    design = made(choice("entry", drop="3 V", slew="0.05 V/ms"), CALL, PIEZO)
+    tau = value(design, "entry", "filter_resistor") * value(design, "entry", "filter_capacitor", "F")
+    assert begins(design) >= 5.0 * tau
+    seen = run(design, late := at("entry.quiet", 5.0 * tau), end := at("entry.quiet", 0.999 * begins(design)))
+    assert seen.value(late)[0] / seen.value(end)[0] == pytest.approx(-math.expm1(-5.0), abs=0.02)
