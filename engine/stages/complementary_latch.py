@@ -2,9 +2,7 @@
 
 from __future__ import annotations
 
-from ..parts.classes import CLASSES
 from ..parts.physics import doubling
-from ..quantity import read
 from .kind import (
     IN_PORT,
     OUT_PORT,
@@ -20,7 +18,7 @@ from .kind import (
     StageKind,
     Wire,
 )
-from .plan import OVERDRIVE, RETURN, V_BE, V_DIODE, V_SATURATED, Plan
+from .plan import OVERDRIVE, RETURN, V_BE, V_DIODE, V_SATURATED, Plan, class_figure
 
 LEAST_OUTPUT = 0.2e-3  # A, taken for what follows where it does not say
 MOST_BLEED = 470e3  # ohm
@@ -31,9 +29,11 @@ INPUT_DRIVE = 10.0  # times the current of the base-emitter resistor that a leve
 
 def _bleed(plan: Plan) -> float:
     """The base-emitter resistor in ohm: hot leakage through it stays below half of what begins to turn it on."""
-    figures = CLASSES["npn"]["small npn"]
-    leak = read(figures["i_cbo"][2], "A") * float(doubling(plan.ambient.max, read(str(figures["i_cbo_doubling"]), "K")))
-    return min(0.5 * V_HOT / leak, MOST_BLEED, plan.above_zero("bleed"))
+    leak, step = (
+        class_figure("npn", "small npn", key, unit) for key, unit in (("i_cbo", "A"), ("i_cbo_doubling", "K"))
+    )
+    hot = leak.high * float(doubling(plan.ambient.max, step.typical))
+    return min(0.5 * V_HOT / hot, MOST_BLEED, plan.above_zero("bleed"))
 
 
 def _intake(plan: Plan) -> Intake:

@@ -7,7 +7,7 @@ from functools import partial
 from ..quantity import write
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
 from .loads import LOAD_SETTINGS, NONE, add_load
-from .plan import RETURN, V_BE, Plan
+from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
 LEAST_BLEED, MOST_BLEED = 1e3, 47e3  # ohm
@@ -30,6 +30,10 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     node, low = plan.net("base"), plan.port("low")
     drop = junctions * V_BE
     ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
+    if kind == "npn" and plan.above_zero("current") > DRIVER_CURRENT:
+        raise plan.refused(
+            "current", f"{plan.text('current')} is more than a 0.5 A transistor bears; take a Darlington driver"
+        )
     if ohms < 1.0:
         raise plan.refused(
             "current",

@@ -6,8 +6,9 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 
 from ..design.conditions import Levels
+from ..design.part import Part
 from ..errors import DesignError, QuantityError
-from ..parts.classes import CLASSES
+from ..parts.figures import Figure, needed
 from ..parts.physics import gain_factor
 from ..preferred import nearest, next_down, next_up, series_for
 from ..quantity import read, write
@@ -21,6 +22,7 @@ V_DIODE = 0.65  # V, for sizing; from memory
 V_REVERSE = 3.5  # V, more than that in reverse across a base-emitter junction is kept away by a diode (V_EBO 5 V x 0.8)
 OVERDRIVE = 3.0  # times the least base current (common practice: 2 to 5)
 SMALL_CURRENT = 50e-3  # A, above it a driver transistor is taken
+DRIVER_CURRENT = 0.4  # A, above it a larger one (0.8 of the 0.5 A that it is rated for)
 _VOLTAGES = (10.0, 16.0, 25.0, 35.0, 50.0, 63.0, 100.0)
 _POWERS = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0)
 _LEAST, _MOST = 1.0, 10e6  # ohm, what is put in where a formula asks for less or more
@@ -119,14 +121,15 @@ class Plan:
 
     def gain(self, kind: str = "npn", current: float = 0.0) -> float:
         """The least current gain of the generic class that :meth:`transistor` takes, at the coldest ambient."""
-        figures = CLASSES[kind][self.transistor_class(kind, current)]["gain"]
-        least = figures if isinstance(figures, str) else figures[0]
-        return read(least, "") * float(gain_factor(self.ambient.min))
+        least = class_figure(kind, self.transistor_class(kind, current), "gain", "").low
+        return least * float(gain_factor(self.ambient.min))
 
     def transistor_class(self, kind: str, current: float) -> str:
         """The generic class for a collector current."""
         if kind.startswith("darlington"):
             return "power Darlington"
+        if kind == "pnp" and current > DRIVER_CURRENT:
+            return "2 A pnp"
         return f"0.5 A driver {kind}" if current > SMALL_CURRENT else f"small {kind}"
 
     @property
@@ -215,6 +218,12 @@ class Plan:
     ) -> str:
         """A diode of a generic class."""
         return self.part("D", kind, {"anode": anode, "cathode": cathode}, role, **{"class": name})
+
+
+def class_figure(kind: str, name: str, key: str, unit: str) -> Figure:
+    """A figure of a generic class, as a part of that class has it."""
+    part = Part.model_validate({"ref": "X", "kind": kind, "pins": {"a": RETURN}, "class": name})
+    return needed(part, key, unit, "")
 
 
 def snapped(value: float, series: str, snap: str) -> float:

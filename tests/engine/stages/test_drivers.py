@@ -31,6 +31,7 @@ def test_the_resistance_of_the_stage_before_counts() -> None:
         ("low_side_driver", "150 mA", "driver.low", 0.4),
         ("darlington_driver", "1 A", "driver.low", 1.3),
         ("high_side_driver", "300 mA", "driver.high", 0.6),
+        ("high_side_driver", "1 A", "driver.high", 0.8),
     ],
 )
 def test_the_load_gets_the_rail_less_the_driver(kind: str, current: str, pin: str, drop: float) -> None:
@@ -62,3 +63,7 @@ def test_a_base_that_would_starve_is_refused() -> None:
         DesignError, match=r"stage driver, setting current: its base current of .* take a Darlington driver"
     ):
         made(choice("contact_nc", "call"), choice("low_side_driver", "driver", current="400 mA"))
+    with pytest.raises(
+        DesignError, match=r"stage driver, setting current: 600 mA is more than a 0\.5 A transistor bears"
+    ):
+        made(CALL, choice("low_side_driver", "driver", current="600 mA"))
