@@ -55,6 +55,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("bench", "origin", "w", "w", "origin", "where the chosen margin comes from, with its quantities", 6),
     Action("bench", "compare", "c", "c", "compare", "this draft beside the revision it began from", 7),
     Action("bench", "history", "h", "h", "history", "the revisions of this design", 8),
+    Action("bench", "waves", "v", "v", "waves", "voltages of the nominal run over time, drawn, with a cursor"),
     Action("bench", "faults", "F", "F", "faults", "what the unit does with each part failed, silent failures first"),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
     Action("bench", "conditions", "d", "d", "conditions", "supply, ambient and source resistance of the design"),
@@ -85,6 +86,22 @@ ACTIONS: tuple[Action, ...] = (
     Action("compare", "column_right", "right", "left right", "column", "the causes of the next revision", 3),
     Action("compare", "origin", "w,enter", "w", "origin", "where the margin of this row comes from", 2),
     Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 4),
+    # waves
+    Action("waves", "left", "left", "left", "cursor left", "the cursor one column earlier"),
+    Action("waves", "right", "right", "left right", "cursor", "the cursor one column later", 2),
+    Action("waves", "far_left", "pageup,comma", "PgUp", "far left", "the cursor some columns earlier"),
+    Action("waves", "far_right", "pagedown,full_stop", "PgDn", "far right", "the cursor some columns later"),
+    Action("waves", "first", "home", "Home", "begin", "the cursor to the begin of the window"),
+    Action("waves", "last", "end", "End", "end", "the cursor to the end of the window"),
+    Action("waves", "next_event", "e", "e", "next event", "the cursor to the next event", 5),
+    Action("waves", "nets", "n", "n", "nets", "which nets are drawn", 3),
+    Action("waves", "sequence", "s", "s", "sequence", "the next sequence of the design", 4),
+    Action("waves", "closer", "plus,equals_sign", "+", "closer", "a quarter of the time in sight, around the cursor"),
+    Action("waves", "wider", "minus", "+ -", "closer, wider", "four times the time in sight", 6),
+    Action("waves", "whole", "0", "0", "whole", "the whole sequence"),
+    Action("waves", "even", "l", "l", "even time", "time even, or stretched behind every event", 7),
+    Action("waves", "plain", "a", "a", "ASCII", "drawn with ASCII signs only, or with dots"),
+    Action("waves", "back", "escape,b", "b", "back", "back (Esc does the same)", 8),
     # faults
     Action("faults", "next_outcome", "n", "n", "next outcome", "to the first fault of the next outcome", 2),
     Action("faults", "back", "escape,b", "b", "back", "back; what is not computed yet is given up (Esc as well)", 3),
@@ -97,6 +114,9 @@ ACTIONS: tuple[Action, ...] = (
     Action("form", "cancel", "escape,ctrl+g", "Esc", "cancel", "leave everything as it is (Ctrl+G does the same)", 4),
     Action("pick", "choose", "enter", "Enter", "choose", "take this one", 2),
     Action("pick", "cancel", "escape,b", "b", "cancel", "leave everything as it is (Esc does the same)", 3),
+    Action("mark", "mark", "space", "space", "mark", "mark or unmark this one", 2),
+    Action("mark", "choose", "enter", "Enter", "take", "take the marked ones", 3),
+    Action("mark", "cancel", "escape,b", "b", "cancel", "leave everything as it is (Esc does the same)", 4),
     Action("waiting", "now", "i", "i", "save incomplete", "save now, stamped incomplete: without worst corners", 2),
     Action("waiting", "cancel", "escape,b", "b", "cancel", "do not save (Esc does the same)", 3),
     Action("entry", "commit", "enter", "Enter", "take it", "put this value in", 2),
@@ -104,7 +124,7 @@ ACTIONS: tuple[Action, ...] = (
 )
 
 
-_DIALOGS = {"question", "form", "pick", "waiting", "entry"}
+_DIALOGS = {"question", "form", "pick", "mark", "waiting", "entry"}
 
 
 def of(where: str) -> tuple[Action, ...]:

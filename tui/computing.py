@@ -135,6 +135,14 @@ class Computing:
 
         return self._ask(question, post)
 
+    def waves(self, design: Design, sequence: str, post: Post) -> int:
+        """Begins the nominal run of a sequence."""
+
+        def question(report: Callable[[object], None], progress: Progress, stale: CancelledYet) -> object:
+            return self._solver.waves(design, sequence, cancelled=stale)
+
+        return self._ask(question, post)
+
     def _ask(self, question: Question, post: Post) -> int:
         """Asks one thing aside of margins and causes; an older such question stops."""
         self._requests += 1

@@ -12,6 +12,7 @@ from ..engine.results import MarginSheet
 if TYPE_CHECKING:
     from ..engine.studies.causes import CausesSheet
     from ..engine.studies.fault_outcomes import FaultSheet
+    from ..engine.studies.waves import Waves
 
 Cancelled = Callable[[], bool]
 Progress = Callable[[int, int], None]
@@ -57,6 +58,13 @@ class Faults(Protocol):
         """The whole sheet. Raises EngineError with one line, Cancelled when asked to stop."""
 
 
+class WavesOf(Protocol):
+    """The nominal run of a sequence as voltages over time."""
+
+    def __call__(self, design: Design, sequence: str, *, cancelled: Cancelled) -> Waves:
+        """All nets at every step. Raises EngineError with one line, Cancelled when asked to stop."""
+
+
 class Preparation(Protocol):
     """A child process that compiles the solver once for this machine."""
 
@@ -83,6 +91,12 @@ def _faults(design: Design, **how: Any) -> FaultSheet:
     return study(design, **how)
 
 
+def _waves(design: Design, sequence: str, **how: Any) -> Waves:
+    from ..engine.studies.waves import waves
+
+    return waves(design, sequence, **how)
+
+
 @dataclass(frozen=True)
 class Solver:
     """The engine's studies, the number of lanes of a spread, and how the compiled solver is prepared."""
@@ -93,6 +107,7 @@ class Solver:
     prepare: Callable[[], Preparation]
     lanes: int = 1000
     faults: Faults = _faults
+    waves: WavesOf = _waves
 
 
 def own_solver() -> Solver:

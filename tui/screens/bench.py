@@ -24,6 +24,9 @@ from .faults import FaultsScreen
 from .history import HistoryScreen
 from .origin import OriginPage
 from .saving import Saving
+from .waves import WavesScreen
+
+RAILS = ("supply", "0V")
 
 
 class BenchScreen(BenchView):
@@ -225,6 +228,13 @@ class BenchScreen(BenchView):
         else:
             sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
             self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
+
+    def action_waves(self) -> None:
+        """Voltages over time: first of the nets of the part under the hand, then of the loads."""
+        loads = [ref for stage in self.design.stages for role, ref in stage.roles.items() if role.startswith("load")]
+        refs = [*([] if self.ref is None else [self.ref]), *loads]
+        nets = dict.fromkeys(net for ref in refs for net in self.design.part(ref).pins.values() if net not in RAILS)
+        self.app.push_screen(WavesScreen(self.drafting.name, self.design, list(nets), self.computing))
 
     def action_faults(self) -> None:
         """What the draft does with each single fault."""

@@ -85,6 +85,57 @@ class Pick(ModalScreen[str | None]):
         self.dismiss(None)
 
 
+class Mark(ModalScreen[list[str] | None]):
+    """Some of a list, up to a number, in the order in which they were marked; None when cancelled."""
+
+    BINDINGS: ClassVar[list[BindingType]] = bindings("mark")
+
+    def __init__(self, title: str, rows: Sequence[tuple[str, str]], marked: Sequence[str], most: int) -> None:
+        super().__init__()
+        self._title = title
+        self._choices = tuple(rows)
+        self._marked = [key for key in marked if key in dict(rows)]
+        self._most = most
+
+    def compose(self) -> ComposeResult:
+        """The list at the foot of the screen."""
+        with Vertical(classes="dialog"):
+            yield Rule()
+            rows = RowList(empty="nothing to choose from", id="choices")
+            rows.styles.height = max(2, len(self._choices) + 1)
+            yield rows
+            yield Notice()
+            yield KeyLine("mark")
+
+    def on_mount(self) -> None:
+        """Shows the choices."""
+        self._show()
+
+    def _show(self) -> None:
+        rows = [Row(key, line("* " if key in self._marked else "  ", text)) for key, text in self._choices]
+        self.query_one(RowList).show(rows, heading=line(Span(self._title, "strong")))
+
+    def action_mark(self) -> None:
+        """Marks or unmarks this one."""
+        key = self.query_one(RowList).key
+        if key in self._marked:
+            self._marked.remove(key)
+        elif len(self._marked) == self._most:
+            self.query_one(Notice).refuse(f"{self._most} are marked; unmark one first")
+        elif key is not None:
+            self._marked.append(key)
+        self._show()
+
+    def action_choose(self) -> None:
+        """These; the one under the hand where none is marked."""
+        key = self.query_one(RowList).key
+        self.dismiss(self._marked or ([] if key is None else [key]))
+
+    def action_cancel(self) -> None:
+        """As it was."""
+        self.dismiss(None)
+
+
 @dataclass(frozen=True, slots=True)
 class Field:
     """One line of a form: its name, what stands before it, what it begins with, and a grey example."""

@@ -30,7 +30,7 @@ class FaultsScreen(Page[None]):
 
     def __init__(self, name: str, design: Design, computing: Computing) -> None:
         super().__init__()
-        self._name = name
+        self._whose = name
         self._design = design
         self._computing = computing
         self._sheet: FaultSheet | None = None
@@ -73,7 +73,7 @@ class FaultsScreen(Page[None]):
         self._show_hand()
 
     def _show_title(self) -> None:
-        title = Span(f" {self._name}: single faults at nominal values", "strong")
+        title = Span(f" {self._whose}: single faults at nominal values", "strong")
         self.query_one("#title", Lines).show(line(title, f"   {self._progress}"))
 
     def _show_hand(self) -> None:
