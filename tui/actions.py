@@ -57,6 +57,9 @@ ACTIONS: tuple[Action, ...] = (
     Action("bench", "history", "h", "h", "history", "the revisions of this design", 8),
     Action("bench", "waves", "v", "v", "waves", "voltages of the nominal run over time, drawn, with a cursor"),
     Action("bench", "faults", "F", "F", "faults", "what the unit does with each part failed, silent failures first"),
+    Action(
+        "bench", "immunity", "I", "I", "immunity", "how little charge trips an alarm, net by net, the weakest first"
+    ),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
     Action("bench", "conditions", "d", "d", "conditions", "supply, ambient and source resistance of the design"),
     Action("bench", "add_stage", "A", "A", "add stage", "a free stage at the end of the chain"),
@@ -105,6 +108,8 @@ ACTIONS: tuple[Action, ...] = (
     # faults
     Action("faults", "next_outcome", "n", "n", "next outcome", "to the first fault of the next outcome", 2),
     Action("faults", "back", "escape,b", "b", "back", "back; what is not computed yet is given up (Esc as well)", 3),
+    # immunity
+    Action("immunity", "back", "escape,b", "b", "back", "back; what is not computed yet is given up (Esc as well)", 3),
     # questions
     Action("question", "yes", "y", "y", "yes", "do it", 2),
     Action("question", "no", "n,escape", "n", "no", "leave it as it is (Esc does the same)", 3),

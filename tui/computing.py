@@ -143,6 +143,14 @@ class Computing:
 
         return self._ask(question, post)
 
+    def immunity(self, design: Design, post: Post) -> int:
+        """Begins computing how little charge trips an alarm; the sheet so far is an answer that is not whole."""
+
+        def question(report: Callable[[object], None], progress: Progress, stale: CancelledYet) -> object:
+            return self._solver.immunity(design, report=report, progress=progress, cancelled=stale)
+
+        return self._ask(question, post)
+
     def _ask(self, question: Question, post: Post) -> int:
         """Asks one thing aside of margins and causes; an older such question stops."""
         self._requests += 1

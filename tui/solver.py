@@ -12,6 +12,7 @@ from ..engine.results import MarginSheet
 if TYPE_CHECKING:
     from ..engine.studies.causes import CausesSheet
     from ..engine.studies.fault_outcomes import FaultSheet
+    from ..engine.studies.immunity import ImmunitySheet
     from ..engine.studies.waves import Waves
 
 Cancelled = Callable[[], bool]
@@ -65,6 +66,15 @@ class WavesOf(Protocol):
         """All nets at every step. Raises EngineError with one line, Cancelled when asked to stop."""
 
 
+class Immunity(Protocol):
+    """How little charge trips an alarm of a design, net by net; reports the sheet so far."""
+
+    def __call__(
+        self, design: Design, *, report: Callable[[ImmunitySheet], None], progress: Progress, cancelled: Cancelled
+    ) -> ImmunitySheet:
+        """The whole sheet. Raises EngineError with one line, Cancelled when asked to stop."""
+
+
 class Preparation(Protocol):
     """A child process that compiles the solver once for this machine."""
 
@@ -97,6 +107,12 @@ def _waves(design: Design, sequence: str, **how: Any) -> Waves:
     return waves(design, sequence, **how)
 
 
+def _immunity(design: Design, **how: Any) -> ImmunitySheet:
+    from ..engine.studies.immunity import study
+
+    return study(design, **how)
+
+
 @dataclass(frozen=True)
 class Solver:
     """The engine's studies, the number of lanes of a spread, and how the compiled solver is prepared."""
@@ -108,6 +124,7 @@ class Solver:
     lanes: int = 1000
     faults: Faults = _faults
     waves: WavesOf = _waves
+    immunity: Immunity = _immunity
 
 
 def own_solver() -> Solver:

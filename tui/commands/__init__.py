@@ -12,6 +12,7 @@ COMMANDS = {
     "margins": ("margins", "recompute every margin of a design"),
     "waves": ("waves", "voltages of the nominal run over time, to a CSV file"),
     "faults": ("faults", "what the unit does with each part failed, silent failures first"),
+    "immunity": ("immunity", "the least charge that trips an alarm, net by net, and the slew of the supply"),
     "compare": ("compare", "the stored margins of several revisions, what got worse first"),
     "causes": ("causes", "what each changed part did to each margin"),
     "import": ("take_in", "put a design document on the shelf"),

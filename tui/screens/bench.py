@@ -22,6 +22,7 @@ from .design_questions import ask_condition, ask_field, ask_new_part, ask_requir
 from .dialog import Answers, Ask, Field, Form
 from .faults import FaultsScreen
 from .history import HistoryScreen
+from .immunity import ImmunityScreen
 from .origin import OriginPage
 from .saving import Saving
 from .waves import WavesScreen
@@ -239,6 +240,10 @@ class BenchScreen(BenchView):
     def action_faults(self) -> None:
         """What the draft does with each single fault."""
         self.app.push_screen(FaultsScreen(self.drafting.name, self.design, self.computing))
+
+    def action_immunity(self) -> None:
+        """How little charge trips an alarm of the draft, net by net."""
+        self.app.push_screen(ImmunityScreen(self.drafting.name, self.design, self.computing))
 
     def action_history(self) -> None:
         """The revisions of this design."""
