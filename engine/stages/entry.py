@@ -5,6 +5,7 @@ from __future__ import annotations
 from .kind import RETURN_PORT, WORD, Made, Place, Port, Setting, StageKind, Wire
 from .plan import RETURN, Plan
 
+SPARE = 3.0  # times its drop that the filter resistor is rated for: small stages draw more while they switch
 _DIODES = {"silicon": ("diode", "1 A rectifier", 0.85), "schottky": ("schottky", "1 A Schottky", 0.45)}
 """Kind, class and largest forward voltage in V at 1 A, cold (from memory)."""
 
@@ -18,7 +19,7 @@ def _make(plan: Plan) -> Made:
         plan.diode(plan.port("feed"), plan.port("rail"), "reverse_diode", kind=kind, name=generic)
         rail = plan.port("rail")
     current, drop, slew = plan.above_zero("small_current"), plan.above_zero("drop"), plan.above_zero("slew")
-    ohms = plan.resistor(drop / current, rail, quiet, "filter_resistor", snap="down")
+    ohms = plan.resistor(drop / current, rail, quiet, "filter_resistor", snap="down", volts=SPARE * drop)
     farads = plan.capacitor(plan.supply.max / (ohms * slew), quiet, RETURN, "filter_capacitor", snap="up")
     return Made(rail_drop=lost, quiet_drop=lost + ohms * current, settles=5.0 * ohms * farads)
 

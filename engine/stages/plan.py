@@ -161,11 +161,20 @@ class Plan:
         return {part["ref"] for part in self.parts}
 
     def resistor(
-        self, ohms: float, a: str, b: str, role: str | None = None, *, snap: str = "nearest", tolerance: str = "5 %"
+        self,
+        ohms: float,
+        a: str,
+        b: str,
+        role: str | None = None,
+        *,
+        snap: str = "nearest",
+        tolerance: str = "5 %",
+        volts: float | None = None,
     ) -> float:
         """A resistor of the preferred value ``nearest``, ``down`` or ``up``; returns that value in ohm.
 
-        Its power rating is the least usual one that bears the whole rail across it at the customary 0.6.
+        Its power rating is the least usual one that bears ``volts``, the whole rail where none are given, at the
+        customary 0.6.
         """
         value = snapped(min(max(ohms, _LEAST), _MOST), series_for(read(tolerance, "%")), snap)
         self.part(
@@ -175,7 +184,7 @@ class Plan:
             role,
             value=write(value, "ohm"),
             tolerance=tolerance,
-            rating=f"{_at_least(self.rail.max**2 / value / 0.6, _POWERS):g} W",
+            rating=f"{_at_least((self.rail.max if volts is None else volts) ** 2 / value / 0.6, _POWERS):g} W",
         )
         return value
 

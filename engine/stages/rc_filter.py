@@ -2,13 +2,16 @@
 
 from __future__ import annotations
 
+from .entry import SPARE
 from .kind import RETURN_PORT, Made, Place, Port, Setting, StageKind, Wire
 from .plan import RETURN, Plan
 
 
 def _make(plan: Plan) -> Made:
     current, drop = plan.above_zero("small_current"), plan.above_zero("drop")
-    ohms = plan.resistor(drop / current, plan.port("feed"), plan.port("quiet"), "filter_resistor", snap="down")
+    ohms = plan.resistor(
+        drop / current, plan.port("feed"), plan.port("quiet"), "filter_resistor", snap="down", volts=SPARE * drop
+    )
     bridged = current * plan.above_zero("bridge") / (plan.share("sag") * plan.rail.min)
     slewed = plan.supply.max / (ohms * plan.above_zero("slew"))
     farads = plan.capacitor(max(bridged, slewed), plan.port("quiet"), RETURN, "filter_capacitor", snap="up")

@@ -60,6 +60,13 @@ def kind_named(name: str) -> StageKind:
     return found
 
 
+def checked(choice: Choice) -> Choice:
+    """The choice itself, where its settings can be read. Raises DesignError naming stage and setting."""
+    any_rail = Levels(12.0, 12.0, 12.0)
+    Plan(kind_named(choice.kind), choice.title(), choice.settings, {}, any_rail, any_rail, _ROOM).check()
+    return choice
+
+
 def make_row(
     conditions: Conditions, choices: Sequence[Choice], place: Place = Place(), taken: frozenset[str] = frozenset()
 ) -> tuple[MadeStage, ...]:

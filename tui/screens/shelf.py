@@ -23,9 +23,11 @@ from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
 from .bench import BenchScreen
 from .dialog import Answers, Field, Form, Pick
+from .new_design import ask_new_design
 from .page import Page
 
 _WIDTHS = (18, 8, 16, 9)
+_ROW = "row"
 _LARGEST_DOCUMENT = 16_000_000
 
 
@@ -39,6 +41,7 @@ class ShelfScreen(Page[None]):
         super().__init__()
         self._store = store
         self._computing = computing
+        self._told: set[str] = set()
 
     def compose_body(self) -> ComposeResult:
         """Title and rows."""
@@ -68,26 +71,34 @@ class ShelfScreen(Page[None]):
         """Opens the bench of the design under the hand."""
         name = self.query_one(RowList).key
         if name is not None:
-            self.attempt(lambda: self.app.push_screen(BenchScreen(Drafting(self._store, name), self._computing)))
+            self.attempt(lambda: self.app.push_screen(self._bench(name)))
+
+    def _bench(self, name: str) -> BenchScreen:
+        return BenchScreen(Drafting(self._store, name), self._computing, self._told)
 
     def action_quit(self) -> None:
         """Leaves; every edit is kept already."""
         self.app.exit()
 
     def action_new(self) -> None:
-        """A new design: empty, or a copy of one."""
+        """A new design: of catalogue stages, empty, or a copy of one."""
         names = [row.key for row in self.query_one(RowList).rows]
-        if not names:
-            self._ask_name(None)
-            return
         here = self.query_one(RowList).key
         rows = [
+            (_ROW, "stages of the catalogue in a row, sized by what is asked of them"),
             ("", "an empty design"),
             *((f"copy {n}", f"a copy of {n}") for n in sorted(names, key=lambda n: n != here)),
         ]
 
+        def made(name: str | None) -> None:
+            if name is not None:
+                self._show(name)
+                self.action_open()
+
         def chosen(key: str | None) -> None:
-            if key is not None:
+            if key == _ROW:
+                ask_new_design(self.app, self._store, made)
+            elif key is not None:
                 self._ask_name(key.removeprefix("copy ") or None)
 
         self.app.push_screen(Pick("A new design", rows), chosen)
