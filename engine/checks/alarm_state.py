@@ -92,12 +92,25 @@ def alarm_states(view: View, stage: Stage | None = None) -> Sequence[AlarmState]
     return [AlarmState(load.ref, None, (voltage(plus, minus), least))]
 
 
+def settling(view: View, states: Sequence[AlarmState], sequence: str, usual: float) -> float:
+    """How long a trial waits for an alarm, s: ``usual`` for a latch, which tells at once; for a load as long as the
+    sequence itself gives it after its first event, for there may be a delay before it."""
+    if all(state.latch is not None for state in states):
+        return usual
+    return max(usual, view.ends(sequence) - _first_event(view, sequence))
+
+
+def _first_event(view: View, sequence: str) -> float:
+    """When the first event happens that is none of the supply; 0 where there is none."""
+    events = view.design.sequences[sequence].events
+    own = [read(event.at, "s") for event in events if not isinstance(event, ConnectSupply | DisconnectSupply)]
+    return min(own, default=0.0)
+
+
 def standby(view: View, sequence: str) -> Anchor:
     """The moment ``standby``, else just before the first event that is none of the supply, else half of the time."""
     found = view.moment(sequence, "standby")
     if found is not None:
         return found
-    events = view.design.sequences[sequence].events
-    own = [read(e.at, "s") for e in events if not isinstance(e, ConnectSupply | DisconnectSupply)]
-    first = min(own, default=0.0)
+    first = _first_event(view, sequence)
     return Anchor(0.999 * first if first > 0.0 else 0.5 * view.ends(sequence))

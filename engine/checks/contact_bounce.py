@@ -19,7 +19,7 @@ from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..quantity import read
 from ..run import Observed
-from .alarm_state import TOLD_BY, alarm_states, standby
+from .alarm_state import TOLD_BY, alarm_states, settling, standby
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .seen import Seen
 from .trial import Trial
@@ -44,16 +44,20 @@ def acceptance_asks(check: Check, view: View) -> Iterator[Ask]:
 
 
 def _contacts(check: Check, view: View) -> Iterator[tuple[Requirement, Part]]:
+    """The contact that a requirement names; one that names none is about every contact that has the role."""
     for requirement in view.design.requirements:
-        if requirement.check == check.slug:
-            if requirement.of is None or not view.design.has_part(requirement.of):
-                raise CircuitError(f'requirement {check.slug}: write "of", the contact it is about, such as "S1"')
-            part = view.design.part(requirement.of)
-            if part.kind != "contact" or part.operated_by is not None:
-                raise CircuitError(
-                    f"requirement {check.slug} of {part.ref}: it is no contact that events move; name one"
-                )
-            yield requirement, part
+        if requirement.check != check.slug:
+            continue
+        if requirement.of is None:
+            found = [part for _, _, part in view.with_role("contact") if part.kind == "contact"]
+            yield from ((requirement, part) for part in found if part.operated_by is None)
+            continue
+        if not view.design.has_part(requirement.of):
+            raise CircuitError(f'requirement {check.slug}: write "of", the contact it is about, such as "S1"')
+        part = view.design.part(requirement.of)
+        if part.kind != "contact" or part.operated_by is not None:
+            raise CircuitError(f"requirement {check.slug} of {part.ref}: it is no contact that events move; name one")
+        yield requirement, part
 
 
 def _longest_bounce(view: View, requirement: Requirement | None, part: Part) -> float | None:
@@ -88,7 +92,7 @@ def _trial(
 ) -> Trial:
     """``drive(line, knob, over)`` moves the contact so that its event is over at the same instant in every lane."""
     states = alarm_states(view)
-    settle = view.extra(requirement, "settle", "s") or SETTLE
+    settle = view.extra(requirement, "settle", "s") or settling(view, states, sequence, SETTLE)
     over = 1e-3 * longest + longest
 
     def gives_in(lanes: Lanes, observed: Observed) -> Mask:

@@ -17,7 +17,7 @@ from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.signals import Anchor, Row, level, maximum, minimum, voltage
 from ..quantity import read
-from .alarm_state import TOLD_BY, alarm_states
+from .alarm_state import TOLD_BY, alarm_states, settling
 from .charge_trial import SETTLE, charge_trial
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
@@ -57,13 +57,13 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     if charge == 0.0:
         raise CircuitError(f"sequence {sequence}, event inject: a charge of {pulse.charge} is no pulse; write another")
     sign = 1.0 if charge > 0.0 else -1.0
-    settle = view.extra(requirement, "settle", "s") or max(SETTLE, 10.0 * width)
+    settle = view.extra(requirement, "settle", "s") or settling(view, states, sequence, max(SETTLE, 10.0 * width))
     line_net = pulse.net
 
     def put(line: Timeline, begin: float, knob: Floats) -> None:
         line.inject(begin, line_net, sign * knob, width)
 
-    own = _moved(net, sign, Anchor(at - BEFORE), Anchor(at + settle))
+    own = _moved(net, sign, Anchor(at - BEFORE), Anchor(min(at + settle, view.ends(sequence))))
     # In the trial the pulse comes at once, and what the net stands at is the start.
     tried = _moved(net, sign, Anchor(0.0), Anchor(settle))
     trial = charge_trial(

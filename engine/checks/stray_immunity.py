@@ -18,7 +18,7 @@ from ..primitives.builder import RETURN
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import maximum, minimum, voltage
 from ..quantity import read
-from .alarm_state import TOLD_BY, AlarmState, alarm_states, standby
+from .alarm_state import TOLD_BY, AlarmState, alarm_states, settling, standby
 from .base_capacitance import held_by
 from .charge_trial import SETTLE, Put, charge_trial
 from .check import Ask, Check, Judged, ratio, unknown
@@ -69,7 +69,7 @@ def _ask(check: Check, view: View, net: str) -> Ask:
     rows = (*tops, *bottoms) if stated is None else ()
     sequences = tuple(dict.fromkeys((sequence, *view.design.sequences))) if stated is None else (sequence,)
     usual = nominal * sum(farads) if stated is None else abs(stated)
-    settle = view.extra(requirement, "settle", "s") or SETTLE
+    settle = view.extra(requirement, "settle", "s") or settling(view, states, sequence, SETTLE)
 
     trial = charge_trial(
         f"charge {net}",

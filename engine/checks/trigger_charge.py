@@ -1,6 +1,6 @@
-"""Check 4: does the trigger's capacitor bring enough charge to fire the latch?
+"""Check 4: does the trigger's capacitor bring enough charge to fire the latch, or whatever it triggers?
 
-The trial makes the capacitor smaller until what the sequence does to fire the latch no longer fires it. Demand is the
+The trial makes the capacitor smaller until what the sequence does to fire it no longer does. Demand is the
 charge of the smallest one that does, capability that of the one in the design, at the same swing of its driven side.
 """
 
@@ -18,10 +18,10 @@ from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, crossing, maximum, minimum, voltage
 from ..quantity import read
 from ..run import Observed
-from .alarm_state import AlarmState
+from .alarm_state import TOLD_BY, alarm_states, settling
 from .base_capacitance import held_by
 from .check import Ask, Check, Judged, Mask, ratio, unknown
-from .complementary_latch import TRIP_CURRENT, Latch, latches
+from .complementary_latch import TRIP_CURRENT, Latch
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -33,14 +33,12 @@ SETTLE = 0.1  # s after it at which the last look is taken, where the requiremen
 
 def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every trigger capacitor."""
-    found = list(latches(view))
     for stage, _, part in view.with_role("trigger_capacitor"):
-        own = [latch for latch in found if latch.stage is stage] or found
-        yield _ask(check, view, stage, part, own[0] if own else None)
+        yield _ask(check, view, stage, part)
 
 
 def _fires(view: View, sequence: str, from_: str | None) -> tuple[float, float] | None:
-    """When the event happens that fires the latch, and how long it takes: the first that is none of the supply."""
+    """When the event happens that raises the alarm, and how long it takes: the first that is none of the supply."""
     if from_ is not None:
         anchor = view.anchor(from_, sequence)
         return None if anchor.row is not None else (anchor.by, 0.0)
@@ -55,29 +53,29 @@ def _fires(view: View, sequence: str, from_: str | None) -> tuple[float, float] 
     return None
 
 
-def _ask(check: Check, view: View, stage: Stage, part: Part, latch: Latch | None) -> Ask:
+def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     sequence = view.sequence(requirement)
     required = view.required(check.slug, check.required, requirement)
-    if latch is None:
-        missing = "the roles latch_npn and latch_pnp of the latch that it fires"
-        return unknown(check, stage.name, part.ref, sequence, required, missing)
+    states = alarm_states(view, stage)
+    if not states:
+        return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
+    state = states[0]
+    latch = state.latch
     fires = _fires(view, sequence, None if requirement is None else requirement.from_)
     if fires is None:
-        missing = f"an event in sequence {sequence} that fires the latch, or its time as from in the requirement"
+        missing = f"an event in sequence {sequence} that raises the alarm, or its time as from in the requirement"
         return unknown(check, stage.name, part.ref, sequence, required, missing)
     at, lasts = fires
     before = min(BEFORE, 0.5 * at)
-    settle = view.extra(requirement, "settle", "s") or SETTLE
+    settle = view.extra(requirement, "settle", "s") or settling(view, states, sequence, SETTLE)
     over = before + lasts
-    state = AlarmState(f"{latch.stage.name} {latch.npn.ref}", latch, None)
-    begin, end = Anchor(at - before), Anchor(at + lasts + settle)
-    driven = _driven(latch, part)
-    top, bottom = maximum(voltage(driven), begin, end), minimum(voltage(driven), begin, end)
-    lifted = [
-        crossing(lift, _turn_on(view, who), True, begin)
-        for lift, who in zip(latch.lifts, (latch.npn, latch.pnp), strict=True)
-    ]
+    begin, end = Anchor(at - before), Anchor(min(at + lasts + settle, view.ends(sequence)))
+    swings = [(maximum(voltage(net), begin, end), minimum(voltage(net), begin, end)) for net in part.pins.values()]
+    lifted = []
+    if latch is not None:
+        pair = zip(latch.lifts, (latch.npn, latch.pnp), strict=True)
+        lifted = [crossing(lift, _turn_on(view, who), True, begin) for lift, who in pair]
     key = part.ref, "value"
 
     def drive(line: Timeline, knob: Floats) -> None:
@@ -101,36 +99,31 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, latch: Latch | None
     )
 
     def judge(seen: Seen) -> Judged:
-        swing = seen.value(top, sequence) - seen.value(bottom, sequence)
+        # Its driven side is the one that swings more.
+        swing = np.max([seen.value(top, sequence) - seen.value(low, sequence) for top, low in swings], axis=0)
         brought = seen.lanes[key] * swing
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), capability=brought)
-        between = np.abs(seen.time(lifted[0], sequence) - seen.time(lifted[1], sequence))
         outcomes = [
             (edge.missing, check.words["missing"]),
             (edge.always, check.words["always"]),
         ]
-        hand = _hand(latch, part, seen, swing, between)
+        hand = None
+        if latch is not None:
+            between = np.abs(seen.time(lifted[0], sequence) - seen.time(lifted[1], sequence))
+            hand = _hand(latch, part, seen, swing, between)
         return ratio(brought / edge.knob, brought, outcomes, hand)
 
+    rows = (*(row for pair in swings for row in pair), *lifted)
     screen = 1.0 / (1.0 - required) if required < 1.0 else None
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, (top, bottom, *lifted), trial, screen)
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows, trial, screen)
 
 
 def _turn_on(view: View, part: Part) -> float:
     base_voltage = view.bench(part.ref).base_voltage
     assert base_voltage is not None
     return float(base_voltage(view.circuit.nominal(), TRIP_CURRENT)[0])
-
-
-def _driven(latch: Latch, part: Part) -> str:
-    """The side of the trigger capacitor that is further from the latch: not on a net of its transistors or of a diode
-    that leads to one."""
-    near = {*latch.npn.pins.values(), *latch.pnp.pins.values()}
-    near |= {net for diode in _diodes(latch) for net in diode.pins.values()}
-    pins = list(part.pins.values())
-    return next((net for net in pins if net not in near), pins[0])
 
 
 def _diodes(latch: Latch) -> list[Part]:

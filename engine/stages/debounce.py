@@ -24,7 +24,15 @@ def _make(plan: Plan) -> Made:
     ohms = plan.resistor(most, plan.port("in"), plan.port("out"), "debounce_resistor", snap="down")
     plan.capacitor(tau / (ohms + plan.arriving_ohms), plan.port("out"), RETURN, "debounce_capacitor")
     before = Drive(Sense.LEVEL) if plan.drive is None else plan.drive
-    return Made(output=Drive(Sense.LEVEL, before.drop, before.ohms + ohms), settles=5.0 * tau, lasts=5.0 * tau)
+    return Made(
+        output=Drive(Sense.LEVEL, before.drop, before.ohms + ohms),
+        settles=5.0 * tau,
+        lasts=5.0 * tau,
+        requirements=(
+            {"check": "contact_bounce", "max": plan.text("bounce")},
+            {"check": "acceptance", "min": plan.text("event")},
+        ),
+    )
 
 
 KIND = StageKind(

@@ -13,8 +13,8 @@ from typing import Any
 
 import numpy as np
 
-from ..checks.alarm_state import TOLD_BY, alarm_states, standby
-from ..checks.charge_trial import charge_trial
+from ..checks.alarm_state import TOLD_BY, alarm_states, settling, standby
+from ..checks.charge_trial import SETTLE, charge_trial
 from ..checks.check import Ask
 from ..checks.view import MAIN, View
 from ..circuit.circuit import Circuit, build
@@ -128,7 +128,8 @@ def _nets(
             line.inject(at, net, signs * knob, WIDTH)
 
     start = standby(view, MAIN)
-    trial = charge_trial("immunity", MAIN, start, states, [put], LEAST, MOST)
+    settle = settling(view, states, MAIN, SETTLE)
+    trial = charge_trial("immunity", MAIN, start, states, [put], LEAST, MOST, settle)
     # Every net begins with the same stand-by: it is run once in each corner.
     base = lanes_of(circuit.columns, corners)
     begin = begin_of(trial)
