@@ -13,7 +13,6 @@ import numpy as np
 from ..circuit.timeline import Timeline
 from ..design.part import Part
 from ..design.requirement import Requirement
-from ..design.sequence import ContactEvent
 from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
@@ -21,6 +20,7 @@ from ..quantity import read
 from ..run import Observed
 from .alarm_state import TOLD_BY, alarm_states, settling, standby
 from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .contact_events import contacts, longest_bounce, states
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -33,51 +33,14 @@ EVENTS = 30.0, 3e-3  # of the trial, in lengths of the shortest true event
 
 def bounce_asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every contact whose bounce a requirement wants to be ignored."""
-    for requirement, part in _contacts(check, view):
+    for requirement, part in contacts(check, view):
         yield _bounce_ask(check, view, requirement, part)
 
 
 def acceptance_asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every contact whose events a requirement wants to be accepted."""
-    for requirement, part in _contacts(check, view):
+    for requirement, part in contacts(check, view):
         yield _acceptance_ask(check, view, requirement, part)
-
-
-def _contacts(check: Check, view: View) -> Iterator[tuple[Requirement, Part]]:
-    """The contact that a requirement names; one that names none is about every contact that has the role."""
-    for requirement in view.design.requirements:
-        if requirement.check != check.slug:
-            continue
-        if requirement.of is None:
-            found = [part for _, _, part in view.with_role("contact") if part.kind == "contact"]
-            yield from ((requirement, part) for part in found if part.operated_by is None)
-            continue
-        if not view.design.has_part(requirement.of):
-            raise CircuitError(f'requirement {check.slug}: write "of", the contact it is about, such as "S1"')
-        part = view.design.part(requirement.of)
-        if part.kind != "contact" or part.operated_by is not None:
-            raise CircuitError(f"requirement {check.slug} of {part.ref}: it is no contact that events move; name one")
-        yield requirement, part
-
-
-def _longest_bounce(view: View, requirement: Requirement | None, part: Part) -> float | None:
-    """Of the requirement, of the contact's data, or of an event of the contact in any sequence."""
-    if requirement is not None and requirement.max is not None:
-        return read(requirement.max, "s")
-    datum = view.datum(part, "bounce", "s")
-    if datum is not None:
-        return datum.high
-    events = [e for s in view.design.sequences.values() for e in s.events if isinstance(e, ContactEvent)]
-    lasting = [read(e.bounce.for_, "s") for e in events if e.part == part.ref and e.bounce is not None]
-    return max(lasting, default=None)
-
-
-def _active(view: View, sequence: str, part: Part) -> str:
-    """The state of a contact in its event: what the sequence first does with it, else what it is not at rest."""
-    for event in view.design.sequences[sequence].events:
-        if isinstance(event, ContactEvent) and event.part == part.ref:
-            return "closed" if event.event == "close" else "open"
-    return "open" if part.form == "break" else "closed"
 
 
 def _trial(
@@ -91,12 +54,12 @@ def _trial(
     accepts: bool,
 ) -> Trial:
     """``drive(line, knob, over)`` moves the contact so that its event is over at the same instant in every lane."""
-    states = alarm_states(view)
-    settle = view.extra(requirement, "settle", "s") or settling(view, states, sequence, SETTLE)
+    told_by = alarm_states(view)
+    settle = view.extra(requirement, "settle", "s") or settling(view, told_by, sequence, SETTLE)
     over = 1e-3 * longest + longest
 
     def gives_in(lanes: Lanes, observed: Observed) -> Mask:
-        came = np.any([state.tripped(lanes, observed, over, settle) for state in states], axis=0)
+        came = np.any([state.tripped(lanes, observed, over, settle) for state in told_by], axis=0)
         return np.asarray(came != accepts)
 
     return Trial(
@@ -107,7 +70,7 @@ def _trial(
         ends=over + settle,
         safe=knobs[0],
         severe=knobs[1],
-        rows=tuple(row for state in states for row in state.watch(over, settle)),
+        rows=tuple(row for state in told_by for row in state.watch(over, settle)),
         gives_in=gives_in,
     )
 
@@ -116,15 +79,14 @@ def _bounce_ask(check: Check, view: View, requirement: Requirement, part: Part) 
     stage = view.design.stage_of(part.ref)
     sequence = view.sequence(requirement)
     required = view.required(check.slug, check.required, requirement)
-    longest = _longest_bounce(view, requirement, part)
+    longest = longest_bounce(view, requirement, part)
     if longest is None or longest <= 0.0:
         missing = f"bounce of {part.ref}, or max in the requirement contact_bounce"
         return unknown(check, stage.name, part.ref, sequence, required, missing)
     if not alarm_states(view, stage):
         return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
     times = int(view.extra(requirement, "times", "") or TIMES)
-    active = _active(view, sequence, part)
-    rest = "open" if active == "closed" else "closed"
+    active, rest = states(view, sequence, part)
 
     def drive(line: Timeline, knob: Floats, over: float) -> None:
         line.bounce(part.ref, over - knob, active, knob, times)
@@ -159,10 +121,9 @@ def _acceptance_ask(check: Check, view: View, requirement: Requirement, part: Pa
     shortest = read(requirement.min, "s")
     if shortest <= 0.0:
         raise CircuitError(f"requirement acceptance of {part.ref}, min: {requirement.min} cannot be; write a time")
-    bounce = _longest_bounce(view, requirement, part) or 0.0
+    bounce = longest_bounce(view, requirement, part) or 0.0
     times = int(view.extra(requirement, "times", "") or TIMES)
-    active = _active(view, sequence, part)
-    rest = "open" if active == "closed" else "closed"
+    active, rest = states(view, sequence, part)
 
     def drive(line: Timeline, knob: Floats, over: float) -> None:
         begin = over - 1.0 / knob

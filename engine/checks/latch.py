@@ -10,6 +10,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..circuit.timeline import Timeline
+from ..design.part import Stage
 from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, level, minimum
@@ -25,6 +26,15 @@ SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
 
 
+def latched(view: View, stage: Stage, sequence: str) -> Anchor:
+    """When the latch is set: a moment of that kind, else soon after the load came on, else in the middle."""
+    start = view.moment(sequence, "latched", "sounding", "on")
+    if start is None:
+        load = view.load(stage)
+        start = Anchor(0.5 * view.ends(sequence)) if load is None else Anchor(1e-2, view.event(f"{load.ref} on"))
+    return start
+
+
 def hold_trial_of(latch: Latch) -> Trial:
     """The trial behind every check that must know when a latch lets go: ``rows`` begin with the latch current and end
     with the voltages at the latch and of the supply, all at the last supply at which it holds."""
@@ -34,11 +44,7 @@ def hold_trial_of(latch: Latch) -> Trial:
 
 
 def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
-    view = latch.view
-    start = view.moment(sequence, "latched", "sounding", "on")
-    if start is None:
-        load = view.load(latch.stage)
-        start = Anchor(0.5 * view.ends(sequence)) if load is None else Anchor(1e-2, view.event(f"{load.ref} on"))
+    start = latched(latch.view, latch.stage, sequence)
     ends = LOWERING + settle
     current = level(latch.current, Anchor(ends))
     probes = latch.probes(Anchor(ends))
