@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from .errors import (
     DesignMissing,
+    DesignOpen,
     MarginsRefused,
     NameRefused,
     NameTaken,
@@ -28,6 +29,7 @@ from .values import ADDABLE, DesignRow, Draft, Note, NoteEntry, Revision, Sittin
 __all__ = [
     "ADDABLE",
     "DesignMissing",
+    "DesignOpen",
     "DesignRow",
     "Draft",
     "Inspection",

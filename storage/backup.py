@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import sqlite3
 from contextlib import closing
+from glob import escape
 from pathlib import Path
 from tempfile import mkstemp
 
@@ -12,6 +13,7 @@ from sqlmodel import Session
 
 from .errors import StorageError
 from .place import beside, sync_folder
+from .presence import lock, remove_abandoned
 from .tables import APPLICATION
 
 
@@ -46,18 +48,15 @@ def copy_database(source: sqlite3.Connection, target: Path) -> None:
     """
     temporary: Path | None = None
     try:
-        handle, name = mkstemp(prefix=f".{target.name}-", dir=target.parent)
-        os.close(handle)
+        remove_abandoned(target.parent, f".{escape(target.name)}-*.part")
+        handle, name = mkstemp(prefix=f".{target.name}-", suffix=".part", dir=target.parent)
         temporary = Path(name)
+        lock(handle)  # for as long as the handle is open nobody takes the file for an abandoned one
         with closing(sqlite3.connect(temporary, isolation_level=None)) as copy:
             source.backup(copy)
             # One file that can be read from a medium without write permission: no log beside it.
             copy.execute("PRAGMA journal_mode = DELETE").fetchall()
-        handle = os.open(temporary, os.O_RDWR)
-        try:
-            os.fsync(handle)
-        finally:
-            os.close(handle)
+        os.fsync(handle)
         os.replace(temporary, target)
         sync_folder(target.parent)
     except (OSError, ValueError, sqlite3.OperationalError) as error:
@@ -67,3 +66,4 @@ def copy_database(source: sqlite3.Connection, target: Path) -> None:
         if temporary is not None:
             for ending in ("", "-wal", "-shm", "-journal"):
                 beside(temporary, ending).unlink(missing_ok=True)
+            os.close(handle)

@@ -28,11 +28,15 @@ PATIENCE = 5.0
 
 @dataclass(frozen=True, slots=True)
 class Opened:
-    """An open database: reads go through ``reading``, writes through ``writing``; ``copy`` is set if it is a copy."""
+    """An open database: reads go through ``reading``, writes through ``writing``; ``copy`` is set if it is a copy.
+
+    ``schema`` is the version of its tables, ``refusal`` what a write is refused with.
+    """
 
     reading: Engine
     writing: Engine
-    read_only: bool
+    schema: int
+    refusal: StoreReadOnly | None
     copy: TemporaryDirectory[str] | None
 
     def close(self) -> None:
@@ -45,27 +49,41 @@ class Opened:
 def open_database(path: Path) -> Opened:
     """Open the store at ``path``, which is made if nothing is there yet and brought to this version if it is older.
 
-    A store that cannot be written is opened read only; where even that needs a written file beside it, as SQLite's log
-    does in a folder without write permission, a private copy of database and log is opened instead.
+    A store that cannot be written, or that a later version wrote, is opened read only; where even that needs a written
+    file beside it, as SQLite's log does in a folder without write permission, or where its tables are older, a private
+    copy of database and log is opened instead.
 
     Raises:
         StorageError: In one plain line, what is wrong with the file and what to do.
     """
     prepare(path)
     copy: TemporaryDirectory[str] | None = None
+    refusal: StoreReadOnly | None = None
     with plain_errors(path):
-        writable = os.access(path, os.W_OK) and os.access(path.parent, os.W_OK)
-        if writable:
+        if os.access(path, os.W_OK) and os.access(path.parent, os.W_OK):
             connection = _writable(path)
         else:
+            refusal = StoreReadOnly(
+                f"{path} can be looked at and not written: give yourself write permission on it and its folder."
+            )
             try:
                 connection = _checked(path, path, "ro")
-            except sqlite3.Error:
+            except (sqlite3.Error, _Older):
                 copy = _copied(path)
                 connection = _checked(Path(copy.name) / path.name, path, "rw")
                 connection.execute("PRAGMA query_only = ON")
+        (schema,) = connection.execute("PRAGMA user_version").fetchone()
+    if schema > SCHEMA:
+        refusal = StoreTooNew(
+            f"{path} was written by a later Stagebook (tables of version {schema}, this one knows {SCHEMA}): "
+            "it can be looked at and not written; update Stagebook to go on with it."
+        )
     reading = _engine(connection)
-    return Opened(reading, reading.execution_options(write=True), not writable, copy)
+    return Opened(reading, reading.execution_options(write=True), schema, refusal, copy)
+
+
+class _Older(Exception):
+    """The tables are of an earlier version, and cannot be brought forward where they lie."""
 
 
 @contextmanager
@@ -97,11 +115,16 @@ def _plain(error: sqlite3.Error, path: Path) -> StorageError:
         return StoreFull(f"The disk of {path} is full; the last change was not saved. Make room and try again.")
     if code in (sqlite3.SQLITE_CANTOPEN, sqlite3.SQLITE_IOERR, sqlite3.SQLITE_PERM):
         return StoreUnreadable(f"{path} cannot be read or written ({error}): check the disk and the permissions.")
-    return StorageError(f"{path} refused the request ({error}): run `stagebook inspect` to see whether it is damaged.")
+    return StoreUnreadable(
+        f"{path} refused the request ({error}): run `stagebook inspect` to see whether it is damaged."
+    )
 
 
 def _writable(path: Path) -> sqlite3.Connection:
     connection = _checked(path, path, "rw")
+    if _version(connection, path) > SCHEMA:
+        connection.execute("PRAGMA query_only = ON")
+        return connection
     for attempt in range(100):
         try:
             connection.execute("PRAGMA journal_mode = WAL").fetchall()
@@ -117,7 +140,7 @@ def _writable(path: Path) -> sqlite3.Connection:
 
 
 def _checked(file: Path, path: Path, mode: str) -> sqlite3.Connection:
-    """A connection to ``file`` whose version is right; the messages name ``path``. Nothing foreign is written to."""
+    """A connection to ``file`` of this or a later version; messages name ``path``. Nothing foreign is written to."""
     uri = f"{file.absolute().as_uri()}?mode={mode}"
     connection = sqlite3.connect(uri, timeout=PATIENCE, isolation_level=None, uri=True)
     try:
@@ -125,16 +148,16 @@ def _checked(file: Path, path: Path, mode: str) -> sqlite3.Connection:
         connection.execute("PRAGMA recursive_triggers = ON")
         connection.execute("PRAGMA trusted_schema = OFF")
         version = _version(connection, path)
-        if version < SCHEMA and mode == "ro":
-            raise StoreReadOnly(
-                f"{path} cannot be written and has no tables of this version: name another with --store."
-            )
+        if version == 0 and mode == "ro":
+            raise StoreReadOnly(f"{path} is empty and cannot be written: name another with --store.")
         if version == 0:
             _create(connection, path)
+        elif version < SCHEMA and mode == "ro":
+            raise _Older
         elif version < SCHEMA:
             from .migration import STEPS, migrate
 
-            migrate(connection, path, SCHEMA, STEPS)
+            migrate(connection, file, SCHEMA, STEPS)
     except BaseException:
         connection.close()
         raise
@@ -149,11 +172,6 @@ def _version(connection: sqlite3.Connection, path: Path) -> int:
         return 0
     if application != APPLICATION or version < 1:
         raise StoreUnreadable(f"{path} is a database of another program: name another file with --store.")
-    if version > SCHEMA:
-        raise StoreTooNew(
-            f"{path} was written by a later Stagebook (tables of version {version}, this one knows {SCHEMA}): "
-            "update Stagebook, or name another file with --store."
-        )
     return int(version)
 
 

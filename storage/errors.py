@@ -2,6 +2,11 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from .values import Sitting
+
 
 class StorageError(Exception):
     """Any refusal of the store, in one line that can be shown as it is."""
@@ -11,12 +16,12 @@ class StoreUnreadable(StorageError):
     """The file is not a store, is damaged, or cannot be reached."""
 
 
-class StoreTooNew(StoreUnreadable):
-    """A later Stagebook wrote the store; nothing in it was touched."""
-
-
 class StoreReadOnly(StorageError):
     """The store can be looked at and not written."""
+
+
+class StoreTooNew(StoreReadOnly):
+    """A later Stagebook wrote the store: it can be looked at as far as this one knows its tables, and not written."""
 
 
 class StoreBusy(StorageError):
@@ -61,3 +66,11 @@ class MarginsRefused(StorageError):
 
 class TakenOver(StorageError):
     """Another sitting edits the design now; nothing was written."""
+
+
+class DesignOpen(StorageError):
+    """Another sitting has the design open; it can be looked at or taken over. ``sitting`` says who and since when."""
+
+    def __init__(self, words: str, sitting: Sitting) -> None:
+        super().__init__(words)
+        self.sitting = sitting

@@ -21,7 +21,7 @@ from .errors import StorageError
 from .place import beside
 from .seal import canonical, entry_hash
 from .store import Store
-from .tables import SCHEMA, StoredDesign, StoredDraft, StoredEdit, StoredMargin, StoredRevision, triggers
+from .tables import StoredDesign, StoredDraft, StoredEdit, StoredMargin, StoredRevision, triggers
 
 _DERIVED = {"slack"}
 """Columns that an engine of another version may compute otherwise."""
@@ -52,7 +52,7 @@ def inspect(store: Store) -> Inspection:
         )
     return Inspection(
         path=store.path,
-        schema=SCHEMA,
+        schema=store.schema,
         size=store.path.stat().st_size,
         log_size=log.stat().st_size if log.exists() else 0,
         designs=designs,
@@ -64,24 +64,32 @@ def inspect(store: Store) -> Inspection:
 
 
 def verify(store: Store) -> list[str]:
-    """What is not as it was saved, one line each; an empty list when all is well."""
+    """What is not as it was saved, one line each; an empty list when all is well.
+
+    Of the store of a later version only the file is looked at: how it keeps the rest is not known here.
+    """
     problems: list[str] = []
     try:
         with store.reading() as session:
-            for problem in _problems(session):
+            for problem in _of_file(session) if store.later else _problems(session):
                 problems.append(problem)
     except StorageError as error:
         problems.append(str(error))
     return problems
 
 
-def _problems(session: Session) -> Iterator[str]:
+def _of_file(session: Session) -> Iterator[str]:
     connection = session.connection()
     for (line,) in connection.execute(text("PRAGMA integrity_check")):
         if line != "ok":
             yield f"The file is damaged: {line}."
     for table, row, owner, _ in connection.execute(text("PRAGMA foreign_key_check")):
         yield f"Row {row} of {table} belongs to a row of {owner} that is gone."
+
+
+def _problems(session: Session) -> Iterator[str]:
+    yield from _of_file(session)
+    connection = session.connection()
     found = connection.execute(text("SELECT name, sql FROM sqlite_schema WHERE type = 'trigger'"))
     there = {row.name: row.sql for row in found}
     for name, sql in triggers().items():
@@ -180,6 +188,6 @@ def _advice(store: Store) -> Iterator[str]:
     if os.name == "posix" and store.path.stat().st_mode & 0o077:
         yield f"Other users can read {store.path}: `chmod 600` keeps it to you."
     if store.read_only:
-        yield f"{store.path} can be looked at and not written: give yourself write permission on it and its folder."
+        yield store.why_read_only
     for copy in sorted(store.path.parent.glob(f"{store.path.name}-version-*")):
         yield f"{copy} is a copy from before a change of version: delete it when all is well."

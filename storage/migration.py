@@ -15,7 +15,14 @@ from .tables import KEYS, triggers
 
 Step = Callable[[sqlite3.Connection], None]
 
-STEPS: Final[Mapping[int, Step]] = {}
+
+def _who_sits(connection: sqlite3.Connection) -> None:
+    """To version 2: a sitting names its process and who sits there."""
+    for column in ("seat", "who"):
+        connection.execute(f"ALTER TABLE sitting ADD COLUMN {column} VARCHAR DEFAULT '' NOT NULL")
+
+
+STEPS: Final[Mapping[int, Step]] = {1: _who_sits}
 """For each version that a store may still have, what leads to the next one. It must end at the tables of tables.py."""
 
 

@@ -15,11 +15,12 @@ from unicodedata import normalize
 from sqlmodel import Session, select
 
 from ..engine.design.document import Design
+from ..engine.errors import EngineError
 from ..engine.results import MarginSheet
 from . import edits, revisions, shelf, sittings
 from .backup import back_up
 from .connection import Opened, open_database, plain_errors
-from .errors import DesignMissing, NameTaken, StorageError, StoreReadOnly
+from .errors import DesignMissing, NameTaken, StorageError, StoreTooNew, StoreUnreadable
 from .names import checked_name
 from .place import default_path
 from .tables import StoredDesign, StoredDraft, StoredSitting
@@ -49,23 +50,45 @@ class Store:
     and one that writes raises :class:`TakenOver` when another sitting edits that design now.
     """
 
-    def __init__(self, path: Path, opened: Opened, clock: Clock) -> None:
+    def __init__(self, path: Path, opened: Opened, clock: Clock, terminal: str) -> None:
         """Use :meth:`open`."""
         self.path = path
-        self.read_only = opened.read_only
         self._opened = opened
         self._clock = clock
-        self._seat = sittings.Seat()
+        self._seat = sittings.Seat(path, sittings.whoever(terminal))
 
     @classmethod
-    def open(cls, path: Path | str | None = None, *, clock: Clock = utc_now) -> Self:
+    def open(cls, path: Path | str | None = None, *, clock: Clock = utc_now, terminal: str = "") -> Self:
         """Open the store at ``path`` or at the default place; one is made where there is none.
 
+        A store that cannot be written, or that a later version wrote, opens ``read_only``. ``terminal`` is told to
+        other sittings, beside the user's name.
+
         Raises:
-            StoreUnreadable: The file is damaged, no store, of a later version, or cannot be reached.
+            StoreUnreadable: The file is damaged, no store, or cannot be reached.
         """
         place = Path(path).expanduser() if path is not None else default_path()
-        return cls(place, open_database(place), clock)
+        return cls(place, open_database(place), clock, terminal)
+
+    @property
+    def read_only(self) -> bool:
+        """Whether the store can be looked at and not written."""
+        return self._opened.refusal is not None
+
+    @property
+    def why_read_only(self) -> str:
+        """Why it cannot be written, in one line; "" when it can."""
+        return str(self._opened.refusal or "")
+
+    @property
+    def later(self) -> bool:
+        """Whether a later version wrote the store."""
+        return isinstance(self._opened.refusal, StoreTooNew)
+
+    @property
+    def schema(self) -> int:
+        """The version of its tables."""
+        return self._opened.schema
 
     def close(self) -> None:
         """Give the designs back that this store edits, and the file."""
@@ -73,8 +96,8 @@ class Store:
         with suppress(StorageError):
             if self._seat.tokens:
                 with self._writing() as session:
-                    sittings.release(session, self._seat.tokens)
-        self._seat = sittings.Seat()
+                    self._seat.release(session, list(self._seat.tokens))
+        self._seat.leave()
         self._opened.close()
 
     def __enter__(self) -> Self:
@@ -104,9 +127,8 @@ class Store:
             session.flush()
             draft = StoredDraft(design_id=row.id, document=design.canonical().decode())
             session.add(draft)
-            token = sittings.claim(session, row, self._now())
             shown = self._shown(session, _Place(row, draft), design)
-        self._seat.tokens[row.id] = token
+        self._seat.seen[row.id] = None
         return shown
 
     def draft(self, name: str) -> Draft:
@@ -197,22 +219,41 @@ class Store:
             return revisions.shown(session, [row])[0]
 
     def sitting(self, name: str) -> Sitting | None:
-        """Who edits the design, None when it was given back. A crash leaves a sitting behind."""
+        """Who has the design open to edit it; None when nobody does, or whoever did is dead."""
         with self.reading() as session:
-            design = self._find(session, name).design
-            row = session.get(StoredSitting, design.id)
-            if row is None or row.closed:
-                return None
-            return Sitting(since=row.since, here=self._seat.tokens.get(design.id) == row.token)
+            return self._seat.sitting(session.get(StoredSitting, self._find(session, name).design.id))
+
+    def sit_down(self, name: str) -> Draft:
+        """Open a design to edit it; the first write to it does the same by itself.
+
+        Raises:
+            DesignOpen: Another sitting has it open. It can still be looked at, or taken over.
+        """
+        with self._writing() as session:
+            place = self._find(session, name)
+            token = self._seat.sit_down(session, place.design, self._now())
+            shown = self._shown(session, place)
+        self._seat.tokens[place.design.id] = token
+        return shown
 
     def take_over(self, name: str) -> Draft:
         """Take a design from the sitting that edits it, whose next write is refused; the draft is read anew."""
         with self._writing() as session:
             place = self._find(session, name)
-            token = sittings.claim(session, place.design, self._now())
+            token = self._seat.claim(session, place.design, self._now())
             shown = self._shown(session, place)
         self._seat.tokens[place.design.id] = token
         return shown
+
+    def leave(self, name: str) -> None:
+        """Give a design back that is open here; nothing happens to one that is not."""
+        with self.reading() as session:
+            design = self._find(session, name).design.id
+        if design in self._seat.tokens:
+            with self._writing() as session:
+                self._seat.release(session, [design])
+            del self._seat.tokens[design]
+            self._seat.seen.pop(design, None)
 
     def backup(self, target: Path | str) -> None:
         """Write a consistent copy of the store to ``target``, also while it is in use.
@@ -226,15 +267,18 @@ class Store:
     @contextmanager
     def reading(self) -> Iterator[Session]:
         """A session on one consistent state of the store, for functions of this folder that only read."""
-        with plain_errors(self.path), Session(self._opened.reading, expire_on_commit=False) as session:
-            yield session
+        try:
+            with plain_errors(self.path), Session(self._opened.reading, expire_on_commit=False) as session:
+                yield session
+        except (StoreUnreadable, EngineError, LookupError, TypeError, ValueError) as error:
+            if not self.later:
+                raise
+            raise StoreTooNew(f"{self.why_read_only} What was asked for cannot be read here ({error}).") from error
 
     @contextmanager
     def _writing(self) -> Iterator[Session]:
-        if self.read_only:
-            raise StoreReadOnly(
-                f"{self.path} can be looked at and not written: give yourself write permission on it and its folder."
-            )
+        if self._opened.refusal is not None:
+            raise type(self._opened.refusal)(self.why_read_only)
         with plain_errors(self.path), Session(self._opened.writing, expire_on_commit=False) as session:
             yield session
             session.commit()

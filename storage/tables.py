@@ -1,4 +1,4 @@
-"""The tables of the store, schema 1, and the triggers that keep what is saved from being changed."""
+"""The tables of the store, and the triggers that keep what is saved from being changed."""
 
 from __future__ import annotations
 
@@ -8,7 +8,7 @@ from typing import Final
 from sqlalchemy import Index
 from sqlmodel import Field, SQLModel
 
-SCHEMA: Final = 1
+SCHEMA: Final = 2
 """Version of the tables, kept as ``user_version``; a step in migration.py leads to each later one."""
 
 APPLICATION: Final = 0x53544742
@@ -97,13 +97,18 @@ class StoredDraft(SQLModel, table=True):
 
 
 class StoredSitting(SQLModel, table=True):
-    """Who edits a design: a fencing token that grows whenever another sitting takes the design over."""
+    """Who edits a design: a fencing token that grows whenever another sitting takes the design over.
+
+    ``seat`` names the presence of its process (presence.py), ``who`` is told to others.
+    """
 
     __tablename__ = "sitting"
     design_id: int = Field(primary_key=True, foreign_key="design.id")
     token: int
     since: str
     closed: bool = False
+    seat: str = Field(default="", sa_column_kwargs={"server_default": ""})
+    who: str = Field(default="", sa_column_kwargs={"server_default": ""})
 
 
 KEYS: Final = {

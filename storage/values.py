@@ -116,7 +116,8 @@ class Revision:
 
 @dataclass(frozen=True, slots=True)
 class Sitting:
-    """Who edits a design at present: since when, and whether it is this store. A crash leaves one behind."""
+    """Who has a design open at present: since when, who in words, and whether it is this store itself."""
 
     since: str
+    who: str
     here: bool

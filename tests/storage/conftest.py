@@ -94,13 +94,13 @@ def sheet() -> MakeSheet:
             lanes=0,
             seconds=0.5,
             depth=Depth.CORNERS,
-            checks=tuple(_check(stage, margin) for stage, margin in margins.items()),
+            checks=tuple(check_of(stage, margin) for stage, margin in margins.items()),
         )
 
     return make
 
 
-def _check(stage: str, margin: float | None) -> CheckResult:
+def check_of(stage: str, margin: float | None) -> CheckResult:
     required = 0.1
     if margin is None:
         verdict = Verdict.UNKNOWN

@@ -1,7 +1,9 @@
-"""Bringing an earlier store forward, tried with steps made up for the test: there is only one version so far."""
+"""Bringing earlier stores forward: those kept of every released version, and steps made up to fail."""
 
 from __future__ import annotations
 
+import os
+import shutil
 import sqlite3
 from collections.abc import Callable, Iterator
 from contextlib import closing
@@ -13,14 +15,20 @@ from stagebook.storage import Note, Store, StoreUnreadable, connection, migratio
 from stagebook.storage.migration import migrate
 from stagebook.storage.tables import triggers
 
+from .released import of, sheet_of
+
 Plain = Callable[[BaseException], str]
 
 
+STORES = Path(__file__).parent / "stores"
+RELEASED = sorted(STORES.glob("schema-*.sqlite3"))
+
+
 @pytest.fixture
-def old(path: Path, design: Callable, sheet: Callable) -> Path:
-    with Store.open(path) as store:
-        store.create("flood", design())
-        store.save("flood", Note("a"), sheet(design(), driver=0.2))
+def old(path: Path) -> Path:
+    """A store as version 1 left it."""
+    path.parent.mkdir()
+    shutil.copyfile(STORES / "schema-1.sqlite3", path)
     return path
 
 
@@ -63,7 +71,7 @@ def version(connection: sqlite3.Connection) -> int:
 def test_steps_run_in_order_and_a_copy_is_set_aside(old: Path, raw: sqlite3.Connection) -> None:
     aside = migrate(raw, old, 3, {1: add_column, 2: build_anew})
     assert version(raw) == 3
-    assert raw.execute("SELECT approved FROM revision").fetchall() == [("yes",)]
+    assert raw.execute("SELECT approved FROM revision").fetchall() == [("yes",)] * 3
     assert raw.execute("PRAGMA foreign_keys").fetchone() == (1,)
     kept = dict(raw.execute("SELECT name, sql FROM sqlite_schema WHERE type = 'trigger'"))
     assert kept == triggers()
@@ -72,7 +80,7 @@ def test_steps_run_in_order_and_a_copy_is_set_aside(old: Path, raw: sqlite3.Conn
     assert aside.parent == old.parent
     assert aside.stat().st_mode & 0o777 == 0o600
     with Store.open(aside) as copy:
-        assert [row.name for row in copy.designs()] == ["flood"]
+        assert [row.name for row in copy.designs()] == ["flood", "frost"]
         assert verify(copy) == []
 
 
@@ -87,7 +95,7 @@ def test_a_step_that_fails_leaves_the_last_whole_one(
     assert says in message
     assert f"{old.name}-version-1-1" in message
     assert version(raw) == 2
-    assert raw.execute("SELECT approved FROM revision").fetchall() == [("yes",)]
+    assert raw.execute("SELECT approved FROM revision").fetchall() == [("yes",)] * 3
     assert dict(raw.execute("SELECT name, sql FROM sqlite_schema WHERE type = 'trigger'")) == triggers()
     assert not raw.in_transaction
 
@@ -116,15 +124,134 @@ def test_a_step_that_another_sitting_has_done_is_not_done_again(
     assert version(raw) == 2
 
 
-def test_opening_brings_an_earlier_store_forward(old: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(connection, "SCHEMA", 2)
-    monkeypatch.setattr(migration, "STEPS", {1: build_anew})
-    with Store.open(old) as store:
-        assert [row.name for row in store.designs()] == ["flood"]
+def rows(file: Path, *tables: str) -> list[list[tuple[object, ...]]]:
+    with closing(sqlite3.connect(file)) as connection:
+        return [connection.execute(f"SELECT * FROM {table}").fetchall() for table in tables]
+
+
+@pytest.mark.parametrize("released", RELEASED, ids=[file.stem for file in RELEASED])
+def test_a_released_store_is_brought_forward(path: Path, released: Path) -> None:
+    """What was saved is there to the letter, and goes on: undo, redo, the tree, the notes, another revision."""
+    path.parent.mkdir()
+    shutil.copyfile(released, path)
+    kept = ("design", "revision", "margin", "note_entry", "draft", "edit")
+    before = rows(path, *kept)
+    with Store.open(path) as store:
+        assert store.schema == connection.SCHEMA
+        assert rows(path, *kept) == before
         assert verify(store) == []
-        assert store.draft("flood").base_revision == 1
-    assert [file.name for file in sorted(old.parent.iterdir())] == [old.name, f"{old.name}-version-1-1"]
+        assert [(row.name, row.revisions, row.edits_pending) for row in store.designs()] == [
+            ("flood", 3, 1),
+            ("frost", 0, 0),
+        ]
+        assert [(r.number, r.parent, r.note.line) for r in store.revisions("flood")] == [
+            (1, None, "first try"),
+            (2, 1, "more"),
+            (3, 1, "the other way"),
+        ]
+        assert store.revision("flood", 2).note.result == "as predicted\nalso in the cold: 2 \u03a9 less"
+        assert store.sitting("flood") is None  # of a process that is long dead
+        assert store.sit_down("flood").design.part("R8").value == "5k6"
+        assert store.redo("flood").design.part("R8").value == "4k7"
+        assert store.save("flood", Note("on"), sheet_of(of("4k7"), driver=0.1)).parent == 3
+        assert verify(store) == []
+    asides = [] if released.stem == f"schema-{connection.SCHEMA}" else [f"{path.name}-{_version_of(released)}-1"]
+    assert [file.name for file in sorted(path.parent.iterdir())] == [path.name, *asides]
+    for aside in asides:
+        assert rows(path.parent / aside, *kept) == before
 
 
-def test_every_version_before_this_one_has_its_step() -> None:
-    assert sorted(migration.STEPS) == list(range(1, connection.SCHEMA))
+def _version_of(released: Path) -> str:
+    return released.stem.replace("schema", "version")
+
+
+@pytest.mark.parametrize("released", RELEASED, ids=[file.stem for file in RELEASED])
+def test_steps_end_at_the_tables_of_this_version(path: Path, released: Path, tmp_path: Path) -> None:
+    path.parent.mkdir()
+    shutil.copyfile(released, path)
+    fresh = tmp_path / "fresh"
+    Store.open(path).close()
+    Store.open(fresh).close()
+    assert _tables(path) == _tables(fresh)
+
+
+def _tables(file: Path) -> dict[str, list[tuple[object, ...]]]:
+    """Columns and foreign keys of every table, indices, and the triggers to the letter."""
+    with closing(sqlite3.connect(file)) as found:
+        names = [name for (name,) in found.execute("SELECT name FROM sqlite_schema WHERE type = 'table'")]
+        shape = {
+            f"{pragma} {name}": found.execute(f"PRAGMA {pragma}({name})").fetchall()
+            for name in names
+            for pragma in ("table_info", "foreign_key_list", "index_list")
+        }
+        return shape | {"triggers": sorted(found.execute("SELECT name, sql FROM sqlite_schema WHERE type = 'trigger'"))}
+
+
+KILLED = """
+import sqlite3, shutil
+from stagebook.storage import migration
+def stop(*words):
+    say(*words)
+    sys.stdin.read()
+if kind == "before the copy has its name":
+    migration.copy_database.__globals__["os"].replace = lambda old, new: stop("there")
+else:
+    step = migration.STEPS[1]
+    def cut(connection):
+        step(connection)
+        stop("there")
+    migration.STEPS = {1: cut}
+Store.open(path)
+"""
+
+
+@pytest.mark.skipif(os.name != "posix", reason="kill -9 is of POSIX systems")
+@pytest.mark.parametrize("kind", ["before the copy has its name", "before the end of a step"])
+def test_a_killed_migration_leaves_the_old_store(old: Path, child: Callable, next_line: Callable, kind: str) -> None:
+    before = rows(old, "revision", "draft", "sitting")
+    process = child(f"kind = {kind!r}{KILLED}")
+    assert next_line(process) == "there"
+    process.kill()
+    process.wait(10)
+    with closing(sqlite3.connect(old)) as raw:
+        assert version(raw) == 1
+        assert raw.execute("PRAGMA integrity_check").fetchall() == [("ok",)]
+    assert rows(old, "revision", "draft", "sitting") == before
+    with Store.open(old) as store:
+        assert store.schema == connection.SCHEMA
+        assert verify(store) == []
+    assert not [file for file in old.parent.iterdir() if ".part" in file.name]  # what the dead one began is gone
+
+
+def test_an_older_store_that_cannot_be_written_is_looked_at_in_a_copy(
+    old: Path, child: Callable, next_line: Callable
+) -> None:
+    """The copy is brought forward; a user without rights looks, as root may write anything."""
+    old.chmod(0o444)
+    content = old.read_bytes()
+    for folder in (old.parent, *old.parent.parents):
+        if folder.stat().st_uid == os.getuid() and folder != Path("/tmp"):
+            folder.chmod(folder.stat().st_mode | 0o555 if folder != old.parent else 0o555)
+        if folder.name.startswith("pytest-of"):
+            break
+    process = child(f"""
+with Store.open(Path({str(old.parent.parent)!r}) / "warm") as warm:  # all that is imported later is imported now
+    warm.create("a", design())
+    warm.designs(), verify(warm)
+if os.getuid() == 0:
+    os.setgroups([]), os.setgid(65534), os.setuid(65534)
+with Store.open(path) as store:
+    say(store.read_only, store.schema, [row.revisions for row in store.designs()], verify(store))
+""")
+    assert next_line(process) == f"True {connection.SCHEMA} [3, 0] []"
+    assert process.wait(10) == 0
+    assert old.read_bytes() == content
+    old.parent.chmod(0o755)
+    assert [file.name for file in old.parent.iterdir()] == [old.name]
+
+
+def test_every_version_before_this_one_has_its_step_and_is_kept() -> None:
+    """The tables as they are have no store yet until they go out."""
+    earlier = list(range(1, connection.SCHEMA))
+    assert sorted(migration.STEPS) == earlier
+    assert {file.stem for file in RELEASED} >= {f"schema-{number}" for number in earlier}

@@ -11,6 +11,7 @@ from pathlib import Path
 import pytest
 
 from stagebook.storage import Note, Store, inspect, verify
+from stagebook.storage.tables import SCHEMA
 
 APPEND_ONLY = ("revision", "margin", "note_entry")
 
@@ -155,7 +156,7 @@ def test_the_stores_own_connection_keeps_sqlites_guards_on(shelf: Store) -> None
 
 def test_inspection_counts_and_advises(path: Path, shelf: Store) -> None:
     found = inspect(shelf)
-    assert (found.path, found.schema, found.designs, found.revisions, found.edits) == (path, 1, 1, 3, 2)
+    assert (found.path, found.schema, found.designs, found.revisions, found.edits) == (path, SCHEMA, 1, 3, 2)
     assert found.size > 0
     assert (found.problems, found.advice) == ((), ())
     path.chmod(0o644)

@@ -15,7 +15,20 @@ from pathlib import Path
 
 import pytest
 
-from stagebook.storage import Note, StorageError, Store, StoreTooNew, StoreUnreadable, inspect, verify
+from stagebook.storage import (
+    DesignMissing,
+    DesignOpen,
+    Note,
+    StorageError,
+    Store,
+    StoreReadOnly,
+    StoreTooNew,
+    StoreUnreadable,
+    TakenOver,
+    inspect,
+    verify,
+)
+from stagebook.storage.tables import SCHEMA
 
 Plain = Callable[[BaseException], str]
 
@@ -57,15 +70,62 @@ def test_another_programs_database_is_told_and_left(tmp_path: Path, plain: Plain
     assert path.read_bytes() == content
 
 
-def test_a_later_version_is_refused_and_left(closed: Path, plain: Plain) -> None:
+def test_a_later_version_is_looked_at_and_left(closed: Path, plain: Plain, design: Callable) -> None:
     with closing(sqlite3.connect(closed)) as later:
         later.execute("PRAGMA user_version = 7")
     content = closed.read_bytes()
-    with pytest.raises(StoreTooNew) as refusal:
-        Store.open(closed)
-    assert "later Stagebook (tables of version 7, this one knows 1)" in plain(refusal.value)
-    assert "update Stagebook" in str(refusal.value)
+    with Store.open(closed) as store:
+        assert (store.read_only, store.later, store.schema) == (True, True, 7)
+        assert f"later Stagebook (tables of version 7, this one knows {SCHEMA})" in store.why_read_only
+        assert store.revision("flood", 2).design == store.draft("flood").design == design("33k")
+        assert [row.revisions for row in store.designs()] == [2]
+        for write in (
+            lambda: store.edit("flood", "R8", design("47k")),
+            lambda: store.sit_down("flood"),
+            lambda: store.take_over("flood"),
+            lambda: store.create("frost", design()),
+        ):
+            with pytest.raises(StoreTooNew) as refusal:
+                write()
+            assert "update Stagebook" in plain(refusal.value)
+        found = inspect(store)
+        assert (found.schema, found.problems, found.advice) == (7, (), (store.why_read_only,))
     assert closed.read_bytes() == content
+    assert [file.name for file in closed.parent.iterdir()] == [closed.name]
+
+
+def test_a_log_of_a_later_version_is_read_and_kept(closed: Path, design: Callable) -> None:
+    """A later version was killed: its last commits are in the log, and nothing of it may be lost here."""
+    with closing(sqlite3.connect(closed, isolation_level=None)) as later:
+        later.execute("PRAGMA user_version = 7")
+        later.execute("CREATE TABLE reading (id INTEGER PRIMARY KEY)")
+        later.execute("ALTER TABLE revision ADD COLUMN approved TEXT")
+        kept = {file: file.read_bytes() for file in closed.parent.iterdir() if not file.name.endswith("-shm")}
+    for file, content in kept.items():
+        file.write_bytes(content)
+    assert len(kept) == 2
+    with Store.open(closed) as store:
+        assert store.schema == 7
+        assert store.revision("flood").design == design("33k")
+    with closing(sqlite3.connect(closed)) as later:
+        assert later.execute("PRAGMA user_version").fetchone() == (7,)
+        assert later.execute("SELECT count(*) FROM reading").fetchone() == (0,)
+        assert later.execute("SELECT approved FROM revision").fetchall() == [(None,), (None,)]
+
+
+def test_tables_of_a_later_version_that_are_not_known_are_told(closed: Path, plain: Plain) -> None:
+    with closing(sqlite3.connect(closed, isolation_level=None)) as later:
+        later.execute("PRAGMA user_version = 7")
+        later.execute("ALTER TABLE revision RENAME COLUMN note TO notes")
+        later.execute("""UPDATE draft SET document = '{"stagebook": 2}'""")
+    with Store.open(closed) as store:
+        assert [row.name for row in store.designs()] == ["flood"]
+        for look in (lambda: store.revisions("flood"), lambda: store.draft("flood")):
+            with pytest.raises(StoreTooNew) as refusal:
+                look()
+            assert "update Stagebook" in plain(refusal.value)
+        with pytest.raises(DesignMissing):
+            store.draft("frost")
 
 
 @pytest.mark.parametrize("keep", [1, 50, 99, 100, 1000, 4096, 5000, 3 * 4096, 0.5, 0.9, -1, -4096])
@@ -204,7 +264,7 @@ sys.stdin.read()
         file.chmod(0o444)
     locked_folder.chmod(0o555)
     before = {file.name: file.read_bytes() for file in locked_folder.iterdir()}
-    assert len(before) == 2
+    assert {path.name, f"{path.name}-wal"} <= set(before)
     process = child(NOBODY + LOOK, path)
     assert next_line(process) == "True [3] []"
     assert next_line(process).startswith("StoreReadOnly")
@@ -220,7 +280,7 @@ def test_a_file_that_cannot_be_reached_is_told(locked_folder: Path, child: Calla
             path.touch()
             path.chmod(mode)
     locked_folder.chmod(0o555)
-    for name, says in (("missing", "Permission denied"), ("secret", "Permission denied"), ("empty", "no tables")):
+    for name, says in (("missing", "Permission denied"), ("secret", "Permission denied"), ("empty", "is empty")):
         process = child(NOBODY + LOOK, locked_folder / name)
         line = next_line(process)
         assert line.startswith(("StoreUnreadable", "StoreReadOnly"))
@@ -229,8 +289,8 @@ def test_a_file_that_cannot_be_reached_is_told(locked_folder: Path, child: Calla
 
 
 def test_the_family_holds_all_refusals() -> None:
-    assert issubclass(StoreTooNew, StoreUnreadable)
-    assert issubclass(StoreUnreadable, StorageError)
+    assert issubclass(StoreTooNew, StoreReadOnly)
+    assert all(issubclass(kind, StorageError) for kind in (StoreReadOnly, StoreUnreadable, DesignOpen, TakenOver))
 
 
 def test_inspection_of_a_store_that_is_well_says_nothing(closed: Path) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 from argparse import SUPPRESS, ArgumentParser, ArgumentTypeError, Namespace
 from collections.abc import Iterator
 from contextlib import contextmanager
@@ -12,6 +13,7 @@ from typing import TYPE_CHECKING
 from ...engine.design.document import Design
 from ...engine.design.intake import MOST_BYTES
 from ...engine.errors import DesignError
+from ..shown import visible
 from .refusal import CommandRefused
 
 if TYPE_CHECKING:
@@ -91,13 +93,18 @@ def load_file(path: str) -> Design:
 
 
 @contextmanager
-def open_store(asked: Namespace) -> Iterator[Store]:
-    """The shelf that ``--store`` or the environment names. What the store refuses is refused by the command."""
+def open_store(asked: Namespace, terminal: str = "") -> Iterator[Store]:
+    """The shelf that ``--store`` or the environment names. What the store refuses is refused by the command.
+
+    ``terminal`` is that of the screens, which say by themselves when the store can only be looked at.
+    """
     # Imported here: the database machinery takes longer to load than a command on a file needs altogether.
     from ...storage import StorageError, Store, default_path
 
     try:
-        with Store.open(default_path() if asked.store is None else Path(asked.store)) as store:
+        with Store.open(default_path() if asked.store is None else Path(asked.store), terminal=terminal) as store:
+            if store.later and not terminal:
+                print(f"stagebook: {visible(store.why_read_only)}", file=sys.stderr)
             yield store
     except StorageError as refusal:
         raise CommandRefused(str(refusal)) from refusal
