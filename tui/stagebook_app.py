@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import asyncio
 import signal
+import sys
 from contextlib import suppress
 from typing import ClassVar
 
@@ -17,6 +18,7 @@ from textual.widgets import Input
 from ..storage.store import Store
 from .actions import bindings
 from .computing import Computing
+from .hanging_up import watch
 from .key_order import KeyOrder
 from .palette import ActionFinder
 from .screens.help import HelpScreen
@@ -63,15 +65,21 @@ class StagebookApp(App[None]):
         """The shelf."""
         return ShelfScreen(self._store, self.computing)
 
-    def on_mount(self) -> None:
-        """A dropped line or a polite kill leaves by the front door, so that the terminal is restored."""
+    def on_load(self) -> None:
+        """Before the terminal is taken: a polite kill or a dropped line leaves by the front door and restores it."""
         loop = asyncio.get_running_loop()
-        for name in ("SIGTERM", "SIGHUP"):
+        for name in ("SIGTERM", "SIGHUP", "SIGINT"):
             number = getattr(signal, name, None)
             if number is not None:
                 # Not every event loop takes signals (Windows; a loop outside of the main thread).
                 with suppress(NotImplementedError, RuntimeError, ValueError):
                     loop.add_signal_handler(number, self.exit)
+
+    def on_mount(self) -> None:
+        """Without the signal too, a terminal that goes away is the end."""
+        loop = asyncio.get_running_loop()
+        if not self.is_headless and sys.stdin is not None:
+            watch(sys.stdin.fileno(), lambda: loop.call_soon_threadsafe(self.exit))
 
     def on_unmount(self) -> None:
         """Stops what is being computed, without waiting for it."""
