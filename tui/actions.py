@@ -45,15 +45,6 @@ ACTIONS: tuple[Action, ...] = (
     Action("shelf", "new", "n", "n", "new", "a new design, empty or a copy of this one", 3),
     Action("shelf", "import_file", "i", "i", "import", "put a design document (.json) on the shelf", 4),
     Action("shelf", "quit", "q", "q", "leave", "leave; every edit is kept already", 5),
-    # a new design of stages in a row
-    Action("row", "settings", "enter", "Enter", "settings", "what is asked of the stage under the hand", 2),
-    Action("row", "add", "a", "a", "add", "a stage of the catalogue after the one under the hand", 3),
-    Action("row", "remove", "x", "x", "remove", "take the stage under the hand out of the row", 4),
-    Action("row", "earlier", "comma", ",", "earlier", "the stage one place to the left"),
-    Action("row", "later", "full_stop", ", .", "move", "the stage one place to the right; the comma to the left", 5),
-    Action("row", "make", "s", "s", "make", "make the design, put it on the shelf and open it", 6),
-    Action("row", "about", "k", "k", "about", "how this kind of stage is sized, and from where", 7),
-    Action("row", "back", "escape,b", "b", "back", "back to the shelf without a design (Esc as well; asks)", 8),
     # bench
     Action("bench", "change", "enter", "Enter", "change", "write another value; typing a digit begins at once", 2),
     Action("bench", "step_down", "comma", ",", "lower", "next lower preferred value"),
@@ -71,9 +62,7 @@ ACTIONS: tuple[Action, ...] = (
     ),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
     Action("bench", "conditions", "d", "d", "conditions", "supply, ambient and source resistance of the design"),
-    Action("bench", "add_stage", "A", "A", "add stage", "a stage of the catalogue, or a free one, at the end"),
-    Action("bench", "remove_stage", "X", "X", "remove stage", "remove the chosen stage with its parts (asks first)"),
-    Action("bench", "about_stage", "k", "k", "about stage", "how the stage is sized, what was asked of it; cautions"),
+    Action("bench", "add_stage", "A", "A", "add stage", "a free stage at the end of the chain"),
     Action("bench", "all_stages", "m", "m", "all margins", "margins of all stages, or of the chosen one", 10),
     Action("bench", "freeze", "f", "f", "freeze", "hold the figures back, to write a prediction first", 11),
     Action("bench", "add_part", "a", "a", "add", "add a part to the chosen stage", 12),
@@ -124,6 +113,13 @@ ACTIONS: tuple[Action, ...] = (
     # questions
     Action("question", "yes", "y", "y", "yes", "do it", 2),
     Action("question", "no", "n,escape", "n", "no", "leave it as it is (Esc does the same)", 3),
+    Action(
+        "occupied", "look", "l,enter", "l", "look", "look at the design without editing it (Enter does the same)", 2
+    ),
+    Action(
+        "occupied", "take_over", "t", "t", "take over", "edit it here; the other sitting is told at its next edit", 3
+    ),
+    Action("occupied", "cancel", "escape,b", "b", "back", "leave it (Esc does the same)", 4),
     Action("form", "done", "enter", "Enter", "done", "take what is written", 2),
     Action("form", "up", "up,shift+tab", "up", "field before", "the field above"),
     Action("form", "down", "down,tab", "down", "next field", "the field below", 3),
@@ -140,7 +136,7 @@ ACTIONS: tuple[Action, ...] = (
 )
 
 
-_DIALOGS = {"question", "form", "pick", "mark", "waiting", "entry"}
+_DIALOGS = {"question", "occupied", "form", "pick", "mark", "waiting", "entry"}
 
 
 def of(where: str) -> tuple[Action, ...]:
@@ -156,5 +152,13 @@ def with_help(where: str) -> tuple[Action, ...]:
 def bindings(where: str) -> list[BindingType]:
     """The key bindings of one screen or widget; their ids let users bind other keys."""
     return [
-        Binding(action.keys, action.name, action.label, id=action.id, show=action.footer > 0) for action in of(where)
+        Binding(
+            action.keys,
+            action.name,
+            action.label,
+            id=action.id,
+            show=action.footer > 0,
+            priority=action.id == "app.quit",  # otherwise a question over the screen keeps it from being heard
+        )
+        for action in of(where)
     ]

@@ -10,7 +10,6 @@ from rich.cells import cell_len
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
 from ..engine.results import CheckResult, Depth, MarginSheet
-from ..engine.stages.modified import is_modified
 from ..storage.values import Draft
 from .chain_picture import Link
 from .figures import FigureRow, Figures
@@ -21,11 +20,11 @@ _ROOMY = 60
 PARTS_WIDTHS = (4, 6, 5)
 
 
-def heading(draft: Draft, figures: Figures, progress: str, width: int) -> Line:
-    """Name, what the draft is based on, conditions, and how far the study is."""
+def heading(draft: Draft, figures: Figures, progress: str, width: int, looking: bool = False) -> Line:
+    """Name, whether it is only looked at, what the draft is based on, conditions, and how far the study is."""
     base = "not saved yet" if draft.base_revision is None else f"draft on r{draft.base_revision}"
     edits = "no edits" if draft.edits == 0 else f"{draft.edits} edit{'s' * (draft.edits != 1)}"
-    left = f" {draft.name}  {base}, {edits}  {conditions_words(draft.design)}"
+    left = f" {draft.name}{' (only looked at)' if looking else ''}  {base}, {edits}  {conditions_words(draft.design)}"
     right = " FROZEN: f shows the figures " if figures.frozen else f" {progress} " if width >= _ROOMY else ""
     room = max(0, width - len(right))
     return line(Span(fit(left, room), "strong"), Span(right, "thin" if figures.frozen else ""))
@@ -74,9 +73,7 @@ def part_rows(stage: Stage, changed: Collection[str]) -> list[Row]:
 
 def part_heading(stage: Stage | None) -> Line:
     """The line above the parts."""
-    if stage is None:
-        return line(Span("no stage", "strong"))
-    return line(Span(f"{stage.name}: {'parts, modified' if is_modified(stage) else 'parts'}", "strong"))
+    return line(Span("no stage" if stage is None else f"{stage.name}: parts", "strong"))
 
 
 def kind_words(part: Part) -> str:

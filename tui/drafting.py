@@ -12,7 +12,7 @@ from ..storage.values import Draft, Note, Revision
 
 
 class Drafting:
-    """One design's draft and the revision it began from.
+    """One design's draft and the revision it began from. ``looking`` is set while it is not open to be edited here.
 
     Every method that changes something raises EngineError or StorageError with one line and then has changed
     nothing; after it returns, the edit is committed.
@@ -21,6 +21,7 @@ class Drafting:
     def __init__(self, store: Store, name: str) -> None:
         self._store = store
         self.draft: Draft = store.draft(name)
+        self.looking = True
         self.base: Revision | None = self._base()
         self._changes: tuple[Change, ...] = ()
         self._changes_of: tuple[str, str] | None = None
@@ -42,10 +43,21 @@ class Drafting:
             return None
         return sheet if sheet.depth is Depth.SPREAD else None
 
+    def sit_down(self) -> None:
+        """Opens the design to edit it and reads it anew. Raises DesignOpen when another sitting has it open."""
+        self.draft = self._store.sit_down(self.name)
+        self.base = self._base()
+        self.looking = False
+
+    def leave(self) -> None:
+        """Gives the design back to whoever opens it next."""
+        self._store.leave(self.name)
+
     def take_over(self) -> None:
         """Takes the design from another sitting and reads the draft as that one left it."""
         self.draft = self._store.take_over(self.name)
         self.base = self._base()
+        self.looking = False
 
     def branch(self, number: int) -> None:
         """Lets the draft go on from a revision, which the next one then has as its parent."""

@@ -17,7 +17,7 @@ def open_shelf(asked: Namespace) -> int:
     Raises CommandRefused where this terminal cannot show it or the store cannot be opened.
     """
     check_terminal()
-    with open_store(asked) as store:
+    with open_store(asked, _terminal()) as store:
         # Imported here: no headless command waits for the screens to load.
         from .solver import own_solver
         from .stagebook_app import StagebookApp
@@ -25,6 +25,14 @@ def open_shelf(asked: Namespace) -> int:
         app = StagebookApp(store, own_solver())
         app.run()
         return app.return_code or 0
+
+
+def _terminal() -> str:
+    """The terminal's name as ``who`` shows it."""
+    try:
+        return os.ttyname(sys.stdin.fileno()).removeprefix("/dev/")
+    except (OSError, AttributeError, ValueError):
+        return "a terminal"
 
 
 def check_terminal() -> None:

@@ -148,7 +148,7 @@ class BenchView(Page[None]):
     def show_heading(self) -> None:
         """Shows name, base, conditions and how far the study is."""
         shown = self.query_one("#heading", Lines)
-        shown.show(heading(self.drafting.draft, self.figures, self._progress, shown.size.width))
+        shown.show(heading(self.drafting.draft, self.figures, self._progress, shown.size.width, self.drafting.looking))
 
     def _show_hand(self) -> None:
         hand = self.query_one("#hand", Lines)
@@ -168,7 +168,7 @@ class BenchView(Page[None]):
             self._watched = event.key
             names = [stage.name for stage in self.design.stages]
             if self.has_class("-all") and self.chosen is not None and self.chosen.check.stage in names:
-                self.go_to(names.index(self.chosen.check.stage))
+                self._go_to(names.index(self.chosen.check.stage))
         self._show_hand()
 
     def on_descendant_focus(self) -> None:
@@ -242,9 +242,9 @@ class BenchView(Page[None]):
     def _walk(self, step: int) -> None:
         there = max(0, min(self._stage + step, len(self.design.stages) - 1))
         if there != self._stage:
-            self.go_to(there)
+            self._go_to(there)
 
-    def go_to(self, there: int) -> None:
+    def _go_to(self, there: int) -> None:
         """To another stage, where the hand lies on the part it left there."""
         if self.stage is not None and self.ref is not None:
             self._hands[self.stage.name] = self.ref

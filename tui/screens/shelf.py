@@ -10,7 +10,7 @@ from textual.binding import BindingType
 
 from ...engine.design.document import Design
 from ...engine.errors import DesignError, EngineError
-from ...storage.errors import StorageError
+from ...storage.errors import DesignOpen, StorageError, StoreBusy, StoreFull, StoreReadOnly
 from ...storage.store import Store
 from ...storage.values import DesignRow
 from ..actions import bindings
@@ -23,11 +23,10 @@ from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
 from .bench import BenchScreen
 from .dialog import Answers, Field, Form, Pick
-from .new_design import ask_new_design
+from .occupied import Occupied
 from .page import Page
 
 _WIDTHS = (18, 8, 16, 9)
-_ROW = "row"
 _LARGEST_DOCUMENT = 16_000_000
 
 
@@ -41,7 +40,6 @@ class ShelfScreen(Page[None]):
         super().__init__()
         self._store = store
         self._computing = computing
-        self._told: set[str] = set()
 
     def compose_body(self) -> ComposeResult:
         """Title and rows."""
@@ -51,6 +49,8 @@ class ShelfScreen(Page[None]):
 
     def on_mount(self) -> None:
         """The solver is prepared while the shelf is looked at."""
+        if self._store.read_only:
+            self.say(self._store.why_read_only)
         self._computing.prepare(self.post_message)
 
     def on_screen_resume(self) -> None:
@@ -71,34 +71,49 @@ class ShelfScreen(Page[None]):
         """Opens the bench of the design under the hand."""
         name = self.query_one(RowList).key
         if name is not None:
-            self.attempt(lambda: self.app.push_screen(self._bench(name)))
+            self.attempt(lambda: self._open(Drafting(self._store, name)))
 
-    def _bench(self, name: str) -> BenchScreen:
-        return BenchScreen(Drafting(self._store, name), self._computing, self._told)
+    def _open(self, drafting: Drafting) -> None:
+        """To the bench: to edit where nobody else does, else to look, with the reason."""
+        try:
+            drafting.sit_down()
+        except DesignOpen as refusal:
+            self._ask_occupied(drafting, refusal)
+        except (StoreReadOnly, StoreBusy, StoreFull) as refusal:
+            self._bench(drafting, str(refusal))
+        else:
+            self._bench(drafting)
+
+    def _ask_occupied(self, drafting: Drafting, refusal: DesignOpen) -> None:
+        def chosen(how: str | None) -> None:
+            if how == "look":
+                self._bench(drafting, f"only looked at: {refusal}")
+            elif how == "take" and self.attempt(drafting.take_over):
+                self._bench(drafting)
+
+        self.app.push_screen(Occupied(refusal), chosen)
+
+    def _bench(self, drafting: Drafting, only_looks: str = "") -> None:
+        self.app.push_screen(BenchScreen(drafting, self._computing, only_looks))
 
     def action_quit(self) -> None:
         """Leaves; every edit is kept already."""
         self.app.exit()
 
     def action_new(self) -> None:
-        """A new design: of catalogue stages, empty, or a copy of one."""
+        """A new design: empty, or a copy of one."""
         names = [row.key for row in self.query_one(RowList).rows]
+        if not names:
+            self._ask_name(None)
+            return
         here = self.query_one(RowList).key
         rows = [
-            (_ROW, "stages of the catalogue in a row, sized by what is asked of them"),
             ("", "an empty design"),
             *((f"copy {n}", f"a copy of {n}") for n in sorted(names, key=lambda n: n != here)),
         ]
 
-        def made(name: str | None) -> None:
-            if name is not None:
-                self._show(name)
-                self.action_open()
-
         def chosen(key: str | None) -> None:
-            if key == _ROW:
-                ask_new_design(self.app, self._store, made)
-            elif key is not None:
+            if key is not None:
                 self._ask_name(key.removeprefix("copy ") or None)
 
         self.app.push_screen(Pick("A new design", rows), chosen)
