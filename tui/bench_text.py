@@ -10,6 +10,7 @@ from rich.cells import cell_len
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
 from ..engine.results import CheckResult, Depth, MarginSheet
+from ..engine.stages.modified import is_modified
 from ..storage.values import Draft
 from .chain_picture import Link
 from .figures import FigureRow, Figures
@@ -73,7 +74,9 @@ def part_rows(stage: Stage, changed: Collection[str]) -> list[Row]:
 
 def part_heading(stage: Stage | None) -> Line:
     """The line above the parts."""
-    return line(Span("no stage" if stage is None else f"{stage.name}: parts", "strong"))
+    if stage is None:
+        return line(Span("no stage", "strong"))
+    return line(Span(f"{stage.name}: {'parts, modified' if is_modified(stage) else 'parts'}", "strong"))
 
 
 def kind_words(part: Part) -> str:

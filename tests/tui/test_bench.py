@@ -339,7 +339,7 @@ async def test_conditions_are_edited(app: StagebookApp, shelf: Store) -> None:
 async def test_a_stage_is_added_at_the_end_of_the_chain(app: StagebookApp, shelf: Store) -> None:
     async with app.run_test(size=SIZE) as pilot:
         bench = await to_timer(pilot)
-        await pilot.press("A", *"horn", "enter")
+        await pilot.press("A", "enter", *"horn", "enter")
         await until(pilot, lambda: pilot.app.screen is bench)
         assert shelf.draft("flood").design.stages[-1].name == "horn"
 

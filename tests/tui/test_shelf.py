@@ -30,7 +30,7 @@ async def test_the_shelf_lists_revision_time_and_worst_margin(app: StagebookApp)
 async def test_a_copy_of_a_design_opens_on_the_bench(app: StagebookApp, shelf: Store) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await settled(pilot)
-        await pilot.press("n", "down", "enter", *"flood 2", "enter")
+        await pilot.press("n", "down", "down", "enter", *"flood 2", "enter")
         await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
         assert shelf.draft("flood 2").design.part("R7").value == "390k"
         assert shelf.draft("flood 2").design.name == "flood 2"
@@ -41,7 +41,7 @@ async def test_an_empty_design_can_be_begun(store: Store, solver: Solver) -> Non
     async with app.run_test(size=SIZE) as pilot:
         await settled(pilot)
         assert "the shelf is empty" in seen(pilot)
-        await pilot.press("n", *"first", "enter")
+        await pilot.press("n", "down", "enter", *"first", "enter")
         await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
         assert [stage.name for stage in store.draft("first").design.stages] == ["entry"]
         assert "no parts yet" in seen(pilot)
@@ -50,7 +50,7 @@ async def test_an_empty_design_can_be_begun(store: Store, solver: Solver) -> Non
 async def test_a_name_that_is_taken_keeps_the_form_open(app: StagebookApp, shelf: Store) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await settled(pilot)
-        await pilot.press("n", "enter", *"flood", "enter")
+        await pilot.press("n", "down", "enter", *"flood", "enter")
         assert "flood" in pilot.app.screen.query_one(Notice).text
         assert len(shelf.designs()) == 1
 

@@ -13,6 +13,7 @@ from ...engine.results import Depth, MarginSheet
 from ...engine.studies.comparison import Side
 from ...storage.errors import StorageError
 from ...storage.values import Revision
+from ..caution_text import new_cautions
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..widgets.row_list import RowList
@@ -20,13 +21,15 @@ from ..widgets.status import KeyLine
 from ..widgets.value_entry import ValueEntry
 from .bench_view import BenchView
 from .compare import CompareScreen
-from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_stage
+from .design_questions import ask_condition, ask_field, ask_new_part, ask_required
 from .dialog import Answers, Ask, Field, Form
 from .faults import FaultsScreen
 from .history import HistoryScreen
 from .immunity import ImmunityScreen
 from .origin import OriginPage
 from .saving import Saving
+from .stage_page import StagePage
+from .stage_questions import ask_stage
 from .waves import WavesScreen
 
 RAILS = ("supply", "0V")
@@ -35,22 +38,32 @@ RAILS = ("supply", "0V")
 class BenchScreen(BenchView):
     """Editing, freezing and saving the draft that :class:`BenchView` shows, and the ways to other screens."""
 
-    def __init__(self, drafting: Drafting, computing: Computing, only_looks: str = "") -> None:
-        """``only_looks`` says why the draft is not open to be edited here; an edit tries again all the same."""
+    def __init__(
+        self, drafting: Drafting, computing: Computing, told: set[str] | None = None, only_looks: str = ""
+    ) -> None:
+        """``told`` are the cautions told already; ``only_looks`` says why the draft is not open to be edited here."""
         super().__init__(drafting, computing)
+        self._told = set() if told is None else told
         self._only_looks = only_looks
         self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved)
 
     def on_mount(self) -> None:
-        """Says why nothing can be edited, if so."""
+        """Says why nothing can be edited, if so, and the cautions that come with the design."""
         if self._only_looks:
             self.say(self._only_looks)
+        self.tell_cautions(self._only_looks.rstrip("."))
 
     def on_unmount(self) -> None:
         """Whoever opens the design next need not ask."""
         # A design that cannot be given back now is given back with the store, or by the end of this process.
         with suppress(StorageError):
             self.drafting.leave()
+
+    def tell_cautions(self, words: str = "") -> None:
+        """Says each caution once in a sitting, when a part or stage that brings it is in a design."""
+        text = new_cautions(self.design, self._told)
+        if text:
+            self.say(f"{words}. {text}" if words else text)
 
     # -- editing
 
@@ -75,6 +88,7 @@ class BenchScreen(BenchView):
         """A design that an answered question made."""
         if self._edit(lambda: self.drafting.put(words, after)):
             self.say(words)
+            self.tell_cautions(words)
 
     def taken_over(self, reason: str) -> None:
         """Another sitting edited the design: it is taken over only when asked for."""
@@ -172,8 +186,39 @@ class BenchScreen(BenchView):
         ask_new_part(self.app, self.design, self.stage, put)
 
     def action_add_stage(self) -> None:
-        """A free stage at the end of the chain."""
-        ask_stage(self.app, self.design, self._put)
+        """A stage of the catalogue, or a free one, at the end of the chain."""
+
+        def put(words: str, after: Design) -> None:
+            self._put(words, after)
+            self.go_to(len(self.design.stages) - 1)
+
+        ask_stage(self.app, self.design, put)
+
+    def action_remove_stage(self) -> None:
+        """Takes the stage out with its parts, after asking."""
+        stage = self.stage
+        if stage is None:
+            return
+
+        def answered(yes: bool | None) -> None:
+            if yes:
+                self._edit(
+                    lambda: self.drafting.put(
+                        f"without stage {stage.name}", edit.without_stage(self.design, stage.name)
+                    )
+                )
+
+        count = f"{len(stage.parts)} part{'s' * (len(stage.parts) != 1)} and what is about them go with it"
+        self.app.push_screen(
+            Ask(f"Take stage {stage.name} out of the design?", f"{count}; u brings all back."), answered
+        )
+
+    def action_about_stage(self) -> None:
+        """How the stage is sized, what was asked of it, and the cautions of the design."""
+        if self.stage is None:
+            self.refuse("the design has no stage yet; A adds one")
+        else:
+            self.app.push_screen(StagePage(self.design, self.stage))
 
     def action_remove_part(self) -> None:
         """Takes the part out, after asking."""

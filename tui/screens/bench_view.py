@@ -168,7 +168,7 @@ class BenchView(Page[None]):
             self._watched = event.key
             names = [stage.name for stage in self.design.stages]
             if self.has_class("-all") and self.chosen is not None and self.chosen.check.stage in names:
-                self._go_to(names.index(self.chosen.check.stage))
+                self.go_to(names.index(self.chosen.check.stage))
         self._show_hand()
 
     def on_descendant_focus(self) -> None:
@@ -242,9 +242,9 @@ class BenchView(Page[None]):
     def _walk(self, step: int) -> None:
         there = max(0, min(self._stage + step, len(self.design.stages) - 1))
         if there != self._stage:
-            self._go_to(there)
+            self.go_to(there)
 
-    def _go_to(self, there: int) -> None:
+    def go_to(self, there: int) -> None:
         """To another stage, where the hand lies on the part it left there."""
         if self.stage is not None and self.ref is not None:
             self._hands[self.stage.name] = self.ref

@@ -179,19 +179,5 @@ def ask_required(app: App[Any], design: Design, check: CheckResult, put: Put) ->
     ask_design(app, f"{check.title}: the margin that this design requires", [field], make, put)
 
 
-def ask_stage(app: App[Any], design: Design, put: Put) -> None:
-    """A free stage at the end of the chain."""
-
-    def make(answers: Answers) -> tuple[str, Design]:
-        name = answers["name"]
-        if name in {stage.name for stage in design.stages}:
-            raise DesignError(f"there is a stage {name} already; write another name")
-        return f"with stage {name}", edit.with_stage(design, {"name": name, "kind": "free"})
-
-    ask_design(
-        app, "A free stage at the end of the chain", [Field("name", "name", "", "latch, timer, driver")], make, put
-    )
-
-
 def _rows(texts: dict[str, str]) -> list[tuple[str, str]]:
     return [(name, f"{fit(name, 28)} {text}") for name, text in texts.items()]

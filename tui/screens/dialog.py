@@ -7,6 +7,7 @@ from dataclasses import dataclass
 from textwrap import wrap
 from typing import ClassVar
 
+from textual import events
 from textual.app import ComposeResult
 from textual.binding import BindingType
 from textual.containers import Horizontal, Vertical, VerticalScroll
@@ -138,12 +139,16 @@ class Mark(ModalScreen[list[str] | None]):
 
 @dataclass(frozen=True, slots=True)
 class Field:
-    """One line of a form: its name, what stands before it, what it begins with, and a grey example."""
+    """One line of a form: its name, what stands before it, what it begins with, and a grey example.
+
+    A ``hint`` is said while the line is written in.
+    """
 
     name: str
     label: str
     value: str = ""
     example: str = ""
+    hint: str = ""
 
 
 Answers = Mapping[str, str]
@@ -174,6 +179,12 @@ class Form(ModalScreen[Answers | None]):
                         yield TextLine(field.value, field.example, id=f"field-{field.name}")
             yield Notice()
             yield KeyLine("form")
+
+    def on_descendant_focus(self, event: events.DescendantFocus) -> None:
+        """Says what the line is for."""
+        hint = next((field.hint for field in self._fields if event.widget.id == f"field-{field.name}"), "")
+        if hint:
+            self.query_one(Notice).say(hint)
 
     def on_input_submitted(self, event: Input.Submitted) -> None:
         """Enter in any line takes the whole form."""

@@ -23,10 +23,12 @@ from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
 from .bench import BenchScreen
 from .dialog import Answers, Field, Form, Pick
+from .new_design import ask_new_design
 from .occupied import Occupied
 from .page import Page
 
 _WIDTHS = (18, 8, 16, 9)
+_ROW = "row"
 _LARGEST_DOCUMENT = 16_000_000
 
 
@@ -40,6 +42,7 @@ class ShelfScreen(Page[None]):
         super().__init__()
         self._store = store
         self._computing = computing
+        self._told: set[str] = set()
 
     def compose_body(self) -> ComposeResult:
         """Title and rows."""
@@ -94,26 +97,31 @@ class ShelfScreen(Page[None]):
         self.app.push_screen(Occupied(refusal), chosen)
 
     def _bench(self, drafting: Drafting, only_looks: str = "") -> None:
-        self.app.push_screen(BenchScreen(drafting, self._computing, only_looks))
+        self.app.push_screen(BenchScreen(drafting, self._computing, self._told, only_looks))
 
     def action_quit(self) -> None:
         """Leaves; every edit is kept already."""
         self.app.exit()
 
     def action_new(self) -> None:
-        """A new design: empty, or a copy of one."""
+        """A new design: of catalogue stages, empty, or a copy of one."""
         names = [row.key for row in self.query_one(RowList).rows]
-        if not names:
-            self._ask_name(None)
-            return
         here = self.query_one(RowList).key
         rows = [
+            (_ROW, "stages of the catalogue in a row, sized by what is asked of them"),
             ("", "an empty design"),
             *((f"copy {n}", f"a copy of {n}") for n in sorted(names, key=lambda n: n != here)),
         ]
 
+        def made(name: str | None) -> None:
+            if name is not None:
+                self._show(name)
+                self.action_open()
+
         def chosen(key: str | None) -> None:
-            if key is not None:
+            if key == _ROW:
+                ask_new_design(self.app, self._store, made)
+            elif key is not None:
                 self._ask_name(key.removeprefix("copy ") or None)
 
         self.app.push_screen(Pick("A new design", rows), chosen)
