@@ -1,7 +1,7 @@
 """Check 23: does a dip of the supply leave the alarm as it was, set or at rest?
 
-The trial begins with the dip of the sequence and makes it ever longer, until the state after it is another one than
-before. Where the dip is not deep enough to change anything, no length is too long.
+Two trials begin with the dip of the sequence and make it ever longer, or ever deeper, until the state after it is
+another one than before. Where the dip is not deep enough to change anything, no length is too long.
 """
 
 from __future__ import annotations
@@ -27,12 +27,22 @@ from .trial import Trial
 from .view import View
 
 SHORTEST, LONGEST = 0.01, 30.0  # dips of the trial, in lengths of the dip of the sequence
+SHALLOW = 0.01  # of the supply, least depth of the trial
 SETTLE = 0.1  # s after the dip at which the state is looked at, where the requirement gives none
 BEFORE = 1e-6  # s before the dip, when the state is as it was
 
 
-def asks(check: Check, view: View) -> Iterator[Ask]:
+def time_asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every latch (or the load), where a sequence has a dip or a requirement asks for one."""
+    yield from _asks(check, view, deeper=False)
+
+
+def depth_asks(check: Check, view: View) -> Iterator[Ask]:
+    """As :func:`time_asks`."""
+    yield from _asks(check, view, deeper=True)
+
+
+def _asks(check: Check, view: View, deeper: bool) -> Iterator[Ask]:
     asked = [r for r in view.design.requirements if r.check == check.slug]
     dips = [name for name, s in view.design.sequences.items() if any(isinstance(e, Dip) for e in s.events)]
     if not asked and not dips:
@@ -45,7 +55,7 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
     for state in states:
         stage, part = _place(view, state)
         requirement = view.requirement(check.slug, part, stage.name)
-        yield _ask(check, view, state, stage, part, requirement, view.sequence(requirement, *dips))
+        yield _ask(check, view, state, stage, part, requirement, view.sequence(requirement, *dips), deeper)
 
 
 def _place(view: View, state: AlarmState) -> tuple[Stage, str]:
@@ -66,6 +76,7 @@ def _ask(
     part: str,
     requirement: Requirement | None,
     sequence: str,
+    deeper: bool,
 ) -> Ask:
     required = _required(check, view, requirement)
     dip = next((e for e in view.design.sequences[sequence].events if isinstance(e, Dip)), None)
@@ -75,25 +86,29 @@ def _ask(
     at, to, during = read(dip.at, "s"), read(dip.to, "V"), read(dip.for_, "s")
     edge_time = min(DEFAULT_EDGE if dip.edge is None else read(dip.edge, "s"), during * SHORTEST)
     settle = view.extra(requirement, "settle", "s") or SETTLE
-    over = BEFORE + LONGEST * during + edge_time
+    knobs = (SHALLOW, 1.0) if deeper else (SHORTEST * during, LONGEST * during)
+    over = BEFORE + (during if deeper else knobs[1]) + edge_time
     first, last = Anchor(0.5 * BEFORE), Anchor(over + settle)
 
     def drive(line: Timeline, knob: Floats) -> None:
-        # All dips end at the same instant, so that all are looked at equally soon after.
-        line.excursion(BEFORE + LONGEST * during - knob, to, knob, edge_time)
+        if deeper:
+            line.excursion(BEFORE, line.supply.values[-1] * (1.0 - knob), during, edge_time)
+        else:
+            # All dips end at the same instant, so that all are looked at equally soon after.
+            line.excursion(BEFORE + knobs[1] - knob, to, knob, edge_time)
 
     def gives_in(lanes: Lanes, observed: Observed) -> Mask:
         was, then = (state.alarmed(lanes, observed, at) for at in (first, last))
         return np.asarray(was != then)
 
     trial = Trial(
-        key=f"brown-out {state.name}",
+        key=f"brown-out {'deeper' if deeper else 'longer'} {state.name}",
         sequence=sequence,
         start=Anchor(at),
         drive=drive,
         ends=over + settle,
-        safe=SHORTEST * during,
-        severe=LONGEST * during,
+        safe=knobs[0],
+        severe=knobs[1],
         rows=(*state.probes(first), *state.probes(last)),
         gives_in=gives_in,
     )
@@ -101,19 +116,20 @@ def _ask(
     drawn = None if feed is None else level(feed, Anchor(at))
 
     def judge(seen: Seen) -> Judged:
-        demand = np.full(seen.lanes.count, during)
+        supply = seen.lanes[SUPPLY] if SUPPLY in seen.lanes else np.zeros(seen.lanes.count)
+        demand = np.maximum(0.0, supply - to) if deeper else np.full(seen.lanes.count, during)
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), demand=demand)
-        hand = None if drawn is None else _hand(view, state, seen, seen.value(drawn, sequence), during)
+        hand = None if drawn is None or deeper else _hand(view, state, seen, seen.value(drawn, sequence), during)
         words = check.words
         outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
-        judged = ratio(demand, edge.knob, outcomes, hand)
+        judged = ratio(demand, edge.knob * (supply if deeper else 1.0), outcomes, hand)
         margin = np.where(edge.never, 1.0, judged.margin)
         outcomes_seen = (*judged.outcomes, (edge.never, words["immune"]))
         return Judged(margin, demand, judged.capability, outcomes=outcomes_seen, hand=judged.hand)
 
-    screen = during / (1.0 - required) if required < 1.0 - 1.0 / LONGEST else None
+    screen = during / (1.0 - required) if required < 1.0 - 1.0 / LONGEST and not deeper else None
     rows = () if drawn is None else (drawn,)
     return Ask(check, stage.name, part, (sequence,), required, judge, rows, trial, screen)
 
@@ -132,6 +148,11 @@ def _hand(view: View, state: AlarmState, seen: Seen, drawn: Floats, during: floa
     return np.where(held > 0.0, 1.0 - during * drawn / np.where(held > 0.0, held, 1.0), -1.0)
 
 
+WORDS = {
+    "missing": "the dip never came",
+    "always": "the alarm changes with the least dip, or by itself",
+    "immune": "no dip of that kind changes the alarm",
+}
 CHECKS = (
     Check(
         number=23,
@@ -140,13 +161,20 @@ CHECKS = (
         unit="s",
         required=0.3,
         formula="D = length of the dip, C = longest dip of that depth that leaves the alarm as it was",
+        asks=time_asks,
+        words=WORDS | {"immune": "a dip to there changes nothing, however long"},
         worst="low supply, cold, small filter capacitor",
         by_hand="1 - t I / (C_f (V - V_hold)), I what the unit draws before the dip",
-        asks=asks,
-        words={
-            "missing": "the dip never came",
-            "always": "the alarm changes with the shortest dip, or by itself",
-            "immune": "a dip to there changes nothing, however long",
-        },
+    ),
+    Check(
+        number=23,
+        slug="brown_out_depth",
+        title="brown-out depth",
+        unit="V",
+        required=0.3,
+        formula="D = depth of the dip, C = deepest dip of that length that leaves the alarm as it was",
+        asks=depth_asks,
+        words=WORDS | {"immune": "a dip of that length changes nothing, however deep"},
+        worst="low supply, cold, small filter capacitor",
     ),
 )
