@@ -12,6 +12,7 @@ from ..parts.kind import Kind
 from ..parts.suitability import unsuitable
 from .name_inspection import name_faults
 from .net_inspection import net_faults
+from .work_inspection import work_faults
 
 
 def inspect(design: Design, known: Mapping[str, Kind] | None = None) -> None:
@@ -26,13 +27,14 @@ def inspect(design: Design, known: Mapping[str, Kind] | None = None) -> None:
 
 
 def found_faults(design: Design, known: Mapping[str, Kind] | None = None) -> Iterator[str]:
-    """Everything that keeps a design from being computed, a line each: parts first, then nets, then names."""
+    """Everything that keeps a design from being computed, a line each: parts, nets, names, then the work."""
     known = kinds() if known is None else known
     misfits = list(_part_faults(design, known))
     yield from misfits
     if not misfits:
         yield from net_faults(design, known)
     yield from name_faults(design)
+    yield from work_faults(design)
 
 
 def _part_faults(design: Design, known: Mapping[str, Kind]) -> Iterator[str]:

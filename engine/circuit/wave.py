@@ -36,7 +36,8 @@ class Wave:
 
     def cut(self, at: Number) -> None:
         """Forget what was to happen after ``at``: the next event overrides a bounce or a ramp that is not over."""
-        if not any(np.any(np.greater(time, at)) for time in self.times):
+        # Points are in the order of their times in every lane: the last of them tells.
+        if not np.any(np.greater(self.times[-1], at)):
             return
         middles = np.reshape(np.asarray(at, dtype=float), (-1, 1))
         now = self.pieces(middles, middles)[0][:, 0]

@@ -38,17 +38,17 @@ def _readable(unit: str, least: float | None = None) -> Callable[[str], str]:
     return check
 
 
-_LINE = r"[^\x00-\x1f\x7f]*"
-_INK = r"[^\s\x00-\x1f\x7f]"
+_LINE = r"[^\x00-\x1f\x7f-\x9f]*"
+_INK = r"[^\s\x00-\x1f\x7f-\x9f]"
 TEXT_RULE = rf"^{_LINE}{_INK}{_LINE}$"
 LINE_RULE = rf"^{_LINE}$"
 NAME_RULE = rf"^{_INK}({_LINE}{_INK})?$"
-STAGE_RULE = r"^[^\s\x00-\x1f\x7f/:,]+$"
-NET_RULE = r"^[^\s\x00-\x1f\x7f:,;=]+$"
+STAGE_RULE = r"^[^\s\x00-\x1f\x7f-\x9f/:,]+$"
+NET_RULE = r"^[^\s\x00-\x1f\x7f-\x9f:,;=]+$"
 REF_RULE = r"^[A-Za-z][A-Za-z0-9_.\-]*$"
 KEY_RULE = r"^[A-Za-z][A-Za-z0-9_]*$"
 SLUG_RULE = r"^[A-Za-z][A-Za-z0-9_\-]*$"
-DESIGN_RULE = r"^[^\s\x00-\x1f\x7f/\-]([^\x00-\x1f\x7f/]*[^\s\x00-\x1f\x7f/])?$"
+DESIGN_RULE = r"^[^\s\x00-\x1f\x7f-\x9f/\-]([^\x00-\x1f\x7f-\x9f/]*[^\s\x00-\x1f\x7f-\x9f/])?$"
 REMEDIES: Final = {
     TEXT_RULE: "write one line of visible text",
     LINE_RULE: "write it in one line",

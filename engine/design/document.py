@@ -7,7 +7,7 @@ import json
 from collections import Counter
 from collections.abc import Mapping
 from functools import cached_property
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Final, Literal
 
 from pydantic import Field, ValidationError, model_validator
 
@@ -20,6 +20,9 @@ from .intake import take_in
 from .part import Bounce, Leakage, Part, Sine, Stage, Waveform
 from .requirement import Requirement, Requirements, Stray, Strays
 from .sequence import Event, Moment, RelativeMoment, Sequence
+
+MOST_PARTS: Final = 400
+"""Parts in all stages together; inspection and elimination grow faster than their number."""
 
 
 class Design(Clause):
@@ -52,14 +55,17 @@ class Design(Clause):
         for name, count in Counter(stage.name for stage in self.stages).items():
             if count > 1:
                 raise ValueError(f"stage {name}, field name: {count} stages have it; give each a name of its own")
+        if len(self.parts) > MOST_PARTS:
+            raise ValueError(f"field stages: there are {len(self.parts)} parts in all; write at most {MOST_PARTS}")
         refs = Counter(part.ref for part in self.parts)
         for stage in self.stages:
             for part in stage.parts:
                 if refs[part.ref] > 1:
                     others = [s.name for s in self.stages for p in s.parts if p.ref == part.ref]
+                    where = ", ".join(others[:6]) + (" ..." if len(others) > 6 else "")
                     raise ValueError(
                         f"stage {stage.name}, part {part.ref}, field ref: {refs[part.ref]} parts have it"
-                        f" (in {', '.join(others)}); give each a designator of its own"
+                        f" (in {where}); give each a designator of its own"
                     )
         for name in sorted(self.reasons.keys() - self.required.keys() - self.derating.keys()):
             raise ValueError(f"field reasons: {name} stands neither under required nor under derating; leave it out")

@@ -41,11 +41,11 @@ def _parsed(source: str | bytes) -> Any:
 
 
 def _once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
-    found = dict(pairs)
-    if len(found) < len(pairs):
-        keys = [key for key, _ in pairs]
-        twice = next(key for key in keys if keys.count(key) > 1)
-        raise DesignError(f"the field {twice[:40]!r} stands twice in one object; leave one of the two out")
+    found: dict[str, Any] = {}
+    for key, value in pairs:
+        if key in found:
+            raise DesignError(f"the field {key[:40]!a} stands twice in one object; leave one of the two out")
+        found[key] = value
     return found
 
 

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from difflib import get_close_matches
-from typing import Annotated
+from typing import Annotated, Final
 
 from pydantic import Field, field_validator, model_validator
 
 from .clause import Clause, Farads, Name, NetName, Scalar, Share, Slew, Slug, StageName, Text
+
+MOST_EXTRAS: Final = 20
 
 
 class Requirement(Clause, extra="allow"):
@@ -34,6 +36,8 @@ class Requirement(Clause, extra="allow"):
 
     @model_validator(mode="after")
     def _no_slips(self) -> Requirement:
+        if len(self.extras) > MOST_EXTRAS:
+            raise ValueError(f"there are {len(self.extras)} fields that no check reads; write at most {MOST_EXTRAS}")
         known = [field.alias or name for name, field in type(self).model_fields.items()]
         for key in self.extras:
             near = get_close_matches(key, known, 1, 0.8)

@@ -8,13 +8,16 @@ import numpy as np
 
 from ..checks.check import Ask
 from ..circuit.circuit import Circuit
+from ..circuit.work_inspection import course_points
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..results import Spread
 from .evaluate import Progress, judge, kept_state, look
 from .trials import TrialRun
 
-PORTION = 4096  # lanes in memory at a time
+PORTION = 4096  # lanes in memory at a time, at most
+LEAST_PORTION = 64
+COURSE_POINTS = 16_000_000  # pairs of numbers for the courses of all lanes of a portion: 256 MB
 Z = 1.959963984540054  # 97.5 % quantile of the normal distribution
 
 
@@ -40,8 +43,10 @@ def spread_of(
     judged = [ask for ask in asks if ask.missing is None and (ask.trial is None or ask.screen is not None)]
     margins: dict[str, list[Floats]] = {ask.id: [] for ask in judged if ask.trial is None}
     passed: dict[str, int] = dict.fromkeys((ask.id for ask in judged), 0)
-    for low in range(0, lanes.count, PORTION):
-        portion = lanes.take(range(low, min(low + PORTION, lanes.count)))
+    fitting = COURSE_POINTS // max(1, course_points(circuit.design))
+    size = min(PORTION, max(LEAST_PORTION, fitting))
+    for low in range(0, lanes.count, size):
+        portion = lanes.take(range(low, min(low + size, lanes.count)))
 
         def of_all(done: int, total: int, low: int = low, count: int = portion.count) -> None:
             runs = total // count
