@@ -98,7 +98,7 @@ def _ask(check: Check, latch: Latch) -> Ask:
         outcomes = (*judged.outcomes, (edge.never, check.words["immune"]))
         return Judged(margin, demand, judged.capability, outcomes=outcomes, hand=judged.hand)
 
-    screen = 1.0 / (rise * (1.0 - required)) if required < 1.0 else None
+    screen = 1.0 / (max(rise, FASTEST) * (1.0 - required)) if required < 1.0 else None
     return Ask(check, stage.name, npn.ref, (sequence,), required, judge, (steepest,), trial, screen)
 
 

@@ -47,7 +47,7 @@ def generator(**waveform: Any) -> Spoil:
     pins = {"plus": "tone", "minus": "0V"}
     tone = {"ref": "G1", "kind": "generator", "pins": pins, "waveform": waveform}
     feed = {"ref": "R90", "kind": "resistor", "pins": {"a": "tone", "b": "base"}, "value": "1M"}
-    return stages([tone, feed])
+    return lambda document: document["stages"].append({"name": "tone", "parts": [tone, feed]})
 
 
 def bounces(count: int, times: int) -> list[dict[str, Any]]:
