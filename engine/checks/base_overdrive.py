@@ -3,10 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import dataclass
 
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..kernel.layout import Floats
+from ..primitives.builder import Bench
 from ..primitives.signals import Anchor, Row, level, voltage
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
@@ -40,9 +43,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
     base = level(bench.currents["base"], at)
     across = level(voltage(plus, minus), at)
     drop = level(voltage(part.pins["collector"], part.pins["emitter"]), at)
-    resistor = view.role(stage, "base_resistor")
-    leak = view.base_emitter_resistor(stage, "driver")
-    drive = _drive(part, resistor, at)
+    driving = base_drive(view, stage, part, at)
 
     def judge(seen: Seen) -> Judged:
         gain = np.asarray(bench.gain(seen.lanes)) if bench.gain is not None else np.ones(seen.lanes.count)
@@ -52,26 +53,42 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         wanted = driven.draw(seen.lanes, volts)
         never = ~seen.seen(base, sequence)
         hand = None
-        if resistor is not None and drive is not None and bench.base_voltage is not None:
-            v_be = bench.base_voltage(seen.lanes, wanted)
-            i_b = (seen.value(drive, sequence) - v_be) / seen.lanes[resistor.ref, "value"]
-            if leak is not None:
-                i_b = i_b - v_be / seen.lanes[leak.ref, "value"]
+        if driving is not None:
+            i_b = driving.current(seen, sequence, wanted)
             hand = 1.0 - wanted / gain / np.where(i_b > 0.0, i_b, np.nan)
         supplied = np.abs(seen.value(base, sequence))
         return ratio(wanted / gain, supplied, [(never, check.words["never"].format(load=load.ref))], hand)
 
     required = view.required(check.slug, check.required, requirement)
-    rows = (base, across, drop, *(() if drive is None else (drive,)))
+    rows = (base, across, drop, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 
-def _drive(part: Part, resistor: Part | None, at: Anchor) -> Row | None:
-    """What drives the base through its resistor, against the emitter; None where the resistor is not at the base."""
-    if resistor is None or part.pins["base"] not in resistor.pins.values():
+@dataclass(frozen=True)
+class BaseDrive:
+    """What drives a base through its resistor, against the emitter: the hand formula of the base current."""
+
+    row: Row
+    resistor: Part
+    leak: Part | None
+    bench: Bench
+
+    def current(self, seen: Seen, sequence: str, collector: Floats) -> Floats:
+        """(V_drive - V_BE)/R_B - V_BE/R_BE with V_BE at a collector current in A."""
+        assert self.bench.base_voltage is not None
+        v_be = self.bench.base_voltage(seen.lanes, collector)
+        current = (seen.value(self.row, sequence) - v_be) / seen.lanes[self.resistor.ref, "value"]
+        return current if self.leak is None else current - v_be / seen.lanes[self.leak.ref, "value"]
+
+
+def base_drive(view: View, stage: Stage, part: Part, at: Anchor) -> BaseDrive | None:
+    """The drive of a transistor at an instant; None where the stage's base resistor is not at its base."""
+    resistor, bench = view.role(stage, "base_resistor"), view.bench(part.ref)
+    if resistor is None or part.pins["base"] not in resistor.pins.values() or bench.base_voltage is None:
         return None
     far = next((net for net in resistor.pins.values() if net != part.pins["base"]), part.pins["base"])
-    return level(voltage(far, part.pins["emitter"]).scaled(polarity(part)), at)
+    row = level(voltage(far, part.pins["emitter"]).scaled(polarity(part)), at)
+    return BaseDrive(row, resistor, view.base_emitter_resistor(stage, "driver"), bench)
 
 
 CHECKS = (

@@ -22,6 +22,7 @@ Mask = NDArray[np.bool_]
 class Judged:
     """Demand, capability and margin per lane; window checks give ``value`` with its limits instead of D and C.
 
+    ``each`` are margins of which ``margin`` is the smallest: the corners look for the worst of every one of them.
     ``outcomes`` are words for lanes where something else happened than the number says; the first that fits counts.
     """
 
@@ -32,6 +33,7 @@ class Judged:
     limits: tuple[float, float] | None = None
     outcomes: tuple[tuple[Mask, str], ...] = ()
     hand: Floats | None = None
+    each: tuple[Floats, ...] = ()
 
     def outcome(self, lane: int) -> str | None:
         """The words for one lane."""

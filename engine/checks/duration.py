@@ -38,11 +38,11 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     first_text, last_text = requirement.from_ or f"{subject} on", requirement.to or f"{subject} off"
     first = view.anchor(first_text, sequence)
     last = view.anchor(last_text, sequence, first)
-    timing = _Timing.find(view, first, last)
+    timing = Timing.find(view, first, last)
     brief = _within_chatter(first, last)
 
     def judge(seen: Seen) -> Judged:
-        begin, end = (_instant(seen, anchor, sequence) for anchor in (first, last))
+        begin, end = (instant(seen, anchor, sequence) for anchor in (first, last))
         if brief is not None:
             back, settled = brief
             over = seen.value(settled, sequence) - back.level
@@ -72,14 +72,15 @@ def _within_chatter(first: Anchor, last: Anchor) -> tuple[Row, Row] | None:
     return crossing(end.signal, end.level, end.rising, first), level(end.signal, end.start)
 
 
-def _instant(seen: Seen, anchor: Anchor, sequence: str) -> Floats:
+def instant(seen: Seen, anchor: Anchor, sequence: str) -> Floats:
+    """When an anchor is, in s from the start of the sequence; NaN in lanes where it never came."""
     if anchor.row is None:
         return np.full(seen.lanes.count, anchor.by)
     return seen.time(anchor.row, sequence) + anchor.by
 
 
-class _Timing:
-    """The timing resistor and capacitor of the design, for t = tau ln(V_inf / (V_inf - V_th)) with leakage."""
+class Timing:
+    """The timing resistor and capacitor of a stage, for t = tau ln(V_inf / (V_inf - V_th)) with leakage."""
 
     def __init__(self, view: View, stage: Stage, first: Anchor, last: Anchor) -> None:
         resistor, capacitor = (view.design.part(stage.roles[r]) for r in ("timing_resistor", "timing_capacitor"))
@@ -93,7 +94,7 @@ class _Timing:
         self.rows: tuple[Row, ...] = (self.threshold, self.rail)
 
     @classmethod
-    def find(cls, view: View, first: Anchor, last: Anchor) -> _Timing | None:
+    def find(cls, view: View, first: Anchor, last: Anchor) -> Timing | None:
         """The design's timing pair; None where the roles are not filled or there is more than one pair."""
         pairs = [s for s in view.design.stages if {"timing_resistor", "timing_capacitor"} <= s.roles.keys()]
         return cls(view, pairs[0], first, last) if len(pairs) == 1 else None

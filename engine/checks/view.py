@@ -51,6 +51,15 @@ class View:
                 return self.design.part(place.roles[name])
         return None
 
+    def stage_named(self, subject: str) -> str:
+        """The stage of a requirement's subject: of a part, the first that has a net, or a stage itself."""
+        if self.design.has_part(subject):
+            return self.design.stage_of(subject).name
+        for stage in self.design.stages:
+            if subject == stage.name or any(subject in part.pins.values() for part in stage.parts):
+                return stage.name
+        return self.design.stages[0].name
+
     def load(self, stage: Stage) -> Part | None:
         """The load that tells when there is an alarm: of the stage itself, else the first of the design, among those
         that have a level at which they count as on."""

@@ -23,7 +23,7 @@ from ..errors import QuantityError
 from ..quantity import read
 from .net_inspection import RETURN, SUPPLY
 
-_LEVELS = {"probe": "ohm", "lead": "ohm", "preset": "", "generator": "V", "light_resistor": "lx", "thermistor": "degC"}
+LEVELS = {"probe": "ohm", "lead": "ohm", "preset": "", "generator": "V", "light_resistor": "lx", "thermistor": "degC"}
 """What ``set`` and ``ramp`` write for a part of this kind."""
 _SENSORS = ("light_resistor", "thermistor")
 AMBIENT = "ambient"
@@ -107,14 +107,14 @@ def _level_faults(design: Design, event: SetLevel | RampLevel, refs: Mapping[str
     quantities = {part.follows for part in design.parts if part.follows is not None}
     if event.part not in refs and event.part not in quantities:
         yield f"field part: {_absent('part or followed quantity', event.part, {*refs, *quantities})}"
-    elif event.part in refs and refs[event.part] not in _LEVELS:
-        settable = [ref for ref, kind in refs.items() if kind in _LEVELS]
+    elif event.part in refs and refs[event.part] not in LEVELS:
+        settable = [ref for ref, kind in refs.items() if kind in LEVELS]
         why = "a contact, which close and open move" if refs[event.part] == "contact" else f"a {refs[event.part]}"
         yield f"field part: {event.part} is {why}, and has no level; write {_one_of(settable, 'probe or a preset')}"
     elif event.part == AMBIENT:
         yield "field part: the ambient is a condition; let the sensor follow a quantity with a name of its own"
     elif isinstance(event.to, str):
-        unit = _LEVELS.get(_kind_set(design, event.part))
+        unit = LEVELS.get(_kind_set(design, event.part))
         try:
             read(event.to, unit)
         except QuantityError as refusal:
@@ -140,7 +140,8 @@ def _requirement_faults(
     design: Design, requirement: Requirement, refs: Mapping[str, str], nets: Collection[str]
 ) -> Iterator[str]:
     stages = [stage.name for stage in design.stages]
-    if requirement.of is not None and requirement.of not in {*refs, *nets, *stages}:
+    followed = {part.follows for part in design.parts}
+    if requirement.of is not None and requirement.of not in {*refs, *nets, *stages, *followed}:
         yield f"field of: {_absent('part, net or stage', requirement.of, [*refs, *nets, *stages])}"
     if requirement.stage is not None and requirement.stage not in stages:
         yield f"field stage: {_absent('stage', requirement.stage, stages)}"

@@ -139,6 +139,7 @@ KIND = Kind(
         "class": Entry(TEXT, about="generic class"),
     },
     data={
+        "self_discharge": Entry("1/s", about="share of the capacity that it loses by itself, such as 3 %/month"),
         "charge_state": Entry("", about="share of the capacity that is left; 100 % where none is written"),
         "age": Entry("", about="0 % fresh, 100 % at the aged resistance"),
         "loads": Entry(TEXT, about="two points of current and voltage, instead of the resistance"),

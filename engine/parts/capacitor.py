@@ -69,7 +69,9 @@ def expand(part: Part, build: Builder) -> None:
     if series is not None and series.typical > 0.0:
         inner = f"{part.ref}/plate"
         series_key = build.column(part.ref, "series_resistance", *series.limits)
-        build.conductance(plus, inner, lambda lanes: 1.0 / lanes[series_key])
+        plate = build.conductance(plus, inner, lambda lanes: 1.0 / lanes[series_key])
+        build.bench(part.ref).currents["plus" if "plus" in part.pins else "a"] = plate.current
+        build.bench(part.ref).power = plate.power
     build.capacitance(inner, minus, farads)
     leakage = leakage_currents(part, value.typical)
     if leakage is not None:

@@ -176,6 +176,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "aged_resistance": "90 mohm",
             "cold_resistance": "60 mohm",
             "age": ("0 %", "0 %", "100 %"),
+            "self_discharge": "3 %/month",
         },
     },
     "thermistor": {"ntc": {"beta": "3950 K"}},

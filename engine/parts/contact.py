@@ -58,7 +58,10 @@ KINDS = (
         (("a", "b"),),
         expand_contact,
         {"resistance": Entry("ohm", about="when closed"), "form": Entry(TEXT, about="make or break")},
-        {"insulation": Entry("ohm", about="when open")},
+        {
+            "insulation": Entry("ohm", about="when open"),
+            "minimum_current": Entry("A", about="least current that keeps it clean, when closed"),
+        },
     ),
     Kind(
         "probe",

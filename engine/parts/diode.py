@@ -12,7 +12,7 @@ from typing import TYPE_CHECKING
 
 from ..errors import CircuitError
 from .figures import figure, needed, typical, valued
-from .kind import TEXT, Entry, Kind
+from .kind import TEXT, THERMAL, Entry, Kind
 from .physics import BAND_GAP, SATURATION_EXPONENT, doubling, saturation_factor, saturation_from, thermal_voltage
 from .points import forward_law
 
@@ -243,7 +243,8 @@ KINDS = (
             **DATA,
             "test_current": Entry("A", about="current of the zener voltage"),
             "slope_resistance": Entry("ohm", about="at the test current"),
-            "power": Entry("W", about="rated power"),
+            "power": Entry("W", about="rated power at 25 C"),
+            **THERMAL,
         },
         LAW,
     ),

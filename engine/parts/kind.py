@@ -25,6 +25,14 @@ class Entry:
     about: str = ""
 
 
+THERMAL: Mapping[str, Entry] = {
+    "thermal_resistance": Entry("K/W", about="junction to ambient; from the rated power where none is written"),
+    "t_j_max": Entry("degC", about="highest junction temperature; 150 C where none is written"),
+    "thermal_time": Entry("s", about="pulse from which on the whole thermal resistance counts; 1 s where not written"),
+}
+"""What tells how hot a junction becomes; the customary figures are from memory."""
+
+
 @dataclass(frozen=True)
 class Kind:
     """A part kind. ``pins`` lists the accepted pin sets; ``paths`` the pin pairs that conduct direct current.

@@ -15,7 +15,7 @@ from ..errors import CircuitError
 from ..primitives.builder import constant
 from ..primitives.columns import Group
 from .figures import figure, needed, typical
-from .kind import FLAG, TEXT, Entry, Kind
+from .kind import FLAG, TEXT, THERMAL, Entry, Kind
 from .physics import REFERENCE, doubling, gain_factor, saturation_factor, thermal_voltage
 from .points import forward_law, saturation_law
 
@@ -299,6 +299,7 @@ DATA = {
     "v_ceo": Entry("V", about="rated collector-emitter voltage"),
     "v_ebo": Entry("V", about="rated reverse base-emitter voltage"),
     "i_c_max": Entry("A", about="rated collector current"),
+    "i_cm": Entry("A", about="rated peak collector current"),
     "c_ob": Entry("F", about="collector-base capacitance at c_ob_bias"),
     "c_ob_bias": Entry("V", about="reverse voltage of the c_ob figure"),
     "c_ib": Entry("F", about="base-emitter capacitance at c_ib_bias"),
@@ -307,8 +308,8 @@ DATA = {
     "f_t_current": Entry("A", about="collector current of the f_t figure"),
     "i_cbo": Entry("A", about="collector-base leakage at 25 C"),
     "i_cbo_doubling": Entry("K", about="kelvin per doubling of the leakage"),
-    "thermal_resistance": Entry("K/W", about="junction to ambient"),
-    "power": Entry("W", about="rated power"),
+    "power": Entry("W", about="rated power at 25 C"),
+    **THERMAL,
     "base_emitter_breakdown": Entry("V", about="typical breakdown, not the rating"),
     "early_voltage": Entry("V", about="Early voltage"),
 }

@@ -137,7 +137,7 @@ def _corners(
             found[ask.id] = replace(middle, reach=reach)
             continue
         if ask.trial is None:
-            effects = _effects(judged[ask.id][0], worst.margin, conditions, single)
+            effects = _effects(judged[ask.id][0], worst, conditions, single)
         else:
             effects = trials.effects(ask, middle, worst.margin)
         found[ask.id] = replace(worst, words=named(worst.setting, effects), reach=reach)
@@ -152,19 +152,23 @@ def _reach(judged: Iterable[Judged]) -> tuple[float | None, float | None]:
 
 
 def _metrics(judged: Judged) -> list[Floats]:
-    """What the corners make as small as possible: the margin, or both ends of a window's value."""
+    """What the corners make as small as possible: the margin, each of several, or both ends of a window's value."""
+    if judged.each:
+        return list(judged.each)
     if judged.value is None:
         return [judged.margin]
     value = np.where(np.isfinite(judged.value), judged.value, np.nan)
     return [value, -value]
 
 
-def _effects(judged: Judged, worst: float, conditions: list[Setting], single: list[Setting]) -> Effects:
+def _effects(judged: Judged, worst: Corner, conditions: list[Setting], single: list[Setting]) -> Effects:
     """What moves a margin that is observed: ``conditions`` and then ``single`` are the lanes."""
     if judged.value is not None and judged.limits is not None:
         measure = judged.value / (0.5 * (judged.limits[1] - judged.limits[0]))
     else:
-        measure = used(judged.margin, worst)
+        # Of several margins the one that is smallest in the worst corner tells what made it so.
+        each = [float(one[worst.lane]) for one in worst.judged.each]
+        measure = used(judged.each[int(np.argmin(each))] if each else judged.margin, worst.margin)
     return of_conditions(measure, conditions) | of_parts(measure[len(conditions) :], single)
 
 

@@ -13,12 +13,26 @@ def _set(ref: str, value: str) -> tuple[str, Edit]:
 
 
 def _add_npn_capacitor(design: Design) -> Design:
-    part = {"ref": "C3", "kind": "capacitor", "pins": {"a": "nb", "b": "0V"}, "value": "1n", "tolerance": "10 %"}
+    part = {
+        "ref": "C3",
+        "kind": "capacitor",
+        "pins": {"a": "nb", "b": "0V"},
+        "value": "1n",
+        "tolerance": "10 %",
+        "voltage": "50 V",
+    }
     return edit.with_role(edit.with_part(design, "latch", part), "latch", "base_capacitor", "C3")
 
 
 def _add_pnp_capacitor(design: Design) -> Design:
-    part = {"ref": "C4", "kind": "capacitor", "pins": {"a": "supply", "b": "pb"}, "value": "1n", "tolerance": "10 %"}
+    part = {
+        "ref": "C4",
+        "kind": "capacitor",
+        "pins": {"a": "supply", "b": "pb"},
+        "value": "1n",
+        "tolerance": "10 %",
+        "voltage": "50 V",
+    }
     return edit.with_part(design, "latch", part)
 
 

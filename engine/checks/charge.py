@@ -1,0 +1,104 @@
+"""Check 29: is a stand-by battery never charged too hard, and does the charge make up for what it loses?"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..primitives.columns import SUPPLY
+from ..primitives.signals import Anchor, level, maximum
+from .check import Ask, Check, Judged, ratio, unknown
+from .seen import Seen
+from .view import View
+
+ROLE = "standby_battery"
+
+
+def most_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every battery in the role of a stand-by battery."""
+    for stage, _, part in view.with_role(ROLE):
+        yield _most_ask(check, view, stage, part)
+
+
+def _most_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequence = view.sequence(requirement)
+    limits = part.limits("charge_limits", "A", "current")
+    allowed = None if limits is None else limits.max if limits.max is not None else limits.typical
+    if allowed is None:
+        return unknown(check, stage.name, part.ref, sequence, required, f"charge_limits current of {part.ref}")
+    row = maximum(view.bench(part.ref).currents["plus"])
+
+    def judge(seen: Seen) -> Judged:
+        current = np.maximum(0.0, seen.value(row, sequence))
+        return ratio(current, np.full(seen.lanes.count, allowed), hand=_hand(view, stage, part, seen, allowed))
+
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, (row,))
+
+
+def _hand(view: View, stage: Stage, part: Part, seen: Seen, allowed: float) -> np.ndarray | None:
+    """(supply - diode - battery) / R_charge against the limit, where the role charge_resistor is filled."""
+    resistor = view.role(stage, "charge_resistor")
+    source = view.circuit.builder.batteries.get(f"{part.ref} source")
+    if resistor is None or source is None or SUPPLY not in seen.lanes:
+        return None
+    diode = view.role(stage, "charge_diode")
+    found = None if diode is None else view.datum(diode, "forward_high", "V")
+    left = seen.lanes[SUPPLY] - (0.0 if found is None else found.typical) - source(seen.lanes)
+    return np.asarray(1.0 - np.maximum(0.0, left) / seen.lanes[resistor.ref, "value"] / allowed)
+
+
+def upkeep_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every battery in the role of a stand-by battery."""
+    for stage, _, part in view.with_role(ROLE):
+        yield _upkeep_ask(check, view, stage, part)
+
+
+def _upkeep_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequence = view.sequence(requirement)
+    capacity, lost = view.datum(part, "capacity", "Ah"), view.datum(part, "self_discharge", "1/s")
+    for key, found in (("capacity", capacity), ("self_discharge", lost)):
+        if found is None:
+            return unknown(check, stage.name, part.ref, sequence, required, f"{key} of {part.ref}")
+    assert capacity is not None
+    assert lost is not None
+    load = view.extra(requirement, "load", "A") or 0.0
+    at = view.moment(sequence, "standby") or Anchor(0.5 * view.ends(sequence))
+    row = level(view.bench(part.ref).currents["plus"], at)
+
+    def judge(seen: Seen) -> Judged:
+        wanted = np.full(seen.lanes.count, capacity.high * lost.high + load)
+        return ratio(wanted, seen.value(row, sequence), hand=None)
+
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, (row,))
+
+
+CHECKS = (
+    Check(
+        number=29,
+        slug="charge_current",
+        title="charge current",
+        unit="A",
+        required=0.0,
+        formula="D = largest current into the battery, C = the charge current that it bears",
+        asks=most_asks,
+        worst="high supply, empty battery",
+        by_hand="(supply - diode - battery voltage) / R_charge over what it bears",
+        accuracy=0.1,
+    ),
+    Check(
+        number=29,
+        slug="charge_upkeep",
+        title="charge upkeep",
+        unit="A",
+        required=0.0,
+        formula="D = self-discharge x capacity + load of the requirement, C = current into the battery in stand-by",
+        asks=upkeep_asks,
+        worst="low supply, full battery",
+    ),
+)

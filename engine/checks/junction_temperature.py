@@ -1,0 +1,135 @@
+"""Check 9: how hot does a junction become?
+
+Steady: rise = P R_th. Short losses: the transient thermal resistance of a half space, R_th sqrt(t/t_0) up to t_0
+(Carslaw, Jaeger, Conduction of Heat in Solids, 1959, section 2.9: a given flux into a half space), t_0 being the time
+from which on the whole of R_th counts. Of all courses of power with the same peak and energy the rectangle that ends at
+the instant looked at heats most, because the response only falls with the age of a loss: so all energy beyond what is
+lost while the load is on, put into one rectangle of the peak power, is an upper bound, and so is the peak power for
+ever. The smaller of both counts. What is lost while the load is on is taken as constant.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..kernel.layout import Floats
+from ..primitives.signals import Anchor, Row, integral, level, maximum
+from ..quantity import read
+from .check import Ask, Check, Judged, ratio, unknown
+from .reverse_base_emitter import BIPOLAR
+from .seen import Seen
+from .view import View
+
+HEATED = (*BIPOLAR, "mosfet_n", "mosfet_p", "zener")
+LIMIT = 150.0  # deg C, silicon in plastic, from memory
+SETTLED = 1e-2  # s after which a load that came on draws what it goes on to draw
+WHOLE = 1.0  # s from which on all of R_th counts, from memory: small packages take ten times as long
+RATED_AT = 25.0  # deg C at which a power is rated
+
+
+def transient(seconds: Floats, whole: float) -> Floats:
+    """Share of the thermal resistance that counts for a loss of this length: sqrt(t/t_0), at most 1."""
+    return np.sqrt(np.clip(seconds / whole, 0.0, 1.0))
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every transistor and zener."""
+    for stage, part in view.parts_of(*HEATED):
+        if view.bench(part.ref).power is not None:
+            yield _ask(check, view, stage, part)
+
+
+def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequence = view.sequence(requirement)
+    resistance, rated = view.datum(part, "thermal_resistance", "K/W"), None
+    limit, whole = (_typical(view, part, *key) for key in (("t_j_max", "degC", LIMIT), ("thermal_time", "s", WHOLE)))
+    if resistance is None:
+        rated = view.datum(part, "power", "W")
+        if rated is None:
+            return unknown(check, stage.name, part.ref, sequence, required, f"thermal_resistance of {part.ref}")
+    kelvin = resistance.high if resistance is not None else (limit - RATED_AT) / rated.low if rated is not None else 0.0
+    heat = _Heat.of(view, stage, part, whole)
+
+    def judge(seen: Seen) -> Judged:
+        found = [heat.watts(seen, name) for name in heat.sequences]
+        steady, bound = (np.max([each[k] for each in found], axis=0) for k in (0, 1))
+        allowed = limit - seen.lanes.ambient
+        hand = 1.0 - kelvin * steady / np.where(allowed > 0.0, allowed, np.nan)
+        return ratio(kelvin * np.maximum(steady, bound), allowed, hand=hand)
+
+    return Ask(check, stage.name, part.ref, heat.sequences, required, judge, heat.rows)
+
+
+def _typical(view: View, part: Part, key: str, unit: str, customary: float) -> float:
+    found = view.datum(part, key, unit)
+    return customary if found is None else found.typical
+
+
+@dataclass(frozen=True)
+class _Heat:
+    """What of a part's loss is observed; ``on``: between which events a driver's load is on, and its loss then."""
+
+    whole: float
+    sequences: tuple[str, ...]
+    steady: dict[str, tuple[Row, ...]]
+    peak: Row
+    energy: Row
+    on: tuple[Row, Row, Row] | None
+
+    @classmethod
+    def of(cls, view: View, stage: Stage, part: Part, whole: float) -> _Heat:
+        """The rows of a part that turns power to heat."""
+        power = view.bench(part.ref).power
+        assert power is not None
+        steady = {}
+        for name, sequence in view.design.sequences.items():
+            moments = [view.anchor(moment, name) for moment in sequence.moments]
+            steady[name] = tuple(level(power, at) for at in moments or [Anchor(0.5 * view.ends(name))])
+        roles = [role for role, ref in stage.roles.items() if ref == part.ref and role.startswith("driver")]
+        load = view.role(stage, roles[0].replace("driver", "load")) if roles else None
+        on = None
+        if load is not None and view.bench(load.ref).on is not None:
+            begin, end = view.event(f"{load.ref} on"), view.event(f"{load.ref} off")
+            on = begin, end, level(power, Anchor(SETTLED, begin))
+        return cls(whole, tuple(steady), steady, maximum(power), integral(power), on)
+
+    @property
+    def rows(self) -> tuple[Row, ...]:
+        """Everything that is observed, in every sequence."""
+        moments = (row for rows in self.steady.values() for row in rows)
+        return tuple(dict.fromkeys((*moments, self.peak, self.energy, *(self.on or ()))))
+
+    def watts(self, seen: Seen, name: str) -> tuple[Floats, Floats]:
+        """The largest steady loss in a sequence, and the loss that would heat as much as its peaks at most do."""
+        steady = np.nan_to_num(np.array([seen.value(row, name) for row in self.steady[name]])).max(axis=0)
+        energy, most = seen.value(self.energy, name), seen.value(self.peak, name)
+        lasting = np.zeros(seen.lanes.count)
+        if self.on is not None:
+            begin, end, lost = self.on
+            ends = read(seen.circuit.design.sequences[name].ends, "s")
+            off = np.where(seen.seen(end, name), seen.time(end, name), ends)
+            lasting = np.minimum(np.nan_to_num(seen.value(lost, name)), most)
+            energy = np.maximum(0.0, energy - lasting * np.nan_to_num(off - seen.time(begin, name)))
+        beyond = np.maximum(most - lasting, 1e-15)
+        return steady, np.minimum(most, lasting + beyond * transient(energy / beyond, self.whole))
+
+
+CHECKS = (
+    Check(
+        number=9,
+        slug="junction_temperature",
+        title="junction temperature",
+        unit="K",
+        required=0.2,
+        formula="D = rise above ambient: R_th x steady power, more where peaks heat beyond it, C = T_limit - ambient",
+        asks=asks,
+        worst="hot, high supply",
+        by_hand="R_th x the power at the moments of the sequences, without peaks",
+    ),
+)

@@ -1,0 +1,162 @@
+"""Check 2: does a load get the voltage it needs, and is it let go of when it is off?
+
+A relay's voltage to pick up is given at 20 C and grows with its copper, V20 (234.5 + T)/254.5 (common form).
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..kernel.layout import Floats
+from ..parts import kinds
+from ..parts.physics import copper_factor
+from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
+from ..primitives.signals import Anchor, level, maximum, voltage
+from .check import Ask, Check, Judged, ratio, unknown
+from .seen import Seen
+from .view import View
+
+NOTHING = 1e-3  # V left across a load that are none: the solver knows a voltage to a tenth of it
+REACHED = 0.5  # of what it needs: a load that never saw as much was not switched on at all
+
+
+def on_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every load that has a level at which it works."""
+    for stage, load in _loads(view):
+        requirement = view.requirement(check.slug, load.ref, stage.name)
+        required = view.required(check.slug, check.required, requirement)
+        sequence = view.sequence(requirement)
+        key = need_key(load)
+        least = view.datum(load, key, "V")
+        if least is None or view.bench(load.ref).on is None:
+            yield unknown(check, stage.name, load.ref, sequence, required, f"{key} of {load.ref}")
+        else:
+            needs = _with_copper(load, least.high)
+            yield _on_ask(check, view, stage, load, sequence, required, needs)
+
+
+def _loads(view: View) -> Iterator[tuple[Stage, Part]]:
+    for stage, _, load in view.with_role("load"):
+        kind = kinds()[load.kind]
+        if need_key(load) in {**kind.fields, **kind.data}:
+            yield stage, load
+
+
+def need_key(load: Part) -> str:
+    """The datum that says from which voltage on a load works."""
+    return "pick_up" if load.kind == "coil" else "operating_minimum"
+
+
+def _with_copper(load: Part, volts: float) -> Callable[[Lanes], Floats]:
+    """A voltage at 20 C as it is at ambient: that of a coil grows with the resistance of its copper."""
+    if load.kind == "coil":
+        return lambda lanes: volts * copper_factor(lanes.ambient)
+    return lambda lanes: np.full(lanes.count, volts)
+
+
+def _on_ask(
+    check: Check,
+    view: View,
+    stage: Stage,
+    load: Part,
+    sequence: str,
+    required: float,
+    needs: Callable[[Lanes], Floats],
+) -> Ask:
+    plus, minus, _ = view.bench(load.ref).on or ("", "", 0.0)
+    at = view.moment(sequence, "sounding", "on") or Anchor(1e-2, view.event(f"{load.ref} on"))
+    across = voltage(plus, minus)
+    steady, most = level(across, at), maximum(across)
+
+    def judge(seen: Seen) -> Judged:
+        wanted = needs(seen.lanes)
+        given = seen.value(steady, sequence)
+        given = np.where(np.isfinite(given), given, seen.value(most, sequence))
+        never = given < REACHED * wanted
+        words = check.words["never"].format(load=load.ref)
+        return ratio(wanted, given, [(never, words)], _hand(view, stage, load, seen.lanes, wanted))
+
+    return Ask(check, stage.name, load.ref, (sequence,), required, judge, (steady, most))
+
+
+def _hand(view: View, stage: Stage, load: Part, lanes: Lanes, wanted: Floats) -> Floats | None:
+    """D/C with C the supply less the drops that the data tell: saturation, entry diode, source and lead resistance."""
+    draw = view.bench(load.ref).draw
+    if draw is None or SUPPLY not in lanes:
+        return None
+    supply = lanes[SUPPLY]
+    drop = 0.0
+    driver = view.role(stage, "driver")
+    for part, key in ((driver, "v_ce_sat"), (view.role(stage, "reverse_diode"), "forward_high")):
+        found = None if part is None else view.datum(part, key, "V")
+        drop += 0.0 if found is None else found.typical
+    current = draw(lanes, supply - drop)
+    ohms = lanes[SOURCE_RESISTANCE] if SOURCE_RESISTANCE in lanes else np.zeros(lanes.count)
+    for _, lead in view.parts_of("lead"):
+        if set(lead.pins.values()) & {load.pins["plus"], load.pins["minus"]} - {"0V", "supply"}:
+            ohms = ohms + lanes[lead.ref, "resistance"]
+    left = supply - drop - current * ohms
+    return np.asarray(1.0 - wanted / np.where(left > 0.0, left, np.nan))
+
+
+def off_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every load, where the sequence has a moment at which it must be off."""
+    for stage, load in _loads(view):
+        requirement = view.requirement(check.slug, load.ref, stage.name)
+        sequence = view.sequence(requirement)
+        moments = view.design.sequences[sequence].moments
+        off = tuple(view.anchor(name, sequence) for name in ("standby", "silent", "reset") if name in moments)
+        if off:
+            yield _off_ask(check, view, stage, load, sequence, off)
+
+
+def _off_ask(check: Check, view: View, stage: Stage, load: Part, sequence: str, off: tuple[Anchor, ...]) -> Ask:
+    requirement = view.requirement(check.slug, load.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    key = "drop_out" if load.kind == "coil" else "operating_minimum"
+    least = view.datum(load, key, "V")
+    if least is None or view.bench(load.ref).on is None:
+        return unknown(check, stage.name, load.ref, sequence, required, f"{key} of {load.ref}")
+    plus, minus, _ = view.bench(load.ref).on or ("", "", 0.0)
+    rows = tuple(level(voltage(plus, minus), at) for at in off)
+    lets_go = _with_copper(load, least.low)
+
+    def judge(seen: Seen) -> Judged:
+        left = np.array([seen.value(row, sequence) for row in rows])
+        never = np.asarray(np.isnan(left).all(axis=0))
+        largest = np.max(np.nan_to_num(left), axis=0)
+        largest = np.where(largest < NOTHING, 0.0, largest)
+        return ratio(largest, lets_go(seen.lanes), [(never, check.words["never"])])
+
+    return Ask(check, stage.name, load.ref, (sequence,), required, judge, rows)
+
+
+CHECKS = (
+    Check(
+        number=2,
+        slug="load_voltage",
+        title="load voltage",
+        unit="V",
+        required=0.1,
+        formula="D = voltage that the load needs, a coil's with its copper, C = voltage across it while it is on",
+        asks=on_asks,
+        worst="low supply; hot for a coil, cold for a transistor's drop",
+        by_hand="D / (supply - V_CE(sat) - entry diode - I (R_source + R_lead))",
+        accuracy=0.1,
+        words={"never": "{load} was never switched on"},
+    ),
+    Check(
+        number=2,
+        slug="load_off",
+        title="load off",
+        unit="V",
+        required=0.1,
+        formula="D = voltage left across the load in stand-by and after the alarm, C = voltage at which it lets go",
+        asks=off_asks,
+        worst="hot, high supply",
+        words={"never": "none of the moments at which it must be off ever came"},
+    ),
+)

@@ -1,0 +1,114 @@
+"""Check 10: can a transistor carry the inrush of its load?
+
+The inrush is taken from the load's data and not from the simulation, in which the transistor itself limits it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..kernel.layout import Floats
+from ..parts import kinds
+from ..primitives.columns import Lanes
+from ..primitives.signals import Anchor, Row, level, maximum, voltage
+from .base_overdrive import SATURATED, base_drive
+from .check import Ask, Check, Judged, ratio, unknown
+from .seen import Seen
+from .view import View
+
+RATINGS = ("i_cm", "i_c_max")
+Inrush = Callable[[Lanes, Floats], Floats]
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every driver with a load."""
+    for stage, role, part in view.with_role("driver"):
+        load = view.role(stage, "load" if role == "driver" else role.replace("driver", "load"))
+        if load is not None and view.bench(part.ref).gain is not None:
+            yield _ask(check, view, stage, part, load)
+
+
+def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequence = view.sequence(requirement)
+    rating = next((found for key in RATINGS if (found := view.datum(part, key, "A")) is not None), None)
+    if rating is None:
+        return unknown(check, stage.name, part.ref, sequence, required, f"i_c_max of {part.ref}")
+    bench, driven = view.bench(part.ref), view.bench(load.ref)
+    inrush = _inrush(view, load)
+    if isinstance(inrush, str):
+        return unknown(check, stage.name, part.ref, sequence, required, inrush)
+    if driven.on is None and inrush is not None:
+        return unknown(check, stage.name, part.ref, sequence, required, f"operating_minimum of {load.ref}")
+    allowed = view.derating("i_c_max", requirement) * rating.low
+    at = view.moment(sequence, "sounding", "on")
+    if at is None:
+        at = Anchor(0.5 * view.ends(sequence)) if driven.on is None else Anchor(1e-2, view.event(f"{load.ref} on"))
+    base = level(bench.currents["base"], at)
+    across, drop, peak = _voltages(view, part, load, at)
+    driving = base_drive(view, stage, part, at)
+
+    def judge(seen: Seen) -> Judged:
+        if inrush is None:
+            wanted = np.abs(seen.value(peak, sequence))
+        else:
+            volts = seen.value(across, sequence) + np.maximum(0.0, np.abs(seen.value(drop, sequence)) - SATURATED)
+            wanted = inrush(seen.lanes, volts)
+        gain = np.asarray(bench.gain(seen.lanes)) if bench.gain is not None else np.ones(seen.lanes.count)
+        carried = np.minimum(allowed, gain * np.abs(seen.value(base, sequence)))
+        never = ~seen.seen(base, sequence)
+        hand = None
+        if driving is not None:
+            by_hand = np.minimum(allowed, gain * driving.current(seen, sequence, wanted))
+            hand = 1.0 - wanted / np.where(by_hand > 0.0, by_hand, np.nan)
+        return ratio(wanted, carried, [(never, check.words["never"].format(load=load.ref))], hand)
+
+    rows = (base, across, drop, peak, *(() if driving is None else (driving.row,)))
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
+
+
+def _voltages(view: View, part: Part, load: Part, at: Anchor) -> tuple[Row, Row, Row]:
+    on, (first, second, *_) = view.bench(load.ref).on, load.pins.values()
+    plus, minus = (first, second) if on is None else on[:2]
+    drop = voltage(part.pins["collector"], part.pins["emitter"])
+    collector = view.bench(part.ref).currents["collector"]
+    return level(voltage(plus, minus), at), level(drop, at), maximum(collector.scaled(1.0 if _npn(part) else -1.0))
+
+
+def _npn(part: Part) -> bool:
+    return not part.kind.endswith("pnp")
+
+
+def _inrush(view: View, load: Part) -> Inrush | str | None:
+    """The inrush at a voltage; the datum that is missing; None where the load has no inrush of its own."""
+    bench = view.bench(load.ref)
+    kind = kinds()[load.kind]
+    if "surge" not in {**kind.fields, **kind.data}:
+        # What a coil draws settles from below; of other parts the simulation shows what flows.
+        return bench.draw
+    surge, rated = view.datum(load, "surge", "A"), view.datum(load, "rated_voltage", "V")
+    if surge is None:
+        return f"surge of {load.ref}"
+    at = view.circuit.builder.supply_nominal if rated is None else rated.typical
+    return lambda lanes, volts: surge.high / at * volts
+
+
+CHECKS = (
+    Check(
+        number=10,
+        slug="peak_current",
+        title="peak current",
+        unit="A",
+        required=0.2,
+        formula="D = inrush of the load at its voltage, C = the smaller of derating x I_CM and h_FE I_B",
+        asks=asks,
+        worst="high supply for the rating; cold, low supply, weak h_FE for the base current",
+        by_hand="D / min(derating x I_CM, h_FE ((V_drive - V_BE) / R_B - V_BE / R_BE))",
+        accuracy=0.1,
+        words={"never": "{load} never came on"},
+    ),
+)

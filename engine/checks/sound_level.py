@@ -1,0 +1,89 @@
+"""Check 28: is the alarm loud enough where it has to be heard?
+
+The level falls by 20 log10 of the distance, a point source in the open, and the sound pressure goes with the voltage
+across the sounder: both common practice, from memory.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.requirement import Requirement
+from ..errors import CircuitError
+from ..primitives.signals import Anchor, level, voltage
+from ..quantity import read
+from .check import Ask, Check, Judged, unknown
+from .seen import Seen
+from .view import View
+
+DECADE = 10.0  # dB that count as the whole margin
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every requirement of a sound level."""
+    for requirement in view.design.requirements:
+        if requirement.check == check.slug:
+            yield _ask(check, view, requirement)
+
+
+def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
+    subject = requirement.of
+    if subject is None or not view.design.has_part(subject) or requirement.min is None:
+        raise CircuitError(
+            'requirement sound_level: write "of" and "min", for example "LS1" and "80 dB", and "distance"'
+        )
+    sounder, stage = view.design.part(subject), view.design.stage_of(subject)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    wanted = read(requirement.min, "dB")
+    distance = view.extra(requirement, "distance", "m")
+    loud, rated = view.datum(sounder, "sound_level", "dB"), view.datum(sounder, "rated_voltage", "V")
+    on = view.bench(subject).on
+    needs = {
+        f"sound_level of {subject}": loud,
+        f"operating_minimum of {subject}": on,
+        "distance at which it is to be heard (requirement field distance)": distance,
+    }
+    for missing, found in needs.items():
+        if found is None:
+            return unknown(check, stage.name, subject, sequence, required, missing)
+    assert loud is not None
+    assert on is not None
+    assert distance is not None
+    if distance <= 0.0:
+        raise CircuitError('requirement sound_level, field distance: it must be above zero; write it like "1 m"')
+    volts = view.circuit.builder.supply_nominal if rated is None else rated.typical
+    at = view.moment(sequence, "sounding", "on") or Anchor(1e-2, view.event(f"{subject} on"))
+    across = level(voltage(on[0], on[1]), at)
+
+    def judge(seen: Seen) -> Judged:
+        given = seen.value(across, sequence)
+        never = ~(given > 0.0)
+        with_voltage = 20.0 * np.log10(np.where(never, volts, given) / volts)
+        there = loud.low + with_voltage - 20.0 * np.log10(distance)
+        margin = np.where(never, -1.0, (there - wanted) / DECADE)
+        words = check.words["never"].format(sounder=subject)
+        hand = np.full(seen.lanes.count, (loud.low - 20.0 * np.log10(distance) - wanted) / DECADE)
+        demand = np.full(seen.lanes.count, wanted)
+        return Judged(margin, demand, there, outcomes=((never, words),), hand=hand)
+
+    return Ask(check, stage.name, subject, (sequence,), required, judge, (across,))
+
+
+CHECKS = (
+    Check(
+        number=28,
+        slug="sound_level",
+        title="sound level",
+        unit="dB",
+        required=0.3,
+        formula="m = (L - D) / 10 dB, L = level at 1 m + 20 log10(V / V_rated) - 20 log10(distance / 1 m)",
+        asks=asks,
+        worst="low supply",
+        by_hand="the same at the rated voltage",
+        accuracy=0.5,
+        words={"never": "{sounder} never came on"},
+    ),
+)

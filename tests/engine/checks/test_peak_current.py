@@ -1,0 +1,80 @@
+"""Check 10, peak current: the load's inrush against rating and h_FE I_B (common practice, no source)."""
+
+from __future__ import annotations
+
+import math
+
+import pytest
+from scipy import constants
+
+from stagebook.engine.design.document import Design
+from stagebook.engine.results import Verdict
+
+from ..circuits import Json, resistor, transistor
+from .sheets import design, exact, margin, sounder
+
+VT = constants.k * 298.15 / constants.e
+ROLES = {"driver": "Q1", "base_resistor": "R1", "load": "LS1"}
+
+
+def driver(ohms: str = "270R", surge: str | None = "400 mA", rated: str | None = "0.5 A", gain: float = 40.0) -> Design:
+    """250 mA at 8.2 V from an npn with V_BE 0.7 V at that current, driven from 8.4 V through ``ohms``."""
+    law: Json = {"saturation_current": 0.25 / math.expm1(0.7 / VT), "forward_gain": gain, "reverse_gain": 1}
+    load = sounder("LS1", "supply", "low", "250 mA", "3 V", rated="8.2 V")
+    if surge is not None:
+        load["data"]["surge"] = surge
+    ratings = {} if rated is None else {"data": {"i_c_max": rated}}
+    return design(
+        exact(resistor("R1", "supply", "base", ohms)),
+        transistor("Q1", "low", "base", "0V", law=law, **ratings),
+        load,
+        supply="8.4 V",
+        ambient="25 C",
+        roles=ROLES,
+    )
+
+
+def test_the_rating_limits() -> None:
+    # 400 mA at 8.2 V, some 0.1 V more where the transistor drops less; 40 x 28.5 mA = 1.14 A: 0.5 A is the smaller.
+    found = margin(driver(), "peak_current", "Q1")
+    assert found.demand == pytest.approx(0.4, rel=0.02)
+    assert found.capability == pytest.approx(0.5)
+    assert (found.verdict, found.margin) == (Verdict.THIN, pytest.approx(0.2, abs=0.02))
+
+
+def test_the_base_current_limits() -> None:
+    # 7.7 V / 1k x 40 = 308 mA for 400 mA.
+    found = margin(driver("1k"), "peak_current", "Q1")
+    assert found.capability == pytest.approx(0.308, rel=0.01)
+    assert found.margin == pytest.approx(1.0 - 0.4 / 0.308, abs=0.02)
+    assert found.verdict is Verdict.FAIL
+    assert found.hand == pytest.approx(found.margin, abs=0.02)
+
+
+def test_a_lower_rating_fails() -> None:
+    found = margin(driver(rated="0.3 A"), "peak_current", "Q1")
+    assert (found.verdict, found.margin) == (Verdict.FAIL, pytest.approx(1.0 - 0.4 / 0.3, abs=0.03))
+
+
+def test_a_load_without_surge_is_not_judged_by_what_the_transistor_lets_through() -> None:
+    found = margin(driver(surge=None), "peak_current", "Q1")
+    assert (found.verdict, found.reason) == (Verdict.UNKNOWN, "missing: surge of LS1")
+
+
+def test_without_a_rating() -> None:
+    assert margin(driver(rated=None), "peak_current", "Q1").reason == "missing: i_c_max of Q1"
+
+
+def test_a_resistor_as_load_shows_its_current() -> None:
+    # 8.4 V less 0.1 V across 82 ohm: 0.1 A of 0.5 A.
+    law: Json = {"saturation_current": 0.25 / math.expm1(0.7 / VT), "forward_gain": 100, "reverse_gain": 1}
+    of = design(
+        exact(resistor("R1", "supply", "base", "1k")),
+        transistor("Q1", "low", "base", "0V", law=law, data={"i_c_max": "0.5 A"}),
+        exact(resistor("R2", "supply", "low", "82R")),
+        supply="8.4 V",
+        roles={"driver": "Q1", "load": "R2"},
+    )
+    found = margin(of, "peak_current", "Q1")
+    assert found.demand == pytest.approx(0.101, rel=0.02)
+    assert found.verdict is Verdict.PASS
