@@ -13,7 +13,7 @@ from textual.message import Message
 
 from ..engine.design.document import Design
 from ..engine.errors import Cancelled, EngineError
-from ..engine.results import MarginSheet
+from ..engine.results import CheckResult, MarginSheet
 from ..engine.studies.comparison import Side
 from .background import LatestOnly
 from .messages import (
@@ -148,6 +148,14 @@ class Computing:
 
         def question(report: Callable[[object], None], progress: Progress, stale: CancelledYet) -> object:
             return self._solver.immunity(design, report=report, progress=progress, cancelled=stale)
+
+        return self._ask(question, post)
+
+    def explain(self, design: Design, check: CheckResult, post: Post) -> int:
+        """Begins computing where a margin comes from."""
+
+        def question(report: Callable[[object], None], progress: Progress, stale: CancelledYet) -> object:
+            return self._solver.explain(design, check, cancelled=stale)
 
         return self._ask(question, post)
 

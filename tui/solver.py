@@ -7,10 +7,11 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any, Protocol
 
 from ..engine.design.document import Design
-from ..engine.results import MarginSheet
+from ..engine.results import CheckResult, MarginSheet
 
 if TYPE_CHECKING:
     from ..engine.studies.causes import CausesSheet
+    from ..engine.studies.explanation import Explanation
     from ..engine.studies.fault_outcomes import FaultSheet
     from ..engine.studies.immunity import ImmunitySheet
     from ..engine.studies.waves import Waves
@@ -75,6 +76,13 @@ class Immunity(Protocol):
         """The whole sheet. Raises EngineError with one line, Cancelled when asked to stop."""
 
 
+class Explain(Protocol):
+    """Where one margin comes from."""
+
+    def __call__(self, design: Design, result: CheckResult, *, cancelled: Cancelled) -> Explanation:
+        """What was observed and with which data. Raises EngineError or Cancelled."""
+
+
 class Preparation(Protocol):
     """A child process that compiles the solver once for this machine."""
 
@@ -113,6 +121,12 @@ def _immunity(design: Design, **how: Any) -> ImmunitySheet:
     return study(design, **how)
 
 
+def _explain(design: Design, result: CheckResult, **how: Any) -> Explanation:
+    from ..engine.studies.explanation import explain
+
+    return explain(design, result, **how)
+
+
 @dataclass(frozen=True)
 class Solver:
     """The engine's studies, the number of lanes of a spread, and how the compiled solver is prepared."""
@@ -125,6 +139,7 @@ class Solver:
     faults: Faults = _faults
     waves: WavesOf = _waves
     immunity: Immunity = _immunity
+    explain: Explain = _explain
 
 
 def own_solver() -> Solver:

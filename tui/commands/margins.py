@@ -3,14 +3,21 @@
 from __future__ import annotations
 
 from argparse import ArgumentParser, ArgumentTypeError, Namespace
+from collections.abc import Sequence
+from dataclasses import asdict
+from difflib import get_close_matches
 
 from ...engine.results import CheckResult, MarginSheet, Verdict
+from ..bench_text import check_name
+from ..origin_text import explanation_rows, origin_rows
 from ..shown import MARKS, percent, visible
-from .printing import json_argument, print_json, print_table, print_words
+from .printing import json_argument, print_json, print_pairs, print_table, print_words
+from .refusal import CommandRefused
 from .waiting import computable, prepare_solver, progress
 from .what import Subject, find, subject_arguments
 
 MOST_LANES = 100_000
+LANES = 1000
 
 
 def arguments(parser: ArgumentParser) -> None:
@@ -20,10 +27,15 @@ def arguments(parser: ArgumentParser) -> None:
         "--lanes",
         metavar="K",
         type=_lanes,
-        default=1000,
-        help=f"lanes of the spread, up to {MOST_LANES} (default 1000; 0 skips it)",
+        help=f"lanes of the spread, up to {MOST_LANES} (default {LANES}; 0 skips it, as --explain does by itself)",
     )
     parser.add_argument("--seed", metavar="S", type=_seed, default=1, help="seed of the spread (default 1)")
+    parser.add_argument(
+        "--explain",
+        metavar="ID",
+        help="where one margin comes from: values put in, observations with their instants, data with their sources;"
+        " ID is slug:stage:part, or a piece of it that only one margin has",
+    )
     parser.add_argument("--strict", action="store_true", help="exit status 1 if a margin is FAIL or UNKNOWN")
     json_argument(parser)
 
@@ -35,8 +47,11 @@ def run(asked: Namespace) -> int:
     # Imported here: it loads the compiler, which must find its folder chosen.
     from ...engine.studies.margins import study
 
+    if asked.explain is not None:
+        return _explain(asked, subject)
     with progress("margins: lane") as show:
-        sheet = study(subject.design, lanes=asked.lanes, seed=asked.seed, progress=show)
+        lanes = LANES if asked.lanes is None else asked.lanes
+        sheet = study(subject.design, lanes=lanes, seed=asked.seed, progress=show)
     if asked.json:
         found = sheet.as_json()
         del found["design"]
@@ -60,10 +75,47 @@ def _print(subject: Subject, sheet: MarginSheet) -> None:
     print_table(heads, [_cells(check, spread) for check in ordered], right=frozenset(range(1, len(heads) - 1)))
 
 
+def _explain(asked: Namespace, subject: Subject) -> int:
+    """Compute one margin and print where it comes from."""
+    from ...engine.circuit.circuit import build
+    from ...engine.studies.evaluate import asks_of
+    from ...engine.studies.explanation import explain
+    from ...engine.studies.margins import study
+
+    name = _meant(asked.explain, [ask.id for ask in asks_of(build(subject.design))])
+    with progress("margins: lane") as show:
+        (check,) = study(subject.design, only=name, lanes=asked.lanes or 0, seed=asked.seed, progress=show).checks
+    found = explain(subject.design, check)
+    if asked.json:
+        explained = {"check": asdict(check), "explanation": found.as_json()}
+        print_json({"design": subject.name, "revision": subject.revision, **explained})
+    else:
+        print_words(f"{subject.title}, stage {check.stage}: {check_name(check)}")
+        print()
+        print_pairs([(label, text) for label, text, _ in (*origin_rows(check, True), *explanation_rows(check, found))])
+    return 1 if asked.strict and check.verdict in (Verdict.FAIL, Verdict.UNKNOWN) else 0
+
+
+def _meant(text: str, names: Sequence[str]) -> str:
+    """The one margin that a text names, in whole or by a piece that no other has."""
+    if text in names:
+        return text
+    holding = [name for name in names if text in name]
+    if len(holding) == 1:
+        return holding[0]
+    near = holding or get_close_matches(text, names, 3, 0.4) or names
+    if not near:
+        raise CommandRefused("the design has no margins; give stages their roles, or the design requirements")
+    listed = ", ".join(near[:6]) + (" ..." if len(near) > 6 else "")
+    why = "could be several margins" if holding else "is no margin of this design"
+    raise CommandRefused(f"--explain {visible(text)!r} {why}; write one of {listed}")
+
+
 def _cells(check: CheckResult, spread: bool) -> tuple[str, ...]:
     """One row: figures in percent, then in words what is checked and what happens where it is worst."""
     what = " ".join(filter(None, (f"{check.title},", check.stage, check.part)))
-    words = dict.fromkeys(filter(None, (check.outcome, check.reason)))
+    off = f"by hand {percent(check.hand)} %, which disagrees" if check.disagrees else None
+    words = dict.fromkeys(filter(None, (check.outcome, check.reason, off)))
     where = f"worst at {check.corner}" if check.corner else "worst"
     passing = (f"{check.spread.passing * 100:.1f}",) if check.spread else ("",)
     return (

@@ -47,6 +47,16 @@ def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: f
             print(" " * indent + line)
 
 
+def print_pairs(pairs: Sequence[tuple[str, str]]) -> None:
+    """Names and texts side by side; a text that is longer than the line goes on below."""
+    indent = max((len(visible(name)) for name, _ in pairs), default=0) + 2
+    for name, text in pairs:
+        first, *more = wrap(visible(text), WIDTH - indent) or [""]
+        print(f"{visible(name).ljust(indent)}{first}".rstrip())
+        for line in more:
+            print(" " * indent + line)
+
+
 def print_words(words: str, hanging: int = 0) -> None:
     """A sentence, broken into lines; all but the first are indented by ``hanging``."""
     for line in wrap(visible(words), WIDTH, subsequent_indent=" " * hanging):

@@ -16,12 +16,13 @@ from ...storage.values import Revision
 from ..caution_text import new_cautions
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
+from ..figures import FigureRow
 from ..widgets.row_list import RowList
 from ..widgets.status import KeyLine
 from ..widgets.value_entry import ValueEntry
 from .bench_view import BenchView
 from .compare import CompareScreen
-from .design_questions import ask_condition, ask_field, ask_new_part, ask_required
+from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_tables
 from .dialog import Answers, Ask, Field, Form
 from .faults import FaultsScreen
 from .history import HistoryScreen
@@ -172,6 +173,10 @@ class BenchScreen(BenchView):
         """Supply, ambient, source resistance."""
         ask_condition(self.app, self.design, self._put)
 
+    def action_tables(self) -> None:
+        """Derating factors and required margins."""
+        ask_tables(self.app, self.design, self._put)
+
     def action_add_part(self) -> None:
         """Another part in the chosen stage."""
         if self.stage is None:
@@ -280,7 +285,10 @@ class BenchScreen(BenchView):
         if self.chosen is None:
             self.refuse("there is no margin under the hand yet")
         else:
-            self.app.push_screen(OriginPage(self.chosen.check, self.chosen.worst_known, self.drafting.name))
+            self.app.push_screen(self._origin_of(self.chosen))
+
+    def _origin_of(self, row: FigureRow) -> OriginPage:
+        return OriginPage(row.check, row.worst_known, self.drafting.name, self.design, self.computing)
 
     def action_compare(self) -> None:
         """The draft beside the revision it began from."""

@@ -156,6 +156,8 @@ class CompareScreen(Page[None]):
         column = self._sides[self._chosen]
         for check in column.sheet.checks:
             if check.id == name:
-                self.app.push_screen(OriginPage(check, not incomplete(column.sheet), f"{self._design} {column.label}"))
+                source = f"{self._design} {column.label}"
+                known = not incomplete(column.sheet)
+                self.app.push_screen(OriginPage(check, known, source, column.design, self._computing))
                 return
         self.refuse(f"{column.label} does not have this check")

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 from textual.app import App
@@ -170,13 +170,59 @@ def ask_required(app: App[Any], design: Design, check: CheckResult, put: Put) ->
     """The margin that this design requires of a kind of check; empty returns to the customary one."""
     slug = check.id.split(":")[0]
     now = f"{percent(check.required).lstrip('+')} %"
+    _ask_entry(app, design, "required", slug, now, f"{check.title}: the margin that this design requires", put)
+
+
+def _ask_entry(app: App[Any], design: Design, table: str, name: str, now: str, title: str, put: Put) -> None:
+    """One entry of the tables of required margins and derating factors, with the reason why it differs."""
+    change = edit.with_required if table == "required" else edit.with_derating
 
     def make(answers: Answers) -> tuple[str, Design]:
         text = answers["text"]
-        return f"required {slug} {text or '-'}", edit.with_required(design, slug, text or None)
+        return f"{table} {name} {text or '-'}", change(design, name, text or None, answers["reason"] or None)
 
-    field = Field("text", "required margin", now, "empty returns to the customary one")
-    ask_design(app, f"{check.title}: the margin that this design requires", [field], make, put)
+    fields = [
+        Field(
+            "text", "required margin" if table == "required" else "factor", now, "empty returns to the customary one"
+        ),
+        Field("reason", "reason", design.reasons.get(name, ""), "why it may differ from the customary one"),
+    ]
+    ask_design(app, title, fields, make, put)
+
+
+def ask_tables(app: App[Any], design: Design, put: Put) -> None:
+    """A required margin or a derating factor of this design."""
+    rows = table_rows(design)
+
+    def chosen(key: str | None) -> None:
+        if key is not None:
+            table, name = key.split(" ")
+            now, about = next((now, about) for of, each, now, about in rows if (of, each) == (table, name))
+            _ask_entry(app, design, table, name, now.removesuffix(_CUSTOMARY).strip(), f"{about}: {table}", put)
+
+    listed = [
+        (f"{table} {name}", f"{fit(f'{table} {name}', 32)} {fit(now, 18)} {about}") for table, name, now, about in rows
+    ]
+    app.push_screen(Pick("derating factors and required margins of this design: which one?", listed), chosen)
+
+
+_CUSTOMARY = " customary"
+
+
+def table_rows(design: Design) -> list[tuple[str, str, str, str]]:
+    """Table, name, what holds now, and what it is about: every derating factor, then every check's required margin."""
+    # Imported here: the checks load the compiler.
+    from ...engine.checks import catalogue
+    from ...engine.checks.factors import FACTORS
+
+    def now(table: Mapping[str, str], name: str, customary: str) -> str:
+        return table.get(name) or customary + _CUSTOMARY
+
+    rows = [("derating", n, now(design.derating, n, f"{f.customary:g}"), f.about) for n, f in FACTORS.items()]
+    for check in catalogue().values():
+        held = now(design.required, check.slug, f"{check.required * 100:.0f} %")
+        rows.append(("required", check.slug, held, f"{check.number} {check.title}"))
+    return rows
 
 
 def _rows(texts: dict[str, str]) -> list[tuple[str, str]]:

@@ -97,7 +97,7 @@ class HistoryScreen(Page[bool]):
         """One revision in full."""
         if self.chosen is not None:
             parent = self._revisions.get(self.chosen.parent or 0)
-            self.app.push_screen(RevisionPage(self._drafting.name, self.chosen, parent))
+            self.app.push_screen(RevisionPage(self._drafting.name, self.chosen, parent, self._computing))
 
     def action_mark(self) -> None:
         """Marks for comparing, up to six."""
@@ -182,8 +182,9 @@ class RevisionPage(Page[None]):
     BINDINGS: ClassVar[list[BindingType]] = bindings("revision")
     WHERE = "revision"
 
-    def __init__(self, design: str, revision: Revision, parent: Revision | None) -> None:
+    def __init__(self, design: str, revision: Revision, parent: Revision | None, computing: Computing) -> None:
         super().__init__()
+        self._computing = computing
         self._before = parent
         self._design = design
         self._revision = revision
@@ -208,6 +209,7 @@ class RevisionPage(Page[None]):
         for check in self._revision.sheet.checks:
             if check.id == key:
                 source = f"{self._design} r{self._revision.number}"
-                self.app.push_screen(OriginPage(check, not incomplete(self._revision.sheet), source))
+                known = not incomplete(self._revision.sheet)
+                self.app.push_screen(OriginPage(check, known, source, self._revision.design, self._computing))
                 return
         self.refuse("put the hand on a margin first")

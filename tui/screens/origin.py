@@ -1,36 +1,51 @@
-"""Where one margin comes from: demand, capability, formula, corner, conditions, hand formula, spread."""
+"""Where one margin comes from: what is stored with it at once, and what explains it as soon as it is computed."""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 from textwrap import wrap
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar, cast
 
 from textual.app import ComposeResult
 from textual.binding import BindingType
 
-from ...engine.errors import QuantityError
-from ...engine.quantity import write
+from ...engine.design.document import Design
 from ...engine.results import CheckResult
 from ..actions import bindings
 from ..bench_text import check_name
-from ..shown import TONES, Span, fit, line, percent, verdict_words, visible
+from ..computing import Computing
+from ..messages import Answered, AnswerRefused, SolverPreparing
+from ..origin_text import explanation_rows, origin_rows
+from ..shown import Span, fit, line, visible
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
 from .page import Page
 
+if TYPE_CHECKING:
+    from ...engine.studies.explanation import Explanation
+
 
 class OriginPage(Page[None]):
-    """One check's raw quantities, as rows that can be walked where the screen is low."""
+    """One check's quantities, as rows that can be walked where the screen is low.
+
+    ``design`` is the document the margin belongs to; its corner is computed once more in the background, to tell what
+    was observed, when, and with which data.
+    """
 
     BINDINGS: ClassVar[list[BindingType]] = bindings("page")
 
-    def __init__(self, check: CheckResult, worst_known: bool, source: str) -> None:
+    def __init__(
+        self, check: CheckResult, worst_known: bool, source: str, design: Design, computing: Computing
+    ) -> None:
         super().__init__()
         self._check = check
-        self._worst_known = worst_known
         self._source = source
+        self._design = design
+        self._computing = computing
+        self._stored = origin_rows(check, worst_known)
+        self._explained = [("data", "being computed: values put in, observations with their instants, sources", "dim")]
+        self._request = 0
 
     def compose_body(self) -> ComposeResult:
         """Title above, quantities below."""
@@ -38,13 +53,42 @@ class OriginPage(Page[None]):
         yield Rule()
         yield RowList(id="quantities")
 
+    def on_mount(self) -> None:
+        """Asks what explains the margin."""
+        self._request = self._computing.explain(self._design, self._check, self.post_message)
+
+    def on_unmount(self) -> None:
+        """Nobody looks any more."""
+        self._computing.cancel_aside()
+
     def on_resize(self) -> None:
         """Shows them, wrapped to the width there is."""
+        self._show()
+
+    def on_answered(self, event: Answered) -> None:
+        """The corner was computed once more."""
+        if event.request == self._request:
+            self._explained = explanation_rows(self._check, cast("Explanation", event.found))
+            self._show()
+
+    def on_answer_refused(self, event: AnswerRefused) -> None:
+        """It cannot be computed as the design stands."""
+        if event.request == self._request:
+            self._explained = [("data", event.reason, "fail")]
+            self._show()
+
+    def on_solver_preparing(self, event: SolverPreparing) -> None:
+        """The first start on this machine."""
+        if event.busy:
+            self._explained = [("data", "the solver is being prepared on this machine", "dim")]
+            self._show()
+
+    def _show(self) -> None:
         check = self._check
         title = f" {check_name(check)}, stage {check.stage}, in {self._source}"
         self.query_one("#title", Lines).show(line(Span(title, "strong")))
-        shown = self.query_one(RowList)
-        shown.show(wrapped(origin_rows(check, self._worst_known), self.size.width - 2))
+        rows = wrapped([*self._stored, *self._explained], self.size.width - 2)
+        self.query_one(RowList).show(rows)
 
 
 _LABEL = 20
@@ -58,56 +102,3 @@ def wrapped(rows: Sequence[tuple[str, str, str]], width: int) -> list[Row]:
             label = Span(fit(name if at == 0 else "", _LABEL), "strong")
             found.append(Row(str(len(found)), line(label, Span(piece, tone))))
     return found
-
-
-def origin_rows(check: CheckResult, worst_known: bool) -> list[tuple[str, str, str]]:
-    """Name, text and tone of everything that is known about where a margin comes from."""
-    which = "worst margin" if worst_known else "margin, nominal"
-    rows = [(which, f"{verdict_words(check)}   required {percent(check.required)} %", TONES[check.verdict])]
-    if check.outcome:
-        rows.append(("happened", check.outcome, ""))
-    if check.reason:
-        rows.append(("reason", check.reason, ""))
-    if check.demand is not None:
-        rows.append(("demand", quantity(check.demand, check.unit), ""))
-    if check.capability is not None:
-        rows.append(("capability", quantity(check.capability, check.unit), ""))
-    if check.limits is not None:
-        low, high = (quantity(limit, check.unit) for limit in check.limits)
-        rows.append(("must stay in", f"{low} .. {high}", ""))
-    if check.low is not None or check.high is not None:
-        ends = (("?" if end is None else quantity(end, check.unit)) for end in (check.low, check.high))
-        rows.append(("comes to", " .. ".join(ends), ""))
-    rows.append(("formula", check.formula or "not given", ""))
-    rows.append(("corner", check.corner or "-", ""))
-    rows += [(f"  {name.replace('_', ' ')}", condition(name, value), "") for name, value in check.conditions.items()]
-    rows.append(("sequence", check.sequence or "-", ""))
-    rows.append(("nominal", f"{percent(check.nominal)} %", ""))
-    hand = "no hand formula" if check.hand is None else f"{percent(check.hand)} % (cross-check, not the verdict)"
-    rows.append(("by hand", hand, ""))
-    if check.spread is not None:
-        spread = check.spread
-        least, most = spread.interval
-        held = f"{spread.passing * 100:.1f} % hold (95 % interval {least * 100:.1f} .. {most * 100:.1f} %)"
-        rows.append(("spread", held, ""))
-        if spread.p50 is not None:
-            words = " / ".join(f"{percent(value)} %" for value in (spread.p05, spread.p50, spread.p95))
-            rows.append(("", f"{words} at 5 / 50 / 95 % of lanes", ""))
-    rows.append(("check", f"{check.id}, number {check.number} of the catalogue", ""))
-    return rows
-
-
-def quantity(value: float, unit: str) -> str:
-    """A value in trade text with its unit; plain digits where the trade has no way of writing it."""
-    try:
-        return write(value, unit, 4)
-    except QuantityError:
-        return f"{value:.4g} {unit}".rstrip()
-
-
-_UNITS = {"supply": "V", "ambient": "degC", "source_resistance": "ohm"}
-
-
-def condition(name: str, value: float | str) -> str:
-    """One condition of a corner with its unit."""
-    return value if isinstance(value, str) else quantity(value, _UNITS.get(name, ""))

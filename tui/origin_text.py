@@ -1,0 +1,100 @@
+"""Where a margin comes from, as rows of name, text and tone: what is stored with it, and what explains it."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from ..engine.quantity import write_plain
+from ..engine.results import CheckResult
+from .shown import TONES, percent, verdict_words
+
+if TYPE_CHECKING:
+    from ..engine.studies.explanation import Explanation, Used
+
+Rows = list[tuple[str, str, str]]
+_UNITS = {"supply": "V", "ambient": "degC", "source_resistance": "ohm"}
+SAME = 5e-4  # a margin that is computed again and lies nearer than this is the same
+
+
+def origin_rows(check: CheckResult, worst_known: bool) -> Rows:
+    """What is known of a margin without computing anything."""
+    which = "worst margin" if worst_known else "margin, nominal"
+    rows = [(which, f"{verdict_words(check)}   required {percent(check.required)} %", TONES[check.verdict])]
+    if check.outcome:
+        rows.append(("happened", check.outcome, ""))
+    if check.reason:
+        rows.append(("reason", check.reason, ""))
+    if check.demand is not None:
+        rows.append(("demand", write_plain(check.demand, check.unit), ""))
+    if check.capability is not None:
+        rows.append(("capability", write_plain(check.capability, check.unit), ""))
+    if check.limits is not None:
+        rows.append(("must stay in", " .. ".join(write_plain(limit, check.unit) for limit in check.limits), ""))
+    if check.low is not None or check.high is not None:
+        ends = ("?" if end is None else write_plain(end, check.unit) for end in (check.low, check.high))
+        rows.append(("comes to", " .. ".join(ends), ""))
+    rows.append(("formula", check.formula or "not given", ""))
+    rows.append(("corner", check.corner or "-", ""))
+    rows += [(f"  {name.replace('_', ' ')}", condition(name, value), "") for name, value in check.conditions.items()]
+    rows.append(("sequence", check.sequence or "-", ""))
+    rows.append(("nominal", f"{percent(check.nominal)} %", ""))
+    rows.append(("by hand", *_by_hand(check)))
+    if check.by_hand:
+        rows.append(("", check.by_hand, ""))
+    if check.spread is not None:
+        spread = check.spread
+        least, most = spread.interval
+        held = f"{spread.passing * 100:.1f} % hold (95 % interval {least * 100:.1f} .. {most * 100:.1f} %)"
+        rows.append(("spread", held, ""))
+        if spread.p50 is not None:
+            words = " / ".join(f"{percent(value)} %" for value in (spread.p05, spread.p50, spread.p95))
+            rows.append(("", f"{words} at 5 / 50 / 95 % of lanes", ""))
+    rows.append(("check", f"{check.id}, number {check.number} of the catalogue", ""))
+    return rows
+
+
+def _by_hand(check: CheckResult) -> tuple[str, str]:
+    """The hand formula's margin, what it is worth, and its tone."""
+    if check.hand is None:
+        return "no hand formula", ""
+    found = f"{percent(check.hand)} %"
+    if check.accuracy is None:
+        return f"{found} (a bound, not the verdict)", ""
+    stated = f"stated accuracy {check.accuracy * 100:.0f} %"
+    if check.disagrees:
+        return f"{found}: DISAGREES with the simulation beyond its {stated}", "thin"
+    return f"{found} (cross-check, not the verdict; {stated})", ""
+
+
+def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
+    """What computing the corner once more adds: values put in, observations with their instants, data, sources."""
+    rows: Rows = []
+    if found.put_in:
+        rows.append(("put in", found.put_in, ""))
+    if found.margin is not None and check.margin is not None and abs(found.margin - check.margin) > SAME:
+        here = f"{percent(found.margin)} %, computed just now in the corner above; the margin above is older"
+        rows.append(("here and now", here, "thin"))
+    rows.append(("required", f"{percent(found.required.value)} %, {found.required.source}", ""))
+    if found.usual_worst:
+        rows.append(("usually worst at", found.usual_worst, ""))
+    for at, seen in enumerate(found.observed):
+        value = "never seen" if seen.value is None else write_plain(seen.value, seen.unit)
+        when = "" if seen.at is None else f", at {write_plain(seen.at, 's', 6)}"
+        rows.append(("observed" if at == 0 else "", f"{seen.what}: {value} (sequence {seen.sequence}{when})", ""))
+    for at, used in enumerate(found.used):
+        rows.append(("data" if at == 0 else "", used_words(used), ""))
+    return rows
+
+
+def used_words(used: Used) -> str:
+    """One number that was put in: ``Q8 gain 200, limits 200 .. 450 (class small npn, from memory)``."""
+    value = write_plain(used.value, used.unit)
+    limits = ""
+    if used.low is not None and used.high is not None and used.low != used.high:
+        limits = f", limits {write_plain(used.low, used.unit)} .. {write_plain(used.high, used.unit)}"
+    return f"{used.what} {value}{limits} ({used.source})"
+
+
+def condition(name: str, value: float | str) -> str:
+    """One condition of a corner with its unit."""
+    return value if isinstance(value, str) else write_plain(value, _UNITS.get(name, ""))
