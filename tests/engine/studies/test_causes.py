@@ -57,9 +57,11 @@ def test_before_and_after_are_the_margins_in_the_union_of_both_worst_corners() -
     old, new = timer(), changed(timer(), R7="1k", R1="330k")
     before, after = clamped(load(old)), clamped(load(new))
     for name, cause in between(old, new).items():
-        # The other design's worst corner cannot be worse than its own, but for what a corner search leaves.
-        assert cause.before == pytest.approx(before[name], abs=1e-4), name
-        assert cause.after == pytest.approx(after[name], abs=1e-4), name
+        # The other design's worst corner cannot be worse than its own, but for what a corner search leaves, and
+        # where a peak of power between two steps is read.
+        near = 1e-3 if name.startswith("junction_temperature") else 1e-4
+        assert cause.before == pytest.approx(before[name], abs=near), name
+        assert cause.after == pytest.approx(after[name], abs=near), name
 
 
 def test_a_part_that_does_nothing_gets_nothing() -> None:
@@ -127,6 +129,7 @@ def test_parts_that_cannot_be_without_each_other_are_one_change() -> None:
     assert set(found.changed) == {"R7", "R20, Q20"}
     assert set(found.appeared) == {
         "reverse_base_emitter:driver:Q20", "peak_collector_emitter:driver:Q20", "resistor_power:driver:R20",
+        "junction_temperature:driver:Q20",
     }  # fmt: skip
     assert found.vanished == ()
     back = causes(load(new), load(old))

@@ -42,7 +42,11 @@ def timer(**more: Any) -> Json:
                 "ref": "LS1",
                 "kind": "sounder",
                 "pins": {"plus": "supply", "minus": "low"},
-                "data": {"current": {"typical": "150 mA", "max": "200 mA"}, "operating_minimum": "3 V"},
+                "data": {
+                    "current": {"typical": "150 mA", "max": "200 mA"},
+                    "operating_minimum": "3 V",
+                    "surge": "0.3 A",
+                },
             },
         ],
     }

@@ -106,6 +106,7 @@ def document() -> dict[str, Any]:
                         "data": {
                             "current": {"typical": "30 mA", "max": "40 mA", "source": "datasheet"},
                             "operating_minimum": "3 V",
+                            "surge": "40 mA",
                         },
                     },
                 ],
