@@ -11,6 +11,8 @@ from .errors import (
     NoteRefused,
     NothingToRedo,
     NothingToUndo,
+    PartMissing,
+    PartRefused,
     RevisionMissing,
     StorageError,
     StoreBusy,
@@ -24,7 +26,7 @@ from .inspection import Inspection, inspect, verify
 from .names import checked_name
 from .place import default_path
 from .store import Store
-from .values import ADDABLE, DesignRow, Draft, Note, NoteEntry, Revision, Sitting, Worst
+from .values import ADDABLE, DesignRow, Draft, MadePart, Note, NoteEntry, Revision, Sitting, Worst
 
 __all__ = [
     "ADDABLE",
@@ -33,6 +35,7 @@ __all__ = [
     "DesignRow",
     "Draft",
     "Inspection",
+    "MadePart",
     "MarginsRefused",
     "NameRefused",
     "NameTaken",
@@ -41,6 +44,8 @@ __all__ = [
     "NoteRefused",
     "NothingToRedo",
     "NothingToUndo",
+    "PartMissing",
+    "PartRefused",
     "Revision",
     "RevisionMissing",
     "Sitting",

@@ -74,3 +74,11 @@ class DesignOpen(StorageError):
     def __init__(self, words: str, sitting: Sitting) -> None:
         super().__init__(words)
         self.sitting = sitting
+
+
+class PartRefused(StorageError):
+    """A part cannot be put into the drawer as it is."""
+
+
+class PartMissing(StorageError):
+    """The drawer has no part of this name or version."""

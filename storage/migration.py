@@ -16,13 +16,18 @@ from .tables import KEYS, triggers
 Step = Callable[[sqlite3.Connection], None]
 
 
-def _who_sits(connection: sqlite3.Connection) -> None:
-    """To version 2: a sitting names its process and who sits there."""
+def _to_second(connection: sqlite3.Connection) -> None:
+    """To version 2: a sitting names its process and who sits there; the drawer."""
     for column in ("seat", "who"):
         connection.execute(f"ALTER TABLE sitting ADD COLUMN {column} VARCHAR DEFAULT '' NOT NULL")
+    connection.execute(
+        "CREATE TABLE made_part (id INTEGER NOT NULL, name VARCHAR NOT NULL, version INTEGER NOT NULL,"
+        " kind VARCHAR NOT NULL, document VARCHAR NOT NULL, made VARCHAR NOT NULL, PRIMARY KEY (id))"
+    )
+    connection.execute("CREATE UNIQUE INDEX made_part_by_name ON made_part (name, version)")
 
 
-STEPS: Final[Mapping[int, Step]] = {1: _who_sits}
+STEPS: Final[Mapping[int, Step]] = {1: _to_second}
 """For each version that a store may still have, what leads to the next one. It must end at the tables of tables.py."""
 
 

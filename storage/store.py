@@ -2,14 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from difflib import get_close_matches
 from pathlib import Path
 from types import TracebackType
-from typing import Self
+from typing import Any, Self
 from unicodedata import normalize
 
 from sqlmodel import Session, select
@@ -17,14 +17,14 @@ from sqlmodel import Session, select
 from ..engine.design.document import Design
 from ..engine.errors import EngineError
 from ..engine.results import MarginSheet
-from . import edits, revisions, shelf, sittings
+from . import drawer, edits, revisions, shelf, sittings
 from .backup import back_up
 from .connection import Opened, open_database, plain_errors
 from .errors import DesignMissing, NameTaken, StorageError, StoreTooNew, StoreUnreadable
 from .names import checked_name
 from .place import default_path
 from .tables import StoredDesign, StoredDraft, StoredSitting
-from .values import DesignRow, Draft, Note, Revision, Sitting
+from .values import DesignRow, Draft, MadePart, Note, Revision, Sitting
 
 Clock = Callable[[], datetime]
 
@@ -217,6 +217,30 @@ class Store:
             revisions.add_entry(session, row, field, text, self._now())
             session.flush()
             return revisions.shown(session, [row])[0]
+
+    def drawer(self) -> list[MadePart]:
+        """The newest version of every part in the drawer, by kind and name."""
+        with self.reading() as session:
+            return drawer.newest(session)
+
+    def part_versions(self, name: str) -> list[MadePart]:
+        """All versions of a part in the drawer, oldest first.
+
+        Raises:
+            PartMissing: There is no part of this name.
+        """
+        with self.reading() as session:
+            return drawer.versions(session, name)
+
+    def keep_part(self, name: str, document: Mapping[str, Any]) -> MadePart:
+        """Put a part into the drawer, as a new version where there is one of this name and it differs.
+
+        Raises:
+            PartRefused: The name may not be one, or belongs to a part of another kind.
+            EngineError: No part can be made of the document.
+        """
+        with self._writing() as session:
+            return drawer.keep(session, name, document, self._now())
 
     def sitting(self, name: str) -> Sitting | None:
         """Who has the design open to edit it; None when nobody does, or whoever did is dead."""

@@ -111,10 +111,24 @@ class StoredSitting(SQLModel, table=True):
     who: str = Field(default="", sa_column_kwargs={"server_default": ""})
 
 
+class StoredMadePart(SQLModel, table=True):
+    """One version of a part in the drawer. ``document`` is a part of a document without designator and nets."""
+
+    __tablename__ = "made_part"
+    id: int = Field(default=None, primary_key=True)
+    name: str
+    version: int
+    kind: str
+    document: str
+    made: str
+    __table_args__ = (Index("made_part_by_name", "name", "version", unique=True),)
+
+
 KEYS: Final = {
     "revision": ("id = NEW.id", "design_id = NEW.design_id AND number = NEW.number"),
     "margin": ("revision_id = NEW.revision_id AND position = NEW.position",),
     "note_entry": ("id = NEW.id",),
+    "made_part": ("id = NEW.id", "name = NEW.name AND version = NEW.version"),
 }
 """The append-only tables, each with its keys."""
 

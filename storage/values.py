@@ -5,9 +5,10 @@ from __future__ import annotations
 import json
 from dataclasses import dataclass, fields
 from functools import cached_property
-from typing import Final
+from typing import Any, Final
 
 from ..engine.design.document import Design
+from ..engine.design.part import Part
 from ..engine.results import MarginSheet, Verdict
 
 
@@ -44,6 +45,35 @@ class Worst:
     id: str
     margin: float | None
     verdict: Verdict
+
+
+@dataclass(frozen=True)
+class MadePart:
+    """One version of a part in the drawer: a part of a document without designator and nets."""
+
+    name: str
+    version: int
+    kind: str
+    document_text: str
+    made: str
+
+    @property
+    def title(self) -> str:
+        """The name with the version, as a design that uses it keeps it."""
+        return f"{self.name}, version {self.version}"
+
+    @cached_property
+    def document(self) -> dict[str, Any]:
+        """The part as a design document writes it."""
+        found: dict[str, Any] = json.loads(self.document_text)
+        return found
+
+    @property
+    def part(self) -> Part:
+        """The same as a part; a value that it needs and does not have is there as a stand-in."""
+        from ..engine.parts.made import as_design
+
+        return as_design(self.document).parts[0]
 
 
 @dataclass(frozen=True, slots=True)

@@ -64,6 +64,8 @@ ACTIONS: tuple[Action, ...] = (
     Action("bench", "origin", "w", "w", "origin", "where the chosen margin comes from, with its quantities", 6),
     Action("bench", "compare", "c", "c", "compare", "this draft beside the revision it began from", 7),
     Action("bench", "history", "h", "h", "history", "the revisions of this design", 8),
+    Action("bench", "data", "i", "i", "data", "the figures of the part, each with who says it; k there keeps them"),
+    Action("bench", "drawer", "p", "p", "drawer", "parts made of datasheet points, to use in the part under the hand"),
     Action("bench", "waves", "v", "v", "waves", "voltages of the nominal run over time, drawn, with a cursor"),
     Action("bench", "faults", "F", "F", "faults", "what the unit does with each part failed, silent failures first"),
     Action(
@@ -101,6 +103,16 @@ ACTIONS: tuple[Action, ...] = (
     Action("compare", "column_right", "right", "left right", "column", "the causes of the next revision", 3),
     Action("compare", "origin", "w,enter", "w", "origin", "where the margin of this row comes from", 2),
     Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 4),
+    # data of a part, the drawer
+    Action("data", "change", "enter,e", "Enter", "change", "write this figure anew; empty takes it out", 2),
+    Action("data", "keep", "k", "k", "keep", "keep these data in the drawer, to use them in any design", 3),
+    Action("data", "show_all", "v", "v", "all or given", "also what the kind reads and the part does not give", 4),
+    Action("data", "back", "escape,b", "b", "back", "back (Esc does the same)", 5),
+    Action("drawer", "use", "enter", "Enter", "use", "copy the data into the part under the hand of the bench", 2),
+    Action("drawer", "make", "n", "n", "make", "a new part: its kind, a class, its own figures", 3),
+    Action("drawer", "edit", "e", "e", "edit", "the data of this part, to be kept as a new version", 4),
+    Action("drawer", "versions", "v", "v", "versions", "all versions, or the newest of each part", 5),
+    Action("drawer", "back", "escape,b", "b", "back", "back (Esc does the same)", 6),
     # waves
     Action("waves", "left", "left", "left", "cursor left", "the cursor one column earlier"),
     Action("waves", "right", "right", "left right", "cursor", "the cursor one column later", 2),

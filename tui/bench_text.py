@@ -9,6 +9,7 @@ from rich.cells import cell_len
 
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
+from ..engine.parts.made import from_memory
 from ..engine.results import CheckResult, Depth, MarginSheet
 from ..engine.stages.modified import is_modified
 from ..storage.values import Draft
@@ -166,6 +167,11 @@ def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher
     facts = "  ".join(text for text in data if text)
     first = " " + "   ".join(filter(None, (part.ref, f"{kind_words(part)}  {facts}".strip(), role, pins)))
     known = []
+    memory = len(from_memory(part))
+    if part.drawer:
+        known.append(f"drawer: {part.drawer}")
+    if memory:
+        known.append(f"{memory} figures from memory (i)")
     if was is not None and was != part.value:
         known.append(f"last was {was}")
     if lower:

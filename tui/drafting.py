@@ -2,13 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+from typing import Any
+
 from ..engine import edit
 from ..engine.design.differences import Change, differences
 from ..engine.design.document import Design
+from ..engine.design.part import Part
 from ..engine.errors import EngineError
+from ..engine.parts.made import as_design, kept
 from ..engine.results import ENGINE, Depth, MarginSheet
 from ..storage.store import Store
-from ..storage.values import Draft, Note, Revision
+from ..storage.values import Draft, MadePart, Note, Revision
 
 
 class Drafting:
@@ -104,6 +109,17 @@ class Drafting:
         self.base = revision
         return revision
 
+    def drawer(self, *, every_version: bool = False) -> list[MadePart]:
+        """The parts in the drawer: the newest version of each, or all."""
+        newest = self._store.drawer()
+        if not every_version:
+            return newest
+        return [made for part in newest for made in reversed(self._store.part_versions(part.name))]
+
+    def keep_part(self, name: str, document: Mapping[str, Any]) -> MadePart:
+        """Puts a part into the drawer."""
+        return self._store.keep_part(name, document)
+
     def changes(self) -> tuple[Change, ...]:
         """What differs from the revision the draft began from."""
         if self.base is None:
@@ -148,6 +164,36 @@ class Drafting:
             depth=Depth.NOMINAL,
             checks=(),
         )
+
+
+class MadeDraft:
+    """A part that is being made for the drawer. Nothing is kept before :meth:`Drafting.keep_part`."""
+
+    def __init__(self, document: Mapping[str, Any], name: str) -> None:
+        """Raises DesignError for a document that is no part."""
+        self._design = as_design(document)
+        self._name = name
+        self._stands_in = "value" not in document
+
+    @property
+    def part(self) -> Part:
+        """The part as it stands."""
+        return self._design.parts[0]
+
+    @property
+    def document(self) -> dict[str, Any]:
+        """What is to be kept of it."""
+        found = kept(self.part)
+        if self._stands_in:
+            found.pop("value", None)
+        return found
+
+    def write(self, field: str, value: Any) -> Part:
+        """Writes one field; None takes it out. Raises DesignError."""
+        self._design = edit.with_field(self._design, self.part.ref, field, value)
+        if field == "value":
+            self._stands_in = False
+        return self.part
 
 
 def incomplete(sheet: MarginSheet) -> bool:

@@ -93,7 +93,7 @@ def _part_changes(ref: str, old: Pieces, new: Pieces) -> dict[Change, tuple[Atom
     if not _same(old[value], new[value]):
         found[Change(ref, "value", old[value], new[value])] = (value,)
     if not _same(old[datum], new[datum]):
-        found[Change(ref, "datum", *_told_apart(old[datum], new[datum]))] = (datum,)
+        found[Change(ref, "datum", *_data_told_apart(old[datum], new[datum]))] = (datum,)
     if not _same(old[net], new[net]):
         found[Change(ref, "net", *_told_apart(old[net], new[net]))] = (net,)
     return found
@@ -174,6 +174,14 @@ def _part_words(ref: str, pieces: Pieces) -> str:
     datum, value = pieces["part", ref, "datum"], pieces["part", ref, "value"]
     pins = ", ".join(f"{pin} {net}" for pin, net in pieces["part", ref, "net"].items())
     return ", ".join(filter(None, (datum["kind"], value, datum.get("class"), pins)))
+
+
+def _data_told_apart(before: Any, after: Any) -> tuple[str | None, str | None]:
+    """Data of a part: those of a made part by its name, which stands for all of them, others figure by figure."""
+    if before.get("drawer") == after.get("drawer"):
+        return _told_apart(before, after)
+    one, other = (side.get("drawer") or side.get("class") or "its own data" for side in (before, after))
+    return one, other
 
 
 def _told_apart(before: Any, after: Any) -> tuple[str | None, str | None]:

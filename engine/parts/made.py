@@ -12,12 +12,12 @@ from typing import Any
 
 from ..design.document import Design
 from ..design.part import Part
-from ..errors import CircuitError, DesignError
+from ..errors import DesignError
 from ..primitives.builder import Builder
 from . import kinds
-from .classes import SOURCE, ClassFigure
+from .classes import CLASSES, SOURCE, ClassFigure
 from .figures import class_figures
-from .kind import TEXT, Kind
+from .kind import TEXT
 from .suitability import unsuitable
 
 OF_THE_PLACE = ("ref", "pins", "drawer", "operated_by", "follows", "setting", "waveform")
@@ -27,34 +27,48 @@ _STAND_IN = {"ohm": "1k", "F": "1u", "V": "6 V", "H": "1 mH"}
 
 
 def kept(part: Part) -> dict[str, Any]:
-    """A part of a design as a made part."""
+    """A part of a design as a made part: what is its own, without what was copied from its class."""
     document = part.model_dump(mode="json", by_alias=True, exclude_unset=True)
-    return {key: value for key, value in document.items() if key not in OF_THE_PLACE}
+    of_class = {} if _class_unknown(part) else class_figures(part)
+    data = {
+        key: datum
+        for key, datum in document.pop("data", {}).items()
+        if key not in of_class or datum != _datum(of_class[key])
+    }
+    found = {key: value for key, value in document.items() if key not in OF_THE_PLACE}
+    return found | ({"data": data} if data else {})
+
+
+def _class_unknown(part: Part) -> bool:
+    return part.class_ not in (None, *CLASSES.get(part.kind, {}))
 
 
 def tried(document: Mapping[str, Any]) -> Part:
     """The made part as a part, after its law was made once. Raises DesignError or CircuitError in one line."""
-    name = document.get("kind")
-    kind = kinds().get(str(name))
-    if kind is None:
-        raise DesignError(f"there is no part kind '{name}'; write one of {', '.join(sorted(kinds()))}")
-    part = _as_part(document, kind)
+    part = as_design(document).parts[0]
+    kind = kinds()[part.kind]
     for field, words in unsuitable(part, kind):
         raise DesignError(f"field {field}: {words}")
     kind.expand(part, Builder(12.0))
     return part
 
 
-def _as_part(document: Mapping[str, Any], kind: Kind) -> Part:
+def as_design(document: Mapping[str, Any]) -> Design:
+    """The made part as the only part of a design, so that edits of designs edit it. Raises DesignError.
+
+    A value that its kind needs and it does not have is there as a stand-in.
+    """
+    name = document.get("kind")
+    kind = kinds().get(str(name))
+    if kind is None:
+        raise DesignError(f"there is no part kind '{name}'; write one of {', '.join(sorted(kinds()))}")
     pins = {pin: f"n{at}" for at, pin in enumerate(kind.pins[-1] if _polarised(document) else kind.pins[0])}
     whole = {**document, "ref": f"{kind.letters[0]}1", "pins": pins}
     value = kind.fields.get("value")
     if value is not None and value.needed and "value" not in whole:
         whole["value"] = _STAND_IN.get(value.unit, "1")
     stage = {"name": "drawer", "parts": [whole]}
-    # Loaded as a design: that is where wrong documents are refused in words.
-    design = Design.load({"stagebook": 1, "name": "drawer", "stages": [stage], "sequences": {"alarm": {"ends": "1 s"}}})
-    return design.parts[0]
+    return Design.load({"stagebook": 1, "name": "drawer", "stages": [stage], "sequences": {"alarm": {"ends": "1 s"}}})
 
 
 def _polarised(document: Mapping[str, Any]) -> bool:
@@ -66,8 +80,8 @@ def resolved(document: Mapping[str, Any]) -> dict[str, Any]:
 
     Raises CircuitError for a class that the kind does not have.
     """
-    kind = kinds()[document["kind"]]
-    part = _as_part(document, kind)
+    part = as_design(document).parts[0]
+    kind = kinds()[part.kind]
     known = {**kind.fields, **kind.data}
     fields = {key: value for key, value in document.items() if key != "data"}
     data = dict(document.get("data", {}))
@@ -77,14 +91,15 @@ def resolved(document: Mapping[str, Any]) -> dict[str, Any]:
         if key in _PLAIN:
             fields[key] = given if isinstance(given, str) else given[1]
         else:
-            data[key] = _datum(given, str(document["class"]))
+            data[key] = _datum(given)
     return fields | ({"data": data} if data else {})
 
 
-def _datum(given: ClassFigure, name: str) -> dict[str, Any]:
-    limits = {"typical": given} if isinstance(given, str) else dict(zip(("min", "typical", "max"), given, strict=False))
-    at = f", at {given[3]}" if not isinstance(given, str) and len(given) == 4 else ""
-    return {**limits, "source": SOURCE, "condition": f"class {name}{at}"}
+def _datum(given: ClassFigure) -> dict[str, Any]:
+    if isinstance(given, str):
+        return {"typical": given, "source": SOURCE}
+    limits = dict(zip(("min", "typical", "max"), given, strict=False))
+    return {**limits, "source": SOURCE} | ({"condition": given[3]} if len(given) == 4 else {})
 
 
 def from_memory(part: Part) -> tuple[str, ...]:
@@ -92,10 +107,7 @@ def from_memory(part: Part) -> tuple[str, ...]:
     kind = kinds().get(part.kind)
     if kind is None:
         return ()
-    try:
-        given = class_figures(part)
-    except CircuitError:
-        given = {}
+    given = {} if _class_unknown(part) else class_figures(part)
     found = []
     for key, entry in {**kind.fields, **kind.data}.items():
         if entry.unit == TEXT:

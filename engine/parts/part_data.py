@@ -19,7 +19,8 @@ NOT_SAID = "not said"
 class PartDatum:
     """One datum as texts, as typed; '' where there is none. ``own``: the part gives it, and not its class.
 
-    ``name`` is the field that an edit writes. ``about`` says what the kind reads it for.
+    ``name`` is the field that an edit writes, ``text`` the own datum in one line as datum_text.py writes it. ``about``
+    says what the kind reads it for.
     """
 
     name: str
@@ -30,6 +31,7 @@ class PartDatum:
     source: str
     own: bool
     about: str
+    text: str = ""
 
 
 def part_data(part: Part) -> tuple[PartDatum, ...]:
@@ -71,11 +73,12 @@ def part_data(part: Part) -> tuple[PartDatum, ...]:
 
 def _row(name: str, datum: Datum, about: str) -> PartDatum:
     low, typical, high = ("" if value is None else str(value) for value in (datum.min, datum.typical, datum.max))
-    return PartDatum(name, low, typical, high, datum.condition or "", datum.source or NOT_SAID, True, about)
+    source = datum.source or NOT_SAID
+    return PartDatum(name, low, typical, high, datum.condition or "", source, True, about, written(datum))
 
 
 def _listed(name: str, text: str, about: str) -> PartDatum:
-    return PartDatum(name, "", text, "", "", NOT_SAID, True, about)
+    return PartDatum(name, "", text, "", "", NOT_SAID, True, about, text)
 
 
 def _none(name: str, about: str) -> PartDatum:

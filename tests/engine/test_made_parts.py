@@ -11,6 +11,7 @@ import pytest
 
 from stagebook.engine import edit
 from stagebook.engine.circuit.circuit import build
+from stagebook.engine.design.differences import apply, differences
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError, DesignError
 from stagebook.engine.parts import kinds
@@ -47,7 +48,7 @@ def test_own_figures_win_and_the_class_gives_the_rest_from_memory() -> None:
     assert used.datum("gain").source == "datasheet"  # type: ignore[union-attr]
     leak = used.datum("i_cbo")
     assert leak is not None
-    assert (leak.max, leak.source, leak.condition) == ("15 nA", "memory", "class small npn, at 25 C")
+    assert (leak.max, leak.source, leak.condition) == ("15 nA", "memory", "25 C")
     assert used.drawer == "low leak, version 1"
     assert used.pins == {"collector": "supply", "base": "base", "emitter": "out"}
 
@@ -79,6 +80,8 @@ def test_what_is_kept_of_a_part_can_be_used_again() -> None:
     design = edit.with_made_part(follower(), "Q1", LOW_LEAK, "low leak, version 1")
     again = edit.with_made_part(follower(), "Q1", kept(design.part("Q1")), "low leak, version 1")
     assert again == design
+    # What came from the class is not its own: kept and used, it is the same version.
+    assert kept(design.part("Q1")) == LOW_LEAK
 
 
 @pytest.mark.parametrize(
@@ -108,6 +111,19 @@ def test_a_part_that_cannot_be_is_refused_in_one_line(document: dict[str, Any], 
 def test_a_part_of_another_kind_is_refused() -> None:
     with pytest.raises(DesignError, match="it is a resistor and no npn"):
         edit.with_made_part(follower(), "R1", LOW_LEAK, "low leak, version 1")
+
+
+def test_a_made_part_is_one_change_by_its_name() -> None:
+    before = follower()
+    after = edit.with_made_part(before, "Q1", LOW_LEAK, "low leak, version 1")
+    (change,) = differences(before, after)
+    assert (change.what, change.kind, change.before, change.after) == (
+        "Q1",
+        "datum",
+        "small npn",
+        "low leak, version 1",
+    )
+    assert apply(before, after, [change]) == after
 
 
 def test_memory_is_told_until_it_is_replaced() -> None:

@@ -15,6 +15,7 @@ COMMANDS = {
     "immunity": ("immunity", "the least charge that trips an alarm, net by net, and the slew of the supply"),
     "compare": ("compare", "the stored margins of several revisions, what got worse first"),
     "causes": ("causes", "what each changed part did to each margin"),
+    "drawer": ("drawer", "the parts made of datasheet points"),
     "import": ("take_in", "put a design document on the shelf"),
     "export": ("hand_out", "write a design document to a file"),
     "backup": ("backup", "write a consistent copy of the store, also while it is in use"),

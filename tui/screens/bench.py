@@ -4,11 +4,14 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from contextlib import suppress
+from typing import Any
 
 from textual import events
 
 from ...engine import edit
 from ...engine.design.document import Design
+from ...engine.design.part import Part
+from ...engine.parts.made import kept
 from ...engine.results import Depth, MarginSheet
 from ...engine.studies.comparison import Side
 from ...storage.errors import StorageError
@@ -24,10 +27,12 @@ from .bench_view import BenchView
 from .compare import CompareScreen
 from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_tables
 from .dialog import Answers, Ask, Field, Form
+from .drawer import DrawerScreen
 from .faults import FaultsScreen
 from .history import HistoryScreen
 from .immunity import ImmunityScreen
 from .origin import OriginPage
+from .part_data import PartDataScreen
 from .saving import Saving
 from .stage_page import StagePage
 from .stage_questions import ask_stage
@@ -302,6 +307,31 @@ class BenchScreen(BenchView):
         else:
             sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
             self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
+
+    def action_data(self) -> None:
+        """The figures of the part under the hand, each with who says it."""
+        ref = self.ref
+        if ref is None:
+            self.refuse("there is no part under the hand; a adds one")
+            return
+
+        def change(field: str, value: Any) -> Part:
+            after = edit.with_field(self.design, ref, field, value)
+            if after != self.design:
+                self.drafting.put(f"{ref} {field}", after)
+                self.study()
+            return self.design.part(ref)
+
+        def keep(name: str, part: Part) -> str:
+            return f"kept as {self.drafting.keep_part(name, kept(part)).title}"
+
+        part = self.design.part(ref)
+        known = (part.drawer or "").rpartition(", version")[0]
+        self.app.push_screen(PartDataScreen(ref, part, change, keep, known))
+
+    def action_drawer(self) -> None:
+        """Parts made of datasheet points."""
+        self.app.push_screen(DrawerScreen(self.drafting, self.ref, self._put))
 
     def action_waves(self) -> None:
         """Voltages over time: first of the nets of the part under the hand, then of the loads."""

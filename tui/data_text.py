@@ -1,0 +1,67 @@
+"""The figures of a part as lines: limits, test condition and who says it; what comes from memory stands out. Pure."""
+
+from __future__ import annotations
+
+from ..engine.design.part import Part
+from ..engine.parts.classes import SOURCE
+from ..engine.parts.made import from_memory
+from ..engine.parts.part_data import PartDatum, part_data
+from .bench_text import kind_words
+from .shown import Line, Span, columns, fit, line
+from .widgets.row_list import Row
+
+_NAME, _LIMIT, _CONDITION = 23, 9, 14
+
+
+def data_title(part: Part, name: str) -> Line:
+    """What the part is, where its data are from, and how much of it comes from memory."""
+    origin = f"from the drawer: {part.drawer}" if part.drawer else f"class {part.class_}" if part.class_ else "no class"
+    memory = len(from_memory(part))
+    words = f"   {memory} figures from {SOURCE}" if memory else ""
+    return line(Span(f" {name}: {kind_words(part)}, {origin}", "strong"), Span(words, "thin"))
+
+
+def data_heading() -> Line:
+    """The column heads."""
+    heads = columns(_widths(), ("datum", "min", "typical", "max", "at", "source"), right=_FIGURES)
+    return line(Span(heads.rstrip(), "strong"))
+
+
+_FIGURES = frozenset({1, 2, 3})
+
+
+def _widths() -> tuple[int, ...]:
+    return (_NAME, _LIMIT, _LIMIT, _LIMIT, _CONDITION, 6)
+
+
+def data_rows(part: Part, width: int, *, all_of_them: bool) -> list[Row]:
+    """One row a datum that the part has or, with ``all_of_them``, that its kind reads."""
+    rest = max(6, width - 2 - sum(_widths()[:-1]) - 5)
+    rows = []
+    for datum in part_data(part):
+        if not (datum.source or all_of_them):
+            continue
+        figures = columns(
+            _widths()[:-1],
+            (datum.name.replace("_", " "), datum.minimum, datum.typical, datum.maximum, datum.condition),
+            right=_FIGURES,
+        )
+        memory = datum.source.startswith(SOURCE)
+        source = fit(datum.source.partition(",")[0], rest)
+        rows.append(
+            Row(datum.name, line(Span(figures + " ", "" if datum.source else "dim"), Span(source, _tone(memory))))
+        )
+    return rows
+
+
+def _tone(memory: bool) -> str:
+    return "thin" if memory else ""
+
+
+def data_lines(datum: PartDatum) -> tuple[Line, Line]:
+    """Two lines about one datum: its figures in full with who says them, and what the kind reads it for."""
+    limits = " .. ".join(filter(None, (datum.minimum, datum.typical, datum.maximum))) or "not given"
+    at = f" at {datum.condition}" if datum.condition else ""
+    said = f"   source: {datum.source}" if datum.source else ""
+    first = f" {datum.name.replace('_', ' ')}: {limits}{at}"
+    return line(Span(first, "strong"), Span(said, _tone(datum.source.startswith(SOURCE)))), line(f" {datum.about}")
