@@ -221,9 +221,10 @@ say("made")
 
 EDITS = """
 store = Store.open(path)
-mine = sys.stdin.readline().strip()
 store.draft("flood")
-draft, told, took = store.draft("flood"), 0, 0
+say("ready")
+mine = sys.stdin.readline().strip()
+draft, took = store.draft("flood"), 0
 for number in range(1, 41):
     while True:
         try:
@@ -245,12 +246,14 @@ def test_two_processes_editing_at_once_lose_no_update(flood: Store, child: Calla
     Every edit has to be in the tree, on top of a state in which the other's value is the newest.
     """
     processes = {ref: child(EDITS) for ref in ("R7", "R8")}
+    for process in processes.values():
+        assert next_line(process) == "ready"
     for ref, process in processes.items():
         process.stdin.write(f"{ref}\n")
         process.stdin.flush()
     took = [int(next_line(process)) for process in processes.values()]
     assert all(process.wait(10) == 0 for process in processes.values())
-    assert min(took) >= 1  # they did meet
+    assert sum(took) >= 1  # they did meet
     draft = flood.draft("flood")
     assert [draft.design.part(ref).value for ref in processes] == ["40k", "40k"]
     assert draft.edits == 80
