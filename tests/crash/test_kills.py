@@ -121,11 +121,10 @@ class Trials:
                     program.press("i")
             program.kill()
             told = len(benches) - len(pending)
-            for each in pending:
-                at = program.text.find(each.says, at)
-                if at < 0:
-                    break
-                told += 1
+            for number, each in enumerate(pending, told + 1):
+                place = program.text.find(each.says, at)
+                if place >= 0:
+                    at, told = place, number
         found = told - 1 + self.look(benches[told - 1 :])
         self.told["told"] += told == len(benches)
         self.told["done, not told"] += found >= told
@@ -210,9 +209,8 @@ def _when(program: Program, chance: random.Random, begun: Callable[[], bool]) ->
 
 
 def _awaited(program: Program, at: int, pending: list[Deed]) -> int:
-    for each in pending:
-        at = program.until(each.says, after=at)
-    return at
+    """Waits for the last: of deeds in quick succession the screen may pass over those between."""
+    return program.until(pending[-1].says, after=at) if pending else at
 
 
 def _kept(file: Path) -> list[list[tuple[object, ...]]]:

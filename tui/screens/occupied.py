@@ -31,11 +31,12 @@ class Occupied(ModalScreen[str]):
         with Vertical(classes="dialog"):
             yield Rule()
             yield Notice()
-            yield Lines(
+            choice = Lines(
                 line(Span(" Look at it, or take it over?", "strong")),
-                line(" All edits made there are kept; the next one there is refused and told why."),
-                id="choice",
+                line(" What was edited there is kept; its next edit is refused, and told why."),
             )
+            choice.styles.height = 2
+            yield choice
             yield KeyLine("occupied")
 
     def on_mount(self) -> None:
