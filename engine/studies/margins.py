@@ -24,6 +24,7 @@ from .corner import Corner
 from .corner_words import Effects, named, of_conditions, of_parts, used
 from .evaluate import Progress, asks_of, judge, look
 from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, settings, tolerances
+from .mirrored import with_mirrored
 from .spread import spread_of
 from .trial_corners import TrialCorners, part_ends
 from .vertices import lowest, sides
@@ -64,12 +65,14 @@ def study(
     nominal = watch(circuit, asks, _nominal(circuit, asks, cancelled), cancelled)
     checks = [_result(ask, corner, nominal[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, nominal)]
     made = sheet(Depth.NOMINAL, checks)
-    worst = watch(circuit, asks, _corners(circuit, asks, nominal, progress, cancelled), cancelled)
+    worst = watch(circuit, asks, _searched(circuit, asks, nominal, progress, cancelled), cancelled)
+    worst = with_mirrored(circuit, asks, worst, cancelled)
     checks = [_result(ask, corner, nominal[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, worst)]
     made = sheet(Depth.CORNERS, checks)
     if lanes > 0:
         drawn = random_lanes(circuit.columns, lanes, seed)
-        spreads = spread_of(circuit, asks, drawn, progress, cancelled)
+        known = tuple(ask for ask in asks if nominal[ask.id].broken is None)
+        spreads = spread_of(circuit, known, drawn, progress, cancelled)
         checks = [replace(check, spread=spreads.get(check.id)) for check in checks]
         made = sheet(Depth.SPREAD, checks)
     return made
@@ -77,7 +80,21 @@ def study(
 
 def worst_corners(circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool] = never) -> dict[str, Corner]:
     """The worst corner of every ask, by its id."""
-    return _corners(circuit, asks, _nominal(circuit, asks, cancelled), silent, cancelled)
+    return _searched(circuit, asks, _nominal(circuit, asks, cancelled), silent, cancelled)
+
+
+def _searched(
+    circuit: Circuit,
+    asks: tuple[Ask, ...],
+    nominal: dict[str, Corner],
+    progress: Progress,
+    cancelled: Callable[[], bool],
+) -> dict[str, Corner]:
+    """The worst corner of every ask. No work is spent on what is not even known in the nominal lane."""
+    rest = tuple(ask for ask in asks if nominal[ask.id].broken is None)
+    if not rest:
+        return nominal
+    return nominal | _corners(circuit, rest, nominal, progress, cancelled)
 
 
 def _pairs(asks: tuple[Ask, ...], corners: dict[str, Corner]) -> list[tuple[Ask, Corner]]:

@@ -20,7 +20,7 @@ from ..circuit.circuit import Circuit
 from ..circuit.linearised import Mode, growing, matrices, parameters_at
 from ..kernel import layout
 from ..kernel.layout import Floats, Program
-from ..primitives.columns import Lanes
+from ..primitives.columns import CONDITIONS, Lanes
 from ..primitives.signals import Row
 from ..quantity import write
 from ..run import Observed, never, run
@@ -39,6 +39,8 @@ PIECES = 32  # of the step in which the growth began, to find where
 ROUNDS = 8  # repeated runs of one lane
 MOST_STOPS = 30_000  # the work bound: steps that a repetition may be asked to take
 FIRST_POINTS, MOST_POINTS = 4096, 250_000
+BALANCES = "balances"
+MISMATCH = 1e-4  # by which parts are made unequal where equal ones balance
 VISIBLE = 0.02  # V, swing that counts as an oscillation
 CYCLES = 2  # whole ones, of that swing at least
 
@@ -195,6 +197,9 @@ def watched(
 ) -> Watched:
     """Run one lane and, where a growing mode was skipped, repeat it with steps that resolve it."""
     observed, program = traced(circuit, lane, sequence, rows, keep, cancelled=cancelled)
+    tipped = _tipped(circuit, lane, program, observed, sequence, rows, keep, cancelled)
+    if tipped is not None:
+        return tipped
     plain, stops, said = observed, np.zeros(0), None
     for turn in range(ROUNDS):
         found = None if observed.failed[0] else skipped(circuit, lane, program, observed, ALIKE if turn == 0 else FINE)
@@ -223,6 +228,31 @@ def watched(
     if swings is None and not _departs(plain, observed, float(said.time[0])):
         return Watched(observed)
     return Watched(observed, f"{_where(said, swings)} (followed with short steps)")
+
+
+def _tipped(
+    circuit: Circuit,
+    lane: Lanes,
+    program: Program,
+    observed: Observed,
+    sequence: str,
+    rows: Sequence[Row],
+    keep: Sequence[Row],
+    cancelled: Callable[[], bool],
+) -> Watched | None:
+    """The run of parts that differ by a little, where exactly equal ones balance; None where that is not it."""
+    found = None if observed.failed[0] else skipped(circuit, lane, program, observed)
+    if found is None or found.mode.s.imag != 0.0:
+        return None
+    place = np.arange(len(lane.columns))
+    parts = np.array([column.ref != CONDITIONS for column in lane.columns])
+    values = lane.values * np.where(parts, 1.0 + MISMATCH * np.cos(place), 1.0)[:, None]
+    unequal = Lanes(lane.columns, np.ascontiguousarray(values))
+    other, program = traced(circuit, unequal, sequence, rows, keep, cancelled=cancelled)
+    if other.failed[0] or skipped(circuit, unequal, program, other) is not None:
+        return None
+    at = write(float(found.time[0]), "s", 4)
+    return Watched(other, f"{BALANCES} near net {found.net} after {at}; here parts that differ by 0.01 % tip it over")
 
 
 def _departs(plain: Observed, observed: Observed, begin: float) -> bool:

@@ -15,12 +15,14 @@ from ..primitives.columns import Lanes
 from ..primitives.signals import Row
 from ..run import Observed
 from .corner import Corner
+from .diagnosis import diagnosed
 from .evaluate import judge, observe
 from .lanes import Setting
 from .stability import Watched, watched
 from .trials import TrialRun, begin_of
 
 MOST_LANES = 8  # worst corners that are watched
+MOST_DIAGNOSED = 3  # lanes that are run once more to tell why they came to no end
 
 
 def watch(
@@ -28,13 +30,14 @@ def watch(
 ) -> dict[str, Corner]:
     """The same corners, by id; where a run walked past a loss of stability, judged anew with the repeated run.
 
-    What cannot be followed within the work bound has no margin, and the words of the watch as its reason.
+    What cannot be followed within the work bound has no margin, and the words of the watch as its reason. Lanes that
+    came to no end get their reason in words.
     """
     at: dict[Setting, list[Ask]] = {}
     for ask in sorted(asks, key=lambda ask: corners[ask.id].rank - ask.required):
         if ask.missing is None and corners[ask.id].broken is None:
             at.setdefault(corners[ask.id].setting, []).append(ask)
-    found = dict(corners)
+    found = _with_reasons(circuit, asks, corners, cancelled)
     for there in list(at.values())[:MOST_LANES]:
         corner = corners[there[0].id]
         lane = corner.lanes.take([corner.lane])
@@ -42,6 +45,27 @@ def watch(
         if any(each.words for each in seen.values()):
             for ask in there:
                 found[ask.id] = _anew(circuit, ask, corners[ask.id], lane, seen, cancelled)
+    return found
+
+
+def _with_reasons(
+    circuit: Circuit, asks: Sequence[Ask], corners: dict[str, Corner], cancelled: Callable[[], bool]
+) -> dict[str, Corner]:
+    found = dict(corners)
+    known: dict[tuple[Setting, str], str | None] = {}
+    for ask in asks:
+        corner = corners[ask.id]
+        if corner.broken is None:
+            continue
+        lane = corner.lanes.take([corner.lane])
+        for name in ask.sequences:
+            key = corner.setting, name
+            if key not in known and len(known) < MOST_DIAGNOSED:
+                words = diagnosed(observe(circuit, lane, name, (), cancelled=cancelled), lane, name, 0)
+                known[key] = None if words is None else f"{name}: {words}"
+            if known.get(key) is not None:
+                found[ask.id] = replace(corner, broken=known[key])
+                break
     return found
 
 

@@ -14,6 +14,7 @@ from ..kernel import layout
 from ..kernel.layout import Floats
 from ..quantity import read
 from ..run import RELATIVE, never, run
+from .diagnosis import diagnosed
 from .sequences import program_of, starts_of
 
 FIRST_POINTS, MOST_POINTS = 4096, 4_000_000
@@ -58,7 +59,7 @@ def waves(
         if int(observed.results.ended[0, 0]) != layout.TRACE_FULL or points >= MOST_POINTS:
             break
         points *= 8
-    failure = observed.failure(0)
+    failure = diagnosed(observed, lanes, sequence, 0)
     if failure is not None:
         raise CircuitError(f"sequence '{sequence}': {failure}")
     used = int(observed.results.trace_used[0])

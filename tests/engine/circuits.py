@@ -29,6 +29,7 @@ def two(kind: str, ref: str, a: str, b: str, value: object = None, **fields: obj
         "battery": ("plus", "minus"),
         "lead": ("from", "to"),
         "sounder": ("plus", "minus"),
+        "piezo": ("plus", "minus"),
     }.get(kind, ("a", "b"))
     text = {} if value is None else {"value": value if isinstance(value, str) else repr(value)}
     return {"ref": ref, "kind": kind, "pins": dict(zip(pins, (a, b), strict=True)), **text, **fields}

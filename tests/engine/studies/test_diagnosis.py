@@ -1,0 +1,128 @@
+"""Lanes that come to no end: reason, time and nets in words that the bench understands, and work that is bounded."""
+
+from __future__ import annotations
+
+import re
+import time
+
+import pytest
+
+from stagebook.engine import edit
+from stagebook.engine.design.document import Design
+from stagebook.engine.errors import CircuitError
+from stagebook.engine.results import Verdict
+from stagebook.engine.run import MOST_STEPS, run
+from stagebook.engine.studies.diagnosis import diagnosed
+from stagebook.engine.studies.margins import study
+from stagebook.engine.studies.waves import waves
+
+from ..circuits import Json, Setup, capacitor, resistor, setup, steps, transistor
+
+BARE: Json = {"law": {"saturation_current": "1e-14 A", "forward_gain": 150, "reverse_gain": 2}}  # no capacitance at all
+
+
+def latch() -> Setup:
+    """A complementary latch that a slow ramp fires."""
+    return setup(
+        steps("G1", "in", "0V", (0.0, 0.0), (1e-3, 0.0), (50e-3, 5.0)),
+        resistor("R1", "supply", "top", "1k", rating="0.25 W"),
+        transistor("Q1", "gate", "mid", "top", "pnp", **BARE),
+        transistor("Q2", "mid", "gate", "0V", **BARE),
+        resistor("R2", "gate", "0V", "10k"),
+        resistor("R3", "top", "mid", "10k"),
+        resistor("R4", "in", "gate", "47k"),
+        supply="9 V",
+        ends=60e-3,
+    )
+
+
+def bistable() -> Setup:
+    """A bistable that a slow ramp sets and resets."""
+    return setup(
+        steps("G1", "in", "0V", (0.0, -5.0), (10e-3, -5.0), (40e-3, 9.0), (59e-3, -9.0)),
+        resistor("R9", "in", "b1", "10k"),
+        resistor("R1", "supply", "c1", "1k"),
+        resistor("R2", "supply", "c2", "1k"),
+        resistor("R3", "c1", "b2", "10k"),
+        resistor("R4", "c2", "b1", "10k"),
+        resistor("R5", "b1", "0V", "100k"),
+        resistor("R6", "b2", "0V", "100k"),
+        transistor("Q1", "c1", "b1", "0V", **BARE),
+        transistor("Q2", "c2", "b2", "0V", **BARE),
+        ends=60e-3,
+    )
+
+
+def words(circuit: Setup) -> str | None:
+    lanes = circuit.lanes()
+    return diagnosed(run(circuit.circuit, lanes, circuit.program(lanes), ()), lanes, "alarm", 0)
+
+
+@pytest.mark.parametrize(("circuit", "nets"), [(latch(), {"gate", "mid"}), (bistable(), {"b1", "b2"})])
+def test_what_switches_without_capacitance_is_named_with_its_cure(circuit: Setup, nets: set[str]) -> None:
+    # Nothing makes the voltages of a regenerative loop continuous there: they would jump in no time at all.
+    said = words(circuit)
+    assert said is not None
+    told = re.fullmatch(
+        r"could not be solved at [\d.]+ ms: nets (\w+) and (\w+) switch over with no capacitance to slow them; "
+        r"a stray of 1 pF from net (\w+) to 0V, as wiring has it, cures it",
+        said,
+    )
+    assert told is not None, said
+    assert {told[1], told[2]} == nets
+    cured = Setup(edit.with_stray(circuit.design, told[3], "0V", "1p"))
+    assert words(cured) is None
+
+
+def test_a_margin_and_the_waves_give_the_same_reason() -> None:
+    checks = {check.id: check for check in study(latch().design).checks}
+    found = checks["resistor_power:all:R1"]
+    assert found.verdict is Verdict.UNKNOWN
+    assert "a stray of 1 pF from net gate to 0V" in str(found.reason)
+    with pytest.raises(CircuitError, match=r"sequence 'alarm': could not be solved at .* a stray of 1 pF"):
+        waves(latch().design)
+
+
+def flasher(ends: float) -> Design:
+    """An astable at some 50 kHz."""
+    return setup(
+        resistor("R1", "supply", "c1", "1k"),
+        resistor("R2", "supply", "b1", "15k"),
+        resistor("R3", "supply", "b2", "15k"),
+        resistor("R4", "supply", "c2", "1k"),
+        capacitor("C1", "c1", "b2", "1n"),
+        capacitor("C2", "c2", "b1", "1n2"),
+        transistor("Q1", "c1", "b1", "0V", **{"class": "small npn"}),
+        transistor("Q2", "c2", "b2", "0V", **{"class": "small npn"}),
+        ends=ends,
+    ).design
+
+
+def test_a_flasher_that_runs_too_long_is_told_by_its_frequency_and_costs_a_bounded_amount() -> None:
+    # 0.69 R (C1 + C2) = 22.8 us: 44 kHz; real junctions make it a little quicker.
+    circuit = Setup(flasher(10.0))
+    lanes = circuit.lanes()
+    seen = run(circuit.circuit, lanes, circuit.program(lanes), ())
+    assert seen.results.work[0, 0] <= MOST_STEPS + 1
+    said = diagnosed(seen, lanes, "alarm", 0)
+    told = re.fullmatch(
+        r"took too many steps by [\d.]+ ms: it goes on oscillating near net (\w+) at about ([\d.]+) kHz; end the "
+        r"sequence sooner, or look at the oscillation in a short sequence of its own",
+        str(said),
+    )
+    assert told is not None, said
+    assert float(told[2]) == pytest.approx(44.0, rel=0.15)
+
+
+def test_a_study_spends_no_work_on_corners_of_what_comes_to_no_end() -> None:
+    begin = time.perf_counter()
+    checks = study(flasher(10.0), lanes=200).checks
+    assert time.perf_counter() - begin < 60.0  # one lane takes a second; all corners and random lanes, minutes
+    for check in checks:
+        assert check.verdict is Verdict.UNKNOWN
+        assert check.reason is not None
+    assert any("goes on oscillating" in str(check.reason) for check in checks)
+
+
+def test_a_solved_lane_has_no_reason() -> None:
+    assert words(Setup(flasher(1e-3))) is None
