@@ -100,8 +100,8 @@ def skipped(
     time, states = observed.results.trace_time[:used], observed.results.trace_value[:used]
     step = np.diff(time, prepend=0.0)
     looked = np.flatnonzero(step > SHORTEST)
-    if not looked.size or not int(circuit.topology.size[1]):
-        return None
+    if not looked.size or not circuit.topology.size[1]:
+        return None  # nothing was long, or everything is driven
     parameters = parameters_at(circuit, circuit.table(lane), program, 0, time[looked])
     conductance, capacitance = matrices(circuit, parameters, states[looked])
     # States whose matrices are alike, entry by entry beside the diagonals, share their modes.

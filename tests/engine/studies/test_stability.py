@@ -191,6 +191,11 @@ def test_an_oscillation_that_never_ends_is_unknown_past_the_work_bound() -> None
     assert found.words.endswith("what comes later is not known")
 
 
+def test_a_circuit_of_driven_nets_only_has_nothing_to_watch() -> None:
+    circuit = setup(resistor("R1", "supply", "0V", "1k"), ends=1.0)
+    assert watched(circuit.circuit, circuit.lanes(), "alarm", ()).words is None
+
+
 def test_a_study_says_so_beside_the_verdict() -> None:
     checks = {check.id: check for check in study(latch("10n").design).checks}
     reason = checks["peak_collector_emitter:all:Q1"].reason
