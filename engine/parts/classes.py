@@ -80,6 +80,7 @@ _CLAMP: Figures = {
     "forward_low_current": "10 mA",
     "capacitance": "3 nF",
 }
+_FILM_RESISTOR: Figures = {"rating": ("0.25 W", "0.25 W", "0.25 W", "up to 70 C")}
 _SIGNAL_DIODE: Figures = {
     "forward_low": "0.60 V",
     "forward_low_current": "1 mA",
@@ -189,8 +190,34 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "leakage_least": "1 uA",
             "drift": ("-5 %", "0 %", "5 %", "over temperature"),
         },
-        "film": {},
+        "film": {"tolerance": "10 %"},
         "ceramic": {},
+        "X7R": {"tolerance": "10 %", "drift": ("-50 %", "0 %", "0 %", "0 V .. rated voltage")},
+        "C0G": {"tolerance": "5 %"},
     },
-    "resistor": {"film": {"rating": "0.25 W"}},
+    "resistor": {
+        "film": {"rating": "0.25 W"},
+        "film 1 %": {**_FILM_RESISTOR, "tolerance": "1 %", "tempco": ("-50 ppm/K", "0 ppm/K", "50 ppm/K")},
+        "film 5 %": {**_FILM_RESISTOR, "tolerance": "5 %", "tempco": ("-200 ppm/K", "0 ppm/K", "200 ppm/K")},
+    },
+    "contact": {
+        "gold contact": {"resistance": ("0.1 ohm", "0.1 ohm", "10 ohm"), "minimum_current": "10 uA"},
+        "silver contact": {"resistance": ("0.1 ohm", "0.1 ohm", "10 ohm"), "minimum_current": "1 mA"},
+    },
+    "sounder": {
+        "siren 12 V": {
+            "current": ("0.2 A", "0.5 A", "1 A", "12 V"),
+            "rated_voltage": "12 V",
+            "operating_minimum": "6 V",
+            "surge": ("2 A", "2 A", "2 A", "12 V"),
+        },
+    },
+    "piezo": {
+        "piezo 12 V": {
+            "current": ("5 mA", "12 mA", "20 mA", "12 V"),
+            "rated_voltage": "12 V",
+            "operating_minimum": "3 V",
+            "sound_level": ("85 dB", "95 dB", "105 dB", "1 m"),
+        },
+    },
 }

@@ -57,7 +57,11 @@ KINDS = (
         (("a", "b"),),
         (("a", "b"),),
         expand_contact,
-        {"resistance": Entry("ohm", about="when closed"), "form": Entry(TEXT, about="make or break")},
+        {
+            "resistance": Entry("ohm", about="when closed"),
+            "form": Entry(TEXT, about="make or break"),
+            "class": Entry(TEXT, about="generic class"),
+        },
         {
             "insulation": Entry("ohm", about="when open"),
             "minimum_current": Entry("A", about="least current that keeps it clean, when closed"),

@@ -75,12 +75,11 @@ def typical(part: Part, key: str, unit: str, default: float) -> float:
 
 
 def valued(part: Part, unit: str, tolerance: float) -> Figure:
-    """Value and tolerance of a part; ``tolerance`` is the customary one of its kind where none is written."""
+    """Value and tolerance of a part; ``tolerance`` is the customary one where neither it nor its class gives one."""
     found = part.limits("value", unit)
     if found is None or found.typical is None:
         raise CircuitError(f'part {part.ref}, value: missing; write it like "value": "4k7"')
-    written = part.limits("tolerance", "%")
-    spread = tolerance if written is None or written.typical is None else written.typical
+    spread = typical(part, "tolerance", "%", tolerance)
     if not 0.0 <= spread < 1.0:
         raise CircuitError(f'part {part.ref}, tolerance: {spread:.0%} cannot be; write it like "5 %"')
     value = found.typical

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from ..errors import CircuitError
 from .figures import figure, needed
-from .kind import Entry, Kind
+from .kind import TEXT, Entry, Kind
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -42,6 +42,7 @@ FIELDS = {
     "surge": Entry("A", about="inrush"),
     "sound_level": Entry("dB", about="at 1 m"),
     "capacitance": Entry("F", about="of the element"),
+    "class": Entry(TEXT, about="generic class"),
 }
 DATA = {"rated_voltage": Entry("V", about="voltage of the current figure; nominal supply where none is written")}
 KINDS = tuple(

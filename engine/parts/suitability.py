@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 from ..design.datum import Datum, number
 from ..errors import QuantityError
 from ..units import unit_named
+from .classes import CLASSES
 from .kind import FLAG, TEXT, Entry, Kind
 
 if TYPE_CHECKING:
@@ -92,8 +93,12 @@ def _readings(field: str, given: Any, entry: Entry) -> Iterator[tuple[str, str]]
 
 
 def _missing(part: Part, kind: Kind) -> Iterator[tuple[str, str]]:
-    """What the kind needs and the part does not give; a class stands for all data, and a law for its own needs."""
-    needed = [name for name, entry in kind.fields.items() if entry.needed and _is_absent(part, name)]
+    """What the kind needs and the part does not give; a class stands for all data and the fields that it gives, and a
+    law for its own needs."""
+    of_class = CLASSES.get(kind.name, {}).get(part.class_ or "", {})
+    needed = [
+        name for name, entry in kind.fields.items() if entry.needed and _is_absent(part, name) and name not in of_class
+    ]
     if part.class_ is None and not part.law:
         needed += [f"data.{key}" for key, entry in kind.data.items() if entry.needed and part.entry(key) is None]
     if part.law:

@@ -16,7 +16,7 @@ from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError, DesignError
 from stagebook.engine.parts import kinds
 from stagebook.engine.parts.classes import CLASSES
-from stagebook.engine.parts.figures import class_figures, figure
+from stagebook.engine.parts.figures import class_figures, figure, valued
 from stagebook.engine.parts.kind import TEXT
 from stagebook.engine.parts.made import from_memory, kept, resolved, tried
 from stagebook.engine.parts.part_data import part_data
@@ -174,6 +174,11 @@ def test_every_class_can_be_copied_and_computes() -> None:
         ("battery", "9 V block", "aged_resistance", "ohm", 10, 10, 10),
         ("battery", "AA cell", "resistance", "ohm", 0.15, 0.15, 0.15),
         ("thermistor", "ntc", "beta", "K", 3950, 3950, 3950),
+        ("resistor", "film 1 %", "tempco", "1/K", -50e-6, 0.0, 50e-6),
+        ("contact", "gold contact", "minimum_current", "A", 10e-6, 10e-6, 10e-6),
+        ("contact", "silver contact", "resistance", "ohm", 0.1, None, 10),
+        ("sounder", "siren 12 V", "current", "A", 0.2, None, 1.0),
+        ("piezo", "piezo 12 V", "sound_level", "dB", 85, None, 105),
     ],
 )
 def test_classes_hold_the_customary_figures(
@@ -185,3 +190,35 @@ def test_classes_hold_the_customary_figures(
     for expected, value in ((low, found.low), (typical, found.typical), (high, found.high)):
         if expected is not None:
             assert value == pytest.approx(expected)
+
+
+@pytest.mark.parametrize(
+    ("kind", "name", "value", "low", "high"),
+    [
+        ("resistor", "film 1 %", "10k", 9.9e3, 10.1e3),
+        ("capacitor", "film", "100n", 90e-9, 110e-9),
+        ("capacitor", "C0G", "1n", 0.95e-9, 1.05e-9),
+    ],
+)
+def test_a_class_gives_the_tolerance_where_the_part_has_none(
+    kind: str, name: str, value: str, low: float, high: float
+) -> None:
+    part = tried({"kind": kind, "class": name, "value": value})
+    unit = "ohm" if kind == "resistor" else "F"
+    found = valued(part, unit, 0.5)
+    assert (found.low, found.high) == (pytest.approx(low), pytest.approx(high))
+    own = valued(tried({"kind": kind, "class": name, "value": value, "tolerance": "2 %"}), unit, 0.5)
+    assert own.low == pytest.approx(0.98 * found.typical)
+
+
+def test_a_class_stands_for_what_a_load_needs() -> None:
+    # 12 mA at 12 V, from memory: a class is enough to draw it.
+    design = setup(
+        {"ref": "LS1", "kind": "piezo", "pins": {"plus": "supply", "minus": "low"}, "class": "piezo 12 V"},
+        resistor("R1", "low", "0V", "1R"),
+        supply="12 V",
+        ends=1.0,
+    )
+    assert design.final("low") == pytest.approx(12e-3, rel=2e-3)
+    with pytest.raises(DesignError, match="'current' is missing"):
+        tried({"kind": "piezo"})
