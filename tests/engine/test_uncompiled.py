@@ -9,6 +9,7 @@ import sys
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 
 from .circuits import Setup, capacitor, resistor, setup, sine, steps, transistor, two
@@ -28,6 +29,12 @@ CASES: dict[str, Setup] = {
         capacitor("C1", "b", "0V", "100 nF"),
         supply=None,
         ends=12e-3,
+    ),
+    "inductance": setup(
+        resistor("R1", "supply", "n", "100R"),
+        two("inductor", "L1", "n", "0V", inductance="10 mH", resistance="10 ohm"),
+        supply="5 V",
+        ends=300e-6,
     ),
     "junction": setup(
         steps("G1", "in", "0V", (0.0, 0.0), (1e-6, 5.0), (1e-3, 5.0), (1.001e-3, -12.0)),
@@ -63,6 +70,21 @@ CASES: dict[str, Setup] = {
         resistor("R3", "d", "0V", "1k"),
         supply="5 V",
         ends=200e-6,
+    ),
+    "pair in one case": setup(
+        resistor("R1", "supply", "b", "1M"),
+        transistor("Q1", "c", "b", "0V", "darlington_npn", **{"class": "power Darlington"}),
+        resistor("R2", "supply", "c", "1k"),
+        supply="5 V",
+        ends=100e-6,
+    ),
+    "conductance that moves": setup(
+        resistor("R1", "supply", "n", "10k"),
+        two("thermistor", "RT1", "n", "0V", "10k", **{"class": "ntc"}),
+        capacitor("C1", "n", "0V", "10 nF"),
+        supply="5 V",
+        events=[{"at": "0.5 ms", "event": "ramp", "part": "RT1", "to": "60 C", "for": "1 ms"}],
+        ends=2e-3,
     ),
     "switch": setup(
         resistor("R1", "supply", "n", "10k"),
@@ -107,3 +129,8 @@ def test_the_uncompiled_kernel_gives_the_same_numbers(uncompiled: dict[str, Any]
     numbers, others = ([float.fromhex(text) for text in side["numbers"]] for side in (here, there))
     # To the last bits: a compiler may fuse or order mathematics-library calls otherwise.
     assert others == pytest.approx(numbers, rel=1e-12, abs=1e-15)
+
+
+def test_every_family_of_primitives_has_a_case() -> None:
+    families = np.array([np.diff(case.circuit.topology.group.astype(np.int64)) > 0 for case in CASES.values()])
+    assert families.any(axis=0).all()

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import os
 import shutil
 import stat
@@ -114,3 +115,62 @@ def test_ready_only_after_everything_was_compiled(cache: Path) -> None:
 def test_choosing_does_not_load_the_compiler(cache: Path) -> None:
     code = "import sys; from stagebook.tui.solver_cache import ready; ready(); sys.exit('numba' in sys.modules)"
     assert subprocess.run([sys.executable, "-c", code], check=False).returncode == 0
+
+
+USER = """
+import json, os
+from pathlib import Path
+
+from stagebook.tui.solver_cache import choose_cache_folder
+
+folder = choose_cache_folder()
+from stagebook.engine.kernel.compiled import compiled
+
+
+@compiled
+def doubled(x):
+    return 2.0 * x
+
+
+number = doubled(21.0)
+kept = len(list(folder.path.rglob("*.nbc")))
+hits = sum(doubled.stats.cache_hits.values())
+print(json.dumps([number, str(folder.path), folder.lasting, folder.words, kept, hits]))
+"""
+
+
+def compiling(tmp_path: Path, home: str) -> tuple[float, Path, bool, str | None, int, int]:
+    """What a process with this cache home makes of a compiled function: see the last line of ``USER``."""
+    pytest.importorskip("numba")
+    script = tmp_path / "user.py"
+    script.write_text(USER)
+    environment = {**os.environ, "XDG_CACHE_HOME": home, "NUMBA_CACHE_DIR": "elsewhere"}
+    environment.pop("STAGEBOOK_UNCOMPILED", None)
+    done = subprocess.run(
+        [sys.executable, "-P", str(script)], env=environment, capture_output=True, text=True, check=False
+    )
+    assert done.returncode == 0, done.stderr
+    number, path, lasting, words, kept, hits = json.loads(done.stdout)
+    return number, Path(path), lasting, words, kept, hits
+
+
+def test_a_fresh_folder_is_filled_and_read_the_next_time(cache: Path, tmp_path: Path) -> None:
+    first, second = (compiling(tmp_path, str(cache.parents[1])) for _ in range(2))
+    assert first[0] == second[0] == 42.0
+    assert first[1].parent == second[1].parent == cache
+    assert first[2:4] == (True, None)
+    assert (first[4], first[5]) == (1, 0)
+    assert (second[4], second[5]) == (1, 1)
+
+
+@pytest.mark.skipif(not Path("/proc/self").exists(), reason="no folder here that nobody may write, root included")
+def test_a_read_only_folder_is_done_without(tmp_path: Path) -> None:
+    # Nobody makes a folder in /proc: the permissions of a folder of our own would not stop root.
+    number, path, lasting, words, kept, _ = compiling(tmp_path, "/proc")
+    assert number == 42.0
+    assert not lasting
+    assert words is not None
+    assert "/proc/stagebook" in words
+    assert "cannot be written" in words
+    assert kept == 1
+    assert not path.exists()  # private, and gone with its process
