@@ -21,7 +21,7 @@ from ..design.part import Part
 from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..parts import kinds
-from ..parts.figures import figure
+from ..parts.figures import class_figures, figure
 from ..parts.kind import TEXT
 from ..primitives.columns import CONDITIONS, Column, Lanes
 from ..quantity import write_plain
@@ -215,7 +215,11 @@ def data_source(part: Part, key: str) -> str:
         return "the law that the part gives"
     if datum is None:
         named = part.entry("class")
-        return "customary for the kind, from memory" if named is None else f"class {named}, from memory"
+        if named is None:
+            return "customary for the kind, from memory"
+        given = class_figures(part).get(key, "")
+        condition = f", at {given[3]}" if len(given) == 4 and not isinstance(given, str) else ""
+        return f"class {named}, from memory{condition}"
     if key == "value":
         return "the part's value" + (f", {part.tolerance}" if part.tolerance else ", customary tolerance")
     said = datum.source or "the part's own figure, source not said"

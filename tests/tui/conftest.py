@@ -18,11 +18,12 @@ from stagebook.engine.errors import Cancelled, CircuitError
 from stagebook.engine.quantity import read
 from stagebook.engine.results import CheckResult, Depth, MarginSheet, Spread
 from stagebook.engine.studies.causes import Cause, CausesSheet
+from stagebook.engine.studies.explanation import Explanation
 from stagebook.storage import Note, Store
 from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 
-from .sheets import check, verdict_of
+from .sheets import check, explanation, verdict_of
 
 STAGES = ("probe", "amplifier", "latch", "timer", "driver", "piezo", "lamp")
 
@@ -81,12 +82,13 @@ class Gates:
     corners: threading.Event = field(default_factory=threading.Event)
     spread: threading.Event = field(default_factory=threading.Event)
     causes: threading.Event = field(default_factory=threading.Event)
+    explained: threading.Event = field(default_factory=threading.Event)
     refusal: str = ""
     studied: list[str] = field(default_factory=list)
     cancelled: list[str] = field(default_factory=list)
 
     def open(self) -> None:
-        for gate in (self.nominal, self.corners, self.spread, self.causes):
+        for gate in (self.nominal, self.corners, self.spread, self.causes, self.explained):
             gate.set()
 
     def shut(self, *names: str) -> None:
@@ -142,6 +144,12 @@ class Gates:
         come = tuple(name for name in after if name not in before)
         return CausesSheet(new.name, tuple(changed), tuple(found), come, gone, ())
 
+    def explain(self, design: Design, result: CheckResult, *, cancelled: Callable[[], bool]) -> Explanation:
+        self._wait(self.explained, cancelled, design)
+        if self.refusal:
+            raise CircuitError(self.refusal)
+        return explanation(result.id, result.margin)
+
     def _wait(self, gate: threading.Event, cancelled: Callable[[], bool], design: Design) -> None:
         while not gate.wait(0.005):
             if cancelled():
@@ -166,7 +174,9 @@ def gates() -> Gates:
 
 @pytest.fixture
 def solver(gates: Gates) -> Solver:
-    return Solver(study=gates.study, causes=gates.causes_of, ready=lambda: True, prepare=nothing, lanes=40)
+    return Solver(
+        study=gates.study, causes=gates.causes_of, ready=lambda: True, prepare=nothing, lanes=40, explain=gates.explain
+    )
 
 
 def nothing() -> Any:

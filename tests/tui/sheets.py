@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from stagebook.engine.results import CheckResult, Depth, MarginSheet, Verdict
+from stagebook.engine.studies.explanation import Explanation, Observation, Used
 
 
 def verdict_of(margin: float | None, required: float = 0.1) -> Verdict:
@@ -42,6 +43,26 @@ def check(
         hand=None,
         spread=None,
         formula="1 - demand / capability",
+    )
+
+
+def explanation(id: str, margin: float | None) -> Explanation:
+    return Explanation(
+        id=id,
+        formula="1 - demand / capability",
+        put_in="m = 1 - D/C = 1 - 1 V / 2 V = +50.0%",
+        margin=margin,
+        by_hand="",
+        required=Used("required margin", 0.1, "%", None, None, "the design's table: a siren is near"),
+        usual_worst="hot",
+        observed=(
+            Observation("voltage of tc at 9 s", 1.5, "V", "alarm", 9.0),
+            Observation("time of LS1 on", None, "s", "alarm", None),
+        ),
+        used=(
+            Used("R7 value", 470e3, "ohm", 446.5e3, 493.5e3, "the part's value, 5 %"),
+            Used("Q1 gain", 200.0, "", None, None, "class small npn, from memory"),
+        ),
     )
 
 

@@ -88,7 +88,7 @@ class OriginPage(Page[None]):
         title = f" {check_name(check)}, stage {check.stage}, in {self._source}"
         self.query_one("#title", Lines).show(line(Span(title, "strong")))
         rows = wrapped([*self._stored, *self._explained], self.size.width - 2)
-        self.query_one(RowList).show(rows)
+        self.query_one(RowList).show(rows, line(Span("figures, and where each comes from", "strong")))
 
 
 _LABEL = 20

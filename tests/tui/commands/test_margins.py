@@ -181,3 +181,50 @@ def test_text_of_a_document_cannot_steer_the_terminal(stagebook: Run, document: 
     assert status == 0
     assert "\u202e" not in out
     assert "<U+202E>" in out
+
+
+def test_one_margin_explained_as_json(stagebook: Run, written: Path) -> None:
+    """h_FE of the lane and the load current divide to the demand; figures as in the hand formula above."""
+    status, out, err = stagebook("margins", written, "--explain", "base_overdrive", "--json")
+    assert (status, err) == (0, "")
+    found = json.loads(out)
+    check, why = found["check"], found["explanation"]
+    assert check["id"] == why["id"] == "base_overdrive:driver:Q1"
+    assert why["margin"] == pytest.approx(check["margin"], abs=1e-9)
+    used = {each["what"]: each for each in why["used"]}
+    assert used["Q1 gain"]["value"] == 60.0
+    assert "from memory" in used["Q1 gain"]["source"]
+    assert used["LS1 current"]["source"] == "datasheet"
+    base = next(each for each in why["observed"] if each["what"].startswith("current into Q1 base"))
+    assert base["value"] == pytest.approx(check["capability"])
+    assert base["at"] > 0
+    assert why["required"]["source"] == "customary: common practice, from memory"
+
+
+def test_one_margin_explained_in_words(stagebook: Run, written: Path) -> None:
+    status, out, _ = stagebook("margins", written, "--explain", "resistor_power:driver:R1")
+    assert status == 0
+    assert max(map(len, out.splitlines())) <= 80
+    words = " ".join(out.split())
+    for expected in (
+        "stage driver: resistor power R1",
+        "m = 1 - D/C = 1 - ",
+        "power of R1",
+        "R1 rating 250 mW",
+        "derating",
+    ):
+        assert expected in words
+
+
+@pytest.mark.parametrize(
+    ("text", "words"),
+    [
+        ("resistor_power", "could be several margins; write one of resistor_power:driver:R1"),
+        ("base_overdrife:driver:Q1", "is no margin of this design; write one of base_overdrive:driver:Q1"),
+    ],
+)
+def test_a_margin_that_is_not_meant_clearly(stagebook: Run, written: Path, text: str, words: str) -> None:
+    status, out, err = stagebook("margins", written, "--explain", text)
+    assert (status, out) == (2, "")
+    assert words in err
+    assert len(err.splitlines()) == 1
