@@ -22,8 +22,8 @@ if TYPE_CHECKING:
 Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
-LABEL = 12  # cells of name and scale before each strip
-LEAST_ROWS, MOST_ROWS = 2, 6  # of a strip
+LABEL = 14  # cells of name and scale before each strip
+LEAST_ROWS, MOST_ROWS = 2, 10  # of a strip
 _DOTS = ((0x01, 0x02, 0x04, 0x40), (0x08, 0x10, 0x20, 0x80))  # by column, from the top down
 _BLANK = 0x2800
 _LEVELS = "^-._"  # ASCII signs from the top of a cell down

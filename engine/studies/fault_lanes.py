@@ -26,22 +26,51 @@ DRAINS, LEAST_DRAIN = 2.0, 1e-5  # times the stand-by current of the sound unit;
 
 
 @dataclass(frozen=True)
-class _LoadRows:
-    """What is watched at one load in one sequence."""
+class _Spell:
+    """A load from coming on to going off. Off counts after the chatter of contacts, unless it is off by then."""
 
-    healthy: Behaviour
-    early: Row
-    early_over: Row
     on: Row
     off: Row
+    first_off: Row
+    settled: Row
+
+    @classmethod
+    def of(cls, on: Row, chatter: float) -> _Spell:
+        """The spell that begins with a crossing."""
+        after, at_once = Anchor(chatter, on), Anchor(0.0, on)
+        off, first = (crossing(on.signal, on.level, False, start) for start in (after, at_once))
+        return cls(on, off, first, level(on.signal, after))
+
+    @property
+    def rows(self) -> tuple[Row, ...]:
+        """What is to be observed."""
+        return self.on, self.off, self.first_off, self.settled
+
+    def times(self, seen: Observed, lane: int) -> tuple[float | None, float | None]:
+        """When it came on and off in a lane, in s; None where it did not."""
+        over = self.off if float(seen.value(self.settled)[lane]) > self.on.level else self.first_off
+        return _number(seen.time(self.on), lane), _number(seen.time(over), lane)
+
+    def lasts(self, seen: Observed, lane: int, ends: float) -> float:
+        """How long it is on; to the end of the sequence where it does not go off, 0 where it does not come on."""
+        on, off = self.times(seen, lane)
+        return 0.0 if on is None else (ends if off is None else off) - on
+
+
+@dataclass(frozen=True)
+class _LoadRows:
+    """What is watched at one load in one sequence: before its cause, after it, and at the end."""
+
+    healthy: Behaviour
+    early: _Spell
+    alarm: _Spell
     largest: Row
     tail: Row | None
 
     @property
     def rows(self) -> tuple[Row, ...]:
         """All of them."""
-        rows = (self.early, self.early_over, self.on, self.off, self.largest)
-        return rows if self.tail is None else (*rows, self.tail)
+        return (*self.early.rows, *self.alarm.rows, self.largest, *(() if self.tail is None else (self.tail,)))
 
     @classmethod
     def of(cls, healthy: Behaviour, view: View) -> _LoadRows:
@@ -51,19 +80,12 @@ class _LoadRows:
         across = voltage(on[0], on[1])
         after = Anchor(0.0 if healthy.cause is None else healthy.cause)
         early = crossing(across, healthy.level, True, START, Anchor(healthy.ends) if healthy.cause is None else after)
-        rises = crossing(across, healthy.level, True, after)
+        alarm = crossing(across, healthy.level, True, after)
         tail = None
         if healthy.over is not None:
             tail = maximum(across, Anchor(healthy.ends - TAIL * (healthy.ends - healthy.over)))
-        return cls(
-            healthy,
-            early,
-            crossing(across, healthy.level, False, Anchor(view.chatter, early)),
-            rises,
-            crossing(across, healthy.level, False, Anchor(view.chatter, rises)),
-            maximum(across, after),
-            tail,
-        )
+        before, due = _Spell.of(early, view.chatter), _Spell.of(alarm, view.chatter)
+        return cls(healthy, before, due, maximum(across, after), tail)
 
 
 class FaultLanes:
@@ -119,15 +141,15 @@ class FaultLanes:
             outcome, said = Outcome.OVERHEATS, []
         if hot:
             said.append(f"overheats {', '.join(hot)}")
-        others = {its for each, its, _ in seen if each in (Outcome.RUNS_ON, Outcome.FALSE_ALARM)}
-        said += sorted(other for other in others if other not in words)
+        beside = {each: its for each, its, _ in seen if each in (Outcome.RUNS_ON, Outcome.FALSE_ALARM)}
+        said += [its for each, its in sorted(beside.items()) if WORDS[each] not in words]
         detail = [self._otherwise(load, lane)] if outcome in (Outcome.STILL_ALARMS, Outcome.OVERHEATS) else []
         detail += [f"{ref} at {self._heat[ref][lane]:.1f} times its power" for ref in hot[:2]]
         standby, usual = self.standby(lane), self.standby()
         drains = standby is not None and usual is not None and standby > max(DRAINS * usual, LEAST_DRAIN)
         if drains and standby is not None and usual is not None:
             detail.append(f"draws {_amperes(standby)} in stand-by instead of {_amperes(usual)}")
-        watched = self._observed[load.healthy.sequence]
+        on, off = load.alarm.times(self._observed[load.healthy.sequence], lane)
         return FaultResult(
             stage=fault.stage,
             part=fault.part,
@@ -138,8 +160,8 @@ class FaultLanes:
             load=load.healthy.load,
             sequence=load.healthy.sequence,
             overheats=hot,
-            on=_number(watched.time(load.on), lane),
-            off=_number(watched.time(load.off), lane),
+            on=on,
+            off=off,
             standby=standby,
             drains=drains,
         )
@@ -150,10 +172,10 @@ class FaultLanes:
         if failure is not None:
             return Outcome.UNKNOWN, f"{WORDS[Outcome.UNKNOWN]}: {failure}"
         click = min(CLICK, CLICK_SHARE * healthy.lasts) if healthy.alarms else CLICK
-        early = self._sounds(load.early, load.early_over, load, lane) > click
+        early = load.early.lasts(watched, lane, healthy.ends) > click
         # What has been on since before its cause counts as an alarm, though it does not come on again.
         held = early and float(watched.value(load.largest)[lane]) > healthy.level
-        alarms = held or self._sounds(load.on, load.off, load, lane) > click
+        alarms = held or load.alarm.lasts(watched, lane, healthy.ends) > click
         if healthy.alarms and not alarms:
             return Outcome.SILENT, WORDS[Outcome.SILENT] + (", after a false alarm" if early else "")
         where = "" if healthy.sequence == MAIN else f" in {healthy.sequence}"
@@ -164,24 +186,16 @@ class FaultLanes:
             return Outcome.FALSE_ALARM, WORDS[Outcome.FALSE_ALARM] + where
         return Outcome.STILL_ALARMS, WORDS[Outcome.STILL_ALARMS]
 
-    def _sounds(self, on: Row, off: Row, load: _LoadRows, lane: int) -> float:
-        """How long a load is on from a crossing to the next; 0 where it does not come on."""
-        watched = self._observed[load.healthy.sequence]
-        begin, end = (float(watched.time(row)[lane]) for row in (on, off))
-        if not np.isfinite(begin):
-            return 0.0
-        return (end if np.isfinite(end) else load.healthy.ends) - begin
-
     def _otherwise(self, load: _LoadRows, lane: int) -> str:
         """What differs of an alarm that still comes: how late, how long."""
         healthy, watched = load.healthy, self._observed[load.healthy.sequence]
         if healthy.cause is None:
             return ""
         said = []
-        now, usual = (float(watched.time(load.on)[n]) - healthy.cause for n in (lane, 0))
+        now, usual = (float(watched.time(load.alarm.on)[n]) - healthy.cause for n in (lane, 0))
         if np.isfinite(now) and abs(now - usual) > max(OTHERWISE * abs(usual), CLICK):
             said.append(f"{_seconds(now)} after its cause instead of {_seconds(usual)}")
-        lasts, usually = (self._sounds(load.on, load.off, load, n) for n in (lane, 0))
+        lasts, usually = (load.alarm.lasts(watched, n, healthy.ends) for n in (lane, 0))
         if np.isfinite(now) and abs(lasts - usually) > OTHERWISE * usually:
             said.append(f"for {_seconds(lasts)} instead of {_seconds(usually)}")
         return ", ".join(said)

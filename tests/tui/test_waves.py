@@ -80,8 +80,8 @@ async def test_the_cursor_reads_moment_and_voltage(with_waves: StagebookApp) -> 
         first = shown(pilot)[1:3]
         await pilot.press("end")
         last = shown(pilot)[1:3]
-        # 68 columns: the middle of the last one lies half a column before the end.
-        volts = 6.0 * 67.5 / 68
+        # 66 columns: the middle of the last one lies half a column before the end.
+        volts = 6.0 * 65.5 / 66
         assert f"{volts:.3f} V" in last[1]
         assert first != last
         assert first[0].startswith(" at ")

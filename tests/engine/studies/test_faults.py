@@ -161,6 +161,16 @@ def test_an_alarm_before_its_cause_is_a_false_one() -> None:
     assert outcome(sheet, "S2", "stuck open").outcome is Outcome.SILENT
 
 
+def test_a_blip_within_the_bounce_of_a_contact_is_no_alarm() -> None:
+    # With R1 lost, C1 passes each edge of S1 to the base for some 10n x 10k = 0.1 ms; the bounce lasts 5 ms.
+    unit = buzzer(capacitor("C1", "call", "base", "10n")).dump()
+    unit["sequences"]["alarm"]["events"][1]["bounce"] = {"for": "5 ms", "times": 3}
+    sheet = study(Design.load(unit))
+    assert sheet.healthy[0].lasts == pytest.approx(0.2, abs=0.01)
+    assert outcome(sheet, "R1", "open").outcome is Outcome.SILENT
+    assert outcome(sheet, "C1", "open").words == "still alarms"
+
+
 def test_a_battery_has_its_own_faults() -> None:
     unit = design(
         {"ref": "G1", "kind": "battery", "pins": {"plus": "cells", "minus": "0V"}, "class": "9 V block"},
