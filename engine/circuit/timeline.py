@@ -6,6 +6,7 @@ from itertools import pairwise
 from typing import TYPE_CHECKING
 
 import numpy as np
+from numpy.typing import NDArray
 
 from ..design.datum import number
 from ..design.sequence import (
@@ -34,6 +35,7 @@ if TYPE_CHECKING:
 
 DEFAULT_RISE = 100e-9  # s, a supply that no event connects
 HALF_JUMP = 0.5e-12  # s, half of the step with which the kernel takes in what an event does
+ROUNDING = 8.0  # last digits by which the instants of one event may differ
 DEFAULT_EDGE = 1e-6  # s, of a dip or a surge
 
 
@@ -281,6 +283,10 @@ class Timeline:
         )
         table.sort(axis=1)
         table = np.concatenate([table, limit[:, None]], axis=1)
+        # Instants that differ by rounding only are one: between them there is no time for a step.
+        close = np.diff(table, axis=1) <= ROUNDING * np.spacing(table[:, 1:])
+        for k in np.flatnonzero(close.any(axis=0))[::-1]:
+            table[:, k] = np.where(close[:, k], table[:, k + 1], table[:, k])
         fresh = np.concatenate([[True], np.any(np.diff(table, axis=1) > 0.0, axis=0)])
         table = table[:, fresh]
         starts, lengths = table[:, :-1], np.diff(table, axis=1)
@@ -292,9 +298,10 @@ class Timeline:
         switch = layout.zeros(count, segments, len(self.switches), 2)
         for k, wave in enumerate(self.switches.values()):
             switch[:, :, k, 0], switch[:, :, k, 1] = wave.pieces(starts, middles)
-        hits = set() if stops is None else {float(t) for t in stops}
-        jumps = {float(t) for b in breaks for t in np.ravel(b)}
-        restart = [0 if float(t) in hits and float(t) not in jumps else 1 for t in starts[0]]
+        restart = np.ones(segments, dtype=np.int64)
+        if stops is not None:
+            jumps = np.concatenate([np.zeros(1), *(np.ravel(b) for b in breaks)])
+            restart[_among(starts[0], np.asarray(stops)) & ~_among(starts[0], jumps)] = 0
         return Program(
             length=np.broadcast_to(lengths, (count, segments)).copy(),
             restart=ints(restart),
@@ -305,6 +312,16 @@ class Timeline:
             ),
             switch=switch,
         )
+
+
+def _among(times: Floats, known: Floats) -> NDArray[np.bool_]:
+    """Which of the times are, but for rounding, among the known ones."""
+    ordered = np.sort(known)
+    if not ordered.size:
+        return np.zeros(times.size, dtype=bool)
+    place = np.clip(np.searchsorted(ordered, times), 1, max(ordered.size - 1, 1))
+    sides = np.stack([ordered[place - 1], ordered[np.minimum(place, ordered.size - 1)]])
+    return np.asarray(np.any(np.abs(sides - times) <= 2.0 * ROUNDING * np.spacing(times), axis=0))
 
 
 def timeline(circuit: Circuit, lanes: Lanes, sequence: Sequence, starts: bool = False) -> Timeline:

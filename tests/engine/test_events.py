@@ -275,3 +275,27 @@ def test_strays_count_as_capacitors() -> None:
     with_part = setup(*parts, capacitor("C1", "n", "0V", "100 pF"), supply=None, ends=1e-5)
     assert with_stray.run(at).value(at)[0] == with_part.run(at).value(at)[0]
     assert with_part.run(at).value(at)[0] == pytest.approx(1e-6 * math.log(2.0), rel=2e-3)
+
+
+def test_instants_that_differ_by_rounding_only_are_one() -> None:
+    # A ramp is broken into pieces, and the end of one is the begin of the next but for the last digit: a segment of
+    # 1e-19 s has no step in it, and the solver could not leave it. 0.1 + 0.2 is not 0.3 either.
+    circuit = setup(
+        resistor("R1", "supply", "n", "10k"),
+        two("light_resistor", "B1", "n", "0V", "10k", **{"class": "ldr"}),
+        two("contact", "S1", "n", "0V"),
+        events=[
+            {"at": "0.0010000000000000002 s", "event": "close", "part": "S1"},
+            {"at": "1 ms", "event": "ramp", "part": "B1", "to": "530 lx", "for": "28 us"},
+        ],
+        ends=2e-3,
+    )
+    lanes = circuit.lanes()
+    stops = np.array([0.5e-3, 1e-3, 1.5e-3])
+    program = circuit.timeline(lanes).program(circuit.ends, stops)
+    assert program.length.min() > 1e-9
+    assert program.length.sum() == pytest.approx(circuit.ends, rel=1e-15)
+    starts = np.cumsum(program.length[0]) - program.length[0]
+    gentle = starts[program.restart == 0]
+    # The stop at 1 ms is one with events: it stays a jump.
+    assert gentle == pytest.approx([0.5e-3, 1.5e-3], rel=1e-12)
