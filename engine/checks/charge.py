@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, level, maximum
 from .check import Ask, Check, Judged, ratio, unknown
@@ -34,13 +35,15 @@ def _most_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
 
     def judge(seen: Seen) -> Judged:
         current = np.maximum(0.0, seen.value(row, sequence))
-        return ratio(current, np.full(seen.lanes.count, allowed), hand=_hand(view, stage, part, seen, allowed))
+        by_hand = _by_hand(view, stage, part, seen)
+        hand = None if by_hand is None else 1.0 - by_hand / allowed
+        return ratio(current, np.full(seen.lanes.count, allowed), hand=hand)
 
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, (row,))
 
 
-def _hand(view: View, stage: Stage, part: Part, seen: Seen, allowed: float) -> np.ndarray | None:
-    """(supply - diode - battery) / R_charge against the limit, where the role charge_resistor is filled."""
+def _by_hand(view: View, stage: Stage, part: Part, seen: Seen) -> Floats | None:
+    """(supply - diode - battery) / R_charge, where the role charge_resistor is filled."""
     resistor = view.role(stage, "charge_resistor")
     source = view.circuit.builder.batteries.get(f"{part.ref} source")
     if resistor is None or source is None or SUPPLY not in seen.lanes:
@@ -48,7 +51,7 @@ def _hand(view: View, stage: Stage, part: Part, seen: Seen, allowed: float) -> n
     diode = view.role(stage, "charge_diode")
     found = None if diode is None else view.datum(diode, "forward_high", "V")
     left = seen.lanes[SUPPLY] - (0.0 if found is None else found.typical) - source(seen.lanes)
-    return np.asarray(1.0 - np.maximum(0.0, left) / seen.lanes[resistor.ref, "value"] / allowed)
+    return np.asarray(np.maximum(0.0, left) / seen.lanes[resistor.ref, "value"])
 
 
 def upkeep_asks(check: Check, view: View) -> Iterator[Ask]:
@@ -73,7 +76,11 @@ def _upkeep_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
 
     def judge(seen: Seen) -> Judged:
         wanted = np.full(seen.lanes.count, capacity.high * lost.high + load)
-        return ratio(wanted, seen.value(row, sequence), hand=None)
+        hand = None
+        current = _by_hand(view, stage, part, seen)
+        if current is not None:
+            hand = 1.0 - wanted / np.where(current > 0.0, current, np.nan)
+        return ratio(wanted, seen.value(row, sequence), hand=hand)
 
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, (row,))
 
@@ -100,5 +107,7 @@ CHECKS = (
         formula="D = self-discharge x capacity + load of the requirement, C = current into the battery in stand-by",
         asks=upkeep_asks,
         worst="low supply, full battery",
+        by_hand="what it must make up for over (supply - diode - battery voltage) / R_charge",
+        accuracy=0.1,
     ),
 )

@@ -19,6 +19,7 @@ from .complementary_latch import TRIP_CURRENT
 from .seen import Seen
 from .view import View
 
+PULLS = ("pull_up", "pull_down")
 BEFORE = 1e-3  # s before a contact moves again at which its current is read
 
 
@@ -88,7 +89,7 @@ def _at_event(view: View, requirement: Requirement, stage: Stage, part: Part, se
 def _at_level(view: View, requirement: Requirement, stage: Stage) -> Trips | str:
     """The current that brings the line from rest to ``trip_level`` through its pull resistor."""
     trip = view.extra(requirement, "trip_level", "V")
-    pull = view.role(stage, "pull_up") or view.role(stage, "pull_down")
+    pull = next((found for role in PULLS if (found := view.role(stage, role)) is not None), None)
     if trip is None:
         return (
             "event with which it trips (requirement field at), or the level of its line at which it does (trip_level)"
@@ -120,6 +121,7 @@ def _wetting_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     current = view.bench(part.ref).currents.get("a")
     if needs is None or current is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"minimum_current of {part.ref}")
+    pull = next((view.design.part(stage.roles[role]) for role in PULLS if role in stage.roles), None)
     rows = tuple(level(current, Anchor(at)) for at in _closed_until(view, part, sequence))
 
     def judge(seen: Seen) -> Judged:
@@ -127,7 +129,10 @@ def _wetting_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         if not rows:
             never = np.ones(seen.lanes.count, dtype=bool)
             return ratio(wanted, wanted, [(never, check.words["never"].format(contact=part.ref))])
-        return ratio(wanted, np.min([np.abs(seen.value(row, sequence)) for row in rows], axis=0))
+        hand = None
+        if pull is not None and SUPPLY in seen.lanes:
+            hand = 1.0 - wanted * seen.lanes[pull.ref, "value"] / seen.lanes[SUPPLY]
+        return ratio(wanted, np.min([np.abs(seen.value(row, sequence)) for row in rows], axis=0), hand=hand)
 
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows or (level(current, START),))
 
@@ -169,6 +174,8 @@ CHECKS = (
         formula="D = least current that keeps the contact clean, C = current through it before it opens again",
         asks=wetting_asks,
         worst="low supply",
+        by_hand="least current x R_pull / supply, R_pull the pull resistor of its stage",
+        accuracy=0.1,
         words={"never": "{contact} is never closed in the sequence"},
     ),
 )

@@ -123,13 +123,20 @@ def _off_ask(check: Check, view: View, stage: Stage, load: Part, sequence: str, 
     plus, minus, _ = view.bench(load.ref).on or ("", "", 0.0)
     rows = tuple(level(voltage(plus, minus), at) for at in off)
     lets_go = _with_copper(load, least.low)
+    driver = view.role(stage, "driver")
+    leakage, draw = None if driver is None else view.bench(driver.ref).leakage, view.bench(load.ref).draw
 
     def judge(seen: Seen) -> Judged:
         left = np.array([seen.value(row, sequence) for row in rows])
         never = np.asarray(np.isnan(left).all(axis=0))
         largest = np.max(np.nan_to_num(left), axis=0)
         largest = np.where(largest < NOTHING, 0.0, largest)
-        return ratio(largest, lets_go(seen.lanes), [(never, check.words["never"])])
+        hand = None
+        if leakage is not None and draw is not None:
+            # What leaks through the driver flows through the load, whose conductance is its draw at one volt.
+            leak = np.asarray(leakage(seen.lanes)) / draw(seen.lanes, np.ones(seen.lanes.count))
+            hand = 1.0 - leak / lets_go(seen.lanes)
+        return ratio(largest, lets_go(seen.lanes), [(never, check.words["never"])], hand)
 
     return Ask(check, stage.name, load.ref, (sequence,), required, judge, rows)
 
@@ -157,6 +164,8 @@ CHECKS = (
         formula="D = voltage left across the load in stand-by and after the alarm, C = voltage at which it lets go",
         asks=off_asks,
         worst="hot, high supply",
+        by_hand="I_CBO of the driver x resistance of the load over what it lets go at",
+        accuracy=0.1,
         words={"never": "none of the moments at which it must be off ever came"},
     ),
 )

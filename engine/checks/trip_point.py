@@ -20,6 +20,7 @@ from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown, window
+from .divider_point import divider_point
 from .duration import instant
 from .seen import Seen
 from .view import View
@@ -84,7 +85,8 @@ def _window_ask(check: Check, view: View, requirement: Requirement) -> Ask:
 
     def judge(seen: Seen) -> Judged:
         at = instant(seen, anchor, sequence)
-        return window(ramped.level(seen, sequence, at), low, high, [(~np.isfinite(at), words)])
+        hand = divider_point(view, requirement, "trip_level", ramped.ref, seen)
+        return window(ramped.level(seen, sequence, at), low, high, [(~np.isfinite(at), words)], hand)
 
     rows = () if anchor.row is None else (anchor.row,)
     return Ask(check, ramped.stage, ramped.ref, (sequence,), required, judge, rows, unit=ramped.unit)
@@ -98,6 +100,8 @@ class Pair:
     sequence: str
     texts: tuple[str, str]
     anchors: tuple[Anchor, Anchor]
+    view: View
+    requirement: Requirement
 
     @classmethod
     def of(cls, view: View, requirement: Requirement) -> Pair:
@@ -110,7 +114,8 @@ class Pair:
             )
         sequence = view.sequence(requirement, "trip")
         first = view.anchor(trip, sequence)
-        return cls(ramped, sequence, (trip, release), (first, view.anchor(release, sequence, first)))
+        last = view.anchor(release, sequence, first)
+        return cls(ramped, sequence, (trip, release), (first, last), view, requirement)
 
     @property
     def unit(self) -> str:
@@ -121,6 +126,12 @@ class Pair:
         """Level between the two events per lane, NaN where one of them never came."""
         ends = [self.ramped.level(seen, self.sequence, instant(seen, each, self.sequence)) for each in self.anchors]
         return np.abs(ends[1] - ends[0])
+
+    def by_hand(self, seen: Seen) -> Floats | None:
+        """The same from the divider, where the requirement tells both levels."""
+        keys = ("trip_level", "release_level")
+        ends = [divider_point(self.view, self.requirement, key, self.ramped.ref, seen) for key in keys]
+        return None if ends[0] is None or ends[1] is None else np.abs(ends[1] - ends[0])
 
     def outcomes(self, seen: Seen, words: str) -> list[tuple[np.ndarray, str]]:
         """Which of the events never came."""
@@ -152,7 +163,7 @@ def hysteresis_window_asks(check: Check, view: View) -> Iterator[Ask]:
 
 def _hysteresis_window(check: Check, pair: Pair, required: float, low: float, high: float) -> Ask:
     def judge(seen: Seen) -> Judged:
-        return window(pair.hysteresis(seen), low, high, pair.outcomes(seen, check.words["never"]))
+        return window(pair.hysteresis(seen), low, high, pair.outcomes(seen, check.words["never"]), pair.by_hand(seen))
 
     return pair.ask(check, required, judge)
 
@@ -174,7 +185,9 @@ def hysteresis_asks(check: Check, view: View) -> Iterator[Ask]:
 def _hysteresis(check: Check, pair: Pair, required: float, ripple: float) -> Ask:
     def judge(seen: Seen) -> Judged:
         wanted = np.full(seen.lanes.count, ripple)
-        return ratio(wanted, pair.hysteresis(seen), pair.outcomes(seen, check.words["never"]))
+        by_hand = pair.by_hand(seen)
+        hand = None if by_hand is None else 1.0 - ripple / by_hand
+        return ratio(wanted, pair.hysteresis(seen), pair.outcomes(seen, check.words["never"]), hand)
 
     return pair.ask(check, required, judge)
 
@@ -190,6 +203,8 @@ CHECKS = (
         formula="x = level of the sensor at the event of tripping, m = min(U - x, x - L) / ((U - L)/2)",
         asks=window_asks,
         worst="both extremes of temperature and supply",
+        by_hand="level at which sensor and bridge_resistor give the trip_level of the requirement",
+        accuracy=0.3,
         words=NEVER,
         source="that of the duration window: common practice, no source",
     ),
@@ -202,6 +217,8 @@ CHECKS = (
         formula="x = level between the events of tripping and letting go, m = min(U - x, x - L) / ((U - L)/2)",
         asks=hysteresis_window_asks,
         worst="both extremes of supply and gain",
+        by_hand="between the levels at which sensor and bridge_resistor give trip_level and release_level",
+        accuracy=0.3,
         words=NEVER,
         source="that of the duration window: common practice, no source",
     ),
@@ -214,6 +231,8 @@ CHECKS = (
         formula="D = ripple peak to peak, C = level between the events of tripping and letting go",
         asks=hysteresis_asks,
         worst="low supply, weak h_FE",
+        by_hand="ripple over what lies between trip_level and release_level of sensor and bridge_resistor",
+        accuracy=0.3,
         words=NEVER,
     ),
 )

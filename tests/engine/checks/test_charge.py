@@ -46,6 +46,7 @@ def test_the_least_current() -> None:
     assert found.demand == pytest.approx(7.0 * 3600 * 0.03 / MONTH, rel=1e-6)
     assert found.demand == pytest.approx(0.2875e-3, rel=1e-3)
     assert found.capability == pytest.approx(15e-3, rel=2e-3)
+    assert found.hand == pytest.approx(found.margin, abs=1e-3)
     assert found.verdict is Verdict.PASS
 
 

@@ -94,7 +94,7 @@ def contact(ohms: str = "4k7", least: str | None = "1 mA", closes: bool = True, 
         exact(two("capacitor", "C1", "line", "0V", "1u", voltage="25 V")),
         sounder("LS1", "supply", "0V", "10 mA", "3 V"),
         events=[CONNECT, *(moves if closes else [])],
-        roles={"contact": "S1"} if role else {},
+        roles={"contact": "S1", "pull_up": "R1"} if role else {},
     )
 
 
@@ -105,6 +105,7 @@ def test_wetting_current_by_hand(ohms: str, verdict: Verdict) -> None:
     found = margin(contact(ohms), "wetting_current", "S1")
     assert found.capability == pytest.approx(current, rel=1e-3)
     assert found.margin == pytest.approx(1.0 - 1e-3 / current, abs=2e-3)
+    assert found.hand == pytest.approx(1.0 - 1e-3 / current)
     assert found.verdict is verdict
 
 

@@ -7,7 +7,7 @@ import pytest
 from stagebook.engine.design.document import Design
 from stagebook.engine.results import Verdict
 
-from ..circuits import Json, resistor, two
+from ..circuits import Json, resistor, transistor, two
 from .sheets import CONNECT, design, exact, margin, sounder
 
 
@@ -82,3 +82,20 @@ def test_what_leaks_past_an_open_contact_keeps_it_on() -> None:
 def test_a_load_without_a_level_is_unknown() -> None:
     found = margin(fed("10R", least=None), "load_voltage", "LS1")
     assert (found.verdict, found.reason) == (Verdict.UNKNOWN, "missing: operating_minimum of LS1")
+
+
+def test_what_leaks_through_a_hot_driver() -> None:
+    # 10 uA at 25 C, twice for every 10 K: 320 uA at 75 C through 90 ohm: 28.8 mV of 6 V, less what h_FE adds to it.
+    law = {"v_be": "0.65 V", "gain": "100", "i_cbo": "10 uA", "i_cbo_doubling": "10 K"}
+    of = design(
+        transistor("Q1", "low", "base", "0V", data=law),
+        exact(resistor("R1", "base", "0V", "100R")),
+        sounder("LS1", "supply", "low", "100 mA", "6 V"),
+        roles={"driver": "Q1", "load": "LS1"},
+        ambient="75 C",
+        moments={"standby": "0.5 s"},
+    )
+    found = margin(of, "load_off", "LS1")
+    assert found.demand == pytest.approx(320e-6 * 90, rel=0.03)
+    assert found.hand == pytest.approx(1.0 - 0.0288 / 6.0, abs=1e-4)
+    assert not found.disagrees

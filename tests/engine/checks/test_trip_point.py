@@ -31,6 +31,7 @@ def probe(check: str, tolerance: str = "0 %", **requirement: Any) -> Design:
         resistor("R1", "sense", "0V", "100k", tolerance=tolerance),
         events=events,
         ends="45 s",
+        roles={"bridge_resistor": "R1"},
         requirements=[{k: v for k, v in wanted.items() if v is not None}],
     )
 
@@ -76,8 +77,10 @@ def test_hysteresis_between_limits(limits: dict[str, str], expected: float) -> N
 
 @pytest.mark.parametrize(("ripple", "verdict"), [("12k", Verdict.PASS), ("70k", Verdict.FAIL)])
 def test_hysteresis_against_ripple(ripple: str, verdict: Verdict) -> None:
-    found = margin(probe("hysteresis", **EVENTS, ripple=ripple), "hysteresis", "B1")
+    levels = {"trip_level": "3 V", "release_level": "2.5 V"}
+    found = margin(probe("hysteresis", **EVENTS, **levels, ripple=ripple), "hysteresis", "B1")
     assert found.capability == pytest.approx(60e3, rel=5e-3)
+    assert found.hand == pytest.approx(1.0 - (12.0 if ripple == "12k" else 70.0) / 60.0, abs=1e-6)
     assert found.verdict is verdict
 
 
@@ -97,12 +100,14 @@ def thermistor(**more: Any) -> Design:
         {"at": "1 s", "event": "ramp", "part": "tunnel", "to": "-5 C", "for": "30 s"},
     ]
     wanted = {"check": "trip_window", "of": "tunnel", "at": "sense above 4.5 V", "min": "0 C", "max": "4 C", **more}
+    wanted["trip_level"] = "50 %"
     return design(
         exact(resistor("R1", "supply", "sense", "30k")),
         exact(two("thermistor", "RT1", "sense", "0V", "10k", follows="tunnel", data={"beta": "3950 K"})),
         events=events,
         ends="35 s",
         requirements=[wanted],
+        roles={"sensor": "RT1", "bridge_resistor": "R1"},
     )
 
 
@@ -111,6 +116,7 @@ def test_a_temperature_by_the_thermistors_law() -> None:
     found = margin(thermistor(), "trip_window", "RT1")
     assert (found.low, found.unit) == (pytest.approx(celsius, abs=0.02), "degC")
     assert found.margin == pytest.approx((4.0 - celsius) / 2.0, abs=0.02)
+    assert found.hand == pytest.approx((4.0 - celsius) / 2.0, abs=1e-6)
 
 
 @pytest.mark.parametrize(
@@ -123,6 +129,15 @@ def test_a_requirement_that_cannot_be_read(changed: dict[str, Any], words: str) 
     document["requirements"] = [{k: v for k, v in wanted.items() if v is not None}]
     with pytest.raises(CircuitError, match=words):
         margin(Design.load(document), "trip_window", "RT1")
+
+
+@pytest.mark.parametrize(("level", "expected"), [("10 %", None), ("5 V", -2.05 / 2.0)])
+def test_by_hand_only_where_the_ramp_comes(level: str, expected: float | None) -> None:
+    # 10 % is 3k3, some 50 C, which no event sets; 5 V of 9 V are 37k5, ln 3.75 and -2.05 C.
+    document = thermistor().dump()
+    document["requirements"][0]["trip_level"] = level
+    found = margin(Design.load(document), "trip_window", "RT1")
+    assert found.hand == (None if expected is None else pytest.approx(expected, abs=0.005))
 
 
 def test_both_events_of_a_hysteresis_are_asked_for() -> None:
