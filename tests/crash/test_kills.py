@@ -14,7 +14,7 @@ import shutil
 import sqlite3
 import time
 from collections import Counter
-from collections.abc import Callable, Iterator
+from collections.abc import Callable
 from contextlib import closing
 from dataclasses import replace
 from pathlib import Path
@@ -35,13 +35,6 @@ OLD = Path(__file__).parents[1] / "storage" / "stores" / "schema-1.sqlite3"
 KINDS = ("type", "step", "save", "undo", "migrate", "import", "type", "save", "back up", "step", "redo", "save")
 
 pytestmark = pytest.mark.skipif(not Path("/proc/self/stat").exists(), reason="processes are watched as on Linux")
-
-
-@pytest.fixture
-def nursery(tmp_path: Path) -> Iterator[Nursery]:
-    made = Nursery(tmp_path)
-    yield made
-    made.close()
 
 
 class Trials:
