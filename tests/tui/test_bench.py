@@ -348,7 +348,27 @@ async def test_a_stage_is_added_at_the_end_of_the_chain(app: StagebookApp, shelf
 async def test_every_screen_stands_any_size(app: StagebookApp, size: tuple[int, int]) -> None:
     async with app.run_test(size=size) as pilot:
         await open_bench(pilot)
-        for keys in ("tab", "w", "b", "m", "m", "1", "escape", "h", "b", "s", "escape", "a", "b", "question_mark", "b"):
+        for keys in (
+            "tab",
+            "w",
+            "b",
+            "m",
+            "m",
+            "1",
+            "escape",
+            "h",
+            "b",
+            "s",
+            "escape",
+            "a",
+            "b",
+            "i",
+            "b",
+            "p",
+            "b",
+            "question_mark",
+            "b",
+        ):
             await pilot.press(keys)
             await pilot.pause()
             assert len(shown(pilot)) == size[1]

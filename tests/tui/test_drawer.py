@@ -14,6 +14,7 @@ from stagebook.tui.screens.bench import BenchScreen
 from stagebook.tui.screens.drawer import DrawerScreen
 from stagebook.tui.screens.part_data import PartDataScreen
 from stagebook.tui.stagebook_app import StagebookApp
+from stagebook.tui.widgets.row_list import RowList
 from stagebook.tui.widgets.status import Notice
 
 from .conftest import flood, seen, settled, shown, until
@@ -144,3 +145,26 @@ async def test_a_part_of_another_kind_is_not_used(app: StagebookApp, shelf: Stor
         await settled(pilot)
         await pilot.press("p", "enter")
         assert "it is a resistor and no npn" in notice(pilot)
+
+
+async def test_a_new_part_takes_its_data_from_the_drawer_by_name(app: StagebookApp, shelf: Store) -> None:
+    shelf.keep_part("stout", {"kind": "resistor", "rating": "2 W", "tolerance": "1 %"})
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("enter")
+        await settled(pilot)
+        await pilot.press("a")
+        await pilot.pause()
+        await pilot.press(*["down"] * next(at for at, line in enumerate(_choices(pilot)) if line == "resistor a b"))
+        await pilot.press("enter")
+        await pilot.pause()
+        assert "stout (drawer)" in seen(pilot)
+        await pilot.press("down", *"1k", "down", "down", *"stout", "down", *"supply", "down", *"0V", "enter")
+        await settled(pilot)
+        stage = shelf.draft("flood").design.stages[0]
+        part = stage.parts[-1]
+        assert (part.value, part.rating, part.tolerance, part.drawer) == ("1k", "2 W", "1 %", "stout, version 1")
+
+
+def _choices(pilot: Pilot[None]) -> list[str]:
+    return [row.key for row in pilot.app.screen.query_one("#choices", RowList).rows]

@@ -193,7 +193,8 @@ class BenchScreen(BenchView):
             self._put(words, after)
             self.show(next((part.ref for part in self.design.parts if part.ref not in known), None))
 
-        ask_new_part(self.app, self.design, self.stage, put)
+        stage = self.stage
+        self.attempt(lambda: ask_new_part(self.app, self.design, stage, put, self.drafting.drawer()))
 
     def action_add_stage(self) -> None:
         """A stage of the catalogue, or a free one, at the end of the chain."""

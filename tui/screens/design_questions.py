@@ -17,6 +17,7 @@ from ...engine.parts import kinds
 from ...engine.parts.classes import CLASSES
 from ...engine.parts.kind import Kind
 from ...engine.results import CheckResult
+from ...storage.values import MadePart
 from ..shown import fit, percent
 from .dialog import Answers, Field, Form, Pick
 
@@ -46,24 +47,34 @@ def ask_design(
     app.push_screen(Form(title, fields, refusal), done)
 
 
-def ask_new_part(app: App[Any], design: Design, stage: Stage, put: Put) -> None:
-    """A part: first its kind, then reference, value and nets."""
+def ask_new_part(app: App[Any], design: Design, stage: Stage, put: Put, drawer: Sequence[MadePart] = ()) -> None:
+    """A part: first its kind, then reference, value and nets. Its class may be the name of a part in the drawer."""
 
     choices = {f"{name} {' '.join(pins)}": (kind, pins) for name, kind in sorted(kinds().items()) for pins in kind.pins}
 
     def chosen(key: str | None) -> None:
         if key is not None:
-            _ask_part(app, design, stage, *choices[key], put)
+            kind, pins = choices[key]
+            made = {each.name: each for each in drawer if each.kind == kind.name}
+            _ask_part(app, design, stage, kind, pins, put, made)
 
     rows = [(key, f"{fit(kind.name.replace('_', ' '), 18)} {' '.join(pins)}") for key, (kind, pins) in choices.items()]
     app.push_screen(Pick(f"a part for {stage.name}: which kind?", rows), chosen)
 
 
-def _ask_part(app: App[Any], design: Design, stage: Stage, kind: Kind, pins: Sequence[str], put: Put) -> None:
+def _ask_part(
+    app: App[Any],
+    design: Design,
+    stage: Stage,
+    kind: Kind,
+    pins: Sequence[str],
+    put: Put,
+    made: Mapping[str, MadePart],
+) -> None:
     nets = ", ".join(design.nets) or "supply, 0V"
     asked = [name for name, entry in kind.fields.items() if entry.needed or name in {"value", "tolerance", "class"}]
     fields = [Field("ref", "reference", free_reference(design, kind))]
-    classes = ", ".join(CLASSES.get(kind.name, ()))
+    classes = ", ".join([*CLASSES.get(kind.name, ()), *(f"{name} (drawer)" for name in made)])
     fields += [Field(name, name, "", classes if name == "class" else kind.fields[name].about) for name in asked]
     fields += [Field(f"pin-{pin}", f"pin {pin} on", "", f"a net: {nets}") for pin in pins]
 
@@ -73,7 +84,12 @@ def _ask_part(app: App[Any], design: Design, stage: Stage, kind: Kind, pins: Seq
             raise DesignError(f"there is a part {ref} already; write another reference, or change that part with e")
         part = {"ref": ref, "kind": kind.name, "pins": {pin: answers[f"pin-{pin}"] for pin in pins}}
         given = {name: written(answers[name]) for name in asked if answers[name]}
-        return f"with {ref}", edit.with_part(design, stage.name, {**part, **given})
+        of_drawer = made.get(str(given.get("class", "")).removesuffix(" (drawer)"))
+        if of_drawer is None:
+            return f"with {ref}", edit.with_part(design, stage.name, {**part, **given})
+        del given["class"]
+        plain = edit.with_part(design, stage.name, {**part, **given})
+        return f"with {ref}", edit.with_made_part(plain, ref, of_drawer.document, of_drawer.title)
 
     ask_design(app, f"{kind.name.replace('_', ' ')} for {stage.name}", fields, make, put)
 
