@@ -100,7 +100,7 @@ def cautions_of(design: Design) -> tuple[Caution, ...]:
 def _protects(design: Design, part: Part) -> bool:
     """Whether a part has a role that keeps others from harm."""
     roles = {role for role, ref in design.stage_of(part.ref).roles.items() if ref == part.ref}
-    return bool(roles & {"flyback_diode", "clamp", "fuse", "reverse_diode", "trickle_resistor", "trickle_diode"})
+    return bool(roles & {"flyback_diode", "clamp", "fuse", "reverse_diode", "charge_resistor", "charge_diode"})
 
 
 def _is_fast(settings: object) -> bool:

@@ -22,8 +22,8 @@ def _make(plan: Plan) -> Made:
         )
     plan.diode(feed, rail, "reverse_diode", name="1 A rectifier")
     plan.diode(plus, rail, "battery_diode", kind="schottky", name="1 A Schottky")
-    plan.resistor(room / trickle, feed, charge, "trickle_resistor", snap="up")
-    plan.diode(charge, plus, "trickle_diode")
+    plan.resistor(room / trickle, feed, charge, "charge_resistor", snap="up")
+    plan.diode(charge, plus, "charge_diode")
     below = RETURN
     for number in range(count, 0, -1):
         above = plus if number == 1 else plan.net(f"cell_{number}")
@@ -31,7 +31,7 @@ def _make(plan: Plan) -> Made:
             "BT",
             "battery",
             {"plus": above, "minus": below},
-            "battery" if number == 1 else f"battery_{number}",
+            "standby_battery" if number == 1 else f"standby_battery_{number}",
             **{"class": generic},
         )
         below = above

@@ -25,11 +25,11 @@ def _make(plan: Plan, normally_open: bool) -> Made:
     far = _lead(plan, out)
     if normally_open:
         contact = plan.part("S", "contact", {"a": rail, "b": far}, "contact", form="make")
-        value = plan.resistor(ohms, out, RETURN, "pull_resistor", snap="down")
+        plan.resistor(ohms, out, RETURN, "pull_down", snap="down")
         drive = Drive(Sense.LEVEL)
     else:
         contact = plan.part("S", "contact", {"a": far, "b": RETURN}, "contact", form="break")
-        value = plan.resistor(ohms, rail, out, "pull_resistor", snap="down")
+        value = plan.resistor(ohms, rail, out, "pull_up", snap="down")
         drive = Drive(Sense.LEVEL, ohms=value)
     begins, ends = ("close", "open") if normally_open else ("open", "close")
     bounce = plan.number("bounce")

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 
-from .kind import IN_PORT, OUT_PORT, RETURN_PORT, Drive, Intake, Made, Place, Sense, Setting, StageKind
+from .kind import IN_PORT, OUT_PORT, RETURN_PORT, Drive, Intake, Json, Made, Place, Sense, Setting, StageKind
 from .plan import RETURN, Plan
 
 THRESHOLD = 0.5  # of the rail, at which what follows is taken to act where it does not say
@@ -24,15 +24,12 @@ def _make(plan: Plan) -> Made:
     ohms = plan.resistor(most, plan.port("in"), plan.port("out"), "debounce_resistor", snap="down")
     plan.capacitor(tau / (ohms + plan.arriving_ohms), plan.port("out"), RETURN, "debounce_capacitor")
     before = Drive(Sense.LEVEL) if plan.drive is None else plan.drive
-    return Made(
-        output=Drive(Sense.LEVEL, before.drop, before.ohms + ohms),
-        settles=5.0 * tau,
-        lasts=5.0 * tau,
-        requirements=(
-            {"check": "contact_bounce", "max": plan.text("bounce")},
-            {"check": "acceptance", "min": plan.text("event")},
-        ),
+    asked: tuple[Json, ...] = (
+        {"check": "contact_bounce", "of": "{contact}", "max": plan.text("bounce")},
+        {"check": "acceptance", "of": "{contact}", "min": plan.text("event")},
     )
+    output = Drive(Sense.LEVEL, before.drop, before.ohms + ohms)
+    return Made(output=output, settles=5.0 * tau, lasts=5.0 * tau, requirements=asked)
 
 
 KIND = StageKind(

@@ -4,11 +4,12 @@ from __future__ import annotations
 
 from ..quantity import write
 from .contact import LEAD_INSULATION, PER_METRE
-from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Made, Place, Setting, StageKind
+from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Json, Made, Place, Setting, StageKind
 from .output import HELP, add_output, sized
 from .plan import OVERDRIVE, RETURN, V_BE, Plan
 
 V_LEAST = 0.5  # V, base-emitter voltage and diode each at some microampere, from memory
+DRIFT = "3 %"  # of the rail, each threshold: two junctions over temperature and supply
 DIVIDER = 47e3  # ohm, of each of the two references
 BLEED = 470e3  # ohm, keeps a base-emitter junction at 0 V while its diode blocks
 
@@ -20,14 +21,16 @@ def _make(plan: Plan) -> Made:
     lower, upper = plan.share("lower"), plan.share("upper")
     if not lower < 0.5 < upper:
         raise plan.refused("lower", "the two thresholds must lie on both sides of 0.5, where a sound line stands")
-    plan.resistor(ohms, rail, line, "loop_pull_resistor", tolerance="1 %")
+    plan.resistor(ohms, rail, line, "pull_up", tolerance="1 %")
     metres = plan.number("lead")
     end = plan.net("end")
     if metres > 0.0:
         pins = {"from": line, "to": far}
         plan.part("W", "lead", pins, "lead", length=write(metres, "m"), insulation=LEAD_INSULATION, **PER_METRE)
-    contact = plan.part("S", "contact", {"a": far if metres > 0.0 else line, "b": end}, "contact", form="break")
-    plan.resistor(ohms, end, RETURN, "end_of_line_resistor", tolerance="1 %")
+    contact_end = far if metres > 0.0 else line
+    contact = plan.part("S", "contact", {"a": contact_end, "b": end}, "contact", form="break")
+    plan.resistor(ohms, end, RETURN, "end_of_line", tolerance="1 %")
+    short = plan.part("S", "contact", {"a": contact_end, "b": RETURN}, "short_contact", form="make")
     # Each threshold is its reference and two junctions: V_EB and the diode that keeps the reverse away.
     for name, volts_at, words in (
         ("high", upper * volts - 2 * V_LEAST, "upper"),
@@ -49,7 +52,32 @@ def _make(plan: Plan) -> Made:
     plan.transistor(low, trip, RETURN, "trip_device")
     held = plan.above_zero("held")
     acts = ((0.0, {"event": "open", "part": contact}), (held, {"event": "close", "part": contact}))
-    return Made(output=add_output(plan, output, low, rail), acts=acts, lasts=held)
+    loop: Json = {
+        "events": [
+            {"at": "0 s", "event": "connect supply", "rise": "20 ms"},
+            {"at": "1 s", "event": "open", "part": contact},
+            {"at": "2 s", "event": "close", "part": contact},
+            {"at": "3 s", "event": "close", "part": short},
+        ],
+        "ends": "4 s",
+        "moments": {"standby": "0.9 s", "normal": "0.9 s", "open": "1.9 s", "short": "3.9 s"},
+    }
+    supervised: Json = {
+        "check": "supervised_loop",
+        "of": line,
+        "sequence": "loop",
+        "rail": rail,
+        "low": write(lower, "%"),
+        "high": write(upper, "%"),
+        "drift": DRIFT,
+    }
+    return Made(
+        output=add_output(plan, output, low, rail),
+        acts=acts,
+        lasts=held,
+        sequences={"loop": loop},
+        requirements=(supervised,),
+    )
 
 
 KIND = StageKind(

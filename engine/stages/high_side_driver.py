@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load
+from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan
 
 BLEED = 0.1  # share of a base current that its base-emitter resistor may take (common practice)
@@ -46,7 +46,7 @@ def _make(plan: Plan) -> Made:
     plan.transistor(out, top, rail, "driver", kind="pnp", current=_load(plan))
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), out, RETURN)
-    return Made(output=Drive(Sense.HIGH_SIDE, drop=0.3))
+    return Made(output=Drive(Sense.HIGH_SIDE, drop=0.3), requirements=load_requirements(plan))
 
 
 KIND = StageKind(

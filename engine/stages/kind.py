@@ -108,7 +108,8 @@ class Made:
     rails lose. ``acts`` are events counted from the instant at which the alarm begins, none of them before the supply
     comes; ``settles`` is how long it needs before that, ``lasts`` how long it goes on after it, ``active`` how long
     its signal then stays, None for as long as it is asked to. ``standby`` is when it rests in a design that the supply
-    itself starts. ``moments`` and ``requirements`` may name the design's ``{load}`` and the moment ``begins``.
+    itself starts. ``moments`` and ``requirements`` may name the design's ``{load}`` and ``{contact}`` and the moment
+    ``begins``.
     """
 
     output: Drive | None = None

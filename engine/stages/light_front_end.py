@@ -5,7 +5,7 @@ from __future__ import annotations
 from ..quantity import write
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, WORD, Made, Place, Setting, StageKind
 from .plan import Plan
-from .sensor_divider import add_divider
+from .sensor_divider import add_divider, trip_sequence, trip_window
 
 GAMMA, AT = 0.7, 10.0  # slope of log R over log light and the light in lx of the resistance given, class, from memory
 BEYOND = 10.0  # times beyond the trip point that the sequence goes, and as far on the other side at rest
@@ -22,7 +22,16 @@ def _make(plan: Plan) -> Made:
     acts = tuple(
         (at, {"event": "set", "part": ref, "to": write(lux, "lx")}) for at, lux in ((0.0, alarm), (held, rest))
     )
-    return Made(output=drive, acts=acts, lasts=held)
+    spread = plan.above_zero("window")
+    if spread <= 1.0:
+        raise plan.refused("window", f"{plan.text('window')} is no factor above 1; write it like 2")
+    return Made(
+        output=drive,
+        acts=acts,
+        lasts=held,
+        sequences={"trip": trip_sequence(ref, write(rest, "lx"), write(alarm, "lx"))},
+        requirements=(trip_window(ref, write(trip / spread, "lx"), write(trip * spread, "lx")),),
+    )
 
 
 KIND = StageKind(
@@ -39,6 +48,7 @@ KIND = StageKind(
     settings=(
         Setting("active", WORD, "dark", "what it trips on", ("dark", "light")),
         Setting("trip", "lx", "10 lx", "light at the trip point"),
+        Setting("window", "", "3", "factor by which the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 10 lx"),
         Setting("held", "s", "2 s", "how long the event of the sequence lasts"),
     ),

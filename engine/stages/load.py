@@ -5,7 +5,7 @@ from __future__ import annotations
 from functools import partial
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Intake, Made, Place, Sense, Setting, StageKind
-from .loads import LOAD_SETTINGS, add_load
+from .loads import LOAD_SETTINGS, add_load, load_requirements
 from .plan import RETURN, Plan
 
 
@@ -17,7 +17,7 @@ def _make(plan: Plan, load: str) -> Made:
     else:
         plus, minus = plan.port("in"), RETURN
     add_load(plan, load, plus, minus)
-    return Made()
+    return Made(requirements=load_requirements(plan))
 
 
 def _kind(name: str, title: str, current: str, level: str, words: str) -> StageKind:
@@ -31,6 +31,7 @@ def _kind(name: str, title: str, current: str, level: str, words: str) -> StageK
             Setting("current", "A", current, LOAD_SETTINGS[1].about),
             LOAD_SETTINGS[2],
             Setting("sound_level", "dB", level, LOAD_SETTINGS[3].about),
+            *LOAD_SETTINGS[4:],
         ),
         make=partial(_make, load=name),
         takes=(Sense.LOW_SIDE, Sense.HIGH_SIDE, Sense.LEVEL),

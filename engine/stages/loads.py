@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from ..quantity import write
-from .kind import WORD, Setting
+from .kind import WORD, Json, Setting
 from .plan import Plan
 
 NONE = "none"
@@ -12,7 +12,11 @@ LOAD_SETTINGS = (
     Setting("current", "A", "150 mA", "largest current of the load at the nominal supply"),
     Setting("works_from", "V", "", "the load counts as on above it; empty: half of the nominal supply"),
     Setting("sound_level", "dB", "95 dB", "of a sounder at 1 m"),
+    Setting("heard", "dB", "", "what is needed at the distance; empty: not asked for"),
+    Setting("distance", "m", "1 m", "at which it must be heard"),
 )
+SURGE = {"sounder": 2.0, "piezo": 1.2}
+"""Inrush in parts of the largest current (from memory)."""
 TYPICAL = 0.8  # of the largest current, from memory
 
 
@@ -29,7 +33,16 @@ def add_load(plan: Plan, kind: str, plus: str, minus: str) -> str:
         "rated_voltage": write(plan.supply.nominal, "V"),
         "operating_minimum": write(works_from(plan), "V"),
         "sound_level": {"typical": plan.text("sound_level"), "source": "memory"},
+        "surge": {"typical": write(SURGE[kind] * current, "A"), "source": "memory"},
     }
     if kind == "piezo":
         data["capacitance"] = "20 nF"
     return plan.part("LS", kind, {"plus": plus, "minus": minus}, "load", data=data)
+
+
+def load_requirements(plan: Plan) -> tuple[Json, ...]:
+    """What is asked of the load, where something is."""
+    if "load" not in plan.roles or not plan.text("heard"):
+        return ()
+    heard = {"min": plan.text("heard"), "distance": plan.text("distance")}
+    return ({"check": "sound_level", "of": plan.roles["load"], "sequence": "alarm", **heard},)

@@ -155,7 +155,7 @@ KIND = StageKind(
     settings=(
         Setting("mode", WORD, DELAY, "delay, interval, or reset of the latch before it", (DELAY, INTERVAL, RESET)),
         Setting("time", "s", "60 s", "nominal time"),
-        Setting("window", "%", "33 %", "how far the time may be off, both ways"),
+        Setting("window", "%", "40 %", "how far the time may be off, both ways"),
         Setting("threshold", "", "0.3", "share of the rail at which it fires"),
         Setting("capacitor", WORD, "low drift", "class of a large timing capacitor", ("low drift", "electrolytic")),
     ),

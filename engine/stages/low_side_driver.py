@@ -6,7 +6,7 @@ from functools import partial
 
 from ..quantity import write
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load
+from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
@@ -46,7 +46,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     plan.transistor(low, node, RETURN, "driver", kind=kind, current=current)
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), plan.port("rail"), low)
-    return Made(output=Drive(Sense.LOW_SIDE, drop=0.3 * junctions))
+    return Made(output=Drive(Sense.LOW_SIDE, drop=0.3 * junctions), requirements=load_requirements(plan))
 
 
 _PORTS = (IN_PORT, RAIL_PORT, Port("low", Wire.OUT, "the switched end of the load"), RETURN_PORT)

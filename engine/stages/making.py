@@ -64,9 +64,13 @@ def _single_names(names: Sequence[str]) -> None:
 
 
 def _facts(row: Sequence[MadeStage]) -> dict[str, str]:
-    """The load of the design, which texts of its stages name."""
-    load = next((made.stage["roles"]["load"] for made in row if "load" in made.stage["roles"]), None)
-    return {} if load is None else {"load": load}
+    """The load and the contact of the design, which texts of its stages name."""
+    return _named([made.stage["roles"] for made in row])
+
+
+def _named(roles: Sequence[Mapping[str, str]]) -> dict[str, str]:
+    found = {name: next((each[name] for each in roles if name in each), None) for name in ("load", "contact")}
+    return {name: ref for name, ref in found.items() if ref is not None}
 
 
 def _start(row: Sequence[MadeStage]) -> float:
@@ -102,15 +106,17 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
 
 def _moments(made: MadeStage, facts: Mapping[str, str]) -> Json:
     """The moments that a stage knows of; those after a load only where the design has one."""
-    known = {k: v for k, v in made.made.moments.items() if "load" in facts or "{load}" not in json.dumps(v)}
-    return _filled(known, facts)
+    return _filled({name: each for name, each in made.made.moments.items() if _answered(each, facts)}, facts)
+
+
+def _answered(entry: object, facts: Mapping[str, str]) -> bool:
+    text = json.dumps(entry)
+    return all(name in facts or f"{{{name}}}" not in text for name in ("load", "contact"))
 
 
 def _required(made: MadeStage, facts: Mapping[str, str]) -> list[Json]:
-    """The requirements that a stage brings; those about a load only where the design has one."""
-    return [
-        _filled(each, facts) for each in made.made.requirements if "load" in facts or "{load}" not in json.dumps(each)
-    ]
+    """The requirements that a stage brings; those about a load or a contact only where the design has one."""
+    return [_filled(each, facts) for each in made.made.requirements if _answered(each, facts)]
 
 
 def _filled(entry: Json, facts: Mapping[str, str]) -> Json:
@@ -168,20 +174,18 @@ def with_catalogue_stage(design: Design, choice: Choice, ports: Mapping[str, str
 def _added(design: Design, made: MadeStage) -> Design:
     document = design.dump()
     document.setdefault("stages", []).append(made.stage)
-    roles = [stage.roles for stage in design.stages] + [made.stage["roles"]]
-    load = next((each["load"] for each in roles if "load" in each), None)
+    facts = _named([*(stage.roles for stage in design.stages), made.stage["roles"]])
     alarm = document["sequences"]["alarm"]
     events = alarm.setdefault("events", [])
     begun = [read(event["at"], "s") for event in events if event["event"] in ("close", "open", "set", "ramp")]
     start = begun[0] if begun else FIRST * bool(made.made.acts)
-    facts = {} if load is None else {"load": load}
     alarm.setdefault("moments", {}).setdefault(BEGINS, write(start, "s", digits=6))
     events += [{"at": write(max(0.0, start + at), "s", digits=6), **event} for at, event in made.made.acts]
     ends = max(read(alarm["ends"], "s") + made.made.lasts, *(start + at + AFTER for at, _ in made.made.acts), 0.0)
     alarm["ends"] = write(ends, "s", digits=6)
     moments = _moments(made, facts)
-    if load is not None:
-        moments.setdefault("sounding", {"after": f"{load} on", "by": write(READ, "s")})
+    if "load" in facts:
+        moments.setdefault("sounding", {"after": f"{facts['load']} on", "by": write(READ, "s")})
     for name, moment in moments.items():
         alarm["moments"].setdefault(name, moment)
     for name, sequence in _filled(dict(made.made.sequences), facts).items():

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+from ..quantity import write
 from .entry import SPARE
-from .kind import RETURN_PORT, Made, Place, Port, Setting, StageKind, Wire
+from .kind import RETURN_PORT, Json, Made, Place, Port, Setting, StageKind, Wire
 from .plan import RETURN, Plan
 
 
@@ -15,7 +16,17 @@ def _make(plan: Plan) -> Made:
     bridged = current * plan.above_zero("bridge") / (plan.share("sag") * plan.rail.min)
     slewed = plan.supply.max / (ohms * plan.above_zero("slew"))
     farads = plan.capacitor(max(bridged, slewed), plan.port("quiet"), RETURN, "filter_capacitor", snap="up")
-    return Made(quiet_drop=ohms * current, settles=5.0 * ohms * farads)
+    settles = 5.0 * ohms * farads
+    begins = max(1.0, settles)
+    dip: Json = {
+        "events": [
+            {"at": "0 s", "event": "connect supply", "rise": "20 ms"},
+            {"at": write(begins, "s"), "event": "dip", "to": "0 V", "for": plan.text("bridge")},
+        ],
+        "ends": write(begins + 2.0, "s"),
+        "moments": {"standby": write(0.9 * begins, "s")},
+    }
+    return Made(quiet_drop=ohms * current, settles=settles, sequences={"dip": dip})
 
 
 KIND = StageKind(

@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
-from .kind import Drive, Sense
+from ..quantity import write
+from .kind import Drive, Json, Sense
 from .plan import Plan
 
+RAMP = 20.0  # s of the slow way to the trip point and beyond
 THRESHOLD = 0.5  # share of the rail where what follows does not say
 
 
@@ -23,3 +25,22 @@ def add_divider(plan: Plan, ohms: float, *, rising: bool) -> tuple[str, str, Dri
         plan.resistor(ohms * share / (1.0 - share), out, back, "bridge_resistor", tolerance="1 %")
         nets = rail, out
     return *nets, Drive(Sense.LEVEL, drop=(1.0 - share) * plan.rail.min, ohms=ohms * (1.0 - share))
+
+
+def trip_sequence(subject: str, rest: str, beyond: str) -> Json:
+    """A sequence that brings a sensor slowly from rest beyond its trip point and back."""
+    return {
+        "events": [
+            {"at": "0 s", "event": "connect supply", "rise": "20 ms"},
+            {"at": "0 s", "event": "set", "part": subject, "to": rest},
+            {"at": "1 s", "event": "ramp", "part": subject, "to": beyond, "for": write(RAMP, "s")},
+            {"at": write(2.0 + RAMP, "s"), "event": "ramp", "part": subject, "to": rest, "for": write(RAMP, "s")},
+        ],
+        "ends": write(4.0 + 2.0 * RAMP, "s"),
+        "moments": {"standby": "900 ms"},
+    }
+
+
+def trip_window(subject: str, low: str, high: str) -> Json:
+    """The requirement that a sensor trips between two levels of its own quantity."""
+    return {"check": "trip_window", "of": subject, "sequence": "trip", "at": "{load} on", "min": low, "max": high}

@@ -8,7 +8,7 @@ from ..parts.physics import REFERENCE, ZERO_CELSIUS
 from ..quantity import write
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, WORD, Made, Place, Setting, StageKind
 from .plan import Plan
-from .sensor_divider import add_divider
+from .sensor_divider import add_divider, trip_sequence, trip_window
 
 BETA = 3950.0  # K, class, from memory
 BEYOND = 10.0  # K beyond the trip point that the sequence goes, and as far on the other side at rest
@@ -23,14 +23,22 @@ def _make(plan: Plan) -> Made:
     # It follows a temperature of its own: the sensor is not where the unit is.
     where = f"{plan.stage} sensor"
     fields = {"value": plan.text("sensor"), "tolerance": "1 %", "class": "ntc", "follows": where}
-    plan.part("RT", "thermistor", {"a": one, "b": other}, "sensor", **fields)
+    ref = plan.part("RT", "thermistor", {"a": one, "b": other}, "sensor", **fields)
     rest, alarm = (trip + BEYOND, trip - BEYOND) if cold else (trip - BEYOND, trip + BEYOND)
     held = plan.above_zero("held")
     acts = tuple(
         (at, {"event": "set", "part": where, "to": write(celsius, "degC")})
         for at, celsius in ((BEFORE, rest), (0.0, alarm), (held, rest))
     )
-    return Made(output=drive, acts=acts, lasts=held)
+    off = plan.above_zero("window")
+    ends = (write(each, "degC", digits=4) for each in (rest, alarm))
+    return Made(
+        output=drive,
+        acts=acts,
+        lasts=held,
+        sequences={"trip": trip_sequence(where, *ends)},
+        requirements=(trip_window(ref, write(trip - off, "degC", digits=4), write(trip + off, "degC", digits=4)),),
+    )
 
 
 KIND = StageKind(
@@ -48,6 +56,7 @@ KIND = StageKind(
     settings=(
         Setting("active", WORD, "cold", "what it trips on", ("cold", "heat")),
         Setting("trip", "degC", "2 C", "temperature at the trip point"),
+        Setting("window", "K", "3 K", "how far the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 25 C"),
         Setting("held", "s", "2 s", "how long the event of the sequence lasts"),
     ),

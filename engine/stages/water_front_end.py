@@ -5,7 +5,7 @@ from __future__ import annotations
 from ..quantity import write
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Made, Place, Setting, StageKind
 from .plan import Plan
-from .sensor_divider import add_divider
+from .sensor_divider import add_divider, trip_sequence, trip_window
 
 PROTECTION = 10e3  # ohm in series with the probe: bounds its current, against corrosion and what the lead brings
 DRY = 10.0  # times the resistance at which it must not trip, at rest
@@ -23,7 +23,22 @@ def _make(plan: Plan) -> Made:
     ref = plan.part("B", "probe", {"a": one, "b": tip}, "sensor", value=rest)
     held = plan.above_zero("held")
     acts = tuple((at, {"event": "set", "part": ref, "to": to}) for at, to in ((0.0, plan.text("wet")), (held, rest)))
-    return Made(output=drive, acts=acts, lasts=held)
+    return Made(
+        output=drive,
+        acts=acts,
+        lasts=held,
+        sequences={"trip": trip_sequence(ref, rest, write(wet / DRY, "ohm"))},
+        requirements=(
+            trip_window(ref, plan.text("wet"), plan.text("dry")),
+            {
+                "check": "wet_lead",
+                "of": ref,
+                "sequence": "trip",
+                "at": "{load} on",
+                "insulation": plan.text("dry"),
+            },
+        ),
+    )
 
 
 KIND = StageKind(

@@ -69,7 +69,7 @@ SUPPLY = ("15 V", "15.5 V", "16 V")
 
 def test_the_trickle_resistor_leaves_the_trickle_at_full_charge() -> None:
     # (15.5 V - 0.65 V - 13.6 V) / 5 mA = 250R, next higher of E24: 270R (float 2.27 V a cell: from memory).
-    assert value(made(BACKUP, CALL, PIEZO, supply=SUPPLY), "backup", "trickle_resistor") == 270.0
+    assert value(made(BACKUP, CALL, PIEZO, supply=SUPPLY), "backup", "charge_resistor") == 270.0
 
 
 def test_the_battery_takes_over_when_the_supply_is_lost() -> None:

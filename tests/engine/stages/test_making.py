@@ -94,7 +94,7 @@ def test_an_added_or_removed_part_is_told_and_another_net_at_a_port_is_not() -> 
     design = made(CALL, PIEZO)
     part = {"ref": "R9", "kind": "resistor", "pins": {"a": "call.out", "b": "0V"}, "value": "1M"}
     assert is_modified(edit.with_part(design, "call", part).stage("call"))
-    assert is_modified(edit.without_part(design, design.stage("call").roles["pull_resistor"]).stage("call"))
+    assert is_modified(edit.without_part(design, design.stage("call").roles["pull_down"]).stage("call"))
     document = json.loads(json.dumps(design.dump()).replace('"call.out"', '"renamed"'))
     assert not any(is_modified(stage) for stage in Design.load(document).stages)
 

@@ -108,7 +108,7 @@ def test_the_loop_tells_open_and_short_from_sound(ohms: float, alarm: bool) -> N
     document = made(LOOP, PIEZO).dump()
     for stage in document["stages"]:
         for part in stage["parts"]:
-            if part["ref"] == stage["roles"].get("end_of_line_resistor"):
+            if part["ref"] == stage["roles"].get("end_of_line"):
                 part["value"] = f"{ohms!r}"
     seen = Setup(Design.load(document)).run(out := at("loop.out", 0.9))
     assert bool(seen.value(out)[0] > 6.0) is alarm
