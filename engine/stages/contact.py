@@ -9,8 +9,8 @@ from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Json, Made, Place, S
 from .plan import RETURN, Plan
 
 LEAD_INSULATION = "20M"  # of the whole lead against 0V, wet, from memory
-PER_METRE = {"resistance": "0.08 ohm/m", "inductance": "0.6 uH/m", "capacitance": "100 pF/m"}
-"""A pair of 0.22 mm2, there and back: from memory."""
+PER_METRE = {"resistance": "0.08 ohm/m", "capacitance": "100 pF/m"}
+"""A pair of 0.22 mm2, there and back, from memory. Its inductance rings at megahertz, far above what follows hears."""
 _SETTINGS = (
     Setting("wetting", "A", "1 mA", "least current through the closed contact: 1 mA silver, 10 uA gold"),
     Setting("bounce", "s", "2 ms", "how long it bounces"),
