@@ -53,7 +53,7 @@ KIND = StageKind(
     ports=(IN_PORT, OUT_PORT, RETURN_PORT),
     settings=(
         Setting("period", "s", "1 s", "of one flash and one pause"),
-        Setting("window", "%", "30 %", "how far half a period may be off, both ways"),
+        Setting("window", "%", "40 %", "how far half a period may be off, both ways"),
     ),
     make=_make,
     intake=lambda plan: Intake(2.5 * plan.rail.max / COLLECTOR + sized(plan).current + plan.next.current),

@@ -8,6 +8,8 @@ from .plan import RETURN, Plan
 
 CELLS = {"lead-acid 12 V": ("lead-acid 7 Ah", 1, 13.6), "lead-acid 24 V": ("lead-acid 7 Ah", 2, 27.2)}
 """Class, batteries in series and float voltage in V (2.27 V a cell, from memory)."""
+FOR_EVER = {"max": "70 mA", "source": "memory"}
+"""What a battery of 7 Ah bears without end: C/100."""
 V_SUPPLY_DIODE, V_BATTERY_DIODE, V_TRICKLE_DIODE = 0.85, 0.45, 0.65
 
 
@@ -32,7 +34,7 @@ def _make(plan: Plan) -> Made:
             "battery",
             {"plus": above, "minus": below},
             "standby_battery" if number == 1 else f"standby_battery_{number}",
-            **{"class": generic},
+            **{"class": generic, "charge_limits": {"current": FOR_EVER}},
         )
         below = above
     low = min(plan.supply.min - V_SUPPLY_DIODE, count * CURVES[generic][1][1] - V_BATTERY_DIODE)

@@ -23,12 +23,13 @@ def _make(plan: Plan, normally_open: bool) -> Made:
     rail, out = plan.port("rail"), plan.port("out")
     ohms = plan.rail.min / plan.above_zero("wetting")
     far = _lead(plan, out)
+    fields: Json = {"data": {"minimum_current": {"typical": plan.text("wetting"), "source": "memory"}}}
     if normally_open:
-        contact = plan.part("S", "contact", {"a": rail, "b": far}, "contact", form="make")
+        contact = plan.part("S", "contact", {"a": rail, "b": far}, "contact", form="make", **fields)
         plan.resistor(ohms, out, RETURN, "pull_down", snap="down")
         drive = Drive(Sense.LEVEL)
     else:
-        contact = plan.part("S", "contact", {"a": far, "b": RETURN}, "contact", form="break")
+        contact = plan.part("S", "contact", {"a": far, "b": RETURN}, "contact", form="break", **fields)
         value = plan.resistor(ohms, rail, out, "pull_up", snap="down")
         drive = Drive(Sense.LEVEL, ohms=value)
     begins, ends = ("close", "open") if normally_open else ("open", "close")

@@ -9,6 +9,7 @@ from .output import HELP, add_output, sized
 from .plan import OVERDRIVE, RETURN, V_BE, Plan
 
 V_LEAST = 0.5  # V, base-emitter voltage and diode each at some microampere, from memory
+WETTING = {"minimum_current": {"typical": "0.1 mA", "source": "memory"}}
 DRIFT = "3 %"  # of the rail, each threshold: two junctions over temperature and supply
 DIVIDER = 47e3  # ohm, of each of the two references
 BLEED = 470e3  # ohm, keeps a base-emitter junction at 0 V while its diode blocks
@@ -28,7 +29,7 @@ def _make(plan: Plan) -> Made:
         pins = {"from": line, "to": far}
         plan.part("W", "lead", pins, "lead", length=write(metres, "m"), insulation=LEAD_INSULATION, **PER_METRE)
     contact_end = far if metres > 0.0 else line
-    contact = plan.part("S", "contact", {"a": contact_end, "b": end}, "contact", form="break")
+    contact = plan.part("S", "contact", {"a": contact_end, "b": end}, "contact", form="break", data=WETTING)
     plan.resistor(ohms, end, RETURN, "end_of_line", tolerance="1 %")
     short = plan.part("S", "contact", {"a": contact_end, "b": RETURN}, "short_contact", form="make")
     # Each threshold is its reference and two junctions: V_EB and the diode that keeps the reverse away.

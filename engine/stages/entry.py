@@ -2,12 +2,29 @@
 
 from __future__ import annotations
 
-from .kind import RETURN_PORT, WORD, Made, Place, Port, Setting, StageKind, Wire
-from .plan import RETURN, Plan
+import math
 
+from ..quantity import write
+from .kind import RETURN_PORT, WORD, Made, Place, Port, Setting, StageKind, Wire
+from .plan import LARGEST_FILM, RETURN, Plan
+
+RIPPLE = 10e-3  # A at 1 uF, growing with the root of the capacitance: what an electrolytic bears, from memory
+LOSS, LOSS_AT = 0.15, 100.0  # tan d and the frequency in Hz that it is given at, class, from memory
 SPARE = 3.0  # times its drop that the filter resistor is rated for: small stages draw more while they switch
 _DIODES = {"silicon": ("diode", "1 A rectifier", 0.85), "schottky": ("schottky", "1 A Schottky", 0.45)}
 """Kind, class and largest forward voltage in V at 1 A, cold (from memory)."""
+
+
+def add_filter_capacitor(plan: Plan, farads: float, net: str) -> float:
+    """The capacitor of a filter with its ripple rating and series resistance; returns its value in farad."""
+    value = plan.capacitor(farads, net, RETURN, "filter_capacitor", snap="up")
+    if value > LARGEST_FILM:
+        ripple, series = RIPPLE * (value / 1e-6) ** 0.5, LOSS / (2.0 * math.pi * LOSS_AT * value)
+        plan.parts[-1] |= {
+            "ripple_rating": {"typical": write(ripple, "A", digits=2), "source": "memory"},
+            "series_resistance": {"typical": write(series, "ohm", digits=2), "source": "memory"},
+        }
+    return value
 
 
 def _make(plan: Plan) -> Made:
@@ -20,7 +37,7 @@ def _make(plan: Plan) -> Made:
         rail = plan.port("rail")
     current, drop, slew = plan.above_zero("small_current"), plan.above_zero("drop"), plan.above_zero("slew")
     ohms = plan.resistor(drop / current, rail, quiet, "filter_resistor", snap="down", volts=SPARE * drop)
-    farads = plan.capacitor(plan.supply.max / (ohms * slew), quiet, RETURN, "filter_capacitor", snap="up")
+    farads = add_filter_capacitor(plan, plan.supply.max / (ohms * slew), quiet)
     return Made(rail_drop=lost, quiet_drop=lost + ohms * current, settles=5.0 * ohms * farads)
 
 

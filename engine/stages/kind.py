@@ -107,9 +107,10 @@ class Made:
     ``output`` is its signal, None where it passes on the one it got. ``rail_drop`` and ``quiet_drop`` are what its
     rails lose. ``acts`` are events counted from the instant at which the alarm begins, none of them before the supply
     comes; ``settles`` is how long it needs before that, ``lasts`` how long it goes on after it, ``active`` how long
-    its signal then stays, None for as long as it is asked to. ``standby`` is when it rests in a design that the supply
-    itself starts. ``moments`` and ``requirements`` may name the design's ``{load}`` and ``{contact}`` and the moment
-    ``begins``.
+    its signal then stays, None for as long as it is asked to. ``holds`` is how long what comes in must stay,
+    ``standby`` when it rests in a design that the supply
+    itself starts. ``moments`` and ``requirements`` may name the design's ``{load}`` and ``{contact}``, the event
+    ``{trips}`` with which what follows the stage acts, and the moment ``begins``.
     """
 
     output: Drive | None = None
@@ -119,6 +120,7 @@ class Made:
     settles: float = 0.0
     lasts: float = 0.0
     active: float | None = None
+    holds: float = 0.0
     standby: float | None = None
     moments: Mapping[str, Json | str] = field(default_factory=dict)
     sequences: Mapping[str, Json] = field(default_factory=dict)

@@ -48,7 +48,7 @@ KIND = StageKind(
     settings=(
         Setting("active", WORD, "dark", "what it trips on", ("dark", "light")),
         Setting("trip", "lx", "10 lx", "light at the trip point"),
-        Setting("window", "", "3", "factor by which the trip point may be off, both ways"),
+        Setting("window", "", "4", "factor by which the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 10 lx"),
         Setting("held", "s", "2 s", "how long the event of the sequence lasts"),
     ),

@@ -33,6 +33,7 @@ FIRE_BLEED = 1e6  # ohm, base-emitter resistor of the firing transistor
 SNAP = 10.0  # times the upper divider resistor: how much of a fired timer's swing goes back into the threshold
 MOST = 1e6  # ohm, a timing resistor above it is at the mercy of the board's leakage (common practice)
 FALL = 0.1  # of the rail that the output of an interval may lose in its pull-up
+HOLDS = 1.0  # s that what starts it stays on after the latest end of its time
 SINK = 0.2e-3  # A that a timer must be able to draw from a latch's base
 
 
@@ -110,6 +111,7 @@ def _make(plan: Plan) -> Made:
         output=made,
         lasts=time * (1.0 + window) * 1.6,
         active=None if mode == DELAY else time,
+        holds=0.0 if mode == RESET else time * (1.0 + window) + HOLDS,
         standby=0.3 * time if mode == DELAY else None,
         requirements=(duration, arrival),
     )

@@ -21,6 +21,7 @@ FIRST = 1.0  # s before the alarm begins, at least
 AFTER = 2.0  # s after all that stages bring
 BEGINS = "begins"
 """The moment at which the alarm begins: what starts it does so, or the supply comes."""
+_FACTS = ("load", "contact", "trips")
 READ = 0.5  # s after the load came on at which levels are read, at most
 
 
@@ -39,7 +40,7 @@ def new_design(name: str, purpose: str, conditions: Json, choices: Sequence[Choi
     sequences: dict[str, Json] = {"alarm": _alarm(row, facts)}
     for made in row:
         sequences.update(_filled(dict(made.made.sequences), facts))
-    requirements = [each for made in row for each in _required(made, facts)]
+    requirements = [each for n, made in enumerate(row) for each in _required(made, facts | _trips(row[n + 1 :], facts))]
     return Design.load(_document(name, purpose, conditions, stages, sequences, requirements))
 
 
@@ -68,6 +69,15 @@ def _facts(row: Sequence[MadeStage]) -> dict[str, str]:
     return _named([made.stage["roles"] for made in row])
 
 
+def _trips(following: Sequence[MadeStage], facts: Mapping[str, str]) -> dict[str, str]:
+    """The event with which what follows a stage acts: its output passes half of its rail, or the load comes on."""
+    for made in following[:1]:
+        port = made.kind.port(Wire.OUT)
+        if port is not None and made.made.output is not None and made.made.output.sense is Sense.LEVEL:
+            return {"trips": f"{made.stage['ports'][port.name]} above {write(0.5 * made.rail, 'V')}"}
+    return {"trips": f"{facts['load']} on"} if "load" in facts else {}
+
+
 def _named(roles: Sequence[Mapping[str, str]]) -> dict[str, str]:
     found = {name: next((each[name] for each in roles if name in each), None) for name in ("load", "contact")}
     return {name: ref for name, ref in found.items() if ref is not None}
@@ -82,11 +92,14 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
     """The sequence that fires the alarm: the supply comes, all settles, and what starts it starts it."""
     start = _start(row)
     events: list[Json] = [{"at": "0 s", "event": "connect supply", "rise": RISE}]
-    acts = sorted(
-        ((max(0.0, start + at), event) for made in row for at, event in made.made.acts), key=lambda act: act[0]
-    )
-    events += [{"at": write(at, "s", digits=6), **event} for at, event in acts]
+    holds = max(made.made.holds for made in row)
+    own = [act for made in row for act in _held(made.made.acts, holds)]
+    acts = sorted(((max(0.0, start + at), event) for at, event in own), key=lambda act: act[0])
     over = max([start + sum(made.made.lasts for made in row), *(at for at, _ in acts)])
+    if not acts:
+        # What the supply itself starts goes on until it is taken away.
+        acts = [(over + 0.5 * AFTER, {"event": "disconnect supply"})]
+    events += [{"at": write(at, "s", digits=6), **event} for at, event in acts]
     moments: Json = {BEGINS: write(start, "s", digits=6)}
     rests = [made.made.standby for made in row if made.made.standby is not None]
     if start > 0.0:
@@ -104,6 +117,12 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
     return {"events": events, "ends": write(over + AFTER, "s", digits=6), "moments": moments}
 
 
+def _held(acts: Sequence[tuple[float, Json]], holds: float) -> list[tuple[float, Json]]:
+    """The acts of a stage; where it begins the alarm, it ends it only after what follows had its time."""
+    begins = any(at == 0.0 for at, _ in acts)
+    return [(max(at, holds) if begins and at > 0.0 else at, event) for at, event in acts]
+
+
 def _moments(made: MadeStage, facts: Mapping[str, str]) -> Json:
     """The moments that a stage knows of; those after a load only where the design has one."""
     return _filled({name: each for name, each in made.made.moments.items() if _answered(each, facts)}, facts)
@@ -111,7 +130,7 @@ def _moments(made: MadeStage, facts: Mapping[str, str]) -> Json:
 
 def _answered(entry: object, facts: Mapping[str, str]) -> bool:
     text = json.dumps(entry)
-    return all(name in facts or f"{{{name}}}" not in text for name in ("load", "contact"))
+    return all(name in facts or f"{{{name}}}" not in text for name in _FACTS)
 
 
 def _required(made: MadeStage, facts: Mapping[str, str]) -> list[Json]:
@@ -190,7 +209,7 @@ def _added(design: Design, made: MadeStage) -> Design:
         alarm["moments"].setdefault(name, moment)
     for name, sequence in _filled(dict(made.made.sequences), facts).items():
         document["sequences"].setdefault(name, sequence)
-    required = _required(made, facts)
+    required = _required(made, facts | _trips((), facts))
     if required:
         document.setdefault("requirements", []).extend(required)
     return Design.load(document)

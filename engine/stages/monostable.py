@@ -77,7 +77,7 @@ KIND = StageKind(
     ports=(QUIET_PORT, IN_PORT, OUT_PORT, RETURN_PORT),
     settings=(
         Setting("time", "s", "2 s", "length of the pulse"),
-        Setting("window", "%", "30 %", "how far the time may be off, both ways"),
+        Setting("window", "%", "40 %", "how far the time may be off, both ways"),
     ),
     make=_make,
     intake=lambda plan: Intake(plan.rail.max / TRIGGER_RETURN),

@@ -205,7 +205,8 @@ class Plan:
         rated = _at_least(self.rail.max / 0.8, _VOLTAGES)
         name, tolerance = ("timing capacitor, low drift", "10 %") if low_drift else ("electrolytic", "20 %")
         fields = {"tolerance": tolerance, "class": name, "voltage": f"{rated:g} V"}
-        self.part("C", "capacitor", {"plus": a, "minus": b}, role, value=write(value, "F"), **fields)
+        polarised = {"plus": a, "minus": b}
+        self.part("C", "capacitor", polarised, role, value=write(value, "F"), **fields)
         return value
 
     def transistor(

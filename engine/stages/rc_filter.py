@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 from ..quantity import write
-from .entry import SPARE
+from .entry import SPARE, add_filter_capacitor
 from .kind import RETURN_PORT, Json, Made, Place, Port, Setting, StageKind, Wire
-from .plan import RETURN, Plan
+from .plan import Plan
 
 
 def _make(plan: Plan) -> Made:
@@ -15,7 +15,7 @@ def _make(plan: Plan) -> Made:
     )
     bridged = current * plan.above_zero("bridge") / (plan.share("sag") * plan.rail.min)
     slewed = plan.supply.max / (ohms * plan.above_zero("slew"))
-    farads = plan.capacitor(max(bridged, slewed), plan.port("quiet"), RETURN, "filter_capacitor", snap="up")
+    farads = add_filter_capacitor(plan, max(bridged, slewed), plan.port("quiet"))
     settles = 5.0 * ohms * farads
     begins = max(1.0, settles)
     dip: Json = {

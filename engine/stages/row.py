@@ -45,11 +45,12 @@ class Place:
 
 @dataclass(frozen=True)
 class MadeStage:
-    """A stage as the document holds it, and what else it brings."""
+    """A stage as the document holds it, and what else it brings. ``rail`` is its nominal rail in V."""
 
     stage: Json
     made: Made
     kind: StageKind
+    rail: float
 
 
 def kind_named(name: str) -> StageKind:
@@ -124,7 +125,7 @@ def make_stage(
         "parts": plan.parts,
     }
     stage["settings"][AS_MADE] = digest(plan.parts, ports)
-    return MadeStage(stage, made, kind), advance(place, kind, ports, made)
+    return MadeStage(stage, made, kind, plan.rail.nominal), advance(place, kind, ports, made)
 
 
 def advance(place: Place, kind: StageKind, ports: Mapping[str, str], made: Made) -> Place:

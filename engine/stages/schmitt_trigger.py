@@ -24,20 +24,22 @@ def _make(plan: Plan) -> Made:
     left, emitter, tap = plan.net("left"), plan.net("emitter"), plan.net("tap")
     volts = plan.rail.nominal
     upper, hysteresis = plan.share("threshold"), plan.share("hysteresis")
-    # With its input at 0 V the emitter stands at the upper threshold less V_BE above the base, in reverse.
+    # With its input at 0 V the emitter stands at the upper threshold less V_BE above its base, in reverse, and with a
+    # high input that of the second transistor is as far above the divider. Two diodes shift both thresholds alike.
     guarded = upper * plan.rail.max - V_BE > V_REVERSE
-    at_base = upper * volts + V_EARLY - (V_DIODE_LEAST if guarded else 0.0)
+    at_base = upper * volts + V_EARLY
+    junctions = V_BE + (V_DIODE_LEAST if guarded else 0.0)
     lower = at_base - hysteresis * volts - 2.0 * V_EARLY
-    if lower <= V_BE + 0.2:
+    if lower <= junctions + 0.2:
         raise plan.refused("hysteresis", f"{hysteresis:.3g} of {volts:.3g} V leaves no lower threshold; write less")
     current = _current(plan)
-    emitter_ohms = plan.resistor((at_base - V_BE) / current, emitter, RETURN, "emitter_resistor", tolerance="1 %")
+    emitter_ohms = plan.resistor((at_base - junctions) / current, emitter, RETURN, "emitter_resistor", tolerance="1 %")
     divider = DIVIDER_SHARE * current / plan.gain()
     output = sized(plan)
     bleed = min(IDLE / divider, output.bleed)
     # Lower threshold: V_L = k (V - V_BE,out - I_1 R_b), with the ratio k that gives the upper one.
     ratio = at_base / (volts - divider * bleed)
-    drawn = (lower - V_BE) / emitter_ohms
+    drawn = (lower - junctions) / emitter_ohms
     ohms = (volts - V_BE - lower / ratio) / drawn
     if ohms < 0.0:
         least = (at_base - 2.0 * V_EARLY - (volts - V_BE) * ratio) / volts
@@ -49,13 +51,17 @@ def _make(plan: Plan) -> Made:
     lower_ohms = at_base / divider
     plan.resistor((volts - at_base) / divider - bleed - ohms, left, tap, "divider_upper_resistor", tolerance="1 %")
     plan.resistor(lower_ohms, tap, RETURN, "divider_lower_resistor", tolerance="1 %")
+    second = tap
     if guarded:
         node = plan.net("base")
         plan.diode(signal, node, "base_diode")
         plan.resistor(BLEED, node, emitter, "base_emitter_resistor_trip_device")
         signal = node
+        second = plan.net("second")
+        plan.diode(tap, second, "second_base_diode")
+        plan.resistor(BLEED, second, emitter, "base_emitter_resistor_second_device")
     plan.transistor(left, signal, emitter, "trip_device")
-    plan.transistor(rail, tap, emitter, "second_device")
+    plan.transistor(rail, second, emitter, "second_device")
     return Made(output=Drive(Sense.LEVEL, drop=V_SATURATED))
 
 

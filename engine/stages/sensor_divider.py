@@ -6,7 +6,7 @@ from ..quantity import write
 from .kind import Drive, Json, Sense
 from .plan import Plan
 
-RAMP = 20.0  # s of the slow way to the trip point and beyond
+RAMP = 5.0  # s of the way to the trip point and beyond: slow against a trigger
 THRESHOLD = 0.5  # share of the rail where what follows does not say
 
 
@@ -28,19 +28,18 @@ def add_divider(plan: Plan, ohms: float, *, rising: bool) -> tuple[str, str, Dri
 
 
 def trip_sequence(subject: str, rest: str, beyond: str) -> Json:
-    """A sequence that brings a sensor slowly from rest beyond its trip point and back."""
+    """A sequence that brings a sensor slowly from rest beyond its trip point."""
     return {
         "events": [
             {"at": "0 s", "event": "connect supply", "rise": "20 ms"},
             {"at": "0 s", "event": "set", "part": subject, "to": rest},
             {"at": "1 s", "event": "ramp", "part": subject, "to": beyond, "for": write(RAMP, "s")},
-            {"at": write(2.0 + RAMP, "s"), "event": "ramp", "part": subject, "to": rest, "for": write(RAMP, "s")},
         ],
-        "ends": write(4.0 + 2.0 * RAMP, "s"),
+        "ends": write(2.0 + RAMP, "s"),
         "moments": {"standby": "900 ms"},
     }
 
 
 def trip_window(subject: str, low: str, high: str) -> Json:
     """The requirement that a sensor trips between two levels of its own quantity."""
-    return {"check": "trip_window", "of": subject, "sequence": "trip", "at": "{load} on", "min": low, "max": high}
+    return {"check": "trip_window", "of": subject, "sequence": "trip", "at": "{trips}", "min": low, "max": high}

@@ -34,7 +34,7 @@ def _make(plan: Plan) -> Made:
                 "check": "wet_lead",
                 "of": ref,
                 "sequence": "trip",
-                "at": "{load} on",
+                "at": "{trips}",
                 "insulation": plan.text("dry"),
             },
         ),
@@ -54,7 +54,7 @@ KIND = StageKind(
     ports=(QUIET_PORT, OUT_PORT, RETURN_PORT),
     settings=(
         Setting("wet", "ohm", "50k", "resistance at which it must trip"),
-        Setting("dry", "ohm", "500k", "resistance at which it must not"),
+        Setting("dry", "ohm", "1M", "resistance at which it must not"),
         Setting("held", "s", "2 s", "how long it is wet in the sequence"),
     ),
     make=_make,

@@ -163,3 +163,31 @@ def test_without_a_supply_nothing_can_be_sized() -> None:
 def test_a_made_design_survives_its_document() -> None:
     design = made(choice("entry"), CALL, PIEZO)
     assert Design.load(design.canonical()).content == design.content
+
+
+def test_what_starts_an_interval_stays_until_it_is_over() -> None:
+    # A light that returns after 2 s would end an interval of 10 s, which may last 14 s.
+    row = (
+        choice("light_front_end", held="2 s"),
+        choice("schmitt_trigger"),
+        choice("long_timer", mode="interval", time="10 s"),
+    )
+    events = made(*row, PIEZO).sequences["alarm"].events
+    assert [event.at for event in events] == ["0 s", "1 s", "16 s"]
+
+
+def test_what_the_supply_starts_ends_with_it() -> None:
+    events = made(choice("long_timer", time="10 s"), PIEZO).sequences["alarm"].events
+    assert [event.event for event in events] == ["connect supply", "disconnect supply"]
+
+
+def test_requirements_name_what_follows_the_stage() -> None:
+    design = made(choice("water_front_end", "water"), choice("schmitt_trigger", "over"), PIEZO)
+    assert {requirement.check: requirement.at for requirement in design.requirements} == {
+        "trip_window": "over.out above 6 V",
+        "wet_lead": "over.out above 6 V",
+    }
+    debounced = made(CALL, choice("debounce"), choice("complementary_latch"), PIEZO)
+    assert {requirement.of for requirement in debounced.requirements} == {"S1"}
+    wet = (choice("water_front_end"), choice("schmitt_trigger"), choice("debounce"), choice("complementary_latch"))
+    assert {requirement.check for requirement in made(*wet, PIEZO).requirements} == {"trip_window", "wet_lead"}

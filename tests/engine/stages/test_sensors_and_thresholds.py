@@ -57,7 +57,7 @@ def test_a_hysteresis_below_the_output_s_own_is_refused() -> None:
 
 def test_the_water_front_end_trips_between_wet_and_dry() -> None:
     # R = sqrt(50k x 500k) p/(1-p) = 158k x 0.4/0.6 = 105k.
-    design = made(choice("water_front_end", "water"), SCHMITT, PIEZO)
+    design = made(choice("water_front_end", "water", wet="50k", dry="500k"), SCHMITT, PIEZO)
     assert value(design, "water", "bridge_resistor") == pytest.approx(158.1e3 * 0.4 / 0.6, rel=0.01)
     for ohms, wet in (("50k", True), ("500k", False)):
         document = design.dump()
