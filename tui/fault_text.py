@@ -41,11 +41,19 @@ def fault_key(fault: FaultResult) -> str:
 
 def _row(fault: FaultResult, room: int) -> Line:
     said = fault.words + (f", {fault.detail}" if fault.detail else "")
+    mark, tone = mark_of(fault)
     return line(
-        Span(MARKS[fault.outcome] + " ", TONES[fault.outcome]),
+        Span(mark + " ", tone),
         Span(columns((_PART, _FAULT), (fault.part, fault.fault)) + " "),
-        Span(fit(said, room), TONES[fault.outcome] if fault.outcome != len(_DO) - 1 else ""),
+        Span(fit(said, room), "" if mark == "=" else tone),
     )
+
+
+def mark_of(fault: FaultResult) -> tuple[str, str]:
+    """Mark and tone of a fault: one that still gives an alarm passes only where nothing else differs either."""
+    if fault.outcome == len(_DO) - 1 and fault.detail:
+        return "!", "thin"
+    return MARKS[fault.outcome], TONES[fault.outcome]
 
 
 def fault_lines(fault: FaultResult) -> tuple[Line, Line]:

@@ -101,6 +101,8 @@ async def test_n_goes_to_the_next_outcome_and_round(with_faults: StagebookApp, f
         await settled(pilot)
         await pilot.press("home", "n")
         assert "R3 open: still alarms" in seen(pilot)
+        # It alarms otherwise than before: no plain pass.
+        assert next(line for line in shown(pilot) if " R3 " in line).startswith("> !")
         assert "for 12 s instead of 86 s" in shown(pilot)[-3]
         await pilot.press("n")
         assert "C4 open: silent" in seen(pilot)

@@ -5,7 +5,7 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from typing import TYPE_CHECKING
 
-from ..fault_text import MARKS, counts_words
+from ..fault_text import counts_words, mark_of
 from .printing import json_argument, print_json, print_table, print_words
 from .waiting import computable, prepare_solver, progress
 from .what import Subject, find, subject_arguments
@@ -44,7 +44,7 @@ def _print(subject: Subject, sheet: FaultSheet) -> None:
         print_words(f"note: {note}", 2)
     print()
     rows = [
-        (MARKS[fault.outcome], fault.part, fault.fault, fault.words + (f"\n{fault.detail}" if fault.detail else ""))
+        (mark_of(fault)[0], fault.part, fault.fault, fault.words + (f"\n{fault.detail}" if fault.detail else ""))
         for fault in sheet.faults
     ]
     print_table(("", "part", "fault", "outcome"), rows)
