@@ -184,9 +184,9 @@ class Program:
             assert running or len(self.raw) > before, f"ended without drawing {words}\n{self.text[after:][-3000:]}"
 
     def kill(self) -> None:
-        """As a power cut would; then reads what was drawn before."""
+        """As a power cut would, unless it has just ended by itself; then reads what was drawn before."""
         self.process.kill()
-        assert self.process.wait(PATIENCE) == -signal.SIGKILL
+        assert self.process.wait(PATIENCE) in (-signal.SIGKILL, 0)
         self.drain()
 
     def drain(self) -> None:
