@@ -50,10 +50,10 @@ class Line:
                     break
         return found
 
-    def press(self, keys: bytes) -> bytes:
-        """Sends keys in one packet; returns what came until the line was quiet."""
+    def press(self, keys: bytes, *, until: bytes = b"") -> bytes:
+        """Sends keys in one packet; returns what came until the line was quiet, at least until ``until``."""
         os.write(self.end, keys)
-        return self.read(QUIET)
+        return (self.read(30, until=until) if until else b"") + self.read(QUIET)
 
     def ended(self) -> int | None:
         """The exit status once the program has ended; None if it still runs after ten seconds."""
@@ -82,7 +82,7 @@ def line(tmp_path: Path) -> Iterator[Line]:
 
 
 def test_the_wire_is_quiet(line: Line) -> None:
-    line.press(b"\r")
+    line.press(b"\r", until=b"spread of 40 lanes")
     sizes = {key: len(line.press(key)) for key in (b"\x1b[C", b"\x1b[D", b"\x1b[B", b"\x1b[A", b"\t", b"4", b"7", b"k")}
     assert {key: size for key, size in sizes.items() if size > 1700} == {}
     assert line.read(2.0) == b""
@@ -99,8 +99,8 @@ def test_keys_that_arrive_in_one_packet_keep_their_order(line: Line) -> None:
 
 @pytest.mark.parametrize("number", [signal.SIGTERM, signal.SIGHUP])
 def test_a_polite_kill_gives_the_terminal_back(line: Line, number: signal.Signals) -> None:
-    line.press(b"\r")
-    line.press(b"100k\r")
+    line.press(b"\r", until=b"draft on r1")
+    line.press(b"100k\r", until=b", 1 edit")
     os.kill(line.process, number)
     said = line.read(5, until=b"\x1b[?1049l")
     assert b"\x1b[?1049l" in said
@@ -111,8 +111,8 @@ def test_a_polite_kill_gives_the_terminal_back(line: Line, number: signal.Signal
 
 
 def test_a_dropped_line_loses_nothing(line: Line) -> None:
-    line.press(b"\r")
-    line.press(b"100k\r")
+    line.press(b"\r", until=b"draft on r1")
+    line.press(b"100k\r", until=b", 1 edit")
     os.close(line.end)
     began = time.monotonic()
     while time.monotonic() - began < 10 and not os.waitpid(line.process, os.WNOHANG)[0]:
