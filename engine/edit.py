@@ -161,6 +161,16 @@ def with_requirement(design: Design, requirement: Mapping[str, Any]) -> Design:
     return _edited(design, change)
 
 
+def with_requirement_at(design: Design, index: int, requirement: Mapping[str, Any]) -> Design:
+    """The requirement at ``index`` (from 0) written anew in its place."""
+    without_requirement(design, index)
+
+    def change(document: dict[str, Any]) -> None:
+        document["requirements"][index] = dict(requirement)
+
+    return _edited(design, change)
+
+
 def without_requirement(design: Design, index: int) -> Design:
     """The requirement at ``index`` (from 0) taken out."""
     if not 0 <= index < len(design.requirements):

@@ -73,6 +73,7 @@ ACTIONS: tuple[Action, ...] = (
     ),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
     Action("bench", "conditions", "d", "d", "conditions", "supply, ambient and source resistance of the design"),
+    Action("bench", "requirements", "R", "R", "requirements", "windows, orders, levels: what is wanted of the design"),
     Action("bench", "tables", "t", "t", "factors", "derating factors and required margins of the design, with reasons"),
     Action("bench", "add_stage", "A", "A", "add stage", "a stage of the catalogue, or a free one, at the end"),
     Action("bench", "remove_stage", "X", "X", "remove stage", "remove the chosen stage with its parts (asks first)"),

@@ -72,6 +72,7 @@ CHECKS = (
         required=0.3,
         formula="D = voltage at which the timer runs out, C = rail / (1 + R G_leak), the threshold part unloaded",
         asks=asks,
+        reads={"of": "C5", "from": "begins", "to": "LS1 on"},
         worst="hot, low supply, leaky capacitors",
         by_hand="V_th (1 + R G_leak) / rail",
         accuracy=0.02,

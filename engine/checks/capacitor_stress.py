@@ -132,6 +132,7 @@ CHECKS = (
         required=0.0,
         formula="D = largest reverse voltage in all sequences, C = 1 V, or reverse_voltage of a requirement",
         asks=reverse_asks,
+        reads={"of": "C5", "reverse_voltage": "1 V"},
         worst="high supply",
     ),
     Check(

@@ -106,6 +106,7 @@ CHECKS = (
         required=0.0,
         formula="D = self-discharge x capacity + load of the requirement, C = current into the battery in stand-by",
         asks=upkeep_asks,
+        reads={"of": "G1", "load": "1 mA"},
         worst="low supply, full battery",
         by_hand="what it must make up for over (supply - diode - battery voltage) / R_charge",
         accuracy=0.1,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
@@ -102,7 +102,8 @@ class Check:
 
     ``source`` says where the customary required margin comes from, ``worst`` the usual worst conditions. ``by_hand`` is
     the hand formula in words; it agrees with the simulation within ``accuracy`` of the larger of demand and capability.
-    Where no accuracy is given it is a bound and not a cross-check.
+    Where no accuracy is given it is a bound and not a cross-check. ``reads`` are the fields that it reads of a
+    requirement of its own, each with an example.
     """
 
     number: int
@@ -115,6 +116,7 @@ class Check:
     words: dict[str, str] = field(default_factory=dict)
     source: str = COMMON_PRACTICE
     worst: str = ""
+    reads: Mapping[str, str] = field(default_factory=dict)
     by_hand: str = ""
     accuracy: float | None = None
 

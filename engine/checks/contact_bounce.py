@@ -159,6 +159,7 @@ CHECKS = (
         required=0.3,
         formula="D = longest bounce of the contact, C = longest burst of bounces that raises no alarm",
         asks=bounce_asks,
+        reads={"of": "S1", "max": "2 ms", "times": "4", "settle": "0.1 s"},
         words={
             "missing": "stand-by never came",
             "always": "there is an alarm with the shortest burst, or by itself",
@@ -174,6 +175,7 @@ CHECKS = (
         required=0.3,
         formula="D = shortest event of the contact that raises the alarm, C = shortest true event",
         asks=acceptance_asks,
+        reads={"of": "S1", "min": "200 ms", "times": "4", "settle": "0.1 s"},
         words={
             "missing": "stand-by never came",
             "always": "never fired: not by an event of thirty times that length either",

@@ -119,6 +119,7 @@ CHECKS = (
         required=0.1,
         formula="x = time from one event to the other, m = min(U - x, x - L) / ((U - L)/2)",
         asks=asks,
+        reads={"of": "LS1", "from": "LS1 on", "to": "LS1 off", "min": "60 s", "max": "120 s"},
         worst="hot, leaky capacitors; cold, conditioned capacitors",
         by_hand="R C ln(V_inf / (V_inf - V_th)) with the rail and threshold seen, the threshold part unloaded",
         accuracy=0.2,

@@ -160,6 +160,7 @@ CHECKS = (
         required=0.5,
         formula="D = latch current at which it lets go when the supply is lowered, C = latch current while it holds",
         asks=hold_asks,
+        reads={"of": "Q4", "settle": "0.2 s"},
         worst="cold, low supply, weak h_FE",
         by_hand="(V_BE,N / R_N + V_BE,P / R_P) / latch current, V_BE at 0.1 mA",
         accuracy=0.2,

@@ -160,6 +160,7 @@ CHECKS = (
         required=0.5,
         formula="D = voltage across it when dry / insulation when wet, C = current through it that trips",
         asks=wet_asks,
+        reads={"of": "B1", "insulation": "2M", "at": "LS1 on", "trip_level": "3 V"},
         worst="hot, high supply, strong h_FE",
         by_hand="(supply / insulation) / (V_BE / R_BE of the trip device, or (supply - trip level) / R_pull)",
         accuracy=0.3,

@@ -113,6 +113,7 @@ CHECKS = (
         required=0.5,
         formula="D = how far the pulse moves the net behind the input filter, C = how far it may before an alarm comes",
         asks=asks,
+        reads={"of": "line", "settle": "0.1 s"},
         words={
             "missing": "the pulse never came",
             "always": "a hundredth of the pulse raises an alarm",

@@ -57,6 +57,7 @@ CHECKS = (
         required=0.5,
         formula="D = base-emitter voltage in stand-by, C = the base-emitter voltage at the permitted off-current",
         asks=asks,
+        reads={"of": "Q8", "off_current": "1 uA"},
         worst="hot",
         by_hand="I_CBO R_BE / V_BE at the permitted current: one transistor alone, without what feeds its base",
         accuracy=0.2,

@@ -164,6 +164,7 @@ CHECKS = (
         required=0.2,
         formula="D = shortest rest after which the next alarm comes as it should, C = time allowed",
         asks=rearm_asks,
+        reads={"of": "LS1", "from": "LS1 off", "max": "10 s"},
         words={
             "missing": "the alarm never ended",
             "always": "not ready again after four times the time allowed",
@@ -178,6 +179,7 @@ CHECKS = (
         required=0.2,
         formula="D = difference of the second alarm's length to the first, C = difference allowed",
         asks=repeat_asks,
+        reads={"of": "LS1", "max": "10 %"},
         words={
             "never": "the first alarm never came to an end",
             "once": "the second alarm never came",

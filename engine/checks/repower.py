@@ -100,6 +100,7 @@ CHECKS = (
         required=0.2,
         formula="D = slew of the latch's supply as the supply comes, C = largest that does not trip it from 1 V or 2 V",
         asks=asks,
+        reads={"of": "Q4"},
         words={
             "missing": "stand-by never came",
             "always": "trips however slowly the supply comes back",

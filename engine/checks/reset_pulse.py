@@ -103,6 +103,7 @@ CHECKS = (
         required=0.5,
         formula="D = shortest event of the contact that ends the alarm, C = shortest true reset",
         asks=asks,
+        reads={"of": "S2", "min": "50 ms", "settle": "0.1 s"},
         words={
             "missing": "the latch was never set",
             "always": "did not let go: not by a reset of thirty times that length either",

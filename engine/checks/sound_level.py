@@ -81,6 +81,7 @@ CHECKS = (
         required=0.3,
         formula="m = (L - D) / 10 dB, L = level at 1 m + 20 log10(V / V_rated) - 20 log10(distance / 1 m)",
         asks=asks,
+        reads={"of": "LS1", "min": "80 dB", "distance": "1 m"},
         worst="low supply",
         by_hand="the same at the rated voltage",
         accuracy=0.5,

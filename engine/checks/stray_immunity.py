@@ -151,6 +151,7 @@ CHECKS = (
         worst="hot, high supply",
         by_hand="1 - D / (C_base V_BE), for a pulse that is over at once",
         asks=asks,
+        reads={"of": "base", "charge": "20 pC", "width": "100 ns", "settle": "0.1 s"},
         words={
             "missing": "stand-by never came",
             "always": "trips at a thousandth of that charge or less",

@@ -168,6 +168,7 @@ CHECKS = (
         required=0.3,
         formula="C = nominal gap between a level and a threshold, D = what spread and drift take of it, worst of four",
         asks=asks,
+        reads={"of": "line", "low": "35 %", "high": "65 %", "drift": "3 %", "rail": "supply"},
         worst="longest and leakiest line, thresholds at both ends of their drift",
         by_hand="rail / (1 + R_pull (1/(R_end + R_line) + 1/R_leak)) and the same shorted and open",
         accuracy=0.05,

@@ -125,6 +125,7 @@ CHECKS = (
         required=0.0,
         formula="D = largest voltage across the clamp in a surge, C = lowest derated rating on the clamped net",
         asks=voltage_asks,
+        reads={"of": "Q1", "rating": "45 V"},
         worst="high clamping voltage, stiff source",
         by_hand="1 - clamping voltage at the rated pulse current / C",
     ),

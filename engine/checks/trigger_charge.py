@@ -166,6 +166,7 @@ CHECKS = (
         required=0.5,
         formula="D = charge of the smallest trigger capacitor that fires the latch, C = charge of the one there is",
         asks=asks,
+        reads={"of": "C2", "from": "LS1 on", "settle": "0.1 s"},
         words={
             "missing": "the event that fires the latch never came",
             "always": "never fired: not with thirty times the capacitor either",

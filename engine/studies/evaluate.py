@@ -30,6 +30,7 @@ def asks_of(circuit: Circuit) -> tuple[Ask, ...]:
     """Everything that the catalogue asks of a design, in the order of the catalogue. Raises CircuitError where the
     design sets a margin or a factor that there is not."""
     _inspect_tables(circuit.design)
+    _inspect_requirements(circuit.design)
     view = View(circuit.design, circuit)
     found: dict[str, Ask] = {}
     for check in catalogue().values():
@@ -45,6 +46,23 @@ def _inspect_tables(design: Design) -> None:
                 near = get_close_matches(name, known, 1, 0.5)
                 meant = f"'{near[0]}'" if near else f"one of {', '.join(sorted(known))}"
                 raise CircuitError(f"field {table}: there is no '{name}'; write {meant}")
+
+
+def _inspect_requirements(design: Design) -> None:
+    """Refuse a requirement that no check reads, and a field that its check does not read."""
+    for number, requirement in enumerate(design.requirements, 1):
+        where = f"requirement {number} ({requirement.check})"
+        check = catalogue().get(requirement.check)
+        if check is None:
+            near = get_close_matches(requirement.check, catalogue(), 1, 0.5)
+            meant = f"'{near[0]}'" if near else f"one of {', '.join(catalogue())}"
+            raise CircuitError(f"{where}, field check: there is no check '{requirement.check}'; write {meant}")
+        for field in requirement.extras:
+            if field not in check.reads:
+                near = get_close_matches(field, check.reads, 1, 0.6)
+                known = ", ".join(check.reads) or "no fields of its own"
+                meant = f"write '{near[0]}'" if near else f"leave it out (it reads {known})"
+                raise CircuitError(f"{where}, field {field}: the check does not read it; {meant}")
 
 
 def _rows(asks: Sequence[Ask]) -> dict[str, list[Row]]:

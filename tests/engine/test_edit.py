@@ -204,3 +204,14 @@ def test_an_edit_that_makes_no_document_is_refused_in_one_line(refused: Any, exp
 def test_taking_a_part_out_and_putting_it_back_keeps_the_part(ref: str) -> None:
     part = copy.deepcopy(dumped(design(), ref))
     assert edit.with_part(edit.without_part(design(), ref), "driver", part).part(ref) == design().part(ref)
+
+
+def test_a_requirement_is_written_anew_in_its_place() -> None:
+    two = design()
+    for subject in ("R7", "R8"):
+        two = edit.with_requirement(two, {"check": "order", "of": subject})
+    at = next(n for n, each in enumerate(two.requirements) if each.of == "R7")
+    after = edit.with_requirement_at(two, at, {"check": "order", "of": "Q3", "from": "LS1 on"})
+    assert [each.of for each in after.requirements][at : at + 2] == ["Q3", "R8"]
+    with pytest.raises(DesignError, match="there is no requirement 99"):
+        edit.with_requirement_at(two, 98, {"check": "order"})

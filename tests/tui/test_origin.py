@@ -113,3 +113,32 @@ def test_a_margin_that_moved_since_is_told() -> None:
     assert not [name for name, *_ in explanation_rows(old, explanation(old.id, 0.5)) if name == "here and now"]
     (moved,) = [text for name, text, _ in explanation_rows(old, explanation(old.id, 0.3)) if name == "here and now"]
     assert moved.startswith("+30 %, computed just now")
+
+
+async def test_what_is_wanted_is_written_changed_and_taken_out(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await pilot.press("enter")
+        await settled(pilot)
+        bench = app.screen
+        await pilot.press("R")
+        names = [row.key for row in app.screen.query_one(RowList).rows]
+        assert names[0] == "new latch_hold" or names[0].startswith("new ")
+        await pilot.press(*["down"] * names.index("new sound_level"), "enter")
+        await pilot.press(*"R7", "down", *"80 dB", "down", *"2 m", "enter")
+        await until(pilot, lambda: app.screen is bench)
+        (wanted,) = shelf.draft("flood").design.requirements
+        assert (wanted.check, wanted.of, wanted.min, dict(wanted.extras)) == (
+            "sound_level",
+            "R7",
+            "80 dB",
+            {"distance": "2 m"},
+        )
+        await pilot.press("R", "enter", "down", *["backspace"] * 5, *"85 dB", "enter")
+        await until(pilot, lambda: app.screen is bench)
+        (changed,) = shelf.draft("flood").design.requirements
+        assert (changed.min, dict(changed.extras)) == ("85 dB", {"distance": "2 m"})
+        await pilot.press(
+            "R", "enter", *["backspace"] * 2, "down", *["backspace"] * 5, "down", *["backspace"] * 3, "enter"
+        )
+        await until(pilot, lambda: app.screen is bench)
+        assert shelf.draft("flood").design.requirements == ()

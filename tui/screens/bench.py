@@ -33,6 +33,7 @@ from .history import HistoryScreen
 from .immunity import ImmunityScreen
 from .origin import OriginPage
 from .part_data import PartDataScreen
+from .requirement_questions import ask_requirement
 from .saving import Saving
 from .stage_page import StagePage
 from .stage_questions import ask_stage
@@ -177,6 +178,10 @@ class BenchScreen(BenchView):
     def action_conditions(self) -> None:
         """Supply, ambient, source resistance."""
         ask_condition(self.app, self.design, self._put)
+
+    def action_requirements(self) -> None:
+        """What is wanted of the design."""
+        ask_requirement(self.app, self.design, self._put)
 
     def action_tables(self) -> None:
         """Derating factors and required margins."""

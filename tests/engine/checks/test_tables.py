@@ -80,3 +80,16 @@ def test_of_an_overrun_the_demand_counts() -> None:
     found = replace(margin(heated(), "resistor_power", "R1"), margin=-9.0, hand=-9.8, accuracy=0.1)
     assert not found.disagrees
     assert replace(found, hand=-10.5).disagrees
+
+
+@pytest.mark.parametrize(
+    ("requirement", "words"),
+    [
+        ({"check": "sound_levle", "of": "R1"}, "there is no check 'sound_levle'; write 'sound_level'"),
+        ({"check": "duration", "of": "R1", "distence": "1 m"}, "the check does not read it; leave it out"),
+        ({"check": "sound_level", "of": "R1", "min": "80 dB", "distence": "1 m"}, "does not read it; write 'distance'"),
+    ],
+)
+def test_a_requirement_that_nothing_reads_is_refused(requirement: dict[str, str], words: str) -> None:
+    with pytest.raises(CircuitError, match=words):
+        margin(heated(requirements=[requirement]), "resistor_power", "R1")
