@@ -28,4 +28,5 @@ FACTORS: Final[Mapping[str, Factor]] = {
     "ripple_current": Factor(1.0, "ripple current rating of capacitors"),
     "resistor_power": Factor(0.6, "power rating of resistors at the ambient temperature"),
     "fuse": Factor(0.75, "rated current of fuses"),
+    "fuse_pulse": Factor(0.5, "melting I2t of fuses, for pulses that come again"),
 }

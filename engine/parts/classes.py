@@ -180,6 +180,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "self_discharge": "3 %/month",
         },
     },
+    "fuse": {"1 A slow": {"rated_current": "1 A", "melting": "2 A2s", "resistance": "0.1 ohm"}},
     "thermistor": {"ntc": {"beta": "3950 K"}},
     "light_resistor": {"ldr": {"gamma": "0.7"}},
     "inductor": {"choke": {"inductance": "1 mH", "resistance": "1.5 ohm", "i_max": "0.5 A"}},

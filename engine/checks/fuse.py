@@ -1,0 +1,150 @@
+"""Check 26: does a fuse carry its load for ever and its inrush without blowing, and does it blow in a fault?"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+
+import numpy as np
+
+from ..design.part import Part, Stage
+from ..parts.physics import REFERENCE
+from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
+from ..primitives.signals import START, Anchor, Row, integral, level
+from .check import Ask, Check, Judged, ratio, unknown
+from .seen import Seen
+from .view import View
+
+BLOWS = 2.0  # times its rated current, at which a fuse blows within minutes, common practice, from memory
+DRIFT = 0.003  # 1/K by which the rated current of a slow fuse falls above 25 C, from memory
+PULSE = 0.1  # s from the beginning of an inrush in which its I2t is counted
+BEFORE = 1e-3  # s before a load counts as on, in which its inrush began
+
+Judge = Callable[[Seen], Judged]
+
+
+def _asked(
+    check: Check, view: View, key: str, unit: str, make: Callable[[Stage, Part, str, float], Ask]
+) -> Iterator[Ask]:
+    """One ask for every fuse; UNKNOWN where the datum ``key`` is missing."""
+    for stage, part in view.parts_of("fuse"):
+        requirement = view.requirement(check.slug, part.ref, stage.name)
+        required = view.required(check.slug, check.required, requirement)
+        sequence = view.sequence(requirement)
+        if view.datum(part, key, unit) is None:
+            yield unknown(check, stage.name, part.ref, sequence, required, f"{key} of {part.ref}")
+        else:
+            yield make(stage, part, sequence, required)
+
+
+def _rated(view: View, part: Part, lanes: Lanes) -> np.ndarray:
+    """Rated current at ambient temperature."""
+    rated, drift = view.datum(part, "rated_current", "A"), view.datum(part, "rating_drift", "1/K")
+    assert rated is not None
+    per_kelvin = DRIFT if drift is None else drift.typical
+    return np.asarray(rated.low * (1.0 - per_kelvin * np.maximum(0.0, lanes.ambient - REFERENCE)))
+
+
+def load_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every fuse: what it carries at the moments of the sequence."""
+
+    def make(stage: Stage, part: Part, sequence: str, required: float) -> Ask:
+        factor = view.derating("fuse", view.requirement(check.slug, part.ref, stage.name))
+        moments = [view.anchor(name, sequence) for name in view.design.sequences[sequence].moments]
+        instants = moments or [Anchor(0.5 * view.ends(sequence))]
+        rows = tuple(level(view.bench(part.ref).currents["a"], at) for at in instants)
+
+        load = view.load(stage)
+        draw = None if load is None else view.bench(load.ref).draw
+
+        def judge(seen: Seen) -> Judged:
+            found = np.abs(np.array([seen.value(row, sequence) for row in rows]))
+            never = np.asarray(np.isnan(found).all(axis=0))
+            carried = np.max(np.nan_to_num(found), axis=0)
+            allowed = factor * _rated(view, part, seen.lanes)
+            hand = None
+            if draw is not None and SUPPLY in seen.lanes:
+                hand = 1.0 - draw(seen.lanes, seen.lanes[SUPPLY]) / np.where(allowed > 0.0, allowed, np.nan)
+            return ratio(carried, allowed, [(never, check.words["never"])], hand)
+
+        return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
+
+    yield from _asked(check, view, "rated_current", "A", make)
+
+
+def pulse_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every fuse: the I2t of connecting the supply and of the load's inrush."""
+
+    def make(stage: Stage, part: Part, sequence: str, required: float) -> Ask:
+        melting, power = view.datum(part, "melting", "A2s"), view.bench(part.ref).power
+        assert melting is not None
+        assert power is not None
+        allowed = view.derating("fuse_pulse", view.requirement(check.slug, part.ref, stage.name)) * melting.low
+        rows: list[Row] = [integral(power, START, Anchor(PULSE))]
+        load = view.load(stage)
+        if load is not None:
+            on = view.event(f"{load.ref} on")
+            rows.append(integral(power, Anchor(0.0, on), Anchor(PULSE, on)))
+
+        def judge(seen: Seen) -> Judged:
+            joules = np.nan_to_num(np.array([seen.value(row, name) for row in rows for name in names])).max(axis=0)
+            return ratio(joules / seen.lanes[part.ref, "resistance"], np.full(seen.lanes.count, allowed))
+
+        names = tuple(view.design.sequences)
+        return Ask(check, stage.name, part.ref, names, required, judge, tuple(rows))
+
+    yield from _asked(check, view, "melting", "A2s", make)
+
+
+def fault_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every fuse: what flows when all behind it is shorted."""
+
+    def make(stage: Stage, part: Part, sequence: str, required: float) -> Ask:
+        def judge(seen: Seen) -> Judged:
+            lanes = seen.lanes
+            source = lanes[SOURCE_RESISTANCE] if SOURCE_RESISTANCE in lanes else np.zeros(lanes.count)
+            current = lanes[SUPPLY] / (source + lanes[part.ref, "resistance"])
+            return ratio(BLOWS * _rated(view, part, lanes), current)
+
+        if view.design.conditions.supply is None:
+            return unknown(check, stage.name, part.ref, sequence, required, "supply in the conditions")
+        probe = level(view.bench(part.ref).currents["a"], START)
+        return Ask(check, stage.name, part.ref, (sequence,), required, judge, (probe,))
+
+    yield from _asked(check, view, "rated_current", "A", make)
+
+
+CHECKS = (
+    Check(
+        number=26,
+        slug="fuse_load",
+        title="fuse load",
+        unit="A",
+        required=0.0,
+        formula="D = largest current at the moments of the sequence, C = derating x rated current at the temperature",
+        asks=load_asks,
+        worst="hot, high supply",
+        by_hand="current of the load at the whole supply",
+        accuracy=0.2,
+        words={"never": "none of the moments at which its current is read ever came"},
+    ),
+    Check(
+        number=26,
+        slug="fuse_pulse",
+        title="fuse pulse",
+        unit="A2s",
+        required=0.0,
+        formula="D = I2t within 0.1 s of the supply or the load coming on, C = derating x melting I2t",
+        asks=pulse_asks,
+        worst="high supply, stiff source",
+    ),
+    Check(
+        number=26,
+        slug="fuse_fault",
+        title="fuse in a fault",
+        unit="A",
+        required=0.0,
+        formula="D = twice the rated current, C = supply / (source resistance + fuse): what a short behind it draws",
+        asks=fault_asks,
+        worst="low supply, soft source, cold",
+    ),
+)
