@@ -38,7 +38,7 @@ def is_locked(file: Path) -> bool:
     if not _HAS_LOCKS:
         return False
     try:
-        handle = os.open(file, os.O_RDONLY)
+        handle = os.open(file, os.O_RDONLY | os.O_NONBLOCK)  # a pipe of that name would keep us waiting
     except OSError:
         return False
     try:
@@ -103,7 +103,8 @@ class Presence:
 
 def is_present(store: Path, name: str) -> bool:
     """Whether the process whose presence at ``store`` has this name still lives."""
-    return bool(name) and is_locked(_file(store.resolve(), name))
+    # The name comes out of a file that anybody may have made: it leads nowhere else.
+    return name.isalnum() and is_locked(_file(store.resolve(), name))
 
 
 def _file(store: Path, name: str) -> Path:

@@ -2,7 +2,10 @@
 
 from __future__ import annotations
 
+import os
+import sqlite3
 from collections.abc import Callable
+from contextlib import closing
 from pathlib import Path
 
 import pytest
@@ -268,3 +271,18 @@ def test_two_processes_editing_at_once_lose_no_update(flood: Store, child: Calla
         assert draft.design.part(other).value == before
     assert sorted(labels) == sorted(f"{ref} {number}" for ref in processes for number in range(1, 41))
     assert verify(flood) == []
+
+
+@pytest.mark.skipif(not hasattr(os, "mkfifo"), reason="named pipes are of POSIX systems")
+@pytest.mark.parametrize("seat", ["/../pipe", "pipe", "\0", "", "\u00e9" * 300])
+def test_a_store_with_a_foreign_seat_hinders_nobody(path: Path, flood: Store, seat: str) -> None:
+    flood.sit_down("flood")
+    flood.close()
+    os.mkfifo(path.parent / "pipe")
+    os.mkfifo(path.parent / f"{path.name}-sitting-pipe")
+    with closing(sqlite3.connect(path)) as raw:
+        raw.execute("UPDATE sitting SET closed = 0, seat = ?", (seat,))
+        raw.commit()
+    with Store.open(path) as store:
+        assert store.sitting("flood") is None
+        assert store.sit_down("flood").edits == 0
