@@ -196,7 +196,7 @@ class Program:
             before = len(self.raw)
             self.read()
 
-    def ended(self, seconds: float = 15.0) -> int:
+    def ended(self, seconds: float = 30.0) -> int:
         """The exit status; what is drawn meanwhile is read."""
         ends = time.monotonic() + seconds
         while (status := self.process.poll()) is None:
