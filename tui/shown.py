@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import json
+import re
 import unicodedata
 from collections.abc import Sequence
 from dataclasses import dataclass
 from math import floor
+from typing import Any
 
 from rich.cells import cell_len, set_cell_size
 
@@ -53,6 +56,26 @@ def visible(text: str) -> str:
     if text.isprintable() and text.isascii():
         return text
     return "".join(map(_visible_character, text))
+
+
+def json_text(value: Any, *, ascii_only: bool = False) -> str:
+    """The value as indented JSON in which every character that :func:`visible` would write out is an escape.
+
+    Control characters beyond those that JSON itself forbids (DEL, the C1 set) steer terminals too. Numbers are finite.
+    """
+    return _NOT_PLAIN.sub(_escaped, json.dumps(value, indent=2, ensure_ascii=ascii_only, allow_nan=False))
+
+
+_NOT_PLAIN = re.compile(r"[^\n -~]")
+
+
+def _escaped(found: re.Match[str]) -> str:
+    character = found[0]
+    if _visible_character(character) == character:
+        return character
+    # JSON writes a character beyond the first 65,536 as its two halves in UTF-16 (RFC 8259, section 7).
+    halves = character.encode("utf-16-be", "surrogatepass").hex()
+    return "".join(f"\\u{halves[at : at + 4]}" for at in range(0, len(halves), 4))
 
 
 def _visible_character(character: str) -> str:

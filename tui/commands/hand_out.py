@@ -2,22 +2,26 @@
 
 from __future__ import annotations
 
-import json
 from argparse import ArgumentParser, Namespace
+from pathlib import Path
 
-from .out_file import write_file
+from ..shown import json_text, visible
+from .out_file import file_name, write_file
 from .what import find, subject_arguments
 
 
 def arguments(parser: ArgumentParser) -> None:
     """Declare WHAT, which of its states, and FILE."""
     subject_arguments(parser)
-    parser.add_argument("file", metavar="FILE", help="where to write the document")
+    parser.add_argument("file", metavar="FILE", help="where to write the document: a file, or a folder")
 
 
 def run(asked: Namespace) -> int:
-    """Write the document with its texts as typed."""
+    """Write the document with its texts as typed; what no screen shows is escaped, as JSON allows."""
     subject = find(asked)
-    document = json.dumps(subject.design.dump(), indent=2, ensure_ascii=False) + "\n"
-    write_file(asked.file, document.encode(), subject.file)
+    folder = asked.file and Path(asked.file).is_dir()
+    file = str(Path(asked.file) / file_name(subject.title, ".json")) if folder else asked.file
+    write_file(file, f"{json_text(subject.design.dump())}\n".encode(), subject.file)
+    if folder:
+        print(f"{visible(subject.title)} is written to {visible(file)}")
     return 0

@@ -3,12 +3,17 @@
 from __future__ import annotations
 
 import os
+import re
 import shutil
 from pathlib import Path
 
+from ..shown import visible
 from .refusal import CommandRefused
 
 _DATABASE = b"SQLite format 3\0"
+LONGEST_NAME = 100
+"""Bytes of a file name that is made of a design's; file systems take 255."""
+_DEVICE = re.compile("(con|prn|aux|nul|com[0-9]|lpt[0-9])", re.IGNORECASE)
 
 
 def check_target(path: str, source: str | None = None) -> None:
@@ -43,6 +48,27 @@ def write_file(path: str, content: bytes, source: str | None = None) -> None:
             _replace(Path(path).resolve(), content)
     except OSError as error:
         raise _refusal(path, error) from error
+
+
+def file_name(name: str, ending: str) -> str:
+    """A file name made of a design's name: it has no folder in it, is hidden nowhere, and means no device anywhere.
+
+    All but letters, digits, spaces, ``-`` and ``_`` becomes ``_``. The names of devices are those that Windows keeps
+    for itself ("Naming Files, Paths, and Namespaces", Microsoft Learn).
+    """
+    plain = "".join(c if c.isalpha() or c.isdecimal() or c in "-_ " else "_" for c in name).strip(" ")
+    while len(plain.encode()) > LONGEST_NAME:
+        plain = plain[:-1]
+    return f"{'_' if not plain or plain.startswith('-') or _DEVICE.fullmatch(plain) else ''}{plain}{ending}"
+
+
+def cell(text: str) -> str:
+    """A text as a cell of a CSV file: visible, and with a ``'`` before what a spreadsheet would run as a formula.
+
+    The characters are those of OWASP, "CSV Injection".
+    """
+    shown = visible(text)
+    return f"'{shown}" if text.lstrip()[:1] in ("=", "+", "-", "@", "\uff1d", "\uff0b", "\uff0d", "\uff20") else shown
 
 
 def _is_device(named: Path) -> bool:

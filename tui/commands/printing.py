@@ -3,14 +3,13 @@
 from __future__ import annotations
 
 import codecs
-import json
 import sys
 from argparse import ArgumentParser
 from collections.abc import Mapping, Sequence
 from textwrap import wrap
 from typing import Any
 
-from ..shown import visible
+from ..shown import json_text, visible
 
 WIDTH = 80
 
@@ -21,9 +20,9 @@ def json_argument(parser: ArgumentParser) -> None:
 
 
 def print_json(value: Mapping[str, Any]) -> None:
-    """One JSON object on standard output. Numbers are finite; texts are escaped where the output is not UTF-8."""
+    """One JSON object on standard output; what could steer the terminal is escaped, all but ASCII if not in UTF-8."""
     plain = codecs.lookup(sys.stdout.encoding or "ascii").name != "utf-8"
-    print(json.dumps(value, indent=2, ensure_ascii=plain, allow_nan=False))
+    print(json_text(value, ascii_only=plain))
 
 
 def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: frozenset[int] = frozenset()) -> None:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from argparse import ArgumentParser, Namespace
 
+from ..shown import visible
 from .what import load_file, open_store, shelf_arguments
 
 
@@ -19,5 +20,5 @@ def run(asked: Namespace) -> int:
     design = load_file(asked.file)
     with open_store(asked) as store:
         draft = store.create(design.name if asked.name is None else asked.name, design)
-    print(f"{draft.name} is on the shelf, as a draft without a revision yet")
+    print(f"{visible(draft.name)} is on the shelf, as a draft without a revision yet")
     return 0

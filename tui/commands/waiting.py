@@ -8,6 +8,7 @@ from contextlib import contextmanager
 from time import monotonic
 
 from ...engine.design.document import Design
+from ..shown import visible
 from .refusal import CommandRefused
 
 _SECONDS_BETWEEN = 0.5
@@ -68,4 +69,4 @@ def progress(words: str) -> Iterator[Callable[[int, int], None]]:
 
 
 def _say(words: str) -> None:
-    print(f"stagebook: {words}", file=sys.stderr, flush=True)
+    print(f"stagebook: {visible(words)}", file=sys.stderr, flush=True)

@@ -9,7 +9,7 @@ from argparse import ArgumentParser, ArgumentTypeError, Namespace
 
 from ...engine.errors import QuantityError
 from ...engine.quantity import read
-from .out_file import check_target, write_file
+from .out_file import cell, check_target, write_file
 from .waiting import prepare_solver
 from .what import Subject, find, subject_arguments
 
@@ -38,7 +38,7 @@ def run(asked: Namespace) -> int:
     found = waves(subject.design, asked.sequence, nets, at=asked.at, relative=asked.rtol)
     text = io.StringIO()
     table = csv.writer(text, lineterminator="\n")
-    table.writerow(("time", *found.nets))
+    table.writerow(("time", *map(cell, found.nets)))
     for time, row in zip(found.time, found.values, strict=True):
         table.writerow([f"{number:.17g}" for number in (time, *row)])
     write_file(asked.csv, text.getvalue().encode(), subject.file)

@@ -20,8 +20,12 @@ class TextLine(Input):
     """A line of text to write in, whose cursor does not blink."""
 
     def __init__(self, value: str = "", placeholder: str = "", id: str | None = None) -> None:
-        super().__init__(visible(value), placeholder=placeholder, id=id, compact=True)
+        super().__init__(visible(value), placeholder=visible(placeholder), id=id, compact=True)
         self.cursor_blink = False
+
+    def replace(self, text: str, start: int, end: int) -> None:
+        """Put text in: what is typed and what is pasted. A paste may hold characters that steer the terminal."""
+        super().replace(visible(text), start, end)
 
 
 class ValueEntry(Horizontal):
