@@ -59,7 +59,8 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
         if sounding is not None and alarm_time > 0.0:
             charge = charge + seen.value(sounding, sequence) * alarm_time
             outcomes.append((~seen.seen(sounding, sequence), check.words["never"]))
-        return ratio(charge, np.full(seen.lanes.count, usable), outcomes, 1.0 - charge / usable)
+        by_hand = 1.0 - charge / usable if usable > 0.0 else None
+        return ratio(charge, np.full(seen.lanes.count, usable), outcomes, by_hand)
 
     rows = (standby,) if sounding is None else (standby, sounding)
     return Ask(check, stage, subject, (sequence,), required, judge, rows)

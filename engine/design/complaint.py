@@ -6,7 +6,7 @@ import json
 from collections.abc import Iterator, Mapping, Sequence
 from difflib import get_close_matches
 from types import UnionType
-from typing import Annotated, Any, Literal, Union, get_args, get_origin
+from typing import Annotated, Any, Final, Literal, Union, get_args, get_origin
 
 from pydantic import BaseModel, ValidationError
 from pydantic.fields import FieldInfo
@@ -15,6 +15,8 @@ from pydantic_core import ErrorDetails
 from .clause import REMEDIES
 
 Loc = tuple[int | str, ...]
+LONGEST: Final = 600
+"""Characters of a complaint; what the document holds is repeated in it."""
 
 
 def complaint(refusal: ValidationError, document: Mapping[str, Any], model: type[BaseModel]) -> str:
@@ -24,7 +26,8 @@ def complaint(refusal: ValidationError, document: Mapping[str, Any], model: type
     path, owner = _followed(chosen, document, model)
     where = f"{_place(path, document)}: " if path else ""
     more = f" (and {len(errors) - 1} more)" if len(errors) > 1 else ""
-    return " ".join(f"{where}{_words(chosen, owner, path[-1] if path else '')}{more}".split())
+    words = _plain(f"{where}{_words(chosen, owner, path[-1] if path else '')}", LONGEST)
+    return " ".join(f"{words}{more}".split())
 
 
 def _followed(error: ErrorDetails, document: Mapping[str, Any], model: type[BaseModel]) -> tuple[Loc, _Owner]:

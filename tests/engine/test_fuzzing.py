@@ -9,8 +9,10 @@ from __future__ import annotations
 import os
 import time
 import tracemalloc
+import unicodedata
 from collections import Counter
 from collections.abc import Iterator
+from zlib import crc32
 
 import numpy as np
 import pytest
@@ -31,6 +33,8 @@ LONGEST = 10.0
 """Seconds for one document, on a busy machine and without its run."""
 MOST_MEMORY = 300_000_000
 """Bytes that Python and NumPy may take for one document without its run."""
+RUN_ONE_IN = int(os.environ.get("STAGEBOOK_FUZZ_RUNS", "1"))
+"""How many of the circuits that are built are run: every one, or one in so many."""
 MOST_UNKNOWNS = 80
 """Larger circuits are built and not run here."""
 
@@ -45,8 +49,10 @@ def told() -> Iterator[None]:
 
 
 def one_line(refusal: EngineError) -> None:
+    """A refused document is told in plain characters; what was taken may hold hidden ones, which screens write out."""
     line = str(refusal)
-    assert line.isprintable()
+    assert line.isprintable() or not isinstance(refusal, DesignError)
+    assert not any(unicodedata.category(character) in ("Cc", "Zl", "Zp") for character in line)
     assert 10 < len(line) < 2000
 
 
@@ -72,7 +78,7 @@ def far(source: bytes) -> str:
     except DesignError as refusal:
         one_line(refusal)
         return "have data that cannot be read"
-    if circuit.topology.size[1] > MOST_UNKNOWNS:
+    if circuit.topology.size[1] > MOST_UNKNOWNS or crc32(source) % RUN_ONE_IN:
         return "were built"
     return run(design)
 

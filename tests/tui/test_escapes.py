@@ -125,7 +125,7 @@ async def home(pilot: Pilot[None]) -> None:
 
 ALL = {
     *("BenchScreen", "HistoryScreen", "CompareScreen", "RevisionPage", "OriginPage", "WavesScreen", "FaultsScreen"),
-    *("ImmunityScreen", "HelpScreen", "Form", "Pick", "Mark", "Ask", "CommandPalette"),
+    *("ImmunityScreen", "HelpScreen", "Form", "Pick", "Ask", "CommandPalette"),
 }
 
 

@@ -94,7 +94,9 @@ def test_an_export_leaves_nothing_half_written(refused: Refused, written: Path, 
     kept.mkdir()
     before = sorted(os.listdir(tmp_path))
     assert "cannot be written" in refused("export", written, "missing/out.json")
+    (kept / "buzzer.json").mkdir()
     assert "cannot be written" in refused("export", written, kept)
+    assert os.listdir(kept) == ["buzzer.json"]
     assert sorted(os.listdir(tmp_path)) == before
 
 
