@@ -191,7 +191,8 @@ def check_lines(row: FigureRow) -> tuple[Line, Line]:
     else:
         first = f" {where}: worst corner not known yet, required {percent(check.required)}"
     spread = "" if check.spread is None else f"spread: {check.spread.passing * 100:.1f} % hold   "
-    return line(first), line(f" {spread}{check.reason or ''}   sequence {check.sequence}")
+    off = f"by hand {percent(check.hand)}, which disagrees   " if check.disagrees else ""
+    return line(first), line(f" {off}{spread}{check.reason or ''}   sequence {check.sequence}")
 
 
 def spread_words(sheet: MarginSheet, lanes: int) -> str:

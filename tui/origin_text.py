@@ -86,6 +86,13 @@ def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
     return rows
 
 
+def together(stored: Rows, explained: Rows) -> Rows:
+    """Both in one: the values put in stand under their formula, everything else below."""
+    at = next((n for n, (name, *_) in enumerate(stored) if name == "formula"), len(stored) - 1) + 1
+    put_in = [row for row in explained if row[0] == "put in"]
+    return [*stored[:at], *put_in, *stored[at:], *(row for row in explained if row not in put_in)]
+
+
 def used_words(used: Used) -> str:
     """One number that was put in: ``Q8 gain 200, limits 200 .. 450 (class small npn, from memory)``."""
     value = write_plain(used.value, used.unit)

@@ -5,8 +5,11 @@ from __future__ import annotations
 from dataclasses import replace
 
 from stagebook.storage import Store
-from stagebook.tui.origin_text import explanation_rows, origin_rows
+from stagebook.tui.bench_text import check_lines
+from stagebook.tui.figures import FigureRow
+from stagebook.tui.origin_text import explanation_rows, origin_rows, together
 from stagebook.tui.screens.origin import OriginPage
+from stagebook.tui.shown import plain
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import RowList
 
@@ -106,6 +109,20 @@ def test_a_hand_formula_that_disagrees_is_not_hidden() -> None:
     assert near["by hand"] == "+40 % (cross-check, not the verdict; stated accuracy 20 %)"
     bound = {name: text for name, text, _ in origin_rows(replace(apart, accuracy=None), True) if name}
     assert bound["by hand"] == "+10 % (a bound, not the verdict)"
+
+
+def test_the_bench_says_that_a_hand_formula_disagrees() -> None:
+    apart = replace(check("arrival:timer:R7", 0.5), hand=0.1, accuracy=0.2)
+    for found, said in ((apart, True), (replace(apart, accuracy=0.6), False)):
+        row = FigureRow(found, True, 0.6, False, False, None)
+        assert ("by hand +10, which disagrees" in plain(check_lines(row)[1])) is said
+
+
+def test_values_put_in_stand_under_their_formula() -> None:
+    old = check("arrival:timer:R7", 0.5)
+    names = [name for name, *_ in together(origin_rows(old, True), explanation_rows(old, explanation(old.id, 0.5)))]
+    assert names[names.index("formula") + 1] == "put in"
+    assert names.count("put in") == 1
 
 
 def test_a_margin_that_moved_since_is_told() -> None:

@@ -9,7 +9,7 @@ from difflib import get_close_matches
 
 from ...engine.results import CheckResult, MarginSheet, Verdict
 from ..bench_text import check_name
-from ..origin_text import explanation_rows, origin_rows
+from ..origin_text import explanation_rows, origin_rows, together
 from ..shown import MARKS, percent, visible
 from .printing import json_argument, print_json, print_pairs, print_table, print_words
 from .refusal import CommandRefused
@@ -92,7 +92,8 @@ def _explain(asked: Namespace, subject: Subject) -> int:
     else:
         print_words(f"{subject.title}, stage {check.stage}: {check_name(check)}")
         print()
-        print_pairs([(label, text) for label, text, _ in (*origin_rows(check, True), *explanation_rows(check, found))])
+        rows = together(origin_rows(check, True), explanation_rows(check, found))
+        print_pairs([(label, text) for label, text, _ in rows])
     return 1 if asked.strict and check.verdict in (Verdict.FAIL, Verdict.UNKNOWN) else 0
 
 

@@ -15,7 +15,7 @@ from ..actions import bindings
 from ..bench_text import check_name
 from ..computing import Computing
 from ..messages import Answered, AnswerRefused, SolverPreparing
-from ..origin_text import explanation_rows, origin_rows
+from ..origin_text import explanation_rows, origin_rows, together
 from ..shown import Span, fit, line, visible
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
@@ -87,7 +87,7 @@ class OriginPage(Page[None]):
         check = self._check
         title = f" {check_name(check)}, stage {check.stage}, in {self._source}"
         self.query_one("#title", Lines).show(line(Span(title, "strong")))
-        rows = wrapped([*self._stored, *self._explained], self.size.width - 2)
+        rows = wrapped(together(self._stored, self._explained), self.size.width - 2)
         self.query_one(RowList).show(rows, line(Span("figures, and where each comes from", "strong")))
 
 
