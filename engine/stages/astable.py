@@ -21,22 +21,27 @@ def _make(plan: Plan) -> Made:
     for name, collector, other in (("one", first, second), ("two", second, first)):
         node = plan.net(f"node_{name}")
         plan.resistor(COLLECTOR, feed, collector, f"collector_resistor_{name}")
-        value = plan.capacitor(farads, other, node, f"timing_capacitor_{name}", snap="up")
+        value = plan.capacitor(farads, other, node, f"timing_capacitor_{name}", snap="up", film=True)
         plan.resistor(
             0.5 * period / (value * math.log(swing(plan))), feed, node, f"timing_resistor_{name}", tolerance="1 %"
         )
         plan.transistor(collector, add_base(plan, node, name), RETURN, f"flasher_{name}")
     drive = add_separate_output(plan, first, feed)
+    # The first flashes are short: capacitors begin empty. A base that is driven below 0 V begins a whole half.
+    swung = f"{plan.net('node_one')} below {write(-0.5 * plan.rail.min, 'V')}"
     duration: Json = {
         "check": "duration",
-        "of": plan.roles["timing_capacitor_two"],
+        "of": plan.roles["timing_capacitor_one"],
         "sequence": "alarm",
-        "from": "{load} on",
-        "to": "{load} off",
+        "from": swung,
+        "to": f"{first} below {write(0.25 * plan.rail.min, 'V')}",
         "min": write(0.5 * period * (1.0 - window), "s"),
         "max": write(0.5 * period * (1.0 + window), "s"),
     }
-    return Made(output=drive, lasts=SHOWN * period, active=0.5 * period, standby=None, requirements=(duration,))
+    moments = {
+        name: {"after": swung, "by": write(at * period, "s")} for name, at in (("sounding", 0.25), ("silent", 0.75))
+    }
+    return Made(output=drive, lasts=SHOWN * period, active=0.5 * period, moments=moments, requirements=(duration,))
 
 
 KIND = StageKind(

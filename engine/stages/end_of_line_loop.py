@@ -12,6 +12,7 @@ V_LEAST = 0.5  # V, base-emitter voltage and diode each at some microampere, fro
 WETTING = {"minimum_current": {"typical": "0.1 mA", "source": "memory"}}
 DRIFT = "3 %"  # of the rail, each threshold: two junctions over temperature and supply
 DIVIDER = 47e3  # ohm, of each of the two references
+WATCHING = 47e3  # ohm between the line and the transistor that sees it open
 BLEED = 470e3  # ohm, keeps a base-emitter junction at 0 V while its diode blocks
 
 
@@ -44,6 +45,10 @@ def _make(plan: Plan) -> Made:
         plan.resistor((1.0 - share) * DIVIDER, rail, ref, f"{name}_upper_resistor", tolerance="1 %")
         plan.resistor(share * DIVIDER, ref, RETURN, f"{name}_lower_resistor", tolerance="1 %")
         base, source = (ref, line) if name == "high" else (line, ref)
+        if name == "high":
+            # The threshold must not hold the opened line down.
+            source = plan.net("watched")
+            plan.resistor(WATCHING, line, source, "high_series_resistor")
         plan.diode(source, emitter, f"{name}_diode")
         plan.resistor(BLEED, emitter, base, f"{name}_bleed_resistor")
         plan.transistor(trip, base, emitter, f"{name}_device", kind="pnp")

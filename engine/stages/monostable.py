@@ -36,7 +36,9 @@ def _make(plan: Plan) -> Made:
     plan.transistor(first, base, RETURN, "pulse_device")
     node = plan.net("node")
     most = most_timing(plan, half(plan, collector).base)
-    farads = plan.capacitor(time / (most * math.log(swing(plan))), first, node, "timing_capacitor", snap="up")
+    farads = plan.capacitor(
+        time / (most * math.log(swing(plan))), first, node, "timing_capacitor", snap="up", film=True
+    )
     plan.resistor(time / (farads * math.log(swing(plan))), rail, node, "timing_resistor", tolerance="1 %")
     plan.transistor(second, add_base(plan, node, "two"), RETURN, "rest_device")
     edge, kick = plan.net("edge"), plan.net("kick")

@@ -189,13 +189,22 @@ class Plan:
         return value
 
     def capacitor(
-        self, farads: float, a: str, b: str, role: str | None = None, *, snap: str = "nearest", low_drift: bool = False
+        self,
+        farads: float,
+        a: str,
+        b: str,
+        role: str | None = None,
+        *,
+        snap: str = "nearest",
+        low_drift: bool = False,
+        film: bool = False,
     ) -> float:
         """A capacitor of a preferred value, ``a`` the more positive net; returns that value in farad.
 
-        Film up to 2.2 uF, above it polarised with a rated voltage that bears the rail at the customary 0.8.
+        Film up to 2.2 uF or where ``film`` says so, else polarised, with a rated voltage that bears the rail at the
+        customary 0.6 and 0.8.
         """
-        if farads <= LARGEST_FILM:
+        if film or farads <= LARGEST_FILM:
             value = snapped(farads, "E6", snap)
             rated = _at_least(self.rail.max / 0.6, _VOLTAGES[4:])
             fields = {"tolerance": "10 %", "class": "film", "voltage": f"{rated:g} V"}

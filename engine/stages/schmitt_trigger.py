@@ -11,7 +11,7 @@ IDLE = 0.25  # V across the output's base-emitter resistor at rest: off, also wh
 DIVIDER_SHARE = 20.0  # times its base current that flows in the divider
 V_EARLY = 0.1  # V before both bases are equal it goes over: the one that takes over needs a part of the current only
 V_DIODE_LEAST = 0.35  # V of the diode before the base at some microampere (class)
-BLEED = 220e3  # ohm, keeps the base at the emitter while its diode blocks
+BLEED = 1e6  # ohm, keeps the base at the emitter while its diode blocks
 
 
 def _current(plan: Plan) -> float:
@@ -80,7 +80,7 @@ KIND = StageKind(
     ports=(QUIET_PORT, IN_PORT, OUT_PORT, RETURN_PORT),
     settings=(
         Setting("threshold", "", "0.4", "share of the rail at which it trips"),
-        Setting("hysteresis", "", "0.12", "share of the rail that the input must fall back by"),
+        Setting("hysteresis", "", "0.06", "share of the rail that the input must fall back by"),
     ),
     make=_make,
     intake=lambda plan: Intake(_current(plan) / plan.gain(), threshold=plan.share("threshold")),

@@ -11,7 +11,7 @@ from .plan import Plan
 from .sensor_divider import add_divider, trip_sequence, trip_window
 
 BETA = 3950.0  # K, class, from memory
-BEYOND = 10.0  # K beyond the trip point that the sequence goes, and as far on the other side at rest
+BEYOND = 15.0  # K beyond the trip point that the sequence goes, and as far on the other side at rest
 BEFORE = -1e6  # s: an act that stands at the beginning of the sequence
 
 
@@ -56,7 +56,7 @@ KIND = StageKind(
     settings=(
         Setting("active", WORD, "cold", "what it trips on", ("cold", "heat")),
         Setting("trip", "degC", "2 C", "temperature at the trip point"),
-        Setting("window", "K", "3 K", "how far the trip point may be off, both ways"),
+        Setting("window", "K", "5 K", "how far the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 25 C"),
         Setting("held", "s", "2 s", "how long the event of the sequence lasts"),
     ),
