@@ -17,7 +17,6 @@ from itertools import pairwise
 import numpy as np
 
 from ..circuit.circuit import Circuit
-from ..circuit.linearised import Mode, growing, matrices, parameters_at
 from ..kernel import layout
 from ..kernel.layout import Floats, Program
 from ..primitives.columns import CONDITIONS, Lanes
@@ -25,39 +24,21 @@ from ..primitives.signals import Row
 from ..quantity import write
 from ..run import Observed, never, run
 from .sequences import program_of, starts_of
+from .skipped import ALIKE, FINE, Skipped, skipped
 
-SKIPPED = 0.6  # |s| h from which a step does not resolve a mode: about ten steps a period
-SHOWS = 7.0  # e-folds that take a disturbance of a millivolt to volts
 CERTAIN = 30.0  # e-folds that take round-off to volts
-SHORTEST = 1e-6  # s; a step that skips a growing mode is soon followed by longer ones
-ALIKE = 0.3  # largest change of an entry of C or G, beside its diagonals, between states that share their modes
-FINE = 0.01  # the same once a growing mode was found, to see where it begins
 PER_PERIOD = 24  # steps in a period of the mode, once it is resolved
 AFTER = 30  # periods that are still resolved after it must have shown
 TOO_SLOW = 0.01  # growth in parts of |s| that steps of that length still damp out
 PIECES = 32  # of the step in which the growth began, to find where
 ROUNDS = 8  # repeated runs of one lane
+MOST_STEPS = 300_000  # that they may take together
 MOST_STOPS = 30_000  # the work bound: steps that a repetition may be asked to take
 FIRST_POINTS, MOST_POINTS = 4096, 250_000
 BALANCES = "balances"
 MISMATCH = 1e-4  # by which parts are made unequal where equal ones balance
 VISIBLE = 0.02  # V, swing that counts as an oscillation
 CYCLES = 2  # whole ones, of that swing at least
-
-
-@dataclass(frozen=True)
-class Skipped:
-    """A growing mode that the steps of a run did not resolve.
-
-    ``time`` and ``growth`` (1/s) of the states from the last good one to the last bad one, ``speed`` the largest |s|,
-    ``mode`` the first one, ``net`` where it is largest.
-    """
-
-    time: Floats
-    growth: Floats
-    speed: Floats
-    mode: Mode
-    net: str
 
 
 @dataclass(frozen=True)
@@ -90,51 +71,6 @@ def traced(
         if int(observed.results.ended[0, 0]) != layout.TRACE_FULL or points >= MOST_POINTS:
             return observed, program
         points = min(8 * points, MOST_POINTS)
-
-
-def skipped(
-    circuit: Circuit, lane: Lanes, program: Program, observed: Observed, alike: float = ALIKE
-) -> Skipped | None:
-    """The first growing mode that the steps of a traced run did not resolve and that would have shown."""
-    used = int(observed.results.trace_used[0])
-    time, states = observed.results.trace_time[:used], observed.results.trace_value[:used]
-    step = np.diff(time, prepend=0.0)
-    looked = np.flatnonzero(step > SHORTEST)
-    if not looked.size or not circuit.topology.size[1]:
-        return None  # nothing was long, or everything is driven
-    parameters = parameters_at(circuit, circuit.table(lane), program, 0, time[looked])
-    conductance, capacitance = matrices(circuit, parameters, states[looked])
-    # States whose matrices are alike, entry by entry beside the diagonals, share their modes.
-    both = np.stack([conductance, capacitance], axis=1)
-    scale = 1.0 / np.sqrt(np.maximum(np.abs(both.diagonal(axis1=2, axis2=3)), 1e-18))
-    weight = scale[:, :, :, None] * scale[:, :, None, :]
-    own = [0]
-    of = np.zeros(looked.size, dtype=np.int64)
-    for k in range(1, looked.size):
-        if np.max(np.abs((both[k] - both[own[-1]]) * weight[own[-1]])) > alike:
-            own.append(k)
-        of[k] = len(own) - 1
-    modes = growing(conductance[own], capacitance[own])
-    run_of: list[tuple[float, float, float]] = []  # time, growth, |s|
-    first: Mode | None = None
-    total = 0.0
-    for k, n in enumerate(looked):
-        bad = [mode for mode in modes[of[k]] if abs(mode.s) * step[n] > SKIPPED]
-        if not bad:
-            if total > SHOWS:
-                break
-            run_of, first, total = [], None, 0.0
-            continue
-        fastest = max(bad, key=lambda mode: mode.s.real)
-        if first is None:
-            first, run_of = fastest, [(float(time[n] - step[n]), 0.0, abs(fastest.s))]
-        run_of.append((float(time[n]), fastest.s.real, max(abs(mode.s) for mode in bad)))
-        total += fastest.s.real * float(step[n])
-    if first is None or total <= SHOWS:
-        return None
-    place = int(np.argmax(np.abs(first.shape[: int(circuit.topology.size[0])])))
-    table = np.array(run_of)
-    return Skipped(table[:, 0], table[:, 1], table[:, 2], first, circuit.unknown_name(place))
 
 
 def _resolving(found: Skipped) -> Floats | None:
@@ -201,6 +137,7 @@ def watched(
     if tipped is not None:
         return tipped
     plain, stops, said = observed, np.zeros(0), None
+    work = 0
     for turn in range(ROUNDS):
         found = None if observed.failed[0] else skipped(circuit, lane, program, observed, ALIKE if turn == 0 else FINE)
         if found is None:
@@ -217,9 +154,10 @@ def watched(
             said, more = found, resolving
         stops = np.unique(np.concatenate([stops, more]))
         stops = stops[(stops > 0.0) & (stops < program.length[0].sum())]
-        if stops.size > MOST_STOPS:
+        if stops.size > MOST_STOPS or work > MOST_STEPS:
             return Watched(plain, f"{_where(found)}: {_BEYOND}", True)
         observed, program = traced(circuit, lane, sequence, rows, keep, stops, cancelled)
+        work += int(observed.results.work[0, 0])
     if said is None:
         return Watched(observed)
     swings = _swings(observed, circuit.index(said.net), float(said.time[0]))

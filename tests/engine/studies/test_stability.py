@@ -11,7 +11,8 @@ from stagebook.engine.circuit.linearised import growing, matrices, parameters_at
 from stagebook.engine.primitives.signals import Anchor, crossing, voltage
 from stagebook.engine.results import Verdict
 from stagebook.engine.studies.margins import study
-from stagebook.engine.studies.stability import Watched, skipped, traced, watched
+from stagebook.engine.studies.skipped import skipped
+from stagebook.engine.studies.stability import Watched, traced, watched
 
 from ..circuits import Setup, capacitor, resistor, setup, steps, transistor, two
 
@@ -215,3 +216,19 @@ def test_a_study_knows_no_margin_beyond_the_work_bound() -> None:
     assert (found.verdict, found.margin) == (Verdict.UNKNOWN, None)
     assert "oscillates near net c" in str(found.reason)
     assert "what comes later is not known" in str(found.reason)
+
+
+def test_a_flasher_that_switches_in_time_is_left_alone() -> None:
+    # Whenever it switches its loop gain passes 1 and a mode grows: that is its trade, and long steps meet it in time.
+    circuit = setup(
+        resistor("R1", "supply", "c1", "1k"),
+        resistor("R2", "supply", "b1", "47k"),
+        resistor("R3", "supply", "b2", "47k"),
+        resistor("R4", "supply", "c2", "1k"),
+        capacitor("C1", "c1", "b2", "1u"),
+        capacitor("C2", "c2", "b1", "1u2"),
+        transistor("Q1", "c1", "b1", "0V", **{"class": "small npn"}),
+        transistor("Q2", "c2", "b2", "0V", **{"class": "small npn"}),
+        ends=1.0,
+    )
+    assert watched(circuit.circuit, circuit.lanes(), "alarm", ()).words is None
