@@ -95,10 +95,12 @@ def _ripple_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         start, end = Anchor(0.5 * whole), Anchor(whole)
     else:
         start, end = Anchor(1e-2, view.event(f"{load.ref} on")), Anchor(0.0, view.event(f"{load.ref} off"))
-    lost = integral(heat, start, end)
+    # Where the load never goes off again, what is lost until the end of the sequence counts.
+    lost, all_lost = integral(heat, start, end), integral(heat, start)
 
     def judge(seen: Seen) -> Judged:
         joules = seen.value(lost, sequence)
+        joules = np.where(np.isfinite(joules), joules, seen.value(all_lost, sequence))
         lasted = np.full(seen.lanes.count, 0.5 * whole)
         if start.row is not None and end.row is not None:
             off = seen.time(end.row, sequence)
@@ -108,7 +110,7 @@ def _ripple_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         current = np.sqrt(np.maximum(0.0, joules) / np.where(never, 1.0, lasted) / ohms)
         return ratio(current, np.full(seen.lanes.count, allowed), [(never, check.words["never"])])
 
-    rows = (lost, *(anchor.row for anchor in (start, end) if anchor.row is not None))
+    rows = (lost, all_lost, *(anchor.row for anchor in (start, end) if anchor.row is not None))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 

@@ -12,7 +12,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from ..design.datum import number
-from ..design.part import Stage
+from ..design.part import Part, Stage
 from ..design.requirement import Requirement
 from ..errors import CircuitError, QuantityError
 from ..kernel.layout import Floats
@@ -45,6 +45,43 @@ class Threshold:
 
 
 @dataclass(frozen=True)
+class Divider:
+    """Pull resistor, line and end-of-line resistor alone, without what is connected to the loop."""
+
+    pull: Part
+    end: Part
+    leads: tuple[Part, ...]
+    up: bool
+
+    @classmethod
+    def of(cls, view: View, stage: Stage) -> Divider | None:
+        """That of the design, where the roles end_of_line and pull_up (or pull_down) are filled."""
+        end = view.role(stage, "end_of_line")
+        for role in ("pull_up", "pull_down"):
+            pull = view.role(stage, role)
+            if end is not None and pull is not None:
+                leads = tuple(part for place, part in view.parts_of("lead") if place is view.design.stage_of(end.ref))
+                return cls(pull, end, leads, role == "pull_up")
+        return None
+
+    def levels(self, lanes: Lanes, rail: Floats) -> tuple[Floats, Floats, Floats]:
+        """Shorted, normal and open: rail / (1 + R_pull G), for a pull-down from the other side."""
+        line, leak = np.zeros(lanes.count), np.zeros(lanes.count)
+        for lead in self.leads:
+            line = line + lanes[lead.ref, "resistance"]
+            if (lead.ref, "insulation") in lanes:
+                leak = leak + 1.0 / lanes[lead.ref, "insulation"]
+        ends = (1.0 / np.maximum(line, 1e-3), 1.0 / (lanes[self.end.ref, "value"] + line), np.zeros(lanes.count))
+        pull = lanes[self.pull.ref, "value"]
+        if self.up:
+            short, normal, opened = (rail / (1.0 + pull * (each + leak)) for each in ends)
+        else:
+            # The line leaks to 0V beside the pull resistor.
+            short, normal, opened = (rail * each / (each + leak + 1.0 / pull) for each in ends)
+        return short, normal, opened
+
+
+@dataclass(frozen=True)
 class Loop:
     """Levels of the loop and of its rail at the three moments, and the two thresholds."""
 
@@ -52,6 +89,7 @@ class Loop:
     rail: Row
     low: Threshold
     high: Threshold
+    divider: Divider | None
 
     @property
     def rows(self) -> tuple[Row, ...]:
@@ -59,9 +97,18 @@ class Loop:
         found = (*self.levels, self.rail, *(each.row for each in (self.low, self.high) if each.row is not None))
         return tuple(dict.fromkeys(found))
 
-    def gaps(self, look: Look, drifted: bool = True) -> Floats:
-        """Volts between short, low threshold, normal, high threshold and open, (4, lanes)."""
+    def gaps(self, look: Look, lanes: Lanes, drifted: bool = True) -> Floats:
+        """Volts between short, low threshold, normal, high threshold and open, (4, lanes).
+
+        What trips may hold the line near its threshold once it conducts: beyond a threshold the level counts that the
+        divider has without it, where the divider is known.
+        """
         short, normal, opened = (look(row) for row in self.levels)
+        if self.divider is not None:
+            alone = self.divider.levels(lanes, look(self.rail))
+            outer = (np.minimum, np.maximum) if self.divider.up else (np.maximum, np.minimum)
+            # A level that was not seen stays so.
+            short, opened = outer[0](short, alone[0]), outer[1](opened, alone[2])
         return self.between(short, normal, opened, look, drifted)
 
     def between(self, short: Floats, normal: Floats, opened: Floats, look: Look, drifted: bool = True) -> Floats:
@@ -103,24 +150,35 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
         return unknown(check, stage.name, net, sequence, required, missing)
     ats = {name: view.anchor(name, sequence) for name in MOMENTS}
     rail = level(voltage(str(requirement.extras.get("rail", "supply"))), ats[NORMAL])
-    loop = Loop(tuple(level(voltage(net), ats[name]) for name in MOMENTS), rail, low, high)
+    levels = tuple(level(voltage(net), ats[name]) for name in MOMENTS)
+    loop = Loop(levels, rail, low, high, Divider.of(view, stage))
 
     def judge(seen: Seen) -> Judged:
-        nominal = seen.again(sequence, loop.rows, seen.circuit.nominal())
-        planned = loop.gaps(nominal.value, drifted=False)
+        nominal = seen.circuit.nominal()
+        planned = loop.gaps(seen.again(sequence, loop.rows, nominal).value, nominal, drifted=False)[:, 0]
 
         def look(row: Row) -> Floats:
             return seen.value(row, sequence)
 
-        left = loop.gaps(look)
-        smallest = np.argmin(np.nan_to_num(left, nan=np.inf) / planned, axis=0)
-        there, was = np.take_along_axis(left, smallest[None], 0)[0], planned[smallest, 0]
-        hand = _hand(view, stage, loop, seen.lanes, look, planned)
+        left = loop.gaps(look, seen.lanes)
+        shares = _shares(left, planned)
+        smallest = np.argmin(np.nan_to_num(shares, nan=np.inf), axis=0)
+        there, was = np.take_along_axis(left, smallest[None], 0)[0], planned[smallest]
+        hand = None
+        if loop.divider is not None:
+            alone = loop.divider.levels(seen.lanes, look(rail))
+            hand = _shares(loop.between(*alone, look), planned).min(axis=0)
         never = np.asarray(~np.isfinite(left).all(axis=0))
         judged = ratio(was - there, was, [(never, check.words["never"])], hand)
-        return replace(judged, each=tuple(left / planned))
+        return replace(judged, each=tuple(shares))
 
     return Ask(check, stage.name, net, (sequence,), required, judge, loop.rows)
+
+
+def _shares(left: Floats, planned: Floats) -> Floats:
+    """What is left of each planned gap; of one that even the nominal unit does not have less than nothing."""
+    safe = np.where(planned > 0.0, planned, 1.0)[:, None]
+    return np.where(planned[:, None] > 0.0, left / safe, -1.0)
 
 
 def _threshold(view: View, requirement: Requirement, key: str, net: str, sequence: str) -> Threshold | None:
@@ -134,29 +192,6 @@ def _threshold(view: View, requirement: Requirement, key: str, net: str, sequenc
     except QuantityError:
         row = level(voltage(net), view.anchor(str(text), sequence))
         return Threshold(0.0, False, drift, drift_share, row)
-
-
-def _hand(view: View, stage: Stage, loop: Loop, lanes: Lanes, look: Look, planned: Floats) -> Floats | None:
-    """The same from the divider of pull-up and end-of-line resistor, where both roles are filled; of a line to 0V."""
-    end, pull = view.role(stage, "end_of_line"), view.role(stage, "pull_up")
-    if end is None or pull is None:
-        return None
-    line = _sum(lanes, [(part.ref, "resistance") for _, part in view.parts_of("lead")])
-    leaks = [part for _, part in view.parts_of("lead") if (part.ref, "insulation") in lanes]
-    leak = sum((1.0 / lanes[part.ref, "insulation"] for part in leaks), np.zeros(lanes.count))
-    above, rail = lanes[pull.ref, "value"], look(loop.rail)
-
-    def divided(siemens: Floats) -> Floats:
-        return np.asarray(rail / (1.0 + above * (siemens + leak)))
-
-    whole = 1.0 / (lanes[end.ref, "value"] + line)
-    shorted = 1.0 / np.maximum(line, 1e-3)
-    left = loop.between(divided(shorted), divided(whole), divided(np.zeros(lanes.count)), look)
-    return np.asarray(np.min(left / planned, axis=0))
-
-
-def _sum(lanes: Lanes, keys: list[tuple[str, str]]) -> Floats:
-    return sum((lanes[key] for key in keys), np.zeros(lanes.count))
 
 
 CHECKS = (

@@ -11,7 +11,7 @@ from stagebook.engine.design.document import Design
 from stagebook.engine.results import Verdict
 
 from ..circuits import Json, capacitor, resistor, sine, steps
-from .sheets import design, exact, margin
+from .sheets import design, exact, margin, sounder
 
 
 def polarised(value: str = "1u", **fields: Any) -> Json:
@@ -93,3 +93,16 @@ def test_ripple_of_a_sine_by_hand() -> None:
 def test_ripple_needs_rating_and_resistance(left_out: str, missing: str) -> None:
     found = margin(rippled(**{left_out: None}), "capacitor_ripple", "C1")
     assert (found.verdict, found.reason) == (Verdict.UNKNOWN, f"missing: {missing}")
+
+
+def test_ripple_of_an_alarm_that_does_not_end() -> None:
+    # The load is on from the connection to the end: 9 V through 9 ohm and a load of 9 mA has no ripple to speak of.
+    of = design(
+        exact(resistor("R1", "supply", "n", "9R")),
+        polarised("100u", ripple_rating="50 mA", series_resistance="1R"),
+        sounder("LS1", "n", "0V", "9 mA", "3 V"),
+        roles={"filter_capacitor": "C1", "load": "LS1"},
+    )
+    found = margin(of, "capacitor_ripple", "C1")
+    assert found.verdict is Verdict.PASS
+    assert found.demand == pytest.approx(0.0, abs=1e-3)

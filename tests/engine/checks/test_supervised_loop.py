@@ -88,6 +88,31 @@ def test_a_threshold_read_off_an_event() -> None:
     assert found.nominal == pytest.approx(0.8, abs=2e-3)
 
 
+def test_what_trips_may_hold_the_line_near_its_threshold() -> None:
+    # A diode to 8.4 V holds the open line at about 9 V of 12 V: what counts is where it stood before, as by hand.
+    held = loop().dump()
+    parts = held["stages"][0]["parts"]
+    parts += [
+        resistor("R8", "supply", "ref", "3R", tolerance="0 %"),
+        resistor("R9", "ref", "0V", "7R", tolerance="0 %"),
+        two("diode", "D1", "line", "ref", law={"saturation_current": "1e-12 A"}),
+    ]
+    found = margin(Design.load(held), "supervised_loop", "line")
+    assert found.margin == pytest.approx(0.62, abs=0.01)
+
+
+def test_a_loop_to_the_supply() -> None:
+    # Mirrored: R2 and the line to the supply, the pull resistor to 0V, beside which the line leaks.
+    document = loop().dump()
+    for part in document["stages"][0]["parts"]:
+        part["pins"] = {pin: {"supply": "0V", "0V": "supply"}.get(net, net) for pin, net in part["pins"].items()}
+    document["stages"][0]["roles"] = {"pull_down": "R1", "end_of_line": "R2"}
+    found = margin(Design.load(document), "supervised_loop", "line")
+    assert found.margin == pytest.approx(found.hand, abs=0.02)
+    # R1 4653 || 50k = 4257, R2 and line 4847: 0.4676, 0.0876 of 0.15 above 0.38.
+    assert found.margin == pytest.approx(0.0876 / 0.15, abs=0.01)
+
+
 def test_a_moment_that_never_comes_is_an_outcome() -> None:
     moments = {"normal": "0.1 s", "open": {"after": "line above 20 V", "by": "1 ms"}, "short": "0.7 s"}
     found = margin(loop(moments=moments), "supervised_loop", "line")
