@@ -1,0 +1,114 @@
+"""Check 22: does the latch hold when its own load comes on and pulls the supply down?
+
+The dip is read where the latch is fed; what it bears is what is left to the voltage there at which it lets go, found
+by the trial of check 5. A latch that is fed through a resistor keeps its own voltage: its supply is looked at instead.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+
+from ..design.part import Part
+from ..kernel.layout import Floats
+from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY
+from ..primitives.signals import Anchor, level, maximum, minimum
+from .alarm_state import standby
+from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .complementary_latch import Latch, latches
+from .latch import hold_trial_of
+from .seen import Seen
+from .view import View
+
+WATCHED = 1.0  # s after the load came on during which the dip is looked for
+COLLAPSED = 1.6  # V: a conducting latch that stands below this is fed by a current, from memory
+
+
+def asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every complementary latch, where the design has a load."""
+    for latch in latches(view):
+        load = view.load(latch.stage)
+        if load is not None and len(latch.rails) == 2:
+            yield _ask(check, latch, load)
+
+
+def _ask(check: Check, latch: Latch, load: Part) -> Ask:
+    view, stage, npn, pnp = latch.view, latch.stage, latch.npn, latch.pnp
+    requirement = view.requirement(check.slug, npn.ref, pnp.ref, stage.name)
+    sequence = view.sequence(requirement)
+    required = view.required(check.slug, check.required, requirement)
+    if view.design.conditions.source_resistance is None:
+        missing = "source_resistance under conditions (0R where there is none)"
+        return unknown(check, stage.name, pnp.ref, sequence, required, missing)
+    trial = hold_trial_of(latch)
+    on = Anchor(0.0, view.event(f"{load.ref} on"))
+    before = [maximum(rail, standby(view, sequence), on) for rail in latch.rails]
+    lowest = [minimum(rail, on, Anchor(WATCHED, on.row)) for rail in latch.rails]
+    # Where the sequence ends before that, up to its end.
+    shorter = [minimum(rail, on) for rail in latch.rails]
+    own = level(latch.rail, on)
+
+    def least(seen: Seen, n: int) -> Floats:
+        found = seen.value(lowest[n], sequence)
+        return np.where(np.isfinite(found), found, seen.value(shorter[n], sequence))
+
+    def judge(seen: Seen) -> Judged:
+        collapsed = seen.value(own, sequence) < COLLAPSED
+        full = _pick(collapsed, *(seen.value(row, sequence) for row in before))
+        dip = full - _pick(collapsed, least(seen, 0), least(seen, 1))
+        edge = seen.edges.get(trial.key)
+        if edge is None:
+            return Judged(np.full(seen.lanes.count, np.nan), demand=dip)
+        held = _pick(collapsed, *(edge.values[row] for row in trial.rows[-2:]))
+        outcomes = [
+            (edge.missing, check.words["missing"]),
+            (edge.always, check.words["always"]),
+            (~np.isfinite(dip), check.words["never"]),
+        ]
+        return ratio(dip, full - held, outcomes, _hand(view, load, seen, held))
+
+    rows = (*before, *lowest, *shorter, own)
+    # What the load draws moves the margin, and is nothing that the trial moves.
+    return Ask(check, stage.name, pnp.ref, (sequence,), required, judge, rows, trial, follows_knob=False)
+
+
+def _pick(collapsed: Mask, own: Floats, supply: Floats) -> Floats:
+    return np.where(collapsed, supply, own)
+
+
+def _hand(view: View, load: Part, seen: Seen, held: Floats) -> Floats | None:
+    """1 - I (R_source + R_fuse)/(V - V_hold), I the larger of surge and current of the load."""
+    draw = view.bench(load.ref).draw
+    if draw is None or SUPPLY not in seen.lanes or SOURCE_RESISTANCE not in seen.lanes:
+        return None
+    supply = seen.lanes[SUPPLY]
+    current = np.asarray(draw(seen.lanes, supply))
+    surge = view.datum(load, "surge", "A")
+    if surge is not None:
+        current = np.maximum(current, surge.high)
+    ohms = seen.lanes[SOURCE_RESISTANCE]
+    for _, fuse in view.parts_of("fuse"):
+        resistance = view.datum(fuse, "resistance", "ohm")
+        ohms = ohms + (0.0 if resistance is None else resistance.typical)
+    return np.asarray(1.0 - current * ohms / (supply - held))
+
+
+CHECKS = (
+    Check(
+        number=22,
+        slug="self_dip",
+        title="self-dip",
+        unit="V",
+        required=0.3,
+        formula="D = dip of the feed as the load comes on, C = the feed before it - that at which the latch lets go",
+        worst="low supply, soft source, cold",
+        by_hand="1 - I (R_source + R_fuse) / (V - V_hold), I the larger of surge and current of the load",
+        asks=asks,
+        words={
+            "missing": "the latch was never set",
+            "always": "the latch lets go by itself",
+            "never": "the load never came on",
+        },
+    ),
+)
