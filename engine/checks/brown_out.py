@@ -111,6 +111,7 @@ def _ask(
         severe=knobs[1],
         rows=(*state.probes(first), *state.probes(last)),
         gives_in=gives_in,
+        unit="%" if deeper else "s",
     )
     feed = view.supply_current
     drawn = None if feed is None else level(feed, Anchor(at))

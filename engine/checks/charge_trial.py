@@ -58,4 +58,5 @@ def charge_trial(
         rows=(*rows, *dict.fromkeys(looks)),
         gives_in=gives_in,
         spare=spare,
+        unit="C",
     )

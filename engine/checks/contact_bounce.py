@@ -72,6 +72,7 @@ def _trial(
         severe=knobs[1],
         rows=tuple(row for state in told_by for row in state.watch(over, settle)),
         gives_in=gives_in,
+        unit="" if accepts else "s",
     )
 
 

@@ -25,8 +25,8 @@ class Trial:
     adds to a timeline what happens for one knob value per lane, until ``ends``; ``gives_in`` reads it off.
     ``resolution`` is the ratio of neighbouring knob values at which the search may stop. ``key`` names the trial:
     checks that share it share its result. ``spare`` says how far from giving in a lane stayed that never did.
-    ``onward``: what the sequence does after ``start`` happens in the trial too. ``vary``: the knob moves a part, not
-    what happens; the state to start from is that with the part as it is.
+    ``unit`` is that of the knob. ``onward``: what the sequence does after ``start`` happens in the trial too. ``vary``:
+    the knob moves a part, not what happens; the state to start from is that with the part as it is.
     """
 
     key: str
@@ -40,6 +40,7 @@ class Trial:
     gives_in: Callable[[Lanes, Observed], Mask]
     resolution: float = 1.03
     spare: Callable[[Lanes, Observed], Floats] | None = None
+    unit: str = ""
     onward: bool = False
     vary: Callable[[Lanes, Floats], Lanes] | None = None
 

@@ -100,7 +100,7 @@ def explain(design: Design, result: CheckResult, *, cancelled: Callable[[], bool
     if ask.trial is not None:
         edge = seen.edges[ask.trial.key]
         what = f"trial {ask.trial.key}: knob at which it just held"
-        observed.append(Observation(what, _one(edge.knob), "", ask.trial.sequence, None))
+        observed.append(Observation(what, _one(edge.knob), ask.trial.unit, ask.trial.sequence, None))
         observed += [
             Observation(
                 f"in the trial: {row_words(circuit, row)}", _one(value), row_unit(row), ask.trial.sequence, None
