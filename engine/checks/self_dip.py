@@ -1,7 +1,8 @@
 """Check 22: does the latch hold when its own load comes on and pulls the supply down?
 
-The dip is read where the latch is fed; what it bears is what is left to the voltage there at which it lets go, found
-by the trial of check 5. A latch that is fed through a resistor keeps its own voltage: its supply is looked at instead.
+The dip is read where the latch is fed, once it has lasted for a while; what it bears is what is left to the voltage
+there at which it lets go, found by the trial of check 5. A latch that is fed through a resistor keeps its own voltage:
+its supply is looked at instead.
 """
 
 from __future__ import annotations
@@ -21,6 +22,7 @@ from .latch import hold_trial_of
 from .seen import Seen
 from .view import View
 
+BRIEF = 20e-6  # s: a shorter dip, as of a piezo that is charged, is over before a latch has let go (from memory)
 WATCHED = 1.0  # s after the load came on during which the dip is looked for
 COLLAPSED = 1.6  # V: a conducting latch that stands below this is fed by a current, from memory
 
@@ -44,9 +46,10 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
     trial = hold_trial_of(latch)
     on = Anchor(0.0, view.event(f"{load.ref} on"))
     before = [maximum(rail, standby(view, sequence), on) for rail in latch.rails]
-    lowest = [minimum(rail, on, Anchor(WATCHED, on.row)) for rail in latch.rails]
+    lasting = Anchor(BRIEF, on.row)
+    lowest = [minimum(rail, lasting, Anchor(WATCHED, on.row)) for rail in latch.rails]
     # Where the sequence ends before that, up to its end.
-    shorter = [minimum(rail, on) for rail in latch.rails]
+    shorter = [minimum(rail, lasting) for rail in latch.rails]
     own = level(latch.rail, on)
 
     def least(seen: Seen, n: int) -> Floats:
