@@ -12,9 +12,11 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part
+from ..design.sequence import Dip, DisconnectSupply, ReverseSupply, Surge
 from ..kernel.layout import Floats
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY
-from ..primitives.signals import Anchor, level, maximum, minimum
+from ..primitives.signals import Anchor, level
+from ..quantity import read
 from .alarm_state import standby
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .complementary_latch import Latch, latches
@@ -22,8 +24,8 @@ from .latch import hold_trial_of
 from .seen import Seen
 from .view import View
 
-BRIEF = 20e-6  # s: a shorter dip, as of a piezo that is charged, is over before a latch has let go (from memory)
-WATCHED = 1.0  # s after the load came on during which the dip is looked for
+LOOKS = tuple(20e-6 * 1.9**k for k in range(18))
+"""s after the load came on, up to 1 s: what none of them meets is over before a latch has let go (from memory)."""
 COLLAPSED = 1.6  # V: a conducting latch that stands below this is fed by a current, from memory
 
 
@@ -44,17 +46,19 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
         missing = "source_resistance under conditions (0R where there is none)"
         return unknown(check, stage.name, pnp.ref, sequence, required, missing)
     trial = hold_trial_of(latch)
-    on = Anchor(0.0, view.event(f"{load.ref} on"))
-    before = [maximum(rail, standby(view, sequence), on) for rail in latch.rails]
-    lasting = Anchor(BRIEF, on.row)
-    lowest = [minimum(rail, lasting, Anchor(WATCHED, on.row)) for rail in latch.rails]
-    # Where the sequence ends before that, up to its end.
-    shorter = [minimum(rail, lasting) for rail in latch.rails]
+    # As the supply comes the load may be on for a moment.
+    rest = standby(view, sequence)
+    on = Anchor(0.0, view.event(f"{load.ref} on", rest))
+    before = [level(rail, rest) for rail in latch.rails]
+    looks = [[level(rail, Anchor(after, on.row)) for after in LOOKS] for rail in latch.rails]
+    undisturbed = _undisturbed(view, sequence)
     own = level(latch.rail, on)
 
     def least(seen: Seen, n: int) -> Floats:
-        found = seen.value(lowest[n], sequence)
-        return np.where(np.isfinite(found), found, seen.value(shorter[n], sequence))
+        """The lowest of all looks before an event moves the supply; NaN where there was none."""
+        early = [seen.time(row, sequence) < undisturbed for row in looks[n]]
+        values = [np.where(e, seen.value(row, sequence), np.nan) for e, row in zip(early, looks[n], strict=True)]
+        return np.asarray(np.fmin.reduce(values))
 
     def judge(seen: Seen) -> Judged:
         collapsed = seen.value(own, sequence) < COLLAPSED
@@ -71,9 +75,16 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
         ]
         return ratio(dip, full - held, outcomes, _hand(view, load, seen, held))
 
-    rows = (*before, *lowest, *shorter, own)
+    rows = (*before, *looks[0], *looks[1], own)
     # What the load draws moves the margin, and is nothing that the trial moves.
     return Ask(check, stage.name, pnp.ref, (sequence,), required, judge, rows, trial, follows_knob=False)
+
+
+def _undisturbed(view: View, sequence: str) -> float:
+    """Until when no event moves the supply, s."""
+    events = view.design.sequences[sequence].events
+    moved = [read(e.at, "s") for e in events if isinstance(e, DisconnectSupply | ReverseSupply | Dip | Surge)]
+    return min(moved, default=np.inf)
 
 
 def _pick(collapsed: Mask, own: Floats, supply: Floats) -> Floats:

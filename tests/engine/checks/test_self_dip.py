@@ -54,6 +54,12 @@ def test_a_spike_is_no_dip() -> None:
     assert margin(Design.load(of), "self_dip", "Q1").demand == pytest.approx(12.0 / 13.0, rel=2e-3)
 
 
+def test_what_happens_to_the_supply_is_no_dip_of_its_own() -> None:
+    away: Json = {"at": "50 ms", "event": "disconnect supply"}
+    found = margin(with_role(loaded(events=(ON, away))), "self_dip", "Q1")
+    assert found.demand == pytest.approx(12.0 / 13.0, rel=2e-3)
+
+
 def test_a_stiff_source_does_not_dip() -> None:
     found = margin(with_role(loaded(source="0R")), "self_dip", "Q1")
     assert (found.demand, found.margin) == (pytest.approx(0.0, abs=1e-6), pytest.approx(1.0, abs=1e-6))
