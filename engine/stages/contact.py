@@ -8,6 +8,7 @@ from ..quantity import write
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Json, Made, Place, Sense, Setting, StageKind
 from .plan import RETURN, Plan
 
+SPARE = 1.1  # times the wetting current: what the tolerance of the resistor takes
 LEAD_INSULATION = "20M"  # of the whole lead against 0V, wet, from memory
 PER_METRE = {"resistance": "0.08 ohm/m", "capacitance": "100 pF/m"}
 """A pair of 0.22 mm2, there and back, from memory. Its inductance rings at megahertz, far above what follows hears."""
@@ -21,7 +22,7 @@ _SETTINGS = (
 
 def _make(plan: Plan, normally_open: bool) -> Made:
     rail, out = plan.port("rail"), plan.port("out")
-    ohms = plan.rail.min / plan.above_zero("wetting")
+    ohms = plan.rail.min / (SPARE * plan.above_zero("wetting"))
     far = _lead(plan, out)
     fields: Json = {"data": {"minimum_current": {"typical": plan.text("wetting"), "source": "memory"}}}
     if normally_open:

@@ -15,9 +15,15 @@ LOAD_SETTINGS = (
     Setting("heard", "dB", "", "what is needed at the distance; empty: not asked for"),
     Setting("distance", "m", "1 m", "at which it must be heard"),
 )
+TYPICAL = 0.8  # of the largest current, from memory
 SURGE = {"sounder": 2.0, "piezo": 1.2}
 """Inrush in parts of the largest current (from memory)."""
-TYPICAL = 0.8  # of the largest current, from memory
+
+
+def peak(plan: Plan, current: float) -> float:
+    """The inrush in A of a load of ``current`` at the highest supply; that of a sounder where it is not known."""
+    surge = SURGE.get(plan.text("load"), max(SURGE.values()))
+    return surge * current * plan.supply.max / plan.supply.nominal
 
 
 def works_from(plan: Plan) -> float:

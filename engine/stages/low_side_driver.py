@@ -6,17 +6,21 @@ from functools import partial
 
 from ..quantity import write
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements
+from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements, peak
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
 LEAST_BLEED, MOST_BLEED = 1e3, 47e3  # ohm
 
 
+def _load(plan: Plan) -> float:
+    return plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
+
+
 def _base(plan: Plan, kind: str, junctions: int) -> tuple[float, float]:
     """Base current in A, and the base-emitter resistor in ohm that takes little of it."""
-    load = plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
-    base = plan.above_zero("overdrive") * load / plan.gain(kind, load)
+    load = _load(plan)
+    base = plan.above_zero("overdrive") * load / plan.gain(kind, peak(plan, load))
     return base, min(max(junctions * V_BE / (BLEED * base), LEAST_BLEED), MOST_BLEED)
 
 
@@ -30,9 +34,11 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     node, low = plan.net("base"), plan.port("low")
     drop = junctions * V_BE
     ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
-    if kind == "npn" and plan.above_zero("current") > DRIVER_CURRENT:
+    current = _load(plan)
+    if kind == "npn" and peak(plan, current) > DRIVER_CURRENT:
+        inrush = write(peak(plan, current), "A")
         raise plan.refused(
-            "current", f"{plan.text('current')} is more than a 0.5 A transistor bears; take a Darlington driver"
+            "current", f"an inrush of {inrush} is more than 0.5 A transistors bear; take a Darlington driver"
         )
     if ohms < 1.0:
         raise plan.refused(
@@ -42,8 +48,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
         )
     plan.resistor(ohms, plan.port("in"), node, "base_resistor", snap="down")
     plan.resistor(bleed, node, RETURN, "base_emitter_resistor")
-    current = plan.above_zero("current")
-    plan.transistor(low, node, RETURN, "driver", kind=kind, current=current)
+    plan.transistor(low, node, RETURN, "driver", kind=kind, current=peak(plan, current))
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), plan.port("rail"), low)
     return Made(output=Drive(Sense.LOW_SIDE, drop=0.3 * junctions), requirements=load_requirements(plan))
