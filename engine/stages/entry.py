@@ -1,15 +1,21 @@
-"""Supply entry: a diode against reversal for all that follows, and an RC filter for the small stages."""
+"""Supply entry: fuse, a diode against reversal, a clamp for surges, and an RC filter for the small stages."""
 
 from __future__ import annotations
 
 import math
 
+from ..parts.physics import REFERENCE
 from ..quantity import write
-from .kind import RETURN_PORT, WORD, Made, Place, Port, Setting, StageKind, Wire
+from .kind import RETURN_PORT, WORD, Json, Made, Place, Port, Setting, StageKind, Wire
 from .plan import LARGEST_FILM, RETURN, Plan
 
 RIPPLE = 10e-3  # A at 1 uF, growing with the root of the capacitance: what an electrolytic bears, from memory
 LOSS, LOSS_AT = 0.15, 100.0  # tan d and the frequency in Hz that it is given at, class, from memory
+FUSE_SHARE, FUSE_DRIFT = 0.75, 0.003  # of its rating that a fuse carries for ever, and 1/K above 25 C, from memory
+_FUSES = (0.1, 0.125, 0.16, 0.2, 0.25, 0.315, 0.4, 0.5, 0.63, 0.8, 1.0, 1.25, 1.6, 2.0, 2.5, 3.15, 4.0, 5.0, 6.3)
+"""Rated currents in A: R10 series (ISO 3) as IEC 60127 has them, from memory."""
+_CLAMPS = (15.0, 24.0)
+IMPEDANCE = "2R"  # of what a surge comes through, from memory
 SPARE = 3.0  # times its drop that the filter resistor is rated for: small stages draw more while they switch
 _DIODES = {"silicon": ("diode", "1 A rectifier", 0.85), "schottky": ("schottky", "1 A Schottky", 0.45)}
 """Kind, class and largest forward voltage in V at 1 A, cold (from memory)."""
@@ -27,18 +33,64 @@ def add_filter_capacitor(plan: Plan, farads: float, net: str) -> float:
     return value
 
 
+def _add_fuse(plan: Plan, rail: str) -> None:
+    """The least preferred fuse that carries the loads for ever when hot, between the port ``feed`` and ``rail``."""
+    hot = 1.0 - FUSE_DRIFT * max(0.0, plan.ambient.max - REFERENCE)
+    wanted = (plan.above_zero("load_current") + plan.above_zero("small_current")) / (FUSE_SHARE * hot)
+    rated = next((each for each in _FUSES if each >= wanted), None)
+    if rated is None:
+        raise plan.refused(
+            "load_current", f"no fuse of the usual ones carries it; write at most {_FUSES[-1]:g} A x 0.7"
+        )
+    fields = {
+        "rated_current": {"typical": write(rated, "A"), "source": "memory"},
+        "melting": {"typical": write(2.0 * rated**2, "A2s"), "source": "memory"},
+        "resistance": {"typical": write(0.1 / rated, "ohm", digits=2), "source": "memory"},
+    }
+    plan.part("F", "fuse", {"a": plan.port("feed"), "b": rail}, "fuse", **fields)
+
+
+def _add_clamp(plan: Plan, rail: str) -> dict[str, Json]:
+    """The clamp for a surge, and the sequence that has it; nothing where none is asked for."""
+    if not plan.text("surge"):
+        return {}
+    surge = plan.above_zero("surge")
+    standoff = next((each for each in _CLAMPS if each >= plan.supply.max), None)
+    if standoff is None:
+        raise plan.refused("surge", f"no clamp stands off {plan.supply.max:.3g} V; write none or a smaller supply")
+    pins = {"anode": RETURN, "cathode": rail}
+    plan.part("D", "clamp", pins, "clamp", value=f"{standoff:g} V", **{"class": f"{standoff:g} V surge clamp"})
+    event = {
+        "at": "1 s",
+        "event": "surge",
+        "to": write(surge, "V"),
+        "for": "1 ms",
+        "edge": "10 us",
+        "impedance": IMPEDANCE,
+    }
+    events = [{"at": "0 s", "event": "connect supply", "rise": "20 ms"}, event]
+    return {"surge": {"events": events, "ends": "2 s", "moments": {"standby": "0.9 s"}}}
+
+
 def _make(plan: Plan) -> Made:
     name = plan.text("diode")
-    rail, quiet = plan.port("feed"), plan.port("quiet")
+    feed, quiet = plan.port("feed"), plan.port("quiet")
     lost = 0.0
+    if plan.text("fuse") != "none":
+        fused = plan.port("rail") if name == "none" else plan.net("fused")
+        _add_fuse(plan, fused)
+        feed = fused
+    rail = feed
     if name != "none":
         kind, generic, lost = _DIODES[name]
-        plan.diode(plan.port("feed"), plan.port("rail"), "reverse_diode", kind=kind, name=generic)
         rail = plan.port("rail")
+        plan.diode(feed, rail, "reverse_diode", kind=kind, name=generic)
+    surges = _add_clamp(plan, rail)
     current, drop, slew = plan.above_zero("small_current"), plan.above_zero("drop"), plan.above_zero("slew")
     ohms = plan.resistor(drop / current, rail, quiet, "filter_resistor", snap="down", volts=SPARE * drop)
     farads = add_filter_capacitor(plan, plan.supply.max / (ohms * slew), quiet)
-    return Made(rail_drop=lost, quiet_drop=lost + ohms * current, settles=5.0 * ohms * farads)
+    settles = 5.0 * ohms * farads
+    return Made(rail_drop=lost, quiet_drop=lost + ohms * current, settles=settles, sequences=surges)
 
 
 KIND = StageKind(
@@ -46,10 +98,11 @@ KIND = StageKind(
     title="supply entry",
     place=Place.FEED,
     help=(
-        "A series diode keeps a reversed supply away from all that follows; loads are fed right behind it, small"
-        " stages behind an RC filter, so that neither a fast connection nor the surge of the load reaches them. R ="
-        " drop / I of the small stages; C = V_max / (R x slew), because an RC filter lets a step of V through no"
-        " faster than V/(RC). Source: common practice; RC step response."
+        "A fuse of at least 1.33 I of what follows, more when hot (0.3 %/K). A series diode keeps a reversed supply"
+        " away from all that follows; loads are fed right behind it, small stages behind an RC filter, so that neither"
+        " a fast connection nor the surge of the load reaches them. R = drop / I of the small stages; C = V_max / (R x"
+        " slew), because an RC filter lets a step of V through no faster than V/(RC). A clamp stands off V_max and"
+        " holds a surge below the ratings behind it. Source: common practice; RC step response."
     ),
     ports=(
         Port("feed", Wire.RAIL, "the supply as it arrives"),
@@ -58,6 +111,9 @@ KIND = StageKind(
         RETURN_PORT,
     ),
     settings=(
+        Setting("load_current", "A", "0.3 A", "what all loads draw together at most"),
+        Setting("fuse", WORD, "slow", "in series with the supply", ("slow", "none")),
+        Setting("surge", "V", "", "highest voltage of a surge of 1 ms; empty: no clamp"),
         Setting("diode", WORD, "silicon", "against reversal: a rectifier, or one that drops less", (*_DIODES, "none")),
         Setting("small_current", "A", "3 mA", "what all small stages draw together"),
         Setting("drop", "V", "0.3 V", "what the filter may lose at that current"),

@@ -47,9 +47,30 @@ def test_loads_hang_on_the_rail_behind_the_diode_and_small_stages_on_the_filtere
 
 
 def test_the_entry_may_do_without_a_diode() -> None:
-    design = made(choice("entry", diode="none"), CALL, PIEZO)
+    design = made(choice("entry", diode="none", fuse="none"), CALL, PIEZO)
     assert design.part("LS1").pins["plus"] == "supply"
     assert "reverse_diode" not in design.stage("entry").roles
+
+
+def test_the_fuse_carries_the_loads_when_hot() -> None:
+    # (0.3 A + 3 mA) / (0.75 (1 - 0.003/K x 20 K)) = 0.43 A, next of R10: 0.5 A (IEC 60127, from memory).
+    design = made(choice("entry", load_current="0.3 A"), CALL, PIEZO)
+    fuse = design.part(design.stage("entry").roles["fuse"])
+    assert fuse.kind == "fuse"
+    assert fuse.limits("rated_current", "A").typical == 0.5  # type: ignore[union-attr]
+    assert fuse.pins["a"] == "supply"
+    assert "fuse" not in made(choice("entry", fuse="none"), CALL, PIEZO).stage("entry").roles
+
+
+def test_a_clamp_holds_a_surge() -> None:
+    design = made(choice("entry", surge="40 V"), CALL, PIEZO).dump()
+    design["sequences"]["alarm"], design["requirements"] = design["sequences"]["surge"], []
+    behind, before = maximum(voltage("entry.rail")), maximum(voltage("supply"))
+    seen = Setup(Design.load(design)).run(behind, before)
+    # A clamp of 15 V stand-off clamps at 1.6 times, 24 V, at its pulse current (class, from memory).
+    assert seen.value(behind)[0] < 24.0 < seen.value(before)[0]
+    with pytest.raises(DesignError, match="setting surge: no clamp stands off 28 V"):
+        made(choice("entry", surge="40 V"), CALL, PIEZO, supply=("20 V", "24 V", "28 V"))
 
 
 def test_a_reversed_supply_stays_away_from_what_follows() -> None:
