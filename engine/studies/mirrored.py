@@ -27,7 +27,8 @@ from .stability import BALANCES
 
 LEAST = 0.01  # mismatch of a part that is given without a tolerance
 DECIDED = 0.1  # V between the collectors, from which one half is on and the other off
-SWINGS = 3  # rising crossings after which an astable is taken to run
+SETTLE = 0.1  # of the time up to the first event: how long an astable may take to start
+SWINGS = 3  # rising crossings after that by which an astable is known to run, where another has none
 
 Sides = dict[tuple[str, str], int]
 
@@ -107,8 +108,8 @@ def undefined(circuit: Circuit, sequence: str, found: Pair, cancelled: Callable[
     between = voltage(found.first.collector, found.second.collector)
     at = Anchor(end * (1.0 - 1e-9))
     last = level(between, at)
-    swings = crossing(between, 0.0, rising=True, end=at, nth=SWINGS)
-    observed: Observed = observe(circuit, lanes, sequence, (last, swings), cancelled=cancelled)
+    once, often = (crossing(between, 0.0, rising=True, start=Anchor(SETTLE * end), end=at, nth=n) for n in (1, SWINGS))
+    observed: Observed = observe(circuit, lanes, sequence, (last, once, often), cancelled=cancelled)
     if observed.failed.any():
         return None
     first, second = found.first.transistor, found.second.transistor
@@ -118,8 +119,7 @@ def undefined(circuit: Circuit, sequence: str, found: Pair, cancelled: Callable[
             return None
         words = f"undefined at power-up: {first} or {second} comes on first"
     else:
-        runs = observed.seen(swings)
-        if runs[0] == runs[1]:
+        if not observed.seen(often).any() or observed.seen(once).all():
             return None
         words = f"undefined at power-up: {first} and {second} may lock, or swing"
     return Undefined(found, lanes, settings, words)
