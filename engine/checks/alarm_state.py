@@ -11,7 +11,7 @@ from ..design.part import Stage
 from ..design.sequence import ConnectSupply, DisconnectSupply
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
-from ..primitives.signals import Anchor, Row, Signal, level, maximum, voltage
+from ..primitives.signals import Anchor, Row, Signal, crossing, level, maximum, minimum, voltage
 from ..quantity import read
 from ..run import Observed
 from .check import Mask
@@ -20,6 +20,8 @@ from .view import View
 
 TOLD_BY = "the roles latch_npn and latch_pnp, or a load with operating_minimum"
 """What is missing where nothing tells whether there is an alarm."""
+HOLDS = 20e-6  # s that a load must be on: what is shorter is a spike (from memory)
+SPIKES = 3  # times that a load may come on before it does for good
 LOOKS = (0.1, 1.0)  # shares of the time to settle at which a latch is looked at: a timed one may let go again
 
 
@@ -50,7 +52,10 @@ class AlarmState:
         if self.latch is not None:
             return tuple(row for look in LOOKS for row in self.latch.probes(Anchor(start + look * settle)))
         assert self.load is not None
-        return (maximum(self.load[0], Anchor(), Anchor(start + settle)),)
+        signal, least = self.load
+        came = [crossing(signal, least, True, nth=n + 1) for n in range(SPIKES)]
+        lasted = [minimum(signal, Anchor(0.05 * HOLDS, row), Anchor(HOLDS, row)) for row in came]
+        return (*lasted, *(level(signal, Anchor(start + look * settle)) for look in LOOKS))
 
     def tripped(self, lanes: Lanes, observed: Observed, start: float, settle: float) -> Mask:
         """Whether an alarm came by ``settle`` after ``start``, in s of the run."""
@@ -58,7 +63,8 @@ class AlarmState:
             looks = [self.alarmed(lanes, observed, Anchor(start + look * settle)) for look in LOOKS]
             return np.asarray(np.any(looks, axis=0))
         assert self.load is not None
-        return np.asarray(observed.value(*self.watch(start, settle)) > self.load[1])
+        seen = [observed.value(row) > self.load[1] for row in self.watch(start, settle)]
+        return np.asarray(np.any(seen, axis=0))
 
     def lifts(self) -> tuple[Row, ...]:
         """The rows by which :meth:`spare` tells."""

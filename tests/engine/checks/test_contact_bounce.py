@@ -105,3 +105,20 @@ def test_what_is_missing_is_named(slug: str, missing: str) -> None:
 def test_a_part_that_is_no_contact_is_refused() -> None:
     with pytest.raises(CircuitError, match="requirement acceptance of R1: it is no contact that events move"):
         margin(debounced({"check": "acceptance", "of": "R1", "min": "20 ms"}), "acceptance", "S1")
+
+
+def test_a_spike_across_the_load_is_no_alarm() -> None:
+    # A capacitor from the line to the load's net lifts it at once to 6 V: 100 nF and 10k for 0.5 ms, an alarm as soon
+    # as the contact stays closed for 20 us, an eighth of a burst of 0.16 ms; 10 pF only for 0.05 us.
+    found = margin(coupled_load("100n"), "contact_bounce", "S1")
+    assert found.capability == pytest.approx(160e-6, rel=0.04)
+    found = margin(coupled_load("10p"), "contact_bounce", "S1")
+    assert (found.margin, found.outcome) == (1.0, "no burst raises an alarm, however long")
+
+
+def coupled_load(farads: str) -> Design:
+    of = debounced({"check": "contact_bounce", "of": "S1", "max": "0.1 ms", "times": 4}, farads=farads).dump()
+    parts = {part["ref"]: part for part in of["stages"][0]["parts"]}
+    parts["C1"]["pins"] = {"a": "line", "b": "n"}
+    parts["R1"] |= {"pins": {"a": "n", "b": "0V"}, "value": "10k"}
+    return Design.load(of)

@@ -46,10 +46,10 @@ def test_the_filter_divides_the_pulse() -> None:
 
 
 def test_a_small_capacitor_lets_it_through() -> None:
-    # 10 nF: 100 nC / 11 nF = 9 V.
+    # 10 nF: 100 nC / 11 nF = 9 V, less 8 %; a load must be on for 20 us, while 10 nF empty into 11k: 3 V exp(20/110).
     found = margin(filtered(farads="10n"), "line_pulse", "in")
     assert found.demand == pytest.approx(8.3, rel=0.05)
-    assert (found.verdict, found.margin) == (Verdict.FAIL, pytest.approx(1.0 - 8.3 / 3.0, abs=0.2))
+    assert (found.verdict, found.margin) == (Verdict.FAIL, pytest.approx(1.0 - 8.3 / 3.6, abs=0.1))
 
 
 def test_a_pulse_the_other_way_raises_nothing() -> None:
