@@ -77,7 +77,7 @@ def part_heading(stage: Stage | None) -> Line:
     """The line above the parts."""
     if stage is None:
         return line(Span("no stage", "strong"))
-    return line(Span(f"{stage.name}: {'parts, modified' if is_modified(stage) else 'parts'}", "strong"))
+    return line(Span(f"{stage.name}: {'modified' if is_modified(stage) else 'parts'}", "strong"))
 
 
 def kind_words(part: Part) -> str:

@@ -46,6 +46,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="astable",
+    called="flasher",
     title="astable flasher",
     place=Place.TIME,
     help=(

@@ -51,6 +51,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="battery_backup",
+    called="backup",
     title="battery backup",
     place=Place.FEED,
     help=(

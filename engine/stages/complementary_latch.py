@@ -84,6 +84,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="complementary_latch",
+    called="latch",
     title="complementary latch",
     place=Place.HOLD,
     help=(

@@ -64,6 +64,7 @@ def _lead(plan: Plan, net: str) -> str:
 KINDS = (
     StageKind(
         name="contact_no",
+        called="contact",
         title="contact, normally open",
         place=Place.SENSE,
         help=(
@@ -78,6 +79,7 @@ KINDS = (
     ),
     StageKind(
         name="contact_nc",
+        called="contact",
         title="contact, normally closed",
         place=Place.SENSE,
         help=(

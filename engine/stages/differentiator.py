@@ -27,6 +27,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="differentiator",
+    called="edge",
     title="differentiator trigger",
     place=Place.SHAPE,
     help=(

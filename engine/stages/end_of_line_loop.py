@@ -88,6 +88,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="end_of_line_loop",
+    called="loop",
     title="end-of-line loop",
     place=Place.SENSE,
     help=(

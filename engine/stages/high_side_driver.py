@@ -51,6 +51,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="high_side_driver",
+    called="driver",
     title="high-side driver",
     place=Place.SWITCH,
     help=(

@@ -132,7 +132,8 @@ class StageKind:
     """A stage of the catalogue. ``help`` is one paragraph with formula and source; ``make`` writes into a plan.
 
     ``takes`` is which senses its port ``in`` understands, ``intake`` what it takes there with these settings;
-    ``supply_starts``: the rail itself can stand for the signal where no stage before it gives one.
+    ``supply_starts``: the rail itself can stand for the signal where no stage before it gives one. ``called`` is the
+    name of a stage that is given none.
     """
 
     name: str
@@ -145,6 +146,7 @@ class StageKind:
     takes: tuple[Sense, ...] = (Sense.LEVEL,)
     intake: Callable[[Plan], Intake] = lambda plan: Intake()
     supply_starts: bool = True
+    called: str = ""
 
     def setting(self, name: str) -> Setting | None:
         """The setting of this name."""

@@ -36,6 +36,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="light_front_end",
+    called="light",
     title="light front end",
     place=Place.SENSE,
     help=(

@@ -136,6 +136,7 @@ def _fired(plan: Plan, mode: str, output: Output, upper: float) -> Drive | None:
 
 KIND = StageKind(
     name="long_timer",
+    called="timer",
     title="long RC timer",
     place=Place.TIME,
     help=(

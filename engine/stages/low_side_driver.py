@@ -58,6 +58,7 @@ _PORTS = (IN_PORT, RAIL_PORT, Port("low", Wire.OUT, "the switched end of the loa
 KINDS = (
     StageKind(
         name="low_side_driver",
+        called="driver",
         title="low-side driver",
         place=Place.SWITCH,
         help=(
@@ -73,6 +74,7 @@ KINDS = (
     ),
     StageKind(
         name="darlington_driver",
+        called="driver",
         title="Darlington driver",
         place=Place.SWITCH,
         help=(

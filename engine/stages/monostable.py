@@ -67,6 +67,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="monostable",
+    called="pulse",
     title="monostable",
     place=Place.TIME,
     help=(

@@ -31,6 +31,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="rc_filter",
+    called="filter",
     title="RC filter",
     place=Place.FEED,
     help=(

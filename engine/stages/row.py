@@ -27,7 +27,7 @@ class Choice:
 
     def title(self) -> str:
         """The stage's name."""
-        return self.name or self.kind.replace("_", "-")
+        return self.name or usual_name(self.kind)
 
 
 @dataclass(frozen=True)
@@ -51,6 +51,12 @@ class MadeStage:
     made: Made
     kind: StageKind
     rail: float
+
+
+def usual_name(kind: str) -> str:
+    """What a stage of a kind is called where nothing is said."""
+    found = stage_kinds().get(kind)
+    return (found.called if found else "") or kind.replace("_", "-")
 
 
 def kind_named(name: str) -> StageKind:

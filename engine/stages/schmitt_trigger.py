@@ -67,6 +67,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="schmitt_trigger",
+    called="trigger",
     title="Schmitt trigger",
     place=Place.SHAPE,
     help=(

@@ -43,6 +43,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="temperature_front_end",
+    called="sensor",
     title="temperature front end",
     place=Place.SENSE,
     help=(

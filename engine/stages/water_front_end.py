@@ -43,6 +43,7 @@ def _make(plan: Plan) -> Made:
 
 KIND = StageKind(
     name="water_front_end",
+    called="probe",
     title="water front end",
     place=Place.SENSE,
     help=(

@@ -14,7 +14,7 @@ from ...engine.design.document import Design
 from ...engine.errors import EngineError
 from ...engine.stages import stage_kinds
 from ...engine.stages.making import new_design
-from ...engine.stages.row import Choice
+from ...engine.stages.row import Choice, usual_name
 from ...storage.errors import StorageError
 from ...storage.store import Store
 from ..actions import bindings
@@ -126,7 +126,7 @@ class NewDesignPage(Page[str | None]):
             self._put(at, choice, self._row[:at], self._row[at:])
 
         def chosen(kind: str) -> None:
-            name = free_name(kind.replace("_", "-"), {each.title() for each in self._row})
+            name = free_name(usual_name(kind), {each.title() for each in self._row})
             ask_settings(self.app, Choice(kind, name), put)
 
         ask_kind(self.app, "a stage of the catalogue: which kind?", chosen)

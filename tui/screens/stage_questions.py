@@ -12,7 +12,7 @@ from ...engine.design.document import Design
 from ...engine.errors import DesignError, EngineError
 from ...engine.stages.kind import Wire
 from ...engine.stages.making import place_after, with_catalogue_stage
-from ...engine.stages.row import SUPPLY, Choice, checked, kind_named
+from ...engine.stages.row import SUPPLY, Choice, checked, kind_named, usual_name
 from ..stage_text import hint, kind_choices, setting_label
 from .design_questions import Put, ask_design
 from .dialog import Answers, Field, Form, Pick
@@ -94,7 +94,7 @@ def _ask_free_stage(app: App[Any], design: Design, put: Put) -> None:
 def _ask_catalogue_stage(app: App[Any], design: Design, kind: str, put: Put) -> None:
     found, place = kind_named(kind), place_after(design)
     taken = {stage.name for stage in design.stages}
-    name = free_name(kind.replace("_", "-"), taken)
+    name = free_name(usual_name(kind), taken)
     nets = {Wire.IN: place.signal or place.quiet, Wire.RAIL: place.rail, Wire.QUIET: place.quiet, Wire.BASE: place.base}
     known = ", ".join(design.nets) or SUPPLY
     fields = setting_fields(Choice(kind, name))
