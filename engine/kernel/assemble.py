@@ -1,10 +1,9 @@
-"""Currents, charges and the matrix C + a h G of one lane at one iterate (charge form of modified nodal analysis:
-Ho, Ruehli, Brennan, IEEE Trans. Circuits Syst. 22 (1975) 504)."""
+"""Currents, charges and the matrix C + a h G of a row of lanes, each at its own iterate and with its own step (charge
+form of modified nodal analysis: Ho, Ruehli, Brennan, IEEE Trans. Circuits Syst. 22 (1975) 504)."""
 
 from __future__ import annotations
 
 from .compiled import leaf
-from .elimination import copy
 from .laws import depletion, exponential, limited, move, side_currents
 from .layout import (
     BRANCH,
@@ -32,57 +31,69 @@ from .layout import (
     Floats,
     Places,
 )
+from .vectors import Numbers, add, at, greater, put, where
 
 
 @leaf
-def linear_matrix(element: Places, group: Places, p: Floats, ah: float, a: Floats) -> None:
-    """Set a to the part of C + a h G that no iterate changes."""
-    a[:] = 0.0
-    for k in range(group[CONDUCTANCE], group[BRANCH]):
-        v = p[element[k, E_PARAMETER]]
-        if k < group[CAPACITANCE]:
-            v *= ah
-        a[element[k, E_SLOT]] += v
-        a[element[k, E_SLOT + 1]] -= v
-        a[element[k, E_SLOT + 2]] -= v
-        a[element[k, E_SLOT + 3]] += v
+def couple(matrix: Floats, element: Places, k: int, v: Numbers) -> None:
+    """Add a conductance or a capacitance v between the two nets of element k."""
+    add(matrix, element[k, E_SLOT], v)
+    add(matrix, element[k, E_SLOT + 1], -v)
+    add(matrix, element[k, E_SLOT + 2], -v)
+    add(matrix, element[k, E_SLOT + 3], v)
+
+
+@leaf
+def linear_matrices(element: Places, group: Places, p: Floats, c: Floats, g: Floats) -> None:
+    """Set c and g to what the linear primitives put into C and G."""
+    for k in range(c.shape[0]):
+        put(c, k, 0.0)
+        put(g, k, 0.0)
+    for k in range(group[CONDUCTANCE], group[CAPACITANCE]):
+        couple(g, element, k, at(p, element[k, E_PARAMETER]))
+    for k in range(group[CAPACITANCE], group[BRANCH]):
+        couple(c, element, k, at(p, element[k, E_PARAMETER]))
     for k in range(group[BRANCH], group[JUNCTION]):
-        at = element[k, E_PARAMETER]
-        a[element[k, E_SLOT]] -= ah
-        a[element[k, E_SLOT + 1]] += ah
-        a[element[k, E_SLOT + 2]] += p[at] + ah * p[at + ONE]
-        a[element[k, E_SLOT + 3]] += ah
-        a[element[k, E_SLOT + 4]] -= ah
+        own = element[k, E_PARAMETER]
+        add(g, element[k, E_SLOT], -1.0)
+        add(g, element[k, E_SLOT + 1], 1.0)
+        add(c, element[k, E_SLOT + 2], at(p, own))
+        add(g, element[k, E_SLOT + 2], at(p, own + ONE))
+        add(g, element[k, E_SLOT + 3], 1.0)
+        add(g, element[k, E_SLOT + 4], -1.0)
 
 
 @leaf
 def linear_flows(element: Places, group: Places, p: Floats, source: Floats, x: Floats, i: Floats, q: Floats) -> None:
     """Set i and q to currents and charges of the linear primitives at x."""
-    i[:] = 0.0
-    q[:] = 0.0
+    for k in range(i.shape[0]):
+        put(i, k, 0.0)
+        put(q, k, 0.0)
     for k in range(group[CONDUCTANCE], group[CAPACITANCE]):
         a = element[k, E_A]
         b = element[k, E_B]
-        flow = p[element[k, E_PARAMETER]] * (x[a] - x[b])
-        i[a] += flow
-        i[b] -= flow
+        flow = at(p, element[k, E_PARAMETER]) * (at(x, a) - at(x, b))
+        add(i, a, flow)
+        add(i, b, -flow)
     for k in range(group[CAPACITANCE], group[BRANCH]):
         a = element[k, E_A]
         b = element[k, E_B]
-        flow = p[element[k, E_PARAMETER]] * (x[a] - x[b])
-        q[a] += flow
-        q[b] -= flow
+        flow = at(p, element[k, E_PARAMETER]) * (at(x, a) - at(x, b))
+        add(q, a, flow)
+        add(q, b, -flow)
     for k in range(group[BRANCH], group[JUNCTION]):
         a = element[k, E_A]
         b = element[k, E_B]
         row = element[k, E_C]
-        at = element[k, E_PARAMETER]
-        own = element[k, E_EXTRA]
-        drive = source[own - ONE] if own > 0 else 0.0
-        i[a] += x[row]
-        i[b] -= x[row]
-        i[row] += p[at + ONE] * x[row] - (x[a] - x[b]) + drive
-        q[row] += p[at] * x[row]
+        own = element[k, E_PARAMETER]
+        driven = element[k, E_EXTRA]
+        carried = at(x, row)
+        add(i, a, carried)
+        add(i, b, -carried)
+        add(i, row, at(p, own + ONE) * carried - (at(x, a) - at(x, b)))
+        if driven > 0:
+            add(i, row, at(source, driven - ONE))
+        add(q, row, at(p, own) * carried)
 
 
 @leaf
@@ -90,48 +101,44 @@ def junctions(
     element: Places,
     group: Places,
     p: Floats,
-    ah: float,
+    ah: Numbers,
     x: Floats,
     i: Floats,
     q: Floats,
     a: Floats,
     seen: Floats,
     flow: Floats,
-    build: bool,
-) -> float:
+    moved: Numbers,
+) -> Numbers:
     """Add all two-terminal junctions; return the largest :func:`move`, infinite where one was linearised elsewhere."""
-    moved = 0.0
     first = group[JUNCTION]
     for k in range(first, group[TRANSPORT]):
-        at = element[k, E_PARAMETER]
+        j = element[k, E_PARAMETER]
         na = element[k, E_A]
         nb = element[k, E_B]
-        v = x[na] - x[nb]
-        u = limited(v, seen[k - first], p, at)
-        moved = max(moved, move(u, seen[k - first], v, p, at))
-        seen[k - first] = u
-        e, d = exponential(u * p[at + J_PER_SLOPE])
-        current = p[at + J_SATURATION] * e
-        g = p[at + J_SATURATION] * d * p[at + J_PER_SLOPE]
-        charge, c = depletion(u, p, at)
-        charge += p[at + J_TRANSIT] * current
-        c += p[at + J_TRANSIT] * g
-        side, side_g = side_currents(u, p, at)
-        current += side
-        g += side_g
-        flow[k - first] = current
-        current += g * (v - u)
-        charge += c * (v - u)
-        i[na] += current
-        i[nb] -= current
-        q[na] += charge
-        q[nb] -= charge
-        if build:
-            m = c + ah * g
-            a[element[k, E_SLOT]] += m
-            a[element[k, E_SLOT + 1]] -= m
-            a[element[k, E_SLOT + 2]] -= m
-            a[element[k, E_SLOT + 3]] += m
+        v = at(x, na) - at(x, nb)
+        old = at(seen, k - first)
+        u = limited(v, old, p, j)
+        moved = greater(move(u, old, v, p, j), moved)
+        put(seen, k - first, u)
+        e, d = exponential(u * at(p, j + J_PER_SLOPE))
+        current = at(p, j + J_SATURATION) * e
+        g = at(p, j + J_SATURATION) * d * at(p, j + J_PER_SLOPE)
+        charge, c = depletion(u, p, j)
+        charge = charge + at(p, j + J_TRANSIT) * current
+        c = c + at(p, j + J_TRANSIT) * g
+        side, side_g = side_currents(u, p, j)
+        current = current + side
+        g = g + side_g
+        put(flow, k - first, current)
+        off = v - u
+        current = current + g * off
+        charge = charge + c * off
+        add(i, na, current)
+        add(i, nb, -current)
+        add(q, na, charge)
+        add(q, nb, -charge)
+        couple(a, element, k, c + ah * g)
     return moved
 
 
@@ -140,105 +147,101 @@ def transports(
     element: Places,
     group: Places,
     p: Floats,
-    ah: float,
+    ah: Numbers,
     x: Floats,
     i: Floats,
     q: Floats,
     a: Floats,
     seen: Floats,
     flow: Floats,
-    build: bool,
-) -> float:
+    moved: Numbers,
+) -> Numbers:
     """Add all bipolar transistors in transport form (Ebers, Moll, Proc. IRE 42 (1954) 1761, as rewritten by Gummel
     and Poon, Bell Syst. Tech. J. 49 (1970) 827, with the Early effect as a factor 1 - v_BC / V_A)."""
-    moved = 0.0
     first = group[TRANSPORT]
     junctions_before = first - group[JUNCTION]
     for k in range(first, group[FAMILIES]):
-        at = element[k, E_PARAMETER]
-        pe = at + T_EMITTER_JUNCTION
-        pc = at + T_COLLECTOR_JUNCTION
+        t = element[k, E_PARAMETER]
+        pe = t + T_EMITTER_JUNCTION
+        pc = t + T_COLLECTOR_JUNCTION
         nc = element[k, E_A]
         nb = element[k, E_B]
         ne = element[k, E_C]
         sign = 1.0 if element[k, E_EXTRA] == 1 else -1.0
         own = junctions_before + (k - first) + (k - first)
+        vb = at(x, nb)
 
-        vbe = sign * (x[nb] - x[ne])
-        ve = limited(vbe, seen[own], p, pe)
-        moved = max(moved, move(ve, seen[own], vbe, p, pe))
-        seen[own] = ve
-        saturation = p[pe + J_SATURATION]
-        ee, de = exponential(ve * p[pe + J_PER_SLOPE])
+        vbe = sign * (vb - at(x, ne))
+        old = at(seen, own)
+        ve = limited(vbe, old, p, pe)
+        moved = greater(move(ve, old, vbe, p, pe), moved)
+        put(seen, own, ve)
+        saturation = at(p, pe + J_SATURATION)
+        ee, de = exponential(ve * at(p, pe + J_PER_SLOPE))
         forward = saturation * ee
-        gf = saturation * de * p[pe + J_PER_SLOPE]
+        gf = saturation * de * at(p, pe + J_PER_SLOPE)
         qe, ce = depletion(ve, p, pe)
-        qe += p[pe + J_TRANSIT] * forward
-        ce += p[pe + J_TRANSIT] * gf
+        qe = qe + at(p, pe + J_TRANSIT) * forward
+        ce = ce + at(p, pe + J_TRANSIT) * gf
         side, side_g = side_currents(ve, p, pe)
-        ibe = forward * p[at + T_GAIN_FORWARD] + side
-        gbe = gf * p[at + T_GAIN_FORWARD] + side_g
+        ibe = forward * at(p, t + T_GAIN_FORWARD) + side
+        gbe = gf * at(p, t + T_GAIN_FORWARD) + side_g
 
-        vbc = sign * (x[nb] - x[nc])
-        vc = vbc
-        reverse = 0.0
-        gr = 0.0
-        qc = 0.0
-        cc = 0.0
-        ibc = 0.0
-        gbc = 0.0
-        if p[at + T_COLLECTOR] != 0.0:
-            vc = limited(vbc, seen[own + ONE], p, pc)
-            moved = max(moved, move(vc, seen[own + ONE], vbc, p, pc))
-            ec, dc = exponential(vc * p[pc + J_PER_SLOPE])
-            reverse = saturation * ec
-            gr = saturation * dc * p[pc + J_PER_SLOPE]
-            qc, cc = depletion(vc, p, pc)
-            qc += p[pc + J_TRANSIT] * reverse
-            cc += p[pc + J_TRANSIT] * gr
-            side, side_g = side_currents(vc, p, pc)
-            ibc = reverse * p[at + T_GAIN_REVERSE] + side
-            gbc = gr * p[at + T_GAIN_REVERSE] + side_g
-        seen[own + ONE] = vc
+        # A law without a collector junction has all that follows multiplied by nothing.
+        collects = at(p, t + T_COLLECTOR)
+        vbc = sign * (vb - at(x, nc))
+        old = at(seen, own + ONE)
+        vc = where(collects != 0.0, limited(vbc, old, p, pc), vbc)
+        moved = greater(move(vc, old, vbc, p, pc) * collects, moved)
+        put(seen, own + ONE, vc)
+        ec, dc = exponential(vc * at(p, pc + J_PER_SLOPE))
+        reverse = collects * saturation * ec
+        gr = collects * saturation * dc * at(p, pc + J_PER_SLOPE)
+        qc, cc = depletion(vc, p, pc)
+        qc = qc + at(p, pc + J_TRANSIT) * reverse
+        cc = cc + at(p, pc + J_TRANSIT) * gr
+        side, side_g = side_currents(vc, p, pc)
+        ibc = reverse * at(p, t + T_GAIN_REVERSE) + side
+        gbc = gr * at(p, t + T_GAIN_REVERSE) + side_g
 
-        early = 1.0 - vc * p[at + T_EARLY]
-        over = (forward - reverse) * early
+        early = 1.0 - vc * at(p, t + T_EARLY)
+        net = forward - reverse
+        over = net * early
         over_e = gf * early
-        over_c = -gr * early - (forward - reverse) * p[at + T_EARLY]
+        over_c = -gr * early - net * at(p, t + T_EARLY)
 
-        flow[own] = sign * (over - ibc)
-        flow[own + ONE] = sign * (ibe + ibc)
+        put(flow, own, sign * (over - ibc))
+        put(flow, own + ONE, sign * (ibe + ibc))
 
         # Companion offsets: the laws were evaluated at ve, vc and are continued linearly to the iterate.
         off_e = vbe - ve
         off_c = vbc - vc
-        over += over_e * off_e + over_c * off_c
-        ibe += gbe * off_e
-        ibc += gbc * off_c
-        qe += ce * off_e
-        qc += cc * off_c
+        over = over + over_e * off_e + over_c * off_c
+        ibe = ibe + gbe * off_e
+        ibc = ibc + gbc * off_c
+        qe = qe + ce * off_e
+        qc = qc + cc * off_c
 
-        i[nc] += sign * (over - ibc)
-        i[nb] += sign * (ibe + ibc)
-        i[ne] -= sign * (over + ibe)
-        q[nc] -= sign * qc
-        q[nb] += sign * (qe + qc)
-        q[ne] -= sign * qe
+        add(i, nc, sign * (over - ibc))
+        add(i, nb, sign * (ibe + ibc))
+        add(i, ne, -sign * (over + ibe))
+        add(q, nc, -sign * qc)
+        add(q, nb, sign * (qe + qc))
+        add(q, ne, -sign * qe)
 
-        if build:
-            me = ce + ah * gbe
-            mc = cc + ah * gbc
-            te = ah * over_e
-            tc = ah * over_c
-            a[element[k, E_SLOT]] += mc - tc
-            a[element[k, E_SLOT + 1]] += te + tc - mc
-            a[element[k, E_SLOT + 2]] -= te
-            a[element[k, E_SLOT + 3]] -= mc
-            a[element[k, E_SLOT + 4]] += me + mc
-            a[element[k, E_SLOT + 5]] -= me
-            a[element[k, E_SLOT + 6]] += tc
-            a[element[k, E_SLOT + 7]] -= te + tc + me
-            a[element[k, E_SLOT + 8]] += te + me
+        me = ce + ah * gbe
+        mc = cc + ah * gbc
+        te = ah * over_e
+        tc = ah * over_c
+        add(a, element[k, E_SLOT], mc - tc)
+        add(a, element[k, E_SLOT + 1], te + tc - mc)
+        add(a, element[k, E_SLOT + 2], -te)
+        add(a, element[k, E_SLOT + 3], -mc)
+        add(a, element[k, E_SLOT + 4], me + mc)
+        add(a, element[k, E_SLOT + 5], -me)
+        add(a, element[k, E_SLOT + 6], tc)
+        add(a, element[k, E_SLOT + 7], -(te + tc + me))
+        add(a, element[k, E_SLOT + 8], te + me)
     return moved
 
 
@@ -248,23 +251,24 @@ def evaluate(
     group: Places,
     p: Floats,
     source: Floats,
-    linear: Floats,
-    ah: float,
+    c: Floats,
+    g: Floats,
+    ah: Numbers,
     x: Floats,
     i: Floats,
     q: Floats,
     a: Floats,
     seen: Floats,
     flow: Floats,
-    build: bool,
-) -> float:
+) -> Numbers:
     """Set i, q and the matrix a at x; return how far junctions moved, infinite where linearised away from x.
 
-    ``seen`` are the junction voltages of the iterate before and become those of this one; ``flow`` the device currents.
-    Without ``build`` the matrix stays that of an earlier iterate.
+    ``seen`` are the junction voltages of the iterate before and become those of this one; ``flow`` the device currents;
+    ``c`` and ``g`` come from :func:`linear_matrices`.
     """
     linear_flows(element, group, p, source, x, i, q)
-    if build:
-        copy(linear, a)
-    moved = junctions(element, group, p, ah, x, i, q, a, seen, flow, build)
-    return max(moved, transports(element, group, p, ah, x, i, q, a, seen, flow, build))
+    for k in range(a.shape[0]):
+        put(a, k, at(c, k) + ah * at(g, k))
+    moved = 0.0 * ah
+    moved = junctions(element, group, p, ah, x, i, q, a, seen, flow, moved)
+    return transports(element, group, p, ah, x, i, q, a, seen, flow, moved)

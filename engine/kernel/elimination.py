@@ -9,6 +9,9 @@ from collections.abc import Iterable
 
 from .compiled import leaf
 from .layout import Floats, Places, places
+from .vectors import add, at, put, where
+
+LEAST_PIVOT = 1e-60
 
 
 class Pattern:
@@ -89,29 +92,18 @@ class Plan:
 
 
 @leaf
-def copy(source: Floats, target: Floats) -> None:
-    """Copy a vector; a slice assignment would compile the words of an error that cannot happen, for seconds."""
-    for k in range(target.size):
-        target[k] = source[k]
-
-
-@leaf
 def factor(a: Floats, pivot: Places, entry: Places, update: Places) -> None:
-    """Factor the stored matrix in place; the pivots are stored as their reciprocals."""
+    """Factor the stored matrix of every lane in place; the pivots are stored as their reciprocals."""
     for n in range(pivot.shape[0] - 1):
         slot = pivot[n, 1]
-        value = a[slot]
-        if abs(value) < 1e-60:
-            value = 1e-60
-        value = 1.0 / value
-        a[slot] = value
+        value = at(a, slot)
+        value = 1.0 / where(abs(value) < LEAST_PIVOT, LEAST_PIVOT, value)
+        put(a, slot, value)
         for r in range(pivot[n, 2], pivot[n + 1, 2]):
-            f = a[entry[r, 1]]
-            if f != 0.0:
-                f *= value
-                a[entry[r, 1]] = f
-                for q in range(entry[r, 3], entry[r + 1, 3]):
-                    a[update[q, 0]] -= f * a[update[q, 1]]
+            f = at(a, entry[r, 1]) * value
+            put(a, entry[r, 1], f)
+            for m in range(entry[r, 3], entry[r + 1, 3]):
+                add(a, update[m, 0], -f * at(a, update[m, 1]))
 
 
 @leaf
@@ -119,14 +111,13 @@ def substitute(a: Floats, b: Floats, pivot: Places, entry: Places) -> None:
     """Solve with the factored matrix; b holds the right-hand side and then the solution."""
     count = pivot.shape[0] - 1
     for n in range(count):
-        v = b[pivot[n, 0]]
-        if v != 0.0:
-            for r in range(pivot[n, 2], pivot[n + 1, 2]):
-                b[entry[r, 0]] -= a[entry[r, 1]] * v
+        v = at(b, pivot[n, 0])
+        for r in range(pivot[n, 2], pivot[n + 1, 2]):
+            add(b, entry[r, 0], -at(a, entry[r, 1]) * v)
     for back in range(count):
         n = count - 1 - back
         k = pivot[n, 0]
-        v = b[k]
+        v = at(b, k)
         for r in range(pivot[n, 2], pivot[n + 1, 2]):
-            v -= a[entry[r, 2]] * b[entry[r, 0]]
-        b[k] = v * a[pivot[n, 1]]
+            v = v - at(a, entry[r, 2]) * at(b, entry[r, 0])
+        put(b, k, v * at(a, pivot[n, 1]))

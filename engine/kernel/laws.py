@@ -3,7 +3,7 @@
 Diode law with ideality (Shockley, Bell Syst. Tech. J. 28 (1949) 435); depletion charge with grading coefficient and a
 linear capacitance beyond half the built-in potential (textbook form); reverse breakdown as a mirrored exponential.
 The exponential continues as its tangent above 80 slopes so that no iterate can overflow; a working junction in the cold
-comes to more than 40. ``p[at:]`` are the parameters of the junction.
+comes to more than 40. ``p[j:]`` are the parameters of the junction; numbers are those of all lanes of a row.
 """
 
 from __future__ import annotations
@@ -28,6 +28,7 @@ from .layout import (
     J_STORED,
     Floats,
 )
+from .vectors import Flags, Numbers, any_of, at, exp, greater, lesser, log, root, where
 
 TOP = 80.0
 EXP_TOP = math.exp(TOP)
@@ -37,92 +38,90 @@ LEAKAGE_KNEE = 0.01  # V; generation and surface leakage is nearly constant beyo
 
 
 @leaf
-def exponential(y: float) -> tuple[float, float]:
+def exponential(y: Numbers) -> tuple[Numbers, Numbers]:
     """Return exp(y) - 1 and its derivative, continued as a straight line above ``TOP``."""
-    if y > TOP:
-        return EXP_TOP * (1.0 + y - TOP) - 1.0, EXP_TOP
-    if y < FLOOR:
-        return -1.0, 0.0
-    e = math.exp(y)
-    return e - 1.0, e
+    e = exp(greater(lesser(y, TOP), FLOOR))
+    return e * (1.0 + greater(y - TOP, 0.0)) - 1.0, e
 
 
 @leaf
-def limited(v: float, old: float, p: Floats, at: int) -> float:
+def stepped(asked: Numbers, base: Numbers, slope: Numbers) -> Numbers:
+    """Return where the tangent at ``base`` of an exponential meets the value the exponential has at ``asked``."""
+    return base + slope * log(1.0 + greater(asked - base, 0.0) / slope)
+
+
+@leaf
+def limited(v: Numbers, old: Numbers, p: Floats, j: int) -> Numbers:
     """Return the voltage at which to linearise a junction: logarithmic steps into conduction and into breakdown.
 
     A full Newton step on an exponential overshoots by orders of magnitude; stepping by the logarithm of the asked
     step keeps the linearised current at the point where the exponential would carry the asked current.
     """
-    if v > p[at + J_KNEE]:
-        slope = p[at + J_SLOPE]
-        base = max(old, p[at + J_KNEE])
-        if v > base + 2.0 * slope:
-            v = base + slope * math.log(1.0 + (v - base) / slope)
-    elif p[at + J_BREAKDOWN] > 0.0 and -v - p[at + J_BREAKDOWN] > p[at + J_BREAKDOWN_KNEE]:
-        slope = p[at + J_BREAKDOWN_SLOPE]
-        beyond = -v - p[at + J_BREAKDOWN]
-        base = max(-old - p[at + J_BREAKDOWN], p[at + J_BREAKDOWN_KNEE])
-        if beyond > base + 2.0 * slope:
-            v = -(base + slope * math.log(1.0 + (beyond - base) / slope)) - p[at + J_BREAKDOWN]
-    return v
+    u = v
+    knee = at(p, j + J_KNEE)
+    slope = at(p, j + J_SLOPE)
+    base = greater(old, knee)
+    far = v > base + 2.0 * slope
+    if any_of(far):
+        u = where(far, stepped(v, base, slope), u)
+    breakdown = at(p, j + J_BREAKDOWN)
+    knee = at(p, j + J_BREAKDOWN_KNEE)
+    slope = at(p, j + J_BREAKDOWN_SLOPE)
+    beyond = -v - breakdown
+    base = greater(-old - breakdown, knee)
+    far = (breakdown > 0.0) & (beyond > base + 2.0 * slope)
+    if any_of(far):
+        u = where(far, -stepped(beyond, base, slope) - breakdown, u)
+    return u
 
 
 @leaf
-def move(u: float, old: float, asked: float, p: Floats, at: int) -> float:
+def move(u: Numbers, old: Numbers, asked: Numbers, p: Floats, j: int) -> Numbers:
     """Return how many slopes a junction moved from ``old`` to ``u``: its conductance changed by so many powers of e.
 
     Infinite where it was linearised away from the voltage asked for, 0 where it conducts next to nothing.
     """
-    if u != asked:
-        return math.inf
-    moved = 0.0
-    slope = p[at + J_SLOPE]
-    if max(u, old) > p[at + J_KNEE] - CONDUCTING * slope:
-        moved = abs(u - old) * p[at + J_PER_SLOPE]
-    elif p[at + J_BREAKDOWN] > 0.0:
-        slope = p[at + J_BREAKDOWN_SLOPE]
-        if -min(u, old) - p[at + J_BREAKDOWN] > p[at + J_BREAKDOWN_KNEE] - CONDUCTING * slope:
-            moved = abs(u - old) / slope
-    return moved
+    way = abs(u - old)
+    conducts = greater(u, old) > at(p, j + J_KNEE) - CONDUCTING * at(p, j + J_SLOPE)
+    moved = where(conducts, way * at(p, j + J_PER_SLOPE), 0.0)
+    breakdown = at(p, j + J_BREAKDOWN)
+    edge = at(p, j + J_BREAKDOWN_KNEE) - CONDUCTING * at(p, j + J_BREAKDOWN_SLOPE)
+    breaks = ~conducts & (breakdown > 0.0) & (-lesser(u, old) - breakdown > edge)
+    moved = where(breaks, way * at(p, j + J_PER_BREAKDOWN_SLOPE), moved)
+    return where(u != asked, math.inf, moved)
 
 
 @leaf
-def side_currents(v: float, p: Floats, at: int) -> tuple[float, float]:
+def side_currents(v: Numbers, p: Floats, j: int) -> tuple[Numbers, Numbers]:
     """Return the current and conductance of leakage and breakdown, the parts that carry no stored charge."""
-    i = 0.0
-    g = 0.0
-    leakage = p[at + J_LEAKAGE]
-    if leakage > 0.0:
-        share = 1.0 / (abs(v) + LEAKAGE_KNEE)
-        i = leakage * v * share
-        g = leakage * LEAKAGE_KNEE * share * share
-    if p[at + J_BREAKDOWN] > 0.0:
-        y = -(v + p[at + J_BREAKDOWN]) * p[at + J_PER_BREAKDOWN_SLOPE]
-        if y > FLOOR:
-            e, d = exponential(y)
-            i -= p[at + J_BREAKDOWN_CURRENT] * (e + 1.0)
-            g += p[at + J_BREAKDOWN_CURRENT] * d * p[at + J_PER_BREAKDOWN_SLOPE]
+    leakage = at(p, j + J_LEAKAGE)
+    share = 1.0 / (abs(v) + LEAKAGE_KNEE)
+    i = leakage * v * share
+    g = leakage * LEAKAGE_KNEE * share * share
+    breakdown = at(p, j + J_BREAKDOWN)
+    y = -(v + breakdown) * at(p, j + J_PER_BREAKDOWN_SLOPE)
+    broken = (breakdown > 0.0) & (y > FLOOR)
+    if any_of(broken):
+        e, d = exponential(y)
+        carried = where(broken, at(p, j + J_BREAKDOWN_CURRENT), 0.0)
+        i = i - carried * (e + 1.0)
+        g = g + carried * d * at(p, j + J_PER_BREAKDOWN_SLOPE)
     return i, g
 
 
 @leaf
-def depletion(v: float, p: Floats, at: int) -> tuple[float, float]:
-    """Return charge and capacitance of the depletion layer at junction voltage v."""
-    c0 = p[at + J_CAPACITANCE]
-    if c0 == 0.0:
-        return 0.0, 0.0
-    m = p[at + J_GRADING]
-    if m == 0.0:
-        return c0 * v, c0
-    half = 0.5 * p[at + J_POTENTIAL]
-    s = 1.0 - min(v, half) * p[at + J_PER_POTENTIAL]
-    power = 1.0 / math.sqrt(s) if m == 0.5 else math.exp(-m * math.log(s))
-    c = c0 * power
-    q = p[at + J_STORED] * (1.0 - s * power)
-    if v > half:
-        rise = c * m / half
-        d = v - half
-        q += d * (c + 0.5 * rise * d)
-        c += rise * d
-    return q, c
+def depletion(v: Numbers, p: Floats, j: int) -> tuple[Numbers, Numbers]:
+    """Return charge and capacitance of the depletion layer at junction voltage v; grading 0 is a plain capacitance."""
+    m = at(p, j + J_GRADING)
+    half = 0.5 * at(p, j + J_POTENTIAL)
+    over = greater(v - half, 0.0)
+    s = 1.0 - (v - over) * at(p, j + J_PER_POTENTIAL)
+    power = 1.0 / root(s)
+    other: Flags = m != 0.5
+    if any_of(other):
+        power = where(other, exp(-m * log(s)), power)
+    c = at(p, j + J_CAPACITANCE) * power
+    rise = c * m / half
+    plain = m == 0.0
+    q = where(plain, at(p, j + J_CAPACITANCE) * (v - over), at(p, j + J_STORED) * (1.0 - s * power))
+    return q + over * (c + 0.5 * rise * over), c + rise * over

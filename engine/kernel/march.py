@@ -1,24 +1,26 @@
-"""Lanes from power-up to the end: TR-BDF2 with limited Newton, exact events, per-lane step control.
+"""Lanes from power-up to the end: exact events, a step length and a Newton iteration for each lane.
 
-TR-BDF2: Bank, Coughran, Fichtner, Grosse, Rose, Smith, IEEE Trans. CAD 4 (1985) 436; embedded third-order error and
-the filter through the iteration matrix: Hosea, Shampine, Appl. Numer. Math. 20 (1996) 21. Both stages share C + a h G.
+The lanes of a row advance together, one iterate at a time, each in its own phase of its own step: no lane waits for
+another, and a lane that ends makes room for the next.
 """
 
 from __future__ import annotations
 
 import math
+from typing import NamedTuple
 
 import numpy as np
 
-from .assemble import evaluate, linear_matrix
+from .assemble import evaluate, linear_matrices
 from .compiled import compiled, leaf
-from .elimination import copy, substitute
 from .layout import (
     DONE,
+    JUNCTION,
     OVERWORKED,
     SEEN,
     STOPPED,
     TRACE_FULL,
+    TRANSPORT,
     UNSOLVED,
     Bytes,
     Control,
@@ -29,100 +31,172 @@ from .layout import (
     Results,
     Rows,
     Topology,
+    zeros,
 )
-from .newton import ROUND_OFF, solve
-from .rows import GAMMA, close_rows, keep_signals, open_rows, watch
-
-A = 1.0 - 0.5 * math.sqrt(2.0)
-TO_STAGE = 1.0 / (GAMMA * (2.0 - GAMMA))
-TO_START = (1.0 - GAMMA) * (1.0 - GAMMA) / (GAMMA * (2.0 - GAMMA))
-ERROR_START = (math.sqrt(2.0) - 1.0) / 3.0
-ERROR_STAGE = -1.0 / 3.0
-ERROR_END = 2.0 * A / 3.0
+from .newton import improve, residual, settled, worst_unknown
+from .rows import close_rows, keep_signals, open_rows, watch
+from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, take
+from .vectors import WIDTH, any_of, at, flag, put, same
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
 FIRST = 1e-10  # s, the first step after it
 SMALLEST = 1e-16  # s
 GLANCES = 12  # looks at the start until junctions, limited in each, have their charges at any sensible voltage
 
+# What a lane is doing: nothing; looking at its start; solving a jump, the stage of a step, its end.
+IDLE, GLANCE, LEAP, STAGE, END = 0, 1, 2, 3, 4
+# What came of an iterate.
+NOTHING, LOOKED, LEAPT, STAGED, ARRIVED, AGAIN, STARTS, FINISHED = 0, 1, 2, 3, 4, 5, 6, 7
+NOT_ENDED = -1
+
+# Rows of ``Work.clock``: numbers of each lane.
+AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma h; h; the step before
+ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
+MOVED, ERROR, GROWTH = 7, 8, 9
+NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN = 10, 11, 12, 13, 14, 15, 16
+CLOCK = 17
+
+
+class Work(NamedTuple):
+    """Arrays to work in, one column per lane of the row."""
+
+    x: Floats  # (n_all, WIDTH) the iterate; then start and stage of the step: voltages, charges, currents
+    q: Floats
+    i: Floats
+    x0: Floats
+    q0: Floats
+    i0: Floats
+    xg: Floats
+    qg: Floats
+    ig: Floats
+    first: Floats  # (n_free, WIDTH) parabola of the step before
+    second: Floats
+    constant: Floats
+    tolerance: Floats
+    rhs: Floats
+    trial: Floats
+    a: Floats  # (entries + 1, WIDTH) matrix, its factors, and the linear part of C and of G
+    factors: Floats
+    c: Floats
+    g: Floats
+    seen: Floats  # (devices, WIDTH) junction voltages, then device currents
+    seen0: Floats
+    flow: Floats
+    flow0: Floats
+    flow_g: Floats
+    p: Floats  # (parameters, WIDTH)
+    source: Floats  # (sources, WIDTH)
+    clock: Floats  # (CLOCK, WIDTH)
+    s0: Floats  # (WIDTH, signals) a signal at start, stage and end of the step in which it was read last
+    sg: Floats
+    s1: Floats
+    read_at: Ints  # (WIDTH, signals)
+    window: Floats  # (WIDTH, rows, 2)
+    phase: Ints  # (WIDTH,) and so the next
+    came: Ints
+    failed: Ints
+    lane: Ints
+    segment: Ints
+    step: Ints
+    moving: Ints
+    diagonal: Places  # (n_free,) slot of an unknown's diagonal
+
+
+def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
+    """Arrays for the lanes of one row."""
+    free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
+    transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
+    devices = int(top.group[TRANSPORT]) - int(top.group[JUNCTION]) + 2 * transports
+    signals = rows.signal.size - 1
+    diagonal = np.zeros(free, dtype=np.uint32)
+    diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
+    return Work(
+        *(zeros(n_all, WIDTH) for _ in range(9)),
+        *(zeros(free, WIDTH) for _ in range(6)),
+        *(zeros(entries + 1, WIDTH) for _ in range(4)),
+        *(zeros(devices, WIDTH) for _ in range(5)),
+        zeros(parameters, WIDTH),
+        zeros(sources, WIDTH),
+        zeros(CLOCK, WIDTH),
+        *(zeros(WIDTH, signals) for _ in range(3)),
+        np.zeros((WIDTH, signals), dtype=np.int64),
+        zeros(WIDTH, rows.row.shape[0], 2),
+        *(np.zeros(WIDTH, dtype=np.int64) for _ in range(7)),
+        diagonal,
+    )
+
 
 @leaf
-def set_sources(source: Floats, sine: Floats, base: float, t: float, n_free: int, out: Floats, x: Floats) -> None:
+def set_sources(
+    source: Floats,
+    sine: Floats,
+    lane: int,
+    segment: int,
+    base: float,
+    t: float,
+    n_free: int,
+    w: int,
+    out: Floats,
+    x: Floats,
+) -> None:
     """Set every source to its value at t seconds after the segment's start at base, and the known nets in x to it."""
-    known = x.size - n_free
-    for k in range(out.size):
-        v = source[k, 0] + source[k, 1] * t
-        if sine[k, 0] != 0.0:
-            v += sine[k, 0] * math.sin(2.0 * math.pi * sine[k, 1] * (base + t) + sine[k, 2])
-        out[k] = v
+    known = x.shape[0] - n_free
+    for k in range(out.shape[0]):
+        v = source[lane, segment, k, 0] + source[lane, segment, k, 1] * t
+        if sine[lane, k, 0] != 0.0:
+            v += sine[lane, k, 0] * math.sin(2.0 * math.pi * sine[lane, k, 1] * (base + t) + sine[lane, k, 2])
+        out[k, w] = v
         if k < known:
-            x[n_free + k] = v
+            x[n_free + k, w] = v
 
 
 @leaf
-def set_switches(switched: Ints, switch: Floats, t: float, p: Floats) -> bool:
-    """Set the parameters that events move; return whether any of them moves within this segment."""
-    moving = False
+def set_switches(switched: Ints, switch: Floats, lane: int, segment: int, t: float, w: int, p: Floats) -> int:
+    """Set the parameters that events move; return 1 where any of them moves within this segment."""
+    moving = 0
     for k in range(switched.size):
-        moving = moving or switch[k, 1] != 0.0
-        p[switched[k]] = switch[k, 0] + switch[k, 1] * t
+        if switch[lane, segment, k, 1] != 0.0:
+            moving = 1
+        p[switched[k], w] = switch[lane, segment, k, 0] + switch[lane, segment, k, 1] * t
     return moving
 
 
 @leaf
-def error_of(
-    relative: Floats,
-    absolute: Floats,
-    pivot: Places,
-    entry: Places,
-    factors: Floats,
-    rhs: Floats,
-    x0: Floats,
-    x1: Floats,
-    i0: Floats,
-    ig: Floats,
-    i1: Floats,
-    q1: Floats,
-    a: Floats,
-    diagonal: Places,
-    h: float,
-) -> float:
-    """Return the largest filtered error of the step in parts of the tolerance (1 = just allowed)."""
-    for k in range(rhs.size):
-        r = h * (ERROR_START * i0[k] + ERROR_STAGE * ig[k] + ERROR_END * i1[k])
-        if abs(r) <= 4.0 * ROUND_OFF * (abs(q1[k]) + abs(a[diagonal[k]] * x1[k])):
-            r = 0.0
-        rhs[k] = r
-    substitute(factors, rhs, pivot, entry)
-    largest = 0.0
-    for k in range(rhs.size):
-        size = max(abs(x0[k]), abs(x1[k]))
-        largest = max(largest, abs(rhs[k]) / (relative[k] * size + absolute[k]))
-    return largest
-
-
-@leaf
-def keep_states(keep_row: Ints, status: Ints, x: Floats, at: float, kept: Floats, kept_at: Floats) -> None:
+def keep_states(
+    keep_row: Ints, status: Ints, x: Floats, at_time: float, w: int, lane: int, kept: Floats, kept_at: Floats
+) -> None:
     """Keep the state at the end of the step in which a row was seen for which that was asked."""
     for k in range(keep_row.size):
-        if kept_at[k] < 0.0 and status[keep_row[k]] == SEEN:
-            kept_at[k] = at
-            for n in range(x.size):
-                kept[k, n] = x[n]
+        if kept_at[lane, k] < 0.0 and status[lane, keep_row[k]] == SEEN:
+            kept_at[lane, k] = at_time
+            for n in range(x.shape[0]):
+                kept[lane, k, n] = x[n, w]
 
 
 @leaf
-def keep_parabola(x0: Floats, xg: Floats, x1: Floats, h: float, first: Floats, second: Floats) -> None:
-    """Keep the parabola of an accepted step, about its end, for the predictor of the next."""
-    for k in range(first.size):
-        end = (x1[k] - xg[k]) / ((1.0 - GAMMA) * h)
-        bend = (end - (xg[k] - x0[k]) / (GAMMA * h)) / h
-        first[k] = end + bend * (1.0 - GAMMA) * h
-        second[k] = bend
+def trace(x: Floats, w: int, when: float, times: Floats, values: Floats, used: Ints) -> bool:
+    """Keep a point of the only lane; return False where there is no more room."""
+    n = used[0]
+    if n >= times.size:
+        return False
+    times[n] = when
+    for k in range(x.shape[0]):
+        values[n, k] = x[k, w]
+    used[0] = n + 1
+    return True
+
+
+@leaf
+def next_segment(length: Floats, lane: int, after: int) -> int:
+    """Return the next segment that takes time, or as many as there are."""
+    k = after + 1
+    while k < length.shape[1] and length[lane, k] <= 0.0:
+        k += 1
+    return k
 
 
 @compiled
-def march_lane(
+def march_rows(
     top: Topology,
     table: Floats,
     starts: Floats,
@@ -130,230 +204,300 @@ def march_lane(
     rows: Rows,
     control: Control,
     results: Results,
-    lane: int,
-) -> tuple[int, int, float]:
-    """Step one lane through all its segments; return how it ended, near which unknown, and when."""
-    element = top.element
-    group = top.group
-    pivot = top.pivot
-    entry = top.entry
-    update = top.update
-    nets = top.size[0]
-    free = top.size[1]
-    n_all = top.size[2]
-    entries = top.size[3]
-    sine = program.sine[lane]
-    length = program.length[lane]
-    relative = control.relative
-    absolute = control.absolute
-    bounds = control.bounds
-    value = results.value[lane]
-    time = results.time[lane]
-    status = results.status[lane]
-    counts = results.work[lane]
-    x0 = results.final[lane]
-    kept = results.kept[lane]
-    kept_at = results.kept_at[lane]
+    work: Work,
+    low: int,
+    high: int,
+    cancel: Bytes,
+) -> None:
+    """Step lanes low .. high-1, WIDTH of them at a time; stop where ``cancel[0]`` is set."""
+    element, group = top.element, top.group
+    pivot, entry, update = top.pivot, top.entry, top.update
+    nets, free = top.size[0], top.size[1]
+    relative, absolute, bounds = control.relative, control.absolute, control.bounds
+    x, q, i = work.x, work.q, work.i
+    x0, q0, i0 = work.x0, work.q0, work.i0
+    xg, qg, ig = work.xg, work.qg, work.ig
+    first, second, constant, tolerance = work.first, work.second, work.constant, work.tolerance
+    rhs, trial = work.rhs, work.trial
+    a, factors, c, g = work.a, work.factors, work.c, work.g
+    seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
+    p, source, clock = work.p, work.source, work.clock
+    s0, sg, s1, read_at, window = work.s0, work.sg, work.s1, work.read_at, work.window
+    phase, came, failed, lane_of, segment_of = work.phase, work.came, work.failed, work.lane, work.segment
+    step, moving, diagonal = work.step, work.moving, work.diagonal
+    value, time, status = results.value, results.time, results.status
+    counts = results.work
     row = rows.row
     stop_row = rows.stop_row[0]
     tracing = results.trace_time.size > 0
 
-    p = table[lane].copy()
-    copy(starts[lane], x0)
-    # Start, stage and end of a step: voltages, charges, currents. One array each is much quicker to compile.
-    states = np.zeros((8, n_all))
-    xg, x1, q0, qg = states[0], states[1], states[2], states[3]
-    q1, i0, ig, i1 = states[4], states[5], states[6], states[7]
-    vectors = np.zeros((5, free))
-    first, second, constant, tolerance, rhs = vectors[0], vectors[1], vectors[2], vectors[3], vectors[4]
-    matrices = np.zeros((3, entries + 1))
-    a, factors, linear = matrices[0], matrices[1], matrices[2]
-    devices = np.zeros((5, np.int64(group[4]) - np.int64(group[3]) + 2 * (np.int64(group[5]) - np.int64(group[4]))))
-    seen, seen0, flow0, flow_g, flow = devices[0], devices[1], devices[2], devices[3], devices[4]
-    signals = np.zeros((3, rows.signal.size - 1))
-    s0, sg, s1 = signals[0], signals[1], signals[2]
-    read_at = np.zeros(rows.signal.size - 1, dtype=np.int64)
-    now = 1
-    source = np.zeros(program.source.shape[2])
-    window = np.zeros((row.shape[0], 2))
-    diagonal = np.zeros(free, dtype=np.uint32)
-    for n in range(free):
-        diagonal[pivot[n, 0]] = pivot[n, 1]
+    upcoming = low
+    running = 0
+    for w in range(WIDTH):
+        came[w] = FINISHED
+    while True:
+        # Lanes that ended make room; what is left over idles on the last one's numbers.
+        dirty = False
+        for w in range(WIDTH):
+            if came[w] == FINISHED:
+                came[w] = NOTHING
+                phase[w] = IDLE
+                if upcoming < high:
+                    lane = upcoming
+                    upcoming += 1
+                    running += 1
+                    lane_of[w] = lane
+                    for k in range(p.shape[0]):
+                        p[k, w] = table[lane, k]
+                    for k in range(x.shape[0]):
+                        x[k, w] = starts[lane, k]
+                    for k in range(seen.shape[0]):
+                        seen[k, w] = 0.0
+                    open_rows(row, rows.offset, w, lane, window, value, time, status)
+                    for k in range(counts.shape[1]):
+                        counts[lane, k] = 0
+                    fastest = 0.0
+                    for k in range(program.sine.shape[1]):
+                        if program.sine[lane, k, 0] != 0.0:
+                            fastest = max(fastest, program.sine[lane, k, 1])
+                    clock[LONGEST, w] = 0.05 / fastest if fastest > 0.0 else math.inf
+                    clock[BASE, w] = 0.0
+                    clock[AH, w] = 0.0
+                    clock[ROUND, w] = 0.0
+                    clock[MOST, w] = GLANCES
+                    step[w] = 1
+                    segment_of[w] = next_segment(program.length, lane, -1)
+                    if segment_of[w] < program.length.shape[1]:
+                        set_switches(program.switched, program.switch, lane, segment_of[w], 0.0, w, p)
+                        phase[w] = GLANCE
+                    dirty = True
+        if running == 0 or cancel[0] != 0:
+            return
+        if dirty:
+            linear_matrices(element, group, p, c, g)
 
-    fastest = 0.0
-    for k in range(sine.shape[0]):
-        if sine[k, 0] != 0.0:
-            fastest = max(fastest, sine[k, 1])
-    longest = 0.05 / fastest if fastest > 0.0 else math.inf
+        ah = at(clock, AH)
+        h = at(clock, LENGTH)
+        moved = evaluate(element, group, p, source, c, g, ah, x, i, q, a, seen, flow)
+        finite, inside = residual(nets, ah, i, q, a, diagonal, constant, tolerance, rhs)
+        rounds = at(clock, ROUND)
+        busy = same(phase, LEAP) | same(phase, STAGE) | same(phase, END)
+        solved = busy & finite & inside & (rounds > 0.5) & (moved < math.inf)
+        if any_of(solved):
+            solved = solved & settled(
+                pivot, entry, factors, q, a, diagonal, x, constant, tolerance, rhs, moved, trial
+            )  # fmt: skip
+        spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))
+        going = busy & ~solved & ~spent
+        ended = solved & same(phase, END)
+        if any_of(ended):
+            error = error_of(
+                relative, absolute, pivot, entry, factors, h, x0, x, i0, ig, i, q, a, diagonal, trial
+            )  # fmt: skip
+            put(clock, ERROR, error)
+            put(clock, GROWTH, growth(error))
+        put(clock, MOVED, moved)
+        put(clock, ROUND, rounds + 1.0)
+        flag(solved, came)
+        flag(spent, failed)
 
-    open_rows(row, rows.offset, window, value, time, status)
-    counts[:] = 0
-    base = 0.0
-    h = FIRST
-    last = 0.0
-    fresh = True
-    worst = 0
-    for segment in range(length.size):
-        span = length[segment]
-        if span <= 0.0:
-            continue
-        sources = program.source[lane, segment]
-        switch = program.switch[lane, segment]
-        t = 0.0
-        if program.restart[segment] == 1 or fresh:
-            if fresh:
-                # What the signals are before anything happens.
-                set_switches(program.switched, switch, 0.0, p)
-                for _ in range(GLANCES):
-                    if evaluate(element, group, p, source, linear, 0.0, x0, i0, q0, a, seen, flow, True) < math.inf:
-                        break
-                copy(flow, flow0)
-                if tracing:
-                    copy(x0, results.trace_value[0])
-                    results.trace_used[0] = 1
-                fresh = False
-            keep_signals(element, group, rows.term, rows.factor, rows.signal, p, x0, flow0, now, s1, read_at)
-            set_switches(program.switched, switch, 0.0, p)
-            linear_matrix(element, group, p, JUMP, linear)
-            # The charges at the start are those of its voltages, whatever the sources did meanwhile.
-            evaluate(element, group, p, source, linear, JUMP, x0, i0, q0, a, seen, flow, True)
-            copy(x0, x1)
-            set_sources(sources, sine, base, JUMP, free, source, x1)
-            for k in range(free):
-                constant[k] = -q0[k]
-                tolerance[k] = relative[k] * abs(x0[k]) + absolute[k]
-            used, worst = solve(
-                element, group, pivot, entry, update, nets, p, source, linear, constant, tolerance, diagonal,
-                x1, i1, q1, a, factors, rhs, seen, flow, JUMP, bounds[2],
-            )  # fmt: skip
-            if used < 0:
-                return UNSOLVED, worst, base
-            counts[0] += 1
-            counts[2] += used
-            t = min(JUMP, 0.5 * span)
-            now += 1
-            watch(
-                element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
-                x0, x1, x1, flow0, flow, flow, base, t, 0.0, now, s0, sg, s1, read_at, value, time, status,
-            )  # fmt: skip
-            keep_states(rows.keep_row, status, x1, base + t, kept, kept_at)
-            first[:] = 0.0
-            second[:] = 0.0
-            h = FIRST
-            last = 0.0
-            copy(x1, x0)
-            copy(i1, i0)
-            copy(q1, q0)
-            copy(flow, flow0)
-            copy(seen, seen0)
-            if tracing:
-                n = results.trace_used[0]
-                if n >= results.trace_time.size:
-                    return TRACE_FULL, 0, base
-                results.trace_time[n] = base + t
-                copy(x0, results.trace_value[n])
-                results.trace_used[0] = n + 1
-        while t < span:
-            left = span - t
-            h = min(h, longest)
-            asked = h
-            if h >= left * 0.999999:
-                h = left
-            elif h > 0.5 * left:
-                h = 0.5 * left
-            counts[0] += 1
-            if counts[0] > bounds[0]:
-                return OVERWORKED, worst, base + t
+        # What came of it, lane by lane.
+        for w in range(WIDTH):
+            doing = phase[w]
+            lane = lane_of[w]
+            if doing == GLANCE:
+                if clock[MOVED, w] < math.inf or clock[ROUND, w] >= GLANCES:
+                    came[w] = LOOKED
+            elif doing == IDLE:
+                came[w] = NOTHING
+            elif came[w] != 0:
+                if doing == STAGE:
+                    counts[lane, 2] += int(clock[ROUND, w]) - 1
+                    came[w] = STAGED
+                elif doing == LEAP:
+                    counts[lane, 0] += 1
+                    counts[lane, 2] += int(clock[ROUND, w]) - 1
+                    came[w] = LEAPT
+                    clock[NOW, w] = min(JUMP, 0.5 * clock[SPAN, w])
+                    step[w] += 1
+                    watch(
+                        element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
+                        x0, x, x, flow0, flow, flow, clock[BASE, w], clock[NOW, w], 0.0, w, lane, step[w],
+                        s0, sg, s1, read_at, value, time, status,
+                    )  # fmt: skip
+                    keep_states(
+                        rows.keep_row, status, x, clock[BASE, w] + clock[NOW, w], w, lane, results.kept, results.kept_at
+                    )  # fmt: skip
+                    clock[NEXT, w] = FIRST
+                    clock[LAST, w] = 0.0
+                else:
+                    counts[lane, 2] += int(clock[ROUND, w]) - 1
+                    length = clock[LENGTH, w]
+                    grow = clock[GROWTH, w]
+                    if clock[LAST, w] == 0.0:
+                        # The first step after a jump is not judged: what a step of 1 ps leaves in the last digits of a
+                        # large charge counts as a current there, and shorter steps would only make it larger.
+                        grow = max(grow, 1.0)
+                    elif clock[ERROR, w] > 1.0 and length > JUMP:
+                        # Nothing here is quicker than a picosecond but a junction that has lost its last charge.
+                        counts[lane, 1] += 1
+                        clock[NEXT, w] = max(length * max(0.1, grow), JUMP)
+                        came[w] = AGAIN
+                        continue
+                    came[w] = ARRIVED
+                    begin = clock[BASE, w] + clock[NOW, w]
+                    step[w] += 1
+                    watch(
+                        element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
+                        x0, xg, x, flow0, flow_g, flow, begin, length, GAMMA, w, lane, step[w],
+                        s0, sg, s1, read_at, value, time, status,
+                    )  # fmt: skip
+                    keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
+                    clock[LAST, w] = length
+                    clock[NOW, w] = clock[SPAN, w] if length == clock[LEFT, w] else clock[NOW, w] + length
+                    wanted = max(length * min(3.0, grow), JUMP)
+                    asked = clock[ASKED, w]
+                    clock[NEXT, w] = wanted if length == asked else max(wanted, min(asked, 3.0 * length))
+            elif failed[w] != 0:
+                counts[lane, 3] += 1
+                clock[NEXT, w] = clock[LENGTH, w] * 0.1
+                came[w] = AGAIN
+                if doing == LEAP or clock[NEXT, w] < SMALLEST:
+                    came[w] = FINISHED
+                    results.ended[lane, 0] = UNSOLVED
+                    results.ended[lane, 1] = worst_unknown(nets, clock[AH, w], a, diagonal, tolerance, rhs, w)
+                    results.ended_at[lane] = clock[BASE, w] + clock[NOW, w]
 
-            # Stage at gamma h by the trapezoidal rule, from the parabola of the step before.
-            ah = A * h
-            d = GAMMA * h
-            moving = set_switches(program.switched, switch, t + d, p)
-            linear_matrix(element, group, p, ah, linear)
-            set_sources(sources, sine, base, t + d, free, source, xg)
-            for k in range(free):
-                xg[k] = x0[k] + d * (first[k] + d * second[k])
-                x1[k] = xg[k]
-                constant[k] = -q0[k] + ah * i0[k]
-                tolerance[k] = relative[k] * abs(x0[k]) + absolute[k]
-            used, worst = solve(
-                element, group, pivot, entry, update, nets, p, source, linear, constant, tolerance, diagonal,
-                xg, ig, qg, a, factors, rhs, seen, flow, ah, bounds[1],
-            )  # fmt: skip
-            again = -1
-            if used >= 0:
-                copy(flow, flow_g)
-                # End by the second backward difference, from the cubic through the parabola and the stage.
-                if moving:
-                    set_switches(program.switched, switch, t + h, p)
-                    linear_matrix(element, group, p, ah, linear)
-                set_sources(sources, sine, base, t + h, free, source, x1)
-                reach = 1.0 / GAMMA
-                if last > 0.0:
-                    before = (1.0 - GAMMA) * last
-                    reach = h * (h + last) * (h + before) / (d * (d + last) * (d + before))
-                for k in range(free):
-                    miss = xg[k] - x1[k]
-                    x1[k] = x0[k] + h * (first[k] + h * second[k]) + miss * reach
-                    constant[k] = TO_START * q0[k] - TO_STAGE * qg[k]
-                again, worst = solve(
-                    element, group, pivot, entry, update, nets, p, source, linear, constant, tolerance, diagonal,
-                    x1, i1, q1, a, factors, rhs, seen, flow, ah, bounds[1],
+        # Vectors are kept before the lanes that go on change the iterate.
+        staged = same(came, STAGED)
+        if any_of(staged):
+            take(staged, x, xg)
+            take(staged, q, qg)
+            take(staged, i, ig)
+            take(staged, flow, flow_g)
+        arrived = same(came, ARRIVED)
+        leapt = same(came, LEAPT) | same(came, LOOKED)
+        settles = arrived | leapt
+        if any_of(settles):
+            keep_parabola(arrived, leapt, h, x0, xg, x, first, second)
+            take(settles, x, x0)
+            take(settles, q, q0)
+            take(settles, i, i0)
+            take(settles, flow, flow0)
+            take(settles, seen, seen0)
+        again = same(came, AGAIN)
+        if any_of(again):
+            take(again, seen0, seen)
+        if any_of(going):
+            improve(pivot, entry, update, going, a, rhs, factors, x)
+
+        # What each lane does next.
+        dirty = False
+        for w in range(WIDTH):
+            if came[w] == NOTHING or came[w] == FINISHED:
+                continue
+            lane = lane_of[w]
+            segment = segment_of[w]
+            base = clock[BASE, w]
+            if came[w] == STAGED:
+                phase[w] = END
+                clock[ROUND, w] = 0.0
+                now = clock[NOW, w] + clock[LENGTH, w]
+                if moving[w] != 0:
+                    set_switches(program.switched, program.switch, lane, segment, now, w, p)
+                    dirty = True
+                set_sources(program.source, program.sine, lane, segment, base, now, free, w, source, x)
+                continue
+            how = NOT_ENDED
+            if came[w] == ARRIVED or came[w] == LEAPT:
+                if tracing and not trace(
+                    x0, w, base + clock[NOW, w], results.trace_time, results.trace_value, results.trace_used
+                ):
+                    how = TRACE_FULL
+                elif stop_row >= 0 and came[w] == ARRIVED and status[lane, stop_row] == SEEN:
+                    how = STOPPED
+            elif came[w] == LOOKED and tracing:
+                trace(x0, w, 0.0, results.trace_time, results.trace_value, results.trace_used)
+            leaps = came[w] == LOOKED
+            if leaps:
+                clock[NOW, w] = 0.0
+                clock[SPAN, w] = program.length[lane, segment]
+            elif how == NOT_ENDED and clock[NOW, w] >= clock[SPAN, w]:
+                base += clock[SPAN, w]
+                clock[BASE, w] = base
+                clock[NOW, w] = 0.0
+                segment = next_segment(program.length, lane, segment)
+                segment_of[w] = segment
+                if segment == program.length.shape[1]:
+                    how = DONE
+                else:
+                    clock[SPAN, w] = program.length[lane, segment]
+                    leaps = program.restart[segment] == 1
+                    moving[w] = 0
+            if how == NOT_ENDED and not leaps:
+                counts[lane, 0] += 1
+                if counts[lane, 0] > bounds[0]:
+                    how = OVERWORKED
+            if how != NOT_ENDED:
+                if how == DONE or how == STOPPED:
+                    close_rows(row, window, base + clock[NOW, w], w, lane, status)
+                results.ended[lane, 0] = how
+                results.ended[lane, 1] = 0
+                results.ended_at[lane] = base + clock[NOW, w]
+                came[w] = FINISHED
+                continue
+            clock[ROUND, w] = 0.0
+            if leaps:
+                keep_signals(
+                    element, group, rows.term, rows.factor, rows.signal, p, x0, flow0, w, step[w], s1, read_at
                 )  # fmt: skip
-            if again < 0:
-                counts[3] += 1
-                copy(seen0, seen)
-                h *= 0.1
-                if h < SMALLEST:
-                    return UNSOLVED, worst, base + t
-                continue
-            counts[2] += used + again
-
-            error = error_of(relative, absolute, pivot, entry, factors, rhs, x0, x1, i0, ig, i1, q1, a, diagonal, h)
-            factor_h = 0.85 * error ** (-1.0 / 3.0) if error > 1e-6 else 85.0
-            if last == 0.0:
-                # The first step after a jump is not judged: what a step of 1 ps leaves in the last digits of a large
-                # charge counts as a current there, and shorter steps would only make it larger.
-                factor_h = max(factor_h, 1.0)
-            elif error > 1.0 and h > JUMP:
-                # Nothing here is quicker than a picosecond but a junction that has lost its last charge.
-                counts[1] += 1
-                copy(seen0, seen)
-                h = max(h * max(0.1, factor_h), JUMP)
-                continue
-
-            now += 1
-            watch(
-                element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
-                x0, xg, x1, flow0, flow_g, flow, base + t, h, GAMMA, now, s0, sg, s1, read_at, value, time, status,
+                moving[w] = set_switches(program.switched, program.switch, lane, segment, 0.0, w, p)
+                dirty = dirty or program.switched.size > 0
+                phase[w] = LEAP
+                clock[MOST, w] = bounds[2]
+                clock[AH, w] = JUMP
+                clock[CARRY, w] = 0.0
+                clock[REACH, w] = 0.0
+                now = JUMP
+            else:
+                left = clock[SPAN, w] - clock[NOW, w]
+                length = min(clock[NEXT, w], clock[LONGEST, w])
+                clock[ASKED, w] = length
+                if length >= left * 0.999999:
+                    length = left
+                elif length > 0.5 * left:
+                    length = 0.5 * left
+                phase[w] = STAGE
+                clock[MOST, w] = bounds[1]
+                clock[LEFT, w] = left
+                clock[LENGTH, w] = length
+                clock[AH, w] = A * length
+                clock[CARRY, w] = A * length
+                clock[REACH, w] = GAMMA * length
+                now = clock[NOW, w] + GAMMA * length
+                if moving[w] != 0 or clock[NOW, w] == 0.0:
+                    moving[w] = set_switches(program.switched, program.switch, lane, segment, now, w, p)
+                    dirty = dirty or program.switched.size > 0
+            set_sources(program.source, program.sine, lane, segment, base, now, free, w, source, x)
+            came[w] = STARTS
+        starting = same(came, STARTS)
+        if any_of(starting):
+            begin_stage(
+                starting, relative, absolute, at(clock, REACH), at(clock, CARRY), x0, q0, i0, first, second,
+                x, constant, tolerance,
             )  # fmt: skip
-            keep_states(rows.keep_row, status, x1, base + t + h, kept, kept_at)
-            keep_parabola(x0, xg, x1, h, first, second)
-            copy(x1, x0)
-            copy(i1, i0)
-            copy(q1, q0)
-            copy(flow, flow0)
-            copy(seen, seen0)
-            last = h
-            t = span if h == left else t + h
-            if tracing:
-                n = results.trace_used[0]
-                if n >= results.trace_time.size:
-                    return TRACE_FULL, 0, base + t
-                results.trace_time[n] = base + t
-                copy(x0, results.trace_value[n])
-                results.trace_used[0] = n + 1
-            if stop_row >= 0 and status[stop_row] == SEEN:
-                close_rows(row, window, base + t, status)
-                return STOPPED, 0, base + t
-            wanted = h * min(3.0, factor_h)
-            h = max(wanted, JUMP) if h == asked else max(wanted, min(asked, 3.0 * h), JUMP)
-        base += span
-    close_rows(row, window, base, status)
-    return DONE, 0, base
+        staged = same(came, STAGED)
+        if any_of(staged):
+            begin_end(staged, at(clock, REACH), h, at(clock, LAST), x0, q0, xg, qg, first, second, x, constant)
+        if dirty:
+            linear_matrices(element, group, p, c, g)
+        for w in range(WIDTH):
+            if came[w] == FINISHED:
+                running -= 1
+                for k in range(x.shape[0]):
+                    results.final[lane_of[w], k] = x0[k, w]
 
 
-@compiled
 def march(
     top: Topology,
     table: Floats,
@@ -366,11 +510,7 @@ def march(
     high: int,
     cancel: Bytes,
 ) -> None:
-    """Step lanes low .. high-1; stop between lanes when ``cancel[0]`` is set."""
-    for lane in range(low, high):
-        if cancel[0] != 0:
-            return
-        how, worst, at = march_lane(top, table, starts, program, rows, control, results, lane)
-        results.ended[lane, 0] = how
-        results.ended[lane, 1] = worst
-        results.ended_at[lane] = at
+    """Step lanes low .. high-1; stop where ``cancel[0]`` is set."""
+    work = work_for(top, table.shape[1], program.source.shape[2], rows)
+    with np.errstate(all="ignore"):
+        march_rows(top, table, starts, program, rows, control, results, work, low, high, cancel)

@@ -55,35 +55,37 @@ def read_signal(
     p: Floats,
     x: Floats,
     flow: Floats,
+    w: int,
 ) -> float:
-    """Return the sum of terms first .. last-1 at x, ``flow`` being the currents of junctions and transistors there."""
+    """Return the sum of terms first .. last-1 at x, ``flow`` being the currents of junctions and transistors there, of
+    the lane in column w."""
     total = 0.0
     for t in range(first, last):
         kind = term[t, 0]
         k = term[t, 1]
         v = 0.0
         if kind == S_UNKNOWN:
-            v = x[k]
+            v = x[k, w]
         elif kind == S_CONDUCTANCE_CURRENT or kind == S_CONDUCTANCE_POWER:
-            across = x[element[k, E_A]] - x[element[k, E_B]]
-            v = p[element[k, E_PARAMETER]] * across
+            across = x[element[k, E_A], w] - x[element[k, E_B], w]
+            v = p[element[k, E_PARAMETER], w] * across
             if kind == S_CONDUCTANCE_POWER:
                 v *= across
         elif kind == S_JUNCTION_CURRENT or kind == S_JUNCTION_POWER:
-            v = flow[k - group[JUNCTION]]
+            v = flow[k - group[JUNCTION], w]
             if kind == S_JUNCTION_POWER:
-                v *= x[element[k, E_A]] - x[element[k, E_B]]
+                v *= x[element[k, E_A], w] - x[element[k, E_B], w]
         else:
             own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
-            ic = flow[own]
-            ib = flow[own + 1]
+            ic = flow[own, w]
+            ib = flow[own + 1, w]
             if kind == S_COLLECTOR_CURRENT:
                 v = ic
             elif kind == S_BASE_CURRENT:
                 v = ib
             else:
-                ve = x[element[k, E_C]]
-                v = ic * (x[element[k, E_A]] - ve) + ib * (x[element[k, E_B]] - ve)
+                ve = x[element[k, E_C], w]
+                v = ic * (x[element[k, E_A], w] - ve) + ib * (x[element[k, E_B], w] - ve)
         total += factor[t] * v
     return total
 
@@ -98,14 +100,15 @@ def keep_signals(
     p: Floats,
     x: Floats,
     flow: Floats,
+    w: int,
     now: int,
     end: Floats,
     read_at: Ints,
 ) -> None:
     """Read all signals at the end of step ``now``, before an event changes what they are made of."""
-    for s in range(end.size):
-        end[s] = read_signal(element, group, term, factor, signal[s], signal[s + 1], p, x, flow)
-        read_at[s] = now
+    for s in range(signal.size - 1):
+        end[w, s] = read_signal(element, group, term, factor, signal[s], signal[s + 1], p, x, flow, w)
+        read_at[w, s] = now
 
 
 @leaf
@@ -150,14 +153,16 @@ def crossing(y0: float, yg: float, y1: float, level: float, rising: float, after
 
 
 @leaf
-def open_rows(row: Ints, offset: Floats, window: Floats, value: Floats, time: Floats, status: Ints) -> None:
+def open_rows(
+    row: Ints, offset: Floats, w: int, lane: int, window: Floats, value: Floats, time: Floats, status: Ints
+) -> None:
     """Reset all rows of a lane and set the windows that do not wait for another row."""
-    value[:] = 0.0
-    time[:] = 0.0
-    status[:] = NOT_YET
     for r in range(row.shape[0]):
-        window[r, 0] = offset[r, 0] if row[r, ROW_FROM] < 0 else math.inf
-        window[r, 1] = offset[r, 1] if row[r, ROW_TO] < 0 else math.inf
+        value[lane, r] = 0.0
+        time[lane, r] = 0.0
+        status[lane, r] = NOT_YET
+        window[w, r, 0] = offset[r, 0] if row[r, ROW_FROM] < 0 else math.inf
+        window[w, r, 1] = offset[r, 1] if row[r, ROW_TO] < 0 else math.inf
 
 
 @leaf
@@ -172,43 +177,50 @@ def note(
     begin: float,
     h: float,
     gamma: float,
-    window: Floats,
+    opens: float,
+    closes: float,
+    lane: int,
     r: int,
     value: Floats,
     time: Floats,
     status: Ints,
 ) -> None:
     """Update row r with a signal that is y0, yg, y1 at start, stage and end of the step, within the row's window."""
-    u0 = (window[r, 0] - begin) / h if window[r, 0] > begin else 0.0
-    u1 = (window[r, 1] - begin) / h if window[r, 1] < begin + h else 1.0
+    u0 = (opens - begin) / h if opens > begin else 0.0
+    u1 = (closes - begin) / h if closes < begin + h else 1.0
     if kind == R_LEVEL:
-        value[r] = parabola(y0, yg, y1, min(u0, 1.0), gamma)
-        time[r] = window[r, 0]
-        status[r] = SEEN
+        value[lane, r] = parabola(y0, yg, y1, min(u0, 1.0), gamma)
+        time[lane, r] = opens
+        status[lane, r] = SEEN
     elif kind == R_CROSSING:
         u = crossing(y0, yg, y1, level, rising, u0, gamma)
         if 0.0 <= u <= u1:
             # Crossings before the wanted one are counted in the value.
-            value[r] += 1.0
-            if value[r] >= nth:
-                value[r] = begin + u * h
-                time[r] = begin + u * h
-                status[r] = SEEN
+            value[lane, r] += 1.0
+            if value[lane, r] >= nth:
+                value[lane, r] = begin + u * h
+                time[lane, r] = begin + u * h
+                status[lane, r] = SEEN
     elif kind == R_INTEGRAL:
-        value[r] += h * area(y0, yg, y1, u0, u1, gamma)
-        time[r] = begin + h
-        status[r] = OPEN
+        value[lane, r] += h * area(y0, yg, y1, u0, u1, gamma)
+        time[lane, r] = begin + h
+        status[lane, r] = OPEN
     elif kind == R_SLEW:
         steepest = abs(y1 - y0) / h
         if gamma > 0.0:
             steepest = max(abs(yg - y0) / (gamma * h), abs(y1 - yg) / ((1.0 - gamma) * h))
-        if status[r] == NOT_YET or steepest > value[r]:
-            value[r] = steepest
-            time[r] = begin + h
-            status[r] = OPEN
+        if status[lane, r] == NOT_YET or steepest > value[lane, r]:
+            value[lane, r] = steepest
+            time[lane, r] = begin + h
+            status[lane, r] = OPEN
     else:
         sign = 1.0 if kind == R_MAXIMUM else -1.0
-        if u0 == 0.0 and u1 == 1.0 and status[r] == OPEN and sign * value[r] >= max(sign * y0, sign * yg, sign * y1):
+        if (
+            u0 == 0.0
+            and u1 == 1.0
+            and status[lane, r] == OPEN
+            and sign * value[lane, r] >= max(sign * y0, sign * yg, sign * y1)
+        ):
             return
         for n in range(3):
             u = u0
@@ -217,10 +229,10 @@ def note(
             elif n == 2:
                 u = u1
             y = parabola(y0, yg, y1, u, gamma)
-            if status[r] == NOT_YET or sign * y > sign * value[r]:
-                value[r] = y
-                time[r] = begin + u * h
-                status[r] = OPEN
+            if status[lane, r] == NOT_YET or sign * y > sign * value[lane, r]:
+                value[lane, r] = y
+                time[lane, r] = begin + u * h
+                status[lane, r] = OPEN
 
 
 @leaf
@@ -244,6 +256,8 @@ def watch(
     begin: float,
     h: float,
     gamma: float,
+    w: int,
+    lane: int,
     now: int,
     start: Floats,
     stage: Floats,
@@ -263,49 +277,49 @@ def watch(
         news = False
         for r in range(row.shape[0]):
             if turn == 0:
-                if window[r, 0] > finish:
+                if window[w, r, 0] > finish:
                     continue
             else:
                 after = row[r, ROW_FROM]
-                if after < 0 or window[r, 0] < math.inf or status[r] == SEEN or status[after] != SEEN:
+                if after < 0 or window[w, r, 0] < math.inf or status[lane, r] == SEEN or status[lane, after] != SEEN:
                     continue
-                window[r, 0] = time[after] + offset[r, 0]
-                if window[r, 0] > finish:
+                window[w, r, 0] = time[lane, after] + offset[r, 0]
+                if window[w, r, 0] > finish:
                     continue
             until = row[r, ROW_TO]
-            if until >= 0 and window[r, 1] == math.inf and status[until] == SEEN:
-                window[r, 1] = time[until] + offset[r, 1]
-            if begin > window[r, 1]:
-                if status[r] == OPEN:
-                    status[r] = SEEN
-                news = news or status[r] == SEEN
-                window[r, 0] = math.inf
+            if until >= 0 and window[w, r, 1] == math.inf and status[lane, until] == SEEN:
+                window[w, r, 1] = time[lane, until] + offset[r, 1]
+            if begin > window[w, r, 1]:
+                if status[lane, r] == OPEN:
+                    status[lane, r] = SEEN
+                news = news or status[lane, r] == SEEN
+                window[w, r, 0] = math.inf
                 continue
             s = row[r, ROW_SIGNAL]
-            if read_at[s] != now:
+            if read_at[w, s] != now:
                 first = signal[s]
                 last = signal[s + 1]
-                if read_at[s] == now - 1:
-                    start[s] = end[s]
+                if read_at[w, s] == now - 1:
+                    start[w, s] = end[w, s]
                 else:
-                    start[s] = read_signal(element, group, term, factor, first, last, p, x0, flow0)
-                stage[s] = read_signal(element, group, term, factor, first, last, p, xg, flow_g)
-                end[s] = read_signal(element, group, term, factor, first, last, p, x1, flow1)
-                read_at[s] = now
+                    start[w, s] = read_signal(element, group, term, factor, first, last, p, x0, flow0, w)
+                stage[w, s] = read_signal(element, group, term, factor, first, last, p, xg, flow_g, w)
+                end[w, s] = read_signal(element, group, term, factor, first, last, p, x1, flow1, w)
+                read_at[w, s] = now
             note(
-                row[r, ROW_KIND], float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], start[s], stage[s], end[s],
-                begin, h, gamma, window, r, value, time, status,
+                row[r, ROW_KIND], float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], start[w, s], stage[w, s],
+                end[w, s], begin, h, gamma, window[w, r, 0], window[w, r, 1], lane, r, value, time, status,
             )  # fmt: skip
-            if status[r] == SEEN:
+            if status[lane, r] == SEEN:
                 news = True
-                window[r, 0] = math.inf
+                window[w, r, 0] = math.inf
         if not news:
             return
 
 
 @leaf
-def close_rows(row: Ints, window: Floats, finish: float, status: Ints) -> None:
+def close_rows(row: Ints, window: Floats, finish: float, w: int, lane: int, status: Ints) -> None:
     """End of a lane at ``finish``: extremes and integrals are complete whose window reaches the end or closed by it."""
     for r in range(row.shape[0]):
-        if status[r] == OPEN and (row[r, ROW_TO] < 0 or window[r, 1] <= finish):
-            status[r] = SEEN
+        if status[lane, r] == OPEN and (row[r, ROW_TO] < 0 or window[w, r, 1] <= finish):
+            status[lane, r] = SEEN

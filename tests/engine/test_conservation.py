@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -11,11 +10,10 @@ from hypothesis import strategies as st
 
 from stagebook.engine.circuit.circuit import Circuit
 from stagebook.engine.design.document import Design
-from stagebook.engine.kernel import layout
-from stagebook.engine.kernel.assemble import evaluate, linear_matrix
 from stagebook.engine.kernel.layout import Floats
-from stagebook.engine.kernel.march import GAMMA, TO_STAGE, TO_START, A
+from stagebook.engine.kernel.linearised import linearised
 from stagebook.engine.kernel.newton import REMAINDER
+from stagebook.engine.kernel.steps import GAMMA, TO_STAGE, TO_START, A
 from stagebook.engine.primitives.builder import Handle
 from stagebook.engine.primitives.signals import Signal, integral
 from stagebook.engine.run import control
@@ -34,35 +32,8 @@ class Flows:
 
     @classmethod
     def at(cls, circuit: Circuit, parameters: Floats, x: Floats, ah: float) -> Flows:
-        top = circuit.topology
-        devices = int(top.group[4] - top.group[3] + 2 * (top.group[5] - top.group[4]))
-        i, q, seen, flow = np.zeros(x.size), np.zeros(x.size), np.zeros(devices), np.zeros(devices)
-        linear, a = np.zeros(int(top.size[3]) + 1), np.zeros(int(top.size[3]) + 1)
-        linear_matrix(top.element, top.group, parameters, ah, linear)
-        source = np.zeros(len(circuit.source_names))
-        for _ in range(200):
-            if (
-                evaluate(top.element, top.group, parameters, source, linear, ah, x, i, q, a, seen, flow, True)
-                < math.inf
-            ):
-                break
-        free = int(top.size[1])
-        plan = _slots(circuit)
-        matrix = np.array([[a[plan[r, c]] if (r, c) in plan else 0.0 for c in range(free)] for r in range(free)])
-        return cls(i, q, matrix)
-
-
-def _slots(circuit: Circuit) -> dict[tuple[int, int], int]:
-    """Slot of every entry that an element of the circuit stamps."""
-    found = {}
-    top = circuit.topology
-    for family, pins in ((layout.CONDUCTANCE, 2), (layout.CAPACITANCE, 2), (layout.JUNCTION, 2), (layout.TRANSPORT, 3)):
-        for element in top.element[top.group[family] : top.group[family + 1]]:
-            for n in range(pins * pins):
-                row, column = element[n // pins], element[n % pins]
-                if row < top.size[1] and column < top.size[1]:
-                    found[int(row), int(column)] = int(element[layout.E_SLOT + n])
-    return found
+        made = linearised(circuit.topology, parameters, np.zeros(len(circuit.source_names)), x)
+        return cls(made.current, made.charge, made.matrix(ah))
 
 
 @given(random_circuits(), st.integers(0, 2**32 - 1), st.sampled_from([0.0, 1e-9, 1e-5]))

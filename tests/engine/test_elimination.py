@@ -9,18 +9,20 @@ from hypothesis import strategies as st
 
 from stagebook.engine.kernel.elimination import Pattern, Plan, factor, substitute
 from stagebook.engine.kernel.layout import Floats
+from stagebook.engine.kernel.vectors import WIDTH
 
 
 def solved(plan: Plan, matrix: Floats, right: Floats) -> Floats:
     """Solve through the stored entries, as the kernel does."""
     lists = plan.lists()
-    stored = np.zeros(plan.entries + 1)
+    stored = np.zeros((plan.entries + 1, WIDTH))
     for (i, j), slot in plan.slots.items():
         stored[slot] = matrix[i, j]
-    solution = right.copy()
+    solution = np.ascontiguousarray(np.repeat(right[:, None], WIDTH, axis=1))
     factor(stored, lists["pivot"], lists["entry"], lists["update"])
     substitute(stored, solution, lists["pivot"], lists["entry"])
-    return solution
+    assert np.all(solution == solution[:, :1])
+    return solution[:, 0]
 
 
 @st.composite

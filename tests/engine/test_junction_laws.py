@@ -24,12 +24,9 @@ from stagebook.engine.kernel.layout import (
 from stagebook.engine.primitives.builder import constant, junction_array
 from stagebook.engine.primitives.columns import AMBIENT, Column, Lanes
 
+from . import single_laws
+
 LANES = Lanes.nominal([Column(*AMBIENT, 25.0, 25.0, 25.0)])
-
-
-def plain(function: Any) -> Any:
-    """The law as plain Python, compiled or not."""
-    return getattr(function, "py_func", function)
 
 
 def junction(**figures: float) -> Floats:
@@ -60,8 +57,9 @@ def slope_of(function: Any, v: float) -> float:
 
 
 @given(st.floats(-60.0, 100.0))
+@settings(deadline=None)
 def test_exponential_and_its_derivative_below_the_bend(y: float) -> None:
-    value, slope = plain(laws.exponential)(y)
+    value, slope = single_laws.exponential(y)
     if y <= laws.TOP:
         exact = mpmath.expm1(y)
         # Below the floor the exponential counts as nothing: a part in 1e13 of the saturation current.
@@ -74,9 +72,9 @@ def test_exponential_and_its_derivative_below_the_bend(y: float) -> None:
 
 
 @given(junctions, st.floats(-9.0, 0.9))
-@settings(max_examples=300)
+@settings(max_examples=300, deadline=None)
 def test_conductance_is_the_slope_of_leakage_and_breakdown_current(p: Floats, v: float) -> None:
-    law = plain(laws.side_currents)
+    law = single_laws.side_currents
     assume(abs(v) > 2e-4)  # leakage bends in a corner at 0 V
     if p[J_BREAKDOWN] > 0.0:
         over = -(v + p[J_BREAKDOWN]) / p[J_BREAKDOWN_SLOPE]
@@ -85,19 +83,19 @@ def test_conductance_is_the_slope_of_leakage_and_breakdown_current(p: Floats, v:
     # The leakage bends within its knee: a difference of finite width is off by the square of width over knee there.
     assume(abs(v) > 3e-4)
     bend = (1e-4 / (laws.LEAKAGE_KNEE + abs(v))) ** 2 if p[J_LEAKAGE] > 0.0 else 0.0
-    current, conductance = law(v, p, 0)
+    current, conductance = law(v, p)
     assert conductance >= 0.0
     assert conductance == pytest.approx(
-        slope_of(lambda u: law(u, p, 0)[0], v), rel=1e-6 + bend, abs=1e-13 + 1e-9 * abs(current)
+        slope_of(lambda u: law(u, p)[0], v), rel=1e-6 + bend, abs=1e-13 + 1e-9 * abs(current)
     )
 
 
 @given(junctions, st.floats(-30.0, 1.5))
-@settings(max_examples=300)
+@settings(max_examples=300, deadline=None)
 def test_capacitance_is_the_slope_of_charge(p: Floats, v: float) -> None:
-    law = plain(laws.depletion)
-    charge, capacitance = law(v, p, 0)
-    numeric = slope_of(lambda u: law(u, p, 0)[0], v)
+    law = single_laws.depletion
+    charge, capacitance = law(v, p)
+    numeric = slope_of(lambda u: law(u, p)[0], v)
     assert capacitance == pytest.approx(numeric, rel=2e-6, abs=1e-9 * abs(charge))
 
 
@@ -116,12 +114,13 @@ def test_depletion_charge_is_the_integral_of_the_textbook_capacitance(grading: f
 
     exact = mpmath.quad(capacitance, [0, volts] if volts <= potential / 2 else [0, potential / 2, volts])
     p = junction(saturation=1e-14, slope=0.026, capacitance=c0, potential=potential, grading=grading)
-    assert plain(laws.depletion)(volts, p, 0)[0] == pytest.approx(float(exact), rel=1e-12)
+    assert single_laws.depletion(volts, p)[0] == pytest.approx(float(exact), rel=1e-12)
 
 
 @given(junctions, st.floats(-100.0, 100.0), st.floats(-100.0, 100.0))
+@settings(deadline=None)
 def test_limiting_keeps_sides_and_never_overshoots(p: Floats, v: float, old: float) -> None:
-    u = plain(laws.limited)(v, old, p, 0)
+    u = single_laws.limited(v, old, p)
     knee, slope = p[J_KNEE], p[J_SLOPE]
     if v <= knee and (p[J_BREAKDOWN] == 0.0 or -v - p[J_BREAKDOWN] <= p[J_BREAKDOWN_KNEE]):
         assert u == v  # where little flows, nothing is limited
@@ -134,11 +133,12 @@ def test_limiting_keeps_sides_and_never_overshoots(p: Floats, v: float, old: flo
 
 
 @given(junctions, st.floats(0.0, 100.0))
+@settings(deadline=None)
 def test_limited_iterates_reach_any_voltage(p: Floats, v: float) -> None:
     # Logarithmic steps do not stop short: repeated towards a fixed voltage they arrive.
     u = 0.0
     for _ in range(20_000):
-        before, u = u, plain(laws.limited)(v, u, p, 0)
+        before, u = u, single_laws.limited(v, u, p)
         if u == v:
             break
         assert u > before
@@ -148,7 +148,7 @@ def test_limited_iterates_reach_any_voltage(p: Floats, v: float) -> None:
 def test_currents_stay_finite_however_far_an_iterate_lies() -> None:
     p = junction(saturation=1e-5, slope=0.02, capacitance=1e-9, breakdown=5.1, leakage=1e-9)
     for v in (-1e6, -1e3, 1e3, 1e6):
-        for value in (*plain(laws.side_currents)(v, p, 0), *plain(laws.depletion)(v, p, 0)):
+        for value in (*single_laws.side_currents(v, p), *single_laws.depletion(v, p)):
             assert np.isfinite(value)
 
 

@@ -1,0 +1,136 @@
+"""One step of TR-BDF2 in a row of lanes, each with its own length: predictors, what a stage leaves, the error.
+
+TR-BDF2: Bank, Coughran, Fichtner, Grosse, Rose, Smith, IEEE Trans. CAD 4 (1985) 436; embedded third-order error and
+the filter through the iteration matrix: Hosea, Shampine, Appl. Numer. Math. 20 (1996) 21. Both stages share C + a h G.
+"""
+
+from __future__ import annotations
+
+import math
+
+from .compiled import leaf
+from .elimination import substitute
+from .layout import Floats, Places
+from .newton import ROUND_OFF
+from .vectors import Flags, Numbers, at, exp, greater, log, put, where
+
+GAMMA = 2.0 - math.sqrt(2.0)
+A = 1.0 - 0.5 * math.sqrt(2.0)
+TO_STAGE = 1.0 / (GAMMA * (2.0 - GAMMA))
+TO_START = (1.0 - GAMMA) * (1.0 - GAMMA) / (GAMMA * (2.0 - GAMMA))
+ERROR_START = (math.sqrt(2.0) - 1.0) / 3.0
+ERROR_STAGE = -1.0 / 3.0
+ERROR_END = 2.0 * A / 3.0
+
+
+@leaf
+def take(chosen: Flags, source: Floats, target: Floats) -> None:
+    """Copy the columns of the chosen lanes."""
+    for k in range(target.shape[0]):
+        put(target, k, where(chosen, at(source, k), at(target, k)))
+
+
+@leaf
+def begin_stage(
+    starting: Flags,
+    relative: Floats,
+    absolute: Floats,
+    reach: Numbers,
+    carry: Numbers,
+    x0: Floats,
+    q0: Floats,
+    i0: Floats,
+    first: Floats,
+    second: Floats,
+    x: Floats,
+    constant: Floats,
+    tolerance: Floats,
+) -> None:
+    """Set out for the stage, ``reach`` = gamma h after the start, from the parabola of the step before; ``carry`` is
+    a h of the trapezoidal rule, 0 for a jump."""
+    for k in range(constant.shape[0]):
+        start = at(x0, k)
+        guess = start + reach * (at(first, k) + reach * at(second, k))
+        put(x, k, where(starting, guess, at(x, k)))
+        put(constant, k, where(starting, carry * at(i0, k) - at(q0, k), at(constant, k)))
+        put(tolerance, k, where(starting, relative[k] * abs(start) + absolute[k], at(tolerance, k)))
+
+
+@leaf
+def begin_end(
+    ending: Flags,
+    reach: Numbers,
+    h: Numbers,
+    last: Numbers,
+    x0: Floats,
+    q0: Floats,
+    xg: Floats,
+    qg: Floats,
+    first: Floats,
+    second: Floats,
+    x: Floats,
+    constant: Floats,
+) -> None:
+    """Set out for the end by the second backward difference, from the cubic through the parabola and the stage.
+
+    ``last`` is the length of the step before, 0 after a jump.
+    """
+    before = (1.0 - GAMMA) * last
+    cubic = h * (h + last) * (h + before) / (reach * (reach + last) * (reach + before))
+    share = where(last > 0.0, cubic, 1.0 / GAMMA)
+    for k in range(constant.shape[0]):
+        start = at(x0, k)
+        miss = at(xg, k) - (start + reach * (at(first, k) + reach * at(second, k)))
+        guess = start + h * (at(first, k) + h * at(second, k)) + miss * share
+        put(x, k, where(ending, guess, at(x, k)))
+        put(constant, k, where(ending, TO_START * at(q0, k) - TO_STAGE * at(qg, k), at(constant, k)))
+
+
+@leaf
+def keep_parabola(
+    arrived: Flags, jumped: Flags, h: Numbers, x0: Floats, xg: Floats, x: Floats, first: Floats, second: Floats
+) -> None:
+    """Keep the parabola of an accepted step, about its end, for the predictor of the next; nothing after a jump."""
+    for k in range(first.shape[0]):
+        end = (at(x, k) - at(xg, k)) / ((1.0 - GAMMA) * h)
+        bend = (end - (at(xg, k) - at(x0, k)) / (GAMMA * h)) / h
+        slope = end + bend * (1.0 - GAMMA) * h
+        put(first, k, where(jumped, 0.0, where(arrived, slope, at(first, k))))
+        put(second, k, where(jumped, 0.0, where(arrived, bend, at(second, k))))
+
+
+@leaf
+def error_of(
+    relative: Floats,
+    absolute: Floats,
+    pivot: Places,
+    entry: Places,
+    factors: Floats,
+    h: Numbers,
+    x0: Floats,
+    x: Floats,
+    i0: Floats,
+    ig: Floats,
+    i: Floats,
+    q: Floats,
+    a: Floats,
+    diagonal: Places,
+    trial: Floats,
+) -> Numbers:
+    """Return the largest filtered error of the step in parts of the tolerance (1 = just allowed)."""
+    for k in range(trial.shape[0]):
+        r = h * (ERROR_START * at(i0, k) + ERROR_STAGE * at(ig, k) + ERROR_END * at(i, k))
+        noise = 4.0 * ROUND_OFF * (abs(at(q, k)) + abs(at(a, diagonal[k]) * at(x, k)))
+        put(trial, k, where(abs(r) <= noise, 0.0, r))
+    substitute(factors, trial, pivot, entry)
+    largest = 0.0 * h
+    for k in range(trial.shape[0]):
+        size = greater(abs(at(x0, k)), abs(at(x, k)))
+        largest = greater(abs(at(trial, k)) / (relative[k] * size + absolute[k]), largest)
+    return largest
+
+
+@leaf
+def growth(error: Numbers) -> Numbers:
+    """Return by how much the next step may be longer, before limits: 0.85 error^(-1/3)."""
+    return 0.85 * exp(log(greater(error, 1e-6)) * (-1.0 / 3.0))
