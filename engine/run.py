@@ -19,6 +19,7 @@ from .errors import Cancelled
 from .kernel import layout
 from .kernel.layout import Control, Floats, Program, Results, Rows, ints
 from .kernel.march import march
+from .kernel.vectors import WIDTH
 from .primitives.columns import Lanes
 from .primitives.signals import BRANCH_CURRENT, Anchor, Row, Signal
 
@@ -26,7 +27,7 @@ RELATIVE = 1e-3
 ABSOLUTE = 1e-4  # V
 ABSOLUTE_CURRENT = 1e-6  # A
 TIGHT = 0.1  # factor on nets that carry timing capacitors
-BLOCK = 64
+BLOCK = 64  # most lanes handed to a thread at a time
 MOST_STEPS = 200_000
 MOST_ITERATIONS = 12
 MOST_AT_JUMP = 200
@@ -227,16 +228,17 @@ def run(
     arguments = (circuit.topology, circuit.table(lanes), starts, program, made, control(circuit, relative), results)
     cancel = np.zeros(1, dtype=np.uint8)
     workers = threads or os.cpu_count() or 1
-    if count <= BLOCK or workers == 1:
-        for low in range(0, count, BLOCK):
+    block = min(BLOCK, WIDTH * -(-count // (workers * WIDTH)))
+    if count <= block or workers == 1:
+        for low in range(0, count, block):
             if cancelled():
                 raise Cancelled("stopped")
-            march(*arguments, low, min(low + BLOCK, count), cancel)
-            progress(min(low + BLOCK, count), count)
+            march(*arguments, low, min(low + block, count), cancel)
+            progress(min(low + block, count), count)
         return Observed(circuit, table.places, results, tuple(keep))
     with ThreadPoolExecutor(workers) as pool:
         waiting = {
-            pool.submit(march, *arguments, low, min(low + BLOCK, count), cancel) for low in range(0, count, BLOCK)
+            pool.submit(march, *arguments, low, min(low + block, count), cancel) for low in range(0, count, block)
         }
         blocks = len(waiting)
         try:
@@ -244,7 +246,7 @@ def run(
                 done, waiting = wait(waiting, timeout=0.05, return_when=FIRST_COMPLETED)
                 for future in done:
                     future.result()
-                progress(min(count, (blocks - len(waiting)) * BLOCK), count)
+                progress(min(count, (blocks - len(waiting)) * block), count)
                 if cancelled():
                     raise Cancelled("stopped")
         finally:

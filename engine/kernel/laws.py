@@ -24,6 +24,7 @@ from .layout import (
     J_PER_POTENTIAL,
     J_PER_SLOPE,
     J_POTENTIAL,
+    J_RISE,
     J_SLOPE,
     J_STORED,
     Floats,
@@ -121,7 +122,7 @@ def depletion(v: Numbers, p: Floats, j: int) -> tuple[Numbers, Numbers]:
     if any_of(other):
         power = where(other, exp(-m * log(s)), power)
     c = at(p, j + J_CAPACITANCE) * power
-    rise = c * m / half
+    rise = c * at(p, j + J_RISE)
     plain = m == 0.0
     q = where(plain, at(p, j + J_CAPACITANCE) * (v - over), at(p, j + J_STORED) * (1.0 - s * power))
     return q + over * (c + 0.5 * rise * over), c + rise * over

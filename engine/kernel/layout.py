@@ -44,7 +44,8 @@ J_KNEE, J_BREAKDOWN_KNEE = (
 # What the laws would else divide out.
 J_PER_SLOPE, J_PER_BREAKDOWN_SLOPE, J_PER_POTENTIAL = np.uint32(12), np.uint32(13), np.uint32(14)
 J_STORED = np.uint32(15)
-JUNCTION_WIDTH = 16
+J_RISE = np.uint32(16)  # grading over half the potential: how the capacitance rises beyond it
+JUNCTION_WIDTH = 17
 
 # A transistor's parameters: its own, then the emitter and the collector junction laid out as above.
 T_GAIN_FORWARD, T_GAIN_REVERSE = np.uint32(0), np.uint32(1)
@@ -80,9 +81,10 @@ class Topology(NamedTuple):
     size: Ints  # n_nets, n_free, n_all, stored matrix entries
     element: Places  # (elements, ELEMENT_WIDTH), family after family
     group: Places  # (FAMILIES + 1,) where each family begins
-    pivot: Places  # (n_free + 1, 3) unknown, slot of its diagonal, first of its entries
+    pivot: Places  # (n_free + 1, 4) unknown, slot of its diagonal, first of its entries, first of its lefts
     entry: Places  # (entries + 1, 4) later unknown, slot below the diagonal, slot right of it, first of its updates
     update: Places  # (updates, 2) slot to change, slot right of the pivot
+    left: Places  # (lefts, 2) earlier unknown, slot left of the diagonal
 
 
 class Program(NamedTuple):

@@ -13,6 +13,7 @@ import numpy as np
 
 from .assemble import evaluate, linear_matrices
 from .compiled import compiled, leaf
+from .elimination import substitute, substitute_two
 from .layout import (
     DONE,
     JUNCTION,
@@ -33,9 +34,9 @@ from .layout import (
     Topology,
     zeros,
 )
-from .newton import improve, residual, settled, worst_unknown
-from .rows import close_rows, keep_signals, open_rows, watch
-from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, take
+from .newton import asked_step, improve, residual, settled, worst_unknown
+from .rows import close_rows, open_rows, read_signals, watch
+from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, take
 from .vectors import WIDTH, any_of, at, flag, put, same
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
@@ -75,6 +76,7 @@ class Work(NamedTuple):
     tolerance: Floats
     rhs: Floats
     trial: Floats
+    error: Floats
     a: Floats  # (entries + 1, WIDTH) matrix, its factors, and the linear part of C and of G
     factors: Floats
     c: Floats
@@ -87,17 +89,17 @@ class Work(NamedTuple):
     p: Floats  # (parameters, WIDTH)
     source: Floats  # (sources, WIDTH)
     clock: Floats  # (CLOCK, WIDTH)
-    s0: Floats  # (WIDTH, signals) a signal at start, stage and end of the step in which it was read last
+    s0: Floats  # (signals, WIDTH) signals at start, stage and end of the step
     sg: Floats
     s1: Floats
-    read_at: Ints  # (WIDTH, signals)
     window: Floats  # (WIDTH, rows, 2)
+    listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
+    listed_until: Floats  # (WIDTH,) s, when to list them anew
     phase: Ints  # (WIDTH,) and so the next
     came: Ints
     failed: Ints
     lane: Ints
     segment: Ints
-    step: Ints
     moving: Ints
     diagonal: Places  # (n_free,) slot of an unknown's diagonal
 
@@ -112,16 +114,17 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
     return Work(
         *(zeros(n_all, WIDTH) for _ in range(9)),
-        *(zeros(free, WIDTH) for _ in range(6)),
+        *(zeros(free, WIDTH) for _ in range(7)),
         *(zeros(entries + 1, WIDTH) for _ in range(4)),
         *(zeros(devices, WIDTH) for _ in range(5)),
         zeros(parameters, WIDTH),
         zeros(sources, WIDTH),
         zeros(CLOCK, WIDTH),
-        *(zeros(WIDTH, signals) for _ in range(3)),
-        np.zeros((WIDTH, signals), dtype=np.int64),
+        *(zeros(signals, WIDTH) for _ in range(3)),
         zeros(WIDTH, rows.row.shape[0], 2),
-        *(np.zeros(WIDTH, dtype=np.int64) for _ in range(7)),
+        np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
+        zeros(WIDTH),
+        *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
         diagonal,
     )
 
@@ -211,20 +214,21 @@ def march_rows(
 ) -> None:
     """Step lanes low .. high-1, WIDTH of them at a time; stop where ``cancel[0]`` is set."""
     element, group = top.element, top.group
-    pivot, entry, update = top.pivot, top.entry, top.update
+    pivot, entry, update, left = top.pivot, top.entry, top.update, top.left
     nets, free = top.size[0], top.size[1]
     relative, absolute, bounds = control.relative, control.absolute, control.bounds
     x, q, i = work.x, work.q, work.i
     x0, q0, i0 = work.x0, work.q0, work.i0
     xg, qg, ig = work.xg, work.qg, work.ig
     first, second, constant, tolerance = work.first, work.second, work.constant, work.tolerance
-    rhs, trial = work.rhs, work.trial
+    rhs, trial, error = work.rhs, work.trial, work.error
     a, factors, c, g = work.a, work.factors, work.c, work.g
     seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
     p, source, clock = work.p, work.source, work.clock
-    s0, sg, s1, read_at, window = work.s0, work.sg, work.s1, work.read_at, work.window
+    s0, sg, s1, window = work.s0, work.sg, work.s1, work.window
+    listed, listed_until = work.listed, work.listed_until
     phase, came, failed, lane_of, segment_of = work.phase, work.came, work.failed, work.lane, work.segment
-    step, moving, diagonal = work.step, work.moving, work.diagonal
+    moving, diagonal = work.moving, work.diagonal
     value, time, status = results.value, results.time, results.status
     counts = results.work
     row = rows.row
@@ -254,6 +258,7 @@ def march_rows(
                     for k in range(seen.shape[0]):
                         seen[k, w] = 0.0
                     open_rows(row, rows.offset, w, lane, window, value, time, status)
+                    listed_until[w] = -1.0
                     for k in range(counts.shape[1]):
                         counts[lane, k] = 0
                     fastest = 0.0
@@ -265,7 +270,6 @@ def march_rows(
                     clock[AH, w] = 0.0
                     clock[ROUND, w] = 0.0
                     clock[MOST, w] = GLANCES
-                    step[w] = 1
                     segment_of[w] = next_segment(program.length, lane, -1)
                     if segment_of[w] < program.length.shape[1]:
                         set_switches(program.switched, program.switch, lane, segment_of[w], 0.0, w, p)
@@ -283,19 +287,27 @@ def march_rows(
         rounds = at(clock, ROUND)
         busy = same(phase, LEAP) | same(phase, STAGE) | same(phase, END)
         solved = busy & finite & inside & (rounds > 0.5) & (moved < math.inf)
-        if any_of(solved):
-            solved = solved & settled(
-                pivot, entry, factors, q, a, diagonal, x, constant, tolerance, rhs, moved, trial
-            )  # fmt: skip
+        ended = solved & same(phase, END)
+        if any_of(ended):
+            # Both right-hand sides need the factors that the step was solved with.
+            asked_step(q, a, diagonal, x, constant, rhs, trial)
+            left_over(h, x, i0, ig, i, q, a, diagonal, error)
+            substitute_two(factors, trial, error, pivot, entry, left)
+            solved = solved & settled(tolerance, trial, moved)
+            size = error_of(relative, absolute, x0, x, error)
+            put(clock, ERROR, size)
+            put(clock, GROWTH, growth(size))
+        elif any_of(solved):
+            asked_step(q, a, diagonal, x, constant, rhs, trial)
+            substitute(factors, trial, pivot, entry, left)
+            solved = solved & settled(tolerance, trial, moved)
         spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))
         going = busy & ~solved & ~spent
         ended = solved & same(phase, END)
         if any_of(ended):
-            error = error_of(
-                relative, absolute, pivot, entry, factors, h, x0, x, i0, ig, i, q, a, diagonal, trial
-            )  # fmt: skip
-            put(clock, ERROR, error)
-            put(clock, GROWTH, growth(error))
+            read_signals(element, group, rows.term, rows.factor, rows.signal, p, xg, flow_g, sg)
+        if any_of(ended | (solved & same(phase, LEAP)) | same(phase, GLANCE)):
+            read_signals(element, group, rows.term, rows.factor, rows.signal, p, x, flow, s1)
         put(clock, MOVED, moved)
         put(clock, ROUND, rounds + 1.0)
         flag(solved, came)
@@ -319,11 +331,9 @@ def march_rows(
                     counts[lane, 2] += int(clock[ROUND, w]) - 1
                     came[w] = LEAPT
                     clock[NOW, w] = min(JUMP, 0.5 * clock[SPAN, w])
-                    step[w] += 1
                     watch(
-                        element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
-                        x0, x, x, flow0, flow, flow, clock[BASE, w], clock[NOW, w], 0.0, w, lane, step[w],
-                        s0, sg, s1, read_at, value, time, status,
+                        row, rows.level, rows.offset, window, clock[BASE, w], clock[NOW, w], 0.0, w, lane,
+                        s0, s1, s1, value, time, status, listed, listed_until,
                     )  # fmt: skip
                     keep_states(
                         rows.keep_row, status, x, clock[BASE, w] + clock[NOW, w], w, lane, results.kept, results.kept_at
@@ -346,11 +356,9 @@ def march_rows(
                         continue
                     came[w] = ARRIVED
                     begin = clock[BASE, w] + clock[NOW, w]
-                    step[w] += 1
                     watch(
-                        element, group, rows.term, rows.factor, rows.signal, row, rows.level, rows.offset, window, p,
-                        x0, xg, x, flow0, flow_g, flow, begin, length, GAMMA, w, lane, step[w],
-                        s0, sg, s1, read_at, value, time, status,
+                        row, rows.level, rows.offset, window, begin, length, GAMMA, w, lane,
+                        s0, sg, s1, value, time, status, listed, listed_until,
                     )  # fmt: skip
                     keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
                     clock[LAST, w] = length
@@ -385,11 +393,12 @@ def march_rows(
             take(settles, i, i0)
             take(settles, flow, flow0)
             take(settles, seen, seen0)
+            take(settles, s1, s0)
         again = same(came, AGAIN)
         if any_of(again):
             take(again, seen0, seen)
         if any_of(going):
-            improve(pivot, entry, update, going, a, rhs, factors, x)
+            improve(pivot, entry, update, left, going, a, rhs, factors, x)
 
         # What each lane does next.
         dirty = False
@@ -448,9 +457,6 @@ def march_rows(
                 continue
             clock[ROUND, w] = 0.0
             if leaps:
-                keep_signals(
-                    element, group, rows.term, rows.factor, rows.signal, p, x0, flow0, w, step[w], s1, read_at
-                )  # fmt: skip
                 moving[w] = set_switches(program.switched, program.switch, lane, segment, 0.0, w, p)
                 dirty = dirty or program.switched.size > 0
                 phase[w] = LEAP
@@ -460,16 +466,16 @@ def march_rows(
                 clock[REACH, w] = 0.0
                 now = JUMP
             else:
-                left = clock[SPAN, w] - clock[NOW, w]
+                rest = clock[SPAN, w] - clock[NOW, w]
                 length = min(clock[NEXT, w], clock[LONGEST, w])
                 clock[ASKED, w] = length
-                if length >= left * 0.999999:
-                    length = left
-                elif length > 0.5 * left:
-                    length = 0.5 * left
+                if length >= rest * 0.999999:
+                    length = rest
+                elif length > 0.5 * rest:
+                    length = 0.5 * rest
                 phase[w] = STAGE
                 clock[MOST, w] = bounds[1]
-                clock[LEFT, w] = left
+                clock[LEFT, w] = rest
                 clock[LENGTH, w] = length
                 clock[AH, w] = A * length
                 clock[CARRY, w] = A * length

@@ -66,34 +66,24 @@ def worst_unknown(
 
 
 @leaf
-def settled(
-    pivot: Places,
-    entry: Places,
-    factors: Floats,
-    q: Floats,
-    a: Floats,
-    diagonal: Places,
-    x: Floats,
-    constant: Floats,
-    tolerance: Floats,
-    rhs: Floats,
-    moved: Numbers,
-    trial: Floats,
-) -> Flags:
-    """Return where the step that a small residual asks for is well inside the tolerance too.
-
-    Where a large capacitance joins two nets that hang on little else, a residual that is small beside it may still
-    stand for volts. What counts is the step it asks for; the factors at hand tell that, up to the growth or fall of the
-    junctions' conductances since. Round-off asks for nothing.
-    """
+def asked_step(q: Floats, a: Floats, diagonal: Places, x: Floats, constant: Floats, rhs: Floats, trial: Floats) -> None:
+    """Set trial to what the residual asks to be moved, before substitution. Round-off asks for nothing."""
     for k in range(rhs.shape[0]):
         r = at(rhs, k)
         noise = ROUND_OFF * (abs(at(q, k)) + abs(at(constant, k)) + abs(at(a, diagonal[k]) * at(x, k)))
         put(trial, k, where(abs(r) <= noise, 0.0, r))
-    substitute(factors, trial, pivot, entry)
-    step = 0.0 * moved
-    step = where(step == step, step, 0.0)
-    for k in range(rhs.shape[0]):
+
+
+@leaf
+def settled(tolerance: Floats, trial: Floats, moved: Numbers) -> Flags:
+    """Return where the step that a small residual asks for is well inside the tolerance too.
+
+    Where a large capacitance joins two nets that hang on little else, a residual that is small beside it may still
+    stand for volts. What counts is the step it asks for; the factors at hand tell that, up to the growth or fall of the
+    junctions' conductances since.
+    """
+    step = abs(at(trial, 0)) / at(tolerance, 0)
+    for k in range(1, trial.shape[0]):
         step = greater(abs(at(trial, k)) / at(tolerance, k), step)
     accepted: Flags = step * exp(lesser(moved, TOP)) <= REMAINDER
     return accepted
@@ -104,6 +94,7 @@ def improve(
     pivot: Places,
     entry: Places,
     update: Places,
+    left: Places,
     going: Flags,
     a: Floats,
     rhs: Floats,
@@ -112,7 +103,7 @@ def improve(
 ) -> None:
     """Factor the matrix and take Newton's step in the lanes that go on; only they get new factors."""
     factor(a, pivot, entry, update)
-    substitute(a, rhs, pivot, entry)
+    substitute(a, rhs, pivot, entry, left)
     for k in range(a.shape[0]):
         put(factors, k, where(going, at(a, k), at(factors, k)))
     for k in range(rhs.shape[0]):

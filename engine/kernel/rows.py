@@ -20,6 +20,7 @@ from .layout import (
     R_INTEGRAL,
     R_LEVEL,
     R_MAXIMUM,
+    R_MINIMUM,
     R_SLEW,
     ROW_DIRECTION,
     ROW_FROM,
@@ -40,58 +41,13 @@ from .layout import (
     Ints,
     Places,
 )
+from .vectors import at, put
 
 GAMMA = 2.0 - math.sqrt(2.0)
 
 
 @leaf
-def read_signal(
-    element: Places,
-    group: Places,
-    term: Ints,
-    factor: Floats,
-    first: int,
-    last: int,
-    p: Floats,
-    x: Floats,
-    flow: Floats,
-    w: int,
-) -> float:
-    """Return the sum of terms first .. last-1 at x, ``flow`` being the currents of junctions and transistors there, of
-    the lane in column w."""
-    total = 0.0
-    for t in range(first, last):
-        kind = term[t, 0]
-        k = term[t, 1]
-        v = 0.0
-        if kind == S_UNKNOWN:
-            v = x[k, w]
-        elif kind == S_CONDUCTANCE_CURRENT or kind == S_CONDUCTANCE_POWER:
-            across = x[element[k, E_A], w] - x[element[k, E_B], w]
-            v = p[element[k, E_PARAMETER], w] * across
-            if kind == S_CONDUCTANCE_POWER:
-                v *= across
-        elif kind == S_JUNCTION_CURRENT or kind == S_JUNCTION_POWER:
-            v = flow[k - group[JUNCTION], w]
-            if kind == S_JUNCTION_POWER:
-                v *= x[element[k, E_A], w] - x[element[k, E_B], w]
-        else:
-            own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
-            ic = flow[own, w]
-            ib = flow[own + 1, w]
-            if kind == S_COLLECTOR_CURRENT:
-                v = ic
-            elif kind == S_BASE_CURRENT:
-                v = ib
-            else:
-                ve = x[element[k, E_C], w]
-                v = ic * (x[element[k, E_A], w] - ve) + ib * (x[element[k, E_B], w] - ve)
-        total += factor[t] * v
-    return total
-
-
-@leaf
-def keep_signals(
+def read_signals(
     element: Places,
     group: Places,
     term: Ints,
@@ -100,15 +56,39 @@ def keep_signals(
     p: Floats,
     x: Floats,
     flow: Floats,
-    w: int,
-    now: int,
-    end: Floats,
-    read_at: Ints,
+    out: Floats,
 ) -> None:
-    """Read all signals at the end of step ``now``, before an event changes what they are made of."""
+    """Set out (signals, WIDTH) to the signals at x, ``flow`` being the currents of junctions and transistors there."""
     for s in range(signal.size - 1):
-        end[w, s] = read_signal(element, group, term, factor, signal[s], signal[s + 1], p, x, flow, w)
-        read_at[w, s] = now
+        total = 0.0 * at(x, 0)
+        for t in range(signal[s], signal[s + 1]):
+            kind = term[t, 0]
+            k = term[t, 1]
+            v = total
+            if kind == S_UNKNOWN:
+                v = at(x, k)
+            elif kind == S_CONDUCTANCE_CURRENT or kind == S_CONDUCTANCE_POWER:
+                across = at(x, element[k, E_A]) - at(x, element[k, E_B])
+                v = at(p, element[k, E_PARAMETER]) * across
+                if kind == S_CONDUCTANCE_POWER:
+                    v = v * across
+            elif kind == S_JUNCTION_CURRENT or kind == S_JUNCTION_POWER:
+                v = at(flow, k - group[JUNCTION])
+                if kind == S_JUNCTION_POWER:
+                    v = v * (at(x, element[k, E_A]) - at(x, element[k, E_B]))
+            else:
+                own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
+                ic = at(flow, own)
+                ib = at(flow, own + 1)
+                if kind == S_COLLECTOR_CURRENT:
+                    v = ic
+                elif kind == S_BASE_CURRENT:
+                    v = ib
+                else:
+                    ve = at(x, element[k, E_C])
+                    v = ic * (at(x, element[k, E_A]) - ve) + ib * (at(x, element[k, E_B]) - ve)
+            total = total + factor[t] * v
+        put(out, s, total)
 
 
 @leaf
@@ -215,13 +195,6 @@ def note(
             status[lane, r] = OPEN
     else:
         sign = 1.0 if kind == R_MAXIMUM else -1.0
-        if (
-            u0 == 0.0
-            and u1 == 1.0
-            and status[lane, r] == OPEN
-            and sign * value[lane, r] >= max(sign * y0, sign * yg, sign * y1)
-        ):
-            return
         for n in range(3):
             u = u0
             if n == 1:
@@ -236,46 +209,52 @@ def note(
 
 
 @leaf
+def list_open(window: Floats, finish: float, w: int, listed: Ints, listed_until: Floats) -> None:
+    """List the rows whose window has begun by ``finish``, their count first, and note when the next one begins."""
+    count = 0
+    until = math.inf
+    for r in range(window.shape[1]):
+        if window[w, r, 0] <= finish:
+            count += 1
+            listed[w, count] = r
+        else:
+            until = min(until, window[w, r, 0])
+    listed[w, 0] = count
+    listed_until[w] = until
+
+
+@leaf
 def watch(
-    element: Places,
-    group: Places,
-    term: Ints,
-    factor: Floats,
-    signal: Ints,
     row: Ints,
     level: Floats,
     offset: Floats,
     window: Floats,
-    p: Floats,
-    x0: Floats,
-    xg: Floats,
-    x1: Floats,
-    flow0: Floats,
-    flow_g: Floats,
-    flow1: Floats,
     begin: float,
     h: float,
     gamma: float,
     w: int,
     lane: int,
-    now: int,
     start: Floats,
     stage: Floats,
     end: Floats,
-    read_at: Ints,
     value: Floats,
     time: Floats,
     status: Ints,
+    listed: Ints,
+    listed_until: Floats,
 ) -> None:
-    """Update every row of a lane with step number ``now``, from ``begin`` to ``begin + h``; ``gamma`` 0: no stage.
+    """Update every row of the lane in column w with a step from ``begin`` to ``begin + h``; ``gamma`` 0: no stage.
 
-    A signal is read only where a row wants it: ``start``, ``stage`` and ``end`` keep it, ``read_at`` tells the step.
-    Rows that wait for another one are looked at only in a step in which some row was seen.
+    ``start``, ``stage`` and ``end`` are the signals there. Rows that wait for another one are looked at only in a step
+    in which some row was seen.
     """
     finish = begin + h
+    if finish >= listed_until[w]:
+        list_open(window, finish, w, listed, listed_until)
     for turn in range(2):
         news = False
-        for r in range(row.shape[0]):
+        for n in range(listed[w, 0] if turn == 0 else row.shape[0]):
+            r = listed[w, n + 1] if turn == 0 else n
             if turn == 0:
                 if window[w, r, 0] > finish:
                     continue
@@ -296,25 +275,29 @@ def watch(
                 window[w, r, 0] = math.inf
                 continue
             s = row[r, ROW_SIGNAL]
-            if read_at[w, s] != now:
-                first = signal[s]
-                last = signal[s + 1]
-                if read_at[w, s] == now - 1:
-                    start[w, s] = end[w, s]
-                else:
-                    start[w, s] = read_signal(element, group, term, factor, first, last, p, x0, flow0, w)
-                stage[w, s] = read_signal(element, group, term, factor, first, last, p, xg, flow_g, w)
-                end[w, s] = read_signal(element, group, term, factor, first, last, p, x1, flow1, w)
-                read_at[w, s] = now
+            y0 = start[s, w]
+            yg = stage[s, w]
+            y1 = end[s, w]
+            kind = row[r, ROW_KIND]
+            # Most steps are far from any level and exceed no extreme.
+            if kind == R_CROSSING:
+                rising = float(row[r, ROW_DIRECTION])
+                if max(rising * y0, rising * yg, rising * y1) <= rising * level[r]:
+                    continue
+            elif kind == R_MAXIMUM or kind == R_MINIMUM:
+                sign = 1.0 if kind == R_MAXIMUM else -1.0
+                if status[lane, r] == OPEN and max(sign * y0, sign * yg, sign * y1) <= sign * value[lane, r]:
+                    continue
             note(
-                row[r, ROW_KIND], float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], start[w, s], stage[w, s],
-                end[w, s], begin, h, gamma, window[w, r, 0], window[w, r, 1], lane, r, value, time, status,
+                kind, float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], y0, yg, y1, begin, h, gamma,
+                window[w, r, 0], window[w, r, 1], lane, r, value, time, status,
             )  # fmt: skip
             if status[lane, r] == SEEN:
                 news = True
                 window[w, r, 0] = math.inf
         if not news:
             return
+        listed_until[w] = -1.0
 
 
 @leaf

@@ -9,7 +9,6 @@ from __future__ import annotations
 import math
 
 from .compiled import leaf
-from .elimination import substitute
 from .layout import Floats, Places
 from .newton import ROUND_OFF
 from .vectors import Flags, Numbers, at, exp, greater, log, put, where
@@ -100,14 +99,8 @@ def keep_parabola(
 
 
 @leaf
-def error_of(
-    relative: Floats,
-    absolute: Floats,
-    pivot: Places,
-    entry: Places,
-    factors: Floats,
+def left_over(
     h: Numbers,
-    x0: Floats,
     x: Floats,
     i0: Floats,
     ig: Floats,
@@ -115,18 +108,22 @@ def error_of(
     q: Floats,
     a: Floats,
     diagonal: Places,
-    trial: Floats,
-) -> Numbers:
-    """Return the largest filtered error of the step in parts of the tolerance (1 = just allowed)."""
-    for k in range(trial.shape[0]):
+    out: Floats,
+) -> None:
+    """Set out to the third-order error of the step as charges, to be filtered by substitution."""
+    for k in range(out.shape[0]):
         r = h * (ERROR_START * at(i0, k) + ERROR_STAGE * at(ig, k) + ERROR_END * at(i, k))
         noise = 4.0 * ROUND_OFF * (abs(at(q, k)) + abs(at(a, diagonal[k]) * at(x, k)))
-        put(trial, k, where(abs(r) <= noise, 0.0, r))
-    substitute(factors, trial, pivot, entry)
-    largest = 0.0 * h
-    for k in range(trial.shape[0]):
+        put(out, k, where(abs(r) <= noise, 0.0, r))
+
+
+@leaf
+def error_of(relative: Floats, absolute: Floats, x0: Floats, x: Floats, filtered: Floats) -> Numbers:
+    """Return the largest filtered error of the step in parts of the tolerance (1 = just allowed)."""
+    largest = 0.0 * at(filtered, 0)
+    for k in range(filtered.shape[0]):
         size = greater(abs(at(x0, k)), abs(at(x, k)))
-        largest = greater(abs(at(trial, k)) / (relative[k] * size + absolute[k]), largest)
+        largest = greater(abs(at(filtered, k)) / (relative[k] * size + absolute[k]), largest)
     return largest
 
 

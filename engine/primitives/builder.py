@@ -233,6 +233,7 @@ def junction_array(laws: Laws, lanes: Lanes, prefix: str = "") -> Floats:
     array[:, layout.J_PER_SLOPE] = 1.0 / array[:, layout.J_SLOPE]
     array[:, layout.J_PER_BREAKDOWN_SLOPE] = 1.0 / array[:, layout.J_BREAKDOWN_SLOPE]
     array[:, layout.J_PER_POTENTIAL] = 1.0 / array[:, layout.J_POTENTIAL]
+    array[:, layout.J_RISE] = array[:, layout.J_GRADING] / (0.5 * array[:, layout.J_POTENTIAL])
     array[:, layout.J_STORED] = (
         array[:, layout.J_CAPACITANCE] * array[:, layout.J_POTENTIAL] / (1.0 - array[:, layout.J_GRADING])
     )

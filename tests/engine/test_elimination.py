@@ -7,7 +7,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from stagebook.engine.kernel.elimination import Pattern, Plan, factor, substitute
+from stagebook.engine.kernel.elimination import Pattern, Plan, factor, substitute, substitute_two
 from stagebook.engine.kernel.layout import Floats
 from stagebook.engine.kernel.vectors import WIDTH
 
@@ -20,7 +20,12 @@ def solved(plan: Plan, matrix: Floats, right: Floats) -> Floats:
         stored[slot] = matrix[i, j]
     solution = np.ascontiguousarray(np.repeat(right[:, None], WIDTH, axis=1))
     factor(stored, lists["pivot"], lists["entry"], lists["update"])
-    substitute(stored, solution, lists["pivot"], lists["entry"])
+    twin = 2.0 * solution
+    other = solution.copy()
+    substitute(stored, solution, lists["pivot"], lists["entry"], lists["left"])
+    substitute_two(stored, other, twin, lists["pivot"], lists["entry"], lists["left"])
+    assert np.array_equal(other, solution)
+    assert np.array_equal(twin, 2.0 * solution)
     assert np.all(solution == solution[:, :1])
     return solution[:, 0]
 
