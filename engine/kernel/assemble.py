@@ -4,7 +4,7 @@ form of modified nodal analysis: Ho, Ruehli, Brennan, IEEE Trans. Circuits Syst.
 from __future__ import annotations
 
 from .compiled import leaf
-from .laws import depletion, exponential, limited, move, side_currents
+from .laws import bent, depletion, exponential, limited, side_currents
 from .layout import (
     BRANCH,
     CAPACITANCE,
@@ -16,11 +16,17 @@ from .layout import (
     E_PARAMETER,
     E_SLOT,
     FAMILIES,
+    J_PER_POTENTIAL,
     J_PER_SLOPE,
     J_SATURATION,
     J_TRANSIT,
     JUNCTION,
     ONE,
+    S_BASE_COLLECTOR,
+    S_BASE_EMITTER,
+    S_COLLECTOR_CHARGE,
+    S_EMITTER_CHARGE,
+    SLOPES,
     T_COLLECTOR,
     T_COLLECTOR_JUNCTION,
     T_EARLY,
@@ -31,7 +37,7 @@ from .layout import (
     Floats,
     Places,
 )
-from .vectors import Numbers, add, at, greater, put, where
+from .vectors import Flags, Numbers, add, at, put, where
 
 
 @leaf
@@ -108,9 +114,10 @@ def junctions(
     a: Floats,
     seen: Floats,
     flow: Floats,
-    moved: Numbers,
-) -> Numbers:
-    """Add all two-terminal junctions; return the largest :func:`move`, infinite where one was linearised elsewhere."""
+    slope: Floats,
+    limits: Flags,
+) -> Flags:
+    """Add all two-terminal junctions; return ``limits`` and where one was linearised away from x."""
     first = group[JUNCTION]
     for k in range(first, group[TRANSPORT]):
         j = element[k, E_PARAMETER]
@@ -119,11 +126,11 @@ def junctions(
         v = at(x, na) - at(x, nb)
         old = at(seen, k - first)
         u = limited(v, old, p, j)
-        moved = greater(move(u, old, v, p, j), moved)
+        limits = limits | (u != v)
         put(seen, k - first, u)
-        e, d = exponential(u * at(p, j + J_PER_SLOPE))
+        e, de = exponential(u * at(p, j + J_PER_SLOPE))
         current = at(p, j + J_SATURATION) * e
-        g = at(p, j + J_SATURATION) * d * at(p, j + J_PER_SLOPE)
+        g = at(p, j + J_SATURATION) * de * at(p, j + J_PER_SLOPE)
         charge, c = depletion(u, p, j)
         charge = charge + at(p, j + J_TRANSIT) * current
         c = c + at(p, j + J_TRANSIT) * g
@@ -131,6 +138,9 @@ def junctions(
         current = current + side
         g = g + side_g
         put(flow, k - first, current)
+        d = k - first + k - first
+        put(slope, d, g)
+        put(slope, d + ONE, c)
         off = v - u
         current = current + g * off
         charge = charge + c * off
@@ -139,7 +149,7 @@ def junctions(
         add(q, na, charge)
         add(q, nb, -charge)
         couple(a, element, k, c + ah * g)
-    return moved
+    return limits
 
 
 @leaf
@@ -154,12 +164,14 @@ def transports(
     a: Floats,
     seen: Floats,
     flow: Floats,
-    moved: Numbers,
-) -> Numbers:
+    slope: Floats,
+    limits: Flags,
+) -> Flags:
     """Add all bipolar transistors in transport form (Ebers, Moll, Proc. IRE 42 (1954) 1761, as rewritten by Gummel
     and Poon, Bell Syst. Tech. J. 49 (1970) 827, with the Early effect as a factor 1 - v_BC / V_A)."""
     first = group[TRANSPORT]
     junctions_before = first - group[JUNCTION]
+    slopes_before = junctions_before + junctions_before
     for k in range(first, group[FAMILIES]):
         t = element[k, E_PARAMETER]
         pe = t + T_EMITTER_JUNCTION
@@ -174,7 +186,7 @@ def transports(
         vbe = sign * (vb - at(x, ne))
         old = at(seen, own)
         ve = limited(vbe, old, p, pe)
-        moved = greater(move(ve, old, vbe, p, pe), moved)
+        limits = limits | (ve != vbe)
         put(seen, own, ve)
         saturation = at(p, pe + J_SATURATION)
         ee, de = exponential(ve * at(p, pe + J_PER_SLOPE))
@@ -192,7 +204,7 @@ def transports(
         vbc = sign * (vb - at(x, nc))
         old = at(seen, own + ONE)
         vc = where(collects != 0.0, limited(vbc, old, p, pc), vbc)
-        moved = greater(move(vc, old, vbc, p, pc) * collects, moved)
+        limits = limits | (vc != vbc)
         put(seen, own + ONE, vc)
         ec, dc = exponential(vc * at(p, pc + J_PER_SLOPE))
         reverse = collects * saturation * ec
@@ -210,6 +222,13 @@ def transports(
         over_e = gf * early
         over_c = -gr * early - net * at(p, t + T_EARLY)
 
+        d = slopes_before + SLOPES * (k - first)
+        put(slope, d, over_e)
+        put(slope, d + ONE, over_c)
+        put(slope, d + S_BASE_EMITTER, gbe)
+        put(slope, d + S_BASE_COLLECTOR, gbc)
+        put(slope, d + S_EMITTER_CHARGE, ce)
+        put(slope, d + S_COLLECTOR_CHARGE, cc)
         put(flow, own, sign * (over - ibc))
         put(flow, own + ONE, sign * (ibe + ibc))
 
@@ -242,7 +261,7 @@ def transports(
         add(a, element[k, E_SLOT + 6], tc)
         add(a, element[k, E_SLOT + 7], -(te + tc + me))
         add(a, element[k, E_SLOT + 8], te + me)
-    return moved
+    return limits
 
 
 @leaf
@@ -260,15 +279,113 @@ def evaluate(
     a: Floats,
     seen: Floats,
     flow: Floats,
-) -> Numbers:
-    """Set i, q and the matrix a at x; return how far junctions moved, infinite where linearised away from x.
+    slope: Floats,
+) -> Flags:
+    """Set i, q and the matrix a at x; return where some junction was linearised away from x.
 
     ``seen`` are the junction voltages of the iterate before and become those of this one; ``flow`` the device currents;
-    ``c`` and ``g`` come from :func:`linear_matrices`.
+    ``slope`` the conductances and capacitances of devices; ``c`` and ``g`` come from :func:`linear_matrices`.
     """
     linear_flows(element, group, p, source, x, i, q)
     for k in range(a.shape[0]):
         put(a, k, at(c, k) + ah * at(g, k))
-    moved = 0.0 * ah
-    moved = junctions(element, group, p, ah, x, i, q, a, seen, flow, moved)
-    return transports(element, group, p, ah, x, i, q, a, seen, flow, moved)
+    limits = ah != ah
+    limits = junctions(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
+    return transports(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
+
+
+@leaf
+def extrapolate(
+    element: Places,
+    group: Places,
+    p: Floats,
+    ah: Numbers,
+    nothing: Floats,
+    step: Floats,
+    seen: Floats,
+    slope: Floats,
+    i: Floats,
+    q: Floats,
+    flow: Floats,
+    di: Floats,
+    dq: Floats,
+    bend: Floats,
+) -> Flags:
+    """Take i, q and flow from an iterate to the next by the tangents, and set bend to the charge by which the laws
+    depart from their tangents there: what the next iterate will leave over. Return where a junction went far.
+
+    ``step`` (n_all, WIDTH) is Newton's step, 0 at known nets; ``di`` and ``dq`` are room to work in, ``nothing`` are
+    sources of 0.
+    """
+    far = ah != ah
+    linear_flows(element, group, p, nothing, step, di, dq)
+    for k in range(bend.shape[0]):
+        put(bend, k, 0.0)
+    first = group[JUNCTION]
+    for k in range(first, group[TRANSPORT]):
+        j = element[k, E_PARAMETER]
+        na = element[k, E_A]
+        nb = element[k, E_B]
+        v = at(step, na) - at(step, nb)
+        d = k - first + k - first
+        g = at(slope, d)
+        c = at(slope, d + ONE)
+        more, away = bent(at(seen, k - first), v, p, j)
+        more = more * g
+        far = far | away
+        spare = (ah + at(p, j + J_TRANSIT)) * more + 0.5 * c * at(p, j + J_PER_POTENTIAL) * v * v
+        add(flow, k - first, g * v)
+        add(di, na, g * v)
+        add(di, nb, -g * v)
+        add(dq, na, c * v)
+        add(dq, nb, -c * v)
+        add(bend, na, spare)
+        add(bend, nb, -spare)
+    junctions_before = group[TRANSPORT] - first
+    first = group[TRANSPORT]
+    for k in range(first, group[FAMILIES]):
+        t = element[k, E_PARAMETER]
+        pe = t + T_EMITTER_JUNCTION
+        pc = t + T_COLLECTOR_JUNCTION
+        nc = element[k, E_A]
+        nb = element[k, E_B]
+        ne = element[k, E_C]
+        sign = 1.0 if element[k, E_EXTRA] == 1 else -1.0
+        own = junctions_before + (k - first) + (k - first)
+        d = junctions_before + junctions_before + SLOPES * (k - first)
+        ve = sign * (at(step, nb) - at(step, ne))
+        vc = sign * (at(step, nb) - at(step, nc))
+        over_e = at(slope, d)
+        over_c = at(slope, d + ONE)
+        gbe = at(slope, d + S_BASE_EMITTER)
+        gbc = at(slope, d + S_BASE_COLLECTOR)
+        ce = at(slope, d + S_EMITTER_CHARGE)
+        cc = at(slope, d + S_COLLECTOR_CHARGE)
+        over = sign * (over_e * ve + over_c * vc)
+        ibe = sign * gbe * ve
+        ibc = sign * gbc * vc
+        qe = sign * ce * ve
+        qc = sign * cc * vc
+        add(flow, own, over - ibc)
+        add(flow, own + ONE, ibe + ibc)
+        add(di, nc, over - ibc)
+        add(di, nb, ibe + ibc)
+        add(di, ne, -(over + ibe))
+        add(dq, nc, -qc)
+        add(dq, nb, qe + qc)
+        add(dq, ne, -qe)
+
+        more_e, away = bent(at(seen, own), ve, p, pe)
+        far = far | away
+        more_c, away = bent(at(seen, own + ONE), vc, p, pc)
+        far = far | away
+        over = ah * (over_e * more_e + over_c * more_c)
+        ibe = (ah * gbe + at(p, pe + J_TRANSIT) * over_e) * more_e + 0.5 * ce * at(p, pe + J_PER_POTENTIAL) * ve * ve
+        ibc = (ah * gbc - at(p, pc + J_TRANSIT) * over_c) * more_c + 0.5 * cc * at(p, pc + J_PER_POTENTIAL) * vc * vc
+        add(bend, nc, sign * (over - ibc))
+        add(bend, nb, sign * (ibe + ibc))
+        add(bend, ne, -sign * (over + ibe))
+    for k in range(i.shape[0]):
+        add(i, k, at(di, k))
+        add(q, k, at(dq, k))
+    return far

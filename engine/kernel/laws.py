@@ -34,7 +34,9 @@ from .vectors import Flags, Numbers, any_of, at, exp, greater, lesser, log, root
 TOP = 80.0
 EXP_TOP = math.exp(TOP)
 FLOOR = -40.0
-CONDUCTING = 14.0  # slopes below its knee a junction conducts half a microsiemens
+STEEPEST = 60.0  # slopes; a step that long is not accepted
+NEAR = 0.3  # slopes that a junction may be from where its law was last evaluated
+DEAD = 24.0  # slopes below its knee a junction carries less than a picoampere
 LEAKAGE_KNEE = 0.01  # V; generation and surface leakage is nearly constant beyond a tenth of a volt
 
 
@@ -77,19 +79,32 @@ def limited(v: Numbers, old: Numbers, p: Floats, j: int) -> Numbers:
 
 
 @leaf
-def move(u: Numbers, old: Numbers, asked: Numbers, p: Floats, j: int) -> Numbers:
-    """Return how many slopes a junction moved from ``old`` to ``u``: its conductance changed by so many powers of e.
+def exceeded(u: Numbers) -> Numbers:
+    """Return by what e^u exceeds its tangent at 0; more than is ever accepted where u is large."""
+    return where(u > STEEPEST, 1e30, exp(greater(lesser(u, STEEPEST), FLOOR)) - 1.0 - u)
 
-    Infinite where it was linearised away from the voltage asked for, 0 where it conducts next to nothing.
+
+@leaf
+def bent(v: Numbers, step: Numbers, p: Floats, j: int) -> tuple[Numbers, Flags]:
+    """Return by how many volts a junction's law departs from its tangent at v a step further, and where it went far.
+
+    Times the conductance at v the volts are the current that a Newton step leaves over; 0 where next to nothing flows
+    at both ends. Far is where currents and charges by the tangent are no longer nearly those of the law.
     """
-    way = abs(u - old)
-    conducts = greater(u, old) > at(p, j + J_KNEE) - CONDUCTING * at(p, j + J_SLOPE)
-    moved = where(conducts, way * at(p, j + J_PER_SLOPE), 0.0)
+    slope = at(p, j + J_SLOPE)
+    alive = greater(v, v + step) > at(p, j + J_KNEE) - DEAD * slope
+    u = step * at(p, j + J_PER_SLOPE)
+    more = where(alive, exceeded(u) * slope, 0.0)
+    far = alive & (abs(u) > NEAR)
     breakdown = at(p, j + J_BREAKDOWN)
-    edge = at(p, j + J_BREAKDOWN_KNEE) - CONDUCTING * at(p, j + J_BREAKDOWN_SLOPE)
-    breaks = ~conducts & (breakdown > 0.0) & (-lesser(u, old) - breakdown > edge)
-    moved = where(breaks, way * at(p, j + J_PER_BREAKDOWN_SLOPE), moved)
-    return where(u != asked, math.inf, moved)
+    slope = at(p, j + J_BREAKDOWN_SLOPE)
+    edge = at(p, j + J_BREAKDOWN_KNEE) - DEAD * slope
+    breaks = (breakdown > 0.0) & (-lesser(v, v + step) - breakdown > edge)
+    if any_of(breaks):
+        u = -step * at(p, j + J_PER_BREAKDOWN_SLOPE)
+        more = where(breaks, more - exceeded(u) * slope, more)
+        far = far | breaks & (abs(u) > NEAR)
+    return more, far
 
 
 @leaf

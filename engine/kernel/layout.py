@@ -54,6 +54,11 @@ T_EMITTER_JUNCTION = np.uint32(4)
 T_COLLECTOR_JUNCTION = np.uint32(4 + JUNCTION_WIDTH)
 TRANSPORT_WIDTH = 4 + 2 * JUNCTION_WIDTH
 
+# What is kept of a transistor's slopes at an iterate; of a junction its conductance and its capacitance.
+SLOPES = np.uint32(6)  # of the current from collector to emitter by v_BE and v_BC first
+S_BASE_EMITTER, S_BASE_COLLECTOR = np.uint32(2), np.uint32(3)  # conductances
+S_EMITTER_CHARGE, S_COLLECTOR_CHARGE = np.uint32(4), np.uint32(5)  # capacitances
+
 PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH)
 """How many parameters a primitive of each family has; a branch has henry and ohm."""
 

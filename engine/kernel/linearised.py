@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,7 +9,7 @@ import numpy as np
 from .assemble import evaluate, linear_matrices
 from .compiled import compiled
 from .layout import BRANCH, E_A, E_SLOT, JUNCTION, TRANSPORT, Floats, Places, Topology, zeros
-from .vectors import WIDTH, at, put
+from .vectors import WIDTH, at, put, where
 
 LOOKS = 200  # until junctions, limited in each look, are taken at the voltages asked for
 
@@ -45,10 +44,12 @@ def _look(
     a: Floats,
     seen: Floats,
     flow: Floats,
+    slope: Floats,
     moved: Floats,
 ) -> None:
     linear_matrices(element, group, p, c, g)
-    put(moved, 0, evaluate(element, group, p, source, c, g, at(steps, which), x, i, q, a, seen, flow))
+    limited = evaluate(element, group, p, source, c, g, at(steps, which), x, i, q, a, seen, flow, slope)
+    put(moved, 0, where(limited, 1.0, 0.0))
 
 
 def _places(top: Topology) -> dict[tuple[int, int], int]:
@@ -80,14 +81,15 @@ def linearised(top: Topology, parameters: Floats, source: Floats, x: Floats) -> 
     p, drive, v = row(parameters), row(source), row(x)
     i, q, seen, flow = zeros(n_all, WIDTH), zeros(n_all, WIDTH), zeros(devices, WIDTH), zeros(devices, WIDTH)
     c, g, a = zeros(entries + 1, WIDTH), zeros(entries + 1, WIDTH), zeros(entries + 1, WIDTH)
+    slope = zeros(6 * devices, WIDTH)
     steps = np.ascontiguousarray(np.array([[0.0] * WIDTH, [1.0] * WIDTH]))
     moved = zeros(1, WIDTH)
     stored = []
     with np.errstate(all="ignore"):
         for which in range(2):
             for _ in range(LOOKS):
-                _look(top.element, top.group, p, drive, c, g, steps, which, v, i, q, a, seen, flow, moved)
-                if moved[0, 0] < math.inf:
+                _look(top.element, top.group, p, drive, c, g, steps, which, v, i, q, a, seen, flow, slope, moved)
+                if moved[0, 0] == 0.0:
                     break
             stored.append(a[:, 0].copy())
     found = []

@@ -11,14 +11,15 @@ from typing import NamedTuple
 
 import numpy as np
 
-from .assemble import evaluate, linear_matrices
+from .assemble import evaluate, extrapolate, linear_matrices
 from .compiled import compiled, leaf
-from .elimination import substitute, substitute_two
+from .elimination import factor, substitute, substitute_two
 from .layout import (
     DONE,
     JUNCTION,
     OVERWORKED,
     SEEN,
+    SLOPES,
     STOPPED,
     TRACE_FULL,
     TRANSPORT,
@@ -34,10 +35,10 @@ from .layout import (
     Topology,
     zeros,
 )
-from .newton import asked_step, improve, residual, settled, worst_unknown
+from .newton import advance, residual, solved_by, worst_unknown
 from .rows import close_rows, open_rows, read_signals, watch
 from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, take
-from .vectors import WIDTH, any_of, at, flag, put, same
+from .vectors import WIDTH, any_of, at, flag, put, same, where
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
 FIRST = 1e-10  # s, the first step after it
@@ -53,7 +54,7 @@ NOT_ENDED = -1
 # Rows of ``Work.clock``: numbers of each lane.
 AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma h; h; the step before
 ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
-MOVED, ERROR, GROWTH = 7, 8, 9
+LIMITED, ERROR, GROWTH = 7, 8, 9
 NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN = 10, 11, 12, 13, 14, 15, 16
 CLOCK = 17
 
@@ -70,15 +71,17 @@ class Work(NamedTuple):
     xg: Floats
     qg: Floats
     ig: Floats
+    di: Floats  # what Newton's step changes of i and q, the step, and what it leaves over
+    dq: Floats
+    step: Floats
+    bend: Floats
     first: Floats  # (n_free, WIDTH) parabola of the step before
     second: Floats
     constant: Floats
     tolerance: Floats
-    rhs: Floats
-    trial: Floats
     error: Floats
-    a: Floats  # (entries + 1, WIDTH) matrix, its factors, and the linear part of C and of G
-    factors: Floats
+    noise: Floats  # what round-off makes of the charges
+    a: Floats  # (entries + 1, WIDTH) matrix and then its factors, and the linear part of C and of G
     c: Floats
     g: Floats
     seen: Floats  # (devices, WIDTH) junction voltages, then device currents
@@ -86,8 +89,10 @@ class Work(NamedTuple):
     flow: Floats
     flow0: Floats
     flow_g: Floats
+    slope: Floats  # (slopes of devices, WIDTH)
     p: Floats  # (parameters, WIDTH)
-    source: Floats  # (sources, WIDTH)
+    source: Floats  # (sources, WIDTH), and as many of 0
+    nothing: Floats
     clock: Floats  # (CLOCK, WIDTH)
     s0: Floats  # (signals, WIDTH) signals at start, stage and end of the step
     sg: Floats
@@ -108,16 +113,19 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     """Arrays for the lanes of one row."""
     free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
     transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
-    devices = int(top.group[TRANSPORT]) - int(top.group[JUNCTION]) + 2 * transports
+    junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
+    devices = junctions + 2 * transports
     signals = rows.signal.size - 1
     diagonal = np.zeros(free, dtype=np.uint32)
     diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
     return Work(
-        *(zeros(n_all, WIDTH) for _ in range(9)),
-        *(zeros(free, WIDTH) for _ in range(7)),
-        *(zeros(entries + 1, WIDTH) for _ in range(4)),
+        *(zeros(n_all, WIDTH) for _ in range(13)),
+        *(zeros(free, WIDTH) for _ in range(6)),
+        *(zeros(entries + 1, WIDTH) for _ in range(3)),
         *(zeros(devices, WIDTH) for _ in range(5)),
+        zeros(2 * junctions + int(SLOPES) * transports, WIDTH),
         zeros(parameters, WIDTH),
+        zeros(sources, WIDTH),
         zeros(sources, WIDTH),
         zeros(CLOCK, WIDTH),
         *(zeros(signals, WIDTH) for _ in range(3)),
@@ -215,14 +223,15 @@ def march_rows(
     """Step lanes low .. high-1, WIDTH of them at a time; stop where ``cancel[0]`` is set."""
     element, group = top.element, top.group
     pivot, entry, update, left = top.pivot, top.entry, top.update, top.left
-    nets, free = top.size[0], top.size[1]
+    free = top.size[1]
     relative, absolute, bounds = control.relative, control.absolute, control.bounds
     x, q, i = work.x, work.q, work.i
     x0, q0, i0 = work.x0, work.q0, work.i0
     xg, qg, ig = work.xg, work.qg, work.ig
     first, second, constant, tolerance = work.first, work.second, work.constant, work.tolerance
-    rhs, trial, error = work.rhs, work.trial, work.error
-    a, factors, c, g = work.a, work.factors, work.c, work.g
+    step, bend, error, noise, slope = work.step, work.bend, work.error, work.noise, work.slope
+    di, dq, nothing = work.di, work.dq, work.nothing
+    a, c, g = work.a, work.c, work.g
     seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
     p, source, clock = work.p, work.source, work.clock
     s0, sg, s1, window = work.s0, work.sg, work.s1, work.window
@@ -270,10 +279,9 @@ def march_rows(
                     clock[AH, w] = 0.0
                     clock[ROUND, w] = 0.0
                     clock[MOST, w] = GLANCES
-                    segment_of[w] = next_segment(program.length, lane, -1)
-                    if segment_of[w] < program.length.shape[1]:
-                        set_switches(program.switched, program.switch, lane, segment_of[w], 0.0, w, p)
-                        phase[w] = GLANCE
+                    segment_of[w] = min(next_segment(program.length, lane, -1), program.length.shape[1] - 1)
+                    set_switches(program.switched, program.switch, lane, segment_of[w], 0.0, w, p)
+                    phase[w] = GLANCE
                     dirty = True
         if running == 0 or cancel[0] != 0:
             return
@@ -282,34 +290,33 @@ def march_rows(
 
         ah = at(clock, AH)
         h = at(clock, LENGTH)
-        moved = evaluate(element, group, p, source, c, g, ah, x, i, q, a, seen, flow)
-        finite, inside = residual(nets, ah, i, q, a, diagonal, constant, tolerance, rhs)
-        rounds = at(clock, ROUND)
+        limited = evaluate(element, group, p, source, c, g, ah, x, i, q, a, seen, flow, slope)
+        residual(ah, x, i, q, a, diagonal, constant, noise, step)
+        factor(a, pivot, entry, update)
+        substitute(a, step, pivot, entry, left)
         busy = same(phase, LEAP) | same(phase, STAGE) | same(phase, END)
-        solved = busy & finite & inside & (rounds > 0.5) & (moved < math.inf)
-        ended = solved & same(phase, END)
-        if any_of(ended):
-            # Both right-hand sides need the factors that the step was solved with.
-            asked_step(q, a, diagonal, x, constant, rhs, trial)
-            left_over(h, x, i0, ig, i, q, a, diagonal, error)
-            substitute_two(factors, trial, error, pivot, entry, left)
-            solved = solved & settled(tolerance, trial, moved)
+        advance(busy, step, x)
+        far = extrapolate(element, group, p, ah, nothing, step, seen, slope, i, q, flow, di, dq, bend)
+        ends = same(phase, END)
+        if any_of(ends):
+            left_over(h, i0, ig, i, noise, error)
+            substitute_two(a, bend, error, pivot, entry, left)
+        else:
+            substitute(a, bend, pivot, entry, left)
+        solved, finite = solved_by(tolerance, bend, step)
+        solved = busy & ~limited & ~far & solved
+        rounds = at(clock, ROUND) + 1.0
+        spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))
+        ends = ends & solved
+        if any_of(ends):
             size = error_of(relative, absolute, x0, x, error)
             put(clock, ERROR, size)
             put(clock, GROWTH, growth(size))
-        elif any_of(solved):
-            asked_step(q, a, diagonal, x, constant, rhs, trial)
-            substitute(factors, trial, pivot, entry, left)
-            solved = solved & settled(tolerance, trial, moved)
-        spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))
-        going = busy & ~solved & ~spent
-        ended = solved & same(phase, END)
-        if any_of(ended):
             read_signals(element, group, rows.term, rows.factor, rows.signal, p, xg, flow_g, sg)
-        if any_of(ended | (solved & same(phase, LEAP)) | same(phase, GLANCE)):
+        if any_of(ends | (solved & same(phase, LEAP)) | same(phase, GLANCE)):
             read_signals(element, group, rows.term, rows.factor, rows.signal, p, x, flow, s1)
-        put(clock, MOVED, moved)
-        put(clock, ROUND, rounds + 1.0)
+        put(clock, LIMITED, where(limited, 1.0, 0.0 * h))
+        put(clock, ROUND, rounds)
         flag(solved, came)
         flag(spent, failed)
 
@@ -318,17 +325,17 @@ def march_rows(
             doing = phase[w]
             lane = lane_of[w]
             if doing == GLANCE:
-                if clock[MOVED, w] < math.inf or clock[ROUND, w] >= GLANCES:
+                if clock[LIMITED, w] == 0.0 or clock[ROUND, w] >= GLANCES:
                     came[w] = LOOKED
             elif doing == IDLE:
                 came[w] = NOTHING
             elif came[w] != 0:
                 if doing == STAGE:
-                    counts[lane, 2] += int(clock[ROUND, w]) - 1
+                    counts[lane, 2] += int(clock[ROUND, w])
                     came[w] = STAGED
                 elif doing == LEAP:
                     counts[lane, 0] += 1
-                    counts[lane, 2] += int(clock[ROUND, w]) - 1
+                    counts[lane, 2] += int(clock[ROUND, w])
                     came[w] = LEAPT
                     clock[NOW, w] = min(JUMP, 0.5 * clock[SPAN, w])
                     watch(
@@ -341,7 +348,7 @@ def march_rows(
                     clock[NEXT, w] = FIRST
                     clock[LAST, w] = 0.0
                 else:
-                    counts[lane, 2] += int(clock[ROUND, w]) - 1
+                    counts[lane, 2] += int(clock[ROUND, w])
                     length = clock[LENGTH, w]
                     grow = clock[GROWTH, w]
                     if clock[LAST, w] == 0.0:
@@ -373,10 +380,9 @@ def march_rows(
                 if doing == LEAP or clock[NEXT, w] < SMALLEST:
                     came[w] = FINISHED
                     results.ended[lane, 0] = UNSOLVED
-                    results.ended[lane, 1] = worst_unknown(nets, clock[AH, w], a, diagonal, tolerance, rhs, w)
+                    results.ended[lane, 1] = worst_unknown(tolerance, bend, step, w)
                     results.ended_at[lane] = clock[BASE, w] + clock[NOW, w]
 
-        # Vectors are kept before the lanes that go on change the iterate.
         staged = same(came, STAGED)
         if any_of(staged):
             take(staged, x, xg)
@@ -397,8 +403,6 @@ def march_rows(
         again = same(came, AGAIN)
         if any_of(again):
             take(again, seen0, seen)
-        if any_of(going):
-            improve(pivot, entry, update, left, going, a, rhs, factors, x)
 
         # What each lane does next.
         dirty = False

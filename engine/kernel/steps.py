@@ -9,8 +9,7 @@ from __future__ import annotations
 import math
 
 from .compiled import leaf
-from .layout import Floats, Places
-from .newton import ROUND_OFF
+from .layout import Floats
 from .vectors import Flags, Numbers, at, exp, greater, log, put, where
 
 GAMMA = 2.0 - math.sqrt(2.0)
@@ -99,22 +98,11 @@ def keep_parabola(
 
 
 @leaf
-def left_over(
-    h: Numbers,
-    x: Floats,
-    i0: Floats,
-    ig: Floats,
-    i: Floats,
-    q: Floats,
-    a: Floats,
-    diagonal: Places,
-    out: Floats,
-) -> None:
+def left_over(h: Numbers, i0: Floats, ig: Floats, i: Floats, noise: Floats, out: Floats) -> None:
     """Set out to the third-order error of the step as charges, to be filtered by substitution."""
     for k in range(out.shape[0]):
         r = h * (ERROR_START * at(i0, k) + ERROR_STAGE * at(ig, k) + ERROR_END * at(i, k))
-        noise = 4.0 * ROUND_OFF * (abs(at(q, k)) + abs(at(a, diagonal[k]) * at(x, k)))
-        put(out, k, where(abs(r) <= noise, 0.0, r))
+        put(out, k, where(abs(r) <= 4.0 * at(noise, k), 0.0, r))
 
 
 @leaf
