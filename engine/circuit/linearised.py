@@ -12,16 +12,14 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from ..kernel import layout
-from ..kernel.assemble import evaluate, linear_matrix
 from ..kernel.layout import Floats, Program
+from ..kernel.linearised import linearised
 from .circuit import Circuit
 
 Complexes = NDArray[np.complex128]
 
 SHIFT = 1.0  # 1/s: modes are found through (G + SHIFT C)^-1 C, which nets without capacitance do not spoil
 FASTEST = 1e9  # 1/s: a quicker mode is one of round-off, in nets that have no capacitance
-LOOKS = 100  # until junctions that are limited in each look have been linearised at their own voltage
 ITERATIONS, EXACT = 6, 1e-4  # of inverse iteration, and the share by which the last one may still move a mode
 
 
@@ -29,35 +27,10 @@ def matrices(circuit: Circuit, parameters: Floats, states: Floats) -> tuple[Floa
     """G in siemens and C in farad (rows of branches: volts), both (states, n_free, n_free).
 
     ``parameters`` (states, parameters) are rows of the lane table with the switches where they stand, ``states``
-    (states, n_all). This is the only place outside the kernel that knows how it stores its matrix.
+    (states, n_all).
     """
-    top = circuit.topology
-    free, entries = int(top.size[1]), int(top.size[3])
-    order = top.pivot[:free].astype(np.int64)
-    entry = top.entry.astype(np.int64)
-    rows, columns, slots = list(order[:, 0]), list(order[:, 0]), list(order[:, 1])
-    for n in range(free):
-        for k in range(int(top.pivot[n, 2]), int(top.pivot[n + 1, 2])):
-            rows += [entry[k, 0], order[n, 0]]
-            columns += [order[n, 0], entry[k, 0]]
-            slots += [entry[k, 1], entry[k, 2]]
-    group = top.group.astype(np.int64)
-    junctions = int(group[layout.TRANSPORT] - group[layout.JUNCTION])
-    devices = junctions + 2 * int(group[layout.FAMILIES] - group[layout.TRANSPORT])
-    source = np.zeros(len(circuit.source_names))
-    i, q = np.zeros(states.shape[1]), np.zeros(states.shape[1])
-    linear, a = np.zeros(entries + 1), np.zeros(entries + 1)
-    seen, flow = np.zeros(devices + 2), np.zeros(devices + 2)
-    made = np.zeros((2, len(states), free, free))
-    for n, (p, x) in enumerate(zip(parameters, states, strict=True)):
-        for which, ah in enumerate((0.0, 1.0)):
-            linear_matrix(top.element, top.group, p, ah, linear)
-            for _ in range(LOOKS):
-                moved = evaluate(top.element, top.group, p, source, linear, ah, x, i, q, a, seen, flow, True)
-                if moved < math.inf:
-                    break
-            made[which, n, rows, columns] = a[slots]
-    return made[1] - made[0], made[0]
+    made = linearised(circuit.topology, parameters, len(circuit.source_names), states)
+    return made.conductance, made.capacitance
 
 
 def parameters_at(circuit: Circuit, table: Floats, program: Program, lane: int, times: Floats) -> Floats:

@@ -9,9 +9,9 @@ from collections.abc import Iterable
 
 from .compiled import leaf
 from .layout import Floats, Places, places
-from .vectors import add, at, put, where
+from .vectors import Numbers, add, at, put, where
 
-LEAST_PIVOT = 1e-60
+LEAST_PIVOT = 1e-15  # S, times a h: next to nothing, but enough to divide by in a net that only a branch holds
 
 
 class Pattern:
@@ -98,12 +98,13 @@ class Plan:
 
 
 @leaf
-def factor(a: Floats, pivot: Places, entry: Places, update: Places) -> None:
-    """Factor the stored matrix of every lane in place; the pivots are stored as their reciprocals."""
+def factor(a: Floats, ah: Numbers, pivot: Places, entry: Places, update: Places) -> None:
+    """Factor the stored matrix C + a h G of every lane in place; the pivots are stored as their reciprocals."""
+    least = LEAST_PIVOT * ah
     for n in range(pivot.shape[0] - 1):
         slot = pivot[n, 1]
         value = at(a, slot)
-        value = 1.0 / where(abs(value) < LEAST_PIVOT, LEAST_PIVOT, value)
+        value = 1.0 / where(abs(value) < least, least, value)
         put(a, slot, value)
         for r in range(pivot[n, 2], pivot[n + 1, 2]):
             f = at(a, entry[r, 1]) * value

@@ -1,4 +1,4 @@
-"""A circuit at one operating point, outside of any run: currents, charges, and dense matrices of their derivatives."""
+"""A circuit at given states, outside of any run: currents, charges, and dense matrices of their derivatives."""
 
 from __future__ import annotations
 
@@ -8,24 +8,57 @@ import numpy as np
 
 from .assemble import evaluate, linear_matrices
 from .compiled import compiled
-from .layout import BRANCH, E_A, E_SLOT, JUNCTION, TRANSPORT, Floats, Places, Topology, zeros
+from .layout import BRANCH, E_A, E_SLOT, JUNCTION, SLOPES, TRANSPORT, Floats, Places, Topology, zeros
 from .vectors import WIDTH, at, put, where
 
-LOOKS = 200  # until junctions, limited in each look, are taken at the voltages asked for
+LOOKS = 100  # until junctions, limited in each look, are taken at the voltages asked for
 
 
 @dataclass(frozen=True)
 class Linearised:
-    """Currents (A) out of and charges (C) on all nets, (n_all,); G and C over the free unknowns, (n_free, n_free)."""
+    """Currents (A) out of and charges (C) on all nets, (states, n_all); G and C of the free unknowns, (states, n_free,
+    n_free), in siemens and farad, rows of branches in volts."""
 
     current: Floats
     charge: Floats
     conductance: Floats
     capacitance: Floats
 
-    def matrix(self, ah: float) -> Floats:
-        """C + a h G."""
-        return self.capacitance + ah * self.conductance
+
+def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) -> Linearised:
+    """Linearise at states (states, n_all), each with a row of the lane table; ``sources`` is their number, all at 0."""
+    count, n_all = states.shape
+    free, entries = int(top.size[1]), int(top.size[3])
+    transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
+    junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
+    made = Linearised(*(zeros(count, n_all) for _ in range(2)), *(zeros(count, free, free) for _ in range(2)))
+    rows, columns, slots = np.array(_places(top), dtype=np.int64).reshape(-1, 3).T
+    i, q = zeros(n_all, WIDTH), zeros(n_all, WIDTH)
+    flow, slope = zeros(junctions + 2 * transports, WIDTH), zeros(2 * junctions + int(SLOPES) * transports, WIDTH)
+    c, g, a = (zeros(entries + 1, WIDTH) for _ in range(3))
+    steps = np.repeat([[0.0], [1.0]], WIDTH, axis=1)
+    limited = zeros(1, WIDTH)
+    for low in range(0, count, WIDTH):
+        lanes = np.minimum(np.arange(low, low + WIDTH), count - 1)
+        few = min(WIDTH, count - low)
+        p, x = np.ascontiguousarray(parameters[lanes].T), np.ascontiguousarray(states[lanes].T)
+        seen = np.zeros_like(flow)
+        stored = []
+        with np.errstate(all="ignore"):
+            for which in range(2):
+                for _ in range(LOOKS):
+                    _look(
+                        top.element, top.group, p, zeros(sources, WIDTH), c, g, steps, which, x, i, q, a, seen, flow,
+                        slope, limited,
+                    )  # fmt: skip
+                    if not np.any(limited):
+                        break
+                stored.append(a[slots, :few].T.copy())
+        here = slice(low, low + few)
+        made.current[here], made.charge[here] = i[:, :few].T, q[:, :few].T
+        made.capacitance[here, rows, columns] = stored[0]
+        made.conductance[here, rows, columns] = stored[1] - stored[0]
+    return made
 
 
 @compiled
@@ -45,15 +78,15 @@ def _look(
     seen: Floats,
     flow: Floats,
     slope: Floats,
-    moved: Floats,
+    limited: Floats,
 ) -> None:
     linear_matrices(element, group, p, c, g)
-    limited = evaluate(element, group, p, source, c, g, at(steps, which), x, i, q, a, seen, flow, slope)
-    put(moved, 0, where(limited, 1.0, 0.0))
+    away = evaluate(element, group, p, source, c, g, at(steps, which), x, i, q, a, seen, flow, slope)
+    put(limited, 0, where(away, 1.0, 0.0))
 
 
-def _places(top: Topology) -> dict[tuple[int, int], int]:
-    """Slot of every entry between free unknowns that some element has."""
+def _places(top: Topology) -> list[tuple[int, int, int]]:
+    """Row, column and slot of every entry between free unknowns that some element has."""
     found = {}
     for family in range(TRANSPORT + 1):
         for element in top.element[top.group[family] : top.group[family + 1]].astype(int):
@@ -66,36 +99,4 @@ def _places(top: Topology) -> dict[tuple[int, int], int]:
             for n, pair in enumerate(pairs):
                 if max(pair) < top.size[1]:
                     found[pair] = int(element[E_SLOT + n])
-    return found
-
-
-def linearised(top: Topology, parameters: Floats, source: Floats, x: Floats) -> Linearised:
-    """Linearise at x (n_all,) with the parameters of one lane, (parameters,), and its sources, (sources,)."""
-    free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
-    transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
-    devices = int(top.group[TRANSPORT]) - int(top.group[JUNCTION]) + 2 * transports
-
-    def row(values: Floats) -> Floats:
-        return np.ascontiguousarray(np.repeat(values[:, None], WIDTH, axis=1))
-
-    p, drive, v = row(parameters), row(source), row(x)
-    i, q, seen, flow = zeros(n_all, WIDTH), zeros(n_all, WIDTH), zeros(devices, WIDTH), zeros(devices, WIDTH)
-    c, g, a = zeros(entries + 1, WIDTH), zeros(entries + 1, WIDTH), zeros(entries + 1, WIDTH)
-    slope = zeros(6 * devices, WIDTH)
-    steps = np.ascontiguousarray(np.array([[0.0] * WIDTH, [1.0] * WIDTH]))
-    moved = zeros(1, WIDTH)
-    stored = []
-    with np.errstate(all="ignore"):
-        for which in range(2):
-            for _ in range(LOOKS):
-                _look(top.element, top.group, p, drive, c, g, steps, which, v, i, q, a, seen, flow, slope, moved)
-                if moved[0, 0] == 0.0:
-                    break
-            stored.append(a[:, 0].copy())
-    found = []
-    for values in (stored[0], stored[1] - stored[0]):
-        dense = zeros(free, free)
-        for (r, k), slot in _places(top).items():
-            dense[r, k] = values[slot]
-        found.append(dense)
-    return Linearised(i[:, 0].copy(), q[:, 0].copy(), found[1], found[0])
+    return [(*pair, slot) for pair, slot in found.items()]

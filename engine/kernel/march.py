@@ -7,7 +7,7 @@ another, and a lane that ends makes room for the next.
 from __future__ import annotations
 
 import math
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 
@@ -80,7 +80,8 @@ class Work(NamedTuple):
     constant: Floats
     tolerance: Floats
     error: Floats
-    noise: Floats  # what round-off makes of the charges
+    noise: Floats  # what round-off makes of the charges, and what may be left of a residual
+    allowed: Floats
     a: Floats  # (entries + 1, WIDTH) matrix and then its factors, and the linear part of C and of G
     c: Floats
     g: Floats
@@ -118,9 +119,9 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     signals = rows.signal.size - 1
     diagonal = np.zeros(free, dtype=np.uint32)
     diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
-    return Work(
+    arrays: list[Any] = [
         *(zeros(n_all, WIDTH) for _ in range(13)),
-        *(zeros(free, WIDTH) for _ in range(6)),
+        *(zeros(free, WIDTH) for _ in range(7)),
         *(zeros(entries + 1, WIDTH) for _ in range(3)),
         *(zeros(devices, WIDTH) for _ in range(5)),
         zeros(2 * junctions + int(SLOPES) * transports, WIDTH),
@@ -134,7 +135,8 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         zeros(WIDTH),
         *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
         diagonal,
-    )
+    ]
+    return Work(*arrays)
 
 
 @leaf
@@ -223,13 +225,14 @@ def march_rows(
     """Step lanes low .. high-1, WIDTH of them at a time; stop where ``cancel[0]`` is set."""
     element, group = top.element, top.group
     pivot, entry, update, left = top.pivot, top.entry, top.update, top.left
-    free = top.size[1]
+    nets, free = top.size[0], top.size[1]
     relative, absolute, bounds = control.relative, control.absolute, control.bounds
     x, q, i = work.x, work.q, work.i
     x0, q0, i0 = work.x0, work.q0, work.i0
     xg, qg, ig = work.xg, work.qg, work.ig
     first, second, constant, tolerance = work.first, work.second, work.constant, work.tolerance
-    step, bend, error, noise, slope = work.step, work.bend, work.error, work.noise, work.slope
+    step, bend, error, noise, allowed = work.step, work.bend, work.error, work.noise, work.allowed
+    slope = work.slope
     di, dq, nothing = work.di, work.dq, work.nothing
     a, c, g = work.a, work.c, work.g
     seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
@@ -291,8 +294,8 @@ def march_rows(
         ah = at(clock, AH)
         h = at(clock, LENGTH)
         limited = evaluate(element, group, p, source, c, g, ah, x, i, q, a, seen, flow, slope)
-        residual(ah, x, i, q, a, diagonal, constant, noise, step)
-        factor(a, pivot, entry, update)
+        residual(nets, ah, x, i, q, a, diagonal, constant, tolerance, noise, allowed, step)
+        factor(a, ah, pivot, entry, update)
         substitute(a, step, pivot, entry, left)
         busy = same(phase, LEAP) | same(phase, STAGE) | same(phase, END)
         advance(busy, step, x)
@@ -303,7 +306,7 @@ def march_rows(
             substitute_two(a, bend, error, pivot, entry, left)
         else:
             substitute(a, bend, pivot, entry, left)
-        solved, finite = solved_by(tolerance, bend, step)
+        solved, finite = solved_by(ah, i, q, constant, allowed, tolerance, bend, step)
         solved = busy & ~limited & ~far & solved
         rounds = at(clock, ROUND) + 1.0
         spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))

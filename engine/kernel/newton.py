@@ -5,15 +5,18 @@ from __future__ import annotations
 import math
 
 from .compiled import leaf
+from .elimination import LEAST_PIVOT
 from .layout import Floats, Places
 from .vectors import Flags, Numbers, at, greater, put, where
 
 REMAINDER = 0.3  # accepted Kirchhoff residual in parts of the tolerance
 ROUND_OFF = 2.2e-16  # of the charges that cancel in a residual
+BRANCH_VOLTS = 1e-4  # V, accepted residual of a branch's own equation
 
 
 @leaf
 def residual(
+    nets: int,
     ah: Numbers,
     x: Floats,
     i: Floats,
@@ -21,27 +24,47 @@ def residual(
     a: Floats,
     diagonal: Places,
     constant: Floats,
+    tolerance: Floats,
     noise: Floats,
+    allowed: Floats,
     step: Floats,
 ) -> None:
-    """Set the first rows of step to -(q + ah i + constant), 0 where that is round-off, which is noted in noise."""
+    """Set the first rows of step to -(q + ah i + constant), 0 where that is round-off, which is noted in noise; and
+    allowed to what may be left of it, judged in volts through the diagonal."""
     for k in range(constant.shape[0]):
         r = at(q, k) + ah * at(i, k) + at(constant, k)
-        level = ROUND_OFF * (abs(at(q, k)) + abs(at(constant, k)) + abs(at(a, diagonal[k]) * at(x, k)))
+        own = greater(abs(at(a, diagonal[k])), LEAST_PIVOT * ah)
+        level = ROUND_OFF * (abs(at(q, k)) + abs(at(constant, k)) + own * abs(at(x, k)))
+        left = own * at(tolerance, k)
+        if k >= nets:
+            left = left + ah * BRANCH_VOLTS
+        put(allowed, k, REMAINDER * left + 8.0 * level)
         put(noise, k, level)
         put(step, k, where(abs(r) <= level, 0.0, -r))
 
 
 @leaf
-def solved_by(tolerance: Floats, bend: Floats, step: Floats) -> tuple[Flags, Flags]:
-    """Return where what the step leaves over, as a step of its own in bend, is well inside the tolerance, and where
+def solved_by(
+    ah: Numbers,
+    i: Floats,
+    q: Floats,
+    constant: Floats,
+    allowed: Floats,
+    tolerance: Floats,
+    bend: Floats,
+    step: Floats,
+) -> tuple[Flags, Flags]:
+    """Return where a step solved the stage: what it leaves over, as a step of its own in bend, is well inside the
+    tolerance, and so is the residual by the tangents, which round-off in the elimination may have spoilt; and where
     the step is finite."""
-    worst = abs(at(bend, 0)) / at(tolerance, 0)
-    longest = abs(at(step, 0))
-    for k in range(1, tolerance.shape[0]):
+    worst = 0.0 * ah
+    longest = 0.0 * ah
+    spoilt = ah != ah
+    for k in range(tolerance.shape[0]):
         worst = greater(worst, abs(at(bend, k)) / at(tolerance, k))
         longest = greater(longest, abs(at(step, k)))
-    return worst <= REMAINDER, longest < math.inf
+        spoilt = spoilt | (abs(at(q, k) + ah * at(i, k) + at(constant, k)) > at(allowed, k))
+    return (worst <= REMAINDER) & ~spoilt, longest < math.inf
 
 
 @leaf

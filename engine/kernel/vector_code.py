@@ -4,6 +4,7 @@ Loops over eight lanes in plain code are not made into vectors, because arrays m
 nothing is left to guess. Where the processor has shorter vectors the compiler takes several.
 """
 
+# mypy: disable-error-code="no-untyped-call"
 from __future__ import annotations
 
 import operator
@@ -25,14 +26,14 @@ _WORDS = ir.VectorType(_WORD, WIDTH)
 _FLAGS = ir.VectorType(ir.IntType(1), WIDTH)
 
 
-class NumbersType(types.Type):  # type: ignore[misc]
+class NumbersType(types.Type):
     """One float64 per lane."""
 
     def __init__(self) -> None:
         super().__init__(name="stagebook_numbers")
 
 
-class FlagsType(types.Type):  # type: ignore[misc]
+class FlagsType(types.Type):
     """One truth per lane."""
 
     def __init__(self) -> None:
@@ -44,13 +45,13 @@ FLAGS = FlagsType()
 
 
 @register_model(NumbersType)
-class _NumbersModel(models.PrimitiveModel):  # type: ignore[misc]
+class _NumbersModel(models.PrimitiveModel):
     def __init__(self, manager: Any, of: Any) -> None:
         super().__init__(manager, of, _NUMBERS)
 
 
 @register_model(FlagsType)
-class _FlagsModel(models.PrimitiveModel):  # type: ignore[misc]
+class _FlagsModel(models.PrimitiveModel):
     def __init__(self, manager: Any, of: Any) -> None:
         super().__init__(manager, of, _FLAGS)
 
@@ -83,7 +84,7 @@ def _built_in(builder: Any, name: str, a: Any) -> Any:
 def _operator(function: Any, result: Any, make: Callable[[Any, Any, Any], Any]) -> None:
     """Teach the compiler an operator on numbers of lanes, a single number on either side too."""
 
-    class Typing(AbstractTemplate):  # type: ignore[misc]
+    class Typing(AbstractTemplate):
         def generic(self, args: Any, kws: Any) -> Any:
             known = all(a is NUMBERS or isinstance(a, (types.Float, types.Integer)) for a in args)
             if len(args) == 2 and NUMBERS in args and known:
@@ -113,7 +114,7 @@ _operator(operator.ne, FLAGS, lambda builder, a, b: builder.fcmp_unordered("!=",
 
 
 def _flag_operator(function: Any, make: Callable[..., Any], count: int) -> None:
-    class Typing(AbstractTemplate):  # type: ignore[misc]
+    class Typing(AbstractTemplate):
         def generic(self, args: Any, kws: Any) -> Any:
             return signature(FLAGS, *args) if len(args) == count and all(a is FLAGS for a in args) else None
 
@@ -127,7 +128,7 @@ _flag_operator(operator.invert, lambda builder, a: builder.not_(a), 1)
 
 
 def _unary(function: Any, make: Callable[[Any, Any], Any]) -> None:
-    class Typing(AbstractTemplate):  # type: ignore[misc]
+    class Typing(AbstractTemplate):
         def generic(self, args: Any, kws: Any) -> Any:
             return signature(NUMBERS, NUMBERS) if len(args) == 1 and args[0] is NUMBERS else None
 
@@ -157,7 +158,7 @@ def _store(builder: Any, value: Any, pointer: Any) -> None:
     builder.store(value, pointer).align = 8
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def at(typing: Any, x: Any, k: Any) -> Any:
     """Row k of an array."""
 
@@ -167,7 +168,7 @@ def at(typing: Any, x: Any, k: Any) -> Any:
     return NUMBERS(x, k), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def put(typing: Any, x: Any, k: Any, v: Any) -> Any:
     """Set row k of an array."""
 
@@ -179,7 +180,7 @@ def put(typing: Any, x: Any, k: Any, v: Any) -> Any:
     return types.void(x, k, v), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def add(typing: Any, x: Any, k: Any, v: Any) -> Any:
     """Add to row k of an array."""
 
@@ -191,7 +192,7 @@ def add(typing: Any, x: Any, k: Any, v: Any) -> Any:
     return types.void(x, k, v), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def where(typing: Any, flags: Any, yes: Any, no: Any) -> Any:
     """Choose lane by lane."""
 
@@ -202,7 +203,7 @@ def where(typing: Any, flags: Any, yes: Any, no: Any) -> Any:
     return NUMBERS(flags, yes, no), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def any_of(typing: Any, flags: Any) -> Any:
     """Whether any lane is flagged."""
 
@@ -213,7 +214,7 @@ def any_of(typing: Any, flags: Any) -> Any:
     return types.boolean(flags), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def same(typing: Any, x: Any, value: Any) -> Any:
     """Flags the lanes in which whole numbers have a value."""
 
@@ -228,7 +229,7 @@ def same(typing: Any, x: Any, value: Any) -> Any:
     return FLAGS(x, value), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def flag(typing: Any, flags: Any, x: Any) -> Any:
     """Write flags to whole numbers."""
 
@@ -255,7 +256,7 @@ lesser = intrinsic(_chosen("<"))
 greater = intrinsic(_chosen(">"))
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def root(typing: Any, a: Any) -> Any:
     """Square root, rounded correctly."""
 
@@ -265,7 +266,7 @@ def root(typing: Any, a: Any) -> Any:
     return NUMBERS(a), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def scaled_by_power(typing: Any, a: Any, shifted: Any) -> Any:
     """a times two to the power that stands in the last bits of ``shifted``."""
 
@@ -276,7 +277,7 @@ def scaled_by_power(typing: Any, a: Any, shifted: Any) -> Any:
     return NUMBERS(a, shifted), code
 
 
-@intrinsic  # type: ignore[untyped-decorator]
+@intrinsic
 def split_power(typing: Any, a: Any) -> Any:
     """a as m times two to the power e, m between the roots of a half and of two."""
 

@@ -26,7 +26,7 @@ LN2_LOW = 1.90821492927058770002e-10
 SHIFT = 6755399441055744.0  # 1.5 * 2**52: added, it rounds to a whole number and shows it in the last bits
 HALF_ROOT = 0.7071067811865475  # of the mantissa at which a power of two is split off
 
-if COMPILED:
+if COMPILED and not TYPE_CHECKING:
     from .vector_code import (
         WIDTH,
         add,
@@ -46,15 +46,15 @@ if COMPILED:
 else:
     WIDTH = 1
 
-    def at(x: Floats, k: int) -> Numbers:
+    def at(x: Floats, k: Any) -> Numbers:
         """Row k of an array (rows, WIDTH)."""
         return x[k, 0]
 
-    def put(x: Floats, k: int, v: Numbers) -> None:
+    def put(x: Floats, k: Any, v: Numbers) -> None:
         """Set row k of an array."""
         x[k, 0] = v
 
-    def add(x: Floats, k: int, v: Numbers) -> None:
+    def add(x: Floats, k: Any, v: Numbers) -> None:
         """Add to row k of an array."""
         x[k, 0] += v
 

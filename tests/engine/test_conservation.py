@@ -32,8 +32,8 @@ class Flows:
 
     @classmethod
     def at(cls, circuit: Circuit, parameters: Floats, x: Floats, ah: float) -> Flows:
-        made = linearised(circuit.topology, parameters, np.zeros(len(circuit.source_names)), x)
-        return cls(made.current, made.charge, made.matrix(ah))
+        made = linearised(circuit.topology, parameters[None, :], len(circuit.source_names), x[None, :])
+        return cls(made.current[0], made.charge[0], made.capacitance[0] + ah * made.conductance[0])
 
 
 @given(random_circuits(), st.integers(0, 2**32 - 1), st.sampled_from([0.0, 1e-9, 1e-5]))

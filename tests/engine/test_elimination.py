@@ -19,7 +19,7 @@ def solved(plan: Plan, matrix: Floats, right: Floats) -> Floats:
     for (i, j), slot in plan.slots.items():
         stored[slot] = matrix[i, j]
     solution = np.ascontiguousarray(np.repeat(right[:, None], WIDTH, axis=1))
-    factor(stored, lists["pivot"], lists["entry"], lists["update"])
+    factor(stored, 0.0, lists["pivot"], lists["entry"], lists["update"])
     twin = 2.0 * solution
     other = solution.copy()
     substitute(stored, solution, lists["pivot"], lists["entry"], lists["left"])
