@@ -37,12 +37,14 @@ from .layout import (
 )
 from .newton import advance, residual, solved_by, worst_unknown
 from .rows import close_rows, open_rows, read_signals, watch
-from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, take
+from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, surprise, take
 from .vectors import WIDTH, any_of, at, flag, put, same, where
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
 FIRST = 1e-10  # s, the first step after it
 SMALLEST = 1e-16  # s
+SNAP = 0.2  # V, a step whose end was expected further away is taken again, shorter, unless it is shorter than
+SNAPPED = 1e-9  # s
 GLANCES = 12  # looks at the start until junctions, limited in each, have their charges at any sensible voltage
 
 # What a lane is doing: nothing; looking at its start; solving a jump, the stage of a step, its end.
@@ -55,8 +57,8 @@ NOT_ENDED = -1
 AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma h; h; the step before
 ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
 LIMITED, ERROR, GROWTH = 7, 8, 9
-NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN = 10, 11, 12, 13, 14, 15, 16
-CLOCK = 17
+NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE = 10, 11, 12, 13, 14, 15, 16, 17
+CLOCK = 18
 
 
 class Work(NamedTuple):
@@ -82,6 +84,7 @@ class Work(NamedTuple):
     error: Floats
     noise: Floats  # what round-off makes of the charges, and what may be left of a residual
     allowed: Floats
+    expected: Floats  # where the end of the step was thought to lie
     a: Floats  # (entries + 1, WIDTH) matrix and then its factors, and the linear part of C and of G
     c: Floats
     g: Floats
@@ -121,7 +124,7 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
     arrays: list[Any] = [
         *(zeros(n_all, WIDTH) for _ in range(13)),
-        *(zeros(free, WIDTH) for _ in range(7)),
+        *(zeros(free, WIDTH) for _ in range(8)),
         *(zeros(entries + 1, WIDTH) for _ in range(3)),
         *(zeros(devices, WIDTH) for _ in range(5)),
         zeros(2 * junctions + int(SLOPES) * transports, WIDTH),
@@ -232,7 +235,7 @@ def march_rows(
     xg, qg, ig = work.xg, work.qg, work.ig
     first, second, constant, tolerance = work.first, work.second, work.constant, work.tolerance
     step, bend, error, noise, allowed = work.step, work.bend, work.error, work.noise, work.allowed
-    slope = work.slope
+    slope, expected = work.slope, work.expected
     di, dq, nothing = work.di, work.dq, work.nothing
     a, c, g = work.a, work.c, work.g
     seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
@@ -312,6 +315,7 @@ def march_rows(
         spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))
         ends = ends & solved
         if any_of(ends):
+            put(clock, SURPRISE, surprise(nets, expected, x))
             size = error_of(relative, absolute, x0, x, error)
             put(clock, ERROR, size)
             put(clock, GROWTH, growth(size))
@@ -362,6 +366,11 @@ def march_rows(
                         # Nothing here is quicker than a picosecond but a junction that has lost its last charge.
                         counts[lane, 1] += 1
                         clock[NEXT, w] = max(length * max(0.1, grow), JUMP)
+                        came[w] = AGAIN
+                        continue
+                    if clock[LAST, w] > 0.0 and clock[SURPRISE, w] > SNAP and length > SNAPPED:
+                        counts[lane, 1] += 1
+                        clock[NEXT, w] = max(0.1 * length, SNAPPED)
                         came[w] = AGAIN
                         continue
                     came[w] = ARRIVED
@@ -501,7 +510,9 @@ def march_rows(
             )  # fmt: skip
         staged = same(came, STAGED)
         if any_of(staged):
-            begin_end(staged, at(clock, REACH), h, at(clock, LAST), x0, q0, xg, qg, first, second, x, constant)
+            begin_end(
+                staged, at(clock, REACH), h, at(clock, LAST), x0, q0, xg, qg, first, second, x, constant, expected
+            )
         if dirty:
             linear_matrices(element, group, p, c, g)
         for w in range(WIDTH):

@@ -68,10 +68,11 @@ def begin_end(
     second: Floats,
     x: Floats,
     constant: Floats,
+    expected: Floats,
 ) -> None:
     """Set out for the end by the second backward difference, from the cubic through the parabola and the stage.
 
-    ``last`` is the length of the step before, 0 after a jump.
+    ``last`` is the length of the step before, 0 after a jump; what is expected of the end is kept.
     """
     before = (1.0 - GAMMA) * last
     cubic = h * (h + last) * (h + before) / (reach * (reach + last) * (reach + before))
@@ -81,6 +82,7 @@ def begin_end(
         miss = at(xg, k) - (start + reach * (at(first, k) + reach * at(second, k)))
         guess = start + h * (at(first, k) + h * at(second, k)) + miss * share
         put(x, k, where(ending, guess, at(x, k)))
+        put(expected, k, where(ending, guess, at(expected, k)))
         put(constant, k, where(ending, TO_START * at(q0, k) - TO_STAGE * at(qg, k), at(constant, k)))
 
 
@@ -113,6 +115,18 @@ def error_of(relative: Floats, absolute: Floats, x0: Floats, x: Floats, filtered
         size = greater(abs(at(x0, k)), abs(at(x, k)))
         largest = greater(abs(at(filtered, k)) / (relative[k] * size + absolute[k]), largest)
     return largest
+
+
+@leaf
+def surprise(nets: int, expected: Floats, x: Floats) -> Numbers:
+    """Return by how many volts the end differs most from what was expected of it, a tenth of the voltage forgiven.
+
+    Nets without capacitance have no error that the formula sees: where such nets snap over, only this tells.
+    """
+    most = 0.0 * at(x, 0)
+    for k in range(nets):
+        most = greater(abs(at(x, k) - at(expected, k)) - 0.1 * abs(at(x, k)), most)
+    return most
 
 
 @leaf
