@@ -15,7 +15,7 @@ from ..design.requirement import Requirement
 from ..design.sequence import ContactEvent, RelativeMoment
 from ..errors import CircuitError, QuantityError
 from ..parts.figures import Figure, figure
-from ..primitives.builder import Bench, Handle
+from ..primitives.builder import RETURN, Bench, Handle
 from ..primitives.signals import Anchor, Row, Signal, crossing, voltage
 from ..quantity import read
 from .factors import FACTORS
@@ -176,7 +176,10 @@ class View:
             signal, level, rising = voltage(anchor.subject), anchor.level, anchor.change == "above"
             first = after or Anchor()
         else:
-            on = self.bench(anchor.subject).on
+            bench = self.bench(anchor.subject)
+            on = bench.on
+            if anchor.change in ("in", "out") and bench.armature is not None:
+                on = bench.armature, RETURN, 0.5
             if on is None:
                 raise CircuitError(
                     f"'{text}': part {anchor.subject} has no level at which it counts as on;"

@@ -13,7 +13,17 @@ from ..kernel import layout
 from ..kernel.elimination import Pattern
 from ..kernel.layout import Floats, Topology, ints, places
 from ..parts import kinds
-from ..primitives.builder import RETURN, SUPPLY_NET, Bench, Builder, Law, constant, junction_array, transport_array
+from ..primitives.builder import (
+    RETURN,
+    SUPPLY_NET,
+    Bench,
+    Builder,
+    Guard,
+    Law,
+    constant,
+    junction_array,
+    transport_array,
+)
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
 from ..quantity import read
 from .injection import add_injectors, injected
@@ -84,7 +94,16 @@ class Circuit:
             linear[:, k] = column
         junctions = [junction_array(laws, lanes) for *_, laws in made.junctions]
         transports = [transport_array(laws, lanes) for *_, laws in made.transports]
-        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports], axis=1))
+        laws: list[Law] = []
+        for guard in made.guards.values():
+            laws += [guard.on, guard.off, guard.on_delay, guard.off_delay]
+        for each in made.operated:
+            bounce = each.bounce_for, float(each.bounce_times)
+            laws += [each.closed, each.opened, each.delay, *(constant(value) for value in bounce)]
+        moved = layout.zeros(lanes.count, len(laws))
+        for k, law in enumerate(laws):
+            moved[:, k] = law(lanes)
+        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports, moved], axis=1))
 
 
 def build(design: Design, inject: Sequence[str] = ()) -> Circuit:
@@ -113,7 +132,12 @@ def build(design: Design, inject: Sequence[str] = ()) -> Circuit:
     n_free = len(free) + len(builder.branches)
     nets.update({name: n_free + n for n, name in enumerate(known)})
     sources = (*known, *(source for *_, source in builder.branches if source is not None))
-    topology = _topology(builder, nets, len(free), n_free, n_free + len(known), sources)
+    for operated in builder.operated:
+        if operated.state not in builder.guards:
+            raise CircuitError(f"a contact is operated by '{operated.state}', which the design does not have")
+    first = n_free + len(known)
+    nets.update({state: first + n for n, state in enumerate(builder.guards)})
+    topology = _topology(builder, nets, len(free), n_free, first + len(builder.guards), sources)
     return Circuit(design, tuple(builder.columns), topology, nets, sources, builder.benches, builder)
 
 
@@ -186,14 +210,27 @@ def _meets_charge(design: Design) -> bool:
     return False
 
 
+def _watched(guard: Guard, nets: dict[str, int], n_nets: int, return_net: int) -> tuple[int, int]:
+    """The two unknowns whose difference a guard watches; of a current the second is 0V."""
+    if guard.branch is not None:
+        return n_nets + guard.branch, return_net
+    return nets[guard.nets[0]], nets[guard.nets[1]]
+
+
 def _topology(
     builder: Builder, nets: dict[str, int], n_nets: int, n_free: int, n_all: int, sources: tuple[str, ...]
 ) -> Topology:
+    return_net = nets[RETURN]
     conductances: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.conductances]
     capacitances: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.capacitances]
     branches: list[tuple[int, ...]] = [(nets[a], nets[b], n_nets + k) for k, (a, b, *_) in enumerate(builder.branches)]
     junctions: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.junctions]
     transports: list[tuple[int, ...]] = [(nets[c], nets[b], nets[e]) for c, b, e, *_ in builder.transports]
+    states = {state: n for n, state in enumerate(builder.guards)}
+    guards: list[tuple[int, ...]] = [
+        (*_watched(guard, nets, n_nets, return_net), nets[state]) for state, guard in builder.guards.items()
+    ]
+    contacts: list[tuple[int, ...]] = [(states[each.state], int(each.make)) for each in builder.operated]
     pattern = Pattern(n_free)
     for nets_of_one in (*conductances, *capacitances, *junctions, *transports):
         pattern.couple(nets_of_one)
@@ -208,13 +245,26 @@ def _topology(
     rows: list[list[int]] = []
     group = [0]
     parameter = 0
-    families: tuple[list[tuple[int, ...]], ...] = (conductances, capacitances, branches, junctions, transports)
-    own = {layout.BRANCH: extra, layout.TRANSPORT: polarity}
+    families: tuple[list[tuple[int, ...]], ...] = (
+        conductances,
+        capacitances,
+        branches,
+        junctions,
+        transports,
+        guards,
+        contacts,
+    )
+    either = [int(guard.either_sign) for guard in builder.guards.values()]
+    own = {layout.BRANCH: extra, layout.TRANSPORT: polarity, layout.GUARD: either}
     for family, members in enumerate(families):
         for k, at in enumerate(members):
             if family == layout.BRANCH:
                 a, b, row = at
                 slots = [slot(row, a), slot(row, b), slot(row, row), slot(a, row), slot(b, row)]
+            elif family == layout.GUARD:
+                slots = []
+            elif family == layout.CONTACT:
+                slots = [builder.operated[k].conductance]  # conductances come first, with one parameter each
             else:
                 slots = [slot(i, j) for i in at for j in at]
             head = [*at, *[0] * (3 - len(at)), own[family][k] if family in own else 0, parameter]
@@ -222,7 +272,7 @@ def _topology(
             parameter += layout.PARAMETERS[family]
         group.append(len(rows))
     return Topology(
-        size=ints([n_nets, n_free, n_all, plan.entries]),
+        size=ints([n_nets, n_free, n_all, plan.entries, len(guards)]),
         element=places(rows, len(rows), layout.ELEMENT_WIDTH),
         group=places(group),
         **plan.lists(),

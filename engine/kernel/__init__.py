@@ -17,9 +17,9 @@ def compile_all() -> None:
     row = [0, 1, 0, 0, 0, lists.slot(0, 0), 1, 1, 1, *[0] * 5]
     march(
         layout.Topology(
-            layout.ints([1, 1, 2, 1]),
+            layout.ints([1, 1, 2, 1, 0]),
             layout.places([row], 1, layout.ELEMENT_WIDTH),
-            layout.places([0, 1, 1, 1, 1, 1]),
+            layout.places([0, *[1] * layout.FAMILIES]),
             **lists.lists(),
         ),
         np.ones((1, 1)),

@@ -15,7 +15,6 @@ from .layout import (
     E_EXTRA,
     E_PARAMETER,
     E_SLOT,
-    FAMILIES,
     J_PER_POTENTIAL,
     J_PER_SLOPE,
     J_SATURATION,
@@ -172,7 +171,7 @@ def transports(
     first = group[TRANSPORT]
     junctions_before = first - group[JUNCTION]
     slopes_before = junctions_before + junctions_before
-    for k in range(first, group[FAMILIES]):
+    for k in range(first, group[TRANSPORT + 1]):
         t = element[k, E_PARAMETER]
         pe = t + T_EMITTER_JUNCTION
         pc = t + T_COLLECTOR_JUNCTION
@@ -343,7 +342,7 @@ def extrapolate(
         add(bend, nb, -spare)
     junctions_before = group[TRANSPORT] - first
     first = group[TRANSPORT]
-    for k in range(first, group[FAMILIES]):
+    for k in range(first, group[TRANSPORT + 1]):
         t = element[k, E_PARAMETER]
         pe = t + T_EMITTER_JUNCTION
         pc = t + T_COLLECTOR_JUNCTION

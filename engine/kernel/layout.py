@@ -1,10 +1,11 @@
 """The arrays that the kernel works on. Everything is a C-contiguous int64 or float64 array, one row per lane.
 
-Unknowns come first in the vector x: free nets 0 .. n_nets-1, then branch currents up to n_free-1; known nets follow
-(n_free .. n_all-1), the last of them being the return 0V. A matrix slot equal to the number of stored entries is a
-dump: rows and columns of known nets are added there and never read. Arrays are passed to the inner functions one by
-one: a tuple of arrays costs more to hand over than the arithmetic of a small circuit. What is used as an index is
-unsigned (``Places``): a signed one is tested for counting from the end at every access.
+Unknowns come first in the vector x: free nets 0 .. n_nets-1, then branch currents up to n_free-1; known nets follow,
+the last of them being the return 0V, and then the states of guards, up to n_all-1. A matrix slot equal to the number of
+stored entries is a dump: rows and columns of known nets are added there and never read. Arrays are passed to the inner
+functions one by one: a tuple of arrays costs more to hand over than the arithmetic of a small circuit. What is used as
+an index is unsigned (``Places``): a signed one is tested for counting from the end at every access. While lanes are
+stepped, arrays are turned: a row holds one number of ``WIDTH`` lanes (:mod:`.vectors`).
 """
 
 from __future__ import annotations
@@ -21,13 +22,17 @@ Places = NDArray[np.uint32]
 
 # Families of primitives, in the order in which they stand in ``Topology.element``.
 CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT = 0, 1, 2, 3, 4
-FAMILIES = 5
+GUARD, CONTACT = 5, 6
+FAMILIES = 7
 
 # Columns of ``Topology.element``.
-E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; of a branch a, b and its own row
-E_EXTRA = 3  # of a transistor 1 npn, 0 pnp; of a branch its source counted from 1, 0 = none
+E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; of a branch a, b and its own row;
+#                          of a guard two unknowns and the row of its state; of a contact its guard, and 1 for make
+E_EXTRA = 3  # of a transistor 1 npn, 0 pnp; of a branch its source from 1, 0 = none; of a guard 1 = either sign
 E_PARAMETER = 4  # first of its parameters in a lane's row
-E_SLOT = 5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; transistor: 3 by 3
+E_SLOT = (
+    5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; transistor: 3 by 3; contact: parameter set
+)
 ELEMENT_WIDTH = 14
 
 ONE = np.uint32(1)
@@ -59,7 +64,11 @@ SLOPES = np.uint32(6)  # of the current from collector to emitter by v_BE and v_
 S_BASE_EMITTER, S_BASE_COLLECTOR = np.uint32(2), np.uint32(3)  # conductances
 S_EMITTER_CHARGE, S_COLLECTOR_CHARGE = np.uint32(4), np.uint32(5)  # capacitances
 
-PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH)
+G_ON, G_OFF, G_ON_DELAY, G_OFF_DELAY = np.uint32(0), np.uint32(1), np.uint32(2), np.uint32(3)
+CT_CLOSED, CT_OPEN, CT_DELAY = np.uint32(0), np.uint32(1), np.uint32(2)  # S, S, s behind the armature
+CT_BOUNCE, CT_TIMES = np.uint32(3), np.uint32(4)  # s, how often it opens again
+
+PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH, 4, 5)
 """How many parameters a primitive of each family has; a branch has henry and ohm."""
 
 # Kinds of signal terms; the index is that of an unknown, or of an element.
@@ -83,7 +92,7 @@ DONE, UNSOLVED, OVERWORKED, TRACE_FULL, STOPPED = 0, 1, 2, 3, 4
 class Topology(NamedTuple):
     """What is connected to what; the same for every lane."""
 
-    size: Ints  # n_nets, n_free, n_all, stored matrix entries
+    size: Ints  # n_nets, n_free, n_all, stored matrix entries, states of guards among n_all
     element: Places  # (elements, ELEMENT_WIDTH), family after family
     group: Places  # (FAMILIES + 1,) where each family begins
     pivot: Places  # (n_free + 1, 4) unknown, slot of its diagonal, first of its entries, first of its lefts

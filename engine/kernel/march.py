@@ -14,8 +14,12 @@ import numpy as np
 from .assemble import evaluate, extrapolate, linear_matrices
 from .compiled import compiled, leaf
 from .elimination import factor, substitute, substitute_two
+from .guards import move_guards, next_due, rest_guards, watch_guards
 from .layout import (
+    CONTACT,
     DONE,
+    FAMILIES,
+    GUARD,
     JUNCTION,
     OVERWORKED,
     SEEN,
@@ -45,6 +49,7 @@ FIRST = 1e-10  # s, the first step after it
 SMALLEST = 1e-16  # s
 SNAP = 0.2  # V, a step whose end was expected further away is taken again, shorter, unless it is shorter than
 SNAPPED = 1e-9  # s
+TINY = 1e-12  # s, moves that lie no further apart are one
 GLANCES = 12  # looks at the start until junctions, limited in each, have their charges at any sensible voltage
 
 # What a lane is doing: nothing; looking at its start; solving a jump, the stage of a step, its end.
@@ -57,8 +62,8 @@ NOT_ENDED = -1
 AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma h; h; the step before
 ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
 LIMITED, ERROR, GROWTH = 7, 8, 9
-NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE = 10, 11, 12, 13, 14, 15, 16, 17
-CLOCK = 18
+NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14, 15, 16, 17, 18
+CLOCK = 19
 
 
 class Work(NamedTuple):
@@ -110,6 +115,9 @@ class Work(NamedTuple):
     lane: Ints
     segment: Ints
     moving: Ints
+    told: Ints  # (WIDTH, guards) what each guard was told last; (WIDTH, guards + contacts) when it moves, and how often
+    due: Floats
+    left: Ints
     diagonal: Places  # (n_free,) slot of an unknown's diagonal
 
 
@@ -120,6 +128,8 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
     devices = junctions + 2 * transports
     signals = rows.signal.size - 1
+    guards = int(top.group[CONTACT]) - int(top.group[GUARD])
+    contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
     diagonal = np.zeros(free, dtype=np.uint32)
     diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
     arrays: list[Any] = [
@@ -137,6 +147,9 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
         zeros(WIDTH),
         *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
+        np.zeros((WIDTH, guards), dtype=np.int64),
+        zeros(WIDTH, guards + contacts),
+        np.zeros((WIDTH, guards + contacts), dtype=np.int64),
         diagonal,
     ]
     return Work(*arrays)
@@ -151,12 +164,12 @@ def set_sources(
     base: float,
     t: float,
     n_free: int,
+    known: int,
     w: int,
     out: Floats,
     x: Floats,
 ) -> None:
     """Set every source to its value at t seconds after the segment's start at base, and the known nets in x to it."""
-    known = x.shape[0] - n_free
     for k in range(out.shape[0]):
         v = source[lane, segment, k, 0] + source[lane, segment, k, 1] * t
         if sine[lane, k, 0] != 0.0:
@@ -229,6 +242,7 @@ def march_rows(
     element, group = top.element, top.group
     pivot, entry, update, left = top.pivot, top.entry, top.update, top.left
     nets, free = top.size[0], top.size[1]
+    known = top.size[2] - top.size[1] - top.size[4]
     relative, absolute, bounds = control.relative, control.absolute, control.bounds
     x, q, i = work.x, work.q, work.i
     x0, q0, i0 = work.x0, work.q0, work.i0
@@ -244,6 +258,8 @@ def march_rows(
     listed, listed_until = work.listed, work.listed_until
     phase, came, failed, lane_of, segment_of = work.phase, work.came, work.failed, work.lane, work.segment
     moving, diagonal = work.moving, work.diagonal
+    told, due, toggles = work.told, work.due, work.left
+    guarded = group[GUARD] < group[FAMILIES]
     value, time, status = results.value, results.time, results.status
     counts = results.work
     row = rows.row
@@ -287,6 +303,8 @@ def march_rows(
                     clock[MOST, w] = GLANCES
                     segment_of[w] = min(next_segment(program.length, lane, -1), program.length.shape[1] - 1)
                     set_switches(program.switched, program.switch, lane, segment_of[w], 0.0, w, p)
+                    if guarded:
+                        rest_guards(element, group, w, x, p, told, due, toggles)
                     phase[w] = GLANCE
                     dirty = True
         if running == 0 or cancel[0] != 0:
@@ -344,14 +362,16 @@ def march_rows(
                     counts[lane, 0] += 1
                     counts[lane, 2] += int(clock[ROUND, w])
                     came[w] = LEAPT
-                    clock[NOW, w] = min(JUMP, 0.5 * clock[SPAN, w])
+                    begin = clock[BASE, w] + clock[NOW, w]
+                    length = min(JUMP, 0.5 * (clock[SPAN, w] - clock[NOW, w]))
+                    clock[NOW, w] += length
+                    if guarded:
+                        watch_guards(element, group, begin, length, 0.0, w, x0, x, x, p, told, due)
                     watch(
-                        row, rows.level, rows.offset, window, clock[BASE, w], clock[NOW, w], 0.0, w, lane,
+                        row, rows.level, rows.offset, window, begin, length, 0.0, w, lane,
                         s0, s1, s1, value, time, status, listed, listed_until,
                     )  # fmt: skip
-                    keep_states(
-                        rows.keep_row, status, x, clock[BASE, w] + clock[NOW, w], w, lane, results.kept, results.kept_at
-                    )  # fmt: skip
+                    keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
                     clock[NEXT, w] = FIRST
                     clock[LAST, w] = 0.0
                 else:
@@ -373,15 +393,21 @@ def march_rows(
                         clock[NEXT, w] = max(0.1 * length, SNAPPED)
                         came[w] = AGAIN
                         continue
-                    came[w] = ARRIVED
                     begin = clock[BASE, w] + clock[NOW, w]
+                    if guarded and watch_guards(element, group, begin, length, GAMMA, w, x0, xg, x, p, told, due):
+                        # Something moves within this step: it is taken again, up to there.
+                        counts[lane, 1] += 1
+                        clock[NEXT, w] = length
+                        came[w] = AGAIN
+                        continue
+                    came[w] = ARRIVED
                     watch(
                         row, rows.level, rows.offset, window, begin, length, GAMMA, w, lane,
                         s0, sg, s1, value, time, status, listed, listed_until,
                     )  # fmt: skip
                     keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
                     clock[LAST, w] = length
-                    clock[NOW, w] = clock[SPAN, w] if length == clock[LEFT, w] else clock[NOW, w] + length
+                    clock[NOW, w] = clock[STOP, w] if length == clock[LEFT, w] else clock[NOW, w] + length
                     wanted = max(length * min(3.0, grow), JUMP)
                     asked = clock[ASKED, w]
                     clock[NEXT, w] = wanted if length == asked else max(wanted, min(asked, 3.0 * length))
@@ -431,7 +457,7 @@ def march_rows(
                 if moving[w] != 0:
                     set_switches(program.switched, program.switch, lane, segment, now, w, p)
                     dirty = True
-                set_sources(program.source, program.sine, lane, segment, base, now, free, w, source, x)
+                set_sources(program.source, program.sine, lane, segment, base, now, free, known, w, source, x)
                 continue
             how = NOT_ENDED
             if came[w] == ARRIVED or came[w] == LEAPT:
@@ -459,6 +485,10 @@ def march_rows(
                     clock[SPAN, w] = program.length[lane, segment]
                     leaps = program.restart[segment] == 1
                     moving[w] = 0
+            if guarded and how == NOT_ENDED and came[w] != LOOKED and next_due(due, w) - base <= clock[NOW, w]:
+                move_guards(element, group, next_due(due, w) + TINY, w, x0, x, p, told, due, toggles)
+                dirty = True
+                leaps = True
             if how == NOT_ENDED and not leaps:
                 counts[lane, 0] += 1
                 if counts[lane, 0] > bounds[0]:
@@ -473,16 +503,21 @@ def march_rows(
                 continue
             clock[ROUND, w] = 0.0
             if leaps:
-                moving[w] = set_switches(program.switched, program.switch, lane, segment, 0.0, w, p)
+                now = clock[NOW, w]
+                moving[w] = set_switches(program.switched, program.switch, lane, segment, now, w, p)
                 dirty = dirty or program.switched.size > 0
                 phase[w] = LEAP
                 clock[MOST, w] = bounds[2]
                 clock[AH, w] = JUMP
                 clock[CARRY, w] = 0.0
                 clock[REACH, w] = 0.0
-                now = JUMP
+                now += JUMP
             else:
-                rest = clock[SPAN, w] - clock[NOW, w]
+                stop = clock[SPAN, w]
+                if guarded:
+                    stop = min(stop, next_due(due, w) - base)
+                clock[STOP, w] = stop
+                rest = stop - clock[NOW, w]
                 length = min(clock[NEXT, w], clock[LONGEST, w])
                 clock[ASKED, w] = length
                 if length >= rest * 0.999999:
@@ -500,7 +535,7 @@ def march_rows(
                 if moving[w] != 0 or clock[NOW, w] == 0.0:
                     moving[w] = set_switches(program.switched, program.switch, lane, segment, now, w, p)
                     dirty = dirty or program.switched.size > 0
-            set_sources(program.source, program.sine, lane, segment, base, now, free, w, source, x)
+            set_sources(program.source, program.sine, lane, segment, base, now, free, known, w, source, x)
             came[w] = STARTS
         starting = same(came, STARTS)
         if any_of(starting):

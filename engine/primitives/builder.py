@@ -101,16 +101,47 @@ class Settable:
     follows: str | None = None
 
 
+@dataclass(frozen=True, slots=True)
+class Guard:
+    """What tells contacts to move: the voltage between two nets, or the current of a branch (its ``branch``), with its
+    upper and lower level, the delays until it moves, and the name under which its state (0 or 1) can be watched."""
+
+    state: str
+    nets: tuple[str, str]
+    branch: int | None
+    on: Law
+    off: Law
+    on_delay: Law
+    off_delay: Law
+    either_sign: bool = True
+
+
+@dataclass(frozen=True, slots=True)
+class Operated:
+    """A conductance that a guard moves: its place, which guard, and how it closes and opens."""
+
+    conductance: int
+    state: str
+    make: bool
+    closed: Law
+    opened: Law
+    delay: Law
+    bounce_for: float = 0.0
+    bounce_times: int = 0
+
+
 @dataclass
 class Bench:
     """What can be observed at a part, and the laws that hand formulas need.
 
-    ``currents`` by pin name; ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of
+    ``currents`` by pin name; ``armature``: the state of what a coil moves;
+    ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of
     a load at a voltage; of a transistor ``gain``, ``base_voltage`` at a collector current in A, and ``leakage`` in A;
     of a capacitor ``leak_conductance`` in S.
     """
 
     currents: dict[str, Signal] = field(default_factory=dict)
+    armature: str | None = None
     power: Signal | None = None
     on: tuple[str, str, float] | None = None
     draw: Callable[[Lanes, Floats], Floats] | None = None
@@ -134,6 +165,8 @@ class Builder:
         self.transports: list[tuple[str, str, str, int, Laws]] = []
         self.switches: dict[str, tuple[int, Callable[[str], Law]]] = {}
         self.settables: dict[str, Settable] = {}
+        self.guards: dict[str, Guard] = {}
+        self.operated: list[Operated] = []
         self.generators: dict[str, str] = {}
         self.injectors: list[str] = []
         self.batteries: dict[str, Law] = {}

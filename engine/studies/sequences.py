@@ -28,9 +28,9 @@ def starts_of(circuit: Circuit, sequence: str, program: Program) -> Floats | Non
         return None
     free, n_all = int(circuit.topology.size[1]), int(circuit.topology.size[2])
     start = np.zeros((program.length.shape[0], n_all))
-    known = n_all - free
+    known = n_all - free - int(circuit.topology.size[4])
     sine = program.sine[:, :known]
-    start[:, free:] = program.source[:, 0, :known, 0] + sine[:, :, 0] * np.sin(sine[:, :, 2])
+    start[:, free : free + known] = program.source[:, 0, :known, 0] + sine[:, :, 0] * np.sin(sine[:, :, 2])
     for net, text in texts.items():
         if circuit.index(net) < free:
             start[:, circuit.index(net)] = read(text, "V")
