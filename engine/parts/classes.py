@@ -201,6 +201,15 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
         "film 1 %": {**_FILM_RESISTOR, "tolerance": "1 %", "tempco": ("-50 ppm/K", "0 ppm/K", "50 ppm/K")},
         "film 5 %": {**_FILM_RESISTOR, "tolerance": "5 %", "tempco": ("-200 ppm/K", "0 ppm/K", "200 ppm/K")},
     },
+    "coil": {
+        "relay 12 V": {
+            "resistance": ("360 ohm", "400 ohm", "440 ohm", "20 C"),
+            "inductance": ("0.8 H", "1 H", "1.2 H"),
+            "pick_up": ("6 V", "7.8 V", "9 V", "20 C"),
+            "drop_out": ("1.2 V", "2.4 V", "4 V", "20 C"),
+            "armature_delay": ("3 ms", "5 ms", "8 ms"),
+        },
+    },
     "contact": {
         "gold contact": {"resistance": ("0.1 ohm", "0.1 ohm", "10 ohm"), "minimum_current": "10 uA"},
         "silver contact": {"resistance": ("0.1 ohm", "0.1 ohm", "10 ohm"), "minimum_current": "1 mA"},

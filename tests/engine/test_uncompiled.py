@@ -86,6 +86,13 @@ CASES: dict[str, Setup] = {
         events=[{"at": "0.5 ms", "event": "ramp", "part": "RT1", "to": "60 C", "for": "1 ms"}],
         ends=2e-3,
     ),
+    "coil and operated contact": setup(
+        two("coil", "K1", "supply", "0V", **{"class": "relay 12 V"}),
+        two("contact", "S1", "supply", "out", operated_by="K1", bounce={"for": "1 ms", "times": 1}),
+        resistor("R1", "out", "0V", "1k"),
+        supply="12 V",
+        ends=12e-3,
+    ),
     "switch": setup(
         resistor("R1", "supply", "n", "10k"),
         two("contact", "S1", "n", "0V"),
