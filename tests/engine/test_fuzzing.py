@@ -19,7 +19,6 @@ import pytest
 from hypothesis import HealthCheck, given, settings
 
 from stagebook.engine.circuit.circuit import build
-from stagebook.engine.circuit.inspection import inspect
 from stagebook.engine.design.differences import differences
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError, DesignError, EngineError
@@ -38,6 +37,7 @@ RUN_ONE_IN = int(os.environ.get("STAGEBOOK_FUZZ_RUNS", "1"))
 MOST_UNKNOWNS = 80
 """Larger circuits are built and not run here."""
 
+WHOLE = tuple(map(Design.load, GOOD))
 came: Counter[str] = Counter()
 
 
@@ -65,11 +65,9 @@ def far(source: bytes) -> str:
         return "are no documents"
     assert Design.load(design.canonical()).content == design.content
     assert Design.load(design.dump()) == design
-    for good in GOOD:
-        for change in differences(Design.load(good), design):
-            assert change.what
+    for change in differences(WHOLE[len(source) % len(WHOLE)], design):
+        assert change.what
     try:
-        inspect(design)
         circuit = build(design)
         asks_of(circuit)
     except CircuitError as refusal:
