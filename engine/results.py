@@ -120,9 +120,11 @@ class MarginSheet:
         return min(self.checks, key=lambda check: check.slack, default=None)
 
 
+_CHECK_FIELDS = frozenset(f.name for f in fields(CheckResult))
+
+
 def _check(entry: Mapping[str, Any]) -> CheckResult:
-    known = {f.name for f in fields(CheckResult)}
-    values = {k: v for k, v in entry.items() if k in known}
+    values = {k: v for k, v in entry.items() if k in _CHECK_FIELDS}
     values["verdict"] = Verdict(values["verdict"])
     if values.get("limits") is not None:
         low, high = values["limits"]

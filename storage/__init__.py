@@ -25,6 +25,7 @@ from .errors import (
 from .inspection import Inspection, inspect, verify
 from .names import checked_name
 from .place import default_path
+from .rescue import Rescued, rescue
 from .store import Store
 from .values import ADDABLE, DesignRow, Draft, MadePart, Note, NoteEntry, Revision, Sitting, Worst
 
@@ -46,6 +47,7 @@ __all__ = [
     "NothingToUndo",
     "PartMissing",
     "PartRefused",
+    "Rescued",
     "Revision",
     "RevisionMissing",
     "Sitting",
@@ -61,5 +63,6 @@ __all__ = [
     "checked_name",
     "default_path",
     "inspect",
+    "rescue",
     "verify",
 ]

@@ -23,15 +23,29 @@ def back_up(session: Session, store: Path, target: Path) -> None:
     Raises:
         StorageError: ``target`` cannot be written, is the store itself, or is a file of another kind.
     """
-    if target.exists():
-        if target.is_file() and target.samefile(store):
-            raise StorageError(f"{target} is the store itself: name another place for the copy.")
-        if not target.is_file() or not _is_store(target):
-            raise StorageError(f"{target} is there and is no copy of a store: name another place for the copy.")
+    check_target(store, target)
     connection = session.connection().connection.driver_connection
     if not isinstance(connection, sqlite3.Connection):
         raise TypeError("the store is not on SQLite's own driver")
     copy_database(connection, target)
+
+
+def check_target(store: Path, target: Path) -> None:
+    """Refuse a place for a copy where something other than an earlier copy lies.
+
+    Raises:
+        StorageError: ``target`` is the store itself, a file of another kind, or cannot be looked at.
+    """
+    try:
+        if not target.exists():
+            return
+        if target.is_file() and store.exists() and target.samefile(store):
+            raise StorageError(f"{target} is the store itself: name another place for the copy.")
+        if not target.is_file() or not _is_store(target):
+            raise StorageError(f"{target} is there and is no copy of a store: name another place for the copy.")
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or str(error)
+        raise StorageError(f"The copy {target} cannot be written ({reason}): name another place for it.") from error
 
 
 def _is_store(file: Path) -> bool:

@@ -69,7 +69,7 @@ def open_database(path: Path) -> Opened:
             try:
                 connection = _checked(path, path, "ro")
             except (sqlite3.Error, _Older):
-                copy = _copied(path)
+                copy = copied(path)
                 connection = _checked(Path(copy.name) / path.name, path, "rw")
                 connection.execute("PRAGMA query_only = ON")
         (schema,) = connection.execute("PRAGMA user_version").fetchone()
@@ -106,7 +106,10 @@ def _plain(error: sqlite3.Error, path: Path) -> StorageError:
     if code == sqlite3.SQLITE_NOTADB:
         return StoreUnreadable(f"{path} is not a Stagebook store: name another file with --store.")
     if code == sqlite3.SQLITE_CORRUPT:
-        return StoreUnreadable(f"{path} is damaged: set it and {path.name}-wal aside and put a backup in its place.")
+        return StoreUnreadable(
+            f"{path} is damaged: put a backup in the place of it and {path.name}-wal, or save what "
+            "can be read with `stagebook inspect --rescue FILE`."
+        )
     if code in (sqlite3.SQLITE_BUSY, sqlite3.SQLITE_LOCKED):
         return StoreBusy(f"Another program keeps {path} locked; nothing was written. Try again when it has ended.")
     if code == sqlite3.SQLITE_READONLY:
@@ -114,7 +117,9 @@ def _plain(error: sqlite3.Error, path: Path) -> StorageError:
     if code == sqlite3.SQLITE_FULL:
         return StoreFull(f"The disk of {path} is full; the last change was not saved. Make room and try again.")
     if code in (sqlite3.SQLITE_CANTOPEN, sqlite3.SQLITE_IOERR, sqlite3.SQLITE_PERM):
-        return StoreUnreadable(f"{path} cannot be read or written ({error}): check the disk and the permissions.")
+        return StoreUnreadable(
+            f"{path} cannot be read or written ({error}): see whether the disk is full or failing, and the permissions."
+        )
     return StoreUnreadable(
         f"{path} refused the request ({error}): run `stagebook inspect` to see whether it is damaged."
     )
@@ -186,7 +191,8 @@ def _create(connection: sqlite3.Connection, path: Path) -> None:
             transaction.exec_driver_sql(f"PRAGMA user_version = {SCHEMA}")
 
 
-def _copied(path: Path) -> TemporaryDirectory[str]:
+def copied(path: Path) -> TemporaryDirectory[str]:
+    """A folder of its own with a copy of the database and its log, for their owner only. Raises OSError."""
     folder = TemporaryDirectory(prefix="stagebook-")
     for file in (path, beside(path, "-wal")):
         if file.exists():

@@ -5,8 +5,10 @@ from __future__ import annotations
 import json
 import os
 from collections.abc import Iterator, Sequence
+from contextlib import suppress
 from dataclasses import dataclass
 from hashlib import sha256
+from itertools import pairwise
 from pathlib import Path
 
 from sqlalchemy import text
@@ -116,7 +118,7 @@ def _of_design(session: Session, design: StoredDesign) -> Iterator[str]:
             yield f"{where}: the hash does not fit its parent, number, time, document, note and margins."
         yield from _of_margins(session, row, where)
         yield from _of_entries(session, row, where)
-    yield from _of_draft(session, design, rows)
+    yield from draft_problems(session, design, rows)
 
 
 def _of_margins(session: Session, row: StoredRevision, where: str) -> Iterator[str]:
@@ -141,7 +143,8 @@ def _of_entries(session: Session, row: StoredRevision, where: str) -> Iterator[s
         before = entry.hash
 
 
-def _of_draft(session: Session, design: StoredDesign, rows: Sequence[StoredRevision]) -> Iterator[str]:
+def draft_problems(session: Session, design: StoredDesign, rows: Sequence[StoredRevision]) -> Iterator[str]:
+    """What is wrong with a design's draft and the tree of its edits, a line each; ``rows`` are its revisions."""
     draft = session.get(StoredDraft, design.id)
     if draft is None:
         yield f'"{design.name}": the draft is gone.'
@@ -191,3 +194,21 @@ def _advice(store: Store) -> Iterator[str]:
         yield store.why_read_only
     for copy in sorted(store.path.parent.glob(f"{store.path.name}-version-*")):
         yield f"{copy} is a copy from before a change of version: delete it when all is well."
+    with suppress(StorageError), store.reading() as session:
+        yield from _of_clock(session)
+
+
+def _of_clock(session: Session) -> Iterator[str]:
+    """Where the clock went back between two revisions, once for each design. Numbers and hashes do not depend on it."""
+    saved = select(StoredDesign.name, StoredRevision.number, StoredRevision.saved).where(
+        StoredDesign.id == StoredRevision.design_id
+    )
+    told = set()
+    rows = session.exec(saved.order_by(col(StoredDesign.name), col(StoredRevision.number))).all()
+    for (name, before, earlier), (other, number, later) in pairwise(rows):
+        if name == other and later < earlier and name not in told:
+            told.add(name)
+            yield (
+                f'"{name}" r{number} was saved on {later[:10]} by the clock, before r{before} on {earlier[:10]}: '
+                "the clock of this machine was or is wrong; set it. Nothing is lost by that."
+            )

@@ -15,7 +15,7 @@ from ..checks.trial import Edge, Trial
 from ..checks.view import View
 from ..circuit.circuit import Circuit
 from ..design.document import Design
-from ..errors import CircuitError
+from ..errors import CircuitError, QuantityError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Row
@@ -34,8 +34,11 @@ def asks_of(circuit: Circuit) -> tuple[Ask, ...]:
     view = View(circuit.design, circuit)
     found: dict[str, Ask] = {}
     for check in catalogue().values():
-        for ask in check.asks(check, view):
-            found.setdefault(ask.id, ask)
+        try:
+            for ask in check.asks(check, view):
+                found.setdefault(ask.id, ask)
+        except QuantityError as refusal:
+            raise CircuitError(f"requirement {check.slug}: {refusal}") from refusal
     return tuple(found.values())
 
 

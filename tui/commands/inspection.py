@@ -3,19 +3,26 @@
 from __future__ import annotations
 
 from argparse import ArgumentParser, Namespace
+from pathlib import Path
 
 from .printing import json_argument, print_json, print_words
+from .refusal import CommandRefused
 from .what import open_store, shelf_arguments
 
 
 def arguments(parser: ArgumentParser) -> None:
-    """Declare ``--json`` and ``--store``."""
+    """Declare ``--rescue``, ``--json`` and ``--store``."""
+    parser.add_argument(
+        "--rescue", metavar="FILE", help="write what can be read of a damaged store to a store of its own"
+    )
     json_argument(parser)
     shelf_arguments(parser)
 
 
 def run(asked: Namespace) -> int:
     """Check file, rows, triggers and every hash; status 1 if something does not match."""
+    if asked.rescue is not None:
+        return _rescue(asked)
     with open_store(asked) as store:
         # Imported here: no other command needs it.
         from ...storage import inspect
@@ -45,3 +52,33 @@ def run(asked: Namespace) -> int:
     if not found.problems:
         print_words("Everything is as it was saved: file, rows, triggers and every hash.")
     return 1 if found.problems else 0
+
+
+def _rescue(asked: Namespace) -> int:
+    """Write the rescued store; status 1 if not all came over as it was saved."""
+    from ...storage import StorageError, default_path, rescue
+
+    try:
+        found = rescue(default_path() if asked.store is None else Path(asked.store).expanduser(), Path(asked.rescue))
+    except StorageError as refusal:
+        raise CommandRefused(str(refusal)) from refusal
+    if asked.json:
+        print_json(
+            {
+                "store": str(found.path),
+                "designs": found.designs,
+                "revisions": found.revisions,
+                "edits": found.edits,
+                "lost": list(found.lost),
+            }
+        )
+        return 1 if found.lost else 0
+    print_words(
+        f"{found.path} holds what could be read; designs: {found.designs}, revisions: {found.revisions}, "
+        f"edits: {found.edits}"
+    )
+    for line in found.lost:
+        print_words(f"X {line}", hanging=2)
+    if not found.lost:
+        print_words("Everything is as it was saved.")
+    return 1 if found.lost else 0

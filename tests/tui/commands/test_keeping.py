@@ -46,3 +46,24 @@ def test_a_copy_goes_over_no_foreign_file(
     (tmp_path / "letter").write_text("dear reader")
     assert "name another place" in refused("backup", "letter")
     assert (tmp_path / "letter").read_text() == "dear reader"
+
+
+def test_a_damaged_store_is_rescued(
+    stagebook: Callable[..., Said], refused: Callable[..., str], tmp_path: Path
+) -> None:
+    stagebook("demo", "--only-store")
+    shelf = tmp_path / "shelf.sqlite3"
+    content = shelf.read_bytes()
+    shelf.write_bytes(b"noise" * 819 + b"!" + content[4096:])
+    refused("inspect")
+    status, out, err = stagebook("inspect", "--rescue", "saved.sqlite3")
+    assert (status, err) == (1, "")
+    assert "saved.sqlite3 holds what could be read; designs: 1, revisions: 5" in out
+    assert "X The list of tables in the file was damaged" in out
+    assert stagebook("inspect", "--store", "saved.sqlite3")[0] == 0
+    found = json.loads(stagebook("inspect", "--rescue", "saved.sqlite3", "--json")[1])
+    assert (found["designs"], found["revisions"], len(found["lost"])) == (1, 5, 1)
+    assert "name another place" in refused("inspect", "--rescue", "shelf.sqlite3")
+    assert "name a store" in refused("inspect", "--rescue", "other", "--store", "missing")
+    shelf.write_bytes(content)
+    assert stagebook("inspect", "--rescue", "saved.sqlite3")[:2][0] == 0
