@@ -41,6 +41,8 @@ def leakage_currents(part: Part, farads: float) -> tuple[float, float, float] | 
             f'part {part.ref}, voltage: missing, its leakage depends on it; write it like "voltage": "16 V"'
         )
     rated = voltage.typical
+    if rated <= 0.0:
+        raise CircuitError(f"part {part.ref}, voltage: a rating of {rated:g} V cannot be; write it like '16 V'")
     if specified is not None:
         limit = specified.max if specified.max is not None else specified.typical
         assert limit is not None

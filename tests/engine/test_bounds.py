@@ -15,11 +15,13 @@ from typing import Any
 import numpy as np
 import pytest
 
+from stagebook.engine.circuit.circuit import build
 from stagebook.engine.circuit.inspection import inspect
 from stagebook.engine.circuit.wave import Wave
 from stagebook.engine.circuit.work_inspection import MOST_COURSE_POINTS, MOST_MOVES, course_points
 from stagebook.engine.design.document import MOST_PARTS, Design
 from stagebook.engine.errors import EngineError
+from stagebook.engine.studies.evaluate import asks_of
 
 EXAMPLE: dict[str, Any] = json.loads(Path(__file__).with_name("example.json").read_text("utf-8"))
 AT_ONCE = 5.0
@@ -180,3 +182,18 @@ def test_no_name_or_text_holds_a_control_character(name: str) -> None:
     document["stages"][0]["parts"][1]["pins"]["a"] = name
     with pytest.raises(EngineError):
         Design.load(document)
+
+
+def test_a_value_that_nothing_could_be_divided_by_is_refused_or_taken_as_the_least() -> None:
+    """What the fuzzing of 20,000 documents found: divisions by a rating, a rise and a battery of nothing."""
+    capacitor = {"ref": "C1", "kind": "capacitor", "pins": {"plus": "base", "minus": "0V"}, "value": "10u"}
+    document = copy.deepcopy(EXAMPLE)
+    document["stages"][0]["parts"].append({**capacitor, "voltage": "0 V"})
+    with pytest.raises(EngineError, match="part C1, voltage: a rating of 0 V cannot be; write it like '16 V'"):
+        build(Design.load(document))
+    bell = json.loads((Path(__file__).parents[1] / "tui" / "commands" / "bell.json").read_text("utf-8"))
+    bell["sequences"]["alarm"]["events"][0]["rise"] = "0 s"
+    assert asks_of(build(Design.load(bell)))
+    bell["requirements"][0]["min"] = "3 H"
+    with pytest.raises(EngineError, match="requirement duration: '3 H' is an inductance where a time is asked for"):
+        asks_of(build(Design.load(bell)))

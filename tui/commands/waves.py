@@ -23,7 +23,12 @@ def arguments(parser: ArgumentParser) -> None:
     parser.add_argument("--nets", metavar="A,B", type=_nets, help="the nets, with commas between (default: all)")
     parser.add_argument("--at", metavar="1ms,2s", type=_times, help="just these times (default: every step of the run)")
     parser.add_argument("--rtol", metavar="X", type=_tolerance, default=1e-3, help="relative tolerance (default 1e-3)")
-    parser.add_argument("--csv", metavar="FILE", required=True, help="where to write: time and voltages in SI units")
+    parser.add_argument(
+        "--csv",
+        metavar="FILE",
+        required=True,
+        help="where to write: time and voltages in SI units; a ' stands before names that a spreadsheet would compute",
+    )
 
 
 def run(asked: Namespace) -> int:
