@@ -96,9 +96,9 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
     own = [act for made in row for act in _held(made.made.acts, holds)]
     acts = sorted(((max(0.0, start + at), event) for at, event in own), key=lambda act: act[0])
     over = max([start + sum(made.made.lasts for made in row), *(at for at, _ in acts)])
-    if all(made.made.active is None for made in row):
-        # What does not end by itself goes on until the supply is taken away.
-        acts = [*acts, (over + 0.5 * AFTER, {"event": "disconnect supply"})]
+    if not acts:
+        # What the supply itself starts goes on until it is taken away.
+        acts = [(over + 0.5 * AFTER, {"event": "disconnect supply"})]
     events += [{"at": write(at, "s", digits=6), **event} for at, event in acts]
     moments: Json = {BEGINS: write(start, "s", digits=6)}
     rests = [made.made.standby for made in row if made.made.standby is not None]

@@ -5,10 +5,10 @@ Loop condition B1 B2 >= 1 after Ebers (1952) and Moll et al. (1956), from memory
 
 from __future__ import annotations
 
+import numpy as np
 import pytest
 
 from stagebook.engine.design.document import Design
-from stagebook.engine.quantity import read
 
 from ..circuits import Setup
 from .made import PIEZO, at, begins, choice, load_goes, made, run, seconds, value
@@ -23,8 +23,7 @@ def test_it_trips_and_holds_after_the_contact_has_opened() -> None:
     assert seen.value(before)[0] == pytest.approx(0.0, abs=0.05)
     assert seen.value(after)[0] == pytest.approx(12.0 - 0.1, abs=0.2)
     assert seconds(seen, on) == pytest.approx(begins(design), abs=5e-3)
-    taken_away = read(design.sequences["alarm"].events[-1].at, "s")
-    assert seconds(seen, off) == pytest.approx(taken_away, abs=0.3)
+    assert np.isnan(seconds(seen, off))
 
 
 def test_it_holds_at_the_lowest_supply_in_the_cold_with_the_least_gain() -> None:
