@@ -129,7 +129,7 @@ def _check(entry: Mapping[str, Any]) -> CheckResult:
     if values.get("limits") is not None:
         low, high = values["limits"]
         values["limits"] = (low, high)
-    values["setting"] = tuple((str(ref), str(datum), int(side)) for ref, datum, side in values.get("setting", ()))
+    values["setting"] = tuple(map(tuple, values.get("setting", ())))
     if values.get("spread") is not None:
         spread = dict(values["spread"])
         low, high = spread["interval"]
