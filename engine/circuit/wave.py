@@ -57,14 +57,8 @@ class Wave:
     def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
         """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
         times, values = _stacked(self.times), _stacked(self.values)
-        # Times are mostly the same in all lanes: then one search serves them all.
-        rows = max(times.shape[0], middles.shape[0])
-        searched = zip(
-            np.broadcast_to(times, (rows, times.shape[1])),
-            np.broadcast_to(middles, (rows, middles.shape[1])),
-            strict=True,
-        )
-        place = np.stack([np.searchsorted(t, m, side="right") - 1 for t, m in searched])
+        place = np.sum(times[:, None, :] <= middles[:, :, None], axis=2) - 1
+        rows = place.shape[0]
         rows = max(rows, values.shape[0])
         place = np.broadcast_to(place, (rows, place.shape[1]))
         times, values = (np.broadcast_to(a, (rows, a.shape[1])) for a in (times, values))

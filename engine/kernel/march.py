@@ -40,7 +40,7 @@ from .layout import (
     zeros,
 )
 from .newton import advance, residual, solved_by, worst_unknown
-from .rows import close_rows, open_rows, read_signals, watch
+from .rows import close_rows, find_beaten, open_rows, read_signals, watch
 from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, surprise, take
 from .vectors import WIDTH, any_of, at, flag, put, same, where
 
@@ -109,6 +109,8 @@ class Work(NamedTuple):
     window: Floats  # (WIDTH, rows, 2)
     listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
     listed_until: Floats  # (WIDTH,) s, when to list them anew
+    best: Floats  # (rows, WIDTH) extremes so far, minima negative; infinite where they are listed as others are
+    beaten: Ints  # (rows + 1,) how many of them a step exceeds, and which
     phase: Ints  # (WIDTH,) and so the next
     came: Ints
     failed: Ints
@@ -146,6 +148,8 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         zeros(WIDTH, rows.row.shape[0], 2),
         np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
         zeros(WIDTH),
+        zeros(rows.row.shape[0], WIDTH),
+        np.zeros(rows.row.shape[0] + 1, dtype=np.int64),
         *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
         np.zeros((WIDTH, guards), dtype=np.int64),
         zeros(WIDTH, guards + contacts),
@@ -255,7 +259,7 @@ def march_rows(
     seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
     p, source, clock = work.p, work.source, work.clock
     s0, sg, s1, window = work.s0, work.sg, work.s1, work.window
-    listed, listed_until = work.listed, work.listed_until
+    listed, listed_until, best, beaten = work.listed, work.listed_until, work.best, work.beaten
     phase, came, failed, lane_of, segment_of = work.phase, work.came, work.failed, work.lane, work.segment
     moving, diagonal = work.moving, work.diagonal
     told, due, toggles = work.told, work.due, work.left
@@ -288,7 +292,7 @@ def march_rows(
                         x[k, w] = starts[lane, k]
                     for k in range(seen.shape[0]):
                         seen[k, w] = 0.0
-                    open_rows(row, rows.offset, w, lane, window, value, time, status)
+                    open_rows(row, rows.offset, w, lane, window, value, time, status, best)
                     listed_until[w] = -1.0
                     for k in range(counts.shape[1]):
                         counts[lane, k] = 0
@@ -338,8 +342,10 @@ def march_rows(
             put(clock, ERROR, size)
             put(clock, GROWTH, growth(size))
             read_signals(element, group, rows.term, rows.factor, rows.signal, p, xg, flow_g, sg)
-        if any_of(ends | (solved & same(phase, LEAP)) | same(phase, GLANCE)):
+        watched = ends | (solved & same(phase, LEAP))
+        if any_of(watched | same(phase, GLANCE)):
             read_signals(element, group, rows.term, rows.factor, rows.signal, p, x, flow, s1)
+            find_beaten(row, watched, sg, s1, best, beaten)
         put(clock, LIMITED, where(limited, 1.0, 0.0 * h))
         put(clock, ROUND, rounds)
         flag(solved, came)
@@ -369,7 +375,7 @@ def march_rows(
                         watch_guards(element, group, begin, length, 0.0, w, x0, x, x, p, told, due)
                     watch(
                         row, rows.level, rows.offset, window, begin, length, 0.0, w, lane,
-                        s0, s1, s1, value, time, status, listed, listed_until,
+                        s0, s1, s1, value, time, status, listed, listed_until, best, beaten,
                     )  # fmt: skip
                     keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
                     clock[NEXT, w] = FIRST
@@ -403,7 +409,7 @@ def march_rows(
                     came[w] = ARRIVED
                     watch(
                         row, rows.level, rows.offset, window, begin, length, GAMMA, w, lane,
-                        s0, sg, s1, value, time, status, listed, listed_until,
+                        s0, sg, s1, value, time, status, listed, listed_until, best, beaten,
                     )  # fmt: skip
                     keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
                     clock[LAST, w] = length

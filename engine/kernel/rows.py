@@ -41,7 +41,7 @@ from .layout import (
     Ints,
     Places,
 )
-from .vectors import at, put
+from .vectors import Flags, any_of, at, put
 
 GAMMA = 2.0 - math.sqrt(2.0)
 
@@ -134,13 +134,22 @@ def crossing(y0: float, yg: float, y1: float, level: float, rising: float, after
 
 @leaf
 def open_rows(
-    row: Ints, offset: Floats, w: int, lane: int, window: Floats, value: Floats, time: Floats, status: Ints
+    row: Ints,
+    offset: Floats,
+    w: int,
+    lane: int,
+    window: Floats,
+    value: Floats,
+    time: Floats,
+    status: Ints,
+    best: Floats,
 ) -> None:
     """Reset all rows of a lane and set the windows that do not wait for another row."""
     for r in range(row.shape[0]):
         value[lane, r] = 0.0
         time[lane, r] = 0.0
         status[lane, r] = NOT_YET
+        best[r, w] = math.inf
         window[w, r, 0] = offset[r, 0] if row[r, ROW_FROM] < 0 else math.inf
         window[w, r, 1] = offset[r, 1] if row[r, ROW_TO] < 0 else math.inf
 
@@ -209,14 +218,34 @@ def note(
 
 
 @leaf
-def list_open(window: Floats, finish: float, w: int, listed: Ints, listed_until: Floats) -> None:
-    """List the rows whose window has begun by ``finish``, their count first, and note when the next one begins."""
+def find_beaten(row: Ints, watched: Flags, stage: Floats, end: Floats, best: Floats, beaten: Ints) -> None:
+    """List the extremes over a window without end that a step of some watched lane exceeds, their count first."""
+    count = 0
+    for r in range(row.shape[0]):
+        kind = row[r, ROW_KIND]
+        if kind == R_MAXIMUM or kind == R_MINIMUM:
+            s = row[r, ROW_SIGNAL]
+            sign = 1.0 if kind == R_MAXIMUM else -1.0
+            most = at(best, r)
+            if any_of(watched & ((sign * at(stage, s) > most) | (sign * at(end, s) > most))):
+                count += 1
+                beaten[count] = r
+    beaten[0] = count
+
+
+@leaf
+def list_open(window: Floats, finish: float, w: int, best: Floats, listed: Ints, listed_until: Floats) -> None:
+    """List the rows whose window has begun by ``finish``, their count first, and note when the next one begins.
+
+    Extremes that :func:`find_beaten` watches are not listed.
+    """
     count = 0
     until = math.inf
     for r in range(window.shape[1]):
         if window[w, r, 0] <= finish:
-            count += 1
-            listed[w, count] = r
+            if best[r, w] == math.inf:
+                count += 1
+                listed[w, count] = r
         else:
             until = min(until, window[w, r, 0])
     listed[w, 0] = count
@@ -242,6 +271,8 @@ def watch(
     status: Ints,
     listed: Ints,
     listed_until: Floats,
+    best: Floats,
+    beaten: Ints,
 ) -> None:
     """Update every row of the lane in column w with a step from ``begin`` to ``begin + h``; ``gamma`` 0: no stage.
 
@@ -250,12 +281,16 @@ def watch(
     """
     finish = begin + h
     if finish >= listed_until[w]:
-        list_open(window, finish, w, listed, listed_until)
+        list_open(window, finish, w, best, listed, listed_until)
     for turn in range(2):
         news = False
-        for n in range(listed[w, 0] if turn == 0 else row.shape[0]):
-            r = listed[w, n + 1] if turn == 0 else n
+        open_ones = listed[w, 0]
+        for n in range(open_ones + beaten[0] if turn == 0 else row.shape[0]):
+            r = n
             if turn == 0:
+                r = listed[w, n + 1] if n < open_ones else beaten[n - open_ones + 1]
+                if n >= open_ones and best[r, w] == math.inf:
+                    continue
                 if window[w, r, 0] > finish:
                     continue
             else:
@@ -292,6 +327,11 @@ def watch(
                 kind, float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], y0, yg, y1, begin, h, gamma,
                 window[w, r, 0], window[w, r, 1], lane, r, value, time, status,
             )  # fmt: skip
+            extreme = kind == R_MAXIMUM or kind == R_MINIMUM
+            if extreme and row[r, ROW_TO] < 0 and status[lane, r] == OPEN:
+                if best[r, w] == math.inf:
+                    listed_until[w] = -1.0
+                best[r, w] = value[lane, r] if kind == R_MAXIMUM else -value[lane, r]
             if status[lane, r] == SEEN:
                 news = True
                 window[w, r, 0] = math.inf

@@ -21,7 +21,7 @@ from .lanes import Setting
 from .stability import Watched, watched
 from .trials import TrialRun, begin_of
 
-MOST_LANES = 4  # worst corners that are watched
+MOST_LANES = 2  # worst corners that are watched
 MOST_DIAGNOSED = 3  # lanes that are run once more to tell why they came to no end
 
 

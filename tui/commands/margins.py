@@ -8,8 +8,6 @@ from dataclasses import asdict
 from difflib import get_close_matches
 
 from ...engine.results import CheckResult, MarginSheet, Verdict
-from ..bench_text import check_name
-from ..origin_text import explanation_rows, origin_rows, together
 from ..shown import MARKS, percent, visible
 from .printing import json_argument, print_json, print_pairs, print_table, print_words
 from .refusal import CommandRefused
@@ -81,6 +79,8 @@ def _explain(asked: Namespace, subject: Subject) -> int:
     from ...engine.studies.evaluate import asks_of
     from ...engine.studies.explanation import explain
     from ...engine.studies.margins import study
+    from ..bench_text import check_name
+    from ..origin_text import explanation_rows, origin_rows, together
 
     name = _meant(asked.explain, [ask.id for ask in asks_of(build(subject.design))])
     with progress("margins: lane") as show:
