@@ -40,6 +40,8 @@ FAMILY = {
     layout.S_COLLECTOR_CURRENT: layout.TRANSPORT,
     layout.S_BASE_CURRENT: layout.TRANSPORT,
     layout.S_TRANSPORT_POWER: layout.TRANSPORT,
+    layout.S_DRAIN_CURRENT: layout.CHANNEL,
+    layout.S_CHANNEL_POWER: layout.CHANNEL,
 }
 ENDED = {
     layout.UNSOLVED: "could not be solved",

@@ -1,8 +1,8 @@
 """The units that values are written in: symbols, scale to SI, and the steps in which a value is shown.
 
 Unit names as code uses them: ``ohm F H V A W s Hz K m J lx dB C`` (coulomb), ``Ah`` (a charge shown in ampere hours),
-``A2s``, ``degC`` (temperature), ``%`` (a fraction, written in percent), ``""`` (a plain number), and any quotient
-of two of them such as ``V/s``, ``K/W``, ``ohm/m`` or ``1/K``.
+``A2s``, ``A/V2``, ``degC`` (temperature), ``%`` (a fraction, written in percent), ``""`` (a plain number), and any
+quotient of two of them such as ``V/s``, ``K/W``, ``ohm/m`` or ``1/K``.
 """
 
 from __future__ import annotations
@@ -147,6 +147,13 @@ _UNITS: Mapping[str, Unit] = {
             steps=_steps("m.k", "m"),
         ),
         _fixed("A2s", "a melting I2t", "2 A2s", "A²s", "A^2s"),
+        Unit(
+            "A/V2",
+            "a transconductance factor",
+            "0.5 A/V2",
+            symbols={"A/V2": _ONE, "A/V²": _ONE},
+            steps=_steps("um.", "A/V2"),
+        ),
         _fixed("dB", "a level", "88 dB", "dB(A)"),
         Unit("%", "a fraction", "5 %", fixed=_PARTS, steps=(("%", _PARTS["%"]),)),
         Unit("", "a plain number", "200", fixed={"": _ONE, **_PARTS}, steps=(("", _ONE),)),

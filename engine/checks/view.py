@@ -212,8 +212,8 @@ def _share(text: str) -> float:
 
 
 def polarity(part: Part) -> float:
-    """+1 for an npn kind, -1 for a pnp kind."""
-    return -1.0 if part.kind.endswith("pnp") else 1.0
+    """+1 for an npn or n-channel kind, -1 for a pnp or p-channel kind."""
+    return -1.0 if part.kind.endswith(("pnp", "mosfet_p")) else 1.0
 
 
 def forward_base_voltage(part: Part) -> Signal:

@@ -20,6 +20,7 @@ from ..primitives.builder import (
     Builder,
     Guard,
     Law,
+    channel_array,
     constant,
     junction_array,
     transport_array,
@@ -94,6 +95,7 @@ class Circuit:
             linear[:, k] = column
         junctions = [junction_array(laws, lanes) for *_, laws in made.junctions]
         transports = [transport_array(laws, lanes) for *_, laws in made.transports]
+        channels = [channel_array(laws, lanes) for *_, laws in made.channels]
         laws: list[Law] = []
         for guard in made.guards.values():
             laws += [guard.on, guard.off, guard.on_delay, guard.off_delay]
@@ -103,7 +105,7 @@ class Circuit:
         moved = layout.zeros(lanes.count, len(laws))
         for k, law in enumerate(laws):
             moved[:, k] = law(lanes)
-        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports, moved], axis=1))
+        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports, *channels, moved], axis=1))
 
 
 def build(design: Design, inject: Sequence[str] = ()) -> Circuit:
@@ -226,13 +228,14 @@ def _topology(
     branches: list[tuple[int, ...]] = [(nets[a], nets[b], n_nets + k) for k, (a, b, *_) in enumerate(builder.branches)]
     junctions: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.junctions]
     transports: list[tuple[int, ...]] = [(nets[c], nets[b], nets[e]) for c, b, e, *_ in builder.transports]
+    channels: list[tuple[int, ...]] = [(nets[d], nets[g], nets[s]) for d, g, s, *_ in builder.channels]
     states = {state: n for n, state in enumerate(builder.guards)}
     guards: list[tuple[int, ...]] = [
         (*_watched(guard, nets, n_nets, return_net), nets[state]) for state, guard in builder.guards.items()
     ]
     contacts: list[tuple[int, ...]] = [(states[each.state], int(each.make)) for each in builder.operated]
     pattern = Pattern(n_free)
-    for nets_of_one in (*conductances, *capacitances, *junctions, *transports):
+    for nets_of_one in (*conductances, *capacitances, *junctions, *transports, *channels):
         pattern.couple(nets_of_one)
     for a, b, row in branches:
         pattern.couple((a, row))
@@ -241,6 +244,7 @@ def _topology(
     slot = plan.slot
     extra = [0 if source is None else sources.index(source) + 1 for *_, source in builder.branches]
     polarity = [int(sign > 0) for *_, sign, _ in builder.transports]
+    channel_sign = [int(sign > 0) for *_, sign, _ in builder.channels]
 
     rows: list[list[int]] = []
     group = [0]
@@ -251,11 +255,12 @@ def _topology(
         branches,
         junctions,
         transports,
+        channels,
         guards,
         contacts,
     )
     either = [int(guard.either_sign) for guard in builder.guards.values()]
-    own = {layout.BRANCH: extra, layout.TRANSPORT: polarity, layout.GUARD: either}
+    own = {layout.BRANCH: extra, layout.TRANSPORT: polarity, layout.CHANNEL: channel_sign, layout.GUARD: either}
     for family, members in enumerate(families):
         for k, at in enumerate(members):
             if family == layout.BRANCH:

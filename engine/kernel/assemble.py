@@ -3,6 +3,7 @@ form of modified nodal analysis: Ho, Ruehli, Brennan, IEEE Trans. Circuits Syst.
 
 from __future__ import annotations
 
+from .channels import channels, extrapolate_channels
 from .compiled import leaf
 from .laws import bent, depletion, exponential, limited, side_currents
 from .layout import (
@@ -290,7 +291,9 @@ def evaluate(
         put(a, k, at(c, k) + ah * at(g, k))
     limits = ah != ah
     limits = junctions(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
-    return transports(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
+    limits = transports(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
+    channels(element, group, p, ah, x, i, a, seen, flow, slope)
+    return limits
 
 
 @leaf
@@ -384,6 +387,7 @@ def extrapolate(
         add(bend, nc, sign * (over - ibc))
         add(bend, nb, sign * (ibe + ibc))
         add(bend, ne, -sign * (over + ibe))
+    extrapolate_channels(element, group, p, ah, step, seen, slope, flow, di, bend)
     for k in range(i.shape[0]):
         add(i, k, at(di, k))
         add(q, k, at(dq, k))

@@ -21,14 +21,14 @@ Bytes = NDArray[np.uint8]
 Places = NDArray[np.uint32]
 
 # Families of primitives, in the order in which they stand in ``Topology.element``.
-CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT = 0, 1, 2, 3, 4
-GUARD, CONTACT = 5, 6
-FAMILIES = 7
+CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT, CHANNEL = 0, 1, 2, 3, 4, 5
+GUARD, CONTACT = 6, 7
+FAMILIES = 8
 
 # Columns of ``Topology.element``.
-E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; of a branch a, b and its own row;
-#                          of a guard two unknowns and the row of its state; of a contact its guard, and 1 for make
-E_EXTRA = 3  # of a transistor 1 npn, 0 pnp; of a branch its source from 1, 0 = none; of a guard 1 = either sign
+E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; drain, gate, source; of a branch a, b and
+#                          its row; of a guard two unknowns and the row of its state; of a contact its guard, 1 = make
+E_EXTRA = 3  # 1 npn or n-channel, 0 pnp or p-channel; of a branch its source from 1, 0 = none; guard: 1 = either sign
 E_PARAMETER = 4  # first of its parameters in a lane's row
 E_SLOT = (
     5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; transistor: 3 by 3; contact: parameter set
@@ -64,17 +64,24 @@ SLOPES = np.uint32(6)  # of the current from collector to emitter by v_BE and v_
 S_BASE_EMITTER, S_BASE_COLLECTOR = np.uint32(2), np.uint32(3)  # conductances
 S_EMITTER_CHARGE, S_COLLECTOR_CHARGE = np.uint32(4), np.uint32(5)  # capacitances
 
+# A channel's parameters; it keeps its conductances by v_GS and by v_GD.
+C_THRESHOLD, C_TRANSCONDUCTANCE = np.uint32(0), np.uint32(1)  # V, A/V2
+C_MODULATION = np.uint32(2)  # 1/V
+CHANNEL_WIDTH = 3
+CHANNEL_SLOPES = np.uint32(2)
+
 G_ON, G_OFF, G_ON_DELAY, G_OFF_DELAY = np.uint32(0), np.uint32(1), np.uint32(2), np.uint32(3)
 CT_CLOSED, CT_OPEN, CT_DELAY = np.uint32(0), np.uint32(1), np.uint32(2)  # S, S, s behind the armature
 CT_BOUNCE, CT_TIMES = np.uint32(3), np.uint32(4)  # s, how often it opens again
 
-PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH, 4, 5)
+PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH, CHANNEL_WIDTH, 4, 5)
 """How many parameters a primitive of each family has; a branch has henry and ohm."""
 
 # Kinds of signal terms; the index is that of an unknown, or of an element.
 S_UNKNOWN, S_CONDUCTANCE_CURRENT, S_CONDUCTANCE_POWER = 0, 1, 2
 S_COLLECTOR_CURRENT, S_BASE_CURRENT, S_TRANSPORT_POWER = 3, 4, 5
 S_JUNCTION_CURRENT, S_JUNCTION_POWER = 6, 7
+S_DRAIN_CURRENT, S_CHANNEL_POWER = 8, 9
 
 # Kinds of observation rows.
 R_CROSSING, R_LEVEL, R_MAXIMUM, R_MINIMUM, R_INTEGRAL, R_SLEW = 0, 1, 2, 3, 4, 5

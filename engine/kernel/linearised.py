@@ -8,7 +8,20 @@ import numpy as np
 
 from .assemble import evaluate, linear_matrices
 from .compiled import compiled
-from .layout import BRANCH, E_A, E_SLOT, JUNCTION, SLOPES, TRANSPORT, Floats, Places, Topology, zeros
+from .layout import (
+    BRANCH,
+    CHANNEL,
+    CHANNEL_SLOPES,
+    E_A,
+    E_SLOT,
+    JUNCTION,
+    SLOPES,
+    TRANSPORT,
+    Floats,
+    Places,
+    Topology,
+    zeros,
+)
 from .vectors import WIDTH, at, put, where
 
 LOOKS = 100  # until junctions, limited in each look, are taken at the voltages asked for
@@ -34,7 +47,9 @@ def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) 
     made = Linearised(*(zeros(count, n_all) for _ in range(2)), *(zeros(count, free, free) for _ in range(2)))
     rows, columns, slots = np.array(_places(top), dtype=np.int64).reshape(-1, 3).T
     i, q = zeros(n_all, WIDTH), zeros(n_all, WIDTH)
-    flow, slope = zeros(junctions + 2 * transports, WIDTH), zeros(2 * junctions + int(SLOPES) * transports, WIDTH)
+    channels = int(top.group[CHANNEL + 1]) - int(top.group[CHANNEL])
+    flow = zeros(junctions + 2 * transports + 2 * channels, WIDTH)
+    slope = zeros(2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels, WIDTH)
     c, g, a = (zeros(entries + 1, WIDTH) for _ in range(3))
     steps = np.repeat([[0.0], [1.0]], WIDTH, axis=1)
     limited = zeros(1, WIDTH)
@@ -88,13 +103,13 @@ def _look(
 def _places(top: Topology) -> list[tuple[int, int, int]]:
     """Row, column and slot of every entry between free unknowns that some element has."""
     found = {}
-    for family in range(TRANSPORT + 1):
+    for family in range(CHANNEL + 1):
         for element in top.element[top.group[family] : top.group[family + 1]].astype(int):
             if family == BRANCH:
                 a, b, own = element[E_A : E_A + 3]
                 pairs = [(own, a), (own, b), (own, own), (a, own), (b, own)]
             else:
-                nets = element[E_A : E_A + (3 if family == TRANSPORT else 2)]
+                nets = element[E_A : E_A + (3 if family in (TRANSPORT, CHANNEL) else 2)]
                 pairs = [(r, k) for r in nets for k in nets]
             for n, pair in enumerate(pairs):
                 if max(pair) < top.size[1]:

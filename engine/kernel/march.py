@@ -16,6 +16,8 @@ from .compiled import compiled, leaf
 from .elimination import factor, substitute, substitute_two
 from .guards import move_guards, next_due, rest_guards, watch_guards
 from .layout import (
+    CHANNEL,
+    CHANNEL_SLOPES,
     CONTACT,
     DONE,
     FAMILIES,
@@ -93,7 +95,7 @@ class Work(NamedTuple):
     a: Floats  # (entries + 1, WIDTH) matrix and then its factors, and the linear part of C and of G
     c: Floats
     g: Floats
-    seen: Floats  # (devices, WIDTH) junction voltages, then device currents
+    seen: Floats  # (devices, WIDTH) junction and channel voltages, then device currents
     seen0: Floats
     flow: Floats
     flow0: Floats
@@ -128,7 +130,8 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
     transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
     junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
-    devices = junctions + 2 * transports
+    channels = int(top.group[CHANNEL + 1]) - int(top.group[CHANNEL])
+    devices = junctions + 2 * transports + 2 * channels
     signals = rows.signal.size - 1
     guards = int(top.group[CONTACT]) - int(top.group[GUARD])
     contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
@@ -139,7 +142,7 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         *(zeros(free, WIDTH) for _ in range(8)),
         *(zeros(entries + 1, WIDTH) for _ in range(3)),
         *(zeros(devices, WIDTH) for _ in range(5)),
-        zeros(2 * junctions + int(SLOPES) * transports, WIDTH),
+        zeros(2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels, WIDTH),
         zeros(parameters, WIDTH),
         zeros(sources, WIDTH),
         zeros(sources, WIDTH),

@@ -29,9 +29,11 @@ from .layout import (
     ROW_SIGNAL,
     ROW_TO,
     S_BASE_CURRENT,
+    S_CHANNEL_POWER,
     S_COLLECTOR_CURRENT,
     S_CONDUCTANCE_CURRENT,
     S_CONDUCTANCE_POWER,
+    S_DRAIN_CURRENT,
     S_JUNCTION_CURRENT,
     S_JUNCTION_POWER,
     S_UNKNOWN,
@@ -76,6 +78,11 @@ def read_signals(
                 v = at(flow, k - group[JUNCTION])
                 if kind == S_JUNCTION_POWER:
                     v = v * (at(x, element[k, E_A]) - at(x, element[k, E_B]))
+            elif kind == S_DRAIN_CURRENT or kind == S_CHANNEL_POWER:
+                own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
+                v = at(flow, own)
+                if kind == S_CHANNEL_POWER:
+                    v = v * (at(x, element[k, E_A]) - at(x, element[k, E_C]))
             else:
                 own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
                 ic = at(flow, own)

@@ -73,6 +73,38 @@ _DARLINGTON: Figures = {
     "thermal_resistance": "62 K/W",
     "power": "2 W",
 }
+_SMALL_N_CHANNEL: Figures = {
+    "threshold": ("0.8 V", "1.6 V", "2.5 V", "250 uA"),
+    "resistance_on": ("0.8 ohm", "1.2 ohm", "2 ohm", "10 V at the gate"),
+    "c_iss": "40 pF",
+    "c_oss": "15 pF",
+    "c_rss": "5 pF",
+    "c_bias": "25 V",
+    "body_diode": "0.75 V",
+    "body_diode_current": "100 mA",
+    "i_dss": ("0.1 nA", "1 nA", "1 uA", "60 V, 25 C"),
+    "v_dss": "60 V",
+    "v_gss": "20 V",
+    "i_d_max": "300 mA",
+    "thermal_resistance": ("350 K/W", "350 K/W", "350 K/W", "junction to ambient"),
+    "power": ("0.35 W", "0.35 W", "0.35 W", "25 C"),
+}
+_P_CHANNEL_SWITCH: Figures = {
+    **_SMALL_N_CHANNEL,
+    "threshold": ("2 V", "3 V", "4 V", "250 uA"),
+    "resistance_on": ("0.06 ohm", "0.08 ohm", "0.1 ohm", "10 V at the gate"),
+    "gate_charge": ("20 nC", "20 nC", "30 nC", "10 V, 48 V"),
+    "gate_drain_charge": "8 nC",
+    "gate_charge_drain": "48 V",
+    "c_iss": "900 pF",
+    "c_oss": "300 pF",
+    "c_rss": "100 pF",
+    "body_diode": "0.8 V",
+    "body_diode_current": "1 A",
+    "i_d_max": "2 A",
+    "thermal_resistance": ("125 K/W", "125 K/W", "125 K/W", "junction to ambient"),
+    "power": ("1 W", "1 W", "1 W", "25 C"),
+}
 _CLAMP: Figures = {
     "standoff_current": "5 uA",
     "pulse_power": "600 W",
@@ -103,6 +135,8 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
     },
     "darlington_npn": {"power Darlington": _DARLINGTON},
     "darlington_pnp": {"power Darlington": _DARLINGTON},
+    "mosfet_n": {"small n-channel": _SMALL_N_CHANNEL},
+    "mosfet_p": {"p-channel switch": _P_CHANNEL_SWITCH},
     "diode": {
         "signal diode": _SIGNAL_DIODE,
         "1 A rectifier": {

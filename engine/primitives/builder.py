@@ -39,6 +39,11 @@ _TRANSPORT_PLACES = {
     "per_early_voltage": layout.T_EARLY,
     "collector_junction": layout.T_COLLECTOR,
 }
+_CHANNEL_PLACES = {
+    "threshold": layout.C_THRESHOLD,
+    "transconductance": layout.C_TRANSCONDUCTANCE,
+    "modulation": layout.C_MODULATION,
+}
 
 
 def constant(value: float) -> Law:
@@ -61,12 +66,13 @@ class Handle:
 
     @property
     def current(self) -> Signal:
-        """Current from the first net to the second; collector current of a transistor."""
+        """Current from the first net to the second; collector or drain current of a transistor."""
         kinds = {
             "conductance": layout.S_CONDUCTANCE_CURRENT,
             "branch": BRANCH_CURRENT,
             "junction": layout.S_JUNCTION_CURRENT,
             "transport": layout.S_COLLECTOR_CURRENT,
+            "channel": layout.S_DRAIN_CURRENT,
         }
         return Signal(((kinds[self.family], self.index, 1.0),))
 
@@ -82,6 +88,7 @@ class Handle:
             "conductance": layout.S_CONDUCTANCE_POWER,
             "junction": layout.S_JUNCTION_POWER,
             "transport": layout.S_TRANSPORT_POWER,
+            "channel": layout.S_CHANNEL_POWER,
         }
         return Signal(((kinds[self.family], self.index, 1.0),))
 
@@ -163,6 +170,7 @@ class Builder:
         self.branches: list[tuple[str, str, Law, Law, str | None]] = []
         self.junctions: list[tuple[str, str, Laws]] = []
         self.transports: list[tuple[str, str, str, int, Laws]] = []
+        self.channels: list[tuple[str, str, str, int, Laws]] = []
         self.switches: dict[str, tuple[int, Callable[[str], Law]]] = {}
         self.settables: dict[str, Settable] = {}
         self.guards: dict[str, Guard] = {}
@@ -230,6 +238,12 @@ class Builder:
         self.transports.append((*nets, polarity, laws))
         return Handle("transport", len(self.transports) - 1, nets)
 
+    def channel(self, drain: str, gate: str, source: str, polarity: int, laws: Laws) -> Handle:
+        """A field-effect channel; polarity +1 n, -1 p; ``laws`` by the names of ``_CHANNEL_PLACES``."""
+        nets = self.net(drain), self.net(gate), self.net(source)
+        self.channels.append((*nets, polarity, laws))
+        return Handle("channel", len(self.channels) - 1, nets)
+
     def switch(self, ref: str, a: str, b: str, start: Law, reading: Callable[[str], Law]) -> Handle:
         """A conductance that events set; ``reading`` turns the text of an event (``closed``, ``open`` or a value)
         into a law in siemens."""
@@ -288,3 +302,12 @@ def transport_array(laws: Laws, lanes: Lanes) -> Floats:
     array[:, layout.T_EMITTER_JUNCTION : collector] = junction_array(laws, lanes, "emitter_")
     array[:, collector:] = junction_array(laws, lanes, "collector_")
     return np.ascontiguousarray(array)
+
+
+def channel_array(laws: Laws, lanes: Lanes) -> Floats:
+    """Parameters of one field-effect channel, (lanes, CHANNEL_WIDTH)."""
+    array = layout.zeros(lanes.count, layout.CHANNEL_WIDTH)
+    for name, place in _CHANNEL_PLACES.items():
+        law = laws.get(name)
+        array[:, place] = 0.0 if law is None else law(lanes)
+    return array

@@ -7,7 +7,12 @@ from ..kernel import layout
 from ..primitives.signals import START, Anchor, Row, Signal, voltage
 from ..quantity import write_plain
 
-_POWERS = (layout.S_CONDUCTANCE_POWER, layout.S_JUNCTION_POWER, layout.S_TRANSPORT_POWER)
+_POWERS = (
+    layout.S_CONDUCTANCE_POWER,
+    layout.S_JUNCTION_POWER,
+    layout.S_TRANSPORT_POWER,
+    layout.S_CHANNEL_POWER,
+)
 _TAKEN = {
     layout.R_MAXIMUM: "largest",
     layout.R_MINIMUM: "smallest",

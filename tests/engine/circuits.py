@@ -52,6 +52,10 @@ def transistor(ref: str, collector: str, base: str, emitter: str, kind: str = "n
     }
 
 
+def mosfet(ref: str, drain: str, gate: str, source: str, kind: str = "mosfet_n", **fields: object) -> Json:
+    return {"ref": ref, "kind": kind, "pins": {"drain": drain, "gate": gate, "source": source}, **fields}
+
+
 def steps(ref: str, plus: str, minus: str, *points: tuple[float, float]) -> Json:
     """A generator that joins (seconds, volts) by straight lines."""
     return two("generator", ref, plus, minus, waveform={"steps": [[repr(t), repr(v)] for t, v in points]})

@@ -12,7 +12,7 @@ from typing import Any
 import numpy as np
 import pytest
 
-from .circuits import Setup, capacitor, resistor, setup, sine, steps, transistor, two
+from .circuits import Setup, capacitor, mosfet, resistor, setup, sine, steps, transistor, two
 from .run_documents import results
 
 SCRIPT = Path(__file__).with_name("run_documents.py")
@@ -69,6 +69,16 @@ CASES: dict[str, Setup] = {
         transistor("Q2", "d", "c", "supply", "pnp", **{"class": "small pnp"}),
         resistor("R3", "d", "0V", "1k"),
         supply="5 V",
+        ends=200e-6,
+    ),
+    "channel": setup(
+        steps("G1", "in", "0V", (0.0, 0.0), (1e-6, 6.0), (100e-6, 6.0), (101e-6, 0.0)),
+        resistor("R1", "in", "g", "10k"),
+        mosfet("Q1", "d", "g", "0V", **{"class": "small n-channel"}),
+        resistor("R2", "supply", "d", "1k"),
+        mosfet("Q2", "e", "d", "supply", "mosfet_p", **{"class": "p-channel switch"}),
+        resistor("R3", "e", "0V", "1k"),
+        supply="9 V",
         ends=200e-6,
     ),
     "pair in one case": setup(
