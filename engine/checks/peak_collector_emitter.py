@@ -1,4 +1,4 @@
-"""Check 8: does the collector-emitter voltage stay below its rating?"""
+"""Check 8: does the collector-emitter, or drain-source, voltage stay below its rating?"""
 
 from __future__ import annotations
 
@@ -14,10 +14,12 @@ from .reverse_base_emitter import BIPOLAR
 from .seen import Seen
 from .view import View, polarity
 
+MOSFETS = ("mosfet_n", "mosfet_p")
+
 
 def asks(check: Check, view: View) -> Iterator[Ask]:
-    """One ask for every bipolar transistor, over all sequences."""
-    for stage, part in view.parts_of(*BIPOLAR):
+    """One ask for every transistor, over all sequences."""
+    for stage, part in view.parts_of(*BIPOLAR, *MOSFETS):
         yield _ask(check, view, stage, part)
 
 
@@ -25,11 +27,12 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     required = view.required(check.slug, check.required, requirement)
     sequences = tuple(view.design.sequences)
-    rating = view.datum(part, "v_ceo", "V")
+    rated, plus, minus = ("v_dss", "drain", "source") if part.kind in MOSFETS else ("v_ceo", "collector", "emitter")
+    rating = view.datum(part, rated, "V")
     if rating is None:
-        return unknown(check, stage.name, part.ref, sequences[0], required, f"v_ceo of {part.ref}")
+        return unknown(check, stage.name, part.ref, sequences[0], required, f"{rated} of {part.ref}")
     allowed = view.derating("v_ceo", requirement) * rating.low
-    across = maximum(voltage(part.pins["collector"], part.pins["emitter"]).scaled(polarity(part)))
+    across = maximum(voltage(part.pins[plus], part.pins[minus]).scaled(polarity(part)))
 
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(across, sequence) for sequence in sequences], axis=0)

@@ -12,6 +12,7 @@ from ..primitives.columns import SUPPLY
 from ..primitives.signals import integral, maximum, voltage
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
+from .peak_collector_emitter import MOSFETS
 from .reverse_base_emitter import BIPOLAR
 from .seen import Seen
 from .view import View
@@ -21,6 +22,7 @@ LONGEST = 10e-3  # s up to which the energy that a clamp bears grows with the ro
 
 _RATINGS: tuple[tuple[tuple[str, ...], tuple[str, ...], str, str], ...] = (
     (BIPOLAR, ("collector", "emitter"), "v_ceo", "v_ceo"),
+    (MOSFETS, ("drain", "source"), "v_dss", "v_ceo"),
     (("diode", "schottky"), ("cathode",), "v_rrm", "v_rrm"),
     (("capacitor",), ("a", "b"), "voltage", "capacitor_film"),
     (("capacitor",), ("plus",), "voltage", "capacitor_electrolytic"),

@@ -9,7 +9,7 @@ import pytest
 from stagebook.engine.design.document import Design
 from stagebook.engine.results import Verdict
 
-from ..circuits import Json, resistor, transistor, two
+from ..circuits import Json, mosfet, resistor, transistor, two
 from .sheets import CONNECT, design, exact, margin
 
 DATA: Json = {"gain": "200", "v_be": "0.64 V", "v_ceo": "45 V"}
@@ -65,3 +65,13 @@ def test_without_the_rating_it_is_unknown() -> None:
     data = {key: text for key, text in DATA.items() if key != "v_ceo"}
     found = margin(switch("24 V", data), "peak_collector_emitter", "Q1")
     assert (found.margin, found.verdict, found.reason) == (None, Verdict.UNKNOWN, "missing: v_ceo of Q1")
+
+
+@pytest.mark.parametrize("kind", ["mosfet_n", "mosfet_p"])
+def test_of_a_field_effect_transistor_the_drain_counts(kind: str) -> None:
+    rail, common = ("supply", "0V") if kind == "mosfet_n" else ("0V", "supply")
+    data = {"threshold": "2 V", "resistance_on": "1 ohm", "v_dss": "60 V"}
+    parts = [exact(resistor("R1", "gate", common, "10k")), exact(resistor("R2", rail, "out", "10k"))]
+    switch = design(*parts, mosfet("Q1", "out", "gate", common, kind, data=data), supply="24 V", ambient="25 C")
+    found = margin(switch, "peak_collector_emitter", "Q1")
+    assert (found.margin, found.capability) == (pytest.approx(1.0 - 24.0 / 48.0, abs=1e-3), pytest.approx(48.0))
