@@ -46,11 +46,11 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
     driving = base_drive(view, stage, part, at)
 
     def judge(seen: Seen) -> Judged:
-        gain = np.asarray(bench.gain(seen.lanes)) if bench.gain is not None else np.ones(seen.lanes.count)
         fallen = np.abs(seen.value(drop, sequence))
         volts = seen.value(across, sequence) + np.maximum(0.0, fallen - SATURATED)
         assert driven.draw is not None
         wanted = driven.draw(seen.lanes, volts)
+        gain = np.ones(seen.lanes.count) if bench.gain_at is None else bench.gain_at(seen.lanes, wanted)
         never = ~seen.seen(base, sequence)
         hand = None
         if driving is not None:

@@ -58,7 +58,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         else:
             volts = seen.value(across, sequence) + np.maximum(0.0, np.abs(seen.value(drop, sequence)) - SATURATED)
             wanted = inrush(seen.lanes, volts)
-        gain = np.asarray(bench.gain(seen.lanes)) if bench.gain is not None else np.ones(seen.lanes.count)
+        gain = np.ones(seen.lanes.count) if bench.gain_at is None else bench.gain_at(seen.lanes, wanted)
         carried = np.minimum(allowed, gain * np.abs(seen.value(base, sequence)))
         never = ~seen.seen(base, sequence)
         hand = None

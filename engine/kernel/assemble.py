@@ -26,6 +26,7 @@ from .layout import (
     S_BASE_EMITTER,
     S_COLLECTOR_CHARGE,
     S_EMITTER_CHARGE,
+    S_FORWARD,
     SLOPES,
     T_COLLECTOR,
     T_COLLECTOR_JUNCTION,
@@ -33,11 +34,12 @@ from .layout import (
     T_EMITTER_JUNCTION,
     T_GAIN_FORWARD,
     T_GAIN_REVERSE,
+    T_PER_KNEE,
     TRANSPORT,
     Floats,
     Places,
 )
-from .vectors import Flags, Numbers, add, at, put, where
+from .vectors import Flags, Numbers, add, any_of, at, put, root, where
 
 
 @leaf
@@ -168,7 +170,11 @@ def transports(
     limits: Flags,
 ) -> Flags:
     """Add all bipolar transistors in transport form (Ebers, Moll, Proc. IRE 42 (1954) 1761, as rewritten by Gummel
-    and Poon, Bell Syst. Tech. J. 49 (1970) 827, with the Early effect as a factor 1 - v_BC / V_A)."""
+    and Poon, Bell Syst. Tech. J. 49 (1970) 827, with the Early effect as a factor 1 - v_BC / V_A).
+
+    Where a knee current is given the current between collector and emitter is divided by their base charge at high
+    injection, q = 1/2 + sqrt(1/4 + i_F/i_K): then i_C = i_F/q, or i_F = i_C (1 + i_C/i_K).
+    """
     first = group[TRANSPORT]
     junctions_before = first - group[JUNCTION]
     slopes_before = junctions_before + junctions_before
@@ -221,6 +227,16 @@ def transports(
         over = net * early
         over_e = gf * early
         over_c = -gr * early - net * at(p, t + T_EARLY)
+        stored = over_e
+        per_knee = at(p, t + T_PER_KNEE)
+        bends = per_knee != 0.0
+        if any_of(bends):
+            twice = root(1.0 + 4.0 * per_knee * forward)
+            per_charge = 2.0 / (1.0 + twice)
+            over = over * per_charge
+            over_c = over_c * per_charge
+            stored = where(bends, gf, over_e)
+            over_e = over_e * per_charge - over * per_charge * per_knee * gf / twice
 
         d = slopes_before + SLOPES * (k - first)
         put(slope, d, over_e)
@@ -229,6 +245,7 @@ def transports(
         put(slope, d + S_BASE_COLLECTOR, gbc)
         put(slope, d + S_EMITTER_CHARGE, ce)
         put(slope, d + S_COLLECTOR_CHARGE, cc)
+        put(slope, d + S_FORWARD, stored)
         put(flow, own, sign * (over - ibc))
         put(flow, own + ONE, sign * (ibe + ibc))
 
@@ -382,7 +399,9 @@ def extrapolate(
         more_c, away = bent(at(seen, own + ONE), vc, p, pc)
         far = far | away
         over = ah * (over_e * more_e + over_c * more_c)
-        ibe = (ah * gbe + at(p, pe + J_TRANSIT) * over_e) * more_e + 0.5 * ce * at(p, pe + J_PER_POTENTIAL) * ve * ve
+        ibe = (ah * gbe + at(p, pe + J_TRANSIT) * at(slope, d + S_FORWARD)) * more_e + 0.5 * ce * at(
+            p, pe + J_PER_POTENTIAL
+        ) * ve * ve
         ibc = (ah * gbc - at(p, pc + J_TRANSIT) * over_c) * more_c + 0.5 * cc * at(p, pc + J_PER_POTENTIAL) * vc * vc
         add(bend, nc, sign * (over - ibc))
         add(bend, nb, sign * (ibe + ibc))

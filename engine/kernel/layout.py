@@ -55,14 +55,16 @@ JUNCTION_WIDTH = 17
 # A transistor's parameters: its own, then the emitter and the collector junction laid out as above.
 T_GAIN_FORWARD, T_GAIN_REVERSE = np.uint32(0), np.uint32(1)
 T_EARLY, T_COLLECTOR = np.uint32(2), np.uint32(3)
-T_EMITTER_JUNCTION = np.uint32(4)
-T_COLLECTOR_JUNCTION = np.uint32(4 + JUNCTION_WIDTH)
-TRANSPORT_WIDTH = 4 + 2 * JUNCTION_WIDTH
+T_PER_KNEE = np.uint32(4)  # 1/A, 0 = no fall-off at high currents
+T_EMITTER_JUNCTION = np.uint32(5)
+T_COLLECTOR_JUNCTION = np.uint32(5 + JUNCTION_WIDTH)
+TRANSPORT_WIDTH = 5 + 2 * JUNCTION_WIDTH
 
 # What is kept of a transistor's slopes at an iterate; of a junction its conductance and its capacitance.
-SLOPES = np.uint32(6)  # of the current from collector to emitter by v_BE and v_BC first
+SLOPES = np.uint32(7)  # of the current from collector to emitter by v_BE and v_BC first
 S_BASE_EMITTER, S_BASE_COLLECTOR = np.uint32(2), np.uint32(3)  # conductances
 S_EMITTER_CHARGE, S_COLLECTOR_CHARGE = np.uint32(4), np.uint32(5)  # capacitances
+S_FORWARD = np.uint32(6)  # of the forward current, which is stored
 
 # A channel's parameters; it keeps its conductances by v_GS and by v_GD.
 C_THRESHOLD, C_TRANSCONDUCTANCE = np.uint32(0), np.uint32(1)  # V, A/V2

@@ -5,14 +5,12 @@ The charge state stands still during a run.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from itertools import pairwise
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 
-from ..design.datum import Datum, number
-from ..errors import CircuitError, QuantityError
+from ..errors import CircuitError
+from .curve import Curve, points_of
 from .figures import Figure, class_figures, figure, typical
 from .kind import TEXT, Entry, Kind
 from .physics import REFERENCE
@@ -24,7 +22,6 @@ if TYPE_CHECKING:
     from ..primitives.builder import Builder
     from ..primitives.columns import Lanes
 
-Curve = Sequence[tuple[float, float]]
 COLD = -20.0  # deg C at which the resistance in the cold is given where no temperature is written
 CURVES: dict[str, Curve] = {  # open-circuit volts over charge state, from memory
     "9 V block": ((0.0, 6.0), (0.1, 7.0), (0.5, 8.1), (0.9, 9.0), (1.0, 9.5)),
@@ -33,28 +30,9 @@ CURVES: dict[str, Curve] = {  # open-circuit volts over charge state, from memor
 }
 
 
-def _points(part: Part, key: str, units: tuple[str, str], example: str) -> Curve | None:
-    """A list of pairs as a part gives it, rising in its first number; None where it gives none."""
-    entry = part.entry(key)
-    if not isinstance(entry, tuple):
-        return None
-    rows: list[tuple[Any, Any]] = []
-    for row in entry:
-        if isinstance(row, str | Datum | bool | int | float) or len(row) != 2:
-            raise CircuitError(f'part {part.ref}, {key}: each point has two numbers; write "{key}": {example}')
-        rows.append((row[0], row[1]))
-    try:
-        points = sorted((number(x, units[0]), number(y, units[1])) for x, y in rows)
-    except QuantityError as refusal:
-        raise CircuitError(f"part {part.ref}, {key}: {refusal}") from refusal
-    if any(a[0] == b[0] for a, b in pairwise(points)):
-        raise CircuitError(f'part {part.ref}, {key}: two points have one place; write "{key}": {example}')
-    return points
-
-
 def voltage_curve(part: Part) -> Curve:
     """Open-circuit volts over charge state (0 .. 1), as points to be joined by straight lines."""
-    curve = _points(part, "voltage", ("", "V"), '[["0 %", "6 V"], ["100 %", "9.5 V"]]')
+    curve = points_of(part, "voltage", ("", "V"), '[["0 %", "6 V"], ["100 %", "9.5 V"]]')
     if curve is not None:
         return curve
     plain = figure(part, "voltage", "V")
@@ -71,7 +49,7 @@ def voltage_curve(part: Part) -> Curve:
 
 def _resistance(part: Part) -> Figure | None:
     """Resistance of a fresh battery in ohm at 25 C: as written, from two loads, or of its class."""
-    loads = _points(part, "loads", ("A", "V"), '[["10 mA", "9.1 V"], ["100 mA", "8.8 V"]]')
+    loads = points_of(part, "loads", ("A", "V"), '[["10 mA", "9.1 V"], ["100 mA", "8.8 V"]]')
     if loads is None or part.entry("resistance") is not None:
         return figure(part, "resistance", "ohm")
     if len(loads) != 2:

@@ -38,6 +38,14 @@ def _note_laws(bench: Bench, first: Laws, second: Laws) -> None:
         assert two.gain is not None
         return two.base_voltage(lanes, current) + one.base_voltage(lanes, current / float(np.mean(two.gain(lanes))))
 
+    def gain_at(lanes: Lanes, current: Floats) -> Floats:
+        assert one.gain_at is not None
+        assert two.gain_at is not None
+        b2 = two.gain_at(lanes, current)
+        b1 = one.gain_at(lanes, current / b2)
+        return np.asarray(b1 + b2 + b1 * b2)
+
+    bench.gain_at = gain_at
     bench.gain, bench.base_voltage, bench.leakage = gain, base_voltage, one.leakage
 
 
@@ -45,10 +53,10 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
     def expand(part: Part, build: Builder) -> None:
         collector, base, emitter = (part.pins[pin] for pin in PINS)
         inner = f"{part.ref}/inner"
-        first, first_power = add_transistor(part, build, f"{part.ref}/1", collector, base, inner, polarity, 0.5)
-        second, second_power = add_transistor(part, build, f"{part.ref}/2", collector, inner, emitter, polarity, 0.5)
-        power = first_power + second_power
-        leak = first.base_current
+        first = add_transistor(part, build, f"{part.ref}/1", collector, base, inner, polarity, 0.5)
+        second = add_transistor(part, build, f"{part.ref}/2", collector, inner, emitter, polarity, 0.5)
+        power = first.power + second.power
+        leak = first.base
         for key, net, end in (("first_base_resistor", base, inner), ("second_base_resistor", inner, emitter)):
             found = figure(part, key, "ohm")
             if found is not None and found.typical > 0.0:
@@ -58,11 +66,11 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
                 if net == base:
                     leak += handle.current
         bench = build.bench(part.ref)
-        bench.currents["collector"] = first.current + second.current
+        bench.currents["collector"] = first.collector + second.collector
         bench.currents["base"] = leak
-        bench.currents["emitter"] = (first.current + second.current + leak).scaled(-1.0)
+        bench.currents["emitter"] = (first.collector + second.collector + leak).scaled(-1.0)
         bench.power = power
-        _note_laws(bench, build.transports[first.index][-1], build.transports[second.index][-1])
+        _note_laws(bench, first.laws, second.laws)
 
     return expand
 

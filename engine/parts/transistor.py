@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -14,7 +15,9 @@ import numpy as np
 from ..errors import CircuitError
 from ..primitives.builder import constant
 from ..primitives.columns import Group
+from .curve import points_of
 from .figures import figure, needed, typical
+from .gain import GainLaw, gain_law
 from .kind import FLAG, TEXT, THERMAL, Entry, Kind
 from .physics import REFERENCE, doubling, gain_factor, saturation_factor, thermal_voltage
 from .points import forward_law, saturation_law
@@ -22,12 +25,14 @@ from .points import forward_law, saturation_law
 if TYPE_CHECKING:
     from ..design.document import Part
     from ..kernel.layout import Floats
-    from ..primitives.builder import Bench, Builder, Handle, Laws
+    from ..primitives.builder import Bench, Builder, Laws
+    from ..primitives.columns import Lanes
     from ..primitives.signals import Signal
 
 BUILT_IN = 0.75  # V, from memory
 EMITTER_GRADING, COLLECTOR_GRADING = 0.5, 0.5  # abrupt junctions, textbook value
 REVERSE_TRANSIT = 20.0  # times the forward transit time, from memory
+RECOMBINATION = 2.0  # ideality of the base current at the low end (Sah, Noyce, Shockley, Proc. IRE 45 (1957) 1228)
 BREAKDOWN_SLOPE = 0.05  # V per e-fold of the emitter junction's breakdown, from memory
 BREAKDOWN_CURRENT = 10e-6  # A at the breakdown voltage
 
@@ -102,6 +107,15 @@ def _own_law(part: Part, build: Builder, ref: str) -> Laws:
     breakdown = given("base_emitter_breakdown", "V")
     if breakdown is not None:
         laws |= _breakdown(breakdown[0])
+    knee, recombination = given("knee_current", "A"), given("recombination_current", "A")
+    if knee is not None:
+        laws["per_knee_current"] = constant(1.0 / knee[0])
+    if recombination is not None:
+        steeper = (given("recombination_ideality", "", RECOMBINATION) or (RECOMBINATION,))[0]
+        laws |= {
+            "recombination_saturation": lambda lanes: recombination[0] * moved(lanes.ambient) ** (ideality / steeper),
+            "recombination_slope": lambda lanes: slope(lanes.ambient) * (steeper / ideality),
+        }
     return laws
 
 
@@ -120,17 +134,26 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
         ref, "gain", gain.typical**share, gain.low**share, gain.high**share, group=Group.GAIN, logarithmic=True
     )
     forward = gain.typical**share
+    falls = _fall_off(part) if share == 1.0 else None
     drop = needed(part, "v_be", "V", "0.64 V")
     drop_key = build.column(ref, "v_be", *drop.limits)
     drop_current = typical(part, "v_be_current", "A", 2e-3)
     # What of the figure drops on the way to the junction, in the base resistance.
-    before = drop_current / forward * _resistances(part, share).get("base_resistance", 0.0)
+    at_drop, at_saturation = forward, forward
+    boosted = drop_current
+    if falls is not None:
+        at_drop *= float(falls.share(drop_current))
+        at_saturation *= float(falls.share(typical(part, "saturation_current_at", "A", 10e-3)))
+        boosted *= 1.0 + drop_current * falls.per_knee
+    before = drop_current / at_drop * _resistances(part, share).get("base_resistance", 0.0)
     if before >= drop.low:
         raise CircuitError(f"part {part.ref}, base_resistance: it alone drops more than v_be; write a smaller one")
-    forced = min(typical(part, "forced_gain", "", 20.0), 0.5 * forward)
+    forced = min(typical(part, "forced_gain", "", 20.0), 0.5 * at_saturation)
     saturated = _saturation(part, share)
     reverse = (
-        reverse_gain_from(typical(part, "v_ce_sat", "V", 0.1), forced, forward) if saturated is None else saturated[0]
+        reverse_gain_from(typical(part, "v_ce_sat", "V", 0.1), forced, at_saturation)
+        if saturated is None
+        else saturated[0]
     )
     early = typical(part, "early_voltage", "V", 80.0)
     ob = figure(part, "c_ob", "F")
@@ -153,15 +176,19 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
         at = typical(part, "f_t_current", "A", 10e-3)
         forward_transit = max(0.2 * total, total - (emitter_c + collector_c) * float(thermal_voltage(REFERENCE)) / at)
     leak = figure(part, "i_cbo", "A")
+
+    def per_gain(lanes: Lanes) -> Floats:
+        return np.asarray(1.0 / (lanes[gain_key] * gain_factor(lanes.ambient)))
+
     laws: Laws = {
-        "per_forward_gain": lambda lanes: 1.0 / (lanes[gain_key] * gain_factor(lanes.ambient)),
+        "per_forward_gain": per_gain if falls is None else lambda lanes: falls.mid * per_gain(lanes),
         "per_reverse_gain": lambda lanes: 1.0 / reverse,
         "per_early_voltage": lambda lanes: 1.0 / early,
         "collector_junction": lambda lanes: 1.0,
     }
     for side in ("emitter", "collector"):
         laws[f"{side}_saturation"] = lambda lanes: (
-            drop_current
+            boosted
             / np.expm1((lanes[drop_key] - before) / thermal_voltage(REFERENCE))
             * saturation_factor(lanes.ambient)
         )
@@ -175,6 +202,16 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
         "collector_grading": lambda lanes: COLLECTOR_GRADING,
         "collector_transit": lambda lanes: REVERSE_TRANSIT * forward_transit,
     }
+    if falls is not None:
+        saturation = laws["emitter_saturation"]
+        laws |= {
+            "gain_current": constant(falls.at),
+            "per_knee_current": constant(falls.per_knee),
+            "recombination_saturation": lambda lanes: (
+                falls.recombination * per_gain(lanes) * np.sqrt(np.asarray(saturation(lanes)))
+            ),
+            "recombination_slope": lambda lanes: RECOMBINATION * thermal_voltage(lanes.ambient),
+        }
     if leak is not None:
         leak_key = build.column(ref, "i_cbo", *leak.limits, logarithmic=True)
         step = typical(part, "i_cbo_doubling", "K", 10.0)
@@ -183,6 +220,20 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
     if breakdown is not None:
         laws |= _breakdown(breakdown.typical)
     return laws
+
+
+def _fall_off(part: Part) -> GainLaw | None:
+    """How the gain falls off at both ends, where the part gives it at several currents."""
+    example = '[["0.1 mA", "100"], ["100 mA", "80"]]'
+    points = points_of(part, "gain_points", ("A", ""), example)
+    if points is None:
+        return None
+    at = needed(part, "gain_current", "A", "2 mA").typical
+    least = needed(part, "gain", "", "200").low
+    try:
+        return gain_law([*(point for point in points if point[0] != at), (at, least)], at)
+    except CircuitError as refusal:
+        raise CircuitError(f'part {part.ref}, gain_points: {refusal}; write "gain_points": {example}') from refusal
 
 
 def _own_resistances(part: Part) -> dict[str, float]:
@@ -234,10 +285,20 @@ def _saturation(part: Part, share: float) -> tuple[float, float] | None:
         raise CircuitError(f"part {part.ref}, v_ce_sat_high: {refusal}") from refusal
 
 
+@dataclass(frozen=True, slots=True)
+class Placed:
+    """A transistor that was added: collector and base current, all it turns to heat, and its laws."""
+
+    collector: Signal
+    base: Signal
+    power: Signal
+    laws: Laws
+
+
 def add_transistor(
     part: Part, build: Builder, ref: str, collector: str, base: str, emitter: str, polarity: int, share: float = 1.0
-) -> tuple[Handle, Signal]:
-    """Add one transistor of a part; ``ref`` names its columns (a pair has two). Returns it and all it turns to heat."""
+) -> Placed:
+    """Add one transistor of a part; ``ref`` names its columns (a pair has two)."""
     laws = _own_law(part, build, ref) if part.law else _from_figures(part, build, ref, share)
     ohms = _own_resistances(part) if part.law else _resistances(part, share)
     inner = {"collector": collector, "base": base}
@@ -249,35 +310,61 @@ def add_transistor(
             powers.append(handle.power)
     laws["base_resistance"] = constant(ohms.get("base_resistance", 0.0))
     handle = build.transport(inner["collector"], inner["base"], emitter, polarity, laws)
-    power = handle.power
+    power, into_base = handle.power, handle.base_current
     for each in powers:
         power += each
-    return handle, power
+    if "recombination_saturation" in laws:
+        ends = (inner["base"], emitter) if polarity > 0 else (emitter, inner["base"])
+        recombination = {key: laws[f"recombination_{key}"] for key in ("saturation", "slope")}
+        junction = build.junction(*ends, recombination)
+        power += junction.power
+        into_base += junction.current.scaled(polarity)
+    return Placed(handle.current, into_base, power, laws)
 
 
 def note_laws(bench: Bench, laws: Laws) -> None:
-    """Keep gain, base-emitter voltage and leakage of a transistor for the hand formulas of checks."""
+    """Keep gain, base-emitter voltage and leakage of a transistor for the hand formulas of checks.
+
+    The gain is that at the current of its figure, ``gain_at`` that at a collector current, with its fall-off.
+    """
     per_gain, saturation, slope = laws["per_forward_gain"], laws["emitter_saturation"], laws["emitter_slope"]
-    series = laws["base_resistance"]
-    bench.gain = lambda lanes: 1.0 / np.asarray(per_gain(lanes))
+    series, per_knee = laws["base_resistance"], laws.get("per_knee_current", constant(0.0))
+    recombination = laws.get("recombination_saturation")
+
+    def forward(lanes: Lanes, current: Floats | float) -> Floats:
+        return np.asarray(current * (1.0 + current * np.asarray(per_knee(lanes))))
+
+    def per_gain_at(lanes: Lanes, current: Floats | float) -> Floats:
+        falling = np.asarray(per_gain(lanes)) * (1.0 + current * np.asarray(per_knee(lanes)))
+        if recombination is not None:
+            power = np.asarray(slope(lanes)) / np.asarray(laws["recombination_slope"](lanes))
+            rise = (1.0 + forward(lanes, current) / np.asarray(saturation(lanes))) ** power - 1.0
+            falling = falling + np.asarray(recombination(lanes)) * rise / np.maximum(current, 1e-15)
+        return np.asarray(falling)
+
+    stated = laws.get("gain_current")
+    bench.gain = lambda lanes: (
+        1.0 / np.asarray(per_gain(lanes) if stated is None else per_gain_at(lanes, stated(lanes)))
+    )
+    bench.gain_at = lambda lanes, current: 1.0 / per_gain_at(lanes, current)
     bench.base_voltage = lambda lanes, current: (
-        np.asarray(slope(lanes)) * np.log1p(current / np.asarray(saturation(lanes)))
-        + current * np.asarray(per_gain(lanes)) * series(lanes)
+        np.asarray(slope(lanes)) * np.log1p(forward(lanes, current) / np.asarray(saturation(lanes)))
+        + current * per_gain_at(lanes, current) * series(lanes)
     )
     bench.leakage = laws.get("collector_leakage")
 
 
 def _expand(polarity: int) -> Callable[[Part, Builder], None]:
     def expand(part: Part, build: Builder) -> None:
-        handle, power = add_transistor(
+        placed = add_transistor(
             part, build, part.ref, part.pins["collector"], part.pins["base"], part.pins["emitter"], polarity
         )
         bench = build.bench(part.ref)
-        bench.currents["collector"] = handle.current
-        bench.currents["base"] = handle.base_current
-        bench.currents["emitter"] = (handle.current + handle.base_current).scaled(-1.0)
-        bench.power = power
-        note_laws(bench, build.transports[handle.index][-1])
+        bench.currents["collector"] = placed.collector
+        bench.currents["base"] = placed.base
+        bench.currents["emitter"] = (placed.collector + placed.base).scaled(-1.0)
+        bench.power = placed.power
+        note_laws(bench, placed.laws)
 
     return expand
 
@@ -313,6 +400,10 @@ DATA = {
     "base_emitter_breakdown": Entry("V", about="typical breakdown, not the rating"),
     "early_voltage": Entry("V", about="Early voltage"),
 }
+GAIN_DATA = {
+    "gain_current": Entry("A", about="collector current of the gain figure, needed beside gain_points"),
+    "gain_points": Entry(TEXT, about="guaranteed gain at other collector currents, [current, gain] each"),
+}
 LAW = {
     "saturation_current": Entry("A", needed=True),
     "forward_gain": Entry("", needed=True),
@@ -324,6 +415,9 @@ LAW = {
     "forward_transit_time": Entry("s"),
     "reverse_transit_time": Entry("s"),
     "base_emitter_breakdown": Entry("V", about="typical breakdown, not the rating"),
+    "knee_current": Entry("A", about="where the gain has fallen to half at high currents"),
+    "recombination_current": Entry("A", about="saturation current of the base current at the low end"),
+    "recombination_ideality": Entry("", about="2 where none is written"),
     "base_resistance": Entry("ohm"),
     "collector_resistance": Entry("ohm"),
     "collector_junction": Entry(FLAG, about="false: a one-sided law without a collector junction"),
@@ -338,7 +432,7 @@ KINDS = tuple(
         paths=(("collector", "emitter"), ("base", "emitter")),
         expand=_expand(polarity),
         fields=FIELDS,
-        data=DATA,
+        data={**DATA, **GAIN_DATA},
         law=LAW,
     )
     for name, polarity in (("npn", 1), ("pnp", -1))

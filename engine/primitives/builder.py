@@ -38,6 +38,7 @@ _TRANSPORT_PLACES = {
     "per_reverse_gain": layout.T_GAIN_REVERSE,
     "per_early_voltage": layout.T_EARLY,
     "collector_junction": layout.T_COLLECTOR,
+    "per_knee_current": layout.T_PER_KNEE,
 }
 _CHANNEL_PLACES = {
     "threshold": layout.C_THRESHOLD,
@@ -141,10 +142,10 @@ class Operated:
 class Bench:
     """What can be observed at a part, and the laws that hand formulas need.
 
-    ``currents`` by pin name; ``armature``: the state of what a coil moves;
-    ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of
-    a load at a voltage; of a transistor ``gain``, ``base_voltage`` at a collector current in A, and ``leakage`` in A;
-    of a capacitor ``leak_conductance`` in S.
+    ``currents`` by pin name; ``armature``: the state of what a coil moves; ``on``: the nets and the level in volts at
+    which a load counts as on; ``draw``: current of a load at a voltage; of a transistor ``gain`` as its figure states
+    it, ``gain_at`` and ``base_voltage`` at a collector current in A, and ``leakage`` in A; of a capacitor
+    ``leak_conductance`` in S.
     """
 
     currents: dict[str, Signal] = field(default_factory=dict)
@@ -153,6 +154,7 @@ class Bench:
     on: tuple[str, str, float] | None = None
     draw: Callable[[Lanes, Floats], Floats] | None = None
     gain: Law | None = None
+    gain_at: Callable[[Lanes, Floats], Floats] | None = None
     base_voltage: Callable[[Lanes, Floats | float], Floats] | None = None
     leakage: Law | None = None
     leak_conductance: Law | None = None

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from hypothesis import strategies as st
 
-from .circuits import Json, Setup, capacitor, resistor, setup, transistor, two
+from .circuits import Json, Setup, capacitor, mosfet, resistor, setup, transistor, two
 
 LAWS: tuple[Json, ...] = (
     {"saturation_current": "2e-14 A", "forward_gain": 200, "reverse_gain": 2, "early_voltage": "80 V"},
@@ -21,10 +21,28 @@ LAWS: tuple[Json, ...] = (
         "reverse_transit_time": "20 ns",
         "base_emitter_breakdown": "6 V",
     },
+    {
+        "saturation_current": "1e-14 A",
+        "forward_gain": 100,
+        "knee_current": "1 mA",
+        "recombination_current": "1e-12 A",
+        "forward_transit_time": "2 ns",
+    },
 )
 DIODES: tuple[Json, ...] = (
     {"saturation_current": "2e-9 A", "ideality": 1.8, "capacitance": "4 pF", "transit_time": "6 ns"},
     {"saturation_current": "1e-14 A", "breakdown_voltage": "5 V"},
+)
+CHANNELS: tuple[Json, ...] = (
+    {"threshold": "0.3 V", "transconductance": "20 mA/V2", "early_voltage": "40 V"},
+    {
+        "threshold": "1.5 V",
+        "transconductance": "5 mA/V2",
+        "gate_source_capacitance": "50 pF",
+        "gate_drain_capacitance": "10 pF",
+        "body_saturation_current": "1e-12 A",
+        "drain_source_capacitance": "20 pF",
+    },
 )
 
 
@@ -43,7 +61,9 @@ def parts_of_a_circuit(draw: st.DrawFn) -> list[Json]:
             parts.append(resistor(f"R{k + 10}", net, draw(st.sampled_from(["supply", "0V"])), draw(decades(2, 6))))
     nets = st.sampled_from(["supply", "0V", *free])
     for k in range(draw(st.integers(0, 6))):
-        kind = draw(st.sampled_from(["resistor", "capacitor", "capacitor", "diode", "npn", "pnp"]))
+        kind = draw(
+            st.sampled_from(["resistor", "capacitor", "capacitor", "diode", "npn", "pnp", "mosfet_n", "mosfet_p"])
+        )
         a, b, c = draw(nets), draw(nets), draw(nets)
         if a == b:
             continue
@@ -54,6 +74,8 @@ def parts_of_a_circuit(draw: st.DrawFn) -> list[Json]:
         elif kind == "diode":
             if "supply" not in (a, b):
                 parts.append(two("diode", f"D{k}", a, b, law=draw(st.sampled_from(DIODES))))
+        elif "supply" not in (a, b, c) and kind.startswith("mosfet"):
+            parts.append(mosfet(f"Q{k}", a, b, c, kind, law=draw(st.sampled_from(CHANNELS))))
         elif "supply" not in (a, b, c):
             parts.append(transistor(f"Q{k}", a, b, c, kind, law=draw(st.sampled_from(LAWS))))
     return parts + [resistor(f"R{k + 50}", net, "0V", "10M") for k, net in enumerate(free)]

@@ -131,6 +131,9 @@ def into(circuit: Circuit, net: str) -> Signal:
         handle = Handle("transport", n, (c, b, e))
         total += handle.current.scaled(float(c == net) - float(e == net))
         total += handle.base_current.scaled(float(b == net) - float(e == net))
+    for n, (d, g, s, *_) in enumerate(made.channels):
+        current = Handle("channel", n, (d, g, s)).current
+        total += current.scaled(float(d == net) - float(s == net))
     return Signal(tuple(term for term in total.terms if term[2] != 0.0))
 
 

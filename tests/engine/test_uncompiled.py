@@ -71,6 +71,25 @@ CASES: dict[str, Setup] = {
         supply="5 V",
         ends=200e-6,
     ),
+    "transport whose gain falls off": setup(
+        resistor("R1", "supply", "b", "10k"),
+        transistor(
+            "Q1",
+            "c",
+            "b",
+            "0V",
+            law={
+                "saturation_current": "1e-14 A",
+                "forward_gain": 100,
+                "knee_current": "1 mA",
+                "recombination_current": "1e-12 A",
+                "forward_transit_time": "2 ns",
+            },
+        ),
+        resistor("R2", "supply", "c", "1k"),
+        supply="9 V",
+        ends=100e-6,
+    ),
     "channel": setup(
         steps("G1", "in", "0V", (0.0, 0.0), (1e-6, 6.0), (100e-6, 6.0), (101e-6, 0.0)),
         resistor("R1", "in", "g", "10k"),
