@@ -117,7 +117,7 @@ async def test_a_part_is_made_and_edited_as_a_new_version(app: StagebookApp, she
         await settled(pilot)
         await pilot.press("p", "n")
         await pilot.pause()
-        await pilot.press(*["down"] * 6, "enter")  # battery capacitor clamp contact two Darlingtons diode
+        await pilot.press(*["down"] * 7, "enter")  # battery capacitor clamp coil contact two Darlingtons diode
         await pilot.pause()
         await pilot.press("enter")  # signal diode
         await pilot.pause()
