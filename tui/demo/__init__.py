@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from ...storage import Store
 from .flood import FLOOD
+from .frost import FROST
 
-DEMOS = (FLOOD,)
+DEMOS = (FLOOD, FROST)
 
 
 def put_on_shelf(store: Store) -> list[str]:
