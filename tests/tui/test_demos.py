@@ -15,8 +15,8 @@ from stagebook.storage import Store
 from stagebook.tui.demo import DEMOS
 from stagebook.tui.demo.history import Demo
 
-FLAWS = {"frost": "load_voltage:relay:K1"}
-GIVEN_UP = {"frost": 2}
+FLAWS = {"frost": "load_voltage:relay:K1", "tilt": "reverse_base_emitter:timer:Q6"}
+GIVEN_UP = {"frost": 2, "tilt": 2}
 OTHERS = [demo for demo in DEMOS if demo.name in FLAWS]
 
 
@@ -95,6 +95,22 @@ def test_the_notes_of_frost_tell_what_the_margins_show() -> None:
     # r5: "trip point and delay do not move".
     for check in ("trip_window:sensor:RT1", "duration:relay:K1"):
         assert margin("frost", 5, check).margin == pytest.approx(margin("frost", 4, check).margin or 0.0, abs=0.02)
+
+
+def test_the_notes_of_tilt_tell_what_the_margins_show() -> None:
+    reverse = [margin("tilt", number, FLAWS["tilt"]) for number in range(1, 5)]
+    sounding = [margin("tilt", number, "duration:driver:LS1") for number in range(1, 5)]
+    # r1: "6.2 V at the worst corner where 4 V are allowed" (0.8 x 5 V).
+    assert (reverse[0].demand, reverse[0].capability) == (pytest.approx(6.2, abs=0.1), pytest.approx(4.0))
+    assert "high supply" in reverse[0].corner
+    # r2: "Reverse voltage good, 33 s instead of 60 s."
+    assert [each.verdict for each in (reverse[1], sounding[1])] == [Verdict.PASS, Verdict.FAIL]
+    # r3: "At low supply in the cold the time is beyond its window."
+    assert sounding[2].verdict is Verdict.FAIL
+    assert (sounding[2].high or 0.0) > 80.0
+    assert {"cold", "low supply"} <= set(sounding[2].corner.split(", "))
+    # r3 and r4: "Reverse voltage far below 4 V", "unchanged".
+    assert all((each.demand or 0.0) < 1.5 for each in reverse[2:])
 
 
 @pytest.mark.benchmark
