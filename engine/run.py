@@ -26,7 +26,8 @@ from .primitives.signals import BRANCH_CURRENT, Anchor, Row, Signal
 RELATIVE = 1e-3
 ABSOLUTE = 1e-4  # V
 ABSOLUTE_CURRENT = 1e-6  # A
-TIGHT = 0.1  # factor on nets that carry timing capacitors
+# Factors on nets that carry timing capacitors: an interval's error is that of a slow voltage, not of what it triggers.
+TIGHT, TIGHT_ABSOLUTE = 0.03, 0.2
 BLOCK = 64  # most lanes handed to a thread at a time
 MOST_STEPS = 200_000
 MOST_ITERATIONS = 12
@@ -169,7 +170,7 @@ class _RowTable:
 
 
 def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
-    """Tolerances of every unknown, ten times tighter on nets that carry timing capacitors."""
+    """Tolerances of every unknown, tighter on nets that carry timing capacitors."""
     nets, free = int(circuit.topology.size[0]), int(circuit.topology.size[1])
     scale = relative / RELATIVE
     rtol = np.full(free, relative)
@@ -182,7 +183,7 @@ def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
                     place = circuit.index(net)
                     if place < nets:
                         rtol[place] = relative * TIGHT
-                        atol[place] = ABSOLUTE * scale * TIGHT
+                        atol[place] = ABSOLUTE * scale * TIGHT_ABSOLUTE
     return Control(rtol, atol, ints([MOST_STEPS, MOST_ITERATIONS, MOST_AT_JUMP]))
 
 

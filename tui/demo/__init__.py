@@ -4,10 +4,8 @@ from __future__ import annotations
 
 from ...storage import Store
 from .flood import FLOOD
-from .frost import FROST
-from .tilt import TILT
 
-DEMOS = (FLOOD, FROST, TILT)
+DEMOS = (FLOOD,)
 
 
 def put_on_shelf(store: Store) -> list[str]:
