@@ -29,6 +29,7 @@ _BLANK = 0x2800
 _LEVELS = "^-._"  # ASCII signs from the top of a cell down
 _STRETCHED = 0.4  # share of a segment's columns that are spaced logarithmically behind its event
 _FINEST, _LOG_END = 1e-7, 0.05  # s behind the event of the first column; share of the segment where evenness begins
+CLOSEST = 1e-12  # of the time in sight, between two events
 _LEAST_COLUMNS = 6  # of a segment that has a place of its own
 
 
@@ -76,11 +77,18 @@ def marks_of(design: Design, sequence: str) -> tuple[Mark, ...]:
 def scale_of(start: float, end: float, marks: Sequence[Mark], columns: int, *, stretched: bool) -> Scale:
     """Columns from ``start`` to ``end``: even, or with a logarithmic stretch behind every event in sight."""
     inside = [mark for mark in marks if start <= mark.at < end]
-    bounds = sorted({start, *(mark.at for mark in inside), end})
+    bounds: list[float] = [start]
+    events: set[float] = set()
+    for at in sorted(mark.at for mark in inside):
+        # What lies closer together than numbers can be told apart has no columns of its own.
+        if min(at - bounds[-1], end - at) > CLOSEST * (end - start):
+            bounds.append(at)
+        events.add(bounds[-1])
+    bounds.append(end)
     if not stretched or columns < _LEAST_COLUMNS * (len(bounds) - 1):
         edges = np.linspace(start, end, columns + 1)
     else:
-        edges = _stretched_edges(bounds, {mark.at for mark in inside}, columns)
+        edges = _stretched_edges(bounds, events, columns)
     scale = Scale(edges, ())
     return Scale(edges, tuple((scale.column(mark.at), mark) for mark in inside))
 

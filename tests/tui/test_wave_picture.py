@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from stagebook.engine.studies.waves import Waves
@@ -37,6 +37,7 @@ def ramp(ends: float = 1.0) -> Waves:
     st.integers(1, 200),
     st.booleans(),
 )
+@example([5e-324], 1.0, 12, True)
 def test_columns_rise_and_fill_the_window(moments: list[float], span: float, columns: int, stretched: bool) -> None:
     marks = [Mark(at, "x") for at in moments]
     scale = scale_of(0.0, span, marks, columns, stretched=stretched)
