@@ -42,7 +42,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("rows", "last", "end", "End", "last", "to the last row"),
     # shelf
     Action("shelf", "open", "enter", "Enter", "open", "open the design on the bench", 2),
-    Action("shelf", "new", "n", "n", "new", "a new design, empty or a copy of this one", 3),
+    Action("shelf", "new", "n", "n", "new", "a new design: stages in a row, empty, or a copy of this one", 3),
     Action("shelf", "import_file", "i", "i", "import", "put a design document (.json) on the shelf", 4),
     Action("shelf", "quit", "q", "q", "leave", "leave; every edit is kept already", 5),
     # a new design of stages in a row
