@@ -209,7 +209,7 @@ def worse_words(figures: Figures, base: int | None) -> tuple[str, str]:
     if figures.before is None or base is None:
         return "", ""
     if figures.worst is None or figures.worst_old:
-        return "~", "dim"
+        return f"~ compared with r{base}: being computed", "dim"
     worse = [row for row in figures.rows() if row.against.worse]
     if not worse:
         return f"nothing is worse than in r{base}", ""

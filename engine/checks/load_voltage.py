@@ -96,7 +96,7 @@ def _hand(view: View, stage: Stage, load: Part, lanes: Lanes, wanted: Floats) ->
     current = draw(lanes, supply - drop)
     ohms = lanes[SOURCE_RESISTANCE] if SOURCE_RESISTANCE in lanes else np.zeros(lanes.count)
     for _, lead in view.parts_of("lead"):
-        if set(lead.pins.values()) & {load.pins["plus"], load.pins["minus"]} - {"0V", "supply"}:
+        if set(lead.pins.values()) & set(load.pins.values()) - {"0V", "supply"}:
             ohms = ohms + lanes[lead.ref, "resistance"]
     left = supply - drop - current * ohms
     return np.asarray(1.0 - wanted / np.where(left > 0.0, left, np.nan))

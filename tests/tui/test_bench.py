@@ -130,6 +130,7 @@ async def test_figures_being_computed_are_marked_and_stay(app: StagebookApp, gat
         row = next(row for row in bench.figures.rows("timer") if row.check.part == "R7")
         assert (row.worst_old, row.nominal_old, round(row.check.margin or 0, 2)) == (True, True, 0.15)
         assert "+15~" in seen(pilot)
+        assert "~ compared with r2: being computed" in seen(pilot)
         gates.nominal.set()
         await until(pilot, lambda: not bench.figures.nominal_old)
         assert "+15~" in seen(pilot)

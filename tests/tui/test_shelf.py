@@ -8,6 +8,7 @@ from pathlib import Path
 import pytest
 
 from stagebook.storage import Store
+from stagebook.tui.messages import SolverPreparing
 from stagebook.tui.screens.bench import BenchScreen
 from stagebook.tui.screens.shelf import ShelfScreen
 from stagebook.tui.solver import Solver
@@ -72,6 +73,27 @@ async def test_a_file_that_cannot_be_read_is_said_in_one_line(app: StagebookApp,
         await settled(pilot)
         await pilot.press("i", *path, "enter")
         assert words in pilot.app.screen.query_one(Notice).text
+
+
+async def test_a_solver_made_ready_behind_a_bench_is_not_said_to_be_prepared_still(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        pilot.app.screen.post_message(SolverPreparing(True))
+        await until(pilot, lambda: "preparing the solver" in seen(pilot))
+        await pilot.press("enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
+        await settled(pilot)
+        await pilot.press("escape")
+        await until(pilot, lambda: isinstance(pilot.app.screen, ShelfScreen))
+        await settled(pilot)
+        assert "preparing the solver" not in seen(pilot)
+
+
+async def test_every_mark_fits_the_help_of_80_columns(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("question_mark", "end")
+        assert "what should happen does not" in seen(pilot)
 
 
 async def test_q_leaves(app: StagebookApp) -> None:

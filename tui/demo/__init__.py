@@ -4,8 +4,10 @@ from __future__ import annotations
 
 from ...storage import Store
 from .flood import FLOOD
+from .frost import FROST
+from .tilt import TILT
 
-DEMOS = (FLOOD,)
+DEMOS = (FLOOD, FROST, TILT)
 
 
 def put_on_shelf(store: Store) -> list[str]:

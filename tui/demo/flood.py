@@ -5,11 +5,7 @@ from __future__ import annotations
 from ...engine import edit
 from ...engine.design.document import Design
 from ...storage import Note
-from .history import Demo, Edit, Step
-
-
-def _set(ref: str, value: str) -> tuple[str, Edit]:
-    return f"{ref} {value}", lambda design: edit.with_value(design, ref, value)
+from .history import Demo, Step, set_value
 
 
 def _add_npn_capacitor(design: Design) -> Design:
@@ -59,7 +55,7 @@ FLOOD = Demo(
                 result="Barely twice as good. With 30 pF on the base, R11 hardly matters within half a microsecond.",
                 next="Even smaller, or a capacitor that divides the step.",
             ),
-            (_set("R11", "100k"),),
+            (set_value("R11", "100k"),),
             parent=1,
         ),
         Step(
@@ -71,7 +67,7 @@ FLOOD = Demo(
                 result="Still trips, and the latch hardly holds at low supply in the cold. Given up.",
                 next="Back to 100k and a capacitor.",
             ),
-            (_set("R11", "22k"),),
+            (set_value("R11", "22k"),),
             parent=2,
         ),
         Step(

@@ -7,11 +7,17 @@ from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from importlib.resources import files
 
+from ...engine import edit
 from ...engine.design.document import Design
 from ...engine.results import MarginSheet
 from ...storage import Note, Store
 
 Edit = Callable[[Design], Design]
+
+
+def set_value(ref: str, value: str) -> tuple[str, Edit]:
+    """The edit that gives a part another value, with its label."""
+    return f"{ref} {value}", lambda design: edit.with_value(design, ref, value)
 
 
 @dataclass(frozen=True)
@@ -25,10 +31,14 @@ class Step:
 
 @dataclass(frozen=True)
 class Demo:
-    """A demo design: its name, also that of its first document, and the steps that led to the last revision."""
+    """A demo design: its name, also that of its first document, and the steps that led to the last revision.
+
+    ``lanes`` are the random units of its shipped margins.
+    """
 
     name: str
     steps: Sequence[Step]
+    lanes: int = 1000
 
     def first(self) -> Design:
         """The document of the first revision."""
@@ -39,8 +49,8 @@ class Demo:
         made: list[Design] = []
         for step in self.steps:
             design = self.first() if step.parent is None else made[step.parent - 1]
-            for _, edit in step.edits:
-                design = edit(design)
+            for _, change in step.edits:
+                design = change(design)
             made.append(design)
             yield design
 
@@ -68,8 +78,8 @@ class Demo:
                 continue
             if step.parent is not None and (step.parent != number - 1 or number == made + 1):
                 store.branch(self.name, step.parent)
-            for label, edit in step.edits:
-                store.edit(self.name, label, edit(store.draft(self.name).design))
+            for label, change in step.edits:
+                store.edit(self.name, label, change(store.draft(self.name).design))
             store.save(self.name, step.note, sheet)
         return True
 

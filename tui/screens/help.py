@@ -16,7 +16,7 @@ from ..widgets.rule import Rule
 from ..widgets.status import KeyLine
 
 _MARKS = (
-    ("X", "FAIL: the worst corner is below zero, or what should happen does not"),
+    ("X", "fail: worst corner below zero, or what should happen does not"),
     ("!", "thin: above zero, below the margin that is required"),
     ("=", "pass: the required margin holds in the worst corner"),
     ("?", "unknown: a datum is missing; never counted as a pass"),

@@ -43,6 +43,7 @@ class ShelfScreen(Page[None]):
         self._store = store
         self._computing = computing
         self._told: set[str] = set()
+        self._preparing = False
 
     def compose_body(self) -> ComposeResult:
         """Title and rows."""
@@ -57,11 +58,16 @@ class ShelfScreen(Page[None]):
         self._computing.prepare(self.post_message)
 
     def on_screen_resume(self) -> None:
-        """Reads the shelf, at first and after every bench."""
+        """Reads the shelf, at first and after every bench, whose study may have taken the wait for the solver over."""
+        if self._preparing:
+            self._preparing = False
+            self.say("")
+            self._computing.prepare(self.post_message)
         self.attempt(self._show)
 
     def on_solver_preparing(self, event: SolverPreparing) -> None:
         """The first start on this machine."""
+        self._preparing = event.busy
         busy = "preparing the solver, once on this machine; go on meanwhile"
         self.say(busy if event.busy else event.trouble or "the solver is ready")
 

@@ -1,0 +1,92 @@
+"""The demo ``frost``: a seedling-tunnel frost alarm whose relay is not pulled in when it is hot and the supply low."""
+
+from __future__ import annotations
+
+from ...engine import edit
+from ...engine.design.document import Design
+from ...storage import Note
+from .history import Demo, Step, set_value
+
+
+def _schottky(design: Design) -> Design:
+    part = {"ref": "D1", "kind": "schottky", "pins": {"anode": "fused", "cathode": "rail"}, "class": "1 A Schottky"}
+    design = edit.with_part(edit.without_part(design, "D1"), "entry", part)
+    return edit.with_role(design, "entry", "reverse_diode", "D1")
+
+
+def _single_transistor(design: Design) -> Design:
+    pins = {"collector": "coil", "base": "kb", "emitter": "0V"}
+    part = {"ref": "Q7", "kind": "npn", "pins": pins, "class": "0.5 A driver npn"}
+    design = edit.with_part(edit.without_part(design, "Q7"), "relay", part)
+    return edit.with_role(design, "relay", "driver", "Q7")
+
+
+def _relay_of_70_percent(design: Design) -> Design:
+    for field in ("pick_up.typical", "pick_up.max"):
+        design = edit.with_field(design, "K1", field, "8.4 V")
+    return design
+
+
+FROST = Demo(
+    "frost",
+    (
+        Step(
+            Note(
+                "first unit: good on the bench, the lamp stayed dark on a warm evening with a low battery",
+                symptom="Shed at 40 C after a hot day, battery at 11.6 V, sensor in ice water: delay runs, no click.",
+                hypothesis="Entry diode and Darlington take some 1.7 V; a 75 % relay needs 9 V, more when hot.",
+                prediction="Load voltage of K1 fails when hot at low supply; all else holds.",
+                result="So it is: hot copper wants 9.88 V, 11.5 V leaves less than that. Nothing else fails.",
+                next="Find the lost volts.",
+            ),
+        ),
+        Step(
+            Note(
+                "R18 3k9 > 1k: given up, a Darlington does not saturate",
+                hypothesis="More base current pulls the collector of Q7 further down.",
+                change="R18 3k9 > 1k",
+                prediction="A few tenths of a volt more for the coil.",
+                result="Some 10 mV: the first transistor hangs on the output, V_BE of the second stays. Given up.",
+                next="Back to 3k9; the entry diode.",
+            ),
+            (set_value("R18", "1k"),),
+            parent=1,
+        ),
+        Step(
+            Note(
+                "D1 a Schottky, from r1: pulls in at the limit",
+                hypothesis="0.4 V less in the entry is 0.4 V more at the coil.",
+                change="D1 1 A rectifier > 1 A Schottky",
+                prediction="Load voltage just above what is needed, not yet 10 % above.",
+                result="Just so: holds at the worst corner, with less than the 10 % wanted.",
+                next="A driver that saturates.",
+            ),
+            (("D1 a Schottky", _schottky),),
+            parent=1,
+        ),
+        Step(
+            Note(
+                "Q7 a single transistor: almost all of the supply, still short of 10 %",
+                hypothesis="One transistor saturates to 0.2 V; R18 gives 2 mA, ten times less gain will do for 30 mA.",
+                change="Q7 power Darlington > 0.5 A driver npn",
+                prediction="0.6 V more at the coil, base overdrive above its 50 %.",
+                result="0.6 V more, overdrive good. The rest is copper: margin still below 10 %.",
+                next="A relay that needs less.",
+            ),
+            (("Q7 a single transistor", _single_transistor),),
+            parent=3,
+        ),
+        Step(
+            Note(
+                "K1 with 70 % pick-up: pulls in hot, at 11.5 V, with margin",
+                hypothesis="8.4 V at 20 C are 9.2 V at 45 C.",
+                change="K1 pick-up 9 V > 8.4 V",
+                prediction="Load voltage above 10 %; trip point and delay do not move.",
+                result="Every required margin holds.",
+                next="Try it in a climate cupboard at 45 C from a supply set to 11.5 V.",
+            ),
+            (("K1 with 70 % pick-up", _relay_of_70_percent),),
+            parent=4,
+        ),
+    ),
+)
