@@ -240,6 +240,7 @@ def test_an_older_store_that_cannot_be_written_is_looked_at_in_a_copy(
 with Store.open(Path({str(old.parent.parent)!r}) / "warm") as warm:  # all that is imported later is imported now
     warm.create("a", design())
     warm.designs(), verify(warm)
+import stagebook.storage.migration
 if os.getuid() == 0:
     os.setgroups([]), os.setgid(65534), os.setuid(65534)
 with Store.open(path) as store:
