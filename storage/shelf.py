@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from hashlib import sha256
+
 from sqlmodel import Session, col, func, select
 
 from ..engine.results import Verdict
@@ -34,6 +36,7 @@ def rows(session: Session) -> list[DesignRow]:
                 saved=saved,
                 worst=None if revision is None else worst(session, revision),
                 edits_pending=pending(session, draft),
+                content=sha256(draft.document.encode()).hexdigest(),
             )
         )
     return sorted(found, key=lambda row: (row.name.casefold(), row.name))

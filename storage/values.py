@@ -78,13 +78,17 @@ class MadePart:
 
 @dataclass(frozen=True, slots=True)
 class DesignRow:
-    """One line of the shelf. ``edits_pending`` counts the steps between the draft and the revision it is based on."""
+    """One line of the shelf. ``edits_pending`` counts the steps between the draft and the revision it is based on.
+
+    ``worst`` is the newest revision's; ``content`` is the SHA-256 of the draft's document, as in its own figures.
+    """
 
     name: str
     revisions: int
     saved: str | None
     worst: Worst | None
     edits_pending: int
+    content: str
 
 
 @dataclass(frozen=True, slots=True)

@@ -24,7 +24,7 @@ def test_a_new_design_is_a_draft_without_revision(store: Store, design: Callable
     assert (draft.can_undo, draft.can_redo) == (False, False)
     assert draft.design == design("22k")
     assert store.draft("flood") == draft
-    assert store.designs() == [DesignRow("flood", 0, None, None, 0)]
+    assert store.designs() == [DesignRow("flood", 0, None, None, 0, design("22k").content)]
 
 
 def test_the_shelf_shows_the_newest_revision_and_its_worst_margin(
@@ -39,13 +39,21 @@ def test_the_shelf_shows_the_newest_revision_and_its_worst_margin(
     store.save("tilt", Note("first"), sheet(design(), driver=-1.0, latch=None))
     assert [row.name for row in store.designs()] == ["Flood", "frost", "tilt"]
     frost, tilt = store.designs()[1:]
-    assert frost == DesignRow("frost", 2, last.saved, Worst("load-voltage:timer:LS1", 0.05, Verdict.THIN), 1)
+    worst = Worst("load-voltage:timer:LS1", 0.05, Verdict.THIN)
+    assert frost == DesignRow("frost", 2, last.saved, worst, 1, design("33k").content)
     assert tilt.worst == Worst("load-voltage:latch:LS1", None, Verdict.UNKNOWN)
     for row in (frost, tilt):
         best = store.revision(row.name).sheet.worst
         assert best is not None
         assert row.worst is not None
         assert row.worst.id == best.id
+
+
+def test_the_content_of_a_draft_is_that_of_its_design_after_undo_and_redo(flood: Store, design: Callable) -> None:
+    flood.edit("flood", "R8", design("22k"))
+    for step in (flood.undo, flood.redo):
+        step("flood")
+        assert flood.designs()[0].content == flood.draft("flood").design.content
 
 
 def test_a_revision_without_checks_has_no_worst_margin(flood: Store, design: Callable, sheet: Callable) -> None:

@@ -10,7 +10,9 @@ from textual.pilot import Pilot
 
 from stagebook.storage import Store
 from stagebook.tui.screens.bench import BenchScreen
+from stagebook.tui.screens.compare import CompareScreen
 from stagebook.tui.screens.saving import Waiting
+from stagebook.tui.screens.shelf import ShelfScreen
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import RowList
 from stagebook.tui.widgets.status import Notice
@@ -292,6 +294,62 @@ async def test_the_draft_is_compared_with_the_revision_it_began_from(app: Stageb
         first = pilot.app.screen.query_one("#checks", RowList).rows[0]
         assert first.key == "arrival:timer:R7"
         assert "causes: R7 -10" in text
+
+
+async def test_a_comparison_waits_for_the_corners_and_then_shows(app: StagebookApp, gates: Gates) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await to_timer(pilot)
+        gates.shut("corners")
+        await pilot.press("full_stop", "c")
+        assert "compares with r2 as soon as" in notice(pilot)
+        gates.open()
+        await until(pilot, lambda: isinstance(pilot.app.screen, CompareScreen))
+        await settled(pilot)
+        assert "R7 390k > 430k" in seen(pilot)
+
+
+@pytest.mark.parametrize("key", ["c", "5"])
+async def test_a_comparison_waits_no_longer_when_told_and_breaks_into_no_value(
+    app: StagebookApp, gates: Gates, key: str
+) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        bench = await to_timer(pilot)
+        gates.shut("corners")
+        await pilot.press("full_stop", "c", key)
+        gates.open()
+        await settled(pilot)
+        assert pilot.app.screen is bench
+
+
+async def test_a_draft_keeps_its_figures_when_the_bench_is_left(app: StagebookApp, gates: Gates) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await to_timer(pilot)
+        await pilot.press("3", "5", "0", "k", "enter")
+        await settled(pilot)
+        studied = list(gates.studied)
+        await pilot.press("escape")
+        await until(pilot, lambda: isinstance(pilot.app.screen, ShelfScreen))
+        # 1 - 330k/350k = 5.7 %; the revision's was 1 - 330k/390k = 15.4 %
+        row = next(text for text in shown(pilot) if "flood" in text)
+        assert "1 edit" in row
+        assert "! +5 thin      draft: arrival R7" in row
+        await pilot.press("enter")
+        await settled(pilot)
+        assert gates.studied == studied
+        assert "worse than r2: arrival R7 -10" in seen(pilot)
+
+
+async def test_a_note_and_a_prediction_outlive_the_bench(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("f", "full_stop", "s", *"half a line", "escape", "escape")
+        await until(pilot, lambda: isinstance(pilot.app.screen, ShelfScreen))
+        assert "draft:" not in seen(pilot)
+        await pilot.press("enter")
+        await settled(pilot)
+        assert "FROZEN" in seen(pilot)
+        await pilot.press("s")
+        assert "half a line" in seen(pilot)
 
 
 async def test_a_part_is_added_by_kind_reference_and_nets(app: StagebookApp, shelf: Store) -> None:

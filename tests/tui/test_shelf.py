@@ -15,7 +15,7 @@ from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.status import Notice
 
-from .conftest import document, seen, settled, until
+from .conftest import document, flood, seen, settled, until
 
 SIZE = (80, 24)
 
@@ -26,6 +26,16 @@ async def test_the_shelf_lists_revision_time_and_worst_margin(app: StagebookApp)
         row = next(text for text in seen(pilot).splitlines() if "flood" in text)
         assert "r2" in row
         assert "= +15 pass" in row
+
+
+async def test_the_figure_of_a_revision_is_said_to_be_one_where_the_draft_differs(
+    app: StagebookApp, shelf: Store
+) -> None:
+    shelf.edit("flood", "R7 470k", flood(R7="470k"))
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        row = next(text for text in seen(pilot).splitlines() if "flood" in text)
+        assert "1 edit   = +15~ pass    r2: arrival R7" in row
 
 
 async def test_a_copy_of_a_design_opens_on_the_bench(app: StagebookApp, shelf: Store) -> None:

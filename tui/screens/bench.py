@@ -20,6 +20,7 @@ from ..caution_text import new_cautions
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..figures import FigureRow
+from ..remembered import Remembered
 from ..widgets.row_list import RowList
 from ..widgets.status import KeyLine
 from ..widgets.value_entry import ValueEntry
@@ -46,13 +47,14 @@ class BenchScreen(BenchView):
     """Editing, freezing and saving the draft that :class:`BenchView` shows, and the ways to other screens."""
 
     def __init__(
-        self, drafting: Drafting, computing: Computing, told: set[str] | None = None, only_looks: str = ""
+        self, drafting: Drafting, computing: Computing, remembered: Remembered | None = None, only_looks: str = ""
     ) -> None:
-        """``told`` are the cautions told already; ``only_looks`` says why the draft is not open to be edited here."""
-        super().__init__(drafting, computing)
-        self._told = set() if told is None else told
+        """``only_looks`` says why the draft is not open to be edited here."""
+        super().__init__(drafting, computing, remembered or Remembered())
         self._only_looks = only_looks
-        self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved)
+        self._compare_waits = False
+        notes = self.remembered.notes.setdefault(drafting.name, {})
+        self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved, notes)
 
     def on_mount(self) -> None:
         """Says why nothing can be edited, if so, and the cautions that come with the design."""
@@ -68,7 +70,7 @@ class BenchScreen(BenchView):
 
     def tell_cautions(self, words: str = "") -> None:
         """Says each caution once in a sitting, when a part or stage that brings it is in a design."""
-        text = new_cautions(self.design, self._told)
+        text = new_cautions(self.design, self.remembered.told)
         if text:
             self.say(f"{words}. {text}" if words else text)
 
@@ -253,6 +255,7 @@ class BenchScreen(BenchView):
     def action_freeze(self) -> None:
         """Holds figures back; the second time asks for the prediction and shows them."""
         if not self.figures.frozen:
+            self.remembered.frozen.add(self.drafting.name)
             self.figures = self.figures.freeze()
             self.say("figures are held back; f asks for a prediction and shows them")
             self.show_heading()
@@ -261,30 +264,42 @@ class BenchScreen(BenchView):
         def predicted(answers: Answers | None) -> None:
             if answers is None:
                 return
-            self._saving.prediction = answers["prediction"].strip()
-            self.figures = self.figures.thaw()
-            self.say("the note of the next revision begins with it" if self._saving.prediction else "shown again")
+            self._saving.written["prediction"] = answers["prediction"].strip()
+            self._thaw()
+            self.say("it goes into the note of the next revision" if self._saving.prediction else "shown again")
             self.show()
 
         example = "duration stays above 60 s (may stay empty)"
         field = Field("prediction", "prediction", self._saving.prediction, example)
         self.app.push_screen(Form("What will the figures say?", [field]), predicted)
 
+    def _thaw(self) -> None:
+        self.remembered.frozen.discard(self.drafting.name)
+        self.figures = self.figures.thaw()
+
     def action_save(self) -> None:
         """Asks for the note, then keeps the revision as soon as its corners are known."""
         self._saving.ask()
 
     def sheet_known(self, sheet: MarginSheet) -> None:
-        """A revision may wait for it."""
+        """A revision may wait for it, or a comparison."""
         self._saving.arrived(sheet)
+        if self._compare_waits and sheet.depth is not Depth.NOMINAL:
+            self._compare_waits = False
+            # Over a question or another screen, or in the middle of a value, it would take the keys away.
+            if self.is_current and isinstance(self.focused, RowList):
+                self.say("")
+                self.action_compare()
 
     def no_sheet(self, reason: str) -> None:
-        """A revision may wait for what will not come."""
+        """A revision or a comparison may wait for what will not come."""
+        self._compare_waits = False
         self._saving.refused(reason)
 
     def _saved(self, revision: Revision) -> None:
         known = None if incomplete(revision.sheet) else revision.sheet
-        self.figures = self.figures.thaw().compared_with(known)
+        self._thaw()
+        self.figures = self.figures.compared_with(known)
         stamp = "" if known else ", incomplete: its worst corners were not known"
         self.say(f"saved as r{revision.number}{stamp}")
         self.show()
@@ -307,10 +322,15 @@ class BenchScreen(BenchView):
         if base is None:
             self.refuse("nothing to compare with yet; s saves the first revision")
         elif self.figures.frozen:
-            self.refuse("figures are frozen; f shows them first")
+            self.refuse("the figures are held back; f shows them first")
+        elif self._compare_waits:
+            self._compare_waits = False
+            self.say("no longer waiting to compare")
         elif sheet is None or sheet.depth is Depth.NOMINAL:
-            self.refuse("the draft's corners are still being computed; c again when they are known")
+            self._compare_waits = True
+            self.say(f"compares with r{base.number} as soon as the draft's corners are known; c again: not any more")
         else:
+            self._compare_waits = False
             sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
             self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
 

@@ -28,6 +28,7 @@ from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..figures import FigureRow, Figures
 from ..messages import SheetArrived, SolverPreparing, StudyProgress, StudyRefused
+from ..remembered import Remembered
 from ..shown import line
 from ..widgets.chain import Chain
 from ..widgets.lines import Lines
@@ -46,10 +47,11 @@ class BenchView(Page[None]):
     WHERE = "bench"
     BINDINGS: ClassVar[list[BindingType]] = bindings("bench")
 
-    def __init__(self, drafting: Drafting, computing: Computing) -> None:
+    def __init__(self, drafting: Drafting, computing: Computing, remembered: Remembered) -> None:
         super().__init__()
         self.drafting = drafting
         self.computing = computing
+        self.remembered = remembered
         self.figures = Figures()
         self._request = 0
         self._progress = ""
@@ -82,6 +84,8 @@ class BenchView(Page[None]):
         base = self.drafting.base
         known = None if base is None or incomplete(base.sheet) else base.sheet
         self.figures = Figures(nominal=known, worst=known, before=known)
+        if self.drafting.name in self.remembered.frozen:
+            self.figures = self.figures.freeze()
         self.study()
 
     def on_unmount(self) -> None:
@@ -178,24 +182,25 @@ class BenchView(Page[None]):
     # -- studies
 
     def study(self) -> None:
-        """The draft changed: its figures are old and a new study begins, unless a revision holds its figures."""
+        """The draft changed: a study begins, unless a revision holds its figures or this sitting computed them."""
         self.figures = self.figures.edited()
-        stored = self.drafting.stored_figures()
-        if stored is not None and stored.lanes >= self.computing.lanes:
+        known = self.drafting.stored_figures() or self.remembered.sheet(self.design.content)
+        if known is not None:
+            self.figures = self.figures.arrived(known)
+        if known is not None and known.lanes >= self.computing.lanes:
             self.computing.cancel_study()
             self._request = NO_REQUEST
-            self.figures = self.figures.arrived(stored)
-            self._progress = spread_words(stored, self.computing.lanes)
-            self.show()
-            self.sheet_known(stored)
-            return
-        self._progress = "computing"
-        self._request = self.computing.study(self.design, self.post_message)
+        else:
+            self._request = self.computing.study(self.design, self.post_message)
+        self._progress = "computing" if known is None else spread_words(known, self.computing.lanes)
         self.show()
+        if known is not None:
+            self.sheet_known(known)
 
     def on_sheet_arrived(self, event: SheetArrived) -> None:
         """Figures of another depth."""
         if event.request == self._request:
+            self.remembered.keep(event.sheet)
             self.figures = self.figures.arrived(event.sheet)
             self._progress = spread_words(event.sheet, self.computing.lanes)
             self._lanes_of = "corners" if event.sheet.depth is Depth.NOMINAL else "spread"

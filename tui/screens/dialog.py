@@ -155,14 +155,22 @@ Answers = Mapping[str, str]
 
 
 class Form(ModalScreen[Answers | None]):
-    """A few lines to fill in; None when cancelled. ``check`` returns a refusal, which keeps the form open."""
+    """A few lines to fill in; None when cancelled. ``check`` returns a refusal, which keeps the form open.
+
+    ``left`` is told what was written when the form is cancelled.
+    """
 
     BINDINGS: ClassVar[list[BindingType]] = bindings("form")
 
     def __init__(
-        self, title: str, fields: Sequence[Field], check: Callable[[Answers], str | None] | None = None
+        self,
+        title: str,
+        fields: Sequence[Field],
+        check: Callable[[Answers], str | None] | None = None,
+        left: Callable[[Answers], None] | None = None,
     ) -> None:
         super().__init__()
+        self._left = left
         self._title: Line = line(Span(f" {title}", "strong"))
         self._fields = tuple(fields)
         self._check = check
@@ -193,12 +201,15 @@ class Form(ModalScreen[Answers | None]):
 
     def action_done(self) -> None:
         """Takes the form, unless the check refuses it."""
-        answers = {field.name: self.query_one(f"#field-{field.name}", TextLine).value for field in self._fields}
+        answers = self._answers()
         refusal = self._check(answers) if self._check else None
         if refusal:
             self.query_one(Notice).refuse(refusal)
         else:
             self.dismiss(answers)
+
+    def _answers(self) -> Answers:
+        return {field.name: self.query_one(f"#field-{field.name}", TextLine).value for field in self._fields}
 
     def action_up(self) -> None:
         """To the line above."""
@@ -210,4 +221,6 @@ class Form(ModalScreen[Answers | None]):
 
     def action_cancel(self) -> None:
         """Leaves everything as it is."""
+        if self._left is not None:
+            self._left(self._answers())
         self.dismiss(None)

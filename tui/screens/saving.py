@@ -73,6 +73,7 @@ class Saving:
         drafting: The draft to save.
         newest: The deepest sheet of the draft as it stands.
         saved: Told the revision.
+        written: What was written for the next revision already, by place; it outlives the bench.
     """
 
     def __init__(
@@ -81,21 +82,34 @@ class Saving:
         drafting: Drafting,
         newest: Callable[[], MarginSheet | None],
         saved: Callable[[Revision], None],
+        written: dict[str, str],
     ) -> None:
-        self.prediction = ""
+        self.written = written
         self._page = page
         self._drafting = drafting
         self._newest = newest
         self._saved = saved
-        self._written: dict[str, str] = {}
         self._waiting: Waiting | None = None
         self._no_corners = ""
+        self._note = Note("")
+
+    @property
+    def prediction(self) -> str:
+        """What was predicted of the next revision."""
+        return self.written.get("prediction", "")
 
     def ask(self) -> None:
         """Asks for the note."""
-        known = {"change": changes_words(self._drafting.changes()), "prediction": self.prediction, **self._written}
+        known = {"change": changes_words(self._drafting.changes()), **self.written}
         fields = [Field(name, label, known.get(name, ""), example) for name, label, example in _PLACES]
-        self._page.app.push_screen(Form("Why does this revision exist?", fields, _refusal), self._noted)
+        self._page.app.push_screen(Form("Why does this revision exist?", fields, _refusal, self._keep), self._noted)
+
+    def _keep(self, answers: Answers) -> None:
+        """Remembers what was written, but for the changes that are filled in anew each time."""
+        filled = changes_words(self._drafting.changes())
+        self.written |= {name: text.strip() for name, text in answers.items() if text.strip() or name in self.written}
+        if self.written.get("change") == filled:
+            del self.written["change"]
 
     def begun(self) -> None:
         """A new study runs: corners are to be expected again."""
@@ -116,7 +130,8 @@ class Saving:
     def _noted(self, answers: Answers | None) -> None:
         if answers is None:
             return
-        self._written = {name: text.strip() for name, text in answers.items()}
+        self._keep(answers)
+        self._note = Note(**{name: text.strip() for name, text in answers.items()})
         sheet = self._newest()
         if sheet is not None and sheet.depth is not Depth.NOMINAL:
             self._waited("ready")
@@ -130,9 +145,8 @@ class Saving:
             self._page.say("not saved; s asks again and still knows the note")
             return
         kept: list[Revision] = []
-        if self._page.attempt(lambda: kept.append(self._drafting.save(Note(**self._written), self._newest()))):
-            self._written = {}
-            self.prediction = ""
+        if self._page.attempt(lambda: kept.append(self._drafting.save(self._note, self._newest()))):
+            self.written.clear()
             self._saved(kept[0])
 
 

@@ -10,6 +10,7 @@ from textual.binding import BindingType
 
 from ...engine.design.document import Design
 from ...engine.errors import DesignError, EngineError
+from ...engine.results import MarginSheet
 from ...storage.errors import DesignOpen, StorageError, StoreBusy, StoreFull, StoreReadOnly
 from ...storage.store import Store
 from ...storage.values import DesignRow
@@ -17,7 +18,9 @@ from ..actions import bindings
 from ..computing import Computing
 from ..drafting import Drafting
 from ..messages import SolverPreparing
-from ..shown import MARKS, TONES, WORDS, Span, columns, line, percent
+from ..remembered import Remembered
+from ..shelf_text import shelf_heading, shelf_line
+from ..shown import Span, line
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
@@ -27,7 +30,6 @@ from .new_design import ask_new_design
 from .occupied import Occupied
 from .page import Page
 
-_WIDTHS = (18, 8, 16, 9)
 _ROW = "row"
 _LARGEST_DOCUMENT = 16_000_000
 
@@ -42,7 +44,7 @@ class ShelfScreen(Page[None]):
         super().__init__()
         self._store = store
         self._computing = computing
-        self._told: set[str] = set()
+        self._remembered = Remembered()
         self._preparing = False
 
     def compose_body(self) -> ComposeResult:
@@ -72,9 +74,18 @@ class ShelfScreen(Page[None]):
         self.say(busy if event.busy else event.trouble or "the solver is ready")
 
     def _show(self, name: str | None = None) -> None:
-        heading = line(Span(columns(_WIDTHS, ("design", "newest", "saved", "draft")) + " worst margin", "strong"))
-        rows = [Row(row.name, shelf_line(row)) for row in self._store.designs()]
-        self.query_one(RowList).show(rows, heading, name)
+        shown = self.query_one(RowList)
+        width = shown.size.width or self.app.size.width
+        rows = [Row(row.name, shelf_line(row, self._figures_of(row), width)) for row in self._store.designs()]
+        shown.show(rows, shelf_heading(width), name)
+
+    def _figures_of(self, row: DesignRow) -> MarginSheet | None:
+        """The draft's own figures, if they are known and not held back for a prediction."""
+        return None if row.name in self._remembered.frozen else self._remembered.sheet(row.content)
+
+    def on_resize(self) -> None:
+        """Another width: other columns."""
+        self.call_after_refresh(self.attempt, self._show)
 
     def action_open(self) -> None:
         """Opens the bench of the design under the hand."""
@@ -103,7 +114,7 @@ class ShelfScreen(Page[None]):
         self.app.push_screen(Occupied(refusal), chosen)
 
     def _bench(self, drafting: Drafting, only_looks: str = "") -> None:
-        self.app.push_screen(BenchScreen(drafting, self._computing, self._told, only_looks))
+        self.app.push_screen(BenchScreen(drafting, self._computing, self._remembered, only_looks))
 
     def action_quit(self) -> None:
         """Leaves; every edit is kept already."""
@@ -178,19 +189,6 @@ class ShelfScreen(Page[None]):
                 self.say(f"{taken[-1]} is on the shelf; Enter opens it")
 
         self.app.push_screen(Form("Import a design document", fields, take), done)
-
-
-def shelf_line(row: DesignRow) -> tuple[Span, ...]:
-    """One design: name, newest revision, when saved, edits since, worst margin with its verdict."""
-    newest = f"r{row.revisions}" if row.revisions else "-"
-    saved = row.saved.replace("T", " ")[:16] if row.saved else "not saved yet"
-    pending = f"{row.edits_pending} edit{'s' * (row.edits_pending != 1)}" if row.edits_pending else ""
-    left = Span(columns(_WIDTHS, (row.name, newest, saved, pending)) + " ")
-    if row.worst is None:
-        return line(left, Span("no margins yet", "dim"))
-    worst = row.worst
-    words = f"{MARKS[worst.verdict]} {percent(worst.margin)} {WORDS[worst.verdict]}"
-    return line(left, Span(f"{words:<15}", TONES[worst.verdict]), worst.id)
 
 
 def empty_design(answers: Answers) -> Design:
