@@ -13,12 +13,12 @@ if TYPE_CHECKING:
 # Outcomes by their place in the engine's order: silent, not known, runs on, false alarm, overheats, still alarms.
 MARKS = ("X", "?", "X", "X", "!", "=")
 TONES = ("fail", "unknown", "fail", "fail", "thin", "pass")
-_DO = ("silent", "not known", "run on for ever", "give a false alarm", "overheat a part", "still alarm")
+_DO = ("no alarm", "not known", "endless", "false", "overheat", "still alarm")
 _PART, _FAULT = 7, 27
 
 
 def counts_words(sheet: FaultSheet) -> str:
-    """How many faults come to which outcome: ``46 silent, 22 run on for ever``."""
+    """How many faults come to which outcome: ``46 no alarm, 22 endless``."""
     counted = [sum(fault.outcome == at for fault in sheet.faults) for at in range(len(_DO))]
     return ", ".join(f"{count} {word}" for count, word in zip(counted, _DO, strict=True) if count)
 

@@ -13,7 +13,7 @@ if TYPE_CHECKING:
     from ..engine.studies.causes import CausesSheet
     from ..engine.studies.explanation import Explanation
     from ..engine.studies.fault_outcomes import FaultSheet
-    from ..engine.studies.immunity import ImmunitySheet
+    from ..engine.studies.immunity_sheet import ImmunitySheet
     from ..engine.studies.waves import Waves
 
 Cancelled = Callable[[], bool]

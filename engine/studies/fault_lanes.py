@@ -14,7 +14,7 @@ from ..quantity import write
 from ..run import Observed
 from .evaluate import observe
 from .fault_heat import Heat
-from .fault_outcomes import WORDS, FaultResult, Outcome
+from .fault_outcomes import SAID, FaultResult, Outcome
 from .faulted import Faulted
 from .healthy import Behaviour
 
@@ -142,7 +142,7 @@ class FaultLanes:
         if hot:
             said.append(f"overheats {', '.join(hot)}")
         beside = {each: its for each, its, _ in seen if each in (Outcome.RUNS_ON, Outcome.FALSE_ALARM)}
-        said += [its for each, its in sorted(beside.items()) if WORDS[each] not in words]
+        said += [its for each, its in sorted(beside.items()) if SAID[each] not in words]
         detail = [self._otherwise(load, lane)] if outcome in (Outcome.STILL_ALARMS, Outcome.OVERHEATS) else []
         detail += [f"{ref} at {self._heat[ref][lane]:.1f} times its power" for ref in hot[:2]]
         standby, usual = self.standby(lane), self.standby()
@@ -170,21 +170,21 @@ class FaultLanes:
         healthy, watched = load.healthy, self._observed[load.healthy.sequence]
         failure = watched.failure(lane)
         if failure is not None:
-            return Outcome.UNKNOWN, f"{WORDS[Outcome.UNKNOWN]}: {failure}"
+            return Outcome.UNKNOWN, f"{SAID[Outcome.UNKNOWN]}: {failure}"
         click = min(CLICK, CLICK_SHARE * healthy.lasts) if healthy.alarms else CLICK
         early = load.early.lasts(watched, lane, healthy.ends) > click
         # What has been on since before its cause counts as an alarm, though it does not come on again.
         held = early and float(watched.value(load.largest)[lane]) > healthy.level
         alarms = held or load.alarm.lasts(watched, lane, healthy.ends) > click
+        where = "" if healthy.sequence == MAIN else f" in sequence {healthy.sequence}"
         if healthy.alarms and not alarms:
-            return Outcome.SILENT, WORDS[Outcome.SILENT] + (", after a false alarm" if early else "")
-        where = "" if healthy.sequence == MAIN else f" in {healthy.sequence}"
+            return Outcome.SILENT, SAID[Outcome.SILENT] + where + (", but once before" if early else "")
         if healthy.alarms and load.tail is not None and float(watched.value(load.tail)[lane]) > healthy.level:
-            also = f"; {WORDS[Outcome.FALSE_ALARM]}" if early else ""
-            return Outcome.RUNS_ON, WORDS[Outcome.RUNS_ON] + where + also
+            also = f"; {SAID[Outcome.FALSE_ALARM]}" if early else ""
+            return Outcome.RUNS_ON, SAID[Outcome.RUNS_ON] + where + also
         if early:
-            return Outcome.FALSE_ALARM, WORDS[Outcome.FALSE_ALARM] + where
-        return Outcome.STILL_ALARMS, WORDS[Outcome.STILL_ALARMS]
+            return Outcome.FALSE_ALARM, SAID[Outcome.FALSE_ALARM] + where
+        return Outcome.STILL_ALARMS, SAID[Outcome.STILL_ALARMS]
 
     def _otherwise(self, load: _LoadRows, lane: int) -> str:
         """What differs of an alarm that still comes: how late, how long."""

@@ -28,6 +28,16 @@ WORDS = {
     Outcome.OVERHEATS: "overheats",
     Outcome.STILL_ALARMS: "still alarms",
 }
+"""The names of the outcomes, as in JSON."""
+
+SAID = {
+    Outcome.SILENT: "no alarm when due",
+    Outcome.UNKNOWN: "not known",
+    Outcome.RUNS_ON: "alarm never ends",
+    Outcome.FALSE_ALARM: "alarms without cause",
+    Outcome.STILL_ALARMS: "still alarms",
+}
+"""What the unit does, for people. A part that overheats is named instead."""
 
 
 @dataclass(frozen=True, slots=True)

@@ -8,8 +8,6 @@ from __future__ import annotations
 
 import time
 from collections.abc import Callable
-from dataclasses import dataclass
-from typing import Any
 
 import numpy as np
 
@@ -26,58 +24,15 @@ from ..primitives.builder import RETURN
 from ..primitives.columns import AMBIENT, SUPPLY, Column, Lanes
 from ..run import never, run, silent
 from .evaluate import Progress, asks_of
+from .immunity_sheet import ANY, LEAST, MOST, NOT_YET, WIDTH, ImmunitySheet, NetImmunity
 from .lanes import GAIN, Setting, lanes_of, settings
 from .margins import worst_corners
 from .sequences import program_of, starts_of
 from .trials import TrialRun, begin_of
 
-LEAST, MOST = 1e-14, 1e-6  # C
-WIDTH = 100e-9  # s: short against everything that drains a net
 RESOLUTION = 1.05
-ANY = "any"
-NOT_YET = "not computed yet"
 CASE = Column("immunity", "case", 0.0, 0.0, 0.0)
 """Which net and sign a lane is about: 2 n for a positive, 2 n + 1 for a negative charge into net n."""
-
-
-@dataclass(frozen=True, slots=True)
-class NetImmunity:
-    """The least charge that trips an alarm: in C with its sign, None where none up to ``MOST`` does.
-
-    ``condition`` is the corner where it is least. 0 C: there is an alarm without any charge.
-    """
-
-    net: str
-    charge: float | None
-    sign: int | None
-    condition: str
-
-
-@dataclass(frozen=True, slots=True)
-class ImmunitySheet:
-    """All nets, the weakest first; the steepest supply in V/s that trips no latch, None where none does."""
-
-    design: str
-    content: str
-    seconds: float
-    nets: tuple[NetImmunity, ...]
-    slew: float | None
-    slew_condition: str
-
-    def as_json(self) -> dict[str, Any]:
-        """The sheet as JSON values."""
-        return {
-            "design": self.design,
-            "content": self.content,
-            "seconds": self.seconds,
-            "width": WIDTH,
-            "most": MOST,
-            "nets": [
-                {"net": found.net, "charge": found.charge, "sign": found.sign, "condition": found.condition}
-                for found in self.nets
-            ],
-            "slew": {"limit": self.slew, "condition": self.slew_condition},
-        }
 
 
 def study(

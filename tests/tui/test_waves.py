@@ -139,7 +139,8 @@ async def test_leaving_stops_the_run_and_a_refusal_is_said(with_waves: Stagebook
     async with with_waves.run_test(size=SIZE) as pilot:
         runs.held = True
         await open_waves(pilot)
-        assert "computing" in shown(pilot)[0]
+        assert "being computed" in shown(pilot)[0]
+        assert "being computed; this fills by itself" in shown(pilot)[1]
         await pilot.press("b")
         await until(pilot, lambda: runs.cancelled)
         assert isinstance(pilot.app.screen, BenchScreen)

@@ -2,40 +2,30 @@
 
 from __future__ import annotations
 
-from argparse import ArgumentParser, Namespace
+from argparse import Namespace
+from collections.abc import Callable
 from typing import TYPE_CHECKING
 
 from ..fault_text import counts_words, mark_of
-from .printing import json_argument, print_json, print_table, print_words
-from .waiting import computable, prepare_solver, progress
-from .what import Subject, find, subject_arguments
+from .one_study import arguments, run_study
+from .printing import print_table, print_words
+from .what import Subject
 
 if TYPE_CHECKING:
     from ...engine.studies.fault_outcomes import FaultSheet
 
-
-def arguments(parser: ArgumentParser) -> None:
-    """Declare WHAT and ``--json``."""
-    subject_arguments(parser)
-    json_argument(parser)
+__all__ = ["arguments", "run"]
 
 
 def run(asked: Namespace) -> int:
     """Compute and print the outcome of every fault."""
-    subject = find(asked)
-    prepare_solver(lambda: computable(subject.design))
-    # Imported here: it loads the compiler, which must find its folder chosen.
+    return run_study(asked, "faults: fault", _study, _print)
+
+
+def _study() -> Callable[..., FaultSheet]:
     from ...engine.studies.faults import study
 
-    with progress("faults: fault") as show:
-        sheet = study(subject.design, progress=show)
-    if asked.json:
-        found = sheet.as_json()
-        del found["design"]
-        print_json({"design": subject.name, "revision": subject.revision, **found})
-    else:
-        _print(subject, sheet)
-    return 0
+    return study
 
 
 def _print(subject: Subject, sheet: FaultSheet) -> None:

@@ -20,6 +20,7 @@ from ..widgets.rule import Rule
 from ..widgets.wave_plot import WavePlot
 from .dialog import Mark as Marking
 from .page import Page
+from .study_page import BY_ITSELF, COMPUTING, PREPARING
 
 if TYPE_CHECKING:
     from ...engine.studies.waves import Waves
@@ -49,6 +50,7 @@ class WavesScreen(Page[None]):
         self._cursor = 0
         self._request = 0
         self._progress = ""
+        self._nothing_yet = ""
 
     def compose_body(self) -> ComposeResult:
         """Title, the moment under the cursor with its values, the picture."""
@@ -74,8 +76,9 @@ class WavesScreen(Page[None]):
 
     def _ask(self) -> None:
         self._waves = None
-        self._progress = "~ computing"
+        self._progress = f"~ {COMPUTING}"
         self._window = (0.0, read(self._design.sequences[self._sequence].ends, "s"))
+        self._nothing_yet = f"{COMPUTING}; {BY_ITSELF}"
         self._request = self._computing.waves(self._design, self._sequence, self.post_message)
         self._show()
 
@@ -106,6 +109,8 @@ class WavesScreen(Page[None]):
         how = "stretched behind events" if self._stretched else "even"
         self.query_one("#title", Lines).show(line(title, f"   time {how}   {self._progress}"))
         if self._waves is None:
+            self.query_one("#moment", Lines).show(line(f" {self._nothing_yet}"))
+            self.query_one("#readings", Lines).show()
             return
         plot, scale = self.query_one(WavePlot), self._scale()
         rows = plot.room[1]
@@ -137,12 +142,14 @@ class WavesScreen(Page[None]):
         """The circuit cannot be computed as it stands."""
         if event.request == self._request:
             self._progress = "not computed"
+            self._nothing_yet = "nothing can be drawn; the reason stands below"
             self._show()
             self.refuse(event.reason)
 
     def on_solver_preparing(self, event: SolverPreparing) -> None:
         """The first start on this machine."""
-        self._progress = "preparing the solver" if event.busy else "~ computing"
+        self._progress = "preparing the solver" if event.busy else f"~ {COMPUTING}"
+        self._nothing_yet = f"{PREPARING if event.busy else COMPUTING}; {BY_ITSELF}"
         self._show()
 
     # -- the cursor

@@ -77,6 +77,12 @@ class RowList(TonedWidget, can_focus=True):
         self._keep_in_sight()
         self._repaint(before)
 
+    def say_empty(self, words: str) -> None:
+        """What stands there while there are no rows."""
+        before = self._picture()
+        self._empty = words
+        self._repaint(before)
+
     def move_to(self, index: int) -> None:
         """Puts the hand on a row, as near as there is one, and says so."""
         index = max(0, min(index, len(self._rows) - 1))

@@ -83,7 +83,7 @@ def test_what_a_fault_does_beside_its_worst_is_said_too() -> None:
     sheet = of_buzzer()
     # Stuck closed: LS1 is also on before S1 is meant to close; stand-by draws what LS1 does, 30 mA at 6 V.
     stuck = outcome(sheet, "S1", "stuck closed")
-    assert stuck.words == "runs on for ever; false alarm"
+    assert stuck.words == "alarm never ends; alarms without cause"
     assert stuck.standby == pytest.approx(0.030 + 5.3e-3, rel=0.05)  # and R1 some 5.3 mA
     assert stuck.drains
     assert "in stand-by instead of" in stuck.detail

@@ -8,7 +8,8 @@ import pytest
 
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError
-from stagebook.engine.studies.immunity import MOST, ImmunitySheet, NetImmunity, study
+from stagebook.engine.studies.immunity import study
+from stagebook.engine.studies.immunity_sheet import MOST, ImmunitySheet, NetImmunity
 
 from ..checks.sheets import design, exact, sounder
 from ..checks.test_supply_slew import TRIP, coupled
