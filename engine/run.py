@@ -26,6 +26,7 @@ from .primitives.signals import BRANCH_CURRENT, Anchor, Row, Signal
 RELATIVE = 1e-3
 ABSOLUTE = 1e-4  # V
 ABSOLUTE_CURRENT = 1e-6  # A
+ABSOLUTE_RISE = 0.01  # K
 # Factors on nets that carry timing capacitors: an interval's error is that of a slow voltage, not of what it triggers.
 TIGHT, TIGHT_ABSOLUTE = 0.03, 0.2
 BLOCK = 64  # most lanes handed to a thread at a time
@@ -43,6 +44,8 @@ FAMILY = {
     layout.S_TRANSPORT_POWER: layout.TRANSPORT,
     layout.S_DRAIN_CURRENT: layout.CHANNEL,
     layout.S_CHANNEL_POWER: layout.CHANNEL,
+    layout.S_WARM_CURRENT: layout.WARM,
+    layout.S_WARM_POWER: layout.WARM,
 }
 ENDED = {
     layout.UNSOLVED: "could not be solved",
@@ -176,6 +179,7 @@ def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
     rtol = np.full(free, relative)
     atol = np.full(free, ABSOLUTE * scale)
     atol[nets:] = ABSOLUTE_CURRENT * scale
+    atol[free - len(circuit.builder.temperatures) :] = ABSOLUTE_RISE * scale
     for stage in circuit.design.stages:
         for role, ref in stage.roles.items():
             if role.startswith("timing_capacitor"):

@@ -86,6 +86,8 @@ def _npn(part: Part) -> bool:
 def _inrush(view: View, load: Part) -> Inrush | str | None:
     """The inrush at a voltage; the datum that is missing; None where the load has no inrush of its own."""
     bench = view.bench(load.ref)
+    if bench.inrush is not None:
+        return bench.inrush
     kind = kinds()[load.kind]
     if "surge" not in {**kind.fields, **kind.data}:
         # What a coil draws settles from below; of other parts the simulation shows what flows.

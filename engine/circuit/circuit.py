@@ -24,6 +24,7 @@ from ..primitives.builder import (
     constant,
     junction_array,
     transport_array,
+    warm_array,
 )
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
 from ..quantity import read
@@ -63,7 +64,7 @@ class Circuit:
         try:
             return self.nets[self.builder.net(net)]
         except KeyError:
-            hidden = {SUPPLY_SOURCE, *self.builder.injectors}
+            hidden = {SUPPLY_SOURCE, *self.builder.injectors, *self.builder.temperatures}
             known = ", ".join(sorted(n for n in self.nets if n not in hidden))
             raise CircuitError(f"net '{net}' is not in the design; write one of {known}") from None
 
@@ -96,6 +97,7 @@ class Circuit:
         junctions = [junction_array(laws, lanes) for *_, laws in made.junctions]
         transports = [transport_array(laws, lanes) for *_, laws in made.transports]
         channels = [channel_array(laws, lanes) for *_, laws in made.channels]
+        warms = [warm_array(laws, lanes) for *_, laws in made.warms]
         laws: list[Law] = []
         for guard in made.guards.values():
             laws += [guard.on, guard.off, guard.on_delay, guard.off_delay]
@@ -105,7 +107,7 @@ class Circuit:
         moved = layout.zeros(lanes.count, len(laws))
         for k, law in enumerate(laws):
             moved[:, k] = law(lanes)
-        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports, *channels, moved], axis=1))
+        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports, *channels, *warms, moved], axis=1))
 
 
 def build(design: Design, inject: Sequence[str] = ()) -> Circuit:
@@ -131,7 +133,9 @@ def build(design: Design, inject: Sequence[str] = ()) -> Circuit:
         known.insert(0, SUPPLY_NET)
     free = [net for net in builder.nets if net not in known]
     nets = {name: n for n, name in enumerate(free)}
-    n_free = len(free) + len(builder.branches)
+    currents = len(free) + len(builder.branches)
+    nets.update({name: currents + n for n, name in enumerate(builder.temperatures)})
+    n_free = currents + len(builder.temperatures)
     nets.update({name: n_free + n for n, name in enumerate(known)})
     sources = (*known, *(source for *_, source in builder.branches if source is not None))
     for operated in builder.operated:
@@ -229,13 +233,14 @@ def _topology(
     junctions: list[tuple[int, ...]] = [(nets[a], nets[b]) for a, b, _ in builder.junctions]
     transports: list[tuple[int, ...]] = [(nets[c], nets[b], nets[e]) for c, b, e, *_ in builder.transports]
     channels: list[tuple[int, ...]] = [(nets[d], nets[g], nets[s]) for d, g, s, *_ in builder.channels]
+    warms: list[tuple[int, ...]] = [(nets[a], nets[t], nets[b]) for a, t, b, _ in builder.warms]
     states = {state: n for n, state in enumerate(builder.guards)}
     guards: list[tuple[int, ...]] = [
         (*_watched(guard, nets, n_nets, return_net), nets[state]) for state, guard in builder.guards.items()
     ]
     contacts: list[tuple[int, ...]] = [(states[each.state], int(each.make)) for each in builder.operated]
     pattern = Pattern(n_free)
-    for nets_of_one in (*conductances, *capacitances, *junctions, *transports, *channels):
+    for nets_of_one in (*conductances, *capacitances, *junctions, *transports, *channels, *warms):
         pattern.couple(nets_of_one)
     for a, b, row in branches:
         pattern.couple((a, row))
@@ -256,6 +261,7 @@ def _topology(
         junctions,
         transports,
         channels,
+        warms,
         guards,
         contacts,
     )
@@ -269,7 +275,8 @@ def _topology(
             elif family == layout.GUARD:
                 slots = []
             elif family == layout.CONTACT:
-                slots = [builder.operated[k].conductance]  # conductances come first, with one parameter each
+                moved = builder.operated[k]
+                slots = [rows[group[moved.family] + moved.conductance][layout.E_PARAMETER]]
             else:
                 slots = [slot(i, j) for i in at for j in at]
             head = [*at, *[0] * (3 - len(at)), own[family][k] if family in own else 0, parameter]

@@ -51,7 +51,7 @@ class Timeline:
         self.quantities: dict[str, Wave] = {}
         for ref, settable in circuit.builder.settables.items():
             self.quantities[ref] = Wave(settable.start(lanes))
-            self.switches[ref] = Wave(settable.siemens(lanes, self.quantities[ref].values[0]))
+            self.switches[ref] = Wave(settable.written(lanes, self.quantities[ref].values[0]))
         self.sines = layout.zeros(lanes.count, len(circuit.source_names), 3)
         for name in (SUPPLY_SOURCE, SUPPLY_NET):
             if name in self.sources:
@@ -72,10 +72,12 @@ class Timeline:
         value = law(self.lanes)
         return value if np.ndim(value) else float(value)
 
-    def _conductance(self, ref: str) -> int:
-        """The number of the conductance that a switch or a settable part is."""
+    def _parameter(self, ref: str) -> int:
+        """The parameter that events set of a switch or a settable part."""
         settable = self.circuit.builder.settables.get(ref)
-        return self.circuit.builder.switches[ref][0] if settable is None else settable.index
+        if settable is None:
+            return self.circuit.parameter(layout.CONDUCTANCE, self.circuit.builder.switches[ref][0])
+        return self.circuit.parameter(settable.family, settable.index) + settable.place
 
     def _generators(self) -> None:
         for ref, source in self.circuit.builder.generators.items():
@@ -236,7 +238,7 @@ class Timeline:
         for ref, settable in self._named(name):
             value = settable.reading(to)
             self.quantities[ref].step(at, value)
-            self.switches[ref].step(at, settable.siemens(self.lanes, value))
+            self.switches[ref].step(at, settable.written(self.lanes, value))
 
     def ramp_level(self, name: str, at: Number, during: float, to: str | float) -> None:
         """As :meth:`set_level`, reached evenly within ``during``."""
@@ -252,7 +254,7 @@ class Timeline:
             def siemens(
                 share: float, settable: Settable = settable, begin: Number = begin, end: Number = end
             ) -> Number:
-                return settable.siemens(self.lanes, np.asarray(begin + (np.asarray(end) - begin) * share))
+                return settable.written(self.lanes, np.asarray(begin + (np.asarray(end) - begin) * share))
 
             past = 0.0
             for share in ramp_shares(siemens):
@@ -307,9 +309,7 @@ class Timeline:
             restart=ints(restart),
             source=source,
             sine=self.sines,
-            switched=ints(
-                [self.circuit.parameter(layout.CONDUCTANCE, self._conductance(ref)) for ref in self.switches]
-            ),
+            switched=ints([self._parameter(ref) for ref in self.switches]),
             switch=switch,
         )
 

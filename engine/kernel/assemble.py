@@ -40,6 +40,7 @@ from .layout import (
     Places,
 )
 from .vectors import Flags, Numbers, add, any_of, at, put, root, where
+from .warm import extrapolate_warm, warm
 
 
 @leaf
@@ -310,6 +311,7 @@ def evaluate(
     limits = junctions(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
     limits = transports(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
     channels(element, group, p, ah, x, i, a, seen, flow, slope)
+    warm(element, group, p, ah, x, i, a, seen, flow, slope)
     return limits
 
 
@@ -407,6 +409,7 @@ def extrapolate(
         add(bend, nb, sign * (ibe + ibc))
         add(bend, ne, -sign * (over + ibe))
     extrapolate_channels(element, group, p, ah, step, seen, slope, flow, di, bend)
+    extrapolate_warm(element, group, p, ah, step, seen, slope, flow, di, bend)
     for k in range(i.shape[0]):
         add(i, k, at(di, k))
         add(q, k, at(dq, k))

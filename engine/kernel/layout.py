@@ -1,7 +1,8 @@
 """The arrays that the kernel works on. Everything is a C-contiguous int64 or float64 array, one row per lane.
 
-Unknowns come first in the vector x: free nets 0 .. n_nets-1, then branch currents up to n_free-1; known nets follow,
-the last of them being the return 0V, and then the states of guards, up to n_all-1. A matrix slot equal to the number of
+Unknowns come first in the vector x: free nets 0 .. n_nets-1, then branch currents, then temperatures (kelvin above the
+ambient) up to n_free-1; known nets follow, the last of them being the return 0V, and then the states of guards, up to
+n_all-1. A matrix slot equal to the number of
 stored entries is a dump: rows and columns of known nets are added there and never read. Arrays are passed to the inner
 functions one by one: a tuple of arrays costs more to hand over than the arithmetic of a small circuit. What is used as
 an index is unsigned (``Places``): a signed one is tested for counting from the end at every access. While lanes are
@@ -21,17 +22,18 @@ Bytes = NDArray[np.uint8]
 Places = NDArray[np.uint32]
 
 # Families of primitives, in the order in which they stand in ``Topology.element``.
-CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT, CHANNEL = 0, 1, 2, 3, 4, 5
-GUARD, CONTACT = 6, 7
-FAMILIES = 8
+CONDUCTANCE, CAPACITANCE, BRANCH, JUNCTION, TRANSPORT, CHANNEL, WARM = 0, 1, 2, 3, 4, 5, 6
+GUARD, CONTACT = 7, 8
+FAMILIES = 9
 
 # Columns of ``Topology.element``.
-E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; drain, gate, source; of a branch a, b and
-#                          its row; of a guard two unknowns and the row of its state; of a contact its guard, 1 = make
+E_A, E_B, E_C = 0, 1, 2  # nets; anode, cathode; collector, base, emitter; drain, gate, source; of a warm one a, its
+#                          temperature, b; of a branch a, b and its row; of a guard two unknowns and the row of its
+#                          state; of a contact its guard, 1 = make
 E_EXTRA = 3  # 1 npn or n-channel, 0 pnp or p-channel; of a branch its source from 1, 0 = none; guard: 1 = either sign
 E_PARAMETER = 4  # first of its parameters in a lane's row
 E_SLOT = (
-    5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; transistor: 3 by 3; contact: parameter set
+    5  # matrix slots: aa ab ba bb; branch: row-a row-b row-row a-row b-row; three nets: 3 by 3; contact: parameter set
 )
 ELEMENT_WIDTH = 14
 
@@ -72,11 +74,19 @@ C_MODULATION = np.uint32(2)  # 1/V
 CHANNEL_WIDTH = 3
 CHANNEL_SLOPES = np.uint32(2)
 
+# A warm conductance's parameters: ln g = W_LEVEL + W_POWER ln(T - W_OFFSET) + W_BETA / T, T = W_AMBIENT + rise; it
+# keeps its conductance, how the current rises with temperature, and how the radiated heat does.
+W_LEVEL, W_POWER, W_BETA = np.uint32(0), np.uint32(1), np.uint32(2)  # g in S, T in K
+W_OFFSET, W_AMBIENT = np.uint32(3), np.uint32(4)  # K
+W_RADIATION = np.uint32(5)  # W/K4
+WARM_WIDTH = 6
+WARM_SLOPES = np.uint32(3)
+
 G_ON, G_OFF, G_ON_DELAY, G_OFF_DELAY = np.uint32(0), np.uint32(1), np.uint32(2), np.uint32(3)
 CT_CLOSED, CT_OPEN, CT_DELAY = np.uint32(0), np.uint32(1), np.uint32(2)  # S, S, s behind the armature
 CT_BOUNCE, CT_TIMES = np.uint32(3), np.uint32(4)  # s, how often it opens again
 
-PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH, CHANNEL_WIDTH, 4, 5)
+PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH, CHANNEL_WIDTH, WARM_WIDTH, 4, 5)
 """How many parameters a primitive of each family has; a branch has henry and ohm."""
 
 # Kinds of signal terms; the index is that of an unknown, or of an element.
@@ -84,6 +94,7 @@ S_UNKNOWN, S_CONDUCTANCE_CURRENT, S_CONDUCTANCE_POWER = 0, 1, 2
 S_COLLECTOR_CURRENT, S_BASE_CURRENT, S_TRANSPORT_POWER = 3, 4, 5
 S_JUNCTION_CURRENT, S_JUNCTION_POWER = 6, 7
 S_DRAIN_CURRENT, S_CHANNEL_POWER = 8, 9
+S_WARM_CURRENT, S_WARM_POWER = 10, 11
 
 # Kinds of observation rows.
 R_CROSSING, R_LEVEL, R_MAXIMUM, R_MINIMUM, R_INTEGRAL, R_SLEW = 0, 1, 2, 3, 4, 5

@@ -17,6 +17,8 @@ from .layout import (
     JUNCTION,
     SLOPES,
     TRANSPORT,
+    WARM,
+    WARM_SLOPES,
     Floats,
     Places,
     Topology,
@@ -48,8 +50,10 @@ def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) 
     rows, columns, slots = np.array(_places(top), dtype=np.int64).reshape(-1, 3).T
     i, q = zeros(n_all, WIDTH), zeros(n_all, WIDTH)
     channels = int(top.group[CHANNEL + 1]) - int(top.group[CHANNEL])
-    flow = zeros(junctions + 2 * transports + 2 * channels, WIDTH)
-    slope = zeros(2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels, WIDTH)
+    warm = int(top.group[WARM + 1]) - int(top.group[WARM])
+    flow = zeros(junctions + 2 * (transports + channels + warm), WIDTH)
+    slopes = 2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels + int(WARM_SLOPES) * warm
+    slope = zeros(slopes, WIDTH)
     c, g, a = (zeros(entries + 1, WIDTH) for _ in range(3))
     steps = np.repeat([[0.0], [1.0]], WIDTH, axis=1)
     limited = zeros(1, WIDTH)
@@ -103,13 +107,13 @@ def _look(
 def _places(top: Topology) -> list[tuple[int, int, int]]:
     """Row, column and slot of every entry between free unknowns that some element has."""
     found = {}
-    for family in range(CHANNEL + 1):
+    for family in range(WARM + 1):
         for element in top.element[top.group[family] : top.group[family + 1]].astype(int):
             if family == BRANCH:
                 a, b, own = element[E_A : E_A + 3]
                 pairs = [(own, a), (own, b), (own, own), (a, own), (b, own)]
             else:
-                nets = element[E_A : E_A + (3 if family in (TRANSPORT, CHANNEL) else 2)]
+                nets = element[E_A : E_A + (3 if family in (TRANSPORT, CHANNEL, WARM) else 2)]
                 pairs = [(r, k) for r in nets for k in nets]
             for n, pair in enumerate(pairs):
                 if max(pair) < top.size[1]:

@@ -30,6 +30,8 @@ from .layout import (
     TRACE_FULL,
     TRANSPORT,
     UNSOLVED,
+    WARM,
+    WARM_SLOPES,
     Bytes,
     Control,
     Floats,
@@ -131,7 +133,9 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
     junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
     channels = int(top.group[CHANNEL + 1]) - int(top.group[CHANNEL])
-    devices = junctions + 2 * transports + 2 * channels
+    warm = int(top.group[WARM + 1]) - int(top.group[WARM])
+    devices = junctions + 2 * (transports + channels + warm)
+    slopes = 2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels + int(WARM_SLOPES) * warm
     signals = rows.signal.size - 1
     guards = int(top.group[CONTACT]) - int(top.group[GUARD])
     contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
@@ -142,7 +146,7 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         *(zeros(free, WIDTH) for _ in range(8)),
         *(zeros(entries + 1, WIDTH) for _ in range(3)),
         *(zeros(devices, WIDTH) for _ in range(5)),
-        zeros(2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels, WIDTH),
+        zeros(slopes, WIDTH),
         zeros(parameters, WIDTH),
         zeros(sources, WIDTH),
         zeros(sources, WIDTH),

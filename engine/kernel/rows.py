@@ -37,6 +37,8 @@ from .layout import (
     S_JUNCTION_CURRENT,
     S_JUNCTION_POWER,
     S_UNKNOWN,
+    S_WARM_CURRENT,
+    S_WARM_POWER,
     SEEN,
     TRANSPORT,
     Floats,
@@ -78,10 +80,10 @@ def read_signals(
                 v = at(flow, k - group[JUNCTION])
                 if kind == S_JUNCTION_POWER:
                     v = v * (at(x, element[k, E_A]) - at(x, element[k, E_B]))
-            elif kind == S_DRAIN_CURRENT or kind == S_CHANNEL_POWER:
+            elif kind == S_DRAIN_CURRENT or kind == S_CHANNEL_POWER or kind == S_WARM_CURRENT or kind == S_WARM_POWER:
                 own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
                 v = at(flow, own)
-                if kind == S_CHANNEL_POWER:
+                if kind == S_CHANNEL_POWER or kind == S_WARM_POWER:
                     v = v * (at(x, element[k, E_A]) - at(x, element[k, E_C]))
             else:
                 own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]

@@ -113,6 +113,7 @@ _CLAMP: Figures = {
     "capacitance": "3 nF",
 }
 _FILM_RESISTOR: Figures = {"rating": ("0.25 W", "0.25 W", "0.25 W", "up to 70 C")}
+_LAMP: Figures = {"cold_ratio": ("10", "12", "14", "hot / cold resistance"), "inrush_time": "20 ms"}
 _SIGNAL_DIODE: Figures = {
     "forward_low": "0.60 V",
     "forward_low_current": "1 mA",
@@ -215,6 +216,10 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
         },
     },
     "fuse": {"1 A slow": {"rated_current": "1 A", "melting": "2 A2s", "resistance": "0.1 ohm"}},
+    "lamp": {
+        "12 V 2 W lamp": {**_LAMP, "current": ("150 mA", "167 mA", "185 mA", "12 V"), "rated_voltage": "12 V"},
+        "24 V 10 W lamp": {**_LAMP, "current": ("375 mA", "417 mA", "460 mA", "24 V"), "rated_voltage": "24 V"},
+    },
     "thermistor": {"ntc": {"beta": "3950 K"}},
     "light_resistor": {"ldr": {"gamma": "0.7"}},
     "inductor": {"choke": {"inductance": "1 mH", "resistance": "1.5 ohm", "i_max": "0.5 A"}},

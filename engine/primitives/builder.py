@@ -12,7 +12,7 @@ from ..errors import CircuitError
 from ..kernel import layout
 from ..kernel.layout import Floats
 from .columns import Column, Group, Lanes
-from .signals import BRANCH_CURRENT, Signal
+from .signals import BRANCH_CURRENT, Signal, temperature_of
 
 Law = Callable[[Lanes], "Floats | float"]
 Laws = dict[str, Law]
@@ -45,6 +45,14 @@ _CHANNEL_PLACES = {
     "transconductance": layout.C_TRANSCONDUCTANCE,
     "modulation": layout.C_MODULATION,
 }
+_WARM_PLACES = {
+    "level": layout.W_LEVEL,
+    "power": layout.W_POWER,
+    "beta": layout.W_BETA,
+    "offset": layout.W_OFFSET,
+    "ambient": layout.W_AMBIENT,
+    "radiation": layout.W_RADIATION,
+}
 
 
 def constant(value: float) -> Law:
@@ -74,6 +82,7 @@ class Handle:
             "junction": layout.S_JUNCTION_CURRENT,
             "transport": layout.S_COLLECTOR_CURRENT,
             "channel": layout.S_DRAIN_CURRENT,
+            "warm": layout.S_WARM_CURRENT,
         }
         return Signal(((kinds[self.family], self.index, 1.0),))
 
@@ -90,6 +99,7 @@ class Handle:
             "junction": layout.S_JUNCTION_POWER,
             "transport": layout.S_TRANSPORT_POWER,
             "channel": layout.S_CHANNEL_POWER,
+            "warm": layout.S_WARM_POWER,
         }
         return Signal(((kinds[self.family], self.index, 1.0),))
 
@@ -100,6 +110,7 @@ class Settable:
 
     ``start`` is that quantity before any event, ``reading`` turns what an event writes into a number, ``siemens`` gives
     the conductance at a quantity. ``follows`` names what the part follows, when events may set it by that name too.
+    A warm conductance (``family``) is set by its parameter ``place`` instead, to what ``setting`` gives.
     """
 
     index: int
@@ -107,6 +118,13 @@ class Settable:
     reading: Callable[[str | float], float]
     siemens: Callable[[Lanes, Floats | float], Floats | float]
     follows: str | None = None
+    family: int = layout.CONDUCTANCE
+    place: int = 0
+    setting: Callable[[Lanes, Floats | float], Floats | float] | None = None
+
+    def written(self, lanes: Lanes, quantity: Floats | float) -> Floats | float:
+        """What the parameter that events set becomes at a quantity."""
+        return (self.siemens if self.setting is None else self.setting)(lanes, quantity)
 
 
 @dataclass(frozen=True, slots=True)
@@ -126,7 +144,10 @@ class Guard:
 
 @dataclass(frozen=True, slots=True)
 class Operated:
-    """A conductance that a guard moves: its place, which guard, and how it closes and opens."""
+    """A conductance that a guard moves: its place, which guard, and how it closes and opens.
+
+    Of a warm conductance (``family``) ``closed`` and ``opened`` are the logarithms of its level.
+    """
 
     conductance: int
     state: str
@@ -136,14 +157,16 @@ class Operated:
     delay: Law
     bounce_for: float = 0.0
     bounce_times: int = 0
+    family: int = layout.CONDUCTANCE
 
 
 @dataclass
 class Bench:
     """What can be observed at a part, and the laws that hand formulas need.
 
-    ``currents`` by pin name; ``armature``: the state of what a coil moves; ``on``: the nets and the level in volts at
-    which a load counts as on; ``draw``: current of a load at a voltage; of a transistor ``gain`` as its figure states
+    ``currents`` by pin name; ``armature``: the state of what a coil moves; ``rise``: how far above the ambient it is,
+    in K; ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of a load at a
+    voltage, ``inrush``: what it draws there cold; of a transistor ``gain`` as its figure states
     it, ``gain_at`` and ``base_voltage`` at a collector current in A, and ``leakage`` in A; of a capacitor
     ``leak_conductance`` in S.
     """
@@ -151,8 +174,10 @@ class Bench:
     currents: dict[str, Signal] = field(default_factory=dict)
     armature: str | None = None
     power: Signal | None = None
+    rise: Signal | None = None
     on: tuple[str, str, float] | None = None
     draw: Callable[[Lanes, Floats], Floats] | None = None
+    inrush: Callable[[Lanes, Floats], Floats] | None = None
     gain: Law | None = None
     gain_at: Callable[[Lanes, Floats], Floats] | None = None
     base_voltage: Callable[[Lanes, Floats | float], Floats] | None = None
@@ -173,6 +198,8 @@ class Builder:
         self.junctions: list[tuple[str, str, Laws]] = []
         self.transports: list[tuple[str, str, str, int, Laws]] = []
         self.channels: list[tuple[str, str, str, int, Laws]] = []
+        self.temperatures: dict[str, None] = {}
+        self.warms: list[tuple[str, str, str, Laws]] = []
         self.switches: dict[str, tuple[int, Callable[[str], Law]]] = {}
         self.settables: dict[str, Settable] = {}
         self.guards: dict[str, Guard] = {}
@@ -246,6 +273,24 @@ class Builder:
         self.channels.append((*nets, polarity, laws))
         return Handle("channel", len(self.channels) - 1, nets)
 
+    def temperature(self, ref: str, per_kelvin: Law, capacity: Law) -> str:
+        """Add the temperature of a part, as a rise above its surroundings, and return its name.
+
+        ``per_kelvin``: watts that leave it for each kelvin; ``capacity``: joules for each kelvin. It is held beside the
+        nets, with these as a conductance and a capacitance to 0V, but is no net: no part can be on it.
+        """
+        name = temperature_of(ref)
+        self.temperatures.setdefault(name)
+        self.conductances.append((name, RETURN, per_kelvin))
+        self.capacitances.append((name, RETURN, capacity))
+        return name
+
+    def warm(self, a: str, b: str, temperature: str, laws: Laws) -> Handle:
+        """A conductance that its own temperature changes; ``laws`` by the names of ``_WARM_PLACES``, in kelvin."""
+        nets = self.net(a), temperature, self.net(b)
+        self.warms.append((*nets, laws))
+        return Handle("warm", len(self.warms) - 1, nets)
+
     def switch(self, ref: str, a: str, b: str, start: Law, reading: Callable[[str], Law]) -> Handle:
         """A conductance that events set; ``reading`` turns the text of an event (``closed``, ``open`` or a value)
         into a law in siemens."""
@@ -310,6 +355,15 @@ def channel_array(laws: Laws, lanes: Lanes) -> Floats:
     """Parameters of one field-effect channel, (lanes, CHANNEL_WIDTH)."""
     array = layout.zeros(lanes.count, layout.CHANNEL_WIDTH)
     for name, place in _CHANNEL_PLACES.items():
+        law = laws.get(name)
+        array[:, place] = 0.0 if law is None else law(lanes)
+    return array
+
+
+def warm_array(laws: Laws, lanes: Lanes) -> Floats:
+    """Parameters of one warm conductance, (lanes, WARM_WIDTH)."""
+    array = layout.zeros(lanes.count, layout.WARM_WIDTH)
+    for name, place in _WARM_PLACES.items():
         law = laws.get(name)
         array[:, place] = 0.0 if law is None else law(lanes)
     return array

@@ -8,6 +8,8 @@ from ..kernel import layout
 
 BRANCH_CURRENT = -1
 """Kind of a term that is the current of a branch: an unknown of the kernel, whose place is known only late."""
+TEMPERATURE = " temperature"
+"""What the names of temperatures end in; names of nets have no spaces."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -29,6 +31,11 @@ def voltage(net: str, against: str | None = None) -> Signal:
     """The voltage of a net against 0V or another net."""
     plus = Signal(((layout.S_UNKNOWN, net, 1.0),))
     return plus if against is None else plus + voltage(against).scaled(-1.0)
+
+
+def temperature_of(ref: str) -> str:
+    """The name under which a part's temperature can be watched, as a rise above its surroundings."""
+    return f"{ref}{TEMPERATURE}"
 
 
 @dataclass(frozen=True, slots=True)

@@ -135,6 +135,9 @@ def _place(circuit: Circuit, unknown: int) -> str:
     nets = int(circuit.topology.size[0])
     if unknown < nets or unknown >= int(circuit.topology.size[1]):
         return f"net {circuit.unknown_name(unknown)}"
+    name = circuit.unknown_name(unknown)
+    if name in circuit.builder.temperatures:
+        return f"the {name}"
     first, second, *_ = circuit.builder.branches[unknown - nets]
     between = [
         part.ref for part in circuit.design.parts if {*map(circuit.builder.net, part.pins.values())} == {first, second}

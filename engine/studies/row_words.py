@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from ..circuit.circuit import Circuit
 from ..kernel import layout
-from ..primitives.signals import START, Anchor, Row, Signal, voltage
+from ..primitives.signals import START, TEMPERATURE, Anchor, Row, Signal, voltage
 from ..quantity import write_plain
 
 _POWERS = (
@@ -12,6 +12,7 @@ _POWERS = (
     layout.S_JUNCTION_POWER,
     layout.S_TRANSPORT_POWER,
     layout.S_CHANNEL_POWER,
+    layout.S_WARM_POWER,
 )
 _TAKEN = {
     layout.R_MAXIMUM: "largest",
@@ -32,10 +33,12 @@ def row_unit(row: Row) -> str:
 
 
 def signal_unit(signal: Signal) -> str:
-    """Volts, amperes or watts."""
+    """Volts, amperes, watts, or kelvin."""
     kinds = {kind for kind, *_ in signal.terms}
     if kinds & set(_POWERS):
         return "W"
+    if any(str(name).endswith(TEMPERATURE) for _, name, _ in signal.terms):
+        return "K"
     return "V" if kinds <= {layout.S_UNKNOWN} else "A"
 
 
@@ -56,6 +59,8 @@ def signal_words(circuit: Circuit, signal: Signal) -> str:
         plus = [str(net) for _, net, factor in signal.terms if factor > 0]
         minus = [str(net) for _, net, factor in signal.terms if factor < 0]
         return f"voltage of {' + '.join(plus) or '0V'}" + (f" against {' + '.join(minus)}" if minus else "")
+    if signal_unit(signal) == "K":
+        return " + ".join(f"{name} above the ambient" for _, name, _ in signal.terms)
     left, found = set(signal.terms), []
     for words, known in _known(circuit):
         for sign, turned in (("", known), ("reversed ", known.scaled(-1.0))):

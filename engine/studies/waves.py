@@ -22,7 +22,7 @@ FIRST_POINTS, MOST_POINTS = 4096, 4_000_000
 
 @dataclass(frozen=True)
 class Waves:
-    """Voltages of nets over time: ``values`` has shape (times, nets). Seconds and volts."""
+    """Voltages of nets over time: ``values`` has shape (times, nets). Seconds and volts; temperatures in deg C."""
 
     time: Floats
     nets: tuple[str, ...]
@@ -39,11 +39,12 @@ def waves(
 ) -> Waves:
     """Voltages of ``nets`` (all by default) at every step, or at just the times ``at``.
 
+    A part that heats itself has its temperature as well, under a name such as ``E1 temperature``, when asked for.
     ``relative`` scales all tolerances. Raises CircuitError for an unknown sequence or net, a time outside of the
     sequence, and a run that could not be solved.
     """
     circuit = build(design)
-    hidden = {SUPPLY_SOURCE, "0V", *circuit.builder.injectors}
+    hidden = {SUPPLY_SOURCE, "0V", *circuit.builder.injectors, *circuit.builder.temperatures}
     wanted = tuple(nets) if nets else tuple(n for n in circuit.nets if n not in hidden)
     check_question(circuit, sequence, wanted, at)
     places = [circuit.index(net) for net in wanted]
@@ -65,6 +66,7 @@ def waves(
     used = int(observed.results.trace_used[0])
     time = observed.results.trace_time[:used]
     values = observed.results.trace_value[:used][:, places]
+    values[:, [net in circuit.builder.temperatures for net in wanted]] += lanes.ambient
     if stops is not None:
         # A step ends at every stop; where an event jumps there, the value before the jump is meant.
         index = np.array([int(np.argmin(np.abs(time - t))) for t in stops])

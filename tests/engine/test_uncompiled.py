@@ -100,6 +100,12 @@ CASES: dict[str, Setup] = {
         supply="9 V",
         ends=200e-6,
     ),
+    "warm conductance": setup(
+        resistor("R1", "supply", "n", "4R"),
+        two("lamp", "E1", "n", "0V", **{"class": "12 V 2 W lamp"}),
+        supply="12 V",
+        ends=30e-3,
+    ),
     "pair in one case": setup(
         resistor("R1", "supply", "b", "1M"),
         transistor("Q1", "c", "b", "0V", "darlington_npn", **{"class": "power Darlington"}),
