@@ -9,6 +9,7 @@ from .laws import bent, depletion, exponential, limited, side_currents
 from .layout import (
     BRANCH,
     CAPACITANCE,
+    CHANNEL,
     CONDUCTANCE,
     E_A,
     E_B,
@@ -16,6 +17,7 @@ from .layout import (
     E_EXTRA,
     E_PARAMETER,
     E_SLOT,
+    GUARD,
     J_PER_POTENTIAL,
     J_PER_SLOPE,
     J_SATURATION,
@@ -36,6 +38,7 @@ from .layout import (
     T_GAIN_REVERSE,
     T_PER_KNEE,
     TRANSPORT,
+    WARM,
     Floats,
     Places,
 )
@@ -310,8 +313,11 @@ def evaluate(
     limits = ah != ah
     limits = junctions(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
     limits = transports(element, group, p, ah, x, i, q, a, seen, flow, slope, limits)
-    channels(element, group, p, ah, x, i, a, seen, flow, slope)
-    warm(element, group, p, ah, x, i, a, seen, flow, slope)
+    # Handing over so many arrays takes 1 % of an iterate: families that a circuit does not have are not called.
+    if group[CHANNEL] < group[WARM]:
+        channels(element, group, p, ah, x, i, a, seen, flow, slope)
+    if group[WARM] < group[GUARD]:
+        warm(element, group, p, ah, x, i, a, seen, flow, slope)
     return limits
 
 
@@ -408,8 +414,10 @@ def extrapolate(
         add(bend, nc, sign * (over - ibc))
         add(bend, nb, sign * (ibe + ibc))
         add(bend, ne, -sign * (over + ibe))
-    extrapolate_channels(element, group, p, ah, step, seen, slope, flow, di, bend)
-    extrapolate_warm(element, group, p, ah, step, seen, slope, flow, di, bend)
+    if group[CHANNEL] < group[WARM]:
+        extrapolate_channels(element, group, p, ah, step, seen, slope, flow, di, bend)
+    if group[WARM] < group[GUARD]:
+        extrapolate_warm(element, group, p, ah, step, seen, slope, flow, di, bend)
     for k in range(i.shape[0]):
         add(i, k, at(di, k))
         add(q, k, at(dq, k))
