@@ -17,11 +17,12 @@ from numpy.typing import NDArray
 from .circuit.circuit import Circuit
 from .errors import Cancelled
 from .kernel import layout
-from .kernel.layout import Control, Floats, Program, Results, Rows, ints
+from .kernel.layout import Control, Floats, Program, Results, ints
 from .kernel.march import march
 from .kernel.vectors import WIDTH
 from .primitives.columns import Lanes
-from .primitives.signals import BRANCH_CURRENT, Anchor, Row, Signal
+from .primitives.signals import Row
+from .row_table import RowTable
 
 RELATIVE = 1e-3
 ABSOLUTE = 1e-4  # V
@@ -34,19 +35,6 @@ MOST_STEPS = 200_000
 MOST_ITERATIONS = 12
 MOST_AT_JUMP = 200
 
-FAMILY = {
-    layout.S_CONDUCTANCE_CURRENT: layout.CONDUCTANCE,
-    layout.S_CONDUCTANCE_POWER: layout.CONDUCTANCE,
-    layout.S_JUNCTION_CURRENT: layout.JUNCTION,
-    layout.S_JUNCTION_POWER: layout.JUNCTION,
-    layout.S_COLLECTOR_CURRENT: layout.TRANSPORT,
-    layout.S_BASE_CURRENT: layout.TRANSPORT,
-    layout.S_TRANSPORT_POWER: layout.TRANSPORT,
-    layout.S_DRAIN_CURRENT: layout.CHANNEL,
-    layout.S_CHANNEL_POWER: layout.CHANNEL,
-    layout.S_WARM_CURRENT: layout.WARM,
-    layout.S_WARM_POWER: layout.WARM,
-}
 ENDED = {
     layout.UNSOLVED: "could not be solved",
     layout.OVERWORKED: "took too many steps",
@@ -113,65 +101,6 @@ class Observed:
         return self.results.final
 
 
-class _RowTable:
-    """Turns rows into arrays, each row once and after the rows it waits for."""
-
-    def __init__(self, circuit: Circuit) -> None:
-        self.circuit = circuit
-        self.places: dict[Row, int] = {}
-        self.signals: dict[Signal, int] = {}
-
-    def add(self, row: Row) -> int:
-        if row in self.places:
-            return self.places[row]
-        for anchor in (row.start, row.end):
-            if anchor is not None and anchor.row is not None:
-                self.add(anchor.row)
-        self.signals.setdefault(row.signal, len(self.signals))
-        return self.places.setdefault(row, len(self.places))
-
-    def arrays(self, stop: Row | None, keep: Sequence[Row]) -> Rows:
-        terms: list[tuple[int, int]] = []
-        scales: list[float] = []
-        bounds = [0]
-        for signal in self.signals:
-            for kind, index, scale in signal.terms:
-                terms.append(self._term(kind, index))
-                scales.append(scale)
-            bounds.append(len(terms))
-        rows: list[tuple[int, ...]] = []
-        offsets: list[tuple[float, float]] = []
-        for row in self.places:
-            start, after = self._window(row.start)
-            end, until = self._window(row.end)
-            rows.append((row.kind, self.signals[row.signal], 1 if row.rising else -1, row.nth, start, end))
-            offsets.append((after, until))
-        return Rows(
-            term=ints(terms, len(terms), 2),
-            factor=np.array(scales, dtype=float),
-            signal=ints(bounds),
-            row=ints(rows, len(rows), 6),
-            level=np.array([row.level for row in self.places], dtype=float),
-            offset=np.ascontiguousarray(np.array(offsets, dtype=float).reshape(len(rows), 2)),
-            stop_row=ints([-1 if stop is None else self.places[stop]]),
-            keep_row=ints([self.places[row] for row in keep]),
-        )
-
-    def _term(self, kind: int, index: int | str) -> tuple[int, int]:
-        """Kind and place of a term as the kernel knows them."""
-        if isinstance(index, str):
-            return kind, self.circuit.index(index)
-        if kind == BRANCH_CURRENT:
-            branch = self.circuit.element(layout.BRANCH, index)
-            return layout.S_UNKNOWN, int(self.circuit.topology.element[branch, layout.E_C])
-        return kind, self.circuit.element(FAMILY[kind], index)
-
-    def _window(self, anchor: Anchor | None) -> tuple[int, float]:
-        if anchor is None:
-            return -1, np.inf
-        return (-1 if anchor.row is None else self.places[anchor.row]), anchor.by
-
-
 def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
     """Tolerances of every unknown, tighter on nets that carry timing capacitors."""
     nets, free = int(circuit.topology.size[0]), int(circuit.topology.size[1])
@@ -212,7 +141,7 @@ def run(
     ``keep`` are rows at which the state is kept;
     ``trace`` keeps so many points of the only lane; ``relative`` scales all tolerances. Raises Cancelled.
     """
-    table = _RowTable(circuit)
+    table = RowTable(circuit)
     for row in (*rows, *keep, *(() if stop is None else (stop,))):
         table.add(row)
     made = table.arrays(stop, keep)

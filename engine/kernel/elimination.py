@@ -9,7 +9,7 @@ from collections.abc import Iterable
 
 from .compiled import leaf
 from .layout import Floats, Places, places
-from .vectors import Numbers, add, at, put, where
+from .vectors import Numbers, at, fused, put, where
 
 LEAST_PIVOT = 1e-15  # S, times a h: next to nothing, but enough to divide by in a net that only a branch holds
 
@@ -110,7 +110,7 @@ def factor(a: Floats, ah: Numbers, pivot: Places, entry: Places, update: Places)
             f = at(a, entry[r, 1]) * value
             put(a, entry[r, 1], f)
             for m in range(entry[r, 3], entry[r + 1, 3]):
-                add(a, update[m, 0], -f * at(a, update[m, 1]))
+                put(a, update[m, 0], fused(-f, at(a, update[m, 1]), at(a, update[m, 0])))
 
 
 @leaf
@@ -121,14 +121,14 @@ def substitute(a: Floats, b: Floats, pivot: Places, entry: Places, left: Places)
         k = pivot[n, 0]
         v = at(b, k)
         for r in range(pivot[n, 3], pivot[n + 1, 3]):
-            v = v - at(a, left[r, 1]) * at(b, left[r, 0])
+            v = fused(-at(a, left[r, 1]), at(b, left[r, 0]), v)
         put(b, k, v)
     for back in range(count):
         n = count - 1 - back
         k = pivot[n, 0]
         v = at(b, k)
         for r in range(pivot[n, 2], pivot[n + 1, 2]):
-            v = v - at(a, entry[r, 2]) * at(b, entry[r, 0])
+            v = fused(-at(a, entry[r, 2]), at(b, entry[r, 0]), v)
         put(b, k, v * at(a, pivot[n, 1]))
 
 
@@ -141,9 +141,9 @@ def substitute_two(a: Floats, b: Floats, d: Floats, pivot: Places, entry: Places
         v = at(b, k)
         u = at(d, k)
         for r in range(pivot[n, 3], pivot[n + 1, 3]):
-            f = at(a, left[r, 1])
-            v = v - f * at(b, left[r, 0])
-            u = u - f * at(d, left[r, 0])
+            f = -at(a, left[r, 1])
+            v = fused(f, at(b, left[r, 0]), v)
+            u = fused(f, at(d, left[r, 0]), u)
         put(b, k, v)
         put(d, k, u)
     for back in range(count):
@@ -152,9 +152,9 @@ def substitute_two(a: Floats, b: Floats, d: Floats, pivot: Places, entry: Places
         v = at(b, k)
         u = at(d, k)
         for r in range(pivot[n, 2], pivot[n + 1, 2]):
-            f = at(a, entry[r, 2])
-            v = v - f * at(b, entry[r, 0])
-            u = u - f * at(d, entry[r, 0])
+            f = -at(a, entry[r, 2])
+            v = fused(f, at(b, entry[r, 0]), v)
+            u = fused(f, at(d, entry[r, 0]), u)
         inverse = at(a, pivot[n, 1])
         put(b, k, v * inverse)
         put(d, k, u * inverse)

@@ -34,7 +34,6 @@ from .vectors import Flags, Numbers, any_of, at, exp, greater, lesser, log, root
 TOP = 80.0
 EXP_TOP = math.exp(TOP)
 FLOOR = -40.0
-STEEPEST = 60.0  # slopes; a step that long is not accepted
 NEAR = 0.3  # slopes that a junction may be from where its law was last evaluated
 DEAD = 24.0  # slopes below its knee a junction carries less than a picoampere
 LEAKAGE_KNEE = 0.01  # V; generation and surface leakage is nearly constant beyond a tenth of a volt
@@ -80,8 +79,11 @@ def limited(v: Numbers, old: Numbers, p: Floats, j: int) -> Numbers:
 
 @leaf
 def exceeded(u: Numbers) -> Numbers:
-    """Return by what e^u exceeds its tangent at 0; more than is ever accepted where u is large."""
-    return where(u > STEEPEST, 1e30, exp(greater(lesser(u, STEEPEST), FLOOR)) - 1.0 - u)
+    """Return by what e^u exceeds its tangent at 0: a few terms of its series, right to 1e-5 of it within ``NEAR``.
+
+    Beyond that nothing is accepted anyway.
+    """
+    return u * u * (0.5 + u * (1.0 / 6.0 + u * (1.0 / 24.0 + u * (1.0 / 120.0 + u * (1.0 / 720.0)))))
 
 
 @leaf

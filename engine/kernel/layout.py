@@ -89,18 +89,22 @@ CT_BOUNCE, CT_TIMES = np.uint32(3), np.uint32(4)  # s, how often it opens again
 PARAMETERS = (1, 1, 2, JUNCTION_WIDTH, TRANSPORT_WIDTH, CHANNEL_WIDTH, WARM_WIDTH, 4, 5)
 """How many parameters a primitive of each family has; a branch has henry and ohm."""
 
-# Kinds of signal terms; the index is that of an unknown, or of an element.
+# Kinds of signal terms; the index is that of a net, or of a primitive in its family.
 S_UNKNOWN, S_CONDUCTANCE_CURRENT, S_CONDUCTANCE_POWER = 0, 1, 2
 S_COLLECTOR_CURRENT, S_BASE_CURRENT, S_TRANSPORT_POWER = 3, 4, 5
 S_JUNCTION_CURRENT, S_JUNCTION_POWER = 6, 7
 S_DRAIN_CURRENT, S_CHANNEL_POWER = 8, 9
 S_WARM_CURRENT, S_WARM_POWER = 10, 11
 
+# How the kernel reads a term (kind, a, b, place): x[a]; flow[place], and times x[a] - x[b]; p[place] (x[a] - x[b]), and
+# times x[a] - x[b] again.
+READ_LEVEL, READ_FLOW, READ_FLOW_POWER, READ_CONDUCTANCE, READ_CONDUCTANCE_POWER = 0, 1, 2, 3, 4
+
 # Kinds of observation rows.
 R_CROSSING, R_LEVEL, R_MAXIMUM, R_MINIMUM, R_INTEGRAL, R_SLEW = 0, 1, 2, 3, 4, 5
 
 # Columns of ``Rows.row``.
-ROW_KIND, ROW_SIGNAL, ROW_DIRECTION, ROW_NTH, ROW_FROM, ROW_TO = 0, 1, 2, 3, 4, 5
+ROW_KIND, ROW_SIGNAL, ROW_DIRECTION, ROW_NTH, ROW_FROM, ROW_TO, ROW_LASTING = 0, 1, 2, 3, 4, 5, 6
 
 # Status of an observation row.
 NOT_YET, SEEN, OPEN = 0, 1, 2
@@ -135,10 +139,11 @@ class Program(NamedTuple):
 class Rows(NamedTuple):
     """Signals and the observation rows made of them."""
 
-    term: Ints  # (terms, 2) kind, index
+    term: Places  # (terms, 4) how it is read, two unknowns, a place
     factor: Floats  # (terms,)
-    signal: Ints  # (signals + 1,) range of terms
-    row: Ints  # (rows, 6) kind, signal, direction, n-th, from-row (-1 = start), to-row (-1 = end)
+    signal: Places  # (signals + 1,) range of terms
+    row: Ints  # (rows, 7) kind, signal, direction, n-th, from-row (-1 = start), to-row (-1 = end), place in lasting
+    lasting: Ints  # (n,) rows that are extremes or integrals
     level: Floats  # (rows,)
     offset: Floats  # (rows, 2) s added to from, to
     stop_row: Ints  # (1,) end the lane once this row is seen, -1 = never

@@ -15,6 +15,7 @@ from .assemble import evaluate, extrapolate, linear_matrices
 from .compiled import compiled, leaf
 from .elimination import factor, substitute, substitute_two
 from .guards import move_guards, next_due, rest_guards, watch_guards
+from .lasting import note_lasting
 from .layout import (
     CHANNEL,
     CHANNEL_SLOPES,
@@ -44,7 +45,7 @@ from .layout import (
     zeros,
 )
 from .newton import advance, residual, solved_by, worst_unknown
-from .rows import close_rows, find_beaten, open_rows, read_signals, watch
+from .rows import close_rows, open_rows, read_signals, watch
 from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, surprise, take
 from .vectors import WIDTH, any_of, at, flag, put, same, where
 
@@ -67,7 +68,8 @@ AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma
 ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
 LIMITED, ERROR, GROWTH = 7, 8, 9
 NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14, 15, 16, 17, 18
-CLOCK = 19
+BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
+CLOCK = 21
 
 
 class Work(NamedTuple):
@@ -113,8 +115,8 @@ class Work(NamedTuple):
     window: Floats  # (WIDTH, rows, 2)
     listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
     listed_until: Floats  # (WIDTH,) s, when to list them anew
-    best: Floats  # (rows, WIDTH) extremes so far, minima negative; infinite where they are listed as others are
-    beaten: Ints  # (rows + 1,) how many of them a step exceeds, and which
+    best: Floats  # (lasting rows, WIDTH) extremes and integrals so far, and when
+    best_at: Floats
     phase: Ints  # (WIDTH,) and so the next
     came: Ints
     failed: Ints
@@ -155,8 +157,8 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         zeros(WIDTH, rows.row.shape[0], 2),
         np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
         zeros(WIDTH),
-        zeros(rows.row.shape[0], WIDTH),
-        np.zeros(rows.row.shape[0] + 1, dtype=np.int64),
+        zeros(rows.lasting.size, WIDTH),
+        zeros(rows.lasting.size, WIDTH),
         *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
         np.zeros((WIDTH, guards), dtype=np.int64),
         zeros(WIDTH, guards + contacts),
@@ -266,16 +268,22 @@ def march_rows(
     seen, seen0, flow, flow0, flow_g = work.seen, work.seen0, work.flow, work.flow0, work.flow_g
     p, source, clock = work.p, work.source, work.clock
     s0, sg, s1, window = work.s0, work.sg, work.s1, work.window
-    listed, listed_until, best, beaten = work.listed, work.listed_until, work.best, work.beaten
+    listed, listed_until, best, best_at = work.listed, work.listed_until, work.best, work.best_at
     phase, came, failed, lane_of, segment_of = work.phase, work.came, work.failed, work.lane, work.segment
     moving, diagonal = work.moving, work.diagonal
     told, due, toggles = work.told, work.due, work.left
     guarded = group[GUARD] < group[FAMILIES]
-    value, time, status = results.value, results.time, results.status
-    counts = results.work
-    row = rows.row
+    # Taken out of their tuples once: every look into a tuple counts references, with two atomic operations.
+    spans, restart, given, sine = program.length, program.restart, program.source, program.sine
+    switched, switch = program.switched, program.switch
+    row, level, offset, lasting, keep_row = rows.row, rows.level, rows.offset, rows.lasting, rows.keep_row
+    term, weight, signal = rows.term, rows.factor, rows.signal
+    value, time, status, counts = results.value, results.time, results.status, results.work
+    ended, ended_at, final = results.ended, results.ended_at, results.final
+    kept, kept_at = results.kept, results.kept_at
+    trace_time, trace_value, trace_used = results.trace_time, results.trace_value, results.trace_used
     stop_row = rows.stop_row[0]
-    tracing = results.trace_time.size > 0
+    tracing = trace_time.size > 0
 
     upcoming = low
     running = 0
@@ -299,21 +307,21 @@ def march_rows(
                         x[k, w] = starts[lane, k]
                     for k in range(seen.shape[0]):
                         seen[k, w] = 0.0
-                    open_rows(row, rows.offset, w, lane, window, value, time, status, best)
+                    open_rows(row, offset, w, lane, window, value, time, status, best)
                     listed_until[w] = -1.0
                     for k in range(counts.shape[1]):
                         counts[lane, k] = 0
                     fastest = 0.0
-                    for k in range(program.sine.shape[1]):
-                        if program.sine[lane, k, 0] != 0.0:
-                            fastest = max(fastest, program.sine[lane, k, 1])
+                    for k in range(sine.shape[1]):
+                        if sine[lane, k, 0] != 0.0:
+                            fastest = max(fastest, sine[lane, k, 1])
                     clock[LONGEST, w] = 0.05 / fastest if fastest > 0.0 else math.inf
                     clock[BASE, w] = 0.0
                     clock[AH, w] = 0.0
                     clock[ROUND, w] = 0.0
                     clock[MOST, w] = GLANCES
-                    segment_of[w] = min(next_segment(program.length, lane, -1), program.length.shape[1] - 1)
-                    set_switches(program.switched, program.switch, lane, segment_of[w], 0.0, w, p)
+                    segment_of[w] = min(next_segment(spans, lane, -1), spans.shape[1] - 1)
+                    set_switches(switched, switch, lane, segment_of[w], 0.0, w, p)
                     if guarded:
                         rest_guards(element, group, w, x, p, told, due, toggles)
                     phase[w] = GLANCE
@@ -348,11 +356,10 @@ def march_rows(
             size = error_of(relative, absolute, x0, x, error)
             put(clock, ERROR, size)
             put(clock, GROWTH, growth(size))
-            read_signals(element, group, rows.term, rows.factor, rows.signal, p, xg, flow_g, sg)
+            read_signals(term, weight, signal, p, xg, flow_g, sg)
         watched = ends | (solved & same(phase, LEAP))
         if any_of(watched | same(phase, GLANCE)):
-            read_signals(element, group, rows.term, rows.factor, rows.signal, p, x, flow, s1)
-            find_beaten(row, watched, sg, s1, best, beaten)
+            read_signals(term, weight, signal, p, x, flow, s1)
         put(clock, LIMITED, where(limited, 1.0, 0.0 * h))
         put(clock, ROUND, rounds)
         flag(solved, came)
@@ -378,13 +385,15 @@ def march_rows(
                     begin = clock[BASE, w] + clock[NOW, w]
                     length = min(JUMP, 0.5 * (clock[SPAN, w] - clock[NOW, w]))
                     clock[NOW, w] += length
+                    clock[BEGAN, w] = begin
+                    clock[TOOK, w] = length
                     if guarded:
                         watch_guards(element, group, begin, length, 0.0, w, x0, x, x, p, told, due)
                     watch(
-                        row, rows.level, rows.offset, window, begin, length, 0.0, w, lane,
-                        s0, s1, s1, value, time, status, listed, listed_until, best, beaten,
+                        row, level, offset, window, begin, length, 0.0, w, lane,
+                        s0, s1, s1, value, time, status, listed, listed_until, best, best_at,
                     )  # fmt: skip
-                    keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
+                    keep_states(keep_row, status, x, begin + length, w, lane, kept, kept_at)
                     clock[NEXT, w] = FIRST
                     clock[LAST, w] = 0.0
                 else:
@@ -414,11 +423,13 @@ def march_rows(
                         came[w] = AGAIN
                         continue
                     came[w] = ARRIVED
+                    clock[BEGAN, w] = begin
+                    clock[TOOK, w] = length
                     watch(
-                        row, rows.level, rows.offset, window, begin, length, GAMMA, w, lane,
-                        s0, sg, s1, value, time, status, listed, listed_until, best, beaten,
+                        row, level, offset, window, begin, length, GAMMA, w, lane,
+                        s0, sg, s1, value, time, status, listed, listed_until, best, best_at,
                     )  # fmt: skip
-                    keep_states(rows.keep_row, status, x, begin + length, w, lane, results.kept, results.kept_at)
+                    keep_states(keep_row, status, x, begin + length, w, lane, kept, kept_at)
                     clock[LAST, w] = length
                     clock[NOW, w] = clock[STOP, w] if length == clock[LEFT, w] else clock[NOW, w] + length
                     wanted = max(length * min(3.0, grow), JUMP)
@@ -428,11 +439,14 @@ def march_rows(
                 counts[lane, 3] += 1
                 clock[NEXT, w] = clock[LENGTH, w] * 0.1
                 came[w] = AGAIN
-                if doing == LEAP or clock[NEXT, w] < SMALLEST:
+                if doing != LEAP and clock[NEXT, w] < SMALLEST:
+                    # There is no way on from here however short the step: what has lost its balance jumps.
+                    clock[NEXT, w] = 0.0
+                elif doing == LEAP:
                     came[w] = FINISHED
-                    results.ended[lane, 0] = UNSOLVED
-                    results.ended[lane, 1] = worst_unknown(tolerance, bend, step, w)
-                    results.ended_at[lane] = clock[BASE, w] + clock[NOW, w]
+                    ended[lane, 0] = UNSOLVED
+                    ended[lane, 1] = worst_unknown(tolerance, bend, step, w)
+                    ended_at[lane] = clock[BASE, w] + clock[NOW, w]
 
         staged = same(came, STAGED)
         if any_of(staged):
@@ -444,6 +458,10 @@ def march_rows(
         leapt = same(came, LEAPT) | same(came, LOOKED)
         settles = arrived | leapt
         if any_of(settles):
+            note_lasting(
+                row, lasting, arrived, same(came, LEAPT), at(clock, BEGAN), at(clock, TOOK),
+                s0, sg, s1, best, best_at,
+            )  # fmt: skip
             keep_parabola(arrived, leapt, h, x0, xg, x, first, second)
             take(settles, x, x0)
             take(settles, q, q0)
@@ -468,35 +486,33 @@ def march_rows(
                 clock[ROUND, w] = 0.0
                 now = clock[NOW, w] + clock[LENGTH, w]
                 if moving[w] != 0:
-                    set_switches(program.switched, program.switch, lane, segment, now, w, p)
+                    set_switches(switched, switch, lane, segment, now, w, p)
                     dirty = True
-                set_sources(program.source, program.sine, lane, segment, base, now, free, known, w, source, x)
+                set_sources(given, sine, lane, segment, base, now, free, known, w, source, x)
                 continue
             how = NOT_ENDED
             if came[w] == ARRIVED or came[w] == LEAPT:
-                if tracing and not trace(
-                    x0, w, base + clock[NOW, w], results.trace_time, results.trace_value, results.trace_used
-                ):
+                if tracing and not trace(x0, w, base + clock[NOW, w], trace_time, trace_value, trace_used):
                     how = TRACE_FULL
                 elif stop_row >= 0 and came[w] == ARRIVED and status[lane, stop_row] == SEEN:
                     how = STOPPED
             elif came[w] == LOOKED and tracing:
-                trace(x0, w, 0.0, results.trace_time, results.trace_value, results.trace_used)
-            leaps = came[w] == LOOKED
-            if leaps:
+                trace(x0, w, 0.0, trace_time, trace_value, trace_used)
+            leaps = came[w] == LOOKED or (came[w] == AGAIN and clock[NEXT, w] == 0.0)
+            if came[w] == LOOKED:
                 clock[NOW, w] = 0.0
-                clock[SPAN, w] = program.length[lane, segment]
+                clock[SPAN, w] = spans[lane, segment]
             elif how == NOT_ENDED and clock[NOW, w] >= clock[SPAN, w]:
                 base += clock[SPAN, w]
                 clock[BASE, w] = base
                 clock[NOW, w] = 0.0
-                segment = next_segment(program.length, lane, segment)
+                segment = next_segment(spans, lane, segment)
                 segment_of[w] = segment
-                if segment == program.length.shape[1]:
+                if segment == spans.shape[1]:
                     how = DONE
                 else:
-                    clock[SPAN, w] = program.length[lane, segment]
-                    leaps = program.restart[segment] == 1
+                    clock[SPAN, w] = spans[lane, segment]
+                    leaps = restart[segment] == 1
                     moving[w] = 0
             if guarded and how == NOT_ENDED and came[w] != LOOKED and next_due(due, w) - base <= clock[NOW, w]:
                 move_guards(element, group, next_due(due, w) + TINY, w, x0, x, p, told, due, toggles)
@@ -508,17 +524,17 @@ def march_rows(
                     how = OVERWORKED
             if how != NOT_ENDED:
                 if how == DONE or how == STOPPED:
-                    close_rows(row, window, base + clock[NOW, w], w, lane, status)
-                results.ended[lane, 0] = how
-                results.ended[lane, 1] = 0
-                results.ended_at[lane] = base + clock[NOW, w]
+                    close_rows(row, window, base + clock[NOW, w], w, lane, value, time, status, best, best_at)
+                ended[lane, 0] = how
+                ended[lane, 1] = 0
+                ended_at[lane] = base + clock[NOW, w]
                 came[w] = FINISHED
                 continue
             clock[ROUND, w] = 0.0
             if leaps:
                 now = clock[NOW, w]
-                moving[w] = set_switches(program.switched, program.switch, lane, segment, now, w, p)
-                dirty = dirty or program.switched.size > 0
+                moving[w] = set_switches(switched, switch, lane, segment, now, w, p)
+                dirty = dirty or switched.size > 0
                 phase[w] = LEAP
                 clock[MOST, w] = bounds[2]
                 clock[AH, w] = JUMP
@@ -546,9 +562,9 @@ def march_rows(
                 clock[REACH, w] = GAMMA * length
                 now = clock[NOW, w] + GAMMA * length
                 if moving[w] != 0 or clock[NOW, w] == 0.0:
-                    moving[w] = set_switches(program.switched, program.switch, lane, segment, now, w, p)
-                    dirty = dirty or program.switched.size > 0
-            set_sources(program.source, program.sine, lane, segment, base, now, free, known, w, source, x)
+                    moving[w] = set_switches(switched, switch, lane, segment, now, w, p)
+                    dirty = dirty or switched.size > 0
+            set_sources(given, sine, lane, segment, base, now, free, known, w, source, x)
             came[w] = STARTS
         starting = same(came, STARTS)
         if any_of(starting):
@@ -567,7 +583,7 @@ def march_rows(
             if came[w] == FINISHED:
                 running -= 1
                 for k in range(x.shape[0]):
-                    results.final[lane_of[w], k] = x0[k, w]
+                    final[lane_of[w], k] = x0[k, w]
 
 
 def march(

@@ -57,14 +57,13 @@ def solved_by(
     """Return where a step solved the stage: what it leaves over, as a step of its own in bend, is well inside the
     tolerance, and so is the residual by the tangents, which round-off in the elimination may have spoilt; and where
     the step is finite."""
-    worst = 0.0 * ah
-    longest = 0.0 * ah
-    spoilt = ah != ah
+    well = ah == ah
+    finite = ah == ah
     for k in range(tolerance.shape[0]):
-        worst = greater(worst, abs(at(bend, k)) / at(tolerance, k))
-        longest = greater(longest, abs(at(step, k)))
-        spoilt = spoilt | (abs(at(q, k) + ah * at(i, k) + at(constant, k)) > at(allowed, k))
-    return (worst <= REMAINDER) & ~spoilt, longest < math.inf
+        finite = finite & (abs(at(step, k)) < math.inf)
+        well = well & (abs(at(bend, k)) <= REMAINDER * at(tolerance, k))
+        well = well & (abs(at(q, k) + ah * at(i, k) + at(constant, k)) <= at(allowed, k))
+    return well, finite
 
 
 @leaf

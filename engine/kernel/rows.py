@@ -9,11 +9,6 @@ import math
 
 from .compiled import leaf
 from .layout import (
-    E_A,
-    E_B,
-    E_C,
-    E_PARAMETER,
-    JUNCTION,
     NOT_YET,
     OPEN,
     R_CROSSING,
@@ -22,80 +17,45 @@ from .layout import (
     R_MAXIMUM,
     R_MINIMUM,
     R_SLEW,
+    READ_CONDUCTANCE_POWER,
+    READ_FLOW,
+    READ_FLOW_POWER,
+    READ_LEVEL,
     ROW_DIRECTION,
     ROW_FROM,
     ROW_KIND,
+    ROW_LASTING,
     ROW_NTH,
     ROW_SIGNAL,
     ROW_TO,
-    S_BASE_CURRENT,
-    S_CHANNEL_POWER,
-    S_COLLECTOR_CURRENT,
-    S_CONDUCTANCE_CURRENT,
-    S_CONDUCTANCE_POWER,
-    S_DRAIN_CURRENT,
-    S_JUNCTION_CURRENT,
-    S_JUNCTION_POWER,
-    S_UNKNOWN,
-    S_WARM_CURRENT,
-    S_WARM_POWER,
     SEEN,
-    TRANSPORT,
     Floats,
     Ints,
     Places,
 )
-from .vectors import Flags, any_of, at, put
+from .vectors import at, put
 
 GAMMA = 2.0 - math.sqrt(2.0)
 
 
 @leaf
-def read_signals(
-    element: Places,
-    group: Places,
-    term: Ints,
-    factor: Floats,
-    signal: Ints,
-    p: Floats,
-    x: Floats,
-    flow: Floats,
-    out: Floats,
-) -> None:
+def read_signals(term: Places, factor: Floats, signal: Places, p: Floats, x: Floats, flow: Floats, out: Floats) -> None:
     """Set out (signals, WIDTH) to the signals at x, ``flow`` being the currents of junctions and transistors there."""
-    for s in range(signal.size - 1):
+    for s in range(out.shape[0]):
         total = 0.0 * at(x, 0)
         for t in range(signal[s], signal[s + 1]):
             kind = term[t, 0]
-            k = term[t, 1]
-            v = total
-            if kind == S_UNKNOWN:
-                v = at(x, k)
-            elif kind == S_CONDUCTANCE_CURRENT or kind == S_CONDUCTANCE_POWER:
-                across = at(x, element[k, E_A]) - at(x, element[k, E_B])
-                v = at(p, element[k, E_PARAMETER]) * across
-                if kind == S_CONDUCTANCE_POWER:
-                    v = v * across
-            elif kind == S_JUNCTION_CURRENT or kind == S_JUNCTION_POWER:
-                v = at(flow, k - group[JUNCTION])
-                if kind == S_JUNCTION_POWER:
-                    v = v * (at(x, element[k, E_A]) - at(x, element[k, E_B]))
-            elif kind == S_DRAIN_CURRENT or kind == S_CHANNEL_POWER or kind == S_WARM_CURRENT or kind == S_WARM_POWER:
-                own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
-                v = at(flow, own)
-                if kind == S_CHANNEL_POWER or kind == S_WARM_POWER:
-                    v = v * (at(x, element[k, E_A]) - at(x, element[k, E_C]))
-            else:
-                own = 2 * (k - group[TRANSPORT]) - group[JUNCTION] + group[TRANSPORT]
-                ic = at(flow, own)
-                ib = at(flow, own + 1)
-                if kind == S_COLLECTOR_CURRENT:
-                    v = ic
-                elif kind == S_BASE_CURRENT:
-                    v = ib
+            v = at(x, term[t, 1])
+            if kind != READ_LEVEL:
+                across = v - at(x, term[t, 2])
+                if kind == READ_FLOW:
+                    v = at(flow, term[t, 3])
+                elif kind == READ_FLOW_POWER:
+                    v = at(flow, term[t, 3]) * across
                 else:
-                    ve = at(x, element[k, E_C])
-                    v = ic * (at(x, element[k, E_A]) - ve) + ib * (at(x, element[k, E_B]) - ve)
+                    v = at(p, term[t, 3]) * across
+                    if kind == READ_CONDUCTANCE_POWER:
+                        v = v * across
             total = total + factor[t] * v
         put(out, s, total)
 
@@ -154,11 +114,12 @@ def open_rows(
     best: Floats,
 ) -> None:
     """Reset all rows of a lane and set the windows that do not wait for another row."""
+    for n in range(best.shape[0]):
+        best[n, w] = math.nan
     for r in range(row.shape[0]):
         value[lane, r] = 0.0
         time[lane, r] = 0.0
         status[lane, r] = NOT_YET
-        best[r, w] = math.inf
         window[w, r, 0] = offset[r, 0] if row[r, ROW_FROM] < 0 else math.inf
         window[w, r, 1] = offset[r, 1] if row[r, ROW_TO] < 0 else math.inf
 
@@ -227,36 +188,64 @@ def note(
 
 
 @leaf
-def find_beaten(row: Ints, watched: Flags, stage: Floats, end: Floats, best: Floats, beaten: Ints) -> None:
-    """List the extremes over a window without end that a step of some watched lane exceeds, their count first."""
-    count = 0
-    for r in range(row.shape[0]):
-        kind = row[r, ROW_KIND]
-        if kind == R_MAXIMUM or kind == R_MINIMUM:
-            s = row[r, ROW_SIGNAL]
-            sign = 1.0 if kind == R_MAXIMUM else -1.0
-            most = at(best, r)
-            if any_of(watched & ((sign * at(stage, s) > most) | (sign * at(end, s) > most))):
-                count += 1
-                beaten[count] = r
-    beaten[0] = count
+def hand_back(
+    kind: int,
+    place: int,
+    r: int,
+    w: int,
+    lane: int,
+    when: float,
+    best: Floats,
+    best_at: Floats,
+    value: Floats,
+    time: Floats,
+) -> None:
+    """Take row r back from :func:`.lasting.note_lasting`, which has kept it up to the instant ``when``."""
+    value[lane, r] = -best[place, w] if kind == R_MINIMUM else best[place, w]
+    time[lane, r] = when if kind == R_INTEGRAL else best_at[place, w]
+    best[place, w] = math.nan
 
 
 @leaf
-def list_open(window: Floats, finish: float, w: int, best: Floats, listed: Ints, listed_until: Floats) -> None:
-    """List the rows whose window has begun by ``finish``, their count first, and note when the next one begins.
+def list_open(
+    row: Ints,
+    window: Floats,
+    begin: float,
+    finish: float,
+    w: int,
+    lane: int,
+    value: Floats,
+    time: Floats,
+    status: Ints,
+    listed: Ints,
+    listed_until: Floats,
+    best: Floats,
+    best_at: Floats,
+) -> None:
+    """List the rows whose window has begun by ``finish``, their count first, and note when that changes.
 
-    Extremes that :func:`find_beaten` watches are not listed.
+    Lasting rows with the whole step in their window are handed over to :func:`.lasting.note_lasting` instead.
     """
     count = 0
     until = math.inf
     for r in range(window.shape[1]):
-        if window[w, r, 0] <= finish:
-            if best[r, w] == math.inf:
-                count += 1
-                listed[w, count] = r
-        else:
-            until = min(until, window[w, r, 0])
+        opens = window[w, r, 0]
+        if opens > finish:
+            until = min(until, opens)
+            continue
+        place = row[r, ROW_LASTING]
+        if place >= 0:
+            lasts = best[place, w] == best[place, w]
+            if status[lane, r] == OPEN and window[w, r, 1] >= finish:
+                if not lasts:
+                    best[place, w] = -value[lane, r] if row[r, ROW_KIND] == R_MINIMUM else value[lane, r]
+                    best_at[place, w] = time[lane, r]
+                until = min(until, window[w, r, 1])
+                continue
+            if lasts:
+                hand_back(row[r, ROW_KIND], place, r, w, lane, begin, best, best_at, value, time)
+        count += 1
+        listed[w, count] = r
     listed[w, 0] = count
     listed_until[w] = until
 
@@ -281,7 +270,7 @@ def watch(
     listed: Ints,
     listed_until: Floats,
     best: Floats,
-    beaten: Ints,
+    best_at: Floats,
 ) -> None:
     """Update every row of the lane in column w with a step from ``begin`` to ``begin + h``; ``gamma`` 0: no stage.
 
@@ -290,25 +279,34 @@ def watch(
     """
     finish = begin + h
     if finish >= listed_until[w]:
-        list_open(window, finish, w, best, listed, listed_until)
+        list_open(row, window, begin, finish, w, lane, value, time, status, listed, listed_until, best, best_at)
     for turn in range(2):
         news = False
-        open_ones = listed[w, 0]
-        for n in range(open_ones + beaten[0] if turn == 0 else row.shape[0]):
+        for n in range(listed[w, 0] if turn == 0 else row.shape[0]):
             r = n
             if turn == 0:
-                r = listed[w, n + 1] if n < open_ones else beaten[n - open_ones + 1]
-                if n >= open_ones and best[r, w] == math.inf:
-                    continue
+                r = listed[w, n + 1]
                 if window[w, r, 0] > finish:
                     continue
             else:
-                after = row[r, ROW_FROM]
-                if after < 0 or window[w, r, 0] < math.inf or status[lane, r] == SEEN or status[lane, after] != SEEN:
-                    continue
-                window[w, r, 0] = time[lane, after] + offset[r, 0]
-                if window[w, r, 0] > finish:
-                    continue
+                place = row[r, ROW_LASTING]
+                if place >= 0 and best[place, w] == best[place, w]:
+                    ends = row[r, ROW_TO]
+                    if ends < 0 or window[w, r, 1] < math.inf or status[lane, ends] != SEEN:
+                        continue
+                    window[w, r, 1] = time[lane, ends] + offset[r, 1]
+                    if window[w, r, 1] >= finish:
+                        continue
+                    hand_back(row[r, ROW_KIND], place, r, w, lane, begin, best, best_at, value, time)
+                else:
+                    after = row[r, ROW_FROM]
+                    if after < 0 or window[w, r, 0] < math.inf or status[lane, r] == SEEN:
+                        continue
+                    if status[lane, after] != SEEN:
+                        continue
+                    window[w, r, 0] = time[lane, after] + offset[r, 0]
+                    if window[w, r, 0] > finish:
+                        continue
             until = row[r, ROW_TO]
             if until >= 0 and window[w, r, 1] == math.inf and status[lane, until] == SEEN:
                 window[w, r, 1] = time[lane, until] + offset[r, 1]
@@ -336,11 +334,8 @@ def watch(
                 kind, float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], y0, yg, y1, begin, h, gamma,
                 window[w, r, 0], window[w, r, 1], lane, r, value, time, status,
             )  # fmt: skip
-            extreme = kind == R_MAXIMUM or kind == R_MINIMUM
-            if extreme and row[r, ROW_TO] < 0 and status[lane, r] == OPEN:
-                if best[r, w] == math.inf:
-                    listed_until[w] = -1.0
-                best[r, w] = value[lane, r] if kind == R_MAXIMUM else -value[lane, r]
+            if row[r, ROW_LASTING] >= 0:
+                listed_until[w] = -1.0
             if status[lane, r] == SEEN:
                 news = True
                 window[w, r, 0] = math.inf
@@ -350,8 +345,22 @@ def watch(
 
 
 @leaf
-def close_rows(row: Ints, window: Floats, finish: float, w: int, lane: int, status: Ints) -> None:
+def close_rows(
+    row: Ints,
+    window: Floats,
+    finish: float,
+    w: int,
+    lane: int,
+    value: Floats,
+    time: Floats,
+    status: Ints,
+    best: Floats,
+    best_at: Floats,
+) -> None:
     """End of a lane at ``finish``: extremes and integrals are complete whose window reaches the end or closed by it."""
     for r in range(row.shape[0]):
+        place = row[r, ROW_LASTING]
+        if place >= 0 and best[place, w] == best[place, w]:
+            hand_back(row[r, ROW_KIND], place, r, w, lane, finish, best, best_at, value, time)
         if status[lane, r] == OPEN and (row[r, ROW_TO] < 0 or window[w, r, 1] <= finish):
             status[lane, r] = SEEN

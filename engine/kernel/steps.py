@@ -91,10 +91,14 @@ def keep_parabola(
     arrived: Flags, jumped: Flags, h: Numbers, x0: Floats, xg: Floats, x: Floats, first: Floats, second: Floats
 ) -> None:
     """Keep the parabola of an accepted step, about its end, for the predictor of the next; nothing after a jump."""
+    per_h = 1.0 / h
+    per_stage = per_h / GAMMA
+    per_rest = per_h / (1.0 - GAMMA)
+    rest = (1.0 - GAMMA) * h
     for k in range(first.shape[0]):
-        end = (at(x, k) - at(xg, k)) / ((1.0 - GAMMA) * h)
-        bend = (end - (at(xg, k) - at(x0, k)) / (GAMMA * h)) / h
-        slope = end + bend * (1.0 - GAMMA) * h
+        end = (at(x, k) - at(xg, k)) * per_rest
+        bend = (end - (at(xg, k) - at(x0, k)) * per_stage) * per_h
+        slope = end + bend * rest
         put(first, k, where(jumped, 0.0, where(arrived, slope, at(first, k))))
         put(second, k, where(jumped, 0.0, where(arrived, bend, at(second, k))))
 

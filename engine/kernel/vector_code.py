@@ -193,6 +193,19 @@ def add(typing: Any, x: Any, k: Any, v: Any) -> Any:
 
 
 @intrinsic
+def fused(typing: Any, a: Any, b: Any, c: Any) -> Any:
+    """a b + c, rounded once where the processor can."""
+
+    def code(context: Any, builder: Any, sig: Any, args: Any) -> Any:
+        values = [_vector(builder, of, value) for of, value in zip(sig.args, args, strict=True)]
+        kind = ir.FunctionType(_NUMBERS, [_NUMBERS] * 3)
+        known = cgutils.get_or_insert_function(builder.module, kind, f"llvm.fmuladd.v{WIDTH}f64")
+        return builder.call(known, values)
+
+    return NUMBERS(a, b, c), code
+
+
+@intrinsic
 def where(typing: Any, flags: Any, yes: Any, no: Any) -> Any:
     """Choose lane by lane."""
 

@@ -33,6 +33,7 @@ if COMPILED and not TYPE_CHECKING:
         any_of,
         at,
         flag,
+        fused,
         greater,
         lesser,
         put,
@@ -57,6 +58,10 @@ else:
     def add(x: Floats, k: Any, v: Numbers) -> None:
         """Add to row k of an array."""
         x[k, 0] += v
+
+    def fused(a: Numbers, b: Numbers, c: Numbers) -> Numbers:
+        """a b + c."""
+        return a * b + c
 
     def where(flags: Flags, yes: Numbers, no: Numbers) -> Numbers:
         """``yes`` in the lanes that are flagged, ``no`` in the others."""
@@ -104,20 +109,15 @@ def exp(y: Numbers) -> Numbers:
     """e to the power y, for y within -700 and 700."""
     shifted = y * PER_LN2 + SHIFT
     whole = shifted - SHIFT
-    r = (y - whole * LN2_HIGH) - whole * LN2_LOW
-    s = r * (1.0 / 6227020800.0) + 1.0 / 479001600.0
-    s = s * r + 1.0 / 39916800.0
-    s = s * r + 1.0 / 3628800.0
-    s = s * r + 1.0 / 362880.0
-    s = s * r + 1.0 / 40320.0
-    s = s * r + 1.0 / 5040.0
-    s = s * r + 1.0 / 720.0
-    s = s * r + 1.0 / 120.0
-    s = s * r + 1.0 / 24.0
-    s = s * r + 1.0 / 6.0
-    s = s * r + 0.5
-    s = s * r + 1.0
-    s = s * r + 1.0
+    r = fused(whole, -LN2_LOW, fused(whole, -LN2_HIGH, y))
+    # Pairs of terms, then pairs of pairs: a chain of thirteen would wait for every product.
+    r2 = r * r
+    r4 = r2 * r2
+    low = fused(r2, fused(r, 1.0 / 6.0, 0.5), 1.0 + r)
+    middle = fused(r2, fused(r, 1.0 / 5040.0, 1.0 / 720.0), fused(r, 1.0 / 120.0, 1.0 / 24.0))
+    high = fused(r2, fused(r, 1.0 / 39916800.0, 1.0 / 3628800.0), fused(r, 1.0 / 362880.0, 1.0 / 40320.0))
+    top = fused(r, 1.0 / 6227020800.0, 1.0 / 479001600.0)
+    s = fused(r4, fused(r4, fused(r4, top, high), middle), low)
     return scaled_by_power(s, shifted)
 
 
