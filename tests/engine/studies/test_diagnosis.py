@@ -60,7 +60,7 @@ def words(circuit: Setup) -> str | None:
 
 
 def unsolved() -> Setup:
-    """A bistable of which no side is found: round-off says whether a jump comes down on the other one, and most do not."""
+    """A bistable of which no side is found: round-off says whether a jump comes down on it, and most do not."""
     made = (bistable(collector) for collector in ("1k", "1k05", "950", "1k1", "900", "1k2"))
     return next(circuit for circuit in made if words(circuit) is not None)
 
