@@ -127,6 +127,7 @@ def run(
     rows: Sequence[Row],
     *,
     start: Floats | None = None,
+    table: Floats | None = None,
     stop: Row | None = None,
     keep: Sequence[Row] = (),
     relative: float = RELATIVE,
@@ -137,19 +138,20 @@ def run(
 ) -> Observed:
     """Run all lanes through a program.
 
-    ``start`` (lanes, n_all) are the voltages before t = 0, all zero by default; ``stop`` ends a lane once it is seen;
+    ``start`` (lanes, n_all) are the voltages before t = 0, all zero by default; ``table`` is ``circuit.table(lanes)``
+    where that is at hand; ``stop`` ends a lane once it is seen;
     ``keep`` are rows at which the state is kept;
     ``trace`` keeps so many points of the only lane; ``relative`` scales all tolerances. Raises Cancelled.
     """
-    table = RowTable(circuit)
+    asked = RowTable(circuit)
     for row in (*rows, *keep, *(() if stop is None else (stop,))):
-        table.add(row)
-    made = table.arrays(stop, keep)
+        asked.add(row)
+    made = asked.arrays(stop, keep)
     count, n_all = lanes.count, int(circuit.topology.size[2])
     results = Results(
-        value=layout.zeros(count, len(table.places)),
-        time=layout.zeros(count, len(table.places)),
-        status=np.zeros((count, len(table.places)), dtype=np.int64),
+        value=layout.zeros(count, len(asked.places)),
+        time=layout.zeros(count, len(asked.places)),
+        status=np.zeros((count, len(asked.places)), dtype=np.int64),
         ended=np.zeros((count, 2), dtype=np.int64),
         ended_at=layout.zeros(count),
         work=np.zeros((count, 4), dtype=np.int64),
@@ -161,17 +163,19 @@ def run(
         trace_used=ints([0]),
     )
     starts = layout.zeros(count, n_all) if start is None else np.ascontiguousarray(start)
-    arguments = (circuit.topology, circuit.table(lanes), starts, program, made, control(circuit, relative), results)
+    laws = circuit.table(lanes) if table is None else table
+    arguments = (circuit.topology, laws, starts, program, made, control(circuit, relative), results)
     cancel = np.zeros(1, dtype=np.uint8)
     workers = threads or os.cpu_count() or 1
-    block = min(BLOCK, WIDTH * -(-count // (workers * WIDTH)))
+    blocks = workers * -(-count // (workers * BLOCK))  # as many for each thread
+    block = min(BLOCK, WIDTH * -(-count // (blocks * WIDTH)))
     if count <= block or workers == 1:
         for low in range(0, count, block):
             if cancelled():
                 raise Cancelled("stopped")
             march(*arguments, low, min(low + block, count), cancel)
             progress(min(low + block, count), count)
-        return Observed(circuit, table.places, results, tuple(keep))
+        return Observed(circuit, asked.places, results, tuple(keep))
     with ThreadPoolExecutor(workers) as pool:
         waiting = {
             pool.submit(march, *arguments, low, min(low + block, count), cancel) for low in range(0, count, block)
@@ -190,4 +194,4 @@ def run(
             cancel[0] = 1
             for future in waiting:
                 future.cancel()
-    return Observed(circuit, table.places, results, tuple(keep))
+    return Observed(circuit, asked.places, results, tuple(keep))

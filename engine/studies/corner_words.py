@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import combinations
 
 import numpy as np
 
@@ -27,15 +28,22 @@ def used(margin: Floats, worst: float) -> Floats:
 
 
 def of_conditions(measure: Floats, conditions: Sequence[Setting]) -> Effects:
-    """By how much each axis alone moves the measure, anywhere among all combinations of conditions."""
+    """By how much each axis alone moves the measure, anywhere among all combinations of conditions.
+
+    ``conditions`` are every combination of the sides of their axes, the last axis turning fastest.
+    """
+    keys = [key for key, _ in conditions[0].axes]
+    sides = [len({setting.axes[n][1] for setting in conditions}) for n in range(len(keys))]
+    grid = np.asarray(measure[: len(conditions)], dtype=float).reshape(sides)
+    happened = np.isfinite(grid)
+    known = np.where(happened, grid, 0.0)
     found: Effects = {}
-    table = {setting.axes: float(measure[k]) for k, setting in enumerate(conditions)}
-    for axes, value in table.items():
-        for n, (key, side) in enumerate(axes):
-            for other in (-1, 0, 1):
-                moved = (*axes[:n], (key, other), *axes[n + 1 :])
-                if other != side and moved in table:
-                    found[key] = max(found.get(key, 0.0), _apart(value, table[moved]))
+    for n, key in enumerate(keys):
+        for one, other in combinations(range(sides[n]), 2):
+            both = happened.take(one, n) & happened.take(other, n)
+            either = happened.take(one, n) != happened.take(other, n)
+            apart = np.where(both, np.abs(known.take(one, n) - known.take(other, n)), np.where(either, 1.0, 0.0))
+            found[key] = max(found.get(key, 0.0), float(apart.max()))
     return found
 
 

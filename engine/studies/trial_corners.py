@@ -84,7 +84,8 @@ class TrialCorners:
         """``ends`` are those of :func:`part_ends`, ``single`` the settings they belong to."""
         self._single, self._ends = single, ends
         extremes = [setting.axes for setting in conditions if all(side for _, side in setting.axes)]
-        self._settings = {name: [Setting(axes, sides(end, single)) for axes in extremes] for name, end in ends.items()}
+        hurting = {name: sides(end, single) for name, end in ends.items()}
+        self._settings = {name: [Setting(axes, parts) for axes in extremes] for name, parts in hurting.items()}
         order: dict[Setting, int] = {}
         self._lanes = {
             name: [order.setdefault(setting, len(order)) for setting in chosen]

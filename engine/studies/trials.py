@@ -39,6 +39,7 @@ class TrialRun:
         """``kept`` are states and times of ``begin_of(trial)`` in these lanes, where a run has kept them already."""
         self.circuit, self.trial, self.lanes, self.cancelled = circuit, trial, lanes, cancelled
         self.missing = np.zeros(lanes.count, dtype=bool)
+        self._table = circuit.table(lanes)
         self._state: Floats | None = None
         self._at = np.zeros(lanes.count)
         begin = begin_of(trial)
@@ -55,6 +56,7 @@ class TrialRun:
         """Run lanes ``index`` (with repeats) with one knob value each."""
         chosen = np.asarray(index, dtype=np.int64)
         lanes = self.lanes.take(chosen)
+        table = None if self.trial.vary is not None else np.ascontiguousarray(self._table[chosen])
         if self.trial.vary is not None:
             lanes = self.trial.vary(lanes, knob)
         start = None
@@ -66,7 +68,7 @@ class TrialRun:
             start = np.ascontiguousarray(self._state[chosen])
         self.trial.drive(line, knob)
         program = line.program(self.trial.ends)
-        return run(self.circuit, lanes, program, self.trial.rows, start=start, cancelled=self.cancelled)
+        return run(self.circuit, lanes, program, self.trial.rows, start=start, table=table, cancelled=self.cancelled)
 
     def holds(self, index: Sequence[int] | Ints, knob: Floats) -> Mask:
         """Whether each lane holds at its knob value; a lane that could not be solved does not."""
