@@ -1,25 +1,24 @@
-"""What the bench shows, as lines: heading, rows of parts and margins, and the words about what is under the hand."""
+"""What the bench shows, as lines: heading, chain, rows of parts, the part under the hand, what got worse. Pure."""
 
 from __future__ import annotations
 
-from collections.abc import Collection
-from dataclasses import dataclass
-
-from rich.cells import cell_len
+from collections.abc import Collection, Sequence
 
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
 from ..engine.parts.made import from_memory
-from ..engine.results import CheckResult, Depth, MarginSheet
+from ..engine.results import CheckResult, Depth, MarginSheet, Verdict
 from ..engine.stages.modified import is_modified
 from ..storage.values import Draft
 from .chain_picture import Link
-from .figures import FigureRow, Figures
-from .shown import MARKS, TONES, WORDS, Line, Span, columns, figure, fit, fit_right, line, percent, points, visible
+from .figures import Figures
+from .margin_text import check_name
+from .shown import WORDS, Line, Span, columns, fit, line, percent, points
 from .widgets.row_list import Row
 
 _ROOMY = 60
 PARTS_WIDTHS = (4, 6, 5)
+_WORSE_THAN_PASS = (Verdict.FAIL, Verdict.THIN, Verdict.UNKNOWN)
 
 
 def heading(draft: Draft, figures: Figures, progress: str, width: int, looking: bool = False) -> Line:
@@ -85,81 +84,6 @@ def kind_words(part: Part) -> str:
     return part.kind.replace("_", " ")
 
 
-@dataclass(frozen=True, slots=True)
-class MarginColumns:
-    """Cells for the columns whose width depends on the room there is; the others have theirs always."""
-
-    title: int
-    difference: int
-    corner: int
-
-    @classmethod
-    def for_width(cls, width: int) -> MarginColumns:
-        """The columns of a list of this width. A narrow one leaves the difference to the mark ``<``."""
-        rest = width - 2 - 2 - (_NOMINAL + 1) - (_WORST + 1) - (_WAS + 1) - 1
-        difference = 5 if rest > 30 else 0
-        rest -= difference + 1 if difference else 0
-        corner = max(0, min(44, rest * 9 // 20))
-        return cls(max(6, rest - corner), difference, corner)
-
-
-_NOMINAL, _WORST, _WAS = 7, 7, 5
-
-
-def margin_heading(width: int, all_stages: bool, base: int | None) -> Line:
-    """The column heads of the margins."""
-    cells = MarginColumns.for_width(width)
-    was = "-" if base is None else f"r{base}"
-    name = "all margins" if all_stages else "margins"
-    texts = [fit(name, cells.title), fit_right("nominal", _NOMINAL), fit_right("worst", _WORST), fit_right(was, _WAS)]
-    if cells.difference:
-        texts.append(fit_right("diff", cells.difference))
-    return line(Span("  " + " ".join([*texts, fit("corner", cells.corner)]), "strong"))
-
-
-def margin_rows(rows: tuple[FigureRow, ...], width: int, all_stages: bool) -> list[Row]:
-    """The checks with nominal, worst, what it was, and the corner in words. Old figures are dim and carry ``~``."""
-    cells = MarginColumns.for_width(width)
-    return [Row(row.check.id, _margin_row(row, cells, all_stages)) for row in rows]
-
-
-def _margin_row(row: FigureRow, cells: MarginColumns, all_stages: bool) -> Line:
-    check = row.check
-    old = "dim" if row.worst_old else ""
-    tone = old or TONES[check.verdict]
-    mark = (MARKS[check.verdict] if row.worst_known else " ") + ("<" if row.against.worse else " ")
-    worst = figure(check.margin, check.outcome, _WORST - 1) if row.worst_known else ""
-    before = "-" if row.before is None else figure(row.before.margin, row.before.outcome, _WAS)
-    spans = [
-        Span(mark, old or ("fail" if row.against.worse else tone)),
-        Span(name_cell(check, cells.title, all_stages) + " "),
-        Span(fit_right(percent(row.nominal) + _age(row.nominal_old), _NOMINAL) + " ", "dim" if row.nominal_old else ""),
-        Span(fit_right(worst + _age(row.worst_old), _WORST) + " ", tone),
-        Span(fit_right(before, _WAS) + " "),
-    ]
-    if cells.difference:
-        change = "" if row.against.change is None else points(row.against.change)
-        spans.append(Span(fit_right(change, cells.difference) + " ", old or ("fail" if row.against.worse else "")))
-    return (*spans, Span(fit(check.corner if row.worst_known else "", cells.corner), old))
-
-
-def _age(old: bool) -> str:
-    return "~" if old else " "
-
-
-def name_cell(check: CheckResult, width: int, with_stage: bool) -> str:
-    """Title and part in ``width`` cells; of a long title the end gives way, never the part."""
-    title = f"{check.stage}: {check.title}" if with_stage else check.title
-    part = f" {visible(check.part)}" if check.part else ""
-    room = width - cell_len(part)
-    return fit(check_name(check), width) if room < 4 else fit(fit(title, room).rstrip() + part, width)
-
-
-def check_name(check: CheckResult) -> str:
-    """Title and part of a check: ``duration LS1``."""
-    return f"{check.title} {check.part}".strip()
-
-
 def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher: str | None) -> tuple[Line, Line]:
     """Two lines about the part under the hand: what it is and where, and what it was and could be."""
     pins = "  ".join(f"{pin} {net}" for pin, net in part.pins.items())
@@ -181,20 +105,6 @@ def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher
     return line(Span(first)), line(Span(" " + "   ".join(known)))
 
 
-def check_lines(row: FigureRow) -> tuple[Line, Line]:
-    """Two lines about the chosen margin: figure, requirement and corner, and the words where there are any."""
-    check = row.check
-    where = check_name(check)
-    if row.worst_known:
-        worst = f"{check.outcome or percent(check.margin)} {WORDS[check.verdict]}"
-        first = f" {where}: worst {worst}, required {percent(check.required)}, at {check.corner or 'any corner'}"
-    else:
-        first = f" {where}: worst corner not known yet, required {percent(check.required)}"
-    spread = "" if check.spread is None else f"spread: {check.spread.passing * 100:.1f} % hold   "
-    off = f"by hand {percent(check.hand)}, which disagrees   " if check.disagrees else ""
-    return line(first), line(f" {off}{spread}{check.reason or ''}   sequence {check.sequence}")
-
-
 def spread_words(sheet: MarginSheet, lanes: int) -> str:
     """What stands in the heading when a sheet of this depth is known, of a study that goes on to ``lanes`` lanes."""
     if sheet.depth is Depth.SPREAD:
@@ -204,17 +114,33 @@ def spread_words(sheet: MarginSheet, lanes: int) -> str:
     return f"computing: {sheet.depth} known"
 
 
-def worse_words(figures: Figures, base: int | None) -> tuple[str, str]:
-    """What got worse than the base revision, anywhere in the design, and the tone it is said in."""
+def worse_words(figures: Figures, base: int | None, same: bool) -> tuple[str, str]:
+    """What got worse than the base revision, anywhere in the design, and the tone it is said in.
+
+    Where nothing did, whether all is well: ``same`` tells that the draft is that revision.
+    """
     if figures.before is None or base is None:
         return "", ""
     if figures.worst is None or figures.worst_old:
         return f"~ compared with r{base}: being computed", "dim"
-    worse = [row for row in figures.rows() if row.against.worse]
+    rows = figures.rows()
+    worse = [row for row in rows if row.against.worse]
     if not worse:
-        return f"nothing is worse than in r{base}", ""
+        words, tone = standing_words([row.check for row in rows if row.worst_known])
+        return f"{f'the same as r{base}' if same else f'nothing is worse than in r{base}'}; {words}", tone
     row = worse[0]
     name = check_name(row.check)
     change = "" if row.against.change is None else f" {points(row.against.change)}"
     more = f", {len(worse) - 1} more" if len(worse) > 1 else ""
     return f"worse than r{base}: {name}{change} ({row.check.stage}){more}", "fail"
+
+
+def standing_words(checks: Sequence[CheckResult]) -> tuple[str, str]:
+    """How a design stands, with the tone: ``1 FAIL, 2 thin: latch hold Q4 -12``."""
+    counts = {verdict: sum(check.verdict is verdict for check in checks) for verdict in WORDS}
+    found = [f"{counts[verdict]} {WORDS[verdict]}" for verdict in _WORSE_THAN_PASS if counts[verdict]]
+    if not found:
+        return "every margin holds", ""
+    weakest = min((check for check in checks if check.verdict is not Verdict.PASS), key=lambda check: check.slack)
+    tone = "fail" if counts[Verdict.FAIL] else "thin" if counts[Verdict.THIN] else "unknown"
+    return f"{', '.join(found)}: {check_name(weakest)} {weakest.outcome or percent(weakest.margin)}", tone

@@ -5,19 +5,17 @@ from __future__ import annotations
 from ..engine.cautions import PURPOSE, Caution, cautions_of
 from ..engine.design.document import Design
 
-_SHOWN = 270  # characters that the notice has room for at 80 columns
-
 
 def new_cautions(design: Design, told: set[str]) -> str:
-    """The cautions of parts and stages that were not told yet, in one text; they count as told from now on."""
+    """What the cautions of parts and stages that were not told yet are about; they count as told from now on.
+
+    In few words, because the table below is what the bench is for: in full they stand where ``k`` leads.
+    """
     new = [each for each in cautions_of(design) if each.key not in told and each is not PURPOSE]
     told.update(each.key for each in new)
     if not new:
         return ""
-    text = "Caution: " + " ".join(each.words for each in new)
-    if len(text) > _SHOWN:
-        text = text[: text.rindex(" ", 0, _SHOWN)] + " ..."
-    return f"{text} (k: all)"
+    return f"Caution: {', '.join(each.title for each in new)} (k reads)"
 
 
 def caution_rows(design: Design) -> list[tuple[str, str, str]]:

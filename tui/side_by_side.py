@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING
 from ..engine.results import CheckResult
 from ..engine.studies.comparison import Comparison, Side
 from ..engine.studies.comparison import Row as Compared
-from .bench_text import check_name
 from .drafting import incomplete
+from .margin_text import check_name
 from .shown import MARKS, TONES, WORDS, Line, Span, figure, fit, fit_right, line, percent, points
 from .widgets.row_list import Row
 

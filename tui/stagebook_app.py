@@ -25,6 +25,7 @@ from .screens.help import HelpScreen
 from .screens.page import Page
 from .screens.shelf import ShelfScreen
 from .solver import Solver
+from .widgets.status import Notice
 
 
 class StagebookApp(App[None]):
@@ -49,7 +50,7 @@ class StagebookApp(App[None]):
         self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high")]
         self.computing = Computing(solver)
         self._store = store
-        self._keys = KeyOrder(super().on_event, self._pumps)
+        self._keys = KeyOrder(self._key, self._pumps)
 
     async def on_event(self, event: events.Event) -> None:
         """Keys go one at a time; everything else as in Textual."""
@@ -57,6 +58,13 @@ class StagebookApp(App[None]):
             await self._keys.take(event)
         else:
             await super().on_event(event)
+
+    async def _key(self, event: events.Key) -> None:
+        # In the middle of a text the reason why it was refused stays, to be corrected by.
+        if not isinstance(self.focused, Input):
+            for notice in self.screen.query(Notice):
+                notice.put_away()
+        await super().on_event(event)
 
     def _pumps(self) -> list[MessagePump]:
         return [self, *self.screen.walk_children(with_self=True)]

@@ -91,7 +91,8 @@ async def test_a_refused_value_stays_to_be_corrected_and_says_why(app: Stagebook
 async def test_escape_leaves_the_old_value(app: StagebookApp, shelf: Store) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await to_timer(pilot)
-        await pilot.press("1", "escape")
+        await pilot.press("1", "x", "enter", "escape")
+        assert notice(pilot) == ""
         assert value(shelf, "R7") == "390k"
         assert isinstance(app.focused, RowList)
 
@@ -122,6 +123,8 @@ async def test_undo_at_the_start_is_refused_in_words(app: StagebookApp, store: S
         await open_bench(pilot)
         await pilot.press("u", "u", "u")
         assert notice(pilot).startswith("X")
+        await pilot.press("down")
+        assert notice(pilot) == ""
 
 
 async def test_figures_being_computed_are_marked_and_stay(app: StagebookApp, gates: Gates) -> None:
@@ -167,9 +170,22 @@ async def test_a_circuit_that_cannot_be_computed_says_why_and_keeps_the_edit(
         gates.refusal = "net cap: nothing leads to 0V; connect it to a part"
         await pilot.press("full_stop")
         await settled(pilot)
+        await pilot.press("down", "up")
+        # It holds until the circuit is another one.
         assert notice(pilot) == "X net cap: nothing leads to 0V; connect it to a part"
         assert value(shelf, "R7") == "430k"
         assert "+15~" in seen(pilot)
+        gates.refusal = ""
+        await pilot.press("u")
+        await settled(pilot)
+        assert "nothing leads" not in notice(pilot)
+
+
+async def test_the_corner_of_the_margin_under_the_hand_stands_below_the_table(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await to_timer(pilot)
+        assert shown(pilot)[-3].startswith(" arrival R7 at hot, low supply")
+        assert "corner" not in shown(pilot)[4]
 
 
 async def test_saving_asks_for_a_line_and_keeps_the_corners(app: StagebookApp, shelf: Store) -> None:

@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from stagebook.engine.results import Depth
+from stagebook.tui.bench_text import worse_words
 from stagebook.tui.figures import Figures
+from stagebook.tui.margin_text import corner_words
 
 from .sheets import check, nominal, sheet
 
@@ -50,6 +54,25 @@ def test_frozen_figures_arrive_when_they_are_thawed() -> None:
 
 def test_figures_held_back_are_dropped_by_a_newer_edit() -> None:
     assert known().freeze().edited().arrived(AFTER).edited().newest is None
+
+
+def test_a_corner_that_does_not_fit_begins_with_conditions_and_counts_the_rest() -> None:
+    each = replace(check("duration:timer:LS1", 0.4), corner="cold, low supply, R1 high, weak h_FE, LS1 current low")
+    assert corner_words(each, 99) == "cold, low supply, weak h_FE, LS1 current low, R1 high"
+    assert corner_words(each, 30) == "cold, low supply, weak h_FE +2"
+    assert corner_words(each, 10) == "cold +4"
+    assert corner_words(each, 3) == "co."
+
+
+def standing(*margins: float | None, same: bool = False) -> str:
+    of = sheet(*(check(f"hold:timer:R{at}", margin) for at, margin in enumerate(margins)))
+    return worse_words(Figures(nominal=of, worst=of, before=of, nominal_old=False, worst_old=False), 6, same)[0]
+
+
+def test_nothing_worse_is_not_said_without_how_the_design_stands() -> None:
+    assert standing(0.4, 0.2) == "nothing is worse than in r6; every margin holds"
+    assert standing(0.4, 0.03, same=True) == "the same as r6; 1 thin: hold R1 +3"
+    assert standing(0.03, -0.2, None, same=True) == "the same as r6; 1 FAIL, 1 thin, 1 unknown: hold R2 ?"
 
 
 def test_a_check_that_a_part_took_along_is_not_shown_any_more() -> None:

@@ -5,8 +5,8 @@ from __future__ import annotations
 from dataclasses import replace
 
 from stagebook.storage import Store
-from stagebook.tui.bench_text import check_lines
 from stagebook.tui.figures import FigureRow
+from stagebook.tui.margin_text import check_lines
 from stagebook.tui.origin_text import explanation_rows, origin_rows, together
 from stagebook.tui.screens.origin import OriginPage
 from stagebook.tui.shown import plain
@@ -115,7 +115,7 @@ def test_the_bench_says_that_a_hand_formula_disagrees() -> None:
     apart = replace(check("arrival:timer:R7", 0.5), hand=0.1, accuracy=0.2)
     for found, said in ((apart, True), (replace(apart, accuracy=0.6), False)):
         row = FigureRow(found, True, 0.6, False, False, None)
-        assert ("by hand +10, which disagrees" in plain(check_lines(row)[1])) is said
+        assert ("by hand +10, which disagrees" in plain(check_lines(row, 80)[1])) is said
 
 
 def test_values_put_in_stand_under_their_formula() -> None:

@@ -11,8 +11,10 @@ from stagebook.storage import Store
 from stagebook.tui.messages import SolverPreparing
 from stagebook.tui.screens.bench import BenchScreen
 from stagebook.tui.screens.shelf import ShelfScreen
+from stagebook.tui.shown import Span, line
 from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
+from stagebook.tui.widgets.row_list import Row, RowList
 from stagebook.tui.widgets.status import Notice
 
 from .conftest import document, flood, seen, settled, until
@@ -97,6 +99,23 @@ async def test_a_solver_made_ready_behind_a_bench_is_not_said_to_be_prepared_sti
         await until(pilot, lambda: isinstance(pilot.app.screen, ShelfScreen))
         await settled(pilot)
         assert "preparing the solver" not in seen(pilot)
+
+
+async def test_rows_out_of_sight_are_counted_beside_the_heads_never_over_them(app: StagebookApp) -> None:
+    heads = line(Span("name      value   least"))
+    async with app.run_test(size=(40, 24)) as pilot:
+        await settled(pilot)
+        rows = pilot.app.screen.query_one(RowList)
+        many = [Row(str(at), line(f"row {at}")) for at in range(40)]
+        rows.show(many, heads)
+        await pilot.pause()
+        assert "  name      value   least     (21 below)" in seen(pilot)
+        rows.show(many, line(Span("name                value           least")))
+        await pilot.pause()
+        assert "  name (21 below)     value           least"[:40] in seen(pilot)
+        rows.show(many, line(Span("name value least and much more, to the end")))
+        await pilot.pause()
+        assert "  name value least and much more, to the" in seen(pilot)
 
 
 async def test_every_mark_fits_the_help_of_80_columns(app: StagebookApp) -> None:

@@ -79,7 +79,7 @@ def _explain(asked: Namespace, subject: Subject) -> int:
     from ...engine.studies.evaluate import asks_of
     from ...engine.studies.explanation import explain
     from ...engine.studies.margins import study
-    from ..bench_text import check_name
+    from ..margin_text import check_name
     from ..origin_text import explanation_rows, origin_rows, together
 
     name = _meant(asked.explain, [ask.id for ask in asks_of(build(subject.design))])

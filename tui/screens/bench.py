@@ -22,7 +22,7 @@ from ..drafting import Drafting, incomplete
 from ..figures import FigureRow
 from ..remembered import Remembered
 from ..widgets.row_list import RowList
-from ..widgets.status import KeyLine
+from ..widgets.status import KeyLine, Notice
 from ..widgets.value_entry import ValueEntry
 from .bench_view import BenchView
 from .compare import CompareScreen
@@ -72,7 +72,7 @@ class BenchScreen(BenchView):
         """Says each caution once in a sitting, when a part or stage that brings it is in a design."""
         text = new_cautions(self.design, self.remembered.told)
         if text:
-            self.say(f"{words}. {text}" if words else text)
+            self.say(f"{words}. {text}" if words else text, passing=not words)
 
     # -- editing
 
@@ -141,7 +141,8 @@ class BenchScreen(BenchView):
             self._end_entry()
 
     def on_value_entry_left(self) -> None:
-        """The old value stays."""
+        """The old value stays, and with it goes what was said against another."""
+        self.query_one(Notice).put_away()
         self._end_entry()
 
     def _end_entry(self) -> None:

@@ -12,21 +12,11 @@ from ...engine.design.document import Design
 from ...engine.design.part import Stage
 from ...engine.results import Depth, MarginSheet
 from ..actions import bindings
-from ..bench_text import (
-    check_lines,
-    heading,
-    links,
-    margin_heading,
-    margin_rows,
-    part_heading,
-    part_lines,
-    part_rows,
-    spread_words,
-    worse_words,
-)
+from ..bench_text import heading, links, part_heading, part_lines, part_rows, spread_words, worse_words
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..figures import FigureRow, Figures
+from ..margin_text import check_lines, corner_line, margin_heading, margin_rows
 from ..messages import SheetArrived, SolverPreparing, StudyProgress, StudyRefused
 from ..remembered import Remembered
 from ..shown import line
@@ -59,6 +49,7 @@ class BenchView(Page[None]):
         self._stage = 0
         self._hands: dict[str, str] = {}
         self._watched: str | None = None
+        self._refused = False
 
     def compose_body(self) -> ComposeResult:
         """Heading, chain, parts beside margins, the hand."""
@@ -146,7 +137,7 @@ class BenchView(Page[None]):
         names = [row.check.id for row in found]
         watched = self._watched if self._watched in names else next(iter(names), None)
         self.margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base), watched)
-        self.query_one("#worse", Rule).say(*worse_words(self.figures, base))
+        self.query_one("#worse", Rule).say(*worse_words(self.figures, base, not self.drafting.changes()))
         self._show_hand()
 
     def show_heading(self) -> None:
@@ -156,13 +147,15 @@ class BenchView(Page[None]):
 
     def _show_hand(self) -> None:
         hand = self.query_one("#hand", Lines)
+        width = self.size.width
         if self.margins.has_focus and self.chosen is not None:
-            hand.show(*check_lines(self.chosen))
+            hand.show(*check_lines(self.chosen, width))
         elif self.ref is not None:
             roles = self.design.stage_of(self.ref).roles
             role = next((name.replace("_", " ") for name, ref in roles.items() if ref == self.ref), "")
             part, was = self.design.part(self.ref), self.drafting.was(self.ref)
-            hand.show(*part_lines(part, role, was, *self.drafting.neighbours(self.ref)))
+            corner = () if self.chosen is None else (corner_line(self.chosen, width),)
+            hand.show(*part_lines(part, role, was, *self.drafting.neighbours(self.ref)), *corner)
         else:
             hand.show(line(" a adds a part to this stage"))
 
@@ -184,6 +177,9 @@ class BenchView(Page[None]):
     def study(self) -> None:
         """The draft changed: a study begins, unless a revision holds its figures or this sitting computed them."""
         self.figures = self.figures.edited()
+        if self._refused:
+            self._refused = False
+            self.say("")
         known = self.drafting.stored_figures() or self.remembered.sheet(self.design.content)
         if known is not None:
             self.figures = self.figures.arrived(known)
@@ -221,7 +217,8 @@ class BenchView(Page[None]):
         if event.request == self._request:
             self._progress = "not computed"
             self.show_heading()
-            self.refuse(event.reason)
+            self.refuse(event.reason, passing=False)
+            self._refused = True
             self.no_sheet(event.reason)
 
     def no_sheet(self, reason: str) -> None:

@@ -12,8 +12,8 @@ from textual.binding import BindingType
 from ...engine.design.document import Design
 from ...engine.results import CheckResult
 from ..actions import bindings
-from ..bench_text import check_name
 from ..computing import Computing
+from ..margin_text import check_name
 from ..messages import Answered, AnswerRefused, SolverPreparing
 from ..origin_text import explanation_rows, origin_rows, together
 from ..shown import Span, fit, line, visible

@@ -35,13 +35,14 @@ class Page(Screen[Result], Generic[Result]):
         """The widgets above the notice."""
         yield from ()
 
-    def say(self, text: str) -> None:
-        """Puts something to know on the notice line."""
-        self.query_one(Notice).say(text)
+    def say(self, text: str, *, passing: bool = False) -> None:
+        """Puts something to know on the notice line; ``passing``: until the next key."""
+        self.query_one(Notice).say(text, passing=passing)
 
-    def refuse(self, text: str) -> None:
-        """Puts a refusal with its reason on the notice line."""
-        self.query_one(Notice).refuse(text)
+    def refuse(self, text: str, *, passing: bool = True) -> None:
+        """Puts a refusal with its reason on the notice line, until the next key or, not ``passing``, until it is
+        answered."""
+        self.query_one(Notice).refuse(text, passing=passing)
 
     def attempt(self, deed: Callable[[], object]) -> bool:
         """Does something that the engine or the store may refuse; a refusal goes to the notice line."""

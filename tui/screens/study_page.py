@@ -142,7 +142,7 @@ class StudyPage(Page[None], Generic[Sheet]):
         """The circuit cannot be computed as it stands."""
         if event.request == self._request:
             self._say("not computed", "nothing is known; the reason stands below")
-            self.refuse(event.reason)
+            self.refuse(event.reason, passing=False)
 
     def on_solver_preparing(self, event: SolverPreparing) -> None:
         """The first start on this machine."""

@@ -144,7 +144,7 @@ class WavesScreen(Page[None]):
             self._progress = "not computed"
             self._nothing_yet = "nothing can be drawn; the reason stands below"
             self._show()
-            self.refuse(event.reason)
+            self.refuse(event.reason, passing=False)
 
     def on_solver_preparing(self, event: SolverPreparing) -> None:
         """The first start on this machine."""

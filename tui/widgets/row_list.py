@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import ClassVar
@@ -15,6 +16,8 @@ from textual.strip import Strip
 from ..actions import bindings
 from ..shown import Line, Span, plain
 from .lines import TonedWidget
+
+_GAP = re.compile(r"(?<=\S) +(?=\S)")
 
 
 @dataclass(frozen=True, slots=True)
@@ -179,16 +182,24 @@ class RowList(TonedWidget, can_focus=True):
         return ((Span("  " + self._empty, "dim"),) if not self._rows and index == 0 else ()), False
 
     def _heading_with_count(self) -> Line:
+        """The heading with the number of rows out of sight, where it covers no column head."""
         above, below = self._top, max(0, len(self._rows) - self._top - self._body)
-        words = ", ".join(f"{n} {where}" for n, where in ((above, "above"), (below, "below")) if n)
-        if not words:
+        counted = [f"{n} {where}" for n, where in ((above, "above"), (below, "below")) if n]
+        if not counted:
             return self._heading
-        room = self.size.width - 3 - len(plain(self._heading))
-        note = f"({words})"
-        if len(note) <= room:
-            return (*self._heading, Span(" " * (room - len(note) + 1) + note, "dim"))
-        kept = max(0, self.size.width - 3 - len(note))
-        return (Span(plain(self._heading)[:kept] + " ", "dim"), Span(note, "dim"))
+        short = f"({self._top + 1}..{self._top + self._body} of {len(self._rows)})"
+        heads = plain(self._heading)
+        end = len(heads.rstrip())
+        for note in (f"({', '.join(counted)})", short):
+            start = self.size.width - 2 - len(note)
+            if start > end:
+                return (*_split(self._heading, end)[0], Span(" " * (start - end) + note, "dim"))
+            gap = next((found for found in _GAP.finditer(heads) if len(found[0]) >= len(note) + 2), None)
+            if gap is not None:
+                at = gap.start() + 1
+                before, after = _split(self._heading, at)
+                return (*before, Span(note, "dim"), *_split(after, len(note))[1])
+        return self._heading
 
     def _strip(self, drawn: tuple[Line, bool]) -> Strip:
         spans, here = drawn
@@ -206,3 +217,15 @@ class RowList(TonedWidget, can_focus=True):
         y = self._hand - self._top + self._head
         if self._rows and 0 <= y < self.size.height:
             self.refresh(Region(0, y, self.size.width, 1))
+
+
+def _split(spans: Line, at: int) -> tuple[Line, Line]:
+    """The line before and behind this character."""
+    before: list[Span] = []
+    after: list[Span] = []
+    for span in spans:
+        cut = max(0, min(at, len(span.text)))
+        before += [Span(span.text[:cut], span.tone)] if cut else []
+        after += [Span(span.text[cut:], span.tone)] if cut < len(span.text) else []
+        at -= len(span.text)
+    return tuple(before), tuple(after)

@@ -15,20 +15,31 @@ _MOST_LINES = 4
 
 
 class Notice(Lines):
-    """The newest notice, one line, or as many as a long one needs. It stays until something newer is said."""
+    """The newest notice, one line, or as many as a long one needs.
+
+    It stays until something newer is said; one that is ``passing``, as refusals are, until the next key.
+    """
 
     def __init__(self, id: str | None = None) -> None:
         super().__init__(id=id)
         self._said = ""
         self._mark = Span("")
+        self._passing = False
 
-    def say(self, text: str) -> None:
+    def say(self, text: str, *, passing: bool = False) -> None:
         """Something to know."""
+        self._passing = passing
         self._tell(text, Span(" "))
 
-    def refuse(self, text: str) -> None:
+    def refuse(self, text: str, *, passing: bool = True) -> None:
         """Something that was not done, with its reason."""
+        self._passing = passing
         self._tell(text, Span(" X ", "fail"))
+
+    def put_away(self) -> None:
+        """The next key: what was to be seen until then goes."""
+        if self._passing:
+            self.say("")
 
     @property
     def text(self) -> str:
