@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterable, Iterator
+from dataclasses import replace
 
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..parts.fuse import blown
 from ..parts.physics import REFERENCE
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
 from ..primitives.signals import START, Anchor, Row, integral, level
-from .check import Ask, Check, Judged, ratio, unknown
+from ..run import Observed
+from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .seen import Seen
 from .view import View
 
@@ -20,6 +23,28 @@ PULSE = 0.1  # s from the beginning of an inrush in which its I2t is counted
 BEFORE = 1e-3  # s before a load counts as on, in which its inrush began
 
 Judge = Callable[[Seen], Judged]
+
+
+def blown_in(observed: Observed) -> dict[str, Mask]:
+    """The fuses that have melted at the end of a run in some lane, and in which lanes."""
+    found = {}
+    for part in observed.circuit.design.parts:
+        if part.kind == "fuse" and blown(part.ref) in observed.circuit.builder.guards:
+            gone: Mask = observed.final[:, observed.circuit.index(blown(part.ref))] > 0.5
+            if gone.any():
+                found[part.ref] = gone
+    return found
+
+
+def with_blown_fuses(judged: Judged, observed: Iterable[Observed]) -> Judged:
+    """What was judged, with the fuses that have blown named where a margin is overrun."""
+    outcomes = list(judged.outcomes)
+    for each in observed:
+        for ref, gone in blown_in(each).items():
+            told = [(mask & gone, f"{words}; fuse {ref} has blown") for mask, words in outcomes if ref not in words]
+            overrun: Mask = gone & (judged.margin < 0.0)
+            outcomes = [*told, *outcomes, (overrun, f"fuse {ref} has blown")]
+    return judged if len(outcomes) == len(judged.outcomes) else replace(judged, outcomes=tuple(outcomes))
 
 
 def _asked(
@@ -86,8 +111,13 @@ def pulse_asks(check: Check, view: View) -> Iterator[Ask]:
             rows.append(integral(power, Anchor(0.0, on), Anchor(PULSE, on)))
 
         def judge(seen: Seen) -> Judged:
+            never = np.zeros(seen.lanes.count, dtype=bool)
             joules = np.nan_to_num(np.array([seen.value(row, name) for row in rows for name in names])).max(axis=0)
-            return ratio(joules / seen.lanes[part.ref, "resistance"], np.full(seen.lanes.count, allowed))
+            outcomes = [
+                (blown_in(seen.observed[name]).get(part.ref, never), check.words["blows"].format(sequence=name))
+                for name in names
+            ]
+            return ratio(joules / seen.lanes[part.ref, "resistance"], np.full(seen.lanes.count, allowed), outcomes)
 
         names = tuple(view.design.sequences)
         return Ask(check, stage.name, part.ref, names, required, judge, tuple(rows))
@@ -136,6 +166,7 @@ CHECKS = (
         formula="D = I2t within 0.1 s of the supply or the load coming on, C = derating x melting I2t",
         asks=pulse_asks,
         worst="high supply, stiff source",
+        words={"blows": "it blows in sequence {sequence}"},
     ),
     Check(
         number=26,

@@ -1,11 +1,12 @@
 """Check 2: does a load get the voltage it needs, and is it let go of when it is off?
 
-A relay's voltage to pick up is given at 20 C and grows with its copper, V20 (234.5 + T)/254.5 (common form).
+A relay's voltage to pick up is given at 20 C and grows with its copper, V20 (234.5 + T)/254.5 (common form), whose own
+heat counts where its thermal resistance is given.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 
 import numpy as np
 
@@ -34,8 +35,7 @@ def on_asks(check: Check, view: View) -> Iterator[Ask]:
         if least is None or view.bench(load.ref).on is None:
             yield unknown(check, stage.name, load.ref, sequence, required, f"{key} of {load.ref}")
         else:
-            needs = _with_copper(load, least.high)
-            yield _on_ask(check, view, stage, load, sequence, required, needs)
+            yield _on_ask(check, view, stage, load, sequence, required, least.high)
 
 
 def _loads(view: View) -> Iterator[tuple[Stage, Part]]:
@@ -50,11 +50,11 @@ def need_key(load: Part) -> str:
     return "pick_up" if load.kind == "coil" else "operating_minimum"
 
 
-def _with_copper(load: Part, volts: float) -> Callable[[Lanes], Floats]:
-    """A voltage at 20 C as it is at ambient: that of a coil grows with the resistance of its copper."""
+def _with_copper(load: Part, volts: float, lanes: Lanes, rise: Floats | float) -> Floats:
+    """A voltage at 20 C as it is now: that of a coil grows with the resistance of its copper."""
     if load.kind == "coil":
-        return lambda lanes: volts * copper_factor(lanes.ambient)
-    return lambda lanes: np.full(lanes.count, volts)
+        return np.asarray(volts * copper_factor(lanes.ambient + rise))
+    return np.full(lanes.count, volts)
 
 
 def _on_ask(
@@ -64,22 +64,27 @@ def _on_ask(
     load: Part,
     sequence: str,
     required: float,
-    needs: Callable[[Lanes], Floats],
+    volts: float,
 ) -> Ask:
-    plus, minus, _ = view.bench(load.ref).on or ("", "", 0.0)
+    bench = view.bench(load.ref)
+    plus, minus, _ = bench.on or ("", "", 0.0)
     at = view.moment(sequence, "sounding", "on") or Anchor(1e-2, view.event(f"{load.ref} on"))
     across = voltage(plus, minus)
     steady, most = level(across, at), maximum(across)
+    warm = None if bench.rise is None or load.kind != "coil" else level(bench.rise, at)
 
     def judge(seen: Seen) -> Judged:
-        wanted = needs(seen.lanes)
+        rise = 0.0 if warm is None else np.nan_to_num(seen.value(warm, sequence))
+        wanted = _with_copper(load, volts, seen.lanes, rise)
         given = seen.value(steady, sequence)
         given = np.where(np.isfinite(given), given, seen.value(most, sequence))
         never = given < REACHED * wanted
         words = check.words["never"].format(load=load.ref)
         return ratio(wanted, given, [(never, words)], _hand(view, stage, load, seen.lanes, wanted))
 
-    return Ask(check, stage.name, load.ref, (sequence,), required, judge, (steady, most))
+    return Ask(
+        check, stage.name, load.ref, (sequence,), required, judge, (steady, most, *(() if warm is None else (warm,)))
+    )
 
 
 def _hand(view: View, stage: Stage, load: Part, lanes: Lanes, wanted: Floats) -> Floats | None:
@@ -122,21 +127,22 @@ def _off_ask(check: Check, view: View, stage: Stage, load: Part, sequence: str, 
         return unknown(check, stage.name, load.ref, sequence, required, f"{key} of {load.ref}")
     plus, minus, _ = view.bench(load.ref).on or ("", "", 0.0)
     rows = tuple(level(voltage(plus, minus), at) for at in off)
-    lets_go = _with_copper(load, least.low)
     driver = view.role(stage, "driver")
-    leakage, draw = None if driver is None else view.bench(driver.ref).leakage, view.bench(load.ref).draw
+    bench = view.bench(load.ref)
+    leakage, draw = None if driver is None else view.bench(driver.ref).leakage, bench.inrush or bench.draw
 
     def judge(seen: Seen) -> Judged:
         left = np.array([seen.value(row, sequence) for row in rows])
         never = np.asarray(np.isnan(left).all(axis=0))
         largest = np.max(np.nan_to_num(left), axis=0)
         largest = np.where(largest < NOTHING, 0.0, largest)
+        lets_go = _with_copper(load, least.low, seen.lanes, 0.0)
         hand = None
         if leakage is not None and draw is not None:
-            # What leaks through the driver flows through the load, whose conductance is its draw at one volt.
+            # What leaks through the driver flows through the load, whose conductance is its draw at one volt, cold.
             leak = np.asarray(leakage(seen.lanes)) / draw(seen.lanes, np.ones(seen.lanes.count))
-            hand = 1.0 - leak / lets_go(seen.lanes)
-        return ratio(largest, lets_go(seen.lanes), [(never, check.words["never"])], hand)
+            hand = 1.0 - leak / lets_go
+        return ratio(largest, lets_go, [(never, check.words["never"])], hand)
 
     return Ask(check, stage.name, load.ref, (sequence,), required, judge, rows)
 

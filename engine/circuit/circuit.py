@@ -64,7 +64,7 @@ class Circuit:
         try:
             return self.nets[self.builder.net(net)]
         except KeyError:
-            hidden = {SUPPLY_SOURCE, *self.builder.injectors, *self.builder.temperatures}
+            hidden = {SUPPLY_SOURCE, *self.builder.injectors, *self.builder.hidden}
             known = ", ".join(sorted(n for n in self.nets if n not in hidden))
             raise CircuitError(f"net '{net}' is not in the design; write one of {known}") from None
 

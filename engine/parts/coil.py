@@ -1,7 +1,8 @@
 """Coil of a relay: a winding of copper with inductance, whose current moves an armature and the contacts on it.
 
 The armature answers to the current (ampere-turns), so a pick-up voltage given at 20 C is taken as a current through the
-winding's typical resistance at 20 C: with hot copper the same current needs more volts.
+winding's typical resistance at 20 C: with hot copper the same current needs more volts. With a thermal resistance the
+copper is as hot as its own heat makes it, with one time constant.
 """
 
 from __future__ import annotations
@@ -12,15 +13,19 @@ import numpy as np
 
 from ..errors import CircuitError
 from ..primitives.builder import Guard, constant
+from ..primitives.signals import voltage
 from .figures import figure, needed
 from .kind import TEXT, Entry, Kind
-from .physics import copper_factor
+from .own_heat import OWN_HEAT, own_heat
+from .physics import COPPER, ZERO_CELSIUS, copper_factor
 
 if TYPE_CHECKING:
     from ..design.document import Part
     from ..kernel.layout import Floats
     from ..primitives.builder import Builder, Law
     from ..primitives.columns import Lanes
+
+THERMAL_TIME = 300.0  # s, small relays, from memory
 
 
 def armature_of(ref: str) -> str:
@@ -42,8 +47,25 @@ def expand(part: Part, build: Builder) -> None:
     def hot(lanes: Lanes) -> Floats:
         return np.asarray(lanes[resistance] * copper_factor(lanes.ambient))
 
-    winding = build.branch(a, b, lambda lanes: lanes[inductance], hot)
     bench = build.bench(part.ref)
+    heat = own_heat(part, build, THERMAL_TIME)
+    if heat is None:
+        winding = build.branch(a, b, lambda lanes: lanes[inductance], hot)
+    else:
+        inner = f"{part.ref}/winding"
+        winding = build.branch(a, inner, lambda lanes: lanes[inductance], constant(0.0))
+        copper = build.warm(
+            inner,
+            b,
+            heat,
+            {
+                "level": lambda lanes: np.log((COPPER + 20.0) / lanes[resistance]),
+                "power": constant(-1.0),
+                "offset": constant(ZERO_CELSIUS - COPPER),
+                "ambient": lambda lanes: lanes.ambient + ZERO_CELSIUS,
+            },
+        )
+        bench.power, bench.rise = copper.power, voltage(heat)
     bench.currents["a"] = winding.current
     bench.draw = lambda lanes, volts: volts / hot(lanes)
     farads = figure(part, "capacitance", "F")
@@ -105,5 +127,6 @@ KIND = Kind(
             "s", about="from the drop-out current to the contacts' move; the armature's if not written"
         ),
         "v_max": Entry("V", about="largest lasting voltage"),
+        **OWN_HEAT,
     },
 )

@@ -1,6 +1,6 @@
 """Thermistors and light-dependent resistors: resistances that follow ambient, or a quantity that events set.
 
-Self-heating is left out: their temperature is that of what they follow.
+A thermistor with a thermal resistance is warmer than what it follows by its own heat, with one time constant.
 """
 
 from __future__ import annotations
@@ -10,19 +10,24 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from ..errors import CircuitError
+from ..kernel import layout
+from ..primitives.builder import Settable
+from ..primitives.signals import voltage
 from .figures import figure, needed, typical, valued
 from .kind import TEXT, Entry, Kind
 from .levels import reading_above_zero, reading_in
+from .own_heat import OWN_HEAT, own_heat
 from .physics import REFERENCE, ZERO_CELSIUS
 from .points import beta_of
 
 if TYPE_CHECKING:
     from ..design.document import Part
     from ..kernel.layout import Floats
-    from ..primitives.builder import Builder, Handle
+    from ..primitives.builder import Builder, Handle, Laws
     from ..primitives.columns import Lanes
 
 NTC_TOLERANCE, LIGHT_TOLERANCE = 0.05, 0.50  # customary where none is written, from memory
+THERMAL_TIME = 15.0  # s, beads of a few millimetres in still air, from memory
 COLDEST = -ZERO_CELSIUS
 GAMMA = 0.7  # slope of log R over log E, from memory
 REFERENCE_LIGHT = 10.0  # lx at which a light-dependent resistor is specified
@@ -72,7 +77,29 @@ def expand_thermistor(part: Part, build: Builder) -> None:
         return np.asarray(np.exp(lanes[beta] * (1.0 / (REFERENCE + ZERO_CELSIUS) - 1.0 / warm)) / lanes[value])
 
     a, b = part.pins["a"], part.pins["b"]
-    _note(part, build, build.settable(part.ref, a, b, lambda lanes: lanes.ambient, siemens, reading, _follows(part)))
+    heat = own_heat(part, build, THERMAL_TIME)
+    if heat is None:
+        handle = build.settable(part.ref, a, b, lambda lanes: lanes.ambient, siemens, reading, _follows(part))
+        _note(part, build, handle)
+        return
+    laws: Laws = {
+        "level": lambda lanes: lanes[beta] / (REFERENCE + ZERO_CELSIUS) - np.log(lanes[value]),
+        "beta": lambda lanes: -lanes[beta],
+        "ambient": lambda lanes: lanes.ambient + ZERO_CELSIUS,
+    }
+    handle = build.warm(a, b, heat, laws)
+    _note(part, build, handle)
+    build.bench(part.ref).rise = voltage(heat)
+    build.settables[part.ref] = Settable(
+        handle.index,
+        lambda lanes: lanes.ambient,
+        reading,
+        siemens,
+        _follows(part),
+        layout.WARM,
+        int(layout.W_AMBIENT),
+        lambda lanes, celsius: np.asarray(celsius) + ZERO_CELSIUS,
+    )
 
 
 def expand_light_resistor(part: Part, build: Builder) -> None:
@@ -115,6 +142,7 @@ KINDS = (
             "beta": Entry("K", about="B of the law R25 exp(B (1/T - 1/298.15))"),
             "hot_resistance": Entry("ohm", about="a second point, at hot_temperature, instead of beta"),
             "hot_temperature": Entry("degC"),
+            **OWN_HEAT,
         },
         {"beta": Entry("K")},
     ),

@@ -186,7 +186,10 @@ class Bench:
 
 
 class Builder:
-    """Filled by the ``expand`` functions of part kinds; :mod:`.circuit` makes arrays of it."""
+    """Filled by the ``expand`` functions of part kinds; :mod:`.circuit` makes arrays of it.
+
+    ``hidden`` are temperatures and states that lists of nets leave out.
+    """
 
     def __init__(self, supply_nominal: float = 0.0, alias: dict[str, str] | None = None) -> None:
         self.supply_nominal = supply_nominal
@@ -206,6 +209,7 @@ class Builder:
         self.operated: list[Operated] = []
         self.generators: dict[str, str] = {}
         self.injectors: list[str] = []
+        self.hidden: set[str] = set()
         self.batteries: dict[str, Law] = {}
         self.benches: dict[str, Bench] = {}
         self._alias = alias or {}
@@ -281,6 +285,7 @@ class Builder:
         """
         name = temperature_of(ref)
         self.temperatures.setdefault(name)
+        self.hidden.add(name)
         self.conductances.append((name, RETURN, per_kelvin))
         self.capacitances.append((name, RETURN, capacity))
         return name

@@ -10,6 +10,7 @@ import numpy as np
 from ..checks import catalogue
 from ..checks.check import Ask, Judged
 from ..checks.factors import FACTORS
+from ..checks.fuse import with_blown_fuses
 from ..checks.seen import Seen
 from ..checks.trial import Edge, Trial
 from ..checks.view import View
@@ -146,6 +147,8 @@ def judge(ask: Ask, seen: Seen) -> tuple[Judged, dict[int, str]]:
     Lanes in which the trial of an ask was not run count as infinitely good: they cannot be the worst.
     """
     judged = ask.judge(seen)
+    if ask.missing is None and ask.check.slug != "fuse_pulse":
+        judged = with_blown_fuses(judged, (seen.observed[sequence] for sequence in ask.sequences))
     if ask.trial is not None and ask.missing is None:
         edge = seen.edges.get(ask.trial.key)
         untried = np.ones(seen.lanes.count, dtype=bool) if edge is None else ~edge.tried

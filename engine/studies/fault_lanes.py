@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from ..checks.fuse import blown_in
 from ..checks.view import MAIN, View
 from ..kernel.layout import Floats
 from ..primitives.signals import START, Anchor, Row, crossing, level, maximum, voltage
@@ -118,6 +119,11 @@ class FaultLanes:
                 progress(int((k * total + done) * len(made.faults) / (total * len(sequences))))
 
             self._observed[sequence] = observe(made.circuit, made.lanes, sequence, rows, portion, cancelled)
+        self._blown = [
+            list(dict.fromkeys(ref for run in gone for ref, lanes in run.items() if lanes[lane] and not lanes[0]))
+            for gone in [[blown_in(each) for each in self._observed.values()]]
+            for lane in range(made.lanes.count)
+        ]
         self._heat = heat.shares(self._observed, float(made.lanes.ambient[0]))
 
     def standby(self, lane: int = 0) -> float | None:
@@ -141,6 +147,8 @@ class FaultLanes:
             outcome, said = Outcome.OVERHEATS, []
         if hot:
             said.append(f"overheats {', '.join(hot)}")
+        if self._blown[lane]:
+            said.append(f"blows {', '.join(self._blown[lane])}")
         beside = {each: its for each, its, _ in seen if each in (Outcome.RUNS_ON, Outcome.FALSE_ALARM)}
         said += [its for each, its in sorted(beside.items()) if SAID[each] not in words]
         detail = [self._otherwise(load, lane)] if outcome in (Outcome.STILL_ALARMS, Outcome.OVERHEATS) else []

@@ -44,7 +44,7 @@ def waves(
     sequence, and a run that could not be solved.
     """
     circuit = build(design)
-    hidden = {SUPPLY_SOURCE, "0V", *circuit.builder.injectors, *circuit.builder.temperatures}
+    hidden = {SUPPLY_SOURCE, "0V", *circuit.builder.injectors, *circuit.builder.hidden}
     wanted = tuple(nets) if nets else tuple(n for n in circuit.nets if n not in hidden)
     check_question(circuit, sequence, wanted, at)
     places = [circuit.index(net) for net in wanted]

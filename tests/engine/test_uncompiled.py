@@ -106,6 +106,12 @@ CASES: dict[str, Setup] = {
         supply="12 V",
         ends=30e-3,
     ),
+    "fuse that melts": setup(
+        two("fuse", "F1", "supply", "n", **{"class": "1 A slow"}),
+        two("thermistor", "RT1", "n", "0V", "1R", data={"beta": "3000 K", "thermal_resistance": "1 K/W"}),
+        supply="100 V",
+        ends=1e-3,
+    ),
     "pair in one case": setup(
         resistor("R1", "supply", "b", "1M"),
         transistor("Q1", "c", "b", "0V", "darlington_npn", **{"class": "power Darlington"}),

@@ -52,6 +52,16 @@ def test_the_inrush_of_a_capacitor_by_hand(farads: str, verdict: Verdict) -> Non
     assert (found.capability, found.verdict) == (1.0, verdict)
 
 
+def test_a_fuse_that_blows_is_told_wherever_something_fails() -> None:
+    # 60 mF would take 60e-3 x 144/2 = 4.3 A2s: it melts at 2 A2s, and the load that S1 puts on gets nothing then.
+    design = fused("0.5 A", "60000u")
+    found = margin(design, "fuse_pulse", "F1")
+    assert (found.verdict, found.margin, found.outcome) == (Verdict.FAIL, -1.0, "it blows in sequence alarm")
+    load = margin(design, "load_voltage", "LS1")
+    assert load.verdict is Verdict.FAIL
+    assert (load.outcome or "").endswith("fuse F1 has blown")
+
+
 @pytest.mark.parametrize(("source", "verdict"), [("0R9", Verdict.PASS), ("8R", Verdict.FAIL)])
 def test_a_short_behind_it_by_hand(source: str, verdict: Verdict) -> None:
     # 12 V / 1 ohm = 12 A, / 8.1 ohm = 1.48 A, for 2 A.

@@ -125,6 +125,13 @@ def test_a_fault_is_the_same_as_the_document_edited_by_hand() -> None:
     assert sound.on > lost.on + 1e-3
 
 
+def test_a_fuse_that_a_fault_blows_is_named() -> None:
+    # 6 V behind 0.5 + 0.1 ohm drive 10 A into R9's short: 2 A2s are over after 20 ms, and LS1 has the supply again.
+    branch = two("fuse", "F1", "supply", "f", **{"class": "1 A slow"}), resistor("R9", "f", "0V", "12R", rating="10 W")
+    found = outcome(study(buzzer(*branch)), "R9", "short")
+    assert (found.outcome, found.words) == (Outcome.STILL_ALARMS, "still alarms; blows F1")
+
+
 def test_a_resistor_overheats_by_ohms_law() -> None:
     # 2 x 100 ohm at 6 V: 0.09 W each; one shorted leaves 0.36 W to the other, 1.44 times 0.25 W.
     pair = (
