@@ -14,7 +14,7 @@ from .primitives.signals import BRANCH_CURRENT, Anchor, Row, Signal
 Read = tuple[tuple[int, int, int, int], float]
 """How the kernel reads a term, and the factor it has."""
 
-LASTING = {layout.R_MAXIMUM, layout.R_MINIMUM, layout.R_INTEGRAL}
+LASTING = {layout.R_MAXIMUM, layout.R_MINIMUM, layout.R_INTEGRAL, layout.R_LAGGED}
 POWERS = {
     layout.S_CONDUCTANCE_POWER,
     layout.S_JUNCTION_POWER,
@@ -75,7 +75,7 @@ class RowTable:
             place = -1
             if row.kind in LASTING:
                 place = len(lasting)
-                lasting.append(len(rows))
+                lasting += [len(rows)] * (2 if row.kind == layout.R_LAGGED else 1)
             rows.append((row.kind, self.signals[row.signal], 1 if row.rising else -1, row.nth, start, end, place))
             offsets.append((after, until))
         return Rows(

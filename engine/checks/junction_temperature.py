@@ -6,6 +6,10 @@ from which on the whole of R_th counts. Of all courses of power with the same pe
 the instant looked at heats most, because the response only falls with the age of a loss: so all energy beyond what is
 lost while the load is on, put into one rectangle of the peak power, is an upper bound, and so is the peak power for
 ever. The smaller of both counts. What is lost while the load is on is taken as constant.
+
+Where a thermal capacity is given, the loss itself is followed with the one time constant R_th C, from the temperature
+of stand-by on, instead of these bounds; what is lost in stand-by and at the end of a sequence is taken to last. Losses
+much shorter than R_th C, in which only part of the capacity takes heat, come out too cool: then leave it unwritten.
 """
 
 from __future__ import annotations
@@ -17,7 +21,7 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
-from ..primitives.signals import Anchor, Row, integral, level, maximum
+from ..primitives.signals import Anchor, Row, integral, lagged, level, maximum
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
 from .reverse_base_emitter import BIPOLAR
@@ -54,6 +58,19 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         if rated is None:
             return unknown(check, stage.name, part.ref, sequence, required, f"thermal_resistance of {part.ref}")
     kelvin = resistance.high if resistance is not None else (limit - RATED_AT) / rated.low if rated is not None else 0.0
+    capacity = view.datum(part, "thermal_capacity", "J/K")
+    if capacity is not None and min(capacity.low, kelvin) > 0.0:
+        lag = _Lag.of(view, part, kelvin * capacity.low)
+
+        def judge_lag(seen: Seen) -> Judged:
+            watts, lasting = (
+                np.max([each(seen, name) for name in lag.sequences], axis=0) for each in (lag.most, lag.steady)
+            )
+            allowed = limit - seen.lanes.ambient
+            hand = 1.0 - kelvin * lasting / np.where(allowed > 0.0, allowed, np.nan)
+            return ratio(kelvin * np.maximum(watts, lasting), allowed, hand=hand)
+
+        return Ask(check, stage.name, part.ref, lag.sequences, required, judge_lag, lag.rows)
     heat = _Heat.of(view, stage, part, whole)
 
     def judge(seen: Seen) -> Judged:
@@ -69,6 +86,46 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
 def _typical(view: View, part: Part, key: str, unit: str, customary: float) -> float:
     found = view.datum(part, key, unit)
     return customary if found is None else found.typical
+
+
+@dataclass(frozen=True)
+class _Lag:
+    """A part's loss, followed with the time constant of its package, and what of it lasts."""
+
+    sequences: tuple[str, ...]
+    standby: dict[str, Row]
+    last: dict[str, Row]
+    warmest: Row
+
+    @classmethod
+    def of(cls, view: View, part: Part, seconds: float) -> _Lag:
+        """The rows of a part that turns power to heat; ``seconds`` is R_th C."""
+        power = view.bench(part.ref).power
+        assert power is not None
+        standby = {
+            name: level(power, view.anchor("standby", name))
+            for name, sequence in view.design.sequences.items()
+            if "standby" in sequence.moments
+        }
+        last = {name: level(power, Anchor(view.ends(name))) for name in view.design.sequences}
+        return cls(tuple(last), standby, last, lagged(power, seconds))
+
+    @property
+    def rows(self) -> tuple[Row, ...]:
+        """Everything that is observed, in every sequence."""
+        return tuple(dict.fromkeys((*self.standby.values(), *self.last.values(), self.warmest)))
+
+    def steady(self, seen: Seen, name: str) -> Floats:
+        """The largest lasting loss in a sequence."""
+        found = [row[name] for row in (self.standby, self.last) if name in row]
+        return np.asarray(np.max([np.nan_to_num(seen.value(row, name)) for row in found], axis=0))
+
+    def most(self, seen: Seen, name: str) -> Floats:
+        """What the part is at most as warm as by, in watts of lasting loss; it begins as warm as stand-by leaves it."""
+        before = self.standby.get(name)
+        begun = 0.0 if before is None else np.nan_to_num(seen.value(before, name))
+        left = np.exp(-seen.time(self.warmest, name) / self.warmest.level)
+        return np.asarray(begun * left + seen.value(self.warmest, name))
 
 
 @dataclass(frozen=True)

@@ -101,7 +101,7 @@ S_WARM_CURRENT, S_WARM_POWER = 10, 11
 READ_LEVEL, READ_FLOW, READ_FLOW_POWER, READ_CONDUCTANCE, READ_CONDUCTANCE_POWER = 0, 1, 2, 3, 4
 
 # Kinds of observation rows.
-R_CROSSING, R_LEVEL, R_MAXIMUM, R_MINIMUM, R_INTEGRAL, R_SLEW = 0, 1, 2, 3, 4, 5
+R_CROSSING, R_LEVEL, R_MAXIMUM, R_MINIMUM, R_INTEGRAL, R_SLEW, R_LAGGED = 0, 1, 2, 3, 4, 5, 6
 
 # Columns of ``Rows.row``.
 ROW_KIND, ROW_SIGNAL, ROW_DIRECTION, ROW_NTH, ROW_FROM, ROW_TO, ROW_LASTING = 0, 1, 2, 3, 4, 5, 6
@@ -143,8 +143,8 @@ class Rows(NamedTuple):
     factor: Floats  # (terms,)
     signal: Places  # (signals + 1,) range of terms
     row: Ints  # (rows, 7) kind, signal, direction, n-th, from-row (-1 = start), to-row (-1 = end), place in lasting
-    lasting: Ints  # (n,) rows that are extremes or integrals
-    level: Floats  # (rows,)
+    lasting: Ints  # (n,) rows that are extremes or integrals, or lag: these twice
+    level: Floats  # (rows,) of a crossing; time constant in s of what lags
     offset: Floats  # (rows, 2) s added to from, to
     stop_row: Ints  # (1,) end the lane once this row is seen, -1 = never
     keep_row: Ints  # (kept,) keep the state once such a row is seen

@@ -459,7 +459,7 @@ def march_rows(
         settles = arrived | leapt
         if any_of(settles):
             note_lasting(
-                row, lasting, arrived, same(came, LEAPT), at(clock, BEGAN), at(clock, TOOK),
+                row, level, lasting, arrived, same(came, LEAPT), at(clock, BEGAN), at(clock, TOOK),
                 s0, sg, s1, best, best_at,
             )  # fmt: skip
             keep_parabola(arrived, leapt, h, x0, xg, x, first, second)

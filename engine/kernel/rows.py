@@ -13,6 +13,7 @@ from .layout import (
     OPEN,
     R_CROSSING,
     R_INTEGRAL,
+    R_LAGGED,
     R_LEVEL,
     R_MAXIMUM,
     R_MINIMUM,
@@ -102,6 +103,20 @@ def crossing(y0: float, yg: float, y1: float, level: float, rising: float, after
 
 
 @leaf
+def lagging(before: float, y0: float, ym: float, y1: float, a: float) -> float:
+    """As :func:`.lasting.lagging`, for one lane."""
+    if a < 1e-2:
+        flat = a * (1.0 - a * (1.0 / 2.0 - a * (1.0 / 6.0 - a / 24.0)))
+        rising = a * (1.0 / 2.0 - a * (1.0 / 6.0 - a * (1.0 / 24.0 - a / 120.0)))
+        bent = a * (1.0 / 3.0 - a * (1.0 / 12.0 - a * (1.0 / 60.0 - a / 360.0)))
+    else:
+        flat = 1.0 - math.exp(-a)
+        rising = 1.0 - flat / a
+        bent = 1.0 - 2.0 * rising / a
+    return before * (1.0 - flat) + y0 * flat + (4.0 * ym - 3.0 * y0 - y1) * rising + 2.0 * (y0 + y1 - 2.0 * ym) * bent
+
+
+@leaf
 def open_rows(
     row: Ints,
     offset: Floats,
@@ -138,11 +153,14 @@ def note(
     gamma: float,
     opens: float,
     closes: float,
+    w: int,
     lane: int,
     r: int,
+    place: int,
     value: Floats,
     time: Floats,
     status: Ints,
+    best_at: Floats,
 ) -> None:
     """Update row r with a signal that is y0, yg, y1 at start, stage and end of the step, within the row's window."""
     u0 = (opens - begin) / h if opens > begin else 0.0
@@ -171,6 +189,16 @@ def note(
         if status[lane, r] == NOT_YET or steepest > value[lane, r]:
             value[lane, r] = steepest
             time[lane, r] = begin + h
+            status[lane, r] = OPEN
+    elif kind == R_LAGGED:
+        lag = best_at[place + 1, w] if status[lane, r] == OPEN else 0.0
+        first = parabola(y0, yg, y1, u0, gamma)
+        middle = parabola(y0, yg, y1, 0.5 * (u0 + u1), gamma)
+        lag = lagging(lag, first, middle, parabola(y0, yg, y1, u1, gamma), (u1 - u0) * h / level)
+        best_at[place + 1, w] = lag
+        if status[lane, r] == NOT_YET or lag > value[lane, r]:
+            value[lane, r] = lag
+            time[lane, r] = begin + u1 * h
             status[lane, r] = OPEN
     else:
         sign = 1.0 if kind == R_MAXIMUM else -1.0
@@ -332,7 +360,7 @@ def watch(
                     continue
             note(
                 kind, float(row[r, ROW_DIRECTION]), row[r, ROW_NTH], level[r], y0, yg, y1, begin, h, gamma,
-                window[w, r, 0], window[w, r, 1], lane, r, value, time, status,
+                window[w, r, 0], window[w, r, 1], w, lane, r, row[r, ROW_LASTING], value, time, status, best_at,
             )  # fmt: skip
             if row[r, ROW_LASTING] >= 0:
                 listed_until[w] = -1.0

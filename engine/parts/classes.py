@@ -259,6 +259,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             "rated_voltage": "12 V",
             "operating_minimum": "6 V",
             "surge": ("2 A", "2 A", "2 A", "12 V"),
+            "surge_time": "30 ms",
         },
     },
     "piezo": {

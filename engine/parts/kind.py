@@ -27,6 +27,7 @@ class Entry:
 
 THERMAL: Mapping[str, Entry] = {
     "thermal_resistance": Entry("K/W", about="junction to ambient; from the rated power where none is written"),
+    "thermal_capacity": Entry("J/K", about="heats up with thermal_resistance as one lump, instead of thermal_time"),
     "t_j_max": Entry("degC", about="highest junction temperature; 150 C where none is written"),
     "thermal_time": Entry("s", about="pulse from which on the whole thermal resistance counts; 1 s where not written"),
 }

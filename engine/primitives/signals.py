@@ -54,7 +54,8 @@ class Row:
     """One observation. ``kind`` is one of :mod:`..kernel.layout`; ``end`` None means the end of the sequence.
 
     ``crossing``: the n-th time the signal passes ``level`` (rising or falling) in the window; ``level``: the signal at
-    ``start``; ``maximum`` / ``minimum`` / ``slew``: extremes in the window; ``integral``: over the window.
+    ``start``; ``maximum`` / ``minimum`` / ``slew``: extremes in the window; ``integral``: over the window; ``lagged``:
+    the largest value in the window of what follows the signal with a time constant (``level``, in s), from 0 on.
     """
 
     kind: int
@@ -96,3 +97,8 @@ def integral(signal: Signal, start: Anchor = START, end: Anchor | None = None) -
 def slew(signal: Signal, start: Anchor = START, end: Anchor | None = None) -> Row:
     """The steepest slope in the window, per second."""
     return Row(layout.R_SLEW, signal, start, end)
+
+
+def lagged(signal: Signal, seconds: float, start: Anchor = START, end: Anchor | None = None) -> Row:
+    """The largest value in the window of y' = (signal - y) / seconds, y = 0 at its start: a power becomes heat."""
+    return Row(layout.R_LAGGED, signal, start, end, seconds)

@@ -19,6 +19,7 @@ _TAKEN = {
     layout.R_MINIMUM: "smallest",
     layout.R_INTEGRAL: "integral of the",
     layout.R_SLEW: "steepest slope of the",
+    layout.R_LAGGED: "largest lagging",
 }
 
 

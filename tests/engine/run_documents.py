@@ -15,7 +15,17 @@ from stagebook.engine.circuit.circuit import build
 from stagebook.engine.circuit.timeline import timeline
 from stagebook.engine.design.document import Design
 from stagebook.engine.kernel.compiled import COMPILED
-from stagebook.engine.primitives.signals import Anchor, crossing, integral, level, maximum, minimum, slew, voltage
+from stagebook.engine.primitives.signals import (
+    Anchor,
+    crossing,
+    integral,
+    lagged,
+    level,
+    maximum,
+    minimum,
+    slew,
+    voltage,
+)
 from stagebook.engine.quantity import read
 from stagebook.engine.run import run
 
@@ -31,7 +41,7 @@ def results(document: dict[str, Any]) -> dict[str, Any]:
     for net in design.nets:
         signal = voltage(net)
         rows += [level(signal, Anchor(0.5 * ends)), crossing(signal, 1.0, True), crossing(signal, 1.0, False)]
-        rows += [maximum(signal), minimum(signal), integral(signal), slew(signal)]
+        rows += [maximum(signal), minimum(signal), integral(signal), slew(signal), lagged(signal, 0.1 * ends)]
     for bench in circuit.benches.values():
         rows += [maximum(current) for current in bench.currents.values()]
         rows += [] if bench.power is None else [integral(bench.power)]

@@ -13,6 +13,7 @@ from stagebook.engine.primitives.signals import (
     Signal,
     crossing,
     integral,
+    lagged,
     level,
     maximum,
     minimum,
@@ -103,6 +104,31 @@ def test_extremes_of_a_monotonous_window_are_its_ends(wave: Setup) -> None:
     for row, phase in ((highest, 0.30), (lowest, 0.62)):
         assert seen.value(row)[0] == pytest.approx(OFFSET + AMPLITUDE * math.sin(2 * math.pi * phase), abs=2e-3)
         assert seen.time(row)[0] == pytest.approx(phase * PERIOD, rel=1e-6)
+
+
+@pytest.mark.parametrize("seconds", [1e-4, 3e-3, 1.0])
+def test_what_lags_is_what_a_filter_would_show(seconds: float) -> None:
+    # y' = (s - y) / tau is a resistance and a capacitance: the same circuit has one of the same time constant.
+    pulses = [(0.0, 0.0), (2e-3, 4.0), (3e-3, 4.0), (3.1e-3, 0.0), (8e-3, 0.0), (8.1e-3, 3.0), (9e-3, 1.0)]
+    case = setup(
+        steps("G1", "in", "0V", *pulses),
+        resistor("R1", "in", "n", "1k"),
+        capacitor("C1", "n", "0V", seconds / 1e3),
+        supply=None,
+        ends=12e-3,
+    )
+    lag, filtered = lagged(voltage("in"), seconds), maximum(voltage("n"))
+    seen = case.run(lag, filtered, relative=1e-5)
+    assert seen.value(lag)[0] == pytest.approx(seen.value(filtered)[0], rel=1e-3)
+    assert seen.time(lag)[0] == pytest.approx(seen.time(filtered)[0], abs=0.2e-3)
+
+
+def test_what_lags_in_a_window_begins_at_nothing(wave: Setup) -> None:
+    # From the top of the sine on, 3 V falling: y of a lag of one second is the integral from there, at most where the
+    # window ends with the signal still above y.
+    window = Anchor(0.25 * PERIOD), Anchor(0.5 * PERIOD)
+    whole = OFFSET * 0.25 * PERIOD + AMPLITUDE * PERIOD / (2 * math.pi)
+    assert observed(wave, lagged(voltage("in"), 1.0, *window)) == pytest.approx(whole, rel=3e-3)
 
 
 @pytest.mark.parametrize("window", [(0.0, 1.0), (0.0, 0.5), (0.13, 0.21), (0.4, 3.7)])

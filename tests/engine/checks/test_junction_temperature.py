@@ -80,6 +80,24 @@ def test_a_pulse_between_the_moments() -> None:
     assert slow.demand == pytest.approx(0.8, rel=0.1)
 
 
+def test_a_thermal_capacity_follows_the_loss() -> None:
+    # 0.1 s of 0.2 W into 200 K/W and 5 mJ/K: tau = 1 s, rise 40 K (1 - exp(-0.1)) = 3.8 K; for ever it would be 40 K.
+    pulse = ((0.0, 0.0), (0.1, 0.0), (0.1001, 5.7), (0.2, 5.7), (0.2001, 0.0))
+    data = {"thermal_resistance": "200 K/W", "thermal_capacity": "5 mJ/K"}
+    found = margin(follower(data, pulse), "junction_temperature", "Q1")
+    assert found.demand == pytest.approx(40.0 * (1.0 - math.exp(-0.1)), rel=0.03)
+    # What still flows at the end of the sequence is taken to last.
+    lasting = margin(follower(data, ((0.0, 0.0), (0.5, 0.0), (0.501, 5.7))), "junction_temperature", "Q1")
+    assert lasting.demand == pytest.approx(40.0, rel=0.03)
+
+
+def test_a_loss_in_standby_counts_once() -> None:
+    # 0.2 W at the moment stand-by and at all times: 40 K, however short the sequence is beside 100 s.
+    data = {"thermal_resistance": "200 K/W", "thermal_capacity": "0.5 J/K"}
+    found = margin(follower(data, moments={"standby": "0.5 s"}), "junction_temperature", "Q1")
+    assert found.demand == pytest.approx(40.0, rel=0.03)
+
+
 def test_a_zener_has_its_heat_too() -> None:
     # 5 V, 20 mA: 0.1 W and (150 - 25)/0.5 = 250 K/W: 25 K.
     of = design(
