@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from .circuit.circuit import Circuit
+from .circuit.cost import iterate_cost
 from .errors import Cancelled
 from .kernel import layout
 from .kernel.layout import Control, Floats, Program, Results, ints
@@ -32,6 +33,8 @@ ABSOLUTE_RISE = 0.01  # K
 TIGHT, TIGHT_ABSOLUTE = 0.03, 0.2
 BLOCK = 64  # most lanes handed to a thread at a time
 MOST_STEPS = 200_000
+MOST_SECONDS = 10.0  # that a lane may take on one core, by circuit/cost.py
+ITERATES = 2.2  # a step, about: one for its stage, one for its end, and some more where laws bend
 MOST_ITERATIONS = 12
 MOST_AT_JUMP = 200
 
@@ -101,8 +104,13 @@ class Observed:
         return self.results.final
 
 
-def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
-    """Tolerances of every unknown, tighter on nets that carry timing capacitors."""
+def most_steps(circuit: Circuit, rows: int = 0) -> int:
+    """How many steps a lane may take, with so many rows watched: fewer in a large circuit, where each costs more."""
+    return int(min(MOST_STEPS, MOST_SECONDS / (ITERATES * iterate_cost(circuit.topology, rows))))
+
+
+def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Control:
+    """Tolerances of every unknown, tighter on nets that carry timing capacitors, and bounds of the work of a lane."""
     nets, free = int(circuit.topology.size[0]), int(circuit.topology.size[1])
     scale = relative / RELATIVE
     rtol = np.full(free, relative)
@@ -117,7 +125,7 @@ def control(circuit: Circuit, relative: float = RELATIVE) -> Control:
                     if place < nets:
                         rtol[place] = relative * TIGHT
                         atol[place] = ABSOLUTE * scale * TIGHT_ABSOLUTE
-    return Control(rtol, atol, ints([MOST_STEPS, MOST_ITERATIONS, MOST_AT_JUMP]))
+    return Control(rtol, atol, ints([most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP]))
 
 
 def run(
@@ -164,7 +172,8 @@ def run(
     )
     starts = layout.zeros(count, n_all) if start is None else np.ascontiguousarray(start)
     laws = circuit.table(lanes) if table is None else table
-    arguments = (circuit.topology, laws, starts, program, made, control(circuit, relative), results)
+    bounds = control(circuit, relative, len(asked.places))
+    arguments = (circuit.topology, laws, starts, program, made, bounds, results)
     cancel = np.zeros(1, dtype=np.uint8)
     workers = threads or os.cpu_count() or 1
     blocks = workers * -(-count // (workers * BLOCK))  # as many for each thread

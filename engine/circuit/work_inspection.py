@@ -1,8 +1,9 @@
 """How much work a sequence is for one lane: moves of contacts, levels and sources, and periods of a sine.
 
 After every move the kernel starts again with a step of 1 ps and needs some twenty steps to be back at its pace; a sine
-takes at least twenty steps a period. What is allowed here stays below the steps that a run may take (``run.py``), so
-that a document is refused in words before it is computed, and not lane by lane after minutes.
+takes at least twenty steps a period. What is allowed here stays below the steps that a run of a circuit of some twenty
+nets may take (``run.py``), so that a document is refused in words before it is computed, and not lane by lane after
+minutes. How much the size of the circuit itself makes of it is known once it is built: ``cost.py``.
 """
 
 from __future__ import annotations

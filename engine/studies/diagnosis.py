@@ -12,7 +12,7 @@ from ..kernel import layout
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..quantity import write
-from ..run import Observed, run
+from ..run import MOST_STEPS, Observed, run
 from .sequences import program_of, starts_of
 
 GLANCE = 8000  # steps of the look at what a lane does that took too many
@@ -31,14 +31,14 @@ def diagnosed(observed: Observed, lanes: Lanes, sequence: str, lane: int) -> str
     circuit, own = observed.circuit, lanes.take([lane])
     at, state = float(observed.results.ended_at[lane]), observed.results.final[lane : lane + 1]
     if how == layout.OVERWORKED:
-        return _overworked(circuit, own, sequence, at, state)
+        return _overworked(circuit, own, sequence, at, state, int(observed.results.work[lane, 0]))
     if how == layout.UNSOLVED:
         worst = _place(circuit, int(observed.results.ended[lane, 1]))
         return _unsolved(circuit, own, sequence, at, state, worst)
     return observed.failure(lane)
 
 
-def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: Floats) -> str:
+def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: Floats, steps: int) -> str:
     """What a lane does that takes so many steps: a look at how it would go on."""
     before, _ = program_of(circuit, lane, sequence)
     line = Timeline.resumed(before, np.array([at]))
@@ -52,6 +52,8 @@ def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: 
         if cycle is not None and (found is None or size > found[1]):
             found = cycle, size, circuit.unknown_name(k)
     begin = f"took too many steps by {write(at, 's', 4)}"
+    if steps < MOST_STEPS:
+        begin += f" ({steps} are the most in a circuit of {int(circuit.topology.size[0])} nets)"
     if found is not None:
         return (
             f"{begin}: it goes on oscillating near net {found[2]} at about {write(1.0 / found[0], 'Hz')}; end the "

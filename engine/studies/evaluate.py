@@ -117,19 +117,33 @@ def look(
             progress(k * total + done, len(wanted) * total)
 
         observed[sequence] = observe(circuit, lanes, sequence, rows, portion, cancelled, begins.get(sequence, ()))
-    edges: dict[str, Edge] = {}
-    for ask in asks:
-        if ask.trial is not None and ask.trial.key not in edges and trials is not None:
-            index = sorted(set(trials.get(ask.trial.key, ())))
-            if index:
-                kept = kept_state(observed, ask.trial, index)
-                found = TrialRun(circuit, ask.trial, lanes.take(index), cancelled, kept).edge(resolution)
-                edges[ask.trial.key] = found.scattered(index, lanes.count)
+    edges = {} if trials is None else edges_of(circuit, asks, lanes, observed, trials, resolution, cancelled)
 
     def again(sequence: str, rows: tuple[Row, ...], altered: Lanes) -> Observed:
         return observe(circuit, altered, sequence, rows, cancelled=cancelled)
 
     return Seen(circuit, lanes, observed, edges, again)
+
+
+def edges_of(
+    circuit: Circuit,
+    asks: Sequence[Ask],
+    lanes: Lanes,
+    observed: Mapping[str, Observed],
+    trials: Mapping[str, Sequence[int]],
+    resolution: float | None = None,
+    cancelled: Callable[[], bool] = never,
+) -> dict[str, Edge]:
+    """Bisect every trial, by its key, in the lanes that ``trials`` gives for it; ``observed`` are the runs of all."""
+    edges: dict[str, Edge] = {}
+    for ask in asks:
+        if ask.trial is not None and ask.trial.key not in edges:
+            index = sorted(set(trials.get(ask.trial.key, ())))
+            if index:
+                kept = kept_state(observed, ask.trial, index)
+                found = TrialRun(circuit, ask.trial, lanes.take(index), cancelled, kept).edge(resolution)
+                edges[ask.trial.key] = found.scattered(index, lanes.count)
+    return edges
 
 
 def kept_state(observed: Mapping[str, Observed], trial: Trial, index: Sequence[int]) -> tuple[Floats, Floats] | None:

@@ -16,13 +16,15 @@ import numpy as np
 from ..checks.check import Ask, Judged
 from ..circuit.circuit import Circuit, build
 from ..design.document import Design
+from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..results import ENGINE, CheckResult, Depth, MarginSheet, Verdict
 from ..run import never, silent
 from .corner import Corner
 from .corner_words import Effects, named, of_conditions, of_parts, used
-from .evaluate import Progress, asks_of, judge, look
+from .effort import beyond
+from .evaluate import Progress, asks_of, edges_of, judge, look
 from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, settings, tolerances
 from .mirrored import with_mirrored
 from .spread import spread_of
@@ -62,16 +64,18 @@ def study(
             report(made)
         return made
 
-    nominal = watch(circuit, asks, _nominal(circuit, asks, cancelled), cancelled)
-    checks = [_result(ask, corner, nominal[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, nominal)]
+    first, too_large = _nominal(circuit, asks, cancelled)
+    nominal = watch(circuit, asks, first if too_large is None else _unsearched(first, too_large), cancelled)
+    middle = nominal if too_large is None else first
+    checks = [_result(ask, corner, middle[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, nominal)]
     made = sheet(Depth.NOMINAL, checks)
-    worst = watch(circuit, asks, _searched(circuit, asks, nominal, progress, cancelled), cancelled)
+    known = tuple(ask for ask in asks if nominal[ask.id].broken is None)
+    worst = watch(circuit, known, _searched(circuit, asks, nominal, progress, cancelled), cancelled)
     worst = with_mirrored(circuit, asks, worst, cancelled)
-    checks = [_result(ask, corner, nominal[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, worst)]
+    checks = [_result(ask, corner, middle[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, worst)]
     made = sheet(Depth.CORNERS, checks)
     if lanes > 0:
         drawn = random_lanes(circuit.columns, lanes, seed)
-        known = tuple(ask for ask in asks if nominal[ask.id].broken is None)
         spreads = spread_of(circuit, known, drawn, progress, cancelled)
         checks = [replace(check, spread=spreads.get(check.id)) for check in checks]
         made = sheet(Depth.SPREAD, checks)
@@ -79,8 +83,11 @@ def study(
 
 
 def worst_corners(circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool] = never) -> dict[str, Corner]:
-    """The worst corner of every ask, by its id."""
-    return _searched(circuit, asks, _nominal(circuit, asks, cancelled), silent, cancelled)
+    """The worst corner of every ask, by its id. Raises CircuitError where the design is too large for them."""
+    nominal, too_large = _nominal(circuit, asks, cancelled)
+    if too_large is not None:
+        raise CircuitError(too_large)
+    return _searched(circuit, asks, nominal, silent, cancelled)
 
 
 def _searched(
@@ -101,16 +108,36 @@ def _pairs(asks: tuple[Ask, ...], corners: dict[str, Corner]) -> list[tuple[Ask,
     return [(ask, corners[ask.id]) for ask in asks]
 
 
-def _nominal(circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool]) -> dict[str, Corner]:
+def _nominal(
+    circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool]
+) -> tuple[dict[str, Corner], str | None]:
+    """Every ask in the nominal lane, and why no corners can be searched; trials are not begun where that is so."""
     lanes = circuit.nominal()
-    trials = {ask.trial.key: [0] for ask in asks if ask.trial is not None}
-    seen = look(circuit, asks, lanes, trials=trials, cancelled=cancelled)
+    seen = look(circuit, asks, lanes, cancelled=cancelled)
+    too_large = beyond(circuit, asks, seen.observed)
+    if too_large is None:
+        trials = {ask.trial.key: [0] for ask in asks if ask.trial is not None}
+        seen = replace(seen, edges=edges_of(circuit, asks, lanes, seen.observed, trials, cancelled=cancelled))
     found = {}
     for ask in asks:
         judged, broken = judge(ask, seen)
         edge = None if ask.trial is None else seen.edges.get(ask.trial.key)
+        if ask.trial is not None and too_large is not None:
+            judged.margin[:] = np.nan
         found[ask.id] = Corner(NOMINAL, "nominal", judged, 0, lanes, broken.get(0), edge, _reach([judged]))
-    return found
+    return found, too_large
+
+
+def _unsearched(corners: dict[str, Corner], why: str) -> dict[str, Corner]:
+    """The same without margins: what is known in the nominal lane only is no worst corner."""
+    return {
+        name: replace(
+            corner,
+            judged=replace(corner.judged, margin=np.full_like(corner.judged.margin, np.nan)),
+            broken=corner.broken or why,
+        )
+        for name, corner in corners.items()
+    }
 
 
 def _corners(

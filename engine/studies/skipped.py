@@ -20,6 +20,8 @@ SHORTEST = 1e-6  # s; a step that skips a growing mode is soon followed by longe
 ALIKE = 0.3  # largest change of an entry of C or G, beside its diagonals, between states that share their modes
 FINE = 0.01  # the same once a growing mode was found, to see where it begins
 MOST_STATES = 1500  # of one run that are looked at: those that the longest steps reached
+MOST_MODES = 7e9  # states times unknowns cubed: some 20 s of eigenvalues; from 170 unknowns on fewer states are seen
+MOST_ENTRIES = 2_000_000  # of the matrices that are in memory at a time
 BRIEF = 2e-3  # of the time since the beginning: a switching that is met so little late is met in time
 FEW = 5.0  # periods in that time which are no oscillation to speak of
 BETWEEN = 24  # states between two, to see where a mode begins to grow
@@ -54,8 +56,9 @@ def skipped(
     looked = np.flatnonzero(step > SHORTEST)
     if not looked.size or not circuit.topology.size[1]:
         return None  # nothing was long, or everything is driven
-    if looked.size > MOST_STATES:
-        looked = np.sort(looked[np.argpartition(-step[looked], MOST_STATES)[:MOST_STATES]])
+    most = max(1, min(MOST_STATES, int(MOST_MODES / float(circuit.topology.size[1]) ** 3)))
+    if looked.size > most:
+        looked = np.sort(looked[np.argpartition(-step[looked], most)[:most]])
     table = circuit.table(lane)
     modes = _modes(circuit, parameters_at(circuit, table, program, 0, time[looked]), states[looked], alike)
     for number, (found, first) in enumerate(_regions(circuit, time, step, looked, modes)):
@@ -73,7 +76,17 @@ def skipped(
 
 
 def _modes(circuit: Circuit, parameters: Floats, states: Floats, alike: float) -> list[list[Mode]]:
-    """Growing modes at every state. Those whose matrices are alike, entry by entry beside the diagonals, share them."""
+    """Growing modes at every state, as many states at a time as memory should hold."""
+    portion = max(2, MOST_ENTRIES // int(circuit.topology.size[1]) ** 2)
+    return [
+        modes
+        for low in range(0, len(states), portion)
+        for modes in _modes_alike(circuit, parameters[low : low + portion], states[low : low + portion], alike)
+    ]
+
+
+def _modes_alike(circuit: Circuit, parameters: Floats, states: Floats, alike: float) -> list[list[Mode]]:
+    """The same. Those whose matrices are alike, entry by entry beside the diagonals, share them."""
     conductance, capacitance = matrices(circuit, parameters, np.ascontiguousarray(states))
     both = np.stack([conductance, capacitance], axis=1)
     scale = 1.0 / np.sqrt(np.maximum(np.abs(both.diagonal(axis1=2, axis2=3)), 1e-18))

@@ -22,7 +22,7 @@ from ..kernel.layout import Floats, Program
 from ..primitives.columns import CONDITIONS, Lanes
 from ..primitives.signals import Row
 from ..quantity import write
-from ..run import Observed, never, run
+from ..run import Observed, most_steps, never, run
 from .sequences import program_of, starts_of
 from .skipped import ALIKE, FINE, Skipped, skipped
 
@@ -32,7 +32,7 @@ AFTER = 30  # periods that are still resolved after it must have shown
 TOO_SLOW = 0.01  # growth in parts of |s| that steps of that length still damp out
 PIECES = 32  # of the step in which the growth began, to find where
 ROUNDS = 8  # repeated runs of one lane
-MOST_STEPS = 300_000  # that they may take together
+TOGETHER = 1.5  # times the steps that a lane may take, for all of them
 MOST_STOPS = 30_000  # the work bound: steps that a repetition may be asked to take
 FIRST_POINTS, MOST_POINTS = 4096, 250_000
 BALANCES = "balances"
@@ -154,7 +154,7 @@ def watched(
             said, more = found, resolving
         stops = np.unique(np.concatenate([stops, more]))
         stops = stops[(stops > 0.0) & (stops < program.length[0].sum())]
-        if stops.size > MOST_STOPS or work > MOST_STEPS:
+        if stops.size > MOST_STOPS or work > TOGETHER * most_steps(circuit):
             return Watched(plain, f"{_where(found)}: {_BEYOND}", True)
         observed, program = traced(circuit, lane, sequence, rows, keep, stops, cancelled)
         work += int(observed.results.work[0, 0])
