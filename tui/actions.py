@@ -44,7 +44,8 @@ ACTIONS: tuple[Action, ...] = (
     Action("shelf", "open", "enter", "Enter", "open", "open the design on the bench", 2),
     Action("shelf", "new", "n", "n", "new", "a new design: stages in a row, empty, or a copy of this one", 3),
     Action("shelf", "import_file", "i", "i", "import", "put a design document (.json) on the shelf", 4),
-    Action("shelf", "quit", "q", "q", "leave", "leave; every edit is kept already", 5),
+    Action("shelf", "drawer", "p", "p", "drawer", "parts made of datasheet points, to use in any design", 5),
+    Action("shelf", "quit", "q", "q", "leave", "leave; every edit is kept already", 6),
     # a new design of stages in a row
     Action("row", "settings", "enter", "Enter", "settings", "what is asked of the stage under the hand", 2),
     Action("row", "add", "a", "a", "add", "a stage of the catalogue after the one under the hand", 3),
@@ -103,7 +104,8 @@ ACTIONS: tuple[Action, ...] = (
     Action("compare", "column_left", "left", "left", "column", "the causes of the revision before"),
     Action("compare", "column_right", "right", "left right", "column", "the causes of the next revision", 3),
     Action("compare", "origin", "w,enter", "w", "origin", "where the margin of this row comes from", 2),
-    Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 4),
+    Action("compare", "fold", "m", "m", "all or changed", "also the margins that did not change, or not", 4),
+    Action("compare", "back", "escape,b", "b", "back", "back (Esc does the same)", 5),
     # data of a part, the drawer
     Action("data", "change", "enter,e", "Enter", "change", "write this figure anew; empty takes it out", 2),
     Action("data", "keep", "k", "k", "keep", "keep these data in the drawer, to use them in any design", 3),

@@ -13,7 +13,7 @@ from ..storage.values import Draft
 from .chain_picture import Link
 from .figures import Figures
 from .margin_text import check_name
-from .shown import WORDS, Line, Span, columns, fit, line, percent, points
+from .shown import WORDS, Line, Span, columns, counted, fit, line, percent, points
 from .widgets.row_list import Row
 
 _ROOMY = 60
@@ -24,7 +24,7 @@ _WORSE_THAN_PASS = (Verdict.FAIL, Verdict.THIN, Verdict.UNKNOWN)
 def heading(draft: Draft, figures: Figures, progress: str, width: int, looking: bool = False) -> Line:
     """Name, whether it is only looked at, what the draft is based on, conditions, and how far the study is."""
     base = "not saved yet" if draft.base_revision is None else f"draft on r{draft.base_revision}"
-    edits = "no edits" if draft.edits == 0 else f"{draft.edits} edit{'s' * (draft.edits != 1)}"
+    edits = "no edits" if draft.edits == 0 else counted(draft.edits, "edit")
     left = f" {draft.name}{' (only looked at)' if looking else ''}  {base}, {edits}  {conditions_words(draft.design)}"
     right = " FROZEN: f shows the figures " if figures.frozen else f" {progress} " if width >= _ROOMY else ""
     room = max(0, width - len(right))
@@ -95,7 +95,7 @@ def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher
     if part.drawer:
         known.append(f"drawer: {part.drawer}")
     if memory:
-        known.append(f"{memory} figures from memory (i)")
+        known.append(f"{counted(memory, 'figure')} from memory (i)")
     if was is not None and was != part.value:
         known.append(f"last was {was}")
     if lower:
@@ -108,7 +108,7 @@ def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher
 def spread_words(sheet: MarginSheet, lanes: int) -> str:
     """What stands in the heading when a sheet of this depth is known, of a study that goes on to ``lanes`` lanes."""
     if sheet.depth is Depth.SPREAD:
-        return f"spread of {sheet.lanes} lanes"
+        return f"spread of {counted(sheet.lanes, 'lane')}"
     if sheet.depth is Depth.CORNERS and not lanes:
         return "corners, no spread"
     return f"computing: {sheet.depth} known"

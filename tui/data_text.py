@@ -7,7 +7,7 @@ from ..engine.parts.classes import SOURCE
 from ..engine.parts.made import from_memory
 from ..engine.parts.part_data import PartDatum, part_data
 from .bench_text import kind_words
-from .shown import Line, Span, columns, fit, line
+from .shown import Line, Span, columns, counted, fit, line
 from .widgets.row_list import Row
 
 _NAME, _LIMIT, _CONDITION = 23, 9, 14
@@ -17,7 +17,7 @@ def data_title(part: Part, name: str) -> Line:
     """What the part is, where its data are from, and how much of it comes from memory."""
     origin = f"from the drawer: {part.drawer}" if part.drawer else f"class {part.class_}" if part.class_ else "no class"
     memory = len(from_memory(part))
-    words = f"   {memory} figures from {SOURCE}" if memory else ""
+    words = f"   {counted(memory, 'figure')} from {SOURCE}" if memory else ""
     return line(Span(f" {name}: {kind_words(part)}, {origin}", "strong"), Span(words, "thin"))
 
 

@@ -16,7 +16,25 @@ from ..storage.store import Store
 from ..storage.values import Draft, MadePart, Note, Revision
 
 
-class Drafting:
+class Drawer:
+    """The parts in the drawer of a store. Methods raise EngineError or StorageError with one line."""
+
+    def __init__(self, store: Store) -> None:
+        self._store = store
+
+    def drawer(self, *, every_version: bool = False) -> list[MadePart]:
+        """The parts in the drawer: the newest version of each, or all."""
+        newest = self._store.drawer()
+        if not every_version:
+            return newest
+        return [made for part in newest for made in reversed(self._store.part_versions(part.name))]
+
+    def keep_part(self, name: str, document: Mapping[str, Any]) -> MadePart:
+        """Puts a part into the drawer."""
+        return self._store.keep_part(name, document)
+
+
+class Drafting(Drawer):
     """One design's draft and the revision it began from. ``looking`` is set while it is not open to be edited here.
 
     Every method that changes something raises EngineError or StorageError with one line and then has changed
@@ -24,7 +42,7 @@ class Drafting:
     """
 
     def __init__(self, store: Store, name: str) -> None:
-        self._store = store
+        super().__init__(store)
         self.draft: Draft = store.draft(name)
         self.looking = True
         self.base: Revision | None = self._base()
@@ -109,17 +127,6 @@ class Drafting:
         self.base = revision
         return revision
 
-    def drawer(self, *, every_version: bool = False) -> list[MadePart]:
-        """The parts in the drawer: the newest version of each, or all."""
-        newest = self._store.drawer()
-        if not every_version:
-            return newest
-        return [made for part in newest for made in reversed(self._store.part_versions(part.name))]
-
-    def keep_part(self, name: str, document: Mapping[str, Any]) -> MadePart:
-        """Puts a part into the drawer."""
-        return self._store.keep_part(name, document)
-
     def changes(self) -> tuple[Change, ...]:
         """What differs from the revision the draft began from."""
         if self.base is None:
@@ -167,7 +174,7 @@ class Drafting:
 
 
 class MadeDraft:
-    """A part that is being made for the drawer. Nothing is kept before :meth:`Drafting.keep_part`."""
+    """A part that is being made for the drawer. Nothing is kept before :meth:`Drawer.keep_part`."""
 
     def __init__(self, document: Mapping[str, Any], name: str) -> None:
         """Raises DesignError for a document that is no part."""

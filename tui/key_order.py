@@ -34,9 +34,14 @@ class KeyOrder:
         self._waiting: deque[events.Key] = deque()
         self._task: asyncio.Task[None] | None = None
 
+    @property
+    def busy(self) -> bool:
+        """Whether a key is under way."""
+        return self._task is not None and not self._task.done()
+
     async def take(self, event: events.Key) -> None:
         """Delivers the key at once if no other is under way, else after the others."""
-        if self._task is not None and not self._task.done():
+        if self.busy:
             self._waiting.append(event)
             return
         if self._task is not None:

@@ -14,13 +14,15 @@ class Remembered:
     """Lives as long as the program runs. One solver, so one seed and one number of lanes, stands behind all figures.
 
     ``told`` are the cautions told already; ``notes`` what was written for a revision that was not saved, by design;
-    ``frozen`` the designs whose figures are held back until a prediction is written.
+    ``frozen`` the designs whose figures are held back until a prediction is written; ``hands`` where the hand lay:
+    the place of the stage, and the part.
     """
 
     def __init__(self) -> None:
         self.told: set[str] = set()
         self.notes: dict[str, dict[str, str]] = {}
         self.frozen: set[str] = set()
+        self.hands: dict[str, tuple[int, str | None]] = {}
         self._sheets: OrderedDict[str, MarginSheet] = OrderedDict()
 
     def keep(self, sheet: MarginSheet) -> None:

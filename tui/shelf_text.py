@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from ..engine.results import MarginSheet
 from ..storage.values import DesignRow, Worst
-from .shown import MARKS, TONES, WORDS, Line, Span, columns, line, percent
+from .shown import MARKS, TONES, WORDS, Line, Span, columns, counted, line, percent
 
 _BROAD = 100
 _FIGURE = 14
@@ -26,7 +26,7 @@ def shelf_line(row: DesignRow, drafts_own: MarginSheet | None, width: int) -> Li
     widths = _widths(width)
     newest = f"r{row.revisions}" if row.revisions else "-"
     saved = row.saved.replace("T", " ")[: widths[2]] if row.saved else "never"
-    pending = f"{row.edits_pending} edit{'s' * (row.edits_pending != 1)}" if row.edits_pending else ""
+    pending = counted(row.edits_pending, "edit") if row.edits_pending else ""
     left = columns(widths, (row.name, newest, saved, pending)) + " "
     worst, whose, old = row.worst, "", ""
     check = None if drafts_own is None else drafts_own.worst

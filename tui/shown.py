@@ -23,7 +23,7 @@ _LEAST_WORDS = 5  # cells
 
 @dataclass(frozen=True, slots=True)
 class Span:
-    """A run of text in one tone. Tones are styled in the style sheet (``tone--NAME``); "" is plain text."""
+    """A run of text in one tone. ``TONES`` of widgets/lines.py styles them; "" is plain text."""
 
     text: str
     tone: str = ""
@@ -105,8 +105,13 @@ def fit_right(text: str, width: int) -> str:
     return " " * (width - cell_len(shown)) + shown if cell_len(shown) < width else fit(text, width)
 
 
+def counted(number: int, word: str) -> str:
+    """A number with what it counts: ``1 edit``, ``2 edits``."""
+    return f"{number} {word}{'s' * (number != 1)}"
+
+
 def percent(margin: float | None) -> str:
-    """A margin in whole percent with its sign, a power of ten beyond 9999; a question mark when there is none.
+    """A margin in whole percent with its sign, ``<-999`` below that; a question mark when there is none.
 
     Rounds towards minus infinity, so that a figure on screen is never better than the margin behind it.
     """
@@ -114,17 +119,15 @@ def percent(margin: float | None) -> str:
 
 
 def points(change: float) -> str:
-    """A difference of margins in whole percent with its sign, a power of ten beyond 9999."""
+    """A difference of margins in whole percent with its sign, ``<-999`` or ``>+999`` beyond that."""
     return _signed(round(change * 100))
 
 
 def _signed(whole: int) -> str:
-    if abs(whole) < 10_000:
+    # A part that is asked for a hundred times what it can do does not need its digits, the columns need their room.
+    if abs(whole) < 1000:
         return f"{whole:+d}"
-    # The part that is asked for a million times what it can do does not need its digits, the columns need their room.
-    power = len(str(abs(whole))) - 1
-    digit = whole // 10**power
-    return f"{digit:+d}e{power}" if digit > -10 else f"-1e{power + 1}"
+    return ">+999" if whole > 0 else "<-999"
 
 
 def figure(margin: float | None, outcome: str | None, width: int) -> str:

@@ -9,13 +9,14 @@ from ..engine.results import CheckResult
 from ..engine.studies.comparison import Comparison, Side
 from ..engine.studies.comparison import Row as Compared
 from .drafting import incomplete
-from .margin_text import check_name
-from .shown import MARKS, TONES, WORDS, Line, Span, figure, fit, fit_right, line, percent, points
+from .margin_text import check_name, corner_words
+from .shown import MARKS, TONES, WORDS, Line, Span, counted, figure, fit, fit_right, line, percent, points
 from .widgets.row_list import Row
 
 if TYPE_CHECKING:
     from ..engine.studies.causes import CausesSheet
 
+FOLDED = "folded"
 _FIRST = 11
 _OTHER = 17
 
@@ -43,9 +44,20 @@ def compare_heading(sides: Sequence[Side], sight: Sequence[int], chosen: int, ti
     return tuple(spans)
 
 
-def compare_rows(compared: Comparison, sides: Sequence[Side], sight: Sequence[int], title: int) -> list[Row]:
-    """One row a check: figure with mark in each column, difference to the first one."""
-    return [Row(row.id, _compare_row(row, sides, sight, title)) for row in compared.rows]
+def compare_rows(
+    compared: Comparison, sides: Sequence[Side], sight: Sequence[int], title: int, *, fold: bool = False
+) -> list[Row]:
+    """One row a check: figure with mark in each column, difference to the first one.
+
+    ``fold`` leaves out what changed in no column and ends with a row :data:`FOLDED` that counts it.
+    """
+    shown = [row for row in compared.rows if not (fold and row.same)]
+    rows = [Row(row.id, _compare_row(row, sides, sight, title)) for row in shown]
+    hidden = len(compared.rows) - len(shown)
+    if hidden:
+        words = f"{counted(hidden, 'margin')} did not change: m shows {'it' if hidden == 1 else 'them'}"
+        rows.append(Row(FOLDED, line(Span(words, "dim"))))
+    return rows
 
 
 def _compare_row(row: Compared, sides: Sequence[Side], sight: Sequence[int], title: int) -> Line:
@@ -70,18 +82,20 @@ def _width(column: int) -> int:
     return _FIRST - 1 if column else _FIRST
 
 
-def side_lines(compared: Comparison, chosen: int, name: str) -> tuple[Line, ...]:
+def side_lines(compared: Comparison, chosen: int, name: str, width: int) -> tuple[Line, ...]:
     """The first and the chosen side of a row in words: label, figure, verdict, required margin, corner."""
     row = next(row for row in compared.rows if row.id == name)
-    return tuple(_side_line(compared.labels[at], row.cells[at]) for at in (0, chosen))
+    return tuple(_side_line(compared.labels[at], row.cells[at], width) for at in (0, chosen))
 
 
-def _side_line(label: str, check: CheckResult | None) -> Line:
+def _side_line(label: str, check: CheckResult | None, width: int) -> Line:
     head = Span(f" {fit(label, 6)} ", "strong")
     if check is None:
         return line(head, Span("does not have this check", "dim"))
     shown = f"{MARKS[check.verdict]} {check.outcome or percent(check.margin)} {WORDS[check.verdict]}"
-    return line(head, Span(shown, TONES[check.verdict]), f"   required {percent(check.required)}   {check.corner}")
+    required = f"   required {percent(check.required)}   "
+    room = width - 9 - len(shown) - len(required)
+    return line(head, Span(shown, TONES[check.verdict]), required + corner_words(check, max(10, room)))
 
 
 def causes_line(causes: CausesSheet, name: str) -> Line:

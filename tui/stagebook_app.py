@@ -59,6 +59,11 @@ class StagebookApp(App[None]):
         else:
             await super().on_event(event)
 
+    @property
+    def keys_wait(self) -> bool:
+        """Whether a key was typed whose consequences are not all there yet."""
+        return self._keys.busy
+
     async def _key(self, event: events.Key) -> None:
         # In the middle of a text the reason why it was refused stays, to be corrected by.
         if not isinstance(self.focused, Input):

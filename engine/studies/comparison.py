@@ -57,6 +57,14 @@ class Against:
         return RANK[self.after.verdict] > RANK[self.before.verdict]
 
     @property
+    def same(self) -> bool:
+        """Whether verdict and figure stayed, but for half a percent; also where neither side has the check."""
+        if self.before is None or self.after is None:
+            return self.before is self.after
+        moved = (self.before.margin is None) != (self.after.margin is None) or abs(self.change or 0.0) > LOSS
+        return not (moved or self.fell or self.rose or self.before.outcome != self.after.outcome)
+
+    @property
     def corner_moved(self) -> bool:
         """Whether another corner has become the worst one."""
         return self.before is not None and self.after is not None and self.before.corner != self.after.corner
@@ -80,6 +88,11 @@ class Row:
     def against(self, column: int) -> Against:
         """The check of a column beside that of the first."""
         return Against(self.cells[0], self.cells[column])
+
+    @property
+    def same(self) -> bool:
+        """Whether it is in no column other than in the first."""
+        return all(self.against(n).same for n in range(1, len(self.cells)))
 
 
 @dataclass(frozen=True, slots=True)

@@ -310,6 +310,9 @@ async def test_the_draft_is_compared_with_the_revision_it_began_from(app: Stageb
         first = pilot.app.screen.query_one("#checks", RowList).rows[0]
         assert first.key == "arrival:timer:R7"
         assert "causes: R7 -10" in text
+        assert "13 margins did not change: m shows them" in text
+        await pilot.press("end", "enter")
+        assert len(pilot.app.screen.query_one("#checks", RowList).rows) == 14
 
 
 async def test_a_comparison_waits_for_the_corners_and_then_shows(app: StagebookApp, gates: Gates) -> None:
@@ -352,6 +355,9 @@ async def test_a_draft_keeps_its_figures_when_the_bench_is_left(app: StagebookAp
         await pilot.press("enter")
         await settled(pilot)
         assert gates.studied == studied
+        bench = pilot.app.screen
+        assert isinstance(bench, BenchScreen)
+        assert bench.ref == "R7"
         assert "worse than r2: arrival R7 -10" in seen(pilot)
 
 
@@ -455,6 +461,8 @@ async def test_comparing_an_unchanged_draft_asks_for_no_causes(app: StagebookApp
         await open_bench(pilot)
         await pilot.press("c")
         await settled(pilot)
+        assert "14 margins did not change: m shows them" in seen(pilot)
+        await pilot.press("m")
         assert "nothing was changed" in seen(pilot)
 
 

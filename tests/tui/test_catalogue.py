@@ -202,4 +202,10 @@ async def test_the_list_of_kinds_holds_the_whole_catalogue(store: Store, solver:
         await begin_row(pilot)
         await pilot.press("a")
         await until(pilot, lambda: isinstance(pilot.app.screen, Pick))
-        assert {row.key for row in pilot.app.screen.query_one(RowList).rows} == set(stage_kinds())
+        rows = pilot.app.screen.query_one(RowList).rows
+        assert {row.key for row in rows} == set(stage_kinds())
+        # What the row has no room for stands below the list, to its end.
+        kind = stage_kinds()["piezo"]
+        assert kind.help.split()[-1] not in seen(pilot)
+        await pilot.press("home", *["down"] * [row.key for row in rows].index("piezo"))
+        assert kind.help.split()[-1] in seen(pilot)

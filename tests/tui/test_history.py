@@ -135,6 +135,16 @@ async def test_a_result_is_added_under_the_note(app: StagebookApp, shelf: Store)
         assert "result: 73 s" in seen(pilot)
 
 
+async def test_the_trend_is_that_of_the_margin_under_the_hand_and_goes_on_to_the_draft(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("enter", "right", "right", "right", "3", "5", "0", "k", "enter")
+        await settled(pilot)
+        await pilot.press("h")
+        # 1 - 330k/350k, rounded down
+        assert "trend of arrival R7, in the draft +5" in shown(pilot)[0]
+
+
 async def test_left_and_right_choose_the_margin_of_the_trend(app: StagebookApp) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await open_history(pilot)

@@ -125,6 +125,18 @@ async def test_every_mark_fits_the_help_of_80_columns(app: StagebookApp) -> None
         assert "what should happen does not" in seen(pilot)
 
 
+async def test_the_drawer_opens_from_the_shelf(app: StagebookApp, shelf: Store) -> None:
+    shelf.keep_part("my npn", {"kind": "npn", "class": "small npn"})
+    async with app.run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("p")
+        assert "my npn" in seen(pilot)
+        await pilot.press("enter")
+        assert "e edits them here" in pilot.app.screen.query_one(Notice).text
+        await pilot.press("b")
+        assert isinstance(pilot.app.screen, ShelfScreen)
+
+
 async def test_q_leaves(app: StagebookApp) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await settled(pilot)

@@ -6,7 +6,7 @@ from stagebook.engine.design.document import Design
 from stagebook.engine.studies.causes import Cause, CausesSheet
 from stagebook.engine.studies.comparison import Side, compare
 from stagebook.tui.shown import plain
-from stagebook.tui.side_by_side import causes_line, columns_in_sight, compare_rows, side_lines
+from stagebook.tui.side_by_side import FOLDED, causes_line, columns_in_sight, compare_rows, side_lines
 
 from .conftest import document
 from .sheets import check, sheet
@@ -24,8 +24,23 @@ def test_rows_keep_the_order_of_the_comparison_and_show_the_difference() -> None
     assert plain(rows[0].spans).split() == ["c", "R3", "(timer)", "=", "+20", "!", "+5", "-15"]
 
 
+def test_what_did_not_change_is_folded_behind_its_count() -> None:
+    old = {"a:s:R1": 0.5, "b:s:R2": 0.3, "c:s:R3": None, "d:s:R4": 0.0996}
+    new = {"a:s:R1": 0.3, "b:s:R2": 0.304, "c:s:R3": None, "d:s:R4": 0.1004}
+    sides = [
+        Side(label, sheet(*(check(name, margin) for name, margin in margins.items())), DESIGN)
+        for label, margins in (("r1", old), ("r2", new))
+    ]
+    compared = compare(sides, 1)
+    # R4 stayed within half a percent, but it has become a pass (10 % are required).
+    rows = compare_rows(compared, sides, [0, 1], 20, fold=True)
+    assert [row.key for row in rows] == ["a:s:R1", "d:s:R4", FOLDED]
+    assert plain(rows[-1].spans) == "2 margins did not change: m shows them"
+    assert len(compare_rows(compared, sides, [0, 1], 20)) == 4
+
+
 def test_a_check_on_one_side_only_is_said_so() -> None:
-    first, second = side_lines(compare([BEFORE, AFTER], 1), 1, "e:s:R5")
+    first, second = side_lines(compare([BEFORE, AFTER], 1), 1, "e:s:R5", 80)
     assert "does not have this check" in plain(first)
     assert "+40 pass" in plain(second)
 

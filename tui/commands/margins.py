@@ -8,7 +8,7 @@ from dataclasses import asdict
 from difflib import get_close_matches
 
 from ...engine.results import CheckResult, MarginSheet, Verdict
-from ..shown import MARKS, percent, visible
+from ..shown import MARKS, counted, percent, visible
 from .printing import json_argument, print_json, print_pairs, print_table, print_words
 from .refusal import CommandRefused
 from .waiting import computable, prepare_solver, progress
@@ -61,8 +61,8 @@ def run(asked: Namespace) -> int:
 
 
 def _print(subject: Subject, sheet: MarginSheet) -> None:
-    print(f"{visible(subject.title)}: {len(sheet.checks)} margins in {sheet.seconds:.1f} s", end="")
-    print(f", {sheet.lanes} lanes with seed {sheet.seed}" if sheet.lanes else ", without a spread")
+    print(f"{visible(subject.title)}: {counted(len(sheet.checks), 'margin')} in {sheet.seconds:.1f} s", end="")
+    print(f", {counted(sheet.lanes, 'lane')} with seed {sheet.seed}" if sheet.lanes else ", without a spread")
     if not sheet.checks:
         print_words("No check applies: give stages their roles, or the design requirements.")
         return

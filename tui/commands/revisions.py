@@ -5,6 +5,7 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from typing import TYPE_CHECKING
 
+from ..shown import counted
 from .refusal import CommandRefused
 from .what import is_file, open_store, revision_number, shelf_arguments
 
@@ -28,7 +29,9 @@ def stored(asked: Namespace, least: int, most: int) -> tuple[str, list[Revision]
         raise CommandRefused(f"{asked.what} is a file, which has no revisions; name a design on the shelf")
     if not least <= len(numbers) <= most:
         wanted = f"{least}" if least == most else f"{least} to {most}"
-        raise CommandRefused(f"{len(numbers)} revisions where {wanted} are asked for; write their numbers, such as 1 2")
+        raise CommandRefused(
+            f"{counted(len(numbers), 'revision')} where {wanted} are asked for; write their numbers, such as 1 2"
+        )
     twice = next((number for number in numbers if numbers.count(number) > 1), None)
     if twice is not None:
         raise CommandRefused(f"revision {twice} stands twice; name different ones")

@@ -21,6 +21,7 @@ from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..figures import FigureRow
 from ..remembered import Remembered
+from ..shown import counted
 from ..widgets.row_list import RowList
 from ..widgets.status import KeyLine, Notice
 from ..widgets.value_entry import ValueEntry
@@ -28,7 +29,7 @@ from .bench_view import BenchView
 from .compare import CompareScreen
 from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_tables
 from .dialog import Answers, Ask, Field, Form
-from .drawer import DrawerScreen
+from .drawer import DrawerScreen, InHand
 from .faults import FaultsScreen
 from .history import HistoryScreen
 from .immunity import ImmunityScreen
@@ -227,7 +228,7 @@ class BenchScreen(BenchView):
                     )
                 )
 
-        count = f"{len(stage.parts)} part{'s' * (len(stage.parts) != 1)} and what is about them go with it"
+        count = f"{counted(len(stage.parts), 'part')} and what is about them go with it"
         self.app.push_screen(
             Ask(f"Take stage {stage.name} out of the design?", f"{count}; u brings all back."), answered
         )
@@ -358,7 +359,8 @@ class BenchScreen(BenchView):
 
     def action_drawer(self) -> None:
         """Parts made of datasheet points."""
-        self.app.push_screen(DrawerScreen(self.drafting, self.ref, self._put))
+        hand = None if self.ref is None else InHand(self.design, self.ref, self._put)
+        self.app.push_screen(DrawerScreen(self.drafting, hand))
 
     def action_waves(self) -> None:
         """Voltages over time: first of the nets of the part under the hand, then of the loads."""
@@ -384,4 +386,5 @@ class BenchScreen(BenchView):
                 self.say(f"the draft goes on from r{self.drafting.draft.base_revision}")
 
         trend = self.chosen.check.id if self.chosen else None
-        self.app.push_screen(HistoryScreen(self.drafting, self.computing, trend), looked)
+        sheet = None if self.figures.frozen or self.figures.worst_old else self.figures.worst
+        self.app.push_screen(HistoryScreen(self.drafting, self.computing, trend, sheet), looked)

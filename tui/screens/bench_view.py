@@ -66,8 +66,10 @@ class BenchView(Page[None]):
             yield ValueEntry(id="entry")
 
     def on_mount(self) -> None:
-        """Shows what is known and begins the study."""
+        """Shows what is known and begins the study; the hand lies where it was left."""
+        self._stage, ref = self.remembered.hands.get(self.drafting.name, (0, None))
         self.begin()
+        self.show(ref)
         self.parts.focus()
 
     def begin(self) -> None:
@@ -146,6 +148,7 @@ class BenchView(Page[None]):
         shown.show(heading(self.drafting.draft, self.figures, self._progress, shown.size.width, self.drafting.looking))
 
     def _show_hand(self) -> None:
+        self.remembered.hands[self.drafting.name] = (self._stage, self.ref)
         hand = self.query_one("#hand", Lines)
         width = self.size.width
         if self.margins.has_focus and self.chosen is not None:

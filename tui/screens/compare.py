@@ -14,7 +14,7 @@ from ..computing import Computing
 from ..drafting import changes_words, incomplete
 from ..messages import CausesArrived, CausesProgress, CausesRefused, SolverPreparing
 from ..shown import Line, Span, line
-from ..side_by_side import causes_line, columns_in_sight, compare_heading, compare_rows, side_lines
+from ..side_by_side import FOLDED, causes_line, columns_in_sight, compare_heading, compare_rows, side_lines
 from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
 from ..widgets.rule import Rule
@@ -42,6 +42,7 @@ class CompareScreen(Page[None]):
         self._refusals: dict[int, str] = {}
         self._request = 0
         self._progress = ""
+        self._fold = True
 
     def compose_body(self) -> ComposeResult:
         """Title, changed parts, checks, causes."""
@@ -86,7 +87,7 @@ class CompareScreen(Page[None]):
         title_width = max(10, min(34, width - 2 - 11 - 17 * min(2, len(self._sides) - 1)))
         sight = columns_in_sight(len(self._sides), self._chosen, width, title_width)
         rows.show(
-            compare_rows(self._compared, self._sides, sight, title_width),
+            compare_rows(self._compared, self._sides, sight, title_width, fold=self._fold),
             compare_heading(self._sides, sight, self._chosen, title_width),
         )
         self._show_hand()
@@ -97,7 +98,10 @@ class CompareScreen(Page[None]):
         if name is None:
             hand.show()
             return
-        hand.show(*side_lines(self._compared, self._chosen, name), self._causes_line(name))
+        if name == FOLDED:
+            hand.show(line(" verdict and figure, to half a percent, are the same on every side"))
+            return
+        hand.show(*side_lines(self._compared, self._chosen, name, self.size.width), self._causes_line(name))
 
     def _causes_line(self, name: str) -> Line:
         if not self._compared.changed[self._chosen]:
@@ -150,9 +154,17 @@ class CompareScreen(Page[None]):
             self._compared = compare(self._sides, there)
             self._ask()
 
+    def action_fold(self) -> None:
+        """All margins, or only those that changed."""
+        self._fold = not self._fold
+        self._show()
+
     def action_origin(self) -> None:
-        """Where the chosen column's margin of this row comes from."""
+        """Where the chosen column's margin of this row comes from; on the count of what did not change, these rows."""
         name = self.query_one(RowList).key
+        if name == FOLDED:
+            self.action_fold()
+            return
         column = self._sides[self._chosen]
         for check in column.sheet.checks:
             if check.id == name:

@@ -53,6 +53,10 @@ class Ask(ModalScreen[bool]):
         self.dismiss(False)
 
 
+_ABOUT = 5
+_ROOMY = 20
+
+
 class Pick(ModalScreen[str | None]):
     """One of a list, or None."""
 
@@ -62,20 +66,39 @@ class Pick(ModalScreen[str | None]):
         super().__init__()
         self._title = title
         self._choices = [Row(key, line(text)) for key, text in rows]
+        self._texts = dict(rows)
         self._empty = empty
 
     def compose(self) -> ComposeResult:
-        """The list at the foot of the screen."""
+        """The list at the foot of the screen, and below it the whole text of a row that is cut."""
         with Vertical(classes="dialog"):
             yield Rule()
             rows = RowList(empty=self._empty, id="choices")
             rows.styles.height = max(2, len(self._choices) + 1)
             yield rows
+            yield Lines(id="in-full")
             yield KeyLine("pick")
 
     def on_mount(self) -> None:
         """Shows the choices."""
         self.query_one(RowList).show(self._choices, heading=line(Span(self._title, "strong")))
+        self._about()
+
+    def on_resize(self) -> None:
+        """Another width: other lines."""
+        self._about()
+
+    def on_row_list_moved(self) -> None:
+        """Another row's text."""
+        self._about()
+
+    def _about(self) -> None:
+        width = self.app.size.width
+        most = max((len(text) for text in self._texts.values()), default=0)
+        about = self.query_one("#in-full", Lines)
+        about.display = most > width - 2 and self.app.size.height >= _ROOMY
+        text = self._texts.get(self.query_one(RowList).key or "", "")
+        about.show(*(line(Span(f" {piece}", "dim")) for piece in wrap(visible(text), max(10, width - 2))[:_ABOUT]))
 
     def action_choose(self) -> None:
         """This one."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import dataclass
 from typing import Any, ClassVar
 
 from textual.app import ComposeResult
@@ -15,7 +16,7 @@ from ...engine.parts import kinds
 from ...engine.parts.classes import CLASSES
 from ...storage.values import MadePart
 from ..actions import bindings
-from ..drafting import Drafting, MadeDraft
+from ..drafting import Drawer, MadeDraft
 from ..drawer_text import drawer_heading, drawer_lines, drawer_rows, made_key
 from ..shown import Span, fit, line
 from ..widgets.lines import Lines
@@ -28,17 +29,25 @@ from .part_data import PartDataScreen
 NO_CLASS = "no class"
 
 
+@dataclass(frozen=True, slots=True)
+class InHand:
+    """The part on the bench that Enter gives data to, and who is told the design that comes of it."""
+
+    design: Design
+    ref: str
+    put: Callable[[str, Design], None]
+
+
 class DrawerScreen(Page[None]):
-    """All parts in the drawer. ``ref`` is the part of the design that Enter gives a part's data to."""
+    """All parts in the drawer, and the part of a design under the hand, if it was opened from a bench."""
 
     WHERE = "drawer"
     BINDINGS: ClassVar[list[BindingType]] = bindings("drawer")
 
-    def __init__(self, drafting: Drafting, ref: str | None, put: Callable[[str, Design], None]) -> None:
+    def __init__(self, drawer: Drawer, hand: InHand | None = None) -> None:
         super().__init__()
-        self._drafting = drafting
-        self._ref = ref
-        self._put = put
+        self._drawer = drawer
+        self._hand = hand
         self._parts: list[MadePart] = []
         self._every_version = False
 
@@ -65,14 +74,14 @@ class DrawerScreen(Page[None]):
 
     def _read(self) -> None:
         def read() -> None:
-            self._parts = self._drafting.drawer(every_version=self._every_version)
+            self._parts = self._drawer.drawer(every_version=self._every_version)
 
         self.attempt(read)
         self._show()
 
     @property
     def _part(self) -> Part | None:
-        return None if self._ref is None else self._drafting.design.part(self._ref)
+        return None if self._hand is None else self._hand.design.part(self._hand.ref)
 
     @property
     def _chosen(self) -> MadePart | None:
@@ -97,20 +106,20 @@ class DrawerScreen(Page[None]):
 
     def action_use(self) -> None:
         """Copies the data into the part under the hand of the bench, and goes back there."""
-        made, ref = self._chosen, self._ref
+        made, hand = self._chosen, self._hand
         if made is None:
             self.refuse("the drawer is empty; n makes a part")
-        elif ref is None:
-            self.refuse("there is no part under the hand of the bench; put it on one, then p")
+        elif hand is None:
+            self.refuse("a part on the bench takes the data: put the hand on it there, then p; e edits them here")
         else:
             found: list[Design] = []
 
             def use() -> None:
-                found.append(edit.with_made_part(self._drafting.design, ref, made.document, made.title))
+                found.append(edit.with_made_part(hand.design, hand.ref, made.document, made.title))
 
             if self.attempt(use):
                 self.dismiss()
-                self._put(f"{ref} {made.title}", found[0])
+                hand.put(f"{hand.ref} {made.title}", found[0])
 
     def action_make(self) -> None:
         """A new part: first its kind, then the class that gives what is not written."""
@@ -143,7 +152,7 @@ class DrawerScreen(Page[None]):
         draft = opened[0]
 
         def keep(name: str, part: Part) -> str:
-            return f"kept as {self._drafting.keep_part(name, draft.document).title}"
+            return f"kept as {self._drawer.keep_part(name, draft.document).title}"
 
         self.app.push_screen(PartDataScreen(name, draft.part, draft.write, keep, known))
 

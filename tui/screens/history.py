@@ -7,13 +7,14 @@ from typing import ClassVar
 from textual.app import ComposeResult
 from textual.binding import BindingType
 
+from ...engine.results import MarginSheet
 from ...engine.studies.comparison import Side
 from ...storage.values import Revision
 from ..actions import bindings
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
 from ..history_text import check_names, history_heading, history_rows, revision_lines, revision_rows, tree
-from ..shown import Span, line
+from ..shown import Span, counted, line, percent
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
@@ -31,8 +32,12 @@ class HistoryScreen(Page[bool]):
     WHERE = "history"
     BINDINGS: ClassVar[list[BindingType]] = bindings("history")
 
-    def __init__(self, drafting: Drafting, computing: Computing, trend: str | None) -> None:
+    def __init__(
+        self, drafting: Drafting, computing: Computing, trend: str | None, drafts_own: MarginSheet | None = None
+    ) -> None:
+        """``trend`` is the check whose margins are drawn; ``drafts_own`` the worst margins of an edited draft."""
         super().__init__()
+        self._drafts_own = drafts_own
         self._drafting = drafting
         self._computing = computing
         self._trend = trend
@@ -73,7 +78,11 @@ class HistoryScreen(Page[bool]):
 
     def _show(self, key: str | None = None) -> None:
         trend = self._checks.get(self._trend or "", "no margins yet")
-        title = line(Span(f" {self._drafting.name}: history", "strong"), f"   trend of {trend}")
+        now = ""
+        if self._drafts_own is not None and self._drafting.changes():
+            own = next((check for check in self._drafts_own.checks if check.id == self._trend), None)
+            now = "" if own is None else f", in the draft {own.outcome or percent(own.margin)}"
+        title = line(Span(f" {self._drafting.name}: history", "strong"), f"   trend of {trend}{now}")
         self.query_one("#title", Lines).show(title)
         rows = self.query_one(RowList)
         head = self._drafting.draft.base_revision
@@ -138,7 +147,8 @@ class HistoryScreen(Page[bool]):
                 self.dismiss(True)
 
         edits = self._drafting.draft.edits
-        kept = f"The draft's {edits} unsaved edits stay below r{self._drafting.draft.base_revision}." if edits else ""
+        stay = f"stay{'s' * (edits == 1)} below r{self._drafting.draft.base_revision}"
+        kept = f"The draft's {counted(edits, 'unsaved edit')} {stay}." if edits else ""
         self.app.push_screen(Ask(f"Let the draft go on from r{chosen.number}?", kept or "Nothing is lost."), answered)
 
     def action_add_result(self) -> None:

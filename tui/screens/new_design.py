@@ -18,7 +18,7 @@ from ...engine.stages.row import Choice, usual_name
 from ...storage.errors import StorageError
 from ...storage.store import Store
 from ..actions import bindings
-from ..shown import Span, columns, fit, line
+from ..shown import Span, columns, counted, fit, line
 from ..stage_text import asked
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
@@ -108,8 +108,8 @@ class NewDesignPage(Page[str | None]):
         except EngineError as refusal:
             self.refuse(str(refusal))
             return
-        asked_for = f"{len(design.requirements)} requirement{'s' * (len(design.requirements) != 1)}"
-        self.say(f"{len(design.parts)} parts, {asked_for}; s makes the design")
+        asked_for = counted(len(design.requirements), "requirement")
+        self.say(f"{counted(len(design.parts), 'part')}, {asked_for}; s makes the design")
 
     def _design(self) -> Design:
         return new_design(self._called, self._purpose, self._conditions, self._row)

@@ -16,7 +16,7 @@ from ...storage.store import Store
 from ...storage.values import DesignRow
 from ..actions import bindings
 from ..computing import Computing
-from ..drafting import Drafting
+from ..drafting import Drafting, Drawer
 from ..messages import SolverPreparing
 from ..remembered import Remembered
 from ..shelf_text import shelf_heading, shelf_line
@@ -26,6 +26,7 @@ from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
 from .bench import BenchScreen
 from .dialog import Answers, Field, Form, Pick
+from .drawer import DrawerScreen
 from .new_design import ask_new_design
 from .occupied import Occupied
 from .page import Page
@@ -115,6 +116,10 @@ class ShelfScreen(Page[None]):
 
     def _bench(self, drafting: Drafting, only_looks: str = "") -> None:
         self.app.push_screen(BenchScreen(drafting, self._computing, self._remembered, only_looks))
+
+    def action_drawer(self) -> None:
+        """Parts made of datasheet points."""
+        self.app.push_screen(DrawerScreen(Drawer(self._store)))
 
     def action_quit(self) -> None:
         """Leaves; every edit is kept already."""

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import ClassVar
 
 from rich.segment import Segment
 from rich.style import Style
@@ -13,22 +12,21 @@ from textual.widget import Widget
 
 from ..shown import Line, Span, visible
 
-TONE_NAMES = frozenset({"dim", "strong", "fail", "thin", "pass", "unknown", "here"})
+TONES = {
+    "dim": Style(dim=True),
+    "strong": Style(bold=True),
+    "fail": Style(color="red", bold=True),
+    "thin": Style(color="yellow"),
+    "pass": Style(color="green"),
+    "unknown": Style(color="magenta"),
+    "here": Style(reverse=True),
+}
+"""How a tone is drawn, in colours of the terminal's own sixteen. Not in the style sheet: the components of every line
+on the screen would be matched with all its rules whenever a screen opens."""
 
 
 class TonedWidget(Widget):
-    """A widget that draws lines of spans. The style sheet styles its ``tone--NAME`` component classes."""
-
-    COMPONENT_CLASSES: ClassVar[set[str]] = {f"tone--{name}" for name in TONE_NAMES}
-    DEFAULT_CSS = """
-    TonedWidget .tone--dim { text-style: dim; }
-    TonedWidget .tone--strong { text-style: bold; }
-    TonedWidget .tone--fail { color: ansi_red; text-style: bold; }
-    TonedWidget .tone--thin { color: ansi_yellow; }
-    TonedWidget .tone--pass { color: ansi_green; }
-    TonedWidget .tone--unknown { color: ansi_magenta; }
-    TonedWidget .tone--here { text-style: reverse; }
-    """
+    """A widget that draws lines of spans."""
 
     def strip(self, spans: Line, *, reverse: bool = False) -> Strip:
         """One line of the widget's width. Control characters are written out; tones outside the set are plain."""
@@ -37,9 +35,8 @@ class TonedWidget(Widget):
         return Strip(segments).adjust_cell_length(self.size.width, base)
 
     def _style(self, span: Span, base: Style) -> Style:
-        if span.tone not in TONE_NAMES:
-            return base
-        return base + self.get_component_rich_style(f"tone--{span.tone}", partial=True)
+        tone = TONES.get(span.tone)
+        return base if tone is None else base + tone
 
 
 class Lines(TonedWidget):
