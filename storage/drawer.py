@@ -11,6 +11,7 @@ from sqlmodel import Session, col, select
 
 from .errors import PartMissing, PartRefused
 from .seal import canonical
+from .sealed import seal_part
 from .tables import StoredMadePart
 from .values import MadePart
 
@@ -51,7 +52,7 @@ def keep(session: Session, name: str, document: Mapping[str, Any], made: str) ->
     version = before[-1].version + 1 if before else 1
     row = StoredMadePart(name=name, version=version, kind=kind, document=text, made=made)
     session.add(row)
-    session.flush()
+    seal_part(session, row)
     return _shown(row)
 
 

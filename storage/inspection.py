@@ -17,7 +17,7 @@ from sqlmodel import Session, col, func, select
 from ..engine.design.document import Design
 from ..engine.errors import EngineError
 from ..engine.results import MarginSheet
-from . import revisions
+from . import revisions, sealed
 from .edits import moved
 from .errors import StorageError
 from .place import beside
@@ -99,6 +99,7 @@ def _problems(session: Session) -> Iterator[str]:
             yield f"The trigger {name}, which keeps saved rows from being changed, is missing or altered."
     for design in session.exec(select(StoredDesign).order_by(col(StoredDesign.name))):
         yield from _of_design(session, design)
+    yield from sealed.problems(session)
 
 
 def _of_design(session: Session, design: StoredDesign) -> Iterator[str]:

@@ -11,6 +11,7 @@ from typing import Final
 from .backup import copy_database
 from .errors import StoreUnreadable
 from .place import beside
+from .sealed import seal_all
 from .tables import KEYS, triggers
 
 Step = Callable[[sqlite3.Connection], None]
@@ -27,7 +28,16 @@ def _to_second(connection: sqlite3.Connection) -> None:
     connection.execute("CREATE UNIQUE INDEX made_part_by_name ON made_part (name, version)")
 
 
-STEPS: Final[Mapping[int, Step]] = {1: _to_second}
+def _to_third(connection: sqlite3.Connection) -> None:
+    """To version 3: the seal, of all that is there."""
+    connection.execute(
+        "CREATE TABLE seal (id INTEGER NOT NULL PRIMARY KEY AUTOINCREMENT, kind VARCHAR NOT NULL,"
+        " subject INTEGER NOT NULL, about VARCHAR NOT NULL, content VARCHAR NOT NULL, hash VARCHAR NOT NULL)"
+    )
+    seal_all(connection)
+
+
+STEPS: Final[Mapping[int, Step]] = {1: _to_second, 2: _to_third}
 """For each version that a store may still have, what leads to the next one. It must end at the tables of tables.py."""
 
 

@@ -30,6 +30,7 @@ from .inspection import draft_problems, verify
 from .patch import difference
 from .place import beside
 from .seal import canonical
+from .sealed import seal_all
 from .store import Store
 from .tables import StoredDesign, triggers
 
@@ -107,7 +108,8 @@ def _read(copy: Path, empty: Path) -> tuple[Rows, list[str]]:
     if connection is None:
         return {name: [] for name in names}, lost
     with closing(connection):
-        rows = {name: list(_rows(connection, name, lost)) for name in names}
+        here = {name for (name,) in connection.execute("SELECT name FROM sqlite_schema WHERE type = 'table'")}
+        rows = {name: list(_rows(connection, name, lost)) if name in here else [] for name in names}
     return rows, lost
 
 
@@ -195,6 +197,8 @@ def _written(path: Path, rows: Rows) -> list[str]:
                     )
                 except sqlite3.Error:
                     lost.append(f"A row of {table.name} could not be read as a whole.")
+        if not rows["seal"]:
+            seal_all(raw)  # the store was older, or its seal is lost, which has been told
         raw.execute("COMMIT")
     with Store.open(path) as store, store.reading() as session:
         torn = [design for design in rows["design"] if _torn(session, design["id"])]

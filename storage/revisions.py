@@ -12,6 +12,7 @@ from ..engine.design.document import Design
 from ..engine.results import MarginSheet
 from .errors import MarginsRefused, NoteRefused, RevisionMissing
 from .seal import canonical, entry_hash, revision_hash
+from .sealed import seal_entry, seal_revision
 from .tables import StoredDesign, StoredDraft, StoredEntry, StoredMargin, StoredRevision
 from .values import ADDABLE, Note, NoteEntry, Revision
 
@@ -46,6 +47,7 @@ def save(
     session.add(row)
     session.flush()
     session.add_all(margin_rows(row.id, sheet))
+    seal_revision(session, design, row)
     draft.base_id = row.id
     return row
 
@@ -82,7 +84,9 @@ def add_entry(session: Session, revision: StoredRevision, field: str, text: str,
     _check_text(field, text)
     before = entries(session, [revision.id])
     digest = entry_hash(before[-1].hash if before else revision.hash, field, text.strip(), now)
-    session.add(StoredEntry(revision_id=revision.id, field=field, text=text.strip(), added=now, hash=digest))
+    entry = StoredEntry(revision_id=revision.id, field=field, text=text.strip(), added=now, hash=digest)
+    session.add(entry)
+    seal_entry(session, revision, entry)
 
 
 def entries(session: Session, revisions: Sequence[int]) -> Sequence[StoredEntry]:

@@ -1,4 +1,4 @@
-"""The hash chain: what a revision's hash and a note entry's hash cover (SHA-256, FIPS 180-4)."""
+"""The hash chain: what the hashes of what is saved cover (SHA-256, FIPS 180-4)."""
 
 from __future__ import annotations
 
@@ -20,6 +20,21 @@ def revision_hash(parent: str, number: int, saved: str, document: str, note: str
 def entry_hash(before: str, field: str, text: str, added: str) -> str:
     """Hash of a note entry over the hash of the entry before it, or of the revision for the first, in hex."""
     return _chained("note entry", before, field, text, added)
+
+
+def part_hash(name: str, version: int, kind: str, document: str, made: str) -> str:
+    """Hash of a version of a part in the drawer, in hex."""
+    return _chained("part", name, str(version), kind, document, made)
+
+
+def design_hash(name: str, created: str) -> str:
+    """Hash of a design's name and the time when it came onto the shelf, in hex."""
+    return _chained("design", name, created)
+
+
+def seal_hash(before: str, kind: str, subject: int, about: str, content: str) -> str:
+    """Hash of an entry of the seal over the hash of the one before it ("" for none), in hex."""
+    return _chained("seal", before, kind, str(subject), about, content)
 
 
 def _chained(*texts: str) -> str:

@@ -23,6 +23,7 @@ from .connection import Opened, open_database, plain_errors
 from .errors import DesignMissing, NameTaken, StorageError, StoreTooNew, StoreUnreadable
 from .names import checked_name
 from .place import default_path
+from .sealed import seal_design
 from .tables import StoredDesign, StoredDraft, StoredSitting
 from .values import DesignRow, Draft, MadePart, Note, Revision, Sitting
 
@@ -124,7 +125,7 @@ class Store:
                 raise NameTaken(f'There is a design "{name}" on the shelf already: choose another name.')
             row = StoredDesign(name=name, created=self._now())
             session.add(row)
-            session.flush()
+            seal_design(session, row)
             draft = StoredDraft(design_id=row.id, document=design.canonical().decode())
             session.add(draft)
             shown = self._shown(session, _Place(row, draft), design)

@@ -8,7 +8,7 @@ from typing import Final
 from sqlalchemy import Index
 from sqlmodel import Field, SQLModel
 
-SCHEMA: Final = 2
+SCHEMA: Final = 3
 """Version of the tables, kept as ``user_version``; a step in migration.py leads to each later one."""
 
 APPLICATION: Final = 0x53544742
@@ -124,11 +124,28 @@ class StoredMadePart(SQLModel, table=True):
     __table_args__ = (Index("made_part_by_name", "name", "version", unique=True),)
 
 
+class StoredSeal(SQLModel, table=True):
+    """One thing that was saved: what (a table and its row), in words, and its hash, chained to the entry before.
+
+    The numbers have no gaps, and ``sqlite_sequence`` keeps the largest there ever was.
+    """
+
+    __tablename__ = "seal"
+    id: int = Field(default=None, primary_key=True)
+    kind: str
+    subject: int
+    about: str
+    content: str
+    hash: str
+    __table_args__ = ({"sqlite_autoincrement": True},)
+
+
 KEYS: Final = {
     "revision": ("id = NEW.id", "design_id = NEW.design_id AND number = NEW.number"),
     "margin": ("revision_id = NEW.revision_id AND position = NEW.position",),
     "note_entry": ("id = NEW.id",),
     "made_part": ("id = NEW.id", "name = NEW.name AND version = NEW.version"),
+    "seal": ("id = NEW.id",),
 }
 """The append-only tables, each with its keys."""
 

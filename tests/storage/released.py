@@ -36,7 +36,8 @@ def sheet_of(design: Design, **margins: float | None) -> MarginSheet:
 
 
 def make(path: Path) -> None:
-    """All that a store can hold: a tree of revisions, additions to notes, edits undone, a sitting left by a crash."""
+    """All that a store can hold: a tree of revisions, additions to notes, edits undone, a sitting left by a crash,
+    a part in the drawer in two versions."""
     ticks = itertools.count()
     with Store.open(path, clock=lambda: datetime(2026, 12, 1, 9, tzinfo=UTC) + timedelta(seconds=next(ticks))) as store:
         store.create("flood", of("10k"))
@@ -54,6 +55,8 @@ def make(path: Path) -> None:
         store.edit("flood", "R8 4k7", of("4k7"))
         store.undo("flood")
         store.create("frost", of("1k"))
+        store.keep_part("film", {"kind": "resistor", "value": "470k", "tolerance": "1 %", "rating": "0.6 W"})
+        store.keep_part("film", {"kind": "resistor", "value": "470k", "tolerance": "1 %", "rating": "1 W"})
     with closing(sqlite3.connect(path)) as raw:
         raw.execute("UPDATE sitting SET closed = 0 WHERE design_id = 1")
         raw.commit()

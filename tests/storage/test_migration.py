@@ -141,6 +141,8 @@ def test_a_released_store_is_brought_forward(path: Path, released: Path) -> None
     with Store.open(path) as store:
         assert store.schema == connection.SCHEMA
         assert rows(path, *kept) == before
+        # Everything saved is in the seal: two designs, three revisions, two additions, and the parts of the drawer.
+        assert len(rows(path, "seal")[0]) == 7 + len(store.drawer() and store.part_versions("film"))
         assert verify(store) == []
         assert [(row.name, row.revisions, row.edits_pending) for row in store.designs()] == [
             ("flood", 3, 1),

@@ -15,6 +15,7 @@ from stagebook.storage import Note, StorageError, Store, StoreUnreadable, rescue
 Plain = Callable[[BaseException], str]
 VALUES = ("22k", "33k", "47k")
 PAGE = 4096
+RELEASED = sorted((Path(__file__).parent / "stores").glob("schema-*.sqlite3"))
 
 
 @pytest.fixture
@@ -44,6 +45,14 @@ def told(path: Path) -> dict[str, tuple[str, list[str]]]:
 
 
 WHOLE = {name: ("68k", list(VALUES)) for name in ("flood", "frost")}
+
+
+@pytest.mark.parametrize("released", RELEASED, ids=[file.stem for file in RELEASED])
+def test_a_store_of_an_earlier_version_comes_over_and_is_sealed(released: Path, tmp_path: Path) -> None:
+    found = rescue(released, tmp_path / "saved")
+    assert (found.designs, found.revisions, found.lost) == (2, 3, ())
+    with Store.open(tmp_path / "saved") as store:
+        assert verify(store) == []
 
 
 def test_a_whole_store_comes_over_as_it_is(closed: Path, tmp_path: Path) -> None:

@@ -13,15 +13,17 @@ import pytest
 from stagebook.storage import Note, Store, inspect, verify
 from stagebook.storage.tables import SCHEMA
 
-APPEND_ONLY = ("revision", "margin", "note_entry")
+APPEND_ONLY = ("revision", "margin", "note_entry", "made_part", "seal")
 
 
 @pytest.fixture(scope="module")
 def made(tmp_path_factory: pytest.TempPathFactory, design: Callable, sheet: Callable) -> Path:
-    """A store with a design that has three revisions in a row, margins and additions to notes; closed."""
+    """A store with a design that has three revisions in a row, margins, additions to notes, two parts; closed."""
     path = tmp_path_factory.mktemp("made") / "s.sqlite3"
     with Store.open(path) as store:
         store.create("flood", design())
+        store.keep_part("film", {"kind": "resistor", "value": "470k", "rating": "0.6 W"})
+        store.keep_part("film", {"kind": "resistor", "value": "470k", "rating": "1 W"})
         for number, value in enumerate(("10k", "22k", "33k"), start=1):
             store.edit("flood", f"R8 {value}", design(value))
             store.save("flood", Note(f"note {number}"), sheet(design(value), driver=0.2, timer=-0.1))
@@ -77,6 +79,12 @@ def rows(connection: sqlite3.Connection) -> list[list[tuple[object, ...]]]:
         "UPDATE note_entry SET text = 'x'",
         "DELETE FROM note_entry",
         "REPLACE INTO note_entry SELECT id, revision_id, field, 'x', added, hash FROM note_entry",
+        "UPDATE made_part SET document = '{}'",
+        "DELETE FROM made_part WHERE version = 2",
+        "REPLACE INTO made_part (name, version, kind, document, made) SELECT name, 1, kind, '{}', made FROM made_part",
+        "UPDATE seal SET content = 'x'",
+        "DELETE FROM seal WHERE id = (SELECT max(id) FROM seal)",
+        "REPLACE INTO seal SELECT id, kind, subject, about, 'x', hash FROM seal",
     ],
 )
 def test_no_statement_changes_what_is_saved(raw: sqlite3.Connection, shelf: Store, statement: str) -> None:
@@ -126,6 +134,82 @@ def test_a_change_behind_the_triggers_is_named(path: Path, shelf: Store, stateme
         assert any(words in problem for problem in problems), problems
     assert all("\n" not in problem for problem in problems)
     assert inspect(shelf).problems == tuple(problems)
+
+
+NEWEST = """
+    DELETE FROM note_entry WHERE revision_id = 3;
+    DELETE FROM margin WHERE revision_id = 3;
+    UPDATE draft SET base_id = 2;
+    DELETE FROM revision WHERE id = 3;
+"""
+GONE = ['"flood" r3 was saved and is gone.', *['"flood" r3, added to result was saved and is gone.'] * 2]
+SEALED = {
+    "the newest revision, with all that points to it": (NEWEST, GONE),
+    "and the end of the seal": (
+        f"{NEWEST} DELETE FROM seal WHERE id > 9;",
+        ["The seal ended with entry 12 and ends with 9 now: what came after may be gone."],
+    ),
+    "an entry within the seal": (
+        "DELETE FROM seal WHERE id = 7;",
+        ["The seal has no entry 7 before entry 8: what it was about may be gone."],
+    ),
+    "an entry of the seal made to fit": (
+        "UPDATE seal SET content = (SELECT hash FROM revision WHERE id = 2) WHERE id = 10;",
+        ['Entry 10 of the seal, about "flood" r3, is not the one that was made.', '"flood" r3 is not what was saved.'],
+    ),
+    "the whole design": (
+        "DELETE FROM note_entry; DELETE FROM margin; DELETE FROM draft; DELETE FROM revision; DELETE FROM edit;"
+        " DELETE FROM sitting; DELETE FROM design;",
+        ['"flood" was saved and is gone.', '"flood" r1 was saved and is gone.'],
+    ),
+    "the name of a design": (
+        "UPDATE design SET name = 'frost';",
+        ['"flood" is not what was saved.'],
+    ),
+    "a part of the drawer": (
+        "UPDATE made_part SET document = replace(document, '470k', '47k') WHERE version = 1;",
+        ['"film" of the drawer, version 1 is not what was saved.'],
+    ),
+    "the newest version of a part": (
+        "DELETE FROM made_part WHERE version = 2;",
+        ['"film" of the drawer, version 2 was saved and is gone.'],
+    ),
+    "a part that another program put in": (
+        "INSERT INTO made_part (name, version, kind, document, made) SELECT 'odd', 1, kind, document, made"
+        " FROM made_part WHERE version = 1;",
+        ['"odd" of the drawer, version 1 is not in the seal: another program wrote it.'],
+    ),
+}
+
+
+@pytest.mark.parametrize(("statements", "says"), SEALED.values(), ids=SEALED)
+def test_what_the_hashes_of_revisions_cannot_tell_is_told_by_the_seal(
+    path: Path, shelf: Store, statements: str, says: list[str]
+) -> None:
+    """Nothing else is wrong with these stores: rows, hashes and triggers fit each other."""
+    with closing(sqlite3.connect(path, isolation_level=None)) as raw:
+        kept = raw.execute("SELECT name, sql FROM sqlite_schema WHERE type = 'trigger'").fetchall()
+        for name, _ in kept:
+            raw.execute(f"DROP TRIGGER {name}")
+        raw.executescript(statements)
+        for _, sql in kept:
+            raw.execute(sql)
+    problems = verify(shelf)
+    assert problems[: len(says)] == says
+    assert len(problems) == len(says) or statements == SEALED["the whole design"][0]
+
+
+def test_the_seal_goes_on_from_its_last_entry(path: Path, shelf: Store, design: Callable) -> None:
+    shelf.create("frost", design("1k"))
+    shelf.keep_part("film", {"kind": "resistor", "value": "470k", "rating": "2 W"})
+    shelf.keep_part("film", {"kind": "resistor", "value": "470k", "rating": "2 W"})  # the same: nothing is saved
+    assert verify(shelf) == []
+    with closing(sqlite3.connect(path)) as raw:
+        assert raw.execute("SELECT id, about FROM seal ORDER BY id DESC LIMIT 3").fetchall() == [
+            (14, '"film" of the drawer, version 3'),
+            (13, '"frost"'),
+            (12, '"flood" r3, added to result'),
+        ]
 
 
 def test_a_missing_trigger_is_named(path: Path, shelf: Store) -> None:
