@@ -21,6 +21,7 @@ class Factor:
 FACTORS: Final[Mapping[str, Factor]] = {
     "v_ceo": Factor(0.8, "collector-emitter voltage rating"),
     "v_ebo": Factor(0.8, "reverse base-emitter voltage rating"),
+    "v_gss": Factor(0.8, "gate-source voltage rating"),
     "i_c_max": Factor(1.0, "collector or drain current rating"),
     "v_rrm": Factor(1.0, "reverse voltage rating of diodes"),
     "capacitor_film": Factor(0.6, "voltage rating of film and ceramic capacitors"),

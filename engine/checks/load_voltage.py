@@ -68,7 +68,7 @@ def _on_ask(
 ) -> Ask:
     bench = view.bench(load.ref)
     plus, minus, _ = bench.on or ("", "", 0.0)
-    at = view.moment(sequence, "sounding", "on") or Anchor(1e-2, view.event(f"{load.ref} on"))
+    at = view.while_on(sequence, load)
     across = voltage(plus, minus)
     steady, most = level(across, at), maximum(across)
     warm = None if bench.rise is None or load.kind != "coil" else level(bench.rise, at)
@@ -112,8 +112,7 @@ def off_asks(check: Check, view: View) -> Iterator[Ask]:
     for stage, load in _loads(view):
         requirement = view.requirement(check.slug, load.ref, stage.name)
         sequence = view.sequence(requirement)
-        moments = view.design.sequences[sequence].moments
-        off = tuple(view.anchor(name, sequence) for name in ("standby", "silent", "reset") if name in moments)
+        off = view.while_off(sequence, load)
         if off:
             yield _off_ask(check, view, stage, load, sequence, off)
 

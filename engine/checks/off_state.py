@@ -28,7 +28,9 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
 def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     sequence = view.sequence(requirement)
-    at = view.moment(sequence, "standby") or Anchor(0.5 * view.ends(sequence))
+    driven = view.role(stage, role.replace("driver", "load")) if role.startswith("driver") else None
+    rests = driven is not None and view.rests_on(driven)
+    at = view.moment(sequence, *(("sounding", "on") if rests else ("standby",))) or Anchor(0.5 * view.ends(sequence))
     across = level(forward_base_voltage(part), at)
     permitted = view.extra(requirement, "off_current", "A") or PERMITTED
     required = view.required(check.slug, check.required, requirement)

@@ -1,4 +1,4 @@
-"""Check 8: does the collector-emitter, or drain-source, voltage stay below its rating?"""
+"""Check 8: do the collector-emitter or drain-source voltage, and the gate-source voltage, stay below their ratings?"""
 
 from __future__ import annotations
 
@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
@@ -43,6 +44,48 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(across,))
 
 
+def gate_asks(check: Check, view: View) -> Iterator[Ask]:
+    """One ask for every field-effect transistor, over all sequences."""
+    for stage, part in view.parts_of(*MOSFETS):
+        yield _gate_ask(check, view, stage, part)
+
+
+def _gate_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
+    requirement = view.requirement(check.slug, part.ref, stage.name)
+    required = view.required(check.slug, check.required, requirement)
+    sequences = tuple(view.design.sequences)
+    rating = view.datum(part, "v_gss", "V")
+    if rating is None:
+        return unknown(check, stage.name, part.ref, sequences[0], required, f"v_gss of {part.ref}")
+    allowed = view.derating("v_gss", requirement) * rating.low
+    gate = voltage(part.pins["gate"], part.pins["source"])
+    most, least = maximum(gate), maximum(gate.scaled(-1.0))
+    divided = _divided(view, stage, part)
+
+    def judge(seen: Seen) -> Judged:
+        peaks = np.max([seen.value(row, sequence) for sequence in sequences for row in (most, least)], axis=0)
+        hand = None
+        if SUPPLY in seen.lanes:
+            share = 1.0 if divided is None else _share(seen, *divided)
+            hand = 1.0 - share * seen.lanes[SUPPLY] / allowed
+        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed), hand=hand)
+
+    return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(most, least))
+
+
+def _divided(view: View, stage: Stage, part: Part) -> tuple[str, str] | None:
+    """The resistors of a stage that divide the supply to its gate, in series and to its source."""
+    series, bleed = (view.role(stage, f"gate_{name}resistor") for name in ("", "bleed_"))
+    if series is None or bleed is None or any(part.pins["gate"] not in r.pins.values() for r in (series, bleed)):
+        return None
+    return series.ref, bleed.ref
+
+
+def _share(seen: Seen, series: str, bleed: str) -> Floats:
+    ohms = seen.lanes[bleed, "value"]
+    return np.asarray(ohms / (ohms + seen.lanes[series, "value"]))
+
+
 CHECKS = (
     Check(
         number=8,
@@ -54,5 +97,16 @@ CHECKS = (
         asks=asks,
         worst="high supply",
         by_hand="the supply across it: a transistor that is off, without a coil",
+    ),
+    Check(
+        number=8,
+        slug="gate_source",
+        title="peak gate-source",
+        unit="V",
+        required=0.0,
+        formula="D = largest gate-source voltage of either sign in all sequences, C = derating x V_GSS",
+        asks=gate_asks,
+        worst="high supply",
+        by_hand="supply x R_bleed / (R_bleed + R_gate), the whole supply without these: driven from rail to rail",
     ),
 )

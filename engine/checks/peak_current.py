@@ -1,4 +1,4 @@
-"""Check 10: can a transistor carry the inrush of its load?
+"""Check 10: can a transistor, bipolar or field-effect, carry the inrush of its load?
 
 The inrush is taken from the load's data and not from the simulation, in which the transistor itself limits it.
 """
@@ -12,14 +12,16 @@ import numpy as np
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
 from ..parts import kinds
+from ..primitives.builder import Bench
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
 from .base_overdrive import SATURATED, base_drive
 from .check import Ask, Check, Judged, ratio, unknown
+from .peak_collector_emitter import MOSFETS
 from .seen import Seen
-from .view import View
+from .view import View, polarity
 
-RATINGS = ("i_cm", "i_c_max")
+RATINGS = ("i_cm", "i_c_max", "i_d_max")
 Inrush = Callable[[Lanes, Floats], Floats]
 
 
@@ -27,7 +29,8 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every driver with a load."""
     for stage, role, part in view.with_role("driver"):
         load = view.role(stage, "load" if role == "driver" else role.replace("driver", "load"))
-        if load is not None and view.bench(part.ref).gain is not None:
+        bench = view.bench(part.ref)
+        if load is not None and (bench.gain is not None or bench.lets_through is not None):
             yield _ask(check, view, stage, part, load)
 
 
@@ -37,7 +40,14 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
     sequence = view.sequence(requirement)
     rating = next((found for key in RATINGS if (found := view.datum(part, key, "A")) is not None), None)
     if rating is None:
-        return unknown(check, stage.name, part.ref, sequence, required, f"i_c_max of {part.ref}")
+        return unknown(
+            check,
+            stage.name,
+            part.ref,
+            sequence,
+            required,
+            f"{RATINGS[-1 if part.kind in MOSFETS else 1]} of {part.ref}",
+        )
     bench, driven = view.bench(part.ref), view.bench(load.ref)
     inrush = _inrush(view, load)
     if isinstance(inrush, str):
@@ -46,11 +56,13 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         return unknown(check, stage.name, part.ref, sequence, required, f"operating_minimum of {load.ref}")
     allowed = view.derating("i_c_max", requirement) * rating.low
     at = view.moment(sequence, "sounding", "on")
-    if at is None:
+    if view.rests_on(load):
+        at = view.while_on(sequence, load)
+    elif at is None:
         at = Anchor(0.5 * view.ends(sequence)) if driven.on is None else Anchor(1e-2, view.event(f"{load.ref} on"))
-    base = level(bench.currents["base"], at)
+    control = _control(part, bench, at)
     across, drop, peak = _voltages(view, part, load, at)
-    driving = base_drive(view, stage, part, at)
+    driving = base_drive(view, stage, part, at) if bench.lets_through is None else None
 
     def judge(seen: Seen) -> Judged:
         if inrush is None:
@@ -58,29 +70,37 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         else:
             volts = seen.value(across, sequence) + np.maximum(0.0, np.abs(seen.value(drop, sequence)) - SATURATED)
             wanted = inrush(seen.lanes, volts)
+        given = seen.value(control, sequence)
+        never = ~seen.seen(control, sequence)
+        words = [(never, check.words["never"].format(load=load.ref))]
+        if bench.lets_through is not None:
+            return ratio(wanted, np.minimum(allowed, bench.lets_through(seen.lanes, given)), words)
         gain = np.ones(seen.lanes.count) if bench.gain_at is None else bench.gain_at(seen.lanes, wanted)
-        carried = np.minimum(allowed, gain * np.abs(seen.value(base, sequence)))
-        never = ~seen.seen(base, sequence)
+        carried = np.minimum(allowed, gain * np.abs(given))
         hand = None
         if driving is not None:
             by_hand = np.minimum(allowed, gain * driving.current(seen, sequence, wanted))
             hand = 1.0 - wanted / np.where(by_hand > 0.0, by_hand, np.nan)
-        return ratio(wanted, carried, [(never, check.words["never"].format(load=load.ref))], hand)
+        return ratio(wanted, carried, words, hand)
 
-    rows = (base, across, drop, peak, *(() if driving is None else (driving.row,)))
+    rows = (control, across, drop, peak, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 
 def _voltages(view: View, part: Part, load: Part, at: Anchor) -> tuple[Row, Row, Row]:
     on, (first, second, *_) = view.bench(load.ref).on, load.pins.values()
     plus, minus = (first, second) if on is None else on[:2]
-    drop = voltage(part.pins["collector"], part.pins["emitter"])
-    collector = view.bench(part.ref).currents["collector"]
-    return level(voltage(plus, minus), at), level(drop, at), maximum(collector.scaled(1.0 if _npn(part) else -1.0))
+    upper, lower = ("drain", "source") if part.kind in MOSFETS else ("collector", "emitter")
+    drop = voltage(part.pins[upper], part.pins[lower])
+    current = view.bench(part.ref).currents[upper]
+    return level(voltage(plus, minus), at), level(drop, at), maximum(current.scaled(polarity(part)))
 
 
-def _npn(part: Part) -> bool:
-    return not part.kind.endswith("pnp")
+def _control(part: Part, bench: Bench, at: Anchor) -> Row:
+    """What decides how much a transistor carries: its base current, or its gate voltage counted as forward."""
+    if part.kind in MOSFETS:
+        return level(voltage(part.pins["gate"], part.pins["source"]).scaled(polarity(part)), at)
+    return level(bench.currents["base"], at)
 
 
 def _inrush(view: View, load: Part) -> Inrush | str | None:
@@ -106,7 +126,7 @@ CHECKS = (
         title="peak current",
         unit="A",
         required=0.2,
-        formula="D = inrush of the load at its voltage, C = the smaller of derating x I_CM and h_FE I_B",
+        formula="D = inrush of the load at its voltage, C = least of derating x I_CM, h_FE I_B or K/2 (V_GS - V_T)^2",
         asks=asks,
         worst="high supply for the rating; cold, low supply, weak h_FE for the base current",
         by_hand="D / min(derating x I_CM, h_FE ((V_drive - V_BE) / R_B - V_BE / R_BE))",

@@ -62,10 +62,25 @@ class View:
 
     def load(self, stage: Stage) -> Part | None:
         """The load that tells when there is an alarm: of the stage itself, else the first of the design, among those
-        that have a level at which they count as on."""
+        that have a level at which they count as on; one that is on in stand-by only where there is no other."""
         loads = [(place, part) for place, _, part in self.with_role("load") if self.bench(part.ref).on is not None]
-        loads.sort(key=lambda found: found[0] is not stage)
+        loads.sort(key=lambda found: (self.rests_on(found[1]), found[0] is not stage))
         return loads[0][1] if loads else None
+
+    def rests_on(self, load: Part) -> bool:
+        """Whether a load is on in stand-by: the coil of a fail-safe relay, whose contacts all break."""
+        moved = [part for _, part in self.parts_of("contact") if part.operated_by == load.ref]
+        return load.kind == "coil" and bool(moved) and all(part.form == "break" for part in moved)
+
+    def while_on(self, sequence: str, load: Part) -> Anchor:
+        """The instant at which a load is on: a moment of the sequence, else a little after it came on."""
+        names = ("standby", "normal") if self.rests_on(load) else ("sounding", "on")
+        return self.moment(sequence, *names) or Anchor(1e-2, self.event(f"{load.ref} on"))
+
+    def while_off(self, sequence: str, load: Part) -> tuple[Anchor, ...]:
+        """The moments of a sequence at which a load must be off."""
+        names = ("sounding", "on") if self.rests_on(load) else ("standby", "silent", "reset")
+        return tuple(self.anchor(name, sequence) for name in names if name in self.design.sequences[sequence].moments)
 
     def base_emitter_resistor(self, stage: Stage, role: str) -> Part | None:
         """The resistor across the base-emitter junction of the transistor in this role, where its role is filled."""

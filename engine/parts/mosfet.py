@@ -184,6 +184,12 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
         bench.currents["source"] = current.scaled(-1.0)
         bench.power = power
 
+        def lets_through(lanes: Lanes, gate_source: Floats) -> Floats:
+            above = np.maximum(0.0, gate_source - laws["threshold"](lanes))
+            return np.asarray(0.5 * laws["transconductance"](lanes) * above**2)
+
+        bench.lets_through = lets_through
+
     return expand
 
 

@@ -167,7 +167,8 @@ class Bench:
     ``currents`` by pin name; ``armature``: the state of what a coil moves; ``rise``: how far above the ambient it is,
     in K; ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of a load at a
     voltage, ``inrush``: what it draws there cold; of a transistor ``gain`` as its figure states
-    it, ``gain_at`` and ``base_voltage`` at a collector current in A, and ``leakage`` in A; of a capacitor
+    it, ``gain_at`` and ``base_voltage`` at a collector current in A, and ``leakage`` in A; of a
+    field-effect transistor ``lets_through``: the drain current in A that a gate voltage carries at most; of a capacitor
     ``leak_conductance`` in S.
     """
 
@@ -182,6 +183,7 @@ class Bench:
     gain_at: Callable[[Lanes, Floats], Floats] | None = None
     base_voltage: Callable[[Lanes, Floats | float], Floats] | None = None
     leakage: Law | None = None
+    lets_through: Callable[[Lanes, Floats], Floats] | None = None
     leak_conductance: Law | None = None
 
 

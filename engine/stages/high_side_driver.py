@@ -3,21 +3,17 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements, peak
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, load_requirements, peak, switched
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan
 
 BLEED = 0.1  # share of a base current that its base-emitter resistor may take (common practice)
 V_FULL = 0.9  # V, base-emitter voltage of a driver at its full current, from memory
 
 
-def _load(plan: Plan) -> float:
-    return plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
-
-
 def _base(plan: Plan) -> tuple[float, float, float]:
     """Base current of the pnp in A, that of the npn, and the npn's base-emitter resistor in ohm."""
-    load = _load(plan)
-    upper = plan.above_zero("overdrive") * load / plan.gain("pnp", peak(plan, load))
+    load = switched(plan)
+    upper = carried(plan, load) / plan.gain("pnp", peak(plan, load))
     lower = OVERDRIVE * upper / plan.gain("npn", upper)
     return upper, lower, min(max(V_BE / (BLEED * lower), 1e3), 100e3)
 
@@ -43,7 +39,7 @@ def _make(plan: Plan) -> Made:
         (plan.rail.min - V_FULL - V_SATURATED) / (upper + V_FULL / upper_bleed), top, pull, "base_resistor", snap="down"
     )
     plan.resistor(upper_bleed, rail, top, "base_emitter_resistor_driver")
-    plan.transistor(out, top, rail, "driver", kind="pnp", current=peak(plan, _load(plan)))
+    plan.transistor(out, top, rail, "driver", kind="pnp", current=peak(plan, switched(plan)))
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), out, RETURN)
     return Made(output=Drive(Sense.HIGH_SIDE, drop=0.3), requirements=load_requirements(plan))

@@ -92,12 +92,14 @@ class Drive:
 class Intake:
     """What a stage takes at its signal port while active: ``current`` in A, at ``threshold``, a share of the rail.
 
-    ``passes``: the stage has no signal of its own, and what follows it hangs on the same net.
+    ``passes``: the stage has no signal of its own, and what follows it hangs on the same net. ``surge`` is its inrush
+    in parts of the current, where it is known.
     """
 
     current: float = 0.0
     threshold: float | None = None
     passes: bool = False
+    surge: float | None = None
 
 
 @dataclass(frozen=True)

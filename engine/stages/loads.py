@@ -20,10 +20,24 @@ SURGE = {"sounder": 2.0, "piezo": 1.2}
 """Inrush in parts of the largest current (from memory)."""
 
 
+def switched(plan: Plan) -> float:
+    """The largest current in A of the load at the nominal supply: its own, or that of the stage behind it."""
+    return plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
+
+
 def peak(plan: Plan, current: float) -> float:
     """The inrush in A of a load of ``current`` at the highest supply; that of a sounder where it is not known."""
-    surge = SURGE.get(plan.text("load"), max(SURGE.values()))
+    surge = SURGE.get(plan.text("load"), plan.next.surge or max(SURGE.values()))
     return surge * current * plan.supply.max / plan.supply.nominal
+
+
+def carried(plan: Plan, current: float) -> float:
+    """The collector current in A that a base is driven for: ``overdrive`` times the load's, or a known inrush with
+    the customary 20 % to spare if that is more."""
+    wanted = plan.above_zero("overdrive") * current
+    if plan.text("load") == NONE and plan.next.surge is not None:
+        return max(wanted, peak(plan, current) / 0.8)
+    return wanted
 
 
 def works_from(plan: Plan) -> float:

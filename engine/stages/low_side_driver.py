@@ -6,21 +6,17 @@ from functools import partial
 
 from ..quantity import write
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements, peak
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, load_requirements, peak, switched
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
 LEAST_BLEED, MOST_BLEED = 1e3, 47e3  # ohm
 
 
-def _load(plan: Plan) -> float:
-    return plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
-
-
 def _base(plan: Plan, kind: str, junctions: int) -> tuple[float, float]:
     """Base current in A, and the base-emitter resistor in ohm that takes little of it."""
-    load = _load(plan)
-    base = plan.above_zero("overdrive") * load / plan.gain(kind, peak(plan, load))
+    load = switched(plan)
+    base = carried(plan, load) / plan.gain(kind, peak(plan, load))
     return base, min(max(junctions * V_BE / (BLEED * base), LEAST_BLEED), MOST_BLEED)
 
 
@@ -34,7 +30,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     node, low = plan.net("base"), plan.port("low")
     drop = junctions * V_BE
     ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
-    current = _load(plan)
+    current = switched(plan)
     if kind == "npn" and peak(plan, current) > DRIVER_CURRENT:
         inrush = write(peak(plan, current), "A")
         raise plan.refused(

@@ -79,6 +79,8 @@ def _trips(following: Sequence[MadeStage], facts: Mapping[str, str]) -> dict[str
 
 
 def _named(roles: Sequence[Mapping[str, str]]) -> dict[str, str]:
+    # A relay is what switches: the load that it switches tells of the alarm where there is one.
+    roles = sorted(roles, key=lambda each: "relay_contact" in each)
     found = {name: next((each[name] for each in roles if name in each), None) for name in ("load", "contact")}
     return {name: ref for name, ref in found.items() if ref is not None}
 

@@ -86,13 +86,21 @@ def make_row(
         plan = _plan(conditions, choice, at, takes, taken)
         plan.check()
         own = plan.kind.intake(plan)
-        takes = Intake(own.current + takes.current, own.threshold or takes.threshold) if own.passes else own
+        takes = _joined(own, takes) if own.passes else own
     made: list[MadeStage] = []
     for choice, after in zip(choices, following, strict=True):
         stage, place = make_stage(conditions, choice, place, after, taken)
         taken |= {part["ref"] for part in stage.stage["parts"]}
         made.append(stage)
     return tuple(made)
+
+
+def _joined(own: Intake, next_one: Intake) -> Intake:
+    """What two stages on one net take together."""
+    surges = [each.surge for each in (own, next_one) if each.surge is not None]
+    return Intake(
+        own.current + next_one.current, own.threshold or next_one.threshold, surge=max(surges) if surges else None
+    )
 
 
 def _places(conditions: Conditions, choices: Sequence[Choice], place: Place) -> list[Place]:

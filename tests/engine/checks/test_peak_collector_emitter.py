@@ -7,7 +7,7 @@ from typing import Any
 import pytest
 
 from stagebook.engine.design.document import Design
-from stagebook.engine.results import Verdict
+from stagebook.engine.results import CheckResult, Verdict
 
 from ..circuits import Json, mosfet, resistor, transistor, two
 from .sheets import CONNECT, design, exact, margin
@@ -75,3 +75,35 @@ def test_of_a_field_effect_transistor_the_drain_counts(kind: str) -> None:
     switch = design(*parts, mosfet("Q1", "out", "gate", common, kind, data=data), supply="24 V", ambient="25 C")
     found = margin(switch, "peak_collector_emitter", "Q1")
     assert (found.margin, found.capability) == (pytest.approx(1.0 - 24.0 / 48.0, abs=1e-3), pytest.approx(48.0))
+
+
+@pytest.mark.parametrize("kind", ["mosfet_n", "mosfet_p"])
+@pytest.mark.parametrize(("supply", "verdict"), [("15 V", Verdict.PASS), ("18 V", Verdict.FAIL)])
+def test_the_gate_has_a_rating_of_its_own(kind: str, supply: str, verdict: Verdict) -> None:
+    # The whole supply between gate and source, of 0.8 x 20 V = 16 V.
+    rail, common = ("supply", "0V") if kind == "mosfet_n" else ("0V", "supply")
+    data = {"threshold": "2 V", "resistance_on": "1 ohm", "v_dss": "60 V", "v_gss": "20 V"}
+    parts = [exact(resistor("R1", "gate", rail, "1k")), exact(resistor("R2", rail, "out", "1k"))]
+    found = margin(
+        design(*parts, mosfet("Q1", "out", "gate", common, kind, data=data), supply=supply), "gate_source", "Q1"
+    )
+    assert found.margin == pytest.approx(1.0 - float(supply.split()[0]) / 16.0, abs=1e-3)
+    assert (found.verdict, found.capability) == (verdict, pytest.approx(16.0))
+    assert found.hand == pytest.approx(found.margin, abs=1e-3)
+
+
+def test_a_divider_at_the_gate_counts_by_hand_and_a_missing_rating_is_named() -> None:
+    # 24 V x 100k/191k = 12.6 V.
+    data = {"threshold": "2 V", "resistance_on": "1 ohm", "v_gss": "20 V"}
+    parts = [exact(resistor(*each)) for each in (("R1", "supply", "gate", "91k"), ("R2", "gate", "0V", "100k"))]
+    roles = {"gate_resistor": "R1", "gate_bleed_resistor": "R2"}
+    load = exact(resistor("R3", "supply", "out", "1k"))
+
+    def judged(**known: str) -> CheckResult:
+        part = mosfet("Q1", "out", "gate", "0V", data={**data, **known})
+        return margin(design(*parts, load, part, supply="24 V", roles=roles), "gate_source", "Q1")
+
+    assert judged().hand == pytest.approx(1.0 - 24.0 * 100.0 / 191.0 / 16.0, abs=1e-3)
+    assert judged().margin == pytest.approx(judged().hand, abs=1e-3)
+    del data["v_gss"]
+    assert judged().reason == "missing: v_gss of Q1"

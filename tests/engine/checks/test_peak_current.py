@@ -10,7 +10,7 @@ from scipy import constants
 from stagebook.engine.design.document import Design
 from stagebook.engine.results import Verdict
 
-from ..circuits import Json, resistor, transistor
+from ..circuits import Json, mosfet, resistor, transistor
 from .sheets import design, exact, margin, sounder
 
 VT = constants.k * 298.15 / constants.e
@@ -78,3 +78,37 @@ def test_a_resistor_as_load_shows_its_current() -> None:
     found = margin(of, "peak_current", "Q1")
     assert found.demand == pytest.approx(0.101, rel=0.02)
     assert found.verdict is Verdict.PASS
+
+
+@pytest.mark.parametrize(
+    ("gate", "rated", "capability", "verdict"),
+    [("8.4 V", "2 A", 2.0, Verdict.PASS), ("8.4 V", "0.3 A", 0.3, Verdict.FAIL), ("3 V", "2 A", 0.25, Verdict.FAIL)],
+)
+def test_of_a_field_effect_transistor_the_gate_voltage_counts(
+    gate: str, rated: str, capability: float, verdict: Verdict
+) -> None:
+    # Square law (Shichman, Hodges 1968): K/2 (V_GS - V_T)^2 = 0.25 A/V2 x 1 V2 at 3 V, 10 A at 8.4 V; inrush 400 mA.
+    load = sounder("LS1", "supply", "low", "250 mA", "1 V", rated="8.2 V")
+    load["data"]["surge"] = "400 mA"
+    law: Json = {"threshold": "2 V", "transconductance": "0.5 A/V2"}
+    of = design(
+        load,
+        mosfet("Q1", "low", "gate", "0V", law=law, data={"i_d_max": rated}),
+        exact(resistor("R1", "gate", "0V", "100k")),
+        exact(resistor("R2", "supply", "gate", repr(100e3 * (8.4 / float(gate.split()[0]) - 1.0) + 1.0))),
+        supply="8.4 V",
+        ambient="25 C",
+        roles={"driver": "Q1", "load": "LS1"},
+    )
+    found = margin(of, "peak_current", "Q1")
+    assert found.capability == pytest.approx(capability, rel=0.01)
+    assert found.demand == pytest.approx(0.4, rel=0.03)
+    assert found.verdict is verdict
+
+
+def test_a_channel_without_a_rating() -> None:
+    load = sounder("LS1", "supply", "low", "250 mA", "3 V", rated="8.2 V")
+    load["data"]["surge"] = "400 mA"
+    data = {"threshold": "2 V", "resistance_on": "0.1 ohm"}
+    of = design(load, mosfet("Q1", "low", "supply", "0V", data=data), roles={"driver": "Q1", "load": "LS1"})
+    assert margin(of, "peak_current", "Q1").reason == "missing: i_d_max of Q1"
