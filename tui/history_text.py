@@ -4,15 +4,18 @@ from __future__ import annotations
 
 from collections.abc import Collection, Sequence
 from dataclasses import dataclass
+from textwrap import wrap
 
 from ..engine.design.differences import differences
 from ..engine.results import CheckResult
 from ..storage.values import Revision
 from .drafting import change_words, incomplete
-from .shown import MARKS, TONES, Line, Span, figure, fit, fit_right, line, percent
+from .margin_text import corner_words, name_cell
+from .shown import MARKS, TONES, Line, Span, figure, fit, fit_right, line, percent, visible
 from .widgets.row_list import Row
 
 TREND_WIDTH = 13
+_LABEL = 12
 _WIDE = 100
 
 
@@ -136,27 +139,33 @@ def _value(check: CheckResult | None) -> float | None:
     return None if check is None or check.margin is None else max(-1.0, min(1.0, check.margin))
 
 
-def revision_lines(revision: Revision) -> tuple[Line, Line]:
-    """Two lines about the revision under the hand."""
+def revision_lines(revision: Revision) -> tuple[Line, ...]:
+    """Four lines about the revision under the hand: where it comes from, why it is, what was changed, what came of
+    it."""
     parent = "first" if revision.parent is None else f"from r{revision.parent}"
     stamp = ", saved incomplete" if incomplete(revision.sheet) else ""
     when = revision.saved.replace("T", " ")[:16]
-    first = f" r{revision.number}, {parent}, saved {when}{stamp}: {revision.note.line}"
-    later = [f"{name}: {getattr(revision.note, name)}" for name in ("change", "result") if getattr(revision.note, name)]
-    return line(first), line(" " + "   ".join(later))
+    first = f" r{revision.number}, {parent}, saved {when}{stamp}"
+    note = [(label, " ".join(getattr(revision.note, name).split())) for name, label in _IN_SHORT]
+    return line(first), *(line(Span(f" {label:<8}", "strong"), text) for label, text in note if text)
 
 
-def revision_rows(revision: Revision, parent: Revision | None) -> list[tuple[str, Line]]:
+_IN_SHORT = (("line", "why"), ("change", "change"), ("result", "result"))
+
+
+def revision_rows(revision: Revision, parent: Revision | None, width: int) -> list[tuple[str, Line]]:
     """Everything about one revision: its note in full, what differs from its parent, its margins from the worst."""
     rows: list[tuple[str, Line]] = []
+    room = max(20, width - 2 - _LABEL)
     for name in ("line", "symptom", "hypothesis", "change", "prediction", "result", "next"):
-        for at, text in enumerate(getattr(revision.note, name).splitlines()):
+        texts = [piece for text in getattr(revision.note, name).splitlines() for piece in wrap(visible(text), room)]
+        for at, text in enumerate(texts):
             label = {"line": "why"}.get(name, name) if at == 0 else ""
-            rows.append((f"note {name} {at}", line(Span(f"{label:<12}", "strong"), text)))
+            rows.append((f"note {name} {at}", line(Span(f"{label:<{_LABEL}}", "strong"), text)))
     if parent is not None:
         for at, change in enumerate(differences(parent.design, revision.design)):
             label = f"since r{parent.number}" if at == 0 else ""
-            rows.append((f"change {at}", line(Span(f"{label:<12}", "strong"), change_words(change))))
+            rows.append((f"change {at}", line(Span(f"{label:<{_LABEL}}", "strong"), change_words(change))))
     rows.append(("gap", line(Span("margins as they were when it was saved", "dim"))))
     for check in sorted(revision.sheet.checks, key=lambda check: check.slack):
         shown = figure(check.margin, check.outcome, 10)
@@ -165,7 +174,8 @@ def revision_rows(revision: Revision, parent: Revision | None) -> list[tuple[str
                 check.id,
                 line(
                     Span(f"{MARKS[check.verdict]} {fit(shown, 10)} ", TONES[check.verdict]),
-                    f"of {percent(check.required)} required  {fit(f'{check.title} {check.part}', 22)} {check.corner}",
+                    f"of {fit_right(percent(check.required), 4)} required  {name_cell(check, 24, False)} ",
+                    corner_words(check, max(10, width - 58)),
                 ),
             )
         )

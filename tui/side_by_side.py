@@ -107,7 +107,7 @@ def causes_line(causes: CausesSheet, name: str) -> Line:
     if cause is None:
         return line(head, Span("unknown, as the margin is", "dim"))
     ranked = sorted(cause.shares.items(), key=lambda item: -abs(item[1]))
-    words = [f"{what} {percent(share)}" for what, share in ranked] or ["nothing changed"]
+    words = [f"{what} {points(share)}" for what, share in ranked] or ["nothing changed"]
     if cause.error is not None:
         words = [
             f"{word} (+/-{abs(cause.error[what]) * 100:.0f})" for word, (what, _) in zip(words, ranked, strict=True)

@@ -213,6 +213,7 @@ async def test_saving_waits_for_the_corners_and_can_be_left(app: StagebookApp, s
         await until(pilot, lambda: isinstance(pilot.app.screen, Waiting))
         await pilot.press("b")
         await until(pilot, lambda: pilot.app.screen is bench)
+        assert notice(pilot) == "not saved; s asks again and still knows the note"
         assert len(shelf.revisions("flood")) == 2
         await pilot.press("s")
         assert "why" in seen(pilot)
@@ -246,6 +247,8 @@ async def test_frozen_figures_show_after_the_prediction_which_goes_into_the_note
         await settled(pilot)
         assert "FROZEN" in seen(pilot)
         assert "+15~" in seen(pilot)
+        await pilot.press("w")
+        assert "held back" in notice(pilot)
         await pilot.press("f", *"it stops", "enter")
         await until(pilot, lambda: pilot.app.screen is bench)
         assert "X never" in seen(pilot)

@@ -67,6 +67,7 @@ async def test_a_revision_is_looked_at_in_full(app: StagebookApp) -> None:
         assert isinstance(pilot.app.screen, RevisionPage)
         assert "prediction  shorter" in seen(pilot)
         assert "since r1    R7 470k > 390k" in seen(pilot)
+        assert "= +15        of  +10 required  arrival R7               hot, low supply" in seen(pilot)
         await pilot.press("end", "w")
         assert "demand" in seen(pilot)
 
@@ -132,7 +133,7 @@ async def test_a_result_is_added_under_the_note(app: StagebookApp, shelf: Store)
         await pilot.press("t", *"73 s", "enter")
         await until(pilot, lambda: isinstance(pilot.app.screen, HistoryScreen))
         assert shelf.revision("flood", 2).note.result == "73 s"
-        assert "result: 73 s" in seen(pilot)
+        assert "result  73 s" in seen(pilot)
 
 
 async def test_the_trend_is_that_of_the_margin_under_the_hand_and_goes_on_to_the_draft(app: StagebookApp) -> None:

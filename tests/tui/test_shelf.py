@@ -123,6 +123,8 @@ async def test_every_mark_fits_the_help_of_80_columns(app: StagebookApp) -> None
         await settled(pilot)
         await pilot.press("question_mark", "end")
         assert "what should happen does not" in seen(pilot)
+        # The row is longer than the screen: the rest stands below.
+        assert "nominal is one case and never stands for the worst." in " ".join(seen(pilot).split())
 
 
 async def test_the_drawer_opens_from_the_shelf(app: StagebookApp, shelf: Store) -> None:

@@ -312,6 +312,8 @@ class BenchScreen(BenchView):
         """Where the chosen margin comes from."""
         if self.chosen is None:
             self.refuse("there is no margin under the hand yet")
+        elif self.figures.frozen and self.drafting.changes():
+            self.refuse("the figures are held back; f shows them first")
         else:
             self.app.push_screen(self._origin_of(self.chosen))
 

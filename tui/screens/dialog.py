@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from textwrap import wrap
 from typing import ClassVar
 
+from rich.cells import cell_len
 from textual import events
 from textual.app import ComposeResult
 from textual.binding import BindingType
@@ -53,8 +55,21 @@ class Ask(ModalScreen[bool]):
         self.dismiss(False)
 
 
-_ABOUT = 5
+_IN_FULL = 6
 _ROOMY = 20
+
+
+def in_full_lines(text: str, width: int, most: int) -> tuple[Line, ...]:
+    """The whole of a text that a row of this width cuts, wrapped, ``most`` lines of it; nothing for one that fits."""
+    if cell_len(visible(text)) <= width:
+        return ()
+    pieces = wrap(_GAP.sub("  ", visible(text)), width)
+    if len(pieces) > most:
+        pieces[most - 1] = f"{pieces[most - 1][: width - 4]} ..."
+    return tuple(line(Span(f" {piece}", "dim")) for piece in pieces[:most])
+
+
+_GAP = re.compile(" {2,}")
 
 
 class Pick(ModalScreen[str | None]):
@@ -93,12 +108,13 @@ class Pick(ModalScreen[str | None]):
         self._about()
 
     def _about(self) -> None:
-        width = self.app.size.width
-        most = max((len(text) for text in self._texts.values()), default=0)
-        about = self.query_one("#in-full", Lines)
-        about.display = most > width - 2 and self.app.size.height >= _ROOMY
-        text = self._texts.get(self.query_one(RowList).key or "", "")
-        about.show(*(line(Span(f" {piece}", "dim")) for piece in wrap(visible(text), max(10, width - 2))[:_ABOUT]))
+        width = max(10, self.app.size.width - 2)
+        in_full = {key: in_full_lines(text, width, _IN_FULL) for key, text in self._texts.items()}
+        shown = self.query_one("#in-full", Lines)
+        most = max(map(len, in_full.values()), default=0)
+        shown.display = most > 0 and self.app.size.height >= _ROOMY
+        shown.styles.height = most
+        shown.show(*in_full.get(self.query_one(RowList).key or "", ()))
 
     def action_choose(self) -> None:
         """This one."""

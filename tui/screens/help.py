@@ -10,17 +10,19 @@ from textual.containers import Vertical
 from textual.screen import ModalScreen
 
 from ..actions import bindings, of
-from ..shown import Span, line
+from ..shown import Span, line, plain
+from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
 from ..widgets.rule import Rule
 from ..widgets.status import KeyLine
+from .dialog import in_full_lines
 
 _MARKS = (
     ("X", "fail: worst corner below zero, or what should happen does not"),
     ("!", "thin: above zero, below the margin that is required"),
     ("=", "pass: the required margin holds in the worst corner"),
     ("?", "unknown: a datum is missing; never counted as a pass"),
-    ("~", "being computed: the figure is of the design before the edit"),
+    ("~", "old: of the design before the edits, or corners are still to come"),
     ("<", "the margin got worse than in the revision the draft began from"),
     ("*", "the part differs from the revision the draft began from"),
     (">", "the row under the hand"),
@@ -45,6 +47,7 @@ class HelpScreen(ModalScreen[None]):
         with Vertical(classes="dialog full"):
             yield Rule()
             yield RowList(id="help")
+            yield Lines(id="in-full")
             yield KeyLine("page")
 
     def on_mount(self) -> None:
@@ -59,6 +62,21 @@ class HelpScreen(ModalScreen[None]):
         shown = self.query_one(RowList)
         shown.show(rows, heading=line(Span(f"keys: {self._where}", "strong")))
         shown.focus()
+        self._in_full()
+
+    def on_resize(self) -> None:
+        """Another width: other rows are cut."""
+        self._in_full()
+
+    def on_row_list_moved(self) -> None:
+        """Another row."""
+        self._in_full()
+
+    def _in_full(self) -> None:
+        """What is cut of the row under the hand."""
+        rows = self.query_one(RowList)
+        text = next((plain(row.spans) for row in rows.rows if row.key == rows.key), "")
+        self.query_one("#in-full", Lines).show(*in_full_lines(text, self.size.width - 2, 2))
 
     def action_back(self) -> None:
         """Back to the screen below."""

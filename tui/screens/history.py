@@ -205,13 +205,14 @@ class RevisionPage(Page[None]):
         yield Rule()
         yield RowList(id="rows")
 
-    def on_mount(self) -> None:
-        """Shows the revision."""
+    def on_resize(self) -> None:
+        """Shows the revision, wrapped to the width there is."""
         revision = self._revision
         parent = "first revision" if revision.parent is None else f"from r{revision.parent}"
-        title = f" {self._design} r{revision.number}, {parent}, saved {revision.saved}"
+        title = f" {self._design} r{revision.number}, {parent}, saved {revision.saved.replace('T', ' ')[:16]}"
         self.query_one("#title", Lines).show(line(Span(title, "strong")))
-        self.query_one(RowList).show([Row(key, spans) for key, spans in revision_rows(revision, self._before)])
+        rows = revision_rows(revision, self._before, self.size.width)
+        self.query_one(RowList).show([Row(key, spans) for key, spans in rows])
 
     def action_origin(self) -> None:
         """Where the margin under the hand comes from."""

@@ -31,6 +31,9 @@ _PLACES = (
 )
 
 
+_NOT_SAVED = "not saved; s asks again and still knows the note"
+
+
 class Waiting(ModalScreen[str]):
     """The note is written, the corners are not known yet: wait, save incomplete, or leave it.
 
@@ -129,6 +132,7 @@ class Saving:
 
     def _noted(self, answers: Answers | None) -> None:
         if answers is None:
+            self._page.say(_NOT_SAVED, passing=True)
             return
         self._keep(answers)
         self._note = Note(**{name: text.strip() for name, text in answers.items()})
@@ -142,7 +146,7 @@ class Saving:
     def _waited(self, how: str | None) -> None:
         self._waiting = None
         if how not in {"ready", "now"}:
-            self._page.say("not saved; s asks again and still knows the note")
+            self._page.say(_NOT_SAVED, passing=True)
             return
         kept: list[Revision] = []
         if self._page.attempt(lambda: kept.append(self._drafting.save(self._note, self._newest()))):
