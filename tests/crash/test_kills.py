@@ -86,8 +86,8 @@ class Trials:
         with self.program("--store", self.path) as program:
             at = program.until("> flood")
             program.press("\r")
-            at = program.until("draft", "not saved yet", after=at)
-            at = program.until(" higher ", after=at)
+            # The head line and the line of the part are drawn in either order.
+            at = max(program.until(*words, after=at) for words in (("draft", "not saved yet"), (" higher ",)))
             benches, pending, says = [self.bench], list[Deed](), ""
             for one in range(1 + chance.randrange(3)):
                 pending.append(deed(chance, benches[-1], chance.choice(("type", "step", "step", "undo", "redo")), says))
