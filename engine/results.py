@@ -48,6 +48,7 @@ class CheckResult:
     ``margin`` is None when the verdict is UNKNOWN. ``formula`` says in words how the number is made. ``setting`` is the
     corner itself: (reference, datum, side) with side -1 low, +1 high, for everything that is not nominal there.
     ``by_hand`` is the hand formula in words and ``accuracy`` how far it can be trusted, see :attr:`disagrees`.
+    ``extrapolated`` says which figure was used beyond where it is given.
     """
 
     id: str
@@ -76,6 +77,7 @@ class CheckResult:
     setting: tuple[tuple[str, str, int], ...] = ()
     by_hand: str = ""
     accuracy: float | None = None
+    extrapolated: str | None = None
 
     @property
     def disagrees(self) -> bool:

@@ -123,7 +123,7 @@ def check_lines(row: FigureRow, width: int) -> tuple[Line, ...]:
         first = f" {where}: worst corner not known yet, required {percent(check.required)}"
     spread = "" if check.spread is None else f", spread {check.spread.passing * 100:.1f} % hold"
     off = f"by hand {percent(check.hand)}, which disagrees" if check.disagrees else ""
-    said = "   ".join(filter(None, (off, check.reason)))
+    said = "   ".join(filter(None, (off, check.reason, check.extrapolated)))
     first += f"{spread}, sequence {check.sequence}"
     if not row.worst_known:
         return line(first), line(f" {said}")

@@ -24,6 +24,8 @@ def origin_rows(check: CheckResult, worst_known: bool) -> Rows:
         rows.append(("happened", check.outcome, ""))
     if check.reason:
         rows.append(("reason", check.reason, ""))
+    if check.extrapolated:
+        rows.append(("extrapolated", check.extrapolated, "thin"))
     if check.demand is not None:
         rows.append(("demand", write_plain(check.demand, check.unit), ""))
     if check.capability is not None:

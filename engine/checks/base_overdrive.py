@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -11,10 +11,12 @@ from ..design.part import Part, Stage
 from ..kernel.layout import Floats
 from ..primitives.builder import Bench
 from ..primitives.signals import Anchor, Row, level, voltage
-from .check import Ask, Check, Judged, ratio, unknown
+from ..quantity import write
+from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .seen import Seen
 from .view import View, polarity
 
+CLOSE = 0.01  # share by which a current is still that of a figure
 SATURATED = 0.2  # V across a transistor that is fully on, from memory
 
 
@@ -56,7 +58,8 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
             i_b = driving.current(seen, sequence, wanted)
             hand = 1.0 - wanted / gain / np.where(i_b > 0.0, i_b, np.nan)
         supplied = np.abs(seen.value(base, sequence))
-        return ratio(wanted / gain, supplied, [(never, check.words["never"].format(load=load.ref))], hand)
+        judged = ratio(wanted / gain, supplied, [(never, check.words["never"].format(load=load.ref))], hand)
+        return replace(judged, extrapolated=gain_beyond(part, bench, wanted))
 
     required = view.required(check.slug, check.required, requirement)
     rows = (base, across, drop, *(() if driving is None else (driving.row,)))
@@ -78,6 +81,16 @@ class BaseDrive:
         v_be = self.bench.base_voltage(seen.lanes, collector)
         current = (seen.value(self.row, sequence) - v_be) / seen.lanes[self.resistor.ref, "value"]
         return current if self.leak is None else current - v_be / seen.lanes[self.leak.ref, "value"]
+
+
+def gain_beyond(part: Part, bench: Bench, current: Floats) -> tuple[tuple[Mask, str], ...]:
+    """In which lanes a gain is used at a collector current beyond those at which it is given, and what to say."""
+    if bench.gain_given is None:
+        return ()
+    least, most = bench.gain_given
+    given = write(least, "A", 3) if least == most else f"{write(least, 'A', 3)} .. {write(most, 'A', 3)}"
+    far = np.asarray((current < least * (1.0 - CLOSE)) | (current > most * (1.0 + CLOSE)))
+    return ((far, f"h_FE of {part.ref} extrapolated, given at {given}"),)
 
 
 def base_drive(view: View, stage: Stage, part: Part, at: Anchor) -> BaseDrive | None:

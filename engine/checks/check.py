@@ -24,6 +24,7 @@ class Judged:
 
     ``each`` are margins of which ``margin`` is the smallest: the corners look for the worst of every one of them.
     ``outcomes`` are words for lanes where something else happened than the number says; the first that fits counts.
+    ``extrapolated`` says in which lanes a figure was used beyond where it is given.
     """
 
     margin: Floats
@@ -34,10 +35,15 @@ class Judged:
     outcomes: tuple[tuple[Mask, str], ...] = ()
     hand: Floats | None = None
     each: tuple[Floats, ...] = ()
+    extrapolated: tuple[tuple[Mask, str], ...] = ()
 
     def outcome(self, lane: int) -> str | None:
         """The words for one lane."""
         return next((words for mask, words in self.outcomes if mask[lane]), None)
+
+    def beyond(self, lane: int) -> str | None:
+        """What is extrapolated in one lane, in words."""
+        return "; ".join(words for mask, words in self.extrapolated if mask[lane]) or None
 
 
 def ratio(

@@ -6,6 +6,7 @@ The inrush is taken from the load's data and not from the simulation, in which t
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -15,7 +16,7 @@ from ..parts import kinds
 from ..primitives.builder import Bench
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
-from .base_overdrive import SATURATED, base_drive
+from .base_overdrive import SATURATED, base_drive, gain_beyond
 from .check import Ask, Check, Judged, ratio, unknown
 from .peak_collector_emitter import MOSFETS
 from .seen import Seen
@@ -81,7 +82,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         if driving is not None:
             by_hand = np.minimum(allowed, gain * driving.current(seen, sequence, wanted))
             hand = 1.0 - wanted / np.where(by_hand > 0.0, by_hand, np.nan)
-        return ratio(wanted, carried, words, hand)
+        return replace(ratio(wanted, carried, words, hand), extrapolated=gain_beyond(part, bench, wanted))
 
     rows = (control, across, drop, peak, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)

@@ -15,6 +15,7 @@ SOURCE = "memory"
 
 _SMALL_TRANSISTOR: Figures = {
     "gain": ("200", "300", "450", "2 mA"),
+    "gain_current": "2 mA",
     "v_be": ("0.58 V", "0.64 V", "0.70 V", "2 mA"),
     "v_be_current": "2 mA",
     "v_ce_sat": ("0.1 V", "0.1 V", "0.25 V", "10 mA / 0.5 mA"),
@@ -38,7 +39,8 @@ _SMALL_TRANSISTOR: Figures = {
 }
 _DRIVER_TRANSISTOR: Figures = {
     **_SMALL_TRANSISTOR,
-    "gain": ("60", "160", "400", "100 mA .. 300 mA"),
+    "gain": ("100", "200", "400", "100 mA"),
+    "gain_current": "100 mA",
     "v_be": ("0.60 V", "0.66 V", "0.72 V", "10 mA"),
     "v_be_current": "10 mA",
     "v_ce_sat": ("0.3 V", "0.3 V", "0.7 V", "500 mA / 50 mA"),
@@ -53,6 +55,7 @@ _DRIVER_TRANSISTOR: Figures = {
 _TWO_AMPERE_TRANSISTOR: Figures = {
     **_DRIVER_TRANSISTOR,
     "gain": ("40", "100", "250", "1 A"),
+    "gain_current": "1 A",
     "v_ce_sat": ("0.2 V", "0.2 V", "0.5 V", "1 A / 0.1 A"),
     "saturation_current_at": "1 A",
     "v_ceo": "60 V",
@@ -66,6 +69,7 @@ _TWO_AMPERE_TRANSISTOR: Figures = {
 _DARLINGTON: Figures = {
     **_DRIVER_TRANSISTOR,
     "gain": ("750", "2000", "10000", "3 A"),
+    "gain_current": "3 A",
     "v_ceo": "80 V",
     "i_c_max": "8 A",
     "first_base_resistor": "8 kohm",
@@ -126,6 +130,13 @@ _SIGNAL_DIODE: Figures = {
     "v_rrm": "75 V",
     "i_f_max": "150 mA",
 }
+
+Points = tuple[tuple[str, str], ...]
+POINTS: Mapping[str, Mapping[str, Points]] = {
+    "0.5 A driver npn": {"gain_points": (("300 mA", "60"),)},
+    "0.5 A driver pnp": {"gain_points": (("300 mA", "60"),)},
+}
+"""What a class gives at several points, by the names of classes."""
 
 CLASSES: Mapping[str, Mapping[str, Figures]] = {
     "npn": {"small npn": _SMALL_TRANSISTOR, "0.5 A driver npn": _DRIVER_TRANSISTOR},

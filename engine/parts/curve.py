@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 from ..design.datum import Datum, number
 from ..errors import CircuitError, QuantityError
+from .figures import class_points
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -16,8 +17,10 @@ Curve = Sequence[tuple[float, float]]
 
 
 def points_of(part: Part, key: str, units: tuple[str, str], example: str) -> Curve | None:
-    """A list of pairs as a part gives it, rising in its first number; None where it gives none."""
+    """A list of pairs as a part or its class gives it, rising in its first number; None where neither does."""
     entry = part.entry(key)
+    if entry is None:
+        entry = class_points(part, key)
     if not isinstance(entry, tuple):
         return None
     rows: list[tuple[Any, Any]] = []

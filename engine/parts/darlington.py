@@ -10,7 +10,7 @@ import numpy as np
 from ..primitives.builder import Bench, inverse
 from .figures import figure
 from .kind import Entry, Kind
-from .transistor import DATA, FIELDS, LAW, PINS, add_transistor, note_laws
+from .transistor import DATA, FIELDS, LAW, PINS, add_transistor, gain_given, note_laws
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -71,6 +71,7 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
         bench.currents["emitter"] = (first.collector + second.collector + leak).scaled(-1.0)
         bench.power = power
         _note_laws(bench, first.laws, second.laws)
+        bench.gain_given = gain_given(part)
 
     return expand
 

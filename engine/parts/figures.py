@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from ..errors import CircuitError
 from ..quantity import read
-from .classes import CLASSES, Figures
+from .classes import CLASSES, POINTS, Figures, Points
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -38,6 +38,11 @@ def class_figures(part: Part) -> Figures:
         offered = ", ".join(f"'{k}'" for k in known) or "none; give the figures under 'data'"
         raise CircuitError(f"part {part.ref}, class: '{name}' is no class of kind {part.kind}; write one of {offered}")
     return known[name]
+
+
+def class_points(part: Part, key: str) -> Points | None:
+    """The points that the class of a part gives under a name."""
+    return POINTS.get(str(part.entry("class")), {}).get(key)
 
 
 def figure(part: Part, key: str, unit: str) -> Figure | None:

@@ -15,8 +15,8 @@ from ..design.part import Part
 from ..errors import DesignError
 from ..primitives.builder import Builder
 from . import kinds
-from .classes import CLASSES, SOURCE, ClassFigure
-from .figures import class_figures
+from .classes import CLASSES, POINTS, SOURCE, ClassFigure
+from .figures import class_figures, class_points
 from .kind import TEXT
 from .suitability import unsuitable
 
@@ -33,10 +33,16 @@ def kept(part: Part) -> dict[str, Any]:
     data = {
         key: datum
         for key, datum in document.pop("data", {}).items()
-        if key not in of_class or datum != _datum(of_class[key])
+        if (key not in of_class or datum != _datum(of_class[key])) and not _copied(part, key, datum)
     }
     found = {key: value for key, value in document.items() if key not in OF_THE_PLACE}
     return found | ({"data": data} if data else {})
+
+
+def _copied(part: Part, key: str, datum: Any) -> bool:
+    """Whether points are those of the class."""
+    points = class_points(part, key)
+    return points is not None and datum == [list(point) for point in points]
 
 
 def _class_unknown(part: Part) -> bool:
@@ -92,6 +98,9 @@ def resolved(document: Mapping[str, Any]) -> dict[str, Any]:
             fields[key] = given if isinstance(given, str) else given[1]
         else:
             data[key] = _datum(given)
+    for key, points in POINTS.get(str(part.entry("class")), {}).items():
+        if key in known and part.entry(key) is None:
+            data[key] = [list(point) for point in points]
     return fields | ({"data": data} if data else {})
 
 

@@ -36,6 +36,8 @@ RECOMBINATION = 2.0  # ideality of the base current at the low end (Sah, Noyce, 
 BREAKDOWN_SLOPE = 0.05  # V per e-fold of the emitter junction's breakdown, from memory
 BREAKDOWN_CURRENT = 10e-6  # A at the breakdown voltage
 
+GAIN_EXAMPLE = '[["0.1 mA", "100"], ["100 mA", "80"]]'
+
 
 def reverse_gain_from(drop: float, forced: float, forward: float) -> float:
     """Reverse gain from one saturation point: V_CE = V_T ln[(1 + (b + 1)/B_R) / (1 - b/B_F)] (Ebers, Moll 1954).
@@ -224,8 +226,7 @@ def _from_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
 
 def _fall_off(part: Part) -> GainLaw | None:
     """How the gain falls off at both ends, where the part gives it at several currents."""
-    example = '[["0.1 mA", "100"], ["100 mA", "80"]]'
-    points = points_of(part, "gain_points", ("A", ""), example)
+    points = points_of(part, "gain_points", ("A", ""), GAIN_EXAMPLE)
     if points is None:
         return None
     at = needed(part, "gain_current", "A", "2 mA").typical
@@ -233,7 +234,7 @@ def _fall_off(part: Part) -> GainLaw | None:
     try:
         return gain_law([*(point for point in points if point[0] != at), (at, least)], at)
     except CircuitError as refusal:
-        raise CircuitError(f'part {part.ref}, gain_points: {refusal}; write "gain_points": {example}') from refusal
+        raise CircuitError(f'part {part.ref}, gain_points: {refusal}; write "gain_points": {GAIN_EXAMPLE}') from refusal
 
 
 def _own_resistances(part: Part) -> dict[str, float]:
@@ -283,6 +284,16 @@ def _saturation(part: Part, share: float) -> tuple[float, float] | None:
         )
     except CircuitError as refusal:
         raise CircuitError(f"part {part.ref}, v_ce_sat_high: {refusal}") from refusal
+
+
+def gain_given(part: Part) -> tuple[float, float] | None:
+    """The least and the largest collector current in A at which the gain is given; None where none is written."""
+    at = figure(part, "gain_current", "A")
+    if part.law or at is None:
+        return None
+    points = points_of(part, "gain_points", ("A", ""), GAIN_EXAMPLE) if "darlington" not in part.kind else None
+    currents = [at.typical, *(current for current, _ in points or ())]
+    return min(currents), max(currents)
 
 
 @dataclass(frozen=True, slots=True)
@@ -365,6 +376,7 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
         bench.currents["emitter"] = (placed.collector + placed.base).scaled(-1.0)
         bench.power = placed.power
         note_laws(bench, placed.laws)
+        bench.gain_given = gain_given(part)
 
     return expand
 
@@ -372,6 +384,7 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
 FIELDS = {"class": Entry(TEXT, about="generic class")}
 DATA = {
     "gain": Entry("", about="current gain: min at the working current, typical, max"),
+    "gain_current": Entry("A", about="collector current of the gain figure, needed beside gain_points"),
     "v_be": Entry("V", about="base-emitter voltage at v_be_current"),
     "v_be_current": Entry("A", about="collector current of the v_be figure"),
     "v_be_high": Entry("V", about="a second point, at v_be_high_current: gives the base resistance"),
@@ -401,7 +414,6 @@ DATA = {
     "early_voltage": Entry("V", about="Early voltage"),
 }
 GAIN_DATA = {
-    "gain_current": Entry("A", about="collector current of the gain figure, needed beside gain_points"),
     "gain_points": Entry(TEXT, about="guaranteed gain at other collector currents, [current, gain] each"),
 }
 LAW = {

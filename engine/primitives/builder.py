@@ -166,10 +166,10 @@ class Bench:
 
     ``currents`` by pin name; ``armature``: the state of what a coil moves; ``rise``: how far above the ambient it is,
     in K; ``on``: the nets and the level in volts at which a load counts as on; ``draw``: current of a load at a
-    voltage, ``inrush``: what it draws there cold; of a transistor ``gain`` as its figure states
-    it, ``gain_at`` and ``base_voltage`` at a collector current in A, and ``leakage`` in A; of a
-    field-effect transistor ``lets_through``: the drain current in A that a gate voltage carries at most; of a capacitor
-    ``leak_conductance`` in S.
+    voltage, ``inrush``: what it draws there cold; of a transistor ``gain`` as its figure states it, ``gain_at`` and
+    ``base_voltage`` at a collector current in A, ``gain_given`` between which currents it is given, and ``leakage`` in
+    A; of a field-effect transistor ``lets_through``: the drain current in A that a gate voltage carries at most; of a
+    capacitor ``leak_conductance`` in S.
     """
 
     currents: dict[str, Signal] = field(default_factory=dict)
@@ -181,6 +181,7 @@ class Bench:
     inrush: Callable[[Lanes, Floats], Floats] | None = None
     gain: Law | None = None
     gain_at: Callable[[Lanes, Floats], Floats] | None = None
+    gain_given: tuple[float, float] | None = None
     base_voltage: Callable[[Lanes, Floats | float], Floats] | None = None
     leakage: Law | None = None
     lets_through: Callable[[Lanes, Floats], Floats] | None = None

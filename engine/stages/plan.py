@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from ..design.conditions import Levels
 from ..design.part import Part
 from ..errors import DesignError, QuantityError
+from ..parts.classes import POINTS
 from ..parts.figures import Figure, needed
 from ..parts.physics import gain_factor
 from ..preferred import nearest, next_down, next_up, series_for
@@ -121,7 +122,9 @@ class Plan:
 
     def gain(self, kind: str = "npn", current: float = 0.0) -> float:
         """The least current gain of the generic class that :meth:`transistor` takes, at the coldest ambient."""
-        least = class_figure(kind, self.transistor_class(kind, current), "gain", "").low
+        of_class = self.transistor_class(kind, current)
+        points = POINTS.get(of_class, {}).get("gain_points", ())
+        least = min([class_figure(kind, of_class, "gain", "").low, *(float(gain) for _, gain in points)])
         return least * float(gain_factor(self.ambient.min))
 
     def transistor_class(self, kind: str, current: float) -> str:

@@ -276,6 +276,7 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         setting=corner.setting.kept(),
         by_hand=ask.check.by_hand,
         accuracy=ask.check.accuracy,
+        extrapolated=None if ask.missing else judged.beyond(lane),
     )
 
 

@@ -152,3 +152,13 @@ def test_the_current_of_the_gain_figure_is_needed() -> None:
     data = {key: value for key, value in DATA.items() if key != "gain_current"}
     with pytest.raises(CircuitError, match="Q1, gain_current: missing"):
         active(1e-3, data=data).circuit  # noqa: B018
+
+
+@pytest.mark.parametrize("kind", ["npn", "pnp"])
+@pytest.mark.parametrize(("amperes", "least"), [(0.1, 100.0), (0.3, 60.0)])
+def test_a_class_goes_through_its_points(kind: str, amperes: float, least: float) -> None:
+    # "h_FE >= 100 at 100 mA, >= 60 at 300 mA" of a 0.5 A driver (from memory), met by the weakest one.
+    case = active(amperes, kind, **{"class": f"0.5 A driver {kind}"})
+    collector, base = currents(case, changes={("Q1", "gain"): 100.0})
+    assert collector[0] / base[0] == pytest.approx(least, rel=0.02)
+    assert case.circuit.benches["Q1"].gain_given == (0.1, 0.3)

@@ -116,7 +116,7 @@ def _cells(check: CheckResult, spread: bool) -> tuple[str, ...]:
     """One row: figures in percent, then in words what is checked and what happens where it is worst."""
     what = " ".join(filter(None, (f"{check.title},", check.stage, check.part)))
     off = f"by hand {percent(check.hand)} %, which disagrees" if check.disagrees else None
-    words = dict.fromkeys(filter(None, (check.outcome, check.reason, off)))
+    words = dict.fromkeys(filter(None, (check.outcome, check.reason, off, check.extrapolated)))
     where = f"worst at {check.corner}" if check.corner else "worst"
     passing = (f"{check.spread.passing * 100:.1f}",) if check.spread else ("",)
     return (

@@ -14,8 +14,8 @@ from scipy import constants
 from stagebook.engine.design.document import Design
 from stagebook.engine.results import Verdict
 
-from ..circuits import Json, resistor, transistor
-from .sheets import design, exact, margin, sounder
+from ..circuits import Json, resistor, transistor, two
+from .sheets import CONNECT, design, exact, margin, sounder
 
 VT = constants.k * 298.15 / constants.e  # at 25 C, where laws and gains are given
 ROLES = {"driver": "Q1", "base_resistor": "R1", "load": "LS1", "base_emitter_resistor": "R2"}
@@ -103,3 +103,19 @@ def test_a_requirement_moves_the_required_margin() -> None:
 def test_a_load_without_a_level_is_unknown() -> None:
     found = margin(driver("1k", least=None), "base_overdrive", "Q1")
     assert (found.margin, found.verdict, found.reason) == (None, Verdict.UNKNOWN, "missing: operating_minimum of LS1")
+
+
+@pytest.mark.parametrize(("current", "said"), [("20 mA", True), ("150 mA", False), ("450 mA", True)])
+def test_a_gain_beyond_its_points_is_marked(current: str, said: bool) -> None:
+    # The class gives h_FE at 100 mA and 300 mA (from memory); 6 V, S1 drives the base through 100 ohm.
+    of = design(
+        two("contact", "S1", "supply", "call"),
+        exact(resistor("R1", "call", "base", "100R")),
+        transistor("Q1", "low", "base", "0V", **{"class": "0.5 A driver npn"}),
+        sounder("LS1", "supply", "low", current, "3 V", rated="6 V"),
+        supply="6 V",
+        events=[CONNECT, {"at": "0.1 s", "event": "close", "part": "S1"}],
+        roles={"driver": "Q1", "load": "LS1"},
+    )
+    found = margin(of, "base_overdrive", "Q1")
+    assert found.extrapolated == ("h_FE of Q1 extrapolated, given at 100 mA .. 300 mA" if said else None)

@@ -18,7 +18,7 @@ from .units import CONDITIONS, changed, latch, load, timer
 
 ROUNDING = 1e-3  # of a margin: what the solver's tolerance moves an extreme by
 VERTICES, TRIALS = 300, 60
-UNITS = {"timer": timer(), "starved driver": changed(timer(), R7="3k3"), "latch": latch()}
+UNITS = {"timer": timer(), "starved driver": changed(timer(), R7="5k6"), "latch": latch()}
 
 
 @pytest.fixture(scope="module", params=UNITS)
