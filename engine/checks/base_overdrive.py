@@ -10,6 +10,7 @@ import numpy as np
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
 from ..primitives.builder import Bench
+from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, voltage
 from ..quantity import write
 from .check import Ask, Check, Judged, Mask, ratio, unknown
@@ -51,7 +52,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         volts = seen.value(across, sequence) + np.maximum(0.0, fallen - SATURATED)
         assert driven.draw is not None
         wanted = driven.draw(seen.lanes, volts)
-        gain = np.ones(seen.lanes.count) if bench.gain_at is None else bench.gain_at(seen.lanes, wanted)
+        gain = guaranteed_gain(bench, seen.lanes, wanted)
         never = ~seen.seen(base, sequence)
         hand = None
         if driving is not None:
@@ -81,6 +82,16 @@ class BaseDrive:
         v_be = self.bench.base_voltage(seen.lanes, collector)
         current = (seen.value(self.row, sequence) - v_be) / seen.lanes[self.resistor.ref, "value"]
         return current if self.leak is None else current - v_be / seen.lanes[self.leak.ref, "value"]
+
+
+def guaranteed_gain(bench: Bench, lanes: Lanes, current: Floats) -> Floats:
+    """The gain at a collector current in A, beyond where it is given no larger than at the nearest current given."""
+    if bench.gain_at is None:
+        return np.ones(lanes.count)
+    found = bench.gain_at(lanes, current)
+    if bench.gain_given is None:
+        return found
+    return np.minimum(found, bench.gain_at(lanes, np.clip(current, *bench.gain_given)))
 
 
 def gain_beyond(part: Part, bench: Bench, current: Floats) -> tuple[tuple[Mask, str], ...]:

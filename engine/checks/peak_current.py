@@ -16,7 +16,7 @@ from ..parts import kinds
 from ..primitives.builder import Bench
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
-from .base_overdrive import SATURATED, base_drive, gain_beyond
+from .base_overdrive import SATURATED, base_drive, gain_beyond, guaranteed_gain
 from .check import Ask, Check, Judged, ratio, unknown
 from .peak_collector_emitter import MOSFETS
 from .seen import Seen
@@ -76,7 +76,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         words = [(never, check.words["never"].format(load=load.ref))]
         if bench.lets_through is not None:
             return ratio(wanted, np.minimum(allowed, bench.lets_through(seen.lanes, given)), words)
-        gain = np.ones(seen.lanes.count) if bench.gain_at is None else bench.gain_at(seen.lanes, wanted)
+        gain = guaranteed_gain(bench, seen.lanes, wanted)
         carried = np.minimum(allowed, gain * np.abs(given))
         hand = None
         if driving is not None:

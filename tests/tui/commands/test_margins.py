@@ -74,10 +74,10 @@ def test_the_duration_is_that_of_an_rc_timer(stagebook: Run, bell: Path) -> None
 
 def test_base_overdrive_is_that_of_the_hand_formula(stagebook: Run, written: Path) -> None:
     """1 - I_C/h_FE over the base current net of the base-emitter resistor: common practice, no source. The class
-    gives h_FE from 60 and V_BE up to 0.72 V at 10 mA; 0.1 allows for temperature and the contact."""
+    gives h_FE from 100 and V_BE up to 0.72 V at 10 mA; 0.1 allows for temperature and the contact."""
     base_current = (4.0 - 0.72) / 1.05e3 - 0.72 / 9.5e3
     check = by_id(computed(stagebook, written, "--lanes", 0))["base_overdrive:driver:Q1"]
-    assert check["margin"] == pytest.approx(1 - 40e-3 / 60 / base_current, abs=0.1)
+    assert check["margin"] == pytest.approx(1 - 40e-3 / 100 / base_current, abs=0.1)
     assert check["conditions"]["supply"] == 4.0
     assert check["conditions"]["ambient"] == 0.0
     assert "low supply" in check["corner"]
@@ -117,7 +117,7 @@ def test_the_newest_revision_an_older_one_and_the_draft(
     [
         ({"value": "1k"}, "PASS", 0),
         ({"value": "10k"}, "FAIL", 1),
-        ({"value": "3k3"}, "THIN", 0),
+        ({"value": "4k7"}, "THIN", 0),
         ({"rating": None}, "UNKNOWN", 1),
     ],
 )
@@ -192,7 +192,7 @@ def test_one_margin_explained_as_json(stagebook: Run, written: Path) -> None:
     assert check["id"] == why["id"] == "base_overdrive:driver:Q1"
     assert why["margin"] == pytest.approx(check["margin"], abs=1e-9)
     used = {each["what"]: each for each in why["used"]}
-    assert used["Q1 gain"]["value"] == 60.0
+    assert used["Q1 gain"]["value"] == 100.0
     assert "from memory" in used["Q1 gain"]["source"]
     assert used["LS1 current"]["source"] == "datasheet"
     base = next(each for each in why["observed"] if each["what"].startswith("current into Q1 base"))
