@@ -20,6 +20,7 @@ from ..primitives.builder import (
     Builder,
     Guard,
     Law,
+    Operated,
     channel_array,
     constant,
     junction_array,
@@ -39,12 +40,10 @@ SUPPLY_SWITCH = "supply"
 SUPPLY_RISE = "supply rise"
 RISE_NET = "supply/rise"
 LEAST_SOURCE_RESISTANCE = 1e-3  # ohm, where a source resistance of 0R is only one end of its range
-# The junction through which a charged rail is met again: as steep as the tolerance of the voltage before it allows,
-# some 0.1 V at 6 V and 0.1 A until the rise is over.
-RISE_SATURATION = 1e-10  # A
-RISE_SLOPE = 8e-4  # of the supply voltage, an e-fold
-LEAST_RISING = 1.0  # V
-RISE_LEAKAGE = 1e-7  # S, ties the net behind it where it blocks
+# What joins a rising supply to a charged rail once it has come to the rail's voltage, until the rise is over.
+RISE_GUARD = "supply meets the rail"
+RISE_CLOSED = 1e4  # S, before the source resistance
+MET, PARTED = 1e-3, -1e-3  # V of the source above the rail
 
 
 @dataclass(frozen=True)
@@ -192,16 +191,16 @@ def _add_conditions(design: Design, builder: Builder) -> None:
 
     builder.switch(SUPPLY_SWITCH, SUPPLY_SOURCE, SUPPLY_NET, closed, reading)
     if _meets_charge(design):
-        # A supply that rises onto a charged rail must not drain it: a steep junction lets current flow one way.
-        builder.junction(
-            SUPPLY_SOURCE,
-            RISE_NET,
-            {
-                "saturation": lambda lanes: RISE_SATURATION,
-                "slope": lambda lanes: RISE_SLOPE * np.maximum(lanes[SUPPLY], LEAST_RISING),
-            },
+        # A supply that rises onto a charged rail must not drain it: it is joined only while it stands above it.
+        joint = builder.conductance(SUPPLY_SOURCE, RISE_NET, constant(1e-12))
+        none = constant(0.0)
+        watched = SUPPLY_SOURCE, SUPPLY_NET
+        builder.hidden |= {RISE_GUARD, RISE_NET}
+        builder.guards[RISE_GUARD] = Guard(
+            RISE_GUARD, watched, None, constant(MET), constant(PARTED), none, none, either_sign=False
         )
-        builder.conductance(SUPPLY_SOURCE, RISE_NET, constant(RISE_LEAKAGE))
+        ends = constant(RISE_CLOSED), constant(1e-12)
+        builder.operated.append(Operated(joint.index, RISE_GUARD, True, *ends, none))
         builder.switch(SUPPLY_RISE, RISE_NET, SUPPLY_NET, constant(1e-12), reading)
 
 

@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from ..kernel import layout
 from ..kernel.layout import Floats, Program
 from ..kernel.linearised import linearised
 from .circuit import Circuit
@@ -27,10 +28,27 @@ def matrices(circuit: Circuit, parameters: Floats, states: Floats) -> tuple[Floa
     """G in siemens and C in farad (rows of branches: volts), both (states, n_free, n_free).
 
     ``parameters`` (states, parameters) are rows of the lane table with the switches where they stand, ``states``
-    (states, n_all).
+    (states, n_all); contacts stand where the states of their guards say.
     """
-    made = linearised(circuit.topology, parameters, len(circuit.source_names), states)
+    moved = _as_guards_say(circuit, parameters, states)
+    made = linearised(circuit.topology, moved, len(circuit.source_names), states)
     return made.conductance, made.capacitance
+
+
+def _as_guards_say(circuit: Circuit, parameters: Floats, states: Floats) -> Floats:
+    """The parameters with all contacts where the guards in the states have them."""
+    topology = circuit.topology
+    contacts = topology.element[topology.group[layout.CONTACT] : topology.group[layout.FAMILIES]].astype(np.int64)
+    if not len(contacts):
+        return parameters
+    found = parameters.copy()
+    guards = topology.element[topology.group[layout.GUARD] : topology.group[layout.CONTACT]].astype(np.int64)
+    for contact in contacts:
+        pulled = states[:, guards[contact[layout.E_A], layout.E_C]] > 0.5
+        own = contact[layout.E_PARAMETER]
+        closed, opened = (parameters[:, own + int(end)] for end in (layout.CT_CLOSED, layout.CT_OPEN))
+        found[:, contact[layout.E_SLOT]] = np.where(pulled == bool(contact[layout.E_B]), closed, opened)
+    return found
 
 
 def parameters_at(circuit: Circuit, table: Floats, program: Program, lane: int, times: Floats) -> Floats:

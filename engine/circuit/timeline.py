@@ -143,7 +143,8 @@ class Timeline:
     def connect_supply(self, at: Number, rise: Number) -> None:
         """The supply is connected at ``at`` and rises evenly within ``rise``.
 
-        A rail that was charged before keeps its charge: until the rise is over current flows only into it.
+        A rail that was charged before keeps its charge: until the rise is over it is joined only once the supply has
+        come to its voltage.
         """
         joined = at
         if SUPPLY_RISE in self.switches and self._charged and self._standing is None:

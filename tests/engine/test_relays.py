@@ -160,3 +160,20 @@ def test_lanes_move_each_at_its_own_time_and_the_same_alone() -> None:
         one = lanes.take([lane])
         _, alone = program_of(circuit.circuit, one, "alarm")
         assert run(circuit.circuit, one, alone, [closes]).value(closes)[0] == seen.value(closes)[lane]
+
+
+@pytest.mark.parametrize(("pulled", "siemens"), [(0.0, 1e-9), (1.0, 10.0)])
+def test_a_linearised_circuit_has_its_contacts_where_the_armature_is(pulled: float, siemens: float) -> None:
+    # 0.1 ohm closed, 1 Gohm open (customary here, from memory), and 1 kohm to 0V.
+    case = setup(
+        two("coil", "K1", "supply", "0V", **{"class": "relay 12 V"}),
+        two("contact", "S1", "supply", "out", operated_by="K1"),
+        resistor("R1", "out", "0V", "1k"),
+        supply="12 V",
+        ends=1.0,
+    )
+    state = np.zeros((1, int(case.circuit.topology.size[2])))
+    state[0, case.circuit.index("K1 armature")] = pulled
+    conductance, _ = matrices(case.circuit, case.circuit.table(case.lanes()), state)
+    out = case.circuit.index("out")
+    assert conductance[0, out, out] == pytest.approx(1e-3 + siemens, rel=1e-9)
