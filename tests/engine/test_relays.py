@@ -7,6 +7,7 @@ import math
 import numpy as np
 import pytest
 
+from stagebook.engine.circuit.linearised import matrices
 from stagebook.engine.primitives.signals import Anchor, crossing, level, maximum, voltage
 from stagebook.engine.run import run
 from stagebook.engine.studies.sequences import program_of
