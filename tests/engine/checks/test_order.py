@@ -12,7 +12,7 @@ from stagebook.engine.errors import CircuitError
 from stagebook.engine.results import Verdict
 from stagebook.engine.studies.margins import study
 
-from ..circuits import Json, capacitor, resistor, two
+from ..circuits import Json, capacitor, mosfet, resistor, two
 from .sheets import CONNECT, design, exact, margin
 
 
@@ -80,6 +80,29 @@ def test_by_hand_where_the_timers_are_named() -> None:
     assert found.margin == pytest.approx(0.5, abs=2e-3)
     assert found.hand == pytest.approx(0.5, abs=5e-3)
     assert not found.disagrees
+
+
+@pytest.mark.parametrize("tolerance", ["0 %", "10 %"])
+def test_a_first_event_that_keeps_the_second_from_coming(tolerance: str) -> None:
+    # Q1 holds t2 down from 5 V at t1 on, at 10k 100u ln(9/4) = 0.811 s, long before t2 would be at 6 V after 2.197 s.
+    # C1 may be 2.197/0.811 = 2.71 times as large; with both resistors 10 % wrong 0.9/1.1 of that. Known within 3 %.
+    document = pair(tolerance=tolerance, vary="C1").dump()
+    law = {"threshold": "5 V", "transconductance": "1 A/V2"}
+    document["stages"][0]["parts"].append(mosfet("Q1", "t2", "t1", "0V", law=law))
+    found = margin(Design.load(document), "order", "C1")
+    worst = 1.0 if tolerance == "0 %" else 1.1 / 0.9
+    assert found.margin == pytest.approx(1.0 - worst * math.log(9 / 4) / (2 * math.log(3.0)), abs=0.02)
+    assert found.verdict is Verdict.PASS
+    if tolerance != "0 %":
+        assert set(found.corner.split(", ")) == {"R1 high", "R2 low"}
+    # Without the trial there is nothing to compare with.
+    del document["requirements"][0]["vary"]
+    assert margin(Design.load(document), "order", "C1").outcome == "'t2 above 6 V' never came"
+
+
+def test_a_part_to_vary_that_is_none_is_named() -> None:
+    with pytest.raises(CircuitError, match="field vary: 'S1' is no part with a value"):
+        margin(pair(vary="S1"), "order", "C1")
 
 
 @pytest.mark.parametrize(
