@@ -31,7 +31,7 @@ def versions(session: Session, name: str) -> list[MadePart]:
     rows = session.exec(_named(wanted)).all()
     if not rows:
         near = get_close_matches(name, session.exec(select(StoredMadePart.name)).all(), n=1)
-        advice = f'did you mean "{near[0]}"?' if near else "see the names with `stagebook drawer`."
+        advice = f"did you mean '{near[0]}'?" if near else "see the names with `stagebook drawer`."
         raise PartMissing(f"There is no part {name[:70]!r} in the drawer: {advice}")
     return [_shown(row) for row in rows]
 
@@ -46,7 +46,7 @@ def keep(session: Session, name: str, document: Mapping[str, Any], made: str) ->
     text, kind = canonical(dict(document)), str(document["kind"])
     before = session.exec(_named(name)).all()
     if before and before[-1].kind != kind:
-        raise PartRefused(f'"{name}" is a {before[-1].kind} and no {kind}: choose another name.')
+        raise PartRefused(f"'{name}' is a {before[-1].kind} and no {kind}: choose another name.")
     if before and before[-1].document == text:
         return _shown(before[-1])
     version = before[-1].version + 1 if before else 1

@@ -89,7 +89,7 @@ def undo(session: Session, draft: StoredDraft, name: str) -> None:
     """Move the draft to the state before its last edit."""
     edit = last(session, draft)
     if edit is None:
-        raise NothingToUndo(f'There is nothing to undo in "{name}": this is where it began.')
+        raise NothingToUndo(f"There is nothing to undo in '{name}': this is where it began.")
     draft.document = moved(draft.document, edit.inverse, name)
     draft.head_id = edit.parent_id
 
@@ -98,7 +98,7 @@ def redo(session: Session, draft: StoredDraft, name: str) -> None:
     """Move the draft to the state after the most recently used edit that follows."""
     edit = following(session, draft)
     if edit is None:
-        raise NothingToRedo(f'There is nothing to redo in "{name}": no edit follows this state.')
+        raise NothingToRedo(f"There is nothing to redo in '{name}': no edit follows this state.")
     draft.document = moved(draft.document, edit.forward, name)
     draft.head_id = edit.id
 
@@ -117,7 +117,7 @@ def moved(document: str, patch: str, name: str) -> str:
         return canonical(patched(json.loads(document), operations))
     except ValueError as error:
         raise StoreUnreadable(
-            f'The edits of "{name}" are damaged ({error}): take a saved revision as the draft, or restore a backup.'
+            f"The edits of '{name}' are damaged ({error}): take a saved revision as the draft, or restore a backup."
         ) from error
 
 

@@ -107,10 +107,10 @@ def _of_design(session: Session, design: StoredDesign) -> Iterator[str]:
     by_id = {row.id: row for row in rows}
     for number, row in enumerate(rows, start=1):
         if row.number != number:
-            yield f'"{design.name}": r{number} is missing before r{row.number}.'
+            yield f"'{design.name}': r{number} is missing before r{row.number}."
             break
     for row in rows:
-        where = f'"{design.name}" r{row.number}'
+        where = f"'{design.name}' r{row.number}"
         if sha256(row.document.encode()).hexdigest() != row.content:
             yield f"{where}: the document is not the one that was saved."
         if row.parent_id is not None and row.parent_id not in by_id:
@@ -148,13 +148,13 @@ def draft_problems(session: Session, design: StoredDesign, rows: Sequence[Stored
     """What is wrong with a design's draft and the tree of its edits, a line each; ``rows`` are its revisions."""
     draft = session.get(StoredDraft, design.id)
     if draft is None:
-        yield f'"{design.name}": the draft is gone.'
+        yield f"'{design.name}': the draft is gone."
         return
     try:
         Design.load(draft.document)
         yield from _of_edits(session, design, draft, rows)
     except (EngineError, StorageError, ValueError) as error:
-        yield f'"{design.name}": the draft cannot be read: {error}'
+        yield f"'{design.name}': the draft cannot be read: {error}"
 
 
 def _of_edits(
@@ -178,14 +178,14 @@ def _of_edits(
     while states:
         at, document = states.pop()
         if at == draft.head_id and document != head:
-            yield f'"{design.name}": the edits do not lead to the draft.'
+            yield f"'{design.name}': the edits do not lead to the draft."
         for row in saved.get(at, []):
             if Design.load(row.document) != Design.load(document):
-                yield f'"{design.name}": the edits do not lead to r{row.number}.'
+                yield f"'{design.name}': the edits do not lead to r{row.number}."
         for edit in after.get(at, []):
             states.append((edit.id, moved(document, edit.forward, design.name)))
             if moved(states[-1][1], edit.inverse, design.name) != document:
-                yield f'"{design.name}": the edit "{edit.label}" of {edit.made} is not the one that was made.'
+                yield f"'{design.name}': the edit '{edit.label}' of {edit.made} is not the one that was made."
 
 
 def _advice(store: Store) -> Iterator[str]:
@@ -210,6 +210,6 @@ def _of_clock(session: Session) -> Iterator[str]:
         if name == other and later < earlier and name not in told:
             told.add(name)
             yield (
-                f'"{name}" r{number} was saved on {later[:10]} by the clock, before r{before} on {earlier[:10]}: '
+                f"'{name}' r{number} was saved on {later[:10]} by the clock, before r{before} on {earlier[:10]}: "
                 "the clock of this machine was or is wrong; set it. Nothing is lost by that."
             )

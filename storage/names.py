@@ -22,14 +22,14 @@ def checked_name(text: str) -> str:
     if any(unicodedata.category(character).startswith("C") for character in name):
         raise NameRefused(f"The name {text!a} holds a control character: {rule}.")
     if name.casefold().endswith(".json"):
-        raise NameRefused(f'The name "{name}" ends in .json, which means a file: leave the ending away.')
+        raise NameRefused(f"The name '{name}' ends in .json, which means a file: leave the ending away.")
     if "/" in name:
-        raise NameRefused(f'The name "{name}" holds a /, which means a file: {rule}.')
+        raise NameRefused(f"The name '{name}' holds a /, which means a file: {rule}.")
     if len(name) > LONGEST:
-        raise NameRefused(f'The name "{name[:20]}..." has {len(name)} characters: {rule}.')
+        raise NameRefused(f"The name '{name[:20]}...' has {len(name)} characters: {rule}.")
     if name != name.strip():
-        raise NameRefused(f'The name "{name}" begins or ends with a space: leave it away.')
+        raise NameRefused(f"The name '{name}' begins or ends with a space: leave it away.")
     for character in name:
         if not (character.isalpha() or character.isdecimal() or character in "-_ "):
-            raise NameRefused(f'The name "{name}" holds "{character}": {rule}.')
+            raise NameRefused(f"The name '{name}' holds '{character}': {rule}.")
     return name

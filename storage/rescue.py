@@ -205,7 +205,7 @@ def _written(path: Path, rows: Rows) -> list[str]:
     with closing(sqlite3.connect(path, isolation_level=None)) as raw:
         raw.execute("BEGIN IMMEDIATE")
         for design in torn:
-            lost.append(f'"{design["name"]}": the edits were torn; they were made anew from what was saved.')
+            lost.append(f"'{design['name']}': the edits were torn; they were made anew from what was saved.")
             _edits_anew(raw, design["id"])
         for sql in triggers().values():
             raw.execute(sql)
@@ -232,7 +232,7 @@ def _mended(rows: Rows) -> list[str]:
     states = {row["design_id"] for row in (*kept, *rows["draft"])}
     names = {row["id"]: row["name"] for row in rows["design"]}
     for name in (names[design] for design in names if design not in states):
-        lost.append(f'"{name}": neither its draft nor a revision can be read.')
+        lost.append(f"'{name}': neither its draft nor a revision can be read.")
     rows["design"] = [row for row in rows["design"] if row["id"] in states]
     for design in sorted(states - names.keys()):
         lost.append(f"The name of design {design} was lost: it is called rescued {design}.")

@@ -27,7 +27,7 @@ def save(
     document = Design.load(draft.document)
     if sheet.content != document.content:
         raise MarginsRefused(
-            f'The margins are not those of the draft of "{design.name}" as it stands: compute them again, then save.'
+            f"The margins are not those of the draft of '{design.name}' as it stands: compute them again, then save."
         )
     parent = None if draft.base_id is None else session.get(StoredRevision, draft.base_id)
     newest = session.exec(select(func.max(StoredRevision.number)).where(StoredRevision.design_id == design.id)).one()
@@ -78,7 +78,7 @@ def margin_rows(revision: int, sheet: MarginSheet) -> list[StoredMargin]:
 def add_entry(session: Session, revision: StoredRevision, field: str, text: str, now: str) -> None:
     """Add to a place of a saved note."""
     if field not in ADDABLE:
-        raise NoteRefused(f'A saved note has no place "{field}" to add to: use one of {", ".join(ADDABLE)}.')
+        raise NoteRefused(f"A saved note has no place '{field}' to add to: use one of {', '.join(ADDABLE)}.")
     if not text.strip():
         raise NoteRefused(f"There is nothing to add to the note's {field}: write at least a word.")
     _check_text(field, text)
@@ -105,9 +105,9 @@ def find(session: Session, design: StoredDesign, number: int | None) -> StoredRe
         return row
     count = session.exec(select(func.count()).where(StoredRevision.design_id == design.id)).one()
     if count == 0:
-        raise RevisionMissing(f'"{design.name}" has no revision yet: save its draft first.')
+        raise RevisionMissing(f"'{design.name}' has no revision yet: save its draft first.")
     there = "only r1" if count == 1 else f"r1 to r{count}"
-    raise RevisionMissing(f'"{design.name}" has no revision r{number}: it has {there}.')
+    raise RevisionMissing(f"'{design.name}' has no revision r{number}: it has {there}.")
 
 
 def all_of(session: Session, design: StoredDesign) -> Sequence[StoredRevision]:

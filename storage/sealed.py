@@ -109,7 +109,7 @@ def _everything(execute: Callable[[str], Iterable[Any]]) -> Iterator[tuple[str, 
 
 
 def _about_design(name: str) -> str:
-    return f'"{name}"'
+    return f"'{name}'"
 
 
 def _about_revision(design: str, number: int) -> str:
@@ -121,4 +121,4 @@ def _about_entry(revision: str, field: str) -> str:
 
 
 def _about_part(name: str, version: int) -> str:
-    return f'"{name}" of the drawer, version {version}'
+    return f"'{name}' of the drawer, version {version}"

@@ -45,7 +45,7 @@ class Seat:
             return row.token
         other = self.sitting(row)
         if other is not None:
-            raise DesignOpen(f'"{design.name}" is open in another sitting {_told(other)}.', other)
+            raise DesignOpen(f"'{design.name}' is open in another sitting {_told(other)}.", other)
         return self.claim(session, design, now)
 
     def checked(self, session: Session, design: StoredDesign, draft: StoredDraft, now: str) -> int:
@@ -68,7 +68,7 @@ class Seat:
             else:
                 return self.claim(session, design, now)
             raise TakenOver(
-                f'"{design.name}" {what} {_told(Sitting(row.since, row.who, here=False))}: nothing was written here; '
+                f"'{design.name}' {what} {_told(Sitting(row.since, row.who, here=False))}: nothing was written here; "
                 "take the design over to go on from its present state."
             )
         return self.claim(session, design, now)

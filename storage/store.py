@@ -122,7 +122,7 @@ class Store:
         name = checked_name(name)
         with self._writing() as session:
             if session.exec(select(StoredDesign).where(StoredDesign.name == name)).first():
-                raise NameTaken(f'There is a design "{name}" on the shelf already: choose another name.')
+                raise NameTaken(f"There is a design '{name}' on the shelf already: choose another name.")
             row = StoredDesign(name=name, created=self._now())
             session.add(row)
             seal_design(session, row)
@@ -325,7 +325,7 @@ class Store:
             return _Place(*found)
         names = session.exec(select(StoredDesign.name)).all()
         near = get_close_matches(name, names, n=1)
-        advice = f'did you mean "{near[0]}"?' if near else "see the names with `stagebook list`."
+        advice = f"did you mean '{near[0]}'?" if near else "see the names with `stagebook list`."
         raise DesignMissing(f"There is no design {name[:70]!r} on the shelf: {advice}")
 
     def _shown(self, session: Session, place: _Place, design: Design | None = None) -> Draft:

@@ -91,6 +91,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("revision", "origin", "w,enter", "w", "origin", "where the margin under the hand comes from", 2),
     Action("revision", "back", "escape,b", "b", "back", "back (Esc does the same)", 3),
     Action("page", "back", "escape,b,enter", "b", "back", "back (Esc and Enter do the same)", 2),
+    Action("help", "back", "escape,b,enter,question_mark", "b", "back", "back (Esc, Enter and ? do the same)", 2),
     # history
     Action("history", "look", "enter", "Enter", "look", "the note and the margins of this revision", 2),
     Action("history", "mark", "space", "space", "mark", "mark or unmark a revision for comparing", 3),
@@ -163,7 +164,7 @@ ACTIONS: tuple[Action, ...] = (
 )
 
 
-_DIALOGS = {"question", "occupied", "form", "pick", "mark", "waiting", "entry"}
+_DIALOGS = {"help", "question", "occupied", "form", "pick", "mark", "waiting", "entry"}
 
 
 def of(where: str) -> tuple[Action, ...]:

@@ -47,7 +47,7 @@ class StagebookApp(App[None]):
         self.theme = "ansi-dark"
         self.animation_level = "none"
         self.HORIZONTAL_BREAKPOINTS = [(0, "-narrow"), (60, "-wide"), (100, "-broad")]
-        self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high")]
+        self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high"), (36, "-tall")]
         self.computing = Computing(solver)
         self._store = store
         self._keys = KeyOrder(self._key, self._pumps)

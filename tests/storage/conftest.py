@@ -216,7 +216,7 @@ def plain() -> Callable[[BaseException], str]:
     def message(error: BaseException) -> str:
         text = str(error)
         assert text.endswith((".", "?"))
-        assert text[0].isupper() or text[0] in '"/'
+        assert text[0].isupper() or text[0] in "'/"
         for foreign in ("\n", "Traceback", "sqlalchemy", "sqlite3.", "Errno", "SELECT", "INSERT"):
             assert foreign not in text.replace("stagebook.sqlite3", "")
         return text

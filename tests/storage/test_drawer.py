@@ -55,7 +55,7 @@ def test_what_is_no_part_is_refused_and_nothing_is_kept(store: Store) -> None:
 
 def test_a_name_that_is_not_there_is_met_with_the_nearest(store: Store) -> None:
     store.keep_part("low-leak npn", LOW_LEAK)
-    with pytest.raises(PartMissing, match='did you mean "low-leak npn"'):
+    with pytest.raises(PartMissing, match="did you mean 'low-leak npn'"):
         store.part_versions("low leak npn")
 
 

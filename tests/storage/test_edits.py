@@ -113,7 +113,7 @@ def test_a_damaged_edit_moves_nothing(path: Path, flood: Store, design: Callable
         raw.execute("""UPDATE edit SET inverse = '[{"op":"remove","path":"/nowhere"}]'""")
     with pytest.raises(StoreUnreadable) as refusal:
         flood.undo("flood")
-    assert '"flood"' in plain(refusal.value)
+    assert "'flood'" in plain(refusal.value)
     assert flood.draft("flood").design == design("22k")
 
 

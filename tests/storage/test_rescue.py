@@ -133,8 +133,8 @@ def test_what_was_altered_is_named_in_the_rescued_store(closed: Path, tmp_path: 
         raw.execute("DELETE FROM edit WHERE id = (SELECT edit_id FROM revision WHERE number = 2 AND design_id = 1)")
         raw.commit()
     found = rescue(closed, tmp_path / "saved")
-    assert '"flood" r2: the hash does not fit its parent, number, time, document, note and margins.' in found.lost
-    assert '"flood": the edits were torn; they were made anew from what was saved.' in found.lost
+    assert "'flood' r2: the hash does not fit its parent, number, time, document, note and margins." in found.lost
+    assert "'flood': the edits were torn; they were made anew from what was saved." in found.lost
     assert told(tmp_path / "saved")["flood"] == ("68k", ["22k", "99k", "47k"])
     with Store.open(tmp_path / "saved") as store:
         assert store.undo("flood").design.part("R8").value == "47k"

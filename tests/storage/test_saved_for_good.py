@@ -111,7 +111,7 @@ TAMPERED = [
     ("UPDATE note_entry SET text = 'x' WHERE text = 'result 2'", ["r2: the addition to the note's result"]),
     ("DELETE FROM note_entry WHERE text = 'result 2'", ["r2: the addition to the note's result"]),
     ("UPDATE edit SET forward = replace(forward, '22k', '24k')", ["do not lead to r2"]),
-    ("UPDATE edit SET inverse = replace(inverse, '22k', '24k')", ['the edit "R8 33k" of']),
+    ("UPDATE edit SET inverse = replace(inverse, '22k', '24k')", ["the edit 'R8 33k' of"]),
     ("UPDATE edit SET inverse = '[{}]'", ["edits of", "damaged"]),
     ("UPDATE draft SET document = replace(document, '33k', '39k')", ["do not lead to the draft"]),
     ("UPDATE draft SET document = '[]'", ["the draft cannot be read"]),
@@ -142,7 +142,7 @@ NEWEST = """
     UPDATE draft SET base_id = 2;
     DELETE FROM revision WHERE id = 3;
 """
-GONE = ['"flood" r3 was saved and is gone.', *['"flood" r3, added to result was saved and is gone.'] * 2]
+GONE = ["'flood' r3 was saved and is gone.", *["'flood' r3, added to result was saved and is gone."] * 2]
 SEALED = {
     "the newest revision, with all that points to it": (NEWEST, GONE),
     "and the end of the seal": (
@@ -155,29 +155,29 @@ SEALED = {
     ),
     "an entry of the seal made to fit": (
         "UPDATE seal SET content = (SELECT hash FROM revision WHERE id = 2) WHERE id = 10;",
-        ['Entry 10 of the seal, about "flood" r3, is not the one that was made.', '"flood" r3 is not what was saved.'],
+        ["Entry 10 of the seal, about 'flood' r3, is not the one that was made.", "'flood' r3 is not what was saved."],
     ),
     "the whole design": (
         "DELETE FROM note_entry; DELETE FROM margin; DELETE FROM draft; DELETE FROM revision; DELETE FROM edit;"
         " DELETE FROM sitting; DELETE FROM design;",
-        ['"flood" was saved and is gone.', '"flood" r1 was saved and is gone.'],
+        ["'flood' was saved and is gone.", "'flood' r1 was saved and is gone."],
     ),
     "the name of a design": (
         "UPDATE design SET name = 'frost';",
-        ['"flood" is not what was saved.'],
+        ["'flood' is not what was saved."],
     ),
     "a part of the drawer": (
         "UPDATE made_part SET document = replace(document, '470k', '47k') WHERE version = 1;",
-        ['"film" of the drawer, version 1 is not what was saved.'],
+        ["'film' of the drawer, version 1 is not what was saved."],
     ),
     "the newest version of a part": (
         "DELETE FROM made_part WHERE version = 2;",
-        ['"film" of the drawer, version 2 was saved and is gone.'],
+        ["'film' of the drawer, version 2 was saved and is gone."],
     ),
     "a part that another program put in": (
         "INSERT INTO made_part (name, version, kind, document, made) SELECT 'odd', 1, kind, document, made"
         " FROM made_part WHERE version = 1;",
-        ['"odd" of the drawer, version 1 is not in the seal: another program wrote it.'],
+        ["'odd' of the drawer, version 1 is not in the seal: another program wrote it."],
     ),
 }
 
@@ -206,9 +206,9 @@ def test_the_seal_goes_on_from_its_last_entry(path: Path, shelf: Store, design: 
     assert verify(shelf) == []
     with closing(sqlite3.connect(path)) as raw:
         assert raw.execute("SELECT id, about FROM seal ORDER BY id DESC LIMIT 3").fetchall() == [
-            (14, '"film" of the drawer, version 3'),
-            (13, '"frost"'),
-            (12, '"flood" r3, added to result'),
+            (14, "'film' of the drawer, version 3"),
+            (13, "'frost'"),
+            (12, "'flood' r3, added to result"),
         ]
 
 

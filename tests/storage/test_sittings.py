@@ -42,7 +42,7 @@ say(store.draft("flood").design.part("R8").value)
     ):
         with pytest.raises(TakenOver) as refusal:
             write()
-        assert '"flood" was taken over by another sitting since' in plain(refusal.value)
+        assert "'flood' was taken over by another sitting since" in plain(refusal.value)
     draft = flood.draft("flood")
     assert (draft.design, draft.edits) == (design("33k"), 2)
 
@@ -50,7 +50,7 @@ say(store.draft("flood").design.part("R8").value)
     flood.edit("flood", "R8 47k", design("47k"))
     other.stdin.write("go on\n")
     other.stdin.flush()
-    assert next_line(other).startswith('"flood" was taken over by another sitting')
+    assert next_line(other).startswith("'flood' was taken over by another sitting")
     assert next_line(other) == "47k"
     assert verify(flood) == []
 
@@ -128,7 +128,7 @@ sys.stdin.read()
         with pytest.raises(DesignOpen) as refusal:
             store.sit_down("flood")
         assert refusal.value.sitting == sitting
-        assert f'"flood" is open in another sitting since {sitting.since[:10]}' in plain(refusal.value)
+        assert f"'flood' is open in another sitting since {sitting.since[:10]}" in plain(refusal.value)
         assert sitting.who in str(refusal.value)
         process.kill()
         process.wait(10)

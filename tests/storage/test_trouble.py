@@ -194,7 +194,7 @@ def test_a_clock_that_goes_back_loses_nothing_and_is_told(path: Path, design: Ca
         assert store.undo("flood").design == design("33k")
         assert verify(store) == []
         (advice,) = inspect(store).advice
-    assert advice.startswith('"flood" r2 was saved on 2025-10-27 by the clock, before r1 on 2026-12-01: the clock')
+    assert advice.startswith("'flood' r2 was saved on 2025-10-27 by the clock, before r1 on 2026-12-01: the clock")
     assert "set it" in advice
 
 

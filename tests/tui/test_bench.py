@@ -283,7 +283,9 @@ async def test_removing_a_part_asks_first(app: StagebookApp, shelf: Store) -> No
 async def test_where_a_margin_comes_from_is_one_key_away(app: StagebookApp) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await to_timer(pilot)
-        await pilot.press("tab", "w")
+        await pilot.press("tab")
+        assert " Enter origin " in shown(pilot)[-1]
+        await pilot.press("w")
         text = seen(pilot)
         for words in ("demand", "capability", "1 - demand / capability", "hot, low supply", "by hand", "4 V", "50 C"):
             assert words in text

@@ -204,6 +204,7 @@ async def test_the_list_of_kinds_holds_the_whole_catalogue(store: Store, solver:
         await until(pilot, lambda: isinstance(pilot.app.screen, Pick))
         rows = pilot.app.screen.query_one(RowList).rows
         assert {row.key for row in rows} == set(stage_kinds())
+        assert "a new design" in shown(pilot)[0]  # the list stands at the foot, what it is about stays above
         # What the row has no room for stands below the list, to its end.
         kind = stage_kinds()["piezo"]
         assert kind.help.split()[-1] not in seen(pilot)

@@ -10,6 +10,7 @@ import pytest
 from stagebook.storage import Store
 from stagebook.tui.messages import SolverPreparing
 from stagebook.tui.screens.bench import BenchScreen
+from stagebook.tui.screens.part_data import PartDataScreen
 from stagebook.tui.screens.shelf import ShelfScreen
 from stagebook.tui.shown import Span, line
 from stagebook.tui.solver import Solver
@@ -17,7 +18,7 @@ from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import Row, RowList
 from stagebook.tui.widgets.status import Notice
 
-from .conftest import document, flood, seen, settled, until
+from .conftest import document, flood, seen, settled, shown, until
 
 SIZE = (80, 24)
 
@@ -122,6 +123,7 @@ async def test_every_mark_fits_the_help_of_80_columns(app: StagebookApp) -> None
     async with app.run_test(size=SIZE) as pilot:
         await settled(pilot)
         await pilot.press("question_mark", "end")
+        assert "? help" not in shown(pilot)[-1]
         assert "what should happen does not" in seen(pilot)
         # The row is longer than the screen: the rest stands below.
         assert "nominal is one case and never stands for the worst." in " ".join(seen(pilot).split())
@@ -134,7 +136,9 @@ async def test_the_drawer_opens_from_the_shelf(app: StagebookApp, shelf: Store) 
         await pilot.press("p")
         assert "my npn" in seen(pilot)
         await pilot.press("enter")
-        assert "e edits them here" in pilot.app.screen.query_one(Notice).text
+        assert isinstance(pilot.app.screen, PartDataScreen)
+        await pilot.press("b")
+        assert " Enter edit" in shown(pilot)[-1]
         await pilot.press("b")
         assert isinstance(pilot.app.screen, ShelfScreen)
 

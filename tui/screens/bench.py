@@ -149,7 +149,7 @@ class BenchScreen(BenchView):
     def _end_entry(self) -> None:
         self.query_one("#foot").remove_class("-entering")
         self.focus_list()
-        self.query_one(KeyLine).of("bench")
+        self.show_keys()
 
     def action_step_down(self) -> None:
         """Next lower preferred value."""

@@ -24,9 +24,11 @@ from ..widgets.chain import Chain
 from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
 from ..widgets.rule import Divider, Rule
+from ..widgets.status import KeyLine
 from ..widgets.value_entry import ValueEntry
 from .page import Page
 
+_ON_MARGINS = {"change": "origin", "edit": "required"}
 NO_REQUEST = -1
 """What no message of a study answers."""
 
@@ -172,8 +174,13 @@ class BenchView(Page[None]):
         self._show_hand()
 
     def on_descendant_focus(self) -> None:
-        """Parts or margins: the words about the hand follow."""
+        """Parts or margins: the words about the hand and what the keys do follow."""
         self._show_hand()
+        self.show_keys()
+
+    def show_keys(self) -> None:
+        """What the keys do on this side."""
+        self.query_one(KeyLine).of("bench", _ON_MARGINS if self.margins.has_focus else None)
 
     # -- studies
 

@@ -22,6 +22,7 @@ from ..shown import Span, fit, line
 from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
 from ..widgets.rule import Rule
+from ..widgets.status import KeyLine
 from .dialog import Pick
 from .page import Page
 from .part_data import PartDataScreen
@@ -62,6 +63,8 @@ class DrawerScreen(Page[None]):
     def on_mount(self) -> None:
         """Reads the drawer."""
         self.query_one(RowList).focus()
+        if self._hand is None:
+            self.query_one(KeyLine).of("drawer", {"use": "edit"})
         self._read()
 
     def on_screen_resume(self) -> None:
@@ -105,12 +108,12 @@ class DrawerScreen(Page[None]):
         self._show_hand()
 
     def action_use(self) -> None:
-        """Copies the data into the part under the hand of the bench, and goes back there."""
+        """Copies the data into the part under the hand of the bench, and goes back there; elsewhere edits them."""
         made, hand = self._chosen, self._hand
         if made is None:
             self.refuse("the drawer is empty; n makes a part")
         elif hand is None:
-            self.refuse("a part on the bench takes the data: put the hand on it there, then p; e edits them here")
+            self.action_edit()
         else:
             found: list[Design] = []
 

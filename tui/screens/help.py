@@ -36,7 +36,7 @@ _SIGNS = (
 class HelpScreen(ModalScreen[None]):
     """All actions of one place, from the registry."""
 
-    BINDINGS: ClassVar[list[BindingType]] = bindings("page")
+    BINDINGS: ClassVar[list[BindingType]] = bindings("help")
 
     def __init__(self, where: str) -> None:
         super().__init__()
@@ -48,7 +48,7 @@ class HelpScreen(ModalScreen[None]):
             yield Rule()
             yield RowList(id="help")
             yield Lines(id="in-full")
-            yield KeyLine("page")
+            yield KeyLine("help")
 
     def on_mount(self) -> None:
         """Lists keys and marks."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
+from rich.cells import cell_len
 from rich.segment import Segment
 from rich.style import Style
 from textual.geometry import Region
@@ -40,7 +41,7 @@ class TonedWidget(Widget):
 
 
 class Lines(TonedWidget):
-    """Lines to read. :meth:`show` repaints only those that changed."""
+    """Lines to read. :meth:`show` repaints only what changed of them."""
 
     def __init__(self, *lines: Line, id: str | None = None, classes: str | None = None) -> None:
         super().__init__(id=id, classes=classes)
@@ -56,7 +57,9 @@ class Lines(TonedWidget):
         old, self._lines = self._lines, lines
         for y in range(max(len(old), len(lines))):
             if self.is_attached and _at(old, y) != _at(lines, y):
-                self.refresh(Region(0, y, self.size.width, 1))
+                start, end = _changed(_at(old, y), _at(lines, y))
+                if start < self.size.width:
+                    self.refresh(Region(start, y, min(end, self.size.width) - start, 1))
 
     def render_line(self, y: int) -> Strip:
         """One line, as Textual's compositor asks for it."""
@@ -65,3 +68,16 @@ class Lines(TonedWidget):
 
 def _at(lines: Sequence[Line], y: int) -> Line:
     return lines[y] if y < len(lines) else ()
+
+
+def _changed(old: Line, new: Line) -> tuple[int, int]:
+    """The cells from the first to behind the last in which two lines differ."""
+    before, after = ([(c, span.tone) for span in each for c in visible(span.text)] for each in (old, new))
+    length = max(len(before), len(after))
+    before += [(" ", "")] * (length - len(before))
+    after += [(" ", "")] * (length - len(after))
+    differ = [at for at in range(length) if before[at] != after[at]] or [0]
+    first, last = differ[0], differ[-1] + 1
+    start = cell_len("".join(c for c, _ in after[:first]))
+    old_end, new_end = (cell_len("".join(c for c, _ in each[:last])) for each in (before, after))
+    return start, new_end if old_end == new_end else cell_len("".join(c for c, _ in after)) + length

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from textwrap import wrap
 
 from rich.cells import cell_len
@@ -68,11 +69,13 @@ class KeyLine(Lines):
     def __init__(self, where: str, id: str | None = None) -> None:
         super().__init__(id=id)
         self._where = where
+        self._labels: Mapping[str, str] = {}
 
-    def of(self, where: str) -> None:
-        """Shows the keys of another place."""
-        self._where = where
-        self._draw()
+    def of(self, where: str, labels: Mapping[str, str] | None = None) -> None:
+        """Shows the keys of another place; ``labels`` say what an action does just now, by its name."""
+        if (where, labels or {}) != (self._where, self._labels):
+            self._where, self._labels = where, labels or {}
+            self._draw()
 
     def on_resize(self) -> None:
         """Another width shows more or fewer keys."""
@@ -80,7 +83,8 @@ class KeyLine(Lines):
 
     def _draw(self) -> None:
         if self.size.width:
-            self.show(key_line(with_help(self._where), self.size.width))
+            actions = [replace(each, label=self._labels.get(each.name, each.label)) for each in with_help(self._where)]
+            self.show(key_line(actions, self.size.width))
 
 
 def key_line(actions: Sequence[Action], width: int) -> Line:

@@ -39,14 +39,14 @@ def test_inspection_names_what_does_not_match(stagebook: Callable[..., Said], tm
         raw.commit()
     status, out, err = stagebook("inspect")
     assert (status, err) == (1, "")
-    assert 'X "flood" r3: the hash does not fit' in out
+    assert "X 'flood' r3: the hash does not fit" in out
     assert "revision_no_update" in out
     status, out, err = stagebook("inspect", "--json")
     found = json.loads(out)
     assert (status, err, found["revisions"]) == (1, "", sum(counted(stagebook)))
     # The missing trigger, and the third revision of every design.
     assert len(found["problems"]) == 1 + len(counted(stagebook))
-    assert [problem.startswith('"flood" r3') for problem in found["problems"]].count(True) == 1
+    assert [problem.startswith("'flood' r3") for problem in found["problems"]].count(True) == 1
 
 
 def test_a_copy_goes_over_no_foreign_file(

@@ -105,7 +105,7 @@ def test_margins_and_waves(
     [
         ((), "WHAT"),
         (("buzzer",), "N"),
-        (("buzzer", "1"), "1 revisions where 2"),
+        (("buzzer", "1"), "1 revision where 2"),
         (("buzzer", "1", "1"), "stands twice"),
         (("buzzer", "1", "r1"), "stands twice"),
         (("buzzer", "1", "two"), "not a revision"),
