@@ -21,13 +21,10 @@ from ..primitives.builder import (
     Guard,
     Law,
     Operated,
-    channel_array,
     constant,
-    junction_array,
-    transport_array,
-    warm_array,
 )
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
+from ..primitives.lane_table import lane_table
 from ..quantity import read
 from .injection import add_injectors, injected
 from .inspection import inspect
@@ -86,27 +83,7 @@ class Circuit:
 
     def table(self, lanes: Lanes) -> Floats:
         """Law parameters of all primitives, (lanes, parameters)."""
-        made = self.builder
-        columns: list[Floats | float] = [law(lanes) for *_, law in (*made.conductances, *made.capacitances)]
-        for *_, inductance, resistance, _ in made.branches:
-            columns += [inductance(lanes), resistance(lanes)]
-        linear = layout.zeros(lanes.count, len(columns))
-        for k, column in enumerate(columns):
-            linear[:, k] = column
-        junctions = [junction_array(laws, lanes) for *_, laws in made.junctions]
-        transports = [transport_array(laws, lanes) for *_, laws in made.transports]
-        channels = [channel_array(laws, lanes) for *_, laws in made.channels]
-        warms = [warm_array(laws, lanes) for *_, laws in made.warms]
-        laws: list[Law] = []
-        for guard in made.guards.values():
-            laws += [guard.on, guard.off, guard.on_delay, guard.off_delay]
-        for each in made.operated:
-            bounce = each.bounce_for, float(each.bounce_times)
-            laws += [each.closed, each.opened, each.delay, *(constant(value) for value in bounce)]
-        moved = layout.zeros(lanes.count, len(laws))
-        for k, law in enumerate(laws):
-            moved[:, k] = law(lanes)
-        return np.ascontiguousarray(np.concatenate([linear, *junctions, *transports, *channels, *warms, moved], axis=1))
+        return lane_table(self.builder, lanes)
 
 
 def build(design: Design, inject: Sequence[str] = ()) -> Circuit:

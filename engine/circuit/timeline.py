@@ -28,7 +28,7 @@ from ..primitives.columns import SUPPLY, Lanes
 from ..quantity import read
 from .circuit import SUPPLY_RISE, SUPPLY_SOURCE, SUPPLY_SWITCH, Circuit
 from .injection import SIEMENS, injector
-from .wave import Number, Wave, ramp_shares
+from .wave import Number, Wave, ramp_shares, stacked
 
 if TYPE_CHECKING:
     from ..design.sequence import Event, Sequence
@@ -279,11 +279,9 @@ class Timeline:
         distinct = {id(w): w for w in waves}.values()
         breaks: list[Number] = [t for w in distinct for t in w.times[1:]]
         times: list[Number] = [0.0, *breaks, *([] if stops is None else list(stops))]
-        rows = max(np.size(t) for t in (*times, ends))
-        limit = np.broadcast_to(np.asarray(ends, dtype=float), (rows,))
-        table = np.stack(
-            [np.minimum(np.broadcast_to(np.asarray(t, dtype=float), (rows,)), limit) for t in times], axis=1
-        )
+        table = stacked([*times, ends])
+        limit = table[:, -1]
+        table = np.minimum(table[:, :-1], limit[:, None])
         table.sort(axis=1)
         table = np.concatenate([table, limit[:, None]], axis=1)
         # Instants that differ by rounding only are one: between them there is no time for a step.

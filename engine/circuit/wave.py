@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from itertools import pairwise
 
 import numpy as np
@@ -56,24 +56,26 @@ class Wave:
 
     def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
         """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
-        times, values = _stacked(self.times), _stacked(self.values)
+        times, values = stacked(self.times), stacked(self.values)
         place = np.sum(times[:, None, :] <= middles[:, :, None], axis=2) - 1
-        rows = place.shape[0]
-        rows = max(rows, values.shape[0])
-        place = np.broadcast_to(place, (rows, place.shape[1]))
-        times, values = (np.broadcast_to(a, (rows, a.shape[1])) for a in (times, values))
         after = np.minimum(place + 1, times.shape[1] - 1)
-        t0, t1 = np.take_along_axis(times, place, 1), np.take_along_axis(times, after, 1)
-        v0, v1 = np.take_along_axis(values, place, 1), np.take_along_axis(values, after, 1)
-        span = np.where(t1 > t0, t1 - t0, 1.0)
-        slope = np.where(t1 > t0, (v1 - v0) / span, 0.0)
-        return v0 + slope * (np.broadcast_to(starts, place.shape) - t0), slope
+        lane = np.arange(place.shape[0])[:, None]
+        of_time, of_value = (lane if points.shape[0] > 1 else 0 for points in (times, values))
+        if values.shape[0] > 1 and place.shape[0] == 1:
+            of_value = np.arange(values.shape[0])[:, None]
+        t0, t1 = times[of_time, place], times[of_time, after]
+        v0, v1 = values[of_value, place], values[of_value, after]
+        rises = t1 > t0
+        slope = np.where(rises, (v1 - v0) / np.where(rises, t1 - t0, 1.0), 0.0)
+        return v0 + slope * (starts - t0), slope
 
 
-def _stacked(points: list[Number]) -> Floats:
+def stacked(points: Sequence[Number]) -> Floats:
     """Points as (lanes or 1, points)."""
-    rows = max(1, *(np.size(v) for v in points))
-    return np.stack([np.broadcast_to(np.asarray(v, dtype=float), (rows,)) for v in points], axis=1)
+    table = np.empty((max(np.size(point) for point in points), len(points)))
+    for k, point in enumerate(points):
+        table[:, k] = point
+    return table
 
 
 def ramp_shares(conductance: Callable[[float], Number]) -> Floats:

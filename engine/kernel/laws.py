@@ -112,10 +112,13 @@ def bent(v: Numbers, step: Numbers, p: Floats, j: int) -> tuple[Numbers, Flags]:
 @leaf
 def side_currents(v: Numbers, p: Floats, j: int) -> tuple[Numbers, Numbers]:
     """Return the current and conductance of leakage and breakdown, the parts that carry no stored charge."""
+    i = 0.0 * v
+    g = i
     leakage = at(p, j + J_LEAKAGE)
-    share = 1.0 / (abs(v) + LEAKAGE_KNEE)
-    i = leakage * v * share
-    g = leakage * LEAKAGE_KNEE * share * share
+    if any_of(leakage != 0.0):
+        share = 1.0 / (abs(v) + LEAKAGE_KNEE)
+        i = leakage * v * share
+        g = leakage * LEAKAGE_KNEE * share * share
     breakdown = at(p, j + J_BREAKDOWN)
     y = -(v + breakdown) * at(p, j + J_PER_BREAKDOWN_SLOPE)
     broken = (breakdown > 0.0) & (y > FLOOR)

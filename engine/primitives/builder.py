@@ -2,11 +2,8 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Callable
 from dataclasses import dataclass, field
-
-import numpy as np
 
 from ..errors import CircuitError
 from ..kernel import layout
@@ -19,40 +16,6 @@ Laws = dict[str, Law]
 
 RETURN = "0V"
 SUPPLY_NET = "supply"
-
-JUNCTION_DEFAULTS = {"potential": 0.75, "grading": 0.5, "breakdown_slope": 0.05, "breakdown_current": 1e-3}
-_JUNCTION_PLACES = {
-    "saturation": layout.J_SATURATION,
-    "slope": layout.J_SLOPE,
-    "capacitance": layout.J_CAPACITANCE,
-    "potential": layout.J_POTENTIAL,
-    "grading": layout.J_GRADING,
-    "transit": layout.J_TRANSIT,
-    "breakdown": layout.J_BREAKDOWN,
-    "breakdown_slope": layout.J_BREAKDOWN_SLOPE,
-    "breakdown_current": layout.J_BREAKDOWN_CURRENT,
-    "leakage": layout.J_LEAKAGE,
-}
-_TRANSPORT_PLACES = {
-    "per_forward_gain": layout.T_GAIN_FORWARD,
-    "per_reverse_gain": layout.T_GAIN_REVERSE,
-    "per_early_voltage": layout.T_EARLY,
-    "collector_junction": layout.T_COLLECTOR,
-    "per_knee_current": layout.T_PER_KNEE,
-}
-_CHANNEL_PLACES = {
-    "threshold": layout.C_THRESHOLD,
-    "transconductance": layout.C_TRANSCONDUCTANCE,
-    "modulation": layout.C_MODULATION,
-}
-_WARM_PLACES = {
-    "level": layout.W_LEVEL,
-    "power": layout.W_POWER,
-    "beta": layout.W_BETA,
-    "offset": layout.W_OFFSET,
-    "ambient": layout.W_AMBIENT,
-    "radiation": layout.W_RADIATION,
-}
 
 
 def constant(value: float) -> Law:
@@ -263,7 +226,7 @@ class Builder:
         return Handle("branch", len(self.branches) - 1, pair)
 
     def junction(self, anode: str, cathode: str, laws: Laws) -> Handle:
-        """A two-terminal junction; ``laws`` by the names of ``_JUNCTION_PLACES``."""
+        """A two-terminal junction; ``laws`` by the names of ``lane_table.JUNCTION``."""
         pair = self.net(anode), self.net(cathode)
         self.junctions.append((*pair, laws))
         return Handle("junction", len(self.junctions) - 1, pair)
@@ -275,7 +238,7 @@ class Builder:
         return Handle("transport", len(self.transports) - 1, nets)
 
     def channel(self, drain: str, gate: str, source: str, polarity: int, laws: Laws) -> Handle:
-        """A field-effect channel; polarity +1 n, -1 p; ``laws`` by the names of ``_CHANNEL_PLACES``."""
+        """A field-effect channel; polarity +1 n, -1 p; ``laws`` by the names of ``lane_table.CHANNEL``."""
         nets = self.net(drain), self.net(gate), self.net(source)
         self.channels.append((*nets, polarity, laws))
         return Handle("channel", len(self.channels) - 1, nets)
@@ -294,7 +257,7 @@ class Builder:
         return name
 
     def warm(self, a: str, b: str, temperature: str, laws: Laws) -> Handle:
-        """A conductance that its own temperature changes; ``laws`` by the names of ``_WARM_PLACES``, in kelvin."""
+        """A conductance that its own temperature changes; ``laws`` by the names of ``lane_table.WARM``, in kelvin."""
         nets = self.net(a), temperature, self.net(b)
         self.warms.append((*nets, laws))
         return Handle("warm", len(self.warms) - 1, nets)
@@ -324,54 +287,3 @@ class Builder:
     def bench(self, ref: str) -> Bench:
         """Where a kind notes what can be observed at its part."""
         return self.benches.setdefault(ref, Bench())
-
-
-def junction_array(laws: Laws, lanes: Lanes, prefix: str = "") -> Floats:
-    """Parameters of one junction, (lanes, JUNCTION_WIDTH)."""
-    array = layout.zeros(lanes.count, layout.JUNCTION_WIDTH)
-    for name, place in _JUNCTION_PLACES.items():
-        law = laws.get(prefix + name)
-        array[:, place] = JUNCTION_DEFAULTS.get(name, 0.0) if law is None else law(lanes)
-    array[:, layout.J_PER_SLOPE] = 1.0 / array[:, layout.J_SLOPE]
-    array[:, layout.J_PER_BREAKDOWN_SLOPE] = 1.0 / array[:, layout.J_BREAKDOWN_SLOPE]
-    array[:, layout.J_PER_POTENTIAL] = 1.0 / array[:, layout.J_POTENTIAL]
-    array[:, layout.J_RISE] = array[:, layout.J_GRADING] / (0.5 * array[:, layout.J_POTENTIAL])
-    array[:, layout.J_STORED] = (
-        array[:, layout.J_CAPACITANCE] * array[:, layout.J_POTENTIAL] / (1.0 - array[:, layout.J_GRADING])
-    )
-    # The voltage at which the exponential bends away: where its conductance equals its slope over 1.4 ohm.
-    knee = np.log(array[:, layout.J_SLOPE] / (math.sqrt(2.0) * np.maximum(array[:, layout.J_SATURATION], 1e-300)))
-    array[:, layout.J_KNEE] = np.maximum(0.0, array[:, layout.J_SLOPE] * knee)
-    over = array[:, layout.J_BREAKDOWN_SLOPE] / (math.sqrt(2.0) * array[:, layout.J_BREAKDOWN_CURRENT])
-    array[:, layout.J_BREAKDOWN_KNEE] = array[:, layout.J_BREAKDOWN_SLOPE] * np.log(over)
-    return array
-
-
-def transport_array(laws: Laws, lanes: Lanes) -> Floats:
-    """Parameters of one bipolar transistor, (lanes, TRANSPORT_WIDTH)."""
-    array = layout.zeros(lanes.count, layout.TRANSPORT_WIDTH)
-    for name, place in _TRANSPORT_PLACES.items():
-        law = laws.get(name)
-        array[:, place] = 0.0 if law is None else law(lanes)
-    collector = layout.T_COLLECTOR_JUNCTION
-    array[:, layout.T_EMITTER_JUNCTION : collector] = junction_array(laws, lanes, "emitter_")
-    array[:, collector:] = junction_array(laws, lanes, "collector_")
-    return np.ascontiguousarray(array)
-
-
-def channel_array(laws: Laws, lanes: Lanes) -> Floats:
-    """Parameters of one field-effect channel, (lanes, CHANNEL_WIDTH)."""
-    array = layout.zeros(lanes.count, layout.CHANNEL_WIDTH)
-    for name, place in _CHANNEL_PLACES.items():
-        law = laws.get(name)
-        array[:, place] = 0.0 if law is None else law(lanes)
-    return array
-
-
-def warm_array(laws: Laws, lanes: Lanes) -> Floats:
-    """Parameters of one warm conductance, (lanes, WARM_WIDTH)."""
-    array = layout.zeros(lanes.count, layout.WARM_WIDTH)
-    for name, place in _WARM_PLACES.items():
-        law = laws.get(name)
-        array[:, place] = 0.0 if law is None else law(lanes)
-    return array

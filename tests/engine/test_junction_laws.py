@@ -21,8 +21,9 @@ from stagebook.engine.kernel.layout import (
     J_SLOPE,
     Floats,
 )
-from stagebook.engine.primitives.builder import constant, junction_array
+from stagebook.engine.primitives.builder import constant
 from stagebook.engine.primitives.columns import AMBIENT, Column, Lanes
+from stagebook.engine.primitives.lane_table import junction_parameters
 
 from . import single_laws
 
@@ -31,7 +32,7 @@ LANES = Lanes.nominal([Column(*AMBIENT, 25.0, 25.0, 25.0)])
 
 def junction(**figures: float) -> Floats:
     """Parameters of one junction as the circuit builder makes them."""
-    return junction_array({name: constant(value) for name, value in figures.items()}, LANES)[0]
+    return junction_parameters({name: constant(value) for name, value in figures.items()}, LANES)[0]
 
 
 junctions = st.builds(
