@@ -7,6 +7,7 @@ before anything that computes. The folder holds machine code that is loaded and 
 from __future__ import annotations
 
 import atexit
+import gc
 import hashlib
 import os
 import platform
@@ -100,7 +101,14 @@ def prepare_here() -> None:
     # Imported here: it loads numba, which must find its folder chosen.
     from ..engine.kernel import compile_all
 
-    compile_all()
+    # Looking for cycles among the millions of objects of a compiler is a sixth of its time, and finds nothing.
+    collected = gc.isenabled()
+    gc.disable()
+    try:
+        compile_all()
+    finally:
+        if collected:
+            gc.enable()
     if folder is not None:
         (folder / _MARK).touch(mode=0o600)
 

@@ -9,19 +9,22 @@ def compile_all() -> None:
 
     from . import layout
     from .elimination import Pattern
+    from .linearised import linearised
     from .march import march
 
     plan = Pattern(1)
     plan.couple((0,))
     lists = plan.plan()
     row = [0, 1, 0, 0, 0, lists.slot(0, 0), 1, 1, 1, *[0] * 5]
+    top = layout.Topology(
+        layout.ints([1, 1, 2, 1, 0]),
+        layout.places([row], 1, layout.ELEMENT_WIDTH),
+        layout.places([0, *[1] * layout.FAMILIES]),
+        **lists.lists(),
+    )
+    linearised(top, np.ones((1, 1)), 1, np.zeros((1, 2)))
     march(
-        layout.Topology(
-            layout.ints([1, 1, 2, 1, 0]),
-            layout.places([row], 1, layout.ELEMENT_WIDTH),
-            layout.places([0, *[1] * layout.FAMILIES]),
-            **lists.lists(),
-        ),
+        top,
         np.ones((1, 1)),
         np.zeros((1, 2)),
         layout.Program(

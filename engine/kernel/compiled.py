@@ -32,13 +32,16 @@ else:
         return made
 
     def leaf(function: Function) -> Function:
-        """Compile a function that allocates nothing, without counting references to the arrays that it is handed.
+        """Compile a function that allocates nothing and is called by compiled ones only.
 
-        Counting costs two atomic operations an array and call: two thirds of the time of a small circuit. The option
-        is not documented; a numba without it compiles the slower code.
+        It does not count references to the arrays that it is handed, which costs two atomic operations an array and
+        call: two thirds of the time of a small circuit. What calls it keeps its code, so it is not kept on its own.
+        The options are not documented; a numba without them compiles the slower code.
         """
         try:
-            made: Function = jit(nogil=True, cache=True, error_model="numpy", _nrt=False)(function)
+            made: Function = jit(
+                nogil=True, error_model="numpy", _nrt=False, no_cpython_wrapper=True, no_cfunc_wrapper=True
+            )(function)
         except (KeyError, TypeError):
             return compiled(function)
         return made

@@ -432,9 +432,9 @@ def march_rows(
                     keep_states(keep_row, status, x, begin + length, w, lane, kept, kept_at)
                     clock[LAST, w] = length
                     clock[NOW, w] = clock[STOP, w] if length == clock[LEFT, w] else clock[NOW, w] + length
-                    wanted = max(length * min(5.0, grow), JUMP)
+                    wanted = max(length * min(3.0, grow), JUMP)
                     asked = clock[ASKED, w]
-                    clock[NEXT, w] = wanted if length == asked else max(wanted, min(asked, 5.0 * length))
+                    clock[NEXT, w] = wanted if length == asked else max(wanted, min(asked, 3.0 * length))
             elif failed[w] != 0:
                 counts[lane, 3] += 1
                 clock[NEXT, w] = clock[LENGTH, w] * 0.1

@@ -7,9 +7,26 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from stagebook.engine.kernel.compiled import compiled
 from stagebook.engine.kernel.elimination import Pattern, Plan, factor, substitute, substitute_two
-from stagebook.engine.kernel.layout import Floats
-from stagebook.engine.kernel.vectors import WIDTH
+from stagebook.engine.kernel.layout import Floats, Places
+from stagebook.engine.kernel.vectors import WIDTH, at
+
+
+@compiled
+def solve(
+    stored: Floats,
+    solution: Floats,
+    other: Floats,
+    twin: Floats,
+    pivot: Places,
+    entry: Places,
+    update: Places,
+    left: Places,
+) -> None:
+    factor(stored, at(stored, stored.shape[0] - 1), pivot, entry, update)
+    substitute(stored, solution, pivot, entry, left)
+    substitute_two(stored, other, twin, pivot, entry, left)
 
 
 def solved(plan: Plan, matrix: Floats, right: Floats) -> Floats:
@@ -19,11 +36,9 @@ def solved(plan: Plan, matrix: Floats, right: Floats) -> Floats:
     for (i, j), slot in plan.slots.items():
         stored[slot] = matrix[i, j]
     solution = np.ascontiguousarray(np.repeat(right[:, None], WIDTH, axis=1))
-    factor(stored, 0.0, lists["pivot"], lists["entry"], lists["update"])
     twin = 2.0 * solution
     other = solution.copy()
-    substitute(stored, solution, lists["pivot"], lists["entry"], lists["left"])
-    substitute_two(stored, other, twin, lists["pivot"], lists["entry"], lists["left"])
+    solve(stored, solution, other, twin, lists["pivot"], lists["entry"], lists["update"], lists["left"])
     assert np.array_equal(other, solution)
     assert np.array_equal(twin, 2.0 * solution)
     assert np.all(solution == solution[:, :1])
