@@ -28,6 +28,8 @@ def run(asked: Namespace) -> int:
     elif rows:
         heads = ("design", "revisions", "edits", "saved", "worst %", "verdict", "check")
         print_table(heads, [_cells(row) for row in rows], right=frozenset({1, 2, 4}))
+        if any(row.edits_pending for row in rows):
+            print_words("Worst margins are those of the newest revisions, without the edits since.")
     else:
         print_words(
             "The shelf is empty. `stagebook import FILE` puts a design on it, `stagebook demo` the demo designs."

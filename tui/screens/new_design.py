@@ -106,7 +106,7 @@ class NewDesignPage(Page[str | None]):
         try:
             design = self._design()
         except EngineError as refusal:
-            self.refuse(str(refusal))
+            self.refuse(str(refusal), passing=False)
             return
         asked_for = counted(len(design.requirements), "requirement")
         self.say(f"{counted(len(design.parts), 'part')}, {asked_for}; s makes the design")

@@ -121,6 +121,11 @@ def test_the_list_names_revisions_and_the_worst_margin(stagebook: Run, written: 
     assert "-36" in plain[2]
     assert "FAIL" in plain[2]
     assert "never" in plain[1]
+    assert "without the edits" not in plain[-1]
+    with Store.open(tmp_path / "shelf.sqlite3") as store:
+        draft = store.draft("buzzer").design
+        store.edit("buzzer", "6 V", Design.load({**draft.dump(), "purpose": "another"}))
+    assert "without the edits since" in stagebook("list")[1].splitlines()[-1]
 
 
 def test_an_unknown_margin_is_null(stagebook: Run, written: Path, tmp_path: Path) -> None:
