@@ -12,6 +12,7 @@ import tempfile
 from collections.abc import Callable, Iterator
 from contextlib import closing
 from pathlib import Path
+from textwrap import indent
 
 import pytest
 
@@ -280,12 +281,15 @@ def test_a_file_that_cannot_be_reached_is_told(locked_folder: Path, child: Calla
             path.touch()
             path.chmod(mode)
     locked_folder.chmod(0o555)
-    for name, says in (("missing", "Permission denied"), ("secret", "Permission denied"), ("empty", "is empty")):
-        process = child(NOBODY + LOOK, locked_folder / name)
+    names = {"missing": "Permission denied", "secret": "Permission denied", "empty": "is empty"}
+    each = f"for path in [path.parent / name for name in {list(names)}]:\n"
+    process = child(NOBODY + each + indent(LOOK, "    "), locked_folder / "missing")
+    for says in names.values():
         line = next_line(process)
         assert line.startswith(("StoreUnreadable", "StoreReadOnly"))
         assert says in line
         assert "--store" in line
+        next_line(process)  # what lies in the folder
 
 
 def test_the_family_holds_all_refusals() -> None:
