@@ -17,7 +17,7 @@ def open_shelf(asked: Namespace) -> int:
     Raises CommandRefused where this terminal cannot show it or the store cannot be opened.
     """
     check_terminal()
-    with open_store(asked, _terminal()) as store:
+    with open_store(asked, _terminal(), begins=True) as store:
         # Imported here: no headless command waits for the screens to load.
         from .solver import own_solver
         from .stagebook_app import StagebookApp

@@ -19,7 +19,7 @@ def run(asked: Namespace) -> int:
     """Store the demo designs that are missing, with the margins they came with; what is there stays as it is."""
     if not asked.only_store:
         check_terminal()
-    with open_store(asked) as store:
+    with open_store(asked, begins=True) as store:
         from ..demo import put_on_shelf
 
         names = put_on_shelf(store)

@@ -27,7 +27,7 @@ def run(asked: Namespace) -> int:
         # Imported here: no other command needs it.
         from ...storage import inspect
 
-        found = inspect(store)
+        found, later = inspect(store), store.later
     if asked.json:
         print_json(
             {
@@ -49,8 +49,12 @@ def run(asked: Namespace) -> int:
         print_words(f"X {problem}", hanging=2)
     for line in found.advice:
         print_words(f"- {line}", hanging=2)
-    if not found.problems:
-        print_words("Everything is as it was saved: file, rows, triggers and every hash.")
+    if later and not found.problems:
+        print_words(
+            "The file is whole. Whether what a later Stagebook keeps in it is as it was saved was not looked at."
+        )
+    elif not found.problems:
+        print_words("Everything is as it was saved: file, rows, triggers, every hash and the seal.")
     return 1 if found.problems else 0
 
 

@@ -18,7 +18,7 @@ def arguments(parser: ArgumentParser) -> None:
 def run(asked: Namespace) -> int:
     """Take the document in as a draft."""
     design = load_file(asked.file)
-    with open_store(asked) as store:
+    with open_store(asked, begins=True) as store:
         draft = store.create(design.name if asked.name is None else asked.name, design)
     print(f"{visible(draft.name)} is on the shelf, as a draft without a revision yet")
     return 0

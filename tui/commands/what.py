@@ -93,14 +93,19 @@ def load_file(path: str) -> Design:
 
 
 @contextmanager
-def open_store(asked: Namespace, terminal: str = "") -> Iterator[Store]:
+def open_store(asked: Namespace, terminal: str = "", *, begins: bool = False) -> Iterator[Store]:
     """The shelf that ``--store`` or the environment names. What the store refuses is refused by the command.
 
-    ``terminal`` is that of the screens, which say by themselves when the store can only be looked at.
+    ``terminal`` is that of the screens, which say by themselves when the store can only be looked at. Only what
+    ``begins`` a store makes one of a name given by hand: a slip in the name would read as an empty shelf.
     """
     # Imported here: the database machinery takes longer to load than a command on a file needs altogether.
     from ...storage import StorageError, Store, default_path
 
+    if asked.store is not None and not begins and not Path(asked.store).expanduser().exists():
+        raise CommandRefused(
+            f"there is no store {asked.store}; name one that is there, or begin it with import or demo"
+        )
     try:
         with Store.open(default_path() if asked.store is None else Path(asked.store), terminal=terminal) as store:
             if store.later and not terminal:

@@ -201,7 +201,8 @@ def test_a_bad_field_is_named_with_stage_and_part(refused: Refused, document: di
         (("list", "extra"), "extra"),
         (("list", "--store", "."), "not a file"),
         (("list", "--store", "buzzer.json"), "buzzer.json"),
-        (("list", "--store", "buzzer.json/inside"), "cannot be opened"),
+        (("list", "--store", "buzzer.json/inside"), "there is no store"),
+        (("import", "buzzer.json", "--store", "buzzer.json/inside"), "cannot be opened"),
         (("schema", "--json"), "--json"),
     ],
 )

@@ -8,6 +8,8 @@ from collections.abc import Callable
 from contextlib import closing
 from pathlib import Path
 
+import pytest
+
 from stagebook.storage import Store
 
 Said = tuple[int, str, str]
@@ -47,6 +49,30 @@ def test_inspection_names_what_does_not_match(stagebook: Callable[..., Said], tm
     # The missing trigger, and the third revision of every design.
     assert len(found["problems"]) == 1 + len(counted(stagebook))
     assert [problem.startswith("'flood' r3") for problem in found["problems"]].count(True) == 1
+
+
+def test_what_a_later_version_keeps_is_not_said_to_be_as_it_was_saved(
+    stagebook: Callable[..., Said], tmp_path: Path
+) -> None:
+    stagebook("list")
+    with closing(sqlite3.connect(tmp_path / "shelf.sqlite3")) as raw:
+        raw.execute("PRAGMA user_version = 9")
+    status, out, err = stagebook("inspect")
+    assert status == 0
+    assert "a later Stagebook" in err
+    assert "The file is whole." in out
+    assert "was not looked at" in out
+    assert "Everything" not in out
+
+
+@pytest.mark.parametrize("command", [["list"], ["inspect"], ["backup", "copy"], ["margins", "flood"], ["drawer"]])
+def test_a_slip_in_the_name_of_a_store_is_no_empty_shelf(
+    refused: Callable[..., str], stagebook: Callable[..., Said], tmp_path: Path, command: list[str]
+) -> None:
+    assert "there is no store shelv.sqlite3; name one that is there" in refused(*command, "--store", "shelv.sqlite3")
+    assert list(tmp_path.iterdir()) == []
+    stagebook("demo", "--only-store", "--store", "shelv.sqlite3")
+    assert stagebook("list", "--store", "shelv.sqlite3")[0] == 0
 
 
 def test_a_copy_goes_over_no_foreign_file(
