@@ -226,4 +226,4 @@ def test_a_name_is_taken_once(refused: Refused, stagebook: Run, written: Path) -
 
 def test_a_misspelt_name_is_helped(refused: Refused, stagebook: Run, written: Path) -> None:
     stagebook("import", written)
-    assert '"buzzer"' in refused("export", "buzer", "out.json")
+    assert "'buzzer'" in refused("export", "buzer", "out.json")
