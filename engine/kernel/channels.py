@@ -106,7 +106,7 @@ def extrapolate_channels(
 ) -> None:
     """Take the currents of channels a step further by the tangents; add to bend by how much the law departs, exactly.
 
-    See :func:`.assemble.extrapolate`.
+    See :func:`.tangents.extrapolate`.
     """
     first = group[CHANNEL]
     two_ended = group[TRANSPORT] - group[JUNCTION]

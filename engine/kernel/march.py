@@ -6,48 +6,61 @@ another, and a lane that ends makes room for the next.
 
 from __future__ import annotations
 
-import math
-from typing import Any, NamedTuple
-
 import numpy as np
 
-from .assemble import evaluate, extrapolate, linear_matrices
-from .compiled import compiled, leaf
+from .assemble import evaluate, linear_matrices
+from .compiled import compiled
+from .course import begin_lane, keep_states, next_segment, set_sources, set_switches, trace
 from .elimination import factor, substitute, substitute_two
 from .guards import move_guards, next_due, rest_guards, watch_guards
 from .lasting import note_lasting
 from .layout import (
-    CHANNEL,
-    CHANNEL_SLOPES,
-    CONTACT,
     DONE,
     FAMILIES,
     GUARD,
-    JUNCTION,
     OVERWORKED,
     SEEN,
-    SLOPES,
     STOPPED,
     TRACE_FULL,
-    TRANSPORT,
     UNSOLVED,
-    WARM,
-    WARM_SLOPES,
     Bytes,
     Control,
     Floats,
-    Ints,
-    Places,
     Program,
     Results,
     Rows,
     Topology,
-    zeros,
 )
 from .newton import advance, residual, solved_by, worst_unknown
 from .rows import close_rows, open_rows, read_signals, watch
 from .steps import GAMMA, A, begin_end, begin_stage, error_of, growth, keep_parabola, left_over, surprise, take
+from .tangents import extrapolate
 from .vectors import WIDTH, any_of, at, flag, put, same, where
+from .work import (
+    AH,
+    ASKED,
+    BASE,
+    BEGAN,
+    CARRY,
+    ERROR,
+    GROWTH,
+    LAST,
+    LEFT,
+    LENGTH,
+    LIMITED,
+    LONGEST,
+    MOST,
+    NEXT,
+    NOW,
+    REACH,
+    ROUND,
+    SPAN,
+    STOP,
+    SURPRISE,
+    TOOK,
+    Work,
+    work_for,
+)
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
 FIRST = 1e-10  # s, the first step after it
@@ -62,179 +75,6 @@ IDLE, GLANCE, LEAP, STAGE, END = 0, 1, 2, 3, 4
 # What came of an iterate.
 NOTHING, LOOKED, LEAPT, STAGED, ARRIVED, AGAIN, STARTS, FINISHED = 0, 1, 2, 3, 4, 5, 6, 7
 NOT_ENDED = -1
-
-# Rows of ``Work.clock``: numbers of each lane.
-AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma h; h; the step before
-ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
-LIMITED, ERROR, GROWTH = 7, 8, 9
-NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14, 15, 16, 17, 18
-BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
-CLOCK = 21
-
-
-class Work(NamedTuple):
-    """Arrays to work in, one column per lane of the row."""
-
-    x: Floats  # (n_all, WIDTH) the iterate; then start and stage of the step: voltages, charges, currents
-    q: Floats
-    i: Floats
-    x0: Floats
-    q0: Floats
-    i0: Floats
-    xg: Floats
-    qg: Floats
-    ig: Floats
-    di: Floats  # what Newton's step changes of i and q, the step, and what it leaves over
-    dq: Floats
-    step: Floats
-    bend: Floats
-    first: Floats  # (n_free, WIDTH) parabola of the step before
-    second: Floats
-    constant: Floats
-    tolerance: Floats
-    error: Floats
-    noise: Floats  # what round-off makes of the charges, and what may be left of a residual
-    allowed: Floats
-    expected: Floats  # where the end of the step was thought to lie
-    a: Floats  # (entries + 1, WIDTH) matrix and then its factors, and the linear part of C and of G
-    c: Floats
-    g: Floats
-    seen: Floats  # (devices, WIDTH) junction and channel voltages, then device currents
-    seen0: Floats
-    flow: Floats
-    flow0: Floats
-    flow_g: Floats
-    slope: Floats  # (slopes of devices, WIDTH)
-    p: Floats  # (parameters, WIDTH)
-    source: Floats  # (sources, WIDTH), and as many of 0
-    nothing: Floats
-    clock: Floats  # (CLOCK, WIDTH)
-    s0: Floats  # (signals, WIDTH) signals at start, stage and end of the step
-    sg: Floats
-    s1: Floats
-    window: Floats  # (WIDTH, rows, 2)
-    listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
-    listed_until: Floats  # (WIDTH,) s, when to list them anew
-    best: Floats  # (lasting rows, WIDTH) extremes and integrals so far, and when
-    best_at: Floats
-    phase: Ints  # (WIDTH,) and so the next
-    came: Ints
-    failed: Ints
-    lane: Ints
-    segment: Ints
-    moving: Ints
-    told: Ints  # (WIDTH, guards) what each guard was told last; (WIDTH, guards + contacts) when it moves, and how often
-    due: Floats
-    left: Ints
-    diagonal: Places  # (n_free,) slot of an unknown's diagonal
-
-
-def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
-    """Arrays for the lanes of one row."""
-    free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
-    transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
-    junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
-    channels = int(top.group[CHANNEL + 1]) - int(top.group[CHANNEL])
-    warm = int(top.group[WARM + 1]) - int(top.group[WARM])
-    devices = junctions + 2 * (transports + channels + warm)
-    slopes = 2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels + int(WARM_SLOPES) * warm
-    signals = rows.signal.size - 1
-    guards = int(top.group[CONTACT]) - int(top.group[GUARD])
-    contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
-    diagonal = np.zeros(free, dtype=np.uint32)
-    diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
-    arrays: list[Any] = [
-        *(zeros(n_all, WIDTH) for _ in range(13)),
-        *(zeros(free, WIDTH) for _ in range(8)),
-        *(zeros(entries + 1, WIDTH) for _ in range(3)),
-        *(zeros(devices, WIDTH) for _ in range(5)),
-        zeros(slopes, WIDTH),
-        zeros(parameters, WIDTH),
-        zeros(sources, WIDTH),
-        zeros(sources, WIDTH),
-        zeros(CLOCK, WIDTH),
-        *(zeros(signals, WIDTH) for _ in range(3)),
-        zeros(WIDTH, rows.row.shape[0], 2),
-        np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
-        zeros(WIDTH),
-        zeros(rows.lasting.size, WIDTH),
-        zeros(rows.lasting.size, WIDTH),
-        *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
-        np.zeros((WIDTH, guards), dtype=np.int64),
-        zeros(WIDTH, guards + contacts),
-        np.zeros((WIDTH, guards + contacts), dtype=np.int64),
-        diagonal,
-    ]
-    return Work(*arrays)
-
-
-@leaf
-def set_sources(
-    source: Floats,
-    sine: Floats,
-    lane: int,
-    segment: int,
-    base: float,
-    t: float,
-    n_free: int,
-    known: int,
-    w: int,
-    out: Floats,
-    x: Floats,
-) -> None:
-    """Set every source to its value at t seconds after the segment's start at base, and the known nets in x to it."""
-    for k in range(out.shape[0]):
-        v = source[lane, segment, k, 0] + source[lane, segment, k, 1] * t
-        if sine[lane, k, 0] != 0.0:
-            v += sine[lane, k, 0] * math.sin(2.0 * math.pi * sine[lane, k, 1] * (base + t) + sine[lane, k, 2])
-        out[k, w] = v
-        if k < known:
-            x[n_free + k, w] = v
-
-
-@leaf
-def set_switches(switched: Ints, switch: Floats, lane: int, segment: int, t: float, w: int, p: Floats) -> int:
-    """Set the parameters that events move; return 1 where any of them moves within this segment."""
-    moving = 0
-    for k in range(switched.size):
-        if switch[lane, segment, k, 1] != 0.0:
-            moving = 1
-        p[switched[k], w] = switch[lane, segment, k, 0] + switch[lane, segment, k, 1] * t
-    return moving
-
-
-@leaf
-def keep_states(
-    keep_row: Ints, status: Ints, x: Floats, at_time: float, w: int, lane: int, kept: Floats, kept_at: Floats
-) -> None:
-    """Keep the state at the end of the step in which a row was seen for which that was asked."""
-    for k in range(keep_row.size):
-        if kept_at[lane, k] < 0.0 and status[lane, keep_row[k]] == SEEN:
-            kept_at[lane, k] = at_time
-            for n in range(x.shape[0]):
-                kept[lane, k, n] = x[n, w]
-
-
-@leaf
-def trace(x: Floats, w: int, when: float, times: Floats, values: Floats, used: Ints) -> bool:
-    """Keep a point of the only lane; return False where there is no more room."""
-    n = used[0]
-    if n >= times.size:
-        return False
-    times[n] = when
-    for k in range(x.shape[0]):
-        values[n, k] = x[k, w]
-    used[0] = n + 1
-    return True
-
-
-@leaf
-def next_segment(length: Floats, lane: int, after: int) -> int:
-    """Return the next segment that takes time, or as many as there are."""
-    k = after + 1
-    while k < length.shape[1] and length[lane, k] <= 0.0:
-        k += 1
-    return k
 
 
 @compiled
@@ -301,24 +141,9 @@ def march_rows(
                     upcoming += 1
                     running += 1
                     lane_of[w] = lane
-                    for k in range(p.shape[0]):
-                        p[k, w] = table[lane, k]
-                    for k in range(x.shape[0]):
-                        x[k, w] = starts[lane, k]
-                    for k in range(seen.shape[0]):
-                        seen[k, w] = 0.0
+                    begin_lane(w, lane, table, starts, sine, p, x, seen, counts, clock)
                     open_rows(row, offset, w, lane, window, value, time, status, best)
                     listed_until[w] = -1.0
-                    for k in range(counts.shape[1]):
-                        counts[lane, k] = 0
-                    fastest = 0.0
-                    for k in range(sine.shape[1]):
-                        if sine[lane, k, 0] != 0.0:
-                            fastest = max(fastest, sine[lane, k, 1])
-                    clock[LONGEST, w] = 0.05 / fastest if fastest > 0.0 else math.inf
-                    clock[BASE, w] = 0.0
-                    clock[AH, w] = 0.0
-                    clock[ROUND, w] = 0.0
                     clock[MOST, w] = GLANCES
                     segment_of[w] = min(next_segment(spans, lane, -1), spans.shape[1] - 1)
                     set_switches(switched, switch, lane, segment_of[w], 0.0, w, p)

@@ -131,7 +131,7 @@ def extrapolate_warm(
 ) -> None:
     """Take currents and heats a step further by the tangents; add to bend by how much the law departs, exactly.
 
-    See :func:`.assemble.extrapolate`.
+    See :func:`.tangents.extrapolate`.
     """
     first = group[WARM]
     two_ended = group[TRANSPORT] - group[JUNCTION]

@@ -1,0 +1,131 @@
+"""The arrays that one row of lanes is stepped in, and the numbers that every lane has of its own."""
+
+from __future__ import annotations
+
+from typing import Any, NamedTuple
+
+import numpy as np
+
+from .layout import (
+    CHANNEL,
+    CHANNEL_SLOPES,
+    CONTACT,
+    FAMILIES,
+    GUARD,
+    JUNCTION,
+    SLOPES,
+    TRANSPORT,
+    WARM,
+    WARM_SLOPES,
+    Floats,
+    Ints,
+    Places,
+    Rows,
+    Topology,
+    zeros,
+)
+from .vectors import WIDTH
+
+# Rows of ``Work.clock``: numbers of each lane.
+AH, CARRY, REACH, LENGTH, LAST = 0, 1, 2, 3, 4  # a h; a h or 0 in a jump; gamma h; h; the step before
+ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
+LIMITED, ERROR, GROWTH = 7, 8, 9
+NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14, 15, 16, 17, 18
+BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
+CLOCK = 21
+
+
+class Work(NamedTuple):
+    """Arrays to work in, one column per lane of the row."""
+
+    x: Floats  # (n_all, WIDTH) the iterate; then start and stage of the step: voltages, charges, currents
+    q: Floats
+    i: Floats
+    x0: Floats
+    q0: Floats
+    i0: Floats
+    xg: Floats
+    qg: Floats
+    ig: Floats
+    di: Floats  # what Newton's step changes of i and q, the step, and what it leaves over
+    dq: Floats
+    step: Floats
+    bend: Floats
+    first: Floats  # (n_free, WIDTH) parabola of the step before
+    second: Floats
+    constant: Floats
+    tolerance: Floats
+    error: Floats
+    noise: Floats  # what round-off makes of the charges, and what may be left of a residual
+    allowed: Floats
+    expected: Floats  # where the end of the step was thought to lie
+    a: Floats  # (entries + 1, WIDTH) matrix and then its factors, and the linear part of C and of G
+    c: Floats
+    g: Floats
+    seen: Floats  # (devices, WIDTH) junction and channel voltages, then device currents
+    seen0: Floats
+    flow: Floats
+    flow0: Floats
+    flow_g: Floats
+    slope: Floats  # (slopes of devices, WIDTH)
+    p: Floats  # (parameters, WIDTH)
+    source: Floats  # (sources, WIDTH), and as many of 0
+    nothing: Floats
+    clock: Floats  # (CLOCK, WIDTH)
+    s0: Floats  # (signals, WIDTH) signals at start, stage and end of the step
+    sg: Floats
+    s1: Floats
+    window: Floats  # (WIDTH, rows, 2)
+    listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
+    listed_until: Floats  # (WIDTH,) s, when to list them anew
+    best: Floats  # (lasting rows, WIDTH) extremes and integrals so far, and when
+    best_at: Floats
+    phase: Ints  # (WIDTH,) and so the next
+    came: Ints
+    failed: Ints
+    lane: Ints
+    segment: Ints
+    moving: Ints
+    told: Ints  # (WIDTH, guards) what each guard was told last; (WIDTH, guards + contacts) when it moves, and how often
+    due: Floats
+    left: Ints
+    diagonal: Places  # (n_free,) slot of an unknown's diagonal
+
+
+def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
+    """Arrays for the lanes of one row."""
+    free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
+    transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
+    junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
+    channels = int(top.group[CHANNEL + 1]) - int(top.group[CHANNEL])
+    warm = int(top.group[WARM + 1]) - int(top.group[WARM])
+    devices = junctions + 2 * (transports + channels + warm)
+    slopes = 2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels + int(WARM_SLOPES) * warm
+    signals = rows.signal.size - 1
+    guards = int(top.group[CONTACT]) - int(top.group[GUARD])
+    contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
+    diagonal = np.zeros(free, dtype=np.uint32)
+    diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
+    arrays: list[Any] = [
+        *(zeros(n_all, WIDTH) for _ in range(13)),
+        *(zeros(free, WIDTH) for _ in range(8)),
+        *(zeros(entries + 1, WIDTH) for _ in range(3)),
+        *(zeros(devices, WIDTH) for _ in range(5)),
+        zeros(slopes, WIDTH),
+        zeros(parameters, WIDTH),
+        zeros(sources, WIDTH),
+        zeros(sources, WIDTH),
+        zeros(CLOCK, WIDTH),
+        *(zeros(signals, WIDTH) for _ in range(3)),
+        zeros(WIDTH, rows.row.shape[0], 2),
+        np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
+        zeros(WIDTH),
+        zeros(rows.lasting.size, WIDTH),
+        zeros(rows.lasting.size, WIDTH),
+        *(np.zeros(WIDTH, dtype=np.int64) for _ in range(6)),
+        np.zeros((WIDTH, guards), dtype=np.int64),
+        zeros(WIDTH, guards + contacts),
+        np.zeros((WIDTH, guards + contacts), dtype=np.int64),
+        diagonal,
+    ]
+    return Work(*arrays)
