@@ -167,7 +167,8 @@ class Program:
         if select.select([self._master], [], [], seconds)[0]:
             # An escape sequence may be cut where this reading ends: all of it is taken out of the whole.
             self.raw += os.read(self._master, 1 << 16).decode(errors="replace")
-            self.text = _STEERING.sub("", self.raw)
+            # Where all is drawn anew the lines have no blanks at their ends: one stands there in either case.
+            self.text = _STEERING.sub("", self.raw).replace("\n", " \n")
         return self.text
 
     def until(self, *words: str, after: int = 0, seconds: float = PATIENCE) -> int:
