@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
+import codecs
 import fcntl
 import json
 import os
 import pty
-import re
 import select
 import signal
 import socket
@@ -19,8 +19,9 @@ from pathlib import Path
 from types import TracebackType
 from typing import Any, Protocol, Self
 
+from .terminal_lines import TerminalLines
+
 PATIENCE = 120.0
-_STEERING = re.compile(r"\x1b(\[[0-?]*[ -/]*[@-~]|[@-Z\\-_])")
 
 
 def environment(home: Path) -> dict[str, str]:
@@ -134,8 +135,8 @@ class _Forked:
 class Program:
     """The program on a command line, with a terminal of 80x24. ``start`` is what starts it.
 
-    ``attributes`` are the settings of the terminal before it began. What it draws is followed as one text without
-    what steers the terminal: a line of a widget is drawn as a whole, so that what it says stands there in one piece.
+    ``attributes`` are the settings of the terminal before it began. What it draws is followed as one text: of every
+    drawing the lines that it changed, as they then stand on the screen.
     """
 
     def __init__(self, *arguments: str | Path, home: Path, start: Any = executed, **how: bool) -> None:
@@ -143,6 +144,8 @@ class Program:
         fcntl.ioctl(self._slave, termios.TIOCSWINSZ, struct.pack("HHHH", 24, 80, 0, 0))
         os.set_blocking(self._master, False)
         self.attributes = termios.tcgetattr(self._slave)
+        self._decoder = codecs.getincrementaldecoder("utf-8")("replace")
+        self._lines = TerminalLines()
         self.raw = ""
         self.text = ""
         self.process: Running = start(self._slave, [str(argument) for argument in arguments], home, **how)
@@ -165,10 +168,9 @@ class Program:
     def read(self, seconds: float = 0.0) -> str:
         """Everything drawn so far, after waiting so long for more."""
         if select.select([self._master], [], [], seconds)[0]:
-            # An escape sequence may be cut where this reading ends: all of it is taken out of the whole.
-            self.raw += os.read(self._master, 1 << 16).decode(errors="replace")
-            # Where all is drawn anew the lines have no blanks at their ends: one stands there in either case.
-            self.text = _STEERING.sub("", self.raw).replace("\n", " \n")
+            data = self._decoder.decode(os.read(self._master, 1 << 16))
+            self.raw += data
+            self.text += self._lines.feed(data)
         return self.text
 
     def until(self, *words: str, after: int = 0, seconds: float = PATIENCE) -> int:
