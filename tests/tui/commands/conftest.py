@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import json
 from collections.abc import Callable
+from functools import cache
 from pathlib import Path
 from typing import Any
 
 import pytest
 
 from stagebook.engine.design.document import Design
+from stagebook.engine.results import MarginSheet
 from stagebook.engine.studies.margins import study
 from stagebook.storage import Note, Store
 from stagebook.tui import app
@@ -173,9 +175,15 @@ def shelve(document: dict[str, Any], tmp_path: Path) -> Callable[..., None]:
                     store.edit("buzzer", "values", design)
                 else:
                     store.create("buzzer", design)
-                store.save("buzzer", Note(f"try {place + 1}"), study(design))
+                store.save("buzzer", Note(f"try {place + 1}"), _margins_of(design.canonical()))
 
     return put
+
+
+@cache
+def _margins_of(document: bytes) -> MarginSheet:
+    """The margins of a document, computed once for all tests that put it on a shelf."""
+    return study(Design.load(document))
 
 
 @pytest.fixture
