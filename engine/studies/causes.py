@@ -136,10 +136,15 @@ class _Side:
         self.asks = {ask.id: ask for ask in asks}
         if sheet is not None and sheet.content == design.content and sheet.engine == ENGINE:
             kept = {check.id: Setting.from_kept(check.setting) for check in sheet.checks}
-            if sheet.depth is not Depth.NOMINAL and self.asks.keys() <= kept.keys():
+            if sheet.depth is not Depth.NOMINAL and self.asks.keys() <= kept.keys() and not _too_large(sheet):
                 self.corners = kept
                 return
         self.corners = {name: corner.setting for name, corner in worst_corners(circuit, asks, cancelled).items()}
+
+
+def _too_large(sheet: MarginSheet) -> bool:
+    """Whether the corners were not searched (:mod:`.effort`): a margin that is known in the nominal lane only."""
+    return any(check.margin is None and check.nominal is not None and not check.setting for check in sheet.checks)
 
 
 def _players(changes: Sequence[Change]) -> list[_Player]:

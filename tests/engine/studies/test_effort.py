@@ -21,12 +21,13 @@ from stagebook.engine.primitives.signals import Row
 from stagebook.engine.results import Verdict
 from stagebook.engine.run import MOST_SECONDS, MOST_STEPS, Observed, control, most_steps, run
 from stagebook.engine.studies import effort, evaluate, skipped, trials
+from stagebook.engine.studies.causes import causes
 from stagebook.engine.studies.diagnosis import diagnosed
 from stagebook.engine.studies.evaluate import asks_of, look
 from stagebook.engine.studies.margins import study, worst_corners
 
 from ..circuits import Json, Setup, capacitor, resistor, setup, transistor
-from .units import latch, timer
+from .units import changed, latch, timer
 
 MODEL: Json = {"class": "small npn"}
 
@@ -150,6 +151,10 @@ def test_a_design_that_is_too_large_for_its_corners_passes_nothing_and_says_so(m
     circuit = build(design)
     with pytest.raises(CircuitError, match="too large for its corners"):
         worst_corners(circuit, asks_of(circuit))
+    # Margins that are known at nominal only are not taken for worst ones when somebody asks what changed them.
+    other = Design.load(changed(latch(), R3="82k"))
+    with pytest.raises(CircuitError, match="too large for its corners"):
+        causes(design, other, stored=sheet, stored_new=study(other))
 
 
 def test_growing_modes_are_the_same_however_many_states_are_in_memory(monkeypatch: pytest.MonkeyPatch) -> None:
