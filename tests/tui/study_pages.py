@@ -1,22 +1,25 @@
-"""What the tests of screens that a study fills have in common: a study that waits, and the way to its screen."""
+"""Made-up studies that fill a screen of their own and wait to be let go on, and the way to these screens."""
 
 from __future__ import annotations
 
 import threading
 from collections.abc import Callable
+from dataclasses import replace
 from typing import Any
 
 from textual.pilot import Pilot
 
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import Cancelled, CircuitError
-from stagebook.tui.messages import SolverPreparing
-from stagebook.tui.screens.bench import BenchScreen
+from stagebook.engine.studies.fault_outcomes import SAID, FaultResult, FaultSheet, Outcome
+from stagebook.engine.studies.immunity_sheet import NOT_YET, ImmunitySheet, NetImmunity
 from stagebook.tui.screens.study_page import StudyPage
 
-from .conftest import seen, settled, shown, until
+from .conftest import settled, until
 
 SIZE = (80, 24)
+BASE, RAIL = NetImmunity("nb", 2.2e-11, 1, "hot"), NetImmunity("rail", 2.4e-7, -1, "hot, low supply")
+NONE = NetImmunity("sense", None, None, "any")
 
 
 class MadeUpStudy:
@@ -56,31 +59,32 @@ async def open_study(pilot: Pilot[None], key: str) -> None:
     await until(pilot, lambda: isinstance(pilot.app.screen, StudyPage))
 
 
-async def leaving_gives_it_up(pilot: Pilot[None], key: str, study: MadeUpStudy) -> None:
-    await open_study(pilot, key)
-    await pilot.press("b")
-    await until(pilot, lambda: study.cancelled)
-    assert isinstance(pilot.app.screen, BenchScreen)
+def fault(part: str, outcome: Outcome, detail: str = "") -> FaultResult:
+    return FaultResult(
+        "latch", part, "open", outcome, SAID.get(outcome, "overheats R7"), detail, "LS1", "alarm", (), None, None, None
+    )  # fmt: skip
 
 
-async def a_refusal_is_said(pilot: Pilot[None], key: str, study: MadeUpStudy) -> None:
-    study.refusal = "no part tells when there is an alarm; give a sounder its operating_minimum"
-    await open_study(pilot, key)
-    await settled(pilot)
-    assert "operating_minimum" in seen(pilot)
-    assert "not computed" in shown(pilot)[0]
+def faults() -> MadeUpStudy:
+    """One part alarms otherwise, which is known first; two are silent."""
+
+    def first(design: Design) -> FaultSheet:
+        alarms = (fault("R3", Outcome.STILL_ALARMS, "for 12 s instead of 86 s"),)
+        return FaultSheet(design.name, design.content, "1", 0.1, (), None, alarms, ("LS1 is never called for",))
+
+    def whole(sheet: FaultSheet) -> FaultSheet:
+        return replace(sheet, faults=(fault("C4", Outcome.SILENT), fault("R9", Outcome.SILENT), *sheet.faults))
+
+    return MadeUpStudy(first, whole)
 
 
-async def it_says_what_it_waits_for(pilot: Pilot[None], key: str, study: MadeUpStudy) -> None:
-    """Until there are rows: the solver that is prepared, or the study; both end by themselves."""
-    await open_study(pilot, key)
-    page = pilot.app.screen
-    assert isinstance(page, StudyPage)
-    await until(pilot, lambda: bool(page.found.rows))
-    page.found.show([])
-    page.post_message(SolverPreparing(True))
-    await until(pilot, lambda: "the solver is being prepared, once on this machine" in seen(pilot))
-    page.post_message(SolverPreparing(False))
-    await until(pilot, lambda: "being computed; this fills by itself" in seen(pilot))
-    study.gate.set()
-    await until(pilot, lambda: bool(page.found.rows))
+def immunity() -> MadeUpStudy:
+    """A second corner shows a weaker net."""
+
+    def first(design: Design) -> ImmunitySheet:
+        return ImmunitySheet(design.name, design.content, 0.1, (RAIL, NONE), None, NOT_YET)
+
+    def whole(sheet: ImmunitySheet) -> ImmunitySheet:
+        return replace(sheet, nets=(BASE, RAIL, NONE), slew=97_089.0, slew_condition="hot, high supply")
+
+    return MadeUpStudy(first, whole)

@@ -1,16 +1,14 @@
-"""The screen of immunity: it fills corner by corner, the weakest net first, and leaving gives it up.
+"""The screen of immunity: it fills corner by corner, the weakest net first.
 
 What is expected is this project's own description of the screen; the charges are those of a made-up study.
 """
 
 from __future__ import annotations
 
-from collections.abc import Awaitable, Callable
 from dataclasses import replace
 
 import pytest
 
-from stagebook.engine.design.document import Design
 from stagebook.engine.studies.immunity_sheet import NOT_YET, ImmunitySheet, NetImmunity
 from stagebook.storage import Store
 from stagebook.tui.immunity_text import charge_words, immunity_rows, slew_words
@@ -19,30 +17,15 @@ from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 
 from .conftest import seen, settled, shown, until
-from .study_pages import (
-    SIZE,
-    MadeUpStudy,
-    a_refusal_is_said,
-    it_says_what_it_waits_for,
-    leaving_gives_it_up,
-    open_study,
-)
+from .study_pages import BASE, NONE, RAIL, SIZE, MadeUpStudy, open_study
+from .study_pages import immunity as made_up
 
-BASE, RAIL = NetImmunity("nb", 2.2e-11, 1, "hot"), NetImmunity("rail", 2.4e-7, -1, "hot, low supply")
-NONE, AT_ONCE = NetImmunity("sense", None, None, "any"), NetImmunity("nc", 0.0, 1, "hot")
-
-
-def first(design: Design) -> ImmunitySheet:
-    return ImmunitySheet(design.name, design.content, 0.1, (RAIL, NONE), None, NOT_YET)
-
-
-def whole(sheet: ImmunitySheet) -> ImmunitySheet:
-    return replace(sheet, nets=(BASE, RAIL, NONE), slew=97_089.0, slew_condition="hot, high supply")
+AT_ONCE = NetImmunity("nc", 0.0, 1, "hot")
 
 
 @pytest.fixture
 def immunity() -> MadeUpStudy:
-    return MadeUpStudy(first, whole)
+    return made_up()
 
 
 @pytest.fixture
@@ -70,14 +53,6 @@ async def test_it_fills_corner_by_corner_and_puts_the_weakest_first(
         assert "worst at: hot, low supply" in shown(pilot)[-3]
         await pilot.press("down")
         assert "sense: no charge up to 1 uC raises an alarm" in seen(pilot)
-
-
-@pytest.mark.parametrize("holds", [leaving_gives_it_up, a_refusal_is_said, it_says_what_it_waits_for])
-async def test_what_every_study_page_does(
-    with_study: StagebookApp, immunity: MadeUpStudy, holds: Callable[..., Awaitable[None]]
-) -> None:
-    async with with_study.run_test(size=SIZE) as pilot:
-        await holds(pilot, "I", immunity)
 
 
 def test_charges_and_bars() -> None:

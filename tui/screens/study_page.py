@@ -19,7 +19,7 @@ from .page import Page
 
 Sheet = TypeVar("Sheet")
 
-PREPARING = "the solver is being prepared, once on this machine: half a minute or so"
+PREPARING = "preparing the solver, once on this machine (30 s or so)"
 COMPUTING = "being computed"
 BY_ITSELF = "this fills by itself"
 
