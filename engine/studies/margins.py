@@ -133,6 +133,7 @@ def _unsearched(corners: dict[str, Corner], why: str) -> dict[str, Corner]:
     return {
         name: replace(
             corner,
+            words=corner.words if corner.broken else "",
             judged=replace(corner.judged, margin=np.full_like(corner.judged.margin, np.nan)),
             broken=corner.broken or why,
         )

@@ -143,6 +143,7 @@ def test_a_design_that_is_too_large_for_its_corners_passes_nothing_and_says_so(m
         assert check.spread is None
         if not str(plain[check.id].reason).startswith("missing"):
             assert str(check.reason).startswith("too large for its corners: ")
+            assert check.corner == ""  # no worst one is known
             assert "divide the design, or end sequence" in str(check.reason)
     # What the nominal lane showed is kept beside it, but for what a trial would have to tell.
     shown = [check for check in sheet.checks if check.nominal is not None]
