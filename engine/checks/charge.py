@@ -7,14 +7,17 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..design.sequence import ContactEvent
 from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY
-from ..primitives.signals import Anchor, level, maximum
+from ..primitives.signals import Anchor, Row, Signal, level, maximum
+from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .view import View
 
 ROLE = "standby_battery"
+SPIKE = 1e-3  # s after a contact has moved from which on a current counts, from memory
 
 
 def most_asks(check: Check, view: View) -> Iterator[Ask]:
@@ -31,26 +34,42 @@ def _most_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     allowed = None if limits is None else limits.max if limits.max is not None else limits.typical
     if allowed is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"charge_limits current of {part.ref}")
-    row = maximum(view.bench(part.ref).currents["plus"])
+    rows = _between_contacts(view, view.bench(part.ref).currents["plus"], sequence)
 
     def judge(seen: Seen) -> Judged:
-        current = np.maximum(0.0, seen.value(row, sequence))
+        current = np.max([np.maximum(0.0, np.nan_to_num(seen.value(row, sequence))) for row in rows], axis=0)
         by_hand = _by_hand(view, stage, part, seen)
         hand = None if by_hand is None else 1.0 - by_hand / allowed
         return ratio(current, np.full(seen.lanes.count, allowed), hand=hand)
 
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, (row,))
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
+
+
+def _between_contacts(view: View, current: Signal, sequence: str) -> tuple[Row, ...]:
+    """The largest current from a little after each move of a contact to the next: what its closing charges in
+    nanoseconds heats no battery."""
+    events = view.design.sequences[sequence].events
+    moved = sorted({0.0, *(read(each.at, "s") for each in events if isinstance(each, ContactEvent))})
+    ends = [*moved[1:], view.ends(sequence)]
+    return tuple(
+        maximum(current, Anchor(at + SPIKE), Anchor(end))
+        for at, end in zip(moved, ends, strict=True)
+        if end > at + SPIKE
+    )
 
 
 def _by_hand(view: View, stage: Stage, part: Part, seen: Seen) -> Floats | None:
-    """(supply - diode - battery) / R_charge, where the role charge_resistor is filled."""
+    """(supply - diode - batteries of the stage in series) / R_charge, where the role charge_resistor is filled."""
     resistor = view.role(stage, "charge_resistor")
-    source = view.circuit.builder.batteries.get(f"{part.ref} source")
-    if resistor is None or source is None or SUPPLY not in seen.lanes:
+    in_series = [cell.ref for place, _, cell in view.with_role(ROLE) if place is stage]
+    known = view.circuit.builder.batteries
+    sources = [known[name] for ref in in_series if (name := f"{ref} source") in known]
+    if resistor is None or not sources or SUPPLY not in seen.lanes:
         return None
     diode = view.role(stage, "charge_diode")
     found = None if diode is None else view.datum(diode, "forward_high", "V")
-    left = seen.lanes[SUPPLY] - (0.0 if found is None else found.typical) - source(seen.lanes)
+    battery = sum(np.asarray(source(seen.lanes)) for source in sources)
+    left = seen.lanes[SUPPLY] - (0.0 if found is None else found.typical) - battery
     return np.asarray(np.maximum(0.0, left) / seen.lanes[resistor.ref, "value"])
 
 
@@ -92,7 +111,7 @@ CHECKS = (
         title="charge current",
         unit="A",
         required=0.0,
-        formula="D = largest current into the battery, C = the charge current that it bears",
+        formula="D = largest current into it from 1 ms after a contact moved on, C = the charge current that it bears",
         asks=most_asks,
         worst="high supply, empty battery",
         by_hand="(supply - diode - battery voltage) / R_charge over what it bears",

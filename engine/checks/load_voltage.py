@@ -11,6 +11,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..design.sequence import Dip, DisconnectSupply, ReverseSupply, Surge
 from ..kernel.layout import Floats
 from ..parts import kinds
 from ..parts.physics import copper_factor
@@ -80,11 +81,18 @@ def _on_ask(
         given = np.where(np.isfinite(given), given, seen.value(most, sequence))
         never = given < REACHED * wanted
         words = check.words["never"].format(load=load.ref)
-        return ratio(wanted, given, [(never, words)], _hand(view, stage, load, seen.lanes, wanted))
+        hand = None if fed_otherwise(view, sequence) else _hand(view, stage, load, seen.lanes, wanted)
+        return ratio(wanted, given, [(never, words)], hand)
 
     return Ask(
         check, stage.name, load.ref, (sequence,), required, judge, (steady, most, *(() if warm is None else (warm,)))
     )
+
+
+def fed_otherwise(view: View, sequence: str) -> bool:
+    """Whether a sequence takes the supply away or moves it: what feeds the load then is not the supply's level."""
+    events = view.design.sequences[sequence].events
+    return any(isinstance(event, DisconnectSupply | ReverseSupply | Dip | Surge) for event in events)
 
 
 def _hand(view: View, stage: Stage, load: Part, lanes: Lanes, wanted: Floats) -> Floats | None:

@@ -43,7 +43,8 @@ def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
         assert bench.base_voltage is not None
         allowed = bench.base_voltage(seen.lanes, permitted)
         hand = None
-        if resistor is not None and bench.leakage is not None:
+        # A fail-safe driver is held off by another transistor, and not by leakage through its own resistor.
+        if resistor is not None and bench.leakage is not None and not rests:
             hand = 1.0 - np.asarray(bench.leakage(seen.lanes)) * seen.lanes[resistor.ref, "value"] / allowed
         return ratio(np.maximum(0.0, seen.value(across, sequence)), allowed, hand=hand)
 

@@ -55,6 +55,31 @@ def test_a_load_that_takes_more_than_the_charge() -> None:
     assert (found.verdict, found.margin) == (Verdict.FAIL, pytest.approx(1.0 - 20.29 / 15.0, abs=0.01))
 
 
+def test_a_contact_that_closes_charges_capacitances_and_no_battery() -> None:
+    # 1 uF at 15 V behind the contact meets 12.5 V across 1 ohm: 2.5 A for microseconds; then (15 - 12.5) V / 100 ohm.
+    of = trickle(resistance="1 ohm").dump()
+    of["stages"][0]["parts"][0]["pins"]["b"] = "top"
+    of["stages"][0]["parts"] += [
+        two("contact", "S1", "top", "cell"),
+        two("capacitor", "C1", "top", "0V", "1u", tolerance="0 %"),
+    ]
+    of["sequences"]["alarm"]["events"].append({"at": "0.5 s", "event": "close", "part": "S1"})
+    found = margin(Design.load(of), "charge_current", "G1")
+    assert (found.demand, found.verdict) == (pytest.approx(35e-3, rel=0.02), Verdict.PASS)
+
+
+def test_batteries_in_series_count_together_by_hand() -> None:
+    of = trickle().dump()
+    of["conditions"]["supply"] = {"min": "27 V", "nominal": "28 V", "max": "29 V"}
+    first = of["stages"][0]["parts"][1]
+    first["pins"] = {"plus": "cell", "minus": "middle"}
+    of["stages"][0]["parts"].append({**first, "ref": "G2", "pins": {"plus": "middle", "minus": "0V"}})
+    of["stages"][0]["roles"]["standby_battery_2"] = "G2"
+    found = margin(Design.load(of), "charge_current", "G1")
+    assert found.margin == pytest.approx(1.0 - (29.0 - 25.0) / 100.0 / 0.05, abs=2e-3)
+    assert found.hand == pytest.approx(found.margin, abs=1e-3)
+
+
 def test_what_is_missing_is_named() -> None:
     # A battery that must not be charged has no limit to write: it stays unknown.
     assert margin(trickle(limit=None), "charge_current", "G1").reason == "missing: charge_limits current of G1"
