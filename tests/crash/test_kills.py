@@ -88,10 +88,10 @@ class Trials:
             program.press("\r")
             # The head line and the line of the part are drawn in either order.
             at = max(program.until(*words, after=at) for words in (("draft", "not saved yet"), (" higher ",)))
-            benches, pending, says = [self.bench], list[Deed](), ""
+            benches, pending, said = [self.bench], list[Deed](), list[str]()
             for one in range(1 + chance.randrange(3)):
-                pending.append(deed(chance, benches[-1], chance.choice(("type", "step", "step", "undo", "redo")), says))
-                says = pending[-1].says
+                pending.append(deed(chance, benches[-1], chance.choice(("type", "step", "step", "undo", "redo")), said))
+                said.append(pending[-1].says)
                 benches.append(pending[-1].after)
                 pressed = time.monotonic()
                 program.press(pending[-1].keys)
@@ -101,7 +101,7 @@ class Trials:
                     self.answer += (time.monotonic() - pressed - self.answer) / 3
             if kind == "save":
                 at, pending = _awaited(program, at, pending), []
-            last = deed(chance, benches[-1], kind, says)
+            last = deed(chance, benches[-1], kind, said)
             pending.append(last)
             benches.append(last.after)
             program.press(last.keys)
@@ -117,7 +117,7 @@ class Trials:
             for number, each in enumerate(pending, told + 1):
                 place = program.text.find(each.says, at)
                 if place >= 0:
-                    at, told = place, number
+                    at, told = place + len(each.says), number
         found = told - 1 + self.look(benches[told - 1 :])
         self.told["told"] += told == len(benches)
         self.told["done, not told"] += found >= told
