@@ -34,6 +34,7 @@ SNAP = 10.0  # times the upper divider resistor: how much of a fired timer's swi
 MOST = 1e6  # ohm, a timing resistor above it is at the mercy of the board's leakage (common practice)
 FALL = 0.1  # of the rail that the output of an interval may lose in its pull-up
 HOLDS = 1.0  # s that what starts it stays on after the latest end of its time
+QUIET = 10e-9  # F across the output's base: 1 ms with its resistor (common practice)
 SINK = 0.2e-3  # A that a timer must be able to draw from a latch's base
 
 
@@ -82,7 +83,7 @@ def _make(plan: Plan) -> Made:
     plan.resistor(tau / farads, feed, charge, "timing_resistor", tolerance="1 %")
     plan.diode(charge, feed, "discharge_diode")
     upper, lower = (1.0 - share) * DIVIDER, share * DIVIDER
-    if mode != RESET:
+    if mode == INTERVAL:
         # At rest the feedback lies beside the upper resistor.
         upper *= 1.0 + 1.0 / SNAP
     upper = plan.resistor(upper, feed, ref, "threshold_upper_resistor", tolerance="1 %")
@@ -125,9 +126,16 @@ def _fired(plan: Plan, mode: str, output: Output, upper: float) -> Drive | None:
         return None
     low = plan.net("low")
     plan.transistor(low, fire, RETURN, "reset_device")
-    plan.resistor(SNAP * upper, low, ref, "feedback_resistor")
     if mode == DELAY:
-        return add_output(plan, output, low, feed)
+        # At rest no current may go through the output's base: a diode keeps it out of the feedback. A delay that is
+        # started by an edge must not give a pulse then: what its transistors couple is short against the capacitor's.
+        back = plan.net("back")
+        plan.diode(ref, back, "feedback_diode")
+        plan.resistor(SNAP * upper, low, back, "feedback_resistor")
+        drive = add_output(plan, output, low, feed)
+        plan.capacitor(QUIET, feed, plan.net("drive"), "base_capacitor_output_device", film=True)
+        return drive
+    plan.resistor(SNAP * upper, low, ref, "feedback_resistor")
     ohms = plan.resistor(output.ohms, feed, low, "pull_up_resistor", snap="down")
     plan.transistor(plan.port("rail"), low, plan.port("out"), "output_device", current=plan.next.current)
     drop = V_BE + ohms * max(plan.next.current, LEAST_OUTPUT) / plan.gain("npn", plan.next.current)

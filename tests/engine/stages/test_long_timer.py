@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 from stagebook.engine.errors import DesignError
+from stagebook.engine.primitives.columns import AMBIENT
 from stagebook.engine.primitives.signals import Anchor, minimum, voltage
 
 from .made import PIEZO, begins, choice, load_goes, made, run, seconds, value
@@ -35,6 +36,17 @@ def test_the_delay_is_near_what_was_asked_for(time: str, supply: tuple[str, str,
     assert closed == pytest.approx(wanted, rel=0.02)  # R of E96 makes up for C of E6
     # V_EB is taken as 0.5 V and leakage is left out when sizing.
     assert simulated == pytest.approx(wanted, rel=0.1)
+
+
+@pytest.mark.parametrize("supply", [("11 V", "12 V", "14 V"), ("22 V", "27 V", "29 V")])
+def test_a_delay_that_an_edge_starts_does_not_trip_the_latch_behind_it(supply: tuple[str, str, str]) -> None:
+    # From the project's own vault alarm, which fired as the door opened: hot, low V_BE, the contact closes in no time.
+    row = (CALL, choice("long_timer", "timer", time="20 s"), choice("complementary_latch", "latch"), PIEZO)
+    design = made(*row, supply=supply)
+    low = {(p.ref, "v_be"): 0.58 for p in design.stage("timer").parts if p.kind in ("npn", "pnp")}
+    on = load_goes(True, supply=float(supply[1].split()[0]))
+    seen = run(design, on, changes={**low, AMBIENT: 45.0})
+    assert seconds(seen, on) - begins(design) == pytest.approx(20.0, rel=0.15)
 
 
 def test_the_threshold_sets_resistor_and_capacitor_but_not_the_time() -> None:
