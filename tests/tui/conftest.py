@@ -173,7 +173,7 @@ _QUIET_ROUNDS = 12
 """Turns of the event loop without a message anywhere after which a key counts as handled."""
 
 
-async def _handled(min_sleep: float = 0.0, max_sleep: float = 1.0) -> None:
+async def _handled(min_sleep: float = 0.0, max_sleep: float = 5.0) -> None:
     """Returns when no message waits in any widget of the app that is driven, and what was to be drawn is drawn.
 
     Stands in for Textual's own wait, which looks at the processor: it takes 20 ms at least, twice for every key, and
@@ -185,10 +185,13 @@ async def _handled(min_sleep: float = 0.0, max_sleep: float = 1.0) -> None:
     quiet = 0
     while quiet < _QUIET_ROUNDS and time.monotonic() < end:
         await asyncio.sleep(0)
-        pumps = [app, *(pump for screen in app.screen_stack for pump in screen.walk_children(with_self=True))]
-        waits = app.keys_wait or any(pump.message_queue_size for pump in pumps)
+        if not app.is_running or not app.screen_stack:
+            return
+        widgets = [widget for screen in app.screen_stack for widget in screen.walk_children(with_self=True)]
+        waits = app.keys_wait or app.message_queue_size or app.screen._compositor.size != app.size
+        waits = waits or any(widget.message_queue_size or not widget.is_mounted for widget in widgets)
         quiet = 0 if waits else quiet + 1
-        if quiet == _QUIET_ROUNDS // 2:
+        if quiet == _QUIET_ROUNDS // 2 or app.screen._compositor.size != app.size:
             app.screen._on_timer_update()
 
 
