@@ -11,6 +11,7 @@ import math
 import re
 from dataclasses import dataclass
 from decimal import Decimal
+from functools import lru_cache
 
 from .errors import QuantityError
 from .units import PREFIXES, Unit, unit_named, units_with
@@ -48,6 +49,7 @@ def read(text: str, unit: str | None = None) -> float:
     return parse(text, unit).value
 
 
+@lru_cache(maxsize=4096)  # a study reads the same values of its document hundreds of times
 def parse(text: str, unit: str | None = None) -> Quantity:
     """As :func:`read`, with the unit that was found."""
     wanted = None if unit is None else unit_named(unit)
