@@ -96,7 +96,7 @@ LINE = 64  # bytes that a processor fetches at a time
 
 
 def lined_up(rows: int) -> Floats:
-    """Zeros (rows, WIDTH), each row of eight lanes within one line of the cache: a row across two takes twice as long."""
+    """Zeros (rows, WIDTH), every row within one line of the cache: a row across two takes twice as long."""
     spare = LINE // 8
     room = zeros(rows * WIDTH + spare)
     first = (-room.ctypes.data % LINE) // 8
