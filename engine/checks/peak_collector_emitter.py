@@ -34,14 +34,25 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         return unknown(check, stage.name, part.ref, sequences[0], required, f"{rated} of {part.ref}")
     allowed = view.derating("v_ceo", requirement) * rating.low
     across = maximum(voltage(part.pins[plus], part.pins[minus]).scaled(polarity(part)))
+    clamp = _clamped(view, stage, part.pins[plus])
 
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(across, sequence) for sequence in sequences], axis=0)
-        # By hand an off transistor without a coil stands at the supply.
-        hand = 1.0 - seen.lanes[SUPPLY] / allowed if SUPPLY in seen.lanes else None
+        # By hand an off transistor stands at the supply, and while it switches a coil off at what clamps that above it.
+        hand = 1.0 - (seen.lanes[SUPPLY] + clamp) / allowed if SUPPLY in seen.lanes else None
         return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed), hand=hand)
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(across,))
+
+
+def _clamped(view: View, stage: Stage, switched: str) -> float:
+    """Volts of the flyback diode, and of the zener in series with it, of a coil on this net; 0 where there is none."""
+    diode, zener = (stage.roles.get(f"flyback_{name}") for name in ("diode", "zener"))
+    if diode is None or switched not in view.design.part(diode).pins.values():
+        return 0.0
+    forward = view.datum(view.design.part(diode), "forward_high", "V")
+    stands = None if zener is None else view.datum(view.design.part(zener), "value", "V")
+    return sum(0.0 if found is None else found.typical for found in (forward, stands))
 
 
 def gate_asks(check: Check, view: View) -> Iterator[Ask]:
@@ -96,7 +107,7 @@ CHECKS = (
         formula="D = largest collector-emitter voltage of all sequences, C = derating x V_CEO",
         asks=asks,
         worst="high supply",
-        by_hand="the supply across it: a transistor that is off, without a coil",
+        by_hand="the supply across it and, with a coil, its clamp: V + V_flyback + V_zener",
     ),
     Check(
         number=8,

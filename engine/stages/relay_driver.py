@@ -20,7 +20,7 @@ from .kind import (
     StageKind,
     Wire,
 )
-from .plan import OVERDRIVE, RETURN, V_BE, Plan
+from .plan import OVERDRIVE, RETURN, V_BE, Plan, class_figure, snapped
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
 SPREAD = 0.1  # of the coil's resistance
@@ -31,6 +31,8 @@ ARMATURE = ("3 ms", "5 ms", "8 ms")
 BOUNCE: Json = {"for": "2 ms", "times": 3}
 CLEAN = 1e-3  # A, least current of a silver contact, from memory
 _LIMITS = ("min", "typical", "max")
+COLLECTOR_SHARE = 0.8  # of the driver's V_CEO that is used (common practice)
+LEAST_ZENER = 3.3  # V, below it zeners are soft (from memory)
 FAIL_SAFE = "fail-safe"
 
 
@@ -88,7 +90,13 @@ def _make(plan: Plan) -> Made:
         # The zener stands off more than the diode alone, so that the current falls faster.
         middle = plan.net("clamped")
         plan.diode(low, middle, "flyback_diode", name="1 A rectifier")
-        volts = write(plan.above_zero("rated"), "V")
+        least = class_figure("npn", plan.transistor_class("npn", _current(plan)), "v_ceo", "V").low
+        room = (COLLECTOR_SHARE * least - plan.supply.max - 1.0) / 1.1
+        if room < LEAST_ZENER:
+            raise plan.refused(
+                "clamp", f"{plan.supply.max:.3g} V leave no room for a zener below what the driver bears"
+            )
+        volts = write(snapped(min(plan.above_zero("rated"), room), "E24", "down"), "V")
         plan.part("D", "zener", {"anode": rail, "cathode": middle}, "flyback_zener", value=volts, **_ZENER)
     else:
         plan.diode(low, rail, "flyback_diode", name="1 A rectifier")
@@ -133,8 +141,8 @@ KIND = StageKind(
         "A transistor that draws a coil's current, a clamp for the coil's energy, and a contact. I_coil = V_max / (0.9"
         " R20 (234.5 + T_min)/254.5); I_B = overdrive x I_coil / h_FE,min. The hot coil needs V20 (234.5 + T)/254.5 to"
         " pick up: the lowest supply less all drops must reach it. It lets go after L/R ln((I R + V_k)/(I_do R + V_k)):"
-        " a plain diode holds it up to three times as long as a zener of the rated voltage. Fail-safe: pulled in at"
-        " rest, so that a lost supply or a failed driver alarms. Mains on its contact: isolation, clearances, fuse,"
+        " a plain diode holds it thrice as long as a zener (rated voltage, or what 0.8 V_CEO - V_max leaves)."
+        " Fail-safe: pulled in at rest, so that a lost supply alarms. Mains on a contact: isolation, clearances, fuse,"
         " a qualified person. Source: common practice (75 % to pick up, 10 % to drop out); decay in closed form."
     ),
     ports=(IN_PORT, RAIL_PORT, Port("out", Wire.OUT, "what its contact switches to the rail"), RETURN_PORT),

@@ -107,3 +107,25 @@ def test_a_divider_at_the_gate_counts_by_hand_and_a_missing_rating_is_named() ->
     assert judged().margin == pytest.approx(judged().hand, abs=1e-3)
     del data["v_gss"]
     assert judged().reason == "missing: v_gss of Q1"
+
+
+@pytest.mark.parametrize(("zener", "volts"), [(None, 0.72), ("5.1 V", 5.82)])
+def test_a_clamped_coil_counts_by_hand(zener: str | None, volts: float) -> None:
+    # 24 V and the clamp of a coil that is switched off: 0.7 V of a diode at 10 mA, 5.1 V of a zener; of 0.8 x 45 V.
+    coil = {"resistance": "1k", "inductance": "1 H", "pick_up": "12 V", "drop_out": "3 V", "armature_delay": "5 ms"}
+    parts = [
+        two("coil", "K1", "supply", "out", **coil),
+        two("diode", "D1", "out", "supply" if zener is None else "back", **{"class": "signal diode"}),
+        two("contact", "S1", "supply", "feed", form="break"),
+        exact(resistor("R1", "feed", "base", "10k")),
+        exact(resistor("R2", "base", "0V", "10k")),
+        transistor("Q1", "out", "base", "0V", data=DATA),
+    ]
+    roles = {"flyback_diode": "D1"}
+    if zener is not None:
+        parts.append(two("zener", "D2", "supply", "back", zener, tolerance="0 %", **{"class": "zener 0.5 W"}))
+        roles["flyback_zener"] = "D2"
+    events = [CONNECT, {"at": "0.5 s", "event": "open", "part": "S1"}]
+    found = margin(design(*parts, supply="24 V", roles=roles, events=events), "peak_collector_emitter", "Q1")
+    assert found.hand == pytest.approx(1.0 - (24.0 + volts) / 36.0, abs=1e-3)
+    assert found.margin == pytest.approx(found.hand, abs=0.02)

@@ -54,6 +54,12 @@ def test_moments_of_a_relay_are_told_by_the_load_behind_it() -> None:
 def test_a_quick_release_has_a_zener_and_may_be_asked_for() -> None:
     design = made(CALL, choice("relay_driver", "relay", clamp="zener", release="20 ms"))
     assert design.part(design.stage("relay").roles["flyback_zener"]).value == "12 V"
+    # A 24 V coil at 29 V: (0.8 x 45 V - 29 V - 1 V)/1.1 = 5.45 V, next lower of E24: 5.1 V.
+    row = (CALL, choice("relay_driver", "relay", clamp="zener", rated="24 V", coil="1440R"))
+    high = made(*row, supply=("27 V", "28 V", "29 V"))
+    assert high.part(high.stage("relay").roles["flyback_zener"]).value == "5.1 V"
+    with pytest.raises(DesignError, match="33 V leave no room for a zener"):
+        made(*row, supply=("27 V", "28 V", "33 V"))
     (asked,) = [each for each in design.requirements if each.check == "release"]
     assert (asked.of, asked.max) == (design.stage("relay").roles["load"], "20 ms")
 
