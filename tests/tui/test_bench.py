@@ -325,7 +325,7 @@ async def test_a_comparison_waits_for_the_corners_and_then_shows(app: StagebookA
         await to_timer(pilot)
         gates.shut("corners")
         await pilot.press("full_stop", "c")
-        assert "compares with r2 as soon as" in notice(pilot)
+        assert "compared with r2 as soon as" in notice(pilot)
         gates.open()
         await until(pilot, lambda: isinstance(pilot.app.screen, CompareScreen))
         await settled(pilot)

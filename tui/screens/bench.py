@@ -332,7 +332,7 @@ class BenchScreen(BenchView):
             self.say("no longer waiting to compare")
         elif sheet is None or sheet.depth is Depth.NOMINAL:
             self._compare_waits = True
-            self.say(f"compares with r{base.number} as soon as the draft's corners are known; c again: not any more")
+            self.say(f"compared with r{base.number} as soon as the corners are known; c again gives it up")
         else:
             self._compare_waits = False
             sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]

@@ -130,6 +130,7 @@ class StudyPage(Page[None], Generic[Sheet]):
             self._show()
             if at_top:
                 rows.action_first()
+                self._show_hand()
             if event.whole and self.last_words(sheet):
                 self.say(self.last_words(sheet))
 
