@@ -82,7 +82,7 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
     required = view.required(check.slug, check.required, requirement)
     trial = hold_trial_of(latch)
     assert trial.start is not None
-    current, feed = level(latch.current, trial.start), level(latch.rail, trial.start)
+    current = level(latch.current, trial.start)
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)
@@ -93,19 +93,16 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
             edge.values[trial.rows[0]],
             carried,
             [(edge.missing, check.words["missing"]), (edge.always, check.words["always"])],
-            _hand_hold(latch, seen, carried, seen.value(feed, sequence)),
+            _hand_hold(latch, seen, carried),
         )
 
     return Ask(
-        check, stage.name, pnp.ref, (sequence,), required, judge, (current, feed), trial,
+        check, stage.name, pnp.ref, (sequence,), required, judge, (current,), trial,
         screen=1.0 / (1.0 - required) if required < 1.0 else None,
     )  # fmt: skip
 
 
-def _hand_hold(latch: Latch, seen: Seen, carried: Floats, feed: Floats) -> Floats | None:
-    """The current of both base-emitter resistors over that of the latch; where the resistor that feeds the npn's base
-    has its role, at least V_BE (1 + R_fb/R_N) over what feeds the latch: below that nothing is left for the base."""
-    least = np.zeros(seen.lanes.count)
+def _hand_hold(latch: Latch, seen: Seen, carried: Floats) -> Floats | None:
     total = np.zeros(seen.lanes.count)
     for role, part in (("latch_npn", latch.npn), ("latch_pnp", latch.pnp)):
         resistor = latch.view.base_emitter_resistor(latch.stage, role)
@@ -113,11 +110,7 @@ def _hand_hold(latch: Latch, seen: Seen, carried: Floats, feed: Floats) -> Float
         if resistor is None or base_voltage is None:
             return None
         total = total + base_voltage(seen.lanes, 1e-4) / seen.lanes[resistor.ref, "value"]
-        if role == "latch_npn" and "feedback_resistor" in latch.stage.roles:
-            ohms = seen.lanes[latch.stage.roles["feedback_resistor"], "value"]
-            volts = base_voltage(seen.lanes, 1e-4) * (1.0 + ohms / seen.lanes[resistor.ref, "value"])
-            least = volts / np.where(feed > 0.0, feed, np.nan)
-    return np.asarray(1.0 - np.maximum(total / np.where(carried > 0.0, carried, np.nan), least))
+    return np.asarray(1.0 - total / np.where(carried > 0.0, carried, np.nan))
 
 
 def reset_asks(check: Check, view: View) -> Iterator[Ask]:
@@ -169,7 +162,7 @@ CHECKS = (
         asks=hold_asks,
         reads={"of": "Q4", "settle": "0.2 s"},
         worst="cold, low supply, weak h_FE",
-        by_hand="(V_BE,N / R_N + V_BE,P / R_P) / latch current, V_BE at 0.1 mA; at least V_BE,N (1 + R_fb/R_N) / feed",
+        by_hand="(V_BE,N / R_N + V_BE,P / R_P) / latch current, V_BE at 0.1 mA",
         accuracy=0.2,
         words={
             "missing": "the latch was never set",
