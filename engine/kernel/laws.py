@@ -110,6 +110,15 @@ def bent(v: Numbers, step: Numbers, p: Floats, j: int) -> tuple[Numbers, Flags]:
 
 
 @leaf
+def leaked(v: Numbers, step: Numbers, p: Floats, j: int) -> Numbers:
+    """Return by how much the leakage departs from its tangent at v a step further, in A."""
+    leakage = at(p, j + J_LEAKAGE)
+    away = v + step
+    share = 1.0 / (abs(v) + LEAKAGE_KNEE)
+    return leakage * (away / (abs(away) + LEAKAGE_KNEE) - v * share - LEAKAGE_KNEE * share * share * step)
+
+
+@leaf
 def side_currents(v: Numbers, p: Floats, j: int) -> tuple[Numbers, Numbers]:
     """Return the current and conductance of leakage and breakdown, the parts that carry no stored charge."""
     i = 0.0 * v

@@ -5,7 +5,7 @@ from __future__ import annotations
 from .assemble import linear_flows
 from .channels import extrapolate_channels
 from .compiled import leaf
-from .laws import bent
+from .laws import bent, leaked
 from .layout import (
     CHANNEL,
     E_A,
@@ -75,6 +75,7 @@ def extrapolate(
         more = more * g
         far = far | away
         spare = (ah + at(p, j + J_TRANSIT)) * more + 0.5 * c * at(p, j + J_PER_POTENTIAL) * v * v
+        spare = spare + ah * leaked(at(seen, k - first), v, p, j)
         add(flow, k - first, g * v)
         add(di, na, g * v)
         add(di, nb, -g * v)

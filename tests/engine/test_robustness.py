@@ -24,7 +24,7 @@ from stagebook.engine.studies.sequences import program_of
 from .random_stages import unit
 
 # Without those that take long, and with those that once could not be solved.
-USUAL = (*range(27, 87), 441, 1210, 1502, 1900)
+USUAL = (*range(27, 87), 95, 248, 327, 441, 1210, 1502, 1900)
 ALL = 2000
 ALLOWED = 0.001
 
