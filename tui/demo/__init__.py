@@ -6,8 +6,9 @@ from ...storage import Store
 from .flood import FLOOD
 from .frost import FROST
 from .tilt import TILT
+from .vault import VAULT
 
-DEMOS = (FLOOD, FROST, TILT)
+DEMOS = (FLOOD, FROST, TILT, VAULT)
 
 
 def put_on_shelf(store: Store) -> list[str]:
