@@ -71,7 +71,7 @@ VAULT = Demo(
         Step(
             Note(
                 "R33 from the rail: the latch has its own filter",
-                hypothesis="Before R32 the siren's start is worth half a volt across source and fuse, less behind a filter.",
+                hypothesis="Before R32 the siren's start is worth half a volt, and less behind a filter.",
                 change="R33 from sr to rail",
                 prediction="Self-dip above 90 %; delay and siren time do not move.",
                 result="A quarter of a volt of dip. Every required margin holds.",
