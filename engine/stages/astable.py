@@ -35,8 +35,8 @@ def _make(plan: Plan) -> Made:
         "sequence": "alarm",
         "from": swung,
         "to": f"{first} below {write(0.25 * plan.rail.min, 'V')}",
-        "min": write(0.5 * period * (1.0 - window), "s"),
-        "max": write(0.5 * period * (1.0 + window), "s"),
+        "min": write(0.5 * period * (1.0 - window), "s", digits=6),
+        "max": write(0.5 * period * (1.0 + window), "s", digits=6),
     }
     moments = {
         name: {"after": swung, "by": write(at * period, "s")} for name, at in (("sounding", 0.25), ("silent", 0.75))

@@ -104,8 +104,8 @@ def _make(plan: Plan) -> Made:
         "of": capacitor,
         "sequence": "alarm",
         **spans,
-        "min": write(time * (1.0 - window), "s"),
-        "max": write(time * (1.0 + window), "s"),
+        "min": write(time * (1.0 - window), "s", digits=6),
+        "max": write(time * (1.0 + window), "s", digits=6),
     }
     arrival: Json = {"check": "arrival", "of": capacitor, "sequence": "alarm", **spans}
     return Made(

@@ -53,8 +53,8 @@ def _make(plan: Plan) -> Made:
         "sequence": "alarm",
         "from": "{load} on",
         "to": "{load} off",
-        "min": write(time * (1.0 - window), "s"),
-        "max": write(time * (1.0 + window), "s"),
+        "min": write(time * (1.0 - window), "s", digits=6),
+        "max": write(time * (1.0 + window), "s", digits=6),
     }
     return Made(
         output=add_separate_output(plan, second, rail),

@@ -1,8 +1,9 @@
 """The margins of a design: nominal, worst corner with its name, and random spread.
 
 Corners: every combination of supply, ambient, source resistance, capacitor leakage and gain, supply and temperature
-also in the middle. At the two worst of them every check is tried again with all parts at the end of their tolerance
-that hurts it, as the change of its margin with one part at a time says. Trials: see :mod:`.trial_corners`.
+also in the middle. At the worst of them, and at the worst with each side of every condition, a check is tried again
+with all parts at the end of their tolerance that hurts it, as the change of its margin with one part at a time says.
+Trials: see :mod:`.trial_corners`.
 """
 
 from __future__ import annotations
@@ -29,10 +30,9 @@ from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, sett
 from .mirrored import with_mirrored
 from .spread import spread_of
 from .trial_corners import TrialCorners, part_ends
-from .vertices import lowest, sides
+from .vertices import sides, worst_conditions
 from .watch import watch
 
-WORST_CONDITIONS = 2  # corners of the conditions that are tried with part tolerances
 SAME = 1e-5  # a corner whose margin is less below the nominal one is not worse
 
 
@@ -166,7 +166,7 @@ def _corners(
             continue
         for metric in _metrics(judged[ask.id][0]):
             hurting = sides(metric[len(conditions) :], single)
-            for k in lowest(metric[: len(conditions)], WORST_CONDITIONS):
+            for k in worst_conditions(metric[: len(conditions)], conditions):
                 vertices.setdefault(Setting(conditions[k].axes, hurting), len(vertices))
     order = list(vertices)
     second = look(circuit, asks, lanes_of(columns, order), trials=wanted, progress=progress, cancelled=cancelled)

@@ -9,6 +9,8 @@ import numpy as np
 from ..kernel.layout import Floats
 from .lanes import Setting
 
+WORST = 2  # of all conditions are tried with part tolerances, whatever their sides
+
 
 def sides(slope: Floats, single: Sequence[Setting]) -> tuple[tuple[tuple[str, str], int], ...]:
     """The end of every part that makes ``slope`` smaller: its low and its high end in turn, as in ``single``.
@@ -29,3 +31,18 @@ def sides(slope: Floats, single: Sequence[Setting]) -> tuple[tuple[tuple[str, st
 def lowest(metric: Floats, most: int) -> list[int]:
     """Where the smallest values are, smallest first; what is NaN comes before all."""
     return [int(k) for k in np.argsort(np.nan_to_num(metric, nan=-np.inf), kind="stable")[:most]]
+
+
+def worst_conditions(metric: Floats, conditions: Sequence[Setting]) -> list[int]:
+    """The two worst conditions, and the worst one with each side of every axis: with the tolerances of parts another
+    end of the temperature may be worse than the one that is worst without them."""
+    order = lowest(metric, len(conditions))
+    chosen = dict.fromkeys(order[:WORST])
+    for axis in range(len(conditions[0].axes)):
+        met: set[int] = set()
+        for k in order:
+            side = conditions[k].axes[axis][1]
+            if side and side not in met:
+                met.add(side)
+                chosen.setdefault(k)
+    return list(chosen)

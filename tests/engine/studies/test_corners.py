@@ -12,6 +12,7 @@ from stagebook.engine.studies.corner_words import named
 from stagebook.engine.studies.evaluate import asks_of, judge, look
 from stagebook.engine.studies.lanes import Setting, axes, lanes_of, tolerances
 from stagebook.engine.studies.margins import study, worst_corners
+from stagebook.engine.studies.vertices import worst_conditions
 
 from ..circuits import Json
 from .units import CONDITIONS, changed, latch, load, timer
@@ -188,3 +189,13 @@ def test_where_nothing_that_matters_is_out_of_its_middle_all_that_is_gets_named(
     assert named(setting, {("R2", "value"): 1.0, ("R1", "value"): 0.01}) == "hot, R1 low"
     assert named(setting, {("R2", "value"): 1.0, ("R1", "value"): 0.5}) == "R1 low"
     assert named(setting, {}) == "hot, R1 low"
+
+
+def test_each_side_of_every_condition_is_tried_with_the_tolerances_of_parts() -> None:
+    # Worked by hand: metric = 2 supply + ambient, so that cold beats hot in every one of the worst; a part that counts
+    # in the heat only would never be met if the two worst were all.
+    turned = [(("conditions", "supply"), (-1, 1)), (("conditions", "ambient"), (-1, 0, 1))]
+    conditions = [Setting(((turned[0][0], s), (turned[1][0], a))) for s in turned[0][1] for a in turned[1][1]]
+    metric = np.array([2.0 * s + a for s in turned[0][1] for a in turned[1][1]])
+    chosen = [tuple(side for _, side in conditions[k].axes) for k in worst_conditions(metric, conditions)]
+    assert chosen == [(-1, -1), (-1, 0), (1, -1), (-1, 1)]
