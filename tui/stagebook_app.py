@@ -13,6 +13,7 @@ from textual.app import App
 from textual.binding import BindingType
 from textual.message_pump import MessagePump
 from textual.screen import Screen
+from textual.widget import Widget
 from textual.widgets import Input
 
 from ..storage.store import Store
@@ -50,7 +51,7 @@ class StagebookApp(App[None]):
         self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high"), (36, "-tall")]
         self.computing = Computing(solver)
         self._store = store
-        self._keys = KeyOrder(self._key, self._pumps)
+        self._keys = KeyOrder(self._key, self._pumps, self._stands)
 
     async def on_event(self, event: events.Event) -> None:
         """Keys go one at a time; everything else as in Textual."""
@@ -72,7 +73,16 @@ class StagebookApp(App[None]):
         await super().on_event(event)
 
     def _pumps(self) -> list[MessagePump]:
-        return [self, *self.screen.walk_children(with_self=True)]
+        # Also the screens behind: an answered question is handed to whoever asked it.
+        return [self, *(each for screen in self.screen_stack for each in screen.walk_children(with_self=True))]
+
+    def _stands(self) -> bool:
+        """Whether the screen in front is composed and the keyboard is where it shall be."""
+        if not self.is_running or not self.screen_stack:
+            return True
+        screen = self.screen
+        there = screen.is_mounted and all(each.is_mounted for each in screen.walk_children(Widget))
+        return there and (screen.focused is not None or not self.app_focus or not screen.focus_chain)
 
     def get_default_screen(self) -> Screen[None]:
         """The shelf."""
