@@ -13,8 +13,9 @@ from .design.document import Design
 from .design.part import Part
 from .errors import DesignError, QuantityError
 from .parts import kinds
+from .parts.classes import CLASSES
+from .parts.edited import objections, only_class, same_pins
 from .parts.made import OF_THE_PLACE, resolved
-from .parts.suitability import unreadable
 from .preferred import next_down, next_up, series_for
 from .quantity import read, write
 
@@ -34,6 +35,8 @@ def with_field(design: Design, ref: str, field: str, text: Any) -> Design:
     first, *rest = field.split(".")
     if first == "ref":
         raise DesignError(f"{_where(design, ref)}, field ref: a designator stays; add a part of the other name instead")
+    if first == "kind":
+        return with_kind(design, ref, str(text))
     inside = first in part.data or first not in _FIELDS
     path = ["data", first, *rest] if inside else [first, *rest]
 
@@ -41,10 +44,39 @@ def with_field(design: Design, ref: str, field: str, text: Any) -> Design:
         _put(_part_in(document, ref), path, text)
 
     edited = _edited(design, change)
-    kind = kinds().get(part.kind)
-    for words in unreadable(edited.part(ref), kind, ".".join(path)) if kind and text is not None else ():
-        raise DesignError(f"{_where(design, ref)}, field {field}: {words}")
+    if text is not None:
+        _suits(part, edited, path)
     return edited
+
+
+def with_kind(design: Design, ref: str, name: str) -> Design:
+    """A part of another kind with the same pins. A class that the kind does not have gives way to its only one."""
+    part = design.part(ref)
+    kind = kinds().get(name)
+    others = same_pins(part, kinds())
+    if kind is None or name not in (part.kind, *others):
+        offered = ", ".join(others) or "none: take it out and add another"
+        raise DesignError(f"{_where(design, ref)}, field kind: with these pins it could be {offered}")
+
+    def change(document: dict[str, Any]) -> None:
+        place = _part_in(document, ref)
+        place["kind"] = name
+        if part.class_ not in CLASSES.get(name, {}):
+            place.pop("class", None)
+            only = only_class(name)
+            if only is not None:
+                place["class"] = only
+
+    edited = _edited(design, change)
+    _suits(part, edited)
+    return edited
+
+
+def _suits(before: Part, edited: Design, path: list[str] | None = None) -> None:
+    """Raise DesignError for what the kind of an edited part says against it; fields not on ``path`` may be missing."""
+    for field, words in objections(before, edited.part(before.ref), kinds()):
+        if path is None or field.split(".")[: len(path)] == path or path[0] == field:
+            raise DesignError(f"{_where(edited, before.ref)}, field {field}: {words}")
 
 
 def with_value(design: Design, ref: str, text: str) -> Design:

@@ -6,6 +6,8 @@ from collections.abc import Collection, Sequence
 
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
+from ..engine.parts import kinds
+from ..engine.parts.edited import unusual_value
 from ..engine.parts.made import from_memory
 from ..engine.results import CheckResult, Depth, MarginSheet, Verdict
 from ..engine.stages.modified import is_modified
@@ -103,6 +105,18 @@ def part_lines(part: Part, role: str, was: str | None, lower: str | None, higher
     if higher:
         known.append(f"higher {higher}")
     return line(Span(first)), line(Span(" " + "   ".join(known)))
+
+
+def has_value(part: Part) -> bool:
+    """Whether the kind of a part reads a value."""
+    kind = kinds().get(part.kind)
+    return kind is None or "value" in kind.fields
+
+
+def valued(part: Part) -> str:
+    """A part's new value, and what is to be said of one that no such part is made with."""
+    unusual = unusual_value(part, kinds())
+    return f"{part.ref} {part.value or ''}{f': {unusual}' if unusual else ''}"
 
 
 def spread_words(sheet: MarginSheet, lanes: int) -> str:

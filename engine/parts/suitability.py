@@ -34,16 +34,6 @@ def unsuitable(part: Part, kind: Kind) -> Iterator[tuple[str, str]]:
     yield from _missing(part, kind)
 
 
-def unreadable(part: Part, kind: Kind, field: str) -> Iterator[str]:
-    """What is wrong with the text of one field (``value``, ``data.current``); nothing where the kind reads none."""
-    first, _, rest = field.partition(".")
-    key = rest.partition(".")[0] if first in ("data", "law") else first
-    known = kind.law if first == "law" else {**kind.data, **kind.fields}
-    if key in known:
-        entry = part.law.get(key) if first == "law" else part.entry(key)
-        yield from (words for _, words in _readings(field, entry, known[key]))
-
-
 def _pins(part: Part, kind: Kind) -> Iterator[tuple[str, str]]:
     if any(set(part.pins) == set(pins) for pins in kind.pins):
         return

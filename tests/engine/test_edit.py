@@ -66,7 +66,7 @@ def test_a_value_is_kept_as_typed_and_the_old_design_stays() -> None:
         ("LS1", "operating_minimum.max", "4 V", ["data", "operating_minimum"], {"typical": "3 V", "max": "4 V"}),
         ("LS1", "weight", "20", ["data", "weight"], "20"),
         ("Q3", "law.forward_gain", 99, ["law"], {"forward_gain": 99}),
-        ("R7", "leakage.conditioned", "1 uA", ["leakage"], {"conditioned": "1 uA"}),
+        ("R7", "rating", "0.25 W", ["rating"], "0.25 W"),
     ],
 )
 def test_a_field_is_written_where_the_part_has_it(
@@ -168,6 +168,11 @@ def test_a_requirement_replaces_the_one_it_is_about() -> None:
     [
         (lambda d: edit.with_value(d, "R9", "1k"), "there is no part 'R9' in the design; write"),
         (lambda d: edit.with_value(d, "R7", "4 V"), "stage driver, part R7, field value: '4 V' is a voltage where"),
+        (
+            lambda d: edit.with_field(d, "R7", "leakage.conditioned", "1 uA"),
+            "stage driver, part R7, field leakage: a resistor has no 'leakage'; leave it out (it has value, ",
+        ),
+        (lambda d: edit.with_field(d, "R7", "kind", "npn"), "stage driver, part R7, field kind: with these pins it"),
         (lambda d: edit.with_field(d, "R7", "ref", "R9"), "stage driver, part R7, field ref: a designator stays; add"),
         (
             lambda d: edit.with_field(d, "R7", "pins.b", "a b"),

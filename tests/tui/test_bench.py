@@ -172,7 +172,7 @@ async def test_a_circuit_that_cannot_be_computed_says_why_and_keeps_the_edit(
         await settled(pilot)
         await pilot.press("down", "up")
         # It holds until the circuit is another one.
-        assert notice(pilot) == "X net cap: nothing leads to 0V; connect it to a part"
+        assert notice(pilot) == "X cannot be computed: net cap: nothing leads to 0V; connect it to a part"
         assert value(shelf, "R7") == "430k"
         assert "+15~" in seen(pilot)
         gates.refusal = ""

@@ -16,6 +16,7 @@ from ...engine.results import Depth, MarginSheet
 from ...engine.studies.comparison import Side
 from ...storage.errors import StorageError
 from ...storage.values import Revision
+from ..bench_text import has_value, valued
 from ..caution_text import new_cautions
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
@@ -124,7 +125,11 @@ class BenchScreen(BenchView):
         if self.margins.has_focus:
             self.action_origin()
         elif self.ref is not None:
-            self._begin_entry(self.design.part(self.ref).value or "", typed=False)
+            part = self.design.part(self.ref)
+            if part.value is None and not has_value(part):
+                self.action_edit()
+            else:
+                self._begin_entry(part.value or "", typed=False)
 
     def _begin_entry(self, text: str, *, typed: bool) -> None:
         if self.ref is None:
@@ -138,7 +143,7 @@ class BenchScreen(BenchView):
         """Puts the value in; a refused one stays to be corrected."""
         ref = self.ref
         if ref is not None and self._edit(lambda: self.drafting.set_value(ref, event.text.strip())):
-            self.say(f"{ref} {self.design.part(ref).value or ''}")
+            self.say(valued(self.design.part(ref)))
             self._end_entry()
 
     def on_value_entry_left(self) -> None:
@@ -310,7 +315,9 @@ class BenchScreen(BenchView):
 
     def action_origin(self) -> None:
         """Where the chosen margin comes from."""
-        if self.chosen is None:
+        if self.trouble:
+            self.refuse(self.trouble, passing=False)
+        elif self.chosen is None:
             self.refuse("there is no margin under the hand yet")
         elif self.figures.frozen and self.drafting.changes():
             self.refuse("the figures are held back; f shows them first")
@@ -327,6 +334,8 @@ class BenchScreen(BenchView):
             self.refuse("nothing to compare with yet; s saves the first revision")
         elif self.figures.frozen:
             self.refuse("the figures are held back; f shows them first")
+        elif self.trouble:
+            self.refuse(f"nothing to compare: {self.trouble}")
         elif self._compare_waits:
             self._compare_waits = False
             self.say("no longer waiting to compare")

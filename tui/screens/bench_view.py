@@ -51,7 +51,8 @@ class BenchView(Page[None]):
         self._stage = 0
         self._hands: dict[str, str] = {}
         self._watched: str | None = None
-        self._refused = False
+        self.trouble = ""
+        """Why the draft cannot be computed as it stands."""
 
     def compose_body(self) -> ComposeResult:
         """Heading, chain, parts beside margins, the hand."""
@@ -141,7 +142,8 @@ class BenchView(Page[None]):
         names = [row.check.id for row in found]
         watched = self._watched if self._watched in names else next(iter(names), None)
         self.margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base), watched)
-        self.query_one("#worse", Rule).say(*worse_words(self.figures, base, not self.drafting.changes()))
+        worse = worse_words(self.figures, base, not self.drafting.changes())
+        self.query_one("#worse", Rule).say(*(("cannot be computed: w says why", "fail") if self.trouble else worse))
         self._show_hand()
 
     def show_heading(self) -> None:
@@ -187,8 +189,8 @@ class BenchView(Page[None]):
     def study(self) -> None:
         """The draft changed: a study begins, unless a revision holds its figures or this sitting computed them."""
         self.figures = self.figures.edited()
-        if self._refused:
-            self._refused = False
+        if self.trouble:
+            self.trouble = ""
             self.say("")
         known = self.drafting.stored_figures() or self.remembered.sheet(self.design.content)
         if known is not None:
@@ -226,9 +228,9 @@ class BenchView(Page[None]):
         """The circuit cannot be computed as it stands; the figures stay, marked old."""
         if event.request == self._request:
             self._progress = "not computed"
-            self.show_heading()
-            self.refuse(event.reason, passing=False)
-            self._refused = True
+            self.trouble = f"cannot be computed: {event.reason}"
+            self.show()
+            self.refuse(self.trouble, passing=False)
             self.no_sheet(event.reason)
 
     def no_sheet(self, reason: str) -> None:

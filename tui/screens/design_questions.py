@@ -15,6 +15,7 @@ from ...engine.design.part import Part, Stage
 from ...engine.errors import DesignError, EngineError
 from ...engine.parts import kinds
 from ...engine.parts.classes import CLASSES
+from ...engine.parts.edited import same_pins
 from ...engine.parts.kind import Kind
 from ...engine.results import CheckResult
 from ...storage.values import MadePart
@@ -75,6 +76,7 @@ def _ask_part(
     asked = [name for name, entry in kind.fields.items() if entry.needed or name in {"value", "tolerance", "class"}]
     fields = [Field("ref", "reference", free_reference(design, kind))]
     classes = ", ".join([*CLASSES.get(kind.name, ()), *(f"{name} (drawer)" for name in made)])
+    classes = f"such as {classes}" if classes else "a name of your own"
     fields += [Field(name, name, "", classes if name == "class" else kind.fields[name].about) for name in asked]
     fields += [Field(f"pin-{pin}", f"pin {pin} on", "", f"a net: {nets}") for pin in pins]
 
@@ -85,10 +87,13 @@ def _ask_part(
         part = {"ref": ref, "kind": kind.name, "pins": {pin: answers[f"pin-{pin}"] for pin in pins}}
         given = {name: written(answers[name]) for name in asked if answers[name]}
         of_drawer = made.get(str(given.get("class", "")).removesuffix(" (drawer)"))
+        if of_drawer is not None:
+            del given["class"]
+        plain = edit.with_part(design, stage.name, part)
+        for name, text in given.items():
+            plain = edit.with_field(plain, ref, name, text)
         if of_drawer is None:
-            return f"with {ref}", edit.with_part(design, stage.name, {**part, **given})
-        del given["class"]
-        plain = edit.with_part(design, stage.name, {**part, **given})
+            return f"with {ref}", plain
         return f"with {ref}", edit.with_made_part(plain, ref, of_drawer.document, of_drawer.title)
 
     ask_design(app, f"{kind.name.replace('_', ' ')} for {stage.name}", fields, make, put)
@@ -104,7 +109,11 @@ def free_reference(design: Design, kind: Kind) -> str:
 
 def ask_field(app: App[Any], design: Design, ref: str, put: Put) -> None:
     """Another field or datum of a part; an empty text takes it out."""
-    texts = field_texts(design.part(ref))
+    part = design.part(ref)
+    texts, examples = field_texts(part), {"class": _classes_words(part.kind)}
+    others = same_pins(part, kinds())
+    if others:
+        texts["kind"], examples["kind"] = part.kind, f"with these pins also {', '.join(others)}"
 
     def chosen(name: str | None) -> None:
         if name is None:
@@ -114,9 +123,17 @@ def ask_field(app: App[Any], design: Design, ref: str, put: Put) -> None:
             text = answers["text"]
             return f"{ref} {name} {text or '-'}", edit.with_field(design, ref, name, written(text))
 
-        ask_design(app, f"{ref}, {name}", [Field("text", name, texts[name], "empty takes it out")], make, put)
+        example = examples.get(name) or "empty takes it out"
+        hint = examples.get(name, "")
+        ask_design(app, f"{ref}, {name}", [Field("text", name, texts[name], example, hint)], make, put)
 
     app.push_screen(Pick(f"{ref}: which field?", _rows(texts)), chosen)
+
+
+def _classes_words(kind: str) -> str:
+    """The generic classes of a kind, for a hint."""
+    classes = CLASSES.get(kind)
+    return f"such as {', '.join(classes)}; empty takes it out" if classes else ""
 
 
 def field_texts(part: Part) -> dict[str, str]:

@@ -193,6 +193,11 @@ class Field:
 Answers = Mapping[str, str]
 
 
+def in_brackets(example: str) -> str:
+    """An example as it stands in an empty line: no terminal and no eye takes it for what is written there."""
+    return f"({example.replace(' (may stay empty)', '; may stay empty')})" if example else ""
+
+
 class Form(ModalScreen[Answers | None]):
     """A few lines to fill in; None when cancelled. ``check`` returns a refusal, which keeps the form open.
 
@@ -223,7 +228,7 @@ class Form(ModalScreen[Answers | None]):
                 for field in self._fields:
                     with Horizontal(classes="field"):
                         yield Lines(line(f" {field.label}"), classes="label")
-                        yield TextLine(field.value, field.example, id=f"field-{field.name}")
+                        yield TextLine(field.value, in_brackets(field.example), id=f"field-{field.name}")
             yield Notice()
             yield KeyLine("form")
 

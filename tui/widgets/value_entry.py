@@ -49,7 +49,9 @@ class ValueEntry(Horizontal):
 
     def begin(self, label: str, text: str, *, typed: bool) -> None:
         """Takes the keyboard. ``typed`` texts are continued; others are replaced by the first key."""
-        self.query_one(Lines).show(line(Span(f" {label} ", "strong")))
+        shown = self.query_one(Lines)
+        shown.show(line(Span(f" {label} ", "strong")))
+        shown.refresh()  # hidden until now, it has no cells that could be told apart
         entry = self.query_one(TextLine)
         entry.select_on_focus = not typed
         entry.value = visible(text)

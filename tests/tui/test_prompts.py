@@ -1,0 +1,136 @@
+"""What the prompts of the bench name, take and refuse (own description of the bench; common practice, no source)."""
+
+from __future__ import annotations
+
+import pytest
+from textual.pilot import Pilot
+
+from stagebook.engine import edit
+from stagebook.storage import Store
+from stagebook.tui.screens.bench import BenchScreen
+from stagebook.tui.screens.dialog import Form, Pick
+from stagebook.tui.stagebook_app import StagebookApp
+from stagebook.tui.widgets.row_list import RowList
+
+from .conftest import Gates, seen, settled, until
+from .test_bench import SIZE, notice, open_bench, value
+
+DIODE = {"ref": "D9", "kind": "diode", "class": "1 A rectifier", "pins": {"anode": "supply", "cathode": "0V"}}
+
+
+@pytest.fixture
+def with_diode(shelf: Store) -> Store:
+    design = shelf.draft("flood").design
+    shelf.edit("flood", "with D9", edit.with_part(design, "probe", DIODE))
+    return shelf
+
+
+def words(pilot: Pilot[None], text: str) -> bool:
+    """Whether words stand in a row on the screen."""
+    return text in " ".join(seen(pilot).split())
+
+
+async def on_diode(pilot: Pilot[None]) -> BenchScreen:
+    bench = await open_bench(pilot)
+    await pilot.press("end")
+    assert bench.ref == "D9"
+    return bench
+
+
+async def write(pilot: Pilot[None], text: str) -> None:
+    await pilot.press("ctrl+u", *text, "enter")
+
+
+async def choose(pilot: Pilot[None], key: str) -> None:
+    assert isinstance(pilot.app.screen, Pick)
+    rows = pilot.app.screen.query_one(RowList)
+    rows.move_to([row.key for row in rows.rows].index(key))
+    await pilot.press("enter")
+    assert isinstance(pilot.app.screen, Form)
+
+
+async def test_the_prompt_names_the_part_under_the_hand(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("4")
+        assert words(pilot, "R1, value: 4")
+        await pilot.press("escape", "down", "4")
+        assert words(pilot, "R2, value: 4")
+
+
+async def test_a_value_for_a_part_that_has_none_is_refused_and_stays(app: StagebookApp, with_diode: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await on_diode(pilot)
+        await pilot.press(*"150u", "enter")
+        assert "a part of kind diode has no value; Enter or e" in notice(pilot)
+        assert words(pilot, "D9, value: 150u")
+        assert value(with_diode, "D9") is None
+
+
+async def test_enter_on_a_part_without_a_value_asks_for_its_fields(app: StagebookApp, with_diode: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await on_diode(pilot)
+        await pilot.press("enter")
+        await choose(pilot, "class")
+        assert "such as signal diode, 1 A rectifier; empty takes it out" in notice(pilot)
+
+
+async def test_an_unknown_class_is_refused_and_names_the_kind_that_has_it(app: StagebookApp, with_diode: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await on_diode(pilot)
+        await pilot.press("e")
+        await choose(pilot, "class")
+        await write(pilot, "Schottky")
+        assert "'1 A Schottky' is one of kind schottky, which e changes under kind" in " ".join(notice(pilot).split())
+        await pilot.press("escape", "e")
+        await choose(pilot, "kind")
+        await write(pilot, "schottky")
+        part = with_diode.draft("flood").design.part("D9")
+        assert (part.kind, part.class_) == ("schottky", "1 A Schottky")
+
+
+async def test_a_hint_stands_in_brackets(app: StagebookApp, with_diode: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await on_diode(pilot)
+        await pilot.press("a")
+        rows = pilot.app.screen.query_one(RowList)
+        rows.move_to(next(n for n, row in enumerate(rows.rows) if row.key.startswith("schottky ")))
+        await pilot.press("enter")
+        assert words(pilot, "class (such as 1 A Schottky)")
+
+
+@pytest.mark.parametrize(
+    ("text", "said"),
+    [
+        ("150u", "R1 150u: that is 0.00015 ohm, and a resistor is made with 1m .. 100G: is it meant?"),
+        ("0", "R1 0: that is 0 ohm: a link"),
+        ("150k", "R1 150k"),
+    ],
+)
+async def test_a_value_that_no_part_has_is_taken_with_a_word(
+    app: StagebookApp, shelf: Store, text: str, said: str
+) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("enter")
+        await write(pilot, text)
+        assert " ".join(notice(pilot).split()) == said
+        assert value(shelf, "R1") == text
+
+
+async def test_what_cannot_be_computed_says_so_and_why(app: StagebookApp, gates: Gates) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        bench = await open_bench(pilot)
+        gates.refusal = "stage probe, part R1: it leads nowhere"
+        await pilot.press(".")
+        await until(pilot, lambda: bool(bench.trouble))
+        assert "- cannot be computed: w says why -" in seen(pilot)
+        assert "being computed" not in seen(pilot)
+        await pilot.press("up", "c")
+        assert "nothing to compare: cannot be computed: stage probe, part R1" in notice(pilot)
+        await pilot.press("w")
+        assert notice(pilot) == "X cannot be computed: stage probe, part R1: it leads nowhere"
+        gates.refusal = ""
+        await pilot.press("u")
+        await settled(pilot)
+        assert "cannot be computed" not in seen(pilot)
