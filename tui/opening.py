@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 import sys
+import warnings
 from argparse import Namespace
 
 from .commands.refusal import CommandRefused
@@ -23,6 +24,8 @@ def open_shelf(asked: Namespace) -> int:
         from .stagebook_app import StagebookApp
 
         app = StagebookApp(store, own_solver())
+        # A terminal that changes its size while it is left has no loop any more that could hear of it.
+        warnings.filterwarnings("ignore", "coroutine 'MessagePump._post_message' was never awaited", RuntimeWarning)
         app.run()
         return app.return_code or 0
 

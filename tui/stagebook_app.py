@@ -22,11 +22,14 @@ from .computing import Computing
 from .hanging_up import watch
 from .key_order import KeyOrder
 from .palette import ActionFinder
+from .screens.dialog import Form
 from .screens.help import HelpScreen
 from .screens.page import Page
 from .screens.shelf import ShelfScreen
 from .solver import Solver
 from .widgets.status import Notice
+
+_LEAVING = ("ctrl+q", "q")
 
 
 class StagebookApp(App[None]):
@@ -51,6 +54,7 @@ class StagebookApp(App[None]):
         self.VERTICAL_BREAKPOINTS = [(0, "-tiny"), (10, "-short"), (18, "-high"), (36, "-tall")]
         self.computing = Computing(solver)
         self._store = store
+        self._leaving = False
         self._keys = KeyOrder(self._key, self._pumps, self._stands)
 
     async def on_event(self, event: events.Event) -> None:
@@ -66,6 +70,7 @@ class StagebookApp(App[None]):
         return self._keys.busy
 
     async def _key(self, event: events.Key) -> None:
+        self._leaving = self._leaving and event.key in _LEAVING
         # In the middle of a text the reason why it was refused stays, to be corrected by.
         if not isinstance(self.focused, Input):
             for notice in self.screen.query(Notice):
@@ -112,6 +117,23 @@ class StagebookApp(App[None]):
         """No cursor blinks: an idle screen sends nothing."""
         if isinstance(event.widget, Input):
             event.widget.cursor_blink = False
+
+    async def action_quit(self) -> None:
+        """Leaves; asks once where that would lose what is being written, which is kept nowhere yet."""
+        lost = self._written()
+        notices = list(self.screen.query(Notice))
+        if lost and notices and not self._leaving:
+            self._leaving = True
+            notices[0].refuse(f"{lost} is kept nowhere yet and goes with leaving; the same key again leaves")
+            return
+        self.exit()
+
+    def _written(self) -> str:
+        """What is written and would be lost; '' where nothing is."""
+        if isinstance(self.screen, Form) and self.screen.is_written:
+            return "what is written here"
+        notes = [name for each in self.screen_stack if isinstance(each, ShelfScreen) for name in each.unsaved_notes]
+        return f"the note written for the next revision of {', '.join(notes)}" if notes else ""
 
     def action_help(self) -> None:
         """The keys of the screen in front."""

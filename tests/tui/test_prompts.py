@@ -134,3 +134,29 @@ async def test_what_cannot_be_computed_says_so_and_why(app: StagebookApp, gates:
         await pilot.press("u")
         await settled(pilot)
         assert "cannot be computed" not in seen(pilot)
+
+
+async def test_undo_stops_at_the_revision_and_goes_on_when_asked_again(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("u")
+        assert "this is r2 as it was saved; o in the history (h) goes on" in " ".join(notice(pilot).split())
+        assert value(shelf, "R7") == "390k"
+        await pilot.press("u")
+        assert notice(pilot) == "taken back: R7 390k, made before r2"
+        assert value(shelf, "R7") == "470k"
+
+
+@pytest.mark.parametrize("close_first", [False, True])
+async def test_leaving_asks_once_where_a_note_would_be_lost(app: StagebookApp, close_first: bool) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("s", *"why", *(["escape"] if close_first else []))
+        await pilot.press("ctrl+q")
+        assert app.is_running
+        what = "the note written for the next revision of flood" if close_first else "what is written here"
+        assert f"{what} is kept nowhere yet" in " ".join(notice(pilot).split())
+        await pilot.press("left", "ctrl+q")
+        assert not app._exit
+        await pilot.press("ctrl+q")
+        assert app._exit

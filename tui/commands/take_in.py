@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import sys
 from argparse import ArgumentParser, Namespace
 
+from ...engine.circuit.circuit import build
+from ...engine.errors import EngineError
 from ..shown import visible
 from .what import load_file, open_store, shelf_arguments
 
@@ -16,9 +19,13 @@ def arguments(parser: ArgumentParser) -> None:
 
 
 def run(asked: Namespace) -> int:
-    """Take the document in as a draft."""
+    """Take the document in as a draft; one that cannot be computed too, with the reason on standard error."""
     design = load_file(asked.file)
     with open_store(asked, begins=True) as store:
         draft = store.create(design.name if asked.name is None else asked.name, design)
     print(f"{visible(draft.name)} is on the shelf, as a draft without a revision yet")
+    try:
+        build(design)
+    except EngineError as fault:
+        print(f"stagebook import: it cannot be computed as it stands: {visible(str(fault))}", file=sys.stderr)
     return 0

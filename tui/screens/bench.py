@@ -55,6 +55,7 @@ class BenchScreen(BenchView):
         super().__init__(drafting, computing, remembered or Remembered())
         self._only_looks = only_looks
         self._compare_waits = False
+        self._past_base = False
         notes = self.remembered.notes.setdefault(drafting.name, {})
         self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved, notes)
 
@@ -93,6 +94,7 @@ class BenchScreen(BenchView):
     def study(self) -> None:
         """The draft changed: corners are to be expected again."""
         self._saving.begun()
+        self._past_base = False
         super().study()
 
     def _put(self, words: str, after: Design) -> None:
@@ -170,8 +172,16 @@ class BenchScreen(BenchView):
             self.say(f"{ref} {self.design.part(ref).value or ''}")
 
     def action_undo(self) -> None:
-        """Takes the last edit back."""
-        self._edit(lambda: self.say(f"taken back: {self.drafting.undo()}"))
+        """Takes the last edit back. Those from before the revision only when asked a second time."""
+        base, draft = self.drafting.base, self.drafting.draft
+        at_base = base is not None and draft.edits == 0 and draft.can_undo
+        if base is not None and at_base and not self._past_base:
+            self._past_base = True
+            older = "o in the history (h) goes on from an older revision"
+            self.refuse(f"this is r{base.number} as it was saved; {older}, u again takes back edits made before it")
+            return
+        before = f", made before r{base.number}" if base is not None and at_base else ""
+        self._edit(lambda: self.say(f"taken back: {self.drafting.undo()}{before}"))
 
     def action_redo(self) -> None:
         """Does it again."""

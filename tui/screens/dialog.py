@@ -252,6 +252,12 @@ class Form(ModalScreen[Answers | None]):
         else:
             self.dismiss(answers)
 
+    @property
+    def is_written(self) -> bool:
+        """Whether a line says something else than it began with."""
+        answers = self._answers()
+        return any(answers[field.name] != visible(field.value) for field in self._fields)
+
     def _answers(self) -> Answers:
         return {field.name: self.query_one(f"#field-{field.name}", TextLine).value for field in self._fields}
 

@@ -121,9 +121,14 @@ class ShelfScreen(Page[None]):
         """Parts made of datasheet points."""
         self.app.push_screen(DrawerScreen(Drawer(self._store)))
 
-    def action_quit(self) -> None:
+    async def action_quit(self) -> None:
         """Leaves; every edit is kept already."""
-        self.app.exit()
+        await self.app.action_quit()
+
+    @property
+    def unsaved_notes(self) -> list[str]:
+        """The designs for whose next revision a note is begun."""
+        return [name for name, written in self._remembered.notes.items() if any(written.values())]
 
     def action_new(self) -> None:
         """A new design: of catalogue stages, empty, or a copy of one."""

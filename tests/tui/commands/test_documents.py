@@ -227,3 +227,16 @@ def test_a_name_is_taken_once(refused: Refused, stagebook: Run, written: Path) -
 def test_a_misspelt_name_is_helped(refused: Refused, stagebook: Run, written: Path) -> None:
     stagebook("import", written)
     assert "'buzzer'" in refused("export", "buzer", "out.json")
+
+
+def test_a_document_that_cannot_be_computed_is_taken_in_with_the_reason(
+    stagebook: Run, tmp_path: Path, document: dict[str, Any]
+) -> None:
+    part = next(part for stage in document["stages"] for part in stage["parts"] if "value" in part)
+    part["value"] = "220q"
+    (tmp_path / "odd.json").write_text(json.dumps(document), encoding="utf-8")
+    status, out, err = stagebook("import", tmp_path / "odd.json")
+    assert (status, out) == (0, "buzzer is on the shelf, as a draft without a revision yet\n")
+    assert err.startswith("stagebook import: it cannot be computed as it stands: stage ")
+    assert f"part {part['ref']}, field value: " in err
+    assert err.count("\n") == 1
