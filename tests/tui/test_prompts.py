@@ -160,3 +160,34 @@ async def test_leaving_asks_once_where_a_note_would_be_lost(app: StagebookApp, c
         assert not app._exit
         await pilot.press("ctrl+q")
         assert app._exit
+
+
+async def test_escape_leaves_the_margins_of_all_stages_first(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        bench = await open_bench(pilot)
+        await pilot.press("m", "escape")
+        assert app.screen is bench
+        assert "probe: parts" in seen(pilot)
+        await pilot.press("escape")
+        assert app.screen is not bench
+
+
+async def test_a_required_margin_left_as_it_was_is_no_edit(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("tab", "e")
+        assert words(pilot, "required margin ")
+        assert not words(pilot, "margin0")
+        await pilot.press("enter")
+        assert "stays" in notice(pilot)
+        assert shelf.draft("flood").edits == 0
+
+
+async def test_only_the_list_with_the_keyboard_has_the_full_mark(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        row = next(each for each in seen(pilot).splitlines() if " R1 " in each)
+        assert (row.count(">"), row[0], "| - " in row) == (1, ">", True)
+        await pilot.press("tab")
+        row = next(each for each in seen(pilot).splitlines() if " R1 " in each)
+        assert (row.count(">"), row[0], "| > " in row) == (1, "-", True)

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+import sys
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
-from ..shown import json_text, visible
+from ..shown import counted, json_text, visible
 from .out_file import file_name, write_file
 from .what import find, subject_arguments
 
@@ -24,4 +25,7 @@ def run(asked: Namespace) -> int:
     write_file(file, f"{json_text(subject.design.dump())}\n".encode(), subject.file)
     if folder:
         print(f"{visible(subject.title)} is written to {visible(file)}")
+    if subject.edits:
+        words = f"{visible(subject.title)} is written, without {counted(subject.edits, 'edit')} of the draft"
+        print(f"stagebook export: {words}; --draft writes the draft", file=sys.stderr)
     return 0

@@ -28,6 +28,8 @@ class Subject:
     design: Design
     revision: int | None
     file: str | None = None
+    edits: int = 0
+    """Edits of the draft that are not in the revision, where that one was not asked for by its number."""
 
     @property
     def title(self) -> str:
@@ -76,7 +78,8 @@ def find(asked: Namespace) -> Subject:
         if asked.draft or (asked.revision is None and draft.base_revision is None):
             return Subject(draft.name, draft.design, None)
         revision = store.revision(asked.what, asked.revision)
-        return Subject(draft.name, revision.design, revision.number)
+        edits = 0 if asked.revision is not None or draft.design == revision.design else draft.edits
+        return Subject(draft.name, revision.design, revision.number, edits=edits)
 
 
 def load_file(path: str) -> Design:

@@ -277,6 +277,13 @@ class BenchView(Page[None]):
         self.focus_list()
         self.call_after_refresh(self.show)
 
+    def action_back(self) -> None:
+        """From the margins of all stages to the chosen stage; from there to the shelf."""
+        if self.has_class("-all"):
+            self.action_all_stages()
+        else:
+            super().action_back()
+
     def focus_list(self) -> None:
         """Gives the keyboard to the list that can be seen."""
         (self.margins if self.has_class("-all") else self.parts).focus()

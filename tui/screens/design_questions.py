@@ -208,17 +208,20 @@ def ask_required(app: App[Any], design: Design, check: CheckResult, put: Put) ->
 
 def _ask_entry(app: App[Any], design: Design, table: str, name: str, now: str, title: str, put: Put) -> None:
     """One entry of the tables of required margins and derating factors, with the reason why it differs."""
+    reason = design.reasons.get(name, "")
     change = edit.with_required if table == "required" else edit.with_derating
 
     def make(answers: Answers) -> tuple[str, Design]:
         text = answers["text"]
+        if (text, answers["reason"]) == (now, reason):
+            return f"{table} {name} stays {now}", design
         return f"{table} {name} {text or '-'}", change(design, name, text or None, answers["reason"] or None)
 
     fields = [
         Field(
             "text", "required margin" if table == "required" else "factor", now, "empty returns to the customary one"
         ),
-        Field("reason", "reason", design.reasons.get(name, ""), "why it may differ from the customary one"),
+        Field("reason", "reason", reason, "why it may differ from the customary one"),
     ]
     ask_design(app, title, fields, make, put)
 

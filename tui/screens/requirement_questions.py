@@ -72,7 +72,7 @@ def _ask_fields(
         given = {name: written(text) for name, text in answers.items() if text}
         if not given and at is None:
             raise DesignError(
-                "nothing is written; fill in what is wanted, as the grey examples show, or leave with Esc"
+                "nothing is written; fill in what is wanted, as the examples in brackets show, or leave with Esc"
             )
         if at is None:
             return f"wanted: {slug}", edit.with_requirement(design, {"check": slug, **given})

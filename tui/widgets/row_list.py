@@ -178,7 +178,9 @@ class RowList(TonedWidget, can_focus=True):
         index = self._top + y - self._head
         if index < len(self._rows):
             here = index == self._hand
-            return (Span("> " if here else "  "), *self._rows[index].spans), here
+            # Another list's hand stays in sight by a weaker mark: only one of them has the keyboard.
+            mark = "  " if not here else "> " if self.has_focus else "- "
+            return (Span(mark), *self._rows[index].spans), here
         return ((Span("  " + self._empty, "dim"),) if not self._rows and index == 0 else ()), False
 
     def _heading_with_count(self) -> Line:

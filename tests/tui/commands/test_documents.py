@@ -240,3 +240,17 @@ def test_a_document_that_cannot_be_computed_is_taken_in_with_the_reason(
     assert err.startswith("stagebook import: it cannot be computed as it stands: stage ")
     assert f"part {part['ref']}, field value: " in err
     assert err.count("\n") == 1
+
+
+def test_export_says_which_edits_are_not_in_what_it_writes(
+    stagebook: Run, written: Path, tmp_path: Path, document: dict[str, Any]
+) -> None:
+    stagebook("import", written)
+    shelf = tmp_path / "shelf.sqlite3"
+    save(shelf, "buzzer", 0.5, Verdict.PASS)
+    assert stagebook("export", "buzzer", "out.json") == (0, "", "")
+    with Store.open(shelf) as store:
+        store.edit("buzzer", "purpose", Design.load({**document, "purpose": "changed"}))
+    said = "stagebook export: buzzer r1 is written, without 1 edit of the draft; --draft writes the draft\n"
+    assert stagebook("export", "buzzer", "out.json") == (0, "", said)
+    assert stagebook("export", "buzzer", "--revision", "1", "out.json") == (0, "", "")
