@@ -16,7 +16,7 @@ from stagebook.engine.circuit.inspection import found_faults, inspect
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError
 from stagebook.engine.parts.kind import Entry, Kind
-from stagebook.engine.parts.suitability import FLAG, TEXT, unreadable
+from stagebook.engine.parts.suitability import FLAG, TEXT
 
 EXAMPLE: dict[str, Any] = json.loads(Path(__file__).with_name("example.json").read_text("utf-8"))
 
@@ -149,14 +149,6 @@ def test_a_law_or_a_class_makes_data_superfluous() -> None:
         document["stages"][0]["parts"][3]["law"] = {"saturation_current": "1e-14 A", "collector_junction": False}
 
     assert faults(edit) == []
-
-
-def test_one_field_of_a_part_can_be_asked_about_alone() -> None:
-    document = copy.deepcopy(EXAMPLE)
-    document["stages"][0]["parts"][1]["value"] = "4 V"
-    part = Design.load(document).part("R7")
-    assert list(unreadable(part, KINDS["resistor"], "tolerance")) == []
-    assert "voltage where a resistance" in next(unreadable(part, KINDS["resistor"], "value"))
 
 
 @pytest.mark.parametrize(
