@@ -5,10 +5,11 @@ from __future__ import annotations
 from ...storage import Store
 from .flood import FLOOD
 from .frost import FROST
+from .path_lamp import PATH_LAMP
 from .tilt import TILT
 from .vault import VAULT
 
-DEMOS = (FLOOD, FROST, TILT, VAULT)
+DEMOS = (FLOOD, FROST, TILT, PATH_LAMP, VAULT)
 
 
 def put_on_shelf(store: Store) -> list[str]:
