@@ -29,7 +29,7 @@ def objections(before: Part, after: Part, known: Mapping[str, Kind]) -> Iterator
         if (field, words) in earlier:
             continue
         if field == "value" and "value" not in kind.fields:
-            words = f"a part of kind {kind.name} has no value; Enter or e there writes its class and other fields"
+            words = f"a part of kind {kind.name} has no value; Esc, then e, writes its class and other fields"
         yield field, words
     if (before.kind, before.class_) != (after.kind, after.class_):
         yield from (("class", words) for words in _unknown_class(after, known))

@@ -62,7 +62,7 @@ async def test_a_value_for_a_part_that_has_none_is_refused_and_stays(app: Stageb
     async with app.run_test(size=SIZE) as pilot:
         await on_diode(pilot)
         await pilot.press(*"150u", "enter")
-        assert "a part of kind diode has no value; Enter or e" in notice(pilot)
+        assert "a part of kind diode has no value; Esc, then e" in notice(pilot)
         assert words(pilot, "D9, value: 150u")
         assert value(with_diode, "D9") is None
 
