@@ -18,6 +18,7 @@ from .sequences import program_of, starts_of
 GLANCE = 8000  # steps of the look at what a lane does that took too many
 VISIBLE = 0.05  # V, swing of a net that counts as an oscillation
 CYCLES = 3
+STEADY_CYCLES, STEADY_SPREAD, STEADY_DRIFT = 10, 0.2, 0.01  # periods seen, and how far those of a steady one differ
 BARE = 1e-14  # F: a net with less has no capacitance worth the name
 MOST_NETS = 3  # that are named
 STRAY, STRAY_WORDS = "1p", "1 pF"
@@ -45,29 +46,31 @@ def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: 
     seen = run(circuit, lane, line.program(max(1.0, 10.0 * at)), (), start=np.ascontiguousarray(state), trace=GLANCE)
     used = int(seen.results.trace_used[0])
     time, values = seen.results.trace_time[:used], seen.results.trace_value[:used]
-    found: tuple[float, float, str] | None = None
+    found: tuple[Floats, float, str] | None = None
     for k in range(int(circuit.topology.size[0])):
-        cycle = _cycle(time, values[:, k])
+        periods = _periods(time, values[:, k])
         size = float(np.ptp(values[:, k]))
-        if cycle is not None and (found is None or size > found[1]):
-            found = cycle, size, circuit.unknown_name(k)
+        if len(periods) >= CYCLES and (found is None or size > found[1]):
+            found = periods, size, circuit.unknown_name(k)
     begin = f"took too many steps by {write(at, 's', 4)}"
     if steps < MOST_STEPS:
         begin += f" ({steps} are the most in a circuit of {int(circuit.topology.size[0])} nets)"
     if found is not None:
+        periods, _, net = found
+        steadily = f", steadily ({len(periods)} periods alike)" if _steady(periods) else ""
         return (
-            f"{begin}: it goes on oscillating near net {found[2]} at about {write(1.0 / found[0], 'Hz')}; end the "
-            "sequence sooner, or look at the oscillation in a short sequence of its own"
+            f"{begin}: it goes on oscillating near net {net} at about {write(1.0 / float(np.median(periods)), 'Hz')}"
+            f"{steadily}; end the sequence sooner, or look at the oscillation in a short sequence of its own"
         )
     moving = np.argsort(-np.ptp(values[:, : int(circuit.topology.size[0])], axis=0))[:MOST_NETS]
     return f"{begin}, busy near {_nets([circuit.unknown_name(int(k)) for k in moving])}"
 
 
-def _cycle(time: Floats, value: Floats) -> float | None:
-    """Period in s of what swings to and fro across its own middle, None where it does not."""
+def _periods(time: Floats, value: Floats) -> Floats:
+    """Periods in s of what swings to and fro across its own middle; none where it does not."""
     low, high = float(value.min()), float(value.max())
     if high - low < VISIBLE:
-        return None
+        return np.zeros(0)
     above = value > low + 0.7 * (high - low)
     below = value < low + 0.3 * (high - low)
     state, rises = None, []
@@ -75,7 +78,17 @@ def _cycle(time: Floats, value: Floats) -> float | None:
         if up and state is False:
             rises.append(float(t))
         state = True if up else False if down else state
-    return float(np.median(np.diff(rises))) if len(rises) > CYCLES else None
+    return np.diff(rises)
+
+
+def _steady(periods: Floats) -> bool:
+    """Whether an oscillation is the same at the end of the look as at its beginning, one period like the other."""
+    if len(periods) < STEADY_CYCLES:
+        return False
+    usual, third = float(np.median(periods)), len(periods) // 3
+    low, high = np.quantile(periods, [0.1, 0.9])
+    drift = np.median(periods[-third:]) / np.median(periods[:third]) - 1.0
+    return bool(high - low < STEADY_SPREAD * usual and abs(drift) < STEADY_DRIFT)
 
 
 def _unsolved(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: Floats, worst: str) -> str:

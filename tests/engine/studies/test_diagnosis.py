@@ -121,12 +121,14 @@ def test_a_flasher_that_runs_too_long_is_told_by_its_frequency_and_costs_a_bound
     assert seen.results.work[0, 0] <= MOST_STEPS + 1
     said = diagnosed(seen, lanes, "alarm", 0)
     told = re.fullmatch(
-        r"took too many steps by [\d.]+ ms: it goes on oscillating near net (\w+) at about ([\d.]+) kHz; end the "
-        r"sequence sooner, or look at the oscillation in a short sequence of its own",
+        r"took too many steps by [\d.]+ ms: it goes on oscillating near net (\w+) at about ([\d.]+) kHz, "
+        r"steadily \((\d+) periods alike\); end the sequence sooner, or look at the oscillation in a short sequence "
+        r"of its own",
         str(said),
     )
     assert told is not None, said
     assert float(told[2]) == pytest.approx(44.0, rel=0.15)
+    assert int(told[3]) > 20
 
 
 def test_a_study_spends_no_work_on_corners_of_what_comes_to_no_end() -> None:
