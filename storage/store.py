@@ -17,7 +17,7 @@ from sqlmodel import Session, select
 from ..engine.design.document import Design
 from ..engine.errors import EngineError
 from ..engine.results import MarginSheet
-from . import drawer, edits, revisions, shelf, sittings
+from . import drawer, edits, half_notes, revisions, shelf, sittings
 from .backup import back_up
 from .connection import Opened, open_database, plain_errors
 from .errors import DesignMissing, NameTaken, StorageError, StoreTooNew, StoreUnreadable
@@ -219,6 +219,19 @@ class Store:
             session.flush()
             return revisions.shown(session, [row])[0]
 
+    def half_note(self, name: str) -> dict[str, str]:
+        """What was written for the next revision of a design, by place of the note."""
+        return half_notes.half_note(self.path, name)
+
+    def keep_half_note(self, name: str, written: Mapping[str, str]) -> None:
+        """Keep a note that is still being written; from any thread. Nothing written forgets it.
+
+        Raises:
+            StorageError: It cannot be kept.
+        """
+        self._check_writable()
+        half_notes.keep_half_note(self.path, name, written)
+
     def drawer(self) -> list[MadePart]:
         """The newest version of every part in the drawer, by kind and name."""
         with self.reading() as session:
@@ -300,10 +313,13 @@ class Store:
                 raise
             raise StoreTooNew(f"{self.why_read_only} What was asked for cannot be read here ({error}).") from error
 
-    @contextmanager
-    def _writing(self) -> Iterator[Session]:
+    def _check_writable(self) -> None:
         if self._opened.refusal is not None:
             raise type(self._opened.refusal)(self.why_read_only)
+
+    @contextmanager
+    def _writing(self) -> Iterator[Session]:
+        self._check_writable()
         with plain_errors(self.path), Session(self._opened.writing, expire_on_commit=False) as session:
             yield session
             session.commit()

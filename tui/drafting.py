@@ -127,6 +127,13 @@ class Drafting(Drawer):
         self.base = revision
         return revision
 
+    def half_note(self) -> dict[str, str]:
+        """What was written for the next revision before this program began; nothing that has become one since."""
+        written = self._store.half_note(self.name)
+        revisions = self._store.revisions(self.name) if written else []
+        newest = revisions[-1].note if revisions else Note("")
+        return {} if all(getattr(newest, place) == text for place, text in written.items()) else written
+
     def changes(self) -> tuple[Change, ...]:
         """What differs from the revision the draft began from."""
         if self.base is None:

@@ -22,12 +22,13 @@ from .computing import Computing
 from .hanging_up import watch
 from .key_order import KeyOrder
 from .palette import ActionFinder
-from .screens.dialog import Form
+from .screens.dialog import Ask, Form
 from .screens.help import HelpScreen
 from .screens.page import Page
 from .screens.shelf import ShelfScreen
 from .solver import Solver
 from .widgets.status import Notice
+from .widgets.value_entry import ValueEntry
 
 _LEAVING = ("ctrl+q", "q")
 
@@ -120,18 +121,27 @@ class StagebookApp(App[None]):
 
     async def action_quit(self) -> None:
         """Leaves; asks once where that would lose what is being written, which is kept nowhere yet."""
-        lost = self._written()
-        notices = list(self.screen.query(Notice))
-        if lost and notices and not self._leaving:
-            self._leaving = True
-            notices[0].refuse(f"{lost} is kept nowhere yet and goes with leaving; the same key again leaves")
+        lost = "" if self._leaving else self._written()
+        if not lost:
+            self.exit()
             return
-        self.exit()
+        self._leaving = True
+        words = f"{lost} is kept nowhere yet and goes with leaving"
+        notices = list(self.screen.query(Notice))
+        if notices:
+            notices[0].refuse(f"{words}; the same key again leaves")
+        else:
+            self.push_screen(Ask("Leave?", f"{words}."), lambda yes: self.exit() if yes else None)
 
     def _written(self) -> str:
         """What is written and would be lost; '' where nothing is."""
-        if isinstance(self.screen, Form) and self.screen.is_written:
+        if any(isinstance(each, Form) and each.is_written and not each.is_kept for each in self.screen_stack):
             return "what is written here"
+        if isinstance(self.screen, Page) and any(entry.is_begun for entry in self.screen.query(ValueEntry)):
+            return "the value that is begun"
+        unmade = [each.unmade for each in self.screen_stack if isinstance(each, Page) and each.unmade]
+        if unmade:
+            return unmade[0]
         notes = [name for each in self.screen_stack if isinstance(each, ShelfScreen) for name in each.unsaved_notes]
         return f"the note written for the next revision of {', '.join(notes)}" if notes else ""
 

@@ -117,3 +117,40 @@ def test_a_terminal_that_is_closed_ends_the_program(shelf: Path, tmp_path: Path,
         program.ended()
         assert of_session(process) == []
     kept(shelf, tmp_path)
+
+
+@pytest.mark.parametrize("way", ["hang-up signal", "closed terminal", "kill"])
+def test_a_note_that_is_being_written_is_offered_again(shelf: Path, tmp_path: Path, way: str) -> None:
+    with Program("--store", shelf, home=tmp_path) as program:
+        edited(program)
+        program.press("\x07sthe horn is late\t33 s")
+        program.until("33 s")
+        if way == "kill":
+            time.sleep(1.0)  # five times the delay with which it is kept
+            program.kill()
+        elif way == "closed terminal":
+            program.close_terminal()
+            program.ended()
+        else:
+            os.kill(program.process.pid, signal.SIGHUP)
+            assert program.ended() == 0
+    with Store.open(shelf) as store:
+        assert store.half_note("flood") == {"line": "the horn is late", "symptom": "33 s"}
+        assert store.revisions("flood") == []
+    (file,) = shelf.parent.glob("shelf.sqlite3-note-*")
+    assert file.stat().st_mode & 0o777 == 0o600
+    with Program("--store", shelf, home=tmp_path) as program:
+        at = program.until("> flood")
+        program.press("\r")
+        at = program.until(" s goes on with it", after=at)
+        program.press("s")
+        at = program.until(" the horn is late", after=at)
+        program.press("\r")
+        program.until("saved as r1", " waiting for the worst corners", after=at)
+        program.press("i")
+        program.until("saved as r1", after=at)
+        program.press("\x11")
+        assert program.ended() == 0
+    with Store.open(shelf) as store:
+        assert store.revisions("flood")[0].note.symptom == "33 s"
+    assert not list(shelf.parent.glob("shelf.sqlite3-*"))

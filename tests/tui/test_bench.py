@@ -213,7 +213,7 @@ async def test_saving_waits_for_the_corners_and_can_be_left(app: StagebookApp, s
         await until(pilot, lambda: isinstance(pilot.app.screen, Waiting))
         await pilot.press("b")
         await until(pilot, lambda: pilot.app.screen is bench)
-        assert notice(pilot) == "not saved; s asks again and still knows the note"
+        assert notice(pilot) == "not saved; s asks again and still knows the note, after a restart too"
         assert len(shelf.revisions("flood")) == 2
         await pilot.press("s")
         assert "why" in seen(pilot)

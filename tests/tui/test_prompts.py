@@ -6,9 +6,11 @@ import pytest
 from textual.pilot import Pilot
 
 from stagebook.engine import edit
-from stagebook.storage import Store
+from stagebook.storage import Store, StoreFull, half_notes
 from stagebook.tui.screens.bench import BenchScreen
-from stagebook.tui.screens.dialog import Form, Pick
+from stagebook.tui.screens.dialog import Ask, Form, Pick
+from stagebook.tui.screens.new_design import NewDesignPage
+from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import RowList
 
@@ -147,19 +149,84 @@ async def test_undo_stops_at_the_revision_and_goes_on_when_asked_again(app: Stag
         assert value(shelf, "R7") == "470k"
 
 
-@pytest.mark.parametrize("close_first", [False, True])
-async def test_leaving_asks_once_where_a_note_would_be_lost(app: StagebookApp, close_first: bool) -> None:
+@pytest.mark.parametrize(
+    ("keys", "what"),
+    [
+        ("e down down enter 9", "what is written here"),
+        ("3", "the value that is begun"),
+        ("enter backspace", "the value that is begun"),
+    ],
+)
+async def test_leaving_asks_once_where_something_begun_would_be_lost(app: StagebookApp, keys: str, what: str) -> None:
     async with app.run_test(size=SIZE) as pilot:
         await open_bench(pilot)
-        await pilot.press("s", *"why", *(["escape"] if close_first else []))
+        await pilot.press(*keys.split())
+        # Escape and Ctrl+Q that arrive in one packet are read as Ctrl+Q alone (Alt+Ctrl+Q in xterm's sequences).
         await pilot.press("ctrl+q")
-        assert app.is_running
-        what = "the note written for the next revision of flood" if close_first else "what is written here"
         assert f"{what} is kept nowhere yet" in " ".join(notice(pilot).split())
         await pilot.press("left", "ctrl+q")
         assert not app._exit
         await pilot.press("ctrl+q")
         assert app._exit
+
+
+async def test_a_row_of_stages_is_not_left_unasked(app: StagebookApp) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await pilot.press("n", "enter", *"siren", "enter")
+        await until(pilot, lambda: isinstance(app.screen, NewDesignPage))
+        await pilot.press("a", "enter", "enter")
+        await until(pilot, lambda: isinstance(app.screen, NewDesignPage))
+        await pilot.press("a", "ctrl+q")
+        # A list of kinds has no line to say it in: a question does.
+        assert isinstance(app.screen, Ask)
+        assert words(pilot, "the row of stages is kept nowhere yet")
+        await pilot.press("n", "escape")
+        assert isinstance(app.screen, NewDesignPage)
+        assert not app._exit
+        await pilot.press("ctrl+q", "ctrl+q")
+        assert app._exit
+
+
+async def test_a_note_that_is_begun_is_kept_and_offered_after_a_restart(
+    app: StagebookApp, shelf: Store, solver: Solver
+) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("s", *"whw", "backspace", "y", "down", *"silent")
+        await until(pilot, lambda: shelf.half_note("flood") == {"line": "why", "symptom": "silent"})
+        await pilot.press("ctrl+q")  # loses nothing, so nothing is asked
+        assert app._exit
+    again = StagebookApp(shelf, solver)
+    async with again.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        assert "the note for the next revision is begun already" in notice(pilot)
+        await pilot.press("s")
+        assert words(pilot, "why why")
+        assert words(pilot, "symptom silent")
+        await pilot.press("enter")
+        await settled(pilot)
+        assert shelf.revisions("flood")[-1].note.symptom == "silent"
+        assert shelf.half_note("flood") == {}
+
+
+async def test_leaving_asks_for_a_note_that_cannot_be_kept(
+    app: StagebookApp, shelf: Store, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def full(*_: object) -> None:
+        raise StoreFull("A note that is being written cannot be kept: make room.")
+
+    monkeypatch.setattr(half_notes, "keep_half_note", full)
+    async with app.run_test(size=SIZE) as pilot:
+        await open_bench(pilot)
+        await pilot.press("s", *"why", "escape")
+        assert "still knows the note until you leave. A note that is being" in " ".join(notice(pilot).split())
+        await pilot.press("ctrl+q")
+        assert "the note written for the next revision of flood is kept nowhere" in " ".join(notice(pilot).split())
+        assert not app._exit
+        monkeypatch.undo()  # there is room again
+        await pilot.press("left", "ctrl+q")
+        assert app._exit
+    assert shelf.half_note("flood") == {"line": "why"}
 
 
 async def test_escape_leaves_the_margins_of_all_stages_first(app: StagebookApp) -> None:

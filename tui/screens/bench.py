@@ -43,6 +43,7 @@ from .stage_questions import ask_stage
 from .waves import WavesScreen
 
 RAILS = ("supply", "0V")
+_BEGUN = "the note for the next revision is begun already: s goes on with it"
 
 
 class BenchScreen(BenchView):
@@ -56,14 +57,18 @@ class BenchScreen(BenchView):
         self._only_looks = only_looks
         self._compare_waits = False
         self._past_base = False
-        notes = self.remembered.notes.setdefault(drafting.name, {})
-        self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved, notes)
+        known = drafting.name in self.remembered.notes
+        notes = self.remembered.notes_of(drafting.name, drafting.half_note)
+        self._found = "" if known or not any(notes.values()) else _BEGUN
+        self._saving = Saving(self, drafting, lambda: self.figures.newest, self._saved, notes, self.remembered.keeping)
 
     def on_mount(self) -> None:
         """Says why nothing can be edited, if so, and the cautions that come with the design."""
         if self._only_looks:
             self.say(self._only_looks)
-        self.tell_cautions(self._only_looks.rstrip("."))
+        elif self._found:
+            self.say(self._found, passing=True)
+        self.tell_cautions(self._only_looks.rstrip(".") or self._found)
 
     def on_unmount(self) -> None:
         """Whoever opens the design next need not ask."""
@@ -281,7 +286,7 @@ class BenchScreen(BenchView):
         def predicted(answers: Answers | None) -> None:
             if answers is None:
                 return
-            self._saving.written["prediction"] = answers["prediction"].strip()
+            self._saving.predict(answers["prediction"].strip())
             self._thaw()
             self.say("it goes into the note of the next revision" if self._saving.prediction else "shown again")
             self.show()

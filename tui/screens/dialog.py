@@ -201,7 +201,7 @@ def in_brackets(example: str) -> str:
 class Form(ModalScreen[Answers | None]):
     """A few lines to fill in; None when cancelled. ``check`` returns a refusal, which keeps the form open.
 
-    ``left`` is told what was written when the form is cancelled.
+    ``kept`` is told what is written, after each change of it and when the form is cancelled, and keeps it.
     """
 
     BINDINGS: ClassVar[list[BindingType]] = bindings("form")
@@ -211,10 +211,11 @@ class Form(ModalScreen[Answers | None]):
         title: str,
         fields: Sequence[Field],
         check: Callable[[Answers], str | None] | None = None,
-        left: Callable[[Answers], None] | None = None,
+        kept: Callable[[Answers], None] | None = None,
     ) -> None:
         super().__init__()
-        self._left = left
+        self._kept = kept
+        self._touched = False
         self._title: Line = line(Span(f" {title}", "strong"))
         self._fields = tuple(fields)
         self._check = check
@@ -252,6 +253,18 @@ class Form(ModalScreen[Answers | None]):
         else:
             self.dismiss(answers)
 
+    def on_input_changed(self, event: Input.Changed) -> None:
+        """What is written so far is kept, where somebody keeps it."""
+        event.stop()
+        if self._kept is not None and (self._touched or self.is_written):
+            self._touched = True
+            self._kept(self._answers())
+
+    @property
+    def is_kept(self) -> bool:
+        """Whether what is written outlives the form."""
+        return self._kept is not None
+
     @property
     def is_written(self) -> bool:
         """Whether a line says something else than it began with."""
@@ -271,6 +284,6 @@ class Form(ModalScreen[Answers | None]):
 
     def action_cancel(self) -> None:
         """Leaves everything as it is."""
-        if self._left is not None:
-            self._left(self._answers())
+        if self._kept is not None:
+            self._kept(self._answers())
         self.dismiss(None)

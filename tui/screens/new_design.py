@@ -68,6 +68,11 @@ class NewDesignPage(Page[str | None]):
         self.call_after_refresh(self._show)
 
     @property
+    def unmade(self) -> str:
+        """The row, as long as no design is made of it."""
+        return "the row of stages" if self._row else ""
+
+    @property
     def _at(self) -> int:
         """The place of the stage under the hand; -1 where there is none."""
         key = self.query_one(RowList).key

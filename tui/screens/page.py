@@ -25,6 +25,11 @@ class Page(Screen[Result], Generic[Result]):
     focused: Reactive[Widget | None] = Reactive(None, repaint=False)
     """As in Textual, without repainting the whole screen: widgets show for themselves whether they have the focus."""
 
+    @property
+    def unmade(self) -> str:
+        """What has been put together here and is kept nowhere yet, in words; "" where nothing is."""
+        return ""
+
     def compose(self) -> ComposeResult:
         """Body above, notice and keys below."""
         yield from self.compose_body()

@@ -14,6 +14,7 @@ from ...engine.results import Depth, MarginSheet
 from ...storage.values import Note, Revision
 from ..actions import bindings
 from ..drafting import Drafting, changes_words
+from ..note_keeping import NoteKeeping
 from ..shown import Span, line
 from ..widgets.lines import Lines
 from ..widgets.rule import Rule
@@ -31,7 +32,8 @@ _PLACES = (
 )
 
 
-_NOT_SAVED = "not saved; s asks again and still knows the note"
+_NOT_SAVED = "not saved; s asks again and still knows the note, after a restart too"
+_NOT_KEPT = "not saved; s asks again and still knows the note until you leave"
 
 
 class Waiting(ModalScreen[str]):
@@ -77,6 +79,7 @@ class Saving:
         newest: The deepest sheet of the draft as it stands.
         saved: Told the revision.
         written: What was written for the next revision already, by place; it outlives the bench.
+        keeping: Keeps it on the disk, so that it outlives the program too.
     """
 
     def __init__(
@@ -86,8 +89,10 @@ class Saving:
         newest: Callable[[], MarginSheet | None],
         saved: Callable[[Revision], None],
         written: dict[str, str],
+        keeping: NoteKeeping,
     ) -> None:
         self.written = written
+        self._keeping = keeping
         self._page = page
         self._drafting = drafting
         self._newest = newest
@@ -101,11 +106,18 @@ class Saving:
         """What was predicted of the next revision."""
         return self.written.get("prediction", "")
 
+    def predict(self, text: str) -> None:
+        """What is predicted of the next revision."""
+        self.written["prediction"] = text
+        self._kept()
+
     def ask(self) -> None:
         """Asks for the note."""
         known = {"change": changes_words(self._drafting.changes()), **self.written}
         fields = [Field(name, label, known.get(name, ""), example) for name, label, example in _PLACES]
-        self._page.app.push_screen(Form("Why does this revision exist?", fields, _refusal, self._keep), self._noted)
+        self._page.app.push_screen(
+            Form("Why does this revision exist?", fields, _refusal, kept=self._keep), self._noted
+        )
 
     def _keep(self, answers: Answers) -> None:
         """Remembers what was written, but for the changes that are filled in anew each time."""
@@ -113,6 +125,20 @@ class Saving:
         self.written |= {name: text.strip() for name, text in answers.items() if text.strip() or name in self.written}
         if self.written.get("change") == filled:
             del self.written["change"]
+        self._kept()
+
+    def _kept(self) -> None:
+        # Where another sitting edits the design, the note on the disk is that one's.
+        if not self._drafting.looking:
+            self._keeping.soon(self._drafting.name, self.written)
+
+    def _not_saved(self) -> None:
+        self._keeping.now()
+        trouble = self._keeping.trouble.get(self._drafting.name)
+        if trouble:
+            self._page.refuse(f"{_NOT_KEPT}. {trouble}")
+        else:
+            self._page.say(_NOT_KEPT if self._drafting.looking else _NOT_SAVED, passing=True)
 
     def begun(self) -> None:
         """A new study runs: corners are to be expected again."""
@@ -132,7 +158,7 @@ class Saving:
 
     def _noted(self, answers: Answers | None) -> None:
         if answers is None:
-            self._page.say(_NOT_SAVED, passing=True)
+            self._not_saved()
             return
         self._keep(answers)
         self._note = Note(**{name: text.strip() for name, text in answers.items()})
@@ -146,11 +172,13 @@ class Saving:
     def _waited(self, how: str | None) -> None:
         self._waiting = None
         if how not in {"ready", "now"}:
-            self._page.say(_NOT_SAVED, passing=True)
+            self._not_saved()
             return
         kept: list[Revision] = []
         if self._page.attempt(lambda: kept.append(self._drafting.save(self._note, self._newest()))):
             self.written.clear()
+            self._kept()
+            self._keeping.now()
             self._saved(kept[0])
 
 

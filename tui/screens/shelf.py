@@ -45,7 +45,7 @@ class ShelfScreen(Page[None]):
         super().__init__()
         self._store = store
         self._computing = computing
-        self._remembered = Remembered()
+        self._remembered = Remembered(store.keep_half_note)
         self._preparing = False
 
     def compose_body(self) -> ComposeResult:
@@ -127,8 +127,12 @@ class ShelfScreen(Page[None]):
 
     @property
     def unsaved_notes(self) -> list[str]:
-        """The designs for whose next revision a note is begun."""
-        return [name for name, written in self._remembered.notes.items() if any(written.values())]
+        """The designs for whose next revision a note is begun that leaving would lose."""
+        return self._remembered.kept_nowhere
+
+    def on_unmount(self) -> None:
+        """Whatever ended the program, a dropped line too: a note that is being written stays."""
+        self._remembered.keeping.now()
 
     def action_new(self) -> None:
         """A new design: of catalogue stages, empty, or a copy of one."""

@@ -42,6 +42,8 @@ class ValueEntry(Horizontal):
     class Left(Message):
         """Nothing is to change."""
 
+    _began = ""
+
     def compose(self) -> ComposeResult:
         """Label and line."""
         yield Lines(classes="label")
@@ -49,6 +51,7 @@ class ValueEntry(Horizontal):
 
     def begin(self, label: str, text: str, *, typed: bool) -> None:
         """Takes the keyboard. ``typed`` texts are continued; others are replaced by the first key."""
+        self._began = "" if typed else visible(text)
         shown = self.query_one(Lines)
         shown.show(line(Span(f" {label} ", "strong")))
         shown.refresh()  # hidden until now, it has no cells that could be told apart
@@ -57,6 +60,12 @@ class ValueEntry(Horizontal):
         entry.value = visible(text)
         entry.cursor_position = len(entry.value)
         entry.focus()
+
+    @property
+    def is_begun(self) -> bool:
+        """Whether it has the keyboard and something else is written than it began with."""
+        entry = self.query_one(TextLine)
+        return entry.has_focus and entry.value != self._began
 
     def on_input_submitted(self, event: Input.Submitted) -> None:
         """Enter."""
