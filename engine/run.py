@@ -109,6 +109,11 @@ def most_steps(circuit: Circuit, rows: int = 0) -> int:
     return int(min(MOST_STEPS, MOST_SECONDS / (ITERATES * iterate_cost(circuit.topology, rows))))
 
 
+def most_iterates(circuit: Circuit, rows: int = 0) -> int:
+    """How many iterates a lane may take in all: what bounds its work, however many of them a step needs."""
+    return int(MOST_SECONDS / iterate_cost(circuit.topology, rows))
+
+
 def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Control:
     """Tolerances of every unknown, tighter on nets that carry timing capacitors, and bounds of the work of a lane."""
     nets, free = int(circuit.topology.size[0]), int(circuit.topology.size[1])
@@ -125,7 +130,8 @@ def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Cont
                     if place < nets:
                         rtol[place] = relative * TIGHT
                         atol[place] = ABSOLUTE * scale * TIGHT_ABSOLUTE
-    return Control(rtol, atol, ints([most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP]))
+    bounds = most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP, most_iterates(circuit, rows)
+    return Control(rtol, atol, ints(bounds))
 
 
 def run(

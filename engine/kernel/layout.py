@@ -155,7 +155,7 @@ class Control(NamedTuple):
 
     relative: Floats  # (n_free,)
     absolute: Floats  # (n_free,)
-    bounds: Ints  # most steps of a lane, most Newton iterations of a stage, and of a jump
+    bounds: Ints  # most steps of a lane, Newton iterations of a stage, of a jump, and of the lane in all
 
 
 class Results(NamedTuple):

@@ -261,6 +261,7 @@ def march_rows(
                     asked = clock[ASKED, w]
                     clock[NEXT, w] = wanted if length == asked else max(wanted, min(asked, 3.0 * length))
             elif failed[w] != 0:
+                counts[lane, 2] += int(clock[ROUND, w])
                 counts[lane, 3] += 1
                 clock[NEXT, w] = clock[LENGTH, w] * 0.1
                 came[w] = AGAIN
@@ -345,7 +346,7 @@ def march_rows(
                 leaps = True
             if how == NOT_ENDED and not leaps:
                 counts[lane, 0] += 1
-                if counts[lane, 0] > bounds[0]:
+                if counts[lane, 0] > bounds[0] or counts[lane, 2] > bounds[3]:
                     how = OVERWORKED
             if how != NOT_ENDED:
                 if how == DONE or how == STOPPED:

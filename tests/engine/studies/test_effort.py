@@ -19,7 +19,16 @@ from stagebook.engine.kernel.layout import OVERWORKED, Program
 from stagebook.engine.primitives.columns import Lanes
 from stagebook.engine.primitives.signals import Row
 from stagebook.engine.results import Verdict
-from stagebook.engine.run import MOST_SECONDS, MOST_STEPS, Observed, control, most_steps, run
+from stagebook.engine.run import (
+    MOST_AT_JUMP,
+    MOST_SECONDS,
+    MOST_STEPS,
+    Observed,
+    control,
+    most_iterates,
+    most_steps,
+    run,
+)
 from stagebook.engine.studies import effort, evaluate, skipped, trials
 from stagebook.engine.studies.causes import causes
 from stagebook.engine.studies.diagnosis import diagnosed
@@ -87,6 +96,19 @@ def test_a_lane_may_take_fewer_steps_the_more_each_costs() -> None:
         assert most_steps(large, rows=1000) < most_steps(large)
 
 
+def test_iterates_are_bounded_however_many_a_step_takes(monkeypatch: pytest.MonkeyPatch) -> None:
+    """They are what costs: steps that take many, or are taken in vain, must not make a lane longer."""
+    monkeypatch.setattr("stagebook.engine.run.ITERATES", 0.01)  # so that no number of steps is too large
+    monkeypatch.setattr("stagebook.engine.run.MOST_SECONDS", 0.05)
+    circuit = setup(*astable(), ends=1.0)
+    lanes = circuit.lanes()
+    seen = run(circuit.circuit, lanes, circuit.program(lanes), ())
+    assert seen.results.ended[0, 0] == OVERWORKED
+    iterates = int(seen.results.work[0, 2])
+    # A step takes 12 for its stage and 12 for its end at most, a jump 200: one of them may go beyond.
+    assert 0 < iterates - most_iterates(circuit.circuit) <= MOST_AT_JUMP
+
+
 def test_what_takes_too_long_in_a_large_circuit_is_unknown_and_told(monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("stagebook.engine.run.MOST_SECONDS", 0.5)
     circuit = setup(*crosswise(60, 3), *astable(), ends=1.0)
@@ -96,12 +118,14 @@ def test_what_takes_too_long_in_a_large_circuit_is_unknown_and_told(monkeypatch:
     seen = run(circuit.circuit, lanes, circuit.program(lanes), ())
     assert time.perf_counter() - begin < 20.0  # on a busy machine
     assert seen.results.ended[0, 0] == OVERWORKED
-    allowed = most_steps(circuit.circuit)
+    steps, _, iterates, _ = (int(each) for each in seen.results.work[0])
+    allowed, in_all = most_steps(circuit.circuit), most_iterates(circuit.circuit)
     assert allowed < 5_000
-    assert seen.results.work[0, 0] == allowed + 1
+    assert steps == allowed + 1 or (steps <= allowed and iterates > in_all)
+    assert iterates <= in_all + MOST_AT_JUMP
     nets = int(circuit.circuit.topology.size[0])
     said = str(diagnosed(seen, lanes, "alarm", 0))
-    assert f"({allowed + 1} are the most in a circuit of {nets} nets): it goes on oscillating near net" in said
+    assert f"({steps} are the most in a circuit of {nets} nets): it goes on oscillating near net" in said
     found = {check.id: check for check in study(circuit.design).checks}["resistor_power:all:R901"]
     assert found.verdict is Verdict.UNKNOWN
     assert "took too many steps by" in str(found.reason)
