@@ -46,7 +46,7 @@ def compile_all() -> None:
             stop_row=layout.ints([-1]),
             keep_row=layout.ints([]),
         ),
-        layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200])),
+        layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200, 100_000])),
         layout.Results(
             np.zeros((1, 0)),
             np.zeros((1, 0)),
