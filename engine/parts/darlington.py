@@ -10,7 +10,8 @@ import numpy as np
 from ..primitives.builder import Bench, inverse
 from .figures import figure
 from .kind import Entry, Kind
-from .transistor import DATA, FIELDS, LAW, PINS, add_transistor, gain_given, note_laws
+from .transistor import DATA, FIELDS, LAW, PINS, add_transistor, note_laws
+from .transistor_figures import gain_given
 
 if TYPE_CHECKING:
     from ..design.document import Part

@@ -1,4 +1,4 @@
-"""Diodes: one junction, from two forward points or a given law, with leakage, series resistance and breakdown.
+"""Diodes: one junction, from one to three forward points or a given law, with leakage and breakdown.
 
 A light-emitting diode has the band gap of its material; a Schottky diode the barrier of its metal contact and the
 temperature law of Richardson, I ~ T^2 exp(-barrier/kT). A surge clamp breaks down along the exponential through its
@@ -13,8 +13,9 @@ from typing import TYPE_CHECKING
 from ..errors import CircuitError
 from .figures import figure, needed, typical, valued
 from .kind import TEXT, THERMAL, Entry, Kind
+from .leakage import kelvin_per_doubling, leakage_entries
 from .physics import BAND_GAP, SATURATION_EXPONENT, doubling, saturation_factor, saturation_from, thermal_voltage
-from .points import forward_law
+from .points import ForwardLaw, Point, forward_law, forward_law_of_three
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -37,41 +38,43 @@ def _law(part: Part, key: str, unit: str) -> float | None:
     return next(v for v in (found.typical, found.min, found.max) if v is not None)
 
 
-def _series(part: Part) -> float:
-    if part.law:
-        return _law(part, "series_resistance", "ohm") or 0.0
-    return typical(part, "series_resistance", "ohm", 0.0)
-
-
-def _forward(part: Part, build: Builder, gap: float = BAND_GAP, power: float = SATURATION_EXPONENT) -> Laws:
+def _forward_law(part: Part) -> ForwardLaw:
+    """The law that is given, else the one through one, two or three forward points."""
     if part.law:
         saturation = _law(part, "saturation_current", "A")
         if saturation is None:
             raise CircuitError(
                 f'part {part.ref}, law saturation_current: missing; write it like "saturation_current": "1e-14 A"'
             )
-        ideality = _law(part, "ideality", "") or 1.0
+        return ForwardLaw(saturation, _law(part, "ideality", "") or 1.0, _law(part, "series_resistance", "ohm") or 0.0)
+    low = _point(part, "forward_low", "0.60 V", "1 mA")
+    series = typical(part, "series_resistance", "ohm", 0.0)
+    if figure(part, "forward_high", "V") is None:
+        return ForwardLaw(saturation_from(low[0] - low[1] * series, low[1]), 1.0, series)
+    high = _point(part, "forward_high", "0.72 V", "10 mA")
+    key = "forward_high" if figure(part, "forward_middle", "V") is None else "forward_middle"
+    try:
+        if key == "forward_high":
+            return forward_law(low, high, series=series)
+        return forward_law_of_three(low, _point(part, key, "0.66 V", "3 mA"), high)
+    except CircuitError as refusal:
+        raise CircuitError(f"part {part.ref}, {key}: {refusal}") from refusal
+
+
+def _point(part: Part, key: str, volts: str, amperes: str) -> Point:
+    return needed(part, key, "V", volts).typical, needed(part, f"{key}_current", "A", amperes).typical
+
+
+def _forward(part: Part, build: Builder, gap: float = BAND_GAP, power: float = SATURATION_EXPONENT) -> Laws:
+    law = _forward_law(part)
+    if part.law:
         capacitance = _law(part, "capacitance", "F") or 0.0
         transit = _law(part, "transit_time", "s") or 0.0
     else:
-        low = (
-            needed(part, "forward_low", "V", "0.60 V").typical,
-            needed(part, "forward_low_current", "A", "1 mA").typical,
-        )
-        high = figure(part, "forward_high", "V")
-        ideality = 1.0
-        series = _series(part)
-        saturation = saturation_from(low[0] - low[1] * series, low[1])
-        if high is not None:
-            upper = high.typical, needed(part, "forward_high_current", "A", "10 mA").typical
-            try:
-                law = forward_law(low, upper, series=series)
-            except CircuitError as refusal:
-                raise CircuitError(f"part {part.ref}, forward_high: {refusal}") from refusal
-            saturation, ideality = law.saturation, law.ideality
         capacitance = typical(part, "capacitance", "F", 0.0)
         transit = typical(part, "transit_time", "s", 0.0)
-    current = build.column(part.ref, "saturation_current", saturation)
+    ideality = law.ideality
+    current = build.column(part.ref, "saturation_current", law.saturation)
     return {
         "saturation": lambda lanes: lanes[current] * saturation_factor(lanes.ambient, ideality, gap, power),
         "slope": lambda lanes: ideality * thermal_voltage(lanes.ambient),
@@ -85,13 +88,13 @@ def _leakage(part: Part, build: Builder) -> Laws:
     if found is None:
         return {}
     key = build.column(part.ref, "reverse_current", *found.limits, logarithmic=True)
-    step = typical(part, "reverse_doubling", "K", 10.0)
+    step = kelvin_per_doubling(part, "reverse", found)
     return {"leakage": lambda lanes: lanes[key] * doubling(lanes.ambient, step)}
 
 
 def _finish(part: Part, build: Builder, laws: Laws) -> None:
     anode, cathode = part.pins["anode"], part.pins["cathode"]
-    series = _series(part)
+    series = _forward_law(part).series
     inner = anode
     bench = build.bench(part.ref)
     if series:
@@ -172,8 +175,10 @@ DATA = {
     "forward_low_current": Entry("A"),
     "forward_high": Entry("V", about="forward voltage at forward_high_current"),
     "forward_high_current": Entry("A"),
+    "forward_middle": Entry("V", about="a third point, between them: gives the series resistance"),
+    "forward_middle_current": Entry("A"),
     "reverse_current": Entry("A", about="leakage at 25 C"),
-    "reverse_doubling": Entry("K", about="kelvin per doubling of the leakage"),
+    **leakage_entries("reverse"),
     "capacitance": Entry("F", about="at zero bias"),
     "transit_time": Entry("s"),
     "series_resistance": Entry("ohm"),

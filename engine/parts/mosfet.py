@@ -18,6 +18,7 @@ from ..errors import CircuitError
 from ..primitives.builder import constant
 from .figures import figure, needed, typical
 from .kind import TEXT, THERMAL, Entry, Kind
+from .leakage import kelvin_per_doubling, leakage_entries
 from .physics import REFERENCE, ZERO_CELSIUS, doubling, saturation_factor, saturation_from, thermal_voltage
 
 if TYPE_CHECKING:
@@ -153,7 +154,7 @@ def _from_figures(part: Part, build: Builder) -> tuple[Laws, Laws | None, dict[s
     leak = figure(part, "i_dss", "A")
     if leak is not None:
         key = build.column(part.ref, "i_dss", *leak.limits, logarithmic=True)
-        step = typical(part, "i_dss_doubling", "K", 10.0)
+        step = kelvin_per_doubling(part, "i_dss", leak)
         body["leakage"] = lambda lanes: lanes[key] * doubling(lanes.ambient, step)
     breakdown = figure(part, "drain_source_breakdown", "V")
     if breakdown is not None:
@@ -214,7 +215,7 @@ DATA = {
     "body_diode": Entry("V", about="forward voltage at body_diode_current"),
     "body_diode_current": Entry("A"),
     "i_dss": Entry("A", about="leakage of the channel that is off, at 25 C"),
-    "i_dss_doubling": Entry("K", about="kelvin per doubling of the leakage"),
+    **leakage_entries("i_dss"),
     "drain_source_breakdown": Entry("V", about="typical breakdown, not the rating"),
     "v_dss": Entry("V", about="rated drain-source voltage"),
     "v_gss": Entry("V", about="rated gate-source voltage, of either sign"),

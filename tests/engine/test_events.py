@@ -7,8 +7,10 @@ import math
 import numpy as np
 import pytest
 
+from stagebook.engine.circuit.timeline import Timeline
 from stagebook.engine.errors import CircuitError
 from stagebook.engine.primitives.signals import Anchor, crossing, integral, level, maximum, minimum, voltage
+from stagebook.engine.run import run
 
 from .circuits import Json, Setup, capacitor, resistor, setup, sine, steps, two
 
@@ -299,3 +301,29 @@ def test_instants_that_differ_by_rounding_only_are_one() -> None:
     gentle = starts[program.restart == 0]
     # The stop at 1 ms is one with events: it stays a jump.
     assert gentle == pytest.approx([0.5e-3, 1.5e-3], rel=1e-12)
+
+
+def test_events_of_every_lane_come_at_instants_of_its_own() -> None:
+    circuit = pulled_up(ends=5.0)
+    lanes = circuit.lanes(count=3)
+    line = Timeline(circuit.circuit, lanes)
+    connected, rise, closed = np.array([0.1, 0.2, 0.3]), np.array([1e-3, 5e-2, 1e-6]), np.array([3.0, 1.0, 2.0])
+    line.connect_supply(connected, rise)
+    line.set_part("S1", closed, "closed")
+    up, down = crossing(voltage("n"), 3.0, True), crossing(voltage("n"), 3.0, False)
+    seen = run(circuit.circuit, lanes, line.program(5.0), [up, down])
+    assert seen.value(up) == pytest.approx(connected + 0.5 * rise, rel=1e-6)
+    assert seen.value(down) == pytest.approx(closed, abs=2e-12)
+
+
+def test_what_starts_do_not_name_is_solved_at_the_beginning() -> None:
+    # The net between two resistors has no charge to keep: it stands between the supply and what the capacitor holds.
+    circuit = setup(
+        resistor("R1", "supply", "m", "1k"),
+        resistor("R2", "m", "n", "2k"),
+        capacitor("C1", "n", "0V", "1 uF"),
+        supply="6 V",
+        starts={"n": "3 V"},
+        ends=1e-3,
+    )
+    assert volts_at(circuit, "m", 1e-9) == pytest.approx([5.0], abs=1e-4)

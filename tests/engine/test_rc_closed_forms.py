@@ -207,3 +207,13 @@ def test_lanes_carry_their_own_values() -> None:
     supplies = np.array([9.0, 6.0, 12.0, 9.0])
     seen = timer.run(row, changes={("R1", "value"): ohms, ("conditions", "supply"): supplies})
     assert seen.value(row) == pytest.approx(ohms * 1e-6 * np.log(supplies / (supplies - 4.5)), rel=ACCURACY)
+
+
+def test_a_capacitor_that_loses_half_at_voltage_is_half_as_slow() -> None:
+    # Class figures of X7R (from memory): 0 .. -50 % of the value up to its rated voltage.
+    row = crossing(voltage("t"), 4.5, rising=True)
+    timer = charging("1M", capacitor("C1", "t", "0V", "1 uF", **{"class": "X7R"}), ends=5.0)
+    drift = next(column for column in timer.circuit.columns if column.key == ("C1", "drift"))
+    assert (drift.low, drift.high) == (-0.5, 0.0)
+    seen = timer.run(row, changes={drift.key: np.array([drift.low, drift.high])})
+    assert seen.value(row) == pytest.approx(np.array([0.5, 1.0]) * math.log(2.0), rel=ACCURACY)

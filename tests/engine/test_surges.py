@@ -10,7 +10,7 @@ import math
 import pytest
 
 from stagebook.engine.errors import CircuitError
-from stagebook.engine.primitives.signals import Anchor, level, voltage
+from stagebook.engine.primitives.signals import Anchor, crossing, level, voltage
 
 from .circuits import Setup, resistor, setup, steps, two
 
@@ -57,3 +57,19 @@ def test_what_cannot_be_is_refused(data: dict[str, str], words: str) -> None:
     part["data"].update({key: text for key, text in data.items() if key != "surge"})
     with pytest.raises(CircuitError, match=words):
         Setup(type(siren().design).load(document)).run()
+
+
+def test_a_piezo_element_has_its_capacitance() -> None:
+    # 1k at 12 V and 12 mA, 20 nF, behind 1k: half of 12 V with R C = 500 ohm x 20 nF.
+    data = {"rated_voltage": "12 V"}
+    case = setup(
+        steps("G1", "in", "0V", (0.0, 0.0), (1e-9, 12.0), (1.0, 12.0)),
+        resistor("R1", "in", "n", "1k"),
+        two("piezo", "LS1", "n", "0V", current="12 mA", capacitance="20 nF", data=data),
+        supply=None,
+        ends=100e-6,
+    )
+    half, end = crossing(voltage("n"), 3.0, True), level(voltage("n"), Anchor(99e-6))
+    seen = case.run(half, end)
+    assert float(seen.value(half)[0]) == pytest.approx(10e-6 * math.log(2.0), rel=2e-3)
+    assert float(seen.value(end)[0]) == pytest.approx(6.0, rel=1e-3)

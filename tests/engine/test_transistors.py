@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 from scipy import constants, optimize
 
-from stagebook.engine.parts.transistor import reverse_gain_from
+from stagebook.engine.parts.transistor_figures import reverse_gain_from
 from stagebook.engine.primitives.signals import Anchor, level
 
 from .circuits import Setup, resistor, setup, steps, transistor

@@ -14,8 +14,8 @@ from stagebook.engine.errors import CircuitError
 from stagebook.engine.results import Verdict
 from stagebook.engine.studies.margins import study
 
-from ..circuits import Json, two
-from .sheets import CONNECT, design, margin, sounder
+from ..circuits import Json, resistor, two
+from .sheets import CONNECT, design, exact, margin, sounder
 from .timers import timer
 
 EXAMPLE = json.loads(Path(__file__).parent.with_name("example.json").read_text("utf-8"))
@@ -163,3 +163,35 @@ def test_the_example_of_the_document() -> None:
     assert found.low == pytest.approx(2.0, abs=1e-4)
     assert found.high == pytest.approx(2.0, abs=1e-4)
     assert (found.verdict, found.margin) == (Verdict.PASS, pytest.approx(1.0, abs=1e-3))
+
+
+def test_a_relay_s_time_is_from_its_going_in_to_its_going_out() -> None:
+    # i = (U/R)(1 - exp(-t R/L)) up to 8.4 V/400 ohm: 3.0 ms; 40k across the coil, from 30 mA down to 2.4 V/400 ohm:
+    # 40 us; both armature times are 5 ms (textbook forms of an RL circuit).
+    coil = {
+        "inductance": "1 H",
+        "resistance": "400R",
+        "pick_up": "8.4 V",
+        "drop_out": "2.4 V",
+        "armature_delay": "5 ms",
+    }
+    wanted = {"check": "duration", "of": "LS1", "from": "K1 in", "to": "K1 out", "min": "80 ms", "max": "100 ms"}
+    relay = design(
+        two("coil", "K1", "supply", "low", **coil),
+        two("contact", "S1", "low", "0V", data={"resistance": "1 mohm", "insulation": "1000G"}),
+        exact(resistor("R1", "supply", "low", "40k")),
+        two("contact", "S2", "supply", "out", operated_by="K1"),
+        sounder("LS1", "out", "0V", "10 mA", "6 V", rated="12 V"),
+        supply="12 V",
+        events=(
+            CONNECT,
+            {"at": "10 ms", "event": "close", "part": "S1"},
+            {"at": "100 ms", "event": "open", "part": "S1"},
+        ),
+        requirements=[wanted],
+        ends="0.2 s",
+    )
+    goes_in = 10e-3 - 1.0 / 400.0 * math.log(1.0 - 8.4 / 12.0) + 5e-3
+    goes_out = 100e-3 + 1.0 / 40.4e3 * math.log(12.0 / 2.4) + 5e-3
+    found = margin(relay, "duration", "LS1")
+    assert found.low == found.high == pytest.approx(goes_out - goes_in, rel=INTERVAL)
