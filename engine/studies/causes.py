@@ -16,14 +16,15 @@ from ..checks.check import Ask
 from ..circuit.circuit import Circuit, build
 from ..design.differences import Change, apply, differences
 from ..design.document import Design
-from ..errors import EngineError
+from ..errors import CircuitError, EngineError
 from ..kernel.layout import Floats
 from ..results import ENGINE, Depth, MarginSheet
 from ..run import never, silent
-from .evaluate import Progress, asks_of, judge, look
+from .effort import causes_beyond
+from .evaluate import Progress, asks_of, judge, look, observe
 from .lanes import Setting, lanes_of
 from .margins import worst_corners
-from .shapley import EXACT_UP_TO, Chosen, shares
+from .shapley import EXACT_UP_TO, Chosen, combinations, shares
 
 STRUCTURE = ("added", "removed", "net")
 
@@ -94,7 +95,8 @@ def causes(
     progress: Progress = silent,
     cancelled: Callable[[], bool] = never,
 ) -> CausesSheet:
-    """Causes of every change of margin from ``old`` to ``new``. Raises EngineError or Cancelled.
+    """Causes of every change of margin from ``old`` to ``new``. Raises EngineError, also for too much to compute, or
+    Cancelled.
 
     ``stored`` and ``stored_new`` are the margins kept with the designs: their worst corners need not be searched again;
     where another engine made the old ones, the change of formula is told apart. Nothing changed gives an empty sheet.
@@ -105,6 +107,7 @@ def causes(
     common = [name for name in before.asks if name in after.asks]
     corners = {name: list(dict.fromkeys((before.corners[name], after.corners[name]))) for name in common}
     players = _players(differences(old, new))
+    _check_effort(new, after, corners, len(players), cancelled)
     try:
         table = _Table(old, new, players, corners, progress, cancelled)
         found = table.shares(seed)
@@ -118,6 +121,18 @@ def causes(
         table = _Table(old, new, players, corners, progress, cancelled)
         found = table.shares(seed)
     return _sheet(new.name, before, after, table, found, stored)
+
+
+def _check_effort(
+    design: Design, side: _Side, corners: dict[str, list[Setting]], changes: int, cancelled: Callable[[], bool]
+) -> None:
+    circuit = build(design)
+    nominal = {name: observe(circuit, circuit.nominal(), name, (), cancelled=cancelled) for name in design.sequences}
+    lanes = len({setting for settings in corners.values() for setting in settings})
+    trials = sum(len(corners[name]) for name in corners if side.asks[name].trial is not None)
+    too_large = causes_beyond(circuit, nominal, len(corners), changes, lanes, trials, combinations(changes))
+    if too_large is not None:
+        raise CircuitError(too_large)
 
 
 @dataclass(frozen=True)

@@ -14,14 +14,16 @@ from itertools import groupby
 from ..checks.view import View
 from ..circuit.circuit import build
 from ..design.document import Design
+from ..errors import CircuitError
 from ..results import ENGINE
 from ..run import never, silent
-from .evaluate import Progress
+from .effort import faults_beyond
+from .evaluate import Progress, observe
 from .fault_lanes import FaultLanes
 from .fault_list import faults_of
 from .fault_outcomes import FaultResult, FaultSheet
 from .faulted import faulted
-from .healthy import Behaviour, behaviours
+from .healthy import Behaviour, alarm_loads, behaviours
 
 
 def study(
@@ -33,11 +35,21 @@ def study(
 ) -> FaultSheet:
     """All single faults of a design; ``report`` gets the sheet so far after each stage, ``progress`` counts faults.
 
-    Raises CircuitError where the design cannot be computed or no load tells of an alarm, and Cancelled.
+    Raises CircuitError where the design cannot be computed, no load tells of an alarm or there is too much to compute,
+    and Cancelled.
     """
     began = time.perf_counter()
-    healthy = behaviours(View(design, build(design)), cancelled)
+    circuit = build(design)
+    view = View(design, circuit)
+    loads = len(alarm_loads(view))
     faults = faults_of(design)
+    # One circuit a stage: gaps in all parts at once would make each lane several times as slow.
+    made = [faulted(design, tuple(group)) for _, group in groupby(faults, key=lambda fault: fault.stage)]
+    nominal = {name: observe(circuit, circuit.nominal(), name, (), cancelled=cancelled) for name in design.sequences}
+    too_large = faults_beyond(circuit, nominal, loads, [(each.circuit, each.lanes.count) for each in made])
+    if too_large is not None:
+        raise CircuitError(too_large)
+    healthy = behaviours(view, cancelled)
     found: list[FaultResult] = []
     standby: float | None = None
 
@@ -49,9 +61,8 @@ def study(
     def portion(done: int) -> None:
         progress(len(found) + done, len(faults))
 
-    # One circuit a stage: gaps in all parts at once would make each lane several times as slow.
-    for _, group in groupby(faults, key=lambda fault: fault.stage):
-        lanes = FaultLanes(faulted(design, tuple(group)), healthy, portion, cancelled)
+    for each in made:
+        lanes = FaultLanes(each, healthy, portion, cancelled)
         standby = lanes.standby()
         found += lanes.results()
         if report is not None:

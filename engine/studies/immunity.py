@@ -14,6 +14,7 @@ import numpy as np
 from ..checks.alarm_state import TOLD_BY, alarm_states, settling, standby
 from ..checks.charge_trial import SETTLE, charge_trial
 from ..checks.check import Ask
+from ..checks.trial import Trial
 from ..checks.view import MAIN, View
 from ..circuit.circuit import Circuit, build
 from ..circuit.timeline import Timeline
@@ -23,6 +24,7 @@ from ..kernel.layout import Floats
 from ..primitives.builder import RETURN
 from ..primitives.columns import AMBIENT, SUPPLY, Column, Lanes
 from ..run import never, run, silent
+from .effort import immunity_beyond
 from .evaluate import Progress, asks_of
 from .immunity_sheet import ANY, LEAST, MOST, NOT_YET, WIDTH, ImmunitySheet, NetImmunity
 from .lanes import GAIN, Setting, lanes_of, settings
@@ -44,7 +46,7 @@ def study(
 ) -> ImmunitySheet:
     """The immunity of every net; ``report`` gets what is known after each corner, the slew not yet.
 
-    Raises CircuitError where nothing tells of an alarm, and Cancelled.
+    Raises CircuitError where nothing tells of an alarm or there is too much to compute, and Cancelled.
     """
     began = time.perf_counter()
     circuit = build(design, [net for net in design.nets if net != RETURN])
@@ -96,6 +98,7 @@ def _nets(
     )  # fmt: skip
     state, at = first.state(begin)
     cases = 2 * len(nets)
+    _check_effort(circuit, trial, base, (state, at), len(corners) * cases, cancelled)
     charge = np.empty((len(corners), cases))
     found: tuple[NetImmunity, ...] = ()
     for k in range(len(corners)):
@@ -109,6 +112,23 @@ def _nets(
         report(found)
         progress((k + 1) * cases, len(corners) * cases)
     return found
+
+
+def _check_effort(
+    circuit: Circuit,
+    trial: Trial,
+    base: Lanes,
+    kept: tuple[Floats, Floats],
+    lanes: int,
+    cancelled: Callable[[], bool],
+) -> None:
+    """Refuse what would take too long, told from the first net at nominal with the least charge and the largest."""
+    values = np.vstack([np.repeat(base.values[:, [0]], 2, axis=1), np.zeros(2)])
+    state, at = (np.ascontiguousarray(np.repeat(each[[0]], 2, axis=0)) for each in kept)
+    one = TrialRun(circuit, trial, Lanes((*circuit.columns, CASE), values), cancelled, (state, at))
+    too_large = immunity_beyond(circuit, lanes, one.tried([0, 1], np.array([LEAST, MOST])), trial.sequence)
+    if too_large is not None:
+        raise CircuitError(too_large)
 
 
 def _corners(circuit: Circuit) -> list[Setting]:

@@ -21,10 +21,10 @@ from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..results import ENGINE, CheckResult, Depth, MarginSheet, Verdict
-from ..run import never, silent
+from ..run import Observed, never, silent
 from .corner import Corner
 from .corner_words import Effects, named, of_conditions, of_parts, used
-from .effort import beyond
+from .effort import beyond, spread_lanes
 from .evaluate import Progress, asks_of, edges_of, judge, look
 from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, settings, tolerances
 from .mirrored import with_mirrored
@@ -48,7 +48,8 @@ def study(
 ) -> MarginSheet:
     """All margins of a design; ``report`` gets a sheet after each depth. Raises CircuitError or Cancelled.
 
-    ``lanes`` random lanes are drawn with ``seed`` for the spread, none when 0. ``only`` the margin of this id, all
+    ``lanes`` random lanes are drawn with ``seed`` for the spread, none when 0, and fewer where so many would take too
+    long; the sheet tells how many. ``only`` the margin of this id, all
     where None.
     """
     began = time.perf_counter()
@@ -64,7 +65,8 @@ def study(
             report(made)
         return made
 
-    first, too_large = _nominal(circuit, asks, cancelled)
+    first, too_large, observed = _nominal(circuit, asks, cancelled)
+    lanes = spread_lanes(circuit, asks, observed, lanes)
     nominal = watch(circuit, asks, first if too_large is None else _unsearched(first, too_large), cancelled)
     middle = nominal if too_large is None else first
     checks = [_result(ask, corner, middle[ask.id].judged.margin[0]) for ask, corner in _pairs(asks, nominal)]
@@ -84,7 +86,7 @@ def study(
 
 def worst_corners(circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool] = never) -> dict[str, Corner]:
     """The worst corner of every ask, by its id. Raises CircuitError where the design is too large for them."""
-    nominal, too_large = _nominal(circuit, asks, cancelled)
+    nominal, too_large, _ = _nominal(circuit, asks, cancelled)
     if too_large is not None:
         raise CircuitError(too_large)
     return _searched(circuit, asks, nominal, silent, cancelled)
@@ -110,8 +112,9 @@ def _pairs(asks: tuple[Ask, ...], corners: dict[str, Corner]) -> list[tuple[Ask,
 
 def _nominal(
     circuit: Circuit, asks: tuple[Ask, ...], cancelled: Callable[[], bool]
-) -> tuple[dict[str, Corner], str | None]:
-    """Every ask in the nominal lane, and why no corners can be searched; trials are not begun where that is so."""
+) -> tuple[dict[str, Corner], str | None, dict[str, Observed]]:
+    """Every ask in the nominal lane, and why no corners can be searched; trials are not begun where that is so. And
+    the runs of the nominal lane."""
     lanes = circuit.nominal()
     seen = look(circuit, asks, lanes, cancelled=cancelled)
     too_large = beyond(circuit, asks, seen.observed)
@@ -125,7 +128,7 @@ def _nominal(
         if ask.trial is not None and too_large is not None:
             judged.margin[:] = np.nan
         found[ask.id] = Corner(NOMINAL, "nominal", judged, 0, lanes, broken.get(0), edge, _reach([judged]))
-    return found, too_large
+    return found, too_large, dict(seen.observed)
 
 
 def _unsearched(corners: dict[str, Corner], why: str) -> dict[str, Corner]:

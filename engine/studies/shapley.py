@@ -64,6 +64,11 @@ def sampled(players: int, value: Callable[[Chosen], Floats], seed: int) -> Share
     return Shares(pairs.mean(axis=0), pairs.std(axis=0, ddof=1) / np.sqrt(ORDERS))
 
 
+def combinations(players: int) -> int:
+    """How many combinations of changes are evaluated for shares, at most."""
+    return int(2**players if players <= EXACT_UP_TO else 2 * ORDERS * players)
+
+
 def shares(players: int, value: Callable[[Chosen], Floats], seed: int = 1) -> Shares:
     """Exact shares up to six changes, sampled ones above."""
     return exact(players, value) if players <= EXACT_UP_TO else sampled(players, value, seed)

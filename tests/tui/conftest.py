@@ -88,6 +88,7 @@ class Gates:
     causes: threading.Event = field(default_factory=threading.Event)
     explained: threading.Event = field(default_factory=threading.Event)
     refusal: str = ""
+    most_lanes: int = 1_000_000
     studied: list[str] = field(default_factory=list)
     cancelled: list[str] = field(default_factory=list)
 
@@ -122,7 +123,7 @@ class Gates:
         report(sheet)
         self._wait(self.spread, cancelled, design)
         progress(lanes, lanes)
-        done = replace(sheet, depth=Depth.SPREAD, lanes=lanes, checks=tuple(map(_spread, worst)))
+        done = replace(sheet, depth=Depth.SPREAD, lanes=min(lanes, self.most_lanes), checks=tuple(map(_spread, worst)))
         report(done)
         return done
 

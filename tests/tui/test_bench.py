@@ -345,7 +345,11 @@ async def test_a_comparison_waits_no_longer_when_told_and_breaks_into_no_value(
         assert pilot.app.screen is bench
 
 
-async def test_a_draft_keeps_its_figures_when_the_bench_is_left(app: StagebookApp, gates: Gates) -> None:
+@pytest.mark.parametrize("most_lanes", [1_000_000, 20])
+async def test_a_draft_keeps_its_figures_when_the_bench_is_left(
+    app: StagebookApp, gates: Gates, most_lanes: int
+) -> None:
+    gates.most_lanes = most_lanes  # of a large design the solver draws fewer lanes than it is asked for
     async with app.run_test(size=SIZE) as pilot:
         await to_timer(pilot)
         await pilot.press("3", "5", "0", "k", "enter")

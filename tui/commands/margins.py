@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import sys
 from argparse import ArgumentParser, ArgumentTypeError, Namespace
 from collections.abc import Sequence
 from dataclasses import asdict
@@ -50,6 +51,10 @@ def run(asked: Namespace) -> int:
     with progress("margins: lane") as show:
         lanes = LANES if asked.lanes is None else asked.lanes
         sheet = study(subject.design, lanes=lanes, seed=asked.seed, progress=show)
+    if sheet.lanes < lanes:
+        # Beside the figures, not among them.
+        said = "more of them would take over an hour of one processor core"
+        print(f"margins: the spread is of {sheet.lanes} lanes: {said}", file=sys.stderr)
     if asked.json:
         found = sheet.as_json()
         del found["design"]

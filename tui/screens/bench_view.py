@@ -192,10 +192,15 @@ class BenchView(Page[None]):
         if self.trouble:
             self.trouble = ""
             self.say("")
-        known = self.drafting.stored_figures() or self.remembered.sheet(self.design.content)
+        known = self.remembered.sheet(self.design.content)
+        stored = self.drafting.stored_figures()
+        if stored is not None and (known is None or known.lanes < stored.lanes or known.depth is not Depth.SPREAD):
+            known = stored
         if known is not None:
             self.figures = self.figures.arrived(known)
-        if known is not None and known.lanes >= self.computing.lanes:
+        computed = known is not None and known is self.remembered.sheet(self.design.content)
+        # Of this sitting it has as many lanes as could be had: in a large design fewer than are asked for.
+        if known is not None and (known.lanes >= self.computing.lanes or (computed and known.depth is Depth.SPREAD)):
             self.computing.cancel_study()
             self._request = NO_REQUEST
         else:

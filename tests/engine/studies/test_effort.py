@@ -18,7 +18,7 @@ from stagebook.engine.errors import CircuitError
 from stagebook.engine.kernel.layout import OVERWORKED, Program
 from stagebook.engine.primitives.columns import Lanes
 from stagebook.engine.primitives.signals import Row
-from stagebook.engine.results import Verdict
+from stagebook.engine.results import Depth, Verdict
 from stagebook.engine.run import (
     MOST_AT_JUMP,
     MOST_SECONDS,
@@ -29,13 +29,14 @@ from stagebook.engine.run import (
     most_steps,
     run,
 )
-from stagebook.engine.studies import effort, evaluate, skipped, trials
+from stagebook.engine.studies import effort, evaluate, faults, immunity, skipped, trials, waves
 from stagebook.engine.studies.causes import causes
 from stagebook.engine.studies.diagnosis import diagnosed
 from stagebook.engine.studies.evaluate import asks_of, look
 from stagebook.engine.studies.margins import study, worst_corners
 
 from ..circuits import Json, Setup, capacitor, resistor, setup, transistor
+from .test_faults import buzzer
 from .units import changed, latch, timer
 
 MODEL: Json = {"class": "small npn"}
@@ -180,6 +181,67 @@ def test_a_design_that_is_too_large_for_its_corners_passes_nothing_and_says_so(m
     other = Design.load(changed(latch(), R3="82k"))
     with pytest.raises(CircuitError, match="too large for its corners"):
         causes(design, other, stored=sheet, stored_new=study(other))
+
+
+def done_by(monkeypatch: pytest.MonkeyPatch) -> Callable[[], float]:
+    """Seconds of one core by the rule, of all runs from now on; eight lanes abreast, a few cost as much."""
+    done = [0.0]
+
+    def counted(circuit: Circuit, lanes: Lanes, program: Program, rows: Sequence[Row], **how: Any) -> Observed:
+        seen = run(circuit, lanes, program, rows, **how)
+        iterates = float(seen.results.work[:, 2].mean()) * -(-lanes.count // ABREAST)
+        done[0] += iterates * iterate_cost(circuit.topology, len(seen.rows))
+        return seen
+
+    for module in (evaluate, trials, immunity, waves):
+        monkeypatch.setattr(module, "run", counted)
+    return lambda: done[0]
+
+
+@pytest.mark.parametrize("what", ["its faults", "its immunity"])
+def test_a_study_that_is_too_large_is_refused_before_it_is_begun(what: str, monkeypatch: pytest.MonkeyPatch) -> None:
+    design = buzzer() if what == "its faults" else Design.load(latch())
+    study_of: Callable[[Design], object] = faults.study if what == "its faults" else immunity.study
+    done, told = done_by(monkeypatch), []
+    words = effort._too_large
+
+    def noted(*of: Any) -> str | None:
+        told.append((of[0], sum(of[3].values())))
+        return words(*of)
+
+    monkeypatch.setattr(effort, "_too_large", noted)
+    study_of(design)
+    whole = done()
+    (about,) = (seconds for of, seconds in told if of == what)
+    # Both by the same rule. What the sound unit tells beforehand of units that are not sound is no more than the order.
+    assert 0.0 < whole / 10.0 < about < 10.0 * whole
+    monkeypatch.setattr(effort, "MOST_EFFORT", 1e-6)
+    with pytest.raises(
+        CircuitError, match=rf"^too large for {what}: \d+ .* would take about 0 minutes of one processor"
+    ):
+        study_of(design)
+    assert done() - whole < 0.3 * whole
+
+
+def test_causes_that_are_too_many_are_refused(monkeypatch: pytest.MonkeyPatch) -> None:
+    design, other = Design.load(latch()), Design.load(changed(latch(), R3="82k"))
+    sheets = study(design), study(other)
+    monkeypatch.setattr(effort, "MOST_EFFORT", 1e-6)
+    with pytest.raises(CircuitError, match=r"^too large for its causes: 1 changes in 2 combinations of "):
+        causes(design, other, stored=sheets[0], stored_new=sheets[1])
+
+
+def test_a_spread_is_of_as_many_lanes_as_time_allows(monkeypatch: pytest.MonkeyPatch) -> None:
+    """And the ones that are drawn are the first of those that would have been (keyed by seed, reference, datum)."""
+    design = Design.load(timer())
+    monkeypatch.setattr(effort, "MOST_SPREAD", 0.0)
+    sheet = study(design, lanes=100_000)
+    assert (sheet.lanes, sheet.depth) == (effort.LEAST_SPREAD, Depth.SPREAD)
+    monkeypatch.undo()
+    whole = study(design, lanes=effort.LEAST_SPREAD)
+    assert [check.spread for check in sheet.checks] == [check.spread for check in whole.checks]
+    assert any(check.spread for check in sheet.checks)
+    assert study(design, lanes=0).lanes == 0
 
 
 def test_growing_modes_are_the_same_however_many_states_are_in_memory(monkeypatch: pytest.MonkeyPatch) -> None:

@@ -29,6 +29,16 @@ def computed(stagebook: Run, *arguments: object) -> dict[str, Any]:
     return found
 
 
+def test_a_spread_that_would_take_too_long_is_of_fewer_lanes_and_says_so(
+    stagebook: Run, bell: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("stagebook.engine.studies.effort.MOST_SPREAD", 0.0)
+    status, out, err = stagebook("margins", bell, "--lanes", 50_000, "--json")
+    assert status == 0
+    assert json.loads(out)["lanes"] == 20
+    assert err == ("margins: the spread is of 20 lanes: more of them would take over an hour of one processor core\n")
+
+
 def by_id(found: dict[str, Any]) -> dict[str, dict[str, Any]]:
     return {check["id"]: check for check in found["checks"]}
 
