@@ -79,7 +79,12 @@ def study(
     if lanes > 0:
         drawn = random_lanes(circuit.columns, lanes, seed)
         spreads = spread_of(circuit, known, drawn, progress, cancelled)
-        checks = [replace(check, spread=spreads.get(check.id)) for check in checks]
+        checks = [
+            replace(check, spread=found.spread, reason=found.beside(check, drawn))
+            if (found := spreads.get(check.id)) is not None
+            else check
+            for check in checks
+        ]
         made = sheet(Depth.SPREAD, checks)
     return made
 

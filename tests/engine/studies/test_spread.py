@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -16,7 +17,7 @@ from stagebook.engine.studies.lanes import random_lanes
 from stagebook.engine.studies.margins import study
 from stagebook.engine.studies.spread import wilson
 
-from ..circuits import Json, resistor
+from ..circuits import Json, resistor, transistor, two
 from .units import changed, latch, load, timer
 
 LANES = 50
@@ -150,6 +151,44 @@ def test_published_intervals_of_a_share(passed: int, total: int, low: float, hig
 def test_intervals_agree_with_the_reference_library(passed: int, total: int) -> None:
     reference = stats.binomtest(passed, total).proportion_ci(method="wilson")
     assert wilson(passed, total) == pytest.approx((reference.low, reference.high), abs=1e-9)
+
+
+EXACT = {"tolerance": "0 %"}
+
+
+def test_a_random_unit_that_is_worse_than_all_corners_is_told() -> None:
+    # At 8 V no current flows through 8.2 V, at 15 V the driver is saturated; between 12 V and 8 V it stands half-way
+    # and is hottest (the power of a resistor's load is largest at half the supply, any textbook).
+    driver = {
+        "stagebook": 1,
+        "name": "starved",
+        "conditions": {"supply": {"min": "8 V", "nominal": "12 V", "max": "15 V"}, "ambient": "20 C"},
+        "stages": [
+            {
+                "name": "unit",
+                "parts": [
+                    two("zener", "D1", "x", "supply", "8.2 V", **{"class": "zener 0.5 W", **EXACT}),
+                    resistor("R1", "x", "b", "1k", **EXACT),
+                    resistor("R2", "b", "0V", "10k", **EXACT),
+                    transistor("Q1", "low", "b", "0V", **{"class": "0.5 A driver npn"}),
+                    resistor("R3", "supply", "low", "47R", **EXACT),
+                ],
+            }
+        ],
+        "sequences": {"alarm": {"ends": "10 ms", "events": []}},
+    }
+    name = "junction_temperature:unit:Q1"
+    plain, drawn = (spreads(driver, lanes)[name] for lanes in (0, 100))
+    assert plain.reason is None
+    assert (drawn.margin, drawn.verdict) == (plain.margin, plain.verdict)
+    told = re.fullmatch(
+        r"a random unit is worse than all corners that are tried: ([+-][\d.]+) % at supply ([\d.]+) V, ambient 20 C",
+        str(drawn.reason),
+    )
+    assert told is not None, drawn.reason
+    assert drawn.margin is not None
+    assert float(told[1]) / 100.0 < drawn.margin - 0.05
+    assert 8.5 < float(told[2]) < 11.5
 
 
 def test_of_nothing_nothing_is_known() -> None:
