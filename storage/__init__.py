@@ -24,7 +24,7 @@ from .errors import (
 )
 from .inspection import Inspection, inspect, verify
 from .names import checked_name
-from .place import default_path
+from .place import at_home, default_path, is_missing
 from .rescue import Rescued, rescue
 from .store import Store
 from .values import ADDABLE, DesignRow, Draft, MadePart, Note, NoteEntry, Revision, Sitting, Worst
@@ -60,9 +60,11 @@ __all__ = [
     "StoreUnreadable",
     "TakenOver",
     "Worst",
+    "at_home",
     "checked_name",
     "default_path",
     "inspect",
+    "is_missing",
     "rescue",
     "verify",
 ]

@@ -63,7 +63,7 @@ def keep_half_note(store: Path, design: str, written: Mapping[str, str]) -> None
     except OSError as error:
         full = error.errno in {errno.ENOSPC, getattr(errno, "EDQUOT", errno.ENOSPC)}
         remedy = "make room" if full else f"give yourself write permission on {file.parent}"
-        words = f"A note that is being written cannot be kept ({error.strerror or error}): {remedy}, or save it."
+        words = f"A note that is being written cannot be kept ({error.strerror or error}): {remedy}."
         raise (StoreFull if full else StoreReadOnly)(words) from error
     finally:
         if temporary is not None:

@@ -16,7 +16,26 @@ HEADER = 100
 def default_path() -> Path:
     """The database file that STAGEBOOK_STORE names, otherwise the one in the user's data folder."""
     named = os.environ.get("STAGEBOOK_STORE")
-    return Path(named).expanduser() if named else user_data_path("stagebook") / "stagebook.sqlite3"
+    return at_home(named) if named else user_data_path("stagebook") / "stagebook.sqlite3"
+
+
+def at_home(path: Path | str) -> Path:
+    """The path with ``~`` and ``~user`` replaced by their home; as it is where there is no such user."""
+    try:
+        return Path(path).expanduser()
+    except RuntimeError:
+        return Path(path)
+
+
+def is_missing(path: Path) -> bool:
+    """Whether there is nothing of this name. What may not be looked at may be there: whoever opens it says why not."""
+    try:
+        path.stat()
+    except (FileNotFoundError, NotADirectoryError, ValueError):
+        return True
+    except OSError:
+        return False
+    return False
 
 
 def beside(path: Path, ending: str) -> Path:

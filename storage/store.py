@@ -22,7 +22,7 @@ from .backup import back_up
 from .connection import Opened, open_database, plain_errors
 from .errors import DesignMissing, NameTaken, StorageError, StoreTooNew, StoreUnreadable
 from .names import checked_name
-from .place import default_path
+from .place import at_home, default_path
 from .sealed import seal_design
 from .tables import StoredDesign, StoredDraft, StoredSitting
 from .values import DesignRow, Draft, MadePart, Note, Revision, Sitting
@@ -68,7 +68,7 @@ class Store:
         Raises:
             StoreUnreadable: The file is damaged, no store, or cannot be reached.
         """
-        place = Path(path).expanduser() if path is not None else default_path()
+        place = at_home(path) if path is not None else default_path()
         return cls(place, open_database(place), clock, terminal)
 
     @property
@@ -300,7 +300,7 @@ class Store:
             StorageError: ``target`` cannot be written, is the store itself, or is a file of another kind.
         """
         with self.reading() as session:
-            back_up(session, self.path, Path(target).expanduser())
+            back_up(session, self.path, at_home(target))
 
     @contextmanager
     def reading(self) -> Iterator[Session]:

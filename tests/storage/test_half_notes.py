@@ -72,7 +72,7 @@ def test_a_disk_without_room_keeps_what_was_kept_before(path: Path, monkeypatch:
         raise OSError(28, "No space left on device")  # ENOSPC of Linux
 
     monkeypatch.setattr(os, "fsync", full)
-    with pytest.raises(StoreFull, match=r"cannot be kept \(No space left on device\): make room, or save it"):
+    with pytest.raises(StoreFull, match=r"cannot be kept \(No space left on device\): make room\."):
         keep_half_note(path, "flood", {"line": "why not"})
     monkeypatch.undo()
     assert half_note(path, "flood") == {"line": "why"}
@@ -80,7 +80,7 @@ def test_a_disk_without_room_keeps_what_was_kept_before(path: Path, monkeypatch:
 
 
 def test_a_folder_that_is_gone_is_one_line(path: Path) -> None:
-    with pytest.raises(StoreReadOnly, match=r"give yourself write permission on .*, or save it"):
+    with pytest.raises(StoreReadOnly, match=r"give yourself write permission on "):
         keep_half_note(path, "flood", {"line": "why"})
 
 

@@ -6,6 +6,7 @@ permitted the same steps run against RLIMIT_FSIZE (POSIX, setrlimit), of which S
 
 from __future__ import annotations
 
+import json
 import os
 import sqlite3
 import subprocess
@@ -157,6 +158,49 @@ def test_a_home_that_cannot_be_written_is_told(child: Callable, next_line: Calla
         assert "--store" in line
         assert next_line(process) == "2"
         assert list(home.iterdir()) == []
+
+
+CLOSED = """
+import contextlib, io
+from stagebook.tui.app import main
+os.chdir(path.parent)
+commands = json.loads(COMMANDS)
+with contextlib.redirect_stdout(io.StringIO()), contextlib.redirect_stderr(io.StringIO()):
+    main(["import", "flood.json", "--store", str(path)])
+    for command in commands:  # all that is imported later is imported now
+        main(command)
+(path.parent / "closed").chmod(0o700)
+if os.getuid() == 0:
+    os.setgroups([]), os.setgid(65534), os.setuid(65534)
+sys.stderr = sys.stdout
+for command in commands:
+    say(main(command))
+"""
+
+
+@pytest.mark.skipif(os.name != "posix" or os.getuid() != 0, reason="a folder that is closed to its user is root's here")
+def test_a_folder_that_may_not_be_looked_into_is_one_line(
+    child: Callable, next_line: Callable, design: Callable
+) -> None:
+    with tempfile.TemporaryDirectory() as name:
+        folder = Path(name)
+        folder.chmod(0o777)
+        (folder / "closed").mkdir()
+        (folder / "flood.json").write_text(json.dumps(design().dump()))
+        commands = [
+            ["list", "--store", "closed/x"],
+            ["import", "flood.json", "--store", "closed/x"],
+            ["inspect", "--store", "closed/x", "--rescue", "r"],
+            ["export", "flood.json", "closed/x.json"],
+            ["export", "closed/x.json", "x.json"],
+            ["waves", "flood.json", "--csv", "closed/x.csv"],
+        ]
+        process = child(f"COMMANDS = {json.dumps(json.dumps(commands))}\n{CLOSED}", folder / "s.sqlite3")
+        for command in commands:
+            line = next_line(process)
+            assert line.startswith(f"stagebook {command[0]}: "), line
+            assert "(Permission denied)" in line, line
+            assert next_line(process) == "2"
 
 
 def test_a_store_that_another_program_keeps_is_told_at_opening(

@@ -56,3 +56,9 @@ async def test_an_edit_while_another_program_writes_is_refused_and_goes_in_later
         await pilot.press("enter")  # what was written stands there still
         await settled(pilot)
         assert shelf.draft("flood").design.part("R1").value == "1M"
+
+
+async def test_a_path_of_a_user_that_there_is_not_is_refused(app: StagebookApp) -> None:
+    async with app.run_test(size=(80, 24)) as pilot:
+        await pilot.press("i", *"~no such user/x.json", "enter")
+        assert "~no such user/x.json cannot be read" in " ".join(seen(pilot).split())

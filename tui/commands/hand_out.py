@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import sys
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
@@ -20,7 +21,7 @@ def arguments(parser: ArgumentParser) -> None:
 def run(asked: Namespace) -> int:
     """Write the document with its texts as typed; what no screen shows is escaped, as JSON allows."""
     subject = find(asked)
-    folder = asked.file and Path(asked.file).is_dir()
+    folder = asked.file and os.path.isdir(asked.file)  # False too for what may not be looked at
     file = str(Path(asked.file) / file_name(subject.title, ".json")) if folder else asked.file
     write_file(file, f"{json_text(subject.design.dump())}\n".encode(), subject.file)
     if folder:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from argparse import ArgumentParser, Namespace
-from pathlib import Path
 
 from .printing import json_argument, print_json, print_words
 from .refusal import CommandRefused
@@ -60,10 +59,10 @@ def run(asked: Namespace) -> int:
 
 def _rescue(asked: Namespace) -> int:
     """Write the rescued store; status 1 if not all came over as it was saved."""
-    from ...storage import StorageError, default_path, rescue
+    from ...storage import StorageError, at_home, default_path, rescue
 
     try:
-        found = rescue(default_path() if asked.store is None else Path(asked.store).expanduser(), Path(asked.rescue))
+        found = rescue(default_path() if asked.store is None else at_home(asked.store), at_home(asked.rescue))
     except StorageError as refusal:
         raise CommandRefused(str(refusal)) from refusal
     if asked.json:

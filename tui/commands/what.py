@@ -103,9 +103,9 @@ def open_store(asked: Namespace, terminal: str = "", *, begins: bool = False) ->
     ``begins`` a store makes one of a name given by hand: a slip in the name would read as an empty shelf.
     """
     # Imported here: the database machinery takes longer to load than a command on a file needs altogether.
-    from ...storage import StorageError, Store, default_path
+    from ...storage import StorageError, Store, at_home, default_path, is_missing
 
-    if asked.store is not None and not begins and not Path(asked.store).expanduser().exists():
+    if asked.store is not None and not begins and is_missing(at_home(asked.store)):
         raise CommandRefused(
             f"there is no store {asked.store}; name one that is there, or begin it with import or demo"
         )

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from pathlib import Path
 from typing import ClassVar
 
 from textual.app import ComposeResult
@@ -12,6 +11,7 @@ from ...engine.design.document import Design
 from ...engine.errors import DesignError, EngineError
 from ...engine.results import MarginSheet
 from ...storage.errors import DesignOpen, StorageError, StoreBusy, StoreFull, StoreReadOnly
+from ...storage.place import at_home
 from ...storage.store import Store
 from ...storage.values import DesignRow
 from ..actions import bindings
@@ -227,7 +227,7 @@ def read_document(path: str) -> Design:
     """The design in a file. Raises DesignError, one line naming the file."""
     if not path:
         raise DesignError("write the path of a design document, such as designs/flood.json")
-    place = Path(path).expanduser()
+    place = at_home(path)
     try:
         with place.open("rb") as file:
             content = file.read(_LARGEST_DOCUMENT + 1)
