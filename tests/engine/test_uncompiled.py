@@ -134,6 +134,24 @@ CASES: dict[str, Setup] = {
         supply="12 V",
         ends=12e-3,
     ),
+    "coil that heats itself": setup(
+        two("coil", "K1", "supply", "0V", **{"class": "relay 12 V"}, data={"thermal_resistance": "60 K/W"}),
+        supply="12 V",
+        ends=10e-3,
+    ),
+    "supply that comes back to a charged rail, and charge put in": setup(
+        resistor("R1", "supply", "0V", "1k"),
+        capacitor("C1", "supply", "0V", "10 uF"),
+        supply="5 V",
+        source="1R",
+        events=[
+            {"at": "0 s", "event": "connect supply", "rise": "1 us"},
+            {"at": "1 ms", "event": "disconnect supply"},
+            {"at": "2 ms", "event": "inject", "net": "supply", "charge": "1 uC", "width": "1 us"},
+            {"at": "3 ms", "event": "connect supply", "rise": "2 ms"},
+        ],
+        ends=6e-3,
+    ),
     "switch": setup(
         resistor("R1", "supply", "n", "10k"),
         two("contact", "S1", "n", "0V"),
