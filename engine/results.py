@@ -47,7 +47,9 @@ class CheckResult:
     D/C checks fill ``demand`` and ``capability``; window checks fill ``limits``, ``low`` and ``high``.
     ``margin`` is None when the verdict is UNKNOWN. ``formula`` says in words how the number is made. ``setting`` is the
     corner itself: (reference, datum, side) with side -1 low, +1 high, for everything that is not nominal there.
-    ``by_hand`` is the hand formula in words and ``accuracy`` how far it can be trusted, see :attr:`disagrees`.
+    ``by_hand`` is the hand formula in words and ``accuracy`` how far it can be trusted, see :attr:`disagrees`;
+    ``bound``: it says how bad the margin is at most. ``apart`` says why there is no hand value to compare with,
+    ``left_out`` what the formula leaves out where it disagrees. ``hand_scale``: what the accuracy is a share of.
     ``extrapolated`` says which figure was used beyond where it is given.
     """
 
@@ -78,13 +80,21 @@ class CheckResult:
     by_hand: str = ""
     accuracy: float | None = None
     extrapolated: str | None = None
+    bound: bool = False
+    apart: str | None = None
+    left_out: str | None = None
+    hand_scale: float | None = None
 
     @property
     def disagrees(self) -> bool:
-        """Whether the hand formula is further off than it says of itself: a share of the larger of D and C."""
+        """Whether the hand formula is further off than it says of itself: a share of the larger of D and C, or of the
+        value of a window. A bound is only wrong where the margin is worse than it."""
         if self.hand is None or self.margin is None or self.accuracy is None or self.outcome is not None:
             return False
-        return abs(self.hand - self.margin) > self.accuracy * max(1.0, 1.0 - self.margin)
+        if self.apart is not None or (self.bound and self.margin >= self.hand):
+            return False
+        scale = max(1.0, 1.0 - self.margin) if self.hand_scale is None else self.hand_scale
+        return abs(self.hand - self.margin) > self.accuracy * scale
 
     @property
     def slack(self) -> float:

@@ -41,6 +41,8 @@ def origin_rows(check: CheckResult, worst_known: bool) -> Rows:
     rows.append(("sequence", check.sequence or "-", ""))
     rows.append(("nominal", f"{percent(check.nominal)} %", ""))
     rows.append(("by hand", *_by_hand(check)))
+    if check.disagrees:
+        rows.append(("", trusted(check), "thin"))
     if check.by_hand:
         rows.append(("", check.by_hand, ""))
     if check.spread is not None:
@@ -57,15 +59,24 @@ def origin_rows(check: CheckResult, worst_known: bool) -> Rows:
 
 def _by_hand(check: CheckResult) -> tuple[str, str]:
     """The hand formula's margin, what it is worth, and its tone."""
+    why = check.apart or check.outcome
     if check.hand is None:
-        return "no hand formula", ""
+        return (f"no value: {why}" if why else "no hand formula" if not check.by_hand else "no value"), ""
     found = f"{percent(check.hand)} %"
+    if why:
+        return f"{found}, not to be compared: {why}", ""
     if check.accuracy is None:
         return f"{found} (a bound, not the verdict)", ""
     stated = f"stated accuracy {check.accuracy * 100:.0f} %"
     if check.disagrees:
         return f"{found}: DISAGREES with the simulation beyond its {stated}", "thin"
-    return f"{found} (cross-check, not the verdict; {stated})", ""
+    worth = "at worst: a bound" if check.bound else "cross-check"
+    return f"{found} ({worth}, not the verdict; {stated})", ""
+
+
+def trusted(check: CheckResult) -> str:
+    """Which of a simulation and a hand formula that disagree is to be trusted, and why: what the formula leaves out."""
+    return f"trust the simulation, left out: {check.left_out or 'what else there is'}"
 
 
 def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
@@ -77,6 +88,8 @@ def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
         here = f"{percent(found.margin)} %, computed just now in the corner above; the margin above is older"
         rows.append(("here and now", here, "thin"))
     rows.append(("required", f"{percent(found.required.value)} %, {found.required.source}", ""))
+    if found.by_hand:
+        rows.append(("hand formula", f"of {found.hand_source}", ""))
     if found.usual_worst:
         rows.append(("usually worst at", found.usual_worst, ""))
     for at, seen in enumerate(found.observed):

@@ -7,6 +7,7 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
@@ -54,10 +55,14 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
             again = seen.rerun(sequence, (reached,), {(capacitor.ref, "leakage_share"): 0.0}, late)
             threshold = np.where(late, again[reached], threshold)
         leak = 0.0 if leakage is None else np.asarray(leakage(seen.lanes))
-        final = seen.value(rail, sequence) / (1.0 + seen.lanes[resistor.ref, "value"] * leak)
+        final_share = 1.0 + seen.lanes[resistor.ref, "value"] * leak
+        final = seen.value(rail, sequence) / final_share
         started = np.isfinite(seen.value(rail, sequence))
         outcomes = [(~started, check.words["never"]), (~np.isfinite(threshold), check.words["late"])]
-        return ratio(threshold, final, outcomes, hand=1.0 - threshold / final)
+        hand, apart = None, "the conditions name no supply"
+        if SUPPLY in seen.lanes:
+            hand, apart = 1.0 - threshold * final_share / seen.lanes[SUPPLY], ""
+        return ratio(threshold, final, outcomes, hand, apart)
 
     rows = (reached, rail)
     return Ask(check, stage.name, capacitor.ref, (sequence,), required, judge, rows)
@@ -74,8 +79,9 @@ CHECKS = (
         asks=asks,
         reads={"of": "C5", "from": "begins", "to": "LS1 on"},
         worst="hot, low supply, leaky capacitors",
-        by_hand="V_th (1 + R G_leak) / rail",
-        accuracy=0.02,
+        by_hand="V_th (1 + R G_leak) / supply",
+        accuracy=0.05,
+        leaves_out="drops before the timer",
         words={
             "never": "the timer was never started",
             "late": "does not run out within the sequence, even without leakage",

@@ -18,6 +18,7 @@ from .seen import Seen
 from .view import View, polarity
 
 CLOSE = 0.01  # share by which a current is still that of a figure
+UNDRIVEN = "no base_resistor of the stage leads to the base of {part}"
 SATURATED = 0.2  # V across a transistor that is fully on, from memory
 
 
@@ -59,7 +60,8 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
             i_b = driving.current(seen, sequence, wanted)
             hand = 1.0 - wanted / gain / np.where(i_b > 0.0, i_b, np.nan)
         supplied = np.abs(seen.value(base, sequence))
-        judged = ratio(wanted / gain, supplied, [(never, check.words["never"].format(load=load.ref))], hand)
+        words = [(never, check.words["never"].format(load=load.ref))]
+        judged = ratio(wanted / gain, supplied, words, hand, UNDRIVEN.format(part=part.ref) if hand is None else "")
         return replace(judged, extrapolated=gain_beyond(part, bench, wanted))
 
     required = view.required(check.slug, check.required, requirement)
@@ -126,6 +128,7 @@ CHECKS = (
         worst="cold, low supply, weak h_FE",
         by_hand="(I_L / h_FE) / ((V_drive - V_BE) / R_B - V_BE / R_BE)",
         accuracy=0.05,
+        leaves_out="what else feeds the base",
         words={"never": "{load} never came on"},
     ),
 )

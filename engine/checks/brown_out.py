@@ -7,6 +7,7 @@ another one than before. Where the dip is not deep enough to change anything, no
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -16,12 +17,12 @@ from ..design.requirement import Requirement
 from ..design.sequence import Dip
 from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY, Lanes
-from ..primitives.signals import Anchor, level
+from ..primitives.signals import Anchor
 from ..quantity import read
 from ..run import Observed
 from .alarm_state import TOLD_BY, AlarmState, alarm_states
-from .check import Ask, Check, Judged, Mask, ratio, unknown
-from .latch import hold_trial_of
+from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
+from .fed_latch import HOLDS_ON, NOT_FED, Fed
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -113,8 +114,7 @@ def _ask(
         gives_in=gives_in,
         unit="%" if deeper else "s",
     )
-    feed = view.supply_current
-    drawn = None if feed is None else level(feed, Anchor(at))
+    fed = Fed.find(view, state, Anchor(at))
 
     def judge(seen: Seen) -> Judged:
         supply = seen.lanes[SUPPLY] if SUPPLY in seen.lanes else np.zeros(seen.lanes.count)
@@ -122,31 +122,18 @@ def _ask(
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), demand=demand)
-        hand = None if drawn is None or deeper else _hand(view, state, seen, seen.value(drawn, sequence), during)
+        hand = None if fed is None else fed.depth(seen, sequence, during) if deeper else fed.seconds(seen, sequence, to)
+        hand = None if hand is None else 1.0 - demand / hand
+        apart: Apart = ((None, NOT_FED),) if hand is None else ((np.isnan(hand), HOLDS_ON),)
         words = check.words
         outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
-        judged = ratio(demand, edge.knob * (supply if deeper else 1.0), outcomes, hand)
+        judged = ratio(demand, edge.knob * (supply if deeper else 1.0), outcomes, hand, apart)
         margin = np.where(edge.never, 1.0, judged.margin)
-        outcomes_seen = (*judged.outcomes, (edge.never, words["immune"]))
-        return Judged(margin, demand, judged.capability, outcomes=outcomes_seen, hand=judged.hand)
+        return replace(judged, margin=margin, outcomes=(*judged.outcomes, (edge.never, words["immune"])))
 
     screen = during / (1.0 - required) if required < 1.0 - 1.0 / LONGEST and not deeper else None
-    rows = () if drawn is None else (drawn,)
+    rows = () if fed is None else fed.rows
     return Ask(check, stage.name, part, (sequence,), required, judge, rows, trial, screen)
-
-
-def _hand(view: View, state: AlarmState, seen: Seen, drawn: Floats, during: float) -> Floats | None:
-    """1 - t I/(C_f (V - V_hold)), where a filter capacitor feeds what the unit draws during the dip."""
-    if state.latch is None or SUPPLY not in seen.lanes:
-        return None
-    capacitor = view.role(state.latch.stage, "filter_capacitor")
-    trial = hold_trial_of(state.latch)
-    edge = seen.edges.get(trial.key)
-    if capacitor is None or edge is None:
-        return None
-    spare = seen.lanes[SUPPLY] - edge.values[trial.rows[-1]]
-    held = seen.lanes[capacitor.ref, "value"] * spare
-    return np.where(held > 0.0, 1.0 - during * drawn / np.where(held > 0.0, held, 1.0), -1.0)
 
 
 WORDS = {
@@ -166,7 +153,11 @@ CHECKS = (
         reads={"of": "Q4", "settle": "0.2 s"},
         words=WORDS | {"immune": "a dip to there changes nothing, however long"},
         worst="low supply, cold, small filter capacitor",
-        by_hand="1 - t I / (C_f (V - V_hold)), I what the unit draws before the dip",
+        by_hand="t / (C_f (V - V_hold) / I) behind a diode, else t / (R_f C_f ln((V - V_dip) / (V_hold - V_dip))); I"
+        " the mean of the latch's current, V_hold = 0.8 V + (V - 0.8 V) I_hold / I_latch",
+        hand_source="closed form of R and C, I_hold by hand as in latch hold",
+        accuracy=0.2,
+        leaves_out="gains, other loads of C",
     ),
     Check(
         number=23,
@@ -179,5 +170,9 @@ CHECKS = (
         reads={"of": "Q4", "settle": "0.2 s"},
         words=WORDS | {"immune": "a dip of that length changes nothing, however deep"},
         worst="low supply, cold, small filter capacitor",
+        by_hand="depth / ((V - V_hold) / (1 - exp(-t / R_f C_f))), V_hold = 0.8 V + (V - 0.8 V) I_hold / I_latch",
+        hand_source="closed form of R and C, I_hold by hand as in latch hold",
+        accuracy=0.2,
+        leaves_out="gains, other loads of C",
     ),
 )

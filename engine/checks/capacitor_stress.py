@@ -7,10 +7,12 @@ from collections.abc import Iterator
 import numpy as np
 
 from ..design.part import Part, Stage
-from ..primitives.columns import SUPPLY
+from ..primitives.builder import RETURN, SUPPLY_NET
 from ..primitives.signals import Anchor, Signal, integral, maximum, minimum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
+from .peak_collector_emitter import LIFTED
 from .seen import Seen
+from .top_voltage import beside, top_voltage
 from .view import View
 
 REVERSE = 1.0  # V that a polarised capacitor bears in reverse, common practice, from memory
@@ -43,8 +45,10 @@ def _voltage_ask(check: Check, view: View, stage: Stage, part: Part, required: f
 
     def judge(seen: Seen) -> Judged:
         peaks = [np.maximum(seen.value(highest, name), -seen.value(lowest, name)) for name in sequences]
-        hand = 1.0 - seen.lanes[SUPPLY] / allowed if SUPPLY in seen.lanes else None
-        return ratio(np.max(peaks, axis=0), np.full(seen.lanes.count, allowed), hand=hand)
+        volts = top_voltage(view, seen, sequences)
+        hand = None if volts is None else 1.0 - volts / allowed
+        capability = np.full(seen.lanes.count, allowed)
+        return ratio(np.max(peaks, axis=0), capability, hand=hand, apart=beside(view))
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, (highest, lowest))
 
@@ -62,10 +66,15 @@ def _reverse_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     allowed = view.extra(requirement, "reverse_voltage", "V") or REVERSE
     sequences = tuple(view.design.sequences)
     lowest = minimum(_across(part))
+    # Between 0V and the supply, no net lies below 0V or above the supply.
+    tied = part.pins["minus"] == RETURN or part.pins["plus"] == SUPPLY_NET
 
     def judge(seen: Seen) -> Judged:
         reverse = np.max([-seen.value(lowest, name) for name in sequences], axis=0)
-        return ratio(np.maximum(0.0, reverse), np.full(seen.lanes.count, allowed))
+        volts = top_voltage(view, seen, sequences)
+        hand = None if volts is None else 1.0 - volts * (not tied) / allowed
+        capability = np.full(seen.lanes.count, allowed)
+        return ratio(np.maximum(0.0, reverse), capability, hand=hand, apart=beside(view))
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, (lowest,))
 
@@ -91,6 +100,9 @@ def _ripple_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     allowed = view.derating("ripple_current", requirement) * rating.low
     load = view.load(stage)
     whole = view.ends(sequence)
+    drawing = load or view.role(stage, "load")
+    draw = None if drawing is None else view.bench(drawing.ref).draw
+    apart = "" if draw is not None else "nothing in the role load says what it draws in turns"
     if load is None:
         start, end = Anchor(0.5 * whole), Anchor(whole)
     else:
@@ -108,7 +120,12 @@ def _ripple_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         ohms = seen.lanes[part.ref, "series_resistance"]
         never = ~(lasted > 0.0)
         current = np.sqrt(np.maximum(0.0, joules) / np.where(never, 1.0, lasted) / ohms)
-        return ratio(current, np.full(seen.lanes.count, allowed), [(never, check.words["never"])])
+        hand = None
+        volts = top_voltage(view, seen, (sequence,))
+        if draw is not None and volts is not None:
+            hand = 1.0 - 0.5 * draw(seen.lanes, volts) / allowed
+        words = [(never, check.words["never"])]
+        return ratio(current, np.full(seen.lanes.count, allowed), words, hand, apart or beside(view))
 
     rows = (lost, all_lost, *(anchor.row for anchor in (start, end) if anchor.row is not None))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
@@ -124,7 +141,10 @@ CHECKS = (
         formula="D = largest voltage across it in all sequences, C = derating x rated voltage",
         asks=voltage_asks,
         worst="high supply",
-        by_hand="the whole supply across it: a circuit without a coil",
+        by_hand="the whole supply across it",
+        accuracy=0.05,
+        bound=True,
+        leaves_out=LIFTED,
     ),
     Check(
         number=13,
@@ -136,6 +156,10 @@ CHECKS = (
         asks=reverse_asks,
         reads={"of": "C5", "reverse_voltage": "1 V"},
         worst="high supply",
+        by_hand="none with its minus at 0V or its plus at the supply, the whole supply between other nets",
+        accuracy=0.05,
+        bound=True,
+        leaves_out=LIFTED,
     ),
     Check(
         number=13,
@@ -147,5 +171,9 @@ CHECKS = (
         asks=ripple_asks,
         worst="high supply",
         words={"never": "the load that ripples never came on"},
+        by_hand="I_load / 2: on for a share d of the time, it draws I root(d (1 - d)) of alternating current",
+        accuracy=0.1,
+        bound=True,
+        leaves_out="surges and charging",
     ),
 )

@@ -16,6 +16,7 @@ from .trial import Trial
 from .view import View
 
 Mask = NDArray[np.bool_]
+Apart = tuple[tuple[Mask | None, str], ...]
 
 
 @dataclass(frozen=True)
@@ -24,7 +25,10 @@ class Judged:
 
     ``each`` are margins of which ``margin`` is the smallest: the corners look for the worst of every one of them.
     ``outcomes`` are words for lanes where something else happened than the number says; the first that fits counts.
-    ``extrapolated`` says in which lanes a figure was used beyond where it is given.
+    ``hand`` is the margin by the hand formula, NaN where it has none; ``apart`` says where (None: everywhere) and why
+    that is not to be compared. ``hand_scale``: what the stated accuracy is a share of, in margins; None: see
+    :attr:`.results.CheckResult.disagrees`. ``extrapolated`` says in which lanes a figure was used beyond where it is
+    given.
     """
 
     margin: Floats
@@ -34,6 +38,8 @@ class Judged:
     limits: tuple[float, float] | None = None
     outcomes: tuple[tuple[Mask, str], ...] = ()
     hand: Floats | None = None
+    apart: Apart = ()
+    hand_scale: Floats | None = None
     each: tuple[Floats, ...] = ()
     extrapolated: tuple[tuple[Mask, str], ...] = ()
 
@@ -45,16 +51,31 @@ class Judged:
         """What is extrapolated in one lane, in words."""
         return "; ".join(words for mask, words in self.extrapolated if mask[lane]) or None
 
+    def why_apart(self, lane: int) -> str | None:
+        """Why there is no hand value to compare with in one lane, in words."""
+        return next((words for mask, words in self.apart if mask is None or mask[lane]), None)
+
+
+def everywhere(words: str | Apart) -> Apart:
+    """One reason for all lanes; none where it is empty."""
+    if isinstance(words, str):
+        return ((None, words),) if words else ()
+    return words
+
 
 def ratio(
-    demand: Floats, capability: Floats, outcomes: Sequence[tuple[Mask, str]] = (), hand: Floats | None = None
+    demand: Floats,
+    capability: Floats,
+    outcomes: Sequence[tuple[Mask, str]] = (),
+    hand: Floats | None = None,
+    apart: str | Apart = (),
 ) -> Judged:
     """Margin 1 - D/C; a capability that is not above zero, and every outcome, counts as -1."""
     safe = np.where(capability > 0.0, capability, 1.0)
     margin = np.where(capability > 0.0, 1.0 - demand / safe, -1.0)
     for mask, _ in outcomes:
         margin = np.where(mask, -1.0, margin)
-    return Judged(margin, demand, capability, outcomes=tuple(outcomes), hand=hand)
+    return Judged(margin, demand, capability, outcomes=tuple(outcomes), hand=hand, apart=everywhere(apart))
 
 
 def window(
@@ -63,14 +84,25 @@ def window(
     high: float,
     outcomes: Sequence[tuple[Mask, str]] = (),
     hand: Floats | None = None,
+    apart: str | Apart = (),
+    of_value: bool = False,
 ) -> Judged:
-    """Margin min(U - x, x - L) / ((U - L)/2); an outcome counts as -1. ``hand`` is a value, judged the same way."""
+    """Margin min(U - x, x - L) / ((U - L)/2); an outcome counts as -1. ``hand`` is a value, judged the same way;
+    ``of_value``: it is as accurate as a share of the value says, else of half the window."""
     half = 0.5 * (high - low)
     margin = np.minimum(high - value, value - low) / half
     for mask, _ in outcomes:
         margin = np.where(mask, -1.0, margin)
     by_hand = None if hand is None else np.minimum(high - hand, hand - low) / half
-    return Judged(margin, value=value, limits=(low, high), outcomes=tuple(outcomes), hand=by_hand)
+    return Judged(
+        margin,
+        value=value,
+        limits=(low, high),
+        outcomes=tuple(outcomes),
+        hand=by_hand,
+        apart=everywhere(apart),
+        hand_scale=np.abs(value) / half if of_value else None,
+    )
 
 
 @dataclass(frozen=True)
@@ -107,9 +139,10 @@ class Check:
     """One entry of the catalogue. ``asks`` finds the margins of this kind in a design.
 
     ``source`` says where the customary required margin comes from, ``worst`` the usual worst conditions. ``by_hand`` is
-    the hand formula in words; it agrees with the simulation within ``accuracy`` of the larger of demand and capability.
-    Where no accuracy is given it is a bound and not a cross-check. ``reads`` are the fields that it reads of a
-    requirement of its own, each with an example.
+    the hand formula in words, after ``hand_source``; where what it assumes holds, it agrees with the simulation within
+    ``accuracy`` of the larger of demand and capability (measured, tests/engine/checks/test_hand_formulas.py). A
+    ``bound`` says how bad the margin is at most, and no more. ``leaves_out`` is what may make it wrong. ``reads`` are
+    the fields that it reads of a requirement of its own, each with an example.
     """
 
     number: int
@@ -125,6 +158,9 @@ class Check:
     reads: Mapping[str, str] = field(default_factory=dict)
     by_hand: str = ""
     accuracy: float | None = None
+    bound: bool = False
+    leaves_out: str = ""
+    hand_source: str = COMMON_PRACTICE
 
 
 def unknown(check: Check, stage: str, part: str, sequence: str, required: float, missing: str) -> Ask:

@@ -7,6 +7,7 @@ event that begins with the contact's bounce is made ever shorter until there is 
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -19,8 +20,9 @@ from ..primitives.columns import Lanes
 from ..quantity import read
 from ..run import Observed
 from .alarm_state import TOLD_BY, alarm_states, settling, standby
-from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
 from .contact_events import contacts, longest_bounce, states
+from .debounced import LATER, MISSING, Debounced
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -96,18 +98,29 @@ def _bounce_ask(check: Check, view: View, requirement: Requirement, part: Part) 
     knobs = BURSTS[0] * longest, BURSTS[1] * longest
     trial = _trial(view, requirement, sequence, f"bounce {part.ref}", drive, knobs[1], knobs, accepts=False)
 
+    debounced = Debounced.find(view, sequence)
+
     def judge(seen: Seen) -> Judged:
         demand = np.full(seen.lanes.count, longest)
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), demand=demand)
         words = check.words
-        judged = ratio(demand, edge.knob, [(edge.missing, words["missing"]), (edge.always, words["always"])])
-        margin = np.where(edge.never, 1.0, judged.margin)
-        return Judged(margin, demand, edge.knob, outcomes=(*judged.outcomes, (edge.never, words["immune"])))
+        hand = None if debounced is None else 1.0 - longest / debounced.rejects(seen, sequence, times)
+        judged = ratio(
+            demand, edge.knob, [(edge.missing, words["missing"]), (edge.always, words["always"])], hand, _why(hand)
+        )
+        outcomes = (*judged.outcomes, (edge.never, words["immune"]))
+        return replace(judged, margin=np.where(edge.never, 1.0, judged.margin), outcomes=outcomes)
 
     screen = min(longest / (1.0 - required), knobs[1]) if required < 1.0 else None
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, trial=trial, screen=screen)
+    rows = () if debounced is None else debounced.rows
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows, trial, screen)
+
+
+def _why(hand: Floats | None) -> Apart:
+    """Why there is no hand value, and where."""
+    return ((None, MISSING),) if hand is None else ((np.isnan(hand), LATER),)
 
 
 def _acceptance_ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
@@ -139,16 +152,21 @@ def _acceptance_ask(check: Check, view: View, requirement: Requirement, part: Pa
         view, requirement, sequence, f"acceptance {part.ref}", drive, EVENTS[0] * shortest, knobs, accepts=True
     )
 
+    debounced = Debounced.find(view, sequence)
+
     def judge(seen: Seen) -> Judged:
         capability = np.full(seen.lanes.count, shortest)
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), capability=capability)
         words = check.words
-        return ratio(1.0 / edge.knob, capability, [(edge.missing, words["missing"]), (edge.always, words["always"])])
+        hand = None if debounced is None else 1.0 - debounced.accepts(seen, sequence, bounce) / shortest
+        outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
+        return ratio(1.0 / edge.knob, capability, outcomes, hand, _why(hand))
 
+    rows = () if debounced is None else debounced.rows
     screen = 1.0 / (shortest * (1.0 - required)) if required < 1.0 else None
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, trial=trial, screen=screen)
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows, trial, screen)
 
 
 CHECKS = (
@@ -167,6 +185,11 @@ CHECKS = (
             "immune": "no burst raises an alarm, however long",
         },
         worst="small capacitor, low threshold",
+        by_hand="2 n t, t the pieces with which R C of the debounce just comes to V_th: V (1-a)(1-(ab)^n)/(1-ab) ="
+        " V_th, a = exp(-t/RC), b likewise with the pull resistor",
+        hand_source="closed form of R and C, V_th as seen in the sequence",
+        accuracy=0.05,
+        leaves_out="what follows the debounce",
     ),
     Check(
         number=17,
@@ -182,5 +205,9 @@ CHECKS = (
             "always": "never fired: not by an event of thirty times that length either",
         },
         worst="large capacitor, high threshold, low supply",
+        by_hand="bounce + R C ln(V / (V - V_th)) of the debounce, half of the bounce counted",
+        hand_source="closed form of R and C, V_th as seen in the sequence",
+        accuracy=0.1,
+        leaves_out="what follows the debounce",
     ),
 )

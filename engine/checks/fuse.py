@@ -8,6 +8,7 @@ from dataclasses import replace
 import numpy as np
 
 from ..design.part import Part, Stage
+from ..kernel.layout import Floats
 from ..parts.fuse import blown
 from ..parts.physics import REFERENCE
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
@@ -86,10 +87,10 @@ def load_asks(check: Check, view: View) -> Iterator[Ask]:
             never = np.asarray(np.isnan(found).all(axis=0))
             carried = np.max(np.nan_to_num(found), axis=0)
             allowed = factor * _rated(view, part, seen.lanes)
-            hand = None
+            hand, apart = None, "no load says what it draws, or no supply is given"
             if draw is not None and SUPPLY in seen.lanes:
-                hand = 1.0 - draw(seen.lanes, seen.lanes[SUPPLY]) / np.where(allowed > 0.0, allowed, np.nan)
-            return ratio(carried, allowed, [(never, check.words["never"])], hand)
+                hand, apart = 1.0 - draw(seen.lanes, seen.lanes[SUPPLY]) / np.where(allowed > 0.0, allowed, np.nan), ""
+            return ratio(carried, allowed, [(never, check.words["never"])], hand, apart)
 
         return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
@@ -117,12 +118,47 @@ def pulse_asks(check: Check, view: View) -> Iterator[Ask]:
                 (blown_in(seen.observed[name]).get(part.ref, never), check.words["blows"].format(sequence=name))
                 for name in names
             ]
-            return ratio(joules / seen.lanes[part.ref, "resistance"], np.full(seen.lanes.count, allowed), outcomes)
+            hand = None if charged is None else 1.0 - charged(seen) / allowed
+            apart = "the supply is not given" if hand is None else ""
+            melts = joules / seen.lanes[part.ref, "resistance"]
+            return ratio(melts, np.full(seen.lanes.count, allowed), outcomes, hand, apart)
 
+        charged = _charged(view, part, load)
         names = tuple(view.design.sequences)
         return Ask(check, stage.name, part.ref, names, required, judge, tuple(rows))
 
     yield from _asked(check, view, "melting", "A2s", make)
+
+
+def _charged(view: View, part: Part, load: Part | None) -> Callable[[Seen], Floats] | None:
+    """I2t by hand, A2s: of charging each filter capacitor, C V^2/(2 R) with R all that lies before it, or of the load's
+    inrush (else its current) for :data:`PULSE`; the larger counts. None where the supply is not given."""
+    if view.design.conditions.supply is None:
+        return None
+    filters = [resistor for _, _, resistor in view.with_role("filter_resistor")]
+    capacitors = [
+        (c, next((r for r in filters if set(r.pins.values()) & set(c.pins.values())), None))
+        for _, _, c in view.with_role("filter_capacitor", "reservoir_capacitor")
+    ]
+    bench = None if load is None else view.bench(load.ref)
+    draw = None if bench is None else bench.inrush or bench.draw
+    surge = None if load is None else view.datum(load, "surge", "A")
+
+    def melts(seen: Seen) -> Floats:
+        lanes = seen.lanes
+        before = lanes[part.ref, "resistance"]
+        if SOURCE_RESISTANCE in lanes:
+            before = before + lanes[SOURCE_RESISTANCE]
+        total = np.zeros(lanes.count)
+        for capacitor, resistor in capacitors:
+            ohms = before + (0.0 if resistor is None else lanes[resistor.ref, "value"])
+            total = total + 0.5 * lanes[capacitor.ref, "value"] * lanes[SUPPLY] ** 2 / ohms
+        drawn = np.zeros(lanes.count) if draw is None else np.asarray(draw(lanes, lanes[SUPPLY]))
+        if surge is not None:
+            drawn = np.maximum(drawn, surge.high)
+        return np.asarray(np.maximum(total, drawn**2 * PULSE))
+
+    return melts
 
 
 def fault_asks(check: Check, view: View) -> Iterator[Ask]:
@@ -133,7 +169,8 @@ def fault_asks(check: Check, view: View) -> Iterator[Ask]:
             lanes = seen.lanes
             source = lanes[SOURCE_RESISTANCE] if SOURCE_RESISTANCE in lanes else np.zeros(lanes.count)
             current = lanes[SUPPLY] / (source + lanes[part.ref, "resistance"])
-            return ratio(BLOWS * _rated(view, part, lanes), current)
+            demand = BLOWS * _rated(view, part, lanes)
+            return ratio(demand, current, hand=1.0 - demand / current)
 
         if view.design.conditions.supply is None:
             return unknown(check, stage.name, part.ref, sequence, required, "supply in the conditions")
@@ -154,7 +191,8 @@ CHECKS = (
         asks=load_asks,
         worst="hot, high supply",
         by_hand="current of the load at the whole supply",
-        accuracy=0.2,
+        accuracy=0.1,
+        leaves_out="other loads, drops",
         words={"never": "none of the moments at which its current is read ever came"},
     ),
     Check(
@@ -167,6 +205,11 @@ CHECKS = (
         asks=pulse_asks,
         worst="high supply, stiff source",
         words={"blows": "it blows in sequence {sequence}"},
+        by_hand="the larger of C V^2 / (2 R) of the filter capacitors and I_inrush^2 x 0.1 s",
+        hand_source="energy of a capacitor charged through R; common practice, from memory",
+        accuracy=0.1,
+        bound=True,
+        leaves_out="other capacitors, surges",
     ),
     Check(
         number=26,
@@ -177,5 +220,9 @@ CHECKS = (
         formula="D = twice the rated current, C = supply / (source resistance + fuse): what a short behind it draws",
         asks=fault_asks,
         worst="low supply, soft source, cold",
+        by_hand="the same: 2 I_N (R_source + R_fuse) / V; it is not simulated",
+        hand_source="Ohm's law",
+        accuracy=0.02,
+        leaves_out="wires to the fault",
     ),
 )

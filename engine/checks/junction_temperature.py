@@ -14,13 +14,14 @@ much shorter than R_th C, in which only part of the capacity takes heat, come ou
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 
 import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
+from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, Row, integral, lagged, level, maximum
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
@@ -31,6 +32,7 @@ from .view import View
 HEATED = (*BIPOLAR, "mosfet_n", "mosfet_p", "zener")
 LIMIT = 150.0  # deg C, silicon in plastic, from memory
 SETTLED = 1e-2  # s after which a load that came on draws what it goes on to draw
+BRIEF = 0.05  # of the rise allowed: what short losses may add before the hand formula says nothing of them
 WHOLE = 1.0  # s from which on all of R_th counts, from memory: small packages take ten times as long
 RATED_AT = 25.0  # deg C at which a power is rated
 
@@ -58,6 +60,16 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         if rated is None:
             return unknown(check, stage.name, part.ref, sequence, required, f"thermal_resistance of {part.ref}")
     kelvin = resistance.high if resistance is not None else (limit - RATED_AT) / rated.low if rated is not None else 0.0
+    conducts = _conducts(view, stage, part)
+
+    def judged(seen: Seen, rise: Floats, lasting: Floats) -> Judged:
+        allowed = limit - seen.lanes.ambient
+        by_hand = lasting if conducts is None else kelvin * conducts(seen)
+        hand = 1.0 - by_hand / np.where(allowed > 0.0, allowed, np.nan)
+        # Where short losses count, the demand is a bound that no formula of a lasting loss comes to.
+        brief = rise - lasting > BRIEF * np.maximum(allowed, rise)
+        return ratio(rise, allowed, hand=hand, apart=((brief, check.words["brief"]),))
+
     capacity = view.datum(part, "thermal_capacity", "J/K")
     if capacity is not None and min(capacity.low, kelvin) > 0.0:
         lag = _Lag.of(view, part, kelvin * capacity.low)
@@ -66,9 +78,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
             watts, lasting = (
                 np.max([each(seen, name) for name in lag.sequences], axis=0) for each in (lag.most, lag.steady)
             )
-            allowed = limit - seen.lanes.ambient
-            hand = 1.0 - kelvin * lasting / np.where(allowed > 0.0, allowed, np.nan)
-            return ratio(kelvin * np.maximum(watts, lasting), allowed, hand=hand)
+            return judged(seen, kelvin * np.maximum(watts, lasting), kelvin * lasting)
 
         return Ask(check, stage.name, part.ref, lag.sequences, required, judge_lag, lag.rows)
     heat = _Heat.of(view, stage, part, whole)
@@ -76,11 +86,28 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     def judge(seen: Seen) -> Judged:
         found = [heat.watts(seen, name) for name in heat.sequences]
         steady, bound = (np.max([each[k] for each in found], axis=0) for k in (0, 1))
-        allowed = limit - seen.lanes.ambient
-        hand = 1.0 - kelvin * steady / np.where(allowed > 0.0, allowed, np.nan)
-        return ratio(kelvin * np.maximum(steady, bound), allowed, hand=hand)
+        return judged(seen, kelvin * np.maximum(steady, bound), kelvin * steady)
 
     return Ask(check, stage.name, part.ref, heat.sequences, required, judge, heat.rows)
+
+
+def _conducts(view: View, stage: Stage, part: Part) -> Callable[[Seen], Floats] | None:
+    """The loss of a driver whose load is on: I V_CE(sat), or I^2 R_on; None of any other part."""
+    roles = [role for role, ref in stage.roles.items() if ref == part.ref and role.startswith("driver")]
+    load = view.role(stage, roles[0].replace("driver", "load")) if roles else None
+    draw = None if load is None else view.bench(load.ref).draw
+    drop, ohms = view.datum(part, "v_ce_sat", "V"), view.datum(part, "resistance_on", "ohm")
+    if draw is None or (drop is None and ohms is None) or view.design.conditions.supply is None:
+        return None
+
+    def watts(seen: Seen) -> Floats:
+        current = np.asarray(draw(seen.lanes, seen.lanes[SUPPLY]))
+        if drop is not None:
+            return current * drop.typical
+        assert ohms is not None
+        return current**2 * ohms.typical
+
+    return watts
 
 
 def _typical(view: View, part: Part, key: str, unit: str, customary: float) -> float:
@@ -187,6 +214,9 @@ CHECKS = (
         formula="D = rise above ambient: R_th x steady power, more where peaks heat beyond it, C = T_limit - ambient",
         asks=asks,
         worst="hot, high supply",
-        by_hand="R_th x the power at the moments of the sequences, without peaks",
+        by_hand="R_th P, P = I_load V_CE(sat) or I_load^2 R_on of a driver, else V I at the moments of the sequences",
+        accuracy=0.1,
+        leaves_out="heat between the moments",
+        words={"brief": "losses between the moments count beyond the lasting one, as a bound"},
     ),
 )

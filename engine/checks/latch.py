@@ -23,6 +23,8 @@ from .view import View
 
 LOWERING = 1e-3  # s in which the trial lowers the supply
 SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the requirement gives none
+DROP = 0.8  # V across a conducting latch, from memory
+BARE = "the roles of both base-emitter resistors of the latch are not filled"
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
 
 
@@ -89,11 +91,13 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
         carried = seen.value(current, sequence)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), capability=carried)
+        holding = holding_by_hand(latch, seen.lanes)
         return ratio(
             edge.values[trial.rows[0]],
             carried,
             [(edge.missing, check.words["missing"]), (edge.always, check.words["always"])],
-            _hand_hold(latch, seen, carried),
+            None if holding is None else 1.0 - holding / np.where(carried > 0.0, carried, np.nan),
+            "" if holding is not None else BARE,
         )
 
     return Ask(
@@ -102,15 +106,34 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
     )  # fmt: skip
 
 
-def _hand_hold(latch: Latch, seen: Seen, carried: Floats) -> Floats | None:
-    total = np.zeros(seen.lanes.count)
+def holding_by_hand(latch: Latch, lanes: Lanes) -> Floats | None:
+    """V_BE,N / R_N + V_BE,P / R_P with V_BE at 0.1 mA: what both base-emitter resistors take of a latch that just holds
+    (common practice, from memory); None where one of them is not given by its role."""
+    total = np.zeros(lanes.count)
     for role, part in (("latch_npn", latch.npn), ("latch_pnp", latch.pnp)):
         resistor = latch.view.base_emitter_resistor(latch.stage, role)
         base_voltage = latch.view.bench(part.ref).base_voltage
         if resistor is None or base_voltage is None:
             return None
-        total = total + base_voltage(seen.lanes, 1e-4) / seen.lanes[resistor.ref, "value"]
-    return np.asarray(1.0 - total / np.where(carried > 0.0, carried, np.nan))
+        total = total + base_voltage(lanes, 1e-4) / lanes[resistor.ref, "value"]
+    return total
+
+
+def holds_down_to(latch: Latch, lanes: Lanes, volts: Floats, carried: Floats) -> Floats | None:
+    """The voltage of its feed at which a latch lets go by hand, where it carries a current from ``volts``: that current
+    falls in a straight line to nothing at the drop of a latch."""
+    holding = holding_by_hand(latch, lanes)
+    if holding is None:
+        return None
+    share = holding / np.where(carried > 0.0, carried, np.nan)
+    return np.asarray(DROP + (volts - DROP) * share)
+
+
+def _leaks(latch: Latch, lanes: Lanes) -> Floats | None:
+    """What leaks through a latch that is off: the collector leakage of both."""
+    leaks = [latch.view.bench(part.ref).leakage for part in (latch.npn, latch.pnp)]
+    known = [np.asarray(leak(lanes)) for leak in leaks if leak is not None]
+    return np.asarray(sum(known)) * np.ones(lanes.count) if len(known) == len(leaks) else None
 
 
 def reset_asks(check: Check, view: View) -> Iterator[Ask]:
@@ -137,6 +160,9 @@ def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
             return Judged(np.full(seen.lanes.count, np.nan), demand=left)
         held = edge.values[trial.rows[0]]
         never = ~seen.seen(residual, sequence)
+        holding, leaks = holding_by_hand(latch, seen.lanes), _leaks(latch, seen.lanes)
+        hand = None if holding is None or leaks is None else 1.0 - leaks / holding
+        apart = BARE if holding is None else f"i_cbo of {npn.ref} or {pnp.ref} is not given" if leaks is None else ""
         return ratio(
             left,
             held,
@@ -145,6 +171,8 @@ def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
                 (never, check.words["never"]),
                 (left > held, check.words["holds"]),
             ],
+            hand,
+            apart,
         )
 
     # An easier hold makes a reset harder, and what leaks through it is nothing that the trial moves.
@@ -164,6 +192,7 @@ CHECKS = (
         worst="cold, low supply, weak h_FE",
         by_hand="(V_BE,N / R_N + V_BE,P / R_P) / latch current, V_BE at 0.1 mA",
         accuracy=0.2,
+        leaves_out="gains, other base feeds",
         words={
             "missing": "the latch was never set",
             "always": "the latch lets go by itself",
@@ -178,6 +207,9 @@ CHECKS = (
         formula="D = latch current left after the reset, C = latch current below which it lets go",
         asks=reset_asks,
         worst="hot, strong h_FE",
+        by_hand="(I_CBO,N + I_CBO,P) / (V_BE,N / R_N + V_BE,P / R_P): nothing but leakage is left",
+        accuracy=0.1,
+        leaves_out="what the reset leaves",
         words={
             "missing": "the latch was never set",
             "never": "the instant of the reset never came",

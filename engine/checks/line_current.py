@@ -58,7 +58,8 @@ def _wet_ask(check: Check, view: View, requirement: Requirement) -> Ask:
         if by_hand is not None and SUPPLY in seen.lanes:
             hand = 1.0 - seen.lanes[SUPPLY] / insulation / by_hand
         never = ~np.isfinite(trips)
-        return ratio(dry / insulation, trips, [(never, check.words["never"])], hand)
+        apart = "the trip device or the resistor at its base is not in its role" if hand is None else ""
+        return ratio(dry / insulation, trips, [(never, check.words["never"])], hand, apart)
 
     return Ask(check, stage.name, subject, (sequence,), required, judge, (most, least, *trip_rows))
 
@@ -132,7 +133,9 @@ def _wetting_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         hand = None
         if pull is not None and SUPPLY in seen.lanes:
             hand = 1.0 - wanted * seen.lanes[pull.ref, "value"] / seen.lanes[SUPPLY]
-        return ratio(wanted, np.min([np.abs(seen.value(row, sequence)) for row in rows], axis=0), hand=hand)
+        apart = "no pull resistor in its stage, or the conditions name no supply" if hand is None else ""
+        carried = np.min([np.abs(seen.value(row, sequence)) for row in rows], axis=0)
+        return ratio(wanted, carried, hand=hand, apart=apart)
 
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows or (level(current, START),))
 
@@ -163,7 +166,8 @@ CHECKS = (
         reads={"of": "B1", "insulation": "2M", "at": "LS1 on", "trip_level": "3 V"},
         worst="hot, high supply, strong h_FE",
         by_hand="(supply / insulation) / (V_BE / R_BE of the trip device, or (supply - trip level) / R_pull)",
-        accuracy=0.3,
+        accuracy=0.1,
+        leaves_out="gains, drains of the line",
         words={"never": "it never tripped"},
     ),
     Check(
@@ -176,7 +180,9 @@ CHECKS = (
         asks=wetting_asks,
         worst="low supply",
         by_hand="least current x R_pull / supply, R_pull the pull resistor of its stage",
-        accuracy=0.1,
+        hand_source="Ohm's law",
+        accuracy=0.05,
+        leaves_out="drops, ways beside it",
         words={"never": "{contact} is never closed in the sequence"},
     ),
 )

@@ -8,14 +8,15 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
-from ..primitives.columns import SUPPLY
 from ..primitives.signals import maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
 from .reverse_base_emitter import BIPOLAR
 from .seen import Seen
+from .top_voltage import beside, top_voltage
 from .view import View, polarity
 
 MOSFETS = ("mosfet_n", "mosfet_p")
+LIFTED = "coils, lifted capacitors"
 
 
 def asks(check: Check, view: View) -> Iterator[Ask]:
@@ -39,8 +40,10 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(across, sequence) for sequence in sequences], axis=0)
         # By hand an off transistor stands at the supply, and while it switches a coil off at what clamps that above it.
-        hand = 1.0 - (seen.lanes[SUPPLY] + clamp) / allowed if SUPPLY in seen.lanes else None
-        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed), hand=hand)
+        volts = top_voltage(view, seen, sequences)
+        hand = None if volts is None else 1.0 - (volts + clamp) / allowed
+        capability = np.full(seen.lanes.count, allowed)
+        return ratio(np.maximum(0.0, peaks), capability, hand=hand, apart=beside(view))
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(across,))
 
@@ -71,20 +74,19 @@ def _gate_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     allowed = view.derating("v_gss", requirement) * rating.low
     gate = voltage(part.pins["gate"], part.pins["source"])
     most, least = maximum(gate), maximum(gate.scaled(-1.0))
-    divided = _divided(view, stage, part)
+    divided = gate_divider(view, stage, part)
 
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(row, sequence) for sequence in sequences for row in (most, least)], axis=0)
-        hand = None
-        if SUPPLY in seen.lanes:
-            share = 1.0 if divided is None else _share(seen, *divided)
-            hand = 1.0 - share * seen.lanes[SUPPLY] / allowed
-        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed), hand=hand)
+        volts = top_voltage(view, seen, sequences)
+        hand = None if volts is None else 1.0 - gate_by_hand(seen, volts, divided) / allowed
+        capability = np.full(seen.lanes.count, allowed)
+        return ratio(np.maximum(0.0, peaks), capability, hand=hand, apart=beside(view))
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(most, least))
 
 
-def _divided(view: View, stage: Stage, part: Part) -> tuple[str, str] | None:
+def gate_divider(view: View, stage: Stage, part: Part) -> tuple[str, str] | None:
     """The resistors of a stage that divide the supply to its gate, in series and to its source."""
     series, bleed = (view.role(stage, f"gate_{name}resistor") for name in ("", "bleed_"))
     if series is None or bleed is None or any(part.pins["gate"] not in r.pins.values() for r in (series, bleed)):
@@ -92,9 +94,12 @@ def _divided(view: View, stage: Stage, part: Part) -> tuple[str, str] | None:
     return series.ref, bleed.ref
 
 
-def _share(seen: Seen, series: str, bleed: str) -> Floats:
-    ohms = seen.lanes[bleed, "value"]
-    return np.asarray(ohms / (ohms + seen.lanes[series, "value"]))
+def gate_by_hand(seen: Seen, volts: Floats, divided: tuple[str, str] | None) -> Floats:
+    """A voltage, or what the resistors of :func:`gate_divider` leave of it at the gate, V per lane."""
+    if divided is None:
+        return volts
+    series, bleed = (seen.lanes[ref, "value"] for ref in divided)
+    return np.asarray(bleed / (bleed + series) * volts)
 
 
 CHECKS = (
@@ -107,7 +112,10 @@ CHECKS = (
         formula="D = largest collector-emitter voltage of all sequences, C = derating x V_CEO",
         asks=asks,
         worst="high supply",
-        by_hand="the supply across it and, with a coil, its clamp: V + V_flyback + V_zener",
+        by_hand="the supply (in a surge its clamp) and, with a coil, what takes it: V + V_flyback + V_zener",
+        accuracy=0.05,
+        bound=True,
+        leaves_out=LIFTED,
     ),
     Check(
         number=8,
@@ -119,5 +127,8 @@ CHECKS = (
         asks=gate_asks,
         worst="high supply",
         by_hand="supply x R_bleed / (R_bleed + R_gate), the whole supply without these: driven from rail to rail",
+        accuracy=0.05,
+        bound=True,
+        leaves_out=LIFTED,
     ),
 )

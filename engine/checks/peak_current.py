@@ -14,11 +14,11 @@ from ..design.part import Part, Stage
 from ..kernel.layout import Floats
 from ..parts import kinds
 from ..primitives.builder import Bench
-from ..primitives.columns import Lanes
+from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
-from .base_overdrive import SATURATED, base_drive, gain_beyond, guaranteed_gain
+from .base_overdrive import SATURATED, UNDRIVEN, base_drive, gain_beyond, guaranteed_gain
 from .check import Ask, Check, Judged, ratio, unknown
-from .peak_collector_emitter import MOSFETS
+from .peak_collector_emitter import MOSFETS, gate_by_hand, gate_divider
 from .seen import Seen
 from .view import View, polarity
 
@@ -64,6 +64,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
     control = _control(part, bench, at)
     across, drop, peak = _voltages(view, part, load, at)
     driving = base_drive(view, stage, part, at) if bench.lets_through is None else None
+    divided = None if bench.lets_through is None else gate_divider(view, stage, part)
 
     def judge(seen: Seen) -> Judged:
         if inrush is None:
@@ -75,14 +76,20 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         never = ~seen.seen(control, sequence)
         words = [(never, check.words["never"].format(load=load.ref))]
         if bench.lets_through is not None:
-            return ratio(wanted, np.minimum(allowed, bench.lets_through(seen.lanes, given)), words)
+            carried = np.minimum(allowed, bench.lets_through(seen.lanes, given))
+            hand = None
+            if SUPPLY in seen.lanes:
+                gate = gate_by_hand(seen, seen.lanes[SUPPLY], divided)
+                hand = 1.0 - wanted / np.minimum(allowed, bench.lets_through(seen.lanes, gate))
+            return ratio(wanted, carried, words, hand, "the conditions name no supply" if hand is None else "")
         gain = guaranteed_gain(bench, seen.lanes, wanted)
         carried = np.minimum(allowed, gain * np.abs(given))
         hand = None
         if driving is not None:
             by_hand = np.minimum(allowed, gain * driving.current(seen, sequence, wanted))
             hand = 1.0 - wanted / np.where(by_hand > 0.0, by_hand, np.nan)
-        return replace(ratio(wanted, carried, words, hand), extrapolated=gain_beyond(part, bench, wanted))
+        apart = UNDRIVEN.format(part=part.ref) if hand is None else ""
+        return replace(ratio(wanted, carried, words, hand, apart), extrapolated=gain_beyond(part, bench, wanted))
 
     rows = (control, across, drop, peak, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
@@ -130,8 +137,10 @@ CHECKS = (
         formula="D = inrush of the load at its voltage, C = least of derating x I_CM, h_FE I_B or K/2 (V_GS - V_T)^2",
         asks=asks,
         worst="high supply for the rating; cold, low supply, weak h_FE for the base current",
-        by_hand="D / min(derating x I_CM, h_FE ((V_drive - V_BE) / R_B - V_BE / R_BE))",
-        accuracy=0.1,
+        by_hand="D / min(derating x I_CM, h_FE ((V_drive - V_BE) / R_B - V_BE / R_BE)); K/2 (V_GS - V_T)^2, V_GS = V or"
+        " the share of its divider, of a field-effect transistor",
+        accuracy=0.05,
+        leaves_out="other feeds, drops at gate",
         words={"never": "{load} never came on"},
     ),
 )

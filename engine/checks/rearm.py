@@ -21,6 +21,7 @@ from ..primitives.signals import Anchor, Row
 from ..quantity import read
 from ..run import Observed
 from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .recovery import MISSING, Recovery
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -108,16 +109,26 @@ def _rearm_ask(check: Check, view: View, requirement: Requirement, part: Part) -
         resolution=1.05,
     )
 
+    recovery = Recovery.find(view, start)
+    apart = "" if recovery is not None else MISSING
+    if window is None:
+        apart = f"no duration of {part.ref} is required: nothing says how far its capacitor must empty"
+
     def judge(seen: Seen) -> Judged:
         capability = np.full(seen.lanes.count, allowed)
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), capability=capability)
-        words = check.words
-        return ratio(1.0 / edge.knob, capability, [(edge.missing, words["missing"]), (edge.always, words["always"])])
+        words, hand = check.words, None
+        if recovery is not None and window is not None:
+            lasted = seen.time(off, sequence) - seen.time(on, sequence)
+            hand = 1.0 - recovery.rest(seen, sequence, lasted, window[0]) / allowed
+        outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
+        return ratio(1.0 / edge.knob, capability, outcomes, hand, apart)
 
+    rows = () if recovery is None or window is None else (on, off, recovery.left)
     screen = 1.0 / (allowed * (1.0 - required)) if required < 1.0 else None
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, trial=trial, screen=screen)
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows, trial, screen)
 
 
 def _window(view: View, part: Part, sequence: str) -> tuple[float, float] | None:
@@ -139,6 +150,10 @@ def _repeat_ask(check: Check, view: View, requirement: Requirement, part: Part) 
     rows: list[Row] = []
     for change in ("on", "off", "on", "off"):
         rows.append(view.event(f"{part.ref} {change}", Anchor(0.0, rows[-1]) if rows else None))
+    # Of events that come twice, the rest lies between the first half and the second.
+    times = [read(event.at, "s") for event in _own_events(view, sequence)]
+    half = len(times) // 2
+    recovery = Recovery.find(view, Anchor(times[half - 1])) if times and len(times) % 2 == 0 else None
 
     def judge(seen: Seen) -> Judged:
         begin, end, again, over = (seen.time(row, sequence) for row in rows)
@@ -150,9 +165,14 @@ def _repeat_ask(check: Check, view: View, requirement: Requirement, part: Part) 
             (np.isfinite(once) & ~np.isfinite(again), words["once"]),
             (np.isfinite(again) & ~np.isfinite(twice), words["endless"]),
         ]
-        return ratio(changed, np.full(seen.lanes.count, allowed), outcomes)
+        hand = None
+        if recovery is not None:
+            hand = 1.0 - recovery.change(seen, sequence, once, times[half] - times[half - 1]) / allowed
+        apart = MISSING if hand is None else ""
+        return ratio(changed, np.full(seen.lanes.count, allowed), outcomes, hand, apart)
 
-    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=tuple(rows))
+    left = () if recovery is None else (recovery.left,)
+    return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=(*rows, *left))
 
 
 CHECKS = (
@@ -170,6 +190,10 @@ CHECKS = (
             "always": "not ready again after four times the time allowed",
         },
         worst="cold, low supply, large timing capacitor",
+        by_hand="R' C ln(v / v_max), v left on C, v_max = V (1 - exp((T_min - T) / R C)), R' what empties it",
+        hand_source="closed form of R and C",
+        accuracy=0.1,
+        leaves_out="other capacitors, diodes",
     ),
     Check(
         number=14,
@@ -186,5 +210,9 @@ CHECKS = (
             "endless": "the second alarm never came to an end",
         },
         worst="leaky capacitors, hot",
+        by_hand="-R C ln(1 - v exp(-rest / R' C) / V) / T, v left on C, R' what empties it",
+        hand_source="closed form of R and C",
+        accuracy=0.05,
+        leaves_out="other capacitors, diodes",
     ),
 )

@@ -7,6 +7,7 @@ faster each time.
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -19,7 +20,7 @@ from .alarm_state import AlarmState, standby
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .complementary_latch import Latch, latches
 from .seen import Seen
-from .supply_slew import WATCHED, connection
+from .supply_slew import UNCOUPLED, WATCHED, connection, slew_by_hand
 from .trial import Trial
 from .view import View
 
@@ -82,10 +83,11 @@ def _ask(check: Check, view: View, latch: Latch) -> Ask:
             return Judged(np.full(seen.lanes.count, np.nan), demand=demand)
         words = check.words
         capability = np.max([edge.values[row] for row in fastest], axis=0)
-        judged = ratio(demand, capability, [(edge.missing, words["missing"]), (edge.always, words["always"])])
+        hand = slew_by_hand(latch, seen, demand, LINGERING[0])
+        outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
+        judged = ratio(demand, capability, outcomes, hand, UNCOUPLED if hand is None else "")
         margin = np.where(edge.never, 1.0, judged.margin)
-        outcomes = (*judged.outcomes, (edge.never, words["immune"]))
-        return Judged(margin, demand, capability, outcomes=outcomes)
+        return replace(judged, margin=margin, outcomes=(*judged.outcomes, (edge.never, words["immune"])))
 
     screen = 1.0 / (rise * (1.0 - required)) if required < 1.0 else None
     return Ask(check, stage.name, npn.ref, (sequence,), required, judge, (steepest,), trial, screen)
@@ -107,5 +109,9 @@ CHECKS = (
             "immune": "immune at any slew",
         },
         worst="hot, high supply",
+        by_hand="s of V_BE = s R C_c (1 - exp(-(V - 1 V)/(s R C))): one base alone, rising from 1 V",
+        hand_source="closed form of R and C",
+        accuracy=0.1,
+        leaves_out="other base, filters before",
     ),
 )

@@ -21,6 +21,7 @@ from ..run import Observed
 from .alarm_state import TOLD_BY, alarm_states
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .contact_events import contacts, states
+from .emptied import Emptied
 from .latch import latched
 from .seen import Seen
 from .trial import Trial
@@ -75,6 +76,8 @@ def _ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
         gives_in=gives_in,
     )
 
+    emptied = Emptied.find(view, part, told_by[0].latch, start)
+
     def judge(seen: Seen) -> Judged:
         capability = np.full(seen.lanes.count, shortest)
         edge = seen.edges.get(trial.key)
@@ -87,9 +90,12 @@ def _ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
             1.0 / edge.knob,
             capability,
             [(edge.missing | ~was, check.words["missing"]), (edge.always, check.words["always"])],
+            None if emptied is None else 1.0 - emptied.seconds(seen, sequence) / shortest,
+            f"no latch and capacitor that {part.ref} empties, through one resistor at most" if emptied is None else "",
         )
 
     rows = tuple(row for state in told_by for row in state.probes(start))
+    rows += () if emptied is None else emptied.rows
     screen = 1.0 / (shortest * (1.0 - required)) if required < 1.0 else None
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows, trial, screen)
 
@@ -109,5 +115,10 @@ CHECKS = (
             "always": "did not let go: not by a reset of thirty times that length either",
         },
         worst="high supply, hot",
+        by_hand="R C ln((V - V_low) / (V_hold - V_low)): the contact empties C to where the latch lets go,"
+        " V_hold = 0.8 V + (V - 0.8 V) I_hold / I_latch",
+        hand_source="closed form of R and C, I_hold by hand as in latch hold",
+        accuracy=0.2,
+        leaves_out="gains, the latch's draw",
     ),
 )

@@ -8,10 +8,11 @@ import numpy as np
 
 from ..design.part import Part, Stage
 from ..kernel.layout import Floats
-from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, integral, level
 from .check import Ask, Check, Judged, ratio, unknown
+from .peak_collector_emitter import LIFTED
 from .seen import Seen
+from .top_voltage import beside, top_voltage
 from .view import View
 
 FULL_UNTIL, ZERO_AT = 70.0, 155.0  # deg C, metal film, from memory
@@ -56,12 +57,11 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         never = np.asarray(np.isnan(powers).all(axis=0))
         largest = np.max(np.nan_to_num(powers), axis=0)
         allowed = factor * permitted(rating.low, seen.lanes.ambient)
-        hand = None
-        if SUPPLY in seen.lanes:
+        volts, hand = top_voltage(view, seen, (sequence,)), None
+        if volts is not None:
             # By hand the whole supply stands across it: V^2/R, never less than what it dissipates without a coil.
-            most = seen.lanes[SUPPLY] ** 2 / seen.lanes[part.ref, "value"]
-            hand = 1.0 - most / np.where(allowed > 0.0, allowed, np.nan)
-        return ratio(largest, allowed, [(never, check.words["never"])], hand)
+            hand = 1.0 - volts**2 / seen.lanes[part.ref, "value"] / np.where(allowed > 0.0, allowed, np.nan)
+        return ratio(largest, allowed, [(never, check.words["never"])], hand, beside(view))
 
     rows = (*steady, *((whole, on, off) if whole is not None else ()))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
@@ -77,7 +77,10 @@ CHECKS = (
         formula="D = largest power at the moments of the sequence and averaged over the alarm, C = derating x P(T)",
         asks=asks,
         worst="hot, high supply",
-        by_hand="V^2/R with the whole supply across it: never less than what it takes without a coil",
+        by_hand="V^2/R with the whole supply across it",
+        accuracy=0.05,
+        bound=True,
+        leaves_out=LIFTED,
         words={"never": "none of the moments at which its power is read ever came"},
     ),
 )

@@ -10,7 +10,9 @@ from ..design.part import Part, Stage
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
+from .peak_collector_emitter import LIFTED
 from .seen import Seen
+from .top_voltage import beside, top_voltage
 from .view import View
 
 ROLE = "reverse_diode"
@@ -35,13 +37,13 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, takes_supply: bool)
 
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(reverse, name) for name in sequences], axis=0)
-        hand = None
-        if SUPPLY in seen.lanes:
-            hand = 1.0 - seen.lanes[SUPPLY] / allowed
-            if takes_supply:
-                # Whether a sequence reverses the supply or not: that is what this diode is there for.
-                peaks = np.maximum(peaks, seen.lanes[SUPPLY])
-        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed), hand=hand)
+        volts = top_voltage(view, seen, sequences)
+        hand = None if volts is None else 1.0 - volts / allowed
+        if takes_supply and SUPPLY in seen.lanes:
+            # Whether a sequence reverses the supply or not: that is what this diode is there for.
+            peaks = np.maximum(peaks, seen.lanes[SUPPLY])
+        capability = np.full(seen.lanes.count, allowed)
+        return ratio(np.maximum(0.0, peaks), capability, hand=hand, apart=beside(view))
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, (reverse,))
 
@@ -56,6 +58,9 @@ CHECKS = (
         formula="D = largest reverse voltage of all sequences, of an entry diode at least the supply, C = V_RRM",
         asks=asks,
         worst="high supply",
-        by_hand="the whole supply across it: a circuit without a coil",
+        by_hand="the whole supply across it",
+        accuracy=0.05,
+        bound=True,
+        leaves_out=LIFTED,
     ),
 )

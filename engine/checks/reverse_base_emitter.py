@@ -10,6 +10,8 @@ from ..design.part import Part, Stage
 from ..primitives.signals import maximum
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
+from .stepped_base import stepped
+from .top_voltage import beside, top_voltage
 from .view import View, forward_base_voltage
 
 BIPOLAR = ("npn", "pnp", "darlington_npn", "darlington_pnp")
@@ -30,10 +32,14 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         return unknown(check, stage.name, part.ref, sequences[0], required, f"v_ebo of {part.ref}")
     allowed = view.derating("v_ebo", requirement) * rating.low
     reverse = maximum(forward_base_voltage(part).scaled(-1.0))
+    may_step = stepped(view, part)
 
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(reverse, sequence) for sequence in sequences], axis=0)
-        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, allowed))
+        volts = top_voltage(view, seen, sequences)
+        hand = None if volts is None else 1.0 - volts * may_step / allowed
+        capability = np.full(seen.lanes.count, allowed)
+        return ratio(np.maximum(0.0, peaks), capability, hand=hand, apart=beside(view))
 
     return Ask(check, stage.name, part.ref, sequences, required, judge, rows=(reverse,))
 
@@ -48,5 +54,9 @@ CHECKS = (
         formula="D = largest reverse base-emitter voltage of all sequences, C = derating x V_EBO",
         asks=asks,
         worst="high supply",
+        by_hand="the whole supply where a capacitor leads to the base or the emitter is on no rail, else none",
+        accuracy=0.05,
+        bound=True,
+        leaves_out="coils, rails that move",
     ),
 )

@@ -73,7 +73,9 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
             (edge.always, check.words["always"]),
             (~np.isfinite(dip), check.words["never"]),
         ]
-        return ratio(dip, full - held, outcomes, _hand(view, load, seen, held))
+        hand = _hand(view, load, seen, held)
+        apart = f"what {load.ref} draws, or the supply, is not given" if hand is None else ""
+        return ratio(dip, full - held, outcomes, hand, apart)
 
     rows = (*before, *looks[0], *looks[1], own)
     # What the load draws moves the margin, and is nothing that the trial moves.
@@ -92,7 +94,7 @@ def _pick(collapsed: Mask, own: Floats, supply: Floats) -> Floats:
 
 
 def _hand(view: View, load: Part, seen: Seen, held: Floats) -> Floats | None:
-    """1 - I (R_source + R_fuse)/(V - V_hold), I the larger of surge and current of the load."""
+    """1 - V R/(R + R_load)/(V - V_hold): R of source and fuse, R_load = V/I, I the larger of surge and current."""
     draw = view.bench(load.ref).draw
     if draw is None or SUPPLY not in seen.lanes or SOURCE_RESISTANCE not in seen.lanes:
         return None
@@ -105,7 +107,8 @@ def _hand(view: View, load: Part, seen: Seen, held: Floats) -> Floats | None:
     for _, fuse in view.parts_of("fuse"):
         resistance = view.datum(fuse, "resistance", "ohm")
         ohms = ohms + (0.0 if resistance is None else resistance.typical)
-    return np.asarray(1.0 - current * ohms / (supply - held))
+    dip = current * ohms / (1.0 + current * ohms / supply)
+    return np.asarray(1.0 - dip / (supply - held))
 
 
 CHECKS = (
@@ -117,7 +120,11 @@ CHECKS = (
         required=0.3,
         formula="D = dip of the feed as the load comes on, C = the feed before it - that at which the latch lets go",
         worst="low supply, soft source, cold",
-        by_hand="1 - I (R_source + R_fuse) / (V - V_hold), I the larger of surge and current of the load",
+        by_hand="V R / (R + R_load) / (V - V_hold), R = R_source + R_fuse, R_load = V / I, I the larger of surge and"
+        " current of the load",
+        hand_source="Ohm's law, V_hold by the trial",
+        accuracy=0.05,
+        leaves_out="other drops, capacitors",
         asks=asks,
         words={
             "missing": "the latch was never set",

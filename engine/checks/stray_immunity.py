@@ -7,6 +7,7 @@ puts ever larger pulses of that width, up and down, into the net in stand-by.
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -21,11 +22,12 @@ from ..quantity import read
 from .alarm_state import TOLD_BY, AlarmState, alarm_states, settling, standby
 from .base_capacitance import held_by
 from .charge_trial import SETTLE, Put, charge_trial
-from .check import Ask, Check, Judged, ratio, unknown
+from .check import Apart, Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .view import View
 
 LEAST, MOST = 1e-3, 300.0  # charges of the trial, in what the strays inject at the nominal supply
+AT_ONCE = 0.2  # of R C at the base: as long a pulse is over at once
 WIDTH = 1e-6  # s, where a requirement gives a charge without its width
 
 
@@ -98,10 +100,10 @@ def _ask(check: Check, view: View, net: str) -> Ask:
             return Judged(np.full(seen.lanes.count, np.nan), demand=brought)
         words = check.words
         outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
-        judged = ratio(brought, edge.knob, outcomes, _hand(view, states[0], net, seen, brought))
+        hand, apart = _hand(view, states[0], net, seen, brought, width)
+        judged = ratio(brought, edge.knob, outcomes, hand, apart)
         margin = np.where(edge.never, 1.0, judged.margin)
-        judged_outcomes = (*judged.outcomes, (edge.never, words["immune"]))
-        return Judged(margin, brought, judged.capability, outcomes=judged_outcomes, hand=judged.hand)
+        return replace(judged, margin=margin, outcomes=(*judged.outcomes, (edge.never, words["immune"])))
 
     highest = usual if stated is not None or supply is None else usual * supply.max / nominal
     screen = min(highest / (1.0 - required), MOST * usual) if required < 1.0 else None
@@ -131,13 +133,20 @@ def _put(net: str, width: float, sign: float) -> Put:
     return put
 
 
-def _hand(view: View, state: AlarmState, net: str, seen: Seen, demand: Floats) -> Floats | None:
-    """1 - D/(C V_BE) at the npn's base, C all that hangs on it: what a pulse must bring that is over at once."""
+def _hand(
+    view: View, state: AlarmState, net: str, seen: Seen, demand: Floats, width: float
+) -> tuple[Floats | None, str | Apart]:
+    """1 - D/(C V_BE) at the npn's base, C all that hangs on it: what a pulse must bring that is over at once; and where
+    it is not to be compared, with why."""
     latch = state.latch
     if latch is None or net != latch.npn.pins["base"] or SUPPLY not in seen.lanes:
-        return None
+        return None, "the formula is that of the base of a latch's npn"
     held = held_by(view, seen.lanes, net)
-    return np.asarray(1.0 - demand / (held * latch.turn_on(seen.lanes)[0]))
+    resistor = view.base_emitter_resistor(latch.stage, "latch_npn")
+    drained = np.inf if resistor is None else seen.lanes[resistor.ref, "value"] * held
+    slow = np.asarray(width > AT_ONCE * drained) & np.ones(seen.lanes.count, dtype=bool)
+    hand = np.asarray(1.0 - demand / (held * latch.turn_on(seen.lanes)[0]))
+    return hand, ((slow, "the pulse lasts so long that the base resistor drains it meanwhile"),)
 
 
 CHECKS = (
@@ -149,7 +158,9 @@ CHECKS = (
         required=0.5,
         formula="D = stray capacitance x largest swing of the net it comes from, C = least charge that trips an alarm",
         worst="hot, high supply",
-        by_hand="1 - D / (C_base V_BE), for a pulse that is over at once",
+        by_hand="D / (C_base V_BE), for a pulse that is over at once",
+        accuracy=0.1,
+        leaves_out="drains, other transistor",
         asks=asks,
         reads={"of": "base", "charge": "20 pC", "width": "100 ns", "settle": "0.1 s"},
         words={

@@ -169,7 +169,8 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
             alone = loop.divider.levels(seen.lanes, look(rail))
             hand = _shares(loop.between(*alone, look), planned).min(axis=0)
         never = np.asarray(~np.isfinite(left).all(axis=0))
-        judged = ratio(was - there, was, [(never, check.words["never"])], hand)
+        apart = "the roles end_of_line and pull_up or pull_down are not filled" if hand is None else ""
+        judged = ratio(was - there, was, [(never, check.words["never"])], hand, apart)
         return replace(judged, each=tuple(shares))
 
     return Ask(check, stage.name, net, (sequence,), required, judge, loop.rows)
@@ -206,7 +207,9 @@ CHECKS = (
         reads={"of": "line", "low": "35 %", "high": "65 %", "drift": "3 %", "rail": "supply"},
         worst="longest and leakiest line, thresholds at both ends of their drift",
         by_hand="rail / (1 + R_pull (1/(R_end + R_line) + 1/R_leak)) and the same shorted and open",
+        hand_source="divider, Ohm's law",
         accuracy=0.05,
+        leaves_out="draw of the thresholds",
         words={"never": "one of the moments at which the loop is read, or an event of a threshold, never came"},
     ),
 )

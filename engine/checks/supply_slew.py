@@ -7,6 +7,7 @@ settled; demand and capability are slews at the latch's own supply node, behind 
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 
 import numpy as np
 
@@ -26,6 +27,7 @@ from .view import View
 
 SLOWEST, FASTEST = 10.0, 1e-8  # s, rise times of the trial
 SETTLED = (0.01, 0.1)  # s after the rise at which the trial looks at the latch: a timed one may let go again
+UNCOUPLED = "no base-emitter resistor of the npn in its role, or nothing couples into its base"
 WATCHED = 1e-3  # s after the rise during which the node's slew is watched
 
 
@@ -88,15 +90,11 @@ def _ask(check: Check, latch: Latch) -> Ask:
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), demand=demand)
-        judged = ratio(
-            demand,
-            edge.values[fastest],
-            [(edge.always, check.words["always"])],
-            _hand(latch, seen, demand),
-        )
+        hand = slew_by_hand(latch, seen, demand)
+        apart = UNCOUPLED if hand is None else ""
+        judged = ratio(demand, edge.values[fastest], [(edge.always, check.words["always"])], hand, apart)
         margin = np.where(edge.never, 1.0, judged.margin)
-        outcomes = (*judged.outcomes, (edge.never, check.words["immune"]))
-        return Judged(margin, demand, judged.capability, outcomes=outcomes, hand=judged.hand)
+        return replace(judged, margin=margin, outcomes=(*judged.outcomes, (edge.never, check.words["immune"])))
 
     screen = 1.0 / (max(rise, FASTEST) * (1.0 - required)) if required < 1.0 else None
     return Ask(check, stage.name, npn.ref, (sequence,), required, judge, (steepest,), trial, screen)
@@ -110,9 +108,10 @@ def _missing_capacitance(view: View, part: Part) -> str | None:
     return None if view.datum(part, "c_ob", "F") is not None else f"c_ob of {part.ref}"
 
 
-def _hand(latch: Latch, seen: Seen, demand: Floats) -> Floats | None:
-    """1 - D/s with s from v = s R C_c (1 - exp(-V/(s R C))), the base voltage at the end of a rise to V through the
+def slew_by_hand(latch: Latch, seen: Seen, demand: Floats, lingers: float = 0.0) -> Floats | None:
+    """1 - D/s with s from v = s R C_c (1 - exp(-V/(s R C))), the base voltage at the end of a rise by V through the
     coupling C_c of strays and collector, C being all that hangs on the base; 1 where no slew can reach the trip level.
+    ``lingers``: the voltage from which the supply rises.
     """
     view, stage, npn = latch.view, latch.stage, latch.npn
     resistor = view.base_emitter_resistor(stage, "latch_npn")
@@ -128,7 +127,7 @@ def _hand(latch: Latch, seen: Seen, demand: Floats) -> Floats | None:
     capacitor = view.role(stage, "base_capacitor")
     total = coupling + (0.0 if emitter is None else emitter.typical)
     held = total + (0.0 if capacitor is None else seen.lanes[capacitor.ref, "value"])
-    supply, resistance = seen.lanes[SUPPLY], seen.lanes[resistor.ref, "value"]
+    supply, resistance = seen.lanes[SUPPLY] - lingers, seen.lanes[resistor.ref, "value"]
     trip = base_voltage(seen.lanes, TRIP_CURRENT)
     low, high = np.full(seen.lanes.count, np.log(1.0)), np.full(seen.lanes.count, np.log(1e12))
     for _ in range(60):
@@ -149,8 +148,10 @@ CHECKS = (
         formula="D = slew of the latch's supply node as the supply comes, C = largest slew that does not trip it",
         asks=asks,
         worst="hot, high supply",
-        by_hand="s of V_BE = s R C_c (1 - exp(-V/(s R C))): one base alone, to a factor of four",
-        accuracy=3.0,
+        by_hand="s of V_BE = s R C_c (1 - exp(-V/(s R C))): one base alone",
+        hand_source="closed form of R and C",
+        accuracy=0.1,
+        leaves_out="other base, filters before",
         words={
             "always": "trips however slowly the supply is connected",
             "immune": "immune at any slew",

@@ -83,7 +83,8 @@ def _voltage_ask(check: Check, view: View, stage: Stage, clamp: Part, sequences:
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(across, sequence) for sequence in sequences], axis=0)
         hand = 1.0 - seen.lanes[column] / lowest if column in seen.lanes else None
-        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, lowest), hand=hand)
+        apart = "" if column in seen.lanes else f"clamping_voltage of {clamp.ref} is not given"
+        return ratio(np.maximum(0.0, peaks), np.full(seen.lanes.count, lowest), hand=hand, apart=apart)
 
     return Ask(check, stage.name, clamp.ref, sequences, required, judge, rows=(across,))
 
@@ -108,12 +109,12 @@ def _energy_ask(check: Check, view: View, stage: Stage, clamp: Part, sequences: 
 
     def judge(seen: Seen) -> Judged:
         energy = np.max([seen.value(taken, sequence) for sequence in sequences], axis=0)
-        hand = None
+        hand, apart = None, "more than one surge, or its impedance is not given: the formula is that of one"
         if len(events) == 1 and ohms[0] and column in seen.lanes and SUPPLY in seen.lanes:
             clamped = seen.lanes[column]
             current = np.maximum(0.0, (peak - clamped) / ohms[0])
-            hand = 1.0 - clamped * current * read(events[0].for_, "s") / bears
-        return ratio(np.maximum(0.0, energy), np.full(seen.lanes.count, bears), hand=hand)
+            hand, apart = 1.0 - clamped * current * read(events[0].for_, "s") / bears, ""
+        return ratio(np.maximum(0.0, energy), np.full(seen.lanes.count, bears), hand=hand, apart=apart)
 
     return Ask(check, stage.name, clamp.ref, sequences, required, judge, rows=(taken,))
 
@@ -129,7 +130,10 @@ CHECKS = (
         asks=voltage_asks,
         reads={"of": "Q1", "rating": "45 V"},
         worst="high clamping voltage, stiff source",
-        by_hand="1 - clamping voltage at the rated pulse current / C",
+        by_hand="clamping voltage at the rated pulse current / C: the surge drives no more than that",
+        accuracy=0.05,
+        bound=True,
+        leaves_out="more than rated current",
     ),
     Check(
         number=24,
@@ -140,6 +144,8 @@ CHECKS = (
         formula="D = energy that the clamp takes, C = rated power x root of (1 ms x length of the surge, up to 10 ms)",
         asks=energy_asks,
         worst="low clamping voltage, stiff source",
-        by_hand="1 - V_clamp (V_surge - V_clamp)/R_impedance t / C",
+        by_hand="V_clamp (V_surge - V_clamp)/R_impedance t / C",
+        accuracy=0.05,
+        leaves_out="other takers, its edges",
     ),
 )

@@ -113,7 +113,10 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         if latch is not None:
             between = np.abs(seen.time(lifted[0], sequence) - seen.time(lifted[1], sequence))
             hand = _hand(latch, part, seen, swing, between)
-        return ratio(brought / edge.knob, brought, outcomes, hand)
+        apart = "no latch: the formula is that of its npn's base" if latch is None else ""
+        if latch is not None and hand is None:
+            apart = f"a gain of {latch.npn.ref}, its base-emitter resistor or the supply is not given"
+        return ratio(brought / edge.knob, brought, outcomes, hand, apart)
 
     rows = (*(row for pair in swings for row in pair), *lifted)
     screen = 1.0 / (1.0 - required) if required < 1.0 else None
@@ -173,5 +176,7 @@ CHECKS = (
         },
         worst="cold, low supply, small trigger capacitor",
         by_hand="1 - (C_node V_BE + (V_BE/R_BE + I_C/h_FE) t_regeneration) / (C_t (dV - V_BE - V_D))",
+        accuracy=0.1,
+        leaves_out="other drains, a slow edge",
     ),
 )

@@ -19,7 +19,7 @@ from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor
 from ..quantity import read
-from .check import Ask, Check, Judged, ratio, unknown, window
+from .check import Apart, Ask, Check, Judged, ratio, unknown, window
 from .divider_point import divider_point
 from .duration import instant
 from .seen import Seen
@@ -86,10 +86,17 @@ def _window_ask(check: Check, view: View, requirement: Requirement) -> Ask:
     def judge(seen: Seen) -> Judged:
         at = instant(seen, anchor, sequence)
         hand = divider_point(view, requirement, "trip_level", ramped.ref, seen)
-        return window(ramped.level(seen, sequence, at), low, high, [(~np.isfinite(at), words)], hand)
+        return window(ramped.level(seen, sequence, at), low, high, [(~np.isfinite(at), words)], hand, _why(hand))
 
     rows = () if anchor.row is None else (anchor.row,)
     return Ask(check, ramped.stage, ramped.ref, (sequence,), required, judge, rows, unit=ramped.unit)
+
+
+def _why(hand: Floats | None) -> Apart:
+    """Why there is no hand value, and where."""
+    if hand is None:
+        return ((None, "no bridge_resistor in its role, or no trip_level (and release_level) in the requirement"),)
+    return ((np.isnan(hand), "by hand the level is not reached within what the sequences set"),)
 
 
 @dataclass(frozen=True)
@@ -163,7 +170,8 @@ def hysteresis_window_asks(check: Check, view: View) -> Iterator[Ask]:
 
 def _hysteresis_window(check: Check, pair: Pair, required: float, low: float, high: float) -> Ask:
     def judge(seen: Seen) -> Judged:
-        return window(pair.hysteresis(seen), low, high, pair.outcomes(seen, check.words["never"]), pair.by_hand(seen))
+        hand = pair.by_hand(seen)
+        return window(pair.hysteresis(seen), low, high, pair.outcomes(seen, check.words["never"]), hand, _why(hand))
 
     return pair.ask(check, required, judge)
 
@@ -187,7 +195,7 @@ def _hysteresis(check: Check, pair: Pair, required: float, ripple: float) -> Ask
         wanted = np.full(seen.lanes.count, ripple)
         by_hand = pair.by_hand(seen)
         hand = None if by_hand is None else 1.0 - ripple / by_hand
-        return ratio(wanted, pair.hysteresis(seen), pair.outcomes(seen, check.words["never"]), hand)
+        return ratio(wanted, pair.hysteresis(seen), pair.outcomes(seen, check.words["never"]), hand, _why(hand))
 
     return pair.ask(check, required, judge)
 
@@ -205,7 +213,8 @@ CHECKS = (
         reads={"of": "RT1", "at": "LS1 on", "min": "1.3 C", "max": "2.7 C", "trip_level": "50 %"},
         worst="both extremes of temperature and supply",
         by_hand="level at which sensor and bridge_resistor give the trip_level of the requirement",
-        accuracy=0.3,
+        accuracy=0.1,
+        leaves_out="other draws on the divider",
         words=NEVER,
         source="that of the duration window: common practice, no source",
     ),
@@ -228,7 +237,8 @@ CHECKS = (
         },
         worst="both extremes of supply and gain",
         by_hand="between the levels at which sensor and bridge_resistor give trip_level and release_level",
-        accuracy=0.3,
+        accuracy=0.1,
+        leaves_out="other draws on the divider",
         words=NEVER,
         source="that of the duration window: common practice, no source",
     ),
@@ -250,7 +260,8 @@ CHECKS = (
         },
         worst="low supply, weak h_FE",
         by_hand="ripple over what lies between trip_level and release_level of sensor and bridge_resistor",
-        accuracy=0.3,
+        accuracy=0.1,
+        leaves_out="other draws on the divider",
         words=NEVER,
     ),
 )

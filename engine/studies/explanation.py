@@ -66,6 +66,7 @@ class Explanation:
     put_in: str
     margin: float | None
     by_hand: str
+    hand_source: str
     required: Used
     usual_worst: str
     observed: tuple[Observation, ...]
@@ -144,6 +145,7 @@ def _explanation(
         put_in="" if judged is None else _put_in(judged, unit),
         margin=None if judged is None else _one(judged.margin),
         by_hand=check.by_hand,
+        hand_source=check.hand_source,
         required=Used("required margin", ask.required, "%", None, None, source),
         usual_worst=check.worst,
         observed=observed,

@@ -258,7 +258,7 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         verdict = Verdict.PASS if margin >= ask.required else Verdict.THIN
     if corner.remark is not None:
         reason = corner.remark if reason is None else f"{reason}; {corner.remark}"
-    return CheckResult(
+    found = CheckResult(
         id=ask.id,
         number=ask.check.number,
         title=ask.check.title,
@@ -286,7 +286,11 @@ def _result(ask: Ask, corner: Corner, nominal: float) -> CheckResult:
         by_hand=ask.check.by_hand,
         accuracy=ask.check.accuracy,
         extrapolated=None if ask.missing else judged.beyond(lane),
+        bound=ask.check.bound,
+        apart=None if ask.missing else judged.why_apart(lane),
+        hand_scale=_number(judged.hand_scale, lane),
     )
+    return replace(found, left_out=ask.check.leaves_out) if found.disagrees else found
 
 
 def _overrun(ask: Ask, judged: Judged, lane: int) -> str:

@@ -53,6 +53,7 @@ def explanation(id: str, margin: float | None) -> Explanation:
         put_in="m = 1 - D/C = 1 - 1 V / 2 V = +50.0%",
         margin=margin,
         by_hand="",
+        hand_source="common practice, from memory",
         required=Used("required margin", 0.1, "%", None, None, "the design's table: a siren is near"),
         usual_worst="hot",
         observed=(

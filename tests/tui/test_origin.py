@@ -105,17 +105,33 @@ def test_a_hand_formula_that_disagrees_is_not_hidden() -> None:
     apart = replace(check("arrival:timer:R7", 0.5), hand=0.1, accuracy=0.2, by_hand="R C ln 2")
     rows = {name: text for name, text, _ in origin_rows(apart, True) if name}
     assert rows["by hand"] == "+10 %: DISAGREES with the simulation beyond its stated accuracy 20 %"
+    told = [text for name, text, _ in origin_rows(replace(apart, left_out="the load"), True) if not name]
+    assert told == ["trust the simulation, left out: the load", "R C ln 2"]
     near = {name: text for name, text, _ in origin_rows(replace(apart, hand=0.4), True) if name}
     assert near["by hand"] == "+40 % (cross-check, not the verdict; stated accuracy 20 %)"
     bound = {name: text for name, text, _ in origin_rows(replace(apart, accuracy=None), True) if name}
     assert bound["by hand"] == "+10 % (a bound, not the verdict)"
+    worst = {name: text for name, text, _ in origin_rows(replace(apart, bound=True), True) if name}
+    assert worst["by hand"] == "+10 % (at worst: a bound, not the verdict; stated accuracy 20 %)"
+
+
+def test_why_there_is_no_hand_value_is_told() -> None:
+    none = replace(check("arrival:timer:R7", 0.5), accuracy=0.2, by_hand="R C ln 2", apart="no role is filled")
+    for hand, said in ((None, "no value: no role is filled"), (0.1, "+10 %, not to be compared: no role is filled")):
+        rows = {name: text for name, text, _ in origin_rows(replace(none, hand=hand), True) if name}
+        assert rows["by hand"] == said
+    silent = replace(none, apart=None, hand=0.1, margin=-1.0, outcome="never came on")
+    rows = {name: text for name, text, _ in origin_rows(silent, True) if name}
+    assert rows["by hand"] == "+10 %, not to be compared: never came on"
 
 
 def test_the_bench_says_that_a_hand_formula_disagrees() -> None:
     apart = replace(check("arrival:timer:R7", 0.5), hand=0.1, accuracy=0.2)
     for found, said in ((apart, True), (replace(apart, accuracy=0.6), False)):
         row = FigureRow(found, True, 0.6, False, False, None)
-        assert ("by hand +10, which disagrees" in plain(check_lines(row, 80)[1])) is said
+        assert (
+            "by hand +10 is off: trust the simulation, left out: what else there is" in plain(check_lines(row, 80)[1])
+        ) is said
 
 
 def test_values_put_in_stand_under_their_formula() -> None:

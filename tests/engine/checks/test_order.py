@@ -61,7 +61,8 @@ def test_an_event_that_never_comes_is_an_outcome(end: str, event: str) -> None:
     assert found.outcome == f"'{event}' never came"
 
 
-def test_by_hand_where_the_timers_are_named() -> None:
+def named_timers() -> Design:
+    """The pair with each timer in a stage of its own, which the requirement names."""
     document = pair(first_timer="one", second_timer="two").dump()
     (unit,) = document["stages"]
     parts = {part["ref"]: part for part in unit["parts"]}
@@ -76,7 +77,11 @@ def test_by_hand_where_the_timers_are_named() -> None:
             for name, n in (("one", 1), ("two", 2))
         ),
     ]
-    (found,) = study(Design.load(document), only="order:one:C1").checks
+    return Design.load(document)
+
+
+def test_by_hand_where_the_timers_are_named() -> None:
+    (found,) = study(named_timers(), only="order:one:C1").checks
     assert found.margin == pytest.approx(0.5, abs=2e-3)
     assert found.hand == pytest.approx(0.5, abs=5e-3)
     assert not found.disagrees

@@ -70,14 +70,18 @@ def test_every_check_says_what_it_is_worth() -> None:
 def test_a_hand_formula_disagrees_beyond_its_accuracy(
     hand: float | None, accuracy: float | None, expected: bool
 ) -> None:
-    found = replace(margin(heated(), "resistor_power", "R1"), hand=hand, accuracy=accuracy)
+    found = replace(margin(heated(), "resistor_power", "R1"), hand=hand, accuracy=accuracy, bound=False)
     assert found.margin == pytest.approx(0.46)
     assert found.disagrees is expected
+    assert not replace(found, apart="no latch").disagrees
+    # A bound is wrong only where it is too good; of a window the accuracy is a share of the value.
+    assert replace(found, bound=True).disagrees is (expected and hand is not None and hand > 0.46)
+    assert not replace(found, hand_scale=4.0).disagrees
 
 
 def test_of_an_overrun_the_demand_counts() -> None:
     # D/C = 10 and by hand 10.8: 8 % of the demand.
-    found = replace(margin(heated(), "resistor_power", "R1"), margin=-9.0, hand=-9.8, accuracy=0.1)
+    found = replace(margin(heated(), "resistor_power", "R1"), margin=-9.0, hand=-9.8, accuracy=0.1, bound=False)
     assert not found.disagrees
     assert replace(found, hand=-10.5).disagrees
 
