@@ -21,13 +21,14 @@ def back_up(session: Session, store: Path, target: Path) -> None:
     """Copy the store that ``session`` reads to ``target``, over an earlier copy but over nothing else.
 
     Raises:
-        StorageError: ``target`` cannot be written, is the store itself, or is a file of another kind.
+        StorageError: ``target`` cannot be written, is the store itself, or is a file of another kind; or the store is
+            damaged.
     """
     check_target(store, target)
     connection = session.connection().connection.driver_connection
     if not isinstance(connection, sqlite3.Connection):
         raise TypeError("the store is not on SQLite's own driver")
-    copy_database(connection, target)
+    copy_database(connection, target, only_whole=True)
 
 
 def check_target(store: Path, target: Path) -> None:
@@ -54,11 +55,25 @@ def _is_store(file: Path) -> bool:
         return data.read(72)[68:] == APPLICATION.to_bytes(4, "big")
 
 
-def copy_database(source: sqlite3.Connection, target: Path) -> None:
+def _check_whole(copy: sqlite3.Connection, target: Path) -> None:
+    """Refuse to put the copy of a damaged store where a good one may lie."""
+    try:
+        damage = [line for (line,) in copy.execute("PRAGMA quick_check(1)") if line != "ok"]
+    except sqlite3.DatabaseError as error:
+        damage = [str(error)]
+    if damage:
+        raise StorageError(
+            f"The store is damaged and is not copied to {target}, where a good copy may lie: `stagebook inspect` names "
+            "what is wrong, and with --rescue FILE it saves what can be read."
+        )
+
+
+def copy_database(source: sqlite3.Connection, target: Path, *, only_whole: bool = False) -> None:
     """Copy the database of ``source`` to ``target`` (mode 0600): temporary name, fsync, rename.
 
     Raises:
-        StorageError: ``target`` cannot be written; what was there before stands.
+        StorageError: ``target`` cannot be written or, with ``only_whole``, the database is damaged; what was there before
+            stands.
     """
     temporary: Path | None = None
     try:
@@ -68,6 +83,8 @@ def copy_database(source: sqlite3.Connection, target: Path) -> None:
         lock(handle)  # for as long as the handle is open nobody takes the file for an abandoned one
         with closing(sqlite3.connect(temporary, isolation_level=None)) as copy:
             source.backup(copy)
+            if only_whole:
+                _check_whole(copy, target)
             # One file that can be read from a medium without write permission: no log beside it.
             copy.execute("PRAGMA journal_mode = DELETE").fetchall()
         os.fsync(handle)

@@ -105,7 +105,8 @@ def _plain(error: sqlite3.Error, path: Path) -> StorageError:
     code = getattr(error, "sqlite_errorcode", sqlite3.SQLITE_ERROR) & 0xFF
     if code == sqlite3.SQLITE_NOTADB:
         return StoreUnreadable(f"{path} is not a Stagebook store: name another file with --store.")
-    if code == sqlite3.SQLITE_CORRUPT:
+    # What a damaged page holds may still be found where it belongs, and be no text any more.
+    if code == sqlite3.SQLITE_CORRUPT or str(error).startswith("Could not decode to UTF-8"):
         return StoreUnreadable(
             f"{path} is damaged: put a backup in the place of it and {path.name}-wal, or save what "
             "can be read with `stagebook inspect --rescue FILE`."

@@ -84,7 +84,7 @@ def _of_file(session: Session) -> Iterator[str]:
     connection = session.connection()
     for (line,) in connection.execute(text("PRAGMA integrity_check")):
         if line != "ok":
-            yield f"The file is damaged: {line}."
+            yield f"The file is damaged: {'; '.join(each for each in line.splitlines() if not each.startswith('***'))}."
     for table, row, owner, _ in connection.execute(text("PRAGMA foreign_key_check")):
         yield f"Row {row} of {table} belongs to a row of {owner} that is gone."
 

@@ -300,3 +300,41 @@ def test_the_family_holds_all_refusals() -> None:
 def test_inspection_of_a_store_that_is_well_says_nothing(closed: Path) -> None:
     with Store.open(closed) as store:
         assert inspect(store).problems == ()
+
+
+def test_a_text_that_is_no_text_any_more_is_damage(closed: Path, plain: Plain) -> None:
+    """Bytes that UTF-8 never has (RFC 3629, section 1), in the midst of the document of the draft."""
+    content = closed.read_bytes()
+    at = content.rindex(b"sounds while S1 is closed")
+    closed.write_bytes(content[:at] + b"\xff" * 9 + content[at + 9 :])
+    with Store.open(closed) as store:
+        texts = [lambda: store.draft("flood"), lambda: store.revisions("flood"), store.designs]
+        refusals = []
+        for text in texts:
+            try:
+                text()
+            except StorageError as refusal:
+                refusals.append(plain(refusal))
+    assert refusals
+    for line in refusals:
+        assert "is damaged: put a backup in the place of it" in line
+        assert "sounds" not in line
+
+
+def test_a_damaged_store_is_not_copied_over_a_good_copy(closed: Path, tmp_path: Path, plain: Plain) -> None:
+    target = tmp_path / "copy"
+    with Store.open(closed) as store:
+        store.backup(target)
+        with store.reading() as session:
+            raw = session.connection()
+            (root,) = raw.exec_driver_sql("SELECT rootpage FROM sqlite_schema WHERE name = 'edit'").one()
+            (size,) = raw.exec_driver_sql("PRAGMA page_size").one()
+    good = target.read_bytes()
+    content = bytearray(closed.read_bytes())
+    content[(root - 1) * size] = 0x77  # no kind of page (section 1.6)
+    closed.write_bytes(content)
+    with Store.open(closed) as store, pytest.raises(StorageError) as refusal:
+        store.backup(target)
+    assert "The store is damaged and is not copied to" in plain(refusal.value)
+    assert target.read_bytes() == good
+    assert [file.name for file in tmp_path.iterdir() if file.is_file()] == ["copy"]
