@@ -327,3 +327,14 @@ def test_what_starts_do_not_name_is_solved_at_the_beginning() -> None:
         ends=1e-3,
     )
     assert volts_at(circuit, "m", 1e-9) == pytest.approx([5.0], abs=1e-4)
+
+
+@pytest.mark.parametrize("radians", [0.0, 0.7, -2.0])
+def test_a_sine_begins_at_its_phase(radians: float) -> None:
+    wave = {"offset": "1 V", "amplitude": "2 V", "frequency": "50 Hz", "phase": radians}
+    generator = two("generator", "G1", "n", "0V", waveform={"sine": wave})
+    circuit = setup(generator, resistor("R1", "n", "0V", "1k"), supply=None, ends=30e-3)
+    times = np.array([1e-9, 3e-3, 11e-3, 29e-3])
+    exact = 1.0 + 2.0 * np.sin(2.0 * math.pi * 50.0 * times + radians)
+    # Between the steps, a twentieth of a period each, it is a parabola.
+    assert volts_at(circuit, "n", *times) == pytest.approx(exact, abs=0.01)
