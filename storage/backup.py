@@ -72,8 +72,8 @@ def copy_database(source: sqlite3.Connection, target: Path, *, only_whole: bool 
     """Copy the database of ``source`` to ``target`` (mode 0600): temporary name, fsync, rename.
 
     Raises:
-        StorageError: ``target`` cannot be written or, with ``only_whole``, the database is damaged; what was there before
-            stands.
+        StorageError: ``target`` cannot be written or, with ``only_whole``, the database is damaged; what was there
+            before stands.
     """
     temporary: Path | None = None
     try:

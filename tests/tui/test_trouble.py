@@ -5,7 +5,9 @@ from __future__ import annotations
 import sqlite3
 from contextlib import closing, suppress
 
-from stagebook.storage import Store, StoreFull
+import pytest
+
+from stagebook.storage import Store, StoreFull, StoreUnreadable
 from stagebook.tui.stagebook_app import StagebookApp
 
 from .conftest import flood, seen, settled, until
@@ -62,3 +64,18 @@ async def test_a_path_of_a_user_that_there_is_not_is_refused(app: StagebookApp) 
     async with app.run_test(size=(80, 24)) as pilot:
         await pilot.press("i", *"~no such user/x.json", "enter")
         assert "~no such user/x.json cannot be read" in " ".join(seen(pilot).split())
+
+
+async def test_a_shelf_that_cannot_be_read_is_not_called_empty(
+    app: StagebookApp, shelf: Store, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def damaged() -> None:
+        raise StoreUnreadable("shelf.sqlite3 is damaged: put a backup in the place of it")
+
+    monkeypatch.setattr(shelf, "designs", damaged)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        assert "is damaged: put a backup" in seen(pilot)
+        await pilot.press("down")
+        assert "the shelf cannot be read" in seen(pilot)
+        assert "empty" not in seen(pilot)

@@ -32,6 +32,7 @@ from .occupied import Occupied
 from .page import Page
 
 _ROW = "row"
+_EMPTY = "the shelf is empty: n begins a design, i imports one"
 _LARGEST_DOCUMENT = 16_000_000
 
 
@@ -52,7 +53,7 @@ class ShelfScreen(Page[None]):
         """Title and rows."""
         yield Lines(line(Span(" Stagebook: the shelf", "strong")), id="title")
         yield Rule()
-        yield RowList(id="designs", empty="the shelf is empty: n begins a design, i imports one")
+        yield RowList(id="designs", empty=_EMPTY)
 
     def on_mount(self) -> None:
         """The solver is prepared while the shelf is looked at."""
@@ -66,7 +67,8 @@ class ShelfScreen(Page[None]):
             self._preparing = False
             self.say("")
             self._computing.prepare(self.post_message)
-        self.attempt(self._show)
+        if not self.attempt(self._show):
+            self.query_one(RowList).say_empty("the shelf cannot be read")
 
     def on_solver_preparing(self, event: SolverPreparing) -> None:
         """The first start on this machine."""
@@ -78,6 +80,7 @@ class ShelfScreen(Page[None]):
         shown = self.query_one(RowList)
         width = shown.size.width or self.app.size.width
         rows = [Row(row.name, shelf_line(row, self._figures_of(row), width)) for row in self._store.designs()]
+        shown.say_empty(_EMPTY)
         shown.show(rows, shelf_heading(width), name)
 
     def _figures_of(self, row: DesignRow) -> MarginSheet | None:
