@@ -9,7 +9,7 @@ from ..engine.design.part import Part, Stage
 from ..engine.parts import kinds
 from ..engine.parts.edited import unusual_value
 from ..engine.parts.made import from_memory
-from ..engine.results import CheckResult, Depth, MarginSheet, Verdict
+from ..engine.results import CheckResult, Depth, MarginSheet, Verdict, explaining_first
 from ..engine.stages.modified import is_modified
 from ..storage.values import Draft
 from .chain_picture import Link
@@ -155,6 +155,7 @@ def standing_words(checks: Sequence[CheckResult]) -> tuple[str, str]:
     found = [f"{counts[verdict]} {WORDS[verdict]}" for verdict in _WORSE_THAN_PASS if counts[verdict]]
     if not found:
         return "every margin holds", ""
-    weakest = min((check for check in checks if check.verdict is not Verdict.PASS), key=lambda check: check.slack)
+    failed = sorted((check for check in checks if check.verdict is not Verdict.PASS), key=lambda check: check.slack)
+    weakest = explaining_first(failed, lambda check: check)[0]
     tone = "fail" if counts[Verdict.FAIL] else "thin" if counts[Verdict.THIN] else "unknown"
     return f"{', '.join(found)}: {check_name(weakest)} {weakest.outcome or percent(weakest.margin)}", tone

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
-from ..engine.results import CheckResult, Depth, MarginSheet
+from ..engine.results import CheckResult, Depth, MarginSheet, explaining_first
 from ..engine.studies.comparison import Against
 
 
@@ -90,7 +90,8 @@ class Figures:
         return None if self.nominal_old else self.nominal
 
     def rows(self, stage: str | None = None) -> tuple[FigureRow, ...]:
-        """The checks of one stage (None: of all), what got worse first, then by least slack."""
+        """The checks of one stage (None: of all), what got worse first, then by least slack; what explains an outcome
+        above it."""
         nominal = _by_id(self.nominal)
         worst = _by_id(self.worst)
         before = _by_id(self.before)
@@ -113,7 +114,7 @@ class Figures:
                     before=before.get(name),
                 )
             )
-        return tuple(sorted(rows, key=lambda row: row.order))
+        return tuple(explaining_first(sorted(rows, key=lambda row: row.order), lambda row: row.check))
 
 
 def _by_id(sheet: MarginSheet | None) -> Mapping[str, CheckResult]:

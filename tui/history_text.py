@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from textwrap import wrap
 
 from ..engine.design.differences import differences
-from ..engine.results import CheckResult
+from ..engine.results import CheckResult, explaining_first
 from ..storage.values import Revision
 from .drafting import change_words, incomplete
 from .margin_text import corner_words, name_cell
@@ -167,7 +167,8 @@ def revision_rows(revision: Revision, parent: Revision | None, width: int) -> li
             label = f"since r{parent.number}" if at == 0 else ""
             rows.append((f"change {at}", line(Span(f"{label:<{_LABEL}}", "strong"), change_words(change))))
     rows.append(("gap", line(Span("margins as they were when it was saved", "dim"))))
-    for check in sorted(revision.sheet.checks, key=lambda check: check.slack):
+    ordered = sorted(revision.sheet.checks, key=lambda check: check.slack)
+    for check in explaining_first(ordered, lambda check: check):
         shown = figure(check.margin, check.outcome, 10)
         rows.append(
             (

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import replace
 
 from stagebook.engine.results import Depth
-from stagebook.tui.bench_text import worse_words
+from stagebook.tui.bench_text import standing_words, worse_words
 from stagebook.tui.figures import Figures
 from stagebook.tui.margin_text import corner_words
 
@@ -78,3 +78,28 @@ def test_nothing_worse_is_not_said_without_how_the_design_stands() -> None:
 def test_a_check_that_a_part_took_along_is_not_shown_any_more() -> None:
     shorter = sheet(check("duration:timer:LS1", 0.5), depth=Depth.CORNERS)
     assert [row.check.id for row in known().edited().arrived(shorter).rows()] == ["duration:timer:LS1"]
+
+
+def test_what_explains_an_outcome_stands_above_it() -> None:
+    # A load that gets 4 % too little never counts as on: seven margins say so, and none of them can be mended.
+    silent = [
+        replace(check(f"{slug}:driver:Q8", -1.0), outcome="LS1 never came on", required=0.5)
+        for slug in ("base_overdrive", "peak_current")
+    ]
+    other = replace(check("latch_hold:latch:Q4", -0.9), required=0.5)
+    of = sheet(check("load_voltage:driver:LS1", -0.04), *silent, other, check("sound_level:driver:LS1", 0.1))
+    rows = Figures().arrived(of).rows()
+    assert [row.check.id.split(":")[0] for row in rows] == [
+        "load_voltage",
+        "base_overdrive",
+        "peak_current",
+        "latch_hold",
+        "sound_level",
+    ]
+    assert standing_words(of.checks)[0] == "4 FAIL: load_voltage LS1 -4"
+    # A figure about another part explains nothing here, nor does what holds.
+    held = sheet(check("load_voltage:driver:LS1", 0.04), *silent, check("load_voltage:driver:LS12", -0.04))
+    assert [row.check.id.split(":")[0] for row in Figures().arrived(held).rows()][:2] == [
+        "base_overdrive",
+        "peak_current",
+    ]

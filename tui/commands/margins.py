@@ -8,7 +8,7 @@ from collections.abc import Sequence
 from dataclasses import asdict
 from difflib import get_close_matches
 
-from ...engine.results import CheckResult, MarginSheet, Verdict
+from ...engine.results import CheckResult, MarginSheet, Verdict, explaining_first
 from ..origin_text import trusted
 from ..shown import MARKS, counted, percent, visible
 from .printing import json_argument, print_json, print_pairs, print_table, print_words
@@ -73,7 +73,7 @@ def _print(subject: Subject, sheet: MarginSheet) -> None:
         print_words("No check applies: give stages their roles, or the design requirements.")
         return
     print()
-    ordered = sorted(sheet.checks, key=lambda check: check.slack)
+    ordered = explaining_first(sorted(sheet.checks, key=lambda check: check.slack), lambda check: check)
     spread = any(check.spread for check in ordered)
     heads = ("  verdict", "worst %", "needs", "nominal", *(("passing",) if spread else ()), "check")
     print_table(heads, [_cells(check, spread) for check in ordered], right=frozenset(range(1, len(heads) - 1)))
