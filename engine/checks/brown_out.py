@@ -126,7 +126,7 @@ def _ask(
         hand = None if hand is None else 1.0 - demand / hand
         apart: Apart = ((None, NOT_FED),) if hand is None else ((np.isnan(hand), HOLDS_ON),)
         words = check.words
-        outcomes = [(edge.missing, words["missing"]), (edge.always, words["always"])]
+        outcomes = [(edge.always, words["always"])]
         judged = ratio(demand, edge.knob * (supply if deeper else 1.0), outcomes, hand, apart)
         margin = np.where(edge.never, 1.0, judged.margin)
         return replace(judged, margin=margin, outcomes=(*judged.outcomes, (edge.never, words["immune"])))
@@ -137,7 +137,6 @@ def _ask(
 
 
 WORDS = {
-    "missing": "the dip never came",
     "always": "the alarm changes with the least dip, or by itself",
     "immune": "no dip of that kind changes the alarm",
 }

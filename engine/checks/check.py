@@ -16,6 +16,7 @@ from .trial import Trial
 from .view import View
 
 Mask = NDArray[np.bool_]
+NOTHING = "nothing is left to bear the demand: the capability is not above zero"
 Apart = tuple[tuple[Mask | None, str], ...]
 
 
@@ -75,7 +76,8 @@ def ratio(
     margin = np.where(capability > 0.0, 1.0 - demand / safe, -1.0)
     for mask, _ in outcomes:
         margin = np.where(mask, -1.0, margin)
-    return Judged(margin, demand, capability, outcomes=tuple(outcomes), hand=hand, apart=everywhere(apart))
+    told = (*outcomes, (np.asarray(capability <= 0.0), NOTHING))
+    return Judged(margin, demand, capability, outcomes=told, hand=hand, apart=everywhere(apart))
 
 
 def window(

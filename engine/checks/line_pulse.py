@@ -90,9 +90,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
         held = held_by(view, seen.lanes, net) + (held_by(view, seen.lanes, line_net) if line_net != net else 0.0)
         hand = 1.0 - abs(charge) / np.where(held > 0.0, held, np.nan) / np.where(capability > 0.0, capability, np.nan)
         apart = ((~(held > 0.0), f"nothing holds {net} against the pulse"),)
-        judged = ratio(
-            demand, capability, [(edge.missing, words["missing"]), (edge.always, words["always"])], hand, apart
-        )
+        judged = ratio(demand, capability, [(edge.always, words["always"])], hand, apart)
         margin = np.where(edge.never, 1.0, judged.margin)
         outcomes = (*judged.outcomes, (edge.never, words["immune"]))
         return replace(judged, margin=margin, outcomes=outcomes)
@@ -118,7 +116,6 @@ CHECKS = (
         asks=asks,
         reads={"of": "line", "settle": "0.1 s"},
         words={
-            "missing": "the pulse never came",
             "always": "a hundredth of the pulse raises an alarm",
             "immune": "no pulse raises an alarm, up to three hundred times the charge",
         },

@@ -105,10 +105,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         edge = seen.edges.get(trial.key)
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), capability=brought)
-        outcomes = [
-            (edge.missing, check.words["missing"]),
-            (edge.always, check.words["always"]),
-        ]
+        outcomes = [(edge.always, check.words["always"])]
         hand = None
         if latch is not None:
             between = np.abs(seen.time(lifted[0], sequence) - seen.time(lifted[1], sequence))
@@ -170,10 +167,7 @@ CHECKS = (
         formula="D = charge of the smallest trigger capacitor that fires the latch, C = charge of the one there is",
         asks=asks,
         reads={"of": "C2", "from": "LS1 on", "settle": "0.1 s"},
-        words={
-            "missing": "the event that fires the latch never came",
-            "always": "never fired: not with thirty times the capacitor either",
-        },
+        words={"always": "never fired: not with thirty times the capacitor either"},
         worst="cold, low supply, small trigger capacitor",
         by_hand="1 - (C_node V_BE + (V_BE/R_BE + I_C/h_FE) t_regeneration) / (C_t (dV - V_BE - V_D))",
         accuracy=0.1,

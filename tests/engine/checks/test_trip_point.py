@@ -73,6 +73,7 @@ def test_hysteresis_between_limits(limits: dict[str, str], expected: float) -> N
     found = margin(probe("hysteresis_window", **EVENTS, **limits), "hysteresis_window", "B1")
     assert found.low == pytest.approx(60e3, rel=5e-3)
     assert found.margin == pytest.approx(expected, abs=0.02)
+    assert (found.verdict is Verdict.FAIL) == (expected < 0.0)
 
 
 @pytest.mark.parametrize(("ripple", "verdict"), [("12k", Verdict.PASS), ("70k", Verdict.FAIL)])
