@@ -7,14 +7,13 @@ import numpy as np
 from ..kernel.layout import Floats
 from ..primitives.builder import RETURN, SUPPLY_NET
 from ..primitives.columns import Lanes
-from ..quantity import read
 from .reverse_base_emitter import BIPOLAR
 from .view import View
 
 
 def held_by(view: View, lanes: Lanes, net: str, without: str = "") -> Floats:
     """Farads on a net per lane, junctions at their typical figure; the capacitor ``without`` does not count."""
-    fixed = sum(read(stray.value, "F") for stray in view.design.strays if net in stray.between)
+    fixed = sum(view.strays_at(net))
     for kinds, pin, keys in (
         (BIPOLAR, "base", ("c_ob", "c_ib")),
         (BIPOLAR, "collector", ("c_ob",)),

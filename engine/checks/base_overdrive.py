@@ -50,7 +50,8 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
 
     def judge(seen: Seen) -> Judged:
         fallen = np.abs(seen.value(drop, sequence))
-        volts = seen.value(across, sequence) + np.maximum(0.0, fallen - SATURATED)
+        saturated = view.customary("drop of a transistor that is fully on", SATURATED, "V")
+        volts = seen.value(across, sequence) + np.maximum(0.0, fallen - saturated)
         assert driven.draw is not None
         wanted = driven.draw(seen.lanes, volts)
         gain = guaranteed_gain(bench, seen.lanes, wanted)

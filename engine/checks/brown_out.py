@@ -84,7 +84,9 @@ def _ask(
     if dip is None:
         missing = f"an event dip in sequence {sequence}"
         return unknown(check, stage.name, part, sequence, required, missing)
-    at, to, during = read(dip.at, "s"), read(dip.to, "V"), read(dip.for_, "s")
+    at = read(dip.at, "s")
+    to = view.noted("dip to", read(dip.to, "V"), "V", f"sequence {sequence}")
+    during = view.noted("length of the dip", read(dip.for_, "s"), "s", f"sequence {sequence}")
     edge_time = min(DEFAULT_EDGE if dip.edge is None else read(dip.edge, "s"), during * SHORTEST)
     settle = view.extra(requirement, "settle", "s") or SETTLE
     knobs = (SHALLOW, 1.0) if deeper else (SHORTEST * during, LONGEST * during)

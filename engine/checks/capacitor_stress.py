@@ -63,7 +63,7 @@ def reverse_asks(check: Check, view: View) -> Iterator[Ask]:
 def _reverse_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     required = view.required(check.slug, check.required, requirement)
-    allowed = view.extra(requirement, "reverse_voltage", "V") or REVERSE
+    allowed = view.extra(requirement, "reverse_voltage", "V") or view.customary("reverse voltage borne", REVERSE, "V")
     sequences = tuple(view.design.sequences)
     lowest = minimum(_across(part))
     # Between 0V and the supply, no net lies below 0V or above the supply.

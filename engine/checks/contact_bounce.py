@@ -17,7 +17,6 @@ from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
-from ..quantity import read
 from ..run import Observed
 from .alarm_state import TOLD_BY, alarm_states, settling, standby
 from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
@@ -88,7 +87,7 @@ def _bounce_ask(check: Check, view: View, requirement: Requirement, part: Part) 
         return unknown(check, stage.name, part.ref, sequence, required, missing)
     if not alarm_states(view, stage):
         return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
-    times = int(view.extra(requirement, "times", "") or TIMES)
+    times = int(view.extra(requirement, "times", "") or view.customary("interruptions of a bounce", TIMES, ""))
     active, rest = states(view, sequence, part)
 
     def drive(line: Timeline, knob: Floats, over: float) -> None:
@@ -132,11 +131,11 @@ def _acceptance_ask(check: Check, view: View, requirement: Requirement, part: Pa
         return unknown(check, stage.name, part.ref, sequence, required, missing)
     if not alarm_states(view, stage):
         return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
-    shortest = read(requirement.min, "s")
+    shortest = view.limit(requirement, "min", "s")
     if shortest <= 0.0:
         raise CircuitError(f"requirement acceptance of {part.ref}, min: {requirement.min} cannot be; write a time")
     bounce = longest_bounce(view, requirement, part) or 0.0
-    times = int(view.extra(requirement, "times", "") or TIMES)
+    times = int(view.extra(requirement, "times", "") or view.customary("interruptions of a bounce", TIMES, ""))
     active, rest = states(view, sequence, part)
 
     def drive(line: Timeline, knob: Floats, over: float) -> None:

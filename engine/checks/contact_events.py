@@ -33,13 +33,13 @@ def contacts(check: Check, view: View) -> Iterator[tuple[Requirement, Part]]:
 def longest_bounce(view: View, requirement: Requirement | None, part: Part) -> float | None:
     """Of the requirement, of the contact's data, or of an event of the contact in any sequence."""
     if requirement is not None and requirement.max is not None:
-        return read(requirement.max, "s")
+        return view.limit(requirement, "max", "s")
     datum = view.datum(part, "bounce", "s")
     if datum is not None:
         return datum.high
     events = [e for s in view.design.sequences.values() for e in s.events if isinstance(e, ContactEvent)]
     lasting = [read(e.bounce.for_, "s") for e in events if e.part == part.ref and e.bounce is not None]
-    return max(lasting, default=None)
+    return view.noted(f"bounce of {part.ref}", max(lasting), "s", "its events") if lasting else None
 
 
 def states(view: View, sequence: str, part: Part) -> tuple[str, str]:

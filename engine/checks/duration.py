@@ -11,7 +11,6 @@ from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.signals import Anchor, Row, crossing, level, maximum, voltage
-from ..quantity import read
 from .check import Ask, Check, Judged, window
 from .seen import Seen
 from .view import View
@@ -31,7 +30,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     subject = requirement.of
     if subject is None or requirement.min is None or requirement.max is None:
         raise CircuitError('requirement duration: write "of", "min" and "max", for example "LS1", "60 s" and "120 s"')
-    low, high = read(requirement.min, "s"), read(requirement.max, "s")
+    low, high = (view.limit(requirement, end, "s") for end in ("min", "max"))
     if not low < high:
         raise CircuitError(
             f"requirement duration of {subject}: min {requirement.min} is not below max {requirement.max}"

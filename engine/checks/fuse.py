@@ -66,7 +66,7 @@ def _rated(view: View, part: Part, lanes: Lanes) -> np.ndarray:
     """Rated current at ambient temperature."""
     rated, drift = view.datum(part, "rated_current", "A"), view.datum(part, "rating_drift", "1/K")
     assert rated is not None
-    per_kelvin = DRIFT if drift is None else drift.typical
+    per_kelvin = view.customary(f"rating drift of {part.ref}", DRIFT, "1/K") if drift is None else drift.typical
     return np.asarray(rated.low * (1.0 - per_kelvin * np.maximum(0.0, lanes.ambient - REFERENCE)))
 
 
@@ -113,6 +113,7 @@ def pulse_asks(check: Check, view: View) -> Iterator[Ask]:
 
         def judge(seen: Seen) -> Judged:
             never = np.zeros(seen.lanes.count, dtype=bool)
+            view.customary("time in which an inrush counts", PULSE, "s")
             joules = np.nan_to_num(np.array([seen.value(row, name) for row in rows for name in names])).max(axis=0)
             outcomes = [
                 (blown_in(seen.observed[name]).get(part.ref, never), check.words["blows"].format(sequence=name))
@@ -169,7 +170,8 @@ def fault_asks(check: Check, view: View) -> Iterator[Ask]:
             lanes = seen.lanes
             source = lanes[SOURCE_RESISTANCE] if SOURCE_RESISTANCE in lanes else np.zeros(lanes.count)
             current = lanes[SUPPLY] / (source + lanes[part.ref, "resistance"])
-            demand = BLOWS * _rated(view, part, lanes)
+            times = view.customary("times the rated current at which a fuse blows", BLOWS, "")
+            demand = times * _rated(view, part, lanes)
             return ratio(demand, current, hand=1.0 - demand / current)
 
         if view.design.conditions.supply is None:

@@ -112,7 +112,9 @@ def _conducts(view: View, stage: Stage, part: Part) -> Callable[[Seen], Floats] 
 
 def _typical(view: View, part: Part, key: str, unit: str, customary: float) -> float:
     found = view.datum(part, key, unit)
-    return customary if found is None else found.typical
+    if found is None:
+        return view.customary(f"{key.replace('_', ' ')} of {part.ref}", customary, unit)
+    return found.typical
 
 
 @dataclass(frozen=True)

@@ -125,6 +125,7 @@ def holds_down_to(latch: Latch, lanes: Lanes, volts: Floats, carried: Floats) ->
     holding = holding_by_hand(latch, lanes)
     if holding is None:
         return None
+    latch.view.customary("drop of a conducting latch", DROP, "V")
     share = holding / np.where(carried > 0.0, carried, np.nan)
     return np.asarray(DROP + (volts - DROP) * share)
 

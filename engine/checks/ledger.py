@@ -65,6 +65,10 @@ class Ledger:
         """The required margin; ``source`` is empty where it is the customary one."""
         self.settings["required"] = Setting("required margin", value, "%", source)
 
+    def other(self, what: str, value: float, unit: str, source: str) -> None:
+        """A number from elsewhere: what a requirement or an event says, a stray, what is customary."""
+        self.settings[f"other {what}"] = Setting(what, value, unit, source)
+
     def field(self, key: str, value: float, unit: str) -> None:
         """A field that a requirement brings along."""
         self.settings[f"field {key}"] = Setting(key.replace("_", " "), value, unit, "the requirement")

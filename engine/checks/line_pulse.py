@@ -55,7 +55,11 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     states = alarm_states(view, stage)
     if not states:
         return unknown(check, stage.name, net, sequence, required, TOLD_BY)
-    charge, width, at = read(pulse.charge, "C"), read(pulse.width, "s"), read(pulse.at, "s")
+    charge = view.noted("charge of the pulse", read(pulse.charge, "C"), "C", f"sequence {sequence}")
+    width, at = (
+        view.noted("width of the pulse", read(pulse.width, "s"), "s", f"sequence {sequence}"),
+        read(pulse.at, "s"),
+    )
     if charge == 0.0:
         raise CircuitError(f"sequence {sequence}, event inject: a charge of {pulse.charge} is no pulse; write another")
     sign = 1.0 if charge > 0.0 else -1.0

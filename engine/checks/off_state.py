@@ -32,7 +32,7 @@ def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
     rests = driven is not None and view.rests_on(driven)
     at = view.moment(sequence, *(("sounding", "on") if rests else ("standby",))) or Anchor(0.5 * view.ends(sequence))
     across = level(forward_base_voltage(part), at)
-    permitted = view.extra(requirement, "off_current", "A") or PERMITTED
+    permitted = view.extra(requirement, "off_current", "A") or view.customary("permitted off-current", PERMITTED, "A")
     required = view.required(check.slug, check.required, requirement)
     bench = view.bench(part.ref)
     if bench.leakage is None:

@@ -70,7 +70,8 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         if inrush is None:
             wanted = np.abs(seen.value(peak, sequence))
         else:
-            volts = seen.value(across, sequence) + np.maximum(0.0, np.abs(seen.value(drop, sequence)) - SATURATED)
+            saturated = view.customary("drop of a transistor that is fully on", SATURATED, "V")
+            volts = seen.value(across, sequence) + np.maximum(0.0, np.abs(seen.value(drop, sequence)) - saturated)
             wanted = inrush(seen.lanes, volts)
         given = seen.value(control, sequence)
         never = ~seen.seen(control, sequence)

@@ -72,8 +72,7 @@ def _rearm_ask(check: Check, view: View, requirement: Requirement, part: Part) -
         missing = f"an event in sequence {sequence} that raises the alarm"
     if missing is not None:
         return unknown(check, stage.name, part.ref, sequence, required, missing)
-    assert requirement.max is not None
-    allowed = read(requirement.max, "s")
+    allowed = view.limit(requirement, "max", "s")
     if allowed <= 0.0:
         raise CircuitError(f"requirement rearm of {part.ref}, max: {requirement.max} cannot be; write a time")
     ended = view.anchor(requirement.from_ or f"{part.ref} off", sequence)
@@ -146,7 +145,10 @@ def _repeat_ask(check: Check, view: View, requirement: Requirement, part: Part) 
     required = view.required(check.slug, check.required, requirement)
     if view.bench(part.ref).on is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"operating_minimum of {part.ref}")
-    allowed = CHANGE if requirement.max is None else read(requirement.max, "%")
+    if requirement.max is None:
+        allowed = view.customary("difference allowed", CHANGE, "%")
+    else:
+        allowed = view.limit(requirement, "max", "%")
     rows: list[Row] = []
     for change in ("on", "off", "on", "off"):
         rows.append(view.event(f"{part.ref} {change}", Anchor(0.0, rows[-1]) if rows else None))

@@ -16,7 +16,6 @@ from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..parts.physics import copper_factor
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
-from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
 from .duration import instant
 from .seen import Seen
@@ -36,7 +35,7 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
 def _ask(check: Check, view: View, stage: Stage, coil: Part, requirement: Requirement) -> Ask:
     if requirement.max is None:
         raise CircuitError(f'requirement release of {coil.ref}: write "max", the time allowed, for example "20 ms"')
-    allowed = read(requirement.max, "s")
+    allowed = view.limit(requirement, "max", "s")
     required = view.required(check.slug, check.required, requirement)
     sequence = view.sequence(requirement)
     delay = next((key for key in DELAYS if view.datum(coil, key, "s") is not None), None)

@@ -48,6 +48,8 @@ def _ask(check: Check, view: View, latch: Latch) -> Ask:
         missing = f"a supply above {LINGERING[-1]:g} V under conditions"
         return unknown(check, stage.name, npn.ref, sequence, required, missing)
     at, rise = connection(view, sequence)
+    for lingers in LINGERING:
+        view.customary(f"rail lingers at {lingers:g} V", lingers, "V")
     steepest = slew(latch.rail, Anchor(at), Anchor(at + rise + WATCHED))
     state = AlarmState(stage.name, latch, None)
     each = FALL + LINGERS + SLOWEST + SETTLE

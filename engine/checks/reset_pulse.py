@@ -16,7 +16,6 @@ from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor
-from ..quantity import read
 from ..run import Observed
 from .alarm_state import TOLD_BY, alarm_states
 from .check import Ask, Check, Judged, Mask, ratio, unknown
@@ -47,7 +46,7 @@ def _ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
     told_by = alarm_states(view, stage)
     if not told_by:
         return unknown(check, stage.name, part.ref, sequence, required, TOLD_BY)
-    shortest = read(requirement.min, "s")
+    shortest = view.limit(requirement, "min", "s")
     if shortest <= 0.0:
         raise CircuitError(f"requirement reset_pulse of {part.ref}, min: {requirement.min} cannot be; write a time")
     settle = view.extra(requirement, "settle", "s") or SETTLE

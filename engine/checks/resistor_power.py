@@ -56,6 +56,8 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
             powers.append(seen.value(whole, sequence) / np.where(lasted > 0.0, lasted, np.nan))
         never = np.asarray(np.isnan(powers).all(axis=0))
         largest = np.max(np.nan_to_num(powers), axis=0)
+        for what, celsius in (("full power up to", FULL_UNTIL), ("no power from", ZERO_AT)):
+            view.customary(what, celsius, "degC")
         allowed = factor * permitted(rating.low, seen.lanes.ambient)
         volts, hand = top_voltage(view, seen, (sequence,)), None
         if volts is not None:

@@ -61,7 +61,7 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
         return np.asarray(np.fmin.reduce(values))
 
     def judge(seen: Seen) -> Judged:
-        collapsed = seen.value(own, sequence) < COLLAPSED
+        collapsed = seen.value(own, sequence) < view.customary("latch fed by a current below", COLLAPSED, "V")
         full = _pick(collapsed, *(seen.value(row, sequence) for row in before))
         dip = full - _pick(collapsed, least(seen, 0), least(seen, 1))
         edge = seen.edges.get(trial.key)

@@ -13,7 +13,6 @@ import numpy as np
 from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..primitives.signals import Anchor, level, voltage
-from ..quantity import read
 from .check import Ask, Check, Judged, everywhere, unknown
 from .load_voltage import FED_OTHERWISE, fed_otherwise, left_by_hand
 from .seen import Seen
@@ -38,7 +37,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     sounder, stage = view.design.part(subject), view.design.stage_of(subject)
     sequence = view.sequence(requirement)
     required = view.required(check.slug, check.required, requirement)
-    wanted = read(requirement.min, "dB")
+    wanted = view.limit(requirement, "min", "dB")
     distance = view.extra(requirement, "distance", "m")
     loud, rated = view.datum(sounder, "sound_level", "dB"), view.datum(sounder, "rated_voltage", "V")
     on = view.bench(subject).on

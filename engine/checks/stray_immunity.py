@@ -60,12 +60,13 @@ def _ask(check: Check, view: View, net: str) -> Ask:
     if not states:
         return unknown(check, stage.name, net, sequence, required, TOLD_BY)
     others = [next(n for n in s.between if n != net) for s in strays]
-    farads = [read(s.value, "F") for s in strays]
+    farads = view.strays_at(net)
     supply = view.design.conditions.levels("supply")
     nominal = 1.0 if supply is None else supply.nominal
-    width = view.extra(requirement, "width", "s") or WIDTH
+    width = view.extra(requirement, "width", "s") or view.customary("width of a pulse", WIDTH, "s")
     if stated is None:
-        width = nominal / max(_slews(strays))
+        slew = view.noted("fastest slew of the strays", max(_slews(strays)), "V/s", "the strays of the design")
+        width = nominal / slew
     tops = [maximum(voltage(other)) for other in others]
     bottoms = [minimum(voltage(other)) for other in others]
     rows = (*tops, *bottoms) if stated is None else ()

@@ -119,7 +119,7 @@ def slew_by_hand(latch: Latch, seen: Seen, demand: Floats, lingers: float = 0.0)
     if resistor is None or base_voltage is None:
         return None
     base = npn.pins["base"]
-    coupling = sum(read(s.value, "F") for s in view.design.strays if base in s.between)
+    coupling = sum(view.strays_at(base))
     collector, emitter = (view.datum(npn, key, "F") for key in ("c_ob", "c_ib"))
     coupling += 0.0 if collector is None else collector.typical
     if coupling == 0.0:

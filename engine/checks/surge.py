@@ -100,10 +100,12 @@ def _energy_ask(check: Check, view: View, stage: Stage, clamp: Part, sequences: 
     if power is None or heat is None:
         return unknown(check, stage.name, clamp.ref, sequences[0], required, f"pulse_power of {clamp.ref}")
     events = [e for name in sequences for e in view.design.sequences[name].events if isinstance(e, Surge)]
-    lasts = min(min(read(e.for_, "s") for e in events), LONGEST)
+    lasts = view.noted("length of the surge", min(read(e.for_, "s") for e in events), "s", "the event of the sequence")
+    view.customary("pulse of the rated power", PULSE, "s")
+    lasts = min(lasts, LONGEST)
     bears = power.low * float(np.sqrt(PULSE * max(lasts, PULSE)))
     taken = integral(heat)
-    peak = max(read(e.to, "V") for e in events)
+    peak = view.noted("voltage of the surge", max(read(e.to, "V") for e in events), "V", "the event of the sequence")
     ohms = [None if e.impedance is None else read(e.impedance, "ohm") for e in events]
     column = clamp.ref, "clamping_voltage"
 

@@ -18,7 +18,6 @@ from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor
-from ..quantity import read
 from .check import Apart, Ask, Check, Judged, ratio, unknown, window
 from .divider_point import divider_point
 from .duration import instant
@@ -74,7 +73,7 @@ def _window_ask(check: Check, view: View, requirement: Requirement) -> Ask:
         raise CircuitError(
             f'requirement trip_window of {ramped.name}: write "at" (the event with which it trips), "min" and "max"'
         )
-    low, high = (read(text, ramped.unit) for text in (requirement.min, requirement.max))
+    low, high = (view.limit(requirement, end, ramped.unit) for end in ("min", "max"))
     if not low < high:
         raise CircuitError(
             f"requirement trip_window of {ramped.name}: min {requirement.min} is not below max {requirement.max}"
@@ -158,7 +157,7 @@ def hysteresis_window_asks(check: Check, view: View) -> Iterator[Ask]:
             pair = Pair.of(view, requirement)
             if requirement.min is None or requirement.max is None:
                 raise CircuitError(f'requirement hysteresis_window of {pair.ramped.name}: write "min" and "max"')
-            low, high = (read(text, pair.unit) for text in (requirement.min, requirement.max))
+            low, high = (view.limit(requirement, end, pair.unit) for end in ("min", "max"))
             if not low < high:
                 raise CircuitError(
                     f"requirement hysteresis_window of {pair.ramped.name}: min {requirement.min} is not below"

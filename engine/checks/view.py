@@ -18,7 +18,7 @@ from ..parts.figures import Figure, figure
 from ..primitives.builder import RETURN, Bench, Handle
 from ..primitives.signals import Anchor, Row, Signal, crossing, voltage
 from ..quantity import read
-from .factors import FACTORS
+from .factors import COMMON_PRACTICE, FACTORS
 from .ledger import Ledger
 
 MAIN = "alarm"
@@ -141,6 +141,30 @@ class View:
         if self.ledger is not None:
             self.ledger.field(key, found, unit)
         return found
+
+    def noted(self, what: str, value: float, unit: str, source: str) -> float:
+        """A number in SI that enters a margin beside data, factors and columns, noted with who says it."""
+        if self.ledger is not None:
+            self.ledger.other(what, value, unit, source)
+        return value
+
+    def customary(self, what: str, value: float, unit: str) -> float:
+        """A number that a check brings along because nothing else is said."""
+        return self.noted(what, value, unit, f"customary: {COMMON_PRACTICE}")
+
+    def limit(self, requirement: Requirement, end: str, unit: str) -> float:
+        """``min`` or ``max`` of a requirement that gives it."""
+        text = requirement.min if end == "min" else requirement.max
+        assert text is not None
+        return self.noted(f"{end} of the requirement", read(text, unit), unit, "the requirement")
+
+    def strays_at(self, net: str) -> list[float]:
+        """The capacitances of all strays to a net, F."""
+        return [
+            self.noted(f"stray {' - '.join(stray.between)}", read(stray.value, "F"), "F", "the strays of the design")
+            for stray in self.design.strays
+            if net in stray.between
+        ]
 
     def datum(self, part: Part, key: str, unit: str) -> Figure | None:
         """A datum of a part or its class."""
