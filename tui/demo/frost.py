@@ -27,6 +27,14 @@ def _relay_of_70_percent(design: Design) -> Design:
     return design
 
 
+def _fan_in_the_lead(design: Design) -> Design:
+    """What the fan's contactor brings into the lead of the sensor, in series with it: 1.5 V for 4 ms."""
+    design = edit.with_field(design, "RT1", "pins.b", "far")
+    steps = [["3 s", "0 V"], ["3.001 s", "1.5 V"], ["3.005 s", "1.5 V"], ["3.006 s", "0 V"]]
+    part = {"ref": "G1", "kind": "generator", "pins": {"plus": "far", "minus": "0V"}, "waveform": {"steps": steps}}
+    return edit.with_part(design, "sensor", part)
+
+
 FROST = Demo(
     "frost",
     (
@@ -87,6 +95,31 @@ FROST = Demo(
             ),
             (("K1 with 70 % pick-up", _relay_of_70_percent),),
             parent=4,
+        ),
+        Step(
+            Note(
+                "G1 in the lead of RT1: the fan's contactor trips it for a moment at 8 C",
+                symptom="In the tunnel Q3 blinks when the fan stops: 1.5 V for 4 ms across the sensor's lead.",
+                hypothesis="The lead runs beside the fan's cable; C2 with 13k of sensor and bridge is over in 1 ms.",
+                change="G1 added in series with RT1: the pulse as the oscilloscope shows it",
+                prediction="Trip window fails at the pulse; the delay of 45 s sees nothing of it.",
+                result="Just so: trips at 8 C and lets go at once, hot at low supply; K1 stays out.",
+                next="A larger C2, slow against 4 ms and quick against a falling temperature.",
+            ),
+            (("G1 in the lead of RT1", _fan_in_the_lead),),
+            parent=5,
+        ),
+        Step(
+            Note(
+                "C2 100n > 680n: what the fan brings does not trip it any more",
+                hypothesis="9 ms of time constant let a third of the pulse through, 0.55 V; it takes 0.9 V at 8 C.",
+                change="C2 100n > 680n",
+                prediction="Trip window as in r5 but for 0.02 K of lag; hysteresis likewise.",
+                result="Every required margin holds, with the fan's pulse in every sequence.",
+                next="Lay the lead away from the fan's cable all the same.",
+            ),
+            (set_value("C2", "680n"),),
+            parent=6,
         ),
     ),
 )
