@@ -153,7 +153,12 @@ ACTIONS: tuple[Action, ...] = (
     Action("form", "down", "down,tab", "down", "next field", "the field below", 3),
     Action("form", "cancel", "escape,ctrl+g", "Esc", "cancel", "leave everything as it is (Ctrl+G does the same)", 4),
     Action("pick", "choose", "enter", "Enter", "choose", "take this one", 2),
-    Action("pick", "cancel", "escape,b", "b", "cancel", "leave everything as it is (Esc does the same)", 3),
+    Action("pick", "back", "b", "b", "cancel", "leave everything as it is, while nothing is typed (Esc: always)", 3),
+    Action("pick", "cancel", "escape,ctrl+g", "Esc", "cancel", "forget what was typed, else leave (Ctrl+G too)"),
+    Action(
+        "pick", "find", "slash", "/", "type to find", "letters find rows that hold them (/ before a word with b)", 4
+    ),
+    Action("pick", "shorter", "backspace", "Backspace", "shorter", "one letter less to find"),
     Action("mark", "mark", "space", "space", "mark", "mark or unmark this one", 2),
     Action("mark", "choose", "enter", "Enter", "take", "take the marked ones", 3),
     Action("mark", "cancel", "escape,b", "b", "cancel", "leave everything as it is (Esc does the same)", 4),

@@ -80,6 +80,23 @@ async def test_a_document_is_imported_by_its_path(app: StagebookApp, shelf: Stor
         assert "tilt" in seen(pilot)
 
 
+async def test_an_imported_document_that_cannot_be_computed_says_why(
+    app: StagebookApp, shelf: Store, tmp_path: Path
+) -> None:
+    loose = document("tilt")
+    loose["stages"][0]["parts"].append({"ref": "R99", "kind": "resistor", "pins": {"a": "nowhere", "b": "0V"}})
+    file = tmp_path / "loose.json"
+    file.write_text(json.dumps(loose))
+    async with app.run_test(size=(160, 24)) as pilot:
+        await settled(pilot)
+        await pilot.press("i", *str(file), "enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, ShelfScreen))
+        words = pilot.app.screen.query_one(Notice).text
+        assert "tilt is on the shelf, but cannot be computed as it stands: " in words
+        assert "R99" in words or "nowhere" in words
+        assert [row.name for row in shelf.designs()] == ["flood", "tilt"]
+
+
 @pytest.mark.parametrize(("path", "words"), [("nowhere.json", "nowhere.json cannot be read"), ("", "write the path")])
 async def test_a_file_that_cannot_be_read_is_said_in_one_line(app: StagebookApp, path: str, words: str) -> None:
     async with app.run_test(size=SIZE) as pilot:

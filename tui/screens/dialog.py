@@ -16,7 +16,7 @@ from textual.containers import Horizontal, Vertical, VerticalScroll
 from textual.screen import ModalScreen
 from textual.widgets import Input
 
-from ..actions import bindings
+from ..actions import bindings, of
 from ..shown import Line, Span, line, visible
 from ..widgets.lines import Lines
 from ..widgets.row_list import Row, RowList
@@ -72,8 +72,11 @@ def in_full_lines(text: str, width: int, most: int) -> tuple[Line, ...]:
 _GAP = re.compile(" {2,}")
 
 
+_KEYS = {key for action in of("pick") for key in action.keys.split(",")}
+
+
 class Pick(ModalScreen[str | None]):
-    """One of a list, or None."""
+    """One of a list, or None. What is typed leaves only the rows that hold it, the ones that begin with it first."""
 
     BINDINGS: ClassVar[list[BindingType]] = bindings("pick")
 
@@ -83,6 +86,7 @@ class Pick(ModalScreen[str | None]):
         self._choices = [Row(key, line(text)) for key, text in rows]
         self._texts = dict(rows)
         self._empty = empty
+        self._typed: str | None = None
 
     def compose(self) -> ComposeResult:
         """The list at the foot of the screen, and below it the whole text of a row that is cut."""
@@ -96,8 +100,24 @@ class Pick(ModalScreen[str | None]):
 
     def on_mount(self) -> None:
         """Shows the choices."""
-        self.query_one(RowList).show(self._choices, heading=line(Span(self._title, "strong")))
+        self._show()
+
+    def _show(self) -> None:
+        wanted = (self._typed or "").lower()
+        places = [(self._texts[row.key].lower().find(wanted), n, row) for n, row in enumerate(self._choices)]
+        found = [row for place, _, row in sorted(places, key=lambda each: each[:2]) if place >= 0]
+        heading = [Span(self._title, "strong")]
+        if self._typed is not None:
+            heading.append(Span(f"   find: {self._typed}" + ("" if found else "   no row holds that"), "strong"))
+        self.query_one(RowList).show(found if wanted else self._choices, heading=tuple(heading))
         self._about()
+
+    def on_key(self, event: events.Key) -> None:
+        """A letter narrows the list; those that are keys of it do so only once something is looked for."""
+        if event.character is not None and event.is_printable and (self._typed is not None or event.key not in _KEYS):
+            event.stop()
+            self._typed = (self._typed or "") + event.character
+            self._show()
 
     def on_resize(self) -> None:
         """Another width: other lines."""
@@ -118,11 +138,31 @@ class Pick(ModalScreen[str | None]):
 
     def action_choose(self) -> None:
         """This one."""
-        self.dismiss(self.query_one(RowList).key)
+        if (key := self.query_one(RowList).key) is not None or not self._choices:
+            self.dismiss(key)
 
-    def action_cancel(self) -> None:
+    def action_find(self) -> None:
+        """Letters go to what is looked for from now on, b too."""
+        self._typed = self._typed or ""
+        self._show()
+
+    def action_shorter(self) -> None:
+        """One letter less is looked for."""
+        if self._typed is not None:
+            self._typed = self._typed[:-1]
+            self._show()
+
+    def action_back(self) -> None:
         """None of them."""
         self.dismiss(None)
+
+    def action_cancel(self) -> None:
+        """Nothing is looked for any more, or none of them."""
+        if self._typed is None:
+            self.dismiss(None)
+        else:
+            self._typed = None
+            self._show()
 
 
 class Mark(ModalScreen[list[str] | None]):

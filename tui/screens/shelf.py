@@ -7,6 +7,7 @@ from typing import ClassVar
 from textual.app import ComposeResult
 from textual.binding import BindingType
 
+from ...engine.circuit.inspection import inspect
 from ...engine.design.document import Design
 from ...engine.errors import DesignError, EngineError
 from ...engine.results import MarginSheet
@@ -189,13 +190,16 @@ class ShelfScreen(Page[None]):
         """Puts a design document on the shelf."""
         fields = [Field("path", "file", "", "path/to/design.json"), Field("name", "name", "", "the document's own")]
         taken: list[str] = []
+        faults: list[str] = []
 
         def take(answers: Answers) -> str | None:
             try:
                 design = read_document(answers["path"].strip())
                 name = answers["name"].strip() or design.name
-                self._store.create(name, design if name == design.name else copied(design, name))
+                design = design if name == design.name else copied(design, name)
+                self._store.create(name, design)
                 taken.append(name)
+                faults.extend(why_not(design))
             except (EngineError, StorageError) as refusal:
                 return str(refusal)
             return None
@@ -203,9 +207,21 @@ class ShelfScreen(Page[None]):
         def done(answers: Answers | None) -> None:
             if answers is not None:
                 self._show(taken[-1])
-                self.say(f"{taken[-1]} is on the shelf; Enter opens it")
+                if faults:
+                    self.refuse(f"{taken[-1]} is on the shelf, but cannot be computed as it stands: {faults[0]}")
+                else:
+                    self.say(f"{taken[-1]} is on the shelf; Enter opens it")
 
         self.app.push_screen(Form("Import a design document", fields, take), done)
+
+
+def why_not(design: Design) -> list[str]:
+    """Why a design cannot be computed; nothing where it can."""
+    try:
+        inspect(design)
+    except EngineError as fault:
+        return [str(fault)]
+    return []
 
 
 def empty_design(answers: Answers) -> Design:
