@@ -30,10 +30,11 @@ COLLAPSED = 1.6  # V: a conducting latch that stands below this is fed by a curr
 
 
 def asks(check: Check, view: View) -> Iterator[Ask]:
-    """One ask for every complementary latch, where the design has a load."""
+    """One ask for every complementary latch, where the design has a load that an alarm turns on."""
     for latch in latches(view):
         load = view.load(latch.stage)
-        if load is not None and len(latch.rails) == 2:
+        # A load that an alarm lets go of pulls nothing down.
+        if load is not None and len(latch.rails) == 2 and not view.rests_on(load):
             yield _ask(check, latch, load)
 
 

@@ -18,12 +18,11 @@ from .kind import (
     StageKind,
     Wire,
 )
-from .plan import OVERDRIVE, RETURN, V_BE, V_DIODE, V_SATURATED, Plan, class_figure
+from .plan import COUPLED, OVERDRIVE, RETURN, V_BE, V_DIODE, V_SATURATED, Plan, class_figure
 
 LEAST_OUTPUT = 0.2e-3  # A, taken for what follows where it does not say
 MOST_BLEED = 470e3  # ohm
 V_HOT = 0.4  # V, base-emitter voltage that still counts as off when hot (from memory)
-COUPLED = 0.3  # of V_BE: what a snapped-on supply may bring to a base through its strays
 INPUT_DRIVE = 10.0  # times the current of the base-emitter resistor that a level gives to set it
 
 
@@ -69,7 +68,7 @@ def _make(plan: Plan) -> Made:
     plan.capacitor(farads, base, RETURN, "base_capacitor", snap="up")
     plan.capacitor(farads, rail, upper, "base_capacitor_pnp", snap="up")
     return Made(
-        output=Drive(Sense.LEVEL, drop=V_SATURATED),
+        output=Drive(Sense.LEVEL, drop=V_SATURATED, held=held),
         lasts=2.0,
         moments={"latched": {"after": "{load} on", "by": "100 ms"}},
         sequences={

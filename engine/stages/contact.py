@@ -8,6 +8,7 @@ from ..quantity import write
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Json, Made, Place, Sense, Setting, StageKind
 from .plan import RETURN, Plan
 
+FALL = 0.1  # of the rail that the pull-up may lose to what follows
 SPARE = 1.1  # times the wetting current: what the tolerance of the resistor takes
 LEAD_INSULATION = "20M"  # of the whole lead against 0V, wet, from memory
 PER_METRE = {"resistance": "0.08 ohm/m", "capacitance": "100 pF/m"}
@@ -31,6 +32,9 @@ def _make(plan: Plan, normally_open: bool) -> Made:
         drive = Drive(Sense.LEVEL)
     else:
         contact = plan.part("S", "contact", {"a": far, "b": RETURN}, "contact", form="break", **fields)
+        if plan.next.current > 0.0:
+            # What follows draws its current through it.
+            ohms = min(ohms, FALL * plan.rail.min / plan.next.current)
         value = plan.resistor(ohms, rail, out, "pull_up", snap="down")
         drive = Drive(Sense.LEVEL, ohms=value)
     begins, ends = ("close", "open") if normally_open else ("open", "close")
@@ -84,8 +88,9 @@ KINDS = (
         place=Place.SENSE,
         help=(
             "A contact that holds its net at 0V until it opens, or its lead is cut, and a resistor pulls the net up."
-            " R = V_min / wetting current, next lower preferred value; it is the source of whatever follows, so the"
-            " next stage counts it into its own base resistor. Source: common practice, from memory."
+            " R = V_min / wetting current, at most a tenth of V_min over what the next stage draws, next lower"
+            " preferred value; it is the source of whatever follows, so the next stage counts it into its own base"
+            " resistor. Source: common practice, from memory."
         ),
         ports=(QUIET_PORT, OUT_PORT, RETURN_PORT),
         settings=_SETTINGS,

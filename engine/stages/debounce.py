@@ -28,7 +28,7 @@ def _make(plan: Plan) -> Made:
         {"check": "contact_bounce", "of": "{contact}", "max": plan.text("bounce")},
         {"check": "acceptance", "of": "{contact}", "min": plan.text("event")},
     )
-    output = Drive(Sense.LEVEL, before.drop, before.ohms + ohms)
+    output = Drive(Sense.LEVEL, before.drop, before.ohms + ohms, slow=True)
     return Made(output=output, settles=5.0 * tau, lasts=5.0 * tau, requirements=asked)
 
 

@@ -40,5 +40,6 @@ KIND = StageKind(
     settings=(Setting("draw", "A", "50 uA", "what base and base-emitter resistor take meanwhile"),),
     make=_make,
     intake=lambda plan: Intake(plan.rail.max / DISCHARGE),
+    edge=True,
     supply_starts=False,
 )

@@ -7,18 +7,21 @@ import math
 from ..parts.physics import REFERENCE
 from ..quantity import write
 from .kind import RETURN_PORT, WORD, Json, Made, Place, Port, Setting, StageKind, Wire
-from .plan import LARGEST_FILM, RETURN, Plan
+from .plan import LARGEST_FILM, RETURN, Plan, class_figure
 
 RIPPLE = 10e-3  # A at 1 uF, growing with the root of the capacitance: what an electrolytic bears, from memory
 LOSS, LOSS_AT = 0.15, 100.0  # tan d and the frequency in Hz that it is given at, class, from memory
 FUSE_SHARE, FUSE_DRIFT = 0.75, 0.003  # of its rating that a fuse carries for ever, and 1/K above 25 C, from memory
+FUSE_OHMS = 0.1  # ohm of a fuse of 1 A, the less the more it carries, from memory
 _FUSES = (0.1, 0.125, 0.16, 0.2, 0.25, 0.315, 0.4, 0.5, 0.63, 0.8, 1.0, 1.25, 1.6, 2.0, 2.5, 3.15, 4.0, 5.0, 6.3)
 """Rated currents in A: R10 series (ISO 3) as IEC 60127 has them, from memory."""
 _CLAMPS = (15.0, 24.0)
 IMPEDANCE = "2R"  # of what a surge comes through, from memory
 SPARE = 3.0  # times its drop that the filter resistor is rated for: small stages draw more while they switch
-_DIODES = {"silicon": ("diode", "1 A rectifier", 0.85), "schottky": ("schottky", "1 A Schottky", 0.45)}
-"""Kind, class and largest forward voltage in V at 1 A, cold (from memory)."""
+_DIODES = {"silicon": ("diode", "1 A rectifier"), "schottky": ("schottky", "1 A Schottky")}
+"""Kind and class."""
+_COLDER = 2e-3  # V by which a junction drops more with each kelvin that it is colder, from memory
+LOADS, SMALL = 0.3, 3e-3  # A that is reckoned with where nothing is known of what follows
 
 
 def add_filter_capacitor(plan: Plan, farads: float, net: str) -> float:
@@ -33,10 +36,31 @@ def add_filter_capacitor(plan: Plan, farads: float, net: str) -> float:
     return value
 
 
-def _add_fuse(plan: Plan, rail: str) -> None:
-    """The least preferred fuse that carries the loads for ever when hot, between the port ``feed`` and ``rail``."""
+def _loads(plan: Plan) -> float:
+    """What all loads draw together at most, A: as written, or those of the row."""
+    return plan.above_zero("load_current") if plan.text("load_current") else plan.beyond.loads or LOADS
+
+
+def _small(plan: Plan) -> float:
+    """What all small stages draw together, A: as written, or those of the row."""
+    return plan.above_zero("small_current") if plan.text("small_current") else plan.beyond.small or SMALL
+
+
+def _lost(plan: Plan, kind: str, name: str) -> float:
+    """Forward voltage in V of the diode at what flows through it, cold: logarithmic between the points of its class."""
+    low, high = (class_figure(kind, name, f"forward_{end}", "V").high for end in ("low", "high"))
+    at_low, at_high = (class_figure(kind, name, f"forward_{end}_current", "A").typical for end in ("low", "high"))
+    share = math.log((_loads(plan) + _small(plan)) / at_low) / math.log(at_high / at_low)
+    return low + (high - low) * share + _COLDER * max(0.0, REFERENCE - plan.ambient.min)
+
+
+def _add_fuse(plan: Plan, rail: str) -> float:
+    """The least preferred fuse that carries the loads for ever when hot, between the port ``feed`` and ``rail``.
+
+    Returns what it drops, V.
+    """
     hot = 1.0 - FUSE_DRIFT * max(0.0, plan.ambient.max - REFERENCE)
-    wanted = (plan.above_zero("load_current") + plan.above_zero("small_current")) / (FUSE_SHARE * hot)
+    wanted = (_loads(plan) + _small(plan)) / (FUSE_SHARE * hot)
     rated = next((each for each in _FUSES if each >= wanted), None)
     if rated is None:
         raise plan.refused(
@@ -45,9 +69,10 @@ def _add_fuse(plan: Plan, rail: str) -> None:
     fields = {
         "rated_current": {"typical": write(rated, "A"), "source": "memory"},
         "melting": {"typical": write(2.0 * rated**2, "A2s"), "source": "memory"},
-        "resistance": {"typical": write(0.1 / rated, "ohm", digits=2), "source": "memory"},
+        "resistance": {"typical": write(FUSE_OHMS / rated, "ohm", digits=2), "source": "memory"},
     }
     plan.part("F", "fuse", {"a": plan.port("feed"), "b": rail}, "fuse", **fields)
+    return (_loads(plan) + _small(plan)) * FUSE_OHMS / rated
 
 
 def _add_clamp(plan: Plan, rail: str) -> dict[str, Json]:
@@ -75,18 +100,19 @@ def _add_clamp(plan: Plan, rail: str) -> dict[str, Json]:
 def _make(plan: Plan) -> Made:
     name = plan.text("diode")
     feed, quiet = plan.port("feed"), plan.port("quiet")
-    lost = 0.0
+    lost = plan.source * (_loads(plan) + _small(plan))
     if plan.text("fuse") != "none":
         fused = plan.port("rail") if name == "none" else plan.net("fused")
-        _add_fuse(plan, fused)
+        lost += _add_fuse(plan, fused)
         feed = fused
     rail = feed
     if name != "none":
-        kind, generic, lost = _DIODES[name]
+        kind, generic = _DIODES[name]
         rail = plan.port("rail")
+        lost += _lost(plan, kind, generic)
         plan.diode(feed, rail, "reverse_diode", kind=kind, name=generic)
     surges = _add_clamp(plan, rail)
-    current, drop, slew = plan.above_zero("small_current"), plan.above_zero("drop"), plan.above_zero("slew")
+    current, drop, slew = _small(plan), plan.above_zero("drop"), plan.above_zero("slew")
     ohms = plan.resistor(drop / current, rail, quiet, "filter_resistor", snap="down", volts=SPARE * drop)
     farads = add_filter_capacitor(plan, plan.supply.max / (ohms * slew), quiet)
     settles = 5.0 * ohms * farads
@@ -100,7 +126,8 @@ KIND = StageKind(
     help=(
         "A fuse of at least 1.33 I of what follows, more when hot (0.3 %/K). A series diode keeps a reversed supply"
         " away from all that follows; loads are fed right behind it, small stages behind an RC filter, so that neither"
-        " a fast connection nor the surge of the load reaches them. R = drop / I of the small stages; C = V_max / (R x"
+        " a fast connection nor the surge of the load reaches them. What follows gets V less the diode's drop at the"
+        " current of the loads (read from the row) and the fuse's. R = drop / I of the small stages; C = V_max / (R x"
         " slew), because an RC filter lets a step of V through no faster than V/(RC). A clamp stands off V_max and"
         " holds a surge below the ratings behind it. Source: common practice; RC step response."
     ),
@@ -111,11 +138,11 @@ KIND = StageKind(
         RETURN_PORT,
     ),
     settings=(
-        Setting("load_current", "A", "0.3 A", "what all loads draw together at most"),
+        Setting("load_current", "A", "", "what all loads draw together at most; empty: those of the row"),
         Setting("fuse", WORD, "slow", "in series with the supply", ("slow", "none")),
         Setting("surge", "V", "", "highest voltage of a surge of 1 ms; empty: no clamp"),
         Setting("diode", WORD, "silicon", "against reversal: a rectifier, or one that drops less", (*_DIODES, "none")),
-        Setting("small_current", "A", "3 mA", "what all small stages draw together"),
+        Setting("small_current", "A", "", "what all small stages draw together; empty: those of the row"),
         Setting("drop", "V", "0.3 V", "what the filter may lose at that current"),
         Setting("slew", "V/s", "5 V/ms", "how fast the filtered rail may rise when the supply is snapped on"),
     ),

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, carried, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, drawn, load_requirements, peak, starved, switched
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan
 
 BLEED = 0.1  # share of a base current that its base-emitter resistor may take (common practice)
+SATURATED = 0.3  # V across the pnp at its full current, from memory
 V_FULL = 0.9  # V, base-emitter voltage of a driver at its full current, from memory
 
 
@@ -34,15 +35,18 @@ def _make(plan: Plan) -> Made:
     plan.resistor(ohms, plan.port("in"), base, "npn_base_resistor", snap="down")
     plan.resistor(bleed, base, RETURN, "base_emitter_resistor_npn_device")
     plan.transistor(pull, base, RETURN, "npn_device", current=upper)
+    plan.capacitor(plan.quieting("npn", upper, plan.supply.max), base, RETURN, "base_capacitor_npn_device", snap="up")
     upper_bleed = max(V_BE / (BLEED * upper), 100.0)
     plan.resistor(
         (plan.rail.min - V_FULL - V_SATURATED) / (upper + V_FULL / upper_bleed), top, pull, "base_resistor", snap="down"
     )
     plan.resistor(upper_bleed, rail, top, "base_emitter_resistor_driver")
     plan.transistor(out, top, rail, "driver", kind="pnp", current=peak(plan, switched(plan)))
+    plan.capacitor(plan.quieting("npn", upper, plan.supply.max), rail, top, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), out, RETURN)
-    return Made(output=Drive(Sense.HIGH_SIDE, drop=0.3), requirements=load_requirements(plan))
+    doubts = starved(plan, SATURATED) if plan.text("load") != NONE else ()
+    return Made(output=Drive(Sense.HIGH_SIDE, drop=SATURATED), requirements=load_requirements(plan), doubts=doubts)
 
 
 KIND = StageKind(
@@ -60,4 +64,5 @@ KIND = StageKind(
     settings=(*LOAD_SETTINGS, Setting("overdrive", "", "3", "times the least base current")),
     make=_make,
     intake=_intake,
+    draws=drawn,
 )

@@ -81,11 +81,16 @@ class Setting:
 
 @dataclass(frozen=True, slots=True)
 class Drive:
-    """What a signal port gives while it is active: ``drop`` V below its rail behind ``ohms``."""
+    """What a signal port gives while it is active: ``drop`` V below its rail behind ``ohms``; ``slow``: no edge.
+
+    ``held`` is the current in A that keeps a latch: what must be taken from its base to let it go.
+    """
 
     sense: Sense
     drop: float = 0.0
     ohms: float = 0.0
+    slow: bool = False
+    held: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -102,6 +107,20 @@ class Intake:
     surge: float | None = None
 
 
+@dataclass(frozen=True, slots=True)
+class Beyond:
+    """What the stages behind one draw in A: their ``loads`` from the rail of loads, the others from the quiet one.
+
+    None where nothing is known of them.
+    """
+
+    loads: float | None = None
+    small: float | None = None
+
+
+NOTHING_KNOWN = Beyond()
+
+
 @dataclass(frozen=True)
 class Made:
     """What a stage brings beside its parts and roles. Times are in s, voltages in V.
@@ -112,7 +131,8 @@ class Made:
     its signal then stays, None for as long as it is asked to. ``holds`` is how long what comes in must stay,
     ``standby`` when it rests in a design that the supply
     itself starts. ``moments`` and ``requirements`` may name the design's ``{load}`` and ``{contact}``, the event
-    ``{trips}`` with which what follows the stage acts, and the moment ``begins``.
+    ``{trips}`` with which what follows the stage acts, and the moment ``begins``. ``doubts`` say which check will not
+    hold as asked, why, and what to write instead.
     """
 
     output: Drive | None = None
@@ -127,15 +147,17 @@ class Made:
     moments: Mapping[str, Json | str] = field(default_factory=dict)
     sequences: Mapping[str, Json] = field(default_factory=dict)
     requirements: tuple[Json, ...] = ()
+    doubts: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
 class StageKind:
     """A stage of the catalogue. ``help`` is one paragraph with formula and source; ``make`` writes into a plan.
 
-    ``takes`` is which senses its port ``in`` understands, ``intake`` what it takes there with these settings;
-    ``supply_starts``: the rail itself can stand for the signal where no stage before it gives one. ``called`` is the
-    name of a stage that is given none.
+    ``takes`` is which senses its port ``in`` understands, ``intake`` what it takes there with these settings, ``draws``
+    the largest current in A of a load of its own; ``edge``: only a steep edge starts it; ``supply_starts``: the rail
+    itself can stand for the signal where no stage before it gives one. ``called`` is the name of a stage that is given
+    none.
     """
 
     name: str
@@ -147,6 +169,8 @@ class StageKind:
     make: Callable[[Plan], Made]
     takes: tuple[Sense, ...] = (Sense.LEVEL,)
     intake: Callable[[Plan], Intake] = lambda plan: Intake()
+    draws: Callable[[Plan], float] = lambda plan: 0.0
+    edge: bool = False
     supply_starts: bool = True
     called: str = ""
 

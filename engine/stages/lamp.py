@@ -51,4 +51,5 @@ KIND = StageKind(
     make=_make,
     takes=(Sense.LOW_SIDE, Sense.HIGH_SIDE, Sense.LEVEL),
     intake=lambda plan: Intake((1.0 + SPREAD) * _current(plan), passes=True, surge=float(COLD[-1])),
+    draws=lambda plan: (1.0 + SPREAD) * _current(plan) * plan.supply.max / plan.supply.nominal,
 )

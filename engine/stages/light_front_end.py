@@ -2,19 +2,35 @@
 
 from __future__ import annotations
 
+import math
+
 from ..quantity import write
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, WORD, Made, Place, Setting, StageKind
 from .plan import Plan
 from .sensor_divider import add_divider, trip_sequence, trip_window
 
 GAMMA, AT = 0.7, 10.0  # slope of log R over log light and the light in lx of the resistance given, class, from memory
+SPREAD = 0.5  # of its resistance, class, from memory
+KEPT = 0.12  # of half of the window
 BEYOND = 10.0  # times beyond the trip point that the sequence goes, and as far on the other side at rest
 
 
+def _aim(window: float) -> float:
+    """Where the trip point is put, in parts of what is asked for.
+
+    The window counts in lux, of which there are fewer below the trip point than above it: the darkest end of the
+    sensor's own spread keeps the customary margin, and a little for the threshold, above the lower limit.
+    """
+    least = 1.0 / window + KEPT * 0.5 * (window - 1.0 / window)
+    return max(1.0, least * math.exp(-math.log(1.0 - SPREAD) / GAMMA))
+
+
 def _make(plan: Plan) -> Made:
-    trip = plan.above_zero("trip")
+    trip, spread = plan.above_zero("trip"), plan.above_zero("window")
+    if spread <= 1.0:
+        raise plan.refused("window", f"{plan.text('window')} is no factor above 1; write it like 2")
     dark = plan.text("active") == "dark"
-    one, other, drive = add_divider(plan, plan.above_zero("sensor") * (trip / AT) ** -GAMMA, rising=dark)
+    one, other, drive = add_divider(plan, plan.above_zero("sensor") * (trip * _aim(spread) / AT) ** -GAMMA, rising=dark)
     rest, alarm = (trip * BEYOND, trip / BEYOND) if dark else (trip / BEYOND, trip * BEYOND)
     fields = {"value": plan.text("sensor"), "class": "ldr", "data": {"light": write(rest, "lx")}}
     ref = plan.part("R", "light_resistor", {"a": one, "b": other}, "sensor", **fields)
@@ -22,9 +38,6 @@ def _make(plan: Plan) -> Made:
     acts = tuple(
         (at, {"event": "set", "part": ref, "to": write(lux, "lx")}) for at, lux in ((0.0, alarm), (held, rest))
     )
-    spread = plan.above_zero("window")
-    if spread <= 1.0:
-        raise plan.refused("window", f"{plan.text('window')} is no factor above 1; write it like 2")
     return Made(
         output=drive,
         acts=acts,
@@ -43,7 +56,8 @@ KIND = StageKind(
         "A light-dependent resistor R10 (E/10 lx)^-0.7 and a fixed resistor, so that the net passes the threshold p"
         " of what follows at the trip point: R = R_trip (1-p)/p above a sensor that trips in the dark, R_trip p/(1-p)"
         " below one that trips in light. Such sensors spread by 50 %, which moves the trip point by a factor of two:"
-        " put a preset in, or ask little. Source: bridge at the trip point; class figures from memory."
+        " put a preset in, or ask little; it is aimed so far above the trip point that a low sensor keeps 12 % of half"
+        " the window. Source: bridge at the trip point; class figures from memory."
     ),
     ports=(QUIET_PORT, OUT_PORT, RETURN_PORT),
     settings=(

@@ -5,7 +5,7 @@ from __future__ import annotations
 from functools import partial
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Intake, Made, Place, Sense, Setting, StageKind
-from .loads import LOAD_SETTINGS, add_load, load_requirements
+from .loads import LOAD_SETTINGS, add_load, load_requirements, starved
 from .plan import RETURN, Plan
 
 
@@ -17,7 +17,8 @@ def _make(plan: Plan, load: str) -> Made:
     else:
         plus, minus = plan.port("in"), RETURN
     add_load(plan, load, plus, minus)
-    return Made(requirements=load_requirements(plan))
+    lost = 0.0 if plan.drive is None else plan.drive.drop
+    return Made(requirements=load_requirements(plan), doubts=starved(plan, lost))
 
 
 def _kind(name: str, title: str, current: str, level: str, words: str) -> StageKind:
@@ -36,6 +37,7 @@ def _kind(name: str, title: str, current: str, level: str, words: str) -> StageK
         make=partial(_make, load=name),
         takes=(Sense.LOW_SIDE, Sense.HIGH_SIDE, Sense.LEVEL),
         intake=lambda plan: Intake(plan.above_zero("current"), passes=True),
+        draws=lambda plan: plan.above_zero("current") * plan.supply.max / plan.supply.nominal,
     )
 
 

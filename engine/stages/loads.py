@@ -15,6 +15,7 @@ LOAD_SETTINGS = (
     Setting("heard", "dB", "", "what is needed at the distance; empty: not asked for"),
     Setting("distance", "m", "1 m", "at which it must be heard"),
 )
+VOLTAGE = 0.1  # margin of a load's voltage that is customarily asked for
 TYPICAL = 0.8  # of the largest current, from memory
 SURGE = {"sounder": 2.0, "piezo": 1.2}
 """Inrush in parts of the largest current (from memory)."""
@@ -23,6 +24,24 @@ SURGE = {"sounder": 2.0, "piezo": 1.2}
 def switched(plan: Plan) -> float:
     """The largest current in A of the load at the nominal supply: its own, or that of the stage behind it."""
     return plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
+
+
+def drawn(plan: Plan) -> float:
+    """What a load that a driver brings along draws at the highest supply, A; that of the next stage is its own."""
+    if plan.text("load") == NONE:
+        return 0.0
+    return plan.above_zero("current") * plan.supply.max / plan.supply.nominal
+
+
+def starved(plan: Plan, lost: float) -> tuple[str, ...]:
+    """The doubt that a load does not get what it needs, where whatever switches it loses ``lost`` V."""
+    left, needed = plan.fed - lost, works_from(plan) / (1.0 - VOLTAGE)
+    if left >= needed:
+        return ()
+    return (
+        f"load_voltage: of {plan.supply.min:.3g} V {left:.3g} V are left for the load, which needs {needed:.3g} V with"
+        f" 10 % to spare; write works_from {write(left * (1.0 - VOLTAGE), 'V', digits=2)} or less, or feed it more",
+    )
 
 
 def peak(plan: Plan, current: float) -> float:

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-
 from ..quantity import write
 from .kind import (
     IN_PORT,
@@ -23,18 +21,28 @@ from .kind import (
     Wire,
 )
 from .output import LEAST_OUTPUT, Output, add_output, sized
-from .plan import OVERDRIVE, RETURN, V_BE, V_REVERSE, Plan
+from .plan import LARGEST_FILM, OVERDRIVE, RETURN, V_BE, V_DIODE, V_REVERSE, Plan
+from .timing_capacitor import (
+    DIVIDER,
+    ELECTROLYTIC,
+    EMITTER_BLEED,
+    LOW_DRIFT,
+    SELECTED,
+    SUITABLE,
+    Threshold,
+    add_timing_capacitor,
+    chosen,
+    doubts,
+)
 
 DELAY, INTERVAL, RESET = "delay", "interval", "reset"
-V_LEAST = 0.5  # V, base-emitter voltage of the threshold transistor at a few microampere, from memory
-EMITTER_BLEED = 470e3  # ohm, keeps the emitter at the base while its diode blocks
-DIVIDER = 330e3  # ohm, both resistors of the threshold together
 FIRE_BLEED = 1e6  # ohm, base-emitter resistor of the firing transistor
 SNAP = 10.0  # times the upper divider resistor: how much of a fired timer's swing goes back into the threshold
 MOST = 1e6  # ohm, a timing resistor above it is at the mercy of the board's leakage (common practice)
 FALL = 0.1  # of the rail that the output of an interval may lose in its pull-up
 HOLDS = 1.0  # s that what starts it stays on after the latest end of its time
-QUIET = 10e-9  # F across the output's base: 1 ms with its resistor (common practice)
+READY, READY_LEAST = 0.1, 1.0  # of its time, and s, in which a timer that reset a latch is empty again
+LEAST_DISCHARGE = 10e3  # ohm that empties it, at least: it draws from the latch meanwhile
 SINK = 0.2e-3  # A that a timer must be able to draw from a latch's base
 
 
@@ -48,12 +56,19 @@ def _output(plan: Plan) -> Output:
     if mode == INTERVAL:
         ohms = min(FALL * low * plan.gain("npn", wanted) / wanted, 100e3)
         return Output(plan.rail.max / ohms, ohms, 0.0)
-    return Output(SINK, 0.0, 0.0)
+    return Output(max(SINK, 0.0 if plan.drive is None else plan.drive.held), 0.0, 0.0)
 
 
 def _intake(plan: Plan) -> Intake:
-    needed = plan.rail.max / DIVIDER + (plan.rail.max / _output(plan).ohms if plan.text("mode") == INTERVAL else 0.0)
-    return Intake(needed, passes=plan.text("mode") == RESET)
+    needed, mode = plan.rail.max / DIVIDER, plan.text("mode")
+    if mode == RESET:
+        needed += plan.rail.max / LEAST_DISCHARGE
+    if mode == INTERVAL:
+        needed += plan.rail.max / _output(plan).ohms
+    if mode == DELAY:
+        # Its output is fed from what starts it, and so is what follows.
+        needed += _output(plan).current + plan.next.current
+    return Intake(needed, passes=mode == RESET)
 
 
 def _make(plan: Plan) -> Made:
@@ -66,22 +81,32 @@ def _make(plan: Plan) -> Made:
     if mode == RESET and not plan.has_latch:
         raise plan.refused("mode", "there is no latch before it to reset; put one there, or write delay")
     output = _output(plan)
-    feed, charge, ref, fire = plan.port("in"), plan.net("charge"), plan.net("ref"), plan.net("fire")
+    start = plan.port("in")
+    feed, charge, ref, fire = (
+        plan.net("feed") if mode == RESET else start,
+        plan.net("charge"),
+        plan.net("ref"),
+        plan.net("fire"),
+    )
     # What fires must come through the timing resistor: it bounds the resistor, and with it the capacitor from below.
     needed = OVERDRIVE * output.current / plan.gain("npn") + V_BE / FIRE_BLEED
-    left = plan.arriving * (1.0 - share) - 2 * V_LEAST
+    arriving = plan.arriving - (V_DIODE if mode == RESET else 0.0)
+    left = arriving * (1.0 - share) - 2 * V_BE
     if left <= 0.0:
-        raise plan.refused("threshold", f"{share:g} of {plan.arriving:.3g} V leaves nothing to fire with; write less")
-    volts = plan.rail.nominal - (0.0 if plan.drive is None else plan.drive.drop)
+        raise plan.refused("threshold", f"{share:g} of {arriving:.3g} V leaves nothing to fire with; write less")
     # While the capacitor is empty the base stands a share of the rail above the emitter, in reverse.
     guarded = share * plan.rail.max > V_REVERSE
-    threshold = (share * volts + V_LEAST * (2 if guarded else 1)) / volts
-    tau = time / math.log(1.0 / (1.0 - threshold))
+    fires = output.current / plan.gain("npn") + V_BE / FIRE_BLEED
+    timed = chosen(plan, time, window, Threshold(share, guarded, fires, V_DIODE if mode == RESET else 0.0))
     most = min(left / needed, MOST)
-    low_drift = plan.text("capacitor") == "low drift"
-    farads = plan.capacitor(tau / most, charge, RETURN, "timing_capacitor", snap="up", low_drift=low_drift)
-    plan.resistor(tau / farads, feed, charge, "timing_resistor", tolerance="1 %")
+    farads = add_timing_capacitor(plan, timed.tau / most, charge, RETURN, timed.kind)
+    plan.resistor(timed.tau / farads, feed, charge, "timing_resistor", tolerance="1 %")
     plan.diode(charge, feed, "discharge_diode")
+    if mode == RESET:
+        # The charge of the capacitor must not keep up what the latch has let go of: it goes to 0V by a way of its own.
+        plan.diode(start, feed, "feed_diode")
+        ready = max(READY * time, READY_LEAST) / 3.0
+        plan.resistor(max(ready / farads, LEAST_DISCHARGE), feed, RETURN, "discharge_resistor", snap="down")
     upper, lower = (1.0 - share) * DIVIDER, share * DIVIDER
     if mode == INTERVAL:
         # At rest the feedback lies beside the upper resistor.
@@ -95,6 +120,11 @@ def _make(plan: Plan) -> Made:
         plan.resistor(EMITTER_BLEED, watched, ref, "emitter_bleed_resistor")
     plan.transistor(fire, ref, watched, "threshold_device", kind="pnp")
     plan.resistor(FIRE_BLEED, fire, RETURN, "base_emitter_resistor_reset_device")
+    # When the timer is started its reference jumps, and the collector-base capacitance of the threshold transistor
+    # takes the firing base along: it would reset the latch that has just been set, over and over again.
+    plan.capacitor(
+        plan.quieting("pnp", 0.0, share * plan.rail.max), fire, RETURN, "base_capacitor_reset_device", snap="up"
+    )
     made = _fired(plan, mode, output, upper)
     capacitor = plan.roles["timing_capacitor"]
     first, last = ("begins", "{load} on") if mode == DELAY else ("{load} on", "{load} off")
@@ -115,6 +145,7 @@ def _make(plan: Plan) -> Made:
         holds=0.0 if mode == RESET else time * (1.0 + window) + HOLDS,
         standby=0.3 * time if mode == DELAY else None,
         requirements=(duration, arrival),
+        doubts=tuple(doubts(plan, timed, time, window)) if farads > LARGEST_FILM else (),
     )
 
 
@@ -127,14 +158,11 @@ def _fired(plan: Plan, mode: str, output: Output, upper: float) -> Drive | None:
     low = plan.net("low")
     plan.transistor(low, fire, RETURN, "reset_device")
     if mode == DELAY:
-        # At rest no current may go through the output's base: a diode keeps it out of the feedback. A delay that is
-        # started by an edge must not give a pulse then: what its transistors couple is short against the capacitor's.
+        # At rest no current may go through the output's base: a diode keeps it out of the feedback.
         back = plan.net("back")
         plan.diode(ref, back, "feedback_diode")
         plan.resistor(SNAP * upper, low, back, "feedback_resistor")
-        drive = add_output(plan, output, low, feed)
-        plan.capacitor(QUIET, feed, plan.net("drive"), "base_capacitor_output_device", film=True)
-        return drive
+        return add_output(plan, output, low, feed)
     plan.resistor(SNAP * upper, low, ref, "feedback_resistor")
     ohms = plan.resistor(output.ohms, feed, low, "pull_up_resistor", snap="down")
     plan.transistor(plan.port("rail"), low, plan.port("out"), "output_device", current=plan.next.current)
@@ -148,13 +176,13 @@ KIND = StageKind(
     title="long RC timer",
     place=Place.TIME,
     help=(
-        "A capacitor is charged through a resistor; a pnp transistor conducts when it is V_EB above a share of the rail"
-        " and fires an npn. T = R C ln(V / (V - V_th)) with V_th = share x V + V_EB (and a diode more where the empty"
-        " capacitor would drive the junction into reverse). R is at most what still fires at the"
-        " lowest supply, (V_min - V_th) / (3 I_C/h_FE,min + V_BE/R_BE); C follows, next higher preferred value, and R"
-        " then from C. It gets there only while the leakage of C stays below (V - V_th)/R, which grows with T alone:"
-        " with 0.01 C V, R C beyond some 40 s fails when hot. delay: out goes high after T; interval: out is high for T"
-        " from when in goes high; reset: lets the latch before it go after T. Source: RC charging law; common practice."
+        "A capacitor charges until a pnp is V_EB above a share of the rail and fires an npn. T = R C/(1+g) ln(1/(1 - s"
+        " (1+g))), s = V_th/V, V_th = share x V + V_EB (and a diode against reverse), g = R G_leak. R C puts T in the"
+        " middle of what tolerances, V_EB and hot leakage make of it; R is at most what still fires at V_min, (V_min -"
+        " V_th) / (3 I_C/h_FE,min + V_BE/R_BE). g grows with T alone: a suitable C is low drift, or where that leaks"
+        " too much one that is selected; 0.01 C V fails beyond some 40 s of R C. The firing base has C = C_ob V_th /"
+        " (0.3 V_BE), so that its start does not fire it. delay: out high after T; interval: out high for T; reset:"
+        " lets the latch before it go after T. Source: RC charging law; common practice."
     ),
     ports=(
         IN_PORT,
@@ -168,7 +196,13 @@ KIND = StageKind(
         Setting("time", "s", "60 s", "nominal time"),
         Setting("window", "%", "40 %", "how far the time may be off, both ways"),
         Setting("threshold", "", "0.3", "share of the rail at which it fires"),
-        Setting("capacitor", WORD, "low drift", "class of a large timing capacitor", ("low drift", "electrolytic")),
+        Setting(
+            "capacitor",
+            WORD,
+            SUITABLE,
+            "class of a large one; selected: low drift, each measured to leak a tenth of its limit",
+            (SUITABLE, LOW_DRIFT, SELECTED, ELECTROLYTIC),
+        ),
     ),
     make=_make,
     intake=_intake,

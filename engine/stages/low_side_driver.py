@@ -5,11 +5,15 @@ from __future__ import annotations
 from functools import partial
 
 from ..quantity import write
+from .heat import cooled
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, carried, load_requirements, peak, switched
-from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, drawn, load_requirements, peak, starved, switched
+from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan, class_figure
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
+SATURATED = {1: 0.3, 2: 1.1}  # V across a transistor that is fully on, and across a Darlington, from memory
+PEAK = 0.8  # of its rated current that an inrush may take: the customary 20 % to spare
+HOT = {1: 0.5, 2: 2.0}  # V, the same at most, for what it heats, from memory
 LEAST_BLEED, MOST_BLEED = 1e3, 47e3  # ohm
 
 
@@ -45,9 +49,23 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     plan.resistor(ohms, plan.port("in"), node, "base_resistor", snap="down")
     plan.resistor(bleed, node, RETURN, "base_emitter_resistor")
     plan.transistor(low, node, RETURN, "driver", kind=kind, current=peak(plan, current))
+    hot = current * plan.supply.max / plan.supply.nominal
+    doubts = cooled(plan, kind, hot, HOT[junctions], inrush=plan.next.surge is not None)
+    bears = class_figure(kind, plan.transistor_class(kind, peak(plan, current)), "i_c_max", "A").low
+    if peak(plan, current) > PEAK * bears:
+        inrush = write(peak(plan, current), "A")
+        doubts += (f"peak_current: an inrush of {inrush} leaves no 20 % of the {bears:g} A that it bears; switch less",)
+    farads = plan.quieting(kind, peak(plan, current), plan.supply.max)
+    plan.capacitor(farads, node, RETURN, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), plan.port("rail"), low)
-    return Made(output=Drive(Sense.LOW_SIDE, drop=0.3 * junctions), requirements=load_requirements(plan))
+    lost = SATURATED[junctions]
+    own = plan.text("load") != NONE
+    return Made(
+        output=Drive(Sense.LOW_SIDE, drop=lost),
+        requirements=load_requirements(plan),
+        doubts=(*doubts, *(starved(plan, lost) if own else ())),
+    )
 
 
 _PORTS = (IN_PORT, RAIL_PORT, Port("low", Wire.OUT, "the switched end of the load"), RETURN_PORT)
@@ -67,6 +85,7 @@ KINDS = (
         settings=(*LOAD_SETTINGS, Setting("overdrive", "", "3", "times the least base current")),
         make=partial(_make, kind="npn", junctions=1),
         intake=partial(_intake, kind="npn", junctions=1),
+        draws=drawn,
     ),
     StageKind(
         name="darlington_driver",
@@ -77,11 +96,13 @@ KINDS = (
             "As the low-side driver, with a Darlington transistor for loads of amperes or a weak stage before it."
             " Its h_FE,min is the product of both gains and its V_BE counts twice, V_CE(sat) is 0.8 to 2 V, so that the"
             " load loses that much of a low supply. I_B = overdrive x I_load / h_FE,min; R_B = (V_drive,min - 2 V_BE) /"
-            " (I_B + 2 V_BE/R_BE). Source: common practice; the class is from memory."
+            " (I_B + 2 V_BE/R_BE). Where I V_CE(sat) R_th would heat its junction too much it comes on a heat sink."
+            " Source: common practice; the class is from memory."
         ),
         ports=_PORTS,
         settings=(*LOAD_SETTINGS, Setting("overdrive", "", "3", "times the least base current")),
         make=partial(_make, kind="darlington_npn", junctions=2),
         intake=partial(_intake, kind="darlington_npn", junctions=2),
+        draws=drawn,
     ),
 )

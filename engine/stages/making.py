@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import json
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
+from typing import TypeVar
 
 from ..design.conditions import Conditions
 from ..design.document import Design
@@ -22,6 +24,10 @@ AFTER = 2.0  # s after all that stages bring
 BEGINS = "begins"
 """The moment at which the alarm begins: what starts it does so, or the supply comes."""
 _FACTS = ("load", "contact", "trips")
+RESTS_ON = "rests on"
+"""The fact that the load is the coil of a fail-safe relay."""
+_STATES = re.compile(r"{load} (on|off)")
+T = TypeVar("T")
 READ = 0.5  # s after the load came on at which levels are read, at most
 
 
@@ -40,7 +46,12 @@ def new_design(name: str, purpose: str, conditions: Json, choices: Sequence[Choi
     sequences: dict[str, Json] = {"alarm": _alarm(row, facts)}
     for made in row:
         sequences.update(_filled(dict(made.made.sequences), facts))
-    requirements = [each for n, made in enumerate(row) for each in _required(made, facts | _trips(row[n + 1 :], facts))]
+    requirements = [
+        each
+        for n, made in enumerate(row)
+        for each in _required(made, facts | _trips(row[n + 1 :], facts))
+        if not _too_short(each, row[n + 1 :])
+    ]
     return Design.load(_document(name, purpose, conditions, stages, sequences, requirements))
 
 
@@ -66,7 +77,7 @@ def _single_names(names: Sequence[str]) -> None:
 
 def _facts(row: Sequence[MadeStage]) -> dict[str, str]:
     """The load and the contact of the design, which texts of its stages name."""
-    return _named([made.stage["roles"] for made in row])
+    return _named([made.stage for made in row])
 
 
 def _trips(following: Sequence[MadeStage], facts: Mapping[str, str]) -> dict[str, str]:
@@ -75,14 +86,16 @@ def _trips(following: Sequence[MadeStage], facts: Mapping[str, str]) -> dict[str
         port = made.kind.port(Wire.OUT)
         if port is not None and made.made.output is not None and made.made.output.sense is Sense.LEVEL:
             return {"trips": f"{made.stage['ports'][port.name]} above {write(0.5 * made.rail, 'V')}"}
-    return {"trips": f"{facts['load']} on"} if "load" in facts else {}
+    return {"trips": _filled("{load} on", facts)} if "load" in facts else {}
 
 
-def _named(roles: Sequence[Mapping[str, str]]) -> dict[str, str]:
+def _named(stages: Sequence[Json]) -> dict[str, str]:
     # A relay is what switches: the load that it switches tells of the alarm where there is one.
-    roles = sorted(roles, key=lambda each: "relay_contact" in each)
+    roles = sorted((stage.get("roles", {}) for stage in stages), key=lambda each: "relay_contact" in each)
     found = {name: next((each[name] for each in roles if name in each), None) for name in ("load", "contact")}
-    return {name: ref for name, ref in found.items() if ref is not None}
+    facts = {name: ref for name, ref in found.items() if ref is not None}
+    moved = [part for stage in stages for part in stage["parts"] if part.get("operated_by") == facts.get("load", "")]
+    return facts | ({RESTS_ON: "yes"} if moved and all(part.get("form") == "break" for part in moved) else {})
 
 
 def _start(row: Sequence[MadeStage]) -> float:
@@ -111,11 +124,14 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
     active = [made.made.active for made in row if made.made.active is not None]
     if "load" in facts:
         by = write(min([READ, *(0.2 * each for each in active)]), "s")
-        moments["sounding"] = {"after": f"{facts['load']} on", "by": by}
-        if active:
+        moments["sounding"] = _filled({"after": "{load} on", "by": by}, facts)
+        if active and RESTS_ON not in facts:
             moments["silent"] = {"after": f"{facts['load']} off", "by": by}
     for made in row:
         moments.update(_moments(made, facts))
+    if "silent" in moments:
+        # What flashes from the start rests between two flashes only.
+        moments.setdefault("standby", moments["silent"])
     return {"events": events, "ends": write(over + AFTER, "s", digits=6), "moments": moments}
 
 
@@ -140,13 +156,27 @@ def _required(made: MadeStage, facts: Mapping[str, str]) -> list[Json]:
     return [_filled(each, facts) for each in made.made.requirements if _answered(each, facts)]
 
 
-def _filled(entry: Json, facts: Mapping[str, str]) -> Json:
-    """The texts of an entry with the names that it leaves open."""
+def _too_short(requirement: Json, following: Sequence[MadeStage]) -> bool:
+    """Whether an event of the asked length cannot count, because what follows wants it to last longer."""
+    holds = max((made.made.holds for made in following), default=0.0)
+    return requirement["check"] == "acceptance" and read(requirement["min"], "s") < holds
+
+
+def _filled(entry: T, facts: Mapping[str, str]) -> T:
+    """The texts of an entry with the names that it leaves open; a load that rests on tells of an alarm by going off."""
     text = json.dumps(entry)
+    if RESTS_ON in facts:
+        text = _STATES.sub(lambda found: "{load} off" if found[1] == "on" else "{load} on", text)
     for name, value in facts.items():
         text = text.replace(f"{{{name}}}", value)
-    found: Json = json.loads(text)
+    found: T = json.loads(text)
     return found
+
+
+def doubts(conditions: Json, choices: Sequence[Choice]) -> dict[str, tuple[str, ...]]:
+    """What will not hold of a row as it is asked for, by stage: the check, why, and what to write instead."""
+    empty = Design.load(_document("row", "", conditions, [], {"alarm": {"events": [], "ends": "1 s"}}, []))
+    return {made.stage["name"]: made.made.doubts for made in make_row(empty.conditions, choices) if made.made.doubts}
 
 
 # -- a stage added to a design
@@ -195,7 +225,7 @@ def with_catalogue_stage(design: Design, choice: Choice, ports: Mapping[str, str
 def _added(design: Design, made: MadeStage) -> Design:
     document = design.dump()
     document.setdefault("stages", []).append(made.stage)
-    facts = _named([*(stage.roles for stage in design.stages), made.stage["roles"]])
+    facts = _named(document["stages"])
     alarm = document["sequences"]["alarm"]
     events = alarm.setdefault("events", [])
     begun = [read(event["at"], "s") for event in events if event["event"] in ("close", "open", "set", "ramp")]
@@ -206,7 +236,7 @@ def _added(design: Design, made: MadeStage) -> Design:
     alarm["ends"] = write(ends, "s", digits=6)
     moments = _moments(made, facts)
     if "load" in facts:
-        moments.setdefault("sounding", {"after": f"{facts['load']} on", "by": write(READ, "s")})
+        moments.setdefault("sounding", _filled({"after": "{load} on", "by": write(READ, "s")}, facts))
     for name, moment in moments.items():
         alarm["moments"].setdefault(name, moment)
     for name, sequence in _filled(dict(made.made.sequences), facts).items():

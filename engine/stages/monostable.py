@@ -84,5 +84,6 @@ KIND = StageKind(
     ),
     make=_make,
     intake=lambda plan: Intake(plan.rail.max / TRIGGER_RETURN),
+    edge=True,
     supply_starts=False,
 )

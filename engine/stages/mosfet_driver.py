@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, drawn, load_requirements, peak, starved, switched
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan, class_figure
 
 LEAST_GATE = 1e3  # ohm in series with the gate, against ringing (common practice)
@@ -12,6 +12,7 @@ PULL = 22e3  # ohm, keeps a p-channel gate at the rail while nothing drives it
 OVER = 2.0  # V above its largest threshold from which a gate is fully on, from memory
 GATE_SHARE = 0.8  # of the rated gate-source voltage that is used (common practice)
 CURRENT_SHARE = 0.8  # of the rated drain current that an inrush may take (common practice)
+N_DROP, P_DROP = 0.3, 0.2  # V across them while on, from memory
 N_CLASS, P_CLASS = "small n-channel", "p-channel switch"
 
 
@@ -45,7 +46,7 @@ def _make_n(plan: Plan) -> Made:
     plan.part("Q", "mosfet_n", pins, "driver", **{"class": N_CLASS})
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), plan.port("rail"), low)
-    return Made(output=Drive(Sense.LOW_SIDE, drop=0.3), requirements=load_requirements(plan))
+    return _made(plan, Sense.LOW_SIDE, N_DROP)
 
 
 def _npn_base(plan: Plan) -> tuple[float, float]:
@@ -66,6 +67,7 @@ def _make_p(plan: Plan) -> Made:
     below = (plan.arriving - V_BE) / (base + V_BE / bleed) - plan.arriving_ohms
     if below < 1.0:
         raise plan.refused("current", "the stage before it cannot turn its npn on; put a latch or a switch there")
+    plan.capacitor(plan.quieting("npn", 0.0, plan.supply.max), node, RETURN, "base_capacitor_npn_device", snap="up")
     ohms = _gate(plan, "mosfet_p", P_CLASS, PULL, V_SATURATED)
     plan.resistor(below, plan.port("in"), node, "npn_base_resistor", snap="down")
     plan.resistor(bleed, node, RETURN, "base_emitter_resistor_npn_device")
@@ -75,7 +77,12 @@ def _make_p(plan: Plan) -> Made:
     plan.part("Q", "mosfet_p", {"drain": high, "gate": gate, "source": rail}, "driver", **{"class": P_CLASS})
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), high, RETURN)
-    return Made(output=Drive(Sense.HIGH_SIDE, drop=0.2), requirements=load_requirements(plan))
+    return _made(plan, Sense.HIGH_SIDE, P_DROP)
+
+
+def _made(plan: Plan, sense: Sense, lost: float) -> Made:
+    doubts = starved(plan, lost) if plan.text("load") != NONE else ()
+    return Made(output=Drive(sense, drop=lost), requirements=load_requirements(plan), doubts=doubts)
 
 
 def _settings(current: str) -> tuple[Setting, ...]:
@@ -99,6 +106,7 @@ KINDS = (
         settings=_settings("100 mA"),
         make=_make_n,
         intake=lambda plan: Intake(plan.rail.max / BLEED),
+        draws=drawn,
     ),
     StageKind(
         name="p_channel_driver",
@@ -116,5 +124,6 @@ KINDS = (
         settings=_settings("300 mA"),
         make=_make_p,
         intake=_intake_p,
+        draws=drawn,
     ),
 )

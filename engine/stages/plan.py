@@ -13,7 +13,7 @@ from ..parts.figures import Figure, needed
 from ..parts.physics import gain_factor
 from ..preferred import nearest, next_down, next_up, series_for
 from ..quantity import read, write
-from .kind import WORD, Drive, Intake, Json, StageKind, Wire
+from .kind import NOTHING_KNOWN, WORD, Beyond, Drive, Intake, Json, StageKind, Wire
 
 RETURN = "0V"
 NOTHING = Intake()
@@ -27,6 +27,8 @@ DRIVER_CURRENT = 0.4  # A, above it a larger one (0.8 of the 0.5 A that it is ra
 _VOLTAGES = (10.0, 16.0, 25.0, 35.0, 50.0, 63.0, 100.0)
 _POWERS = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0)
 _LEAST, _MOST = 1.0, 10e6  # ohm, what is put in where a formula asks for less or more
+COUPLED = 0.3  # of V_BE: what a fast edge may bring to a base that rests, through strays and junctions
+UNBIASED = 2.5  # times its C_ob at 10 V, a transistor's capacitance without bias: (1 + 10 V/0.7 V)^(1/3)
 LARGEST_FILM = 2.2e-6  # F; above it capacitors are polarised (common practice)
 
 
@@ -34,7 +36,9 @@ LARGEST_FILM = 2.2e-6  # F; above it capacitors are polarised (common practice)
 class Plan:
     """Settings, surroundings and the growing list of parts of one stage.
 
-    ``ports`` are the nets of its ports; ``rail`` are the volts of the small stages' rail; ``drive`` is what comes in
+    ``ports`` are the nets of its ports; ``rail`` are the volts of the small stages' rail, ``load_rail`` those of the
+    rail of loads (the supply where none are given), ``beyond`` what the stages behind it draw, ``source`` the largest
+    resistance of the supply in ohm; ``drive`` is what comes in
     from the stage before, None where the rail itself starts it; ``next`` is what the following stage takes.
     """
 
@@ -48,6 +52,9 @@ class Plan:
     drive: Drive | None = None
     next: Intake = NOTHING
     taken: frozenset[str] = frozenset()
+    load_rail: Levels | None = None
+    beyond: Beyond = NOTHING_KNOWN
+    source: float = 0.0
     parts: list[Json] = field(default_factory=list)
     roles: dict[str, str] = field(default_factory=dict)
 
@@ -139,6 +146,11 @@ class Plan:
     def has_latch(self) -> bool:
         """Whether a latch stands before it, whose base it may reach."""
         return f"{self.stage}.{Wire.BASE}" not in self.ports.values()
+
+    @property
+    def fed(self) -> float:
+        """The least volts of the rail of loads."""
+        return (self.load_rail or self.supply).min
 
     @property
     def arriving(self) -> float:
@@ -234,6 +246,12 @@ class Plan:
         """A transistor of the generic class for a collector current."""
         pins = {"collector": collector, "base": base, "emitter": emitter}
         return self.part("Q", kind, pins, role, **{"class": self.transistor_class(kind, current)})
+
+    def quieting(self, kind: str, current: float, volts: float) -> float:
+        """The capacitance in F that keeps a resting base below 0.3 V_BE while the other side of a transistor's C_ob
+        moves by ``volts``: both divide the step."""
+        of_class = self.transistor_class(kind, current)
+        return UNBIASED * class_figure(kind, of_class, "c_ob", "F").high * volts / (COUPLED * V_BE)
 
     def diode(
         self, anode: str, cathode: str, role: str | None = None, *, kind: str = "diode", name: str = "signal diode"

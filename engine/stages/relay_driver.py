@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 from ..parts.physics import copper_factor
 from ..quantity import write
 from .kind import (
@@ -24,7 +26,9 @@ from .plan import OVERDRIVE, RETURN, V_BE, Plan, class_figure, snapped
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
 SPREAD = 0.1  # of the coil's resistance
-PICK_UP = ("0.5", "0.65", "0.75")  # of the rated voltage, from memory
+PICK_UP = (0.67, 0.87, 1.0)  # of the largest voltage to pick up, from memory
+SATURATED = 0.3  # V across the driver, from memory
+VOLTAGE = 0.1  # margin of the coil's voltage that is customarily asked for
 DROP_OUT = ("0.1", "0.2", "0.33")  # of the rated voltage, from memory
 TIME_CONSTANT = 2.5e-3  # s, L/R of a small relay: 1 H and 400 ohm, from memory
 ARMATURE = ("3 ms", "5 ms", "8 ms")
@@ -108,7 +112,21 @@ def _make(plan: Plan) -> Made:
     asked: tuple[Json, ...] = ()
     if plan.text("release"):
         asked = ({"check": "release", "of": coil, "max": plan.text("release")},)
-    return Made(output=Drive(Sense.HIGH_SIDE), requirements=asked)
+    return Made(output=Drive(Sense.HIGH_SIDE), requirements=asked, doubts=_starved(plan))
+
+
+def _starved(plan: Plan) -> tuple[str, ...]:
+    """The doubt that the hot coil does not pull in at the lowest supply."""
+    hot = float(copper_factor(plan.ambient.max))
+    needed = hot * plan.share("pick_up") * plan.above_zero("rated") / (1.0 - VOLTAGE)
+    left = plan.fed - SATURATED
+    if left >= needed:
+        return ()
+    share = 100.0 * left * (1.0 - VOLTAGE) / hot / plan.above_zero("rated")
+    return (
+        f"load_voltage: hot, its coil needs {needed:.3g} V with 10 % to spare, and of {plan.supply.min:.3g} V"
+        f" {left:.3g} V are left; write pick_up {math.floor(share):.0f} %, or let the entry lose less (diode schottky)",
+    )
 
 
 _ZENER = {"tolerance": "5 %", "class": "zener 0.5 W"}
@@ -125,7 +143,7 @@ def _add_coil(plan: Plan, rail: str, low: str) -> str:
     fields: Json = {
         "resistance": limits("ohm", (1.0 - SPREAD) * ohms, ohms, (1.0 + SPREAD) * ohms),
         "inductance": limits("H", 0.8 * henry, henry, 1.2 * henry),
-        "pick_up": limits("V", *(float(share) * rated for share in PICK_UP)),
+        "pick_up": limits("V", *(share * plan.share("pick_up") * rated for share in PICK_UP)),
         "drop_out": limits("V", *(float(share) * rated for share in DROP_OUT)),
         "armature_delay": {**dict(zip(_LIMITS, ARMATURE, strict=True)), "source": "memory"},
     }
@@ -149,6 +167,7 @@ KIND = StageKind(
     settings=(
         Setting("coil", "ohm", "400R", "resistance of the coil at 20 C"),
         Setting("rated", "V", "12 V", "rated voltage of the coil"),
+        Setting("pick_up", "%", "75 %", "of its rated voltage at which it picks up at 20 C, at most"),
         Setting("mode", WORD, "pulls in", "in an alarm, or it lets go in one", ("pulls in", FAIL_SAFE)),
         Setting("clamp", WORD, "diode", "a plain diode, or a zener in series for a quick release", ("diode", "zener")),
         Setting("release", "s", "", "within which its contact must open; empty: not asked for"),
@@ -156,4 +175,5 @@ KIND = StageKind(
     ),
     make=_make,
     intake=_intake,
+    draws=_current,
 )

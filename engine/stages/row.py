@@ -8,12 +8,14 @@ from dataclasses import dataclass, field
 from ..design.conditions import Conditions, Levels
 from ..errors import DesignError
 from . import stage_kinds
-from .kind import Drive, Intake, Json, Made, StageKind, Wire
+from .kind import NOTHING_KNOWN, Beyond, Drive, Intake, Json, Made, StageKind, Wire
+from .kind import Place as Order
 from .modified import AS_MADE, digest
 from .plan import RETURN, Plan
 
 SUPPLY = "supply"
 _NEW = {Wire.OUT, Wire.NEW_RAIL, Wire.NEW_QUIET, Wire.NEW_BASE}
+OWN = 2e-3  # A that small stages draw beside what they hand on, from memory
 _ROOM = Levels(25.0, 25.0, 25.0)
 
 
@@ -78,18 +80,15 @@ def make_row(
     conditions: Conditions, choices: Sequence[Choice], place: Place = Place(), taken: frozenset[str] = frozenset()
 ) -> tuple[MadeStage, ...]:
     """All stages of a row, connected and sized. Raises DesignError naming stage and setting."""
-    places = _places(conditions, choices, place)
-    takes = Intake()
-    following: list[Intake] = []
-    for choice, at in zip(reversed(choices), reversed(places), strict=True):
-        following.insert(0, takes)
-        plan = _plan(conditions, choice, at, takes, taken)
-        plan.check()
-        own = plan.kind.intake(plan)
-        takes = _joined(own, takes) if own.passes else own
+    # What an entry must carry follows from the stages behind it, and what these draw a little from what it loses.
+    beyond = [Beyond()] * len(choices)
+    for _ in range(2):
+        plans = _plans(conditions, choices, place, beyond)
+        beyond = _beyond(plans)
+    following = [plan.next for plan in _plans(conditions, choices, place, beyond)]
     made: list[MadeStage] = []
-    for choice, after in zip(choices, following, strict=True):
-        stage, place = make_stage(conditions, choice, place, after, taken)
+    for choice, after, behind in zip(choices, following, beyond, strict=True):
+        stage, place = make_stage(conditions, choice, place, after, taken, behind)
         taken |= {part["ref"] for part in stage.stage["parts"]}
         made.append(stage)
     return tuple(made)
@@ -103,21 +102,46 @@ def _joined(own: Intake, next_one: Intake) -> Intake:
     )
 
 
-def _places(conditions: Conditions, choices: Sequence[Choice], place: Place) -> list[Place]:
-    """Where every stage stands as far as its rails go: they do not depend on what follows."""
-    found = []
-    for choice in choices:
-        found.append(place)
+def _plans(conditions: Conditions, choices: Sequence[Choice], place: Place, beyond: Sequence[Beyond]) -> list[Plan]:
+    """Plans of all stages at their places, each with what the one after it takes."""
+    places = []
+    for choice, behind in zip(choices, beyond, strict=True):
+        places.append(place)
         if kind_named(choice.kind).port(Wire.NEW_QUIET) or kind_named(choice.kind).port(Wire.NEW_RAIL):
-            _, place = make_stage(conditions, choice, place, Intake(), frozenset())
+            # How far rails go down does not depend on what comes in.
+            _, place = make_stage(conditions, choice, place, Intake(), frozenset(), behind)
+    takes = Intake()
+    plans: list[Plan] = []
+    for choice, at in zip(reversed(choices), reversed(places), strict=True):
+        plan = _plan(conditions, choice, at, takes, frozenset(), Beyond())
+        plan.check()
+        plans.insert(0, plan)
+        own = plan.kind.intake(plan)
+        takes = _joined(own, takes) if own.passes else own
+    return plans
+
+
+def _beyond(plans: Sequence[Plan]) -> list[Beyond]:
+    """What the stages behind each one draw: all loads together, and the largest that a small stage hands on."""
+    found = []
+    for number in range(len(plans)):
+        behind = plans[number + 1 :]
+        loads = sum(plan.kind.draws(plan) for plan in behind)
+        handed = max((plan.next.current for plan in behind if plan.kind.place is not Order.SWITCH), default=0.0)
+        found.append(Beyond(loads or None, OWN + handed if behind else None))
     return found
 
 
 def make_stage(
-    conditions: Conditions, choice: Choice, place: Place, after: Intake, taken: frozenset[str]
+    conditions: Conditions,
+    choice: Choice,
+    place: Place,
+    after: Intake,
+    taken: frozenset[str],
+    beyond: Beyond = NOTHING_KNOWN,
 ) -> tuple[MadeStage, Place]:
     """One stage at its place, and the place of the next one."""
-    plan = _plan(conditions, choice, place, after, taken)
+    plan = _plan(conditions, choice, place, after, taken, beyond)
     plan.check()
     kind = plan.kind
     if place.drive is not None and kind.port(Wire.IN) and place.drive.sense not in kind.takes:
@@ -127,6 +151,11 @@ def make_stage(
         )
     if place.drive is None and kind.port(Wire.IN) and not kind.supply_starts:
         raise DesignError(f"stage {plan.stage}: a {kind.title} needs a signal; put a contact or a sensor before it")
+    if place.drive is not None and kind.edge and place.drive.slow:
+        raise DesignError(
+            f"stage {plan.stage}: a {kind.title} takes only a steep edge, which the stage before it does not give; put"
+            " a Schmitt trigger between, or leave a debounce out"
+        )
     made = kind.make(plan)
     used = {net for part in plan.parts for net in part["pins"].values()}
     ports = {name: net for name, net in plan.ports.items() if net in used}
@@ -165,7 +194,9 @@ def advance(place: Place, kind: StageKind, ports: Mapping[str, str], made: Made)
     )
 
 
-def _plan(conditions: Conditions, choice: Choice, place: Place, after: Intake, taken: frozenset[str]) -> Plan:
+def _plan(
+    conditions: Conditions, choice: Choice, place: Place, after: Intake, taken: frozenset[str], beyond: Beyond
+) -> Plan:
     kind = kind_named(choice.kind)
     supply = conditions.levels("supply")
     if supply is None or supply.min <= 0.0:
@@ -188,4 +219,10 @@ def _plan(conditions: Conditions, choice: Choice, place: Place, after: Intake, t
             f"stage {name}: the stages before it leave {rail.min:.2g} V of the lowest supply; feed it more"
         )
     ambient = conditions.levels("ambient") or _ROOM
-    return Plan(kind, name, choice.settings, ports, supply, rail, ambient, place.drive, after, taken)
+    lost = place.rail_drop
+    loads = Levels(supply.min - lost, supply.nominal - lost, supply.max - 0.5 * lost)
+    source = conditions.levels("source_resistance")
+    ohms = 0.0 if source is None else source.max
+    return Plan(
+        kind, name, choice.settings, ports, supply, rail, ambient, place.drive, after, taken, loads, beyond, ohms
+    )

@@ -4,13 +4,14 @@ from __future__ import annotations
 
 from .kind import IN_PORT, OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Intake, Made, Place, Sense, Setting, StageKind
 from .output import sized
-from .plan import RETURN, V_BE, V_REVERSE, V_SATURATED, Plan
+from .plan import COUPLED, RETURN, V_BE, V_REVERSE, V_SATURATED, Plan, class_figure
 
 LEAST_CURRENT = 0.3e-3  # A in the emitter resistor, so that base currents do not count
 IDLE = 0.25  # V across the output's base-emitter resistor at rest: off, also when hot
 DIVIDER_SHARE = 20.0  # times its base current that flows in the divider
 V_EARLY = 0.1  # V before both bases are equal it goes over: the one that takes over needs a part of the current only
 V_DIODE_LEAST = 0.35  # V of the diode before the base at some microampere (class)
+V_HELD = 1.0  # V by which a base may be drawn below its emitter by an edge
 BLEED = 1e6  # ohm, keeps the base at the emitter while its diode blocks
 
 
@@ -48,6 +49,9 @@ def _make(plan: Plan) -> Made:
     plan.resistor(bleed, rail, base, "base_emitter_resistor_output_device")
     plan.resistor(ohms, base, left, "collector_resistor", tolerance="1 %")
     plan.transistor(plan.port("out"), base, rail, "output_device", kind="pnp", current=plan.next.current)
+    # An input that jumps takes the collector along through the first transistor, and that the output's base.
+    farads = plan.quieting("npn", 0.0, plan.rail.max)
+    plan.capacitor(farads, rail, base, "base_capacitor_output_device", snap="up")
     lower_ohms = at_base / divider
     plan.resistor((volts - at_base) / divider - bleed - ohms, left, tap, "divider_upper_resistor", tolerance="1 %")
     plan.resistor(lower_ohms, tap, RETURN, "divider_lower_resistor", tolerance="1 %")
@@ -60,6 +64,11 @@ def _make(plan: Plan) -> Made:
         second = plan.net("second")
         plan.diode(tap, second, "second_base_diode")
         plan.resistor(BLEED, second, emitter, "base_emitter_resistor_second_device")
+        # Where the input jumps, a base that hangs on a blocking diode must go with its emitter.
+        hangs = class_figure("diode", "signal diode", "capacitance", "F").high * plan.rail.max / V_HELD
+        farads = hangs + plan.quieting("npn", 0.0, plan.rail.max) * COUPLED * V_BE / V_HELD
+        for base_net, name in ((node, "trip_device"), (second, "second_device")):
+            plan.capacitor(farads, base_net, emitter, f"base_emitter_capacitor_{name}", snap="up")
     plan.transistor(left, signal, emitter, "trip_device")
     plan.transistor(rail, second, emitter, "second_device")
     return Made(output=Drive(Sense.LEVEL, drop=V_SATURATED))

@@ -24,7 +24,7 @@ def add_divider(plan: Plan, ohms: float, *, rising: bool) -> tuple[str, str, Dri
     else:
         plan.resistor(ohms * share / (1.0 - share), out, back, "bridge_resistor", tolerance="1 %")
         nets = rail, out
-    return *nets, Drive(Sense.LEVEL, drop=(1.0 - share) * plan.rail.min, ohms=ohms * (1.0 - share))
+    return *nets, Drive(Sense.LEVEL, drop=(1.0 - share) * plan.rail.min, ohms=ohms * (1.0 - share), slow=True)
 
 
 def trip_sequence(subject: str, rest: str, beyond: str) -> Json:

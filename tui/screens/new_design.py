@@ -13,7 +13,7 @@ from textual.binding import BindingType
 from ...engine.design.document import Design
 from ...engine.errors import EngineError
 from ...engine.stages import stage_kinds
-from ...engine.stages.making import new_design
+from ...engine.stages.making import doubts, new_design
 from ...engine.stages.row import Choice, usual_name
 from ...storage.errors import StorageError
 from ...storage.store import Store
@@ -49,6 +49,7 @@ class NewDesignPage(Page[str | None]):
         self._store = store
         self._called, self._purpose, self._conditions = name, purpose, conditions
         self._row: list[Choice] = []
+        self._doubts: dict[str, tuple[str, ...]] = {}
 
     def compose_body(self) -> ComposeResult:
         """Title, the row from left to right, and what the stage under the hand is."""
@@ -83,11 +84,16 @@ class NewDesignPage(Page[str | None]):
         words = f" {self._called}: a new design, stages from left to right   {supply['min']} .. {supply['max']}"
         title = self.query_one("#title", Lines)
         title.show(line(Span(fit(words, title.size.width or 80), "strong")))
+        self._doubts = self._doubted()
         heading = line(Span(columns(_WIDTHS, ("stage", "kind")) + " asked of it", "strong"))
         rows = [
             Row(
                 choice.title(),
-                line(columns(_WIDTHS, (choice.title(), stage_kinds()[choice.kind].title)), f" {asked(choice)}"),
+                line(
+                    columns(_WIDTHS, (choice.title(), stage_kinds()[choice.kind].title)),
+                    Span(" ! ", "thin") if choice.title() in self._doubts else " ",
+                    asked(choice),
+                ),
             )
             for choice in self._row
         ]
@@ -101,10 +107,12 @@ class NewDesignPage(Page[str | None]):
         if at < 0:
             hand.show(line(" Each stage is sized by the supply and by what the next one takes."))
             return
-        kind = stage_kinds()[self._row[at].kind]
-        pieces = wrap(kind.help, max(20, self.size.width - 2))
+        kind, width = stage_kinds()[self._row[at].kind], max(20, self.size.width - 2)
+        doubted = [wrap(f"! will not hold: {words}", width) for words in self._doubts.get(self._row[at].title(), ())]
+        pieces = [line(Span(f" {piece}", "thin")) for words in doubted for piece in words]
+        pieces += [line(f" {piece}") for piece in wrap(kind.help, width)]
         more = line(" Enter: what is asked of it   k: how it is sized, in full")
-        hand.show(*(line(f" {piece}") for piece in pieces[:_HELP_LINES]), more)
+        hand.show(*pieces[:_HELP_LINES], more)
 
     def _judge(self) -> None:
         """Says what the row would become, or why it cannot be made yet."""
@@ -114,7 +122,16 @@ class NewDesignPage(Page[str | None]):
             self.refuse(str(refusal), passing=False)
             return
         asked_for = counted(len(design.requirements), "requirement")
-        self.say(f"{counted(len(design.parts), 'part')}, {asked_for}; s makes the design")
+        words = f"{counted(len(design.parts), 'part')}, {asked_for}; s makes the design"
+        if self._doubts:
+            words += f"; not all will hold: see ! {', '.join(self._doubts)}"
+        self.say(words)
+
+    def _doubted(self) -> dict[str, tuple[str, ...]]:
+        try:
+            return doubts(self._conditions, self._row)
+        except EngineError:
+            return {}
 
     def _design(self) -> Design:
         return new_design(self._called, self._purpose, self._conditions, self._row)

@@ -12,9 +12,10 @@ import pytest
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import DesignError
 from stagebook.engine.primitives.signals import maximum, slew, voltage
+from stagebook.engine.stages.making import doubts
 
 from ..circuits import Setup
-from .made import PIEZO, at, begins, choice, made, passing, run, seconds, value
+from .made import PIEZO, at, begins, choice, conditions, made, passing, run, seconds, value
 
 CALL = choice("contact_no", "call")
 
@@ -27,7 +28,7 @@ def test_the_entry_is_sized_by_drop_and_slew() -> None:
 
 
 def test_the_filtered_rail_rises_no_faster_than_asked_for() -> None:
-    design = made(choice("entry", slew="5 V/ms"), CALL, PIEZO).dump()
+    design = made(choice("entry", slew="5 V/ms", small_current="3 mA"), CALL, PIEZO).dump()
     design["sequences"]["alarm"]["events"][0]["rise"] = "1 us"
     setup = Setup(Design.load(design))
     begin, end = (passing("entry.quiet", volts, rising=True) for volts in (2.0, 3.0))
@@ -50,6 +51,27 @@ def test_the_entry_may_do_without_a_diode() -> None:
     design = made(choice("entry", diode="none", fuse="none"), CALL, PIEZO)
     assert design.part("LS1").pins["plus"] == "supply"
     assert "reverse_diode" not in design.stage("entry").roles
+
+
+def test_the_entry_is_sized_by_what_the_row_draws() -> None:
+    # The piezo element takes 12 mA x 14/12 = 14 mA, small stages 2 mA and the driver's base current: a fuse of 0.1 A.
+    design = made(choice("entry"), CALL, PIEZO)
+    assert design.part(design.stage("entry").roles["fuse"]).limits("rated_current", "A").typical == 0.1  # type: ignore[union-attr]
+    # 0.7 A x 14/12 + 6 mA over 0.75 (1 - 0.003 x 20) = 1.17 A, next of R10: 1.25 A.
+    loud = choice("darlington_driver", "driver", current="0.7 A")
+    design = made(choice("entry"), CALL, loud)
+    assert design.part(design.stage("entry").roles["fuse"]).limits("rated_current", "A").typical == 1.25  # type: ignore[union-attr]
+    # Its base current comes through the filter: 2 mA + 3 x 0.7 A/(750 x cold) = 4.8 mA and 10 %: 0.3 V/5.1 mA = 59R.
+    assert 47.0 <= value(design, "entry", "filter_resistor") <= 62.0
+
+
+def test_what_follows_gets_less_by_the_drop_of_the_diode() -> None:
+    # 1 A rectifier: 0.65 V at 10 mA, 0.95 V at 1 A (class); log-interpolated at 0.7 A x 14/12 = 0.82 A: 0.94 V, and 50
+    # mV more at 0 C; 2 ohm of source and 80 mohm of fuse take 1.7 V: of 11 V 8.3 V are left, and 1.1 V in the driver.
+    loud = choice("darlington_driver", "driver", current="0.7 A", works_from="7 V")
+    words = doubts(conditions(), (choice("entry"), CALL, loud))["driver"]
+    assert any(each.startswith("load_voltage: of 11 V 7.2 V are left") for each in words), words
+    assert "driver" not in doubts(conditions(), (choice("entry"), CALL, choice("low_side_driver", "driver")))
 
 
 def test_the_fuse_carries_the_loads_when_hot() -> None:

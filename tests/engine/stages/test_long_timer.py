@@ -9,9 +9,10 @@ import pytest
 
 from stagebook.engine.errors import DesignError
 from stagebook.engine.primitives.columns import AMBIENT
-from stagebook.engine.primitives.signals import Anchor, minimum, voltage
+from stagebook.engine.primitives.signals import Anchor, level, maximum, minimum, voltage
+from stagebook.engine.stages.making import doubts
 
-from .made import PIEZO, begins, choice, load_goes, made, run, seconds, value
+from .made import PIEZO, begins, choice, conditions, load_goes, made, passing, run, seconds, value
 
 CALL = choice("contact_no", "call", held="60 s")
 
@@ -24,7 +25,7 @@ def timed(
     volts = float(supply[1].split()[0])
     seen = run(design, on := load_goes(True, supply=volts))
     tau = value(design, "timer", "timing_resistor") * value(design, "timer", "timing_capacitor", "F")
-    threshold = float(share) * volts + (1.0 if "emitter_diode" in design.stage("timer").roles else 0.5)
+    threshold = float(share) * volts + (0.68 if "emitter_diode" in design.stage("timer").roles else 0.43)
     return seconds(seen, on), tau * math.log(volts / (volts - threshold))
 
 
@@ -32,10 +33,10 @@ def timed(
 @pytest.mark.parametrize("supply", [("11 V", "12 V", "14 V"), ("5 V", "6 V", "7 V")])
 def test_the_delay_is_near_what_was_asked_for(time: str, supply: tuple[str, str, str]) -> None:
     simulated, closed = timed(time, supply=supply)
-    wanted = float(time.split()[0])
-    assert closed == pytest.approx(wanted, rel=0.02)  # R of E96 makes up for C of E6
-    # V_EB is taken as 0.5 V and leakage is left out when sizing.
-    assert simulated == pytest.approx(wanted, rel=0.1)
+    # The middle of both ends is what was asked for; the nominal unit is a little quicker, as leakage only slows down.
+    assert simulated == pytest.approx(float(time.split()[0]), rel=0.1)
+    # V_EB and the diode at a microampere: 0.43 V and 0.25 V (class); leakage is left out.
+    assert simulated == pytest.approx(closed, rel=0.08)
 
 
 @pytest.mark.parametrize("supply", [("11 V", "12 V", "14 V"), ("22 V", "27 V", "29 V")])
@@ -78,10 +79,64 @@ def test_leakage_beyond_what_the_resistor_gives_keeps_it_from_ever_arriving() ->
     # A 0.01 C V capacitor leaks C/100 s per volt: with R C = 450 s it rests at V/(1 + 4.5), below 0.3 V + 1 V.
     row = choice("long_timer", "timer", time="240 s", capacitor="electrolytic")
     design = made(row, PIEZO)
+    words = doubts(conditions(), (row, PIEZO))["timer"]
+    assert words[0].startswith("arrival: hot, with the leakage of its capacitor, it charges to")
+    assert words[0].endswith("write a shorter time, capacitor selected")
     seen = run(design, on := load_goes(True), changes={("conditions", "leakage"): 1.0})
     assert np.isnan(seconds(seen, on))
     tau = value(design, "timer", "timing_resistor") * value(design, "timer", "timing_capacitor", "F")
     assert 12.0 / (1.0 + 0.01 * tau) < 0.3 * 12.0 + 1.0
+
+
+def test_a_latch_that_a_slow_signal_sets_is_not_reset_by_the_start_of_its_timer() -> None:
+    # It was, 17,700 times a second: the reference jumps, and 4.5 pF of the threshold transistor (11 pF without bias)
+    # took the firing base along. C = 2.5 x 4.5 pF x 0.3 x 14 V / (0.3 x 0.65 V) = 242 pF, next of E6: 330 pF.
+    timer = choice("long_timer", "timer", mode="reset", time="10 s")
+    lamp = (choice("darlington_driver", "driver", load="none"), choice("lamp"))
+    call = choice("contact_no", "call")
+    design = made(choice("entry"), call, choice("debounce"), choice("complementary_latch", "latch"), timer, *lamp)
+    assert value(design, "timer", "base_capacitor_reset_device", "F") == pytest.approx(330e-12)
+    on = passing("latch.out", 5.0, rising=True)
+    again = passing("latch.out", 5.0, rising=True, nth=2)
+    off = passing("latch.out", 5.0, rising=False)
+    fired = maximum(voltage("timer/fire"), Anchor(begins(design)), Anchor(begins(design) + 1.0))
+    seen = run(design, on, again, off, fired)
+    assert np.isnan(seconds(seen, again))
+    assert seconds(seen, off) - seconds(seen, on) == pytest.approx(10.0, rel=0.1)
+    # 0.3 V_BE and what the firing base had before it: nothing.
+    assert seen.value(fired)[0] < 0.3 * 0.65
+
+
+def test_what_a_timer_held_is_not_what_keeps_its_load_on() -> None:
+    # Without a way of its own the charge of 470 uF went through the driver's base, and the coil let go slowly.
+    design = made(CALL, choice("complementary_latch", "latch"), choice("long_timer", mode="reset", time="10 s"), PIEZO)
+    off = passing("latch.out", 5.0, rising=False)
+    seen = run(design, off, left := level(voltage("latch.out"), Anchor(0.1, off)))
+    assert seen.value(left)[0] < 0.3
+
+
+def test_a_suitable_capacitor_is_a_selected_one_where_the_class_leaks_too_much() -> None:
+    # Low drift leaks 0.002 C V at 20 C, 2^(25/30) times that at 45 C: with R C = 1200 s it rests at V / (1 + 4.3).
+    short, long = (made(choice("long_timer", "timer", time=time), PIEZO) for time in ("60 s", "600 s"))
+    assert short.part(short.stage("timer").roles["timing_capacitor"]).leakage is None
+    part = long.part(long.stage("timer").roles["timing_capacitor"])
+    leakage, farads = part.limits("leakage", "A", "specified"), value(long, "timer", "timing_capacitor", "F")
+    volts = part.limits("voltage", "V")
+    assert leakage is not None
+    assert volts is not None
+    assert leakage.max == pytest.approx(0.1 * 0.002 * farads * (volts.typical or 0.0), rel=0.05)
+    assert doubts(conditions(), (choice("long_timer", "timer", time="600 s"), PIEZO)) == {}
+
+
+def test_a_window_that_tolerances_alone_fill_is_told() -> None:
+    row = (choice("long_timer", "timer", time="60 s", window="15 %", capacitor="selected"), PIEZO)
+    (words,) = doubts(conditions(), row)["timer"]
+    assert words.startswith("duration: tolerances and leakage let its time come out at 4")
+    # C 10 % and 5 %, R 1 % are 16 % alone; what it says is enough is.
+    window = words.split("write window ")[1].split(" ")[0]
+    assert 20.0 < float(window) < 45.0
+    enough = (choice("long_timer", "timer", time="60 s", window=f"{int(window) + 1} %", capacitor="selected"), PIEZO)
+    assert doubts(conditions(), enough) == {}
 
 
 def test_an_interval_without_a_start_and_a_reset_without_a_latch_are_refused() -> None:

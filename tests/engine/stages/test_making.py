@@ -11,13 +11,14 @@ from stagebook.engine.circuit.inspection import inspect
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import DesignError
 from stagebook.engine.parts import kinds
+from stagebook.engine.primitives.signals import Anchor, crossing, voltage
 from stagebook.engine.stages import stage_kinds
 from stagebook.engine.stages.kind import Wire
-from stagebook.engine.stages.making import new_design, with_catalogue_stage
+from stagebook.engine.stages.making import doubts, new_design, with_catalogue_stage
 from stagebook.engine.stages.modified import is_modified
 from stagebook.engine.stages.row import Choice
 
-from .made import PIEZO, choice, made, value
+from .made import PIEZO, begins, choice, conditions, made, run, seconds, value
 
 CALL = choice("contact_no", "call")
 FEEDS = {"battery_backup": ("15 V", "15.5 V", "16 V")}
@@ -191,3 +192,40 @@ def test_requirements_name_what_follows_the_stage() -> None:
     assert {requirement.of for requirement in debounced.requirements} == {"S1"}
     wet = (choice("water_front_end"), choice("schmitt_trigger"), choice("debounce"), choice("complementary_latch"))
     assert {requirement.check for requirement in made(*wet, PIEZO).requirements} == {"trip_window", "wet_lead"}
+
+
+def test_a_slow_signal_does_not_start_what_only_an_edge_starts() -> None:
+    for kind in ("monostable", "differentiator"):
+        with pytest.raises(DesignError, match=f"{kind}.* takes only a steep edge.*put a Schmitt trigger between"):
+            made(CALL, choice("debounce"), choice(kind, kind), choice("complementary_latch"), PIEZO)
+    inspect(made(CALL, choice("debounce"), choice("schmitt_trigger"), choice("monostable"), PIEZO))
+
+
+def test_a_fail_safe_relay_tells_of_the_alarm_by_letting_go() -> None:
+    relay = choice("relay_driver", "relay", mode="fail-safe")
+    design = made(CALL, choice("long_timer", "timer", time="10 s"), choice("complementary_latch", "latch"), relay)
+    moments = design.sequences["alarm"].moments
+    assert "silent" not in moments
+    assert moments["sounding"].after == "K1 off"  # type: ignore[union-attr]
+    duration = next(each for each in design.requirements if each.check == "duration")
+    assert (duration.from_, duration.to) == ("begins", "K1 off")
+    seen = run(design, off := crossing(voltage("supply", "relay/low"), 6.0, False, Anchor(0.5)))
+    assert seconds(seen, off) == pytest.approx(begins(design) + 10.0, rel=0.1)
+    # Where a load follows its contact, that tells.
+    loud = made(CALL, choice("complementary_latch", "latch"), relay, choice("sounder"))
+    assert loud.sequences["alarm"].moments["sounding"].after == "LS1 on"  # type: ignore[union-attr]
+
+
+def test_a_short_event_is_not_asked_of_a_row_that_waits() -> None:
+    waits = made(CALL, choice("debounce"), choice("long_timer", time="10 s"), PIEZO)
+    assert {each.check for each in waits.requirements} == {"contact_bounce", "duration", "arrival"}
+    at_once = made(CALL, choice("debounce"), choice("complementary_latch"), PIEZO)
+    assert {each.check for each in at_once.requirements} == {"contact_bounce", "acceptance"}
+
+
+def test_a_relay_that_would_not_pull_in_is_told_before_the_design_is_made() -> None:
+    # 9 V x (234.5 + 45)/254.5 / 0.9 = 11 V, of 11 V less 0.3 V in the driver: 10.7 V x 0.9 x 254.5/279.5 / 12 V = 73 %.
+    (words,) = doubts(conditions(), (CALL, choice("relay_driver", "relay")))["relay"]
+    assert words.startswith("load_voltage: hot, its coil needs 11 V with 10 % to spare, and of 11 V 10.7 V are left")
+    assert "write pick_up 73 %" in words
+    assert doubts(conditions(), (CALL, choice("relay_driver", "relay", pick_up="73 %"))) == {}

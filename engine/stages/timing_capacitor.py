@@ -1,0 +1,146 @@
+"""The capacitor of a long timer: how far its class lets the time stray, and which class is good enough.
+
+Both ends of the time in closed form: T = R C /(1 + g) ln(1/(1 - s (1 + g))) with the threshold s as a share of the rail
+and g = R G_leak (RC charging law with leakage); tolerances of R and C, drift, V_EB from part to part and in heat, and
+the leakage limit of the class when hot. Figures of the classes: from memory.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from ..parts.capacitor import LEAKAGE_DOUBLING, LEAKAGE_REFERENCE
+from ..parts.classes import CLASSES
+from ..parts.physics import REFERENCE
+from ..quantity import read, write
+from .plan import Plan, class_figure
+
+V_FIRES, V_DIODE = 0.43, 0.25  # V of the threshold transistor and its diode where they fire, at 1 uA (class)
+V_T, DIODE_SLOPE = 0.026, 2.0  # kT/q at 25 C in V, and how much flatter that diode is (class)
+SPREAD, PER_KELVIN = 0.06, 2.3e-3  # V from part to part, and by which each falls with a kelvin at 1 uA, from memory
+EMITTER_BLEED = 470e3  # ohm, keeps the emitter at the base while its diode blocks
+DIVIDER = 330e3  # ohm, both resistors of the threshold together
+RESISTOR = 0.01  # tolerance of the timing resistor
+TENTH = 0.1  # of the limit of its class that a selected capacitor leaks at most
+DURATION, ARRIVAL = 0.1, 0.3  # margins that are customarily asked for
+LOW_DRIFT, SELECTED, ELECTROLYTIC, SUITABLE = "low drift", "selected", "electrolytic", "suitable"
+_CLASSES = {LOW_DRIFT: "timing capacitor, low drift", SELECTED: "timing capacitor, low drift"}
+
+
+@dataclass(frozen=True)
+class Timing:
+    """A class of capacitor in its timer: R C in s that puts the asked time in the middle of what comes out, the
+    shortest and the longest time in s, and the largest threshold and the least final voltage as shares of the rail."""
+
+    kind: str
+    tau: float
+    shortest: float
+    longest: float
+    threshold: float
+    final: float
+
+    @property
+    def arrival(self) -> float:
+        """The margin of check 12."""
+        return 1.0 - self.threshold / self.final
+
+    def duration(self, time: float, window: float) -> float:
+        """The margin of check 11."""
+        return min(time * (1.0 + window) - self.longest, self.shortest - time * (1.0 - window)) / (time * window)
+
+
+@dataclass(frozen=True)
+class Threshold:
+    """What a timer waits for: ``share`` of its rail, V_EB at ``current`` A and, ``guarded``, a diode; ``lost`` V of
+    what starts it do not reach its rail."""
+
+    share: float
+    guarded: bool
+    current: float
+    lost: float
+
+    def at(self, plan: Plan, celsius: float, *, largest: bool) -> float:
+        """The share of the rail at which it fires at a temperature, at its least or its largest."""
+        lost = self.lost + (0.0 if plan.drive is None else plan.drive.drop)
+        above, junctions = V_FIRES + V_T * math.log(self.current / 1e-6), 1
+        if self.guarded:
+            # Its bleed resistor draws through the diode too, and lifts the reference.
+            bled = V_FIRES / EMITTER_BLEED
+            above += V_DIODE + DIODE_SLOPE * V_T * math.log((self.current + bled) / 1e-6)
+            above += bled * self.share * (1.0 - self.share) * DIVIDER
+            junctions = 2
+        above -= junctions * PER_KELVIN * (celsius - REFERENCE)
+        rail = plan.rail.min if largest else plan.rail.max
+        return self.share + (above + (SPREAD if largest else -SPREAD)) / (rail - lost)
+
+
+def timing(plan: Plan, kind: str, time: float, wanted: Threshold) -> Timing:
+    """How a class of capacitor times ``time`` s."""
+    name = _CLASSES.get(kind, kind)
+    tolerance = read(str(CLASSES["capacitor"][name].get("tolerance", "10 %")), "%")
+    drift = class_figure("capacitor", name, "drift", "%").high if "drift" in CLASSES["capacitor"][name] else 0.0
+    leak = class_figure("capacitor", name, "leakage_per_cv", "").high * (TENTH if kind == SELECTED else 1.0)
+    low = wanted.at(plan, plan.ambient.max, largest=False)
+    short = (1.0 - tolerance) * (1.0 - drift) * (1.0 - RESISTOR) * math.log(1.0 / (1.0 - low))
+    long = (1.0 + tolerance) * (1.0 + drift) * (1.0 + RESISTOR)
+    slow = [
+        (wanted.at(plan, each, largest=True), leak * 2.0 ** ((each - LEAKAGE_REFERENCE) / LEAKAGE_DOUBLING))
+        for each in (plan.ambient.min, plan.ambient.max)
+    ]
+    # Leakage only makes it longer: the middle of both ends is put where the time is asked for.
+    tau = 0.7 * time / math.log(1.0 / (1.0 - low))
+    longest, final = math.inf, 1.0
+    for _ in range(40):
+        ends = [(share, 1.0 + conductance * (1.0 + RESISTOR) * tau) for share, conductance in slow]
+        final = min(1.0 / grown for _, grown in ends)
+        if any(share * grown >= 1.0 for share, grown in ends):
+            longest = math.inf
+            break
+        longest = max(long / grown * math.log(1.0 / (1.0 - share * grown)) for share, grown in ends)
+        tau = 0.5 * (tau + 2.0 * time / (short + longest))
+    return Timing(kind, tau, tau * short, tau * longest, slow[1][0], final)
+
+
+def chosen(plan: Plan, time: float, window: float, wanted: Threshold) -> Timing:
+    """The class that is asked for; where a suitable one is, the first that keeps the time within its window."""
+    kind = plan.text("capacitor")
+    if kind != SUITABLE:
+        return timing(plan, kind, time, wanted)
+    offered = [timing(plan, each, time, wanted) for each in (LOW_DRIFT, SELECTED)]
+    good = (each for each in offered if each.duration(time, window) >= DURATION and each.arrival >= ARRIVAL)
+    return next(good, offered[-1])
+
+
+def add_timing_capacitor(plan: Plan, farads: float, net: str, back: str, kind: str) -> float:
+    """The capacitor, next higher preferred value; returns it in farad."""
+    value = plan.capacitor(farads, net, back, "timing_capacitor", snap="up", low_drift=kind != ELECTROLYTIC)
+    part = plan.parts[-1]
+    if kind == SELECTED and "plus" in part["pins"]:
+        name = _CLASSES[kind]
+        per_cv, least = (class_figure("capacitor", name, key, unit).high for key, unit in _LEAKAGE)
+        limit = TENTH * max(per_cv * value * read(part["voltage"], "V"), least)
+        part["leakage"] = {"specified": {"max": write(limit, "A", digits=2), "source": "memory"}}
+    return value
+
+
+_LEAKAGE = (("leakage_per_cv", ""), ("leakage_least", "A"))
+
+
+def doubts(plan: Plan, found: Timing, time: float, window: float) -> list[str]:
+    """What will not hold, with the requirement that says so and what to change; nothing where all does."""
+    words = []
+    better = "" if found.kind == SELECTED else f", capacitor {SELECTED}"
+    if found.arrival < ARRIVAL:
+        words.append(
+            f"arrival: hot, with the leakage of its capacitor, it charges to {found.final:.0%} of the rail and must"
+            f" pass {found.threshold:.0%}; write a shorter time{better}"
+        )
+    elif found.duration(time, window) < DURATION:
+        ends = f"{write(found.shortest, 's', digits=3)} to {write(found.longest, 's', digits=3)}"
+        off = max(1.0 - found.shortest / time, found.longest / time - 1.0) / (1.0 - DURATION)
+        words.append(
+            f"duration: tolerances and leakage let its time come out at {ends}; write window {100.0 * off:.0f} %"
+            f"{better}"
+        )
+    return words
