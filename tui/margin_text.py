@@ -10,7 +10,7 @@ from rich.cells import cell_len
 
 from ..engine.results import CheckResult
 from .figures import FigureRow
-from .origin_text import trusted
+from .origin_text import left_out
 from .shown import MARKS, TONES, WORDS, Line, Span, figure, fit, fit_right, line, percent, points, visible
 from .widgets.row_list import Row
 
@@ -123,7 +123,11 @@ def check_lines(row: FigureRow, width: int) -> tuple[Line, ...]:
     else:
         first = f" {where}: worst corner not known yet, required {percent(check.required)}"
     spread = "" if check.spread is None else f", spread {check.spread.passing * 100:.1f} % hold"
-    off = f"by hand {percent(check.hand)} is off: {trusted(check)}" if check.disagrees else ""
+    off = (
+        f"by hand {percent(check.hand)} is off: trust the simulation, left out: {left_out(check)}"
+        if check.disagrees
+        else ""
+    )
     said = "   ".join(filter(None, (off, check.reason, check.extrapolated)))
     first += f"{spread}, sequence {check.sequence}"
     if not row.worst_known:

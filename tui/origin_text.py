@@ -42,7 +42,7 @@ def origin_rows(check: CheckResult, worst_known: bool) -> Rows:
     rows.append(("nominal", f"{percent(check.nominal)} %", ""))
     rows.append(("by hand", *_by_hand(check)))
     if check.disagrees:
-        rows.append(("", trusted(check), "thin"))
+        rows.append(("", f"trust the simulation: the formula leaves out {left_out(check)}", "thin"))
     if check.by_hand:
         rows.append(("", check.by_hand, ""))
     if check.spread is not None:
@@ -74,9 +74,9 @@ def _by_hand(check: CheckResult) -> tuple[str, str]:
     return f"{found} ({worth}, not the verdict; {stated})", ""
 
 
-def trusted(check: CheckResult) -> str:
-    """Which of a simulation and a hand formula that disagree is to be trusted, and why: what the formula leaves out."""
-    return f"trust the simulation, left out: {check.left_out or 'what else there is'}"
+def left_out(check: CheckResult) -> str:
+    """What a hand formula that disagrees leaves out: why the simulation is to be trusted."""
+    return check.left_out or "what else there is"
 
 
 def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
@@ -89,7 +89,7 @@ def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
         rows.append(("here and now", here, "thin"))
     rows.append(("required", f"{percent(found.required.value)} %, {found.required.source}", ""))
     if found.by_hand:
-        rows.append(("hand formula", f"of {found.hand_source}", ""))
+        rows.append(("hand formula", f"source: {found.hand_source}", ""))
     if found.usual_worst:
         rows.append(("usually worst at", found.usual_worst, ""))
     for at, seen in enumerate(found.observed):

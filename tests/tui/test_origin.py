@@ -106,7 +106,7 @@ def test_a_hand_formula_that_disagrees_is_not_hidden() -> None:
     rows = {name: text for name, text, _ in origin_rows(apart, True) if name}
     assert rows["by hand"] == "+10 %: DISAGREES with the simulation beyond its stated accuracy 20 %"
     told = [text for name, text, _ in origin_rows(replace(apart, left_out="the load"), True) if not name]
-    assert told == ["trust the simulation, left out: the load", "R C ln 2"]
+    assert told == ["trust the simulation: the formula leaves out the load", "R C ln 2"]
     near = {name: text for name, text, _ in origin_rows(replace(apart, hand=0.4), True) if name}
     assert near["by hand"] == "+40 % (cross-check, not the verdict; stated accuracy 20 %)"
     bound = {name: text for name, text, _ in origin_rows(replace(apart, accuracy=None), True) if name}

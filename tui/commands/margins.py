@@ -9,7 +9,7 @@ from dataclasses import asdict
 from difflib import get_close_matches
 
 from ...engine.results import CheckResult, MarginSheet, Verdict, explaining_first
-from ..origin_text import trusted
+from ..origin_text import left_out
 from ..shown import MARKS, counted, percent, visible
 from .printing import json_argument, print_json, print_pairs, print_table, print_words
 from .refusal import CommandRefused
@@ -121,7 +121,11 @@ def _meant(text: str, names: Sequence[str]) -> str:
 def _cells(check: CheckResult, spread: bool) -> tuple[str, ...]:
     """One row: figures in percent, then in words what is checked and what happens where it is worst."""
     what = " ".join(filter(None, (f"{check.title},", check.stage, check.part)))
-    off = f"by hand {percent(check.hand)} % is off: {trusted(check)}" if check.disagrees else None
+    off = (
+        f"by hand {percent(check.hand)} % is off: trust the simulation, left out: {left_out(check)}"
+        if check.disagrees
+        else None
+    )
     words = dict.fromkeys(filter(None, (check.outcome, check.reason, off, check.extrapolated)))
     where = f"worst at {check.corner}" if check.corner else "worst"
     passing = (f"{check.spread.passing * 100:.1f}",) if check.spread else ("",)
