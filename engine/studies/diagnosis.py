@@ -54,7 +54,7 @@ def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: 
             found = periods, size, circuit.unknown_name(k)
     begin = f"took too many steps by {write(at, 's', 4)}"
     if steps < MOST_STEPS:
-        begin += f" ({steps} are the most in a circuit of {int(circuit.topology.size[0])} nets)"
+        begin += f" ({steps} are all that its time allows in a circuit of {int(circuit.topology.size[0])} nets)"
     if found is not None:
         periods, _, net = found
         steadily = f", steadily ({len(periods)} periods alike)" if _steady(periods) else ""

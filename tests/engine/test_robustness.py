@@ -73,7 +73,7 @@ def test_a_child_that_dies_or_hangs_costs_its_unit_only() -> None:
 def test_what_is_kept_is_not_run_again(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     asked: list[int] = []
 
-    def quick(seeds: object) -> list[Outcome]:
+    def quick(seeds: object, _: object) -> list[Outcome]:
         new = list(seeds)  # type: ignore[call-overload]
         asked.extend(new)
         return [Outcome(seed, SOLVED) for seed in new]
