@@ -160,12 +160,14 @@ _CHECK_FIELDS = frozenset(f.name for f in fields(CheckResult))
 
 
 def _check(entry: Mapping[str, Any]) -> CheckResult:
-    values = {k: v for k, v in entry.items() if k in _CHECK_FIELDS}
+    values = dict(entry)
+    for later in entry.keys() - _CHECK_FIELDS:
+        del values[later]
     values["verdict"] = Verdict(values["verdict"])
     if values.get("limits") is not None:
         low, high = values["limits"]
         values["limits"] = (low, high)
-    values["setting"] = tuple(map(tuple, values.get("setting", ())))
+    values["setting"] = tuple([(ref, datum, side) for ref, datum, side in values.get("setting", ())])
     if values.get("spread") is not None:
         spread = dict(values["spread"])
         low, high = spread["interval"]
