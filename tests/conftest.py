@@ -9,6 +9,7 @@ import venv
 from pathlib import Path
 
 import pytest
+from hypothesis import settings
 
 from stagebook.tui.solver_cache import choose_cache_folder
 
@@ -16,6 +17,12 @@ TREE = Path(__file__).parents[1]
 FOLDERS = ("engine", "storage", "tui")
 
 choose_cache_folder()
+
+# A red test must be red again tomorrow: by default the same examples each time. New ones are looked for on request,
+# with --hypothesis-profile=search.
+settings.register_profile("repeat", derandomize=True)
+settings.register_profile("search")
+settings.load_profile("repeat")
 
 
 @pytest.fixture(scope="session")

@@ -113,11 +113,12 @@ def exp(y: Numbers) -> Numbers:
     # Pairs of terms, then pairs of pairs: a chain of thirteen would wait for every product.
     r2 = r * r
     r4 = r2 * r2
-    low = fused(r2, fused(r, 1.0 / 6.0, 0.5), 1.0 + r)
+    low = fused(r2, fused(r, 1.0 / 6.0, 0.5), r)
     middle = fused(r2, fused(r, 1.0 / 5040.0, 1.0 / 720.0), fused(r, 1.0 / 120.0, 1.0 / 24.0))
     high = fused(r2, fused(r, 1.0 / 39916800.0, 1.0 / 3628800.0), fused(r, 1.0 / 362880.0, 1.0 / 40320.0))
     top = fused(r, 1.0 / 6227020800.0, 1.0 / 479001600.0)
-    s = fused(r4, fused(r4, fused(r4, top, high), middle), low)
+    # The 1 comes last: what is rounded before it is a third of it at most.
+    s = 1.0 + fused(r4, fused(r4, fused(r4, top, high), middle), low)
     return scaled_by_power(s, shifted)
 
 
