@@ -6,17 +6,22 @@ import shutil
 import subprocess
 import sys
 import venv
+from importlib import import_module
 from pathlib import Path
 
 import pytest
 from hypothesis import settings
 
-from stagebook.tui.solver_cache import choose_cache_folder
+from stagebook.tui.solver_cache import choose_cache_folder, prepare_here, ready
 
 TREE = Path(__file__).parents[1]
 FOLDERS = ("engine", "storage", "tui")
 
 choose_cache_folder()
+# Tests call the laws one by one, which loaded code does not offer: imported before it, they are compiled here.
+import_module("stagebook.engine.kernel.vectors")
+if not ready():
+    prepare_here()
 
 # A red test must be red again tomorrow: by default the same examples each time. New ones are looked for on request,
 # with --hypothesis-profile=search.

@@ -216,6 +216,7 @@ class Computing:
             if stale():
                 return False
             time.sleep(_LOOK_EVERY)
+        self._solver.ready()
         self._is_prepared = True
         post(SolverPreparing(False, _UNPREPARED if running.poll() else ""))
         return not stale()

@@ -1,7 +1,7 @@
 """Where the compiled solver is kept, whether it is there, and the child process that makes it.
 
-Numba reads its cache folder from the environment when it is first imported, so :func:`choose_cache_folder` comes
-before anything that computes. The folder holds machine code that is loaded and run: it is the user's own, mode 0700.
+The folder holds machine code that is loaded and run: it is the user's own, mode 0700. :func:`ready` loads what is there;
+where it comes before anything that computes, the compiler is never imported.
 """
 
 from __future__ import annotations
@@ -23,7 +23,7 @@ from platformdirs import user_cache_path
 
 _KERNEL = Path(__file__).parents[1] / "engine" / "kernel"
 _VARIABLE = "NUMBA_CACHE_DIR"
-_MARK = "complete"
+_CODE = "solver.code"
 
 
 @dataclass(frozen=True, slots=True)
@@ -41,9 +41,9 @@ class CacheFolder:
 def choose_cache_folder() -> CacheFolder:
     """The cache folder of this user, solver and compiler; numba and its children are pointed to it.
 
-    Numba does not notice a change of a function that another file calls, therefore the folder's name is a hash over
-    all sources of the kernel (which imports no other part of the engine), the numba and the Python version. A folder
-    that an earlier call or the parent process chose stays.
+    The folder's name is a hash over all sources of the kernel (which imports no other part of the engine), the numba
+    and the Python version: numba does not notice a change of a function that another file calls. A folder that an
+    earlier call or the parent process chose stays.
     """
     os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     compiler = _compiler()
@@ -75,9 +75,17 @@ def choose_cache_folder() -> CacheFolder:
 
 
 def ready() -> bool:
-    """Whether computing can start at once: the compiled solver is in the cache, or nothing is compiled here."""
+    """Whether computing can start at once: the compiled solver is loaded now, or nothing is compiled here."""
+    from ..engine.kernel import machine_code
+
     folder = choose_cache_folder().path
-    return folder is None or (folder / _MARK).exists()
+    if folder is None or machine_code.loaded():
+        return True
+    try:
+        machine_code.adopt((folder / _CODE).read_bytes())
+    except (OSError, ValueError):
+        return False
+    return True
 
 
 def prepare() -> subprocess.Popen[bytes]:
@@ -96,21 +104,33 @@ def prepare() -> subprocess.Popen[bytes]:
 
 
 def prepare_here() -> None:
-    """Compile the whole solver in this process and mark the cache as complete."""
+    """Compile the whole solver in this process, load it, and keep it in the cache. Raises OSError where it cannot be."""
+    from ..engine.kernel import machine_code
+
     folder = choose_cache_folder().path
-    # Imported here: it loads numba, which must find its folder chosen.
-    from ..engine.kernel import compile_all
+    if folder is None:
+        return
+    # Imported here: it loads numba.
+    from ..engine.kernel.compiling import compiled_code
 
     # Looking for cycles among the millions of objects of a compiler is a sixth of its time, and finds nothing.
     collected = gc.isenabled()
     gc.disable()
     try:
-        compile_all()
+        code = compiled_code()
     finally:
         if collected:
             gc.enable()
-    if folder is not None:
-        (folder / _MARK).touch(mode=0o600)
+    machine_code.adopt(code)
+    # Whole or not at all: another process may look for it at any time.
+    handle, written = tempfile.mkstemp(dir=folder)
+    try:
+        with os.fdopen(handle, "wb") as file:
+            file.write(code)
+        os.replace(written, folder / _CODE)
+    except OSError:
+        Path(written).unlink(missing_ok=True)
+        raise
 
 
 def solver_key(sources: Path, compiler: str) -> str:

@@ -1,4 +1,7 @@
-"""How kernel functions are compiled: by numba where it is installed, otherwise they run as plain Python."""
+"""How kernel functions are compiled: by numba where it is installed, otherwise they run as plain Python.
+
+Where their machine code is loaded already (:mod:`.machine_code`) they are left as they are: nobody calls them.
+"""
 
 from __future__ import annotations
 
@@ -6,16 +9,24 @@ import os
 from collections.abc import Callable
 from typing import Any, TypeVar
 
+from . import machine_code
+
 Function = TypeVar("Function", bound=Callable[..., object])
 
 try:
     if os.environ.get("STAGEBOOK_UNCOMPILED"):
         raise ImportError
-    import numba
+    COMPILED = True
+    HERE = not machine_code.loaded()
+    """Whether functions are compiled in this process."""
+    if HERE:
+        import numba
 
-    jit: Any = numba.njit
+        jit: Any = numba.njit
 except ImportError:
-    COMPILED = False
+    COMPILED = HERE = False
+
+if not HERE:
 
     def compiled(function: Function) -> Function:
         """Leave the function as it is: correct, but some hundred times slower."""
@@ -24,7 +35,6 @@ except ImportError:
     leaf = compiled
 
 else:
-    COMPILED = True
 
     def compiled(function: Function) -> Function:
         """Compile on first use, releasing the interpreter lock; machine code is kept in the user's cache folder."""
@@ -35,7 +45,7 @@ else:
         """Compile a function that allocates nothing and is called by compiled ones only.
 
         It does not count references to the arrays that it is handed, which costs two atomic operations an array and
-        call: two thirds of the time of a small circuit. What calls it keeps its code, so it is not kept on its own.
+        call: two thirds of the time of a small circuit.
         The options are not documented; a numba without them compiles the slower code.
         """
         try:

@@ -6,8 +6,9 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from . import machine_code
 from .assemble import evaluate, linear_matrices
-from .compiled import compiled
+from .compiled import COMPILED, leaf
 from .layout import (
     BRANCH,
     CHANNEL,
@@ -63,16 +64,20 @@ def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) 
         p, x = np.ascontiguousarray(parameters[lanes].T), np.ascontiguousarray(states[lanes].T)
         seen = np.zeros_like(flow)
         stored = []
-        with np.errstate(all="ignore"):
-            for which in range(2):
-                for _ in range(LOOKS):
-                    _look(
-                        top.element, top.group, p, zeros(sources, WIDTH), c, g, steps, which, x, i, q, a, seen, flow,
-                        slope, limited,
-                    )  # fmt: skip
-                    if not np.any(limited):
-                        break
-                stored.append(a[slots, :few].T.copy())
+        for which in range(2):
+            arguments = (
+                top.element, top.group, p, zeros(sources, WIDTH), c, g, steps, which, x, i, q, a, seen, flow, slope,
+                limited,
+            )  # fmt: skip
+            for _ in range(LOOKS):
+                if COMPILED:
+                    machine_code.call("look", arguments)
+                else:
+                    with np.errstate(all="ignore"):
+                        look(*arguments)
+                if not np.any(limited):
+                    break
+            stored.append(a[slots, :few].T.copy())
         here = slice(low, low + few)
         made.current[here], made.charge[here] = i[:, :few].T, q[:, :few].T
         made.capacitance[here, rows, columns] = stored[0]
@@ -80,8 +85,8 @@ def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) 
     return made
 
 
-@compiled
-def _look(
+@leaf
+def look(
     element: Places,
     group: Places,
     p: Floats,

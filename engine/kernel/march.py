@@ -8,8 +8,9 @@ from __future__ import annotations
 
 import numpy as np
 
+from . import machine_code
 from .assemble import evaluate, linear_matrices
-from .compiled import compiled
+from .compiled import COMPILED, leaf
 from .course import begin_lane, keep_states, next_segment, set_sources, set_switches, trace
 from .elimination import factor, substitute, substitute_two
 from .guards import move_guards, next_due, rest_guards, watch_guards
@@ -77,7 +78,7 @@ NOTHING, LOOKED, LEAPT, STAGED, ARRIVED, AGAIN, STARTS, FINISHED = 0, 1, 2, 3, 4
 NOT_ENDED = -1
 
 
-@compiled
+@leaf
 def march_rows(
     top: Topology,
     table: Floats,
@@ -426,5 +427,9 @@ def march(
 ) -> None:
     """Step lanes low .. high-1; stop where ``cancel[0]`` is set."""
     work = work_for(top, table.shape[1], program.source.shape[2], rows)
-    with np.errstate(all="ignore"):
-        march_rows(top, table, starts, program, rows, control, results, work, low, high, cancel)
+    arguments = (top, table, starts, program, rows, control, results, work, low, high, cancel)
+    if COMPILED:
+        machine_code.call("march", arguments)
+    else:
+        with np.errstate(all="ignore"):
+            march_rows(*arguments)

@@ -17,7 +17,7 @@ from numba.core import cgutils
 from numba.core.typing.templates import AbstractTemplate, infer_global, signature
 from numba.extending import intrinsic, lower_builtin, models, register_model
 
-WIDTH = 8
+from .machine_code import WIDTH
 
 _DOUBLE = ir.DoubleType()
 _WORD = ir.IntType(64)

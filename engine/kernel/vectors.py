@@ -10,7 +10,8 @@ from typing import TYPE_CHECKING, Any, TypeAlias
 
 import numpy as np
 
-from .compiled import COMPILED, leaf
+from . import machine_code
+from .compiled import COMPILED, HERE, leaf
 
 if TYPE_CHECKING:
     from .layout import Floats, Ints
@@ -26,7 +27,7 @@ LN2_LOW = 1.90821492927058770002e-10
 SHIFT = 6755399441055744.0  # 1.5 * 2**52: added, it rounds to a whole number and shows it in the last bits
 HALF_ROOT = 0.7071067811865475  # of the mantissa at which a power of two is split off
 
-if COMPILED and not TYPE_CHECKING:
+if HERE and not TYPE_CHECKING:
     from .vector_code import (
         WIDTH,
         add,
@@ -45,7 +46,7 @@ if COMPILED and not TYPE_CHECKING:
     )
 
 else:
-    WIDTH = 1
+    WIDTH = machine_code.WIDTH if COMPILED else 1
 
     def at(x: Floats, k: Any) -> Numbers:
         """Row k of an array (rows, WIDTH)."""

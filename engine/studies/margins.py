@@ -30,7 +30,7 @@ from .lanes import NOMINAL, Setting, conditions_of, lanes_of, random_lanes, sett
 from .mirrored import with_mirrored
 from .spread import spread_of
 from .trial_corners import TrialCorners, part_ends
-from .vertices import sides, worst_conditions
+from .vertices import Vertices, sides, weak, worst_conditions
 from .watch import watch
 
 SAME = 1e-5  # a corner whose margin is less below the nominal one is not worse
@@ -165,18 +165,22 @@ def _corners(
     edges = {name: corner.edge for name, corner in nominal.items() if corner.edge is not None}
     ends = part_ends(circuit, asks, edges, first, range(len(conditions), len(tried)), cancelled)
     trials = TrialCorners(circuit, asks, ends, conditions, single, progress, cancelled)
-    vertices: dict[Setting, int] = {}
-    wanted: dict[str, list[int]] = {}
+    vertices = Vertices(single)
+    tried_out: dict[Setting, list[str]] = {}
     for ask in asks:
         if ask.trial is not None:
             for vertex in trials.worst(ask):
-                wanted.setdefault(ask.trial.key, []).append(vertices.setdefault(vertex, len(vertices)))
+                tried_out.setdefault(vertex, []).append(ask.trial.key)
             continue
         for metric in _metrics(judged[ask.id][0]):
-            hurting = sides(metric[len(conditions) :], single)
+            slope = metric[len(conditions) :]
             for k in worst_conditions(metric[: len(conditions)], conditions):
-                vertices.setdefault(Setting(conditions[k].axes, hurting), len(vertices))
-    order = list(vertices)
+                vertices.add(conditions[k].axes, sides(slope, single), weak(slope, single))
+    order = [*tried_out, *vertices.settings()]
+    wanted: dict[str, list[int]] = {}
+    for lane, keys in enumerate(tried_out.values()):
+        for key in keys:
+            wanted.setdefault(key, []).append(lane)
     second = look(circuit, asks, lanes_of(columns, order), trials=wanted, progress=progress, cancelled=cancelled)
     found: dict[str, Corner] = {}
     for ask in asks:

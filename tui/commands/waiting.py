@@ -17,14 +17,15 @@ _SECONDS_BETWEEN = 0.5
 def prepare_solver(suits: Callable[[], object]) -> None:
     """Make the solver ready, and say so on standard error where that takes long.
 
-    ``suits`` raises what would be refused anyway: it is asked before anybody is made to wait, and after the folder of
-    compiled code is chosen, so that it may load the engine.
+    ``suits`` raises what would be refused anyway: it is asked before anybody is made to wait, and after compiled code
+    is looked for, so that it may load the engine.
     """
     from ..solver_cache import choose_cache_folder, prepare_here, ready
 
     folder = choose_cache_folder()
+    compiled = ready()
     suits()
-    if ready():
+    if compiled:
         if folder.words:
             _say(folder.words)
         return

@@ -1,0 +1,141 @@
+"""Makes the kernel's machine code with numba: one function of the C kind for each entry.
+
+An entry gets one table of whole numbers, see :func:`.machine_code.call`, and hands the arrays on as its function wants
+them.
+"""
+
+# mypy: disable-error-code="no-untyped-call,untyped-decorator"
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any
+
+import numpy as np
+from numba import types, typeof
+from numba.core import cgutils
+from numba.extending import intrinsic
+
+from . import layout
+from .compiled import leaf
+from .elimination import Pattern
+from .linearised import look
+from .machine_code import packed
+from .march import march_rows
+from .vectors import WIDTH
+from .work import work_for
+
+_TABLE = types.CPointer(types.int64)
+
+
+def compiled_code() -> bytes:
+    """Compile all entries, which takes some 20 s."""
+    made = []
+    for name, function, sample in _entries():
+        entry = _entry(function, typeof(sample))
+        entry.compile((_TABLE,))
+        (overload,) = entry.overloads.values()
+        made.append((name, overload.fndesc.llvm_func_name, overload.library._get_compiled_object()))
+    return packed(made)
+
+
+def _entry(function: Callable[..., None], kind: Any) -> Any:
+    unpacked = _unpacker(kind)
+
+    def entry(table):  # type: ignore[no-untyped-def]
+        function(*unpacked(table))
+
+    return leaf(entry)
+
+
+def _unpacker(kind: Any) -> Any:
+    """A compiled function that makes a tuple of type ``kind`` of a table of addresses, shapes and numbers."""
+
+    @intrinsic
+    def unpacked(context, table):  # type: ignore[no-untyped-def]
+        def generate(context, builder, signature, given):  # type: ignore[no-untyped-def]
+            place = 0
+
+            def number():  # type: ignore[no-untyped-def]
+                nonlocal place
+                address = cgutils.gep_inbounds(builder, given[0], place)
+                place += 1
+                return builder.load(address)
+
+            def value(of):  # type: ignore[no-untyped-def]
+                if isinstance(of, types.BaseTuple):
+                    return context.make_tuple(builder, of, [value(one) for one in of])
+                if not isinstance(of, types.Array):
+                    return number()
+                data = context.get_data_type(of.dtype).as_pointer()
+                size = context.get_abi_sizeof(context.get_data_type(of.dtype))
+                address = builder.inttoptr(number(), data)
+                shape = [number() for _ in range(of.ndim)]
+                strides, span = [], context.get_constant(types.intp, size)
+                for length in reversed(shape):
+                    strides.insert(0, span)
+                    span = builder.mul(span, length)
+                array = context.make_array(of)(context, builder)
+                context.populate_array(
+                    array, data=address, shape=shape, strides=strides, itemsize=size, meminfo=None
+                )
+                return array._getvalue()
+
+            return value(kind)
+
+        return kind(_TABLE), generate
+
+    return unpacked
+
+
+def _entries() -> list[tuple[str, Callable[..., None], tuple[Any, ...]]]:
+    """Every entry with its function and arguments such as it gets: those of one conductance."""
+    plan = Pattern(1)
+    plan.couple((0,))
+    lists = plan.plan()
+    row = [0, 1, 0, 0, 0, lists.slot(0, 0), 1, 1, 1, *[0] * 5]
+    top = layout.Topology(
+        layout.ints([1, 1, 2, 1, 0]),
+        layout.places([row], 1, layout.ELEMENT_WIDTH),
+        layout.places([0, *[1] * layout.FAMILIES]),
+        **lists.lists(),
+    )
+    program = layout.Program(
+        np.full((1, 1), 1e-6),
+        layout.ints([1]),
+        np.zeros((1, 1, 1, 2)),
+        np.zeros((1, 1, 3)),
+        layout.ints([]),
+        np.zeros((1, 1, 0, 2)),
+    )
+    rows = layout.Rows(
+        term=layout.places([], 0, 4),
+        factor=np.zeros(0),
+        signal=layout.places([0]),
+        row=layout.ints([], 0, 7),
+        lasting=layout.ints([]),
+        level=np.zeros(0),
+        offset=np.zeros((0, 2)),
+        stop_row=layout.ints([-1]),
+        keep_row=layout.ints([]),
+    )
+    control = layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200, 100_000]))
+    results = layout.Results(
+        np.zeros((1, 0)),
+        np.zeros((1, 0)),
+        np.zeros((1, 0), dtype=np.int64),
+        np.zeros((1, 2), dtype=np.int64),
+        np.zeros(1),
+        np.zeros((1, 4), dtype=np.int64),
+        np.zeros((1, 2)),
+        np.zeros((1, 0, 2)),
+        np.zeros((1, 0)),
+        np.zeros(0),
+        np.zeros((0, 2)),
+        layout.ints([0]),
+    )
+    lane, numbers = np.ones((1, 1)), np.zeros((1, WIDTH))
+    work = work_for(top, 1, 1, rows)
+    cancel = np.zeros(1, dtype=np.uint8)
+    marching = (top, lane, np.zeros((1, 2)), program, rows, control, results, work, 0, 1, cancel)
+    looking = (top.element, top.group, *[numbers] * 5, 0, *[numbers] * 8)
+    return [("march", march_rows, marching), ("look", look, looking)]

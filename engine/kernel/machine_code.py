@@ -1,0 +1,110 @@
+"""Machine code of the kernel: called, and loaded without the compiler that made it.
+
+A process that is handed code (:func:`adopt`) before anything else of the kernel is imported does without numba, whose
+import and dispatch take longer than a small study. Code is one line of JSON, with what it may run on, and then the
+object files that the line tells the lengths of.
+"""
+
+from __future__ import annotations
+
+import ctypes
+import hashlib
+import json
+from collections.abc import Iterable, Iterator
+from typing import Any, NamedTuple
+
+import numpy as np
+
+FORMAT = 1
+WIDTH = 8
+"""Lanes of a row."""
+
+
+class Loaded(NamedTuple):
+    """Functions by name, and what keeps their code in memory."""
+
+    functions: dict[str, Any]
+    keep: tuple[Any, ...]
+
+
+_loaded: Loaded | None = None
+_FUNCTION = ctypes.CFUNCTYPE(ctypes.c_int, ctypes.c_void_p, ctypes.c_void_p, ctypes.c_void_p)
+
+
+def loaded() -> bool:
+    """Whether there is code to call."""
+    return _loaded is not None
+
+
+def processor() -> str:
+    """What code is made for and may not be run without."""
+    from llvmlite import binding
+
+    said = f"{binding.get_process_triple()} {binding.get_host_cpu_name()} {binding.get_host_cpu_features().flatten()}"
+    return hashlib.sha256(said.encode()).hexdigest()
+
+
+def packed(objects: Iterable[tuple[str, str, bytes]]) -> bytes:
+    """Code of (entry, symbol, object file) each, made on this processor."""
+    listed = [(name, symbol, code) for name, symbol, code in objects]
+    rest = b"".join(code for _, _, code in listed)
+    head = {
+        "format": FORMAT,
+        "processor": processor(),
+        "sha256": hashlib.sha256(rest).hexdigest(),
+        "entries": [[name, symbol, len(code)] for name, symbol, code in listed],
+    }
+    return json.dumps(head).encode() + b"\n" + rest
+
+
+def adopt(code: bytes) -> None:
+    """Load code and call it from now on. Raises ValueError where it is damaged or made for another processor."""
+    global _loaded
+    line, _, rest = code.partition(b"\n")
+    head = json.loads(line)
+    if head["format"] != FORMAT or head["processor"] != processor():
+        raise ValueError("the code was made for another processor")
+    if head["sha256"] != hashlib.sha256(rest).hexdigest():
+        raise ValueError("the code is damaged")
+    from llvmlite import binding
+
+    binding.initialize_native_target()
+    binding.initialize_native_asmprinter()
+    functions, keep, begin = {}, [], 0
+    for name, symbol, length in head["entries"]:
+        machine = binding.Target.from_default_triple().create_target_machine()
+        engine = binding.create_mcjit_compiler(binding.parse_assembly(""), machine)
+        engine.add_object_file(binding.ObjectFileRef.from_data(rest[begin : begin + length]))
+        engine.finalize_object()
+        functions[name] = _FUNCTION(engine.get_function_address(symbol))
+        keep.append(engine)
+        begin += length
+    _loaded = Loaded(functions, tuple(keep))
+
+
+def call(name: str, arguments: tuple[Any, ...]) -> None:
+    """Call an entry with arrays, tuples of arrays and whole numbers; the interpreter is free meanwhile."""
+    if _loaded is None:
+        # Nobody had kept any code: it is made for this process alone.
+        from .compiling import compiled_code
+
+        adopt(compiled_code())
+    assert _loaded is not None
+    table = np.fromiter(_flat(arguments), dtype=np.int64)
+    said, fault = ctypes.c_void_p(), ctypes.c_void_p()
+    if _loaded.functions[name](ctypes.addressof(said), ctypes.addressof(fault), table.ctypes.data) != 0:
+        raise RuntimeError(f"the kernel's {name} failed")
+
+
+def _flat(value: Any) -> Iterator[int]:
+    """Address and shape of every array, and every number, in their order: what the entry unpacks."""
+    if isinstance(value, tuple):
+        for one in value:
+            yield from _flat(one)
+    elif isinstance(value, np.ndarray):
+        if not (value.flags.c_contiguous and value.flags.aligned):
+            raise ValueError("an array of the kernel must be contiguous")
+        yield value.ctypes.data
+        yield from value.shape
+    else:
+        yield int(value)
