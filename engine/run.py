@@ -10,6 +10,7 @@ import os
 from collections.abc import Callable, Sequence
 from concurrent.futures import FIRST_COMPLETED, ThreadPoolExecutor, wait
 from dataclasses import dataclass
+from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
@@ -134,6 +135,12 @@ def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Cont
     return Control(rtol, atol, ints(bounds))
 
 
+@cache
+def _pool(workers: int) -> ThreadPoolExecutor:
+    """The threads that all runs share: starting some for each run took longer than a short one."""
+    return ThreadPoolExecutor(workers, "kernel")
+
+
 def run(
     circuit: Circuit,
     lanes: Lanes,
@@ -191,22 +198,21 @@ def run(
             march(*arguments, low, min(low + block, count), cancel)
             progress(min(low + block, count), count)
         return Observed(circuit, asked.places, results, tuple(keep))
-    with ThreadPoolExecutor(workers) as pool:
-        waiting = {
-            pool.submit(march, *arguments, low, min(low + block, count), cancel) for low in range(0, count, block)
-        }
-        blocks = len(waiting)
-        try:
-            while waiting:
-                done, waiting = wait(waiting, timeout=0.05, return_when=FIRST_COMPLETED)
-                for future in done:
-                    future.result()
-                progress(min(count, (blocks - len(waiting)) * block), count)
-                if cancelled():
-                    raise Cancelled("stopped")
-        finally:
-            # Whatever ends the waiting, an interrupt too, ends the work.
-            cancel[0] = 1
-            for future in waiting:
-                future.cancel()
+    waiting = {
+        _pool(workers).submit(march, *arguments, low, min(low + block, count), cancel) for low in range(0, count, block)
+    }
+    blocks = len(waiting)
+    try:
+        while waiting:
+            done, waiting = wait(waiting, timeout=0.05, return_when=FIRST_COMPLETED)
+            for future in done:
+                future.result()
+            progress(min(count, (blocks - len(waiting)) * block), count)
+            if cancelled():
+                raise Cancelled("stopped")
+    finally:
+        # Whatever ends the waiting, an interrupt too, ends the work.
+        cancel[0] = 1
+        for future in waiting:
+            future.cancel()
     return Observed(circuit, asked.places, results, tuple(keep))

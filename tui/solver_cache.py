@@ -1,7 +1,7 @@
 """Where the compiled solver is kept, whether it is there, and the child process that makes it.
 
-The folder holds machine code that is loaded and run: it is the user's own, mode 0700. :func:`ready` loads what is there;
-where it comes before anything that computes, the compiler is never imported.
+The folder holds machine code that is loaded and run: it is the user's own, mode 0700. :func:`ready` loads what is
+there; where it comes before anything that computes, the compiler is never imported.
 """
 
 from __future__ import annotations
@@ -104,7 +104,7 @@ def prepare() -> subprocess.Popen[bytes]:
 
 
 def prepare_here() -> None:
-    """Compile the whole solver in this process, load it, and keep it in the cache. Raises OSError where it cannot be."""
+    """Compile the whole solver in this process, load it and keep it. Raises OSError where it cannot be kept."""
     from ..engine.kernel import machine_code
 
     folder = choose_cache_folder().path

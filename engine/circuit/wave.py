@@ -56,6 +56,10 @@ class Wave:
 
     def pieces(self, starts: Floats, middles: Floats) -> tuple[Floats, Floats]:
         """Value at the start of each segment and slope within it; arrays are (lanes or 1, segments)."""
+        if len(self.times) == 1:
+            value = np.reshape(np.asarray(self.values[0], dtype=float), (-1, 1))
+            shape = np.broadcast_shapes(value.shape, starts.shape)
+            return np.broadcast_to(value, shape), np.zeros(shape)
         times, values = stacked(self.times), stacked(self.values)
         place = np.sum(times[:, None, :] <= middles[:, :, None], axis=2) - 1
         after = np.minimum(place + 1, times.shape[1] - 1)

@@ -69,9 +69,10 @@ def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) 
                 top.element, top.group, p, zeros(sources, WIDTH), c, g, steps, which, x, i, q, a, seen, flow, slope,
                 limited,
             )  # fmt: skip
+            table = machine_code.table_of(arguments)
             for _ in range(LOOKS):
                 if COMPILED:
-                    machine_code.call("look", arguments)
+                    machine_code.call("look", table)
                 else:
                     with np.errstate(all="ignore"):
                         look(*arguments)
@@ -104,6 +105,7 @@ def look(
     slope: Floats,
     limited: Floats,
 ) -> None:
+    """Evaluate WIDTH states with step ``which``; ``limited`` tells where a junction is not yet where it was asked."""
     linear_matrices(element, group, p, c, g)
     away = evaluate(element, group, p, source, c, g, at(steps, which), x, i, q, a, seen, flow, slope)
     put(limited, 0, where(away, 1.0, 0.0))

@@ -10,10 +10,13 @@ from __future__ import annotations
 import ctypes
 import hashlib
 import json
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable
 from typing import Any, NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
+
+Table = NDArray[np.int64]
 
 FORMAT = 1
 WIDTH = 8
@@ -61,10 +64,15 @@ def adopt(code: bytes) -> None:
     """Load code and call it from now on. Raises ValueError where it is damaged or made for another processor."""
     global _loaded
     line, _, rest = code.partition(b"\n")
-    head = json.loads(line)
-    if head["format"] != FORMAT or head["processor"] != processor():
+    try:
+        head = json.loads(line)
+        suits = head["format"] == FORMAT and head["processor"] == processor()
+        whole = head["sha256"] == hashlib.sha256(rest).hexdigest()
+    except (KeyError, TypeError, ValueError) as error:
+        raise ValueError("this is no machine code of the kernel") from error
+    if not suits:
         raise ValueError("the code was made for another processor")
-    if head["sha256"] != hashlib.sha256(rest).hexdigest():
+    if not whole:
         raise ValueError("the code is damaged")
     from llvmlite import binding
 
@@ -82,29 +90,37 @@ def adopt(code: bytes) -> None:
     _loaded = Loaded(functions, tuple(keep))
 
 
-def call(name: str, arguments: tuple[Any, ...]) -> None:
-    """Call an entry with arrays, tuples of arrays and whole numbers; the interpreter is free meanwhile."""
+def call(name: str, table: Table) -> None:
+    """Call an entry with a table of what it takes; the interpreter is free meanwhile."""
     if _loaded is None:
         # Nobody had kept any code: it is made for this process alone.
         from .compiling import compiled_code
 
         adopt(compiled_code())
     assert _loaded is not None
-    table = np.fromiter(_flat(arguments), dtype=np.int64)
     said, fault = ctypes.c_void_p(), ctypes.c_void_p()
     if _loaded.functions[name](ctypes.addressof(said), ctypes.addressof(fault), table.ctypes.data) != 0:
         raise RuntimeError(f"the kernel's {name} failed")
 
 
-def _flat(value: Any) -> Iterator[int]:
-    """Address and shape of every array, and every number, in their order: what the entry unpacks."""
+def table_of(arguments: tuple[Any, ...]) -> Table:
+    """Address and shape of every array and every number, in their order: what an entry takes.
+
+    ``arguments`` are arrays, tuples of arrays and whole numbers. The arrays must stay where they are meanwhile.
+    """
+    numbers: list[int] = []
+    _flatten(arguments, numbers)
+    return np.array(numbers, dtype=np.int64)
+
+
+def _flatten(value: Any, numbers: list[int]) -> None:
     if isinstance(value, tuple):
         for one in value:
-            yield from _flat(one)
+            _flatten(one, numbers)
     elif isinstance(value, np.ndarray):
-        if not (value.flags.c_contiguous and value.flags.aligned):
+        if not value.flags.c_contiguous:
             raise ValueError("an array of the kernel must be contiguous")
-        yield value.ctypes.data
-        yield from value.shape
+        numbers.append(value.__array_interface__["data"][0])
+        numbers.extend(value.shape)
     else:
-        yield int(value)
+        numbers.append(int(value))

@@ -14,6 +14,7 @@ BAND_GAP = 1.206  # V, silicon extrapolated to 0 K (Tsividis, IEEE J. Solid-Stat
 SATURATION_EXPONENT = 3.0  # eta in the same paper
 GAIN_PER_KELVIN = 0.005  # common practice, from memory
 COPPER = 234.5  # K above the temperature at which annealed copper would have no resistance, extrapolated
+_AT_REFERENCE = BOLTZMANN / ELEMENTARY_CHARGE * (REFERENCE + ZERO_CELSIUS)  # V
 LEAKAGE_DOUBLING = 10.0  # K, common practice where no second point is given
 
 
@@ -33,10 +34,8 @@ def saturation_factor(
     (T/T0)^(eta/n) exp(V_G0/(n kT0/q) (1 - T0/T)); with n = 1 it is what V_BE(T) of Tsividis (1980) implies. ``gap`` is
     V_G0 in V, or the barrier of a metal contact, whose eta, ``power``, is 2 (Richardson's law).
     """
-    warm = np.asarray(celsius) + ZERO_CELSIUS
-    reference = REFERENCE + ZERO_CELSIUS
-    ratio = warm / reference
-    exponent = gap / (ideality * thermal_voltage(REFERENCE)) * (1.0 - 1.0 / ratio)
+    ratio = (np.asarray(celsius) + ZERO_CELSIUS) / (REFERENCE + ZERO_CELSIUS)
+    exponent = gap / (ideality * _AT_REFERENCE) * (1.0 - 1.0 / ratio)
     return np.asarray(ratio ** (power / ideality) * np.exp(exponent))
 
 

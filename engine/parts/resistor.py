@@ -9,7 +9,9 @@ from .kind import TEXT, Entry, Kind
 
 if TYPE_CHECKING:
     from ..design.document import Part
+    from ..kernel.layout import Floats
     from ..primitives.builder import Builder
+    from ..primitives.columns import Lanes
 
 TOLERANCE = 0.05  # customary where none is written, from memory
 
@@ -21,9 +23,13 @@ def expand(part: Part, build: Builder) -> None:
         return
     key = build.column(part.ref, "value", *value.limits)
     drift = typical(part, "tempco", "1/K", 0.0)
-    handle = build.conductance(
-        part.pins["a"], part.pins["b"], lambda lanes: 1.0 / (lanes[key] * (1.0 + drift * (lanes.ambient - 25.0)))
-    )
+
+    def conductance(lanes: Lanes) -> Floats:
+        if drift == 0.0:
+            return 1.0 / lanes[key]
+        return 1.0 / (lanes[key] * (1.0 + drift * (lanes.ambient - 25.0)))
+
+    handle = build.conductance(part.pins["a"], part.pins["b"], conductance)
     bench = build.bench(part.ref)
     bench.currents["a"] = handle.current
     bench.power = handle.power

@@ -82,20 +82,21 @@ def tolerances(columns: Sequence[Column]) -> list[Column]:
     return [column for column in columns if column.group is Group.TOLERANCE and column.varies]
 
 
-def _end(column: Column, side: int) -> float:
-    return (column.low, column.nominal, column.high)[side + 1]
-
-
 def lanes_of(columns: Sequence[Column], chosen: Sequence[Setting]) -> Lanes:
     """One lane for every setting."""
-    values = np.repeat(np.array([[c.nominal] for c in columns], dtype=float), len(chosen), axis=1)
-    place = {column.key: n for n, column in enumerate(columns)}
-    gains = [n for n, column in enumerate(columns) if column.group is Group.GAIN]
-    for lane, setting in enumerate(chosen):
-        for key, side in (*setting.axes, *setting.parts):
-            rows = gains if key == GAIN else [place[key]]
-            for row in rows:
-                values[row, lane] = _end(columns[row], side)
+    ends = np.array([[c.low, c.nominal, c.high] for c in columns], dtype=float).reshape(-1, 3)
+    values = np.repeat(ends[:, 1:2], len(chosen), axis=1)
+    places = {column.key: [n] for n, column in enumerate(columns)}
+    places[GAIN] = [n for n, column in enumerate(columns) if column.group is Group.GAIN]
+    moved = [
+        (row, lane, side + 1)
+        for lane, setting in enumerate(chosen)
+        for key, side in (*setting.axes, *setting.parts)
+        for row in places[key]
+    ]
+    if moved:
+        rows, lanes, sides = np.array(moved).T
+        values[rows, lanes] = ends[rows, sides]
     return Lanes(columns, values)
 
 

@@ -23,15 +23,12 @@ def sides(slope: Floats, single: Sequence[Setting]) -> Parts:
 
     An end at which the event did not happen (NaN) is the end that hurts.
     """
-    found: list[tuple[tuple[str, str], int]] = []
-    for k in range(0, len(single), 2):
-        low, high = slope[k], slope[k + 1]
-        ((key, _),) = single[k].parts
-        if np.isnan(low) or np.isnan(high):
-            found.append((key, -1 if np.isnan(low) else 1))
-        elif abs(high - low) > 1e-9 * max(1.0, abs(low), abs(high)):
-            found.append((key, -1 if low < high else 1))
-    return tuple(found)
+    low, high = slope[::2], slope[1::2]
+    absent = np.isnan(low) | np.isnan(high)
+    with np.errstate(invalid="ignore"):
+        matters = absent | (np.abs(high - low) > 1e-9 * np.maximum(1.0, np.maximum(np.abs(low), np.abs(high))))
+        lower = np.where(absent, np.isnan(low), low < high)
+    return tuple((single[2 * int(k)].parts[0][0], -1 if lower[k] else 1) for k in np.flatnonzero(matters))
 
 
 def weak(slope: Floats, single: Sequence[Setting]) -> frozenset[tuple[str, str]]:

@@ -1,4 +1,4 @@
-"""Where the compiled solver is kept. The rules are our own (numba's cache knows neither callees nor owners)."""
+"""Where the compiled solver is kept. The rules are our own."""
 
 from __future__ import annotations
 
@@ -9,11 +9,18 @@ import stat
 import subprocess
 import sys
 from pathlib import Path
+from typing import NamedTuple
 
 import pytest
 
+from stagebook.engine.kernel import machine_code
 from stagebook.tui import solver_cache
 from stagebook.tui.solver_cache import choose_cache_folder, ready, solver_key
+
+pytest.importorskip("numba")
+FOLDER = choose_cache_folder().path
+assert FOLDER is not None
+COMPILED = (FOLDER / "solver.code").read_bytes()
 
 
 @pytest.fixture
@@ -102,13 +109,14 @@ def test_nothing_is_to_be_prepared_where_nothing_is_compiled(cache: Path, monkey
     assert ready()
 
 
-def test_ready_only_after_everything_was_compiled(cache: Path) -> None:
+def test_ready_only_after_everything_was_compiled(cache: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(machine_code, "_loaded", None)
     assert not ready()
     folder = choose_cache_folder().path
     assert folder is not None
-    (folder / "half.nbi").touch()
+    (folder / "solver.code").write_bytes(COMPILED[:-1])
     assert not ready()
-    (folder / "complete").touch()
+    (folder / "solver.code").write_bytes(COMPILED)
     assert ready()
 
 
@@ -118,59 +126,89 @@ def test_choosing_does_not_load_the_compiler(cache: Path) -> None:
 
 
 USER = """
-import json, os
+import json, sys
 from pathlib import Path
 
-from stagebook.tui.solver_cache import choose_cache_folder
+from stagebook.tui import solver_cache
 
-folder = choose_cache_folder()
-from stagebook.engine.kernel.compiled import compiled
+folder = solver_cache.choose_cache_folder()
+found = solver_cache.ready()
+if not found:
+    from stagebook.engine.kernel import compiling
 
+    compiling.compiled_code = lambda: Path(sys.argv[1]).read_bytes()  # the tests cannot wait for the compiler again
+    solver_cache.prepare_here()
 
-@compiled
-def doubled(x):
-    return 2.0 * x
+from stagebook.engine.design.document import Design
+from stagebook.engine.studies.waves import waves
 
-
-number = doubled(21.0)
-kept = len(list(folder.path.rglob("*.nbc")))
-hits = sum(doubled.stats.cache_hits.values())
-print(json.dumps([number, str(folder.path), folder.lasting, folder.words, kept, hits]))
+design = Design.load(Path(sys.argv[2]).read_bytes())
+last = float(waves(design, "alarm", ["n"]).values[-1, 0])
+kept = [path.name for path in folder.path.iterdir()]
+print(json.dumps([last, str(folder.path), folder.lasting, folder.words, kept, found, "numba" in sys.modules]))
 """
+DIVIDER = {
+    "stagebook": 1,
+    "name": "divider",
+    "conditions": {"supply": {"nominal": "9 V"}},
+    "stages": [
+        {
+            "name": "divider",
+            "parts": [
+                {"ref": "R1", "kind": "resistor", "pins": {"a": "supply", "b": "n"}, "value": "1k"},
+                {"ref": "R2", "kind": "resistor", "pins": {"a": "n", "b": "0V"}, "value": "2k"},
+            ],
+        }
+    ],
+    "sequences": {"alarm": {"ends": "1 s"}},
+}
 
 
-def compiling(tmp_path: Path, home: str) -> tuple[float, Path, bool, str | None, int, int]:
-    """What a process with this cache home makes of a compiled function: see the last line of ``USER``."""
-    pytest.importorskip("numba")
-    script = tmp_path / "user.py"
+class Found(NamedTuple):
+    last: float
+    path: str
+    lasting: bool
+    words: str | None
+    kept: list[str]
+    ready: bool
+    compiler: bool
+
+
+def using(tmp_path: Path, home: str) -> Found:
+    """What a process with this cache home computes, and with what: see the last line of ``USER``."""
+    script, compiled, design = (tmp_path / name for name in ("user.py", "compiled.code", "divider.json"))
     script.write_text(USER)
+    compiled.write_bytes(COMPILED)
+    design.write_text(json.dumps(DIVIDER))
     environment = {**os.environ, "XDG_CACHE_HOME": home, "NUMBA_CACHE_DIR": "elsewhere"}
     environment.pop("STAGEBOOK_UNCOMPILED", None)
     done = subprocess.run(
-        [sys.executable, "-P", str(script)], env=environment, capture_output=True, text=True, check=False
-    )
+        [sys.executable, "-P", str(script), str(compiled), str(design)],
+        env=environment, capture_output=True, text=True, check=False,
+    )  # fmt: skip
     assert done.returncode == 0, done.stderr
-    number, path, lasting, words, kept, hits = json.loads(done.stdout)
-    return number, Path(path), lasting, words, kept, hits
+    return Found(*json.loads(done.stdout))
 
 
 def test_a_fresh_folder_is_filled_and_read_the_next_time(cache: Path, tmp_path: Path) -> None:
-    first, second = (compiling(tmp_path, str(cache.parents[1])) for _ in range(2))
-    assert first[0] == second[0] == 42.0
-    assert first[1].parent == second[1].parent == cache
-    assert first[2:4] == (True, None)
-    assert (first[4], first[5]) == (1, 0)
-    assert (second[4], second[5]) == (1, 1)
+    first, second = (using(tmp_path, str(cache.parents[1])) for _ in range(2))
+    for found in (first, second):
+        assert found.last == pytest.approx(6.0, rel=1e-3)  # V, what two thirds of the supply are
+        assert Path(found.path).parent == cache
+        assert (found.lasting, found.words) == (True, None)
+        assert found.kept == ["solver.code"]
+    assert (first.ready, second.ready) == (False, True)
+    assert not second.compiler
 
 
 @pytest.mark.skipif(not Path("/proc/self").exists(), reason="no folder here that nobody may write, root included")
 def test_a_read_only_folder_is_done_without(tmp_path: Path) -> None:
     # Nobody makes a folder in /proc: the permissions of a folder of our own would not stop root.
-    number, path, lasting, words, kept, _ = compiling(tmp_path, "/proc")
-    assert number == 42.0
-    assert not lasting
-    assert words is not None
-    assert "/proc/stagebook" in words
-    assert "cannot be written" in words
-    assert kept == 1
-    assert not path.exists()  # private, and gone with its process
+    found = using(tmp_path, "/proc")
+    assert found.last == pytest.approx(6.0, rel=1e-3)
+    assert not found.lasting
+    assert found.words is not None
+    assert "/proc/stagebook" in found.words
+    assert "cannot be written" in found.words
+    assert found.kept == ["solver.code"]
+    assert not Path(found.path).exists()  # private, and gone with its process

@@ -15,15 +15,8 @@ from stagebook.engine.results import MarginSheet
 from stagebook.engine.studies.margins import study
 from stagebook.storage import Note, Store
 from stagebook.tui import app
-from stagebook.tui.solver_cache import prepare_here
 
 Said = tuple[int, str, str]
-
-
-@pytest.fixture(scope="session", autouse=True)
-def _solver_is_ready() -> None:
-    """No test waits for the compiler in the middle, and no command has to say that it does."""
-    prepare_here()
 
 
 @pytest.fixture

@@ -1,0 +1,49 @@
+"""What is taken as machine code of the kernel, and what it is handed. The rules are our own."""
+
+from __future__ import annotations
+
+import json
+
+import numpy as np
+import pytest
+
+from stagebook.engine.kernel import machine_code
+from stagebook.engine.kernel.machine_code import adopt, packed, table_of
+
+
+@pytest.fixture(autouse=True)
+def _unloaded(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(machine_code, "_loaded", None)
+
+
+def altered(**head: object) -> bytes:
+    line, _, rest = packed([]).partition(b"\n")
+    return json.dumps({**json.loads(line), **head}).encode() + b"\n" + rest
+
+
+@pytest.mark.parametrize(
+    ("code", "words"),
+    [
+        (b"", "no machine code"),
+        (b"\xff\xfe\n\x00", "no machine code"),
+        (b"[]\n", "no machine code"),
+        (altered(processor="another"), "another processor"),
+        (altered(format=0), "another processor"),
+        (altered() + b"x", "damaged"),
+    ],
+)
+def test_only_whole_code_for_this_processor_is_taken(code: bytes, words: str) -> None:
+    with pytest.raises(ValueError, match=words):
+        adopt(code)
+    assert not machine_code.loaded()
+
+
+def test_a_table_holds_addresses_shapes_and_numbers_in_their_order() -> None:
+    numbers, places = np.zeros((2, 3)), np.zeros(4, dtype=np.uint32)
+    found = table_of(((numbers, (places,)), 7))
+    assert list(found) == [numbers.ctypes.data, 2, 3, places.ctypes.data, 4, 7]
+
+
+def test_an_array_with_gaps_is_refused() -> None:
+    with pytest.raises(ValueError, match="contiguous"):
+        table_of((np.zeros((4, 4))[:, ::2],))
