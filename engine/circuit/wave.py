@@ -76,6 +76,8 @@ class Wave:
 
 def stacked(points: Sequence[Number]) -> Floats:
     """Points as (lanes or 1, points)."""
+    if not any(isinstance(point, np.ndarray) for point in points):
+        return np.array([points], dtype=float)
     table = np.empty((max(np.size(point) for point in points), len(points)))
     for k, point in enumerate(points):
         table[:, k] = point
