@@ -47,7 +47,7 @@ class Drawn:
             for name, value in conditions_of(lanes, lane).items()
             if name in UNITS and not isinstance(value, str)
         )
-        said = f"a random unit is worse than all corners that are tried: {100.0 * margin:+.1f} % at {at}"
+        said = f"a random unit comes to {100.0 * margin:+.1f} %, worse than all corners that are tried, at {at}"
         return said if check.reason is None else f"{check.reason}; {said}"
 
 

@@ -182,7 +182,8 @@ def test_a_random_unit_that_is_worse_than_all_corners_is_told() -> None:
     assert plain.reason is None
     assert (drawn.margin, drawn.verdict) == (plain.margin, plain.verdict)
     told = re.fullmatch(
-        r"a random unit is worse than all corners that are tried: ([+-][\d.]+) % at supply ([\d.]+) V, ambient 20 C",
+        r"a random unit comes to ([+-][\d.]+) %, worse than all corners that are tried, at supply ([\d.]+) V, "
+        r"ambient 20 C",
         str(drawn.reason),
     )
     assert told is not None, drawn.reason
