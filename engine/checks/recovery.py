@@ -38,7 +38,7 @@ class Recovery:
         for stage in view.design.stages:
             if stage.roles.keys() >= ROLES and view.design.conditions.supply is not None:
                 resistor, capacitor, discharge = (
-                    view.design.part(stage.roles[f"{role}"])
+                    view.design.part(stage.roles[role])
                     for role in ("timing_resistor", "timing_capacitor", "discharge_resistor")
                 )
                 in_series = not rails(view) & set(capacitor.pins.values())
