@@ -17,9 +17,12 @@ from .view import View
 def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every timing resistor with its capacitor."""
     for stage in view.design.stages:
-        if {"timing_resistor", "timing_capacitor"} <= stage.roles.keys():
+        if {"timing_resistor", "timing_capacitor"} <= view.roles_of(stage).keys():
             yield _ask(
-                check, view, stage, *(view.design.part(stage.roles[f"timing_{p}"]) for p in ("resistor", "capacitor"))
+                check,
+                view,
+                stage,
+                *(view.design.part(view.roles_of(stage)[f"timing_{p}"]) for p in ("resistor", "capacitor")),
             )
 
 

@@ -79,7 +79,7 @@ class Latch:
 def latches(view: View) -> Iterator[Latch]:
     """Every stage in which both transistors of a latch are named."""
     for stage in view.design.stages:
-        if {"latch_npn", "latch_pnp"} <= stage.roles.keys():
-            npn, pnp = (view.design.part(stage.roles[role]) for role in ("latch_npn", "latch_pnp"))
+        if {"latch_npn", "latch_pnp"} <= view.roles_of(stage).keys():
+            npn, pnp = (view.design.part(view.roles_of(stage)[role]) for role in ("latch_npn", "latch_pnp"))
             if view.bench(npn.ref).base_voltage is not None and view.bench(pnp.ref).base_voltage is not None:
                 yield Latch(view, stage, npn, pnp)

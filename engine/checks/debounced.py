@@ -34,10 +34,10 @@ class Debounced:
     def find(cls, view: View, sequence: str) -> Debounced | None:
         """That of a design, None where its roles are not filled or nothing tells when it acts."""
         for stage in view.design.stages:
-            if {"debounce_resistor", "debounce_capacitor"} <= stage.roles.keys():
+            if {"debounce_resistor", "debounce_capacitor"} <= view.roles_of(stage).keys():
                 load = view.load(stage)
                 resistor, capacitor = (
-                    view.design.part(stage.roles[f"debounce_{p}"]) for p in ("resistor", "capacitor")
+                    view.design.part(view.roles_of(stage)[f"debounce_{p}"]) for p in ("resistor", "capacitor")
                 )
                 shared = set(resistor.pins.values()) & set(capacitor.pins.values())
                 if load is None or len(shared) != 1:

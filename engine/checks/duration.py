@@ -86,7 +86,9 @@ class Timing:
     """The timing resistor and capacitor of a stage, for t = tau ln(V_inf / (V_inf - V_th)) with leakage."""
 
     def __init__(self, view: View, stage: Stage, first: Anchor, last: Anchor) -> None:
-        resistor, capacitor = (view.design.part(stage.roles[r]) for r in ("timing_resistor", "timing_capacitor"))
+        resistor, capacitor = (
+            view.design.part(view.roles_of(stage)[r]) for r in ("timing_resistor", "timing_capacitor")
+        )
         self.resistor, self.capacitor = resistor.ref, capacitor.ref
         self.leakage = view.bench(capacitor.ref).leak_conductance
         shared = set(resistor.pins.values()) & set(capacitor.pins.values())
@@ -100,7 +102,7 @@ class Timing:
     def find(cls, view: View, stage: Stage, first: Anchor, last: Anchor) -> Timing | None:
         """The timing pair of a stage, else the only one of the design; None where the roles are not filled or there
         are several."""
-        pairs = [s for s in view.design.stages if {"timing_resistor", "timing_capacitor"} <= s.roles.keys()]
+        pairs = [s for s in view.design.stages if {"timing_resistor", "timing_capacitor"} <= view.roles_of(s).keys()]
         own = [pair for pair in pairs if pair is stage] or pairs
         return cls(view, own[0], first, last) if len(own) == 1 else None
 

@@ -12,7 +12,7 @@ from ..primitives.builder import RETURN
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, Row, level, voltage
 from .complementary_latch import Latch
-from .latch import holds_down_to
+from .latch import holding_by_hand, holds_down_to
 from .seen import Seen
 from .view import View
 
@@ -35,7 +35,7 @@ class Emptied:
         """What the contact empties from ``at`` on; None where there is no latch, or no such capacitor."""
         if latch is None or view.design.conditions.supply is None:
             return None
-        if latch.view.base_emitter_resistor(latch.stage, "latch_pnp") is None:
+        if holding_by_hand(latch, view.circuit.nominal()) is None:
             return None
         for net in contact.pins.values():
             (other,) = set(contact.pins.values()) - {net}

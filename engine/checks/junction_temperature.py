@@ -93,7 +93,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
 
 def _conducts(view: View, stage: Stage, part: Part) -> Callable[[Seen], Floats] | None:
     """The loss of a driver whose load is on: I V_CE(sat), or I^2 R_on; None of any other part."""
-    roles = [role for role, ref in stage.roles.items() if ref == part.ref and role.startswith("driver")]
+    roles = [role for role, ref in view.roles_of(stage).items() if ref == part.ref and role.startswith("driver")]
     load = view.role(stage, roles[0].replace("driver", "load")) if roles else None
     draw = None if load is None else view.bench(load.ref).draw
     drop, ohms = view.datum(part, "v_ce_sat", "V"), view.datum(part, "resistance_on", "ohm")
@@ -177,7 +177,7 @@ class _Heat:
         for name, sequence in view.design.sequences.items():
             moments = [view.anchor(moment, name) for moment in sequence.moments]
             steady[name] = tuple(level(power, at) for at in moments or [Anchor(0.5 * view.ends(name))])
-        roles = [role for role, ref in stage.roles.items() if ref == part.ref and role.startswith("driver")]
+        roles = [role for role, ref in view.roles_of(stage).items() if ref == part.ref and role.startswith("driver")]
         load = view.role(stage, roles[0].replace("driver", "load")) if roles else None
         on = None
         if load is not None and view.bench(load.ref).on is not None:

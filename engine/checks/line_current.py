@@ -122,7 +122,7 @@ def _wetting_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     current = view.bench(part.ref).currents.get("a")
     if needs is None or current is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"minimum_current of {part.ref}")
-    pull = next((view.design.part(stage.roles[role]) for role in PULLS if role in stage.roles), None)
+    pull = next((view.design.part(view.roles_of(stage)[role]) for role in PULLS if role in view.roles_of(stage)), None)
     rows = tuple(level(current, Anchor(at)) for at in _closed_until(view, part, sequence))
 
     def judge(seen: Seen) -> Judged:

@@ -130,7 +130,7 @@ def _timer(view: View, requirement: Requirement, key: str, since: Anchor, end: A
     if name is None:
         return None
     stage = next((stage for stage in view.design.stages if stage.name == name), None)
-    if stage is None or not {"timing_resistor", "timing_capacitor"} <= stage.roles.keys():
+    if stage is None or not {"timing_resistor", "timing_capacitor"} <= view.roles_of(stage).keys():
         raise CircuitError(
             f"requirement order, field {key}_timer: '{name}' is no stage with the roles timing_resistor and"
             " timing_capacitor; name such a stage or leave the field out"

@@ -36,9 +36,9 @@ class Recovery:
     def find(cls, view: View, at: Anchor) -> Recovery | None:
         """That of a design whose rest begins ``at``; None where the roles are not filled in one stage."""
         for stage in view.design.stages:
-            if stage.roles.keys() >= ROLES and view.design.conditions.supply is not None:
+            if view.roles_of(stage).keys() >= ROLES and view.design.conditions.supply is not None:
                 resistor, capacitor, discharge = (
-                    view.design.part(stage.roles[role])
+                    view.design.part(view.roles_of(stage)[role])
                     for role in ("timing_resistor", "timing_capacitor", "discharge_resistor")
                 )
                 in_series = not rails(view) & set(capacitor.pins.values())

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+import re
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -22,6 +23,9 @@ from .factors import COMMON_PRACTICE, FACTORS
 from .ledger import Ledger
 
 MAIN = "alarm"
+VALUED = re.compile("resistor|capacitor|^pull_(up|down)|^end_of_line")
+"""Roles of parts whose value is read."""
+RESISTIVE = ("resistor", "thermistor", "light_resistor", "probe")
 CHATTER = 2.0  # times the longest bounce of a contact: how long what it switches may go to and fro
 
 
@@ -37,18 +41,38 @@ class View:
         """What can be observed at a part."""
         return self.circuit.benches.get(ref, Bench())
 
+    def roles_of(self, stage: Stage) -> Mapping[str, str]:
+        """The roles of a stage. One that a part cannot be, a resistor that is a contact, is as if not filled."""
+        return self._fitting[stage.name]
+
+    @cached_property
+    def _fitting(self) -> Mapping[str, Mapping[str, str]]:
+        columns = {column.key for column in self.circuit.columns}
+        kinds = {part.ref: part.kind for part in self.design.parts}
+
+        def fits(role: str, ref: str) -> bool:
+            if not VALUED.search(role):
+                return True
+            expected = ("capacitor",) if "capacitor" in role else RESISTIVE
+            return (ref, "value") in columns and kinds[ref] in expected
+
+        return {
+            stage.name: {role: ref for role, ref in stage.roles.items() if fits(role, ref)}
+            for stage in self.design.stages
+        }
+
     def with_role(self, *roles: str) -> Iterator[tuple[Stage, str, Part]]:
         """Stage, role and part for every filled role of these names (``driver`` also finds ``driver_2``)."""
         for stage in self.design.stages:
-            for role, ref in stage.roles.items():
+            for role, ref in self.roles_of(stage).items():
                 if any(role == name or role.startswith(f"{name}_") for name in roles):
                     yield stage, role, self.design.part(ref)
 
     def role(self, stage: Stage, name: str) -> Part | None:
         """The part that fills a role: in the stage itself, else in the first stage that fills it."""
         for place in (stage, *self.design.stages):
-            if name in place.roles:
-                return self.design.part(place.roles[name])
+            if name in self.roles_of(place):
+                return self.design.part(self.roles_of(place)[name])
         return None
 
     def stage_named(self, subject: str) -> str:
@@ -85,8 +109,8 @@ class View:
     def base_emitter_resistor(self, stage: Stage, role: str) -> Part | None:
         """The resistor across the base-emitter junction of the transistor in this role, where its role is filled."""
         for name in (f"base_emitter_resistor_{role.removeprefix('latch_')}", "base_emitter_resistor"):
-            if name in stage.roles:
-                return self.design.part(stage.roles[name])
+            if name in self.roles_of(stage):
+                return self.design.part(self.roles_of(stage)[name])
         return None
 
     def parts_of(self, *kinds: str) -> Iterator[tuple[Stage, Part]]:

@@ -477,6 +477,9 @@ BEYOND: tuple[tuple[str, str, Callable[[], Design], str | None], ...] = (
         "losses between the moments",
     ),
     ("duration", "LS1", lambda: unroled(timer("2 uA"), "timing_resistor"), "neither its own stage nor just one"),
+    # A role that a part cannot be is as if not filled.
+    ("duration", "LS1", lambda: changed(timer("2 uA"), {"timing_resistor": "LS1"}), "neither its own stage nor just"),
+    ("latch_hold", "Q1", lambda: changed(latch(), {"base_emitter_resistor_pnp": "S1"}), "the roles of both"),
     ("capacitor_reverse", "C1", lambda: test_capacitor_stress.rippled(), "G1 is a source beside the supply"),
     ("capacitor_ripple", "C1", lambda: test_capacitor_stress.rippled(), "nothing in the role load"),
     ("repeatability", "LS1", lambda: test_rearm.twice(6.0, "20 s"), "no stage fills timing_resistor"),
