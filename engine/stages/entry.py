@@ -138,11 +138,11 @@ KIND = StageKind(
         RETURN_PORT,
     ),
     settings=(
-        Setting("load_current", "A", "", "what all loads draw together at most; empty: those of the row"),
+        Setting("load_current", "A", "", "all loads together at most; empty: those of the row"),
         Setting("fuse", WORD, "slow", "in series with the supply", ("slow", "none")),
         Setting("surge", "V", "", "highest voltage of a surge of 1 ms; empty: no clamp"),
         Setting("diode", WORD, "silicon", "against reversal: a rectifier, or one that drops less", (*_DIODES, "none")),
-        Setting("small_current", "A", "", "what all small stages draw together; empty: those of the row"),
+        Setting("small_current", "A", "", "all small stages together; empty: those of the row"),
         Setting("drop", "V", "0.3 V", "what the filter may lose at that current"),
         Setting("slew", "V/s", "5 V/ms", "how fast the filtered rail may rise when the supply is snapped on"),
     ),

@@ -5,7 +5,7 @@ from __future__ import annotations
 from functools import partial
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Intake, Made, Place, Sense, Setting, StageKind
-from .loads import LOAD_SETTINGS, add_load, load_requirements, starved
+from .loads import LOAD_SETTINGS, add_load, doubtful, load_requirements
 from .plan import RETURN, Plan
 
 
@@ -18,7 +18,7 @@ def _make(plan: Plan, load: str) -> Made:
         plus, minus = plan.port("in"), RETURN
     add_load(plan, load, plus, minus)
     lost = 0.0 if plan.drive is None else plan.drive.drop
-    return Made(requirements=load_requirements(plan), doubts=starved(plan, lost))
+    return Made(requirements=load_requirements(plan), doubts=doubtful(plan, lost))
 
 
 def _kind(name: str, title: str, current: str, level: str, words: str) -> StageKind:

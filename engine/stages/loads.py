@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 from ..quantity import write
 from .kind import WORD, Json, Setting
 from .plan import Plan
@@ -15,6 +17,7 @@ LOAD_SETTINGS = (
     Setting("heard", "dB", "", "what is needed at the distance; empty: not asked for"),
     Setting("distance", "m", "1 m", "at which it must be heard"),
 )
+LOUDNESS = 0.3  # margin, in parts of 10 dB, of a sound that is customarily asked for
 VOLTAGE = 0.1  # margin of a load's voltage that is customarily asked for
 TYPICAL = 0.8  # of the largest current, from memory
 SURGE = {"sounder": 2.0, "piezo": 1.2}
@@ -33,8 +36,28 @@ def drawn(plan: Plan) -> float:
     return plan.above_zero("current") * plan.supply.max / plan.supply.nominal
 
 
-def starved(plan: Plan, lost: float) -> tuple[str, ...]:
-    """The doubt that a load does not get what it needs, where whatever switches it loses ``lost`` V."""
+def doubtful(plan: Plan, lost: float) -> tuple[str, ...]:
+    """What will not hold of a load that loses ``lost`` V in whatever switches it: its voltage, how loud it is."""
+    return _starved(plan, lost) + _quiet(plan, lost)
+
+
+def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
+    left = (plan.fed - lost) / plan.supply.nominal
+    if not plan.text("heard") or left <= 0.0:
+        return ()
+    # It is as much quieter as its voltage is lower, and as it is further away.
+    there = plan.number("sound_level") + 20.0 * math.log10(left / plan.above_zero("distance"))
+    missing = plan.number("heard") + 10.0 * LOUDNESS - there
+    if missing <= 0.0:
+        return ()
+    louder = math.ceil(plan.number("sound_level") + missing)
+    return (
+        f"sound_level: at the lowest supply {there:.3g} dB arrive at {plan.text('distance')}, less than the"
+        f" {plan.text('heard')} asked for and 3 dB to spare; write sound_level {louder:g} dB or a shorter distance",
+    )
+
+
+def _starved(plan: Plan, lost: float) -> tuple[str, ...]:
     left, needed = plan.fed - lost, works_from(plan) / (1.0 - VOLTAGE)
     if left >= needed:
         return ()

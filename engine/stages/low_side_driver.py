@@ -7,7 +7,7 @@ from functools import partial
 from ..quantity import write
 from .heat import cooled
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, carried, drawn, load_requirements, peak, starved, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, doubtful, drawn, load_requirements, peak, switched
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan, class_figure
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
@@ -36,9 +36,11 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
     current = switched(plan)
     if kind == "npn" and peak(plan, current) > DRIVER_CURRENT:
-        inrush = write(peak(plan, current), "A")
+        inrush, most = (write(each, "A") for each in (peak(plan, current), DRIVER_CURRENT))
         raise plan.refused(
-            "current", f"an inrush of {inrush} is more than 0.5 A transistors bear; take a Darlington driver"
+            "current",
+            f"an inrush of {inrush} is more than the {most} that 0.5 A transistors are used for; take a Darlington"
+            " driver",
         )
     if ohms < 1.0:
         raise plan.refused(
@@ -64,7 +66,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     return Made(
         output=Drive(Sense.LOW_SIDE, drop=lost),
         requirements=load_requirements(plan),
-        doubts=(*doubts, *(starved(plan, lost) if own else ())),
+        doubts=(*doubts, *(doubtful(plan, lost) if own else ())),
     )
 
 

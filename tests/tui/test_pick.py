@@ -36,6 +36,11 @@ async def test_letters_narrow_the_list_and_enter_takes_what_is_left(app: Stagebo
     assert chosen == ["lamp"]
 
 
+async def test_the_hand_goes_to_the_first_that_is_found(app: StagebookApp) -> None:
+    # After "l" it stands on the LC filter, which "la" does not leave; "r" finds the word in all, the relay's first.
+    assert (await picked(app, "r", "enter"))[1] == ["relay"]
+
+
 async def test_a_letter_less_and_escape_bring_the_rows_back(app: StagebookApp) -> None:
     shown, chosen = await picked(app, "x", "backspace", "y", "escape", "escape")
     assert shown[0] == []

@@ -90,7 +90,8 @@ FLOOD = Demo(
                 change="C4 1n added from the supply to the base of Q4",
                 prediction="Immune in every corner; duration and hold do not move.",
                 result="Immune in every corner; every required margin holds.",
-                next="Build three units, measure the duration cold and hot.",
+                next="Build three units, measure the duration cold and hot. Not judged here: water that takes a minute"
+                " to rise gives C2 no edge, it stays silent; 10M from the collector of Q3 to the base of Q1 would snap.",
             ),
             (("add C4 1n across R13", _add_pnp_capacitor),),
             parent=4,

@@ -109,7 +109,8 @@ class Pick(ModalScreen[str | None]):
         heading = [Span(self._title, "strong")]
         if self._typed is not None:
             heading.append(Span(f"   find: {self._typed}" + ("" if found else "   no row holds that"), "strong"))
-        self.query_one(RowList).show(found if wanted else self._choices, heading=tuple(heading))
+        first = found[0].key if wanted and found else None
+        self.query_one(RowList).show(found if wanted else self._choices, tuple(heading), first)
         self._about()
 
     def on_key(self, event: events.Key) -> None:

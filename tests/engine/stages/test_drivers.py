@@ -5,8 +5,9 @@ from __future__ import annotations
 import pytest
 
 from stagebook.engine.errors import DesignError
+from stagebook.engine.stages.making import doubts
 
-from .made import at, begins, choice, made, run, value
+from .made import at, begins, choice, conditions, made, run, value
 
 CALL = choice("contact_no", "call", held="2 s")
 
@@ -64,5 +65,15 @@ def test_a_base_that_would_starve_is_refused() -> None:
         DesignError, match=r"stage driver, setting current: its base current of .* take a Darlington driver"
     ):
         made(choice("light_front_end"), choice("low_side_driver", "driver", current="150 mA"))
-    with pytest.raises(DesignError, match=r"stage driver, setting current: an inrush of 1\.4 A is more than 0\.5 A"):
+    with pytest.raises(DesignError, match=r"setting current: an inrush of 1\.4 A is more than the 400 mA that"):
         made(CALL, choice("low_side_driver", "driver", current="600 mA"))
+
+
+def test_a_sounder_that_is_too_far_away_is_told() -> None:
+    # 95 dB + 20 log10((11 V - 0.3 V)/12 V) - 20 log10 5 = 80 dB (free-field law) for 85 dB and 3 to spare: 103 dB.
+    driver = choice("low_side_driver", "driver", heard="85 dB", distance="5 m")
+    (words,) = doubts(conditions(), (CALL, driver))["driver"]
+    assert words.startswith("sound_level: at the lowest supply 80 dB arrive at 5 m")
+    assert "write sound_level 103 dB" in words
+    louder = choice("low_side_driver", "driver", heard="85 dB", distance="5 m", sound_level="103 dB")
+    assert doubts(conditions(), (CALL, louder)) == {}
