@@ -91,7 +91,7 @@ FLOOD = Demo(
                 prediction="Immune in every corner; duration and hold do not move.",
                 result="Immune in every corner; every required margin holds.",
                 next="Build three units, measure the duration cold and hot. Not judged here: water that takes a minute"
-                " to rise gives C2 no edge, it stays silent; 10M from the collector of Q3 to the base of Q1 would snap.",
+                " to rise gives C2 no edge, it stays silent; 10M from the collector of Q3 to the base of Q1 would do.",
             ),
             (("add C4 1n across R13", _add_pnp_capacitor),),
             parent=4,
