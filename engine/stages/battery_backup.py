@@ -3,14 +3,27 @@
 from __future__ import annotations
 
 from ..parts.battery import CURVES
-from .kind import RETURN_PORT, WORD, Made, Place, Port, Setting, StageKind, Wire
-from .plan import RETURN, Plan
+from ..quantity import write
+from .kind import RETURN_PORT, WORD, Json, Made, Place, Port, Setting, StageKind, Wire
+from .plan import RETURN, Plan, class_figure
 
 CELLS = {"lead-acid 12 V": ("lead-acid 7 Ah", 1, 13.6), "lead-acid 24 V": ("lead-acid 7 Ah", 2, 27.2)}
 """Class, batteries in series and float voltage in V (2.27 V a cell, from memory)."""
 FOR_EVER = {"max": "70 mA", "source": "memory"}
 """What a battery of 7 Ah bears without end: C/100."""
+_RESISTANCES = ("resistance", "aged_resistance", "cold_resistance")
 V_SUPPLY_DIODE, V_BATTERY_DIODE, V_TRICKLE_DIODE = 0.85, 0.45, 0.65
+
+
+def _battery(generic: str, count: int) -> Json:
+    """The fields of ``count`` batteries of a class in series, as one part: between two of them is no net of its own."""
+    fields: Json = {"class": generic, "charge_limits": {"current": FOR_EVER}}
+    if count > 1:
+        rows = [[write(share, "%"), write(count * volts, "V")] for share, volts in CURVES[generic]]
+        ohms = {key: class_figure("battery", generic, key, "ohm").typical for key in _RESISTANCES}
+        entries = {key: {"typical": write(count * each, "ohm"), "source": "memory"} for key, each in ohms.items()}
+        fields |= {"voltage": rows, "resistance": entries.pop("resistance"), "data": entries}
+    return fields
 
 
 def _make(plan: Plan) -> Made:
@@ -26,17 +39,7 @@ def _make(plan: Plan) -> Made:
     plan.diode(plus, rail, "battery_diode", kind="schottky", name="1 A Schottky")
     plan.resistor(room / trickle, feed, charge, "charge_resistor", snap="up")
     plan.diode(charge, plus, "charge_diode")
-    below = RETURN
-    for number in range(count, 0, -1):
-        above = plus if number == 1 else plan.net(f"cell_{number}")
-        plan.part(
-            "BT",
-            "battery",
-            {"plus": above, "minus": below},
-            "standby_battery" if number == 1 else f"standby_battery_{number}",
-            **{"class": generic, "charge_limits": {"current": FOR_EVER}},
-        )
-        below = above
+    plan.part("BT", "battery", {"plus": plus, "minus": RETURN}, "standby_battery", **_battery(generic, count))
     low = min(plan.supply.min - V_SUPPLY_DIODE, count * CURVES[generic][1][1] - V_BATTERY_DIODE)
     lost = {
         "events": [

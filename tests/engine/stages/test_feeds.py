@@ -141,3 +141,14 @@ def test_settling_takes_five_time_constants() -> None:
     assert begins(design) >= 5.0 * tau
     seen = run(design, late := at("entry.quiet", 5.0 * tau), end := at("entry.quiet", 0.999 * begins(design)))
     assert seen.value(late)[0] / seen.value(end)[0] == pytest.approx(-math.expm1(-5.0), abs=0.02)
+
+
+def test_two_batteries_in_series_are_one_part_of_twice_the_figures() -> None:
+    # A net between two batteries has neither conductance nor capacitance, which the solver wants of every net.
+    design = made(choice("battery_backup", battery="lead-acid 24 V"), CALL, PIEZO, supply=("29 V", "30 V", "31 V"))
+    part = design.part("BT1")
+    assert part.entry("voltage")[0] == ("0 %", "23.2 V")  # type: ignore[index]
+    assert part.limits("resistance", "ohm").typical == pytest.approx(0.06)  # type: ignore[union-attr]
+    seen = run(design, rail := at("backup.rail", 0.9))
+    # The higher of supply and battery: 30 V less the rectifier at next to nothing.
+    assert seen.value(rail)[0] == pytest.approx(29.5, abs=0.3)
