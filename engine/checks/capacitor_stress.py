@@ -12,7 +12,7 @@ from ..primitives.signals import Anchor, Signal, integral, maximum, minimum, vol
 from .check import Ask, Check, Judged, ratio, unknown
 from .peak_collector_emitter import LIFTED
 from .seen import Seen
-from .top_voltage import beside, top_voltage
+from .top_voltage import beside, beyond_rails, top_voltage
 from .view import View
 
 REVERSE = 1.0  # V that a polarised capacitor bears in reverse, common practice, from memory
@@ -72,7 +72,7 @@ def _reverse_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     def judge(seen: Seen) -> Judged:
         reverse = np.max([-seen.value(lowest, name) for name in sequences], axis=0)
         volts = top_voltage(view, seen, sequences)
-        hand = None if volts is None else 1.0 - volts * (not tied) / allowed
+        hand = None if volts is None else 1.0 - (beyond_rails(view, seen) if tied else volts) / allowed
         capability = np.full(seen.lanes.count, allowed)
         return ratio(np.maximum(0.0, reverse), capability, hand=hand, apart=beside(view))
 

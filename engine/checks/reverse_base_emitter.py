@@ -11,7 +11,7 @@ from ..primitives.signals import maximum
 from .check import Ask, Check, Judged, ratio, unknown
 from .seen import Seen
 from .stepped_base import stepped
-from .top_voltage import beside, top_voltage
+from .top_voltage import beside, beyond_rails, top_voltage
 from .view import View, forward_base_voltage
 
 BIPOLAR = ("npn", "pnp", "darlington_npn", "darlington_pnp")
@@ -37,7 +37,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     def judge(seen: Seen) -> Judged:
         peaks = np.max([seen.value(reverse, sequence) for sequence in sequences], axis=0)
         volts = top_voltage(view, seen, sequences)
-        hand = None if volts is None else 1.0 - volts * may_step / allowed
+        hand = None if volts is None else 1.0 - (volts if may_step else beyond_rails(view, seen)) / allowed
         capability = np.full(seen.lanes.count, allowed)
         return ratio(np.maximum(0.0, peaks), capability, hand=hand, apart=beside(view))
 

@@ -21,7 +21,7 @@ from stagebook.engine.results import CheckResult
 from stagebook.engine.studies.evaluate import observe
 from stagebook.engine.studies.margins import study
 
-from ..circuits import Json, capacitor, mosfet, resistor, transistor, two
+from ..circuits import Json, capacitor, mosfet, resistor, steps, transistor, two
 from . import (
     test_base_overdrive,
     test_brown_out,
@@ -168,6 +168,16 @@ def reversed_capacitor(tied: bool) -> Design:
     )
 
 
+def generated() -> Design:
+    """A generator that goes to -0.6 V takes a capacitor with it, whose minus is at 0V."""
+    return design(
+        steps("G1", "drive", "0V", (0.0, 5.0), (0.2, 5.0), (0.3, -0.6), (1.0, -0.6)),
+        exact(resistor("R1", "drive", "n", "1k")),
+        test_capacitor_stress.polarised(),
+        events=(),
+    )
+
+
 def rippled() -> Design:
     """A load of 0.1 A, on and off every 2 ms, fed from 2200 uF behind 5 ohm, which takes nearly all of it."""
     moves = [{"at": f"{2 + 2 * k} ms", "event": "close" if k % 2 == 0 else "open", "part": "S1"} for k in range(148)]
@@ -297,6 +307,7 @@ CASES: tuple[tuple[str, str, Callable[[], Design], float], ...] = (
     ),
     ("capacitor_reverse", "C1", lambda: reversed_capacitor(False), 0.001),
     ("capacitor_reverse", "C1", lambda: reversed_capacitor(True), 0.000),
+    ("capacitor_reverse", "C1", generated, 0.001),
     ("capacitor_ripple", "C1", rippled, 0.025),
     ("rearm", "LS1", rested, 0.015),
     ("repeatability", "LS1", lambda: changed(test_rearm.twice(2.0, "20 s"), RECOVERY), 0.001),
@@ -447,6 +458,11 @@ def told_surge() -> Design:
     return Design.load(document)
 
 
+def unsupplied() -> Design:
+    """The ripple of a generator, in a design that says nothing of a supply."""
+    return changed(test_capacitor_stress.rippled(), conditions={"ambient": "20 C"})
+
+
 def drained_line() -> Design:
     document = test_line_pulse.filtered().dump()
     document["stages"][0]["parts"][0]["value"] = "470R"
@@ -480,7 +496,7 @@ BEYOND: tuple[tuple[str, str, Callable[[], Design], str | None], ...] = (
     # A role that a part cannot be is as if not filled.
     ("duration", "LS1", lambda: changed(timer("2 uA"), {"timing_resistor": "LS1"}), "neither its own stage nor just"),
     ("latch_hold", "Q1", lambda: changed(latch(), {"base_emitter_resistor_pnp": "S1"}), "the roles of both"),
-    ("capacitor_reverse", "C1", lambda: test_capacitor_stress.rippled(), "G1 is a source beside the supply"),
+    ("capacitor_reverse", "C1", unsupplied, "the conditions name no supply"),
     ("capacitor_ripple", "C1", lambda: test_capacitor_stress.rippled(), "nothing in the role load"),
     ("repeatability", "LS1", lambda: test_rearm.twice(6.0, "20 s"), "no stage fills timing_resistor"),
     ("order", "C1", test_order.pair, "the requirement names no first_timer"),
