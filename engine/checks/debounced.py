@@ -63,7 +63,8 @@ class Debounced:
 
     def _share(self, seen: Seen, sequence: str) -> Floats:
         """At which share of what it comes to the net made something act; NaN above :data:`NEAR`."""
-        share = seen.value(self.acted, sequence) / seen.value(self.final, sequence)
+        final = seen.value(self.final, sequence)
+        share = seen.value(self.acted, sequence) / np.where(final > 0.0, final, np.nan)
         return np.where((share > 0.0) & (share < NEAR), share, np.nan)
 
     def accepts(self, seen: Seen, sequence: str, bounce: float) -> Floats:
