@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -24,7 +25,7 @@ from ..primitives.builder import (
     constant,
 )
 from ..primitives.columns import AMBIENT, LEAKAGE_STATE, SOURCE_RESISTANCE, SUPPLY, Column, Group, Lanes
-from ..primitives.lane_table import lane_table
+from ..primitives.lane_table import LanePlan, lane_plan
 from ..quantity import read
 from .injection import add_injectors, injected
 from .inspection import inspect
@@ -83,7 +84,11 @@ class Circuit:
 
     def table(self, lanes: Lanes) -> Floats:
         """Law parameters of all primitives, (lanes, parameters)."""
-        return lane_table(self.builder, lanes)
+        return self._plan.table(lanes)
+
+    @cached_property
+    def _plan(self) -> LanePlan:
+        return lane_plan(self.builder)
 
 
 def build(design: Design, inject: Sequence[str] = ()) -> Circuit:

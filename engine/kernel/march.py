@@ -44,6 +44,7 @@ from .work import (
     BEGAN,
     CARRY,
     ERROR,
+    GREW,
     GROWTH,
     LAST,
     LEFT,
@@ -68,6 +69,7 @@ FIRST = 1e-10  # s, the first step after it
 SMALLEST = 1e-16  # s
 SNAP = 0.2  # V, a step whose end was expected further away is taken again, shorter, unless it is shorter than
 SNAPPED = 1e-9  # s
+MOST_GREW = 4.0  # an error below a hundredth of the allowed one says little about the next
 TINY = 1e-12  # s, moves that lie no further apart are one
 GLANCES = 12  # looks at the start until junctions, limited in each, have their charges at any sensible voltage
 
@@ -256,6 +258,11 @@ def march_rows(
                         s0, sg, s1, value, time, status, listed, listed_until, best, best_at,
                     )  # fmt: skip
                     keep_states(keep_row, status, x, begin + length, w, lane, kept, kept_at)
+                    # Predictive control: where steps must get shorter and shorter, the next is not as long as this one's
+                    # error alone would have it (Gustafsson, ACM Trans. Math. Softw. 20 (1994) 496).
+                    if clock[LAST, w] > 0.0:
+                        grow = min(grow, grow * grow / clock[GREW, w] * length / clock[LAST, w])
+                    clock[GREW, w] = min(clock[GROWTH, w], MOST_GREW)
                     clock[LAST, w] = length
                     clock[NOW, w] = clock[STOP, w] if length == clock[LEFT, w] else clock[NOW, w] + length
                     wanted = max(length * min(3.0, grow), JUMP)

@@ -32,7 +32,8 @@ ROUND, MOST = 5, 6  # iterations of this solve so far, and how many it may take
 LIMITED, ERROR, GROWTH = 7, 8, 9
 NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14, 15, 16, 17, 18
 BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
-CLOCK = 21
+GREW = 21  # growth that the error of the step before allowed
+CLOCK = 22
 
 
 class Work(NamedTuple):

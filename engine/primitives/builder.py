@@ -18,9 +18,17 @@ RETURN = "0V"
 SUPPLY_NET = "supply"
 
 
-def constant(value: float) -> Law:
+@dataclass(frozen=True, slots=True)
+class Constant:
     """A law that gives the same value in every lane."""
-    return lambda lanes: value
+
+    value: float
+
+    def __call__(self, lanes: Lanes) -> float:
+        return self.value
+
+
+constant = Constant
 
 
 def inverse(key: tuple[str, str]) -> Law:

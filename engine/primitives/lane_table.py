@@ -9,7 +9,7 @@ import numpy as np
 
 from ..kernel import layout
 from ..kernel.layout import Floats
-from .builder import Builder, Law, Laws, constant
+from .builder import Builder, Constant, Law, Laws
 from .columns import Lanes
 
 DEFAULTS = {"potential": 0.75, "grading": 0.5, "breakdown_slope": 0.05, "breakdown_current": 1e-3}
@@ -47,32 +47,48 @@ WARM = {
 }
 
 
-class _Filled:
-    """A lane table that is filled from the left."""
+class LanePlan:
+    """Where each law goes in a row, laid out from the left; what is the same in every lane is written down once."""
 
-    def __init__(self, lanes: Lanes, width: int) -> None:
-        self.lanes = lanes
-        self.table = layout.zeros(lanes.count, width)
-        self.place = 0
-        self.junctions: list[int] = []
+    def __init__(self) -> None:
+        self._row: list[float] = []
+        self._laws: list[tuple[int, Law]] = []
+        self._junctions: list[int] = []
 
-    def law(self, law: Law) -> None:
-        self.table[:, self.place] = law(self.lanes)
-        self.place += 1
+    def law(self, law: Law | float) -> None:
+        """Add one parameter."""
+        self._row.append(0.0)
+        self._set(len(self._row) - 1, law)
 
     def laws(self, laws: Laws, places: Mapping[str, np.uint32], width: int, prefix: str = "") -> None:
-        """Those that are named in ``places``, and 0 or a default for one that is not given."""
+        """Add those that are named in ``places``, and 0 or a default for one that is not given."""
+        begin = len(self._row)
+        self._row += [0.0] * width
         for name, place in places.items():
-            law = laws.get(prefix + name)
+            law = laws.get(prefix + name, DEFAULTS.get(name))
             if law is not None:
-                self.table[:, self.place + place] = law(self.lanes)
-            elif name in DEFAULTS:
-                self.table[:, self.place + place] = DEFAULTS[name]
-        self.place += width
+                self._set(begin + int(place), law)
 
     def junction(self, laws: Laws, prefix: str = "") -> None:
-        self.junctions.append(self.place)
+        """Add the parameters of a junction."""
+        self._junctions.append(len(self._row))
         self.laws(laws, JUNCTION, layout.JUNCTION_WIDTH, prefix)
+
+    def _set(self, place: int, law: Law | float) -> None:
+        if isinstance(law, Constant):
+            self._row[place] = law.value
+        elif callable(law):
+            self._laws.append((place, law))
+        else:
+            self._row[place] = law
+
+    def table(self, lanes: Lanes) -> Floats:
+        """Parameters of all laws, (lanes, parameters)."""
+        table = np.repeat(np.array([self._row]), lanes.count, axis=0)
+        for place, law in self._laws:
+            table[:, place] = law(lanes)
+        derive_junctions(table, self._junctions)
+        return table
 
 
 def derive_junctions(table: Floats, places: list[int]) -> None:
@@ -102,39 +118,33 @@ def derive_junctions(table: Floats, places: list[int]) -> None:
 
 def junction_parameters(laws: Laws, lanes: Lanes) -> Floats:
     """Parameters of one junction, (lanes, JUNCTION_WIDTH)."""
-    filled = _Filled(lanes, layout.JUNCTION_WIDTH)
-    filled.junction(laws)
-    derive_junctions(filled.table, filled.junctions)
-    return filled.table
+    plan = LanePlan()
+    plan.junction(laws)
+    return plan.table(lanes)
 
 
-def lane_table(made: Builder, lanes: Lanes) -> Floats:
-    """Law parameters of all primitives in the order of their families, (lanes, parameters)."""
-    moved: list[Law | float] = []
-    for guard in made.guards.values():
-        moved += [guard.on, guard.off, guard.on_delay, guard.off_delay]
-    for each in made.operated:
-        moved += [each.closed, each.opened, each.delay, each.bounce_for, float(each.bounce_times)]
-    width = len(made.conductances) + len(made.capacitances) + 2 * len(made.branches) + len(moved)
-    width += layout.JUNCTION_WIDTH * len(made.junctions) + layout.TRANSPORT_WIDTH * len(made.transports)
-    width += layout.CHANNEL_WIDTH * len(made.channels) + layout.WARM_WIDTH * len(made.warms)
-    filled = _Filled(lanes, width)
+def lane_plan(made: Builder) -> LanePlan:
+    """The parameters of all primitives in the order of their families."""
+    plan = LanePlan()
     for *_, law in (*made.conductances, *made.capacitances):
-        filled.law(law)
+        plan.law(law)
     for *_, inductance, resistance, _ in made.branches:
-        filled.law(inductance)
-        filled.law(resistance)
+        plan.law(inductance)
+        plan.law(resistance)
     for *_, laws in made.junctions:
-        filled.junction(laws)
+        plan.junction(laws)
     for *_, laws in made.transports:
-        filled.laws(laws, TRANSPORT, int(layout.T_EMITTER_JUNCTION))
-        filled.junction(laws, "emitter_")
-        filled.junction(laws, "collector_")
+        plan.laws(laws, TRANSPORT, int(layout.T_EMITTER_JUNCTION))
+        plan.junction(laws, "emitter_")
+        plan.junction(laws, "collector_")
     for *_, laws in made.channels:
-        filled.laws(laws, CHANNEL, layout.CHANNEL_WIDTH)
+        plan.laws(laws, CHANNEL, layout.CHANNEL_WIDTH)
     for *_, laws in made.warms:
-        filled.laws(laws, WARM, layout.WARM_WIDTH)
-    for entry in moved:
-        filled.law(entry if callable(entry) else constant(entry))
-    derive_junctions(filled.table, filled.junctions)
-    return filled.table
+        plan.laws(laws, WARM, layout.WARM_WIDTH)
+    for guard in made.guards.values():
+        for entry in (guard.on, guard.off, guard.on_delay, guard.off_delay):
+            plan.law(entry)
+    for each in made.operated:
+        for entry in (each.closed, each.opened, each.delay, each.bounce_for, float(each.bounce_times)):
+            plan.law(entry)
+    return plan
