@@ -258,8 +258,8 @@ def march_rows(
                         s0, sg, s1, value, time, status, listed, listed_until, best, best_at,
                     )  # fmt: skip
                     keep_states(keep_row, status, x, begin + length, w, lane, kept, kept_at)
-                    # Predictive control: where steps must get shorter and shorter, the next is not as long as this one's
-                    # error alone would have it (Gustafsson, ACM Trans. Math. Softw. 20 (1994) 496).
+                    # Predictive control: where steps must get shorter and shorter, the next is not as long as the
+                    # error of this one alone would have it (Gustafsson, ACM Trans. Math. Softw. 20 (1994) 496).
                     if clock[LAST, w] > 0.0:
                         grow = min(grow, grow * grow / clock[GREW, w] * length / clock[LAST, w])
                     clock[GREW, w] = min(clock[GROWTH, w], MOST_GREW)

@@ -25,6 +25,7 @@ class Constant:
     value: float
 
     def __call__(self, lanes: Lanes) -> float:
+        """The value of all lanes."""
         return self.value
 
 

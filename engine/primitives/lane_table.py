@@ -142,9 +142,9 @@ def lane_plan(made: Builder) -> LanePlan:
     for *_, laws in made.warms:
         plan.laws(laws, WARM, layout.WARM_WIDTH)
     for guard in made.guards.values():
-        for entry in (guard.on, guard.off, guard.on_delay, guard.off_delay):
-            plan.law(entry)
+        for law in (guard.on, guard.off, guard.on_delay, guard.off_delay):
+            plan.law(law)
     for each in made.operated:
-        for entry in (each.closed, each.opened, each.delay, each.bounce_for, float(each.bounce_times)):
-            plan.law(entry)
+        for moved in (each.closed, each.opened, each.delay, each.bounce_for, float(each.bounce_times)):
+            plan.law(moved)
     return plan
