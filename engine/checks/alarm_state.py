@@ -21,6 +21,7 @@ from .view import View
 TOLD_BY = "the roles latch_npn and latch_pnp, or a load with operating_minimum"
 """What is missing where nothing tells whether there is an alarm."""
 HOLDS = 20e-6  # s that a load must be on: what is shorter is a spike (from memory)
+WAIT = "wait of the trial for what it looks for"
 SPIKES = 3  # times that a load may come on before it does for good
 LOOKS = (0.1, 1.0)  # shares of the time to settle at which a latch is looked at: a timed one may let go again
 
@@ -102,8 +103,9 @@ def settling(view: View, states: Sequence[AlarmState], sequence: str, usual: flo
     """How long a trial waits for an alarm, s: ``usual`` for a latch, which tells at once; for a load as long as the
     sequence itself gives it after its first event, for there may be a delay before it."""
     if all(state.latch is not None for state in states):
-        return usual
-    return max(usual, view.ends(sequence) - _first_event(view, sequence))
+        return view.customary(WAIT, usual, "s")
+    waits = max(usual, view.ends(sequence) - _first_event(view, sequence))
+    return view.noted(WAIT, waits, "s", f"what sequence {sequence} leaves after its first event")
 
 
 def _first_event(view: View, sequence: str) -> float:

@@ -20,7 +20,7 @@ from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor
 from ..quantity import read
 from ..run import Observed
-from .alarm_state import TOLD_BY, AlarmState, alarm_states
+from .alarm_state import TOLD_BY, WAIT, AlarmState, alarm_states
 from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
 from .fed_latch import HOLDS_ON, NOT_FED, Fed
 from .seen import Seen
@@ -88,7 +88,7 @@ def _ask(
     to = view.noted("dip to", read(dip.to, "V"), "V", f"sequence {sequence}")
     during = view.noted("length of the dip", read(dip.for_, "s"), "s", f"sequence {sequence}")
     edge_time = min(DEFAULT_EDGE if dip.edge is None else read(dip.edge, "s"), during * SHORTEST)
-    settle = view.extra(requirement, "settle", "s") or SETTLE
+    settle = view.extra(requirement, "settle", "s") or view.customary(WAIT, SETTLE, "s")
     knobs = (SHALLOW, 1.0) if deeper else (SHORTEST * during, LONGEST * during)
     over = BEFORE + (during if deeper else knobs[1]) + edge_time
     first, last = Anchor(0.5 * BEFORE), Anchor(over + settle)

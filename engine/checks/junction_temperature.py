@@ -59,6 +59,8 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         rated = view.datum(part, "power", "W")
         if rated is None:
             return unknown(check, stage.name, part.ref, sequence, required, f"thermal_resistance of {part.ref}")
+    if resistance is None:
+        view.customary("ambient at which a power is rated", RATED_AT, "degC")
     kelvin = resistance.high if resistance is not None else (limit - RATED_AT) / rated.low if rated is not None else 0.0
     conducts = _conducts(view, stage, part)
 

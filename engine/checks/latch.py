@@ -15,6 +15,7 @@ from ..kernel.layout import Floats
 from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, level, minimum
 from ..run import Observed
+from .alarm_state import WAIT
 from .check import Ask, Check, Judged, Mask, ratio
 from .complementary_latch import Latch, latches
 from .seen import Seen
@@ -42,7 +43,9 @@ def hold_trial_of(latch: Latch) -> Trial:
     with the voltages at the latch and of the supply, all at the last supply at which it holds."""
     view = latch.view
     requirement = view.requirement("latch_hold", latch.npn.ref, latch.pnp.ref, latch.stage.name)
-    return _hold_trial(latch, view.sequence(requirement), view.extra(requirement, "settle", "s") or SETTLE)
+    return _hold_trial(
+        latch, view.sequence(requirement), view.extra(requirement, "settle", "s") or view.customary(WAIT, SETTLE, "s")
+    )
 
 
 def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:

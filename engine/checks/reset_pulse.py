@@ -17,7 +17,7 @@ from ..kernel.layout import Floats
 from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor
 from ..run import Observed
-from .alarm_state import TOLD_BY, alarm_states
+from .alarm_state import TOLD_BY, WAIT, alarm_states
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .contact_events import contacts, states
 from .emptied import Emptied
@@ -49,7 +49,7 @@ def _ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
     shortest = view.limit(requirement, "min", "s")
     if shortest <= 0.0:
         raise CircuitError(f"requirement reset_pulse of {part.ref}, min: {requirement.min} cannot be; write a time")
-    settle = view.extra(requirement, "settle", "s") or SETTLE
+    settle = view.extra(requirement, "settle", "s") or view.customary(WAIT, SETTLE, "s")
     over = (1.0 + 1e-3) * LONGEST * shortest
     active, rest = states(view, sequence, part)
     start = latched(view, stage, sequence)
