@@ -31,6 +31,8 @@ from .evaluate import judge, look
 from .lanes import Setting, lanes_of
 from .row_words import row_unit, row_words
 
+_LAW = {"gain": "forward_gain"}
+"""Columns whose entry in a law has another name."""
 _CONDITION_UNITS = {"supply": "V", "ambient": "degC", "source_resistance": "ohm", "leakage": ""}
 
 
@@ -213,7 +215,7 @@ def _leakage(part: Part) -> Iterator[Used]:
 def data_source(part: Part, key: str) -> str:
     """Who says a datum of a part: its own figure with source and test condition, or its class."""
     datum = part.datum(key)
-    if datum is None and key in part.law:
+    if datum is None and (key in part.law or _LAW.get(key) in part.law):
         return "the law that the part gives"
     if datum is None:
         named = part.entry("class")

@@ -28,8 +28,8 @@ from . import (
     test_supervised_loop,
     test_supply_slew,
 )
-from .sheets import design, exact, margin, sounder
-from .test_hand_formulas import changed
+from .sheets import design, exact, sounder
+from .test_hand_formulas import changed, judged
 
 NEVER: Json = {"after": "supply above 100 V", "by": "1 ms"}
 """A moment relative to what does not come."""
@@ -174,7 +174,7 @@ def unsupplied() -> Design:
 )
 def test_what_did_not_happen_is_said(name: str, make: Callable[[], Design], words: str) -> None:
     slug, part = name.split(":")
-    found = margin(make(), slug, part)
+    found = judged(make(), slug, part)
     assert found.outcome == words
     assert (found.margin, found.verdict) == (-1.0, Verdict.FAIL)
 
@@ -198,5 +198,5 @@ def test_what_did_not_happen_is_said(name: str, make: Callable[[], Design], word
 )
 def test_a_missing_datum_is_named(name: str, make: Callable[[], Design], missing: str) -> None:
     slug, part = name.split(":")
-    found = margin(make(), slug, part)
+    found = judged(make(), slug, part)
     assert (found.margin, found.verdict, found.reason) == (None, Verdict.UNKNOWN, f"missing: {missing}")

@@ -9,8 +9,10 @@ import pytest
 from stagebook.engine.checks import catalogue
 from stagebook.engine.checks.factors import COMMON_PRACTICE
 from stagebook.engine.design.document import Design
+from stagebook.engine.parts.physics import gain_factor, saturation_factor
 from stagebook.engine.studies.explanation import Explanation, explain
 
+from .latches import CELSIUS
 from .test_hand_formulas import CASES, judged
 
 ONE_EACH = {slug: (part, make) for slug, part, make, _ in reversed(CASES)}
@@ -46,6 +48,13 @@ def sources(make: Callable[[], Design], slug: str, part: str) -> dict[str, tuple
         ("junction_temperature", "t j max of Q1", 150.0, f"customary: {COMMON_PRACTICE}"),
         ("fuse_fault", "times the rated current at which a fuse blows", 2.0, f"customary: {COMMON_PRACTICE}"),
         ("supply_slew", "stray supply - base", 10e-12, "the strays of the design"),
+        (
+            "latch_hold",
+            "Q2 saturation current",
+            1e-14 / float(saturation_factor(CELSIUS)),
+            "the law that the part gives",
+        ),
+        ("latch_hold", "Q2 gain", 100.0 / float(gain_factor(CELSIUS)), "the law that the part gives"),
         ("release", "max of the requirement", 20e-3, "the requirement"),
         ("brown_out", "length of the dip", 0.3e-3, "sequence alarm"),
         ("surge_energy", "voltage of the surge", 60.0, "the event of the sequence"),
