@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from ..parts.battery import CURVES
 from ..quantity import write
+from .entry import LOADS, SMALL, rated_fuse
 from .kind import RETURN_PORT, WORD, Json, Made, Place, Port, Setting, StageKind, Wire
 from .plan import RETURN, Plan, class_figure
 
@@ -39,7 +40,13 @@ def _make(plan: Plan) -> Made:
     plan.diode(plus, rail, "battery_diode", kind="schottky", name="1 A Schottky")
     plan.resistor(room / trickle, feed, charge, "charge_resistor", snap="up")
     plan.diode(charge, plus, "charge_diode")
-    plan.part("BT", "battery", {"plus": plus, "minus": RETURN}, "standby_battery", **_battery(generic, count))
+    # What a battery can drive through a short sets a wire on fire: the fuse stands at its terminal.
+    amps = (plan.beyond.loads or LOADS) + (plan.beyond.small or SMALL)
+    if rated_fuse(plan, amps, plan.net("terminal"), plus) is None:
+        raise plan.refused("battery", f"no usual fuse carries the {amps:.3g} A that follow; write a smaller load")
+    plan.part(
+        "BT", "battery", {"plus": plan.net("terminal"), "minus": RETURN}, "standby_battery", **_battery(generic, count)
+    )
     low = min(plan.supply.min - V_SUPPLY_DIODE, count * CURVES[generic][1][1] - V_BATTERY_DIODE)
     lost = {
         "events": [
@@ -59,7 +66,7 @@ KIND = StageKind(
     place=Place.FEED,
     help=(
         "Supply and battery feed one rail through a diode each, so that the higher one does; a resistor and a diode"
-        " keep the battery charged. R = (V_supply - V_D - V_float)/I_trickle, next higher value; the trickle must"
+        " keep the battery charged, and a fuse of at least 1.33 I stands at its terminal. R = (V_supply - V_D - V_float)/I_trickle, next higher value; the trickle must"
         " outweigh self-discharge (lead-acid 3 % a month: 0.3 mA of 7 Ah) and stay below what the battery bears for"
         " ever (C/100). Hours come from stand-by and alarm current, age and cold. Source: common practice, from"
         " memory."

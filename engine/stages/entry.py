@@ -54,25 +54,29 @@ def _lost(plan: Plan, kind: str, name: str) -> float:
     return low + (high - low) * share + _COLDER * max(0.0, REFERENCE - plan.ambient.min)
 
 
-def _add_fuse(plan: Plan, rail: str) -> float:
-    """The least preferred fuse that carries the loads for ever when hot, between the port ``feed`` and ``rail``.
-
-    Returns what it drops, V.
-    """
+def rated_fuse(plan: Plan, amps: float, a: str, b: str) -> float | None:
+    """The least preferred fuse that carries a current for ever when hot, between two nets; returns its ohms, None where
+    no usual one does."""
     hot = 1.0 - FUSE_DRIFT * max(0.0, plan.ambient.max - REFERENCE)
-    wanted = (_loads(plan) + _small(plan)) / (FUSE_SHARE * hot)
-    rated = next((each for each in _FUSES if each >= wanted), None)
+    rated = next((each for each in _FUSES if each >= amps / (FUSE_SHARE * hot)), None)
     if rated is None:
-        raise plan.refused(
-            "load_current", f"no fuse of the usual ones carries it; write at most {_FUSES[-1]:g} A x 0.7"
-        )
+        return None
     fields = {
         "rated_current": {"typical": write(rated, "A"), "source": "memory"},
         "melting": {"typical": write(2.0 * rated**2, "A2s"), "source": "memory"},
         "resistance": {"typical": write(FUSE_OHMS / rated, "ohm", digits=2), "source": "memory"},
     }
-    plan.part("F", "fuse", {"a": plan.port("feed"), "b": rail}, "fuse", **fields)
-    return (_loads(plan) + _small(plan)) * FUSE_OHMS / rated
+    plan.part("F", "fuse", {"a": a, "b": b}, "fuse", **fields)
+    return FUSE_OHMS / rated
+
+
+def _add_fuse(plan: Plan, rail: str) -> float:
+    """The fuse between the port ``feed`` and ``rail``; returns what it drops, V."""
+    ohms = rated_fuse(plan, _loads(plan) + _small(plan), plan.port("feed"), rail)
+    if ohms is None:
+        most = f"{_FUSES[-1]:g} A x 0.7"
+        raise plan.refused("load_current", f"no fuse of the usual ones carries it; write at most {most}")
+    return (_loads(plan) + _small(plan)) * ohms
 
 
 def _add_clamp(plan: Plan, rail: str) -> dict[str, Json]:

@@ -152,3 +152,12 @@ def test_two_batteries_in_series_are_one_part_of_twice_the_figures() -> None:
     seen = run(design, rail := at("backup.rail", 0.9))
     # The higher of supply and battery: 30 V less the rectifier at next to nothing.
     assert seen.value(rail)[0] == pytest.approx(29.5, abs=0.3)
+
+
+def test_a_stand_by_battery_has_its_fuse_at_its_terminal() -> None:
+    # The caution of the program itself: fuse at the battery terminal. 14 mA + 2 mA + base current: 0.1 A.
+    design = made(choice("battery_backup"), CALL, PIEZO, supply=("15 V", "15.5 V", "16 V"))
+    fuse = design.part(design.stage("backup").roles["fuse"])
+    assert fuse.pins["a"] == design.part("BT1").pins["plus"]
+    assert [part.ref for part in design.parts if fuse.pins["a"] in part.pins.values()] == [fuse.ref, "BT1"]
+    assert fuse.limits("rated_current", "A").typical == 0.1  # type: ignore[union-attr]
