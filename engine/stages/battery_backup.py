@@ -66,7 +66,8 @@ KIND = StageKind(
     place=Place.FEED,
     help=(
         "Supply and battery feed one rail through a diode each, so that the higher one does; a resistor and a diode"
-        " keep the battery charged, and a fuse of at least 1.33 I stands at its terminal. R = (V_supply - V_D - V_float)/I_trickle, next higher value; the trickle must"
+        " keep the battery charged, and a fuse of at least 1.33 I stands at its terminal. R = (V_supply -"
+        " V_D - V_float)/I_trickle, next higher value; the trickle must"
         " outweigh self-discharge (lead-acid 3 % a month: 0.3 mA of 7 Ah) and stay below what the battery bears for"
         " ever (C/100). Hours come from stand-by and alarm current, age and cold. Source: common practice, from"
         " memory."
