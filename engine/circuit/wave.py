@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from itertools import pairwise
+from typing import Any
 
 import numpy as np
 
@@ -61,12 +62,17 @@ class Wave:
             shape = np.broadcast_shapes(value.shape, starts.shape)
             return np.broadcast_to(value, shape), np.zeros(shape)
         times, values = stacked(self.times), stacked(self.values)
-        place = np.sum(times[:, None, :] <= middles[:, :, None], axis=2) - 1
+        if times.shape[0] == values.shape[0] == middles.shape[0] == 1:
+            place = np.searchsorted(times[0], middles, side="right") - 1
+            of_time: Any = 0
+            of_value: Any = 0
+        else:
+            place = np.sum(times[:, None, :] <= middles[:, :, None], axis=2) - 1
+            lane = np.arange(place.shape[0])[:, None]
+            of_time, of_value = (lane if points.shape[0] > 1 else 0 for points in (times, values))
+            if values.shape[0] > 1 and place.shape[0] == 1:
+                of_value = np.arange(values.shape[0])[:, None]
         after = np.minimum(place + 1, times.shape[1] - 1)
-        lane = np.arange(place.shape[0])[:, None]
-        of_time, of_value = (lane if points.shape[0] > 1 else 0 for points in (times, values))
-        if values.shape[0] > 1 and place.shape[0] == 1:
-            of_value = np.arange(values.shape[0])[:, None]
         t0, t1 = times[of_time, place], times[of_time, after]
         v0, v1 = values[of_value, place], values[of_value, after]
         rises = t1 > t0

@@ -118,9 +118,10 @@ def _flatten(value: Any, numbers: list[int]) -> None:
         for one in value:
             _flatten(one, numbers)
     elif isinstance(value, np.ndarray):
-        if not value.flags.c_contiguous:
+        said = value.__array_interface__
+        if said["strides"] is not None and not value.flags.c_contiguous:
             raise ValueError("an array of the kernel must be contiguous")
-        numbers.append(value.__array_interface__["data"][0])
-        numbers.extend(value.shape)
+        numbers.append(said["data"][0])
+        numbers.extend(said["shape"])
     else:
         numbers.append(int(value))
