@@ -36,7 +36,7 @@ BLOCK = 64  # most lanes handed to a thread at a time
 MOST_STEPS = 200_000
 MOST_SECONDS = 10.0  # that a lane may take on one core, by circuit/cost.py
 ITERATES = 2.2  # a step, about: one for its stage, one for its end, and some more where laws bend
-MOST_ITERATIONS = 5
+MOST_ITERATIONS = 8
 MOST_AT_JUMP = 200
 
 ENDED = {

@@ -66,6 +66,7 @@ from .work import (
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
 FIRST = 1e-10  # s, the first step after it
+ROUGHLY = 100.0  # times the tolerance, the error of that step: what settles in less than it would ring
 SMALLEST = 1e-16  # s
 SNAP = 0.2  # V, a step whose end was expected further away is taken again, shorter, unless it is shorter than
 SNAPPED = 1e-9  # s
@@ -228,16 +229,17 @@ def march_rows(
                     counts[lane, 2] += int(clock[ROUND, w])
                     length = clock[LENGTH, w]
                     grow = clock[GROWTH, w]
-                    if clock[LAST, w] == 0.0:
-                        # The first step after a jump is not judged: what a step of 1 ps leaves in the last digits of a
-                        # large charge counts as a current there, and shorter steps would only make it larger.
-                        grow = max(grow, 1.0)
-                    elif clock[ERROR, w] > 1.0 and length > JUMP:
+                    # The first step after a jump is judged roughly: what a step of 1 ps leaves in the last digits of a
+                    # large charge counts as a current there, and shorter steps would only make it larger.
+                    is_first = clock[LAST, w] == 0.0
+                    if clock[ERROR, w] > (ROUGHLY if is_first else 1.0) and length > JUMP:
                         # Nothing here is quicker than a picosecond but a junction that has lost its last charge.
                         counts[lane, 1] += 1
                         clock[NEXT, w] = max(length * max(0.1, grow), JUMP)
                         came[w] = AGAIN
                         continue
+                    if is_first:
+                        grow = max(grow, 1.0)
                     if clock[LAST, w] > 0.0 and clock[SURPRISE, w] > SNAP and length > SNAPPED:
                         counts[lane, 1] += 1
                         clock[NEXT, w] = max(0.1 * length, SNAPPED)
