@@ -121,7 +121,7 @@ _LAMP: Figures = {"cold_ratio": ("10", "12", "14", "hot / cold resistance"), "in
 _SIGNAL_DIODE: Figures = {
     "forward_low": "0.60 V",
     "forward_low_current": "1 mA",
-    "forward_high": "0.72 V",
+    "forward_high": ("0.68 V", "0.72 V", "1 V", "10 mA"),
     "forward_high_current": "10 mA",
     "reverse_current": ("1 nA", "5 nA", "25 nA", "20 V, 25 C"),
     "reverse_doubling": "10 K",
@@ -155,7 +155,7 @@ CLASSES: Mapping[str, Mapping[str, Figures]] = {
             **_SIGNAL_DIODE,
             "forward_low": "0.65 V",
             "forward_low_current": "10 mA",
-            "forward_high": "0.95 V",
+            "forward_high": ("0.90 V", "0.95 V", "1.1 V", "1 A"),
             "forward_high_current": "1 A",
             "reverse_current": ("10 nA", "50 nA", "5 uA", "rated voltage, 25 C"),
             "capacitance": "15 pF",

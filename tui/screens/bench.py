@@ -13,41 +13,32 @@ from ...engine.design.document import Design
 from ...engine.design.part import Part
 from ...engine.parts.made import kept
 from ...engine.results import Depth, MarginSheet
-from ...engine.studies.comparison import Side
 from ...storage.errors import StorageError
 from ...storage.values import Revision
 from ..bench_text import has_value, valued
 from ..caution_text import new_cautions
 from ..computing import Computing
 from ..drafting import Drafting, incomplete
-from ..figures import FigureRow
 from ..remembered import Remembered
 from ..shown import counted
 from ..widgets.row_list import RowList
 from ..widgets.status import KeyLine, Notice
 from ..widgets.value_entry import ValueEntry
-from .bench_view import BenchView
-from .compare import CompareScreen
+from .bench_ways import BenchWays
 from .design_questions import ask_condition, ask_field, ask_new_part, ask_required, ask_tables
 from .dialog import Answers, Ask, Field, Form
 from .drawer import DrawerScreen, InHand
-from .faults import FaultsScreen
-from .history import HistoryScreen
-from .immunity import ImmunityScreen
-from .origin import OriginPage
 from .part_data import PartDataScreen
 from .requirement_questions import ask_requirement
 from .saving import Saving
 from .stage_page import StagePage
 from .stage_questions import ask_stage
-from .waves import WavesScreen
 
-RAILS = ("supply", "0V")
 _BEGUN = "the note for the next revision is begun already: s goes on with it"
 
 
-class BenchScreen(BenchView):
-    """Editing, freezing and saving the draft that :class:`BenchView` shows, and the ways to other screens."""
+class BenchScreen(BenchWays):
+    """Editing, freezing and saving the draft that is shown."""
 
     def __init__(
         self, drafting: Drafting, computing: Computing, remembered: Remembered | None = None, only_looks: str = ""
@@ -55,7 +46,6 @@ class BenchScreen(BenchView):
         """``only_looks`` says why the draft is not open to be edited here."""
         super().__init__(drafting, computing, remembered or Remembered())
         self._only_looks = only_looks
-        self._compare_waits = False
         self._past_base = False
         known = drafting.name in self.remembered.notes
         notes = self.remembered.notes_of(drafting.name, drafting.half_note)
@@ -326,41 +316,7 @@ class BenchScreen(BenchView):
         self.say(f"saved as r{revision.number}{stamp}")
         self.show()
 
-    # -- looking elsewhere
-
-    def action_origin(self) -> None:
-        """Where the chosen margin comes from."""
-        if self.trouble:
-            self.refuse(self.trouble, passing=False)
-        elif self.chosen is None:
-            self.refuse("there is no margin under the hand yet")
-        elif self.figures.frozen and self.drafting.changes():
-            self.refuse("the figures are held back; f shows them first")
-        else:
-            self.app.push_screen(self._origin_of(self.chosen))
-
-    def _origin_of(self, row: FigureRow) -> OriginPage:
-        return OriginPage(row.check, row.worst_known, self.drafting.name, self.design, self.computing)
-
-    def action_compare(self) -> None:
-        """The draft beside the revision it began from."""
-        base, sheet = self.drafting.base, self.figures.newest
-        if base is None:
-            self.refuse("nothing to compare with yet; s saves the first revision")
-        elif self.figures.frozen:
-            self.refuse("the figures are held back; f shows them first")
-        elif self.trouble:
-            self.refuse(f"nothing to compare: {self.trouble}")
-        elif self._compare_waits:
-            self._compare_waits = False
-            self.say("no longer waiting to compare")
-        elif sheet is None or sheet.depth is Depth.NOMINAL:
-            self._compare_waits = True
-            self.say(f"compared with r{base.number} as soon as the corners are known; c again gives it up")
-        else:
-            self._compare_waits = False
-            sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
-            self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
+    # -- data of parts
 
     def action_data(self) -> None:
         """The figures of the part under the hand, each with who says it."""
@@ -387,30 +343,3 @@ class BenchScreen(BenchView):
         """Parts made of datasheet points."""
         hand = None if self.ref is None else InHand(self.design, self.ref, self._put)
         self.app.push_screen(DrawerScreen(self.drafting, hand))
-
-    def action_waves(self) -> None:
-        """Voltages over time: first of the nets of the part under the hand, then of the loads."""
-        loads = [ref for stage in self.design.stages for role, ref in stage.roles.items() if role.startswith("load")]
-        refs = [*([] if self.ref is None else [self.ref]), *loads]
-        nets = dict.fromkeys(net for ref in refs for net in self.design.part(ref).pins.values() if net not in RAILS)
-        self.app.push_screen(WavesScreen(self.drafting.name, self.design, list(nets), self.computing))
-
-    def action_faults(self) -> None:
-        """What the draft does with each single fault."""
-        self.app.push_screen(FaultsScreen(self.drafting.name, self.design, self.computing))
-
-    def action_immunity(self) -> None:
-        """How little charge trips an alarm of the draft, net by net."""
-        self.app.push_screen(ImmunityScreen(self.drafting.name, self.design, self.computing))
-
-    def action_history(self) -> None:
-        """The revisions of this design."""
-
-        def looked(moved: bool | None) -> None:
-            if moved:
-                self.begin()
-                self.say(f"the draft goes on from r{self.drafting.draft.base_revision}")
-
-        trend = self.chosen.check.id if self.chosen else None
-        sheet = None if self.figures.frozen or self.figures.worst_old else self.figures.worst
-        self.app.push_screen(HistoryScreen(self.drafting, self.computing, trend, sheet), looked)
