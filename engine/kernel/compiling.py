@@ -1,6 +1,6 @@
 """Makes the kernel's machine code with numba: one function of the C kind for each entry.
 
-An entry gets one table of whole numbers, see :func:`.machine_code.table_of`, and hands the arrays on as its function
+An entry gets one table of whole numbers, see :func:`.machine_code.flattened`, and hands the arrays on as its function
 wants them.
 """
 
@@ -22,7 +22,7 @@ from . import layout
 from .compiled import leaf
 from .elimination import Pattern
 from .linearised import look
-from .machine_code import packed
+from .machine_code import flattened, packed
 from .march import march_rows
 from .vectors import WIDTH
 from .work import work_for
@@ -40,7 +40,7 @@ def compiled_code() -> bytes:
             (overload,) = entry.overloads.values()
             library = overload.library
             code = library._codegen._tm.emit_object(library._final_module)
-            made.append((name, overload.fndesc.llvm_func_name, code))
+            made.append((name, flattened(sample)[1], overload.fndesc.llvm_func_name, code))
     return packed(made)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 
@@ -69,13 +70,10 @@ def linearised(top: Topology, parameters: Floats, sources: int, states: Floats) 
                 top.element, top.group, p, zeros(sources, WIDTH), c, g, steps, which, x, i, q, a, seen, flow, slope,
                 limited,
             )  # fmt: skip
-            table = machine_code.table_of(arguments)
+            again = machine_code.bound("look", arguments) if COMPILED else partial(look, *arguments)
             for _ in range(LOOKS):
-                if COMPILED:
-                    machine_code.call("look", table)
-                else:
-                    with np.errstate(all="ignore"):
-                        look(*arguments)
+                with np.errstate(all="ignore"):
+                    again()
                 if not np.any(limited):
                     break
             stored.append(a[slots, :few].T.copy())

@@ -10,7 +10,7 @@ from __future__ import annotations
 import ctypes
 import hashlib
 import json
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -18,19 +18,20 @@ from numpy.typing import NDArray
 
 Table = NDArray[np.int64]
 
-FORMAT = 1
+FORMAT = 2
 WIDTH = 8
 """Lanes of a row."""
 
 
-class Loaded(NamedTuple):
-    """Functions by name, and what keeps their code in memory."""
+class Entry(NamedTuple):
+    """A function of the kernel in machine code: what it takes, and what keeps it in memory."""
 
-    functions: dict[str, Any]
-    keep: tuple[Any, ...]
+    function: Any
+    kinds: str
+    keep: Any
 
 
-_loaded: Loaded | None = None
+_loaded: dict[str, Entry] | None = None
 _FUNCTION = ctypes.CFUNCTYPE(ctypes.c_int, ctypes.c_void_p, ctypes.c_void_p, ctypes.c_void_p)
 
 
@@ -47,15 +48,15 @@ def processor() -> str:
     return hashlib.sha256(said.encode()).hexdigest()
 
 
-def packed(objects: Iterable[tuple[str, str, bytes]]) -> bytes:
-    """Code of (entry, symbol, object file) each, made on this processor."""
-    listed = [(name, symbol, code) for name, symbol, code in objects]
-    rest = b"".join(code for _, _, code in listed)
+def packed(objects: Iterable[tuple[str, str, str, bytes]]) -> bytes:
+    """Code of (entry, kinds of its arguments, symbol, object file) each, made on this processor."""
+    listed = list(objects)
+    rest = b"".join(code for *_, code in listed)
     head = {
         "format": FORMAT,
         "processor": processor(),
         "sha256": hashlib.sha256(rest).hexdigest(),
-        "entries": [[name, symbol, len(code)] for name, symbol, code in listed],
+        "entries": [[name, kinds, symbol, len(code)] for name, kinds, symbol, code in listed],
     }
     return json.dumps(head).encode() + b"\n" + rest
 
@@ -78,50 +79,65 @@ def adopt(code: bytes) -> None:
 
     binding.initialize_native_target()
     binding.initialize_native_asmprinter()
-    functions, keep, begin = {}, [], 0
-    for name, symbol, length in head["entries"]:
+    entries, begin = {}, 0
+    for name, kinds, symbol, length in head["entries"]:
         machine = binding.Target.from_default_triple().create_target_machine()
         engine = binding.create_mcjit_compiler(binding.parse_assembly(""), machine)
         engine.add_object_file(binding.ObjectFileRef.from_data(rest[begin : begin + length]))
         engine.finalize_object()
-        functions[name] = _FUNCTION(engine.get_function_address(symbol))
-        keep.append(engine)
+        entries[name] = Entry(_FUNCTION(engine.get_function_address(symbol)), kinds, engine)
         begin += length
-    _loaded = Loaded(functions, tuple(keep))
+    _loaded = entries
 
 
-def call(name: str, table: Table) -> None:
-    """Call an entry with a table of what it takes; the interpreter is free meanwhile."""
+def bound(name: str, arguments: tuple[Any, ...]) -> Callable[[], None]:
+    """An entry that is ready to be called, as often as wanted, with arrays, tuples of arrays and whole numbers.
+
+    Raises ValueError where they are not such as it takes: it reads what lies at their addresses. The interpreter is
+    free while it runs.
+    """
     if _loaded is None:
         # Nobody had kept any code: it is made for this process alone.
         from .compiling import compiled_code
 
         adopt(compiled_code())
     assert _loaded is not None
-    said, fault = ctypes.c_void_p(), ctypes.c_void_p()
-    if _loaded.functions[name](ctypes.addressof(said), ctypes.addressof(fault), table.ctypes.data) != 0:
-        raise RuntimeError(f"the kernel's {name} failed")
+    entry = _loaded[name]
+    table, kinds = flattened(arguments)
+    if kinds != entry.kinds:
+        raise ValueError(f"the kernel's {name} takes {entry.kinds}, not {kinds}")
+
+    def called() -> None:
+        said, fault = ctypes.c_void_p(), ctypes.c_void_p()
+        if entry.function(ctypes.addressof(said), ctypes.addressof(fault), table.ctypes.data) != 0:
+            raise RuntimeError(f"the kernel's {name} failed")
+
+    # What the table holds the addresses of must stay where it is.
+    called.arguments = arguments  # type: ignore[attr-defined]
+    return called
 
 
-def table_of(arguments: tuple[Any, ...]) -> Table:
-    """Address and shape of every array and every number, in their order: what an entry takes.
-
-    ``arguments`` are arrays, tuples of arrays and whole numbers. The arrays must stay where they are meanwhile.
-    """
+def flattened(arguments: tuple[Any, ...]) -> tuple[Table, str]:
+    """Address and shape of every array and every number, in their order: what an entry unpacks; and their kinds, an
+    array's as its type and number of dimensions."""
     numbers: list[int] = []
-    _flatten(arguments, numbers)
-    return np.array(numbers, dtype=np.int64)
+    kinds: list[str] = []
+    _flatten(arguments, numbers, kinds)
+    return np.array(numbers, dtype=np.int64), " ".join(kinds)
 
 
-def _flatten(value: Any, numbers: list[int]) -> None:
+def _flatten(value: Any, numbers: list[int], kinds: list[str]) -> None:
     if isinstance(value, tuple):
         for one in value:
-            _flatten(one, numbers)
+            _flatten(one, numbers, kinds)
     elif isinstance(value, np.ndarray):
         said = value.__array_interface__
         if said["strides"] is not None and not value.flags.c_contiguous:
             raise ValueError("an array of the kernel must be contiguous")
+        shape = said["shape"]
         numbers.append(said["data"][0])
-        numbers.extend(said["shape"])
+        numbers.extend(shape)
+        kinds.append(f"{said['typestr'][1:]}:{len(shape)}")
     else:
         numbers.append(int(value))
+        kinds.append("number")

@@ -438,7 +438,7 @@ def march(
     work = work_for(top, table.shape[1], program.source.shape[2], rows)
     arguments = (top, table, starts, program, rows, control, results, work, low, high, cancel)
     if COMPILED:
-        machine_code.call("march", machine_code.table_of(arguments))
+        machine_code.bound("march", arguments)()
     else:
         with np.errstate(all="ignore"):
             march_rows(*arguments)

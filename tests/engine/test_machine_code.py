@@ -8,7 +8,7 @@ import numpy as np
 import pytest
 
 from stagebook.engine.kernel import machine_code
-from stagebook.engine.kernel.machine_code import adopt, packed, table_of
+from stagebook.engine.kernel.machine_code import adopt, bound, flattened, packed
 
 
 @pytest.fixture(autouse=True)
@@ -40,10 +40,22 @@ def test_only_whole_code_for_this_processor_is_taken(code: bytes, words: str) ->
 
 def test_a_table_holds_addresses_shapes_and_numbers_in_their_order() -> None:
     numbers, places = np.zeros((2, 3)), np.zeros(4, dtype=np.uint32)
-    found = table_of(((numbers, (places,)), 7))
-    assert list(found) == [numbers.ctypes.data, 2, 3, places.ctypes.data, 4, 7]
+    table, kinds = flattened(((numbers, (places,)), 7))
+    assert list(table) == [numbers.ctypes.data, 2, 3, places.ctypes.data, 4, 7]
+    assert kinds == "f8:2 u4:1 number"
 
 
 def test_an_array_with_gaps_is_refused() -> None:
     with pytest.raises(ValueError, match="contiguous"):
-        table_of((np.zeros((4, 4))[:, ::2],))
+        flattened((np.zeros((4, 4))[:, ::2],))
+
+
+@pytest.mark.parametrize(
+    "arguments", [(np.zeros(3, dtype=np.int32),), (np.zeros((3, 1)),), (np.zeros(3), 1), ()], ids=str
+)
+def test_what_an_entry_does_not_take_never_reaches_it(
+    arguments: tuple[object, ...], monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(machine_code, "_loaded", {"one": machine_code.Entry(pytest.fail, "f8:1", None)})
+    with pytest.raises(ValueError, match="the kernel's one takes f8:1, not"):
+        bound("one", arguments)
