@@ -13,6 +13,7 @@ from ..kernel.layout import Floats
 from ..primitives.signals import START, Anchor, Row, crossing, level, maximum, voltage
 from ..quantity import write
 from ..run import Observed
+from .diagnosis import diagnosed
 from .evaluate import observe
 from .fault_heat import Heat
 from .fault_outcomes import SAID, FaultResult, Outcome
@@ -104,6 +105,7 @@ class FaultLanes:
         view = View(made.circuit.design, made.circuit)
         self._loads = [_LoadRows.of(each, view) for each in healthy]
         self._observed: dict[str, Observed] = {}
+        self._failures: dict[tuple[str, int], str | None] = {}
         current, moment = view.supply_current, view.moment(MAIN, "standby")
         self._draw = None if current is None or moment is None else level(current, moment)
         heat = Heat(view)
@@ -176,7 +178,7 @@ class FaultLanes:
 
     def _of_load(self, load: _LoadRows, lane: int) -> tuple[Outcome, str]:
         healthy, watched = load.healthy, self._observed[load.healthy.sequence]
-        failure = watched.failure(lane)
+        failure = self._failure(healthy.sequence, lane)
         if failure is not None:
             return Outcome.UNKNOWN, f"{SAID[Outcome.UNKNOWN]}: {failure}"
         click = min(CLICK, CLICK_SHARE * healthy.lasts) if healthy.alarms else CLICK
@@ -193,6 +195,13 @@ class FaultLanes:
         if early:
             return Outcome.FALSE_ALARM, SAID[Outcome.FALSE_ALARM] + where
         return Outcome.STILL_ALARMS, SAID[Outcome.STILL_ALARMS]
+
+    def _failure(self, sequence: str, lane: int) -> str | None:
+        """Why a lane ended early, without advice: that is for the sequence of a design, not for a fault."""
+        if (sequence, lane) not in self._failures:
+            words = diagnosed(self._observed[sequence], self._made.lanes, sequence, lane)
+            self._failures[sequence, lane] = None if words is None else words.split(";")[0]
+        return self._failures[sequence, lane]
 
     def _otherwise(self, load: _LoadRows, lane: int) -> str:
         """What differs of an alarm that still comes: how late, how long."""

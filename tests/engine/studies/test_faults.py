@@ -5,16 +5,23 @@ Limits of heat: Ohm's law. No published case exists for whole units; outcomes ar
 
 from __future__ import annotations
 
+import re
 from functools import cache
 
 import pytest
 
 from stagebook.engine import edit
+from stagebook.engine.checks.view import View
+from stagebook.engine.circuit.circuit import build
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import Cancelled, CircuitError
+from stagebook.engine.run import never
+from stagebook.engine.studies.fault_lanes import FaultLanes
 from stagebook.engine.studies.fault_list import faults_of
 from stagebook.engine.studies.fault_outcomes import FaultResult, FaultSheet, Outcome
+from stagebook.engine.studies.faulted import faulted
 from stagebook.engine.studies.faults import study
+from stagebook.engine.studies.healthy import behaviours
 
 from ..checks.sheets import design, sounder
 from ..circuits import Json, capacitor, resistor, transistor, two
@@ -212,3 +219,30 @@ def test_json_says_outcomes_in_words_and_counts_them() -> None:
     assert found["faults"][0]["outcome"] == "silent"
     assert sum(found["counts"].values()) == len(found["faults"])
     assert found["counts"]["silent"] == sum(fault["outcome"] == "silent" for fault in found["faults"])
+
+
+def test_a_fault_that_sets_a_unit_oscillating_is_told_with_net_and_frequency() -> None:
+    # An astable that R9 holds still: without it 0.69 x (47k + 33k) x 220 pF, some 80 kHz, for the half second of the
+    # sequence, which no run can follow.
+    quiet = buzzer(
+        resistor("R21", "supply", "c1", "2k2"),
+        resistor("R22", "supply", "b2", "47k"),
+        resistor("R23", "supply", "b1", "33k"),
+        resistor("R24", "supply", "c2", "2k2"),
+        capacitor("C21", "c1", "b2", "220p"),
+        capacitor("C22", "c2", "b1", "220p"),
+        transistor("Q8", "c1", "b1", "0V", **{"class": "small npn"}),
+        transistor("Q9", "c2", "b2", "0V", **{"class": "small npn"}),
+        resistor("R9", "b1", "0V", "100R"),
+    )
+    gone = next(fault for fault in faults_of(quiet) if (fault.part, fault.words) == ("R9", "open"))
+    view = View(quiet, build(quiet))
+    lanes = FaultLanes(faulted(quiet, (gone,)), behaviours(view, never), lambda done: None, never)
+    (found,) = lanes.results()
+    assert found.outcome is Outcome.UNKNOWN
+    said = re.fullmatch(
+        r"not known: took too many steps .* oscillating near net \w+ at about (\d+)\S* kHz.*", found.words
+    )
+    assert said is not None, found.words
+    assert 30.0 < float(said[1]) < 300.0
+    assert "end the sequence sooner" not in found.words
