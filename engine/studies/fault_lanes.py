@@ -18,10 +18,9 @@ from .evaluate import observe
 from .fault_heat import Heat
 from .fault_outcomes import SAID, FaultResult, Outcome
 from .faulted import Faulted
-from .healthy import Behaviour
+from .healthy import CLICK, Behaviour
 
-CLICK = 0.02  # s: shorter than that is no alarm (common practice, no source) ...
-CLICK_SHARE = 0.02  # ... nor what is a smaller share of the sound unit's alarm
+CLICK_SHARE = 0.02  # a smaller share of the sound unit's alarm is none either
 TAIL = 0.2  # share of the time after the sound unit's alarm, at its end, in which none may be on
 OTHERWISE = 0.1  # share by which a time differs that is worth a word
 DRAINS, LEAST_DRAIN = 2.0, 1e-5  # times the stand-by current of the sound unit; A

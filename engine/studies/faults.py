@@ -23,7 +23,7 @@ from .fault_lanes import FaultLanes
 from .fault_list import faults_of
 from .fault_outcomes import FaultResult, FaultSheet
 from .faulted import faulted
-from .healthy import Behaviour, alarm_loads, behaviours
+from .healthy import CLICK, Behaviour, alarm_loads, behaviours
 
 
 def study(
@@ -79,7 +79,7 @@ def _notes(healthy: Sequence[Behaviour]) -> tuple[str, ...]:
         notes += [
             f"the sound unit itself gives an alarm in {each.sequence}: {load} comes on with the supply"
             for each in own
-            if each.on is not None and not each.alarms
+            if each.lasts > CLICK and not each.alarms
         ]
         if not alarms:
             notes.append(f"{load} is not called for in any sequence: whether a fault silences it cannot be told")

@@ -15,6 +15,8 @@ from ..quantity import read
 from ..run import never
 from .waves import waves
 
+CLICK = 0.02  # s: shorter than that is no alarm (common practice, no source)
+
 
 @dataclass(frozen=True, slots=True)
 class Behaviour:

@@ -20,8 +20,8 @@ from stagebook.engine.studies.fault_lanes import FaultLanes
 from stagebook.engine.studies.fault_list import faults_of
 from stagebook.engine.studies.fault_outcomes import FaultResult, FaultSheet, Outcome
 from stagebook.engine.studies.faulted import faulted
-from stagebook.engine.studies.faults import study
-from stagebook.engine.studies.healthy import behaviours
+from stagebook.engine.studies.faults import _notes, study
+from stagebook.engine.studies.healthy import Behaviour, behaviours
 
 from ..checks.sheets import design, sounder
 from ..circuits import Json, capacitor, resistor, transistor, two
@@ -246,3 +246,11 @@ def test_a_fault_that_sets_a_unit_oscillating_is_told_with_net_and_frequency() -
     assert said is not None, found.words
     assert 30.0 < float(said[1]) < 300.0
     assert "end the sequence sooner" not in found.words
+
+
+@pytest.mark.parametrize(("over", "notes"), [(3e-6, 0), (0.5, 1)])
+def test_only_an_alarm_with_the_supply_is_worth_a_note(over: float, notes: int) -> None:
+    # A sounder does nothing in a microsecond; half a second is heard.
+    alarm = Behaviour("LS1", "alarm", "supply", "0V", 3.0, 1.0, cause=0.1, on=0.1, over=0.3)
+    snap = Behaviour("LS1", "snap", "supply", "0V", 3.0, 1.0, cause=0.0, on=1e-6, over=over, by_supply=True)
+    assert len(_notes((alarm, snap))) == notes
