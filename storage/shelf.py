@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 from hashlib import sha256
 
 from sqlmodel import Session, col, func, select
@@ -46,7 +47,22 @@ def worst(session: Session, revision: int) -> Worst | None:
     """The check with the least slack of a revision, the first of equals as in its sheet; None on an empty sheet."""
     margins = select(StoredMargin).where(StoredMargin.revision_id == revision)
     row = session.exec(margins.order_by(col(StoredMargin.slack), col(StoredMargin.position)).limit(1)).first()
-    return None if row is None else Worst(row.check_id, row.margin, Verdict(row.verdict))
+    if row is None:
+        return None
+    return Worst(row.check_id, row.margin, Verdict(row.verdict), _outcome(session, row))
+
+
+def _outcome(session: Session, row: StoredMargin) -> str | None:
+    """What happened in a check instead of a figure. Only a margin of one, lost or whole, can stand for that."""
+    if row.margin is None or abs(row.margin) != 1.0:
+        return None
+    stored = session.exec(select(StoredRevision.margins).where(StoredRevision.id == row.revision_id)).first()
+    try:
+        checks = json.loads(stored or "")["checks"]
+        outcome = next((check["outcome"] for check in checks if check["id"] == row.check_id), None)
+    except (ValueError, KeyError, TypeError):  # a torn sheet is told where it is opened
+        return None
+    return outcome if isinstance(outcome, str) else None
 
 
 def base(session: Session, draft: StoredDraft) -> tuple[int | None, int | None]:

@@ -41,11 +41,15 @@ class NoteEntry:
 
 @dataclass(frozen=True, slots=True)
 class Worst:
-    """The check with the least slack of a revision; ``margin`` is a fraction, None when it is unknown."""
+    """The check with the least slack of a revision; ``margin`` is a fraction, None when it is unknown.
+
+    ``outcome`` says what happened where the margin is none of figures, as in the sheet.
+    """
 
     id: str
     margin: float | None
     verdict: Verdict
+    outcome: str | None = None
 
 
 @dataclass(frozen=True)

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Collection, Sequence
 
+from rich.cells import cell_len
+
 from ..engine.design.document import Design
 from ..engine.design.part import Part, Stage
 from ..engine.parts import kinds
@@ -15,7 +17,7 @@ from ..storage.values import Draft
 from .chain_picture import Link
 from .figures import Figures
 from .margin_text import check_name
-from .shown import WORDS, Line, Span, columns, counted, fit, line, percent, points
+from .shown import WORDS, Line, Span, columns, counted, fit, line, percent, points, visible
 from .widgets.row_list import Row
 
 _ROOMY = 60
@@ -27,14 +29,33 @@ def heading(draft: Draft, figures: Figures, progress: str, width: int, looking: 
     """Name, whether it is only looked at, what the draft is based on, conditions, and how far the study is."""
     base = "not saved yet" if draft.base_revision is None else f"draft on r{draft.base_revision}"
     edits = "no edits" if draft.edits == 0 else counted(draft.edits, "edit")
-    left = f" {draft.name}{' (only looked at)' if looking else ''}  {base}, {edits}  {conditions_words(draft.design)}"
-    right = " FROZEN: f shows the figures " if figures.frozen else f" {progress} " if width >= _ROOMY else ""
-    room = max(0, width - len(right))
-    return line(Span(fit(left, room), "strong"), Span(right, "thin" if figures.frozen else ""))
+    name = f" {draft.name}{' (only looked at)' if looking else ''}"
+    far = " FROZEN: f shows the figures " if figures.frozen else f" {progress} " if width >= _ROOMY else ""
+    short = far.replace("spread of ", "")
+    conditions = conditions_pieces(draft.design)
+    everything = [f"{base}, {edits}", *conditions]
+    tight = [f"{base}, {edits}".removeprefix("draft "), *(shortened(words) for words in conditions)]
+    # What gives way first stands first. A condition is shown whole or not at all: half of it is another one.
+    ways = [(everything, far), (everything, short), (tight, short)]
+    ways += [(tight[:count], short) for count in range(len(tight) - 1, -1, -1)]
+    lefts = [("  ".join((name, *pieces)), right) for pieces, right in ways]
+    left, right = next((way for way in lefts if _cells(way[0]) + len(way[1]) <= width), lefts[-1])
+    return line(Span(fit(left, max(0, width - len(right))), "strong"), Span(right, "thin" if figures.frozen else ""))
 
 
-def conditions_words(design: Design) -> str:
-    """Supply and ambient as the document writes them: ``4 V .. 6.4 V  0 C .. 50 C``."""
+def _cells(text: str) -> int:
+    return cell_len(visible(text))
+
+
+def shortened(condition: str) -> str:
+    """A range whose unit is written once where both ends have the same: ``11 .. 14 V`` for ``11 V .. 14 V``."""
+    low, between, high = condition.partition(" .. ")
+    number, space, unit = low.rpartition(" ")
+    return f"{number}{between}{high}" if space and between and high.endswith(f" {unit}") else condition
+
+
+def conditions_pieces(design: Design) -> list[str]:
+    """Supply and ambient as the document writes them: ``4 V .. 6.4 V`` and ``0 C .. 50 C``."""
     found = []
     for name in ("supply", "ambient"):
         condition = getattr(design.conditions, name)
@@ -42,7 +63,7 @@ def conditions_words(design: Design) -> str:
             found.append(condition)
         elif condition is not None:
             found.append(f"{condition.min or condition.nominal} .. {condition.max or condition.nominal}")
-    return "  ".join(found)
+    return found
 
 
 def links(design: Design, figures: Figures) -> tuple[Link, ...]:

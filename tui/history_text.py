@@ -67,8 +67,13 @@ def check_names(revisions: Sequence[Revision]) -> dict[str, str]:
 def history_heading(width: int) -> Line:
     """The column heads."""
     saved = fit("saved", 11) if width >= _WIDE else ""
-    words = f"  {fit('revision', 10)} {saved}{fit('worst', 20)} {fit('trend', TREND_WIDTH + 6)} note"
+    words = f"  {fit('revision', 10)} {saved}{fit('worst', _worst_cells(width))} {fit('trend', TREND_WIDTH + 6)} note"
     return line(Span(fit(words, max(0, width - 2)), "strong"))
+
+
+def _worst_cells(width: int) -> int:
+    """Cells for the worst margin and the name of its check."""
+    return 20 if width < _WIDE else min(36, 20 + (width - _WIDE) // 2 + 4)
 
 
 def history_rows(
@@ -105,7 +110,7 @@ def _row(
             Span("+ " if marked else "  ", "strong"),
             Span(fit(place, 10) + " ", "strong"),
             Span(fit(revision.saved[:10], 11) if width >= _WIDE else ""),
-            Span(fit(worst_text, 20) + " ", tone),
+            Span(fit(worst_text, _worst_cells(width)) + " ", tone),
             Span(fit_right(shown, 5) + " "),
             Span(trend_cells(_value(check), values, TREND_WIDTH) + " "),
             Span(revision.note.line.splitlines()[0] if revision.note.line else ""),

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from ..engine.results import MarginSheet
+from ..engine.results import MarginSheet, Verdict
 from ..storage.values import DesignRow, Worst
-from .shown import MARKS, TONES, WORDS, Line, Span, columns, counted, line, percent
+from .shown import MARKS, TONES, WORDS, Line, Span, columns, counted, figure, line
 
 _BROAD = 100
 _FIGURE = 14
+_OUTCOME = 6
 
 
 def _widths(width: int) -> tuple[int, ...]:
@@ -31,12 +32,15 @@ def shelf_line(row: DesignRow, drafts_own: MarginSheet | None, width: int) -> Li
     worst, whose, old = row.worst, "", ""
     check = None if drafts_own is None else drafts_own.worst
     if check is not None and (row.edits_pending or worst is None):
-        worst, whose = Worst(check.id, check.margin, check.verdict), "draft: "
+        worst, whose = Worst(check.id, check.margin, check.verdict, check.outcome), "draft: "
     elif worst is not None and row.edits_pending:
         whose, old = f"{newest}: ", "~"
     if worst is None:
         return line(left, Span("  no margins yet", "dim"))
-    words = f"{MARKS[worst.verdict]} {percent(worst.margin)}{old} {WORDS[worst.verdict]}"
+    shown = figure(worst.margin, worst.outcome, _OUTCOME)
+    # What fails by what happened needs no second word for it.
+    word = "" if worst.outcome and worst.verdict is Verdict.FAIL else f" {WORDS[worst.verdict]}"
+    words = f"{MARKS[worst.verdict]} {shown}{old}{word}"
     return line(left, Span(f"{words:<{_FIGURE}} ", "dim" if old else TONES[worst.verdict]), whose + id_words(worst.id))
 
 

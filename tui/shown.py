@@ -19,6 +19,17 @@ WORDS = {Verdict.FAIL: "FAIL", Verdict.THIN: "thin", Verdict.PASS: "pass", Verdi
 TONES = {Verdict.FAIL: "fail", Verdict.THIN: "thin", Verdict.PASS: "pass", Verdict.UNKNOWN: "unknown"}
 
 _LEAST_WORDS = 5  # cells
+_HANGING = {"a", "an", "any", "at", "by", "did", "do", "does", "is", "it", "no", "not"} | {
+    "of",
+    "one",
+    "or",
+    "that",
+    "the",
+    "there",
+    "to",
+    "was",
+}
+"""Words that say nothing where the rest is cut away."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,7 +143,7 @@ def _signed(whole: int) -> str:
 
 def figure(margin: float | None, outcome: str | None, width: int) -> str:
     """A margin for a narrow column: as many first words of the outcome as fit, ``fails`` or percent where they say
-    nothing (``the``, ``did``)."""
+    nothing (``the``, ``did not``)."""
     if not outcome:
         return percent(margin)
     taken = ""
@@ -141,6 +152,11 @@ def figure(margin: float | None, outcome: str | None, width: int) -> str:
         if cell_len(longer) > width:
             break
         taken = longer
+    if taken != visible(outcome):
+        kept = taken.split()
+        while kept and kept[-1] in _HANGING:
+            kept.pop()
+        taken = " ".join(kept)
     if cell_len(taken) >= _LEAST_WORDS:
         return taken
     return percent(margin) if margin is not None and margin > 0.0 else "fails"

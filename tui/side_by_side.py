@@ -19,11 +19,17 @@ if TYPE_CHECKING:
 FOLDED = "folded"
 _FIRST = 11
 _OTHER = 17
+_BESIDES = 3  # cells of the hand's mark and of the gap behind the title
+
+
+def title_cells(count: int, width: int) -> int:
+    """Cells for the names of the checks in a list of this width, so that two columns beside the first are in sight."""
+    return max(10, min(34, width - _BESIDES - _FIRST - _OTHER * min(2, count - 1)))
 
 
 def columns_in_sight(count: int, chosen: int, width: int, title: int) -> list[int]:
     """The first column and as many others around the chosen one as there is room for."""
-    room = max(1, (width - title - 2 - _FIRST) // _OTHER)
+    room = max(1, (width - title - _BESIDES - _FIRST) // _OTHER)
     if room >= count - 1:
         return list(range(count))
     start = max(1, min(chosen - room // 2, count - room))

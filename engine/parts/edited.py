@@ -31,8 +31,20 @@ def objections(before: Part, after: Part, known: Mapping[str, Kind]) -> Iterator
         if field == "value" and "value" not in kind.fields:
             words = f"a part of kind {kind.name} has no value; Esc, then e, writes its class and other fields"
         yield field, words
+    if after.value != before.value and _below_zero(after, kind):
+        yield "value", f"{after.value} is below zero; write a positive value"
     if (before.kind, before.class_) != (after.kind, after.class_):
         yield from (("class", words) for words in _unknown_class(after, known))
+
+
+def _below_zero(part: Part, kind: Kind) -> bool:
+    entry = kind.fields.get("value")
+    if part.value is None or entry is None or entry.unit not in _MADE:
+        return False
+    try:
+        return read(part.value, entry.unit) < 0.0
+    except QuantityError:
+        return False
 
 
 def _unknown_class(part: Part, known: Mapping[str, Kind]) -> Iterator[str]:

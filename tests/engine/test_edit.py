@@ -167,6 +167,7 @@ def test_a_requirement_replaces_the_one_it_is_about() -> None:
     ("refused", "expected"),
     [
         (lambda d: edit.with_value(d, "R9", "1k"), "there is no part 'R9' in the design; write"),
+        (lambda d: edit.with_value(d, "R7", "-5k"), "stage driver, part R7, field value: -5k is below zero; write"),
         (lambda d: edit.with_value(d, "R7", "4 V"), "stage driver, part R7, field value: '4 V' is a voltage where"),
         (
             lambda d: edit.with_field(d, "R7", "leakage.conditioned", "1 uA"),

@@ -2,17 +2,22 @@
 
 from __future__ import annotations
 
+import json
+from dataclasses import replace
+
 from textual.pilot import Pilot
 
 from stagebook.storage import Note, Store
-from stagebook.tui.history_text import tree, trend_cells
+from stagebook.tui.history_text import Branch, history_heading, history_rows, tree, trend_cells
 from stagebook.tui.screens.bench import BenchScreen
 from stagebook.tui.screens.compare import CompareScreen
 from stagebook.tui.screens.history import HistoryScreen, RevisionPage
+from stagebook.tui.shown import plain
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import RowList
 
 from .conftest import Gates, corners, flood, seen, settled, shown, until
+from .sheets import check, sheet
 
 SIZE = (80, 24)
 
@@ -154,3 +159,14 @@ async def test_left_and_right_choose_the_margin_of_the_trend(app: StagebookApp) 
         assert shown(pilot)[0] != before
         await pilot.press("left")
         assert shown(pilot)[0] == before
+
+
+def test_a_wide_screen_names_the_worst_check_in_full(shelf: Store) -> None:
+    revision = shelf.revisions("flood")[-1]
+    worst = sheet(check("a:latch:Q4", -1.0, title="latch reset", outcome="did not let go"))
+    found = replace(revision, margins=json.dumps(worst.as_json()))
+    for width, there in ((80, False), (100, True), (120, True)):
+        row = plain(history_rows([Branch(found, 0)], (), None, None, width)[0].spans)
+        assert ("X fails    latch reset " in row) is there
+        heads = plain(history_heading(width))
+        assert heads.index("note") == row.index(revision.note.line)

@@ -3,22 +3,25 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
 
-from stagebook.storage import Store
+from stagebook.engine.results import Verdict
+from stagebook.storage import Note, Store, Worst
 from stagebook.tui.messages import SolverPreparing
 from stagebook.tui.screens.bench import BenchScreen
 from stagebook.tui.screens.part_data import PartDataScreen
 from stagebook.tui.screens.shelf import ShelfScreen
-from stagebook.tui.shown import Span, line
+from stagebook.tui.shelf_text import shelf_line
+from stagebook.tui.shown import Span, line, plain
 from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import Row, RowList
 from stagebook.tui.widgets.status import Notice
 
-from .conftest import document, flood, seen, settled, shown, until
+from .conftest import Gates, corners, document, flood, seen, settled, shown, until
 
 SIZE = (80, 24)
 
@@ -165,3 +168,17 @@ async def test_q_leaves(app: StagebookApp) -> None:
         await settled(pilot)
         await pilot.press("q")
     assert app.return_code == 0
+
+
+def test_a_margin_that_fails_by_what_happened_says_so_as_elsewhere(shelf: Store, gates: Gates) -> None:
+    told = replace(corners(gates, flood()).checks[0], margin=-1.0, verdict=Verdict.FAIL, outcome="did not let go")
+    found = replace(corners(gates, flood()), checks=(told,))
+    shelf.create("tilt", flood())
+    shelf.save("tilt", Note("it does not let go"), found)
+    row = next(row for row in shelf.designs() if row.name == "tilt")
+    assert row.worst == Worst(told.id, -1.0, Verdict.FAIL, "did not let go")
+    for own in (None, found):
+        shown = plain(shelf_line(replace(row, edits_pending=1 if own else 0), own, 80))
+        assert "X fails " in shown
+        assert "-100" not in shown
+        assert "FAIL" not in shown

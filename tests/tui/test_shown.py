@@ -43,7 +43,7 @@ def test_a_margin_of_many_digits_keeps_its_place(margin: float, shown: str) -> N
 
 def test_an_outcome_stands_in_words_where_a_number_would_mislead() -> None:
     assert figure(-1.0, "never fired", 7) == "never"
-    assert figure(-1.0, "did not let go", 7) == "did not"
+    assert figure(-1.0, "did not let go", 8) == figure(-1.0, "does not run out", 9) == "fails"
     assert figure(-1.0, "the latch lets go by itself", 8) == "fails"
     assert figure(-1.0, "oscillates", 7) == "fails"
     assert figure(1.0, "immune at any slew", 7) == "immune"

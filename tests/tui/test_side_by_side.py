@@ -2,11 +2,21 @@
 
 from __future__ import annotations
 
+import pytest
+
 from stagebook.engine.design.document import Design
 from stagebook.engine.studies.causes import Cause, CausesSheet
 from stagebook.engine.studies.comparison import Side, compare
 from stagebook.tui.shown import plain
-from stagebook.tui.side_by_side import FOLDED, causes_line, columns_in_sight, compare_rows, side_lines
+from stagebook.tui.side_by_side import (
+    FOLDED,
+    causes_line,
+    columns_in_sight,
+    compare_heading,
+    compare_rows,
+    side_lines,
+    title_cells,
+)
 
 from .conftest import document
 from .sheets import check, sheet
@@ -69,3 +79,20 @@ def test_the_first_column_stays_in_sight_beside_the_chosen_one() -> None:
     assert columns_in_sight(6, 5, 78, 30) == [0, 4, 5]
     assert columns_in_sight(6, 1, 78, 30) == [0, 1, 2]
     assert columns_in_sight(3, 1, 120, 30) == [0, 1, 2]
+
+
+@pytest.mark.parametrize("width", [60, 80, 100, 120])
+@pytest.mark.parametrize("count", [2, 3, 6])
+def test_no_column_in_sight_is_cut(count: int, width: int) -> None:
+    margins = [{**OLD, "a:s:R1": -12.0 * at, "b:s:R2": 0.5 + at} for at in range(count)]
+    sides = [
+        Side(f"r{at}", sheet(*(check(name, margin) for name, margin in each.items())), DESIGN)
+        for at, each in enumerate(margins, 1)
+    ]
+    title = title_cells(count, width)
+    sight = columns_in_sight(count, count - 1, width, title)
+    rows = compare_rows(compare(sides, count - 1), sides, sight, title)
+    lines = [plain(compare_heading(sides, sight, count - 1, title)), *(plain(row.spans) for row in rows)]
+    assert len(sight) >= 2
+    assert max(len(text.rstrip()) for text in lines) <= width - 2
+    assert any(text.endswith(" <-999") for text in lines)

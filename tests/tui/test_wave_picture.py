@@ -20,6 +20,7 @@ from stagebook.tui.wave_picture import (
     scale_of,
     strip_of,
 )
+from stagebook.tui.widgets.wave_plot import net_cell
 
 from .conftest import flood
 
@@ -109,3 +110,11 @@ def test_the_axis_names_events_where_they_are() -> None:
 def test_events_at_one_instant_are_one_mark() -> None:
     found = marks_of(flood(), "alarm")
     assert len({mark.at for mark in found}) == len(found)
+
+
+def test_long_names_of_nets_are_cut_so_that_they_differ() -> None:
+    nets = ["entry.power", "entry.load", "base", "a.long_sensor", "b.long_sensor"]
+    assert [net_cell(net, nets, 6) for net in nets[:3]] == [".power", ".load ", "base  "]
+    # These end alike, so their ends tell nothing.
+    assert [net_cell(net, nets, 6) for net in nets[3:]] == ["a.lon.", "b.lon."]
+    assert [net_cell(net, nets, 11) for net in nets[:2]] == ["entry.power", "entry.load "]

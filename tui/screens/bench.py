@@ -95,7 +95,7 @@ class BenchScreen(BenchWays):
     def _put(self, words: str, after: Design) -> None:
         """A design that an answered question made."""
         if self._edit(lambda: self.drafting.put(words, after)):
-            self.say(words)
+            self.say(words, passing=True)
             self.tell_cautions(words)
 
     def taken_over(self, reason: str) -> None:

@@ -14,7 +14,15 @@ from ..computing import Computing
 from ..drafting import changes_words, incomplete
 from ..messages import CausesArrived, CausesProgress, CausesRefused, SolverPreparing
 from ..shown import Line, Span, line
-from ..side_by_side import FOLDED, causes_line, columns_in_sight, compare_heading, compare_rows, side_lines
+from ..side_by_side import (
+    FOLDED,
+    causes_line,
+    columns_in_sight,
+    compare_heading,
+    compare_rows,
+    side_lines,
+    title_cells,
+)
 from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
 from ..widgets.rule import Rule
@@ -84,7 +92,7 @@ class CompareScreen(Page[None]):
         self.query_one("#changed", Lines).show(line(f" {changed or 'no part differs'}"))
         rows = self.query_one(RowList)
         width = rows.size.width
-        title_width = max(10, min(34, width - 2 - 11 - 17 * min(2, len(self._sides) - 1)))
+        title_width = title_cells(len(self._sides), width)
         sight = columns_in_sight(len(self._sides), self._chosen, width, title_width)
         rows.show(
             compare_rows(self._compared, self._sides, sight, title_width, fold=self._fold),

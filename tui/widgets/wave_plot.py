@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 
+from rich.cells import cell_len
 from textual import events
 from textual.geometry import Region
 from textual.message import Message
 from textual.strip import Strip as Drawn
 
-from ..shown import Line, Span, fit, fit_right
+from ..shown import Line, Span, fit, fit_right, visible
 from ..wave_picture import LABEL, Scale, Strip, axis_lines, volts
 from .lines import TonedWidget
 
@@ -37,7 +38,7 @@ class WavePlot(TonedWidget, can_focus=True):
     def show(self, strips: Sequence[Strip], scale: Scale, cursor: int) -> None:
         """Shows these strips over the events of the scale."""
         self._cursor = cursor
-        self._lines = [line for strip in strips for line in _labelled(strip)]
+        self._lines = [line for strip in strips for line in _labelled(strip, [each.net for each in strips])]
         rows = self.room[1]
         self._lines += [("", "")] * max(0, rows - len(self._lines))
         self._lines += [("", text) for text in axis_lines(scale)]
@@ -63,12 +64,28 @@ class WavePlot(TonedWidget, can_focus=True):
         self.post_message(self.Pointed(event.x - LABEL))
 
 
-def _labelled(strip: Strip) -> list[tuple[str, str]]:
+def net_cell(net: str, others: Collection[str], width: int) -> str:
+    """The name of a net in ``width`` cells. A long one is cut at its front, where its stage stands (``.power``), but
+    at its end where that would read as another one of them."""
+    cut = _end(net, width)
+    return fit(net, width) if any(_end(other, width) == cut for other in others if other != net) else fit(cut, width)
+
+
+def _end(net: str, width: int) -> str:
+    shown = visible(net)
+    if cell_len(shown) <= width:
+        return shown
+    while cell_len(shown) > width - 1:
+        shown = shown[1:]
+    return "." + shown.removeprefix(".")
+
+
+def _labelled(strip: Strip, nets: Collection[str]) -> list[tuple[str, str]]:
     """The rows of a strip behind its name and the voltages of its edges."""
     labels = [""] * len(strip.rows)
     high, low = volts(strip.high, 3), volts(strip.low, 3)
     room = LABEL - 1
-    labels[0] = fit(strip.net, max(3, room - len(high) - 1)) + " " + high
+    labels[0] = net_cell(strip.net, nets, max(3, room - len(high) - 1)) + " " + high
     if len(labels) > 1:
         labels[-1] = fit_right(low, room)
     return [(fit_right(label, room), row) for label, row in zip(labels, strip.rows, strict=True)]
