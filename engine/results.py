@@ -13,6 +13,10 @@ ENGINE = "1"
 """Version of laws and formulas, stored with every margin: it moves when the same document gives other numbers."""
 
 
+SAME_MARGIN = 5e-4
+"""A margin that is computed again and lies nearer than this to what it was is the same."""
+
+
 class Verdict(StrEnum):
     """What a margin says about a requirement."""
 

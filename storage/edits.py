@@ -103,6 +103,15 @@ def redo(session: Session, draft: StoredDraft, name: str) -> None:
     draft.head_id = edit.id
 
 
+def beginning(session: Session, draft: StoredDraft, name: str) -> str:
+    """The document before the first of the edits that led to the draft's present state."""
+    document, edit = draft.document, last(session, draft)
+    while edit is not None:
+        document = moved(document, edit.inverse, name)
+        edit = None if edit.parent_id is None else session.get(StoredEdit, edit.parent_id)
+    return document
+
+
 def jump(session: Session, draft: StoredDraft, head: int | None, document: str) -> None:
     """Move the draft to any state of its tree. The way there counts as used, so undo and redo lead back along it."""
     draft.head_id, draft.document = head, document

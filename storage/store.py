@@ -140,6 +140,12 @@ class Store:
         self._seat.seen[place.design.id] = place.draft.head_id
         return shown
 
+    def beginning(self, name: str) -> Design:
+        """The design as it was put on the shelf, before its first edit."""
+        with self.reading() as session:
+            place = self._find(session, name)
+            return Design.load(edits.beginning(session, place.draft, name))
+
     def edit(self, name: str, label: str, design_after: Design) -> Draft:
         """Change the draft to ``design_after``; a document that says the same makes no edit."""
         with self._editing(name) as (session, place):

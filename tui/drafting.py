@@ -12,6 +12,7 @@ from ..engine.design.part import Part
 from ..engine.errors import EngineError
 from ..engine.parts.made import as_design, kept
 from ..engine.results import ENGINE, Depth, MarginSheet
+from ..storage.errors import StorageError
 from ..storage.store import Store
 from ..storage.values import Draft, MadePart, Note, Revision
 
@@ -48,6 +49,9 @@ class Drafting(Drawer):
         self.base: Revision | None = self._base()
         self._changes: tuple[Change, ...] = ()
         self._changes_of: tuple[str, str] | None = None
+        self._begun: Design | None = None
+        self._noted: tuple[Change, ...] = ()
+        self._noted_of = ""
 
     @property
     def name(self) -> str:
@@ -142,6 +146,20 @@ class Drafting(Drawer):
         if self._changes_of != now:
             self._changes_of, self._changes = now, differences(self.base.design, self.design)
         return self._changes
+
+    def noted_changes(self) -> tuple[Change, ...]:
+        """What the next revision changes: from the revision before it, or from the design as it was put on the
+        shelf."""
+        if self.base is not None or self.draft.edits == 0:
+            return self.changes()
+        if self._begun is None:
+            try:
+                self._begun = self._store.beginning(self.name)
+            except StorageError:  # a note can be written without; undo says what is damaged
+                return ()
+        if self._noted_of != self.design.content:
+            self._noted_of, self._noted = self.design.content, differences(self._begun, self.design)
+        return self._noted
 
     def neighbours(self, ref: str) -> tuple[str | None, str | None]:
         """The next lower and next higher preferred value of a part; None where there is none."""

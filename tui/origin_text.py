@@ -5,7 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from ..engine.quantity import write_plain
-from ..engine.results import CheckResult
+from ..engine.results import SAME_MARGIN, CheckResult
 from .shown import TONES, percent, verdict_words
 
 if TYPE_CHECKING:
@@ -13,7 +13,6 @@ if TYPE_CHECKING:
 
 Rows = list[tuple[str, str, str]]
 _UNITS = {"supply": "V", "ambient": "degC", "source_resistance": "ohm"}
-SAME = 5e-4  # a margin that is computed again and lies nearer than this is the same
 
 
 def origin_rows(check: CheckResult, worst_known: bool) -> Rows:
@@ -84,7 +83,7 @@ def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
     rows: Rows = []
     if found.put_in:
         rows.append(("put in", found.put_in, ""))
-    if found.margin is not None and check.margin is not None and abs(found.margin - check.margin) > SAME:
+    if found.margin is not None and check.margin is not None and abs(found.margin - check.margin) > SAME_MARGIN:
         here = f"{percent(found.margin)} %, computed just now in the corner above; the margin above is older"
         rows.append(("here and now", here, "thin"))
     rows.append(("required", f"{percent(found.required.value)} %, {found.required.source}", ""))

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from dataclasses import asdict, dataclass
+from math import floor
 from typing import Any
 
 import numpy as np
@@ -25,7 +26,7 @@ from ..parts.figures import class_figures, figure
 from ..parts.kind import TEXT
 from ..primitives.columns import CONDITIONS, Column, Lanes
 from ..quantity import write_plain
-from ..results import CheckResult
+from ..results import SAME_MARGIN, CheckResult
 from ..run import never
 from .evaluate import judge, look
 from .lanes import Setting, lanes_of
@@ -89,7 +90,7 @@ def explain(design: Design, result: CheckResult, *, cancelled: Callable[[], bool
     ask = _asked(circuit, result.id, ledger)
     lanes = lanes_of(circuit.columns, [Setting.from_kept(result.setting)])
     if ask.missing is not None:
-        return _explanation(circuit, ask, ledger, None, lanes, ())
+        return _explanation(circuit, ask, ledger, None, lanes, (), result)
     trials = None if ask.trial is None else {ask.trial.key: [0]}
     seen = look(circuit, (ask,), lanes, trials=trials, cancelled=cancelled)
     judged, _ = judge(ask, noted(seen, ledger))
@@ -110,7 +111,7 @@ def explain(design: Design, result: CheckResult, *, cancelled: Callable[[], bool
             )
             for row, value in edge.values.items()
         ]
-    return _explanation(circuit, ask, ledger, judged, lanes, tuple(observed))
+    return _explanation(circuit, ask, ledger, judged, lanes, tuple(observed), result)
 
 
 def _asked(circuit: Circuit, name: str, ledger: Ledger) -> Ask:
@@ -125,7 +126,13 @@ def _asked(circuit: Circuit, name: str, ledger: Ledger) -> Ask:
 
 
 def _explanation(
-    circuit: Circuit, ask: Ask, ledger: Ledger, judged: Judged | None, lanes: Lanes, observed: tuple[Observation, ...]
+    circuit: Circuit,
+    ask: Ask,
+    ledger: Ledger,
+    judged: Judged | None,
+    lanes: Lanes,
+    observed: tuple[Observation, ...],
+    known: CheckResult,
 ) -> Explanation:
     check = ask.check
     unit = check.unit if ask.unit is None else ask.unit
@@ -135,16 +142,16 @@ def _explanation(
     columns = {column.key: column for column in circuit.columns}
     for key in ledger.columns:
         used += _column(circuit, columns[key], float(lanes[key][0]))
-    known = {each.what for each in used}
+    told = {each.what for each in used}
     for datum in ledger.data.values():
         part, found = circuit.design.part(datum.ref), datum.figure
         what = f"{datum.ref} {datum.key.replace('_', ' ')}"
-        if what not in known:
+        if what not in told:
             used.append(Used(what, found.typical, datum.unit, found.low, found.high, data_source(part, datum.key)))
     return Explanation(
         id=ask.id,
         formula=check.formula,
-        put_in="" if judged is None else _put_in(judged, unit),
+        put_in="" if judged is None else _put_in(judged, unit, known),
         margin=None if judged is None else _one(judged.margin),
         by_hand=check.by_hand,
         hand_source=check.hand_source,
@@ -155,11 +162,15 @@ def _explanation(
     )
 
 
-def _put_in(judged: Judged, unit: str) -> str:
-    """The margin's own formula with numbers."""
+def _put_in(judged: Judged, unit: str, known: CheckResult) -> str:
+    """The margin's own formula with numbers: those that are ``known`` of it where it is the same margin."""
     margin, words = _one(judged.margin), judged.outcome(0)
-    result = "not known" if margin is None else f"{margin:+.1%}"
+    same = margin is not None and known.margin is not None and abs(known.margin - margin) <= SAME_MARGIN
+    margin = known.margin if same else margin
+    result = "not known" if margin is None else _percent(margin)
     if words is not None:
+        if margin is not None and abs(margin) == 1.0:
+            return f"m = {result}, which stands for: {words}"
         result += f" ({words})"
     if judged.value is not None and judged.limits is not None:
         value = _one(judged.value)
@@ -170,10 +181,17 @@ def _put_in(judged: Judged, unit: str) -> str:
     demand, capability = (None if each is None else _one(each) for each in (judged.demand, judged.capability))
     if demand is None or capability is None:
         return f"m = {result}"
+    if same and known.demand is not None and known.capability is not None:
+        demand, capability = known.demand, known.capability
     there, can = write_plain(demand, unit), write_plain(capability, unit)
-    if capability > 0.0 and margin is not None and abs(1.0 - demand / capability - margin) > 1e-6 and words is None:
+    if capability > 0.0 and margin is not None and abs(1.0 - demand / capability - margin) > 1e-6:
         return f"D = {there}, C = {can}, m = {result}"
     return f"m = 1 - D/C = 1 - {there} / {can} = {result}"
+
+
+def _percent(margin: float) -> str:
+    """In whole percent, rounded towards the worse as wherever a margin is shown."""
+    return f"{floor(margin * 100.0 + 1e-9):+d} %"
 
 
 def _column(circuit: Circuit, column: Column, value: float) -> Iterator[Used]:

@@ -221,3 +221,13 @@ def _same_end(moved: bool, attempt: Callable[[str], object], refusal: type[Excep
     else:
         with pytest.raises(refusal):
             attempt("flood")
+
+
+def test_the_beginning_is_what_was_put_on_the_shelf(flood: Store, design: Callable) -> None:
+    first = flood.draft("flood").design
+    assert flood.beginning("flood") == first
+    for value in ("22k", "33k", "47k"):
+        flood.edit("flood", "R8", design(value))
+    flood.undo("flood")
+    assert flood.beginning("flood") == first
+    assert flood.draft("flood").design == design("33k")

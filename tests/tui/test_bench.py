@@ -8,16 +8,19 @@ from __future__ import annotations
 import pytest
 from textual.pilot import Pilot
 
+from stagebook.engine.design.document import Design
 from stagebook.storage import Store
+from stagebook.tui.drafting import Drafting
 from stagebook.tui.screens.bench import BenchScreen
 from stagebook.tui.screens.compare import CompareScreen
-from stagebook.tui.screens.saving import Waiting
+from stagebook.tui.screens.saving import Waiting, noted_words
 from stagebook.tui.screens.shelf import ShelfScreen
+from stagebook.tui.solver import Solver
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import RowList
 from stagebook.tui.widgets.status import Notice
 
-from .conftest import Gates, seen, settled, shown, until
+from .conftest import Gates, document, flood, seen, settled, shown, until
 
 SIZE = (80, 24)
 
@@ -491,3 +494,31 @@ async def test_figures_that_a_revision_holds_are_not_computed_again(app: Stagebo
         assert len(gates.studied) == len(studied) + 1
         assert not bench.figures.worst_old
         assert not bench.figures.spread_old
+
+
+async def test_the_note_of_a_first_revision_says_what_was_edited(store: Store, solver: Solver) -> None:
+    store.create("flood", flood())
+    store.edit("flood", "R7 390k", flood(R7="390k"))
+    async with StagebookApp(store, solver).run_test(size=SIZE) as pilot:
+        await settled(pilot)
+        await pilot.press("enter")
+        await settled(pilot)
+        await pilot.press("s")
+        await pilot.pause()
+        assert "R7 470k > 390k" in seen(pilot)
+        await pilot.press(*"why", "enter")
+        await until(pilot, lambda: len(store.revisions("flood")) == 1)
+    assert store.revisions("flood")[0].note.change == "R7 470k > 390k"
+
+
+def test_a_first_revision_made_of_edits_alone_does_not_fill_its_note(store: Store) -> None:
+    bare = {**document(), "stages": []}
+    store.create("flood", Design.load(bare))
+    store.edit("flood", "+stages", flood())
+    drafting = Drafting(store, "flood")
+    everything = drafting.noted_changes()
+    assert len(everything) > 20
+    words = noted_words(drafting)
+    assert words.endswith(f", and {len(everything) - 12} more")
+    assert "+C4" in words
+    assert "R9" not in words

@@ -3,15 +3,18 @@
 from __future__ import annotations
 
 import codecs
+import re
+import shutil
 import sys
 from argparse import ArgumentParser
 from collections.abc import Mapping, Sequence
-from textwrap import wrap
+from textwrap import TextWrapper, wrap
 from typing import Any
 
 from ..shown import json_text, visible
 
 WIDTH = 80
+_LONGEST = 40  # characters of one piece of an id or one word; longer ones are broken
 
 
 def json_argument(parser: ArgumentParser) -> None:
@@ -28,22 +31,39 @@ def print_json(value: Mapping[str, Any]) -> None:
 def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: frozenset[int] = frozenset()) -> None:
     """Rows in columns; the last column takes what is left of the line and goes on below where it is longer.
 
+    The line is the terminal's where there is one, else of eighty columns. Ids are broken at their colons only.
+
     ``right`` are the columns of figures, which end in line. The last column may hold line breaks of its own. Text of
     the user's cannot steer the terminal.
     """
     rows = [(*map(visible, row[:-1]), row[-1]) for row in rows]
     widths = [max(map(len, column)) for column in zip(heads, *rows, strict=True)][:-1]
     indent = sum(widths) + 2 * len(widths)
+    line_of = _Pieces(max(_line_width() - indent, 16))
     for row in (heads, *rows):
         cells = [
             text.rjust(width) if column in right else text.ljust(width)
             for column, (text, width) in enumerate(zip(row, widths, strict=False))
         ]
-        room = max(WIDTH - indent, 16)
-        first, *more = [line for part in row[-1].split("\n") for line in wrap(visible(part), room)] or [""]
+        first, *more = [line for part in row[-1].split("\n") for line in line_of.wrap(visible(part))] or [""]
         print("  ".join((*cells, first)).rstrip())
         for line in more:
             print(" " * indent + line)
+
+
+class _Pieces(TextWrapper):
+    """Breaks at spaces and behind colons; only what is no name any more is broken anywhere."""
+
+    def __init__(self, width: int) -> None:
+        super().__init__(width, break_on_hyphens=False, break_long_words=False)
+
+    def _split(self, text: str) -> list[str]:
+        chunks = super()._split(text)
+        return [piece for chunk in chunks for piece in re.findall(rf"[^:]{{1,{_LONGEST}}}:*|:+", chunk)]
+
+
+def _line_width() -> int:
+    return shutil.get_terminal_size((WIDTH, 24)).columns if sys.stdout.isatty() else WIDTH
 
 
 def print_pairs(pairs: Sequence[tuple[str, str]]) -> None:

@@ -32,6 +32,7 @@ _PLACES = (
 )
 
 
+_MOST_CHANGES = 12
 _NOT_SAVED = "not saved; s asks again and still knows the note, after a restart too"
 _NOT_KEPT = "not saved; s asks again and still knows the note until you leave"
 
@@ -113,7 +114,7 @@ class Saving:
 
     def ask(self) -> None:
         """Asks for the note."""
-        known = {"change": changes_words(self._drafting.changes()), **self.written}
+        known = {"change": noted_words(self._drafting), **self.written}
         fields = [Field(name, label, known.get(name, ""), example) for name, label, example in _PLACES]
         self._page.app.push_screen(
             Form("Why does this revision exist?", fields, _refusal, kept=self._keep), self._noted
@@ -121,7 +122,7 @@ class Saving:
 
     def _keep(self, answers: Answers) -> None:
         """Remembers what was written, but for the changes that are filled in anew each time."""
-        filled = changes_words(self._drafting.changes())
+        filled = noted_words(self._drafting)
         self.written |= {name: text.strip() for name, text in answers.items() if text.strip() or name in self.written}
         if self.written.get("change") == filled:
             del self.written["change"]
@@ -180,6 +181,14 @@ class Saving:
             self._kept()
             self._keeping.now()
             self._saved(kept[0])
+
+
+def noted_words(drafting: Drafting) -> str:
+    """What was changed, as the note is filled in; of a first revision that has all its parts from edits, not all."""
+    changes = drafting.noted_changes()
+    most = len(changes) if drafting.base is not None else _MOST_CHANGES
+    more = f", and {len(changes) - most} more" if len(changes) > most else ""
+    return changes_words(changes[:most]) + more
 
 
 def _refusal(answers: Answers) -> str | None:

@@ -2,12 +2,16 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
+import numpy as np
 import pytest
 
+from stagebook.engine.checks.check import Judged, ratio
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError
 from stagebook.engine.results import CheckResult
-from stagebook.engine.studies.explanation import Explanation, explain
+from stagebook.engine.studies.explanation import Explanation, _put_in, explain
 from stagebook.engine.studies.margins import study
 
 from ..checks.latches import latch
@@ -34,7 +38,7 @@ def heated(**more: object) -> Design:
 
 def test_values_put_in_observation_data_and_factor() -> None:
     result, found = explained(heated(), "resistor_power", "R1")
-    assert found.put_in == "m = 1 - D/C = 1 - 81 mW / 150 mW = +46.0%"
+    assert found.put_in == "m = 1 - D/C = 1 - 81 mW / 150 mW = +46 %"
     assert found.formula == result.formula
     (power,) = found.observed
     assert (power.what, power.unit, power.sequence, power.at) == ("power of R1 at 500 ms", "W", "alarm", 0.5)
@@ -109,3 +113,24 @@ def test_only_one_margin_is_studied_where_only_one_is_asked_for() -> None:
     sheet = study(timer(None), only="arrival:unit:C1")
     assert [check.id for check in sheet.checks] == ["arrival:unit:C1"]
     assert sheet.checks[0] == margin(timer(None), "arrival", "C1")
+
+
+def judged(demand: float, capability: float, outcomes: tuple[tuple[np.ndarray, str], ...] = ()) -> Judged:
+    return ratio(np.array([demand]), np.array([capability]), outcomes)
+
+
+def test_figures_put_in_are_those_that_stand_above_and_rounded_alike() -> None:
+    result, _ = explained(heated(), "resistor_power", "R1")
+    # 1 - 1.333 = -33.3 %: whole percent, towards the worse, as wherever a margin is shown.
+    worse = replace(result, demand=4.0, capability=3.0, margin=1.0 - 4.0 / 3.0)
+    assert _put_in(judged(4.0, 3.0), "V", worse) == "m = 1 - D/C = 1 - 4 V / 3 V = -34 %"
+    # Computed again it came out 0.01 % different: the same margin, so its own figures.
+    assert _put_in(judged(4.0003, 3.0), "V", worse) == "m = 1 - D/C = 1 - 4 V / 3 V = -34 %"
+    assert _put_in(judged(4.5, 3.0), "V", worse) == "m = 1 - D/C = 1 - 4.5 V / 3 V = -50 %"
+
+
+def test_a_margin_that_stands_for_an_outcome_is_not_put_down_to_figures() -> None:
+    result, _ = explained(heated(), "resistor_power", "R1")
+    lost = judged(1.048e-3, 2.583e-6, ((np.array([True]), "did not let go"),))
+    told = replace(result, margin=-1.0, outcome="did not let go", demand=1.048e-3, capability=2.583e-6)
+    assert _put_in(lost, "A", told) == "m = -100 %, which stands for: did not let go"
