@@ -14,6 +14,7 @@ from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, voltage
 from ..quantity import write
 from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .driven import driven, ends, own_current
 from .seen import Seen
 from .view import View, polarity
 
@@ -25,35 +26,36 @@ SATURATED = 0.2  # V across a transistor that is fully on, from memory
 def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every driver with a load."""
     for stage, role, part in view.with_role("driver"):
-        load = view.role(stage, "load" if role == "driver" else role.replace("driver", "load"))
-        if load is None or view.bench(part.ref).gain is None:
+        loads = driven(view, stage, role, part)
+        if not loads or view.bench(part.ref).gain is None:
             continue
+        load = loads[0]
         if view.bench(load.ref).on is None:
             requirement = view.requirement(check.slug, part.ref, stage.name)
             required = view.required(check.slug, check.required, requirement)
             missing = f"operating_minimum of {load.ref}"
             yield unknown(check, stage.name, part.ref, view.sequence(requirement), required, missing)
         else:
-            yield _ask(check, view, stage, part, load)
+            yield _ask(check, view, stage, part, loads)
 
 
-def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
+def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, ...]) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     sequence = view.sequence(requirement)
-    bench, driven = view.bench(part.ref), view.bench(load.ref)
+    bench, load = view.bench(part.ref), loads[0]
     at = view.while_on(sequence, load)
-    plus, minus, _ = driven.on or ("", "", 0.0)
     base = level(bench.currents["base"], at)
-    across = level(voltage(plus, minus), at)
+    told = [(draw, level(voltage(*ends(view, each)), at)) for each in loads if (draw := view.bench(each.ref).draw)]
+    silent = [row for each in loads if view.bench(each.ref).draw is None for row in own_current(view, each, at)]
     drop = level(voltage(part.pins["collector"], part.pins["emitter"]), at)
     driving = base_drive(view, stage, part, at)
 
     def judge(seen: Seen) -> Judged:
         fallen = np.abs(seen.value(drop, sequence))
         saturated = view.customary("drop of a transistor that is fully on", SATURATED, "V")
-        volts = seen.value(across, sequence) + np.maximum(0.0, fallen - saturated)
-        assert driven.draw is not None
-        wanted = driven.draw(seen.lanes, volts)
+        more = np.maximum(0.0, fallen - saturated)
+        parts = [draw(seen.lanes, np.abs(seen.value(row, sequence)) + more) for draw, row in told]
+        wanted = np.sum([*parts, *(np.abs(seen.value(row, sequence)) for row in silent)], axis=0)
         gain = guaranteed_gain(bench, seen.lanes, wanted)
         never = ~seen.seen(base, sequence)
         hand = None
@@ -66,7 +68,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         return replace(judged, extrapolated=gain_beyond(part, bench, wanted))
 
     required = view.required(check.slug, check.required, requirement)
-    rows = (base, across, drop, *(() if driving is None else (driving.row,)))
+    rows = (base, drop, *(row for _, row in told), *silent, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 

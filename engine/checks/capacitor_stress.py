@@ -10,6 +10,7 @@ from ..design.part import Part, Stage
 from ..primitives.builder import RETURN, SUPPLY_NET
 from ..primitives.signals import Anchor, Signal, integral, maximum, minimum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
+from .driven import drawn, together
 from .peak_collector_emitter import LIFTED
 from .seen import Seen
 from .top_voltage import beside, beyond_rails, top_voltage
@@ -101,7 +102,7 @@ def _ripple_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     load = view.load(stage)
     whole = view.ends(sequence)
     drawing = load or view.role(stage, "load")
-    draw = None if drawing is None else view.bench(drawing.ref).draw
+    draw = None if drawing is None else drawn(view, together(view, drawing))
     apart = "" if draw is not None else "nothing in the role load says what it draws in turns"
     if load is None:
         start, end = Anchor(0.5 * whole), Anchor(whole)

@@ -15,6 +15,7 @@ from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
 from ..primitives.signals import START, Anchor, Row, integral, level
 from ..run import Observed
 from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .driven import drawn, surged, together
 from .seen import Seen
 from .view import View
 
@@ -80,7 +81,7 @@ def load_asks(check: Check, view: View) -> Iterator[Ask]:
         rows = tuple(level(view.bench(part.ref).currents["a"], at) for at in instants)
 
         load = view.load(stage)
-        draw = None if load is None else view.bench(load.ref).draw
+        draw = None if load is None else drawn(view, together(view, load))
 
         def judge(seen: Seen) -> Judged:
             found = np.abs(np.array([seen.value(row, sequence) for row in rows]))
@@ -141,9 +142,9 @@ def _charged(view: View, part: Part, load: Part | None) -> Callable[[Seen], Floa
         (c, next((r for r in filters if set(r.pins.values()) & set(c.pins.values())), None))
         for _, _, c in view.with_role("filter_capacitor", "reservoir_capacitor")
     ]
-    bench = None if load is None else view.bench(load.ref)
-    draw = None if bench is None else bench.inrush or bench.draw
-    surge = None if load is None else view.datum(load, "surge", "A")
+    benches = view.circuit.benches
+    loads = () if load is None else together(view, load)
+    drawn_at_once = surged(view, loads, lambda each: benches[each.ref].inrush or benches[each.ref].draw)
 
     def melts(seen: Seen) -> Floats:
         lanes = seen.lanes
@@ -154,10 +155,7 @@ def _charged(view: View, part: Part, load: Part | None) -> Callable[[Seen], Floa
         for capacitor, resistor in capacitors:
             ohms = before + (0.0 if resistor is None else lanes[resistor.ref, "value"])
             total = total + 0.5 * lanes[capacitor.ref, "value"] * lanes[SUPPLY] ** 2 / ohms
-        drawn = np.zeros(lanes.count) if draw is None else np.asarray(draw(lanes, lanes[SUPPLY]))
-        if surge is not None:
-            drawn = np.maximum(drawn, surge.high)
-        return np.asarray(np.maximum(total, drawn**2 * PULSE))
+        return np.asarray(np.maximum(total, drawn_at_once(lanes, lanes[SUPPLY]) ** 2 * PULSE))
 
     return melts
 

@@ -25,6 +25,7 @@ from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, Row, integral, lagged, level, maximum
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
+from .driven import drawn, driven
 from .reverse_base_emitter import BIPOLAR
 from .seen import Seen
 from .view import View
@@ -96,8 +97,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
 def _conducts(view: View, stage: Stage, part: Part) -> Callable[[Seen], Floats] | None:
     """The loss of a driver whose load is on: I V_CE(sat), or I^2 R_on; None of any other part."""
     roles = [role for role, ref in view.roles_of(stage).items() if ref == part.ref and role.startswith("driver")]
-    load = view.role(stage, roles[0].replace("driver", "load")) if roles else None
-    draw = None if load is None else view.bench(load.ref).draw
+    draw = drawn(view, driven(view, stage, roles[0], part)) if roles else None
     drop, ohms = view.datum(part, "v_ce_sat", "V"), view.datum(part, "resistance_on", "ohm")
     if draw is None or (drop is None and ohms is None) or view.design.conditions.supply is None:
         return None
@@ -180,7 +180,7 @@ class _Heat:
             moments = [view.anchor(moment, name) for moment in sequence.moments]
             steady[name] = tuple(level(power, at) for at in moments or [Anchor(0.5 * view.ends(name))])
         roles = [role for role, ref in view.roles_of(stage).items() if ref == part.ref and role.startswith("driver")]
-        load = view.role(stage, roles[0].replace("driver", "load")) if roles else None
+        load = next(iter(driven(view, stage, roles[0], part) if roles else ()), None)
         on = None
         if load is not None and view.bench(load.ref).on is not None:
             begin, end = view.event(f"{load.ref} on"), view.event(f"{load.ref} off")

@@ -18,6 +18,7 @@ from ..parts.physics import copper_factor
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
 from ..primitives.signals import Anchor, level, maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
+from .driven import drawn, together
 from .seen import Seen
 from .view import View
 
@@ -100,7 +101,8 @@ def fed_otherwise(view: View, sequence: str) -> bool:
 def left_by_hand(view: View, stage: Stage, load: Part, lanes: Lanes) -> Floats | None:
     """The supply less the drops that the data tell: saturation, entry diode, source and lead resistance, V per lane;
     None where supply or load are not given."""
-    draw = view.bench(load.ref).draw
+    loads = together(view, load)
+    draw = drawn(view, loads)
     if draw is None or SUPPLY not in lanes:
         return None
     supply = lanes[SUPPLY]

@@ -9,6 +9,7 @@ import numpy as np
 from ..design.part import Part, Stage
 from ..primitives.signals import Anchor, level
 from .check import Ask, Check, Judged, ratio, unknown
+from .driven import driven
 from .seen import Seen
 from .view import View, forward_base_voltage
 
@@ -28,8 +29,8 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
 def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     sequence = view.sequence(requirement)
-    driven = view.role(stage, role.replace("driver", "load")) if role.startswith("driver") else None
-    rests = driven is not None and view.rests_on(driven)
+    load = next(iter(driven(view, stage, role, part)), None) if role.startswith("driver") else None
+    rests = load is not None and view.rests_on(load)
     at = view.moment(sequence, *(("sounding", "on") if rests else ("standby",))) or Anchor(0.5 * view.ends(sequence))
     across = level(forward_base_voltage(part), at)
     permitted = view.extra(requirement, "off_current", "A") or view.customary("permitted off-current", PERMITTED, "A")

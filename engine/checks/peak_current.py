@@ -1,6 +1,7 @@
-"""Check 10: can a transistor, bipolar or field-effect, carry the inrush of its load?
+"""Check 10: can a transistor, bipolar or field-effect, carry the inrush of its load, of all that it drives in parallel?
 
-The inrush is taken from the load's data and not from the simulation, in which the transistor itself limits it.
+The inrush is taken from the load's data and not from the simulation, in which the transistor itself limits it. Loads on
+one switched net come on at once, so that their inrushes add (Kirchhoff's current law).
 """
 
 from __future__ import annotations
@@ -18,6 +19,7 @@ from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
 from .base_overdrive import SATURATED, UNDRIVEN, base_drive, gain_beyond, guaranteed_gain
 from .check import Ask, Check, Judged, ratio, unknown
+from .driven import driven, ends, own_current
 from .peak_collector_emitter import MOSFETS, gate_by_hand, gate_divider
 from .seen import Seen
 from .view import View, polarity
@@ -29,13 +31,12 @@ Inrush = Callable[[Lanes, Floats], Floats]
 def asks(check: Check, view: View) -> Iterator[Ask]:
     """One ask for every driver with a load."""
     for stage, role, part in view.with_role("driver"):
-        load = view.role(stage, "load" if role == "driver" else role.replace("driver", "load"))
-        bench = view.bench(part.ref)
-        if load is not None and (bench.gain is not None or bench.lets_through is not None):
-            yield _ask(check, view, stage, part, load)
+        loads, bench = driven(view, stage, role, part), view.bench(part.ref)
+        if loads and (bench.gain is not None or bench.lets_through is not None):
+            yield _ask(check, view, stage, part, loads)
 
 
-def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
+def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, ...]) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     required = view.required(check.slug, check.required, requirement)
     sequence = view.sequence(requirement)
@@ -49,30 +50,43 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
             required,
             f"{RATINGS[-1 if part.kind in MOSFETS else 1]} of {part.ref}",
         )
-    bench, driven = view.bench(part.ref), view.bench(load.ref)
-    inrush = _inrush(view, load)
-    if isinstance(inrush, str):
-        return unknown(check, stage.name, part.ref, sequence, required, inrush)
-    if driven.on is None and inrush is not None:
+    bench, load = view.bench(part.ref), loads[0]
+    told: list[tuple[Part, Inrush]] = []
+    for each in loads:
+        inrush = _inrush(view, each)
+        if isinstance(inrush, str):
+            return unknown(check, stage.name, part.ref, sequence, required, inrush)
+        if inrush is not None:
+            told.append((each, inrush))
+    starts = view.bench(load.ref).on is not None
+    if not starts and told:
         return unknown(check, stage.name, part.ref, sequence, required, f"operating_minimum of {load.ref}")
     allowed = view.derating("i_c_max", requirement) * rating.low
     at = view.moment(sequence, "sounding", "on")
     if view.rests_on(load):
         at = view.while_on(sequence, load)
     elif at is None:
-        at = Anchor(0.5 * view.ends(sequence)) if driven.on is None else Anchor(1e-2, view.event(f"{load.ref} on"))
+        at = Anchor(0.5 * view.ends(sequence)) if not starts else Anchor(1e-2, view.event(f"{load.ref} on"))
     control = _control(part, bench, at)
-    across, drop, peak = _voltages(view, part, load, at)
+    drop, peak = _of_driver(view, part, at)
+    across = [level(voltage(*ends(view, each)), at) for each, _ in told]
+    # What says nothing of its inrush beside what does: the simulation shows it apart.
+    silent = [own_current(view, each) for each in loads if told and _inrush(view, each) is None]
     driving = base_drive(view, stage, part, at) if bench.lets_through is None else None
     divided = None if bench.lets_through is None else gate_divider(view, stage, part)
 
     def judge(seen: Seen) -> Judged:
-        if inrush is None:
+        if not told:
             wanted = np.abs(seen.value(peak, sequence))
         else:
             saturated = view.customary("drop of a transistor that is fully on", SATURATED, "V")
-            volts = seen.value(across, sequence) + np.maximum(0.0, np.abs(seen.value(drop, sequence)) - saturated)
-            wanted = inrush(seen.lanes, volts)
+            more = np.maximum(0.0, np.abs(seen.value(drop, sequence)) - saturated)
+            parts = [
+                inrush(seen.lanes, np.abs(seen.value(row, sequence)) + more)
+                for row, (_, inrush) in zip(across, told, strict=True)
+            ]
+            parts += [np.max([seen.value(row, sequence) for row in rows], axis=0) for rows in silent if rows]
+            wanted = np.sum(parts, axis=0)
         given = seen.value(control, sequence)
         never = ~seen.seen(control, sequence)
         words = [(never, check.words["never"].format(load=load.ref))]
@@ -92,17 +106,17 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, load: Part) -> Ask:
         apart = UNDRIVEN.format(part=part.ref) if hand is None else ""
         return replace(ratio(wanted, carried, words, hand, apart), extrapolated=gain_beyond(part, bench, wanted))
 
-    rows = (control, across, drop, peak, *(() if driving is None else (driving.row,)))
+    apart = (row for rows in silent for row in rows)
+    rows = (control, drop, peak, *across, *apart, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 
-def _voltages(view: View, part: Part, load: Part, at: Anchor) -> tuple[Row, Row, Row]:
-    on, (first, second, *_) = view.bench(load.ref).on, load.pins.values()
-    plus, minus = (first, second) if on is None else on[:2]
+def _of_driver(view: View, part: Part, at: Anchor) -> tuple[Row, Row]:
+    """The voltage across a driver at an instant, and the most that it carries."""
     upper, lower = ("drain", "source") if part.kind in MOSFETS else ("collector", "emitter")
     drop = voltage(part.pins[upper], part.pins[lower])
     current = view.bench(part.ref).currents[upper]
-    return level(voltage(plus, minus), at), level(drop, at), maximum(current.scaled(polarity(part)))
+    return level(drop, at), maximum(current.scaled(polarity(part)))
 
 
 def _control(part: Part, bench: Bench, at: Anchor) -> Row:

@@ -20,6 +20,7 @@ from ..quantity import read
 from .alarm_state import standby
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .complementary_latch import Latch, latches
+from .driven import drawn, surged, together
 from .latch import hold_trial_of
 from .seen import Seen
 from .view import View
@@ -96,14 +97,11 @@ def _pick(collapsed: Mask, own: Floats, supply: Floats) -> Floats:
 
 def _hand(view: View, load: Part, seen: Seen, held: Floats) -> Floats | None:
     """1 - V R/(R + R_load)/(V - V_hold): R of source and fuse, R_load = V/I, I the larger of surge and current."""
-    draw = view.bench(load.ref).draw
-    if draw is None or SUPPLY not in seen.lanes or SOURCE_RESISTANCE not in seen.lanes:
+    loads = together(view, load)
+    if drawn(view, loads) is None or SUPPLY not in seen.lanes or SOURCE_RESISTANCE not in seen.lanes:
         return None
     supply = seen.lanes[SUPPLY]
-    current = np.asarray(draw(seen.lanes, supply))
-    surge = view.datum(load, "surge", "A")
-    if surge is not None:
-        current = np.maximum(current, surge.high)
+    current = surged(view, loads, lambda each: view.bench(each.ref).draw)(seen.lanes, supply)
     ohms = seen.lanes[SOURCE_RESISTANCE]
     for _, fuse in view.parts_of("fuse"):
         resistance = view.datum(fuse, "resistance", "ohm")

@@ -10,6 +10,7 @@ from ..design.requirement import Requirement
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, level
 from .check import Ask, Check, Judged, ratio, unknown
+from .driven import drawn, together
 from .seen import Seen
 from .view import View
 
@@ -55,7 +56,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     sounding = None if sounding_at is None else level(current, sounding_at)
 
     load = view.load(view.design.stage(stage))
-    draw = None if load is None else view.bench(load.ref).draw
+    draw = None if load is None else drawn(view, together(view, load))
 
     def judge(seen: Seen) -> Judged:
         charge = seen.value(standby, sequence) * standby_time

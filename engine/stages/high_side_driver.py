@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, carried, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, beside, carried, doubtful, drawn, load_requirements, peak, switched
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan
 
 BLEED = 0.1  # share of a base current that its base-emitter resistor may take (common practice)
@@ -45,7 +45,7 @@ def _make(plan: Plan) -> Made:
     plan.capacitor(plan.quieting("npn", upper, plan.supply.max), rail, top, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), out, RETURN)
-    doubts = doubtful(plan, SATURATED) if plan.text("load") != NONE else ()
+    doubts = beside(plan) + doubtful(plan, SATURATED) if plan.text("load") != NONE else ()
     return Made(output=Drive(Sense.HIGH_SIDE, drop=SATURATED), requirements=load_requirements(plan), doubts=doubts)
 
 

@@ -41,6 +41,16 @@ def doubtful(plan: Plan, lost: float) -> tuple[str, ...]:
     return _starved(plan, lost) + _quiet(plan, lost)
 
 
+def beside(plan: Plan) -> tuple[str, ...]:
+    """The doubt about a driver that has its own load where a load is the next stage too."""
+    if plan.text("load") == NONE or not plan.next.passes:
+        return ()
+    return (
+        f"sizing for one load: its own {plan.text('load')} and the load stage behind it are driven in parallel; write"
+        f" load {NONE} where it is to switch only the next stage",
+    )
+
+
 def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
     left = (plan.fed - lost) / plan.supply.nominal
     if not plan.text("heard") or left <= 0.0:

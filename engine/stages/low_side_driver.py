@@ -7,7 +7,7 @@ from functools import partial
 from ..quantity import write
 from .heat import cooled
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, carried, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, beside, carried, doubtful, drawn, load_requirements, peak, switched
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan, class_figure
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
@@ -66,7 +66,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     return Made(
         output=Drive(Sense.LOW_SIDE, drop=lost),
         requirements=load_requirements(plan),
-        doubts=(*doubts, *(doubtful(plan, lost) if own else ())),
+        doubts=(*beside(plan), *doubts, *(doubtful(plan, lost) if own else ())),
     )
 
 

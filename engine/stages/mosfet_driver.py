@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, beside, doubtful, drawn, load_requirements, peak, switched
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan, class_figure
 
 LEAST_GATE = 1e3  # ohm in series with the gate, against ringing (common practice)
@@ -81,7 +81,7 @@ def _make_p(plan: Plan) -> Made:
 
 
 def _made(plan: Plan, sense: Sense, lost: float) -> Made:
-    doubts = doubtful(plan, lost) if plan.text("load") != NONE else ()
+    doubts = beside(plan) + doubtful(plan, lost) if plan.text("load") != NONE else ()
     return Made(output=Drive(sense, drop=lost), requirements=load_requirements(plan), doubts=doubts)
 
 

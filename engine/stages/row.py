@@ -97,9 +97,8 @@ def make_row(
 def _joined(own: Intake, next_one: Intake) -> Intake:
     """What two stages on one net take together."""
     surges = [each.surge for each in (own, next_one) if each.surge is not None]
-    return Intake(
-        own.current + next_one.current, own.threshold or next_one.threshold, surge=max(surges) if surges else None
-    )
+    surge = max(surges) if surges else None
+    return Intake(own.current + next_one.current, own.threshold or next_one.threshold, passes=True, surge=surge)
 
 
 def _plans(conditions: Conditions, choices: Sequence[Choice], place: Place, beyond: Sequence[Beyond]) -> list[Plan]:

@@ -119,3 +119,16 @@ def test_a_gain_beyond_its_points_is_marked(current: str, said: bool) -> None:
     )
     found = margin(of, "base_overdrive", "Q1")
     assert found.extrapolated == ("h_FE of Q1 extrapolated, given at 100 mA .. 300 mA" if said else None)
+
+
+def test_loads_in_parallel_ask_for_base_current_together() -> None:
+    # 250 mA and 150 mA at 8.2 V, some more where less drops across the transistor: 400 mA / 40 = 10 mA of the 7.7 mA
+    # that 1k gives, where the first alone asks for 6.25 mA (Kirchhoff's current law).
+    document = driver("1k").dump()
+    document["stages"][0]["parts"].append(sounder("LS2", "supply", "low", "150 mA", "3 V", rated="8.2 V"))
+    found = margin(Design.load(document), "base_overdrive", "Q1")
+    assert found.demand == pytest.approx(10e-3, rel=0.02)
+    assert found.capability == pytest.approx(7.7e-3, rel=0.01)
+    assert found.margin == pytest.approx(1.0 - 10.0 / 7.7, abs=0.03)
+    assert found.verdict is Verdict.FAIL
+    assert found.hand == pytest.approx(found.margin, abs=0.01)

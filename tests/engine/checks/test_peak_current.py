@@ -9,8 +9,9 @@ from scipy import constants
 
 from stagebook.engine.design.document import Design
 from stagebook.engine.results import Verdict
+from stagebook.engine.studies.margins import study
 
-from ..circuits import Json, mosfet, resistor, transistor
+from ..circuits import Json, mosfet, resistor, transistor, two
 from .sheets import design, exact, margin, sounder
 
 VT = constants.k * 298.15 / constants.e
@@ -112,3 +113,85 @@ def test_a_channel_without_a_rating() -> None:
     data = {"threshold": "2 V", "resistance_on": "0.1 ohm"}
     of = design(load, mosfet("Q1", "low", "supply", "0V", data=data), roles={"driver": "Q1", "load": "LS1"})
     assert margin(of, "peak_current", "Q1").reason == "missing: i_d_max of Q1"
+
+
+def two_loads(second: Json, *more: Json, ohms: str = "100R", first: str = "150 mA", surge: str = "300 mA") -> Design:
+    """A driver of 0.5 A at 8.4 V with a sounder and a second load beside it, which no role names unless one does."""
+    law: Json = {"saturation_current": 0.25 / math.expm1(0.7 / VT), "forward_gain": 40, "reverse_gain": 1}
+    load = sounder("LS1", "supply", "low", first, "3 V", rated="8.2 V")
+    load["data"]["surge"] = surge
+    return design(
+        exact(resistor("R1", "supply", "base", ohms)),
+        transistor("Q1", "low", "base", "0V", law=law, data={"i_c_max": "0.5 A"}),
+        load,
+        second,
+        *more,
+        supply="8.4 V",
+        ambient="25 C",
+        roles=ROLES,
+    )
+
+
+def beside(low: str = "low", surge: str | None = "300 mA", plus: str = "supply") -> Json:
+    found = sounder("LS2", plus, low, "150 mA", "3 V", rated="8.2 V")
+    if surge is not None:
+        found["data"]["surge"] = surge
+    return found
+
+
+def test_loads_in_parallel_come_on_together() -> None:
+    # Kirchhoff's current law: 300 mA and 300 mA at 8.2 V, of the 0.5 A that it is rated for; one alone is 40 % within.
+    found = margin(two_loads(beside()), "peak_current", "Q1")
+    assert found.demand == pytest.approx(0.6, rel=0.02)
+    assert (found.capability, found.verdict) == (pytest.approx(0.5), Verdict.FAIL)
+    assert found.margin == pytest.approx(1.0 - 0.6 / 0.5, abs=0.03)
+    assert found.hand == pytest.approx(found.margin, abs=0.02)
+
+
+def test_of_one_of_two_loads_its_surge_is_not_known() -> None:
+    found = margin(two_loads(beside(surge=None)), "peak_current", "Q1")
+    assert (found.verdict, found.reason) == (Verdict.UNKNOWN, "missing: surge of LS2")
+
+
+def test_a_load_behind_a_lead_is_driven_too_and_one_that_is_not_switched_is_not() -> None:
+    lead = two("lead", "W1", "far", "low", length="1 m", resistance="0.01 ohm/m")
+    lead["pins"] = {"from": "far", "to": "low"}
+    behind = margin(two_loads(beside("far"), lead), "peak_current", "Q1")
+    assert behind.demand == pytest.approx(0.6, rel=0.02)
+    elsewhere = margin(two_loads(beside("0V")), "peak_current", "Q1")
+    assert elsewhere.demand == pytest.approx(0.3, rel=0.02)
+    # From the switched net to the return of the driver: it draws while the driver is off.
+    across = margin(two_loads(beside("0V", plus="low")), "peak_current", "Q1")
+    assert across.demand == pytest.approx(0.3, rel=0.02)
+
+
+def test_a_resistor_beside_a_sounder_counts_with_its_own_current() -> None:
+    # 300 mA of surge, and 8.3 V across 82 ohm: 0.1 A, in the role of a load of its own.
+    of = two_loads(exact(resistor("R2", "supply", "low", "82R")))
+    document = of.dump()
+    document["stages"][0]["roles"]["load_2"] = "R2"
+    found = margin(Design.load(document), "peak_current", "Q1")
+    assert found.demand == pytest.approx(0.3 + 8.3 / 82.0, rel=0.02)
+
+
+def test_a_driver_whose_load_is_another_stage_is_judged_by_that_one() -> None:
+    # Two drivers: the first switches 300 mA of inrush, the second 700 mA in a stage that brings no load of its own.
+    law: Json = {"saturation_current": 0.25 / math.expm1(0.7 / VT), "forward_gain": 40, "reverse_gain": 1}
+    other = beside("low2", surge="700 mA")
+    of = two_loads(other).dump()
+    (unit,) = of["stages"]
+    unit["parts"].remove(next(part for part in unit["parts"] if part["ref"] == "LS2"))
+    second = [
+        exact(resistor("R12", "supply", "base2", "100R")),
+        transistor("Q2", "low2", "base2", "0V", law=law, data={"i_c_max": "0.5 A"}),
+    ]
+    of["stages"] += [
+        {"name": "second", "parts": second, "roles": {"driver": "Q2", "base_resistor": "R12"}},
+        {"name": "siren", "parts": [other], "roles": {"load": "LS2"}},
+    ]
+    found = {check.id: check for check in study(Design.load(of)).checks}
+    assert found["peak_current:unit:Q1"].demand == pytest.approx(0.3, rel=0.02)
+    assert found["peak_current:second:Q2"].demand == pytest.approx(0.7, rel=0.02)
+    assert found["peak_current:second:Q2"].verdict is Verdict.FAIL
+    # 150 mA each at 8.2 V, of the second alone: 3.75 mA of base current.
+    assert found["base_overdrive:second:Q2"].demand == pytest.approx(0.15 / 40.0, rel=0.02)

@@ -5,7 +5,9 @@ from __future__ import annotations
 import pytest
 
 from stagebook.engine.errors import DesignError
+from stagebook.engine.results import Verdict
 from stagebook.engine.stages.making import doubts
+from stagebook.engine.studies.margins import study
 
 from .made import at, begins, choice, conditions, made, run, value
 
@@ -77,3 +79,26 @@ def test_a_sounder_that_is_too_far_away_is_told() -> None:
     assert "write sound_level 103 dB" in words
     louder = choice("low_side_driver", "driver", heard="85 dB", distance="5 m", sound_level="103 dB")
     assert doubts(conditions(), (CALL, louder)) == {}
+
+
+@pytest.mark.parametrize("kind", ["low_side_driver", "darlington_driver", "high_side_driver", "mosfet_driver"])
+@pytest.mark.parametrize("load", ["sounder", "lamp"])
+def test_a_load_stage_behind_a_driver_with_its_own_load_is_told(kind: str, load: str) -> None:
+    settings = {"power": "0.1 W"} if load == "lamp" else {"current": "50 mA"}
+    row = (CALL, choice(kind, "driver", current="50 mA"), choice(load, "siren", **settings))
+    words = " ".join(doubts(conditions(), row)["driver"])
+    assert "its own sounder and the load stage behind it are driven in parallel; write load none" in words
+    alone = (CALL, choice(kind, "driver", load="none"), choice(load, "siren", **settings))
+    assert "in parallel" not in " ".join(doubts(conditions(), alone).get("driver", ()))
+    assert "in parallel" not in " ".join(doubts(conditions(), row[:2]).get("driver", ()))
+
+
+def test_two_loads_on_one_driver_fail_where_one_passes() -> None:
+    # 150 mA at 12 V each with twice that as surge (from memory), at up to 13 V: 2 x 325 mA of the 500 mA of the class.
+    row = (CALL, choice("low_side_driver", "driver"), choice("sounder", "siren"))
+    both, one = (
+        next(c for c in study(made(*stages)).checks if c.id.startswith("peak_current:driver"))
+        for stages in (row, row[:2])
+    )
+    assert both.demand == pytest.approx(2.0 * one.demand, rel=0.02)
+    assert (one.verdict is Verdict.FAIL, both.verdict is Verdict.FAIL) == (False, True)
