@@ -14,7 +14,7 @@ from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, voltage
 from ..quantity import write
 from .check import Ask, Check, Judged, Mask, ratio, unknown
-from .driven import driven, ends, own_current
+from .driven import driven, ends, first_seen, own_current
 from .seen import Seen
 from .view import View, polarity
 
@@ -29,7 +29,7 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
         loads = driven(view, stage, role, part)
         if not loads or view.bench(part.ref).gain is None:
             continue
-        load = loads[0]
+        load = first_seen(view, loads)
         if view.bench(load.ref).on is None:
             requirement = view.requirement(check.slug, part.ref, stage.name)
             required = view.required(check.slug, check.required, requirement)
@@ -42,7 +42,7 @@ def asks(check: Check, view: View) -> Iterator[Ask]:
 def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, ...]) -> Ask:
     requirement = view.requirement(check.slug, part.ref, stage.name)
     sequence = view.sequence(requirement)
-    bench, load = view.bench(part.ref), loads[0]
+    bench, load = view.bench(part.ref), first_seen(view, loads)
     at = view.while_on(sequence, load)
     base = level(bench.currents["base"], at)
     told = [(draw, level(voltage(*ends(view, each)), at)) for each in loads if (draw := view.bench(each.ref).draw)]

@@ -49,6 +49,11 @@ def drawn(view: View, loads: Sequence[Part]) -> Draw | None:
     return lambda lanes, volts: np.asarray(sum(np.asarray(draw(lanes, volts)) for draw in draws))
 
 
+def first_seen(view: View, loads: Sequence[Part]) -> Part:
+    """The load that tells when all of them are on: the first that has a level at which it counts as on."""
+    return next((load for load in loads if view.bench(load.ref).on is not None), loads[0])
+
+
 def surged(view: View, loads: Sequence[Part], draw: Callable[[Part], Draw | None]) -> Draw:
     """What loads draw together as they come on, A: of each the larger of its surge and of what ``draw`` says of it."""
     known = [(draw(load), view.datum(load, "surge", "A")) for load in loads]

@@ -25,7 +25,7 @@ from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, Row, integral, lagged, level, maximum
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
-from .driven import drawn, driven
+from .driven import drawn, driven, first_seen
 from .reverse_base_emitter import BIPOLAR
 from .seen import Seen
 from .view import View
@@ -180,7 +180,8 @@ class _Heat:
             moments = [view.anchor(moment, name) for moment in sequence.moments]
             steady[name] = tuple(level(power, at) for at in moments or [Anchor(0.5 * view.ends(name))])
         roles = [role for role, ref in view.roles_of(stage).items() if ref == part.ref and role.startswith("driver")]
-        load = next(iter(driven(view, stage, roles[0], part) if roles else ()), None)
+        loads = driven(view, stage, roles[0], part) if roles else ()
+        load = first_seen(view, loads) if loads else None
         on = None
         if load is not None and view.bench(load.ref).on is not None:
             begin, end = view.event(f"{load.ref} on"), view.event(f"{load.ref} off")

@@ -19,7 +19,7 @@ from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
 from .base_overdrive import SATURATED, UNDRIVEN, base_drive, gain_beyond, guaranteed_gain
 from .check import Ask, Check, Judged, ratio, unknown
-from .driven import driven, ends, own_current
+from .driven import driven, ends, first_seen, own_current
 from .peak_collector_emitter import MOSFETS, gate_by_hand, gate_divider
 from .seen import Seen
 from .view import View, polarity
@@ -50,7 +50,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, 
             required,
             f"{RATINGS[-1 if part.kind in MOSFETS else 1]} of {part.ref}",
         )
-    bench, load = view.bench(part.ref), loads[0]
+    bench, load = view.bench(part.ref), first_seen(view, loads)
     told: list[tuple[Part, Inrush]] = []
     for each in loads:
         inrush = _inrush(view, each)
