@@ -39,7 +39,7 @@ def print_table(heads: Sequence[str], rows: Sequence[Sequence[str]], *, right: f
     rows = [(*map(visible, row[:-1]), row[-1]) for row in rows]
     widths = [max(map(len, column)) for column in zip(heads, *rows, strict=True)][:-1]
     indent = sum(widths) + 2 * len(widths)
-    line_of = _Pieces(max(_line_width() - indent, 16))
+    line_of = _Pieces(max(line_width() - indent, 16))
     for row in (heads, *rows):
         cells = [
             text.rjust(width) if column in right else text.ljust(width)
@@ -62,7 +62,8 @@ class _Pieces(TextWrapper):
         return [piece for chunk in chunks for piece in re.findall(rf"[^:]{{1,{_LONGEST}}}:*|:+", chunk)]
 
 
-def _line_width() -> int:
+def line_width() -> int:
+    """Characters of a line: the terminal's where standard output is one, else eighty."""
     return shutil.get_terminal_size((WIDTH, 24)).columns if sys.stdout.isatty() else WIDTH
 
 

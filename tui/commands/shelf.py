@@ -6,11 +6,13 @@ from argparse import ArgumentParser, Namespace
 from typing import TYPE_CHECKING, Any
 
 from ..shown import percent
-from .printing import json_argument, print_json, print_table, print_words
+from .printing import json_argument, line_width, print_json, print_table, print_words
 from .what import open_store, shelf_arguments
 
 if TYPE_CHECKING:
     from ...storage import DesignRow
+
+_BROAD = 100
 
 
 def arguments(parser: ArgumentParser) -> None:
@@ -43,6 +45,7 @@ def _entry(row: DesignRow) -> dict[str, Any]:
 
 
 def _cells(row: DesignRow) -> tuple[str, ...]:
-    saved = row.saved[:16].replace("T", " ") if row.saved else "never"
+    # On a narrow line ids need the room of the time of day.
+    saved = row.saved[: 16 if line_width() >= _BROAD else 10].replace("T", " ") if row.saved else "never"
     worst = (percent(row.worst.margin), str(row.worst.verdict), row.worst.id) if row.worst else ("", "", "")
     return (row.name, str(row.revisions), str(row.edits_pending), saved, *worst)
