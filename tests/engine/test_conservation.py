@@ -111,8 +111,8 @@ def test_kirchhoffs_current_law_holds_at_every_accepted_step(circuit: Setup) -> 
             - TO_STAGE * stage.charge[:free]
         )
         capacitances = stage.matrix - Flows.at(made, parameters, stage_x, 0.0).matrix * 0.0
-        # What the tangents leave over is judged through the diagonal, what the laws bend away from them as a step of its
-        # own, which all entries of a row turn into a current.
+        # What the tangents leave over is judged through the diagonal, what the laws bend away from them as a step of
+        # its own, which all entries of a row turn into a current.
         allowed = REMAINDER * (np.abs(np.diag(end.matrix)) * tolerance + np.abs(end.matrix) @ tolerance)
         allowed += TO_STAGE * REMAINDER * np.abs(capacitances) @ tolerance
         noise = 1e-14 * (np.abs(end.charge[:free]) + np.abs(start.charge[:free]))
