@@ -21,7 +21,8 @@ from .kind import (
     Wire,
 )
 from .output import LEAST_OUTPUT, Output, add_output, sized
-from .plan import LARGEST_FILM, OVERDRIVE, RETURN, V_BE, V_DIODE, V_REVERSE, Plan
+from .plan import LARGEST_FILM, OVERDRIVE, RETURN, V_BE, V_DIODE, V_REVERSE, Plan, snapped
+from .timer_ends import Built, class_of, ends
 from .timing_capacitor import (
     DIVIDER,
     ELECTROLYTIC,
@@ -29,9 +30,12 @@ from .timing_capacitor import (
     LOW_DRIFT,
     SELECTED,
     SUITABLE,
+    TENTH,
     Threshold,
+    Timing,
     add_timing_capacitor,
     chosen,
+    class_name,
     doubts,
 )
 
@@ -39,6 +43,7 @@ DELAY, INTERVAL, RESET = "delay", "interval", "reset"
 FIRE_BLEED = 1e6  # ohm, base-emitter resistor of the firing transistor
 SNAP = 10.0  # times the upper divider resistor: how much of a fired timer's swing goes back into the threshold
 MOST = 1e6  # ohm, a timing resistor above it is at the mercy of the board's leakage (common practice)
+FED_BACK = 0.3  # of what its output draws in the end, at most: with it one that is fed back goes over (simulated: 0.1)
 FALL = 0.1  # of the rail that the output of an interval may lose in its pull-up
 HOLDS = 1.0  # s that what starts it stays on after the latest end of its time
 READY, READY_LEAST = 0.1, 1.0  # of its time, and s, in which a timer that reset a latch is empty again
@@ -97,8 +102,19 @@ def _make(plan: Plan) -> Made:
     # While the capacitor is empty the base stands a share of the rail above the emitter, in reverse.
     guarded = share * plan.rail.max > V_REVERSE
     fires = output.current / plan.gain("npn") + V_BE / FIRE_BLEED
-    timed = chosen(plan, time, window, Threshold(share, guarded, fires, V_DIODE if mode == RESET else 0.0))
+    wanted = Threshold(share, guarded, fires, V_DIODE if mode == RESET else 0.0)
     most = min(left / needed, MOST)
+
+    # A latch is let go by what holds it, which may be less than a timer is made for; an output that is fed back goes
+    # over by itself once it has begun to.
+    draws = output.current * FED_BACK
+    if mode == RESET:
+        draws = plan.drive.held if plan.drive is not None and plan.drive.held else output.current
+
+    def built(timed: Timing) -> tuple[float, float]:
+        return ends(plan, _built(plan, timed, wanted, most, draws))
+
+    timed = chosen(plan, time, window, wanted, built)
     farads = add_timing_capacitor(plan, timed.tau / most, charge, RETURN, timed.kind)
     plan.resistor(timed.tau / farads, feed, charge, "timing_resistor", tolerance="1 %")
     plan.diode(charge, feed, "discharge_diode")
@@ -107,12 +123,8 @@ def _make(plan: Plan) -> Made:
         plan.diode(start, feed, "feed_diode")
         ready = max(READY * time, READY_LEAST) / 3.0
         plan.resistor(max(ready / farads, LEAST_DISCHARGE), feed, RETURN, "discharge_resistor", snap="down")
-    upper, lower = (1.0 - share) * DIVIDER, share * DIVIDER
-    if mode == INTERVAL:
-        # At rest the feedback lies beside the upper resistor.
-        upper *= 1.0 + 1.0 / SNAP
-    upper = plan.resistor(upper, feed, ref, "threshold_upper_resistor", tolerance="1 %")
-    plan.resistor(lower, ref, RETURN, "threshold_lower_resistor", tolerance="1 %")
+    upper = plan.resistor(_upper(mode, share), feed, ref, "threshold_upper_resistor", tolerance="1 %")
+    plan.resistor(share * DIVIDER, ref, RETURN, "threshold_lower_resistor", tolerance="1 %")
     watched = charge
     if guarded:
         watched = plan.net("watched")
@@ -145,8 +157,38 @@ def _make(plan: Plan) -> Made:
         holds=0.0 if mode == RESET else time * (1.0 + window) + HOLDS,
         standby=0.3 * time if mode == DELAY else None,
         requirements=(duration, arrival),
-        doubts=tuple(doubts(plan, timed, time, window)) if farads > LARGEST_FILM else (),
+        doubts=tuple(doubts(plan, timed, time, window, wanted, built)) if farads > LARGEST_FILM else (),
     )
+
+
+def _built(plan: Plan, timed: Timing, wanted: Threshold, most: float, draws: float) -> Built:
+    """The parts as they are put in for a class of capacitor, for the ends of its time."""
+    farads = snapped(timed.tau / most, "E6", "up")
+    upper = snapped(_upper(plan.text("mode"), wanted.share), "E96", "nearest")
+    share = TENTH if timed.kind == SELECTED else 1.0
+    tolerance, drift, leakage = class_of(plan, farads, class_name(timed.kind), share)
+    return Built(
+        ohms=snapped(timed.tau / farads, "E96", "nearest"),
+        farads=farads,
+        # At rest the feedback of an interval lies beside the upper resistor.
+        upper=upper / (1.0 + 1.0 / SNAP) if plan.text("mode") == INTERVAL else upper,
+        lower=snapped(wanted.share * DIVIDER, "E96", "nearest"),
+        emitter_bleed=EMITTER_BLEED,
+        fire_bleed=FIRE_BLEED,
+        tolerance=tolerance,
+        drift=drift,
+        leakage=leakage,
+        draws=draws,
+        gain=plan.gain("npn"),
+        lost=wanted.lost + (0.0 if plan.drive is None else plan.drive.drop),
+        guarded=wanted.guarded,
+        sinks=FALL / (SNAP * upper) if plan.text("mode") == INTERVAL else 0.0,
+    )
+
+
+def _upper(mode: str, share: float) -> float:
+    """The upper resistor of the threshold in ohm."""
+    return (1.0 - share) * DIVIDER * (1.0 + 1.0 / SNAP if mode == INTERVAL else 1.0)
 
 
 def _fired(plan: Plan, mode: str, output: Output, upper: float) -> Drive | None:

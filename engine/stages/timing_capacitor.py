@@ -8,6 +8,7 @@ the leakage limit of the class when hot. Figures of the classes: from memory.
 from __future__ import annotations
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
 
 from ..parts.capacitor import LEAKAGE_DOUBLING, LEAKAGE_REFERENCE
@@ -23,6 +24,7 @@ EMITTER_BLEED = 470e3  # ohm, keeps the emitter at the base while its diode bloc
 DIVIDER = 330e3  # ohm, both resistors of the threshold together
 RESISTOR = 0.01  # tolerance of the timing resistor
 TENTH = 0.1  # of the limit of its class that a selected capacitor leaks at most
+LEFT_OUT = 0.015  # of the time, by which simulated corners came out further apart than the closed form, at most
 DURATION, ARRIVAL = 0.1, 0.3  # margins that are customarily asked for
 LOW_DRIFT, SELECTED, ELECTROLYTIC, SUITABLE = "low drift", "selected", "electrolytic", "suitable"
 _CLASSES = {LOW_DRIFT: "timing capacitor, low drift", SELECTED: "timing capacitor, low drift"}
@@ -45,9 +47,9 @@ class Timing:
         """The margin of check 12."""
         return 1.0 - self.threshold / self.final
 
-    def duration(self, time: float, window: float) -> float:
-        """The margin of check 11."""
-        return min(time * (1.0 + window) - self.longest, self.shortest - time * (1.0 - window)) / (time * window)
+
+Ends = Callable[[Timing], tuple[float, float]]
+"""The shortest and the longest time in s of a timer that is built with it."""
 
 
 @dataclass(frozen=True)
@@ -77,7 +79,7 @@ class Threshold:
 
 def timing(plan: Plan, kind: str, time: float, wanted: Threshold) -> Timing:
     """How a class of capacitor times ``time`` s."""
-    name = _CLASSES.get(kind, kind)
+    name = class_name(kind)
     tolerance = read(str(CLASSES["capacitor"][name].get("tolerance", "10 %")), "%")
     drift = class_figure("capacitor", name, "drift", "%").high if "drift" in CLASSES["capacitor"][name] else 0.0
     leak = class_figure("capacitor", name, "leakage_per_cv", "").high * (TENTH if kind == SELECTED else 1.0)
@@ -102,14 +104,29 @@ def timing(plan: Plan, kind: str, time: float, wanted: Threshold) -> Timing:
     return Timing(kind, tau, tau * short, tau * longest, slow[1][0], final)
 
 
-def chosen(plan: Plan, time: float, window: float, wanted: Threshold) -> Timing:
+def margin(ends: tuple[float, float], time: float, window: float) -> float:
+    """The margin of check 11 with these ends of the time."""
+    return min(time * (1.0 + window) - ends[1], ends[0] - time * (1.0 - window)) / (time * window)
+
+
+def widened(ends: tuple[float, float]) -> tuple[float, float]:
+    """These ends with room for what their closed form leaves out."""
+    return ends[0] * (1.0 - LEFT_OUT), ends[1] * (1.0 + LEFT_OUT)
+
+
+def chosen(plan: Plan, time: float, window: float, wanted: Threshold, ends: Ends) -> Timing:
     """The class that is asked for; where a suitable one is, the first that keeps the time within its window."""
     kind = plan.text("capacitor")
     if kind != SUITABLE:
         return timing(plan, kind, time, wanted)
     offered = [timing(plan, each, time, wanted) for each in (LOW_DRIFT, SELECTED)]
-    good = (each for each in offered if each.duration(time, window) >= DURATION and each.arrival >= ARRIVAL)
+    good = (each for each in offered if each.arrival >= ARRIVAL and margin(ends(each), time, window) >= DURATION)
     return next(good, offered[-1])
+
+
+def class_name(kind: str) -> str:
+    """The generic class of a kind of capacitor."""
+    return _CLASSES.get(kind, kind)
 
 
 def add_timing_capacitor(plan: Plan, farads: float, net: str, back: str, kind: str) -> float:
@@ -127,20 +144,31 @@ def add_timing_capacitor(plan: Plan, farads: float, net: str, back: str, kind: s
 _LEAKAGE = (("leakage_per_cv", ""), ("leakage_least", "A"))
 
 
-def doubts(plan: Plan, found: Timing, time: float, window: float) -> list[str]:
+def doubts(plan: Plan, found: Timing, time: float, window: float, wanted: Threshold, ends: Ends) -> list[str]:
     """What will not hold, with the requirement that says so and what to change; nothing where all does."""
-    words = []
     better = "" if found.kind == SELECTED else f", capacitor {SELECTED}"
     if found.arrival < ARRIVAL:
-        words.append(
+        return [
             f"arrival: hot, with the leakage of its capacitor, it charges to {found.final:.0%} of the rail and must"
             f" pass {found.threshold:.0%}; write a shorter time{better}"
-        )
-    elif found.duration(time, window) < DURATION:
-        ends = f"{write(found.shortest, 's', digits=3)} to {write(found.longest, 's', digits=3)}"
-        off = max(1.0 - found.shortest / time, found.longest / time - 1.0) / (1.0 - DURATION)
-        words.append(
-            f"duration: tolerances and leakage let its time come out at {ends}; write window {100.0 * off:.0f} %"
-            f"{better}"
-        )
-    return words
+        ]
+    came = ends(found)
+    if margin(came, time, window) >= DURATION:
+        return []
+    came = widened(came)
+    between = f"{write(came[0], 's', digits=3)} to {write(came[1], 's', digits=3)}"
+    percent = _enough(plan, time, window, wanted, ends)
+    advice = "a shorter time" if percent is None else f"window {percent} %"
+    if better and margin(widened(ends(timing(plan, SELECTED, time, wanted))), time, window) >= DURATION:
+        advice += f" or capacitor {SELECTED}"
+    return [f"duration: tolerances and leakage let its time come out at {between}; write {advice}"]
+
+
+def _enough(plan: Plan, time: float, window: float, wanted: Threshold, ends: Ends) -> int | None:
+    """The least window in whole percent with which the time keeps to it, the customary margin included: a wider one
+    may bring another capacitor, which strays further."""
+    for percent in range(math.floor(100.0 * window) + 1, 100):
+        wide = 0.01 * percent
+        if margin(widened(ends(chosen(plan, time, wide, wanted, ends))), time, wide) >= DURATION:
+            return percent
+    return None

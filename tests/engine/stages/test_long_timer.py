@@ -7,10 +7,15 @@ import math
 import numpy as np
 import pytest
 
+from stagebook.engine.circuit.circuit import build
 from stagebook.engine.errors import DesignError
 from stagebook.engine.primitives.columns import AMBIENT
 from stagebook.engine.primitives.signals import Anchor, level, maximum, minimum, voltage
-from stagebook.engine.stages.making import doubts
+from stagebook.engine.results import Verdict
+from stagebook.engine.stages.making import doubts, new_design
+from stagebook.engine.stages.row import Choice
+from stagebook.engine.studies.evaluate import asks_of
+from stagebook.engine.studies.margins import study
 
 from .made import PIEZO, begins, choice, conditions, load_goes, made, passing, run, seconds, value
 
@@ -148,3 +153,32 @@ def test_an_interval_without_a_start_and_a_reset_without_a_latch_are_refused() -
         DesignError, match="stage timer, setting mode: 'later' is none of them; write delay or interval"
     ):
         made(choice("long_timer", "timer", mode="later"), PIEZO)
+
+
+_WIDE = {"supply": ("10 V", "12 V", "15 V"), "ambient": ("-30 C", "25 C", "70 C")}
+
+
+@pytest.mark.parametrize(
+    ("mode", "latch", "wide"), [("reset", True, False), ("reset", True, True), ("interval", False, True)]
+)
+def test_the_window_that_a_doubt_tells_is_kept(mode: str, latch: bool, wide: bool) -> None:
+    # A user wrote what was told, and the made design failed: divider, reverse currents and more had been left out.
+    kept = conditions(*_WIDE["supply"]) if wide else conditions()
+    if wide:
+        kept["ambient"] = dict(zip(("min", "nominal", "max"), _WIDE["ambient"], strict=True))
+
+    def row(window: str) -> tuple[Choice, ...]:
+        timer = choice("long_timer", "timer", mode=mode, time="45 s", window=window)
+        held = (choice("complementary_latch", "latch"),) if latch else ()
+        return (choice("entry"), choice("contact_no"), *held, timer, choice("low_side_driver"))
+
+    (words,) = doubts(kept, row("5 %"))["timer"]
+    window = words.split("write window ")[1]
+    assert doubts(kept, row(window)) == {}
+    design = new_design("test", "as told", kept, row(window))
+    (timed,) = (ask.id for ask in asks_of(build(design)) if ask.id.startswith("duration:timer"))
+    (check,) = study(design, only=timed).checks
+    assert check.verdict is Verdict.PASS, (check.low, check.high)
+    assert check.margin is not None
+    # Told is no more than it needs, within a tenth of the window.
+    assert 0.1 <= check.margin < 0.2
