@@ -12,6 +12,7 @@ from stagebook.tui.screens.origin import OriginPage
 from stagebook.tui.shown import plain
 from stagebook.tui.stagebook_app import StagebookApp
 from stagebook.tui.widgets.row_list import RowList
+from stagebook.tui.widgets.status import Notice
 
 from .conftest import Gates, seen, settled, until
 from .sheets import check, explanation
@@ -166,6 +167,10 @@ async def test_what_is_wanted_is_written_changed_and_taken_out(app: StagebookApp
             "80 dB",
             {"distance": "2 m"},
         )
+        told = bench.query_one(Notice)
+        assert told.text.startswith("wanted: sound_level")
+        await pilot.press("right")
+        assert "wanted" not in told.text  # it is not news any more
         await pilot.press("R", "enter", "down", *["backspace"] * 5, *"85 dB", "enter")
         await until(pilot, lambda: app.screen is bench)
         (changed,) = shelf.draft("flood").design.requirements
