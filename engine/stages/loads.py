@@ -12,12 +12,13 @@ NONE = "none"
 LOAD_SETTINGS = (
     Setting("load", WORD, "sounder", "what it switches; none: the next stage of the row", ("sounder", "piezo", NONE)),
     Setting("current", "A", "150 mA", "largest current of the load at the nominal supply"),
-    Setting("works_from", "V", "", "the load counts as on above it; empty: half of the nominal supply"),
+    Setting("works_from", "V", "", "on above it; empty: half of the nominal rail behind an entry"),
     Setting("sound_level", "dB", "95 dB", "of a sounder at 1 m"),
     Setting("heard", "dB", "", "what is needed at the distance; empty: not asked for"),
     Setting("distance", "m", "1 m", "at which it must be heard"),
 )
 LOUDNESS = 0.3  # margin, in parts of 10 dB, of a sound that is customarily asked for
+ROOM = 0.3  # dB that are advised beyond, for what switches it drops a little more in the cold
 VOLTAGE = 0.1  # margin of a load's voltage that is customarily asked for
 TYPICAL = 0.8  # of the largest current, from memory
 SURGE = {"sounder": 2.0, "piezo": 1.2}
@@ -52,7 +53,9 @@ def beside(plan: Plan) -> tuple[str, ...]:
 
 
 def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
-    left = (plan.fed - lost) / plan.supply.nominal
+    # An entry reckons with what the source loses; without one it is lost all the same.
+    source = plan.source * plan.above_zero("current") if plan.fed == plan.supply.min else 0.0
+    left = (plan.fed - lost - source) / plan.supply.nominal
     if not plan.text("heard") or left <= 0.0:
         return ()
     # It is as much quieter as its voltage is lower, and as it is further away.
@@ -60,10 +63,10 @@ def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
     missing = plan.number("heard") + 10.0 * LOUDNESS - there
     if missing <= 0.0:
         return ()
-    louder = math.ceil(plan.number("sound_level") + missing)
+    louder = math.ceil(plan.number("sound_level") + missing + ROOM)
     return (
-        f"sound_level: at the lowest supply {there:.3g} dB arrive at {plan.text('distance')}, less than the"
-        f" {plan.text('heard')} asked for and 3 dB to spare; write sound_level {louder:g} dB or a shorter distance",
+        f"sound_level: at the lowest supply {there:.1f} dB arrive at {plan.text('distance')}, and with 3 dB to spare"
+        f" {plan.number('heard') + 10.0 * LOUDNESS:g} dB must; write sound_level {louder:g} dB or a shorter distance",
     )
 
 

@@ -157,8 +157,18 @@ def _make(plan: Plan) -> Made:
         holds=0.0 if mode == RESET else time * (1.0 + window) + HOLDS,
         standby=0.3 * time if mode == DELAY else None,
         requirements=(duration, arrival),
-        doubts=tuple(doubts(plan, timed, time, window, wanted, built)) if farads > LARGEST_FILM else (),
+        doubts=(
+            *_unreset(plan),
+            *(doubts(plan, timed, time, window, wanted, built) if farads > LARGEST_FILM else ()),
+        ),
     )
+
+
+def _unreset(plan: Plan) -> tuple[str, ...]:
+    """That an interval does not let go the latch that starts it; nothing where none does."""
+    if plan.text("mode") != INTERVAL or plan.drive is None or plan.drive.held <= 0.0:
+        return ()
+    return ("latch reset: an interval leaves the latch before it on; write mode reset, or take the latch out",)
 
 
 def _built(plan: Plan, timed: Timing, wanted: Threshold, most: float, draws: float) -> Built:
@@ -234,7 +244,13 @@ KIND = StageKind(
         RETURN_PORT,
     ),
     settings=(
-        Setting("mode", WORD, DELAY, "delay, interval, or reset of the latch before it", (DELAY, INTERVAL, RESET)),
+        Setting(
+            "mode",
+            WORD,
+            DELAY,
+            "delay: on after it; interval: on for it; reset: latch off then",
+            (DELAY, INTERVAL, RESET),
+        ),
         Setting("time", "s", "60 s", "nominal time"),
         Setting("window", "%", "40 %", "how far the time may be off, both ways"),
         Setting("threshold", "", "0.3", "share of the rail at which it fires"),

@@ -182,3 +182,11 @@ def test_the_window_that_a_doubt_tells_is_kept(mode: str, latch: bool, wide: boo
     assert check.margin is not None
     # Told is no more than it needs, within a tenth of the window.
     assert 0.1 <= check.margin < 0.2
+
+
+def test_an_interval_behind_a_latch_is_told_to_leave_it_on() -> None:
+    latch, timer = choice("complementary_latch", "latch"), choice("long_timer", "timer", mode="interval")
+    (words,) = doubts(conditions(), (CALL, latch, timer, PIEZO))["timer"]
+    assert words.startswith("latch reset: an interval leaves the latch before it on; write mode reset")
+    for row in ((CALL, timer, PIEZO), (CALL, latch, choice("long_timer", "timer", mode="reset"), PIEZO)):
+        assert doubts(conditions(), row) == {}
