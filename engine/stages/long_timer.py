@@ -248,7 +248,7 @@ KIND = StageKind(
             "mode",
             WORD,
             DELAY,
-            "delay: on after it; interval: on for it; reset: latch off then",
+            "delay: on after the time; interval: on for it; reset: latch off then",
             (DELAY, INTERVAL, RESET),
         ),
         Setting("time", "s", "60 s", "nominal time"),
