@@ -78,7 +78,7 @@ def test_a_walk_through_the_demo(installed: Path, home: dict[str, str], open_ter
     assert "R10 100k > 1M" in terminal.until(r"Why does this revision exist\?")
     terminal.write(NOTE)
     terminal.press("Enter")
-    assert "draft on r6, no edits" in terminal.until("saved as r6")
+    assert "on r6, no edits" in terminal.until("saved as r6")
 
     terminal.press("h")
     assert NOTE in terminal.until(r"(?m)^> +r6 ")
