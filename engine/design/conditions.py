@@ -11,6 +11,7 @@ from ..quantity import read
 from .clause import Clause, Text
 
 LeakageState = Literal["conditioned", "specified"]
+COLDEST, HOTTEST = -100.0, 250.0  # deg C: silicon conducts by itself above, and freezes out below
 UNITS = {"supply": "V", "ambient": "degC", "source_resistance": "ohm"}
 
 
@@ -58,6 +59,8 @@ class Conditions(Clause):
             raise ValueError("the values are not in order; write min, nominal and max from low to high")
         if info.field_name != "ambient" and found.min < 0:
             raise ValueError(f"a {info.field_name} below zero cannot be computed; write min as 0 or above")
+        if info.field_name == "ambient" and not (COLDEST <= found.min and found.max <= HOTTEST):
+            raise ValueError(f"no law of a part holds beyond {COLDEST:g} C to {HOTTEST:g} C; write it within them")
         return condition
 
     @field_validator("leakage")

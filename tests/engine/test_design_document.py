@@ -176,6 +176,7 @@ REFUSALS: list[tuple[list[Any], Any, str]] = [
     (["conditions", "source_resistance", "min"], "-1 ohm", "field conditions.source_resistance: a source_resistance"),
     (["conditions", "leakage"], ["conditioned"] * 2, "field conditions.leakage: a state is named twice; write"),
     (["sequences", "alarm", "ends"], "5 V", "sequence alarm, field ends: '5 V' is a voltage where a time is asked for"),
+    (["conditions", "ambient"], "1e9 C", "no law of a part holds beyond -100 C to 250 C"),
     (["sequences", "alarm", "ends"], "-5 s", "sequence alarm, field ends: '-5 s' is below 0 s; write"),
     (
         ["sequences", "alarm", "events", 1, "rise"],
