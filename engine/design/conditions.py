@@ -59,7 +59,7 @@ class Conditions(Clause):
             raise ValueError("the values are not in order; write min, nominal and max from low to high")
         if info.field_name != "ambient" and found.min < 0:
             raise ValueError(f"a {info.field_name} below zero cannot be computed; write min as 0 or above")
-        if info.field_name == "ambient" and not (COLDEST <= found.min and found.max <= HOTTEST):
+        if info.field_name == "ambient" and (found.min < COLDEST or found.max > HOTTEST):
             raise ValueError(f"no law of a part holds beyond {COLDEST:g} C to {HOTTEST:g} C; write it within them")
         return condition
 
