@@ -38,6 +38,7 @@ MOST_SECONDS = 10.0  # that a lane may take on one core, by circuit/cost.py
 ITERATES = 2.2  # a step, about: one for its stage, one for its end, and some more where laws bend
 MOST_ITERATIONS = 8
 MOST_AT_JUMP = 200
+NEVER = 1 << 62  # steps
 
 ENDED = {
     layout.UNSOLVED: "could not be solved",
@@ -131,7 +132,7 @@ def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Cont
                     if place < nets:
                         rtol[place] = relative * TIGHT
                         atol[place] = ABSOLUTE * scale * TIGHT_ABSOLUTE
-    bounds = most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP, most_iterates(circuit, rows)
+    bounds = most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP, most_iterates(circuit, rows), NEVER
     return Control(rtol, atol, ints(bounds))
 
 
@@ -179,9 +180,9 @@ def run(
         final=layout.zeros(count, n_all),
         kept=layout.zeros(count, len(keep), n_all),
         kept_at=np.full((count, len(keep)), -1.0),
-        trace_time=layout.zeros(trace),
-        trace_value=layout.zeros(trace, n_all),
-        trace_used=ints([0]),
+        trace_time=layout.zeros(min(count, WIDTH), trace),
+        trace_value=layout.zeros(min(count, WIDTH), trace, n_all),
+        trace_used=np.zeros(min(count, WIDTH), dtype=np.int64),
     )
     starts = layout.zeros(count, n_all) if start is None else np.ascontiguousarray(start)
     laws = circuit.table(lanes) if table is None else table

@@ -134,7 +134,7 @@ def _entries() -> list[tuple[str, Callable[..., None], tuple[Any, ...]]]:
         stop_row=layout.ints([-1]),
         keep_row=layout.ints([]),
     )
-    control = layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200, 100_000]))
+    control = layout.Control(np.full(1, 1e-3), np.full(1, 1e-4), layout.ints([1000, 12, 200, 100_000, 1000]))
     results = layout.Results(
         np.zeros((1, 0)),
         np.zeros((1, 0)),
@@ -145,8 +145,8 @@ def _entries() -> list[tuple[str, Callable[..., None], tuple[Any, ...]]]:
         np.zeros((1, 2)),
         np.zeros((1, 0, 2)),
         np.zeros((1, 0)),
-        np.zeros(0),
-        np.zeros((0, 2)),
+        np.zeros((1, 0)),
+        np.zeros((1, 0, 2)),
         layout.ints([0]),
     )
     lane, numbers = np.ones((1, 1)), np.zeros((1, WIDTH))

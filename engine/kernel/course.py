@@ -6,7 +6,7 @@ import math
 
 from .compiled import leaf
 from .layout import SEEN, Floats, Ints
-from .work import AH, BASE, LONGEST, ROUND
+from .work import AH, BASE, LONGEST, NOW, PAUSE_AT, ROUND
 
 
 @leaf
@@ -57,16 +57,34 @@ def keep_states(
 
 
 @leaf
-def trace(x: Floats, w: int, when: float, times: Floats, values: Floats, used: Ints) -> bool:
-    """Keep a point of the only lane; return False where there is no more room."""
-    n = used[0]
-    if n >= times.size:
-        return False
-    times[n] = when
-    for k in range(x.shape[0]):
-        values[n, k] = x[k, w]
-    used[0] = n + 1
-    return True
+def trace(
+    x: Floats,
+    signals: Floats,
+    best: Floats,
+    best_at: Floats,
+    w: int,
+    when: float,
+    times: Floats,
+    values: Floats,
+    used: Ints,
+) -> bool:
+    """Keep a point of the lane in column w, its unknowns and, where there is room for them, its signals and lasting
+    rows; return False where that was the last."""
+    n = used[w]
+    if n < times.shape[1]:
+        times[w, n] = when
+        for k in range(x.shape[0]):
+            values[w, n, k] = x[k, w]
+        if values.shape[2] > x.shape[0]:
+            behind = x.shape[0]
+            for k in range(signals.shape[0]):
+                values[w, n, behind + k] = signals[k, w]
+            behind += signals.shape[0]
+            for k in range(best.shape[0]):
+                values[w, n, behind + 2 * k] = best[k, w]
+                values[w, n, behind + 2 * k + 1] = best_at[k, w]
+        used[w] = n + 1
+    return not used[w] >= times.shape[1]
 
 
 @leaf
@@ -106,5 +124,7 @@ def begin_lane(
             fastest = max(fastest, sine[lane, k, 1])
     clock[LONGEST, w] = 0.05 / fastest if fastest > 0.0 else math.inf
     clock[BASE, w] = 0.0
+    clock[NOW, w] = 0.0
+    clock[PAUSE_AT, w] = math.inf
     clock[AH, w] = 0.0
     clock[ROUND, w] = 0.0

@@ -155,7 +155,8 @@ class Control(NamedTuple):
 
     relative: Floats  # (n_free,)
     absolute: Floats  # (n_free,)
-    bounds: Ints  # most steps of a lane, Newton iterations of a stage, of a jump, and of the lane in all
+    bounds: Ints  # most steps of a lane, Newton iterations of a stage, of a jump, of the lane in all; steps since an
+    #               event after which a lane is paused
 
 
 class Results(NamedTuple):
@@ -170,9 +171,9 @@ class Results(NamedTuple):
     final: Floats  # (lanes, n_all)
     kept: Floats  # (lanes, kept, n_all) states that were asked for
     kept_at: Floats  # (lanes, kept) s, -1 where the state never came
-    trace_time: Floats  # (points,) one lane only
-    trace_value: Floats  # (points, n_all)
-    trace_used: Ints  # (1,)
+    trace_time: Floats  # (columns, points) one column for a lane alone, or as many as a row has lanes
+    trace_value: Floats  # (columns, points, n_all), and behind them signals, extremes and integrals so far and when
+    trace_used: Ints  # (columns,)
 
 
 def zeros(*shape: int) -> Floats:

@@ -6,6 +6,8 @@ another, and a lane that ends makes room for the next.
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 import numpy as np
 
 from . import machine_code
@@ -54,6 +56,8 @@ from .work import (
     MOST,
     NEXT,
     NOW,
+    PAUSE,
+    PAUSE_AT,
     REACH,
     ROUND,
     SPAN,
@@ -74,8 +78,9 @@ MOST_GREW = 4.0  # an error below a hundredth of the allowed one says little abo
 TINY = 1e-12  # s, moves that lie no further apart are one
 GLANCES = 12  # looks at the start until junctions, limited in each, have their charges at any sensible voltage
 
-# What a lane is doing: nothing; looking at its start; solving a jump, the stage of a step, its end.
-IDLE, GLANCE, LEAP, STAGE, END = 0, 1, 2, 3, 4
+# What a lane is doing: nothing; looking at its start; solving a jump, the stage of a step, its end; waiting between two
+# steps, until it is told to go on.
+IDLE, GLANCE, LEAP, STAGE, END, PAUSED, GOES_ON = 0, 1, 2, 3, 4, 5, 6
 # What came of an iterate.
 NOTHING, LOOKED, LEAPT, STAGED, ARRIVED, AGAIN, STARTS, FINISHED = 0, 1, 2, 3, 4, 5, 6, 7
 NOT_ENDED = -1
@@ -95,7 +100,8 @@ def march_rows(
     high: int,
     cancel: Bytes,
 ) -> None:
-    """Step lanes low .. high-1, WIDTH of them at a time; stop where ``cancel[0]`` is set."""
+    """Step lanes low .. high-1, WIDTH of them at a time; stop where ``cancel[0]`` is set, or where all lanes that are
+    left are paused. Called again with the same ``work`` it goes on."""
     element, group = top.element, top.group
     pivot, entry, update, left = top.pivot, top.entry, top.update, top.left
     nets, free = top.size[0], top.size[1]
@@ -114,7 +120,7 @@ def march_rows(
     s0, sg, s1, window = work.s0, work.sg, work.s1, work.window
     listed, listed_until, best, best_at = work.listed, work.listed_until, work.best, work.best_at
     phase, came, failed, lane_of, segment_of = work.phase, work.came, work.failed, work.lane, work.segment
-    moving, diagonal = work.moving, work.diagonal
+    moving, diagonal, begun = work.moving, work.diagonal, work.begun
     told, due, toggles = work.told, work.due, work.left
     guarded = group[GUARD] < group[FAMILIES]
     # Taken out of their tuples once: every look into a tuple counts references, with two atomic operations.
@@ -129,10 +135,13 @@ def march_rows(
     stop_row = rows.stop_row[0]
     tracing = trace_time.size > 0
 
-    upcoming = low
+    upcoming = low + begun[0]
     running = 0
     for w in range(WIDTH):
-        came[w] = FINISHED
+        if phase[w] == IDLE:
+            came[w] = FINISHED
+        elif phase[w] != PAUSED:
+            running += 1
     while True:
         # Lanes that ended make room; what is left over idles on the last one's numbers.
         dirty = False
@@ -143,6 +152,7 @@ def march_rows(
                 if upcoming < high:
                     lane = upcoming
                     upcoming += 1
+                    begun[0] += 1
                     running += 1
                     lane_of[w] = lane
                     begin_lane(w, lane, table, starts, sine, p, x, seen, counts, clock)
@@ -150,6 +160,8 @@ def march_rows(
                     listed_until[w] = -1.0
                     clock[MOST, w] = GLANCES
                     segment_of[w] = min(next_segment(spans, lane, -1), spans.shape[1] - 1)
+                    clock[SPAN, w] = spans[lane, segment_of[w]]
+                    clock[PAUSE, w] = bounds[4]
                     set_switches(switched, switch, lane, segment_of[w], 0.0, w, p)
                     if guarded:
                         rest_guards(element, group, w, x, p, told, due, toggles)
@@ -201,8 +213,10 @@ def march_rows(
             if doing == GLANCE:
                 if clock[LIMITED, w] == 0.0 or clock[ROUND, w] >= GLANCES:
                     came[w] = LOOKED
-            elif doing == IDLE:
+            elif doing == IDLE or doing == PAUSED:
                 came[w] = NOTHING
+            elif doing == GOES_ON:
+                came[w] = AGAIN
             elif came[w] != 0:
                 if doing == STAGE:
                     counts[lane, 2] += int(clock[ROUND, w])
@@ -328,17 +342,16 @@ def march_rows(
                 continue
             how = NOT_ENDED
             if came[w] == ARRIVED or came[w] == LEAPT:
-                if tracing and not trace(x0, w, base + clock[NOW, w], trace_time, trace_value, trace_used):
-                    how = TRACE_FULL
-                elif stop_row >= 0 and came[w] == ARRIVED and status[lane, stop_row] == SEEN:
+                if tracing and not trace(
+                    x0, s0, best, best_at, w, base + clock[NOW, w], trace_time, trace_value, trace_used
+                ):
+                    clock[PAUSE, w] = 0.0
+                if stop_row >= 0 and came[w] == ARRIVED and status[lane, stop_row] == SEEN:
                     how = STOPPED
             elif came[w] == LOOKED and tracing:
-                trace(x0, w, 0.0, trace_time, trace_value, trace_used)
+                trace(x0, s0, best, best_at, w, base + clock[NOW, w], trace_time, trace_value, trace_used)
             leaps = came[w] == LOOKED or (came[w] == AGAIN and clock[NEXT, w] == 0.0)
-            if came[w] == LOOKED:
-                clock[NOW, w] = 0.0
-                clock[SPAN, w] = spans[lane, segment]
-            elif how == NOT_ENDED and clock[NOW, w] >= clock[SPAN, w]:
+            if came[w] != LOOKED and how == NOT_ENDED and clock[NOW, w] >= clock[SPAN, w]:
                 base += clock[SPAN, w]
                 clock[BASE, w] = base
                 clock[NOW, w] = 0.0
@@ -348,6 +361,7 @@ def march_rows(
                     how = DONE
                 else:
                     clock[SPAN, w] = spans[lane, segment]
+                    clock[PAUSE, w] = float(counts[lane, 0] + bounds[4])
                     leaps = restart[segment] == 1
                     moving[w] = 0
             if guarded and how == NOT_ENDED and came[w] != LOOKED and next_due(due, w) - base <= clock[NOW, w]:
@@ -355,6 +369,11 @@ def march_rows(
                 dirty = True
                 leaps = True
             if how == NOT_ENDED and not leaps:
+                if counts[lane, 0] >= clock[PAUSE, w] or base + clock[NOW, w] >= clock[PAUSE_AT, w]:
+                    phase[w] = PAUSED
+                    came[w] = NOTHING
+                    running -= 1
+                    continue
                 counts[lane, 0] += 1
                 if counts[lane, 0] > bounds[0] or counts[lane, 2] > bounds[3]:
                     how = OVERWORKED
@@ -422,6 +441,27 @@ def march_rows(
                     final[lane_of[w], k] = x0[k, w]
 
 
+GoOn = Callable[[Work, list[int], Results], Results]
+"""What is done when all lanes of a row that are not at their end are paused, in these columns: it ends some of them
+(:func:`end_lane`), lets others go on (``GOES_ON``, or ``GLANCE`` from another state), and returns what to fill in."""
+
+
+def end_lane(work: Work, w: int, results: Results, how: int) -> None:
+    """End the paused lane in column ``w`` where it stands."""
+    lane = work.lane[w]
+    results.ended[lane] = how, 0
+    results.ended_at[lane] = work.clock[BASE, w] + work.clock[NOW, w]
+    results.final[lane] = work.x0[:, w]
+    work.phase[w] = IDLE
+
+
+def end_traced(work: Work, columns: list[int], results: Results) -> Results:
+    """Nothing pauses but a trace without more room: there the lane ends."""
+    for w in columns:
+        end_lane(work, w, results, TRACE_FULL)
+    return results
+
+
 def march(
     top: Topology,
     table: Floats,
@@ -433,12 +473,18 @@ def march(
     low: int,
     high: int,
     cancel: Bytes,
+    go_on: GoOn = end_traced,
 ) -> None:
     """Step lanes low .. high-1; stop where ``cancel[0]`` is set."""
     work = work_for(top, table.shape[1], program.source.shape[2], rows)
-    arguments = (top, table, starts, program, rows, control, results, work, low, high, cancel)
-    if COMPILED:
-        machine_code.bound("march", arguments)()
-    else:
-        with np.errstate(all="ignore"):
-            march_rows(*arguments)
+    while True:
+        arguments = (top, table, starts, program, rows, control, results, work, low, high, cancel)
+        if COMPILED:
+            machine_code.bound("march", arguments)()
+        else:
+            with np.errstate(all="ignore"):
+                march_rows(*arguments)
+        paused = [w for w in range(WIDTH) if work.phase[w] == PAUSED]
+        if cancel[0] != 0 or not paused:
+            return
+        results = go_on(work, paused, results)

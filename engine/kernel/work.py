@@ -33,7 +33,8 @@ LIMITED, ERROR, GROWTH = 7, 8, 9
 NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14, 15, 16, 17, 18
 BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
 GREW = 21  # growth that the error of the step before allowed
-CLOCK = 22
+PAUSE, PAUSE_AT = 22, 23  # pauses before a step beyond so many, or this instant in s
+CLOCK = 24
 
 
 class Work(NamedTuple):
@@ -87,6 +88,7 @@ class Work(NamedTuple):
     lane: Ints
     segment: Ints
     moving: Ints
+    begun: Ints  # (1,) how many lanes have begun
     told: Ints  # (WIDTH, guards) what each guard was told last; (WIDTH, guards + contacts) when it moves, and how often
     due: Floats
     left: Ints
@@ -141,6 +143,7 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
         zeros(WIDTH),
         *cut[-8:-6],
         *(row[0].view(np.int64) for row in cut[-6:]),
+        np.zeros(1, dtype=np.int64),
         np.zeros((WIDTH, guards), dtype=np.int64),
         zeros(WIDTH, guards + contacts),
         np.zeros((WIDTH, guards + contacts), dtype=np.int64),

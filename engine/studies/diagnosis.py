@@ -45,7 +45,7 @@ def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: 
     line = Timeline.resumed(before, np.array([at]))
     seen = run(circuit, lane, line.program(max(1.0, 10.0 * at)), (), start=np.ascontiguousarray(state), trace=GLANCE)
     used = int(seen.results.trace_used[0])
-    time, values = seen.results.trace_time[:used], seen.results.trace_value[:used]
+    time, values = seen.results.trace_time[0, :used], seen.results.trace_value[0, :used]
     found: tuple[Floats, float, str] | None = None
     for k in range(int(circuit.topology.size[0])):
         periods = _periods(time, values[:, k])

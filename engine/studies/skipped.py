@@ -51,7 +51,7 @@ def skipped(
     A switching that is already under way at the end of the step in which it began is none: it is met a little late.
     """
     used = int(observed.results.trace_used[0])
-    time, states = observed.results.trace_time[:used], observed.results.trace_value[:used]
+    time, states = observed.results.trace_time[0, :used], observed.results.trace_value[0, :used]
     step = np.diff(time, prepend=0.0)
     looked = np.flatnonzero(step > SHORTEST)
     if not looked.size or not circuit.topology.size[1]:

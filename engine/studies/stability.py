@@ -100,7 +100,7 @@ def _resolving(found: Skipped) -> Floats | None:
 def _swings(observed: Observed, place: int, begin: float) -> tuple[float, float, float] | None:
     """Frequency, size and beginning of an oscillation of one unknown after ``begin``; None where there is none."""
     used = int(observed.results.trace_used[0])
-    time, value = observed.results.trace_time[:used], observed.results.trace_value[:used, place]
+    time, value = observed.results.trace_time[0, :used], observed.results.trace_value[0, :used, place]
     after = time >= begin
     turns: list[tuple[float, float]] = []
     for t, v in zip(time[after], value[after], strict=True):
@@ -196,7 +196,10 @@ def _tipped(
 def _departs(plain: Observed, observed: Observed, begin: float) -> bool:
     """Whether a repeated run goes another way than the plain one did."""
     (t0, x0), (t1, x1) = (
-        (r.results.trace_time[: int(r.results.trace_used[0])], r.results.trace_value[: int(r.results.trace_used[0])])
+        (
+            r.results.trace_time[0, : int(r.results.trace_used[0])],
+            r.results.trace_value[0, : int(r.results.trace_used[0])],
+        )
         for r in (plain, observed)
     )
     after = t1 >= begin

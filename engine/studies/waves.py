@@ -64,8 +64,8 @@ def waves(
     if failure is not None:
         raise CircuitError(f"sequence '{sequence}': {failure}")
     used = int(observed.results.trace_used[0])
-    time = observed.results.trace_time[:used]
-    values = observed.results.trace_value[:used][:, places]
+    time = observed.results.trace_time[0, :used]
+    values = observed.results.trace_value[0, :used][:, places]
     values[:, [net in circuit.builder.temperatures for net in wanted]] += lanes.ambient
     if stops is not None:
         # A step ends at every stop; where an event jumps there, the value before the jump is meant.

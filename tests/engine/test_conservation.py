@@ -71,7 +71,7 @@ def steps_of(circuit: Setup, trace: int = 6000) -> tuple[Floats, Floats]:
     """Times and voltages of all accepted steps."""
     seen = circuit.run(trace=trace)
     used = int(seen.results.trace_used[0])
-    return seen.results.trace_time[:used], seen.results.trace_value[:used]
+    return seen.results.trace_time[0, :used], seen.results.trace_value[0, :used]
 
 
 @given(random_circuits())

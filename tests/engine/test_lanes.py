@@ -8,8 +8,12 @@ from dataclasses import fields
 import numpy as np
 import pytest
 
+from stagebook.engine import run as running
 from stagebook.engine.circuit.timeline import Timeline
 from stagebook.engine.errors import Cancelled
+from stagebook.engine.kernel.layout import Results
+from stagebook.engine.kernel.march import GOES_ON, march
+from stagebook.engine.kernel.work import PAUSE, Work
 from stagebook.engine.primitives.columns import Lanes
 from stagebook.engine.primitives.signals import Anchor, Row, crossing, integral, level, maximum, voltage
 from stagebook.engine.run import BLOCK, Observed, run
@@ -128,11 +132,34 @@ def test_tracing_does_not_disturb_the_run(circuit: Setup, rows: list[Row], lanes
     traced = observe(circuit, rows, one, trace=20_000)
     assert bits(traced) == bits(observe(circuit, rows, one))
     used = int(traced.results.trace_used[0])
-    times = traced.results.trace_time[:used]
+    times = traced.results.trace_time[0, :used]
     assert times[0] == 0.0
     assert times[-1] == pytest.approx(3.0, rel=1e-12)
     assert np.all(np.diff(times) >= 0.0)
-    assert traced.results.trace_value[used - 1].tobytes() == traced.final[0].tobytes()
+    assert traced.results.trace_value[0, used - 1].tobytes() == traced.final[0].tobytes()
+
+
+@pytest.mark.parametrize("piece", [3, 20])
+def test_a_lane_in_pieces_is_the_lane_in_one_go(
+    circuit: Setup, rows: list[Row], lanes: Lanes, piece: int, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Lanes that pause wait for each other, whatever steps they have taken, and go on as if nothing had been."""
+    some = lanes.take(range(30))
+    whole = observe(circuit, rows, some)
+    pauses = []
+
+    def go_on(work: Work, columns: list[int], results: Results) -> Results:
+        for w in columns:
+            pauses.append(int(work.lane[w]))
+            work.phase[w] = GOES_ON
+            work.clock[PAUSE, w] += piece
+        return results
+
+    monkeypatch.setattr(running, "NEVER", piece)
+    monkeypatch.setattr(running, "march", lambda *arguments: march(*arguments, go_on))
+    assert bits(observe(circuit, rows, some)) == bits(whole)
+    assert len(set(pauses)) == 30
+    assert len(pauses) > 30 * 20 / piece
 
 
 def test_a_trace_that_is_too_short_says_so(circuit: Setup, lanes: Lanes) -> None:

@@ -253,9 +253,9 @@ def test_growing_modes_are_the_same_however_many_states_are_in_memory(monkeypatc
     used = int(seen.results.trace_used[0])
     assert used > 100
     parameters = skipped.parameters_at(
-        circuit.circuit, circuit.circuit.table(lanes), circuit.program(lanes), 0, seen.results.trace_time[:used]
+        circuit.circuit, circuit.circuit.table(lanes), circuit.program(lanes), 0, seen.results.trace_time[0, :used]
     )
-    states = seen.results.trace_value[:used]
+    states = seen.results.trace_value[0, :used]
     # With a bound of nothing no two states share their modes.
     whole = skipped._modes(circuit.circuit, parameters, states, 0.0)
     monkeypatch.setattr(skipped, "MOST_ENTRIES", 1)
