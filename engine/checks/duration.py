@@ -10,7 +10,8 @@ from ..design.part import Stage
 from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..kernel.layout import Floats
-from ..primitives.signals import Anchor, Row, crossing, level, maximum, voltage
+from ..primitives.signals import Anchor, Row, crossing, level, maximum, minimum, voltage
+from .alarm_state import HOLDS
 from .check import Ask, Check, Judged, window
 from .seen import Seen
 from .view import View
@@ -42,6 +43,9 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     last = view.anchor(last_text, sequence, first)
     timing = Timing.find(view, stage, first, last)
     brief = _within_chatter(first, last)
+    spike = None
+    if last.row is not None and last.row.rising and last_text.endswith(" on"):
+        spike = last.row.level, minimum(last.row.signal, Anchor(0.05 * HOLDS, last.row), Anchor(HOLDS, last.row))
 
     def judge(seen: Seen) -> Judged:
         begin, end = (instant(seen, anchor, sequence) for anchor in (first, last))
@@ -54,12 +58,17 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
             (~started, check.words["never"].format(what=first_text)),
             (started & ~np.isfinite(end), check.words["endless"].format(what=last_text)),
         ]
+        if spike is not None:
+            at, stayed = spike
+            early = (end - begin < low) & (seen.value(stayed, sequence) < at)
+            outcomes.append((early, check.words["spike"].format(what=last_text)))
         hand = None if timing is None else timing.by_hand(seen, sequence)
         apart = UNTIMED if hand is None else ((np.isnan(hand), UNREACHED),)
         return window(end - begin, low, high, outcomes, hand, apart, of_value=True)
 
     rows = tuple(anchor.row for anchor in (first, last) if anchor.row is not None)
     rows += brief or ()
+    rows += () if spike is None else spike[1:]
     if timing is not None:
         rows += timing.rows
     required = view.required(check.slug, check.required, requirement)
@@ -131,6 +140,10 @@ CHECKS = (
         by_hand="R C ln(V_inf / (V_inf - V_th)) with the rail and threshold seen, the threshold part unloaded",
         accuracy=0.05,
         leaves_out="load of C, other delays",
-        words={"never": "'{what}' never came", "endless": "'{what}' never came: it runs on"},
+        words={
+            "never": "'{what}' never came",
+            "endless": "'{what}' never came: it runs on",
+            "spike": "'{what}' came too early, for less than 20 us: a spike",
+        },
     ),
 )

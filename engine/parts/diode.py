@@ -83,6 +83,12 @@ def _forward(part: Part, build: Builder, gap: float = BAND_GAP, power: float = S
     }
 
 
+def reverse_saturation(part: Part, celsius: float) -> float:
+    """The saturation current in A at a temperature: what flows in reverse beside the leakage that is given."""
+    law = _forward_law(part)
+    return law.saturation * float(saturation_factor(celsius, law.ideality))
+
+
 def _leakage(part: Part, build: Builder) -> Laws:
     found = None if part.law else figure(part, "reverse_current", "A")
     if found is None:

@@ -10,6 +10,7 @@ from .plan import RETURN, Plan
 
 FALL = 0.1  # of the rail that the pull-up may lose to what follows
 SPARE = 1.1  # times the wetting current: what the tolerance of the resistor takes
+MUCH = 50e-3  # A, more than that is not spent on a contact at rest (from memory)
 LEAD_INSULATION = "20M"  # of the whole lead against 0V, wet, from memory
 PER_METRE = {"resistance": "0.08 ohm/m", "capacitance": "100 pF/m"}
 """A pair of 0.22 mm2, there and back, from memory. Its inductance rings at megahertz, far above what follows hears."""
@@ -23,19 +24,15 @@ _SETTINGS = (
 
 def _make(plan: Plan, normally_open: bool) -> Made:
     rail, out = plan.port("rail"), plan.port("out")
-    ohms = plan.rail.min / (SPARE * plan.above_zero("wetting"))
     far = _lead(plan, out)
     fields: Json = {"data": {"minimum_current": {"typical": plan.text("wetting"), "source": "memory"}}}
     if normally_open:
         contact = plan.part("S", "contact", {"a": rail, "b": far}, "contact", form="make", **fields)
-        plan.resistor(ohms, out, RETURN, "pull_down", snap="down")
+        plan.resistor(_wetted(plan), out, RETURN, "pull_down", snap="down")
         drive = Drive(Sense.LEVEL)
     else:
         contact = plan.part("S", "contact", {"a": far, "b": RETURN}, "contact", form="break", **fields)
-        if plan.next.current > 0.0:
-            # What follows draws its current through it.
-            ohms = min(ohms, FALL * plan.rail.min / plan.next.current)
-        value = plan.resistor(ohms, rail, out, "pull_up", snap="down")
+        value = plan.resistor(_pull_up(plan), rail, out, "pull_up", snap="down")
         drive = Drive(Sense.LEVEL, ohms=value)
     begins, ends = ("close", "open") if normally_open else ("open", "close")
     bounce = plan.number("bounce")
@@ -44,7 +41,35 @@ def _make(plan: Plan, normally_open: bool) -> Made:
         (0.0, {"event": begins, "part": contact, **settles}),
         (plan.above_zero("held"), {"event": ends, "part": contact}),
     )
-    return Made(output=drive, acts=acts, lasts=plan.above_zero("held"))
+    doubts = () if normally_open else _thirsty(plan)
+    return Made(output=drive, acts=acts, lasts=plan.above_zero("held"), doubts=doubts)
+
+
+def _wetted(plan: Plan) -> float:
+    """The resistor in ohm through which the closed contact gets its wetting current."""
+    return plan.rail.min / (SPARE * plan.above_zero("wetting"))
+
+
+def _pull_up(plan: Plan) -> float:
+    """The same, so low that what follows can draw its current through it."""
+    ohms = _wetted(plan)
+    return min(ohms, FALL * plan.rail.min / plan.next.current) if plan.next.current > 0.0 else ohms
+
+
+def _rests(plan: Plan) -> float:
+    """What a contact that is closed at rest draws then, A."""
+    return plan.rail.max / _pull_up(plan)
+
+
+def _thirsty(plan: Plan) -> tuple[str, ...]:
+    """The doubt about a contact that is closed at rest and would draw much, to feed what follows once it opens."""
+    if _rests(plan) <= MUCH:
+        return ()
+    taken, rests = (write(each, "A", digits=2) for each in (plan.next.current, _rests(plan)))
+    return (
+        f"stand-by current: what follows takes {taken} through its pull-up, which draws {rests} while the contact is"
+        " closed; put a Schmitt trigger or a latch behind it",
+    )
 
 
 def _lead(plan: Plan, net: str) -> str:
@@ -96,5 +121,6 @@ KINDS = (
         settings=_SETTINGS,
         make=partial(_make, normally_open=False),
         takes=(),
+        rests=_rests,
     ),
 )

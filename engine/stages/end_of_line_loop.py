@@ -57,7 +57,7 @@ def _make(plan: Plan) -> Made:
     plan.resistor(bleed, trip, RETURN, "base_emitter_resistor")
     plan.transistor(low, trip, RETURN, "trip_device")
     # The line jumps by the whole rail, and the transistor that watches it for a short takes this base along.
-    plan.capacitor(plan.quieting("pnp", 0.0, plan.rail.max), trip, RETURN, "base_capacitor_trip_device", snap="up")
+    plan.capacitor(plan.quieting(("pnp", 0.0, plan.rail.max)), trip, RETURN, "base_capacitor_trip_device", snap="up")
     held = plan.above_zero("held")
     acts = ((0.0, {"event": "open", "part": contact}), (held, {"event": "close", "part": contact}))
     loop: Json = {

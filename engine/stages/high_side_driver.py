@@ -35,14 +35,14 @@ def _make(plan: Plan) -> Made:
     plan.resistor(ohms, plan.port("in"), base, "npn_base_resistor", snap="down")
     plan.resistor(bleed, base, RETURN, "base_emitter_resistor_npn_device")
     plan.transistor(pull, base, RETURN, "npn_device", current=upper)
-    plan.capacitor(plan.quieting("npn", upper, plan.supply.max), base, RETURN, "base_capacitor_npn_device", snap="up")
+    plan.capacitor(plan.quieting(("npn", upper, plan.supply.max)), base, RETURN, "base_capacitor_npn_device", snap="up")
     upper_bleed = max(V_BE / (BLEED * upper), 100.0)
     plan.resistor(
         (plan.rail.min - V_FULL - V_SATURATED) / (upper + V_FULL / upper_bleed), top, pull, "base_resistor", snap="down"
     )
     plan.resistor(upper_bleed, rail, top, "base_emitter_resistor_driver")
     plan.transistor(out, top, rail, "driver", kind="pnp", current=peak(plan, switched(plan)))
-    plan.capacitor(plan.quieting("npn", upper, plan.supply.max), rail, top, "base_capacitor_driver", snap="up")
+    plan.capacitor(plan.quieting(("npn", upper, plan.supply.max)), rail, top, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), out, RETURN)
     doubts = beside(plan) + doubtful(plan, SATURATED) if plan.text("load") != NONE else ()

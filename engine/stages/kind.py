@@ -155,7 +155,8 @@ class StageKind:
     """A stage of the catalogue. ``help`` is one paragraph with formula and source; ``make`` writes into a plan.
 
     ``takes`` is which senses its port ``in`` understands, ``intake`` what it takes there with these settings, ``draws``
-    the largest current in A of a load of its own; ``edge``: only a steep edge starts it; ``supply_starts``: the rail
+    the largest current in A of a load of its own, ``rests`` what it takes from the quiet rail at rest, where that may
+    be much; ``edge``: only a steep edge starts it; ``supply_starts``: the rail
     itself can stand for the signal where no stage before it gives one. ``called`` is the name of a stage that is given
     none.
     """
@@ -170,6 +171,7 @@ class StageKind:
     takes: tuple[Sense, ...] = (Sense.LEVEL,)
     intake: Callable[[Plan], Intake] = lambda plan: Intake()
     draws: Callable[[Plan], float] = lambda plan: 0.0
+    rests: Callable[[Plan], float] = lambda plan: 0.0
     edge: bool = False
     supply_starts: bool = True
     called: str = ""

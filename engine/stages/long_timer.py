@@ -115,14 +115,14 @@ def _make(plan: Plan) -> Made:
         return ends(plan, _built(plan, timed, wanted, most, draws))
 
     timed = chosen(plan, time, window, wanted, built)
-    farads = add_timing_capacitor(plan, timed.tau / most, charge, RETURN, timed.kind)
-    plan.resistor(timed.tau / farads, feed, charge, "timing_resistor", tolerance="1 %")
+    timing = add_timing_capacitor(plan, timed.tau / most, charge, RETURN, timed.kind)
+    plan.resistor(timed.tau / timing, feed, charge, "timing_resistor", tolerance="1 %")
     plan.diode(charge, feed, "discharge_diode")
     if mode == RESET:
         # The charge of the capacitor must not keep up what the latch has let go of: it goes to 0V by a way of its own.
         plan.diode(start, feed, "feed_diode")
         ready = max(READY * time, READY_LEAST) / 3.0
-        plan.resistor(max(ready / farads, LEAST_DISCHARGE), feed, RETURN, "discharge_resistor", snap="down")
+        plan.resistor(max(ready / timing, LEAST_DISCHARGE), feed, RETURN, "discharge_resistor", snap="down")
     upper = plan.resistor(_upper(mode, share), feed, ref, "threshold_upper_resistor", tolerance="1 %")
     plan.resistor(share * DIVIDER, ref, RETURN, "threshold_lower_resistor", tolerance="1 %")
     watched = charge
@@ -132,11 +132,12 @@ def _make(plan: Plan) -> Made:
         plan.resistor(EMITTER_BLEED, watched, ref, "emitter_bleed_resistor")
     plan.transistor(fire, ref, watched, "threshold_device", kind="pnp")
     plan.resistor(FIRE_BLEED, fire, RETURN, "base_emitter_resistor_reset_device")
-    # When the timer is started its reference jumps, and the collector-base capacitance of the threshold transistor
-    # takes the firing base along: it would reset the latch that has just been set, over and over again.
-    plan.capacitor(
-        plan.quieting("pnp", 0.0, share * plan.rail.max), fire, RETURN, "base_capacitor_reset_device", snap="up"
-    )
+    # When the timer is started its reference jumps, and the collector of a delay with it: their collector-base
+    # capacitances take the firing base along. It would reset the latch that has just been set, over and over again, or
+    # switch on for some microseconds what is to come on at the end.
+    jumps = plan.rail.max if mode == DELAY else 0.0
+    farads = plan.quieting(("pnp", 0.0, share * plan.rail.max), ("npn", 0.0, jumps))
+    plan.capacitor(farads, fire, RETURN, "base_capacitor_reset_device", snap="up")
     made = _fired(plan, mode, output, upper)
     capacitor = plan.roles["timing_capacitor"]
     first, last = ("begins", "{load} on") if mode == DELAY else ("{load} on", "{load} off")
@@ -159,7 +160,7 @@ def _make(plan: Plan) -> Made:
         requirements=(duration, arrival),
         doubts=(
             *_unreset(plan),
-            *(doubts(plan, timed, time, window, wanted, built) if farads > LARGEST_FILM else ()),
+            *(doubts(plan, timed, time, window, wanted, built) if timing > LARGEST_FILM else ()),
         ),
     )
 
@@ -232,9 +233,9 @@ KIND = StageKind(
         " (1+g))), s = V_th/V, V_th = share x V + V_EB (and a diode against reverse), g = R G_leak. R C puts T in the"
         " middle of what tolerances, V_EB and hot leakage make of it; R is at most what still fires at V_min, (V_min -"
         " V_th) / (3 I_C/h_FE,min + V_BE/R_BE). g grows with T alone: a suitable C is low drift, or where that leaks"
-        " too much one that is selected; 0.01 C V fails beyond some 40 s of R C. The firing base has C = C_ob V_th /"
-        " (0.3 V_BE), so that its start does not fire it. delay: out high after T; interval: out high for T; reset:"
-        " lets the latch before it go after T. Source: RC charging law; common practice."
+        " too much one that is selected; 0.01 C V fails beyond some 40 s of R C. The firing base has C = (C_ob"
+        " V_th + C_ob V) / (0.3 V_BE), so that its start does not fire it. delay: out high after T; interval: out high"
+        " for T; reset: lets the latch before it go after T. Source: RC charging law; common practice."
     ),
     ports=(
         IN_PORT,

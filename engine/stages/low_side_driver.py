@@ -57,7 +57,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     if peak(plan, current) > PEAK * bears:
         inrush = write(peak(plan, current), "A")
         doubts += (f"peak_current: an inrush of {inrush} leaves no 20 % of the {bears:g} A that it bears; switch less",)
-    farads = plan.quieting(kind, peak(plan, current), plan.supply.max)
+    farads = plan.quieting((kind, peak(plan, current), plan.supply.max))
     plan.capacitor(farads, node, RETURN, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), plan.port("rail"), low)

@@ -67,7 +67,7 @@ def _make_p(plan: Plan) -> Made:
     below = (plan.arriving - V_BE) / (base + V_BE / bleed) - plan.arriving_ohms
     if below < 1.0:
         raise plan.refused("current", "the stage before it cannot turn its npn on; put a latch or a switch there")
-    plan.capacitor(plan.quieting("npn", 0.0, plan.supply.max), node, RETURN, "base_capacitor_npn_device", snap="up")
+    plan.capacitor(plan.quieting(("npn", 0.0, plan.supply.max)), node, RETURN, "base_capacitor_npn_device", snap="up")
     ohms = _gate(plan, "mosfet_p", P_CLASS, PULL, V_SATURATED)
     plan.resistor(below, plan.port("in"), node, "npn_base_resistor", snap="down")
     plan.resistor(bleed, node, RETURN, "base_emitter_resistor_npn_device")

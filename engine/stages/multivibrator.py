@@ -79,5 +79,5 @@ def add_separate_output(plan: Plan, collector: str, rail: str) -> Drive:
     base, low = plan.net("output_base"), plan.net("output_low")
     plan.resistor((plan.arriving - V_BE) / output_base(plan), collector, base, "output_npn_base_resistor", snap="down")
     plan.transistor(low, base, RETURN, "output_npn")
-    plan.capacitor(plan.quieting("npn", 0.0, plan.rail.max), base, RETURN, "base_capacitor_output_npn", snap="up")
+    plan.capacitor(plan.quieting(("npn", 0.0, plan.rail.max)), base, RETURN, "base_capacitor_output_npn", snap="up")
     return add_output(plan, sized(plan), low, rail)

@@ -11,7 +11,7 @@ LEAST_OUTPUT = 0.2e-3  # A that an output is made for where nothing is known of 
 MOST_BLEED = 100e3  # ohm
 HELP = (
     "The output is a pnp with I_B = 3 x I_out / h_FE,min, so that out reaches the rail; its base has C = C_ob V_max"
-    " / (0.3 V_BE), so that a rail that comes at once does not turn it on."
+    " / (0.3 V_BE), C_ob of both transistors, so that a rail that comes at once does not turn it on."
 )
 
 
@@ -39,8 +39,10 @@ def add_output(plan: Plan, output: Output, low: str, rail: str) -> Drive:
     plan.resistor(output.ohms, low, base, "output_base_resistor", snap="down")
     plan.resistor(output.bleed, rail, base, "base_emitter_resistor_output_device")
     plan.transistor(plan.port("out"), base, rail, "output_device", kind="pnp", current=plan.next.current)
-    # Where its rail is switched on by an edge, its base hangs on the collector that is to turn it on: without this, all
-    # that follows would see a pulse.
-    plan.capacitor(plan.quieting("npn", 0.0, plan.rail.max), rail, base, "base_capacitor_output_device", snap="up")
+    # Where its rail is switched on by an edge, its base hangs on the collector that is to turn it on and on its own:
+    # without this, all that follows would see a pulse.
+    step = plan.rail.max
+    farads = plan.quieting(("npn", 0.0, step), ("pnp", plan.next.current, step))
+    plan.capacitor(farads, rail, base, "base_capacitor_output_device", snap="up")
     fed_through = 0.0 if plan.drive is None or rail != plan.port("in") else plan.drive.drop
     return Drive(Sense.LEVEL, drop=V_SATURATED + fed_through)

@@ -29,6 +29,9 @@ _POWERS = (0.25, 0.5, 1.0, 2.0, 5.0, 10.0)
 _LEAST, _MOST = 1.0, 10e6  # ohm, what is put in where a formula asks for less or more
 COUPLED = 0.3  # of V_BE: what a fast edge may bring to a base that rests, through strays and junctions
 UNBIASED = 2.5  # times its C_ob at 10 V, a transistor's capacitance without bias: (1 + 10 V/0.7 V)^(1/3)
+ABOVE = (
+    1.01  # times the rail that a capacitor's rated voltage is chosen for: what comes back from a load lifts it a little
+)
 LARGEST_FILM = 2.2e-6  # F; above it capacitors are polarised (common practice)
 
 
@@ -221,12 +224,12 @@ class Plan:
         """
         if film or farads <= LARGEST_FILM:
             value = snapped(farads, "E6", snap)
-            rated = _at_least(self.rail.max / 0.6, _VOLTAGES[4:])
+            rated = _at_least(ABOVE * self.rail.max / 0.6, _VOLTAGES[4:])
             fields = {"tolerance": "10 %", "class": "film", "voltage": f"{rated:g} V"}
             self.part("C", "capacitor", {"a": a, "b": b}, role, value=write(value, "F"), **fields)
             return value
         value = snapped(farads, "E6", snap)
-        rated = _at_least(self.rail.max / 0.8, _VOLTAGES)
+        rated = _at_least(ABOVE * self.rail.max / 0.8, _VOLTAGES)
         name, tolerance = ("timing capacitor, low drift", "10 %") if low_drift else ("electrolytic", "20 %")
         fields = {"tolerance": tolerance, "class": name, "voltage": f"{rated:g} V"}
         polarised = {"plus": a, "minus": b}
@@ -247,11 +250,13 @@ class Plan:
         pins = {"collector": collector, "base": base, "emitter": emitter}
         return self.part("Q", kind, pins, role, **{"class": self.transistor_class(kind, current)})
 
-    def quieting(self, kind: str, current: float, volts: float) -> float:
-        """The capacitance in F that keeps a resting base below 0.3 V_BE while the other side of a transistor's C_ob
-        moves by ``volts``: both divide the step."""
-        of_class = self.transistor_class(kind, current)
-        return UNBIASED * class_figure(kind, of_class, "c_ob", "F").high * volts / (COUPLED * V_BE)
+    def quieting(self, *moved: tuple[str, float, float]) -> float:
+        """The capacitance in F that keeps a resting base below 0.3 V_BE while the other sides of the C_ob of all that
+        hangs on it move: each (kind, current, volts) of a transistor and its step, which both divide."""
+        charge = 0.0
+        for kind, current, volts in moved:
+            charge += UNBIASED * class_figure(kind, self.transistor_class(kind, current), "c_ob", "F").high * volts
+        return charge / (COUPLED * V_BE)
 
     def diode(
         self, anode: str, cathode: str, role: str | None = None, *, kind: str = "diode", name: str = "signal diode"
@@ -262,8 +267,12 @@ class Plan:
 
 def class_figure(kind: str, name: str, key: str, unit: str) -> Figure:
     """A figure of a generic class, as a part of that class has it."""
-    part = Part.model_validate({"ref": "X", "kind": kind, "pins": {"a": RETURN}, "class": name})
-    return needed(part, key, unit, "")
+    return needed(part_of_class(kind, name), key, unit, "")
+
+
+def part_of_class(kind: str, name: str) -> Part:
+    """A part that says no more than its class."""
+    return Part.model_validate({"ref": "X", "kind": kind, "pins": {"a": RETURN}, "class": name})
 
 
 def snapped(value: float, series: str, snap: str) -> float:

@@ -89,6 +89,9 @@ def _make(plan: Plan) -> Made:
     plan.resistor(ohms, feed, node, "base_resistor", snap="down")
     plan.resistor(bleed, node, RETURN, "base_emitter_resistor")
     plan.transistor(low, node, RETURN, "driver", current=_current(plan))
+    # A coil takes no current at first: a base that is lifted for a microsecond would put the whole supply across it.
+    farads = plan.quieting(("npn", _current(plan), plan.supply.max))
+    plan.capacitor(farads, node, RETURN, "base_capacitor_driver", snap="up")
     coil = _add_coil(plan, rail, low)
     if plan.text("clamp") == "zener":
         # The zener stands off more than the diode alone, so that the current falls faster.

@@ -127,7 +127,8 @@ def _beyond(plans: Sequence[Plan]) -> list[Beyond]:
         behind = plans[number + 1 :]
         loads = sum(plan.kind.draws(plan) for plan in behind)
         handed = max((plan.next.current for plan in behind if plan.kind.place is not Order.SWITCH), default=0.0)
-        found.append(Beyond(loads or None, OWN + handed if behind else None))
+        rests = sum(plan.kind.rests(plan) for plan in behind)
+        found.append(Beyond(loads or None, OWN + handed + rests if behind else None))
     return found
 
 

@@ -50,7 +50,7 @@ def _make(plan: Plan) -> Made:
     plan.resistor(ohms, base, left, "collector_resistor", tolerance="1 %")
     plan.transistor(plan.port("out"), base, rail, "output_device", kind="pnp", current=plan.next.current)
     # An input that jumps takes the collector along through the first transistor, and that the output's base.
-    farads = plan.quieting("npn", 0.0, plan.rail.max)
+    farads = plan.quieting(("npn", 0.0, plan.rail.max))
     plan.capacitor(farads, rail, base, "base_capacitor_output_device", snap="up")
     lower_ohms = at_base / divider
     plan.resistor((volts - at_base) / divider - bleed - ohms, left, tap, "divider_upper_resistor", tolerance="1 %")
@@ -66,7 +66,7 @@ def _make(plan: Plan) -> Made:
         plan.resistor(BLEED, second, emitter, "base_emitter_resistor_second_device")
         # Where the input jumps, a base that hangs on a blocking diode must go with its emitter.
         hangs = class_figure("diode", "signal diode", "capacitance", "F").high * plan.rail.max / V_HELD
-        farads = hangs + plan.quieting("npn", 0.0, plan.rail.max) * COUPLED * V_BE / V_HELD
+        farads = hangs + plan.quieting(("npn", 0.0, plan.rail.max)) * COUPLED * V_BE / V_HELD
         for base_net, name in ((node, "trip_device"), (second, "second_device")):
             plan.capacitor(farads, base_net, emitter, f"base_emitter_capacitor_{name}", snap="up")
     plan.transistor(left, signal, emitter, "trip_device")

@@ -15,9 +15,10 @@ from itertools import product
 
 from ..parts.capacitor import LEAKAGE_DOUBLING, LEAKAGE_REFERENCE
 from ..parts.classes import CLASSES
+from ..parts.diode import reverse_saturation
 from ..parts.physics import REFERENCE, ZERO_CELSIUS, doubling
 from ..quantity import read
-from .plan import LARGEST_FILM, Plan, class_figure
+from .plan import LARGEST_FILM, Plan, class_figure, part_of_class
 
 V_EB, V_DIODE = 0.44, 0.25  # V at 1 uA and 25 C: of the threshold transistor, and of its diode (class)
 SPREAD = 0.06  # V by which that of the transistor differs from part to part (class)
@@ -90,19 +91,23 @@ def _time(built: Built, celsius: float, volts: float, side: int) -> float:
     farads = built.farads * (1.0 + side * built.tolerance) * (1.0 + side * built.drift)
     warm = 2.0 ** ((celsius - LEAKAGE_REFERENCE) / LEAKAGE_DOUBLING)
     lost = 1.0 + (ohms * built.leakage * warm if side > 0 else 0.0)
-    # Its diodes stand in reverse nearly all the time: the one to the rail, and the one that guards the emitter.
-    reverse = _reverse(celsius) * (2.0 if built.guarded else 1.0) if side < 0 else 0.0
-    final = volts + reverse * ohms
+    # Its diodes stand in reverse: the one to the rail nearly all the time, the one that guards the emitter until the
+    # capacitor has come to where its bleed resistor holds the emitter.
+    reverse = _reverse(celsius) + _saturation(celsius) if side < 0 else 0.0
+    final, helped = volts + reverse * ohms, 0.0
     at_end = fires(built, celsius, volts, side)
     reached = at_end.volts * lost / final
     left = (final - at_end.volts * lost) / ohms
     if reached >= 1.0 or at_end.emitter >= left:
         return math.inf
+    if built.guarded and side < 0:
+        until = max(_divided(built, side) * volts - reverse * built.emitter_bleed, 0.0)
+        helped = math.log1p(-until / final) - math.log1p(-until / (final + reverse * ohms))
     taken = farads * at_end.slope / left * -math.log1p(-at_end.emitter / left)
     if built.guarded:
         middle = left + 0.5 * at_end.v_eb / ohms
         taken += farads * at_end.v_eb**2 / (2.0 * built.emitter_bleed * middle**2)
-    return ohms * farads / lost * -math.log1p(-reached) + taken
+    return ohms * farads / lost * (-math.log1p(-reached) + helped) + taken
 
 
 @dataclass(frozen=True)
@@ -118,9 +123,8 @@ class Firing:
 
 def fires(built: Built, celsius: float, volts: float, side: int) -> Firing:
     """What the capacitor must come to, at its least or its largest."""
-    upper, lower = built.upper * (1.0 - side * RESISTOR), built.lower * (1.0 + side * RESISTOR)
-    share = lower / (upper + lower)
-    parallel = share * upper
+    share = _divided(built, side)
+    parallel = share * built.upper * (1.0 - side * RESISTOR)
     thermal = V_T * (celsius + ZERO_CELSIUS) / (REFERENCE + ZERO_CELSIUS)
     warmer = celsius - REFERENCE
     draws = built.draws * (1.0 if side > 0 else BEGINS)
@@ -138,6 +142,17 @@ def fires(built: Built, celsius: float, volts: float, side: int) -> Firing:
     through = max(emitter + bled - (_reverse(celsius) if side < 0 else 0.0), LEAST_CURRENT)
     above += V_DIODE - DIODE_PER_KELVIN * warmer + DIODE_SLOPE * thermal * math.log(through / 1e-6) + bled * parallel
     return Firing(share * volts + above, v_eb, emitter, (1.0 + DIODE_SLOPE) * thermal)
+
+
+def _divided(built: Built, side: int) -> float:
+    """The share of the rail that the divider gives at its least or its largest."""
+    upper, lower = built.upper * (1.0 - side * RESISTOR), built.lower * (1.0 + side * RESISTOR)
+    return lower / (upper + lower)
+
+
+def _saturation(celsius: float) -> float:
+    """What a signal diode lets back beside that, A."""
+    return reverse_saturation(part_of_class("diode", "signal diode"), celsius)
 
 
 def _reverse(celsius: float) -> float:

@@ -8,6 +8,7 @@ import numpy as np
 import pytest
 
 from stagebook.engine.circuit.circuit import build
+from stagebook.engine.design.document import Design
 from stagebook.engine.errors import DesignError
 from stagebook.engine.primitives.columns import AMBIENT
 from stagebook.engine.primitives.signals import Anchor, level, maximum, minimum, voltage
@@ -190,3 +191,40 @@ def test_an_interval_behind_a_latch_is_told_to_leave_it_on() -> None:
     assert words.startswith("latch reset: an interval leaves the latch before it on; write mode reset")
     for row in ((CALL, timer, PIEZO), (CALL, latch, choice("long_timer", "timer", mode="reset"), PIEZO)):
         assert doubts(conditions(), row) == {}
+
+
+COLD_AND_HOT = conditions("10.5 V", "12 V", "14.4 V") | {"ambient": {"min": "-30 C", "nominal": "25 C", "max": "70 C"}}
+
+
+@pytest.mark.parametrize(
+    "driver",
+    [choice("low_side_driver", "driver"), choice("relay_driver", "driver", pick_up="57 %")],
+    ids=lambda c: c.kind,
+)
+def test_a_delay_behind_entry_and_contact_does_not_blink_when_it_is_started(driver: Choice) -> None:
+    # The closing contact lifted the firing base to 0.37 V by C_ob of two transistors: hot, with 330 pF there, the load
+    # was on for 5 us; a coil, which takes no current at first, had the whole supply across it at room temperature too.
+    entry, timer = choice("entry", diode="schottky"), choice("long_timer", "timer", time="10 s", window="55 %")
+    row = (entry, CALL, timer, driver)
+    assert doubts(COLD_AND_HOT, row) == {}
+    design = new_design("test", "a delay from cold to hot", COLD_AND_HOT, row)
+    (found,) = study(design, only=f"duration:timer:{design.stage('timer').roles['timing_capacitor']}").checks
+    assert found.verdict is Verdict.PASS
+
+
+def test_a_spike_instead_of_the_alarm_is_told_as_one() -> None:
+    # 100 pF instead of 1.5 nF at the firing base: the closing contact lifts it by more than a volt.
+    row = (choice("entry"), CALL, choice("long_timer", "timer", time="10 s", window="55 %"), choice("low_side_driver"))
+    document = new_design("test", "a delay that blinks", COLD_AND_HOT, row).dump()
+    roles, parts = document["stages"][2]["roles"], document["stages"][2]["parts"]
+    next(part for part in parts if part["ref"] == roles["base_capacitor_reset_device"])["value"] = "100p"
+    (found,) = study(Design.load(document), only=f"duration:timer:{roles['timing_capacitor']}").checks
+    assert found.outcome == "'LS1 on' came too early, for less than 20 us: a spike"
+
+
+def test_what_comes_back_when_a_timer_is_hot_is_counted_into_its_early_end() -> None:
+    # 25 nA x 2^4.5 and 10 nA x 23 of saturation come back through two diodes at 70 C: 8 % of the time. Compared with
+    # the simulated corner: 32.87 s.
+    row = (choice("entry"), CALL, choice("long_timer", "timer", time="60 s", capacitor="low drift"), PIEZO)
+    (said,) = doubts(COLD_AND_HOT, row)["timer"]
+    assert said.startswith("duration: tolerances and leakage let its time come out at 32")
