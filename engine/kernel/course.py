@@ -6,7 +6,7 @@ import math
 
 from .compiled import leaf
 from .layout import SEEN, Floats, Ints
-from .work import AH, BASE, LONGEST, NOW, PAUSE_AT, ROUND
+from .work import AH, BASE, HELD, LONGEST, NOW, PAUSE_AT, ROUND
 
 
 @leaf
@@ -69,8 +69,10 @@ def trace(
     used: Ints,
 ) -> bool:
     """Keep a point of the lane in column w, its unknowns and, where there is room for them, its signals and lasting
-    rows; return False where that was the last."""
+    rows; return False where that was the last. Nothing is kept while ``used`` is below 0."""
     n = used[w]
+    if n < 0:
+        return True
     if n < times.shape[1]:
         times[w, n] = when
         for k in range(x.shape[0]):
@@ -126,5 +128,6 @@ def begin_lane(
     clock[BASE, w] = 0.0
     clock[NOW, w] = 0.0
     clock[PAUSE_AT, w] = math.inf
+    clock[HELD, w] = 0.0
     clock[AH, w] = 0.0
     clock[ROUND, w] = 0.0

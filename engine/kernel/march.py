@@ -48,11 +48,13 @@ from .work import (
     ERROR,
     GREW,
     GROWTH,
+    HELD,
     LAST,
     LEFT,
     LENGTH,
     LIMITED,
     LONGEST,
+    LOST,
     MOST,
     NEXT,
     NOW,
@@ -292,6 +294,11 @@ def march_rows(
                 if doing != LEAP and clock[NEXT, w] < SMALLEST:
                     # There is no way on from here however short the step: what has lost its balance jumps.
                     clock[NEXT, w] = 0.0
+                elif doing == LEAP and clock[HELD, w] > 0.0:
+                    came[w] = NOTHING
+                    phase[w] = PAUSED
+                    clock[HELD, w] = LOST
+                    running -= 1
                 elif doing == LEAP:
                     came[w] = FINISHED
                     ended[lane, 0] = UNSOLVED
@@ -345,9 +352,12 @@ def march_rows(
                 if tracing and not trace(
                     x0, s0, best, best_at, w, base + clock[NOW, w], trace_time, trace_value, trace_used
                 ):
-                    clock[PAUSE, w] = 0.0
+                    clock[PAUSE_AT, w] = 0.0
                 if stop_row >= 0 and came[w] == ARRIVED and status[lane, stop_row] == SEEN:
-                    how = STOPPED
+                    if clock[HELD, w] > 0.0:
+                        clock[PAUSE_AT, w] = 0.0
+                    else:
+                        how = STOPPED
             elif came[w] == LOOKED and tracing:
                 trace(x0, s0, best, best_at, w, base + clock[NOW, w], trace_time, trace_value, trace_used)
             leaps = came[w] == LOOKED or (came[w] == AGAIN and clock[NEXT, w] == 0.0)

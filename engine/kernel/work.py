@@ -34,7 +34,9 @@ NOW, BASE, ASKED, NEXT, LEFT, LONGEST, SPAN, SURPRISE, STOP = 10, 11, 12, 13, 14
 BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
 GREW = 21  # growth that the error of the step before allowed
 PAUSE, PAUSE_AT = 22, 23  # pauses before a step beyond so many, or this instant in s
-CLOCK = 24
+HELD = 24  # 1: is paused where it would be stopped or lost, because a caller may take it back; then LOST
+CLOCK = 25
+LOST = -1.0
 
 
 class Work(NamedTuple):
