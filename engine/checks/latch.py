@@ -1,6 +1,7 @@
 """Check 5: does a latch hold in the weakest conditions, and does it let go when it is reset?
 
-The holding current is found by a trial: from the latched state the supply is lowered until the latch lets go.
+The holding current is found by a trial: from the latched state the supply, and with it every battery, is lowered until
+the latch lets go.
 """
 
 from __future__ import annotations
@@ -56,6 +57,8 @@ def _hold_trial(latch: Latch, sequence: str, settle: float) -> Trial:
 
     def drive(line: Timeline, knob: Floats) -> None:
         line.move_supply(0.0, line.lanes[SUPPLY] / knob, LOWERING)
+        # A battery that takes over would keep it on, and its holding current unknown.
+        line.move_batteries(0.0, knob, LOWERING)
 
     def gives_in(lanes: Lanes, observed: Observed) -> Mask:
         return ~latch.conducts(lanes, observed, probes)
@@ -190,7 +193,7 @@ CHECKS = (
         title="latch hold",
         unit="A",
         required=0.5,
-        formula="D = latch current at which it lets go when the supply is lowered, C = latch current while it holds",
+        formula="D = latch current at which it lets go when what feeds it is lowered, C = latch current while it holds",
         asks=hold_asks,
         reads={"of": "Q4", "settle": "0.2 s"},
         worst="cold, low supply, weak h_FE",

@@ -181,6 +181,11 @@ class Timeline:
         """The supply moves to another voltage within ``edge``."""
         self.supply.ramp(at, edge, to)
 
+    def move_batteries(self, at: Number, parts: Number, edge: Number) -> None:
+        """Every battery falls to its voltage divided by ``parts`` within ``edge``."""
+        for source, volts in self.circuit.builder.batteries.items():
+            self.sources[source].ramp(at, edge, np.divide(volts(self.lanes), parts))
+
     def excursion(
         self, at: Number, to: Number, during: Number, edge: Number = DEFAULT_EDGE, impedance: Number | None = None
     ) -> None:

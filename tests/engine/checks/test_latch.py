@@ -14,7 +14,7 @@ from stagebook.engine.results import Verdict
 from stagebook.engine.studies.evaluate import asks_of
 from stagebook.engine.studies.trials import TrialRun
 
-from ..circuits import Json, capacitor, resistor
+from ..circuits import Json, capacitor, resistor, two
 from .latches import latch
 from .sheets import exact, margin
 
@@ -52,6 +52,17 @@ def test_hold_margin_of_the_worked_latch() -> None:
 def test_hold_by_feed(feed: str, verdict: Verdict) -> None:
     # 2.4 mA and 0.63 mA against 0.55 mA.
     assert margin(latch(feed), "latch_hold", "Q1").verdict is verdict
+
+
+def test_a_battery_that_would_keep_it_on_is_lowered_with_the_supply() -> None:
+    # 12 V of a battery behind 10k and a diode keep 1 mA in it, whatever becomes of the supply: twice what it takes.
+    cell = two("battery", "BT1", "cell", "0V", voltage="12 V", resistance="1R")
+    blocking = two("diode", "D1", "cell", "behind", **{"class": "signal diode"})
+    of = latch(extra=[cell, blocking, exact(resistor("R6", "behind", "top", "10k"))])
+    found = margin(of, "latch_hold", "Q1")
+    assert found.demand is not None
+    assert HOLDING * 0.999 <= found.demand <= HOLDING * 1.05
+    assert found.capability == pytest.approx(2.1e-3, rel=0.05)
 
 
 def test_the_hand_formula_for_both_resistors() -> None:
