@@ -11,12 +11,15 @@ from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..kernel.layout import Floats
 from ..primitives.signals import Anchor, Row, crossing, level, maximum, minimum, voltage
+from ..quantity import read
 from .alarm_state import HOLDS
 from .check import Ask, Check, Judged, window
+from .complementary_latch import latches
 from .seen import Seen
 from .view import View
 
 UNTIMED = "neither its own stage nor just one fills timing_resistor and timing_capacitor"
+SET = 0.3  # V across the base-emitter junction of a latch: not before it is set, not while it is reset (from memory)
 UNREACHED = "by hand the timing capacitor does not come to what it was seen to have"
 
 
@@ -43,9 +46,12 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     last = view.anchor(last_text, sequence, first)
     timing = Timing.find(view, stage, first, last)
     brief = _within_chatter(first, last)
+    again = _again(view, first, last)
     spike = None
     if last.row is not None and last.row.rising and last_text.endswith(" on"):
         spike = last.row.level, minimum(last.row.signal, Anchor(0.05 * HOLDS, last.row), Anchor(HOLDS, last.row))
+
+    events = [read(event.at, "s") for event in view.design.sequences[sequence].events]
 
     def judge(seen: Seen) -> Judged:
         begin, end = (instant(seen, anchor, sequence) for anchor in (first, last))
@@ -62,6 +68,11 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
             at, stayed = spike
             early = (end - begin < low) & (seen.value(stayed, sequence) < at)
             outcomes.append((early, check.words["spike"].format(what=last_text)))
+        if again is not None:
+            # Nothing happened between its end and its coming again: what started it still does.
+            comes = np.fmax.reduce([seen.time(row, sequence) for row in again])
+            alone = np.all([(at <= end) | (at >= comes) for at in events], axis=0) & np.isfinite(end)
+            outcomes.append((alone & np.all([seen.seen(row, sequence) for row in again], axis=0), check.words["again"]))
         hand = None if timing is None else timing.by_hand(seen, sequence)
         apart = UNTIMED if hand is None else ((np.isnan(hand), UNREACHED),)
         return window(end - begin, low, high, outcomes, hand, apart, of_value=True)
@@ -69,6 +80,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     rows = tuple(anchor.row for anchor in (first, last) if anchor.row is not None)
     rows += brief or ()
     rows += () if spike is None else spike[1:]
+    rows += again or ()
     if timing is not None:
         rows += timing.rows
     required = view.required(check.slug, check.required, requirement)
@@ -82,6 +94,17 @@ def _within_chatter(first: Anchor, last: Anchor) -> tuple[Row, Row] | None:
         return None
     end = last.row
     return crossing(end.signal, end.level, end.rising, first), level(end.signal, end.start)
+
+
+def _again(view: View, first: Anchor, last: Anchor) -> tuple[Row, ...] | None:
+    """Rows for a latch that is set again after an alarm has ended, and for its load that comes on again. None where the
+    interval is not that of a load that comes on and goes off, or where nothing latches."""
+    on, off = first.row, last.row
+    if on is None or off is None or on.signal != off.signal or not on.rising or off.rising:
+        return None
+    over = Anchor(0.0, off)
+    set_again = tuple(crossing(latch.lifts[0], SET, True, over) for latch in latches(view))
+    return (*set_again, crossing(on.signal, on.level, True, over)) if len(set_again) == 1 else None
 
 
 def instant(seen: Seen, anchor: Anchor, sequence: str) -> Floats:
@@ -144,6 +167,7 @@ CHECKS = (
             "never": "'{what}' never came",
             "endless": "'{what}' never came: it runs on",
             "spike": "'{what}' came too early, for less than 20 us: a spike",
+            "again": "the alarm comes again by itself when it is over: what started it is still there",
         },
     ),
 )

@@ -176,7 +176,33 @@ def _filled(entry: T, facts: Mapping[str, str]) -> T:
 def doubts(conditions: Json, choices: Sequence[Choice]) -> dict[str, tuple[str, ...]]:
     """What will not hold of a row as it is asked for, by stage: the check, why, and what to write instead."""
     empty = Design.load(_document("row", "", conditions, [], {"alarm": {"events": [], "ends": "1 s"}}, []))
-    return {made.stage["name"]: made.made.doubts for made in make_row(empty.conditions, choices) if made.made.doubts}
+    return doubted(make_row(empty.conditions, choices))
+
+
+def doubted(row: Sequence[MadeStage]) -> dict[str, tuple[str, ...]]:
+    """What will not hold of stages that are made, by stage."""
+    found = {made.stage["name"]: made.made.doubts for made in row}
+    for name, words in _set_again(row).items():
+        found[name] = (*found[name], words)
+    return {name: words for name, words in found.items() if words}
+
+
+def _set_again(row: Sequence[MadeStage]) -> dict[str, str]:
+    """The doubt about a timer that resets a latch which what started it still sets: by the timer's name."""
+    held, level, found = 0.0, False, {}
+    for made in row:
+        begun = [at for at, event in made.made.acts if event["event"] in ("close", "open")]
+        held = max([held, *(max(begun) - min(begun) for _ in begun[:1])])
+        if "latch_npn" in made.stage["roles"]:
+            level = "input_resistor" in made.stage["roles"]
+        resets = made.kind.port(Wire.BASE) is not None and "base" in made.stage["ports"]
+        if level and resets and made.made.active is not None and held > made.made.active:
+            over, lasts = write(held, "s", digits=3), write(made.made.active, "s", digits=3)
+            found[made.stage["name"]] = (
+                f"duration: what sets the latch is held for {over}, longer than the alarm of {lasts}: it comes again"
+                " and again meanwhile; put a differentiator before the latch, or write a longer time"
+            )
+    return found
 
 
 # -- a stage added to a design

@@ -228,3 +228,18 @@ def test_what_comes_back_when_a_timer_is_hot_is_counted_into_its_early_end() -> 
     row = (choice("entry"), CALL, choice("long_timer", "timer", time="60 s", capacitor="low drift"), PIEZO)
     (said,) = doubts(COLD_AND_HOT, row)["timer"]
     assert said.startswith("duration: tolerances and leakage let its time come out at 32")
+
+
+def test_a_latch_that_is_still_set_when_its_timer_lets_it_go_is_doubted_and_found() -> None:
+    timer, latch = choice("long_timer", "timer", mode="reset", time="3 s"), choice("complementary_latch", "latch")
+
+    def row(held: str, *between: Choice) -> tuple[Choice, ...]:
+        return (choice("contact_no", "call", held=held), *between, latch, timer, PIEZO)
+
+    assert doubts(conditions(), row("2 s")) == {}
+    assert doubts(conditions(), row("20 s", choice("differentiator"))) == {}
+    (said,) = doubts(conditions(), row("20 s"))["timer"]
+    assert said.startswith("duration: what sets the latch is held for 20 s, longer than the alarm of 3 s")
+    design = made(*row("20 s"))
+    (found,) = study(design, only=f"duration:timer:{design.stage('timer').roles['timing_capacitor']}").checks
+    assert found.outcome == "the alarm comes again by itself when it is over: what started it is still there"
