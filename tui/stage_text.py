@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 from ..engine.design.part import Stage
 from ..engine.stages import stage_kinds
@@ -50,14 +50,16 @@ def kind_rows(kind: StageKind) -> Rows:
     return rows
 
 
-def stage_rows(stage: Stage) -> Rows:
-    """Where a stage comes from: its kind, whether it is modified, what was asked of it, its ports."""
+def stage_rows(stage: Stage, doubts: Sequence[str] = ()) -> Rows:
+    """Where a stage comes from: its kind, whether it is modified, what will not hold of it, what was asked of it, its
+    ports."""
     kind = stage_kinds().get(stage.kind)
     if kind is None:
         return [("kind", f"{stage.kind}: its parts were put in by hand", "")]
     rows: Rows = [("kind", kind.title, "")]
     if is_modified(stage):
         rows.append(("modified", "its parts are not those that the catalogue made", "thin"))
+    rows += [("! will not hold", words, "thin") for words in doubts]
     rows.append(("how it is sized", kind.help, ""))
     rows += [(_plain(name), _setting(kind, name, stage.settings), "") for name in stage.settings if name != AS_MADE]
     about = {port.name: port.about for port in kind.ports}

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, beside, carried, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, doubtful, drawn, load_requirements, peak
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan
 
 BLEED = 0.1  # share of a base current that its base-emitter resistor may take (common practice)
@@ -13,8 +13,7 @@ V_FULL = 0.9  # V, base-emitter voltage of a driver at its full current, from me
 
 def _base(plan: Plan) -> tuple[float, float, float]:
     """Base current of the pnp in A, that of the npn, and the npn's base-emitter resistor in ohm."""
-    load = switched(plan)
-    upper = carried(plan, load) / plan.gain("pnp", peak(plan, load))
+    upper = carried(plan) / plan.gain("pnp", peak(plan))
     lower = OVERDRIVE * upper / plan.gain("npn", upper)
     return upper, lower, min(max(V_BE / (BLEED * lower), 1e3), 100e3)
 
@@ -41,11 +40,11 @@ def _make(plan: Plan) -> Made:
         (plan.rail.min - V_FULL - V_SATURATED) / (upper + V_FULL / upper_bleed), top, pull, "base_resistor", snap="down"
     )
     plan.resistor(upper_bleed, rail, top, "base_emitter_resistor_driver")
-    plan.transistor(out, top, rail, "driver", kind="pnp", current=peak(plan, switched(plan)))
+    plan.transistor(out, top, rail, "driver", kind="pnp", current=peak(plan))
     plan.capacitor(plan.quieting(("npn", upper, plan.supply.max)), rail, top, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), out, RETURN)
-    doubts = beside(plan) + doubtful(plan, SATURATED) if plan.text("load") != NONE else ()
+    doubts = doubtful(plan, SATURATED) if plan.text("load") != NONE else ()
     return Made(output=Drive(Sense.HIGH_SIDE, drop=SATURATED), requirements=load_requirements(plan), doubts=doubts)
 
 

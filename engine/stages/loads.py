@@ -25,9 +25,21 @@ SURGE = {"sounder": 2.0, "piezo": 1.2}
 """Inrush in parts of the largest current (from memory)."""
 
 
+def _own(plan: Plan) -> float:
+    """The current in A of a load that the stage brings along, or is asked to switch where none follows."""
+    if plan.text("load") == NONE and plan.next.current:
+        return 0.0
+    return plan.above_zero("current")
+
+
+def _behind(plan: Plan) -> float:
+    """The current in A of loads that are stages of their own and hang on its switched net."""
+    return plan.next.current if plan.next.passes or plan.text("load") == NONE else 0.0
+
+
 def switched(plan: Plan) -> float:
-    """The largest current in A of the load at the nominal supply: its own, or that of the stage behind it."""
-    return plan.next.current if plan.text("load") == NONE and plan.next.current else plan.above_zero("current")
+    """The largest current in A of all that it switches, at the nominal supply: its own load and those behind it."""
+    return _own(plan) + _behind(plan)
 
 
 def drawn(plan: Plan) -> float:
@@ -40,16 +52,6 @@ def drawn(plan: Plan) -> float:
 def doubtful(plan: Plan, lost: float) -> tuple[str, ...]:
     """What will not hold of a load that loses ``lost`` V in whatever switches it: its voltage, how loud it is."""
     return _starved(plan, lost) + _quiet(plan, lost)
-
-
-def beside(plan: Plan) -> tuple[str, ...]:
-    """The doubt about a driver that has its own load where a load is the next stage too."""
-    if plan.text("load") == NONE or not plan.next.passes:
-        return ()
-    return (
-        f"sizing for one load: its own {plan.text('load')} and the load stage behind it are driven in parallel; write"
-        f" load {NONE} where it is to switch only the next stage",
-    )
 
 
 def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
@@ -80,19 +82,18 @@ def _starved(plan: Plan, lost: float) -> tuple[str, ...]:
     )
 
 
-def peak(plan: Plan, current: float) -> float:
-    """The inrush in A of a load of ``current`` at the highest supply; that of a sounder where it is not known."""
-    surge = SURGE.get(plan.text("load"), plan.next.surge or max(SURGE.values()))
-    return surge * current * plan.supply.max / plan.supply.nominal
+def peak(plan: Plan) -> float:
+    """The inrush in A of all that it switches at the highest supply; that of a sounder where it is not known."""
+    usual = max(SURGE.values())
+    own = SURGE.get(plan.text("load"), usual) * _own(plan)
+    return (own + (plan.next.surge or usual) * _behind(plan)) * plan.supply.max / plan.supply.nominal
 
 
-def carried(plan: Plan, current: float) -> float:
+def carried(plan: Plan) -> float:
     """The collector current in A that a base is driven for: ``overdrive`` times the load's, or a known inrush with
     the customary 20 % to spare if that is more."""
-    wanted = plan.above_zero("overdrive") * current
-    if plan.text("load") == NONE and plan.next.surge is not None:
-        return max(wanted, peak(plan, current) / 0.8)
-    return wanted
+    wanted = plan.above_zero("overdrive") * switched(plan)
+    return wanted if plan.next.surge is None or not _behind(plan) else max(wanted, peak(plan) / 0.8)
 
 
 def works_from(plan: Plan) -> float:

@@ -7,7 +7,7 @@ from functools import partial
 from ..quantity import write
 from .heat import cooled
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, beside, carried, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, carried, doubtful, drawn, load_requirements, peak, switched
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan, class_figure
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
@@ -19,8 +19,7 @@ LEAST_BLEED, MOST_BLEED = 1e3, 47e3  # ohm
 
 def _base(plan: Plan, kind: str, junctions: int) -> tuple[float, float]:
     """Base current in A, and the base-emitter resistor in ohm that takes little of it."""
-    load = switched(plan)
-    base = carried(plan, load) / plan.gain(kind, peak(plan, load))
+    base = carried(plan) / plan.gain(kind, peak(plan))
     return base, min(max(junctions * V_BE / (BLEED * base), LEAST_BLEED), MOST_BLEED)
 
 
@@ -35,8 +34,8 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     drop = junctions * V_BE
     ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
     current = switched(plan)
-    if kind == "npn" and peak(plan, current) > DRIVER_CURRENT:
-        inrush, most = (write(each, "A") for each in (peak(plan, current), DRIVER_CURRENT))
+    if kind == "npn" and peak(plan) > DRIVER_CURRENT:
+        inrush, most = (write(each, "A") for each in (peak(plan), DRIVER_CURRENT))
         raise plan.refused(
             "current",
             f"an inrush of {inrush} is more than the {most} that 0.5 A transistors are used for; take a Darlington"
@@ -50,14 +49,14 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
         )
     plan.resistor(ohms, plan.port("in"), node, "base_resistor", snap="down")
     plan.resistor(bleed, node, RETURN, "base_emitter_resistor")
-    plan.transistor(low, node, RETURN, "driver", kind=kind, current=peak(plan, current))
+    plan.transistor(low, node, RETURN, "driver", kind=kind, current=peak(plan))
     hot = current * plan.supply.max / plan.supply.nominal
     doubts = cooled(plan, kind, hot, HOT[junctions], inrush=plan.next.surge is not None)
-    bears = class_figure(kind, plan.transistor_class(kind, peak(plan, current)), "i_c_max", "A").low
-    if peak(plan, current) > PEAK * bears:
-        inrush = write(peak(plan, current), "A")
+    bears = class_figure(kind, plan.transistor_class(kind, peak(plan)), "i_c_max", "A").low
+    if peak(plan) > PEAK * bears:
+        inrush = write(peak(plan), "A")
         doubts += (f"peak_current: an inrush of {inrush} leaves no 20 % of the {bears:g} A that it bears; switch less",)
-    farads = plan.quieting((kind, peak(plan, current), plan.supply.max))
+    farads = plan.quieting((kind, peak(plan), plan.supply.max))
     plan.capacitor(farads, node, RETURN, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:
         add_load(plan, plan.text("load"), plan.port("rail"), low)
@@ -66,7 +65,7 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     return Made(
         output=Drive(Sense.LOW_SIDE, drop=lost),
         requirements=load_requirements(plan),
-        doubts=(*beside(plan), *doubts, *(doubtful(plan, lost) if own else ())),
+        doubts=(*doubts, *(doubtful(plan, lost) if own else ())),
     )
 
 

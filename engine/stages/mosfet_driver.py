@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, beside, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, doubtful, drawn, load_requirements, peak
 from .plan import OVERDRIVE, RETURN, V_BE, V_SATURATED, Plan, class_figure
 
 LEAST_GATE = 1e3  # ohm in series with the gate, against ringing (common practice)
@@ -28,7 +28,7 @@ def _gate(plan: Plan, kind: str, name: str, bleed: float, lost: float) -> float:
             f"a gate of {volts:.2g} V does not turn it fully on, it takes {least:.2g} V; take a driver with a"
             " bipolar transistor",
         )
-    load = peak(plan, switched(plan))
+    load = peak(plan)
     allowed = CURRENT_SHARE * class_figure(kind, name, "i_d_max", "A").low
     if load > allowed:
         raise plan.refused(
@@ -81,7 +81,7 @@ def _make_p(plan: Plan) -> Made:
 
 
 def _made(plan: Plan, sense: Sense, lost: float) -> Made:
-    doubts = beside(plan) + doubtful(plan, lost) if plan.text("load") != NONE else ()
+    doubts = doubtful(plan, lost) if plan.text("load") != NONE else ()
     return Made(output=Drive(sense, drop=lost), requirements=load_requirements(plan), doubts=doubts)
 
 

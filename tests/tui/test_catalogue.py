@@ -177,6 +177,22 @@ async def test_a_stage_is_added_and_removed_on_the_bench(store: Store, solver: S
         assert store.draft("bell").design.has_part("LS2")
 
 
+async def test_what_an_added_stage_makes_of_the_others_can_be_read(store: Store, solver: Solver) -> None:
+    app = StagebookApp(store, solver)
+    async with app.run_test(size=SIZE) as pilot:
+        await made(pilot)
+        await pilot.press("A")
+        await pick(pilot, "sounder")
+        await until(pilot, lambda: isinstance(pilot.app.screen, Form))
+        await pilot.press("enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
+        assert "k on driver says what" in notice(pilot)
+        await pilot.press("left", "k")
+        await until(pilot, lambda: isinstance(pilot.app.screen, StagePage))
+        assert "! will not hold" in seen(pilot)
+        assert "an inrush of 700 mA is more than" in " ".join(seen(pilot).split())
+
+
 async def test_cautions_are_told_once(store: Store, solver: Solver) -> None:
     app = StagebookApp(store, solver)
     async with app.run_test(size=SIZE) as pilot:

@@ -13,6 +13,7 @@ from ...engine.design.document import Design
 from ...engine.design.part import Part
 from ...engine.parts.made import kept
 from ...engine.results import Depth, MarginSheet
+from ...engine.stages.remade import doubts_of
 from ...storage.errors import StorageError
 from ...storage.values import Revision
 from ..bench_text import has_value, valued
@@ -221,6 +222,9 @@ class BenchScreen(BenchWays):
         def put(words: str, after: Design) -> None:
             self._put(words, after)
             self.go_to(len(self.design.stages) - 1)
+            doubted = doubts_of(self.design)
+            if doubted:
+                self.say(f"{words}; not all will hold as made: k on {', '.join(doubted)} says what", passing=True)
 
         ask_stage(self.app, self.design, put)
 

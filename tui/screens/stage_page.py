@@ -10,6 +10,7 @@ from textual.binding import BindingType
 from ...engine.design.document import Design
 from ...engine.design.part import Stage
 from ...engine.stages.kind import StageKind
+from ...engine.stages.remade import doubts_of
 from ..actions import bindings
 from ..caution_text import caution_rows
 from ..shown import Span, line
@@ -29,7 +30,8 @@ class StagePage(Page[None]):
     def __init__(self, design: Design | None, about: Stage | StageKind) -> None:
         super().__init__()
         if isinstance(about, Stage):
-            self._title, self._rows = f" stage {about.name}", stage_rows(about)
+            doubts = () if design is None else doubts_of(design).get(about.name, ())
+            self._title, self._rows = f" stage {about.name}", stage_rows(about, doubts)
         else:
             self._title, self._rows = f" {about.title}, in the catalogue", kind_rows(about)
         self._cautions: Rows = [] if design is None else caution_rows(design)
