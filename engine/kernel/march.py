@@ -189,10 +189,12 @@ def march_rows(
             substitute_two(a, bend, error, pivot, entry, left)
         else:
             substitute(a, bend, pivot, entry, left)
-        solved, finite = solved_by(ah, i, q, constant, allowed, tolerance, bend, step)
+        solved, astray = solved_by(ah, i, q, constant, allowed, tolerance, bend)
         solved = busy & ~limited & ~far & solved
         rounds = at(clock, ROUND) + 1.0
-        spent = busy & ~solved & (~finite | (rounds >= at(clock, MOST)))
+        most = at(clock, MOST)
+        hopeless = astray & ~same(phase, LEAP) & (rounds >= 0.5 * most)
+        spent = busy & ~solved & (hopeless | (rounds >= most))
         ends = ends & solved
         if any_of(ends):
             put(clock, SURPRISE, surprise(nets, expected, x))

@@ -12,6 +12,7 @@ from .vectors import Flags, Numbers, at, greater, put, where
 REMAINDER = 0.3  # accepted Kirchhoff residual in parts of the tolerance
 ROUND_OFF = 2.2e-16  # of the charges that cancel in a residual
 BRANCH_VOLTS = 1e-4  # V, accepted residual of a branch's own equation
+ASTRAY = 20.0  # times the tolerance: what still leaves over so much half way through its iterates does not converge
 
 
 @leaf
@@ -52,18 +53,18 @@ def solved_by(
     allowed: Floats,
     tolerance: Floats,
     bend: Floats,
-    step: Floats,
 ) -> tuple[Flags, Flags]:
     """Return where a step solved the stage: what it leaves over, as a step of its own in bend, is well inside the
     tolerance, and so is the residual by the tangents, which round-off in the elimination may have spoilt; and where
-    the step is finite."""
+    it is so far from that, or not even finite, that it went astray."""
     well = ah == ah
-    finite = ah == ah
+    near = ah == ah
     for k in range(tolerance.shape[0]):
-        finite = finite & (abs(at(step, k)) < math.inf)
-        well = well & (abs(at(bend, k)) <= REMAINDER * at(tolerance, k))
+        over = abs(at(bend, k))
+        near = near & (over <= ASTRAY * at(tolerance, k))
+        well = well & (over <= REMAINDER * at(tolerance, k))
         well = well & (abs(at(q, k) + ah * at(i, k) + at(constant, k)) <= at(allowed, k))
-    return well, finite
+    return well, ~near
 
 
 @leaf
