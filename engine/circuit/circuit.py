@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from typing import TYPE_CHECKING
+from weakref import WeakKeyDictionary
 
 import numpy as np
 
@@ -83,8 +84,18 @@ class Circuit:
         return int(self.topology.element[self.element(family, index), layout.E_PARAMETER])
 
     def table(self, lanes: Lanes) -> Floats:
-        """Law parameters of all primitives, (lanes, parameters)."""
-        return self._plan.table(lanes)
+        """Law parameters of all primitives, (lanes, parameters), not to be written to: runs of the same lanes share it
+        for as long as there are any.
+        """
+        made = self._tables.get(lanes)
+        if made is None:
+            made = self._tables[lanes] = self._plan.table(lanes)
+            made.flags.writeable = False
+        return made
+
+    @cached_property
+    def _tables(self) -> WeakKeyDictionary[Lanes, Floats]:
+        return WeakKeyDictionary()
 
     @cached_property
     def _plan(self) -> LanePlan:

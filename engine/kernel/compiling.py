@@ -173,7 +173,7 @@ def _entries() -> list[tuple[str, Callable[..., None], tuple[Any, ...]]]:
         layout.ints([0]),
     )
     lane, numbers = np.ones((1, 1)), np.zeros((1, WIDTH))
-    work = work_for(top, 1, 1, rows)
+    work, _ = work_for(top, 1, 1, rows)
     cancel = np.zeros(1, dtype=np.uint8)
     marching = (top, lane, np.zeros((1, 2)), program, rows, control, results, work, 0, 1, cancel)
     looking = (top.element, top.group, *[numbers] * 5, 0, *[numbers] * 8)

@@ -126,8 +126,21 @@ def flattened(arguments: tuple[Any, ...]) -> tuple[Table, str]:
     return np.array(numbers, dtype=np.int64), " ".join(kinds)
 
 
+class Flat:
+    """Arguments that are flattened once and for all; they stay where they are as long as this is kept."""
+
+    def __init__(self, value: tuple[Any, ...]) -> None:
+        self.value = value
+        self.numbers: list[int] = []
+        self.kinds: list[str] = []
+        _flatten(value, self.numbers, self.kinds)
+
+
 def _flatten(value: Any, numbers: list[int], kinds: list[str]) -> None:
-    if isinstance(value, tuple):
+    if isinstance(value, Flat):
+        numbers.extend(value.numbers)
+        kinds.extend(value.kinds)
+    elif isinstance(value, tuple):
         for one in value:
             _flatten(one, numbers, kinds)
     elif isinstance(value, np.ndarray):

@@ -50,6 +50,7 @@ from .work import (
     GROWTH,
     HELD,
     LAST,
+    LAST_WORK,
     LEFT,
     LENGTH,
     LIMITED,
@@ -67,7 +68,6 @@ from .work import (
     SURPRISE,
     TOOK,
     Work,
-    work_for,
 )
 
 JUMP = 1e-12  # s, the backward-Euler step that takes in a jump
@@ -488,15 +488,16 @@ def march(
     go_on: GoOn = end_traced,
 ) -> None:
     """Step lanes low .. high-1; stop where ``cancel[0]`` is set."""
-    work = work_for(top, table.shape[1], program.source.shape[2], rows)
+    held = LAST_WORK.take(top, table, program, rows)
     while True:
-        arguments = (top, table, starts, program, rows, control, results, work, low, high, cancel)
+        arguments = (top, table, starts, program, rows, control, results, held.taken, low, high, cancel)
         if COMPILED:
             machine_code.bound("march", arguments)()
         else:
             with np.errstate(all="ignore"):
                 march_rows(*arguments)
-        paused = [w for w in range(WIDTH) if work.phase[w] == PAUSED]
+        paused = [w for w in range(WIDTH) if held.work.phase[w] == PAUSED]
         if cancel[0] != 0 or not paused:
+            LAST_WORK.held = held
             return
-        results = go_on(work, paused, results)
+        results = go_on(held.work, paused, results)

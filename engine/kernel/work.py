@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
+import math
+import threading
 from typing import Any, NamedTuple
 
 import numpy as np
 
+from . import machine_code
+from .compiled import COMPILED
 from .layout import (
     CHANNEL,
     CHANNEL_SLOPES,
@@ -20,6 +24,7 @@ from .layout import (
     Floats,
     Ints,
     Places,
+    Program,
     Rows,
     Topology,
     zeros,
@@ -101,24 +106,23 @@ LINE = 64  # bytes that a processor fetches at a time
 
 
 class _Room:
-    """One stretch of zeros, of which arrays are cut off: as quick to make as a single array."""
+    """One stretch of zeros, of which arrays are cut off: as quick to make, and to clear, as a single array."""
 
     def __init__(self, numbers: int) -> None:
         # Every row lies within one line of the cache: a row across two takes twice as long.
         spare = LINE // 8
-        room = zeros(numbers + spare)
-        self.next = (-room.__array_interface__["data"][0] % LINE) // 8
-        self.room = room
+        self.numbers = zeros(numbers + spare)
+        self.next = (-self.numbers.__array_interface__["data"][0] % LINE) // 8
 
-    def rows(self, count: int) -> Floats:
-        """Zeros (count, WIDTH)."""
+    def cut(self, *shape: int) -> Floats:
+        """Zeros of this shape."""
         begin = self.next
-        self.next = begin + count * WIDTH
-        return self.room[begin : self.next].reshape(count, WIDTH)
+        self.next = begin + math.prod(shape)
+        return self.numbers[begin : self.next].reshape(shape)
 
 
-def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
-    """Arrays for the lanes of one row."""
+def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> tuple[Work, Floats]:
+    """Arrays for the lanes of one row, and the stretch of numbers that they are cut off: 0 there clears them all."""
     free, n_all, entries = int(top.size[1]), int(top.size[2]), int(top.size[3])
     transports = int(top.group[TRANSPORT + 1]) - int(top.group[TRANSPORT])
     junctions = int(top.group[TRANSPORT]) - int(top.group[JUNCTION])
@@ -126,29 +130,59 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> Work:
     warm = int(top.group[WARM + 1]) - int(top.group[WARM])
     devices = junctions + 2 * (transports + channels + warm)
     slopes = 2 * junctions + int(SLOPES) * transports + int(CHANNEL_SLOPES) * channels + int(WARM_SLOPES) * warm
-    signals = rows.signal.size - 1
+    signals, lasting, count = rows.signal.size - 1, rows.lasting.size, rows.row.shape[0]
     guards = int(top.group[CONTACT]) - int(top.group[GUARD])
     contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
-    diagonal = np.zeros(free, dtype=np.uint32)
-    diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
-    lasting = rows.lasting.size
     sizes = (
         *[n_all] * 13, *[free] * 8, *[entries + 1] * 3, *[devices] * 5, slopes, parameters, sources, sources, CLOCK,
         *[signals] * 3, lasting, lasting, *[1] * 6,
     )  # fmt: skip
-    room = _Room(WIDTH * sum(sizes))
-    cut = [room.rows(count) for count in sizes]
+    moves = (WIDTH, guards + contacts)
+    shapes = [(WIDTH, count, 2), (WIDTH, count + 1), (WIDTH,), (1,), (WIDTH, guards), moves, moves]
+    room = _Room(WIDTH * sum(sizes) + sum(map(math.prod, shapes)))
+    cut = [room.cut(size, WIDTH) for size in sizes]
+    window, listed, until, begun, told, due, left = (room.cut(*shape) for shape in shapes)
+    diagonal = np.zeros(free, dtype=np.uint32)
+    diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
     arrays: list[Any] = [
         *cut[:-8],
-        zeros(WIDTH, rows.row.shape[0], 2),
-        np.zeros((WIDTH, rows.row.shape[0] + 1), dtype=np.int64),
-        zeros(WIDTH),
+        window,
+        listed.view(np.int64),
+        until,
         *cut[-8:-6],
         *(row[0].view(np.int64) for row in cut[-6:]),
-        np.zeros(1, dtype=np.int64),
-        np.zeros((WIDTH, guards), dtype=np.int64),
-        zeros(WIDTH, guards + contacts),
-        np.zeros((WIDTH, guards + contacts), dtype=np.int64),
+        begun.view(np.int64),
+        told.view(np.int64),
+        due,
+        left.view(np.int64),
         diagonal,
     ]
-    return Work(*arrays)
+    return Work(*arrays), room.numbers
+
+
+class Held(NamedTuple):
+    """Arrays to work in: what for, the arrays, the same as the kernel takes them, and all of their numbers."""
+
+    of: tuple[Topology, tuple[int, ...]]
+    work: Work
+    taken: Any
+    numbers: Floats
+
+
+class _LastWork(threading.local):
+    """The arrays that the last run of a thread was worked in: the next of the same sizes clears and takes them."""
+
+    held: Held | None = None
+
+    def take(self, top: Topology, table: Floats, program: Program, rows: Rows) -> Held:
+        """Arrays to work in, which nobody else gets until they are handed back."""
+        sizes = table.shape[1], program.source.shape[2], rows.row.shape[0], rows.signal.size, rows.lasting.size
+        held, self.held = self.held, None
+        if held is not None and held.of[0] is top and held.of[1] == sizes:
+            held.numbers[:] = 0.0
+            return held
+        work, numbers = work_for(top, table.shape[1], program.source.shape[2], rows)
+        return Held((top, sizes), work, machine_code.Flat(work) if COMPILED else work, numbers)
+
+
+LAST_WORK = _LastWork()

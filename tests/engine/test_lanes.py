@@ -122,6 +122,14 @@ def test_the_same_run_twice_is_the_same(circuit: Setup, rows: list[Row], lanes: 
     assert bits(observe(circuit, rows, lanes)) == bits(observe(circuit, rows, lanes))
 
 
+def test_what_another_run_left_behind_does_not_matter(circuit: Setup, rows: list[Row], lanes: Lanes) -> None:
+    # A thread works in the same arrays again.
+    first = bits(observe(circuit, rows, lanes, threads=1))
+    observe(circuit, rows, lanes.take(range(lanes.count - 1, 0, -1)), threads=1, relative=1e-2)
+    observe(circuit, rows, lanes, threads=1, stop=rows[0])
+    assert bits(observe(circuit, rows, lanes, threads=1)) == first
+
+
 def test_rows_do_not_disturb_the_run(circuit: Setup, rows: list[Row], lanes: Lanes) -> None:
     few = lanes.take([0, 1, 2])
     assert observe(circuit, rows, few).final.tobytes() == observe(circuit, [], few).final.tobytes()
@@ -212,12 +220,20 @@ def test_runs_of_several_threads_of_the_caller_do_not_mix(circuit: Setup, rows: 
 
 
 def test_every_array_of_a_run_is_contiguous(circuit: Setup, rows: list[Row], lanes: Lanes) -> None:
-    # Anything else would compile the kernel a second time.
+    # The kernel reads them at their addresses.
     seen = observe(circuit, rows, lanes)
     for tables in (seen.results, circuit.program(lanes), circuit.circuit.topology):
         for name, array in zip(tables._fields, tables, strict=True):
             assert array.flags.c_contiguous, name
     table = circuit.circuit.table(lanes)
     assert table.flags.c_contiguous
-    assert table.flags.writeable
     assert [f.name for f in fields(seen)] == ["circuit", "rows", "results", "keep"]
+
+
+def test_runs_of_the_same_lanes_share_their_table(circuit: Setup, lanes: Lanes) -> None:
+    table = circuit.circuit.table(lanes)
+    assert circuit.circuit.table(lanes) is table
+    assert not table.flags.writeable
+    other = lanes.take(range(lanes.count))
+    assert circuit.circuit.table(other) is not table
+    assert np.array_equal(circuit.circuit.table(other), table)

@@ -45,6 +45,15 @@ def test_a_table_holds_addresses_shapes_and_numbers_in_their_order() -> None:
     assert kinds == "f8:2 u4:1 number"
 
 
+def test_what_is_flattened_already_is_taken_as_it_is() -> None:
+    numbers = np.zeros((2, 3))
+    flat = machine_code.Flat((numbers, 5))
+    assert flat.value[0] is numbers
+    table, kinds = flattened((1, flat, 2))
+    assert list(table) == [1, numbers.ctypes.data, 2, 3, 5, 2]
+    assert kinds == "number f8:2 number number"
+
+
 def test_an_array_with_gaps_is_refused() -> None:
     with pytest.raises(ValueError, match="contiguous"):
         flattened((np.zeros((4, 4))[:, ::2],))
