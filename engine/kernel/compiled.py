@@ -13,6 +13,9 @@ from . import machine_code
 
 Function = TypeVar("Function", bound=Callable[..., object])
 
+PARTS: set[str] = set()
+"""Names of the functions that are compiled as parts of others."""
+
 try:
     if os.environ.get("STAGEBOOK_UNCOMPILED"):
         raise ImportError
@@ -32,13 +35,21 @@ if not HERE:
         """Leave the function as it is: correct, but some hundred times slower."""
         return function
 
-    leaf = compiled
+    leaf = part = compiled
 
 else:
 
     def compiled(function: Function) -> Function:
         """Compile on first use, releasing the interpreter lock; machine code is kept in the user's cache folder."""
         made: Function = jit(nogil=True, cache=True, error_model="numpy")(function)
+        return made
+
+    def _called(function: Function, inlined: bool) -> Function:
+        options = {"_nrt": False, "no_cpython_wrapper": True, "no_cfunc_wrapper": True, "forceinline": inlined}
+        try:
+            made: Function = jit(nogil=True, error_model="numpy", **options)(function)
+        except (KeyError, TypeError):
+            return compiled(function)
         return made
 
     def leaf(function: Function) -> Function:
@@ -48,10 +59,9 @@ else:
         call: two thirds of the time of a small circuit.
         The options are not documented; a numba without them compiles the slower code.
         """
-        try:
-            made: Function = jit(
-                nogil=True, error_model="numpy", _nrt=False, no_cpython_wrapper=True, no_cfunc_wrapper=True
-            )(function)
-        except (KeyError, TypeError):
-            return compiled(function)
-        return made
+        return _called(function, inlined=False)
+
+    def part(function: Function) -> Function:
+        """Compile a :func:`leaf` that is a part of its only caller: handing on tuples of arrays costs nothing then."""
+        PARTS.add(function.__name__)
+        return _called(function, inlined=True)

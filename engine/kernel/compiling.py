@@ -21,7 +21,7 @@ from numba.core.compiler_machinery import PassManager
 from numba.extending import intrinsic
 
 from . import layout
-from .compiled import leaf
+from .compiled import PARTS, leaf
 from .elimination import Pattern
 from .linearised import look
 from .machine_code import flattened, packed
@@ -52,7 +52,7 @@ def compiled_code() -> bytes:
             entry.compile((_TABLE,))
             (overload,) = entry.overloads.values()
             library = overload.library
-            _optimise(library, 3)
+            _optimise(library, 2)
             code = library._codegen._tm.emit_object(library._final_module)
             made.append((name, flattened(sample)[1], overload.fndesc.llvm_func_name, code))
     return packed(made)
@@ -89,9 +89,9 @@ def _lay_out(library: Any, module: Any) -> None:
 
 
 def _optimise_lightly(library: Any) -> None:
-    """What an entry calls itself is optimised with it only."""
+    """What is one with its entry is optimised with it only."""
     function = library.name.partition("(")[0].partition("[")[0].rpartition(".")[2]
-    if function not in _ALONE:
+    if function not in _ALONE and function not in PARTS:
         _optimise(library, 1)
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 import threading
+from collections.abc import Iterable
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -44,25 +45,37 @@ CLOCK = 25
 LOST = -1.0
 
 
-class Work(NamedTuple):
-    """Arrays to work in, one column per lane of the row."""
+# What a lane is doing: nothing; looking at its start; solving a jump, the stage of a step, its end; waiting between two
+# steps, until it is told to go on.
+IDLE, GLANCE, LEAP, STAGE, END, PAUSED, GOES_ON = 0, 1, 2, 3, 4, 5, 6
+# What came of an iterate.
+NOTHING, LOOKED, LEAPT, STAGED, ARRIVED, AGAIN, STARTS, FINISHED = 0, 1, 2, 3, 4, 5, 6, 7
 
-    x: Floats  # (n_all, WIDTH) the iterate; then start and stage of the step: voltages, charges, currents
+
+class Columns(NamedTuple):
+    """What the lane of each column is at."""
+
+    clock: Floats  # (CLOCK, WIDTH)
+    phase: Ints  # (WIDTH,) and so the next
+    came: Ints
+    failed: Ints
+    lane: Ints
+    segment: Ints
+    moving: Ints
+    begun: Ints  # (1,) how many lanes have begun
+
+
+class Solving(NamedTuple):
+    """The iterate and what it takes."""
+
+    x: Floats  # (n_all, WIDTH) voltages, charges, currents
     q: Floats
     i: Floats
-    x0: Floats
-    q0: Floats
-    i0: Floats
-    xg: Floats
-    qg: Floats
-    ig: Floats
     di: Floats  # what Newton's step changes of i and q, the step, and what it leaves over
     dq: Floats
     step: Floats
     bend: Floats
-    first: Floats  # (n_free, WIDTH) parabola of the step before
-    second: Floats
-    constant: Floats
+    constant: Floats  # (n_free, WIDTH)
     tolerance: Floats
     error: Floats
     noise: Floats  # what round-off makes of the charges, and what may be left of a residual
@@ -72,53 +85,80 @@ class Work(NamedTuple):
     c: Floats
     g: Floats
     seen: Floats  # (devices, WIDTH) junction and channel voltages, then device currents
-    seen0: Floats
     flow: Floats
-    flow0: Floats
-    flow_g: Floats
     slope: Floats  # (slopes of devices, WIDTH)
     p: Floats  # (parameters, WIDTH)
     source: Floats  # (sources, WIDTH), and as many of 0
     nothing: Floats
-    clock: Floats  # (CLOCK, WIDTH)
-    s0: Floats  # (signals, WIDTH) signals at start, stage and end of the step
-    sg: Floats
-    s1: Floats
-    window: Floats  # (WIDTH, rows, 2)
-    listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
-    listed_until: Floats  # (WIDTH,) s, when to list them anew
-    best: Floats  # (lasting rows, WIDTH) extremes and integrals so far, and when
-    best_at: Floats
-    phase: Ints  # (WIDTH,) and so the next
-    came: Ints
-    failed: Ints
-    lane: Ints
-    segment: Ints
-    moving: Ints
-    begun: Ints  # (1,) how many lanes have begun
-    told: Ints  # (WIDTH, guards) what each guard was told last; (WIDTH, guards + contacts) when it moves, and how often
-    due: Floats
-    left: Ints
     diagonal: Places  # (n_free,) slot of an unknown's diagonal
 
 
-LINE = 64  # bytes that a processor fetches at a time
+class Stepping(NamedTuple):
+    """What was found at the start of the step and at its stage, as in :class:`Solving`."""
+
+    x0: Floats
+    q0: Floats
+    i0: Floats
+    seen0: Floats
+    flow0: Floats
+    xg: Floats
+    qg: Floats
+    ig: Floats
+    flow_g: Floats
+    first: Floats  # (n_free, WIDTH) parabola of the step before
+    second: Floats
+
+
+class Watching(NamedTuple):
+    """Signals, and rows that are half observed."""
+
+    s0: Floats  # (signals, WIDTH) signals at start, stage and end of the step
+    sg: Floats
+    s1: Floats
+    best: Floats  # (lasting rows, WIDTH) extremes and integrals so far, and when
+    best_at: Floats
+    window: Floats  # (WIDTH, rows, 2)
+    listed: Ints  # (WIDTH, rows + 1) how many rows are open, and which
+    listed_until: Floats  # (WIDTH,) s, when to list them anew
+
+
+class Guarding(NamedTuple):
+    """What guards know."""
+
+    told: Ints  # (WIDTH, guards) what each was told last
+    due: Floats  # (WIDTH, guards + contacts) when it moves, and how often
+    left: Ints
+
+
+class Work(NamedTuple):
+    """Arrays to work in, one column per lane of the row."""
+
+    columns: Columns
+    solving: Solving
+    stepping: Stepping
+    watching: Watching
+    guarding: Guarding
 
 
 class _Room:
     """One stretch of zeros, of which arrays are cut off: as quick to make, and to clear, as a single array."""
 
-    def __init__(self, numbers: int) -> None:
-        # Every row lies within one line of the cache: a row across two takes twice as long.
-        spare = LINE // 8
-        self.numbers = zeros(numbers + spare)
-        self.next = (-self.numbers.__array_interface__["data"][0] % LINE) // 8
+    def __init__(self, shapes: Iterable[tuple[int, ...]]) -> None:
+        self.numbers = zeros(sum(map(self._lines, shapes)) + self.LINE)
+        self.next = (-self.numbers.__array_interface__["data"][0] // 8) % self.LINE
 
-    def cut(self, *shape: int) -> Floats:
+    # Numbers that a processor fetches at a time. Every row lies within one such line: a row across two takes twice as
+    # long.
+    LINE = 8
+
+    def _lines(self, shape: tuple[int, ...]) -> int:
+        return self.LINE * -(-math.prod(shape) // self.LINE)
+
+    def cut(self, shape: tuple[int, ...]) -> Floats:
         """Zeros of this shape."""
         begin = self.next
-        self.next = begin + math.prod(shape)
-        return self.numbers[begin : self.next].reshape(shape)
+        self.next = begin + self._lines(shape)
+        return self.numbers[begin : begin + math.prod(shape)].reshape(shape)
 
 
 def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> tuple[Work, Floats]:
@@ -133,31 +173,34 @@ def work_for(top: Topology, parameters: int, sources: int, rows: Rows) -> tuple[
     signals, lasting, count = rows.signal.size - 1, rows.lasting.size, rows.row.shape[0]
     guards = int(top.group[CONTACT]) - int(top.group[GUARD])
     contacts = int(top.group[FAMILIES]) - int(top.group[CONTACT])
-    sizes = (
-        *[n_all] * 13, *[free] * 8, *[entries + 1] * 3, *[devices] * 5, slopes, parameters, sources, sources, CLOCK,
-        *[signals] * 3, lasting, lasting, *[1] * 6,
-    )  # fmt: skip
-    moves = (WIDTH, guards + contacts)
-    shapes = [(WIDTH, count, 2), (WIDTH, count + 1), (WIDTH,), (1,), (WIDTH, guards), moves, moves]
-    room = _Room(WIDTH * sum(sizes) + sum(map(math.prod, shapes)))
-    cut = [room.cut(size, WIDTH) for size in sizes]
-    window, listed, until, begun, told, due, left = (room.cut(*shape) for shape in shapes)
+    unknown, unknown_free, matrix, device, signal, row = (
+        (size, WIDTH) for size in (n_all, free, entries + 1, devices, signals, lasting)
+    )
+    solving = [
+        *[unknown] * 7, *[unknown_free] * 6, *[matrix] * 3, device, device,
+        (slopes, WIDTH), (parameters, WIDTH), (sources, WIDTH), (sources, WIDTH),
+    ]  # fmt: skip
+    stepping = [*[unknown] * 3, device, device, *[unknown] * 3, device, unknown_free, unknown_free]
+    watching = [signal, signal, signal, row, row, (WIDTH, count, 2), (WIDTH, count + 1), (WIDTH,)]
+    columns = [(CLOCK, WIDTH), *[(WIDTH,)] * 6, (1,)]
+    guarding = [(WIDTH, guards), (WIDTH, guards + contacts), (WIDTH, guards + contacts)]
+    room = _Room([*columns, *solving, *stepping, *watching, *guarding])
+    clock, *told_of = map(room.cut, columns)
     diagonal = np.zeros(free, dtype=np.uint32)
     diagonal[top.pivot[:-1, 0]] = top.pivot[:-1, 1]
-    arrays: list[Any] = [
-        *cut[:-8],
-        window,
-        listed.view(np.int64),
-        until,
-        *cut[-8:-6],
-        *(row[0].view(np.int64) for row in cut[-6:]),
-        begun.view(np.int64),
-        told.view(np.int64),
-        due,
-        left.view(np.int64),
-        diagonal,
-    ]
-    return Work(*arrays), room.numbers
+    made: list[Any] = [*map(room.cut, solving), diagonal]
+    steps = Stepping(*map(room.cut, stepping))
+    rows_of: list[Any] = list(map(room.cut, watching))
+    rows_of[-2] = rows_of[-2].view(np.int64)
+    told, due, left = map(room.cut, guarding)
+    work = Work(
+        Columns(clock, *(each.view(np.int64) for each in told_of)),
+        Solving(*made),
+        steps,
+        Watching(*rows_of),
+        Guarding(told.view(np.int64), due, left.view(np.int64)),
+    )
+    return work, room.numbers
 
 
 class Held(NamedTuple):

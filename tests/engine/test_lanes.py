@@ -12,8 +12,8 @@ from stagebook.engine import run as running
 from stagebook.engine.circuit.timeline import Timeline
 from stagebook.engine.errors import Cancelled
 from stagebook.engine.kernel.layout import Results
-from stagebook.engine.kernel.march import GOES_ON, march
-from stagebook.engine.kernel.work import PAUSE, Work
+from stagebook.engine.kernel.march import march
+from stagebook.engine.kernel.work import GOES_ON, PAUSE, Work
 from stagebook.engine.primitives.columns import Lanes
 from stagebook.engine.primitives.signals import Anchor, Row, crossing, integral, level, maximum, voltage
 from stagebook.engine.run import BLOCK, Observed, run
@@ -158,9 +158,9 @@ def test_a_lane_in_pieces_is_the_lane_in_one_go(
 
     def go_on(work: Work, columns: list[int], results: Results) -> Results:
         for w in columns:
-            pauses.append(int(work.lane[w]))
-            work.phase[w] = GOES_ON
-            work.clock[PAUSE, w] += piece
+            pauses.append(int(work.columns.lane[w]))
+            work.columns.phase[w] = GOES_ON
+            work.columns.clock[PAUSE, w] += piece
         return results
 
     monkeypatch.setattr(running, "NEVER", piece)
