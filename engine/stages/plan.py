@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 
@@ -10,7 +11,7 @@ from ..design.part import Part
 from ..errors import DesignError, QuantityError
 from ..parts.classes import POINTS
 from ..parts.figures import Figure, needed
-from ..parts.physics import gain_factor
+from ..parts.physics import BAND_GAP, REFERENCE, ZERO_CELSIUS, gain_factor, thermal_voltage
 from ..preferred import nearest, next_down, next_up, series_for
 from ..quantity import read, write
 from .kind import NOTHING_KNOWN, WORD, Beyond, Drive, Intake, Json, StageKind, Wire
@@ -257,6 +258,16 @@ class Plan:
         for kind, current, volts in moved:
             charge += UNBIASED * class_figure(kind, self.transistor_class(kind, current), "c_ob", "F").high * volts
         return charge / (COUPLED * V_BE)
+
+    def off_volts(self, kind: str, current: float, amps: float) -> float:
+        """The base-emitter voltage at which a transistor of the least V_BE lets no more than ``amps`` through when
+        hottest: V_G0 - (V_G0 - V_BE) T/T0 - kT/q ln(I/amps) (Tsividis 1980 without its logarithm of T)."""
+        of_class = self.transistor_class(kind, current)
+        least = class_figure(kind, of_class, "v_be", "V").low
+        given = class_figure(kind, of_class, "v_be_current", "A").typical
+        ratio = (self.ambient.max + ZERO_CELSIUS) / (REFERENCE + ZERO_CELSIUS)
+        thermal = float(thermal_voltage(self.ambient.max))
+        return BAND_GAP - (BAND_GAP - least) * ratio - thermal * math.log(given / amps)
 
     def diode(
         self, anode: str, cathode: str, role: str | None = None, *, kind: str = "diode", name: str = "signal diode"

@@ -7,17 +7,28 @@ from .output import sized
 from .plan import COUPLED, RETURN, V_BE, V_REVERSE, V_SATURATED, Plan, class_figure
 
 LEAST_CURRENT = 0.3e-3  # A in the emitter resistor, so that base currents do not count
-IDLE = 0.25  # V across the output's base-emitter resistor at rest: off, also when hot
+OFF = 0.1e-6  # A that the output may let through at rest, hot, at the highest supply
+ABOVE = 1.1  # times: the current of the divider with what the second base takes, and the resistor's tolerance
+LEAST_IDLE, MOST_LOST = 0.05, 0.9  # V, and of the current: beyond 100 C neither can be had
 DIVIDER_SHARE = 20.0  # times its base current that flows in the divider
 V_EARLY = 0.1  # V before both bases are equal it goes over: the one that takes over needs a part of the current only
 V_DIODE_LEAST = 0.35  # V of the diode before the base at some microampere (class)
 V_HELD = 1.0  # V by which a base may be drawn below its emitter by an edge
+SHIFTED = 0.02  # of the upper threshold that its base current may lose in the resistor before the base
+LEAST_LIMITED = 1e3  # ohm, what comes in through as little more than that needs none
 BLEED = 1e6  # ohm, keeps the base at the emitter while its diode blocks
 
 
+def _idle(plan: Plan) -> float:
+    """V across the output's base-emitter resistor at rest, at the nominal supply."""
+    volts = plan.off_volts("pnp", plan.next.current, OFF)
+    return max(volts, LEAST_IDLE) * plan.rail.nominal / plan.rail.max / ABOVE
+
+
 def _current(plan: Plan) -> float:
-    """Current in the emitter resistor, A."""
-    return max(3.0 * sized(plan).current, LEAST_CURRENT)
+    """Current in the emitter resistor, A: what the output takes, with what its base-emitter resistor takes of it."""
+    lost = V_BE * DIVIDER_SHARE / (plan.gain() * _idle(plan))
+    return max(3.0 * sized(plan).current / (1.0 - min(lost, MOST_LOST)), LEAST_CURRENT)
 
 
 def _make(plan: Plan) -> Made:
@@ -37,7 +48,7 @@ def _make(plan: Plan) -> Made:
     emitter_ohms = plan.resistor((at_base - junctions) / current, emitter, RETURN, "emitter_resistor", tolerance="1 %")
     divider = DIVIDER_SHARE * current / plan.gain()
     output = sized(plan)
-    bleed = min(IDLE / divider, output.bleed)
+    bleed = min(_idle(plan) / divider, output.bleed)
     # Lower threshold: V_L = k (V - V_BE,out - I_1 R_b), with the ratio k that gives the upper one.
     ratio = at_base / (volts - divider * bleed)
     drawn = (lower - junctions) / emitter_ohms
@@ -55,6 +66,12 @@ def _make(plan: Plan) -> Made:
     lower_ohms = at_base / divider
     plan.resistor((volts - at_base) / divider - bleed - ohms, left, tap, "divider_upper_resistor", tolerance="1 %")
     plan.resistor(lower_ohms, tap, RETURN, "divider_lower_resistor", tolerance="1 %")
+    # An input at the rail would take the emitter along through the base, and leave the collector nothing to turn the
+    # output on with.
+    limited = SHIFTED * at_base * plan.gain() / current - plan.arriving_ohms
+    if limited > LEAST_LIMITED:
+        plan.resistor(limited, signal, plan.net("limited"), "input_resistor", snap="down")
+        signal = plan.net("limited")
     second = tap
     if guarded:
         node = plan.net("base")
@@ -82,10 +99,11 @@ KIND = StageKind(
     help=(
         "Two npn transistors share an emitter resistor. Upper threshold: V_U = V R2/(R_a + R_b + R1 + R2), what the"
         " divider gives the second transistor; R_E = (V_U - V_BE)/I. Lower: V_L = k (V - V_BE,out - I_1 R_b) with I_1"
-        " = (V_L - V_BE)/R_E, which gives R_b. The divider carries 20 times its base current. Hysteresis must be"
-        " larger than the ripple of what comes in. Where the emitter stands more than 3.5 V above an input at 0 V, a"
-        " diode keeps the reverse from the base. Source: emitter-coupled trigger as in Millman, Taub (1965), from"
-        " memory."
+        " = (V_L - V_BE)/R_E, which gives R_b. The divider carries 20 times its base current, and R_a leaves the output"
+        " off when hot: V_EB at 0.1 uA. Hysteresis must be larger than the ripple of what comes in. R_in = 2 % of V_U /"
+        " I_B keeps an input at the rail from lifting the emitter to it, which would leave the output no base current."
+        " Where the emitter stands more than 3.5 V above an input at 0 V, a diode keeps the reverse from the base."
+        " Source: emitter-coupled trigger as in Millman, Taub (1965), from memory."
     ),
     ports=(QUIET_PORT, IN_PORT, OUT_PORT, RETURN_PORT),
     settings=(

@@ -12,11 +12,13 @@ from stagebook.engine.design.document import Design
 from stagebook.engine.errors import DesignError
 from stagebook.engine.parts import kinds
 from stagebook.engine.primitives.signals import Anchor, crossing, voltage
+from stagebook.engine.results import Verdict
 from stagebook.engine.stages import stage_kinds
 from stagebook.engine.stages.kind import Wire
 from stagebook.engine.stages.making import doubts, new_design, with_catalogue_stage
 from stagebook.engine.stages.modified import is_modified
 from stagebook.engine.stages.row import Choice
+from stagebook.engine.studies.margins import study
 
 from .made import PIEZO, begins, choice, conditions, made, run, seconds, value
 
@@ -229,3 +231,23 @@ def test_a_relay_that_would_not_pull_in_is_told_before_the_design_is_made() -> N
     assert words.startswith("load_voltage: hot, its coil needs 11 V with 10 % to spare, and of 11 V 10.7 V are left")
     assert "write pick_up 73 %" in words
     assert doubts(conditions(), (CALL, choice("relay_driver", "relay", pick_up="73 %"))) == {}
+
+
+HOT_AND_COLD = conditions("10.5 V", "12 V", "14.4 V") | {"ambient": {"min": "-30 C", "nominal": "25 C", "max": "70 C"}}
+
+
+@pytest.mark.parametrize(
+    "row",
+    [
+        # An input at the rail lifted the emitter to it, and a quarter of a volt across the output's junction is not off
+        # at 70 C: the load never came on, or never went off.
+        (CALL, choice("schmitt_trigger"), choice("high_side_driver", "driver", current="100 mA")),
+        # The contact closed on 10 nF straight into a base: the supply fell to 5 V, and the charge came too quickly.
+        (CALL, choice("differentiator"), choice("complementary_latch"), PIEZO),
+    ],
+    ids=["trigger", "edge"],
+)
+def test_a_row_that_failed_undoubted_from_cold_to_hot_holds(row: tuple[Choice, ...]) -> None:
+    assert doubts(HOT_AND_COLD, row) == {}
+    sheet = study(new_design("test", "cold to hot", HOT_AND_COLD, row))
+    assert [check.id for check in sheet.checks if check.verdict is not Verdict.PASS] == []
