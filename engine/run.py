@@ -9,18 +9,20 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Sequence
 from concurrent.futures import FIRST_COMPLETED, ThreadPoolExecutor, wait
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
 
+from .carry.carried import Carried
+from .carry.carrier import LINGERS, Carrier
 from .circuit.circuit import Circuit
 from .circuit.cost import iterate_cost
 from .errors import Cancelled
 from .kernel import layout
 from .kernel.layout import Control, Floats, Program, Results, ints
-from .kernel.march import march
+from .kernel.march import end_traced, march
 from .kernel.vectors import WIDTH
 from .primitives.columns import Lanes
 from .primitives.signals import Row
@@ -38,7 +40,7 @@ MOST_SECONDS = 10.0  # that a lane may take on one core, by circuit/cost.py
 ITERATES = 2.2  # a step, about: one for its stage, one for its end, and some more where laws bend
 MOST_ITERATIONS = 8
 MOST_AT_JUMP = 200
-NEVER = 1 << 62  # steps
+NEVER = 1 << 62  # steps, after which a lane that may not be carried is paused
 
 ENDED = {
     layout.UNSOLVED: "could not be solved",
@@ -64,6 +66,7 @@ class Observed:
     rows: dict[Row, int]
     results: Results
     keep: tuple[Row, ...] = ()
+    carried: Carried = field(default_factory=lambda: Carried.none(0))
 
     def value(self, row: Row) -> Floats:
         """Value of an observation: the time of a crossing, a level, an extreme, an integral."""
@@ -132,7 +135,7 @@ def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Cont
                     if place < nets:
                         rtol[place] = relative * TIGHT
                         atol[place] = ABSOLUTE * scale * TIGHT_ABSOLUTE
-    bounds = most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP, most_iterates(circuit, rows), NEVER
+    bounds = most_steps(circuit, rows), MOST_ITERATIONS, MOST_AT_JUMP, most_iterates(circuit, rows), LINGERS
     return Control(rtol, atol, ints(bounds))
 
 
@@ -187,7 +190,15 @@ def run(
     starts = layout.zeros(count, n_all) if start is None else np.ascontiguousarray(start)
     laws = circuit.table(lanes) if table is None else table
     bounds = control(circuit, relative, len(asked.places))
+    if trace > 0:
+        bounds.bounds[4] = NEVER
     arguments = (circuit.topology, laws, starts, program, made, bounds, results)
+    carried = Carried.none(count)
+
+    def some(low: int, high: int) -> None:
+        carrier = Carrier(circuit.topology, program, made, bounds, carried)
+        march(*arguments, low, high, cancel, go_on=end_traced if trace > 0 else carrier.go_on)
+
     cancel = np.zeros(1, dtype=np.uint8)
     workers = threads or os.cpu_count() or 1
     blocks = workers * -(-count // (workers * BLOCK))  # as many for each thread
@@ -196,12 +207,10 @@ def run(
         for low in range(0, count, block):
             if cancelled():
                 raise Cancelled("stopped")
-            march(*arguments, low, min(low + block, count), cancel)
+            some(low, min(low + block, count))
             progress(min(low + block, count), count)
-        return Observed(circuit, asked.places, results, tuple(keep))
-    waiting = {
-        _pool(workers).submit(march, *arguments, low, min(low + block, count), cancel) for low in range(0, count, block)
-    }
+        return Observed(circuit, asked.places, results, tuple(keep), carried)
+    waiting = {_pool(workers).submit(some, low, min(low + block, count)) for low in range(0, count, block)}
     blocks = len(waiting)
     try:
         while waiting:
@@ -216,4 +225,4 @@ def run(
         cancel[0] = 1
         for future in waiting:
             future.cancel()
-    return Observed(circuit, asked.places, results, tuple(keep))
+    return Observed(circuit, asked.places, results, tuple(keep), carried)

@@ -6,7 +6,7 @@ import math
 
 from .compiled import leaf
 from .layout import SEEN, Floats, Ints
-from .work import AH, BASE, HELD, LONGEST, NOW, PAUSE_AT, ROUND
+from .work import AH, BASE, HELD, LONGEST, MAY, NOW, PAUSE_AT, ROUND
 
 
 @leaf
@@ -129,5 +129,6 @@ def begin_lane(
     clock[NOW, w] = 0.0
     clock[PAUSE_AT, w] = math.inf
     clock[HELD, w] = 0.0
+    clock[MAY, w] = 1.0
     clock[AH, w] = 0.0
     clock[ROUND, w] = 0.0

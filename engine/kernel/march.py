@@ -50,6 +50,8 @@ def march_rows(
     phase, came = columns.phase, columns.came
     for w in range(WIDTH):
         came[w] = FINISHED if phase[w] == IDLE else NOTHING
+    if any_of(~same(phase, IDLE)):
+        linear_matrices(top.element, top.group, solving.p, solving.c, solving.g)  # lanes may have been put back
     while True:
         # Lanes that ended make room; what is left over idles on the last one's numbers.
         dirty = False

@@ -39,6 +39,7 @@ from .work import (
     LENGTH,
     LONGEST,
     LOOKED,
+    MAY,
     MOST,
     NEXT,
     NOTHING,
@@ -221,7 +222,8 @@ def bounded(bounds: Ints, counts: Ints, columns: Columns, w: int) -> int:
         columns.came[w] = NOTHING
         return NOT_ENDED
     counts[lane, 0] += 1
-    return OVERWORKED if counts[lane, 0] > bounds[0] or counts[lane, 2] > bounds[3] else NOT_ENDED
+    may = clock[MAY, w]
+    return OVERWORKED if counts[lane, 0] > may * bounds[0] or counts[lane, 2] > may * bounds[3] else NOT_ENDED
 
 
 @part

@@ -41,7 +41,8 @@ BEGAN, TOOK = 19, 20  # s, of the step or jump just taken
 GREW = 21  # growth that the error of the step before allowed
 PAUSE, PAUSE_AT = 22, 23  # pauses before a step beyond so many, or this instant in s
 HELD = 24  # 1: is paused where it would be stopped or lost, because a caller may take it back; then LOST
-CLOCK = 25
+MAY = 25  # times the bound of its work that the lane may take
+CLOCK = 26
 LOST = -1.0
 
 

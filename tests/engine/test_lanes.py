@@ -163,8 +163,8 @@ def test_a_lane_in_pieces_is_the_lane_in_one_go(
             work.columns.clock[PAUSE, w] += piece
         return results
 
-    monkeypatch.setattr(running, "NEVER", piece)
-    monkeypatch.setattr(running, "march", lambda *arguments: march(*arguments, go_on))
+    monkeypatch.setattr(running, "LINGERS", piece)
+    monkeypatch.setattr(running, "march", lambda *arguments, **_: march(*arguments, go_on))
     assert bits(observe(circuit, rows, some)) == bits(whole)
     assert len(set(pauses)) == 30
     assert len(pauses) > 30 * 20 / piece
@@ -227,7 +227,7 @@ def test_every_array_of_a_run_is_contiguous(circuit: Setup, rows: list[Row], lan
             assert array.flags.c_contiguous, name
     table = circuit.circuit.table(lanes)
     assert table.flags.c_contiguous
-    assert [f.name for f in fields(seen)] == ["circuit", "rows", "results", "keep"]
+    assert [f.name for f in fields(seen)] == ["circuit", "rows", "results", "keep", "carried"]
 
 
 def test_runs_of_the_same_lanes_share_their_table(circuit: Setup, lanes: Lanes) -> None:

@@ -21,7 +21,7 @@ def marched(monkeypatch: pytest.MonkeyPatch) -> list[int]:
     """The first lane of every block that was computed, each in 10 ms."""
     blocks: list[int] = []
 
-    def march(*arguments: Any) -> None:
+    def march(*arguments: Any, **_: Any) -> None:
         *_, low, _, cancel = arguments
         if not cancel[0]:
             blocks.append(low)

@@ -98,9 +98,20 @@ def test_a_margin_and_the_waves_give_the_same_reason() -> None:
         waves(design)
 
 
-def flasher(ends: float) -> Design:
-    """An astable at some 50 kHz."""
+def flasher(ends: float, beside: float | None = None) -> Design:
+    """An astable at some 50 kHz; ``beside``: another one, so many times slower."""
+    other = [] if beside is None else [
+        resistor("R5", "supply", "c3", "1k"),
+        resistor("R6", "supply", "b3", beside * 15e3),
+        resistor("R7", "supply", "b4", beside * 15e3),
+        resistor("R8", "supply", "c4", "1k"),
+        capacitor("C3", "c3", "b4", "1n"),
+        capacitor("C4", "c4", "b3", "1n2"),
+        transistor("Q3", "c3", "b3", "0V", **{"class": "small npn"}),
+        transistor("Q4", "c4", "b4", "0V", **{"class": "small npn"}),
+    ]  # fmt: skip
     return setup(
+        *other,
         resistor("R1", "supply", "c1", "1k"),
         resistor("R2", "supply", "b1", "15k"),
         resistor("R3", "supply", "b2", "15k"),
@@ -113,9 +124,13 @@ def flasher(ends: float) -> Design:
     ).design
 
 
-def test_a_flasher_that_runs_too_long_is_told_by_its_frequency_and_costs_a_bounded_amount() -> None:
-    # 0.69 R (C1 + C2) = 22.8 us: 44 kHz; real junctions make it a little quicker.
-    circuit = Setup(flasher(10.0))
+def test_flashers_that_run_too_long_are_told_by_their_frequency_and_cost_a_bounded_amount(
+    monkeypatch: pytest.MonkeyPatch,
+) -> None:
+    # 0.69 R (C1 + C2) = 22.8 us: 44 kHz; real junctions make it a little quicker. Two that have no common period
+    # cannot be carried forward.
+    monkeypatch.setattr("stagebook.engine.carry.follower.MORE", 1.0)
+    circuit = Setup(flasher(10.0, beside=3.0**0.5))
     lanes = circuit.lanes()
     seen = run(circuit.circuit, lanes, circuit.program(lanes), ())
     assert seen.results.work[0, 0] <= MOST_STEPS + 1
@@ -131,9 +146,20 @@ def test_a_flasher_that_runs_too_long_is_told_by_its_frequency_and_costs_a_bound
     assert int(told[3]) > 20
 
 
-def test_a_study_spends_no_work_on_corners_of_what_comes_to_no_end() -> None:
+def test_a_flasher_alone_comes_to_its_end() -> None:
+    """460,000 periods, all but some hundred of them carried forward."""
+    circuit = Setup(flasher(10.0))
+    lanes = circuit.lanes()
+    seen = run(circuit.circuit, lanes, circuit.program(lanes), ())
+    assert diagnosed(seen, lanes, "alarm", 0) is None
+    assert seen.carried.hertz[0] == pytest.approx(44e3, rel=0.15)
+    assert seen.carried.periods[0] == pytest.approx(10.0 * seen.carried.hertz[0], rel=0.01)
+
+
+def test_a_study_spends_no_work_on_corners_of_what_comes_to_no_end(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("stagebook.engine.carry.follower.MORE", 1.0)
     begin = time.perf_counter()
-    checks = study(flasher(10.0), lanes=200).checks
+    checks = study(flasher(10.0, beside=3.0**0.5), lanes=200).checks
     assert time.perf_counter() - begin < 60.0  # one lane takes a second; all corners and random lanes, minutes
     for check in checks:
         assert check.verdict is Verdict.UNKNOWN
