@@ -47,6 +47,7 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
     else:
         assert load is not None
         start, end = (Anchor(0.0, view.event(f"{load.ref} {change}")) for change in ("on", "off"))
+    dropped = _dropped(view, stage)
     reached = maximum(voltage(net), start, end)
     rail = maximum(voltage(far), start)
 
@@ -64,11 +65,20 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
         outcomes = [(~started, check.words["never"]), (~np.isfinite(threshold), check.words["late"])]
         hand, apart = None, "the conditions name no supply"
         if SUPPLY in seen.lanes:
-            hand, apart = 1.0 - threshold * final_share / seen.lanes[SUPPLY], ""
+            hand, apart = 1.0 - threshold * final_share / (seen.lanes[SUPPLY] - dropped), ""
         return ratio(threshold, final, outcomes, hand, apart)
 
     rows = (reached, rail)
     return Ask(check, stage.name, capacitor.ref, (sequence,), required, judge, rows)
+
+
+def _dropped(view: View, stage: Stage) -> float:
+    """What the diodes between supply and timer drop at little current, V: that of an entry, and of the timer's feed."""
+    found = [view.role(stage, "reverse_diode")]
+    if "feed_diode" in view.roles_of(stage):
+        found.append(view.role(stage, "feed_diode"))
+    drops = [view.datum(part, "forward_low", "V") for part in found if part is not None]
+    return sum(drop.typical for drop in drops if drop is not None)
 
 
 CHECKS = (
@@ -82,9 +92,9 @@ CHECKS = (
         asks=asks,
         reads={"of": "C5", "from": "begins", "to": "LS1 on"},
         worst="hot, low supply, leaky capacitors",
-        by_hand="V_th (1 + R G_leak) / supply",
+        by_hand="V_th (1 + R G_leak) / (supply - entry diode - feed diode)",
         accuracy=0.05,
-        leaves_out="drops before the timer",
+        leaves_out="other drops before it",
         words={
             "never": "the timer was never started",
             "late": "does not run out within the sequence, even without leakage",

@@ -187,7 +187,7 @@ CHECKS = (
         by_hand="2 n t, t the pieces with which R C of the debounce just comes to V_th: V (1-a)(1-(ab)^n)/(1-ab) ="
         " V_th, a = exp(-t/RC), b likewise with the pull resistor",
         hand_source="closed form of R and C, V_th as seen in the sequence",
-        accuracy=0.05,
+        accuracy=0.1,
         leaves_out="what follows the debounce",
     ),
     Check(

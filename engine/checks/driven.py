@@ -41,6 +41,13 @@ def together(view: View, load: Part) -> tuple[Part, ...]:
     return (load,)
 
 
+def lifted(view: View, driver: Part, lanes: Lanes, current: Floats) -> Floats | float:
+    """What a Darlington drops beside its V_CE(sat), V: the first transistor saturates, the second cannot, so that its
+    V_BE comes on top, about half of that of both. Nothing of any other kind."""
+    turned_on = view.bench(driver.ref).base_voltage if driver.kind.startswith("darlington") else None
+    return 0.0 if turned_on is None else 0.5 * turned_on(lanes, np.maximum(current, 1e-6))
+
+
 def drawn(view: View, loads: Sequence[Part]) -> Draw | None:
     """What loads draw together at a voltage, A; None where one of them does not say."""
     draws = [draw for load in loads if (draw := view.bench(load.ref).draw) is not None]
@@ -96,14 +103,14 @@ def _carries(view: View, driver: Part, load: Part, first: Part) -> bool:
     upper, lower = ("drain", "source") if driver.kind in MOSFETS else ("collector", "emitter")
     if upper not in driver.pins or lower not in driver.pins or load.ref == driver.ref:
         return False
-    high, low = _joined(view, driver.pins[upper]), _joined(view, driver.pins[lower])
+    high, low = joined(view, driver.pins[upper]), joined(view, driver.pins[lower])
     follows = not low & {RETURN, SUPPLY_NET} and not high & set(first.pins.values()) and low & set(first.pins.values())
     switched, other = (low, high) if follows else (high, low)
     nets = set(load.pins.values())
     return bool(nets & switched) and not nets & other
 
 
-def _joined(view: View, net: str) -> set[str]:
+def joined(view: View, net: str) -> set[str]:
     """A net with all that leads and fuses join to it."""
     found, new = {net}, True
     while new:

@@ -10,15 +10,18 @@ from ..design.part import Stage
 from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..kernel.layout import Floats
-from ..primitives.signals import Anchor, Row, crossing, level, maximum, minimum, voltage
+from ..primitives.signals import Anchor, Row, crossing, integral, level, maximum, minimum, voltage
 from ..quantity import read
 from .alarm_state import HOLDS
-from .check import Ask, Check, Judged, window
+from .check import Apart, Ask, Check, Judged, window
 from .complementary_latch import latches
 from .seen import Seen
 from .view import View
 
 UNTIMED = "neither its own stage nor just one fills timing_resistor and timing_capacitor"
+OTHERWISE = 0.03  # of its charge: with more the closed form is further off than it says of itself
+ANOTHER_WAY = "more than 3 % of the capacitor's charge came or went another way: through diodes, or into what it fires"
+KICKED = 1e-4  # s after which a capacitor that begins an interval below 0 V stands there
 SET = 0.3  # V across the base-emitter junction of a latch: not before it is set, not while it is reset (from memory)
 UNREACHED = "by hand the timing capacitor does not come to what it was seen to have"
 
@@ -74,7 +77,9 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
             alone = np.all([(at <= end) | (at >= comes) for at in events], axis=0) & np.isfinite(end)
             outcomes.append((alone & np.all([seen.seen(row, sequence) for row in again], axis=0), check.words["again"]))
         hand = None if timing is None else timing.by_hand(seen, sequence)
-        apart = UNTIMED if hand is None else ((np.isnan(hand), UNREACHED),)
+        apart: Apart = ((None, UNTIMED),)
+        if hand is not None and timing is not None:
+            apart = ((np.isnan(hand), UNREACHED), (timing.otherwise(seen, sequence) > OTHERWISE, ANOTHER_WAY))
         return window(end - begin, low, high, outcomes, hand, apart, of_value=True)
 
     rows = tuple(anchor.row for anchor in (first, last) if anchor.row is not None)
@@ -128,7 +133,9 @@ class Timing:
         rail = next((net for net in resistor.pins.values() if net != self.net), self.net)
         self.threshold = maximum(voltage(self.net), first, last)
         self.rail = maximum(voltage(rail), first, last)
-        self.rows: tuple[Row, ...] = (self.threshold, self.rail)
+        self.begun = level(voltage(self.net), Anchor(first.by + KICKED, first.row))
+        self.fed, self.stood = (integral(voltage(each), first, last) for each in (rail, self.net))
+        self.rows: tuple[Row, ...] = (self.threshold, self.rail, self.begun, self.fed, self.stood)
 
     @classmethod
     def find(cls, view: View, stage: Stage, first: Anchor, last: Anchor) -> Timing | None:
@@ -140,13 +147,27 @@ class Timing:
 
     def by_hand(self, seen: Seen, sequence: str) -> Floats:
         """The interval by the closed form, with the rail and threshold that the simulation shows."""
-        resistance = seen.lanes[self.resistor, "value"]
-        leak = 0.0 if self.leakage is None else np.asarray(self.leakage(seen.lanes))
+        resistance, leak, begun = self._parts(seen, sequence)
         share = 1.0 / (1.0 + resistance * leak)
         final = seen.value(self.rail, sequence) * share
         threshold = seen.value(self.threshold, sequence)
-        reached = np.where(final > threshold, threshold / np.where(final > 0.0, final, 1.0), np.nan)
+        reached = np.where(final > threshold, (threshold - begun) / np.where(final > begun, final - begun, 1.0), np.nan)
         return np.asarray(-resistance * share * seen.lanes[self.capacitor, "value"] * np.log1p(-reached))
+
+    def _parts(self, seen: Seen, sequence: str) -> tuple[Floats, Floats, Floats]:
+        """The resistor, the capacitor's leakage in S, and the voltage that it begins with."""
+        resistance = seen.lanes[self.resistor, "value"]
+        leak = np.zeros(seen.lanes.count) if self.leakage is None else np.asarray(self.leakage(seen.lanes))
+        return resistance, leak, np.nan_to_num(seen.value(self.begun, sequence))
+
+    def otherwise(self, seen: Seen, sequence: str) -> Floats:
+        """The share of the capacitor's charge that came or went another way than through the resistor and its leakage:
+        through diodes, or into what it fires."""
+        resistance, leak, begun = self._parts(seen, sequence)
+        stood = seen.value(self.stood, sequence)
+        through = (seen.value(self.fed, sequence) - stood) / resistance - leak * stood
+        kept = seen.lanes[self.capacitor, "value"] * (seen.value(self.threshold, sequence) - begun)
+        return np.abs(through - kept) / np.where(kept != 0.0, np.abs(kept), np.nan)
 
 
 CHECKS = (

@@ -16,6 +16,7 @@ from ..primitives.signals import START, Anchor, Row, integral, level
 from ..run import Observed
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .driven import drawn, surged, together
+from .load_voltage import left_by_hand
 from .seen import Seen
 from .view import View
 
@@ -63,6 +64,10 @@ def _asked(
             yield make(stage, part, sequence, required)
 
 
+IDLE = 0.1  # of what the load draws: a fuse that carries less than that at every moment is not in its way
+ELSEWHERE = "at these moments the load is fed another way than through this fuse"
+
+
 def _rated(view: View, part: Part, lanes: Lanes) -> np.ndarray:
     """Rated current at ambient temperature."""
     rated, drift = view.datum(part, "rated_current", "A"), view.datum(part, "rating_drift", "1/K")
@@ -90,7 +95,11 @@ def load_asks(check: Check, view: View) -> Iterator[Ask]:
             allowed = factor * _rated(view, part, seen.lanes)
             hand, apart = None, "no load says what it draws, or no supply is given"
             if draw is not None and SUPPLY in seen.lanes:
-                hand, apart = 1.0 - draw(seen.lanes, seen.lanes[SUPPLY]) / np.where(allowed > 0.0, allowed, np.nan), ""
+                left = None if load is None else left_by_hand(view, view.design.stage_of(load.ref), load, seen.lanes)
+                loads = draw(seen.lanes, seen.lanes[SUPPLY] if left is None else left)
+                hand = 1.0 - loads / np.where(allowed > 0.0, allowed, np.nan)
+                idle = carried < IDLE * loads
+                return ratio(carried, allowed, [(never, check.words["never"])], hand, ((idle, ELSEWHERE),))
             return ratio(carried, allowed, [(never, check.words["never"])], hand, apart)
 
         return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
@@ -190,7 +199,7 @@ CHECKS = (
         formula="D = largest current at the moments of the sequence, C = derating x rated current at the temperature",
         asks=load_asks,
         worst="hot, high supply",
-        by_hand="current of the load at the whole supply",
+        by_hand="current of the load at the supply less the drops that load voltage counts",
         accuracy=0.1,
         leaves_out="other loads, drops",
         words={"never": "none of the moments at which its current is read ever came"},

@@ -25,7 +25,7 @@ from ..primitives.columns import SUPPLY
 from ..primitives.signals import Anchor, Row, integral, lagged, level, maximum
 from ..quantity import read
 from .check import Ask, Check, Judged, ratio, unknown
-from .driven import drawn, driven, first_seen
+from .driven import drawn, driven, first_seen, lifted
 from .reverse_base_emitter import BIPOLAR
 from .seen import Seen
 from .view import View
@@ -105,7 +105,7 @@ def _conducts(view: View, stage: Stage, part: Part) -> Callable[[Seen], Floats] 
     def watts(seen: Seen) -> Floats:
         current = np.asarray(draw(seen.lanes, seen.lanes[SUPPLY]))
         if drop is not None:
-            return current * drop.typical
+            return current * (drop.typical + lifted(view, part, seen.lanes, current))
         assert ohms is not None
         return current**2 * ohms.typical
 
@@ -219,7 +219,8 @@ CHECKS = (
         formula="D = rise above ambient: R_th x steady power, more where peaks heat beyond it, C = T_limit - ambient",
         asks=asks,
         worst="hot, high supply",
-        by_hand="R_th P, P = I_load V_CE(sat) or I_load^2 R_on of a driver, else V I at the moments of the sequences",
+        by_hand="R_th P, P = I_load V_CE(sat) (of a Darlington V_BE/2 more) or I_load^2 R_on of a driver, else V I at"
+        " the moments of the sequences",
         accuracy=0.1,
         leaves_out="heat between the moments",
         words={"brief": "losses between the moments count beyond the lasting one, as a bound"},

@@ -26,6 +26,7 @@ from .view import View
 LOWERING = 1e-3  # s in which the trial lowers the supply
 SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the requirement gives none
 DROP = 0.8  # V across a conducting latch, from memory
+RESISTIVE = "its transistors drive each other's base through resistors: what it feeds beside is part of its current"
 BARE = "the roles of both base-emitter resistors of the latch are not filled"
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
 
@@ -103,13 +104,19 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
             carried,
             [(edge.missing, check.words["missing"]), (edge.always, check.words["always"])],
             None if holding is None else 1.0 - holding / np.where(carried > 0.0, carried, np.nan),
-            "" if holding is not None else BARE,
+            BARE if holding is None else "" if coupled(latch) else RESISTIVE,
         )
 
     return Ask(
         check, stage.name, pnp.ref, (sequence,), required, judge, (current,), trial,
         screen=1.0 / (1.0 - required) if required < 1.0 else None,
     )  # fmt: skip
+
+
+def coupled(latch: Latch) -> bool:
+    """Whether each transistor of a latch drives the other's base directly, and not through a resistor."""
+    npn, pnp = latch.npn.pins, latch.pnp.pins
+    return npn["collector"] == pnp["base"] and pnp["collector"] == npn["base"]
 
 
 def holding_by_hand(latch: Latch, lanes: Lanes) -> Floats | None:

@@ -11,6 +11,7 @@ from ..design.requirement import Requirement
 from ..design.sequence import ContactEvent
 from ..errors import CircuitError
 from ..kernel.layout import Floats
+from ..primitives.builder import RETURN, SUPPLY_NET
 from ..primitives.columns import SUPPLY
 from ..primitives.signals import START, Anchor, Row, level, maximum, minimum, voltage
 from ..quantity import read
@@ -47,6 +48,8 @@ def _wet_ask(check: Check, view: View, requirement: Requirement) -> Ask:
     if isinstance(found, str):
         return unknown(check, stage.name, subject, sequence, required, found)
     trip_rows, trip_current, trip_by_hand = found
+    device = next((device for _, _, device in view.with_role("trip_device")), None)
+    raised = requirement.at is not None and device is not None and _raised(device)
     across = voltage(*part.pins.values())
     most, least = maximum(across), minimum(across)
 
@@ -59,12 +62,19 @@ def _wet_ask(check: Check, view: View, requirement: Requirement) -> Ask:
             hand = 1.0 - seen.lanes[SUPPLY] / insulation / by_hand
         never = ~np.isfinite(trips)
         apart = "the trip device or the resistor at its base is not in its role" if hand is None else ""
+        if hand is None and raised:
+            apart = "the emitter of its trip device stands on a resistor: V_BE alone does not trip it"
         return ratio(dry / insulation, trips, [(never, check.words["never"])], hand, apart)
 
     return Ask(check, stage.name, subject, (sequence,), required, judge, (most, least, *trip_rows))
 
 
 Trips = tuple[tuple[Row, ...], Callable[[Seen, str, Floats], Floats], Callable[[Seen], "Floats | None"]]
+
+
+def _raised(device: Part) -> bool:
+    """Whether a transistor's emitter is not at 0V or the supply: with a resistor there V_BE alone does not trip it."""
+    return device.pins.get("emitter") not in (None, RETURN, SUPPLY_NET)
 
 
 def _at_event(view: View, requirement: Requirement, stage: Stage, part: Part, sequence: str) -> Trips | None:
@@ -78,7 +88,7 @@ def _at_event(view: View, requirement: Requirement, stage: Stage, part: Part, se
     turn_on = None if device is None else view.bench(device.ref).base_voltage
 
     def by_hand(seen: Seen) -> Floats | None:
-        if device is None or resistor is None or turn_on is None:
+        if device is None or resistor is None or turn_on is None or _raised(device):
             return None
         # Where the resistor does not begin at the device's own base, another junction lies between.
         junctions = 1.0 if device.pins["base"] in resistor.pins.values() else 2.0
@@ -123,6 +133,9 @@ def _wetting_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
     if needs is None or current is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"minimum_current of {part.ref}")
     pull = next((view.design.part(view.roles_of(stage)[role]) for role in PULLS if role in view.roles_of(stage)), None)
+    entry = view.role(stage, "reverse_diode")
+    forward = None if entry is None else view.datum(entry, "forward_low", "V")
+    dropped = 0.0 if forward is None else forward.typical
     rows = tuple(level(current, Anchor(at)) for at in _closed_until(view, part, sequence))
 
     def judge(seen: Seen) -> Judged:
@@ -132,7 +145,7 @@ def _wetting_ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
             return ratio(wanted, wanted, [(never, check.words["never"].format(contact=part.ref))])
         hand = None
         if pull is not None and SUPPLY in seen.lanes:
-            hand = 1.0 - wanted * seen.lanes[pull.ref, "value"] / seen.lanes[SUPPLY]
+            hand = 1.0 - wanted * seen.lanes[pull.ref, "value"] / (seen.lanes[SUPPLY] - dropped)
         apart = "no pull resistor in its stage, or the conditions name no supply" if hand is None else ""
         carried = np.min([np.abs(seen.value(row, sequence)) for row in rows], axis=0)
         return ratio(wanted, carried, hand=hand, apart=apart)
@@ -179,10 +192,11 @@ CHECKS = (
         formula="D = least current that keeps the contact clean, C = current through it before it opens again",
         asks=wetting_asks,
         worst="low supply",
-        by_hand="least current x R_pull / supply, R_pull the pull resistor of its stage",
+        by_hand="least current x R_pull / (supply - entry diode), R_pull the pull resistor of its stage",
         hand_source="Ohm's law",
         accuracy=0.05,
-        leaves_out="drops, ways beside it",
+        bound=True,
+        leaves_out="drops",
         words={"never": "{contact} is never closed in the sequence"},
     ),
 )

@@ -18,7 +18,7 @@ from ..parts.physics import copper_factor
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
 from ..primitives.signals import Anchor, level, maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
-from .driven import drawn, together
+from .driven import drawn, lifted, together
 from .seen import Seen
 from .view import View
 
@@ -99,19 +99,21 @@ def fed_otherwise(view: View, sequence: str) -> bool:
 
 
 def left_by_hand(view: View, stage: Stage, load: Part, lanes: Lanes) -> Floats | None:
-    """The supply less the drops that the data tell: saturation, entry diode, source and lead resistance, V per lane;
-    None where supply or load are not given."""
+    """The supply less the drops that the data tell: saturation (and half of the V_BE of a Darlington), entry diode,
+    source and lead resistance, V per lane; None where supply or load are not given."""
     loads = together(view, load)
     draw = drawn(view, loads)
     if draw is None or SUPPLY not in lanes:
         return None
     supply = lanes[SUPPLY]
-    drop = 0.0
+    drop: Floats | float = 0.0
     driver = view.role(stage, "driver")
     for part, key in ((driver, "v_ce_sat"), (view.role(stage, "reverse_diode"), "forward_high")):
         found = None if part is None else view.datum(part, key, "V")
         drop += 0.0 if found is None else found.typical
     current = draw(lanes, supply - drop)
+    if driver is not None:
+        drop = drop + lifted(view, driver, lanes, current)
     ohms = lanes[SOURCE_RESISTANCE] if SOURCE_RESISTANCE in lanes else np.zeros(lanes.count)
     for _, lead in view.parts_of("lead"):
         if set(lead.pins.values()) & set(load.pins.values()) - {"0V", "supply"}:
@@ -169,7 +171,7 @@ CHECKS = (
         formula="D = voltage that the load needs, a coil's with its copper, C = voltage across it while it is on",
         asks=on_asks,
         worst="low supply; hot for a coil, cold for a transistor's drop",
-        by_hand="D / (supply - V_CE(sat) - entry diode - I (R_source + R_lead))",
+        by_hand="D / (supply - V_CE(sat) - entry diode - I (R_source + R_lead)); of a Darlington its V_BE/2 more",
         accuracy=0.05,
         leaves_out="other drops",
         words={"never": "{load} was never switched on"},

@@ -14,19 +14,21 @@ import numpy as np
 from ..design.part import Part
 from ..design.sequence import Dip, DisconnectSupply, ReverseSupply, Surge
 from ..kernel.layout import Floats
+from ..primitives.builder import SUPPLY_NET
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY
 from ..primitives.signals import Anchor, level
 from ..quantity import read
 from .alarm_state import standby
-from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
 from .complementary_latch import Latch, latches
-from .driven import drawn, surged, together
+from .driven import drawn, joined, surged, together
 from .latch import hold_trial_of
 from .seen import Seen
 from .view import View
 
 LOOKS = tuple(20e-6 * 1.9**k for k in range(18))
 """s after the load came on, up to 1 s: what none of them meets is over before a latch has let go (from memory)."""
+BEHIND = "it is fed through more than a fuse or a lead, and what lies between drops as well"
 COLLAPSED = 1.6  # V: a conducting latch that stands below this is fed by a current, from memory
 
 
@@ -62,6 +64,8 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
         values = [np.where(e, seen.value(row, sequence), np.nan) for e, row in zip(early, looks[n], strict=True)]
         return np.asarray(np.fmin.reduce(values))
 
+    fed = SUPPLY_NET in joined(view, pnp.pins["emitter"])
+
     def judge(seen: Seen) -> Judged:
         collapsed = seen.value(own, sequence) < view.customary("latch fed by a current below", COLLAPSED, "V")
         full = _pick(collapsed, *(seen.value(row, sequence) for row in before))
@@ -76,7 +80,9 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
             (~np.isfinite(dip), check.words["never"]),
         ]
         hand = _hand(view, load, seen, held)
-        apart = f"what {load.ref} draws, or the supply, is not given" if hand is None else ""
+        apart: Apart = ((~collapsed & (not fed), BEHIND),)
+        if hand is None:
+            apart = ((None, f"what {load.ref} draws, or the supply, is not given"),)
         return ratio(dip, full - held, outcomes, hand, apart)
 
     rows = (*before, *looks[0], *looks[1], own)

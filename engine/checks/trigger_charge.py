@@ -20,12 +20,14 @@ from ..quantity import read
 from ..run import Observed
 from .alarm_state import TOLD_BY, alarm_states, settling
 from .base_capacitance import held_by
-from .check import Ask, Check, Judged, Mask, ratio, unknown
+from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
 from .complementary_latch import TRIP_CURRENT, Latch
 from .seen import Seen
 from .trial import Trial
 from .view import View
 
+SLOW = 30e-6  # s until a latch helps itself: meanwhile its base takes the more the quicker the charge comes
+TAKES_LONG = "its latch takes more than 30 us to help itself, and its base more than the formula counts"
 LARGEST, SMALLEST = 30.0, 0.01  # capacitors of the trial, in that of the design
 BEFORE = 1e-3  # s before the event that fires the latch
 SETTLE = 0.1  # s after it at which the last look is taken, where the requirement gives none
@@ -106,13 +108,15 @@ def _ask(check: Check, view: View, stage: Stage, part: Part) -> Ask:
         if edge is None:
             return Judged(np.full(seen.lanes.count, np.nan), capability=brought)
         outcomes = [(edge.always, check.words["always"])]
-        hand = None
+        hand, late = None, np.zeros(seen.lanes.count, dtype=bool)
         if latch is not None:
             between = np.abs(seen.time(lifted[0], sequence) - seen.time(lifted[1], sequence))
-            hand = _hand(latch, part, seen, swing, between)
-        apart = "no latch: the formula is that of its npn's base" if latch is None else ""
-        if latch is not None and hand is None:
-            apart = f"a gain of {latch.npn.ref}, its base-emitter resistor or the supply is not given"
+            hand, late = _hand(latch, part, seen, swing, between), between > SLOW
+        apart: Apart = ((late, TAKES_LONG),)
+        if latch is None:
+            apart = ((None, "no latch: the formula is that of its npn's base"),)
+        elif hand is None:
+            apart = ((None, f"a gain of {latch.npn.ref}, its base-emitter resistor or the supply is not given"),)
         return ratio(brought / edge.knob, brought, outcomes, hand, apart)
 
     rows = (*(row for pair in swings for row in pair), *lifted)
