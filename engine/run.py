@@ -26,6 +26,7 @@ from .kernel.march import end_traced, march
 from .kernel.vectors import WIDTH
 from .primitives.columns import Lanes
 from .primitives.signals import Row
+from .quantity import write
 from .row_table import RowTable
 
 RELATIVE = 1e-3
@@ -97,6 +98,15 @@ class Observed:
             return None
         net = self.circuit.unknown_name(int(self.results.ended[lane, 1]))
         return f"{ENDED[how]} at {self.results.ended_at[lane]:.6g} s near net {net}"
+
+    def carried_forward(self, lane: int) -> str | None:
+        """Over how much of an oscillation a lane was carried forward, in words; None where every step was taken."""
+        carried = self.carried
+        if lane >= carried.net.size or carried.net[lane] < 0:
+            return None
+        net, hertz = self.circuit.unknown_name(int(carried.net[lane])), write(float(carried.hertz[lane]), "Hz")
+        over = f"{carried.periods[lane]:,.0f} of its periods ({write(float(carried.seconds[lane]), 's')})"
+        return f"oscillates near net {net} at {hertz}; {over} were carried forward from those before and after them"
 
     def state(self, row: Row) -> tuple[Floats, Floats]:
         """State (lanes, n_all) just after a kept row was seen, and when: -1 in lanes where it never was."""

@@ -95,6 +95,8 @@ def explanation_rows(check: CheckResult, found: Explanation) -> Rows:
         value = "never seen" if seen.value is None else write_plain(seen.value, seen.unit)
         when = "" if seen.at is None else f", at {write_plain(seen.at, 's', 6)}"
         rows.append(("observed" if at == 0 else "", f"{seen.what}: {value} (sequence {seen.sequence}{when})", ""))
+    for words in found.carried:
+        rows.append(("carried", words, ""))
     for at, used in enumerate(found.used):
         rows.append(("data" if at == 0 else "", used_words(used), ""))
     return rows

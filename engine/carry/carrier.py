@@ -12,7 +12,7 @@ from .carried import Carried
 from .column import Column, go_on
 from .follower import Follower
 
-LINGERS = 3000  # steps since an event, after which a lane is looked at
+LINGERS = 5000  # steps since an event, after which a lane is looked at
 ROOM = 400_000  # numbers that are kept of a lane until it is looked at, within so many points:
 LEAST_POINTS, MOST_POINTS = 256, 2048
 

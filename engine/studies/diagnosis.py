@@ -60,7 +60,8 @@ def _overworked(circuit: Circuit, lane: Lanes, sequence: str, at: float, state: 
         steadily = f", steadily ({len(periods)} periods alike)" if _steady(periods) else ""
         return (
             f"{begin}: it goes on oscillating near net {net} at about {write(1.0 / float(np.median(periods)), 'Hz')}"
-            f"{steadily}; end the sequence sooner, or look at the oscillation in a short sequence of its own"
+            f"{steadily}, not evenly enough in all nets to be carried forward; end the sequence sooner, or look at the "
+            f"oscillation in a short sequence of its own"
         )
     moving = np.argsort(-np.ptp(values[:, : int(circuit.topology.size[0])], axis=0))[:MOST_NETS]
     return f"{begin}, busy near {_nets([circuit.unknown_name(int(k)) for k in moving])}"

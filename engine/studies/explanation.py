@@ -6,7 +6,7 @@ The lane of its corner is computed once more, and everything that the check read
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
-from dataclasses import asdict, dataclass
+from dataclasses import asdict, dataclass, replace
 from math import floor
 from typing import Any
 
@@ -62,7 +62,8 @@ class Used:
 
 @dataclass(frozen=True, slots=True)
 class Explanation:
-    """A margin taken apart. ``put_in`` is the formula with its values, ``margin`` what it makes here and now."""
+    """A margin taken apart. ``put_in`` is the formula with its values, ``margin`` what it makes here and now;
+    ``carried`` tells of oscillations that were not stepped all the way."""
 
     id: str
     formula: str
@@ -74,6 +75,7 @@ class Explanation:
     usual_worst: str
     observed: tuple[Observation, ...]
     used: tuple[Used, ...]
+    carried: tuple[str, ...] = ()
 
     def as_json(self) -> dict[str, Any]:
         """Plain JSON values."""
@@ -111,7 +113,9 @@ def explain(design: Design, result: CheckResult, *, cancelled: Callable[[], bool
             )
             for row, value in edge.values.items()
         ]
-    return _explanation(circuit, ask, ledger, judged, lanes, tuple(observed), result)
+    told = {name: seen.observed[name].carried_forward(0) for name in ask.sequences if name in seen.observed}
+    carried = tuple(f"sequence {name}: {words}" for name, words in told.items() if words)
+    return replace(_explanation(circuit, ask, ledger, judged, lanes, tuple(observed), result), carried=carried)
 
 
 def _asked(circuit: Circuit, name: str, ledger: Ledger) -> Ask:

@@ -62,13 +62,18 @@ def traced(
     stops: Floats | None = None,
     cancelled: Callable[[], bool] = never,
 ) -> tuple[Observed, Program]:
-    """One lane with all its steps kept."""
+    """One lane with all its steps kept; with none where it takes so many that it must be carried forward, and nothing
+    can be seen of what they skipped."""
     _, program = program_of(circuit, lane, sequence, stops)
     starts = starts_of(circuit, sequence, program)
     points = FIRST_POINTS + (0 if stops is None else 2 * len(stops))
     while True:
         observed = run(circuit, lane, program, rows, start=starts, keep=keep, trace=points, cancelled=cancelled)
-        if int(observed.results.ended[0, 0]) != layout.TRACE_FULL or points >= MOST_POINTS:
+        how = int(observed.results.ended[0, 0])
+        if stops is None and (how == layout.OVERWORKED or (how == layout.TRACE_FULL and points >= MOST_POINTS)):
+            untraced = run(circuit, lane, program, rows, start=starts, keep=keep, cancelled=cancelled)
+            return (observed if untraced.failed[0] else untraced), program
+        if how != layout.TRACE_FULL or points >= MOST_POINTS:
             return observed, program
         points = min(8 * points, MOST_POINTS)
 

@@ -14,6 +14,7 @@ from stagebook.engine.primitives.signals import crossing, voltage
 from stagebook.engine.results import Verdict
 from stagebook.engine.run import MOST_STEPS, run
 from stagebook.engine.studies.diagnosis import diagnosed
+from stagebook.engine.studies.explanation import explain
 from stagebook.engine.studies.margins import study
 from stagebook.engine.studies.waves import waves
 
@@ -137,8 +138,8 @@ def test_flashers_that_run_too_long_are_told_by_their_frequency_and_cost_a_bound
     said = diagnosed(seen, lanes, "alarm", 0)
     told = re.fullmatch(
         r"took too many steps by [\d.]+ ms: it goes on oscillating near net (\w+) at about ([\d.]+) kHz, "
-        r"steadily \((\d+) periods alike\); end the sequence sooner, or look at the oscillation in a short sequence "
-        r"of its own",
+        r"steadily \((\d+) periods alike\), not evenly enough in all nets to be carried forward; end the sequence "
+        r"sooner, or look at the oscillation in a short sequence of its own",
         str(said),
     )
     assert told is not None, said
@@ -169,3 +170,19 @@ def test_a_study_spends_no_work_on_corners_of_what_comes_to_no_end(monkeypatch: 
 
 def test_a_solved_lane_has_no_reason() -> None:
     assert words(Setup(flasher(1e-3))) is None
+
+
+def test_what_was_carried_forward_is_told_where_a_margin_comes_from() -> None:
+    """A voltage across a capacitor of a flasher of 44 kHz, for 10 s."""
+    design = flasher(10.0)
+    check = next(check for check in study(design, lanes=0).checks if check.margin is not None)
+    assert check.verdict in (Verdict.PASS, Verdict.THIN, Verdict.FAIL)
+    (told,) = explain(design, check).carried
+    found = re.fullmatch(
+        r"sequence alarm: oscillates near net c[12] at ([\d.]+) kHz; ([\d,]+) of its periods \(.* s\) were carried "
+        r"forward from those before and after them",
+        told,
+    )
+    assert found is not None, told
+    assert float(found[1]) == pytest.approx(44.0, rel=0.2)
+    assert float(found[2].replace(",", "")) == pytest.approx(10.0 * 1e3 * float(found[1]), rel=0.02)
