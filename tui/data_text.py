@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from ..engine.design.part import Part
-from ..engine.parts.classes import SOURCE
+from ..engine.parts.class_figure import SOURCE
 from ..engine.parts.made import from_memory
 from ..engine.parts.part_data import PartDatum, part_data
 from .bench_text import kind_words
@@ -58,10 +58,19 @@ def _tone(memory: bool) -> str:
     return "thin" if memory else ""
 
 
-def data_lines(datum: PartDatum) -> tuple[Line, Line]:
-    """Two lines about one datum: its figures in full with who says them, and what the kind reads it for."""
-    limits = " .. ".join(filter(None, (datum.minimum, datum.typical, datum.maximum))) or "not given"
+def data_lines(datum: PartDatum) -> tuple[Line, ...]:
+    """Lines about one datum: its figures in full, who says them, what it is read for, and what else is to be said."""
+    limits = _limits(datum)
     at = f" at {datum.condition}" if datum.condition else ""
-    said = f"   source: {datum.source}" if datum.source else ""
+    said = f" source: {datum.source}" if datum.source else ""
     first = f" {datum.name.replace('_', ' ')}: {limits}{at}"
-    return line(Span(first, "strong"), Span(said, _tone(datum.source.startswith(SOURCE)))), line(f" {datum.about}")
+    source = line(Span(said, _tone(datum.source.startswith(SOURCE))))
+    return line(Span(first, "strong")), source, line(f" {datum.about}"), line(f" {datum.beside}")
+
+
+def _limits(datum: PartDatum) -> str:
+    """All ends that are given; one alone says which it is."""
+    given = [each for each in (datum.minimum, datum.typical, datum.maximum) if each]
+    if len(given) == 1 and not datum.typical:
+        return f"at least {given[0]}" if datum.minimum else f"at most {given[0]}"
+    return " .. ".join(given) or "not given"

@@ -152,7 +152,13 @@ class Timing:
         final = seen.value(self.rail, sequence) * share
         threshold = seen.value(self.threshold, sequence)
         reached = np.where(final > threshold, (threshold - begun) / np.where(final > begun, final - begun, 1.0), np.nan)
-        return np.asarray(-resistance * share * seen.lanes[self.capacitor, "value"] * np.log1p(-reached))
+        return np.asarray(-resistance * share * self._farads(seen) * np.log1p(-reached))
+
+    def _farads(self, seen: Seen) -> Floats:
+        """The capacitor, with what it drifts."""
+        farads = seen.lanes[self.capacitor, "value"]
+        drift = self.capacitor, "drift"
+        return farads * (1.0 + seen.lanes[drift]) if drift in seen.lanes else farads
 
     def _parts(self, seen: Seen, sequence: str) -> tuple[Floats, Floats, Floats]:
         """The resistor, the capacitor's leakage in S, and the voltage that it begins with."""
@@ -166,7 +172,7 @@ class Timing:
         resistance, leak, begun = self._parts(seen, sequence)
         stood = seen.value(self.stood, sequence)
         through = (seen.value(self.fed, sequence) - stood) / resistance - leak * stood
-        kept = seen.lanes[self.capacitor, "value"] * (seen.value(self.threshold, sequence) - begun)
+        kept = self._farads(seen) * (seen.value(self.threshold, sequence) - begun)
         return np.abs(through - kept) / np.where(kept != 0.0, np.abs(kept), np.nan)
 
 

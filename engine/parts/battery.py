@@ -10,6 +10,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from ..errors import CircuitError
+from ..quantity import read
+from .classes import POINTS
 from .curve import Curve, points_of
 from .figures import Figure, class_figures, figure, typical
 from .kind import TEXT, Entry, Kind
@@ -23,11 +25,12 @@ if TYPE_CHECKING:
     from ..primitives.columns import Lanes
 
 COLD = -20.0  # deg C at which the resistance in the cold is given where no temperature is written
-CURVES: dict[str, Curve] = {  # open-circuit volts over charge state, from memory
-    "9 V block": ((0.0, 6.0), (0.1, 7.0), (0.5, 8.1), (0.9, 9.0), (1.0, 9.5)),
-    "AA cell": ((0.0, 0.9), (0.1, 1.1), (0.5, 1.25), (0.9, 1.45), (1.0, 1.58)),
-    "lead-acid 7 Ah": ((0.0, 11.6), (0.25, 12.0), (0.5, 12.3), (0.75, 12.5), (1.0, 12.8)),
+CURVES: dict[str, Curve] = {
+    name: tuple((read(share, ""), read(volts, "V")) for share, volts in points["voltage"].points)
+    for name, points in POINTS.items()
+    if "voltage" in points
 }
+"""Open-circuit volts over charge state, by the names of classes."""
 
 
 def voltage_curve(part: Part) -> Curve:
@@ -39,12 +42,9 @@ def voltage_curve(part: Part) -> Curve:
     if plain is not None:
         return ((0.0, plain.typical),)
     class_figures(part)
-    named = CURVES.get(str(part.entry("class")))
-    if named is None:
-        raise CircuitError(
-            f'part {part.ref}, voltage: missing; write it like "voltage": [["0 %", "6 V"], ["100 %", "9.5 V"]]'
-        )
-    return named
+    raise CircuitError(
+        f'part {part.ref}, voltage: missing; write it like "voltage": [["0 %", "6 V"], ["100 %", "9.5 V"]]'
+    )
 
 
 def _resistance(part: Part) -> Figure | None:

@@ -1,284 +1,175 @@
 """Generic classes of parts. All figures are common practice written down from memory.
 
-A figure is one text, (min, typical, max), or these with the test condition. They stand in until the user replaces them
-by figures of the part at hand; whatever is made of them says ``memory`` on the screen until then.
+They stand in until the user replaces them by figures of the part at hand; whatever is made of them says ``memory`` on
+the screen until then.
 """
 
 from __future__ import annotations
 
 from collections.abc import Mapping
 
-ClassFigure = str | tuple[str, str, str] | tuple[str, str, str, str]
-Figures = Mapping[str, ClassFigure]
-SOURCE = "memory"
-"""Who says the figures of every class."""
+from .class_figure import ClassPoints, Figures, at_least, at_most, spread, where
+from .diode_classes import DIODES
+from .transistor_classes import GAIN_POINTS, TRANSISTORS
 
-_SMALL_TRANSISTOR: Figures = {
-    "gain": ("200", "300", "450", "2 mA"),
-    "gain_current": "2 mA",
-    "v_be": ("0.58 V", "0.64 V", "0.70 V", "2 mA"),
-    "v_be_current": "2 mA",
-    "v_ce_sat": ("0.1 V", "0.1 V", "0.25 V", "10 mA / 0.5 mA"),
-    "saturation_current_at": "10 mA",
-    "forced_gain": "20",
-    "v_ceo": "45 V",
-    "v_ebo": "5 V",
-    "i_c_max": "100 mA",
-    "c_ob": ("3 pF", "3.5 pF", "4.5 pF", "10 V"),
-    "c_ob_bias": "10 V",
-    "c_ib": ("8 pF", "10 pF", "12 pF", "0.5 V"),
-    "c_ib_bias": "0.5 V",
-    "f_t": ("150 MHz", "200 MHz", "300 MHz", "10 mA"),
-    "f_t_current": "10 mA",
-    "i_cbo": ("0.2 nA", "1 nA", "15 nA", "25 C"),
-    "i_cbo_doubling": ("14.9 K", "14.9 K", "14.9 K", "15 nA at 25 C to 5 uA at 150 C"),
-    "thermal_resistance": ("200 K/W", "200 K/W", "200 K/W", "junction to ambient"),
-    "power": ("0.5 W", "0.5 W", "0.5 W", "25 C"),
-    "base_emitter_breakdown": "8 V",
-    "early_voltage": "80 V",
-}
-_DRIVER_TRANSISTOR: Figures = {
-    **_SMALL_TRANSISTOR,
-    "gain": ("100", "200", "400", "100 mA"),
-    "gain_current": "100 mA",
-    "v_be": ("0.60 V", "0.66 V", "0.72 V", "10 mA"),
-    "v_be_current": "10 mA",
-    "v_ce_sat": ("0.3 V", "0.3 V", "0.7 V", "500 mA / 50 mA"),
-    "saturation_current_at": "500 mA",
-    "forced_gain": "10",
-    "i_c_max": "500 mA",
-    "c_ob": ("10 pF", "12 pF", "15 pF", "10 V"),
-    "c_ib": ("40 pF", "50 pF", "60 pF", "0.5 V"),
-    "f_t": ("100 MHz", "150 MHz", "200 MHz", "10 mA"),
-    "i_cbo": ("1 nA", "5 nA", "100 nA", "25 C"),
-}
-_TWO_AMPERE_TRANSISTOR: Figures = {
-    **_DRIVER_TRANSISTOR,
-    "gain": ("40", "100", "250", "1 A"),
-    "gain_current": "1 A",
-    "v_ce_sat": ("0.2 V", "0.2 V", "0.5 V", "1 A / 0.1 A"),
-    "saturation_current_at": "1 A",
-    "v_ceo": "60 V",
-    "i_c_max": "2 A",
-    "c_ob": ("20 pF", "30 pF", "40 pF", "10 V"),
-    "f_t": ("50 MHz", "100 MHz", "150 MHz", "50 mA"),
-    "f_t_current": "50 mA",
-    "thermal_resistance": ("125 K/W", "125 K/W", "125 K/W", "junction to ambient"),
-    "power": ("1 W", "1 W", "1 W", "25 C"),
-}
-_DARLINGTON: Figures = {
-    **_DRIVER_TRANSISTOR,
-    "gain": ("750", "2000", "10000", "3 A"),
-    "gain_current": "3 A",
-    "v_ceo": "80 V",
-    "i_c_max": "8 A",
-    "first_base_resistor": "8 kohm",
-    "second_base_resistor": "150 ohm",
-    "thermal_resistance": "62 K/W",
-    "power": "2 W",
-}
-_SMALL_N_CHANNEL: Figures = {
-    "threshold": ("0.8 V", "1.6 V", "2.5 V", "250 uA"),
-    "resistance_on": ("0.8 ohm", "1.2 ohm", "2 ohm", "10 V at the gate"),
-    "c_iss": "40 pF",
-    "c_oss": "15 pF",
-    "c_rss": "5 pF",
-    "c_bias": "25 V",
-    "body_diode": "0.75 V",
-    "body_diode_current": "100 mA",
-    "i_dss": ("0.1 nA", "1 nA", "1 uA", "60 V, 25 C"),
-    "v_dss": "60 V",
-    "v_gss": "20 V",
-    "i_d_max": "300 mA",
-    "thermal_resistance": ("350 K/W", "350 K/W", "350 K/W", "junction to ambient"),
-    "power": ("0.35 W", "0.35 W", "0.35 W", "25 C"),
-}
-_P_CHANNEL_SWITCH: Figures = {
-    **_SMALL_N_CHANNEL,
-    "threshold": ("2 V", "3 V", "4 V", "250 uA"),
-    "resistance_on": ("0.06 ohm", "0.08 ohm", "0.1 ohm", "10 V at the gate"),
-    "gate_charge": ("20 nC", "20 nC", "30 nC", "10 V, 48 V"),
-    "gate_drain_charge": "8 nC",
-    "gate_charge_drain": "48 V",
-    "c_iss": "900 pF",
-    "c_oss": "300 pF",
-    "c_rss": "100 pF",
-    "body_diode": "0.8 V",
-    "body_diode_current": "1 A",
-    "i_d_max": "2 A",
-    "thermal_resistance": ("125 K/W", "125 K/W", "125 K/W", "junction to ambient"),
-    "power": ("1 W", "1 W", "1 W", "25 C"),
-}
-_CLAMP: Figures = {
-    "standoff_current": "5 uA",
-    "pulse_power": "600 W",
-    "forward_low": "0.7 V",
-    "forward_low_current": "10 mA",
-    "capacitance": "3 nF",
-}
-_FILM_RESISTOR: Figures = {"rating": ("0.25 W", "0.25 W", "0.25 W", "up to 70 C")}
-_LAMP: Figures = {"cold_ratio": ("10", "12", "14", "hot / cold resistance"), "inrush_time": "20 ms"}
-_SIGNAL_DIODE: Figures = {
-    "forward_low": "0.60 V",
-    "forward_low_current": "1 mA",
-    "forward_high": ("0.68 V", "0.72 V", "1 V", "10 mA"),
-    "forward_high_current": "10 mA",
-    "reverse_current": ("1 nA", "5 nA", "25 nA", "20 V, 25 C"),
-    "reverse_doubling": "10 K",
-    "capacitance": "4 pF",
-    "transit_time": "6 ns",
-    "v_rrm": "75 V",
-    "i_f_max": "150 mA",
-}
+# Why corners keep the typical value.
+_COLD_CELL = "it goes along with resistance, which corners move"
+_CONTACT = "a film gives way at 0.1 V: 10 ohm bear 10 mA (Holm)"
 
-Points = tuple[tuple[str, str], ...]
-POINTS: Mapping[str, Mapping[str, Points]] = {
-    "0.5 A driver npn": {"gain_points": (("300 mA", "60"),)},
-    "0.5 A driver pnp": {"gain_points": (("300 mA", "60"),)},
-}
-"""What a class gives at several points, by the names of classes."""
+_LIFE = spread("0 %", "0 %", "100 %", "over its life")
+_CHARGED_20_C = "charged, 20 C"
+_RATED_20_C = "rated voltage, 20 C"
+
+
+def _lamp(volts: str, low: str, typical: str, high: str) -> Figures:
+    return {
+        "cold_ratio": spread("10", "12", "14", f"hot at {volts}, 25 C"),
+        "inrush_time": spread("15 ms", "20 ms", "30 ms", f"{volts}, from 25 C"),
+        "current": spread(low, typical, high, f"{volts}, hot"),
+        "rated_voltage": where("current", volts),
+    }
+
+
+def _film(tolerance: str, per_kelvin: str) -> Figures:
+    return {
+        "rating": at_most("0.25 W", "up to 70 C"),
+        "tolerance": at_most(tolerance, "20 C"),
+        "tempco": spread(f"-{per_kelvin}", "0 ppm/K", per_kelvin, "-55 to 125 C"),
+    }
+
+
+def _contact(least: str, at: str) -> Figures:
+    return {
+        "resistance": spread("0.05 ohm", "0.1 ohm", "10 ohm", "at its least current", held=_CONTACT),
+        "minimum_current": at_least(least, at),
+    }
+
 
 CLASSES: Mapping[str, Mapping[str, Figures]] = {
-    "npn": {"small npn": _SMALL_TRANSISTOR, "0.5 A driver npn": _DRIVER_TRANSISTOR},
-    "pnp": {
-        "small pnp": _SMALL_TRANSISTOR,
-        "0.5 A driver pnp": _DRIVER_TRANSISTOR,
-        "2 A pnp": _TWO_AMPERE_TRANSISTOR,
-    },
-    "darlington_npn": {"power Darlington": _DARLINGTON},
-    "darlington_pnp": {"power Darlington": _DARLINGTON},
-    "mosfet_n": {"small n-channel": _SMALL_N_CHANNEL},
-    "mosfet_p": {"p-channel switch": _P_CHANNEL_SWITCH},
-    "diode": {
-        "signal diode": _SIGNAL_DIODE,
-        "1 A rectifier": {
-            **_SIGNAL_DIODE,
-            "forward_low": "0.65 V",
-            "forward_low_current": "10 mA",
-            "forward_high": ("0.90 V", "0.95 V", "1.1 V", "1 A"),
-            "forward_high_current": "1 A",
-            "reverse_current": ("10 nA", "50 nA", "5 uA", "rated voltage, 25 C"),
-            "capacitance": "15 pF",
-            "transit_time": "3 us",
-            "v_rrm": "100 V",
-            "i_f_max": "1 A",
-        },
-    },
-    "zener": {
-        "zener 0.5 W": {
-            **_SIGNAL_DIODE,
-            "test_current": "5 mA",
-            "slope_resistance": ("5 ohm", "10 ohm", "20 ohm", "5 mA"),
-            "capacitance": "100 pF",
-            "power": "0.5 W",
-        }
-    },
-    "schottky": {
-        "1 A Schottky": {
-            "forward_low": "0.26 V",
-            "forward_low_current": "10 mA",
-            "forward_high": "0.50 V",
-            "forward_high_current": "1 A",
-            "series_resistance": "110 mohm",
-            "reverse_current": ("20 uA", "100 uA", "0.5 mA", "40 V, 25 C"),
-            "reverse_doubling": "15 K",
-            "capacitance": "200 pF",
-            "v_rrm": "40 V",
-            "i_f_max": "1 A",
-        }
-    },
-    "led": {
-        "red": {
-            "forward_low": "1.80 V",
-            "forward_low_current": "1 mA",
-            "forward_high": "2.0 V",
-            "forward_high_current": "10 mA",
-            "series_resistance": "9 ohm",
-            "reverse_current": "10 nA",
-            "capacitance": "20 pF",
-            "band_gap": "2.15 V",
-            "v_rrm": "5 V",
-            "i_f_max": "30 mA",
-        }
-    },
-    "clamp": {"15 V surge clamp": {**_CLAMP, "value": "15 V"}, "24 V surge clamp": {**_CLAMP, "value": "24 V"}},
+    **TRANSISTORS,
+    **DIODES,
     "battery": {
         "9 V block": {
-            "capacity": "500 mAh",
-            "resistance": "2 ohm",
-            "aged_resistance": "10 ohm",
-            "cold_resistance": "6 ohm",
-            "age": ("0 %", "0 %", "100 %"),
+            "capacity": spread("400 mAh", "500 mAh", "550 mAh", "10 mA, 20 C"),
+            "resistance": spread("1.5 ohm", "2 ohm", "3 ohm", "fresh, 25 C"),
+            "aged_resistance": at_most("10 ohm", "worn, 25 C"),
+            "cold_resistance": spread("4 ohm", "6 ohm", "9 ohm", "fresh, -20 C", held=_COLD_CELL),
+            "age": _LIFE,
         },
         "AA cell": {
-            "capacity": "2.5 Ah",
-            "resistance": "0.15 ohm",
-            "aged_resistance": "0.6 ohm",
-            "cold_resistance": "0.5 ohm",
-            "age": ("0 %", "0 %", "100 %"),
+            "capacity": spread("2.2 Ah", "2.5 Ah", "2.8 Ah", "25 mA, 20 C"),
+            "resistance": spread("0.12 ohm", "0.15 ohm", "0.2 ohm", "fresh, 25 C"),
+            "aged_resistance": at_most("0.6 ohm", "worn, 25 C"),
+            "cold_resistance": spread("0.35 ohm", "0.5 ohm", "0.7 ohm", "fresh, -20 C", held=_COLD_CELL),
+            "age": _LIFE,
         },
         "lead-acid 7 Ah": {
-            "capacity": "7 Ah",
-            "resistance": "30 mohm",
-            "aged_resistance": "90 mohm",
-            "cold_resistance": "60 mohm",
-            "age": ("0 %", "0 %", "100 %"),
-            "self_discharge": "3 %/month",
+            "capacity": spread("6.5 Ah", "7 Ah", "7.5 Ah", "0.35 A, 20 C"),
+            "resistance": spread("25 mohm", "30 mohm", "40 mohm", "charged, 25 C"),
+            "aged_resistance": at_most("90 mohm", "worn, 25 C"),
+            "cold_resistance": spread("45 mohm", "60 mohm", "80 mohm", "charged, -20 C", held=_COLD_CELL),
+            "age": _LIFE,
+            "self_discharge": spread("2 %/month", "3 %/month", "4 %/month", _CHARGED_20_C),
         },
     },
-    "fuse": {"1 A slow": {"rated_current": "1 A", "melting": "2 A2s", "resistance": "0.1 ohm"}},
+    "fuse": {
+        "1 A slow": {
+            "rated_current": at_most("1 A", "lasting, 25 C"),
+            "melting": spread("1.5 A2s", "2 A2s", "3 A2s", "10 A, 25 C"),
+            "resistance": spread("80 mohm", "0.1 ohm", "0.13 ohm", "cold, 25 C"),
+        }
+    },
     "lamp": {
-        "12 V 2 W lamp": {**_LAMP, "current": ("150 mA", "167 mA", "185 mA", "12 V"), "rated_voltage": "12 V"},
-        "24 V 10 W lamp": {**_LAMP, "current": ("375 mA", "417 mA", "460 mA", "24 V"), "rated_voltage": "24 V"},
+        "12 V 2 W lamp": _lamp("12 V", "150 mA", "167 mA", "185 mA"),
+        "24 V 10 W lamp": _lamp("24 V", "375 mA", "417 mA", "460 mA"),
     },
-    "thermistor": {"ntc": {"beta": "3950 K"}},
-    "light_resistor": {"ldr": {"gamma": "0.7"}},
-    "inductor": {"choke": {"inductance": "1 mH", "resistance": "1.5 ohm", "i_max": "0.5 A"}},
+    "thermistor": {"ntc": {"beta": spread("3910 K", "3950 K", "3990 K", "25 and 85 C")}},
+    "light_resistor": {"ldr": {"gamma": spread("0.6", "0.7", "0.8", "10 to 100 lx")}},
+    "inductor": {
+        "choke": {
+            "inductance": spread("0.8 mH", "1 mH", "1.2 mH", "1 kHz, no bias"),
+            "resistance": spread("1.2 ohm", "1.5 ohm", "1.8 ohm", "20 C"),
+            "i_max": at_most("0.5 A", "lasting, 40 C"),
+        }
+    },
     "capacitor": {
-        "electrolytic": {"leakage_per_cv": "0.01", "leakage_least": "3 uA", "tolerance": "20 %"},
-        "timing capacitor, low drift": {
-            "leakage_per_cv": "0.002",
-            "leakage_least": "1 uA",
-            "drift": ("-5 %", "0 %", "5 %", "over temperature"),
+        "electrolytic": {
+            "leakage_per_cv": at_most("0.01", _RATED_20_C),
+            "leakage_least": at_most("3 uA", _RATED_20_C),
+            "tolerance": at_most("20 %", "100 Hz, 20 C"),
         },
-        "film": {"tolerance": "10 %"},
+        "timing capacitor, low drift": {
+            "leakage_per_cv": at_most("0.002", _RATED_20_C),
+            "leakage_least": at_most("1 uA", _RATED_20_C),
+            "drift": spread("-5 %", "0 %", "5 %", "over temperature"),
+        },
+        "film": {"tolerance": at_most("10 %", "1 kHz, 20 C")},
         "ceramic": {},
-        "X7R": {"tolerance": "10 %", "drift": ("-50 %", "0 %", "0 %", "0 V .. rated voltage")},
-        "C0G": {"tolerance": "5 %"},
+        "X7R": {
+            "tolerance": at_most("10 %", "1 kHz, 20 C"),
+            "drift": spread("-50 %", "0 %", "0 %", "0 V to rated voltage"),
+        },
+        "C0G": {"tolerance": at_most("5 %", "1 MHz, 20 C")},
     },
     "resistor": {
-        "film": {"rating": "0.25 W"},
-        "film 1 %": {**_FILM_RESISTOR, "tolerance": "1 %", "tempco": ("-50 ppm/K", "0 ppm/K", "50 ppm/K")},
-        "film 5 %": {**_FILM_RESISTOR, "tolerance": "5 %", "tempco": ("-200 ppm/K", "0 ppm/K", "200 ppm/K")},
+        "film": {"rating": at_most("0.25 W", "up to 70 C")},
+        "film 1 %": _film("1 %", "50 ppm/K"),
+        "film 5 %": _film("5 %", "200 ppm/K"),
     },
     "coil": {
         "relay 12 V": {
-            "resistance": ("360 ohm", "400 ohm", "440 ohm", "20 C"),
-            "inductance": ("0.8 H", "1 H", "1.2 H"),
-            "pick_up": ("6 V", "7.8 V", "9 V", "20 C"),
-            "drop_out": ("1.2 V", "2.4 V", "4 V", "20 C"),
-            "armature_delay": ("3 ms", "5 ms", "8 ms"),
+            "resistance": spread("360 ohm", "400 ohm", "440 ohm", "20 C"),
+            "inductance": spread("0.8 H", "1 H", "1.2 H", "pulled in, 100 Hz"),
+            "pick_up": spread("6 V", "7.8 V", "9 V", "20 C"),
+            "drop_out": spread("1.2 V", "2.4 V", "4 V", "20 C"),
+            "armature_delay": spread("3 ms", "5 ms", "8 ms", "12 V, 20 C"),
         },
     },
     "contact": {
-        "gold contact": {"resistance": ("0.1 ohm", "0.1 ohm", "10 ohm"), "minimum_current": "10 uA"},
-        "silver contact": {"resistance": ("0.1 ohm", "0.1 ohm", "10 ohm"), "minimum_current": "1 mA"},
+        "gold contact": _contact("10 uA", "10 mV or more"),
+        "silver contact": _contact("1 mA", "6 V or more"),
     },
     "sounder": {
         "siren 12 V": {
-            "current": ("0.2 A", "0.5 A", "1 A", "12 V"),
-            "rated_voltage": "12 V",
-            "operating_minimum": "6 V",
-            "surge": ("2 A", "2 A", "2 A", "12 V"),
-            "surge_time": "30 ms",
+            "current": spread("0.2 A", "0.5 A", "1 A", "12 V, 25 C"),
+            "rated_voltage": where("current", "12 V"),
+            "operating_minimum": at_most("6 V", "-10 to 50 C"),
+            "surge": at_most("2 A", "12 V, at rest"),
+            "surge_time": spread("20 ms", "30 ms", "50 ms", "12 V, at rest"),
         },
     },
     "piezo": {
         "piezo 12 V": {
-            "current": ("5 mA", "12 mA", "20 mA", "12 V"),
-            "rated_voltage": "12 V",
-            "operating_minimum": "3 V",
-            "sound_level": ("85 dB", "95 dB", "105 dB", "1 m"),
+            "current": spread("5 mA", "12 mA", "20 mA", "12 V, 25 C"),
+            "rated_voltage": where("current", "12 V"),
+            "operating_minimum": at_most("3 V", "-10 to 50 C"),
+            "sound_level": spread("85 dB", "95 dB", "105 dB", "12 V, 1 m"),
         },
     },
 }
+POINTS: Mapping[str, Mapping[str, ClassPoints]] = {
+    **GAIN_POINTS,
+    "9 V block": {
+        "voltage": ClassPoints(
+            (("0 %", "6 V"), ("10 %", "7 V"), ("50 %", "8.1 V"), ("90 %", "9 V"), ("100 %", "9.5 V")), "no load, 20 C"
+        )
+    },
+    "AA cell": {
+        "voltage": ClassPoints(
+            (("0 %", "0.9 V"), ("10 %", "1.1 V"), ("50 %", "1.25 V"), ("90 %", "1.45 V"), ("100 %", "1.58 V")),
+            "no load, 20 C",
+        )
+    },
+    "lead-acid 7 Ah": {
+        "voltage": ClassPoints(
+            (("0 %", "11.6 V"), ("25 %", "12 V"), ("50 %", "12.3 V"), ("75 %", "12.5 V"), ("100 %", "12.8 V")),
+            "at rest, 20 C",
+        )
+    },
+}
+"""What a class gives at several points, by the names of classes."""
+
+
+def is_condition(kind: str, key: str) -> bool:
+    """Whether a datum of a kind is the test condition of another one."""
+    return any(key in figures and figures[key].of is not None for figures in CLASSES.get(kind, {}).values())

@@ -20,7 +20,8 @@ def points_of(part: Part, key: str, units: tuple[str, str], example: str) -> Cur
     """A list of pairs as a part or its class gives it, rising in its first number; None where neither does."""
     entry = part.entry(key)
     if entry is None:
-        entry = class_points(part, key)
+        of_class = class_points(part, key)
+        entry = None if of_class is None else of_class.points
     if not isinstance(entry, tuple):
         return None
     rows: list[tuple[Any, Any]] = []

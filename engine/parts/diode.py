@@ -10,19 +10,29 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from ..errors import CircuitError
-from .figures import figure, needed, typical, valued
+from .figures import Figure, figure, needed, typical, valued
 from .kind import TEXT, THERMAL, Entry, Kind
 from .leakage import kelvin_per_doubling, leakage_entries
-from .physics import BAND_GAP, SATURATION_EXPONENT, doubling, saturation_factor, saturation_from, thermal_voltage
+from .physics import (
+    BAND_GAP,
+    REFERENCE,
+    SATURATION_EXPONENT,
+    doubling,
+    saturation_factor,
+    saturation_from,
+    thermal_voltage,
+)
 from .points import ForwardLaw, Point, forward_law, forward_law_of_three
 
 if TYPE_CHECKING:
     from ..design.document import Part
-    from ..primitives.builder import Builder, Laws
+    from ..primitives.builder import Builder, Law, Laws
 
 ZENER_TOLERANCE = 0.05
-TEST_CURRENT = 5e-3
+TEST_CURRENT, SLOPE = 5e-3, 10.0  # A, ohm of a zener diode where none is written, from memory
 BARRIER = 0.70  # V of a Schottky contact, from memory
 RICHARDSON = 2.0  # power of the absolute temperature in the saturation current of a metal contact
 EMITTING_GAP = 2.15  # V extrapolated to 0 K, red, from memory
@@ -74,9 +84,11 @@ def _forward(part: Part, build: Builder, gap: float = BAND_GAP, power: float = S
         capacitance = typical(part, "capacitance", "F", 0.0)
         transit = typical(part, "transit_time", "s", 0.0)
     ideality = law.ideality
-    current = build.column(part.ref, "saturation_current", law.saturation)
+    saturation = _saturation(part, build, law)
     return {
-        "saturation": lambda lanes: lanes[current] * saturation_factor(lanes.ambient, ideality, gap, power),
+        "saturation": lambda lanes: (
+            np.asarray(saturation(lanes)) * saturation_factor(lanes.ambient, ideality, gap, power)
+        ),
         "slope": lambda lanes: ideality * thermal_voltage(lanes.ambient),
         "capacitance": lambda lanes: capacitance,
         "transit": lambda lanes: transit,
@@ -87,6 +99,18 @@ def reverse_saturation(part: Part, celsius: float) -> float:
     """The saturation current in A at a temperature: what flows in reverse beside the leakage that is given."""
     law = _forward_law(part)
     return law.saturation * float(saturation_factor(celsius, law.ideality))
+
+
+def _saturation(part: Part, build: Builder, law: ForwardLaw) -> Law:
+    """Saturation current at 25 C. Parts differ in it, so that their forward voltages differ by as much at all currents:
+    the spread of the low point moves it."""
+    low = None if part.law else figure(part, "forward_low", "V")
+    if low is None or low.low == low.high:
+        current = build.column(part.ref, "saturation_current", law.saturation)
+        return lambda lanes: lanes[current]
+    volts = build.column(part.ref, "forward_low", *low.limits)
+    slope = law.ideality * float(thermal_voltage(REFERENCE))
+    return lambda lanes: np.asarray(law.saturation * np.exp((low.typical - lanes[volts]) / slope))
 
 
 def _leakage(part: Part, build: Builder) -> Laws:
@@ -167,10 +191,11 @@ def expand_zener(part: Part, build: Builder) -> None:
     laws = _forward(part, build) | _leakage(part, build)
     volts = build.column(part.ref, "value", *valued(part, "V", ZENER_TOLERANCE).limits)
     test = typical(part, "test_current", "A", TEST_CURRENT)
-    slope = typical(part, "slope_resistance", "ohm", 10.0) * test
+    flat = figure(part, "slope_resistance", "ohm") or Figure(SLOPE, SLOPE, SLOPE, "class")
+    slope = build.column(part.ref, "slope_resistance", *flat.limits, logarithmic=True)
     laws |= {
         "breakdown": lambda lanes: lanes[volts],
-        "breakdown_slope": lambda lanes: slope,
+        "breakdown_slope": lambda lanes: lanes[slope] * test,
         "breakdown_current": lambda lanes: test,
     }
     _finish(part, build, laws)

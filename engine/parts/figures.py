@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING
 
 from ..errors import CircuitError
 from ..quantity import read
-from .classes import CLASSES, POINTS, Figures, Points
+from .class_figure import ClassPoints, Figures
+from .classes import CLASSES, POINTS
 
 if TYPE_CHECKING:
     from ..design.document import Part
@@ -40,7 +41,7 @@ def class_figures(part: Part) -> Figures:
     return known[name]
 
 
-def class_points(part: Part, key: str) -> Points | None:
+def class_points(part: Part, key: str) -> ClassPoints | None:
     """The points that the class of a part gives under a name."""
     return POINTS.get(str(part.entry("class")), {}).get(key)
 
@@ -60,8 +61,7 @@ def figure(part: Part, key: str, unit: str) -> Figure | None:
     given_by_class = class_figures(part).get(key)
     if given_by_class is None:
         return None
-    texts = (given_by_class,) * 3 if isinstance(given_by_class, str) else given_by_class[:3]
-    low, typical, high = (read(text, unit) for text in texts)
+    low, typical, high = (read(text, unit) for text in given_by_class.texts)
     return Figure(low, typical, high, "class")
 
 

@@ -15,7 +15,7 @@ import numpy as np
 from ..errors import CircuitError
 from ..primitives.builder import constant
 from ..primitives.signals import voltage
-from .figures import figure, needed, typical
+from .figures import Figure, figure, needed
 from .kind import TEXT, Entry, Kind
 from .physics import REFERENCE, ZERO_CELSIUS
 
@@ -82,15 +82,17 @@ def expand(part: Part, build: Builder) -> None:
         raise CircuitError(f'part {part.ref}, {missing}: it must be above zero; write it like "{missing}": "12"')
     key = build.column(part.ref, "current", *current.limits)
     ratio = _ratio(part, build, key)
-    lasts = typical(part, "inrush_time", "s", INRUSH_TIME)
-    if lasts <= 0.0:
+    lasts = figure(part, "inrush_time", "s") or Figure(INRUSH_TIME, INRUSH_TIME, INRUSH_TIME, "class")
+    if lasts.low <= 0.0:
         raise CircuitError(f'part {part.ref}, inrush_time: it must be above zero; write it like "20 ms"')
+
+    time = build.column(part.ref, "inrush_time", *lasts.limits)
 
     def hot(lanes: Lanes) -> Floats:
         return hot_temperature(np.asarray(ratio(lanes)))
 
     def capacity(lanes: Lanes) -> Floats:
-        return np.asarray(lasts * volts * lanes[key] / heating(np.asarray(ratio(lanes))))
+        return np.asarray(lanes[time] * volts * lanes[key] / heating(np.asarray(ratio(lanes))))
 
     temperature = build.temperature(part.ref, constant(0.0), capacity)
     handle = build.warm(

@@ -15,7 +15,8 @@ from ..design.part import Part
 from ..errors import DesignError
 from ..primitives.builder import Builder
 from . import kinds
-from .classes import CLASSES, POINTS, SOURCE, ClassFigure
+from .class_figure import SOURCE, ClassFigure
+from .classes import CLASSES, POINTS, is_condition
 from .figures import class_figures, class_points
 from .kind import TEXT
 from .suitability import unsuitable
@@ -42,7 +43,7 @@ def kept(part: Part) -> dict[str, Any]:
 def _copied(part: Part, key: str, datum: Any) -> bool:
     """Whether points are those of the class."""
     points = class_points(part, key)
-    return points is not None and datum == [list(point) for point in points]
+    return points is not None and datum == [list(point) for point in points.points]
 
 
 def _class_unknown(part: Part) -> bool:
@@ -95,31 +96,30 @@ def resolved(document: Mapping[str, Any]) -> dict[str, Any]:
         if key not in known or known[key].unit == TEXT or part.entry(key) is not None:
             continue
         if key in _PLAIN:
-            fields[key] = given if isinstance(given, str) else given[1]
+            fields[key] = given.texts[1]
         else:
             data[key] = _datum(given)
     for key, points in POINTS.get(str(part.entry("class")), {}).items():
         if key in known and part.entry(key) is None:
-            data[key] = [list(point) for point in points]
+            data[key] = [list(point) for point in points.points]
     return fields | ({"data": data} if data else {})
 
 
 def _datum(given: ClassFigure) -> dict[str, Any]:
-    if isinstance(given, str):
-        return {"typical": given, "source": SOURCE}
-    limits = dict(zip(("min", "typical", "max"), given, strict=False))
-    return {**limits, "source": SOURCE} | ({"condition": given[3]} if len(given) == 4 else {})
+    limits = {"min": given.minimum, "typical": given.typical, "max": given.maximum, "condition": given.at or None}
+    return {key: text for key, text in limits.items() if text is not None} | {"source": given.source}
 
 
 def from_memory(part: Part) -> tuple[str, ...]:
-    """The keys of a part's figures that come from memory: of its class, or written out as such."""
+    """The keys of a part's figures that come from memory: of its class, or written out as such. Conditions of a figure
+    are none of their own."""
     kind = kinds().get(part.kind)
     if kind is None:
         return ()
     given = {} if _class_unknown(part) else class_figures(part)
     found = []
     for key, entry in {**kind.fields, **kind.data}.items():
-        if entry.unit == TEXT:
+        if entry.unit == TEXT or is_condition(part.kind, key):
             continue
         datum = part.datum(key)
         if (datum is None and part.entry(key) is None and key in given) or (datum and datum.source == SOURCE):

@@ -85,6 +85,20 @@ def gate_capacitances(part: Part) -> dict[str, float]:
     return found
 
 
+def _gate(part: Part, build: Builder) -> Law:
+    """How far the capacitances of the gate lie from the typical ones: all are those of one oxide."""
+    key, unit = ("gate_charge", "C") if figure(part, "gate_drain_charge", "C") is not None else ("c_iss", "F")
+    found = figure(part, key, unit)
+    if found is None or found.typical == 0.0:
+        return constant(1.0)
+    column = build.column(part.ref, key, *found.limits)
+    return lambda lanes: lanes[column] / found.typical
+
+
+def _scaled(farad: float, scale: Law) -> Law:
+    return lambda lanes: farad * np.asarray(scale(lanes))
+
+
 def _own(part: Part, key: str, unit: str) -> float | None:
     found = part.law_limits(key, unit)
     return None if found is None else next(v for v in (found.typical, found.min, found.max) if v is not None)
@@ -176,10 +190,11 @@ def _expand(polarity: int) -> Callable[[Part, Builder], None]:
             diode = build.junction(*((source, drain) if polarity > 0 else (drain, source)), body)
             current += diode.current.scaled(-polarity)
             power += diode.power
+        gate_scale = constant(1.0) if part.law else _gate(part, build)
         for between, farad in farads.items():
             if farad > 0.0:
                 one, other = between.split("_")
-                build.capacitance(part.pins[one], part.pins[other], constant(farad))
+                build.capacitance(part.pins[one], part.pins[other], _scaled(farad, gate_scale))
         bench = build.bench(part.ref)
         bench.currents["drain"] = current
         bench.currents["source"] = current.scaled(-1.0)

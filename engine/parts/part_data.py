@@ -9,8 +9,8 @@ from ..design.datum_text import written
 from ..design.part import Leakage, Part
 from ..errors import CircuitError
 from . import kinds
-from .classes import SOURCE
-from .figures import class_figures
+from .class_figure import ClassFigure
+from .figures import class_figures, class_points
 
 NOT_SAID = "not said"
 
@@ -20,7 +20,7 @@ class PartDatum:
     """One datum as texts, as typed; '' where there is none. ``own``: the part gives it, and not its class.
 
     ``name`` is the field that an edit writes, ``text`` the own datum in one line as datum_text.py writes it. ``about``
-    says what the kind reads it for.
+    says what the kind reads it for, ``beside`` its points, or why corners keep its typical value where they do.
     """
 
     name: str
@@ -32,6 +32,7 @@ class PartDatum:
     own: bool
     about: str
     text: str = ""
+    beside: str = ""
 
 
 def part_data(part: Part) -> tuple[PartDatum, ...]:
@@ -57,11 +58,12 @@ def part_data(part: Part) -> tuple[PartDatum, ...]:
             row = _listed(key, written(own), entry.about) if datum is None else _row(key, datum, entry.about)
             found.append(row)
         elif key in of_class:
-            given = of_class[key]
-            low, typical, high = ("", given, "") if isinstance(given, str) else given[:3]
-            at = given[3] if not isinstance(given, str) and len(given) == 4 else ""
-            said = f"{SOURCE}, class {part.entry('class')}"
-            found.append(PartDatum(key, low, typical, high, at, said, False, entry.about))
+            found.append(_of_class(part, key, of_class[key], entry.about))
+        elif (points := class_points(part, key)) is not None:
+            said = f"{points.source}, class {part.entry('class')}"
+            beside = ", ".join(f"{x} {y}" for x, y in points.points)
+            count = f"{len(points.points)} points"
+            found.append(PartDatum(key, "", count, "", points.at, said, False, entry.about, beside=beside))
         else:
             found.append(_none(key, entry.about))
     for key, law in part.law.items():
@@ -69,6 +71,15 @@ def part_data(part: Part) -> tuple[PartDatum, ...]:
         if datum is not None:
             found.append(_row(f"law.{key}", datum, kind.law[key].about if key in kind.law else ""))
     return tuple(found)
+
+
+def _of_class(part: Part, key: str, given: ClassFigure, about: str) -> PartDatum:
+    """A figure of the class; what corners keep at its typical value says why."""
+    low, typical, high = (text or "" for text in (given.minimum, given.typical, given.maximum))
+    at = given.at if given.of is None else f"for {given.of.replace('_', ' ')}"
+    said = f"{given.source}, class {part.entry('class')}"
+    beside = f"corners keep the typical value: {given.held}" if given.held else ""
+    return PartDatum(key, low, typical, high, at, said, False, about, beside=beside)
 
 
 def _row(name: str, datum: Datum, about: str) -> PartDatum:

@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from .figures import typical, valued
+import numpy as np
+
+from .figures import Figure, figure, valued
 from .kind import TEXT, Entry, Kind
 
 if TYPE_CHECKING:
@@ -22,17 +24,30 @@ def expand(part: Part, build: Builder) -> None:
     if value.typical == 0.0:
         return
     key = build.column(part.ref, "value", *value.limits)
-    drift = typical(part, "tempco", "1/K", 0.0)
+    drift = figure(part, "tempco", "1/K")
 
     def conductance(lanes: Lanes) -> Floats:
-        if drift == 0.0:
+        if drift is None:
             return 1.0 / lanes[key]
-        return 1.0 / (lanes[key] * (1.0 + drift * (lanes.ambient - 25.0)))
+        return 1.0 / (lanes[key] * (1.0 + _drifted(drift, value, lanes[key], lanes.ambient - 25.0)))
 
     handle = build.conductance(part.pins["a"], part.pins["b"], conductance)
     bench = build.bench(part.ref)
     bench.currents["a"] = handle.current
     bench.power = handle.power
+
+
+def _drifted(drift: Figure, value: Figure, ohms: Floats, kelvin: Floats) -> Floats:
+    """Share by which the resistance has moved at ``kelvin`` above 25 C.
+
+    A resistor that is out of tolerance to one side drifts to that side too, hot and cold: the ends of the value are
+    those over temperature, without lanes for the drift alone.
+    """
+    half = np.maximum(0.5 * (value.high - value.low), 1e-12 * value.typical)
+    # Trials vary the value far beyond its tolerance.
+    side = np.clip((ohms - value.typical) / half, -1.0, 1.0)
+    spread = np.where(side > 0.0, drift.high - drift.typical, drift.typical - drift.low)
+    return np.asarray(drift.typical * kelvin + side * spread * np.abs(kelvin))
 
 
 KIND = Kind(

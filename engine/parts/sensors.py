@@ -13,7 +13,7 @@ from ..errors import CircuitError
 from ..kernel import layout
 from ..primitives.builder import Settable
 from ..primitives.signals import voltage
-from .figures import figure, needed, typical, valued
+from .figures import Figure, figure, needed, typical, valued
 from .kind import TEXT, Entry, Kind
 from .levels import reading_above_zero, reading_in
 from .own_heat import OWN_HEAT, own_heat
@@ -110,7 +110,10 @@ def expand_light_resistor(part: Part, build: Builder) -> None:
         )
     value = build.column(part.ref, "value", *valued(part, "ohm", LIGHT_TOLERANCE).limits)
     given = part.law_limits("gamma", "")
-    gamma = typical(part, "gamma", "", GAMMA) if given is None or given.typical is None else given.typical
+    of_law = None if given is None else given.typical
+    usual = GAMMA if of_law is None else of_law
+    flat = Figure(usual, usual, usual, "class")
+    gamma = build.column(part.ref, "gamma", *((figure(part, "gamma", "") if of_law is None else None) or flat).limits)
     dark = figure(part, "dark_resistance", "ohm")
     least = 0.0 if dark is None else 1.0 / dark.typical
     start = typical(part, "light", "lx", REFERENCE_LIGHT)
@@ -118,7 +121,7 @@ def expand_light_resistor(part: Part, build: Builder) -> None:
         raise CircuitError(f'part {part.ref}, light: it must be above zero; write it like "light": "10 lx"')
 
     def siemens(lanes: Lanes, light: Floats | float) -> Floats:
-        return np.asarray((np.asarray(light) / REFERENCE_LIGHT) ** gamma / lanes[value] + least)
+        return np.asarray((np.asarray(light) / REFERENCE_LIGHT) ** lanes[gamma] / lanes[value] + least)
 
     reading = reading_above_zero(part, "lx", "10 lx")
     a, b = part.pins["a"], part.pins["b"]

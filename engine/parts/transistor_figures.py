@@ -81,17 +81,10 @@ def law_of_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
     early = typical(part, "early_voltage", "V", 80.0)
     ob = figure(part, "c_ob", "F")
     ib = figure(part, "c_ib", "F")
-    collector_c = (
-        0.0 if ob is None else at_zero_bias(ob.typical, typical(part, "c_ob_bias", "V", 10.0), COLLECTOR_GRADING)
-    )
+    per_ob = at_zero_bias(1.0, typical(part, "c_ob_bias", "V", 10.0), COLLECTOR_GRADING)
+    collector_c = 0.0 if ob is None else per_ob * ob.typical
     emitter_c = 0.0 if ib is None else at_zero_bias(ib.typical, typical(part, "c_ib_bias", "V", 0.5), EMITTER_GRADING)
-    c_scale = build.column(
-        ref,
-        "c_ob",
-        1.0,
-        1.0 if ob is None else ob.low / ob.typical,
-        1.0 if ob is None else ob.high / ob.typical,
-    )
+    ob_key = None if ob is None else build.column(ref, "c_ob", *ob.limits)
     transition = typical(part, "f_t", "Hz", 0.0)
     forward_transit = 0.0
     if transition > 0.0:
@@ -121,7 +114,7 @@ def law_of_figures(part: Part, build: Builder, ref: str, share: float) -> Laws:
         "emitter_capacitance": lambda lanes: emitter_c,
         "emitter_grading": lambda lanes: EMITTER_GRADING,
         "emitter_transit": lambda lanes: forward_transit,
-        "collector_capacitance": lambda lanes: collector_c * lanes[c_scale],
+        "collector_capacitance": constant(0.0) if ob_key is None else lambda lanes: per_ob * lanes[ob_key],
         "collector_grading": lambda lanes: COLLECTOR_GRADING,
         "collector_transit": lambda lanes: REVERSE_TRANSIT * forward_transit,
     }

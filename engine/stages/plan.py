@@ -134,7 +134,8 @@ class Plan:
     def gain(self, kind: str = "npn", current: float = 0.0) -> float:
         """The least current gain of the generic class that :meth:`transistor` takes, at the coldest ambient."""
         of_class = self.transistor_class(kind, current)
-        points = POINTS.get(of_class, {}).get("gain_points", ())
+        given = POINTS.get(of_class, {}).get("gain_points")
+        points = () if given is None else given.points
         least = min([class_figure(kind, of_class, "gain", "").low, *(float(gain) for _, gain in points)])
         return least * float(gain_factor(self.ambient.min))
 

@@ -21,7 +21,7 @@ from ..quantity import read
 from .plan import LARGEST_FILM, Plan, class_figure, part_of_class
 
 V_EB, V_DIODE = 0.44, 0.25  # V at 1 uA and 25 C: of the threshold transistor, and of its diode (class)
-SPREAD = 0.06  # V by which that of the transistor differs from part to part (class)
+SPREAD, DIODE_SPREAD = 0.06, 0.02  # V by which each differs from part to part (class)
 EB_PER_KELVIN, DIODE_PER_KELVIN = (
     2.5e-3,
     3.1e-3,
@@ -140,6 +140,7 @@ def fires(built: Built, celsius: float, volts: float, side: int) -> Firing:
     bled = max(v_eb, 0.0) / built.emitter_bleed
     # What that diode lets back when hot helps it forward, too.
     through = max(emitter + bled - (_reverse(celsius) if side < 0 else 0.0), LEAST_CURRENT)
+    above += side * DIODE_SPREAD
     above += V_DIODE - DIODE_PER_KELVIN * warmer + DIODE_SLOPE * thermal * math.log(through / 1e-6) + bled * parallel
     return Firing(share * volts + above, v_eb, emitter, (1.0 + DIODE_SLOPE) * thermal)
 

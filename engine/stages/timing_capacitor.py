@@ -19,10 +19,12 @@ from .plan import Plan, class_figure
 
 V_FIRES, V_DIODE = 0.43, 0.25  # V of the threshold transistor and its diode where they fire, at 1 uA (class)
 V_T, DIODE_SLOPE = 0.026, 2.0  # kT/q at 25 C in V, and how much flatter that diode is (class)
+DIODE_SPREAD = 0.02  # V from part to part (class)
 SPREAD, PER_KELVIN = 0.06, 2.3e-3  # V from part to part, and by which each falls with a kelvin at 1 uA, from memory
 EMITTER_BLEED = 470e3  # ohm, keeps the emitter at the base while its diode blocks
 DIVIDER = 330e3  # ohm, both resistors of the threshold together
 RESISTOR = 0.01  # tolerance of the timing resistor
+USUAL = 0.1  # tolerance of a class that says none
 TENTH = 0.1  # of the limit of its class that a selected capacitor leaks at most
 LEFT_OUT = 0.025  # of the time, by which simulated corners came out further apart than the closed form, at most
 EARLIER = 0.006  # of the time, by which the early one mostly did where it came out earlier
@@ -75,14 +77,16 @@ class Threshold:
             junctions = 2
         above -= junctions * PER_KELVIN * (celsius - REFERENCE)
         rail = plan.rail.min if largest else plan.rail.max
-        return self.share + (above + (SPREAD if largest else -SPREAD)) / (rail - lost)
+        spread = SPREAD + (DIODE_SPREAD if self.guarded else 0.0)
+        return self.share + (above + (spread if largest else -spread)) / (rail - lost)
 
 
 def timing(plan: Plan, kind: str, time: float, wanted: Threshold) -> Timing:
     """How a class of capacitor times ``time`` s."""
     name = class_name(kind)
-    tolerance = read(str(CLASSES["capacitor"][name].get("tolerance", "10 %")), "%")
-    drift = class_figure("capacitor", name, "drift", "%").high if "drift" in CLASSES["capacitor"][name] else 0.0
+    figures = CLASSES["capacitor"][name]
+    tolerance = class_figure("capacitor", name, "tolerance", "%").high if "tolerance" in figures else USUAL
+    drift = class_figure("capacitor", name, "drift", "%").high if "drift" in figures else 0.0
     leak = class_figure("capacitor", name, "leakage_per_cv", "").high * (TENTH if kind == SELECTED else 1.0)
     low = wanted.at(plan, plan.ambient.max, largest=False)
     short = (1.0 - tolerance) * (1.0 - drift) * (1.0 - RESISTOR) * math.log(1.0 / (1.0 - low))

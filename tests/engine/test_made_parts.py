@@ -15,6 +15,7 @@ from stagebook.engine.design.differences import apply, differences
 from stagebook.engine.design.document import Design
 from stagebook.engine.errors import CircuitError, DesignError
 from stagebook.engine.parts import kinds
+from stagebook.engine.parts.class_figure import spread
 from stagebook.engine.parts.classes import CLASSES
 from stagebook.engine.parts.figures import class_figures, figure, valued
 from stagebook.engine.parts.kind import TEXT
@@ -48,7 +49,7 @@ def test_own_figures_win_and_the_class_gives_the_rest_from_memory() -> None:
     assert used.datum("gain").source == "datasheet"  # type: ignore[union-attr]
     leak = used.datum("i_cbo")
     assert leak is not None
-    assert (leak.max, leak.source, leak.condition) == ("15 nA", "memory", "25 C")
+    assert (leak.max, leak.source, leak.condition) == ("15 nA", "memory", "30 V, 25 C")
     assert used.drawer == "low leak, version 1"
     assert used.pins == {"collector": "supply", "base": "base", "emitter": "out"}
 
@@ -61,7 +62,7 @@ def test_a_copied_part_computes_as_one_that_names_the_class() -> None:
 
 def test_a_later_change_of_the_class_moves_no_copy(monkeypatch: pytest.MonkeyPatch) -> None:
     used = edit.with_made_part(follower(), "Q1", LOW_LEAK, "low leak, version 1")
-    altered = {**CLASSES["npn"]["small npn"], "v_be": ("0.1 V", "0.2 V", "0.3 V")}
+    altered = {**CLASSES["npn"]["small npn"], "v_be": spread("0.1 V", "0.2 V", "0.3 V", "2 mA")}
     monkeypatch.setitem(CLASSES["npn"], "small npn", altered)  # type: ignore[arg-type]
     assert figure(used.part("Q1"), "v_be", "V").typical == pytest.approx(0.64)  # type: ignore[union-attr]
     assert figure(follower().part("Q1"), "v_be", "V").typical == pytest.approx(0.2)  # type: ignore[union-attr]
@@ -137,7 +138,7 @@ def test_memory_is_told_until_it_is_replaced() -> None:
 def test_the_data_page_lists_every_figure_with_who_says_it() -> None:
     rows = {row.name: row for row in part_data(follower().part("Q1"))}
     gain = rows["gain"]
-    assert (gain.minimum, gain.typical, gain.maximum, gain.condition) == ("200", "300", "450", "2 mA")
+    assert (gain.minimum, gain.typical, gain.maximum, gain.condition) == ("200", "300", "450", "2 mA, 5 V")
     assert (gain.source, gain.own) == ("memory, class small npn", False)
     assert rows["v_be_high"].source == ""
     own = {row.name: row for row in part_data(edit.with_field(follower(), "Q1", "gain", "250").part("Q1"))}["gain"]
@@ -172,11 +173,11 @@ def test_every_class_can_be_copied_and_computes() -> None:
         ("diode", "signal diode", "reverse_current", "A", None, None, 25e-9),
         ("schottky", "1 A Schottky", "reverse_current", "A", None, None, 0.5e-3),
         ("battery", "9 V block", "aged_resistance", "ohm", 10, 10, 10),
-        ("battery", "AA cell", "resistance", "ohm", 0.15, 0.15, 0.15),
-        ("thermistor", "ntc", "beta", "K", 3950, 3950, 3950),
+        ("battery", "AA cell", "resistance", "ohm", None, 0.15, None),
+        ("thermistor", "ntc", "beta", "K", None, 3950, None),
         ("resistor", "film 1 %", "tempco", "1/K", -50e-6, 0.0, 50e-6),
         ("contact", "gold contact", "minimum_current", "A", 10e-6, 10e-6, 10e-6),
-        ("contact", "silver contact", "resistance", "ohm", 0.1, None, 10),
+        ("contact", "silver contact", "resistance", "ohm", None, 0.1, 10),
         ("sounder", "siren 12 V", "current", "A", 0.2, None, 1.0),
         ("piezo", "piezo 12 V", "sound_level", "dB", 85, None, 105),
     ],
