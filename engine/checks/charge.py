@@ -68,9 +68,8 @@ def _by_hand(view: View, stage: Stage, part: Part, seen: Seen) -> Floats | None:
     if resistor is None or not sources or SUPPLY not in seen.lanes:
         return None
     diode = view.role(stage, "charge_diode")
-    found = None if diode is None else view.datum(diode, "forward_low", "V")
     battery = sum(np.asarray(source(seen.lanes)) for source in sources)
-    left = seen.lanes[SUPPLY] - (0.0 if found is None else found.typical) - battery
+    left = seen.lanes[SUPPLY] - view.forward(diode, "forward_low", seen.lanes) - battery
     return np.asarray(np.maximum(0.0, left) / seen.lanes[resistor.ref, "value"])
 
 

@@ -106,11 +106,14 @@ def left_by_hand(view: View, stage: Stage, load: Part, lanes: Lanes) -> Floats |
     if draw is None or SUPPLY not in lanes:
         return None
     supply = lanes[SUPPLY]
-    drop: Floats | float = 0.0
     driver = view.role(stage, "driver")
-    for part, key in ((driver, "v_ce_sat"), (view.role(stage, "reverse_diode"), "forward_high")):
-        found = None if part is None else view.datum(part, key, "V")
-        drop += 0.0 if found is None else found.typical
+    saturated = None if driver is None else view.datum(driver, "v_ce_sat", "V")
+    drop = view.forward(view.role(stage, "reverse_diode"), "forward_high", lanes)
+    drop = drop + (0.0 if saturated is None else saturated.typical)
+    driver = view.role(stage, "driver")
+    saturated = None if driver is None else view.datum(driver, "v_ce_sat", "V")
+    drop = view.forward(view.role(stage, "reverse_diode"), "forward_high", lanes)
+    drop = drop + (0.0 if saturated is None else saturated.typical)
     current = draw(lanes, supply - drop)
     if driver is not None:
         drop = drop + lifted(view, driver, lanes, current)

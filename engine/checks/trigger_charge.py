@@ -153,8 +153,7 @@ def _hand(latch: Latch, part: Part, seen: Seen, swing: Floats, between: Floats) 
     collector = 0.0 if resistors[1] is None else pnp_on / seen.lanes[resistors[1].ref, "value"]
     drained = npn_on / seen.lanes[resistors[0].ref, "value"] + collector / np.asarray(gain(seen.lanes))
     series = [d for d in _diodes(latch) if base in d.pins.values() and set(d.pins.values()) & set(part.pins.values())]
-    drops = [view.datum(diode, "forward_low", "V") for diode in series]
-    drop = sum((figure.typical for figure in drops if figure is not None), 0.0)
+    drop = sum(view.forward(diode, "forward_low", seen.lanes) for diode in series)
     demand = held * npn_on + drained * between
     capability = seen.lanes[part.ref, "value"] * (swing - npn_on - drop)
     safe = np.where(capability > 0.0, capability, 1.0)

@@ -15,8 +15,10 @@ from ..design.part import Part, Stage
 from ..design.requirement import Requirement
 from ..design.sequence import ContactEvent, RelativeMoment
 from ..errors import CircuitError, QuantityError
+from ..kernel.layout import Floats
 from ..parts.figures import Figure, figure
 from ..primitives.builder import RETURN, Bench, Handle
+from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, Signal, crossing, voltage
 from ..quantity import read
 from .factors import COMMON_PRACTICE, FACTORS
@@ -196,6 +198,15 @@ class View:
         if self.ledger is not None and found is not None:
             self.ledger.datum(part, key, unit, found)
         return found
+
+    def forward(self, part: Part | None, key: str, lanes: Lanes) -> Floats | float:
+        """The forward voltage of a diode at one of its points, in every lane; 0 where it is not given."""
+        found = None if part is None else self.datum(part, key, "V")
+        if part is None or found is None:
+            return 0.0
+        column = part.ref, "forward_low"
+        low = figure(part, "forward_low", "V")
+        return found.typical + (lanes[column] - low.typical if low is not None and column in lanes else 0.0)
 
     def sequence(self, requirement: Requirement | None, *names: str) -> str:
         """The sequence to judge in: that of the requirement, the first of these names that exists, or the main one."""

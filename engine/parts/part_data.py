@@ -78,7 +78,7 @@ def _of_class(part: Part, key: str, given: ClassFigure, about: str) -> PartDatum
     low, typical, high = (text or "" for text in (given.minimum, given.typical, given.maximum))
     at = given.at if given.of is None else f"for {given.of.replace('_', ' ')}"
     said = f"{given.source}, class {part.entry('class')}"
-    beside = f"corners keep the typical value: {given.held}" if given.held else ""
+    beside = f"corners keep it typical: {given.held}" if given.held else ""
     return PartDatum(key, low, typical, high, at, said, False, about, beside=beside)
 
 

@@ -52,6 +52,22 @@ def transistor(ref: str, collector: str, base: str, emitter: str, kind: str = "n
     }
 
 
+def astable(first: int, load: str, bases: tuple[str, str], coupling: tuple[str, str]) -> list[Json]:
+    """Two transistors that switch each other off in turn, numbered from ``first``: collector resistors, base resistors
+    of b2 and b1, capacitors from c1 to b2 and from c2 to b1."""
+    small = {"class": "small npn"}
+    return [
+        resistor(f"R{first}", "supply", "c1", load),
+        resistor(f"R{first + 1}", "supply", "b2", bases[0]),
+        resistor(f"R{first + 2}", "supply", "b1", bases[1]),
+        resistor(f"R{first + 3}", "supply", "c2", load),
+        capacitor(f"C{first}", "c1", "b2", coupling[0]),
+        capacitor(f"C{first + 1}", "c2", "b1", coupling[1]),
+        transistor(f"Q{first}", "c1", "b1", "0V", **small),
+        transistor(f"Q{first + 1}", "c2", "b2", "0V", **small),
+    ]
+
+
 def mosfet(ref: str, drain: str, gate: str, source: str, kind: str = "mosfet_n", **fields: object) -> Json:
     return {"ref": ref, "kind": kind, "pins": {"drain": drain, "gate": gate, "source": source}, **fields}
 

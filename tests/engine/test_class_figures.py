@@ -156,7 +156,7 @@ def test_the_data_page_shows_all_of_it(kind: str, name: str) -> None:
         )
         assert row.condition == (f"for {given.of.replace('_', ' ')}" if given.of else given.at)
         assert row.source == f"memory, class {name}"
-        assert row.beside == (f"corners keep the typical value: {given.held}" if given.held else "")
+        assert row.beside == (f"corners keep it typical: {given.held}" if given.held else "")
         assert len(row.beside) < SCREEN
     for key, points in POINTS.get(name, {}).items():
         assert rows[key].typical == f"{len(points.points)} points"

@@ -5,26 +5,22 @@ from __future__ import annotations
 from ...engine import edit
 from ...engine.design.document import Design
 from ...storage import Note
-from .history import Demo, Step, set_value
+from .history import Demo, Step, set_value, with_another, with_fields
 
 
 def _schottky(design: Design) -> Design:
     part = {"ref": "D1", "kind": "schottky", "pins": {"anode": "fused", "cathode": "rail"}, "class": "1 A Schottky"}
-    design = edit.with_part(edit.without_part(design, "D1"), "entry", part)
-    return edit.with_role(design, "entry", "reverse_diode", "D1")
+    return with_another(design, "entry", "reverse_diode", part)
 
 
 def _single_transistor(design: Design) -> Design:
     pins = {"collector": "coil", "base": "kb", "emitter": "0V"}
     part = {"ref": "Q7", "kind": "npn", "pins": pins, "class": "0.5 A driver npn"}
-    design = edit.with_part(edit.without_part(design, "Q7"), "relay", part)
-    return edit.with_role(design, "relay", "driver", "Q7")
+    return with_another(design, "relay", "driver", part)
 
 
 def _relay_of_70_percent(design: Design) -> Design:
-    for field in ("pick_up.typical", "pick_up.max"):
-        design = edit.with_field(design, "K1", field, "8.4 V")
-    return design
+    return with_fields(design, "K1", {"pick_up.typical": "8.4 V", "pick_up.max": "8.4 V"})
 
 
 def _fan_in_the_lead(design: Design) -> Design:

@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from dataclasses import dataclass
 from importlib.resources import files
+from typing import Any
 
 from ...engine import edit
 from ...engine.design.document import Design
@@ -18,6 +19,19 @@ Edit = Callable[[Design], Design]
 def set_value(ref: str, value: str) -> tuple[str, Edit]:
     """The edit that gives a part another value, with its label."""
     return f"{ref} {value}", lambda design: edit.with_value(design, ref, value)
+
+
+def with_fields(design: Design, ref: str, fields: Mapping[str, object]) -> Design:
+    """A copy with several fields of a part written."""
+    for field, value in fields.items():
+        design = edit.with_field(design, ref, field, value)
+    return design
+
+
+def with_another(design: Design, stage: str, role: str, part: dict[str, Any]) -> Design:
+    """A copy with another part in the place of the one of its designator, in the role that this had."""
+    ref = part["ref"]
+    return edit.with_role(edit.with_part(edit.without_part(design, ref), stage, part), stage, role, ref)
 
 
 @dataclass(frozen=True)

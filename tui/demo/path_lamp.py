@@ -2,23 +2,20 @@
 
 from __future__ import annotations
 
-from ...engine import edit
 from ...engine.design.document import Design
 from ...storage import Note
-from .history import Demo, Step, set_value
+from .history import Demo, Step, set_value, with_fields
 
 
 def _low_drift(design: Design) -> Design:
     """C5 of a low-drift kind: its maker's limit of 2 uA is that of every value up to 470u (from memory)."""
-    fields: tuple[tuple[str, object], ...] = (
-        ("class", "timing capacitor, low drift"),
-        ("tolerance", "10 %"),
-        ("leakage", {"specified": "2 uA", "conditioned": "0.1 uA"}),
-        ("data", {"drift": {"min": "-3 %", "typical": "0 %", "max": "3 %", "source": "memory"}}),
-    )
-    for field, value in fields:
-        design = edit.with_field(design, "C5", field, value)
-    return design
+    fields = {
+        "class": "timing capacitor, low drift",
+        "tolerance": "10 %",
+        "leakage": {"specified": "2 uA", "conditioned": "0.1 uA"},
+        "data": {"drift": {"min": "-3 %", "typical": "0 %", "max": "3 %", "source": "memory"}},
+    }
+    return with_fields(design, "C5", fields)
 
 
 PATH_LAMP = Demo(

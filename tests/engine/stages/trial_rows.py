@@ -120,7 +120,7 @@ ROWS: Mapping[str, tuple[Supply, Row]] = {
             CALL,
             choice("long_timer", "delay", time="30 s"),
             LATCH,
-            choice("long_timer", "run", mode="reset", time="180 s"),
+            choice("long_timer", "run", mode="reset", time="180 s", window="45 %"),
             choice("darlington_driver", current="0.8 A"),
         ),
     ),

@@ -24,7 +24,7 @@ from stagebook.engine.studies.faults import _notes, study
 from stagebook.engine.studies.healthy import Behaviour, behaviours
 
 from ..checks.sheets import design, sounder
-from ..circuits import Json, capacitor, resistor, transistor, two
+from ..circuits import Json, astable, capacitor, resistor, transistor, two
 
 CONNECT: Json = {"at": "0 s", "event": "connect supply", "rise": "1 us"}
 
@@ -225,14 +225,7 @@ def test_a_fault_that_sets_a_unit_oscillating_is_told_with_net_and_frequency() -
     # An astable that R9 holds still: without it 0.69 x (47k + 33k) x 220 pF, some 80 kHz, for the half second of the
     # sequence, which no run can follow.
     quiet = buzzer(
-        resistor("R21", "supply", "c1", "2k2"),
-        resistor("R22", "supply", "b2", "47k"),
-        resistor("R23", "supply", "b1", "33k"),
-        resistor("R24", "supply", "c2", "2k2"),
-        capacitor("C21", "c1", "b2", "220p"),
-        capacitor("C22", "c2", "b1", "220p"),
-        transistor("Q8", "c1", "b1", "0V", **{"class": "small npn"}),
-        transistor("Q9", "c2", "b2", "0V", **{"class": "small npn"}),
+        *astable(21, "2k2", ("47k", "33k"), ("220p", "220p")),
         resistor("R9", "b1", "0V", "100R"),
     )
     gone = next(fault for fault in faults_of(quiet) if (fault.part, fault.words) == ("R9", "open"))

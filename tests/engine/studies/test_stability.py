@@ -15,7 +15,7 @@ from stagebook.engine.studies.margins import study
 from stagebook.engine.studies.skipped import skipped
 from stagebook.engine.studies.stability import Watched, traced, watched
 
-from ..circuits import Setup, capacitor, resistor, setup, steps, transistor, two
+from ..circuits import Setup, astable, capacitor, resistor, setup, steps, transistor, two
 
 VT = 0.025692579121493725  # kT/q at 25 C
 
@@ -288,14 +288,7 @@ def test_a_study_knows_no_margin_beyond_the_work_bound() -> None:
 def test_a_flasher_that_switches_in_time_is_left_alone() -> None:
     # Whenever it switches its loop gain passes 1 and a mode grows: that is its trade, and long steps meet it in time.
     circuit = setup(
-        resistor("R1", "supply", "c1", "1k"),
-        resistor("R2", "supply", "b1", "47k"),
-        resistor("R3", "supply", "b2", "47k"),
-        resistor("R4", "supply", "c2", "1k"),
-        capacitor("C1", "c1", "b2", "1u"),
-        capacitor("C2", "c2", "b1", "1u2"),
-        transistor("Q1", "c1", "b1", "0V", **{"class": "small npn"}),
-        transistor("Q2", "c2", "b2", "0V", **{"class": "small npn"}),
+        *astable(1, "1k", ("47k", "47k"), ("1u", "1u2")),
         ends=1.0,
     )
     assert watched(circuit.circuit, circuit.lanes(), "alarm", ()).words is None
