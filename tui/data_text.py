@@ -61,7 +61,8 @@ def _tone(memory: bool) -> str:
 def data_lines(datum: PartDatum) -> tuple[Line, ...]:
     """Lines about one datum: its figures in full, who says them, what it is read for, and what else is to be said."""
     limits = _limits(datum)
-    at = f" at {datum.condition}" if datum.condition else ""
+    join = " at" if datum.condition[:1].isdigit() else ","
+    at = f"{join} {datum.condition}" if datum.condition else ""
     said = f" source: {datum.source}" if datum.source else ""
     first = f" {datum.name.replace('_', ' ')}: {limits}{at}"
     source = line(Span(said, _tone(datum.source.startswith(SOURCE))))

@@ -244,7 +244,7 @@ def data_source(part: Part, key: str) -> str:
         if named is None:
             return "customary for the kind, from memory"
         given = class_figures(part).get(key)
-        condition = f", at {given.at}" if given is not None and given.at else ""
+        condition = f", {given.at}" if given is not None and given.at else ""
         return f"class {named}, from memory{condition}"
     if key == "value":
         return "the part's value" + (f", {part.tolerance}" if part.tolerance else ", customary tolerance")

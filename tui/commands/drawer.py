@@ -69,8 +69,10 @@ def _print_all(found: list[MadePart]) -> None:
 def _print_one(found: list[MadePart]) -> None:
     newest = found[-1]
     words = ", ".join(f"{made.version} of {made.made[:10]}" for made in found)
+    of_class = f", class {newest.part.class_}" if newest.part.class_ else ""
     print_words(
-        f"{newest.name}: {newest.kind.replace('_', ' ')}, version {words}; figures of version {newest.version}:"
+        f"{newest.name}: {newest.kind.replace('_', ' ')}{of_class}, version {words}; figures of version"
+        f" {newest.version}:"
     )
     print()
     rows = [
@@ -79,7 +81,7 @@ def _print_one(found: list[MadePart]) -> None:
             datum.minimum,
             datum.typical,
             datum.maximum,
-            _said(datum.condition, datum.source),
+            _said(datum.condition, datum.source.partition(",")[0]),
         )
         for datum in part_data(newest.part)
         if datum.source

@@ -26,7 +26,7 @@ def test_a_part_of_a_file_is_in_the_drawer(stagebook: Run, part: Path) -> None:
     lines = {line.split("  ")[0]: line for line in out.splitlines()}
     assert lines["gain"].split()[1:] == ["110", "180", "datasheet"]
     # What the file does not say is of the class, and says that it comes from memory.
-    assert lines["c ob"].endswith("10 V; memory, class small npn")
+    assert lines["c ob"].endswith("10 V, 1 MHz; memory")
     found = json.loads(stagebook("drawer", "--json")[1])["parts"]
     assert [(made["name"], made["version"], made["kind"], made["part"]) for made in found] == [
         ("low-leak npn", 1, "npn", PART)
