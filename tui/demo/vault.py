@@ -40,7 +40,7 @@ VAULT = Demo(
                 " the starting siren takes the latch's own supply away.",
                 prediction="Self-dip of Q8 fails in the cold at low supply with a siren that starts hard; all else"
                 " holds, because in the alarm sequence the door is still open and holds the latch.",
-                result="13 V of dip where 9.8 V are left before Q8 lets go. Nothing else fails.",
+                result="13 V of dip where 10 V are left before Q8 lets go. Nothing else fails.",
                 next="Less dip, or none for the latch.",
             ),
         ),
