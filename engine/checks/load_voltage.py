@@ -110,10 +110,6 @@ def left_by_hand(view: View, stage: Stage, load: Part, lanes: Lanes) -> Floats |
     saturated = None if driver is None else view.datum(driver, "v_ce_sat", "V")
     drop = view.forward(view.role(stage, "reverse_diode"), "forward_high", lanes)
     drop = drop + (0.0 if saturated is None else saturated.typical)
-    driver = view.role(stage, "driver")
-    saturated = None if driver is None else view.datum(driver, "v_ce_sat", "V")
-    drop = view.forward(view.role(stage, "reverse_diode"), "forward_high", lanes)
-    drop = drop + (0.0 if saturated is None else saturated.typical)
     current = draw(lanes, supply - drop)
     if driver is not None:
         drop = drop + lifted(view, driver, lanes, current)
