@@ -7,16 +7,8 @@ import pytest
 from stagebook.engine.design.document import Design
 from stagebook.engine.studies.causes import Cause, CausesSheet
 from stagebook.engine.studies.comparison import Side, compare
+from stagebook.tui import side_by_side
 from stagebook.tui.shown import plain
-from stagebook.tui.side_by_side import (
-    FOLDED,
-    causes_line,
-    columns_in_sight,
-    compare_heading,
-    compare_rows,
-    side_lines,
-    title_cells,
-)
 
 from .conftest import document
 from .sheets import check, sheet
@@ -29,7 +21,7 @@ AFTER = Side("r2", sheet(*(check(name, margin) for name, margin in NEW.items()))
 
 
 def test_rows_keep_the_order_of_the_comparison_and_show_the_difference() -> None:
-    rows = compare_rows(compare([BEFORE, AFTER], 1), [BEFORE, AFTER], [0, 1], 20)
+    rows = side_by_side.compare_rows(compare([BEFORE, AFTER], 1), [BEFORE, AFTER], [0, 1], 20)
     assert [row.key for row in rows[:2]] == ["c:s:R3", "a:s:R1"]
     assert plain(rows[0].spans).split() == ["c", "R3", "(timer)", "=", "+20", "!", "+5", "-15"]
 
@@ -43,14 +35,14 @@ def test_what_did_not_change_is_folded_behind_its_count() -> None:
     ]
     compared = compare(sides, 1)
     # R4 stayed within half a percent, but it has become a pass (10 % are required).
-    rows = compare_rows(compared, sides, [0, 1], 20, fold=True)
-    assert [row.key for row in rows] == ["a:s:R1", "d:s:R4", FOLDED]
+    rows = side_by_side.compare_rows(compared, sides, [0, 1], 20, fold=True)
+    assert [row.key for row in rows] == ["a:s:R1", "d:s:R4", side_by_side.FOLDED]
     assert plain(rows[-1].spans) == "2 margins did not change: m shows them"
-    assert len(compare_rows(compared, sides, [0, 1], 20)) == 4
+    assert len(side_by_side.compare_rows(compared, sides, [0, 1], 20)) == 4
 
 
 def test_a_check_on_one_side_only_is_said_so() -> None:
-    first, second = side_lines(compare([BEFORE, AFTER], 1), 1, "e:s:R5", 80)
+    first, second = side_by_side.side_lines(compare([BEFORE, AFTER], 1), 1, "e:s:R5", 80)
     assert "does not have this check" in plain(first)
     assert "+40 pass" in plain(second)
 
@@ -62,23 +54,23 @@ def causes(**more: object) -> CausesSheet:
 
 
 def test_causes_are_listed_from_the_largest_with_what_they_do_together() -> None:
-    assert plain(causes_line(causes(), "a:s:R1")) == " causes: R8 -32   C4 -5   (together -2)"
+    assert plain(side_by_side.causes_line(causes(), "a:s:R1")) == " causes: R8 -32   C4 -5   (together -2)"
 
 
 def test_sampled_causes_carry_their_error_and_newer_formulas_stand_apart() -> None:
-    said = plain(causes_line(causes(error={"C4": 0.01, "R8": 0.02}, formula=0.03), "a:s:R1"))
+    said = plain(side_by_side.causes_line(causes(error={"C4": 0.01, "R8": 0.02}, formula=0.03), "a:s:R1"))
     assert said == " causes: R8 -32 (+/-2)   C4 -5 (+/-1)   newer formulas +3   (together -2)"
 
 
 def test_a_check_without_causes_says_why() -> None:
-    assert "one side only" in plain(causes_line(causes(), "new:s:R9"))
-    assert "unknown" in plain(causes_line(causes(), "dark:s:R3"))
+    assert "one side only" in plain(side_by_side.causes_line(causes(), "new:s:R9"))
+    assert "unknown" in plain(side_by_side.causes_line(causes(), "dark:s:R3"))
 
 
 def test_the_first_column_stays_in_sight_beside_the_chosen_one() -> None:
-    assert columns_in_sight(6, 5, 78, 30) == [0, 4, 5]
-    assert columns_in_sight(6, 1, 78, 30) == [0, 1, 2]
-    assert columns_in_sight(3, 1, 120, 30) == [0, 1, 2]
+    assert side_by_side.columns_in_sight(6, 5, 78, 30) == [0, 4, 5]
+    assert side_by_side.columns_in_sight(6, 1, 78, 30) == [0, 1, 2]
+    assert side_by_side.columns_in_sight(3, 1, 120, 30) == [0, 1, 2]
 
 
 @pytest.mark.parametrize("width", [60, 80, 100, 120])
@@ -89,10 +81,10 @@ def test_no_column_in_sight_is_cut(count: int, width: int) -> None:
         Side(f"r{at}", sheet(*(check(name, margin) for name, margin in each.items())), DESIGN)
         for at, each in enumerate(margins, 1)
     ]
-    title = title_cells(count, width)
-    sight = columns_in_sight(count, count - 1, width, title)
-    rows = compare_rows(compare(sides, count - 1), sides, sight, title)
-    lines = [plain(compare_heading(sides, sight, count - 1, title)), *(plain(row.spans) for row in rows)]
+    title = side_by_side.title_cells(count, width)
+    sight = side_by_side.columns_in_sight(count, count - 1, width, title)
+    rows = side_by_side.compare_rows(compare(sides, count - 1), sides, sight, title)
+    lines = [plain(side_by_side.compare_heading(sides, sight, count - 1, title)), *(plain(row.spans) for row in rows)]
     assert len(sight) >= 2
     assert max(len(text.rstrip()) for text in lines) <= width - 2
     assert any(text.endswith(" <-999") for text in lines)
