@@ -28,15 +28,24 @@ class Carrier:
         """Decide what each paused lane does next."""
         if results.trace_time.shape[1] == 0:
             results = _with_room(work, results)
+        with np.errstate(all="ignore"):  # what is not finite compares as false, and nothing is carried by it
+            self._all_go_on(work, columns, results)
+        return results
+
+    def _all_go_on(self, work: Work, columns: list[int], results: Results) -> None:
         for w in columns:
             self._go_on(Column(work, w, results, self.program, self.rows))
-        return results
 
     def _go_on(self, column: Column) -> None:
         w = column.w
         follower = self._followers.get(w)
-        if follower is not None and follower.lane == column.lane and follower.go_on(column):
-            return
+        if follower is not None and follower.lane == column.lane:
+            try:
+                if follower.go_on(column):
+                    return
+            except np.linalg.LinAlgError:
+                follower.give_up(column)  # a matrix that has no inverse tells nothing of how far a stride may go
+                return
         self._followers.pop(w, None)
         column.results.trace_used[w] = -1
         if column.steps < column.work.columns.clock[PAUSE, w]:

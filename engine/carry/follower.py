@@ -33,6 +33,7 @@ FIRST_STRIDE = 2.0  # times the periods that were looked at
 GIVE_UP = 12  # strides in turn that were taken back
 BUSY = 4  # times the usual steps, behind a stride
 BOWS = 3e-3  # by which the course of an integral may differ from the straight one
+STILL = 1.3  # periods, within which the last one must have ended
 WORTH = 0.2  # of the tolerance, which is mended even where no stride follows
 MORE, LONGER_WORK = 4.0, 3.0  # times the bounds of steps and of work, for a lane that is seen to oscillate
 ITERATES = 2.5  # a step, at most usually
@@ -104,6 +105,13 @@ class Follower:
         else:
             return self._look(column)
         return True
+
+    def give_up(self, column: Column) -> None:
+        """Follow the lane no further for now, from where it stood before a stride that is not judged yet."""
+        if self.venture is not None:
+            put_back(column, self.venture.snapshot)
+            self.venture = None
+        self._rest(column)
 
     def watch(self, column: Column, until: float = math.inf) -> None:
         """Run on plainly, all steps kept from here on."""
@@ -183,6 +191,8 @@ class Follower:
             more = LONGER_WORK * bounds[3] / (ITERATES * bounds[0])
             column.work.columns.clock[MAY, column.w] = min(max(more, 1.0), MORE)
         for period in tried:
+            if time[-1] - period.instants[-1] > STILL * period.length:
+                continue  # it has ended since
             measured = drift(time, followed, period, tolerance)
             if measured.steady:
                 return period, measured

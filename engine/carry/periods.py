@@ -15,6 +15,7 @@ from ..kernel.layout import Floats
 VISIBLE = 0.05  # V, swing that counts as an oscillation
 LOW, HIGH = 0.3, 0.7  # of the swing, between which a net must have been for a rise to count
 ALIKE = 0.05  # by which periods may differ, of the usual one
+RESOLVED = 1e4  # last digits of its instants that a period must be long
 MOST_TOGETHER = 4  # rises that may make one period: one of two heights, say, that take turns
 
 
@@ -72,6 +73,8 @@ def candidates(time: Floats, values: Floats, count: int) -> list[Period]:
             if len(instants) <= count:
                 break
             lengths = np.diff(instants)
+            if float(lengths.min()) <= RESOLVED * float(np.spacing(time[-1])):
+                break
             if np.ptp(lengths) <= ALIKE * float(np.median(lengths)):
                 period = Period(int(net), together, instants)
                 found.append((-period.length, -float(swings[net]), period))
