@@ -22,8 +22,7 @@ from .noted import Noted, bent, correct_stride, next_edge, note_stride, noted
 from .periods import Period, candidates, periods_by
 from .strides import FORESIGHT, Quantities, Stride, change_of, in_phase, judged, longest, quantities, with_sines
 
-PERIODS, MOST_PERIODS = 8, 64  # that are compared
-MANY, FEW_PERIODS = 6000, 5  # in so many points fewer periods must do
+PERIODS, MOST_PERIODS = 5, 64  # that are compared
 ENOUGH, MEMORY = 40_000, 3_000_000  # points, and numbers, in which there must be periods enough
 SETTLE = 2  # periods that a lane settles in after a stride
 STATES = 32  # of a period, at which the circuit is linearised
@@ -150,12 +149,9 @@ class Follower:
         """Find the period in what was kept, and how long a stride may be."""
         time, trail = self._kept()
         known = None if self.regime is None else self.regime.period
-        found = self._found(column, time, trail, known, self.wanted)
+        found = self._found(column, time, trail, known)
         if found is None and known is not None:
-            found = self._found(column, time, trail, None, self.wanted)
-        if found is None and len(time) > MANY and self.wanted > FEW_PERIODS:
-            found = self._found(column, time, trail, None, FEW_PERIODS)
-            self.wanted = FEW_PERIODS if found else self.wanted
+            found = self._found(column, time, trail, None)
         if found is None:
             self.regime = None
             if len(time) >= min(ENOUGH, MEMORY // trail.shape[1]):
@@ -175,15 +171,13 @@ class Follower:
         self.regime = Regime(period, drifting, rows)
         return self._plan(column, self.regime, time)
 
-    def _found(
-        self, column: Column, time: Floats, trail: Floats, known: Period | None, wanted: int
-    ) -> tuple[Period, Drift] | None:
+    def _found(self, column: Column, time: Floats, trail: Floats, known: Period | None) -> tuple[Period, Drift] | None:
         """The last periods of what was kept, cut as they were before where that is known, and what drifts in them."""
         if known is not None:
             again = periods_by(known.net, time, trail[:, known.net], known.together)
-            tried = [] if again is None or len(again.instants) <= wanted else [again.last(wanted)]
+            tried = [] if again is None or len(again.instants) <= self.wanted else [again.last(self.wanted)]
         else:
-            tried = candidates(time, trail[:, : int(self.top.size[0])], wanted)
+            tried = candidates(time, trail[:, : int(self.top.size[0])], self.wanted)
         followed = self.quantities.of(trail)
         tolerance = self.quantities.tolerance(followed[-1])
         if tried:
@@ -301,7 +295,7 @@ class Follower:
         ):
             return self._take_back(column, venture)  # it went beyond
         time, trail = self._kept()
-        found = self._found(column, time, trail, known, self.wanted)
+        found = self._found(column, time, trail, known)
         later = column.now + self.wanted * known.length
         if found is None and not venture.prolonged and not column.stopped and later < self._edge:
             venture.prolonged, self._until = True, later
