@@ -9,10 +9,15 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 
+import numpy as np
+
+from ..carry.carrier import LINGERS
 from ..checks.check import Ask
+from ..checks.trial import Trial
 from ..circuit.circuit import Circuit
 from ..circuit.cost import ABREAST, iterate_cost
-from ..run import Observed
+from ..quantity import read
+from ..run import ITERATES, Observed
 from .lanes import axes, settings, tolerances
 
 MOST_EFFORT = 1200.0
@@ -47,26 +52,25 @@ def corner_effort(circuit: Circuit, asks: Sequence[Ask], nominal: Mapping[str, O
     for sequence, observed in nominal.items():
         iterates = _iterates(observed)
         own = [ask for ask in tried if ask.trial is not None and ask.trial.sequence == sequence]
-        keys = {ask.trial.key for ask in own if ask.trial is not None}
-        of_trials = NEAR * single * len(keys) + (COARSE * extremes + FULL * TRIAL_VERTICES) * len(own)
+        each = [_of_trial(circuit, ask.trial, iterates) for ask in own if ask.trial is not None]
+        keys = {ask.trial.key: shared for ask, shared in zip(own, each, strict=True) if ask.trial is not None}
+        of_trials = NEAR * single * sum(keys.values()) + (COARSE * extremes + FULL * TRIAL_VERTICES) * sum(each)
         found[sequence] = (
-            iterates
-            / ABREAST
-            * (
-                lanes * iterate_cost(circuit.topology, len(observed.rows))
-                + OF_A_TRIAL * of_trials * iterate_cost(circuit.topology, FEW_ROWS)
-            )
-        )
+            iterates * lanes * iterate_cost(circuit.topology, len(observed.rows))
+            + of_trials * iterate_cost(circuit.topology, FEW_ROWS)
+        ) / ABREAST
     return found
 
 
 def spread_lanes(circuit: Circuit, asks: Sequence[Ask], nominal: Mapping[str, Observed], wanted: int) -> int:
     """How many of the random lanes that are wanted may be drawn: a spread of fewer says so by its wider interval."""
-    screens = {(ask.trial.key, ask.screen): ask.trial.sequence for ask in asks if ask.trial is not None}
+    screens = {(ask.trial.key, ask.screen): ask.trial for ask in asks if ask.trial is not None}
     a_lane = 0.0
     for sequence, observed in nominal.items():
-        looks = OF_A_TRIAL * list(screens.values()).count(sequence) * iterate_cost(circuit.topology, FEW_ROWS)
-        a_lane += _iterates(observed) / ABREAST * (iterate_cost(circuit.topology, len(observed.rows)) + looks)
+        iterates = _iterates(observed)
+        looks = sum(_of_trial(circuit, trial, iterates) for trial in screens.values() if trial.sequence == sequence)
+        looks *= iterate_cost(circuit.topology, FEW_ROWS)
+        a_lane += (iterates * iterate_cost(circuit.topology, len(observed.rows)) + looks) / ABREAST
     return min(wanted, max(LEAST_SPREAD, int(MOST_SPREAD / max(a_lane, 1e-9))))
 
 
@@ -112,6 +116,14 @@ def causes_beyond(
     a_row += OF_A_TRIAL * FULL * iterate_cost(circuit.topology, FEW_ROWS) * trials / ABREAST
     efforts = {sequence: times * _iterates(observed) * a_row for sequence, observed in nominal.items()}
     return _too_large("its causes", f"{changes} changes in {times} combinations", circuit, efforts, nominal)
+
+
+def _of_trial(circuit: Circuit, trial: Trial, iterates: float) -> float:
+    """Iterates of a trial's lane, of a sequence that takes ``iterates``: where that oscillates for long, no more
+    than fall to the time that the trial lasts."""
+    before = min(iterates, HARDER * ITERATES * LINGERS)
+    share = min(1.0, float(np.max(trial.ends)) / read(circuit.design.sequences[trial.sequence].ends, "s"))
+    return OF_A_TRIAL * (before + (iterates - before) * share)
 
 
 def _iterates(observed: Observed) -> float:
