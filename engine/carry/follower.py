@@ -33,6 +33,8 @@ GIVE_UP = 12  # strides in turn that were taken back
 BUSY = 4  # times the usual steps, behind a stride
 BOWS = 3e-3  # by which the course of an integral may differ from the straight one
 STILL = 1.3  # periods, within which the last one must have ended
+SHORTEN = 0.8  # of a stride that was too long
+CLOSE = 3.0  # shortest strides before what one went beyond, that are stepped
 WORTH = 0.2  # of the tolerance, which is mended even where no stride follows
 MORE, LONGER_WORK = 4.0, 3.0  # times the bounds of steps and of work, for a lane that is seen to oscillate
 ITERATES = 2.5  # a step, at most usually
@@ -220,7 +222,10 @@ class Follower:
         wanted = FIRST_STRIDE * self.wanted * length if self.length is None else self.length
         wanted = min(max(wanted, self._least(regime.period) + 0.5 * length), regime.rows.reach)
         if self.wall > here:
-            wanted = min(wanted, 0.5 * (self.wall - here))
+            # Near to it there is less to be gained than may have to be taken back.
+            wanted = (
+                0.0 if self.wall - here < CLOSE * self._least(regime.period) else min(wanted, 0.5 * (self.wall - here))
+            )
         due = work.guarding.due[w]
         later = due[(due > here + 2.0 * length) & np.isfinite(due)]
         ends = here + float(work.columns.clock[SPAN, w] - work.columns.clock[NOW, w])
@@ -308,7 +313,8 @@ class Follower:
         rows = noted(column, time, trail, period)
         bows = 0.0 if rows is None else bent(column, venture.rows, rows, stride.begin, landed)
         if not verdict.stands or bows > BOWS or (rows is None and not column.stopped):
-            return self._take_back(column, venture, min(0.5, verdict.factor))
+            factor = min(verdict.factor, SHORTEN if verdict.alike else 0.5)
+            return self._take_back(column, venture, factor, beyond=not verdict.alike)
         self.venture = None
         column.work.columns.clock[HELD, column.w] = 0.0
         rises = period.together
@@ -328,19 +334,20 @@ class Follower:
         self.earlier, self.regime = stride.before, Regime(period, after, rows)
         return self._plan(column, self.regime, time)
 
-    def _take_back(self, column: Column, venture: Venture, factor: float = 0.5) -> bool:
-        """Go back to before the stride, and try a shorter one."""
+    def _take_back(self, column: Column, venture: Venture, factor: float = 0.5, beyond: bool = True) -> bool:
+        """Go back to before the stride, and try a shorter one. ``beyond``: it landed where things are otherwise."""
         assert self.regime is not None
         period, stride = self.regime.period, venture.stride
         put_back(column, venture.snapshot)
         self.venture = None
         self.carried.taken_back[self.lane] += 1
-        self.wall = stride.begin + stride.seconds
+        if beyond:
+            self.wall = stride.begin + stride.seconds
         self.length = max(factor * stride.seconds, self._least(period))
         self.in_vain += 1
         if self.in_vain >= GIVE_UP:
             return self._rest(column)
-        if 0.5 * stride.seconds >= self._least(period):
+        if self.length > self._least(period):
             # The drift before it is still known: only how far it may be trusted is not.
             self._time, self._trail = venture.time, venture.trail
             column.results.trace_used[column.w] = 0

@@ -160,10 +160,11 @@ class Stride:
 
 @dataclass(frozen=True)
 class Judgement:
-    """What the periods behind a stride say of it: whether it stands, what is to be added to the quantities, and by how
-    much longer the next one may be."""
+    """What the periods behind a stride say of it: whether it stands, or is only too long (``alike``: the oscillation is
+    where it should be); what is to be added to the quantities, and by how much longer the next one may be."""
 
     stands: bool
+    alike: bool
     missed: Floats
     factor: float
 
@@ -276,4 +277,4 @@ def judged(followed: Quantities, stride: Stride, after: Drift, tolerance: Floats
         astray = np.abs(other - one - 0.5 * (slope + later) * span)
         well = well and bool(np.all(astray <= 2.0 * loose + (0.5 * np.abs(later - slope) + CERTAIN * doubt) * span))
     factor = LONGER if error <= 0.0 else float(np.clip(SAFE * error ** (-1.0 / 3.0), SHORTER, LONGER))
-    return Judgement(well and error <= 1.0, missed, factor)
+    return Judgement(well and error <= 1.0, well, missed, factor)
