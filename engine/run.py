@@ -9,14 +9,16 @@ from __future__ import annotations
 import os
 from collections.abc import Callable, Sequence
 from concurrent.futures import FIRST_COMPLETED, ThreadPoolExecutor, wait
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cache
 
 import numpy as np
 from numpy.typing import NDArray
 
 from .carry.carried import Carried
-from .carry.carrier import LINGERS, Carrier
+from .carry.carrier import LINGERS, Carrier, with_room
+from .carry.carrier import keep as keep_steps
+from .carry.kept import Kept
 from .circuit.circuit import Circuit
 from .circuit.cost import iterate_cost
 from .errors import Cancelled
@@ -149,6 +151,16 @@ def control(circuit: Circuit, relative: float = RELATIVE, rows: int = 0) -> Cont
     return Control(rtol, atol, ints(bounds))
 
 
+def _traced(results: Results, kept: Kept, n_all: int) -> Results:
+    """Results of a lane alone with all its steps that were kept."""
+    keep_steps(kept, results, 0, n_all)
+    return results._replace(
+        trace_time=np.concatenate(kept.time)[None],
+        trace_value=np.concatenate(kept.states)[None],
+        trace_used=ints([kept.count]),
+    )
+
+
 @cache
 def _pool(workers: int) -> ThreadPoolExecutor:
     """The threads that all runs share: starting some for each run took longer than a short one."""
@@ -167,6 +179,7 @@ def run(
     keep: Sequence[Row] = (),
     relative: float = RELATIVE,
     trace: int = 0,
+    carry: bool | None = None,
     threads: int | None = None,
     progress: Callable[[int, int], None] = silent,
     cancelled: Callable[[], bool] = never,
@@ -176,7 +189,10 @@ def run(
     ``start`` (lanes, n_all) are the voltages before t = 0, all zero by default; ``table`` is ``circuit.table(lanes)``
     where that is at hand; ``stop`` ends a lane once it is seen;
     ``keep`` are rows at which the state is kept;
-    ``trace`` keeps so many points of the only lane; ``relative`` scales all tolerances. Raises Cancelled.
+    ``trace`` keeps so many points of the only lane; ``carry`` says whether lanes that oscillate steadily may be carried
+    forward, which those that are traced are not unless it is said; ``relative`` scales all tolerances.
+
+    Raises Cancelled.
     """
     asked = RowTable(circuit)
     for row in (*rows, *keep, *(() if stop is None else (stop,))):
@@ -200,14 +216,19 @@ def run(
     starts = layout.zeros(count, n_all) if start is None else np.ascontiguousarray(start)
     laws = circuit.table(lanes) if table is None else table
     bounds = control(circuit, relative, len(asked.places))
-    if trace > 0:
+    carries = trace == 0 if carry is None else carry
+    if not carries:
         bounds.bounds[4] = NEVER
+    kept = Kept(trace) if trace > 0 and carries else None
+    if kept is not None:
+        results = with_room(results, n_all, made.signal.size - 1, made.lasting.size)
+        results.trace_used[:] = 0
     arguments = (circuit.topology, laws, starts, program, made, bounds, results)
     carried = Carried.none(count)
 
     def some(low: int, high: int) -> None:
-        carrier = Carrier(circuit.topology, program, made, bounds, carried)
-        march(*arguments, low, high, cancel, go_on=end_traced if trace > 0 else carrier.go_on)
+        carrier = Carrier(circuit.topology, program, made, bounds, carried, kept)
+        march(*arguments, low, high, cancel, go_on=carrier.go_on if carries else end_traced)
 
     cancel = np.zeros(1, dtype=np.uint8)
     workers = threads or os.cpu_count() or 1
@@ -219,6 +240,9 @@ def run(
                 raise Cancelled("stopped")
             some(low, min(low + block, count))
             progress(min(low + block, count), count)
+        if kept is not None:
+            results = _traced(results, kept, n_all)
+            carried = replace(carried, gaps=tuple(kept.gaps))
         return Observed(circuit, asked.places, results, tuple(keep), carried)
     waiting = {_pool(workers).submit(some, low, min(low + block, count)) for low in range(0, count, block)}
     blocks = len(waiting)

@@ -13,7 +13,8 @@ from ..kernel.layout import Floats, Ints
 @dataclass(frozen=True)
 class Carried:
     """How far lanes were carried, one entry per lane: over how many periods and seconds, in how many strides, how many
-    more were taken back; how fast the last of them oscillated, and near which unknown (-1: none)."""
+    more were taken back; how fast the last of them oscillated, and near which unknown (-1: none). ``gaps`` are the
+    strides of a lane that was traced, in s."""
 
     periods: Floats
     seconds: Floats
@@ -21,6 +22,7 @@ class Carried:
     taken_back: Floats
     hertz: Floats
     net: Ints
+    gaps: tuple[tuple[float, float], ...] = ()
 
     @classmethod
     def none(cls, count: int) -> Carried:

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from ..kernel.layout import SEEN, Floats, Program, Results, Rows
 from ..kernel.outcome import GLANCES
 from ..kernel.work import AH, BASE, GLANCE, GOES_ON, HELD, LOST, MOST, NOW, PAUSE, PAUSE_AT, ROUND, Work
+from .kept import Kept
 
 STATE = {
     "columns": ("clock",),
@@ -36,6 +37,11 @@ class Column:
     results: Results
     program: Program
     rows: Rows
+    kept: Kept | None = None
+
+    def unwatched(self) -> None:
+        """Nothing more is kept of it, unless it is traced."""
+        self.results.trace_used[self.w] = -1 if self.kept is None else 0
 
     @property
     def lane(self) -> int:

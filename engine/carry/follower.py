@@ -60,6 +60,7 @@ class Venture:
     time: list[Floats]
     trail: list[Floats]
     steps: int
+    pieces: int  # of what is kept of a traced lane
     prolonged: bool = False
 
 
@@ -110,9 +111,15 @@ class Follower:
     def give_up(self, column: Column) -> None:
         """Follow the lane no further for now, from where it stood before a stride that is not judged yet."""
         if self.venture is not None:
-            put_back(column, self.venture.snapshot)
-            self.venture = None
+            self._put_back(column, self.venture)
         self._rest(column)
+
+    def _put_back(self, column: Column, venture: Venture) -> None:
+        put_back(column, venture.snapshot)
+        if column.kept is not None:
+            column.kept.back_to(venture.pieces)
+        column.results.trace_used[column.w] = 0
+        self.venture = None
 
     def watch(self, column: Column, until: float = math.inf) -> None:
         """Run on plainly, all steps kept from here on."""
@@ -138,7 +145,7 @@ class Follower:
 
     def _rest(self, column: Column) -> bool:
         """Nothing is to be gained here: run on plainly, for as many steps again as were taken."""
-        column.results.trace_used[column.w] = -1
+        column.unwatched()
         go_on(column, steps=2.0 * column.steps)
         self.segment = -1
         return True
@@ -275,7 +282,9 @@ class Follower:
         tolerance = self.quantities.tolerance(drifting.mean)
         change = change_of(self.quantities, drifting, tolerance, self.earlier, here, seconds)
         stride = Stride(here, seconds, periods, change, drifting, self._foresees(drifting, seconds))
-        self.venture = Venture(stride, rows, snapshot, self._time, self._trail, column.steps)
+        self.venture = Venture(stride, rows, snapshot, self._time, self._trail, column.steps, 0)
+        if column.kept is not None:
+            self.venture.pieces = len(column.kept.time)
         note_stride(column, rows, seconds, periods)
         # Where it lands amid something quick it may not get there.
         usual = int(np.count_nonzero(time >= time[-1] - period.length))
@@ -317,6 +326,8 @@ class Follower:
             return self._take_back(column, venture, factor, beyond=not verdict.alike)
         self.venture = None
         column.work.columns.clock[HELD, column.w] = 0.0
+        if column.kept is not None:
+            column.kept.gaps.append((stride.begin, landed))
         rises = period.together
         self.carried.tally(self.lane, rises * stride.periods, stride.seconds, rises / period.length, period.net)
         if rows is None or column.stopped:
@@ -338,8 +349,7 @@ class Follower:
         """Go back to before the stride, and try a shorter one. ``beyond``: it landed where things are otherwise."""
         assert self.regime is not None
         period, stride = self.regime.period, venture.stride
-        put_back(column, venture.snapshot)
-        self.venture = None
+        self._put_back(column, venture)
         self.carried.taken_back[self.lane] += 1
         if beyond:
             self.wall = stride.begin + stride.seconds

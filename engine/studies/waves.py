@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -18,6 +18,7 @@ from .diagnosis import diagnosed
 from .sequences import program_of, starts_of
 
 FIRST_POINTS, MOST_POINTS = 4096, 4_000_000
+REPEATED, MOST_COPIES = 500, 40  # steps before a gap, and how often they are drawn in it
 
 
 @dataclass(frozen=True)
@@ -27,6 +28,30 @@ class Waves:
     time: Floats
     nets: tuple[str, ...]
     values: Floats
+    gaps: tuple[tuple[float, float], ...] = ()
+    """From when to when an oscillation was carried forward; between there are no times."""
+    carried: str | None = None
+    """The same in words."""
+
+    def filled(self) -> Waves:
+        """The same for a picture: where an oscillation was carried forward its last steps before the gap are repeated
+        in it, drawn out where they are too short, on the way to where it goes on behind the gap."""
+        times, values = [self.time], [self.values]
+        for begin, end in self.gaps:
+            last, next_ = int(np.searchsorted(self.time, begin, side="right")), int(np.searchsorted(self.time, end))
+            first = max(0, last - REPEATED)
+            if next_ >= len(self.time) or last - first < 2:
+                continue
+            # Repeated as it is, or drawn out where that would be too many points.
+            copies = int(np.clip((end - begin) / max(begin - self.time[first], 1e-300), 1, MOST_COPIES))
+            share = (self.time[first:last] - self.time[first]) / (self.time[last - 1] - self.time[first])
+            all_shares = ((np.arange(copies)[:, None] + 0.999 * share) / copies).ravel()
+            drift = self.values[next_] - self.values[last - 1]
+            times.append(begin + (end - begin) * all_shares)
+            values.append(np.tile(self.values[first:last], (copies, 1)) + all_shares[:, None] * drift)
+        time = np.concatenate(times)
+        order = np.argsort(time, kind="stable")
+        return replace(self, time=time[order], values=np.ascontiguousarray(np.concatenate(values)[order]), gaps=())
 
 
 def waves(
@@ -52,14 +77,18 @@ def waves(
     lanes = circuit.nominal()
     _, program = program_of(circuit, lanes, sequence, stops)
     starts = starts_of(circuit, sequence, program)
-    points = FIRST_POINTS
+    points, carry = FIRST_POINTS, False
     while True:
         observed = run(
-            circuit, lanes, program, (), start=starts, relative=relative, trace=points, cancelled=cancelled
+            circuit, lanes, program, (), start=starts, relative=relative, trace=points, carry=carry, cancelled=cancelled
         )  # fmt: skip
-        if int(observed.results.ended[0, 0]) != layout.TRACE_FULL or points >= MOST_POINTS:
+        how = int(observed.results.ended[0, 0])
+        if how == layout.OVERWORKED and not carry:
+            carry = True
+        elif how != layout.TRACE_FULL or points >= MOST_POINTS:
             break
-        points *= 8
+        else:
+            points *= 8
     failure = diagnosed(observed, lanes, sequence, 0)
     if failure is not None:
         raise CircuitError(f"sequence '{sequence}': {failure}")
@@ -72,7 +101,8 @@ def waves(
         index = np.array([int(np.argmin(np.abs(time - t))) for t in stops])
         order = [index[int(np.searchsorted(stops, t))] for t in at or ()]
         time, values = np.array(at, dtype=float), values[order]
-    return Waves(time.copy(), wanted, np.ascontiguousarray(values))
+    carried = observed.carried
+    return Waves(time.copy(), wanted, np.ascontiguousarray(values), carried.gaps, observed.carried_forward(0))
 
 
 def check_question(circuit: Circuit, sequence: str, nets: Sequence[str], at: Sequence[float] | None) -> None:

@@ -133,9 +133,9 @@ class WavesScreen(Page[None]):
     def on_answered(self, event: Answered) -> None:
         """The run is known."""
         if event.request == self._request:
-            self._waves = cast("Waves", event.found)
+            self._waves = cast("Waves", event.found).filled()
             self._nets = [net for net in self._nets if net in self._waves.nets] or list(self._waves.nets[:4])
-            self._progress = ""
+            self._progress = "" if self._waves.carried is None else "~ some periods are drawn like those before"
             self._show()
 
     def on_answer_refused(self, event: AnswerRefused) -> None:

@@ -13,6 +13,7 @@ from stagebook.engine.studies.waves import waves
 
 from ..checks.sheets import design
 from ..circuits import Json, capacitor, resistor, two
+from .test_diagnosis import flasher
 
 ROUGH = 9e-3  # V, a thousandth of 9 V: the customary tolerance
 TAU = 0.1  # s, 100k and 1 uF
@@ -114,3 +115,21 @@ def test_a_long_trace_is_kept_whole(monkeypatch: pytest.MonkeyPatch) -> None:
 def test_what_cannot_be_is_refused(arguments: Json, says: str) -> None:
     with pytest.raises(CircuitError, match=says):
         waves(charging(), **arguments)
+
+
+def test_waves_of_what_oscillates_too_long_are_drawn_with_gaps() -> None:
+    """An astable of 44 kHz for 10 s: 460,000 periods, most of them carried forward."""
+    found = waves(flasher(10.0), nets=["c1", "b1"])
+    assert found.carried is not None
+    assert len(found.gaps) > 3
+    assert found.time[-1] == pytest.approx(10.0)
+    assert np.all(np.diff(found.time) >= 0.0)
+    for begin, end in found.gaps:
+        assert not np.any((found.time > begin + 1e-9) & (found.time < end - 1e-9))
+    drawn = found.filled()
+    assert np.all(np.diff(drawn.time) >= 0.0)
+    assert drawn.gaps == ()
+    for begin, end in found.gaps:
+        within = (drawn.time > begin) & (drawn.time < end)
+        # In each gap it swings as it does beside it.
+        assert np.ptp(drawn.values[within, 0]) == pytest.approx(np.ptp(found.values[:, 0]), rel=0.1)
