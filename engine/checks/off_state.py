@@ -41,6 +41,9 @@ def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
     if bench.leakage is None:
         return unknown(check, stage.name, part.ref, sequence, required, f"i_cbo of {part.ref}")
     resistor = view.base_emitter_resistor(stage, role)
+    followed = any(
+        each.pins["emitter"] == part.pins["base"] for _, each in view.parts_of("npn", "pnp") if each.ref != part.ref
+    )
     leaking = (part, *_leaking_into(view, part, resistor))
     # A collector that stands no higher than its base lets nothing through.
     open_ = tuple(
@@ -63,6 +66,8 @@ def _ask(check: Check, view: View, stage: Stage, role: str, part: Part) -> Ask:
         apart = ""
         if hand is None:
             apart = "its base is held off by another transistor" if rests else "no base-emitter resistor in its role"
+        elif followed:
+            apart = "the emitter of another transistor feeds its base, with more than leakage"
         return ratio(np.maximum(0.0, seen.value(across, sequence)), allowed, hand=hand, apart=apart)
 
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows=(across, *open_))

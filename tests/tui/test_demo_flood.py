@@ -6,8 +6,14 @@ from pathlib import Path
 
 import pytest
 
+from stagebook.engine.circuit.circuit import build
+from stagebook.engine.design.document import Design
+from stagebook.engine.primitives.signals import Anchor, crossing, voltage
 from stagebook.engine.results import ENGINE, CheckResult, Depth, MarginSheet, Verdict
+from stagebook.engine.run import run
+from stagebook.engine.studies.lanes import lanes_of, settings
 from stagebook.engine.studies.margins import study
+from stagebook.engine.studies.sequences import program_of, starts_of
 from stagebook.storage import Store
 from stagebook.tui.demo import DEMOS, put_on_shelf
 from stagebook.tui.demo.flood import FLOOD
@@ -100,6 +106,37 @@ def test_the_notes_tell_what_the_margins_show() -> None:
     # r5: "duration and hold do not move".
     for name in (HOLD, "duration:driver:LS1"):
         assert used(4, name) == pytest.approx(used(3, name), abs=0.02)
+
+
+def test_water_sounds_it_however_slowly_it_rises() -> None:
+    # r5: "Water that takes an hour to rise sounds it in every corner of supply and temperature", and once more after it
+    # has gone; r4 stays silent when it takes a minute.
+    assert sounds(DESIGNS[3], 60.0) == (0, 0)
+    assert sounds(DESIGNS[LAST], 60.0) == (CORNERS, CORNERS)
+    assert sounds(DESIGNS[LAST], 3600.0) == (CORNERS, CORNERS)
+
+
+CORNERS = 72
+"""Combinations of supply, temperature, source, leakage and gain."""
+
+
+def sounds(design: Design, rises: float) -> tuple[int, int]:
+    """In how many corners it sounds as the water rises within so many seconds, and sounds again after it has gone."""
+    document = design.dump()
+    at = 10.0
+    events: list[dict[str, str]] = [{"at": "0 s", "event": "connect supply", "rise": "20 ms"}]
+    for to, rest in (("200k", 200.0), ("10M", 10.0), ("200k", 200.0)):
+        events.append({"at": f"{at} s", "event": "ramp", "part": "B1", "to": to, "for": f"{rises} s"})
+        at += rises + rest
+    document["sequences"]["alarm"] = {"events": events, "ends": f"{at} s"}
+    document["requirements"] = []
+    circuit = build(Design.load(document))
+    lanes = lanes_of(circuit.columns, settings(circuit.columns))
+    _, program = program_of(circuit, lanes, "alarm")
+    once, again = (crossing(voltage("supply", "low"), 3.0, True, Anchor(1.0), nth=n) for n in (1, 2))
+    seen = run(circuit, lanes, program, [once, again], start=starts_of(circuit, "alarm", program))
+    assert lanes.count == CORNERS
+    return int(seen.seen(once).sum()), int(seen.seen(again).sum())
 
 
 def test_on_the_shelf_once(tmp_path: Path) -> None:

@@ -32,6 +32,18 @@ def _add_pnp_capacitor(design: Design) -> Design:
     return edit.with_part(design, "latch", part)
 
 
+def _add_slow_water_resistor(design: Design) -> Design:
+    part = {
+        "ref": "R22",
+        "kind": "resistor",
+        "pins": {"a": "trig", "b": "base"},
+        "value": "10M",
+        "tolerance": "5 %",
+        "rating": "0.25 W",
+    }
+    return edit.with_part(design, "trigger", part)
+
+
 FLOOD = Demo(
     "flood",
     (
@@ -86,14 +98,20 @@ FLOOD = Demo(
         Step(
             Note(
                 "C4 1n across R13: both bases held, immune at any slew in every corner",
-                hypothesis="Q4 needs the same division as Q5.",
-                change="C4 1n added from the supply to the base of Q4",
-                prediction="Immune in every corner; duration and hold do not move.",
-                result="Immune in every corner; every required margin holds.",
-                next="Build three units, measure the duration cold and hot. Not judged here: water that takes a minute"
-                " to rise gives C2 no edge, it stays silent; 10M from the collector of Q3 to the base of Q1 would do.",
+                hypothesis="Q4 needs the same division as Q5. And water that takes a minute to rise gives C2 no edge:"
+                " it stays silent. With what Q3 gives led back to Q1 the amplifier snaps, however slowly water comes.",
+                change="C4 1n added from the supply to the base of Q4; R22 10M from the collector of Q3 to the base of"
+                " Q1",
+                prediction="Immune in every corner; duration and hold do not move. 0.4 uA through R22 into 180k are"
+                " 70 mV: less than the water of the probe moves between dry and wet.",
+                result="Immune in every corner; every required margin holds. Water that takes an hour to rise sounds it"
+                " in every corner of supply and temperature.",
+                next="Build three units, measure the duration cold and hot.",
             ),
-            (("add C4 1n across R13", _add_pnp_capacitor),),
+            (
+                ("add C4 1n across R13", _add_pnp_capacitor),
+                ("add R22 10M from Q3 back to Q1", _add_slow_water_resistor),
+            ),
             parent=4,
         ),
     ),
