@@ -149,25 +149,25 @@ def spread_words(sheet: MarginSheet, lanes: int) -> str:
     return f"computing: {sheet.depth} known"
 
 
-def worse_words(figures: Figures, base: int | None, same: bool) -> tuple[str, str]:
-    """What got worse than the base revision, anywhere in the design, and the tone it is said in.
+def worse_words(figures: Figures, base: str, same: bool) -> tuple[str, str]:
+    """What got worse than in the base revision, or than at first, anywhere in the design, and the tone it is said in.
 
-    Where nothing did, whether all is well: ``same`` tells that the draft is that revision.
+    Where nothing did, whether all is well: ``same`` tells that the draft is that state.
     """
-    if figures.before is None or base is None:
+    if figures.before is None:
         return "", ""
     if figures.worst is None or figures.worst_old:
-        return f"~ compared with r{base}: being computed", "dim"
+        return f"~ compared with {base}: being computed", "dim"
     rows = figures.rows()
     worse = [row for row in rows if row.against.worse]
     if not worse:
         words, tone = standing_words([row.check for row in rows if row.worst_known])
-        return f"{f'the same as r{base}' if same else f'nothing is worse than in r{base}'}; {words}", tone
+        return f"{f'the same as {base}' if same else f'nothing is worse than in {base}'}; {words}", tone
     row = worse[0]
     name = check_name(row.check)
     change = "" if row.against.change is None else f" {points(row.against.change)}"
     more = f", {len(worse) - 1} more" if len(worse) > 1 else ""
-    return f"worse than r{base}: {name}{change} ({row.check.stage}){more}", "fail"
+    return f"worse than {base}: {name}{change} ({row.check.stage}){more}", "fail"
 
 
 def standing_words(checks: Sequence[CheckResult]) -> tuple[str, str]:

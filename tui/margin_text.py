@@ -44,10 +44,9 @@ _NOMINAL, _WORST, _WAS = 7, 7, 5
 _CORNER_FROM = 40
 
 
-def margin_heading(width: int, all_stages: bool, base: int | None) -> Line:
-    """The column heads of the margins."""
+def margin_heading(width: int, all_stages: bool, was: str) -> Line:
+    """The column heads of the margins; ``was`` is what they are compared with."""
     cells = MarginColumns.for_width(width)
-    was = "-" if base is None else f"r{base}"
     name = "all margins" if all_stages else "margins"
     texts = [fit(name, cells.title), fit_right("nominal", _NOMINAL), fit_right("worst", _WORST), fit_right(was, _WAS)]
     if cells.difference:

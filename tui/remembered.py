@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import OrderedDict
 from collections.abc import Callable, Mapping
 
+from ..engine.design.document import Design
 from ..engine.results import Depth, MarginSheet
 from .note_keeping import NoteKeeping
 
@@ -18,7 +19,8 @@ class Remembered:
     ``told`` are the cautions told already; ``notes`` what was written for a revision that was not saved, by design,
     which ``keeping`` keeps on the disk too;
     ``frozen`` the designs whose figures are held back until a prediction is written; ``hands`` where the hand lay:
-    the place of the stage, and the part.
+    the place of the stage, and the part; ``begun`` what a design without a revision was when its worst corners were
+    first known.
     """
 
     def __init__(self, keep: Callable[[str, Mapping[str, str]], None] | None = None) -> None:
@@ -28,6 +30,7 @@ class Remembered:
         self.keeping = NoteKeeping(keep or (lambda design, written: None))
         self.frozen: set[str] = set()
         self.hands: dict[str, tuple[int, str | None]] = {}
+        self.begun: dict[str, tuple[Design, MarginSheet]] = {}
         self._sheets: OrderedDict[str, MarginSheet] = OrderedDict()
 
     def notes_of(self, design: str, kept: Callable[[], dict[str, str]]) -> dict[str, str]:

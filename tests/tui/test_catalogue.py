@@ -9,6 +9,7 @@ from stagebook.engine.stages import stage_kinds
 from stagebook.engine.stages.modified import is_modified
 from stagebook.storage import Store
 from stagebook.tui.screens.bench import BenchScreen
+from stagebook.tui.screens.compare import CompareScreen
 from stagebook.tui.screens.dialog import Form, Pick
 from stagebook.tui.screens.new_design import NewDesignPage
 from stagebook.tui.screens.shelf import ShelfScreen
@@ -191,6 +192,20 @@ async def test_what_an_added_stage_makes_of_the_others_can_be_read(store: Store,
         await until(pilot, lambda: isinstance(pilot.app.screen, StagePage))
         assert "! will not hold" in seen(pilot)
         assert "an inrush of 700 mA is more than" in " ".join(seen(pilot).split())
+
+
+async def test_before_the_first_save_a_draft_is_compared_with_what_it_was(store: Store, solver: Solver) -> None:
+    app = StagebookApp(store, solver)
+    async with app.run_test(size=SIZE) as pilot:
+        await made(pilot)
+        await until(pilot, lambda: " start" in seen(pilot))
+        assert "the same as start" in seen(pilot)
+        await pilot.press("down", "full_stop")
+        await settled(pilot)
+        await until(pilot, lambda: "than in start" in seen(pilot) or "worse than start" in seen(pilot))
+        await pilot.press("c")
+        await until(pilot, lambda: isinstance(pilot.app.screen, CompareScreen))
+        assert {"start", "draft"} <= set(seen(pilot).split())
 
 
 async def test_cautions_are_told_once(store: Store, solver: Solver) -> None:

@@ -66,7 +66,7 @@ def test_a_corner_that_does_not_fit_begins_with_conditions_and_counts_the_rest()
 
 def standing(*margins: float | None, same: bool = False) -> str:
     of = sheet(*(check(f"hold:timer:R{at}", margin) for at, margin in enumerate(margins)))
-    return worse_words(Figures(nominal=of, worst=of, before=of, nominal_old=False, worst_old=False), 6, same)[0]
+    return worse_words(Figures(nominal=of, worst=of, before=of, nominal_old=False, worst_old=False), "r6", same)[0]
 
 
 def test_nothing_worse_is_not_said_without_how_the_design_stands() -> None:

@@ -10,12 +10,14 @@ from difflib import get_close_matches
 
 from ...engine.results import CheckResult, MarginSheet, Verdict, explaining_first
 from ..origin_text import left_out
-from ..shown import MARKS, counted, percent, visible
+from ..shown import MARKS, counted, figure, percent, visible
 from .printing import json_argument, print_json, print_pairs, print_table, print_words
 from .refusal import CommandRefused
 from .waiting import computable, prepare_solver, progress
 from .what import Subject, find, subject_arguments
 
+_OUTCOME = 6
+"""Signs for a word of what happened instead of a figure: the whole of it stands beside."""
 MOST_LANES = 100_000
 LANES = 1000
 
@@ -131,7 +133,7 @@ def _cells(check: CheckResult, spread: bool) -> tuple[str, ...]:
     passing = (f"{check.spread.passing * 100:.1f}",) if check.spread else ("",)
     return (
         f"{MARKS[check.verdict]} {check.verdict}",
-        percent(check.margin),
+        figure(check.margin, check.outcome, _OUTCOME),
         f"{check.required * 100:.0f}",
         percent(check.nominal),
         *(passing if spread else ()),

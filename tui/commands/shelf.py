@@ -5,7 +5,7 @@ from __future__ import annotations
 from argparse import ArgumentParser, Namespace
 from typing import TYPE_CHECKING, Any
 
-from ..shown import percent
+from ..shown import figure
 from .printing import json_argument, line_width, print_json, print_table, print_words
 from .what import open_store, shelf_arguments
 
@@ -13,6 +13,8 @@ if TYPE_CHECKING:
     from ...storage import DesignRow
 
 _BROAD = 100
+_OUTCOME = 9
+"""Signs for the words of what happened instead of a figure."""
 
 
 def arguments(parser: ArgumentParser) -> None:
@@ -47,5 +49,8 @@ def _entry(row: DesignRow) -> dict[str, Any]:
 def _cells(row: DesignRow) -> tuple[str, ...]:
     # On a narrow line ids need the room of the time of day.
     saved = row.saved[: 16 if line_width() >= _BROAD else 10].replace("T", " ") if row.saved else "never"
-    worst = (percent(row.worst.margin), str(row.worst.verdict), row.worst.id) if row.worst else ("", "", "")
+    worst = ("", "", "")
+    if row.worst is not None:
+        shown = figure(row.worst.margin, row.worst.outcome, _OUTCOME)
+        worst = (shown, str(row.worst.verdict), row.worst.id)
     return (row.name, str(row.revisions), str(row.edits_pending), saved, *worst)

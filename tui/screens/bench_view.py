@@ -30,6 +30,8 @@ from .page import Page
 
 _ON_MARGINS = {"change": "origin", "edit": "required"}
 NO_REQUEST = -1
+BEGUN = "start"
+"""What a design without a revision is compared with: its state as its worst corners were first known."""
 """What no message of a study answers."""
 
 
@@ -79,7 +81,8 @@ class BenchView(Page[None]):
         """Takes the draft as it stands in the store: at first, and after it went on from another revision."""
         base = self.drafting.base
         known = None if base is None or incomplete(base.sheet) else base.sheet
-        self.figures = Figures(nominal=known, worst=known, before=known)
+        begun = self.remembered.begun.get(self.drafting.name) if base is None else None
+        self.figures = Figures(nominal=known, worst=known, before=known if begun is None else begun[1])
         if self.drafting.name in self.remembered.frozen:
             self.figures = self.figures.freeze()
         self.study()
@@ -125,12 +128,33 @@ class BenchView(Page[None]):
         key = self.margins.key
         return next((row for row in self.figures.rows() if row.check.id == key), None)
 
+    @property
+    def reference(self) -> str:
+        """What the figures are compared with: the revision the draft began from, or its state in :data:`BEGUN`."""
+        base = self.drafting.draft.base_revision
+        return f"r{base}" if base is not None else BEGUN if self.figures.before is not None else "-"
+
+    @property
+    def _as_reference(self) -> bool:
+        """Whether the draft is what it is compared with."""
+        begun = self.remembered.begun.get(self.drafting.name)
+        if self.drafting.draft.base_revision is None and begun is not None:
+            return begun[0].content == self.design.content
+        return not self.drafting.changes()
+
+    def _begins(self, sheet: MarginSheet) -> None:
+        """Worst corners of a design without a revision: the first of them are what later ones are compared with."""
+        if self.drafting.draft.base_revision is not None or sheet.depth is Depth.NOMINAL or self.figures.frozen:
+            return
+        self.remembered.begun.setdefault(self.drafting.name, (self.design, sheet))
+        self.figures = self.figures.compared_with(self.remembered.begun[self.drafting.name][1])
+
     # -- showing
 
     def show(self, ref: str | None = None) -> None:
         """Shows everything; the hand goes to the part ``ref``, or stays."""
         self._stage = max(0, min(self._stage, len(self.design.stages) - 1))
-        stage, base = self.stage, self.drafting.draft.base_revision
+        stage = self.stage
         everywhere = self.has_class("-all")
         self.show_heading()
         self.query_one(Chain).show_chain(links(self.design, self.figures), self._stage)
@@ -141,8 +165,10 @@ class BenchView(Page[None]):
         # The hand stays on a margin that was chosen; else it lies on the first, where what got worse stands.
         names = [row.check.id for row in found]
         watched = self._watched if self._watched in names else next(iter(names), None)
-        self.margins.show(margin_rows(found, width, everywhere), margin_heading(width, everywhere, base), watched)
-        worse = worse_words(self.figures, base, not self.drafting.changes())
+        self.margins.show(
+            margin_rows(found, width, everywhere), margin_heading(width, everywhere, self.reference), watched
+        )
+        worse = worse_words(self.figures, self.reference, self._as_reference)
         self.query_one("#worse", Rule).say(*(("cannot be computed: w says why", "fail") if self.trouble else worse))
         self._show_hand()
 
@@ -198,6 +224,7 @@ class BenchView(Page[None]):
             known = stored
         if known is not None:
             self.figures = self.figures.arrived(known)
+            self._begins(known)
         computed = known is not None and known is self.remembered.sheet(self.design.content)
         # Of this sitting it has as many lanes as could be had: in a large design fewer than are asked for.
         if known is not None and (known.lanes >= self.computing.lanes or (computed and known.depth is Depth.SPREAD)):
@@ -217,6 +244,7 @@ class BenchView(Page[None]):
             self.figures = self.figures.arrived(event.sheet)
             self._progress = spread_words(event.sheet, self.computing.lanes)
             self._lanes_of = "corners" if event.sheet.depth is Depth.NOMINAL else "spread"
+            self._begins(event.sheet)
             self.show()
             self.sheet_known(event.sheet)
 

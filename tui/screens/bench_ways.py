@@ -8,7 +8,7 @@ from ..computing import Computing
 from ..drafting import Drafting
 from ..figures import FigureRow
 from ..remembered import Remembered
-from .bench_view import BenchView
+from .bench_view import BEGUN, BenchView
 from .compare import CompareScreen
 from .faults import FaultsScreen
 from .history import HistoryScreen
@@ -40,11 +40,20 @@ class BenchWays(BenchView):
     def _origin_of(self, row: FigureRow) -> OriginPage:
         return OriginPage(row.check, row.worst_known, self.drafting.name, self.design, self.computing)
 
+    @property
+    def _compared_with(self) -> Side | None:
+        """The revision that the draft began from; of a design without one its state as its worst corners were first
+        known."""
+        base, begun = self.drafting.base, self.remembered.begun.get(self.drafting.name)
+        if base is not None:
+            return Side(f"r{base.number}", base.sheet, base.design)
+        return None if begun is None else Side(BEGUN, begun[1], begun[0])
+
     def action_compare(self) -> None:
-        """The draft beside the revision it began from."""
-        base, sheet = self.drafting.base, self.figures.newest
+        """The draft beside the revision it began from, or before there is one beside what it was at first."""
+        base, sheet = self._compared_with, self.figures.newest
         if base is None:
-            self.refuse("nothing to compare with yet; s saves the first revision")
+            self.refuse("nothing to compare with until the worst corners are known, or s has saved the first revision")
         elif self.figures.frozen:
             self.refuse("the figures are held back; f shows them first")
         elif self.trouble:
@@ -54,10 +63,10 @@ class BenchWays(BenchView):
             self.say("no longer waiting to compare")
         elif sheet is None or sheet.depth is Depth.NOMINAL:
             self._compare_waits = True
-            self.say(f"compared with r{base.number} as soon as the corners are known; c again gives it up")
+            self.say(f"compared with {base.label} as soon as the corners are known; c again gives it up")
         else:
             self._compare_waits = False
-            sides = [Side(f"r{base.number}", base.sheet, base.design), Side("draft", sheet, self.design)]
+            sides = [base, Side("draft", sheet, self.design)]
             self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
 
     def action_waves(self) -> None:
