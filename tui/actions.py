@@ -72,6 +72,7 @@ ACTIONS: tuple[Action, ...] = (
     Action(
         "bench", "immunity", "I", "I", "immunity", "how little charge trips an alarm, net by net, the weakest first"
     ),
+    Action("bench", "write", "W", "W", "write files", "parts list and margins as CSV files, into a folder you name"),
     Action("bench", "edit", "e", "e", "edit", "another field of the part; on the margins, the required margin", 9),
     Action("bench", "conditions", "d", "d", "conditions", "supply, ambient and source resistance of the design"),
     Action("bench", "requirements", "R", "R", "requirements", "windows, orders, levels: what is wanted of the design"),

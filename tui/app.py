@@ -13,6 +13,7 @@ from typing import Any, NoReturn
 from ..engine.errors import EngineError
 from .commands import COMMANDS, command
 from .commands.refusal import CommandRefused
+from .out_file import FileRefused
 
 DONE, WRONG_INPUT, OWN_FAULT, STOPPED = 0, 2, 3, 130
 """Exit statuses; 1 is left to ``--strict``."""
@@ -50,7 +51,7 @@ def main(arguments: Sequence[str] | None = None) -> int:
         return _refuse(asked, f"the output cannot be written ({error.strerror}); send it elsewhere")
     except KeyboardInterrupt:
         return STOPPED
-    except (EngineError, CommandRefused) as refusal:
+    except (EngineError, CommandRefused, FileRefused) as refusal:
         return _refuse(asked, str(refusal))
     except Exception as fault:
         return _own_fault(asked, fault)

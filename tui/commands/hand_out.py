@@ -7,8 +7,8 @@ import sys
 from argparse import ArgumentParser, Namespace
 from pathlib import Path
 
+from ..out_file import file_name, write_file
 from ..shown import counted, json_text, visible
-from .out_file import file_name, write_file
 from .what import find, subject_arguments
 
 

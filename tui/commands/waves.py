@@ -10,7 +10,7 @@ from argparse import ArgumentParser, ArgumentTypeError, Namespace
 
 from ...engine.errors import QuantityError
 from ...engine.quantity import read
-from .out_file import cell, check_target, write_file
+from ..out_file import cell, check_target, write_file
 from .waiting import prepare_solver
 from .what import Subject, find, subject_arguments
 

@@ -2,14 +2,19 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 from ...engine.results import Depth
 from ...engine.studies.comparison import Side
 from ..computing import Computing
 from ..drafting import Drafting
 from ..figures import FigureRow
+from ..out_file import FileRefused
 from ..remembered import Remembered
+from ..sheet_files import write_sheets
 from .bench_view import BEGUN, BenchView
 from .compare import CompareScreen
+from .dialog import Answers, Field, Form
 from .faults import FaultsScreen
 from .history import HistoryScreen
 from .immunity import ImmunityScreen
@@ -68,6 +73,29 @@ class BenchWays(BenchView):
             self._compare_waits = False
             sides = [base, Side("draft", sheet, self.design)]
             self.app.push_screen(CompareScreen(self.drafting.name, sides, self.computing))
+
+    def action_write(self) -> None:
+        """Parts list and margins as CSV files, into a folder that is asked for."""
+        sheet = None if self.figures.frozen or self.trouble else self.figures.newest
+        if sheet is not None and sheet.depth is Depth.NOMINAL:
+            sheet = None  # a nominal figure never stands where a worst one is read
+        design, written = self.design, list[str]()
+
+        def refusal(answers: Answers) -> str | None:
+            try:
+                written[:] = write_sheets(design, sheet, answers["folder"].strip() or ".")
+            except FileRefused as refused:
+                return str(refused)
+            return None
+
+        def done(answers: Answers | None) -> None:
+            if answers is not None:
+                without = "" if sheet is not None else "; the margins are not known yet"
+                self.say(f"written: {' and '.join(written)}{without}", passing=True)
+
+        hint = "parts list and margins, as CSV files that a spreadsheet opens"
+        field = Field("folder", "folder", str(Path.cwd()), "a folder of yours", hint)
+        self.app.push_screen(Form("Write parts list and margins", [field], refusal), done)
 
     def action_waves(self) -> None:
         """Voltages over time: first of the nets of the part under the hand, then of the loads."""

@@ -23,7 +23,7 @@ from hypothesis import strategies as st
 from stagebook.engine.design.document import Design
 from stagebook.engine.studies.margins import study
 from stagebook.storage import Note, Store
-from stagebook.tui.commands.out_file import cell, file_name
+from stagebook.tui.out_file import cell, file_name
 from stagebook.tui.shown import json_text
 
 Said = tuple[int, str, str]

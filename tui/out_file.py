@@ -1,4 +1,4 @@
-"""Files that commands write: whole or not at all, and never over what must be kept."""
+"""Files that commands and screens write: whole or not at all, and never over what must be kept."""
 
 from __future__ import annotations
 
@@ -7,8 +7,12 @@ import re
 import shutil
 from pathlib import Path
 
-from ..shown import visible
-from .refusal import CommandRefused
+from .shown import visible
+
+
+class FileRefused(Exception):
+    """A file that cannot be written, in one line that says which, why, and what to name instead."""
+
 
 _DATABASE = b"SQLite format 3\0"
 LONGEST_NAME = 100
@@ -79,9 +83,9 @@ def _is_device(named: Path) -> bool:
 def _check_replaceable(path: str, target: Path, source: str | None) -> None:
     with target.open("rb") as file:
         if file.read(len(_DATABASE)) == _DATABASE:
-            raise CommandRefused(f"{path} is a database and stays as it is; name another file to write to")
+            raise FileRefused(f"{path} is a database and stays as it is; name another file to write to")
     if source is not None and Path(source).exists() and target.samefile(source):
-        raise CommandRefused(f"{path} is the design that is read; name another file to write to")
+        raise FileRefused(f"{path} is the design that is read; name another file to write to")
 
 
 def _replace(target: Path, content: bytes) -> None:
@@ -98,6 +102,6 @@ def _replace(target: Path, content: bytes) -> None:
             raise
 
 
-def _refusal(path: str, error: Exception) -> CommandRefused:
+def _refusal(path: str, error: Exception) -> FileRefused:
     reason = getattr(error, "strerror", None) or str(error)
-    return CommandRefused(f"{path!r} cannot be written ({reason}); name a file in a folder of yours")
+    return FileRefused(f"{path!r} cannot be written ({reason}); name a file in a folder of yours")
