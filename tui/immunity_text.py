@@ -14,18 +14,20 @@ _BAR = 12  # cells for a bar on a log scale
 
 
 def charge_words(found: NetImmunity) -> str:
-    """``+22 pC``; ``over 1 uC`` where no charge tried trips an alarm, ``0 C`` where there is one without any."""
+    """``+22 pC``; ``over 1 uC`` where no charge tried trips an alarm, ``by itself`` where there is one without any."""
     if found.charge is None:
         return f"over {write(MOST, 'C')}"
     if found.charge == 0.0:
-        return "0 C"
+        return "by itself"
     digits = float(f"{found.charge:.2g}")
     return ("-" if found.sign == -1 else "+") + write(digits, "C")
 
 
 def where_words(found: NetImmunity) -> str:
     """The corner in which it takes least."""
-    return "nothing trips it, in any corner" if found.charge is None else found.condition
+    if found.charge is None:
+        return "nothing trips it, in any corner"
+    return found.condition if found.charge else f"it alarms without any charge: {found.condition}"
 
 
 def slew_words(sheet: ImmunitySheet) -> str:

@@ -56,7 +56,12 @@ async def test_it_fills_corner_by_corner_and_puts_the_weakest_first(
 
 
 def test_charges_and_bars() -> None:
-    assert [charge_words(found) for found in (BASE, RAIL, NONE, AT_ONCE)] == ["+22 pC", "-240 nC", "over 1 uC", "0 C"]
+    assert [charge_words(found) for found in (BASE, RAIL, NONE, AT_ONCE)] == [
+        "+22 pC",
+        "-240 nC",
+        "over 1 uC",
+        "by itself",
+    ]
     sheet = ImmunitySheet("d", "", 0.0, (AT_ONCE, BASE, RAIL, NONE), None, "immune at any slew, in every corner")
     assert slew_words(sheet) == "immune at any slew, in every corner"
     bars = [plain(row.spans).count("#") for row in immunity_rows(sheet, 78)]
