@@ -42,10 +42,12 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
         missing = "operating_minimum of the part in the role load, whose going off tells when the timer has run out"
         return unknown(check, stage.name, capacitor.ref, sequence, required, missing)
     if requirement is not None and requirement.from_ is not None and requirement.to is not None:
+        begins = view.awaited(requirement.from_, sequence)
         start = view.anchor(requirement.from_, sequence)
         end = view.anchor(requirement.to, sequence, start)
     else:
         assert load is not None
+        begins = f"{load.ref} on"
         start, end = (Anchor(0.0, view.event(f"{load.ref} {change}")) for change in ("on", "off"))
     dropped = _dropped(view, stage)
     reached = maximum(voltage(net), start, end)
@@ -62,7 +64,10 @@ def _ask(check: Check, view: View, stage: Stage, resistor: Part, capacitor: Part
         final_share = 1.0 + seen.lanes[resistor.ref, "value"] * leak
         final = seen.value(rail, sequence) / final_share
         started = np.isfinite(seen.value(rail, sequence))
-        outcomes = [(~started, check.words["never"]), (~np.isfinite(threshold), check.words["late"])]
+        outcomes = [
+            (~started, check.words["never"].format(event=begins)),
+            (~np.isfinite(threshold), check.words["late"]),
+        ]
         hand, apart = None, "the conditions name no supply"
         if SUPPLY in seen.lanes:
             hand, apart = 1.0 - threshold * final_share / (seen.lanes[SUPPLY] - dropped), ""
@@ -96,7 +101,7 @@ CHECKS = (
         accuracy=0.05,
         leaves_out="other drops before it",
         words={
-            "never": "the timer was never started",
+            "never": "'{event}' never happened, after which the timer is looked at",
             "late": "does not run out within the sequence, even without leakage",
         },
     ),

@@ -14,7 +14,7 @@ from ..primitives.columns import Lanes
 from ..primitives.signals import Anchor, Row, level, voltage
 from ..quantity import write
 from .check import Ask, Check, Judged, Mask, ratio, unknown
-from .driven import driven, ends, first_seen, own_current
+from .driven import OVER, driven, ends, first_seen, over, own_current
 from .seen import Seen
 from .view import View, polarity
 
@@ -49,6 +49,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, 
     silent = [row for each in loads if view.bench(each.ref).draw is None for row in own_current(view, each, at)]
     drop = level(voltage(part.pins["collector"], part.pins["emitter"]), at)
     driving = base_drive(view, stage, part, at)
+    telling, gone = over(view, load, at)
 
     def judge(seen: Seen) -> Judged:
         fallen = np.abs(seen.value(drop, sequence))
@@ -63,12 +64,15 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, 
             i_b = driving.current(seen, sequence, wanted)
             hand = 1.0 - wanted / gain / np.where(i_b > 0.0, i_b, np.nan)
         supplied = np.abs(seen.value(base, sequence))
-        words = [(never, check.words["never"].format(load=load.ref))]
+        words = [
+            (never, check.words["never"].format(load=load.ref)),
+            (gone(seen, sequence), OVER.format(load=load.ref)),
+        ]
         judged = ratio(wanted / gain, supplied, words, hand, UNDRIVEN.format(part=part.ref) if hand is None else "")
         return replace(judged, extrapolated=gain_beyond(part, bench, wanted))
 
     required = view.required(check.slug, check.required, requirement)
-    rows = (base, drop, *(row for _, row in told), *silent, *(() if driving is None else (driving.row,)))
+    rows = (base, drop, *telling, *(row for _, row in told), *silent, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 

@@ -11,10 +11,14 @@ from ..design.part import Part, Stage
 from ..kernel.layout import Floats
 from ..primitives.builder import RETURN, SUPPLY_NET
 from ..primitives.columns import Lanes
-from ..primitives.signals import Anchor, Row, level, maximum
+from ..primitives.signals import Anchor, Row, level, maximum, voltage
+from .check import Mask
 from .peak_collector_emitter import MOSFETS
+from .seen import Seen
 from .view import View
 
+OFF = 0.1  # of the voltage at which a load counts as on
+OVER = "{load} is off again when it is looked at: its alarm is shorter than that"
 THROUGH = ("lead", "fuse")  # kinds behind which a net counts as the same
 Draw = Callable[[Lanes, Floats], Floats]
 
@@ -73,6 +77,16 @@ def surged(view: View, loads: Sequence[Part], draw: Callable[[Part], Draw | None
         return total
 
     return amperes
+
+
+def over(view: View, load: Part, at: Anchor) -> tuple[tuple[Row, ...], Callable[[Seen, str], Mask]]:
+    """In which lanes a load that came on is off at the instant at which it is looked at, and the rows that tell."""
+    on = view.bench(load.ref).on
+    if on is None:
+        return (), lambda seen, _sequence: np.zeros(seen.lanes.count, dtype=bool)
+    plus, minus, least = on
+    row = level(voltage(plus, minus), at)
+    return (row,), lambda seen, sequence: seen.seen(row, sequence) & (seen.value(row, sequence) < OFF * least)
 
 
 def ends(view: View, load: Part) -> tuple[str, str]:

@@ -28,16 +28,29 @@ SETTLE = 0.2  # s until the trial looks whether the latch still holds, where the
 DROP = 0.8  # V across a conducting latch, from memory
 RESISTIVE = "its transistors drive each other's base through resistors: what it feeds beside is part of its current"
 BARE = "the roles of both base-emitter resistors of the latch are not filled"
+NEVER_SET = "the latch was never set"
 LEAST_SUPPLY = 0.02  # lowest supply of the trial, as a fraction
+
+
+SET = ("latched", "sounding", "on")
+"""Moments at which a latch is set."""
 
 
 def latched(view: View, stage: Stage, sequence: str) -> Anchor:
     """When the latch is set: a moment of that kind, else soon after the load came on, else in the middle."""
-    start = view.moment(sequence, "latched", "sounding", "on")
+    start = view.moment(sequence, *SET)
     if start is None:
         load = view.load(stage)
         start = Anchor(0.5 * view.ends(sequence)) if load is None else Anchor(1e-2, view.event(f"{load.ref} on"))
     return start
+
+
+def not_set(view: View, stage: Stage, sequence: str) -> str:
+    """What is said where that instant never came: the latch itself may be right, and what tells of it wrong."""
+    load = view.load(stage)
+    named = next((name for name in SET if name in view.design.sequences[sequence].moments), None)
+    event = view.awaited(named, sequence) if named is not None else None if load is None else f"{load.ref} on"
+    return NEVER_SET if event is None else f"'{event}' never happened, after which the latch is looked at"
 
 
 def hold_trial_of(latch: Latch) -> Trial:
@@ -92,6 +105,7 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
     trial = hold_trial_of(latch)
     assert trial.start is not None
     current = level(latch.current, trial.start)
+    missing = not_set(view, stage, sequence)
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)
@@ -102,7 +116,7 @@ def _hold_ask(check: Check, latch: Latch) -> Ask:
         return ratio(
             edge.values[trial.rows[0]],
             carried,
-            [(edge.missing, check.words["missing"]), (edge.always, check.words["always"])],
+            [(edge.missing, missing), (edge.always, check.words["always"])],
             None if holding is None else 1.0 - holding / np.where(carried > 0.0, carried, np.nan),
             BARE if holding is None else "" if coupled(latch) else RESISTIVE,
         )
@@ -166,6 +180,7 @@ def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
     required = view.required(check.slug, check.required, requirement)
     trial = hold_trial_of(latch)
     residual = minimum(latch.current, at, Anchor(at.by + 1e-3, at.row))
+    missing = not_set(view, stage, sequence)
 
     def judge(seen: Seen) -> Judged:
         edge = seen.edges.get(trial.key)
@@ -181,7 +196,7 @@ def _reset_ask(check: Check, latch: Latch, sequence: str, at: Anchor) -> Ask:
             left,
             held,
             [
-                (edge.missing, check.words["missing"]),
+                (edge.missing, missing),
                 (never, check.words["never"]),
                 (left > held, check.words["holds"]),
             ],
@@ -208,7 +223,6 @@ CHECKS = (
         accuracy=0.2,
         leaves_out="gains, other base feeds",
         words={
-            "missing": "the latch was never set",
             "always": "the latch lets go by itself",
         },
     ),
@@ -225,7 +239,6 @@ CHECKS = (
         accuracy=0.1,
         leaves_out="what the reset leaves",
         words={
-            "missing": "the latch was never set",
             "never": "the instant of the reset never came",
             "holds": "did not let go",
         },

@@ -18,7 +18,7 @@ from ..parts.physics import copper_factor
 from ..primitives.columns import SOURCE_RESISTANCE, SUPPLY, Lanes
 from ..primitives.signals import Anchor, level, maximum, voltage
 from .check import Ask, Check, Judged, ratio, unknown
-from .driven import drawn, lifted, together
+from .driven import OFF, OVER, drawn, lifted, together
 from .seen import Seen
 from .view import View
 
@@ -82,10 +82,14 @@ def _on_ask(
         given = seen.value(steady, sequence)
         given = np.where(np.isfinite(given), given, seen.value(most, sequence))
         never = given < REACHED * wanted
-        words = check.words["never"].format(load=load.ref)
+        was = (seen.value(most, sequence) >= REACHED * wanted) & (given < OFF * wanted)
+        words = [
+            (never & was, OVER.format(load=load.ref)),
+            (never & ~was, check.words["never"].format(load=load.ref)),
+        ]
         left = None if fed_otherwise(view, sequence) else left_by_hand(view, stage, load, seen.lanes)
         hand = None if left is None else 1.0 - wanted / np.where(left > 0.0, left, np.nan)
-        return ratio(wanted, given, [(never, words)], hand, FED_OTHERWISE if hand is None else "")
+        return ratio(wanted, given, words, hand, FED_OTHERWISE if hand is None else "")
 
     return Ask(
         check, stage.name, load.ref, (sequence,), required, judge, (steady, most, *(() if warm is None else (warm,)))

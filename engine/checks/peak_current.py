@@ -19,7 +19,7 @@ from ..primitives.columns import SUPPLY, Lanes
 from ..primitives.signals import Anchor, Row, level, maximum, voltage
 from .base_overdrive import SATURATED, UNDRIVEN, base_drive, gain_beyond, guaranteed_gain
 from .check import Ask, Check, Judged, ratio, unknown
-from .driven import driven, ends, first_seen, own_current
+from .driven import OVER, driven, ends, first_seen, over, own_current
 from .peak_collector_emitter import MOSFETS, gate_by_hand, gate_divider
 from .seen import Seen
 from .view import View, polarity
@@ -70,6 +70,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, 
     control = _control(part, bench, at)
     drop, peak = _of_driver(view, part, at)
     across = [level(voltage(*ends(view, each)), at) for each, _ in told]
+    telling, gone = over(view, load, at)
     # What says nothing of its inrush beside what does: the simulation shows it apart.
     silent = [own_current(view, each) for each in loads if told and _inrush(view, each) is None]
     driving = base_drive(view, stage, part, at) if bench.lets_through is None else None
@@ -89,7 +90,10 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, 
             wanted = np.sum(parts, axis=0)
         given = seen.value(control, sequence)
         never = ~seen.seen(control, sequence)
-        words = [(never, check.words["never"].format(load=load.ref))]
+        words = [
+            (never, check.words["never"].format(load=load.ref)),
+            (gone(seen, sequence), OVER.format(load=load.ref)),
+        ]
         if bench.lets_through is not None:
             carried = np.minimum(allowed, bench.lets_through(seen.lanes, given))
             hand = None
@@ -107,7 +111,7 @@ def _ask(check: Check, view: View, stage: Stage, part: Part, loads: tuple[Part, 
         return replace(ratio(wanted, carried, words, hand, apart), extrapolated=gain_beyond(part, bench, wanted))
 
     apart = (row for rows in silent for row in rows)
-    rows = (control, drop, peak, *across, *apart, *(() if driving is None else (driving.row,)))
+    rows = (control, drop, peak, *telling, *across, *apart, *(() if driving is None else (driving.row,)))
     return Ask(check, stage.name, part.ref, (sequence,), required, judge, rows)
 
 

@@ -21,7 +21,7 @@ from .alarm_state import TOLD_BY, WAIT, alarm_states
 from .check import Ask, Check, Judged, Mask, ratio, unknown
 from .contact_events import contacts, states
 from .emptied import Emptied
-from .latch import latched
+from .latch import NEVER_SET, latched, not_set
 from .seen import Seen
 from .trial import Trial
 from .view import View
@@ -54,6 +54,7 @@ def _ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
     active, rest = states(view, sequence, part)
     start = latched(view, stage, sequence)
     last = Anchor(over + settle)
+    missing = not_set(view, stage, sequence)
 
     def drive(line: Timeline, knob: Floats) -> None:
         # Every reset is over at the same instant, so that all are looked at equally soon after.
@@ -88,7 +89,7 @@ def _ask(check: Check, view: View, requirement: Requirement, part: Part) -> Ask:
         return ratio(
             1.0 / edge.knob,
             capability,
-            [(edge.missing | ~was, check.words["missing"]), (edge.always, check.words["always"])],
+            [(edge.missing, missing), (~was, check.words["unset"]), (edge.always, check.words["always"])],
             None if emptied is None else 1.0 - emptied.seconds(seen, sequence) / shortest,
             f"no latch and capacitor that {part.ref} empties, through one resistor at most" if emptied is None else "",
         )
@@ -110,7 +111,7 @@ CHECKS = (
         asks=asks,
         reads={"of": "S2", "min": "50 ms", "settle": "0.1 s"},
         words={
-            "missing": "the latch was never set",
+            "unset": NEVER_SET,
             "always": "did not let go: not by a reset of thirty times that length either",
         },
         worst="high supply, hot",

@@ -22,7 +22,7 @@ from .alarm_state import standby
 from .check import Apart, Ask, Check, Judged, Mask, ratio, unknown
 from .complementary_latch import Latch, latches
 from .driven import drawn, joined, surged, together
-from .latch import hold_trial_of
+from .latch import hold_trial_of, not_set
 from .seen import Seen
 from .view import View
 
@@ -50,6 +50,7 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
         missing = "source_resistance under conditions (0R where there is none)"
         return unknown(check, stage.name, pnp.ref, sequence, required, missing)
     trial = hold_trial_of(latch)
+    missing = not_set(view, stage, sequence)
     # As the supply comes the load may be on for a moment.
     rest = standby(view, sequence)
     on = Anchor(0.0, view.event(f"{load.ref} on", rest))
@@ -75,7 +76,7 @@ def _ask(check: Check, latch: Latch, load: Part) -> Ask:
             return Judged(np.full(seen.lanes.count, np.nan), demand=dip)
         held = _pick(collapsed, *(edge.values[row] for row in trial.rows[-2:]))
         outcomes = [
-            (edge.missing, check.words["missing"]),
+            (edge.missing, missing),
             (edge.always, check.words["always"]),
             (~np.isfinite(dip), check.words["never"]),
         ]
@@ -132,7 +133,6 @@ CHECKS = (
         leaves_out="other drops, capacitors",
         asks=asks,
         words={
-            "missing": "the latch was never set",
             "always": "the latch lets go by itself",
             "never": "the load never came on",
         },

@@ -14,6 +14,7 @@ from ..design.requirement import Requirement
 from ..errors import CircuitError
 from ..primitives.signals import Anchor, level, voltage
 from .check import Ask, Check, Judged, everywhere, unknown
+from .driven import OVER, over
 from .load_voltage import FED_OTHERWISE, fed_otherwise, left_by_hand
 from .seen import Seen
 from .view import View
@@ -57,14 +58,16 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
     volts = view.circuit.builder.supply_nominal if rated is None else rated.typical
     at = view.moment(sequence, "sounding", "on") or Anchor(1e-2, view.event(f"{subject} on"))
     across = level(voltage(on[0], on[1]), at)
+    _, gone = over(view, sounder, at)
 
     def judge(seen: Seen) -> Judged:
         given = seen.value(across, sequence)
         never = ~(given > 0.0)
         with_voltage = 20.0 * np.log10(np.where(never, volts, given) / volts)
         there = loud.low + with_voltage - 20.0 * np.log10(distance)
-        margin = np.where(never, -1.0, (there - wanted) / DECADE)
-        words = check.words["never"].format(sounder=subject)
+        off_again = ~never & gone(seen, sequence)
+        margin = np.where(never | off_again, -1.0, (there - wanted) / DECADE)
+        words = (never, check.words["never"].format(sounder=subject)), (off_again, OVER.format(load=subject))
         left = None if fed_otherwise(view, sequence) else left_by_hand(view, stage, sounder, seen.lanes)
         hand = None
         if left is not None:
@@ -72,7 +75,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
             hand = (by_hand - 20.0 * np.log10(distance) - wanted) / DECADE
         demand = np.full(seen.lanes.count, wanted)
         apart = everywhere(FED_OTHERWISE if hand is None else "")
-        return Judged(margin, demand, there, outcomes=((never, words),), hand=hand, apart=apart)
+        return Judged(margin, demand, there, outcomes=words, hand=hand, apart=apart)
 
     return Ask(check, stage.name, subject, (sequence,), required, judge, (across,))
 

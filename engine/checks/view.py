@@ -243,6 +243,18 @@ class View:
         moments = self.design.sequences[sequence].moments
         return next((self.anchor(name, sequence) for name in names if name in moments), None)
 
+    def awaited(self, text: str, sequence: str) -> str | None:
+        """The observed event that an instant waits for, such as ``LS1 on``; None for a time of the sequence."""
+        moments = self.design.sequences[sequence].moments
+        if text in moments:
+            moment = moments[text]
+            return self.awaited(moment.after, sequence) if isinstance(moment, RelativeMoment) else None
+        try:
+            read(text, "s")
+        except QuantityError:
+            return text
+        return None
+
     def event(self, text: str, after: Anchor | None = None) -> Row:
         """The row that finds an observed event such as ``LS1 on`` or ``timing above 2 V``, the first one ``after``."""
         anchor = read_anchor(text)

@@ -64,7 +64,7 @@ def test_a_sequence_that_ends_too_early() -> None:
 
 def test_a_timer_that_is_never_started() -> None:
     found = margin(timer(None, below_supply="9.5 V"), "arrival", "C1")
-    assert (found.margin, found.outcome) == (-1.0, "the timer was never started")
+    assert (found.margin, found.outcome) == (-1.0, "'LS1 on' never happened, after which the timer is looked at")
 
 
 def test_a_resistor_that_is_not_at_the_capacitor() -> None:

@@ -77,7 +77,8 @@ def test_a_latch_that_was_never_set_is_an_outcome() -> None:
     # The moment hangs on an event that does not come.
     of = latch(fired=False, moments={"latched": {"after": "gate above 0.5 V", "by": "1 ms"}})
     found = margin(of, "latch_hold", "Q1")
-    assert (found.margin, found.verdict, found.outcome) == (-1.0, Verdict.FAIL, "the latch was never set")
+    words = "'gate above 0.5 V' never happened, after which the latch is looked at"
+    assert (found.margin, found.verdict, found.outcome) == (-1.0, Verdict.FAIL, words)
 
 
 def test_a_latch_that_lets_go_by_itself_is_an_outcome() -> None:
