@@ -78,6 +78,9 @@ ACTIONS: tuple[Action, ...] = (
     Action("bench", "requirements", "R", "R", "requirements", "windows, orders, levels: what is wanted of the design"),
     Action("bench", "tables", "t", "t", "factors", "derating factors and required margins of the design, with reasons"),
     Action("bench", "add_stage", "A", "A", "add stage", "a stage of the catalogue, or a free one, at the end"),
+    Action(
+        "bench", "settings", "S", "S", "settings", "another time, mode, current of a made stage: its row is made anew"
+    ),
     Action("bench", "remove_stage", "X", "X", "remove stage", "remove the chosen stage with its parts (asks first)"),
     Action("bench", "about_stage", "k", "k", "about stage", "how the stage is sized, what was asked of it; cautions"),
     Action("bench", "all_stages", "m", "m", "all margins", "margins of all stages, or of the chosen one", 10),

@@ -1,4 +1,5 @@
-"""What will not hold of a design that was made of catalogue stages, as its row and its conditions are now."""
+"""A design that was made of catalogue stages: what will not hold of it as it is now, and the same with a stage that is
+asked for something else."""
 
 from __future__ import annotations
 
@@ -7,7 +8,7 @@ from ..design.part import Part, Stage
 from ..errors import DesignError, QuantityError
 from ..quantity import read
 from . import stage_kinds
-from .making import doubted
+from .making import doubted, new_design
 from .modified import AS_MADE, is_modified
 from .row import Choice, MadeStage, make_row
 
@@ -24,7 +25,7 @@ def doubts_of(design: Design) -> dict[str, tuple[str, ...]]:
     """
     stages = [stage for stage in design.stages if stage.kind in stage_kinds()]
     try:
-        row = make_row(design.conditions, [_choice(stage) for stage in stages])
+        row = make_row(design.conditions, [choice_of(stage) for stage in stages])
     except DesignError as refusal:
         named = [
             stage.name for stage in stages if str(refusal).startswith((f"stage {stage.name}:", f"stage {stage.name},"))
@@ -43,7 +44,31 @@ def doubts_of(design: Design) -> dict[str, tuple[str, ...]]:
     return found
 
 
-def _choice(stage: Stage) -> Choice:
+def asked_again(design: Design, name: str, choice: Choice) -> Design:
+    """The design made anew with ``choice`` for the stage of this name: its row is sized as a whole, and its sequences
+    and requirements follow. Raises DesignError where something that was changed by hand would be lost."""
+    for stage in design.stages:
+        if stage.kind not in stage_kinds():
+            raise DesignError(f"stage {stage.name} was put in by hand; only a row of catalogue stages is made anew")
+        if is_modified(stage):
+            raise DesignError(f"stage {stage.name} was changed by hand, which would be lost; take that back first (u)")
+    document = design.dump()
+    row = [choice_of(stage) for stage in design.stages]
+    again = [choice if each.title() == name else each for each in row]
+    before, after = (new_design(design.name, "", document["conditions"], each).dump() for each in (row, again))
+    for field in ("sequences", "requirements"):
+        if document.get(field) != before.get(field):
+            raise DesignError(
+                f"its {field} are others than its row brings, and would be lost; take that back first (u), or begin"
+                " another design of stages (n on the shelf)"
+            )
+    for field in ("stages", "sequences", "requirements"):
+        document[field] = after.get(field, [])
+    return Design.load(document)
+
+
+def choice_of(stage: Stage) -> Choice:
+    """What was asked of a stage."""
     return Choice(stage.kind, stage.name, {k: str(text) for k, text in stage.settings.items() if k != AS_MADE})
 
 

@@ -194,6 +194,21 @@ async def test_what_an_added_stage_makes_of_the_others_can_be_read(store: Store,
         assert "an inrush of 700 mA is more than" in " ".join(seen(pilot).split())
 
 
+async def test_a_made_stage_is_asked_for_something_else(store: Store, solver: Solver) -> None:
+    app = StagebookApp(store, solver)
+    async with app.run_test(size=SIZE) as pilot:
+        await made(pilot)
+        was = store.draft("bell").design
+        await pilot.press("S")
+        await until(pilot, lambda: isinstance(pilot.app.screen, Form))
+        await pilot.press("down", *["backspace"] * 4, *"2 mA", "enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
+        assert "contact asked again" in notice(pilot)
+        assert store.draft("bell").design.stages[0].settings["wetting"] == "2 mA"
+        await pilot.press("u")
+        await until(pilot, lambda: store.draft("bell").design == was)
+
+
 async def test_before_the_first_save_a_draft_is_compared_with_what_it_was(store: Store, solver: Solver) -> None:
     app = StagebookApp(store, solver)
     async with app.run_test(size=SIZE) as pilot:

@@ -13,7 +13,9 @@ from ...engine.design.document import Design
 from ...engine.design.part import Part
 from ...engine.parts.made import kept
 from ...engine.results import Depth, MarginSheet
-from ...engine.stages.remade import doubts_of
+from ...engine.stages import stage_kinds
+from ...engine.stages.remade import asked_again, choice_of, doubts_of
+from ...engine.stages.row import Choice
 from ...storage.errors import StorageError
 from ...storage.values import Revision
 from ..bench_text import has_value, valued
@@ -33,7 +35,7 @@ from .part_data import PartDataScreen
 from .requirement_questions import ask_requirement
 from .saving import Saving
 from .stage_page import StagePage
-from .stage_questions import ask_stage
+from .stage_questions import ask_settings, ask_stage
 
 _BEGUN = "the note for the next revision is begun already: s goes on with it"
 
@@ -246,6 +248,19 @@ class BenchScreen(BenchWays):
         self.app.push_screen(
             Ask(f"Take stage {stage.name} out of the design?", f"{count}; u brings all back."), answered
         )
+
+    def action_settings(self) -> None:
+        """What is asked of the chosen stage, to be asked again: the row is made anew."""
+        stage = self.stage
+        if stage is None or stage.kind not in stage_kinds():
+            self.refuse("nothing was asked of this stage: its parts were put in by hand")
+            return
+
+        def chosen(choice: Choice) -> None:
+            words = f"{stage.name} asked again"
+            self.attempt(lambda: self._put(words, asked_again(self.design, stage.name, choice)))
+
+        ask_settings(self.app, choice_of(stage), chosen)
 
     def action_about_stage(self) -> None:
         """How the stage is sized, what was asked of it, and the cautions of the design."""

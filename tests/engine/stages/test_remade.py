@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import pytest
+
 from stagebook.engine import edit
 from stagebook.engine.design.document import Design
+from stagebook.engine.errors import DesignError
 from stagebook.engine.stages.making import doubts, new_design, with_catalogue_stage
-from stagebook.engine.stages.remade import doubts_of
+from stagebook.engine.stages.remade import asked_again, choice_of, doubts_of
 
 from .made import choice, conditions
 
@@ -47,3 +50,30 @@ def test_other_conditions_are_another_sizing_and_stages_made_by_hand_have_none()
     for stage in document["stages"]:
         stage["kind"] = "free"
     assert doubts_of(Design.load(document)) == {}
+
+
+TIMED = (CALL, choice("complementary_latch", "latch"), choice("long_timer", "timer", mode="reset", time="20 s"))
+
+
+def test_a_timer_asked_for_another_mode_makes_its_row_anew() -> None:
+    row = (CALL, choice("long_timer", "timer", time="20 s"), choice("low_side_driver", "driver"))
+    design = new_design("test", "", conditions(), row)
+    interval = choice("long_timer", "timer", mode="interval", time="30 s")
+    after = asked_again(design, "timer", interval)
+    assert after == new_design("test", "", conditions(), (row[0], interval, row[2]))
+    # And back again: nothing of it is left.
+    assert asked_again(after, "timer", row[1]) == design
+    assert asked_again(design, "timer", choice_of(design.stage("timer"))) == design
+
+
+def test_what_was_changed_by_hand_is_not_lost_by_asking_again() -> None:
+    design = new_design("test", "", conditions(), (*TIMED, choice("low_side_driver", "driver")))
+    longer = choice("long_timer", "timer", mode="reset", time="30 s")
+    ref = design.stage("latch").roles["collector_resistor"]
+    with pytest.raises(DesignError, match="was changed by hand, which would be lost"):
+        asked_again(edit.with_value(design, ref, "12k3"), "timer", longer)
+    with pytest.raises(DesignError, match="its requirements are others than its row brings"):
+        asked_again(edit.without_requirement(design, 0), "timer", longer)
+    free = edit.with_stage(design, {"name": "more", "kind": "free"})
+    with pytest.raises(DesignError, match="stage more was put in by hand"):
+        asked_again(free, "timer", longer)
