@@ -177,9 +177,12 @@ def axis_lines(scale: Scale) -> tuple[str, str]:
     if 0 not in starts:
         begin = f"({seconds(float(scale.edges[0]))})"
         when[: len(begin)] = begin
-    for column, mark in scale.marks:
+    for column in sorted(set(starts)):
+        # Events that fall into one column share its label.
+        here = [mark for other, mark in scale.marks if other == column]
+        words = ", ".join(dict.fromkeys(mark.words for mark in here))
         room = min([other for other in starts if other > column], default=scale.columns) - column
-        for line, text in ((when, f"|{seconds(mark.at)}"), (what, mark.words)):
+        for line, text in ((when, f"|{seconds(here[0].at)}"), (what, words)):
             shown = text if len(text) < room or column + room == scale.columns else text[: max(1, room - 2)]
             for place, character in enumerate(shown[:room]):
                 line[column + place] = character

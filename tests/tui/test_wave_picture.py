@@ -107,6 +107,13 @@ def test_the_axis_names_events_where_they_are() -> None:
     assert len(crowded[0]) == 30
 
 
+def test_events_in_one_column_share_its_label() -> None:
+    marks = (Mark(10.0, "connect supply"), Mark(10.6, "open S1"), Mark(50.0, "close S1"))
+    when, what = axis_lines(scale_of(0.0, 100.0, marks, 70, stretched=False))
+    assert "connect supply, open S1" in what
+    assert when.index("|10 s") == what.index("connect")
+
+
 def test_events_at_one_instant_are_one_mark() -> None:
     found = marks_of(flood(), "alarm")
     assert len({mark.at for mark in found}) == len(found)
