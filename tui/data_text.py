@@ -5,11 +5,12 @@ from __future__ import annotations
 from ..engine.design.part import Part
 from ..engine.parts.class_figure import SOURCE
 from ..engine.parts.made import from_memory
-from ..engine.parts.part_data import PartDatum, part_data
+from ..engine.parts.part_data import NOT_SAID, PartDatum, part_data
 from .bench_text import kind_words
 from .shown import Line, Span, columns, counted, fit, line
 from .widgets.row_list import Row
 
+_NO_FIGURE = ("value", "tolerance", "setting")
 _NAME, _LIMIT, _CONDITION = 23, 9, 14
 
 
@@ -17,7 +18,10 @@ def data_title(part: Part, name: str) -> Line:
     """What the part is, where its data are from, and how much of it comes from memory."""
     origin = f"from the drawer: {part.drawer}" if part.drawer else f"class {part.class_}" if part.class_ else "no class"
     memory = len(from_memory(part))
-    words = f"   {counted(memory, 'figure')} from {SOURCE}" if memory else ""
+    unsaid = sum(datum.own and datum.source == NOT_SAID and datum.name not in _NO_FIGURE for datum in part_data(part))
+    said = [f"{counted(memory, 'figure')} from {SOURCE}"] if memory else []
+    said += [f"{unsaid} of source {NOT_SAID}"] if unsaid else []
+    words = f"   {', '.join(said)}" if said else ""
     return line(Span(f" {name}: {kind_words(part)}, {origin}", "strong"), Span(words, "thin"))
 
 

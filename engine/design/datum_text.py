@@ -41,7 +41,7 @@ def _datum(datum: Datum) -> str:
     return " ".join(f"{text}{condition}{source}".split())
 
 
-def understood(text: str, source: Source | None = "datasheet") -> dict[str, Any]:
+def understood(text: str, source: Source | None = None) -> dict[str, Any]:
     """The datum that a line says, as a document holds it; ``source`` is whose it is where the line does not say.
 
     Raises DesignError that says how to write it.

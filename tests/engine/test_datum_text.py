@@ -14,19 +14,20 @@ from stagebook.engine.errors import DesignError
 @pytest.mark.parametrize(
     ("text", "datum"),
     [
-        ("300", {"typical": "300", "source": "datasheet"}),
-        ("200 .. 450", {"min": "200", "max": "450", "source": "datasheet"}),
+        ("300", {"typical": "300"}),
+        ("300 (datasheet)", {"typical": "300", "source": "datasheet"}),
+        ("200 .. 450", {"min": "200", "max": "450"}),
         (
             "0.58 V .. 0.64 V .. 0.70 V at 2 mA, 25 C (measured)",
             {"min": "0.58 V", "typical": "0.64 V", "max": "0.70 V", "condition": "2 mA, 25 C", "source": "measured"},
         ),
-        (".. 0.1 V .. 0.25 V", {"typical": "0.1 V", "max": "0.25 V", "source": "datasheet"}),
+        (".. 0.1 V .. 0.25 V", {"typical": "0.1 V", "max": "0.25 V"}),
         ("<= 15 nA at 25 C (memory)", {"max": "15 nA", "condition": "25 C", "source": "memory"}),
-        (">= 60", {"min": "60", "source": "datasheet"}),
-        ("200 K/W", {"typical": "200 K/W", "source": "datasheet"}),
+        (">= 60", {"min": "60"}),
+        ("200 K/W", {"typical": "200 K/W"}),
     ],
 )
-def test_a_line_is_understood(text: str, datum: dict[str, str]) -> None:
+def test_a_line_is_understood_and_names_nobody_who_did_not_say_it(text: str, datum: dict[str, str]) -> None:
     assert understood(text) == datum
 
 

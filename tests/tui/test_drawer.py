@@ -69,12 +69,18 @@ async def test_memory_is_said_until_a_figure_is_replaced(with_transistors: Stage
         await pilot.press("home", "enter")
         await answer(pilot, "110 .. 180 .. 300 at 2 mA")
         gain = next(line for line in shown(pilot) if " gain " in line)
+        assert gain.split()[1:] == ["gain", "110", "180", "300", "2", "mA", "not", "said"]
+        assert "14 figures from memory, 1 of source not said" in shown(pilot)[0]
+        assert shelf.draft("flood").design.part("Q1").datum("gain").source is None  # type: ignore[union-attr]
+        await pilot.press("enter")
+        await answer(pilot, "110 .. 180 .. 300 at 2 mA (datasheet)")
+        gain = next(line for line in shown(pilot) if " gain " in line)
         assert gain.split()[1:] == ["gain", "110", "180", "300", "2", "mA", "datasheet"]
-        assert "14 figures from memory" in shown(pilot)[0]
+        assert shown(pilot)[0].rstrip().endswith("14 figures from memory")
         datum = shelf.draft("flood").design.part("Q1").datum("gain")
         assert datum is not None
         assert (datum.max, datum.source) == ("300", "datasheet")
-        await pilot.press("b", "u")
+        await pilot.press("b", "u", "u")
         await settled(pilot)
         assert "15 figures from memory (i)" in seen(pilot)
 
