@@ -44,8 +44,7 @@ def with_field(design: Design, ref: str, field: str, text: Any) -> Design:
         _put(_part_in(document, ref), path, text)
 
     edited = _edited(design, change)
-    if text is not None:
-        _suits(part, edited, path)
+    _suits(part, edited, path)
     return edited
 
 
@@ -76,6 +75,7 @@ def _suits(before: Part, edited: Design, path: list[str] | None = None) -> None:
     """Raise DesignError for what the kind of an edited part says against it; fields not on ``path`` may be missing."""
     for field, words in objections(before, edited.part(before.ref), kinds()):
         if path is None or field.split(".")[: len(path)] == path or path[0] == field:
+            words = words.replace(" is missing;", " is needed;")
             raise DesignError(f"{_where(edited, before.ref)}, field {field}: {words}")
 
 

@@ -101,7 +101,9 @@ class Drafting(Drawer):
 
     def set_value(self, ref: str, text: str) -> None:
         """Writes the value of a part."""
-        self._keep(f"{ref} {text}", edit.with_value(self.design, ref, text))
+        after = edit.with_value(self.design, ref, text)
+        refuse_newly_wrong(self.design, after)
+        self._keep(f"{ref} {text}", after)
 
     def step(self, ref: str, direction: int) -> None:
         """Puts in the next preferred value above (+1) or below (-1)."""
@@ -222,10 +224,22 @@ class MadeDraft:
 
     def write(self, field: str, value: Any) -> Part:
         """Writes one field; None takes it out. Raises DesignError."""
+        if field == "value" and value is None:
+            self._design = as_design({key: entry for key, entry in self.document.items() if key != "value"})
+            self._stands_in = True
+            return self.part
         self._design = edit.with_field(self._design, self.part.ref, field, value)
         if field == "value":
             self._stands_in = False
         return self.part
+
+
+def refuse_newly_wrong(before: Design, after: Design) -> None:
+    """Raise DesignError, in one line, for what an edit makes wrong; to be asked before it is kept."""
+    # Imported here: the checks load the compiler.
+    from ..engine.studies.newly_wrong import refuse_newly_wrong as refuse
+
+    refuse(before, after)
 
 
 def incomplete(sheet: MarginSheet) -> bool:

@@ -30,8 +30,8 @@ Progress = Callable[[int, int], None]
 def asks_of(circuit: Circuit) -> tuple[Ask, ...]:
     """Everything that the catalogue asks of a design, in the order of the catalogue. Raises CircuitError where the
     design sets a margin or a factor that there is not."""
-    _inspect_tables(circuit.design)
-    _inspect_requirements(circuit.design)
+    inspect_tables(circuit.design)
+    inspect_requirements(circuit.design)
     view = View(circuit.design, circuit)
     found: dict[str, Ask] = {}
     for check in catalogue().values():
@@ -43,7 +43,8 @@ def asks_of(circuit: Circuit) -> tuple[Ask, ...]:
     return tuple(found.values())
 
 
-def _inspect_tables(design: Design) -> None:
+def inspect_tables(design: Design) -> None:
+    """Refuse a required margin or a factor of a name that there is not. Raises CircuitError."""
     for table, names, known in (("required", design.required, catalogue()), ("derating", design.derating, FACTORS)):
         for name in names:
             if name not in known:
@@ -52,8 +53,8 @@ def _inspect_tables(design: Design) -> None:
                 raise CircuitError(f"field {table}: there is no '{name}'; write {meant}")
 
 
-def _inspect_requirements(design: Design) -> None:
-    """Refuse a requirement that no check reads, and a field that its check does not read."""
+def inspect_requirements(design: Design) -> None:
+    """Refuse a requirement that no check reads, and a field that its check does not read. Raises CircuitError."""
     for number, requirement in enumerate(design.requirements, 1):
         where = f"requirement {number} ({requirement.check})"
         check = catalogue().get(requirement.check)

@@ -21,7 +21,7 @@ from ...storage.values import Revision
 from ..bench_text import has_value, valued
 from ..caution_text import new_cautions
 from ..computing import Computing
-from ..drafting import Drafting, incomplete
+from ..drafting import Drafting, incomplete, refuse_newly_wrong
 from ..remembered import Remembered
 from ..shown import counted
 from ..widgets.row_list import RowList
@@ -347,6 +347,7 @@ class BenchScreen(BenchWays):
         def change(field: str, value: Any) -> Part:
             after = edit.with_field(self.design, ref, field, value)
             if after != self.design:
+                refuse_newly_wrong(self.design, after)
                 self.drafting.put(f"{ref} {field}", after)
                 self.study()
             return self.design.part(ref)

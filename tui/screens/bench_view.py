@@ -18,6 +18,7 @@ from ..drafting import Drafting, incomplete
 from ..figures import FigureRow, Figures
 from ..margin_text import check_lines, corner_line, margin_heading, margin_rows
 from ..messages import SheetArrived, SolverPreparing, StudyProgress, StudyRefused
+from ..refusal_text import for_bench
 from ..remembered import Remembered
 from ..shown import line
 from ..widgets.chain import Chain
@@ -261,7 +262,7 @@ class BenchView(Page[None]):
         """The circuit cannot be computed as it stands; the figures stay, marked old."""
         if event.request == self._request:
             self._progress = "not computed"
-            self.trouble = f"cannot be computed: {event.reason}"
+            self.trouble = f"cannot be computed: {for_bench(event.reason)}"
             self.show()
             self.refuse(self.trouble, passing=False)
             self.no_sheet(event.reason)

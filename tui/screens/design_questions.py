@@ -17,8 +17,11 @@ from ...engine.parts import kinds
 from ...engine.parts.classes import CLASSES
 from ...engine.parts.edited import same_pins
 from ...engine.parts.kind import Kind
+from ...engine.parts.suitability import unsuitable
 from ...engine.results import CheckResult
 from ...storage.values import MadePart
+from ..drafting import refuse_newly_wrong
+from ..refusal_text import for_form
 from ..shown import fit, percent
 from .dialog import Answers, Field, Form, Pick
 
@@ -29,16 +32,24 @@ _ENDS = ("min", "nominal", "max")
 
 
 def ask_design(
-    app: App[Any], title: str, fields: Sequence[Field], make: Callable[[Answers], tuple[str, Design]], put: Put
+    app: App[Any],
+    before: Design,
+    title: str,
+    fields: Sequence[Field],
+    make: Callable[[Answers], tuple[str, Design]],
+    put: Put,
 ) -> None:
-    """A form whose answers ``make`` turns into words and a design; its refusals keep the form open."""
+    """A form whose answers ``make`` turns into words and a design; its refusals keep the form open, and so does what
+    is wrong with that design and was not with the one ``before``."""
     made: list[tuple[str, Design]] = []
 
     def refusal(answers: Answers) -> str | None:
         try:
-            made.append(make({name: text.strip() for name, text in answers.items()}))
+            words, after = make({name: text.strip() for name, text in answers.items()})
+            refuse_newly_wrong(before, after)
         except EngineError as error:
-            return str(error)
+            return for_form(str(error))
+        made.append((words, after))
         return None
 
     def done(answers: Answers | None) -> None:
@@ -93,10 +104,13 @@ def _ask_part(
         for name, text in given.items():
             plain = edit.with_field(plain, ref, name, text)
         if of_drawer is None:
+            for field, words in unsuitable(plain.part(ref), kind):
+                if field in asked:
+                    raise DesignError(words)
             return f"with {ref}", plain
         return f"with {ref}", edit.with_made_part(plain, ref, of_drawer.document, of_drawer.title)
 
-    ask_design(app, f"{kind.name.replace('_', ' ')} for {stage.name}", fields, make, put)
+    ask_design(app, design, f"{kind.name.replace('_', ' ')} for {stage.name}", fields, make, put)
 
 
 def free_reference(design: Design, kind: Kind) -> str:
@@ -125,7 +139,7 @@ def ask_field(app: App[Any], design: Design, ref: str, put: Put) -> None:
 
         example = examples.get(name) or "empty takes it out"
         hint = examples.get(name, "")
-        ask_design(app, f"{ref}, {name}", [Field("text", name, texts[name], example, hint)], make, put)
+        ask_design(app, design, f"{ref}, {name}", [Field("text", name, texts[name], example, hint)], make, put)
 
     app.push_screen(Pick(f"{ref}: which field?", _rows(texts)), chosen)
 
@@ -183,7 +197,7 @@ def ask_condition(app: App[Any], design: Design, put: Put) -> None:
             text = answers["text"]
             return f"{name} {text or '-'}", edit.with_condition(design, name, text or None)
 
-        ask_design(app, name, [Field("text", name, texts[name], "empty takes it out")], make, put)
+        ask_design(app, design, name, [Field("text", name, texts[name], "empty takes it out")], make, put)
 
     app.push_screen(Pick("conditions that the design is judged in: which one?", _rows(texts)), chosen)
 
@@ -223,7 +237,7 @@ def _ask_entry(app: App[Any], design: Design, table: str, name: str, now: str, t
         ),
         Field("reason", "reason", reason, "why it may differ from the customary one"),
     ]
-    ask_design(app, title, fields, make, put)
+    ask_design(app, design, title, fields, make, put)
 
 
 def ask_tables(app: App[Any], design: Design, put: Put) -> None:

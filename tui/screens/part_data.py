@@ -17,6 +17,7 @@ from ...engine.parts.part_data import PartDatum, part_data
 from ...storage.errors import StorageError
 from ..actions import bindings
 from ..data_text import data_heading, data_lines, data_rows, data_title
+from ..refusal_text import for_form
 from ..widgets.lines import Lines
 from ..widgets.row_list import RowList
 from ..widgets.rule import Rule
@@ -25,6 +26,7 @@ from .dialog import Answers, Field, Form
 from .page import Page
 
 PLAIN = ("value", "tolerance", "setting")
+_WHO = "who says so stands behind it: (datasheet), (measured) or (memory); without that it is not said"
 Change = Callable[[str, Any], Part]
 """Writes one field (None takes it out) and returns the part as it is then. Raises EngineError or StorageError."""
 Keep = Callable[[str, Part], str]
@@ -99,7 +101,7 @@ class PartDataScreen(Page[None]):
             try:
                 self._part = self._change(name, self._read(name, answers["text"].strip()))
             except (EngineError, StorageError) as error:
-                return str(error)
+                return for_form(str(error))
             return None
 
         def done(answers: Answers | None) -> None:
@@ -108,7 +110,9 @@ class PartDataScreen(Page[None]):
 
         example = "as value" if name in PLAIN else "200 .. 300 .. 450 at 2 mA (datasheet); empty takes it out"
         title = f"{self._whose}, {name.replace('_', ' ')}: {datum.about}" if datum.about else f"{self._whose}, {name}"
-        self.app.push_screen(Form(title, [Field("text", "figure", datum.text, example)], refusal), done)
+        self.app.push_screen(
+            Form(title, [Field("text", "figure", datum.text, example, "" if name in PLAIN else _WHO)], refusal), done
+        )
 
     def _read(self, name: str, text: str) -> object:
         kind = kinds()[self._part.kind]

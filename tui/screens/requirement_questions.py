@@ -80,4 +80,4 @@ def _ask_fields(
             return f"no longer wanted: {slug}", edit.without_requirement(design, at)
         return f"wanted: {slug}", edit.with_requirement_at(design, at, {"check": slug, **given})
 
-    ask_design(app, f"{title}: what is wanted? Leaving all empty takes it out", fields, make, put)
+    ask_design(app, design, f"{title}: what is wanted? Leaving all empty takes it out", fields, make, put)

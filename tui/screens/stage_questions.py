@@ -86,9 +86,8 @@ def _ask_free_stage(app: App[Any], design: Design, put: Put) -> None:
             raise DesignError(f"there is a stage {name} already; write another name")
         return f"with stage {name}", edit.with_stage(design, {"name": name, "kind": "free"})
 
-    ask_design(
-        app, "A free stage at the end of the chain", [Field("name", "name", "", "latch, timer, driver")], make, put
-    )
+    fields = [Field("name", "name", "", "latch, timer, driver")]
+    ask_design(app, design, "A free stage at the end of the chain", fields, make, put)
 
 
 def _ask_catalogue_stage(app: App[Any], design: Design, kind: str, put: Put) -> None:
@@ -108,7 +107,7 @@ def _ask_catalogue_stage(app: App[Any], design: Design, kind: str, put: Put) -> 
         written = {k.removeprefix(_PORT): v for k, v in answers.items() if k.startswith(_PORT) and v}
         return f"with stage {choice.title()}", with_catalogue_stage(design, choice, written)
 
-    ask_design(app, f"{found.title} at the end of the chain", fields, make, put)
+    ask_design(app, design, f"{found.title} at the end of the chain", fields, make, put)
 
 
 def free_name(name: str, taken: set[str]) -> str:
