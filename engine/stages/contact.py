@@ -5,19 +5,21 @@ from __future__ import annotations
 from functools import partial
 
 from ..quantity import write
+from .held import held, held_setting
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Drive, Json, Made, Place, Sense, Setting, StageKind
 from .plan import RETURN, Plan
 
 FALL = 0.1  # of the rail that the pull-up may lose to what follows
 SPARE = 1.1  # times the wetting current: what the tolerance of the resistor takes
 MUCH = 50e-3  # A, more than that is not spent on a contact at rest (from memory)
+HELD = 1.0  # s that it is held where nothing else is said or needed
 LEAD_INSULATION = "20M"  # of the whole lead against 0V, wet, from memory
 PER_METRE = {"resistance": "0.08 ohm/m", "capacitance": "100 pF/m"}
 """A pair of 0.22 mm2, there and back, from memory. Its inductance rings at megahertz, far above what follows hears."""
 _SETTINGS = (
     Setting("wetting", "A", "1 mA", "least current through the closed contact: 1 mA silver, 10 uA gold"),
     Setting("bounce", "s", "2 ms", "how long it bounces"),
-    Setting("held", "s", "1 s", "how long the event lasts"),
+    held_setting(HELD, "how long the event lasts"),
     Setting("lead", "m", "0 m", "length of the lead to it; 0 for none"),
 )
 
@@ -35,14 +37,14 @@ def _make(plan: Plan, normally_open: bool) -> Made:
         value = plan.resistor(_pull_up(plan), rail, out, "pull_up", snap="down")
         drive = Drive(Sense.LEVEL, ohms=value)
     begins, ends = ("close", "open") if normally_open else ("open", "close")
-    bounce = plan.number("bounce")
+    bounce, event = plan.number("bounce"), held(plan, HELD)
     settles: Json = {"bounce": {"for": write(bounce, "s"), "times": 3}} if bounce > 0.0 else {}
     acts = (
         (0.0, {"event": begins, "part": contact, **settles}),
-        (plan.above_zero("held"), {"event": ends, "part": contact}),
+        (event.time, {"event": ends, "part": contact}),
     )
-    doubts = () if normally_open else _thirsty(plan)
-    return Made(output=drive, acts=acts, lasts=plan.above_zero("held"), doubts=doubts)
+    doubts = event.doubts if normally_open else (*event.doubts, *_thirsty(plan))
+    return Made(output=drive, acts=acts, lasts=event.lasts, doubts=doubts)
 
 
 def _wetted(plan: Plan) -> float:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from ..quantity import write
 from .contact import LEAD_INSULATION, PER_METRE
+from .held import HELD, held, held_setting
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Json, Made, Place, Setting, StageKind
 from .output import HELP, add_output, sized
 from .plan import OVERDRIVE, RETURN, V_BE, Plan
@@ -58,8 +59,8 @@ def _make(plan: Plan) -> Made:
     plan.transistor(low, trip, RETURN, "trip_device")
     # The line jumps by the whole rail, and the transistor that watches it for a short takes this base along.
     plan.capacitor(plan.quieting(("pnp", 0.0, plan.rail.max)), trip, RETURN, "base_capacitor_trip_device", snap="up")
-    held = plan.above_zero("held")
-    acts = ((0.0, {"event": "open", "part": contact}), (held, {"event": "close", "part": contact}))
+    event = held(plan, HELD)
+    acts = ((0.0, {"event": "open", "part": contact}), (event.time, {"event": "close", "part": contact}))
     loop: Json = {
         "events": [
             {"at": "0 s", "event": "connect supply", "rise": "20 ms"},
@@ -82,7 +83,8 @@ def _make(plan: Plan) -> Made:
     return Made(
         output=add_output(plan, output, low, rail),
         acts=acts,
-        lasts=held,
+        lasts=event.lasts,
+        doubts=event.doubts,
         sequences={"loop": loop},
         requirements=(supervised,),
     )
@@ -106,7 +108,7 @@ KIND = StageKind(
         Setting("lower", "", "0.35", "share of the rail below which the line counts as shorted"),
         Setting("upper", "", "0.65", "share of the rail above which it counts as open"),
         Setting("lead", "m", "20 m", "length of the line; 0 for none"),
-        Setting("held", "s", "2 s", "how long the contact stays open"),
+        held_setting(HELD, "how long the contact stays open"),
     ),
     make=_make,
     takes=(),

@@ -98,13 +98,18 @@ class Intake:
     """What a stage takes at its signal port while active: ``current`` in A, at ``threshold``, a share of the rail.
 
     ``passes``: the stage has no signal of its own, and what follows it hangs on the same net. ``surge`` is its inrush
-    in parts of the current, where it is known.
+    in parts of the current, where it is known. ``holds`` is how many s its signal must stay; with less
+    than ``holds_least`` it is ``cut`` short, in words, as is what to write ``instead``.
     """
 
     current: float = 0.0
     threshold: float | None = None
     passes: bool = False
     surge: float | None = None
+    holds: float = 0.0
+    holds_least: float = 0.0
+    cut: str = ""
+    instead: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -128,8 +133,7 @@ class Made:
     ``output`` is its signal, None where it passes on the one it got. ``rail_drop`` and ``quiet_drop`` are what its
     rails lose. ``acts`` are events counted from the instant at which the alarm begins, none of them before the supply
     comes; ``settles`` is how long it needs before that, ``lasts`` how long it goes on after it, ``active`` how long
-    its signal then stays, None for as long as it is asked to. ``holds`` is how long what comes in must stay,
-    ``standby`` when it rests in a design that the supply
+    its signal then stays, None for as long as it is asked to. ``standby`` is when it rests in a design that the supply
     itself starts. ``moments`` and ``requirements`` may name the design's ``{load}`` and ``{contact}``, the event
     ``{trips}`` with which what follows the stage acts, and the moment ``begins``. ``doubts`` say which check will not
     hold as asked, why, and what to write instead.
@@ -142,7 +146,6 @@ class Made:
     settles: float = 0.0
     lasts: float = 0.0
     active: float | None = None
-    holds: float = 0.0
     standby: float | None = None
     moments: Mapping[str, Json | str] = field(default_factory=dict)
     sequences: Mapping[str, Json] = field(default_factory=dict)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 
 from ..quantity import write
+from .held import HELD, held, held_setting
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, WORD, Made, Place, Setting, StageKind
 from .plan import Plan
 from .sensor_divider import add_divider, trip_sequence, trip_window
@@ -34,14 +35,15 @@ def _make(plan: Plan) -> Made:
     rest, alarm = (trip * BEYOND, trip / BEYOND) if dark else (trip / BEYOND, trip * BEYOND)
     fields = {"value": plan.text("sensor"), "class": "ldr", "data": {"light": write(rest, "lx")}}
     ref = plan.part("R", "light_resistor", {"a": one, "b": other}, "sensor", **fields)
-    held = plan.above_zero("held")
+    event = held(plan, HELD)
     acts = tuple(
-        (at, {"event": "set", "part": ref, "to": write(lux, "lx")}) for at, lux in ((0.0, alarm), (held, rest))
+        (at, {"event": "set", "part": ref, "to": write(lux, "lx")}) for at, lux in ((0.0, alarm), (event.time, rest))
     )
     return Made(
         output=drive,
         acts=acts,
-        lasts=held,
+        lasts=event.lasts,
+        doubts=event.doubts,
         sequences={"trip": trip_sequence(ref, write(rest, "lx"), write(alarm, "lx"))},
         requirements=(trip_window(ref, write(trip / spread, "lx"), write(trip * spread, "lx")),),
     )
@@ -65,7 +67,7 @@ KIND = StageKind(
         Setting("trip", "lx", "10 lx", "light at the trip point"),
         Setting("window", "", "4", "factor by which the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 10 lx"),
-        Setting("held", "s", "2 s", "how long the event of the sequence lasts"),
+        held_setting(HELD, "how long the event of the sequence lasts"),
     ),
     make=_make,
     takes=(),

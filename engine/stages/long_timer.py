@@ -73,7 +73,15 @@ def _intake(plan: Plan) -> Intake:
     if mode == DELAY:
         # Its output is fed from what starts it, and so is what follows.
         needed += _output(plan).current + plan.next.current
-    return Intake(needed, passes=mode == RESET)
+    if mode == RESET:
+        return Intake(needed, passes=True)
+    time = plan.above_zero("time")
+    latest = time * (1.0 + plan.share("window"))
+    lasts = f"of {write(time, 's', digits=3)}, which may take {write(latest, 's', digits=3)},"
+    cut, instead = f"the delay {lasts} does not run out, and nothing comes on", "put a latch between"
+    if mode == INTERVAL:
+        cut, instead = f"the interval {lasts} is cut off with it", "put a latch between, with mode reset"
+    return Intake(needed, holds=latest + HOLDS, holds_least=latest, cut=cut, instead=instead)
 
 
 def _make(plan: Plan) -> Made:
@@ -155,7 +163,6 @@ def _make(plan: Plan) -> Made:
         output=made,
         lasts=time * (1.0 + window) * 1.6,
         active=None if mode == DELAY else time,
-        holds=0.0 if mode == RESET else time * (1.0 + window) + HOLDS,
         standby=0.3 * time if mode == DELAY else None,
         requirements=(duration, arrival),
         doubts=(

@@ -107,8 +107,7 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
     """The sequence that fires the alarm: the supply comes, all settles, and what starts it starts it."""
     start = _start(row)
     events: list[Json] = [{"at": "0 s", "event": "connect supply", "rise": RISE}]
-    holds = max(made.made.holds for made in row)
-    own = [act for made in row for act in _held(made.made.acts, holds)]
+    own = [act for made in row for act in made.made.acts]
     acts = sorted(((max(0.0, start + at), event) for at, event in own), key=lambda act: act[0])
     over = max([start + sum(made.made.lasts for made in row), *(at for at, _ in acts)])
     if not acts:
@@ -135,12 +134,6 @@ def _alarm(row: Sequence[MadeStage], facts: Mapping[str, str]) -> Json:
     return {"events": events, "ends": write(over + AFTER, "s", digits=6), "moments": moments}
 
 
-def _held(acts: Sequence[tuple[float, Json]], holds: float) -> list[tuple[float, Json]]:
-    """The acts of a stage; where it begins the alarm, it ends it only after what follows had its time."""
-    begins = any(at == 0.0 for at, _ in acts)
-    return [(max(at, holds) if begins and at > 0.0 else at, event) for at, event in acts]
-
-
 def _moments(made: MadeStage, facts: Mapping[str, str]) -> Json:
     """The moments that a stage knows of; those after a load only where the design has one."""
     return _filled({name: each for name, each in made.made.moments.items() if _answered(each, facts)}, facts)
@@ -158,7 +151,7 @@ def _required(made: MadeStage, facts: Mapping[str, str]) -> list[Json]:
 
 def _too_short(requirement: Json, following: Sequence[MadeStage]) -> bool:
     """Whether an event of the asked length cannot count, because what follows wants it to last longer."""
-    holds = max((made.made.holds for made in following), default=0.0)
+    holds = max((made.holds for made in following), default=0.0)
     return requirement["check"] == "acceptance" and read(requirement["min"], "s") < holds
 
 

@@ -44,6 +44,7 @@ class Plan:
     rail of loads (the supply where none are given), ``beyond`` what the stages behind it draw, ``source`` the largest
     resistance of the supply in ohm; ``drive`` is what comes in
     from the stage before, None where the rail itself starts it; ``next`` is what the following stage takes.
+    ``found`` are settings that nothing was written for, as they were worked out.
     """
 
     kind: StageKind
@@ -61,6 +62,7 @@ class Plan:
     source: float = 0.0
     parts: list[Json] = field(default_factory=list)
     roles: dict[str, str] = field(default_factory=dict)
+    found: dict[str, str] = field(default_factory=dict)
 
     # -- what was asked
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from ..design.conditions import Conditions, Levels
 from ..errors import DesignError
@@ -47,12 +47,16 @@ class Place:
 
 @dataclass(frozen=True)
 class MadeStage:
-    """A stage as the document holds it, and what else it brings. ``rail`` is its nominal rail in V."""
+    """A stage as the document holds it, and what else it brings. ``rail`` is its nominal rail in V.
+
+    ``holds`` is how long in s what comes into it must stay.
+    """
 
     stage: Json
     made: Made
     kind: StageKind
     rail: float
+    holds: float = 0.0
 
 
 def usual_name(kind: str) -> str:
@@ -101,6 +105,17 @@ def _joined(own: Intake, next_one: Intake) -> Intake:
     return Intake(own.current + next_one.current, own.threshold or next_one.threshold, passes=True, surge=surge)
 
 
+def _kept(kind: StageKind, own: Intake, next_one: Intake) -> Intake:
+    """What a stage takes, with how long it must get it for the stages behind: what an edge starts, or a latch, needs no
+    more than a moment."""
+    takes = _joined(own, next_one) if own.passes else own
+    keeps = kind.edge or kind.port(Wire.NEW_BASE) is not None
+    longest = own if keeps or own.holds >= next_one.holds else next_one
+    return replace(
+        takes, holds=longest.holds, holds_least=longest.holds_least, cut=longest.cut, instead=longest.instead
+    )
+
+
 def _plans(conditions: Conditions, choices: Sequence[Choice], place: Place, beyond: Sequence[Beyond]) -> list[Plan]:
     """Plans of all stages at their places, each with what the one after it takes."""
     places = []
@@ -116,7 +131,7 @@ def _plans(conditions: Conditions, choices: Sequence[Choice], place: Place, beyo
         plan.check()
         plans.insert(0, plan)
         own = plan.kind.intake(plan)
-        takes = _joined(own, takes) if own.passes else own
+        takes = _kept(plan.kind, own, takes)
     return plans
 
 
@@ -163,12 +178,14 @@ def make_stage(
         "name": plan.stage,
         "kind": kind.name,
         "roles": plan.roles,
-        "settings": {each.name: plan.text(each.name) for each in kind.settings if plan.text(each.name)},
+        "settings": {
+            each.name: text for each in kind.settings if (text := plan.text(each.name) or plan.found.get(each.name))
+        },
         "ports": ports,
         "parts": plan.parts,
     }
     stage["settings"][AS_MADE] = digest(plan.parts, ports)
-    return MadeStage(stage, made, kind, plan.rail.nominal), advance(place, kind, ports, made)
+    return MadeStage(stage, made, kind, plan.rail.nominal, kind.intake(plan).holds), advance(place, kind, ports, made)
 
 
 def advance(place: Place, kind: StageKind, ports: Mapping[str, str], made: Made) -> Place:

@@ -6,6 +6,7 @@ import math
 
 from ..parts.physics import REFERENCE, ZERO_CELSIUS
 from ..quantity import write
+from .held import HELD, held, held_setting
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, WORD, Made, Place, Setting, StageKind
 from .plan import Plan
 from .sensor_divider import add_divider, trip_sequence, trip_window
@@ -25,17 +26,18 @@ def _make(plan: Plan) -> Made:
     fields = {"value": plan.text("sensor"), "tolerance": "1 %", "class": "ntc", "follows": where}
     ref = plan.part("RT", "thermistor", {"a": one, "b": other}, "sensor", **fields)
     rest, alarm = (trip + BEYOND, trip - BEYOND) if cold else (trip - BEYOND, trip + BEYOND)
-    held = plan.above_zero("held")
+    event = held(plan, HELD)
     acts = tuple(
         (at, {"event": "set", "part": where, "to": write(celsius, "degC")})
-        for at, celsius in ((BEFORE, rest), (0.0, alarm), (held, rest))
+        for at, celsius in ((BEFORE, rest), (0.0, alarm), (event.time, rest))
     )
     off = plan.above_zero("window")
     ends = (write(each, "degC", digits=4) for each in (rest, alarm))
     return Made(
         output=drive,
         acts=acts,
-        lasts=held,
+        lasts=event.lasts,
+        doubts=event.doubts,
         sequences={"trip": trip_sequence(where, *ends)},
         requirements=(trip_window(ref, write(trip - off, "degC", digits=4), write(trip + off, "degC", digits=4)),),
     )
@@ -59,7 +61,7 @@ KIND = StageKind(
         Setting("trip", "degC", "2 C", "temperature at the trip point"),
         Setting("window", "K", "5 K", "how far the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 25 C"),
-        Setting("held", "s", "2 s", "how long the event of the sequence lasts"),
+        held_setting(HELD, "how long the event of the sequence lasts"),
     ),
     make=_make,
     takes=(),

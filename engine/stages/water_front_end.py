@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from ..quantity import write
+from .held import HELD, held, held_setting
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, Made, Place, Setting, StageKind
 from .plan import Plan
 from .sensor_divider import add_divider, trip_sequence, trip_window
@@ -21,12 +22,15 @@ def _make(plan: Plan) -> Made:
     plan.resistor(PROTECTION, tip, other, "protection_resistor")
     rest = write(DRY * dry, "ohm")
     ref = plan.part("B", "probe", {"a": one, "b": tip}, "sensor", value=rest)
-    held = plan.above_zero("held")
-    acts = tuple((at, {"event": "set", "part": ref, "to": to}) for at, to in ((0.0, plan.text("wet")), (held, rest)))
+    event = held(plan, HELD)
+    acts = tuple(
+        (at, {"event": "set", "part": ref, "to": to}) for at, to in ((0.0, plan.text("wet")), (event.time, rest))
+    )
     return Made(
         output=drive,
         acts=acts,
-        lasts=held,
+        lasts=event.lasts,
+        doubts=event.doubts,
         sequences={"trip": trip_sequence(ref, rest, write(wet / DRY, "ohm"))},
         requirements=(
             trip_window(ref, plan.text("wet"), plan.text("dry")),
@@ -56,7 +60,7 @@ KIND = StageKind(
     settings=(
         Setting("wet", "ohm", "50k", "resistance at which it must trip"),
         Setting("dry", "ohm", "1M", "resistance at which it must not"),
-        Setting("held", "s", "2 s", "how long it is wet in the sequence"),
+        held_setting(HELD, "how long it is wet in the sequence"),
     ),
     make=_make,
     takes=(),

@@ -189,7 +189,10 @@ def test_an_interval_behind_a_latch_is_told_to_leave_it_on() -> None:
     latch, timer = choice("complementary_latch", "latch"), choice("long_timer", "timer", mode="interval")
     (words,) = doubts(conditions(), (CALL, latch, timer, PIEZO))["timer"]
     assert words.startswith("latch reset: an interval leaves the latch before it on; write mode reset")
-    for row in ((CALL, timer, PIEZO), (CALL, latch, choice("long_timer", "timer", mode="reset"), PIEZO)):
+    for row in (
+        (choice("contact_no", "call"), timer, PIEZO),
+        (CALL, latch, choice("long_timer", "timer", mode="reset"), PIEZO),
+    ):
         assert doubts(conditions(), row) == {}
 
 
@@ -243,3 +246,36 @@ def test_a_latch_that_is_still_set_when_its_timer_lets_it_go_is_doubted_and_foun
     design = made(*row("20 s"))
     (found,) = study(design, only=f"duration:timer:{design.stage('timer').roles['timing_capacitor']}").checks
     assert found.outcome == "the alarm comes again by itself when it is over: what started it is still there"
+
+
+@pytest.mark.parametrize("mode", ["delay", "interval"])
+def test_an_event_is_as_long_as_was_said_and_one_too_short_is_doubted(mode: str) -> None:
+    # A user's contact was held for 1 s before a delay of 10 s; the sequence held it for 15 s, and all passed.
+    timer = choice("long_timer", "timer", mode=mode, time="10 s")
+
+    def row(held: str) -> tuple[Choice, ...]:
+        return (choice("contact_no", "call", held=held), timer, PIEZO)
+
+    design = made(*row("1 s"))
+    assert [event.at for event in design.sequences["alarm"].events] == ["0 s", "1 s", "2 s"]
+    (said,) = doubts(conditions(), row("1 s"))["call"]
+    assert said.startswith(f"duration: held 1 s is too short: the {mode} of 10 s, which may take 14 s,")
+    (found,) = study(design, only=f"duration:timer:{design.stage('timer').roles['timing_capacitor']}").checks
+    assert found.verdict is Verdict.FAIL
+    # What it tells to write is enough, and what is put in where nothing is said.
+    told = said.split("write held ")[1].split(" or ")[0]
+    assert doubts(conditions(), row(told)) == doubts(conditions(), row("")) == {}
+    unsaid = made(*row(""))
+    assert unsaid.stage("call").settings["held"] == told
+    assert [event.at for event in unsaid.sequences["alarm"].events] == ["0 s", "1 s", "16 s"]
+
+
+def test_a_latch_or_an_edge_before_a_delay_needs_no_more_than_a_moment() -> None:
+    latch, timer = choice("complementary_latch", "latch"), choice("long_timer", "timer", time="10 s")
+    for between in ((latch,), (choice("differentiator"), latch)):
+        row = (choice("contact_no", "call", held="0.2 s"), *between, timer, PIEZO)
+        assert doubts(conditions(), row) == {}
+        assert [event.at for event in made(*row).sequences["alarm"].events] == ["0 s", "1 s", "1.2 s"]
+    # What is debounced is handed on, and so is how long it must stay.
+    row = (choice("contact_no", "call", held="0.5 s"), choice("debounce"), timer, PIEZO)
+    assert "call" in doubts(conditions(), row)

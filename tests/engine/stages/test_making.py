@@ -171,7 +171,7 @@ def test_a_made_design_survives_its_document() -> None:
 def test_what_starts_an_interval_stays_until_it_is_over() -> None:
     # A light that returns after 2 s would end an interval of 10 s, which may last 14 s.
     row = (
-        choice("light_front_end", held="2 s"),
+        choice("light_front_end"),
         choice("schmitt_trigger"),
         choice("long_timer", mode="interval", time="10 s"),
     )
