@@ -68,7 +68,7 @@ def stage_rows(stage: Stage, doubts: Sequence[str] = ()) -> Rows:
 
 
 def _setting(kind: StageKind, name: str, settings: Mapping[str, object]) -> str:
-    known = kind.setting(name)
+    known = kind.setting(name.removesuffix(f"_{AS_MADE}"))
     return f"{settings[name]}" + (f": {known.about}" if known is not None else "")
 
 

@@ -15,7 +15,7 @@ from ..errors import DesignError
 from ..quantity import read, write
 from . import stage_kinds
 from .kind import Drive, Intake, Json, Sense, Wire
-from .modified import AS_MADE
+from .modified import asked
 from .row import Choice, MadeStage, Place, advance, kind_named, make_row, make_stage
 
 RISE = "20 ms"  # in which the supply comes where a sequence does not ask for another
@@ -214,8 +214,9 @@ def place_after(design: Design) -> Place:
 
 def _made_again(conditions: Conditions, stage: Stage, place: Place) -> MadeStage:
     """What the catalogue makes of a stage's settings: what it gives to the next one is read from that."""
-    settings = {name: str(text) for name, text in stage.settings.items() if name != AS_MADE}
-    return make_stage(conditions, Choice(stage.kind, stage.name, settings), place, Intake(), frozenset())[0]
+    return make_stage(conditions, Choice(stage.kind, stage.name, asked(stage.settings)), place, Intake(), frozenset())[
+        0
+    ]
 
 
 def with_catalogue_stage(design: Design, choice: Choice, ports: Mapping[str, str] | None = None) -> Design:

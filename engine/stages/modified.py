@@ -14,6 +14,12 @@ AS_MADE = "as_made"
 _DIGITS = 12
 
 
+def asked(settings: Mapping[str, object]) -> dict[str, str]:
+    """The settings of a stage that were asked for, without what the catalogue notes beside them: ``as_made``, and
+    ``held_as_made`` for a setting that was left empty."""
+    return {name: str(text) for name, text in settings.items() if not name.endswith(AS_MADE)}
+
+
 def digest(parts: Sequence[Json], ports: Mapping[str, str]) -> str:
     """A short sum over parts as JSON values; nets of ports count by the port's name: connecting it changes nothing."""
     names = {net: f"port {port}" for port, net in ports.items()}

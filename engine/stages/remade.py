@@ -9,7 +9,7 @@ from ..errors import DesignError, QuantityError
 from ..quantity import read
 from . import stage_kinds
 from .making import doubted, new_design
-from .modified import AS_MADE, is_modified
+from .modified import asked, is_modified
 from .row import Choice, MadeStage, make_row
 
 FAR = 1.3  # times: a value that is no further off than that is what the catalogue would put in
@@ -69,7 +69,7 @@ def asked_again(design: Design, name: str, choice: Choice) -> Design:
 
 def choice_of(stage: Stage) -> Choice:
     """What was asked of a stage."""
-    return Choice(stage.kind, stage.name, {k: str(text) for k, text in stage.settings.items() if k != AS_MADE})
+    return Choice(stage.kind, stage.name, asked(stage.settings))
 
 
 def _others(stage: Stage, made: MadeStage) -> list[str]:

@@ -178,12 +178,11 @@ def make_stage(
         "name": plan.stage,
         "kind": kind.name,
         "roles": plan.roles,
-        "settings": {
-            each.name: text for each in kind.settings if (text := plan.text(each.name) or plan.found.get(each.name))
-        },
+        "settings": {each.name: text for each in kind.settings if (text := plan.text(each.name))},
         "ports": ports,
         "parts": plan.parts,
     }
+    stage["settings"] |= {f"{name}_{AS_MADE}": text for name, text in plan.found.items()}
     stage["settings"][AS_MADE] = digest(plan.parts, ports)
     return MadeStage(stage, made, kind, plan.rail.nominal, kind.intake(plan).holds), advance(place, kind, ports, made)
 

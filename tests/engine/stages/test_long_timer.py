@@ -266,7 +266,7 @@ def test_an_event_is_as_long_as_was_said_and_one_too_short_is_doubted(mode: str)
     told = said.split("write held ")[1].split(" or ")[0]
     assert doubts(conditions(), row(told)) == doubts(conditions(), row("")) == {}
     unsaid = made(*row(""))
-    assert unsaid.stage("call").settings["held"] == told
+    assert unsaid.stage("call").settings["held_as_made"] == told
     assert [event.at for event in unsaid.sequences["alarm"].events] == ["0 s", "1 s", "16 s"]
 
 
