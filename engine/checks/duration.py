@@ -76,7 +76,7 @@ def _ask(check: Check, view: View, requirement: Requirement) -> Ask:
             comes = np.fmax.reduce([seen.time(row, sequence) for row in again])
             alone = np.all([(at <= end) | (at >= comes) for at in events], axis=0) & np.isfinite(end)
             outcomes.append((alone & np.all([seen.seen(row, sequence) for row in again], axis=0), check.words["again"]))
-        hand = None if timing is None else timing.by_hand(seen, sequence)
+        hand = None if timing is None else timing.by_hand(seen, sequence, end - begin)
         apart: Apart = ((None, UNTIMED),)
         if hand is not None and timing is not None:
             apart = ((np.isnan(hand), UNREACHED), (timing.otherwise(seen, sequence) > OTHERWISE, ANOTHER_WAY))
@@ -145,11 +145,16 @@ class Timing:
         own = [pair for pair in pairs if pair is stage] or pairs
         return cls(view, own[0], first, last) if len(own) == 1 else None
 
-    def by_hand(self, seen: Seen, sequence: str) -> Floats:
-        """The interval by the closed form, with the rail and threshold that the simulation shows."""
+    def by_hand(self, seen: Seen, sequence: str, lasted: Floats | None = None) -> Floats:
+        """The interval by the closed form, with the threshold that the simulation shows and the rail: its mean where it
+        ``lasted`` s, else its most."""
         resistance, leak, begun = self._parts(seen, sequence)
         share = 1.0 / (1.0 + resistance * leak)
-        final = seen.value(self.rail, sequence) * share
+        rail = seen.value(self.rail, sequence)
+        if lasted is not None:
+            mean = seen.value(self.fed, sequence) / np.where(lasted > 0.0, lasted, np.nan)
+            rail = np.where(np.isfinite(mean), mean, rail)
+        final = rail * share
         threshold = seen.value(self.threshold, sequence)
         reached = np.where(final > threshold, (threshold - begun) / np.where(final > begun, final - begun, 1.0), np.nan)
         return np.asarray(-resistance * share * self._farads(seen) * np.log1p(-reached))

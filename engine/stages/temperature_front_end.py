@@ -59,7 +59,7 @@ KIND = StageKind(
     settings=(
         Setting("active", WORD, "cold", "what it trips on", ("cold", "heat")),
         Setting("trip", "degC", "2 C", "temperature at the trip point"),
-        Setting("window", "K", "5 K", "how far the trip point may be off, both ways"),
+        Setting("window", "K", "6 K", "how far the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 25 C"),
         held_setting(HELD, "how long the event of the sequence lasts"),
     ),

@@ -141,8 +141,20 @@ def fires(built: Built, celsius: float, volts: float, side: int) -> Firing:
     # What that diode lets back when hot helps it forward, too.
     through = max(emitter + bled - (_reverse(celsius) if side < 0 else 0.0), LEAST_CURRENT)
     above += side * DIODE_SPREAD
-    above += V_DIODE - DIODE_PER_KELVIN * warmer + DIODE_SLOPE * thermal * math.log(through / 1e-6) + bled * parallel
+    above += (
+        V_DIODE
+        + side * diode_spread()
+        - DIODE_PER_KELVIN * warmer
+        + DIODE_SLOPE * thermal * math.log(through / 1e-6)
+        + bled * parallel
+    )
     return Firing(share * volts + above, v_eb, emitter, (1.0 + DIODE_SLOPE) * thermal)
+
+
+def diode_spread() -> float:
+    """V by which the drop of a signal diode differs from part to part, at most."""
+    figure = class_figure("diode", "signal diode", "forward_low", "V")
+    return max(figure.high - figure.typical, figure.typical - figure.low)
 
 
 def _divided(built: Built, side: int) -> float:

@@ -230,7 +230,7 @@ def test_what_comes_back_when_a_timer_is_hot_is_counted_into_its_early_end() -> 
     # the simulated corner: 32.0 s.
     row = (choice("entry"), CALL, choice("long_timer", "timer", time="60 s", capacitor="low drift"), PIEZO)
     (said,) = doubts(COLD_AND_HOT, row)["timer"]
-    assert said.startswith("duration: tolerances and leakage let its time come out at 31.3 s")
+    assert said.startswith("duration: tolerances and leakage let its time come out at 30.9 s")
 
 
 def test_a_latch_that_is_still_set_when_its_timer_lets_it_go_is_doubted_and_found() -> None:
