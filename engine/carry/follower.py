@@ -19,7 +19,7 @@ from .carried import Carried
 from .column import Column, Snapshot, go_on, leap, put_back, taken
 from .measure import Drift, at_instants, drift
 from .noted import Noted, bent, correct_stride, next_edge, note_stride, noted
-from .periods import Period, candidates, periods_by
+from .periods import Period, candidates, lasts, periods_by
 from .strides import FORESIGHT, Quantities, Stride, change_of, in_phase, judged, longest, quantities, with_sines
 
 PERIODS, MOST_PERIODS = 5, 64  # that are compared
@@ -32,9 +32,11 @@ FIRST_STRIDE = 2.0  # times the periods that were looked at
 GIVE_UP = 12  # strides in turn that were taken back
 BUSY = 4  # times the usual steps, behind a stride
 BOWS = 3e-3  # by which the course of an integral may differ from the straight one
+TURNS = 0.03  # of its swing, by which a net that grows or dies does so within the periods that are compared
 STILL = 1.3  # periods, within which the last one must have ended
 SHORTEN = 0.8  # of a stride that was too long
 CLOSE = 3.0  # shortest strides before what one went beyond, that are stepped
+EVIDENCE = 2000  # points in which swings must be the same: many periods where they have few, as what rings has
 WORTH = 0.2  # of the tolerance, which is mended even where no stride follows
 MORE, LONGER_WORK = 4.0, 3.0  # times the bounds of steps and of work, for a lane that is seen to oscillate
 ITERATES = 2.5  # a step, at most usually
@@ -160,7 +162,7 @@ class Follower:
         known = None if self.regime is None else self.regime.period
         found = self._found(column, time, trail, known)
         if found is None and known is not None:
-            found = self._found(column, time, trail, None)
+            found, self.regime = self._found(column, time, trail, None), None
         if found is None:
             self.regime = None
             if len(time) >= min(ENOUGH, MEMORY // trail.shape[1]):
@@ -168,6 +170,15 @@ class Follower:
             go_on(column, steps=math.inf)
             return True
         period, drifting = found
+        if self.regime is None:
+            if len(time) < EVIDENCE:
+                go_on(column, steps=math.inf)
+                return True
+            nets = int(self.top.size[0])
+            tolerance = self.quantities.tolerance(drifting.mean)[:nets]
+            if not lasts(time, trail[:, :nets], period.length, tolerance):
+                self.watch(column)
+                return True
         self.earlier = None if self.regime is None else self.regime.drift
         sampled = np.linspace(period.instants[-2], period.instants[-1], STATES, endpoint=False)
         self.quantities = self._quantities(
@@ -197,7 +208,8 @@ class Follower:
             if time[-1] - period.instants[-1] > STILL * period.length:
                 continue  # it has ended since
             measured = drift(time, followed, period, tolerance)
-            if measured.steady:
+            turn = float(abs(measured.higher[period.net] - measured.lower[period.net])) * (self.wanted * period.length)
+            if measured.steady and turn <= TURNS * float(measured.swing[period.net]):
                 return period, measured
         return None
 

@@ -16,6 +16,7 @@ VISIBLE = 0.05  # V, swing that counts as an oscillation
 LOW, HIGH = 0.3, 0.7  # of the swing, between which a net must have been for a rise to count
 ALIKE = 0.05  # by which periods may differ, of the usual one
 RESOLVED = 1e4  # last digits of its instants that a period must be long
+SAME = 0.02  # of a swing, by which it may change while it is looked at
 MOST_TOGETHER = 4  # rises that may make one period: one of two heights, say, that take turns
 
 
@@ -82,6 +83,18 @@ def candidates(time: Floats, values: Floats, count: int) -> list[Period]:
     # What differs in the last digits only is one period, of which the widest swing tells best.
     found.sort(key=lambda each: (round(np.log(-each[0]) / ALIKE), each[1]))
     return [period for *_, period in reversed(_grouped(found))]
+
+
+def lasts(time: Floats, values: Floats, period: float, tolerance: Floats) -> bool:
+    """Whether the swings of all nets, (points, nets), are the same at the end of a stretch as at its begin: what rings
+    is not carried."""
+    count = int((time[-1] - time[0]) / period)
+    begins = np.searchsorted(time, time[-1] - period * np.arange(count, 0, -1))
+    swings = np.maximum.reduceat(values, begins, axis=0) - np.minimum.reduceat(values, begins, axis=0)
+    third = max(1, count // 3)
+    first, last = swings[:third].mean(axis=0), swings[-third:].mean(axis=0)
+    most = np.maximum(first, last)
+    return bool(np.all((most < VISIBLE) | (np.abs(last - first) <= SAME * most + 3.0 * tolerance)))
 
 
 def _grouped(found: list[tuple[float, float, Period]]) -> list[tuple[float, float, Period]]:

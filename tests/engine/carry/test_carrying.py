@@ -23,7 +23,7 @@ from stagebook.engine.primitives.signals import (
 )
 from stagebook.engine.run import Observed, run
 
-from ..circuits import Setup, capacitor, resistor, setup, sine, transistor
+from ..circuits import Setup, capacitor, resistor, setup, sine, transistor, two
 
 SMALL = {"class": "small npn"}
 
@@ -186,3 +186,19 @@ def test_a_traced_lane_is_carried_as_one_that_is_not() -> None:
     assert time.size == traced.results.trace_used[0] < plain.results.work[0, 0]
     assert sum(end - begin for begin, end in traced.carried.gaps) == pytest.approx(plain.carried.seconds[0])
     assert traced.results.trace_value[0, -1].tobytes() == plain.final[0].tobytes()
+
+
+def test_what_rings_is_not_carried(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A coil and a capacitor that ring at 50 kHz for some 200 periods: taken ahead they would ring for ever."""
+    made = setup(
+        two("inductor", "L1", "supply", "a", inductance="1 mH", resistance="1 ohm"),
+        capacitor("C1", "a", "0V", "10 nF"),
+        supply="10 V",
+        ends=1.0,
+        events=[{"at": "0 s", "event": "connect supply", "rise": "1 us"}],
+    )
+    monkeypatch.setattr(running, "LINGERS", 300)
+    seen = made.run(integral(voltage("a")))
+    assert seen.results.work[0, 0] > 5000
+    assert seen.carried.strides[0] == 0
+    assert bits(seen) == bits(plainly(made, [integral(voltage("a"))], monkeypatch))
