@@ -14,6 +14,7 @@ from ..parts.figures import Figure, needed
 from ..parts.physics import BAND_GAP, REFERENCE, ZERO_CELSIUS, gain_factor, thermal_voltage
 from ..preferred import nearest, next_down, next_up, series_for
 from ..quantity import read, write
+from ..units import unit_named
 from .kind import NOTHING_KNOWN, WORD, Beyond, Drive, Intake, Json, StageKind, Wire
 
 RETURN = "0V"
@@ -33,6 +34,7 @@ UNBIASED = 2.5  # times its C_ob at 10 V, a transistor's capacitance without bia
 ABOVE = (
     1.01  # times the rail that a capacitor's rated voltage is chosen for: what comes back from a load lifts it a little
 )
+_NEVER_BELOW = {"s", "m", "ohm", "F", "A", "W", "Hz", "lx", "V/s"}
 LARGEST_FILM = 2.2e-6  # F; above it capacitors are polarised (common practice)
 
 
@@ -88,10 +90,8 @@ class Plan:
         """As :meth:`number`; it must be above zero."""
         value = self.number(name)
         if value <= 0.0:
-            setting = self.kind.setting(name)
-            assert setting is not None
             raise DesignError(
-                f"{self._where(name)}: {self.text(name)} is not above zero; write it like {setting.usual}"
+                f"{self._where(name)}: {self.text(name)} is not above zero; write it like {self._example(name)}"
             )
         return value
 
@@ -99,7 +99,12 @@ class Plan:
         """A setting between 0 and 1, both left out."""
         value = self.number(name)
         if not 0.0 < value < 1.0:
-            raise DesignError(f"{self._where(name)}: {self.text(name)} is not between 0 and 1; write it like 0.5")
+            setting = self.kind.setting(name)
+            low, high = ("0 %", "100 %") if setting is not None and setting.unit == "%" else ("0", "1")
+            raise DesignError(
+                f"{self._where(name)}: {self.text(name)} is not between {low} and {high}, both left out;"
+                f" write it like {self._example(name)}"
+            )
         return value
 
     def refused(self, name: str, words: str) -> DesignError:
@@ -115,8 +120,17 @@ class Plan:
         for setting in self.kind.settings:
             if setting.unit == WORD:
                 self.text(setting.name)
-            elif self.text(setting.name):
-                self.number(setting.name)
+            elif self.text(setting.name) and self.number(setting.name) < 0.0 and setting.unit in _NEVER_BELOW:
+                raise DesignError(
+                    f"{self._where(setting.name)}: {self.text(setting.name)} is below zero;"
+                    f" write it like {self._example(setting.name)}"
+                )
+
+    def _example(self, name: str) -> str:
+        """A setting as it may be written: what is usual, else any of its unit."""
+        setting = self.kind.setting(name)
+        assert setting is not None, name
+        return setting.usual or unit_named(setting.unit).example.split(" or ")[0].split(", ")[0]
 
     def _where(self, name: str) -> str:
         return f"stage {self.stage}, setting {name}"

@@ -121,6 +121,40 @@ async def test_a_setting_that_cannot_be_read_keeps_the_form_open(store: Store, s
         assert isinstance(pilot.app.screen, Form)
 
 
+async def test_a_setting_that_cannot_be_made_keeps_the_form_open(store: Store, solver: Solver) -> None:
+    app = StagebookApp(store, solver)
+    async with app.run_test(size=SIZE) as pilot:
+        page = await begin_row(pilot)
+        await add(pilot, "entry")
+        await pilot.press("a")
+        await pick(pilot, "lamp")
+        await until(pilot, lambda: isinstance(pilot.app.screen, Form))
+        await pilot.press("down", "ctrl+u", *"-2 W", "enter")
+        assert isinstance(pilot.app.screen, Form)
+        assert "setting power: -2 W is" in notice(pilot)
+        await pilot.press("ctrl+u", *"2 W", "enter")
+        await until(pilot, lambda: pilot.app.screen is page)
+        assert [row.key for row in page.query_one(RowList).rows] == ["entry", "lamp"]
+
+
+async def test_the_stage_in_the_way_is_marked_beside_the_doubts(store: Store, solver: Solver) -> None:
+    app = StagebookApp(store, solver)
+    async with app.run_test(size=SIZE) as pilot:
+        await begin_row(pilot)
+        await add(pilot, "piezo")
+        await pilot.press("enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, Form))
+        pilot.app.screen.query_one("#field-asked-heard").focus()
+        await pilot.press(*"200 dB", "enter")
+        await until(pilot, lambda: isinstance(pilot.app.screen, NewDesignPage))
+        assert any("piezo" in text and " ! " in text for text in shown(pilot)[2:6])
+        await add(pilot, "debounce")
+        await pilot.press("comma")
+        assert "a debounce needs a signal" in notice(pilot)
+        assert any("debounce" in text and " X " in text for text in shown(pilot)[2:6])
+        assert any("piezo" in text and " ! " in text for text in shown(pilot)[2:6])
+
+
 @pytest.mark.parametrize("size", [(80, 24), (20, 5)])
 async def test_how_a_kind_is_sized_can_be_read(store: Store, solver: Solver, size: tuple[int, int]) -> None:
     app = StagebookApp(store, solver)

@@ -149,6 +149,26 @@ async def test_undo_stops_at_the_revision_and_goes_on_when_asked_again(app: Stag
         assert value(shelf, "R7") == "470k"
 
 
+async def test_a_revision_like_the_one_before_is_saved_only_when_asked_again(app: StagebookApp, shelf: Store) -> None:
+    async with app.run_test(size=SIZE) as pilot:
+        bench = await open_bench(pilot)
+        await pilot.press("s")
+        assert words(pilot, "Why does this revision exist? Nothing has changed since r2")
+        await pilot.press(*"why", "enter")
+        assert isinstance(pilot.app.screen, Form)
+        assert "nothing has changed since r2; Enter again keeps the same" in notice(pilot)
+        await pilot.press("escape", "s", "enter")
+        assert isinstance(pilot.app.screen, Form)
+        assert len(shelf.revisions("flood")) == 2
+        await pilot.press("enter")
+        await until(pilot, lambda: pilot.app.screen is bench)
+        assert len(shelf.revisions("flood")) == 3
+        await pilot.press("full_stop", "s")
+        assert not words(pilot, "Nothing has changed since")
+        await pilot.press(*"a larger one", "enter")
+        await until(pilot, lambda: len(shelf.revisions("flood")) == 4)
+
+
 @pytest.mark.parametrize(
     ("keys", "what"),
     [

@@ -260,7 +260,10 @@ class BenchScreen(BenchWays):
             words = f"{stage.name} asked again"
             self.attempt(lambda: self._put(words, asked_again(self.design, stage.name, choice)))
 
-        ask_settings(self.app, choice_of(stage), chosen)
+        def tried(choice: Choice) -> None:
+            refuse_newly_wrong(self.design, asked_again(self.design, stage.name, choice))
+
+        ask_settings(self.app, choice_of(stage), chosen, tried)
 
     def action_about_stage(self) -> None:
         """How the stage is sized, what was asked of it, and the cautions of the design."""

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import replace
 from textwrap import wrap
 from typing import Any, ClassVar
@@ -13,7 +13,8 @@ from textual.binding import BindingType
 from ...engine.design.document import Design
 from ...engine.errors import EngineError
 from ...engine.stages import stage_kinds
-from ...engine.stages.making import doubts, new_design
+from ...engine.stages.asked import doubts_beside, in_the_way, refuse_settings
+from ...engine.stages.making import new_design
 from ...engine.stages.row import Choice, usual_name
 from ...storage.errors import StorageError
 from ...storage.store import Store
@@ -50,6 +51,7 @@ class NewDesignPage(Page[str | None]):
         self._called, self._purpose, self._conditions = name, purpose, conditions
         self._row: list[Choice] = []
         self._doubts: dict[str, tuple[str, ...]] = {}
+        self._in_the_way: str | None = None
 
     def compose_body(self) -> ComposeResult:
         """Title, the row from left to right, and what the stage under the hand is."""
@@ -84,14 +86,15 @@ class NewDesignPage(Page[str | None]):
         words = f" {self._called}: a new design, stages from left to right   {supply['min']} .. {supply['max']}"
         title = self.query_one("#title", Lines)
         title.show(line(Span(fit(words, title.size.width or 80), "strong")))
-        self._doubts = self._doubted()
+        self._doubts = doubts_beside(self._conditions, self._row)
+        self._in_the_way = in_the_way(self._conditions, self._row) if self._row else None
         heading = line(Span(columns(_WIDTHS, ("stage", "kind")) + " asked of it", "strong"))
         rows = [
             Row(
                 choice.title(),
                 line(
                     columns(_WIDTHS, (choice.title(), stage_kinds()[choice.kind].title)),
-                    Span(" ! ", "thin") if choice.title() in self._doubts else " ",
+                    self._mark(choice.title()),
                     asked(choice),
                 ),
             )
@@ -127,11 +130,11 @@ class NewDesignPage(Page[str | None]):
             words += f"; not all will hold: see ! {', '.join(self._doubts)}"
         self.say(words)
 
-    def _doubted(self) -> dict[str, tuple[str, ...]]:
-        try:
-            return doubts(self._conditions, self._row)
-        except EngineError:
-            return {}
+    def _mark(self, name: str) -> Span:
+        """X for the stage for which the row cannot be made, ! for one of which not all will hold."""
+        if name == self._in_the_way:
+            return Span(" X ", "fail")
+        return Span(" ! ", "thin") if name in self._doubts else Span(" ")
 
     def _design(self) -> Design:
         return new_design(self._called, self._purpose, self._conditions, self._row)
@@ -149,7 +152,7 @@ class NewDesignPage(Page[str | None]):
 
         def chosen(kind: str) -> None:
             name = free_name(usual_name(kind), {each.title() for each in self._row})
-            ask_settings(self.app, Choice(kind, name), put)
+            ask_settings(self.app, Choice(kind, name), put, self._tried(self._row[:at], self._row[at:]))
 
         ask_kind(self.app, "a stage of the catalogue: which kind?", chosen)
 
@@ -159,7 +162,18 @@ class NewDesignPage(Page[str | None]):
         if at < 0:
             self.action_add()
             return
-        ask_settings(self.app, self._row[at], lambda choice: self._put(at, choice, self._row[:at], self._row[at + 1 :]))
+        before, after = self._row[:at], self._row[at + 1 :]
+        tried = self._tried(before, after)
+        ask_settings(self.app, self._row[at], lambda choice: self._put(at, choice, before, after), tried)
+
+    def _tried(self, before: Sequence[Choice], after: Sequence[Choice]) -> Callable[[Choice], None]:
+        """What refuses a setting that cannot be made at this place."""
+
+        def tried(choice: Choice) -> None:
+            named = replace(choice, name=free_name(choice.title(), {each.title() for each in (*before, *after)}))
+            refuse_settings(self._conditions, [*before, named, *after], len(before))
+
+        return tried
 
     def _put(self, at: int, choice: Choice, before: Sequence[Choice], after: Sequence[Choice]) -> None:
         """A stage at its place; a name that another one has gets a number."""

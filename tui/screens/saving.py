@@ -13,7 +13,7 @@ from textual.screen import ModalScreen
 from ...engine.results import Depth, MarginSheet
 from ...storage.values import Note, Revision
 from ..actions import bindings
-from ..drafting import Drafting, changes_words
+from ..drafting import Drafting, changes_words, incomplete
 from ..note_keeping import NoteKeeping
 from ..shown import Span, line
 from ..widgets.lines import Lines
@@ -113,12 +113,23 @@ class Saving:
         self._kept()
 
     def ask(self) -> None:
-        """Asks for the note."""
+        """Asks for the note; where the revision would be the same as the one before it, for Enter twice."""
         known = {"change": noted_words(self._drafting), **self.written}
         fields = [Field(name, label, known.get(name, ""), example) for name, label, example in _PLACES]
-        self._page.app.push_screen(
-            Form("Why does this revision exist?", fields, _refusal, kept=self._keep), self._noted
-        )
+        base = self._drafting.base
+        same = base is not None and base.content == self._drafting.design.content and not incomplete(base.sheet)
+        unchanged = f"nothing has changed since r{base.number}" if base is not None and same else ""
+        told: list[str] = []
+
+        def refusal(answers: Answers) -> str | None:
+            refused = _refusal(answers)
+            if refused is None and unchanged and not told:
+                told.append(unchanged)
+                return f"{unchanged}; Enter again keeps the same once more, Esc leaves it"
+            return refused
+
+        title = "Why does this revision exist?" + (f" {unchanged.capitalize()}" if unchanged else "")
+        self._page.app.push_screen(Form(title, fields, refusal, kept=self._keep), self._noted)
 
     def _keep(self, answers: Answers) -> None:
         """Remembers what was written, but for the changes that are filled in anew each time."""

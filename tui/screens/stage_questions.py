@@ -33,13 +33,20 @@ def ask_kind(app: App[Any], title: str, chosen: Callable[[str], None], *, free: 
     app.push_screen(Pick(title, [*rows, *kind_choices()]), picked)
 
 
-def ask_settings(app: App[Any], choice: Choice, chosen: Callable[[Choice], None]) -> None:
-    """Name and settings of a stage; those that cannot be read keep the form open."""
+def ask_settings(
+    app: App[Any],
+    choice: Choice,
+    chosen: Callable[[Choice], None],
+    tried: Callable[[Choice], object] = checked,
+) -> None:
+    """Name and settings of a stage; those that cannot be read, or that ``tried`` raises EngineError for, keep the form
+    open."""
     made: list[Choice] = []
 
     def refusal(answers: Answers) -> str | None:
         try:
             made.append(checked(_choice(choice.kind, answers)))
+            tried(made[-1])
         except EngineError as error:
             return str(error)
         return None
