@@ -107,6 +107,8 @@ def _redone(chance: random.Random, bench: Bench) -> Deed | None:
 
 
 def _saved(chance: random.Random, bench: Bench) -> Deed | None:
+    if bench.saved and bench.saved[-1][0] == bench.design.content:
+        return None  # asked twice where nothing has changed
     line = f"because {chance.randrange(10**6)}"  # in place of what an earlier sitting may have begun
     after = replace(bench, saved=(*bench.saved, (bench.design.content, line)))
     return Deed(f"s\x15{line}\r", f" saved as r{len(after.saved)}", after, saves=True)
