@@ -23,6 +23,7 @@ from .periods import Period, candidates, lasts, periods_by
 from .strides import FORESIGHT, Quantities, Stride, change_of, in_phase, judged, longest, quantities, with_sines
 
 PERIODS, MOST_PERIODS = 5, 64  # that are compared
+POINTS, MORE_PERIODS = 1000, 24  # or as many as take so many steps, up to so many
 ENOUGH, MEMORY = 40_000, 3_000_000  # points, and numbers, in which there must be periods enough
 SETTLE = 2  # periods that a lane settles in after a stride
 STATES = 32  # of a period, at which the circuit is linearised
@@ -179,6 +180,14 @@ class Follower:
             if not lasts(time, trail[:, :nets], period.length, tolerance):
                 self.watch(column)
                 return True
+            # Where a period takes few steps more of them are looked at: that costs little, and tells means better.
+            more = int(POINTS * (time[-1] - time[0]) / (len(time) * period.length))
+            usual, self.wanted = self.wanted, int(np.clip(more, self.wanted, MORE_PERIODS))
+            again = self._found(column, time, trail, period)
+            if again is None:
+                self.wanted = usual
+            else:
+                period, drifting = again
         self.earlier = None if self.regime is None else self.regime.drift
         sampled = np.linspace(period.instants[-2], period.instants[-1], STATES, endpoint=False)
         self.quantities = self._quantities(
