@@ -80,9 +80,17 @@ def ends(plan: Plan, built: Built) -> tuple[float, float]:
     # The rail is reckoned at its least for sizing: where little is drawn, half of that is lost.
     early_rails = (0.5 * (plan.supply.min + plan.rail.min), plan.rail.max)
     early = min(_time(built, celsius, rail - built.lost, -1) for celsius, rail in product(ambients, early_rails))
-    late_rails = (plan.rail.min, plan.rail.max)
+    late_rails = (plan.rail.min - _sags(plan), plan.rail.max)
     late = max(_time(built, celsius, rail - built.lost, +1) for celsius, rail in product(ambients, late_rails))
     return early, late
+
+
+def _sags(plan: Plan) -> float:
+    """What the supply's own resistance takes from the rail while the loads are on, V: an entry has reckoned with it,
+    and before the end of a delay they are off."""
+    if plan.fed < plan.supply.min or plan.text("mode") == "delay":
+        return 0.0
+    return plan.source * (plan.beyond.loads or 0.0)
 
 
 def _time(built: Built, celsius: float, volts: float, side: int) -> float:

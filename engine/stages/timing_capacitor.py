@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from ..parts.capacitor import LEAKAGE_DOUBLING, LEAKAGE_REFERENCE
 from ..parts.classes import CLASSES
@@ -27,7 +27,8 @@ RESISTOR = 0.01  # tolerance of the timing resistor
 USUAL = 0.1  # tolerance of a class that says none
 TENTH = 0.1  # of the limit of its class that a selected capacitor leaks at most
 LEFT_OUT = 0.025  # of the time, by which simulated corners came out further apart than the closed form, at most
-EARLIER = 0.006  # of the time, by which the early one mostly did where it came out earlier
+ASTRAY = 0.007  # of the time, by which each mostly did where it came out further
+STEP, STEPS = 10.0 ** (1.0 / 96.0), 4  # of E96, and how many of them R C is tried to both sides
 DURATION, ARRIVAL = 0.1, 0.3  # margins that are customarily asked for
 LOW_DRIFT, SELECTED, ELECTROLYTIC, SUITABLE = "low drift", "selected", "electrolytic", "suitable"
 _CLASSES = {LOW_DRIFT: "timing capacitor, low drift", SELECTED: "timing capacitor, low drift"}
@@ -120,17 +121,38 @@ def widened(ends: tuple[float, float]) -> tuple[float, float]:
 
 
 def _keeps(ends: tuple[float, float], time: float, window: float) -> bool:
-    return margin((ends[0] * (1.0 - EARLIER), ends[1]), time, window) >= DURATION
+    return margin((ends[0] * (1.0 - ASTRAY), ends[1] * (1.0 + ASTRAY)), time, window) >= DURATION
 
 
 def chosen(plan: Plan, time: float, window: float, wanted: Threshold, ends: Ends) -> Timing:
     """The class that is asked for; where a suitable one is, the first that keeps the time within its window."""
+    return _first(_offered(plan, time, wanted, ends), time, window)[0]
+
+
+def _offered(plan: Plan, time: float, wanted: Threshold, ends: Ends) -> list[tuple[Timing, tuple[float, float]]]:
+    """The classes that may be taken, the cheaper one first, each with its ends."""
     kind = plan.text("capacitor")
-    if kind != SUITABLE:
-        return timing(plan, kind, time, wanted)
-    offered = [timing(plan, each, time, wanted) for each in (LOW_DRIFT, SELECTED)]
-    good = (each for each in offered if each.arrival >= ARRIVAL and _keeps(ends(each), time, window))
+    return [
+        _centred(plan, each, time, wanted, ends) for each in ((LOW_DRIFT, SELECTED) if kind == SUITABLE else (kind,))
+    ]
+
+
+def _first(
+    offered: list[tuple[Timing, tuple[float, float]]], time: float, window: float
+) -> tuple[Timing, tuple[float, float]]:
+    """The first that keeps the time within its window, else the last."""
+    good = ((each, came) for each, came in offered if each.arrival >= ARRIVAL and _keeps(came, time, window))
     return next(good, offered[-1])
+
+
+def _centred(plan: Plan, kind: str, time: float, wanted: Threshold, ends: Ends) -> tuple[Timing, tuple[float, float]]:
+    """A class with the R C for which the middle of both ends, as it is built, is nearest to the time that is asked."""
+    found = timing(plan, kind, time, wanted)
+    both = [(found, ends(found))]
+    for n in sorted(range(-STEPS, STEPS + 1), key=abs)[1:]:
+        each = replace(found, tau=found.tau * STEP**n)
+        both.append((each, ends(each)))
+    return min(both, key=lambda each: abs(sum(each[1]) - 2.0 * time))
 
 
 def class_name(kind: str) -> str:
@@ -168,7 +190,7 @@ def doubts(plan: Plan, found: Timing, time: float, window: float, wanted: Thresh
     between = f"{write(came[0], 's', digits=3)} to {write(came[1], 's', digits=3)}"
     percent = _enough(plan, time, window, wanted, ends)
     advice = "a shorter time" if percent is None else f"window {percent} %"
-    if better and margin(widened(ends(timing(plan, SELECTED, time, wanted))), time, window) >= DURATION:
+    if better and margin(widened(_centred(plan, SELECTED, time, wanted, ends)[1]), time, window) >= DURATION:
         advice += f" or capacitor {SELECTED}"
     return [f"duration: tolerances and leakage let its time come out at {between}; write {advice}"]
 
@@ -176,8 +198,9 @@ def doubts(plan: Plan, found: Timing, time: float, window: float, wanted: Thresh
 def _enough(plan: Plan, time: float, window: float, wanted: Threshold, ends: Ends) -> int | None:
     """The least window in whole percent with which the time keeps to it, the customary margin included: a wider one
     may bring another capacitor, which strays further."""
+    offered = _offered(plan, time, wanted, ends)
     for percent in range(math.floor(100.0 * window) + 1, 100):
         wide = 0.01 * percent
-        if margin(widened(ends(chosen(plan, time, wide, wanted, ends))), time, wide) >= DURATION:
+        if margin(widened(_first(offered, time, wide)[1]), time, wide) >= DURATION:
             return percent
     return None

@@ -181,8 +181,8 @@ def test_the_window_that_a_doubt_tells_is_kept(mode: str, latch: bool, wide: boo
     (check,) = study(design, only=timed).checks
     assert check.verdict is Verdict.PASS, (check.low, check.high)
     assert check.margin is not None
-    # Told is no more than it needs, within a tenth of the window.
-    assert 0.1 <= check.margin < 0.2
+    # Told is no more than it needs, within 15 % of the window.
+    assert 0.1 <= check.margin < 0.25
 
 
 def test_an_interval_behind_a_latch_is_told_to_leave_it_on() -> None:
@@ -227,10 +227,15 @@ def test_a_spike_instead_of_the_alarm_is_told_as_one() -> None:
 
 def test_what_comes_back_when_a_timer_is_hot_is_counted_into_its_early_end() -> None:
     # 25 nA x 2^4.5 and 10 nA x 23 of saturation come back through two diodes at 70 C: 8 % of the time. Compared with
-    # the simulated corner: 32.0 s.
-    row = (choice("entry"), CALL, choice("long_timer", "timer", time="60 s", capacitor="low drift"), PIEZO)
+    # the simulated corner: 34.1 s.
+    row = (
+        choice("entry"),
+        choice("contact_no", "call"),
+        choice("long_timer", "timer", time="60 s", capacitor="low drift"),
+        PIEZO,
+    )
     (said,) = doubts(COLD_AND_HOT, row)["timer"]
-    assert said.startswith("duration: tolerances and leakage let its time come out at 30.9 s")
+    assert said.startswith("duration: tolerances and leakage let its time come out at 33 s")
 
 
 def test_a_latch_that_is_still_set_when_its_timer_lets_it_go_is_doubted_and_found() -> None:
@@ -279,3 +284,23 @@ def test_a_latch_or_an_edge_before_a_delay_needs_no_more_than_a_moment() -> None
     # What is debounced is handed on, and so is how long it must stay.
     row = (choice("contact_no", "call", held="0.5 s"), choice("debounce"), timer, PIEZO)
     assert "call" in doubts(conditions(), row)
+
+
+def test_what_a_source_takes_beside_an_alarm_is_in_the_middle_too() -> None:
+    # A user's door unit without an entry: the sounder takes 0.3 V across 2 ohm, so that it came out at 60.9 to 123.6 s
+    # and kept +6 % of the window that was told, +10 % being asked for.
+    kept = conditions("10.5 V", "12 V", "14.8 V") | {"ambient": {"min": "-10 C", "nominal": "25 C", "max": "50 C"}}
+
+    def row(window: str) -> tuple[Choice, ...]:
+        timer = choice("long_timer", "timer", mode="reset", time="90 s", window=window)
+        return (choice("contact_nc"), choice("complementary_latch", "latch"), timer, choice("low_side_driver"))
+
+    (words,) = doubts(kept, row("20 %"))["timer"]
+    window = words.split("write window ")[1].split(" or")[0]
+    design = new_design("test", "as told", kept, row(window))
+    (check,) = study(design, only=f"duration:timer:{design.stage('timer').roles['timing_capacitor']}").checks
+    assert check.verdict is Verdict.PASS
+    assert check.low is not None
+    assert check.high is not None
+    # E96 has a value within 1.2 % of the middle; what the closed form leaves out is no more than that.
+    assert 0.5 * (check.low + check.high) == pytest.approx(90.0, rel=0.024)
