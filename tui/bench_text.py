@@ -55,15 +55,21 @@ def shortened(condition: str) -> str:
 
 
 def conditions_pieces(design: Design) -> list[str]:
-    """Supply and ambient as the document writes them: ``4 V .. 6.4 V`` and ``0 C .. 50 C``."""
+    """Supply and ambient as the document writes them, with their units: ``4 V .. 6.4 V`` and ``0 C .. 50 C``."""
     found = []
-    for name in ("supply", "ambient"):
+    for name, unit in (("supply", "V"), ("ambient", "C")):
         condition = getattr(design.conditions, name)
         if isinstance(condition, str):
-            found.append(condition)
+            found.append(with_unit(condition, unit))
         elif condition is not None:
-            found.append(f"{condition.min or condition.nominal} .. {condition.max or condition.nominal}")
+            ends = condition.min or condition.nominal, condition.max or condition.nominal
+            found.append(" .. ".join(with_unit(end, unit) for end in ends))
     return found
+
+
+def with_unit(text: str, unit: str) -> str:
+    """A text as typed, with the unit that it was read with where it was typed without one."""
+    return f"{text} {unit}" if text[-1:].isdigit() else text
 
 
 def links(design: Design, figures: Figures) -> tuple[Link, ...]:

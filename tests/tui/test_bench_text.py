@@ -8,7 +8,7 @@ from hypothesis import strategies as st
 
 from stagebook.engine.design.document import Design
 from stagebook.storage.values import Draft
-from stagebook.tui.bench_text import heading, shortened
+from stagebook.tui.bench_text import conditions_pieces, heading, shortened
 from stagebook.tui.figures import Figures
 from stagebook.tui.shown import plain
 
@@ -52,3 +52,12 @@ def test_conditions_stand_whole_or_not_at_all(width: int, progress: str) -> None
 )
 def test_a_unit_is_written_once_where_both_ends_have_it(words: str, short: str) -> None:
     assert shortened(words) == short
+
+
+def test_conditions_typed_without_a_unit_show_the_one_they_were_read_with() -> None:
+    conditions = {
+        "supply": {"min": "10.5", "nominal": "12", "max": "14.8 V"},
+        "ambient": {"min": "-10", "nominal": "25 C", "max": "50"},
+    }
+    design = Design.load({**document(), "conditions": conditions})
+    assert conditions_pieces(design) == ["10.5 V .. 14.8 V", "-10 C .. 50 C"]

@@ -7,6 +7,7 @@ from argparse import ArgumentParser, Namespace
 
 from ...engine.circuit.circuit import build
 from ...engine.errors import EngineError
+from ...storage.errors import NameTaken
 from ..shown import visible
 from .what import load_file, open_store, shelf_arguments
 
@@ -22,7 +23,13 @@ def run(asked: Namespace) -> int:
     """Take the document in as a draft; one that cannot be computed too, with the reason on standard error."""
     design = load_file(asked.file)
     with open_store(asked, begins=True) as store:
-        draft = store.create(design.name if asked.name is None else asked.name, design)
+        name = design.name if asked.name is None else asked.name
+        try:
+            draft = store.create(name, design)
+        except NameTaken as taken:
+            raise NameTaken(
+                f"There is a design '{name}' on the shelf already: --as NAME takes it in as NAME."
+            ) from taken
     print(f"{visible(draft.name)} is on the shelf, as a draft without a revision yet")
     try:
         build(design)

@@ -19,6 +19,7 @@ from ...engine.stages.row import Choice, usual_name
 from ...storage.errors import StorageError
 from ...storage.store import Store
 from ..actions import bindings
+from ..bench_text import with_unit
 from ..shown import Span, columns, counted, fit, line
 from ..stage_text import asked
 from ..widgets.lines import Lines
@@ -82,8 +83,9 @@ class NewDesignPage(Page[str | None]):
         return -1 if key is None else next(n for n, choice in enumerate(self._row) if choice.title() == key)
 
     def _show(self, name: str | None = None) -> None:
-        supply = self._conditions["supply"]
-        words = f" {self._called}: a new design, stages from left to right   {supply['min']} .. {supply['max']}"
+        supply = self._conditions.get("supply", {})
+        ends = [with_unit(supply.get(end) or supply.get("nominal", ""), "V") for end in ("min", "max")]
+        words = f" {self._called}: a new design, stages from left to right   {' .. '.join(filter(None, ends))}"
         title = self.query_one("#title", Lines)
         title.show(line(Span(fit(words, title.size.width or 80), "strong")))
         self._doubts = doubts_beside(self._conditions, self._row)

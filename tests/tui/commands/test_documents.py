@@ -220,7 +220,9 @@ def test_a_revision_that_is_not_there(refused: Refused, stagebook: Run, written:
 
 def test_a_name_is_taken_once(refused: Refused, stagebook: Run, written: Path) -> None:
     assert stagebook("import", written)[0] == 0
-    assert "already" in refused("import", written)
+    said = refused("import", written)
+    assert "already" in said
+    assert "--as NAME" in said
     assert len(json.loads(stagebook("list", "--json")[1])["designs"]) == 1
 
 
