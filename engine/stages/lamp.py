@@ -3,16 +3,29 @@
 from __future__ import annotations
 
 from ..quantity import write
-from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Intake, Made, Place, Sense, Setting, StageKind
+from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Intake, Json, Made, Place, Sense, Setting, StageKind
+from .loads import starved
 from .plan import RETURN, Plan
 
 SPREAD = 0.1  # of its current, from memory
 COLD = ("10", "12", "14")  # times the hot current that flows into a cold filament, from memory
-GLOWS = 0.5  # of the nominal supply from which a lamp counts as on
+GLOWS = 0.6  # of the nominal rail from which a lamp counts as on: a sixth of its light there (V^3.4; common practice)
 
 
 def _current(plan: Plan) -> float:
     return plan.above_zero("power") / plan.supply.nominal
+
+
+def _works_from(plan: Plan) -> float:
+    """The voltage above which it counts as on."""
+    return plan.above_zero("works_from") if plan.text("works_from") else GLOWS * plan.rail.nominal
+
+
+def _said(plan: Plan) -> Json:
+    """Who says so."""
+    if plan.text("works_from"):
+        return {"condition": "as asked of the stage"}
+    return {"source": "memory", "condition": f"{GLOWS:g} of the nominal rail, common practice"}
 
 
 def _make(plan: Plan) -> Made:
@@ -26,14 +39,14 @@ def _make(plan: Plan) -> Made:
     limits = {"min": 1.0 - SPREAD, "typical": 1.0, "max": 1.0 + SPREAD}
     fields = {
         "current": {**{key: write(share * current, "A") for key, share in limits.items()}, "source": "memory"},
-        "operating_minimum": write(GLOWS * plan.supply.nominal, "V"),
+        "operating_minimum": {"typical": write(_works_from(plan), "V"), **_said(plan)},
         "data": {
             "rated_voltage": write(plan.supply.nominal, "V"),
             "cold_ratio": {**dict(zip(limits, COLD, strict=True)), "source": "memory"},
         },
     }
     plan.part("H", "lamp", dict(zip(("a", "b"), ends, strict=True)), "load", **fields)
-    return Made()
+    return Made(doubts=starved(plan, 0.0 if plan.drive is None else plan.drive.drop, _works_from(plan)))
 
 
 KIND = StageKind(
@@ -47,7 +60,10 @@ KIND = StageKind(
         " from memory."
     ),
     ports=(IN_PORT, RAIL_PORT, RETURN_PORT),
-    settings=(Setting("power", "W", "2 W", "at the nominal supply"),),
+    settings=(
+        Setting("power", "W", "2 W", "at the nominal supply"),
+        Setting("works_from", "V", "", f"on above it; empty: {GLOWS:g} of the nominal rail behind an entry"),
+    ),
     make=_make,
     takes=(Sense.LOW_SIDE, Sense.HIGH_SIDE, Sense.LEVEL),
     intake=lambda plan: Intake((1.0 + SPREAD) * _current(plan), passes=True, surge=float(COLD[-1])),

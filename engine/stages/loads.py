@@ -42,6 +42,11 @@ def switched(plan: Plan) -> float:
     return _own(plan) + _behind(plan)
 
 
+def both(plan: Plan) -> str:
+    """What to write where a driver has a load of its own beside those behind it, which may not be meant; else empty."""
+    return "write load none, it switches one of its own beside those behind it" if _own(plan) and _behind(plan) else ""
+
+
 def drawn(plan: Plan) -> float:
     """What a load that a driver brings along draws at the highest supply, A; that of the next stage is its own."""
     if plan.text("load") == NONE:
@@ -51,7 +56,7 @@ def drawn(plan: Plan) -> float:
 
 def doubtful(plan: Plan, lost: float) -> tuple[str, ...]:
     """What will not hold of a load that loses ``lost`` V in whatever switches it: its voltage, how loud it is."""
-    return _starved(plan, lost) + _quiet(plan, lost)
+    return starved(plan, lost, works_from(plan)) + _quiet(plan, lost)
 
 
 def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
@@ -72,14 +77,25 @@ def _quiet(plan: Plan, lost: float) -> tuple[str, ...]:
     )
 
 
-def _starved(plan: Plan, lost: float) -> tuple[str, ...]:
-    left, needed = plan.fed - lost, works_from(plan) / (1.0 - VOLTAGE)
+def starved(plan: Plan, lost: float, works_from: float) -> tuple[str, ...]:
+    """What will not hold of a load's voltage, of which ``lost`` V are lost in whatever switches it."""
+    left, needed = plan.fed - lost, works_from / (1.0 - VOLTAGE)
     if left >= needed:
         return ()
+    enough = _below((1.0 - VOLTAGE) * left)
+    lower = f"write works_from {write(enough, 'V', digits=2)} or less, or " if enough > 0.0 else ""
     return (
         f"load_voltage: of {plan.supply.min:.3g} V {left:.3g} V are left for the load, which needs {needed:.3g} V with"
-        f" 10 % to spare; write works_from {write(left * (1.0 - VOLTAGE), 'V', digits=2)} or less, or feed it more",
+        f" 10 % to spare; {lower}feed it more",
     )
+
+
+def _below(value: float) -> float:
+    """A value of two digits that is no larger; 0 where it is none above zero."""
+    if value <= 0.0:
+        return 0.0
+    step = 10.0 ** (math.floor(math.log10(value)) - 1)
+    return math.floor(value / step + 1e-9) * step
 
 
 def peak(plan: Plan) -> float:

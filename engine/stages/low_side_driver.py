@@ -7,7 +7,7 @@ from functools import partial
 from ..quantity import write
 from .heat import cooled
 from .kind import IN_PORT, RAIL_PORT, RETURN_PORT, Drive, Intake, Made, Place, Port, Sense, Setting, StageKind, Wire
-from .loads import LOAD_SETTINGS, NONE, add_load, carried, doubtful, drawn, load_requirements, peak, switched
+from .loads import LOAD_SETTINGS, NONE, add_load, both, carried, doubtful, drawn, load_requirements, peak, switched
 from .plan import DRIVER_CURRENT, RETURN, V_BE, Plan, class_figure
 
 BLEED = 0.1  # share of the base current that the base-emitter resistor may take (common practice)
@@ -33,13 +33,13 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     node, low = plan.net("base"), plan.port("low")
     drop = junctions * V_BE
     ohms = (plan.arriving - drop) / (base + drop / bleed) - plan.arriving_ohms
-    current = switched(plan)
+    current, two = switched(plan), both(plan)
     if kind == "npn" and peak(plan) > DRIVER_CURRENT:
         inrush, most = (write(each, "A") for each in (peak(plan), DRIVER_CURRENT))
         raise plan.refused(
             "current",
-            f"an inrush of {inrush} is more than the {most} that 0.5 A transistors are used for; take a Darlington"
-            " driver",
+            f"an inrush of {inrush} is more than the {most} that 0.5 A transistors are used for;"
+            f" {two and two + ', or '}take a Darlington driver",
         )
     if ohms < 1.0:
         raise plan.refused(
@@ -55,7 +55,10 @@ def _make(plan: Plan, kind: str, junctions: int) -> Made:
     bears = class_figure(kind, plan.transistor_class(kind, peak(plan)), "i_c_max", "A").low
     if peak(plan) > PEAK * bears:
         inrush = write(peak(plan), "A")
-        doubts += (f"peak_current: an inrush of {inrush} leaves no 20 % of the {bears:g} A that it bears; switch less",)
+        doubts += (
+            f"peak_current: an inrush of {inrush} leaves no 20 % of the {bears:g} A that it bears;"
+            f" {two or 'switch less'}",
+        )
     farads = plan.quieting((kind, peak(plan), plan.supply.max))
     plan.capacitor(farads, node, RETURN, "base_capacitor_driver", snap="up")
     if plan.text("load") != NONE:

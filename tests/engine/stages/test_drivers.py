@@ -110,8 +110,14 @@ def test_a_driver_with_its_own_load_is_sized_for_the_loads_behind_it_too(kind: s
 
 
 def test_an_inrush_of_all_loads_together_is_refused() -> None:
-    with pytest.raises(DesignError, match=r"an inrush of 700 mA is more than the 400 mA"):
+    with pytest.raises(
+        DesignError, match=r"an inrush of 700 mA is more than the 400 mA.*; write load none, it switches"
+    ):
         made(CALL, choice("low_side_driver", "driver"), choice("sounder", "siren"))
+    # What it tells to write is enough; a single load has no other load to leave out.
+    assert doubts(conditions(), (CALL, choice("low_side_driver", "driver", load="none"), choice("sounder"))) == {}
+    with pytest.raises(DesignError, match=r"used for; take a Darlington driver"):
+        made(CALL, choice("low_side_driver", "driver", current="300 mA"))
 
 
 def test_two_loads_on_one_driver_fail_where_one_passes() -> None:
@@ -124,3 +130,19 @@ def test_two_loads_on_one_driver_fail_where_one_passes() -> None:
     assert one.demand is not None
     assert both.demand == pytest.approx(2.0 * one.demand, rel=0.02)
     assert (one.verdict is Verdict.FAIL, both.verdict is Verdict.FAIL) == (False, True)
+
+
+def test_a_lamp_needs_a_share_of_its_rated_voltage_and_says_so() -> None:
+    # A user's lamp for 6 V passed at 3.6 V. 0.6 of the rated voltage leaves 0.6^3.4 = 0.18 of its light (common
+    # practice, no source).
+    row = (CALL, choice("darlington_driver", "driver", load="none"), choice("lamp"))
+    low = made(*row, supply=("4.5 V", "6 V", "7 V"))
+    part = low.part(low.stage("lamp").roles["load"])
+    limits = part.limits("operating_minimum", "V")
+    assert limits is not None
+    assert limits.typical == pytest.approx(3.6)
+    assert study(low, only=f"load_voltage:lamp:{part.ref}").checks[0].verdict is not Verdict.PASS
+    (said,) = doubts(conditions("4.5 V", "6 V", "7 V"), row)["lamp"]
+    assert said.startswith("load_voltage: of 4.5 V 3.4 V are left for the load, which needs 4 V")
+    told = said.split("write works_from ")[1].split(" or")[0]
+    assert doubts(conditions("4.5 V", "6 V", "7 V"), (*row[:2], choice("lamp", works_from=told))) == {}
