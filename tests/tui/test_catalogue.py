@@ -235,7 +235,11 @@ async def test_a_made_stage_is_asked_for_something_else(store: Store, solver: So
         was = store.draft("bell").design
         await pilot.press("S")
         await until(pilot, lambda: isinstance(pilot.app.screen, Form))
-        await pilot.press("down", *["backspace"] * 4, *"2 mA", "enter")
+        await pilot.press("down", "ctrl+u", *"0", "enter")
+        assert isinstance(pilot.app.screen, Form)
+        assert "setting wetting: 0 is not above zero; write it like 1 mA" in notice(pilot)
+        assert store.draft("bell").design == was
+        await pilot.press("ctrl+u", *"2 mA", "enter")
         await until(pilot, lambda: isinstance(pilot.app.screen, BenchScreen))
         assert "contact asked again" in notice(pilot)
         assert store.draft("bell").design.stages[0].settings["wetting"] == "2 mA"
