@@ -101,9 +101,7 @@ class Drafting(Drawer):
 
     def set_value(self, ref: str, text: str) -> None:
         """Writes the value of a part."""
-        after = edit.with_value(self.design, ref, text)
-        refuse_newly_wrong(self.design, after)
-        self._keep(f"{ref} {text}", after)
+        self._keep(f"{ref} {text}", edit.with_value(self.design, ref, text))
 
     def step(self, ref: str, direction: int) -> None:
         """Puts in the next preferred value above (+1) or below (-1)."""

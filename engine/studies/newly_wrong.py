@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Iterator
-from functools import partial
+from dataclasses import dataclass, field
+from functools import lru_cache, partial
 
 from ..checks import catalogue
 from ..checks.check import Check
@@ -86,21 +87,43 @@ def _requirements(design: Design, other: Design) -> Iterator[str]:
 
 def _whole(design: Design, other: Design) -> Iterator[str]:
     """What only the circuit tells: asks of the checks, sequences. Nothing where one of both is not whole yet."""
+    if design is other or _computed(_Known(other.content, other)).whole:
+        yield from _computed(_Known(design.content, design)).refusals
+
+
+@dataclass(frozen=True)
+class _Known:
+    """A design that is the same as another of the same content."""
+
+    content: str
+    design: Design = field(compare=False)
+
+
+@dataclass(frozen=True)
+class _Computed:
+    """Whether a circuit can be made of a design, and what is refused of it."""
+
+    whole: bool
+    refusals: tuple[str, ...] = ()
+
+
+@lru_cache(maxsize=4)  # what one edit came to is what the next one begins with
+def _computed(known: _Known) -> _Computed:
+    design = known.design
     if any(found_faults(design)):
-        return
-    if design is not other and (any(found_faults(other)) or any(_refused(partial(build, other)))):
-        return
+        return _Computed(False)
     try:
         circuit = build(design)
     except CircuitError as refusal:
-        yield str(refusal)
-        return
+        return _Computed(False, (str(refusal),))
+    found: list[str] = []
     view, nominal = View(design, circuit), circuit.nominal()
     for check in catalogue().values():
         for words in _refused(partial(_asked, check, view)):
-            yield words if check.slug in words else f"requirement {check.slug}: {words}"
+            found.append(words if check.slug in words else f"requirement {check.slug}: {words}")
     for name in design.sequences:
-        yield from _refused(partial(_begun, circuit, nominal, name))
+        found += _refused(partial(_begun, circuit, nominal, name))
+    return _Computed(True, tuple(found))
 
 
 def _asked(check: Check, view: View) -> None:
