@@ -21,7 +21,7 @@ def _make(plan: Plan) -> Made:
     for name, collector, other in (("one", first, second), ("two", second, first)):
         node = plan.net(f"node_{name}")
         plan.resistor(COLLECTOR, feed, collector, f"collector_resistor_{name}")
-        value = plan.capacitor(farads, other, node, f"timing_capacitor_{name}", snap="up", film=True)
+        value = plan.capacitor(farads, other, node, f"timing_capacitor_{name}", snap="up", film=True, times="period")
         plan.resistor(
             0.5 * period / (value * math.log(swing(plan))), feed, node, f"timing_resistor_{name}", tolerance="1 %"
         )

@@ -37,7 +37,7 @@ def _make(plan: Plan) -> Made:
     node = plan.net("node")
     most = most_timing(plan, half(plan, collector).base)
     farads = plan.capacitor(
-        time / (most * math.log(swing(plan))), first, node, "timing_capacitor", snap="up", film=True
+        time / (most * math.log(swing(plan))), first, node, "timing_capacitor", snap="up", film=True, times="time"
     )
     plan.resistor(time / (farads * math.log(swing(plan))), rail, node, "timing_resistor", tolerance="1 %")
     plan.transistor(second, add_base(plan, node, "two"), RETURN, "rest_device")

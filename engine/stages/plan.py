@@ -35,6 +35,9 @@ ABOVE = (
     1.01  # times the rail that a capacitor's rated voltage is chosen for: what comes back from a load lifts it a little
 )
 _NEVER_BELOW = {"s", "m", "ohm", "F", "A", "W", "Hz", "lx", "V/s"}
+BOUGHT = {"R": (1.0, 22e6), "C": (1e-12, 10e-3), "film": (1e-12, 100e-6)}
+"""Ohm and F that one can buy (common practice, no source)."""
+TIMED_LEAST = 100e-12  # F of a capacitor that times, at least: strays are some 10 pF (common practice)
 LARGEST_FILM = 2.2e-6  # F; above it capacitors are polarised (common practice)
 
 
@@ -46,7 +49,8 @@ class Plan:
     rail of loads (the supply where none are given), ``beyond`` what the stages behind it draw, ``source`` the largest
     resistance of the supply in ohm; ``drive`` is what comes in
     from the stage before, None where the rail itself starts it; ``next`` is what the following stage takes.
-    ``found`` are settings that nothing was written for, as they were worked out.
+    ``found`` are settings that nothing was written for, as they were worked out;
+    ``unbought`` are doubts about parts that nobody sells.
     """
 
     kind: StageKind
@@ -65,6 +69,7 @@ class Plan:
     parts: list[Json] = field(default_factory=list)
     roles: dict[str, str] = field(default_factory=dict)
     found: dict[str, str] = field(default_factory=dict)
+    unbought: list[str] = field(default_factory=list)
 
     # -- what was asked
 
@@ -213,6 +218,7 @@ class Plan:
         customary 0.6.
         """
         value = snapped(min(max(ohms, _LEAST), _MOST), series_for(read(tolerance, "%")), snap)
+        self._bought("R", ohms, "ohm", role)
         self.part(
             "R",
             "resistor",
@@ -234,12 +240,14 @@ class Plan:
         snap: str = "nearest",
         low_drift: bool = False,
         film: bool = False,
+        times: str = "",
     ) -> float:
         """A capacitor of a preferred value, ``a`` the more positive net; returns that value in farad.
 
         Film up to 2.2 uF or where ``film`` says so, else polarised, with a rated voltage that bears the rail at the
-        customary 0.6 and 0.8.
+        customary 0.6 and 0.8. ``times`` is the setting of a time that it is in proportion to.
         """
+        self._bought("film" if film or farads <= LARGEST_FILM else "C", farads, "F", role, times)
         if film or farads <= LARGEST_FILM:
             value = snapped(farads, "E6", snap)
             rated = _at_least(ABOVE * self.rail.max / 0.6, _VOLTAGES[4:])
@@ -253,6 +261,22 @@ class Plan:
         polarised = {"plus": a, "minus": b}
         self.part("C", "capacitor", polarised, role, value=write(value, "F"), **fields)
         return value
+
+    def _bought(self, kind: str, value: float, unit: str, role: str | None, times: str = "") -> None:
+        """Note a doubt about a value that nobody sells."""
+        least, most = BOUGHT[kind]
+        if times:
+            least = TIMED_LEAST
+        if 0.95 * least <= value <= 1.05 * most:
+            return
+        low, high, asked = (write(each, unit, digits=2) for each in (least, most, value))
+        cure = "is it meant? write what it follows from otherwise"
+        if times:
+            nearest_time = write(self.number(times) * (least if value < least else most) / value, "s", digits=2)
+            bound = "longer" if value < least else "shorter"
+            cure = f"is {times} {self.text(times)} meant? write {nearest_time} or {bound}"
+        name = (role or "a part").removesuffix("_one").removesuffix("_two").replace("_", " ")
+        self.unbought.append(f"sizing: {name} is to have {asked}, and {low} to {high} can be bought and used; {cure}")
 
     def transistor(
         self,

@@ -172,6 +172,7 @@ def make_stage(
             " a Schmitt trigger between, or leave a debounce out"
         )
     made = kind.make(plan)
+    made = replace(made, doubts=(*made.doubts, *dict.fromkeys(plan.unbought)))
     used = {net for part in plan.parts for net in part["pins"].values()}
     ports = {name: net for name, net in plan.ports.items() if net in used}
     stage: Json = {

@@ -162,7 +162,9 @@ def class_name(kind: str) -> str:
 
 def add_timing_capacitor(plan: Plan, farads: float, net: str, back: str, kind: str) -> float:
     """The capacitor, next higher preferred value; returns it in farad."""
-    value = plan.capacitor(farads, net, back, "timing_capacitor", snap="up", low_drift=kind != ELECTROLYTIC)
+    value = plan.capacitor(
+        farads, net, back, "timing_capacitor", snap="up", low_drift=kind != ELECTROLYTIC, times="time"
+    )
     part = plan.parts[-1]
     if kind == SELECTED and "plus" in part["pins"]:
         name = _CLASSES[kind]

@@ -9,9 +9,10 @@ import pytest
 
 from stagebook.engine.design.document import Design
 from stagebook.engine.primitives.signals import Anchor, minimum, voltage
+from stagebook.engine.stages.making import doubts
 
 from ..circuits import Setup
-from .made import PIEZO, at, begins, choice, load_goes, made, passing, run, seconds, value
+from .made import PIEZO, at, begins, choice, conditions, load_goes, made, passing, run, seconds, value
 
 
 def astable(period: str, supply: tuple[str, str, str]) -> tuple[float, float]:
@@ -97,3 +98,17 @@ def test_the_loop_of_the_bistable_saturates_with_the_least_gain() -> None:
         ring = value(design, "kept", f"collector_resistor_{other}") + value(design, "kept", f"base_resistor_{name}")
         base = (11.0 - 0.65) / ring - 0.65 / 100e3
         assert base * gain > 2.5 * 14.0 / value(design, "kept", f"collector_resistor_{name}")
+
+
+@pytest.mark.parametrize(("period", "cure"), [("1000000 s", "or shorter"), ("1 ns", "or longer")])
+def test_a_flasher_whose_capacitors_nobody_sells_is_doubted(period: str, cure: str) -> None:
+    # A user's period of 1000000 s got 4.7 F, one of 1 ns 0.0047 pF, and nothing was said. 100 pF to 100 uF of film:
+    # common practice, no source.
+    (said,) = doubts(conditions(), (choice("astable", period=period), PIEZO))["flasher"]
+    assert said.startswith("sizing: timing capacitor is to have ")
+    assert f"is period {period} meant? write" in said
+    assert cure in said
+    # What it tells to write can be bought.
+    told = said.split("meant? write ")[1].split(" or")[0]
+    other = doubts(conditions(), (choice("astable", period=told), PIEZO)).get("flasher", ())
+    assert not any(words.startswith("sizing: timing capacitor") for words in other)
