@@ -153,6 +153,7 @@ class FaultLanes:
         beside = {each: its for each, its, _ in seen if each in (Outcome.RUNS_ON, Outcome.FALSE_ALARM)}
         said += [its for each, its in sorted(beside.items()) if SAID[each] not in words]
         detail = [self._otherwise(load, lane)] if outcome in (Outcome.STILL_ALARMS, Outcome.OVERHEATS) else []
+        detail.append(self._oscillates(load.healthy.sequence, lane))
         detail += [f"{ref} at {self._heat[ref][lane]:.1f} times its power" for ref in hot[:2]]
         standby, usual = self.standby(lane), self.standby()
         drains = standby is not None and usual is not None and standby > max(DRAINS * usual, LEAST_DRAIN)
@@ -201,6 +202,12 @@ class FaultLanes:
             words = diagnosed(self._observed[sequence], self._made.lanes, sequence, lane)
             self._failures[sequence, lane] = None if words is None else words.split(";")[0]
         return self._failures[sequence, lane]
+
+    def _oscillates(self, sequence: str, lane: int) -> str:
+        """Where and how fast a lane oscillates that was carried forward, as the unit without a fault does not."""
+        watched = self._observed[sequence]
+        words = None if watched.carried_forward(0) else watched.carried_forward(lane)
+        return "" if words is None else words.split(";")[0]
 
     def _otherwise(self, load: _LoadRows, lane: int) -> str:
         """What differs of an alarm that still comes: how late, how long."""
