@@ -78,9 +78,9 @@ class Clock:
 def timed(work: Callable[[], Any]) -> Clock:
     clock, lock, march = Clock(), threading.Lock(), engine_run.march
 
-    def watched(*arguments: Any) -> None:
+    def watched(*arguments: Any, **options: Any) -> None:
         begin = time.thread_time()
-        march(*arguments)
+        march(*arguments, **options)
         with lock:
             clock.blocks += time.thread_time() - begin
 
@@ -263,7 +263,13 @@ for low in range(0, count, PORTION):
     portion = lanes.take(range(low, min(low + PORTION, count)))
     seen = run(circuit, portion, program_of(circuit, portion, "alarm")[0].program(ends), ())
     assert not seen.failed.any()
-print(time.process_time() - begin, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024)
+taken, megabytes = time.process_time() - begin, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024
+try:  # the figure above begins with what the parent had when it started this process
+    said = next(line for line in open("/proc/self/status") if line.startswith("VmHWM"))
+    megabytes = int(said.split()[1]) / 1024
+except OSError:
+    pass
+print(taken, megabytes)
 """
 
 
