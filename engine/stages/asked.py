@@ -66,7 +66,8 @@ def _refused(conditions: Json, row: Sequence[Choice]) -> EngineError | None:
 
 
 def _of_setting(refusal: EngineError, choice: Choice) -> bool:
-    return str(refusal).startswith(f"stage {choice.title()}, setting ")
+    """Whether a setting of the stage is refused, or its name, which is asked in the same form."""
+    return str(refusal).startswith((f"stage {choice.title()}, setting ", f"stage {choice.title()}, field name:"))
 
 
 def _of_stage(refusal: EngineError, choice: Choice) -> bool:

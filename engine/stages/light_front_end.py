@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import math
-
 from ..quantity import write
 from .held import HELD, held, held_setting
 from .kind import OUT_PORT, QUIET_PORT, RETURN_PORT, WORD, Made, Place, Setting, StageKind
@@ -11,19 +9,22 @@ from .plan import Plan
 from .sensor_divider import add_divider, trip_sequence, trip_window
 
 GAMMA, AT = 0.7, 10.0  # slope of log R over log light and the light in lx of the resistance given, class, from memory
+GAMMAS = (0.6, 0.8)  # and how far that slope spreads
 SPREAD = 0.5  # of its resistance, class, from memory
 KEPT = 0.12  # of half of the window
 BEYOND = 10.0  # times beyond the trip point that the sequence goes, and as far on the other side at rest
 
 
-def _aim(window: float) -> float:
+def _aim(trip: float, window: float) -> float:
     """Where the trip point is put, in parts of what is asked for.
 
     The window counts in lux, of which there are fewer below the trip point than above it: the darkest end of the
     sensor's own spread keeps the customary margin, and a little for the threshold, above the lower limit.
     """
-    least = 1.0 / window + KEPT * 0.5 * (window - 1.0 / window)
-    return max(1.0, least * math.exp(-math.log(1.0 - SPREAD) / GAMMA))
+    least = (1.0 / window + KEPT * 0.5 * (window - 1.0 / window)) * trip / AT
+    # A low sensor of slope g trips at ``least`` where (1 - spread) least^-g is what a typical one has at the aim.
+    aims: list[float] = [(least**gamma / (1.0 - SPREAD)) ** (1.0 / GAMMA) for gamma in GAMMAS]
+    return max(1.0, *(aim * AT / trip for aim in aims))
 
 
 def _make(plan: Plan) -> Made:
@@ -31,7 +32,9 @@ def _make(plan: Plan) -> Made:
     if spread <= 1.0:
         raise plan.refused("window", f"{plan.text('window')} is no factor above 1; write it like 2")
     dark = plan.text("active") == "dark"
-    one, other, drive = add_divider(plan, plan.above_zero("sensor") * (trip * _aim(spread) / AT) ** -GAMMA, rising=dark)
+    one, other, drive = add_divider(
+        plan, plan.above_zero("sensor") * (trip * _aim(trip, spread) / AT) ** -GAMMA, rising=dark
+    )
     rest, alarm = (trip * BEYOND, trip / BEYOND) if dark else (trip / BEYOND, trip * BEYOND)
     fields = {"value": plan.text("sensor"), "class": "ldr", "data": {"light": write(rest, "lx")}}
     ref = plan.part("R", "light_resistor", {"a": one, "b": other}, "sensor", **fields)
@@ -65,7 +68,7 @@ KIND = StageKind(
     settings=(
         Setting("active", WORD, "dark", "what it trips on", ("dark", "light")),
         Setting("trip", "lx", "10 lx", "light at the trip point"),
-        Setting("window", "", "4", "factor by which the trip point may be off, both ways"),
+        Setting("window", "", "5", "factor by which the trip point may be off, both ways"),
         Setting("sensor", "ohm", "10k", "resistance of the sensor at 10 lx"),
         held_setting(HELD, "how long the event of the sequence lasts"),
     ),

@@ -1,8 +1,8 @@
 """Units made at random of stage building blocks, values over decades: solved, or told in words why not.
 
-Requirement of the project: at least 99.9 % of 2,000 units are solved, the rest reported, no crash and no hang. A unit
-that oscillates on for more steps than a lane may take is solved up to there, and told with net and frequency; it is
-counted apart (``unit_outcomes.py``).
+Requirement of the project: at least 99.9 % of 2,000 units are solved to the end of their sequence, the rest reported,
+no crash and no hang. A unit that oscillates for longer than a lane may take steps is carried forward; where it does not
+oscillate evenly enough for that, it is told with net and frequency, and is not solved (``unit_outcomes.py``).
 """
 
 from __future__ import annotations
@@ -14,7 +14,7 @@ from pathlib import Path
 import pytest
 
 from .random_stages import unit
-from .unit_outcomes import CRASHED, HUNG, OSCILLATES, SOLVED, UNSOLVED, Outcome, counted, outcome, outcomes, told
+from .unit_outcomes import CRASHED, HUNG, SOLVED, Outcome, counted, outcome, outcomes, told
 
 # Without those that take long, and with those that once could not be solved.
 USUAL = (*range(27, 87), 95, 248, 327, 441, 1210, 1502, 1900)
@@ -25,10 +25,8 @@ ALLOWED = 0.001
 
 def test_units_made_at_random_are_solved() -> None:
     found = [outcome(seed) for seed in USUAL]
-    bad = [each for each in found if each.became not in (SOLVED, OSCILLATES)]
+    bad = [each for each in found if each.became != SOLVED]
     assert not bad, told(bad)
-    # The blocks are not drawn so that nothing happens.
-    assert sum(each.became == OSCILLATES for each in found) < 0.1 * len(USUAL)
 
 
 @pytest.mark.benchmark
@@ -38,7 +36,7 @@ def test_all_units_made_at_random_are_solved_or_told_in_words() -> None:
     line = told(found)
     print(line)
     assert not any(each.became in (CRASHED, HUNG) for each in found), line
-    unsolved = [each for each in found if each.became == UNSOLVED]
+    unsolved = [each for each in found if each.became != SOLVED]
     assert len(unsolved) <= ALLOWED * len(found), line
     for each in unsolved:
         assert " s" in str(each.words)

@@ -37,6 +37,11 @@ def test_a_setting_is_refused_whatever_stands_beside_it(kind: str, setting: str,
         refuse_settings(conditions(), [*row[:at], Choice(kind, "asked"), *row[at + 1 :]], at)
 
 
+def test_a_name_that_cannot_stand_is_refused_with_the_settings() -> None:
+    with pytest.raises(DesignError, match="field name"):
+        refuse_settings(conditions(), [CALL, Choice("low_side_driver", "0.5 s")], 1)
+
+
 def test_a_stage_that_still_lacks_its_signal_is_taken_and_told_on_the_page() -> None:
     row = [Choice("debounce", "first"), DRIVER]
     refuse_settings(conditions(), row, 0)
