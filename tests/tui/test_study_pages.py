@@ -58,16 +58,18 @@ async def test_it_says_what_it_waits_for(each: Each) -> None:
         await open_study(pilot, each.key)
         page = pilot.app.screen
         assert isinstance(page, StudyPage)
-        # The study reports how far it is behind its first rows: that must not come between what is asked here.
-        await until(pilot, lambda: bool(page.found.rows) and "1 of 3" in seen(pilot))
-        await settled(pilot)
-        page.found.show([])
-        page.post_message(SolverPreparing(True))
-        await until(
-            pilot,
-            lambda: "preparing the solver, once on this machine (30 s or so); this fills by itself" in seen(pilot),
-        )
-        page.post_message(SolverPreparing(False))
-        await until(pilot, lambda: "being computed; this fills by itself" in seen(pilot))
+        await until(pilot, lambda: bool(page.found.rows))
+        for busy, words in (
+            (True, "preparing the solver, once on this machine (30 s or so); this fills by itself"),
+            (False, "being computed; this fills by itself"),
+        ):
+
+            def asked(busy: bool = busy, words: str = words) -> bool:
+                # Again and again: what the study itself reports may come between.
+                page.found.show([])
+                page.post_message(SolverPreparing(busy))
+                return words in seen(pilot)
+
+            await until(pilot, asked)
         each.study.gate.set()
         await until(pilot, lambda: bool(page.found.rows))
